@@ -1,0 +1,3 @@
+"""The version, read by the build and stamped into every record."""
+
+__version__ = "0.1.0"

@@ -1,0 +1,1 @@
+"""The command line: the only place that reads arguments, prints, and chooses exit codes."""

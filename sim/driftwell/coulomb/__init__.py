@@ -1,0 +1,1 @@
+"""The charges' own repulsion: sums of Coulomb's law over all pairs."""

@@ -1,0 +1,31 @@
+"""What can go wrong, in words: where, what was found, what is needed, what to do.
+
+Every error a user can cause is a :class:`DriftwellError`; the command line prints its text and
+leaves with its exit code. Anything else that reaches the user is a defect of driftwell.
+"""
+
+from __future__ import annotations
+
+
+class DriftwellError(Exception):
+    """Base of all errors that are told to the user without a traceback."""
+
+    exit_code = 2
+
+
+class ScenarioError(DriftwellError):
+    """A scenario file cannot be used; the text lists every fault found in it."""
+
+
+class StepError(DriftwellError):
+    """The motion cannot be continued: not a number, runaway, or unresolved collapse."""
+
+    exit_code = 5
+
+
+class RecordError(DriftwellError):
+    """A run folder cannot be written or read."""
+
+
+class AnswerError(DriftwellError):
+    """A question cannot be answered from what the run recorded."""

@@ -1,0 +1,66 @@
+"""What every kind of field declares, and the numbers it packs for compiled code."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from enum import Enum
+
+from driftwell.forms import Form, Length, Name, key
+from driftwell.forms.body import Body
+from driftwell.forms.waveforms import AnyWaveform, PackedWaveform
+
+
+class Role(Enum):
+    """How the stepping uses a field."""
+
+    ELECTRIC = "electric"
+    """phi(x, t) = w(t) g(x): pushes by -grad phi, its drive does the work w'(t) g."""
+    UNIFORM_MAGNETIC = "uniform magnetic"
+    """The same B everywhere: the drift follows its helix exactly."""
+    MAGNETIC = "magnetic"
+    """B(x, t) = w(t) curl a(x): turns velocities halfway through the drift."""
+
+
+@dataclass(frozen=True, slots=True)
+class PackedField:
+    """One field as numbers: what the table of its role holds in one row."""
+
+    role: Role
+    kind: int
+    parameters: tuple[float, ...]
+    waveform: PackedWaveform
+    data: tuple[float, ...] = ()
+
+
+class FieldForm(Form):
+    """Base of all fields. `centre` is the origin the field's own coordinates count from."""
+
+    name: Name = key("what the field is called in messages and results")
+    centre: tuple[Length, Length, Length] = key(
+        "origin of the field's own coordinates", default=(0.0, 0.0, 0.0)
+    )
+
+    def species_named(self) -> tuple[str, ...]:
+        """Names of species the options refer to (each must exist in the scenario)."""
+        return ()
+
+    def waveform(self) -> AnyWaveform:
+        """The value in time that scales the field; its breaks end steps exactly."""
+        return 1.0
+
+    def packed(self, bodies: Mapping[str, Body]) -> PackedField:
+        """The field as numbers for compiled code."""
+        raise TypeError(f"{type(self).__name__} must say how it is packed")
+
+    def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
+        """Angular frequencies (rad/s) a particle of `body` would move or be driven with.
+
+        The names are those the automatic step choice shows: "drive", "secular", "axial",
+        "radial", "cyclotron", "magnetron".
+        """
+        return {}
+
+    def words(self) -> str:
+        """One sentence for `driftwell check`: what the field does, with its numbers."""
+        raise TypeError(f"{type(self).__name__} must describe itself")

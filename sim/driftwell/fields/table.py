@@ -1,0 +1,105 @@
+"""All kinds of fields: the forms a scenario may use, and their dispatch in compiled code.
+
+A new kind is one new file, one line in :data:`FIELD_KINDS` and one branch in the dispatch of its
+role. The branch is chosen once per field and step, not per particle; the loop over particles is
+inside the kind's own kernel, so that it vectorises.
+
+Every electric kind's kernel has the signature
+
+    kernel(p, data, w, position, charge, first, last, out_field) -> total
+
+    p : (16,) float64, the kind's parameters, centre first
+    data : (k,) float64, the kind's own stretch of the shared data array
+    w : float, value of the waveform now
+    position : (3, n) float64, m; charge : (n,) float64, C (macro-charges)
+    first, last : the particles to work on
+    out_field : (3, n) float64, V/m, added to
+    total : float, sum over those particles of charge times g, J for unit w
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.fields.form import FieldForm, PackedField, Role
+from driftwell.fields.rf_quadrupole import RF_QUADRUPOLE, RfQuadrupole, rf_quadrupole
+from driftwell.fields.uniform_electric import UNIFORM_ELECTRIC, UniformElectric, uniform_electric
+from driftwell.forms.body import Body
+from driftwell.forms.waveforms import waveform_table
+from driftwell.kernels import kernel
+
+FIELD_KINDS: tuple[type[FieldForm], ...] = (UniformElectric, RfQuadrupole)
+
+PARAMETERS = 16
+
+
+class FieldTable(NamedTuple):
+    """The fields of one role, one row each, as flat arrays for compiled code.
+
+    kind : (m,) int64
+    parameter : (m, 16) float64
+    first : (m + 1,) int64, where each field's stretch of `data` begins
+    data : (k,) float64
+    wave_kind, wave_parameter, wave_data : waveforms, row by row (kernels/waveform.py)
+    """
+
+    kind: NDArray[np.int64]
+    parameter: NDArray[np.float64]
+    first: NDArray[np.int64]
+    data: NDArray[np.float64]
+    wave_kind: NDArray[np.int64]
+    wave_parameter: NDArray[np.float64]
+    wave_data: NDArray[np.float64]
+
+
+def field_table(fields: Sequence[PackedField]) -> FieldTable:
+    """Lay packed fields one after the other."""
+    waves = waveform_table([field.waveform for field in fields])
+    parameter = np.zeros((len(fields), PARAMETERS))
+    first = np.zeros(len(fields) + 1, dtype=np.int64)
+    data: list[float] = []
+    for row, field in enumerate(fields):
+        parameter[row, : len(field.parameters)] = field.parameters
+        data.extend(field.data)
+        first[row + 1] = len(data)
+    return FieldTable(
+        np.array([field.kind for field in fields], dtype=np.int64),
+        parameter,
+        first,
+        np.array(data or [0.0]),
+        waves.kind,
+        waves.parameter,
+        waves.data,
+    )
+
+
+def field_tables(
+    forms: Sequence[FieldForm], bodies: Mapping[str, Body]
+) -> dict[Role, FieldTable]:
+    """The scenario's fields as one table for each role."""
+    packed = [form.packed(bodies) for form in forms]
+    return {role: field_table([field for field in packed if field.role is role]) for role in Role}
+
+
+@kernel
+def electric_field(
+    kind: int,
+    p: np.ndarray,
+    data: np.ndarray,
+    w: float,
+    position: np.ndarray,
+    charge: np.ndarray,
+    first: int,
+    last: int,
+    out_field: np.ndarray,
+) -> float:
+    """Dispatch to the kernel of an electric kind; see the module's docstring."""
+    if kind == UNIFORM_ELECTRIC:
+        return uniform_electric(p, data, w, position, charge, first, last, out_field)
+    if kind == RF_QUADRUPOLE:
+        return rf_quadrupole(p, data, w, position, charge, first, last, out_field)
+    return np.nan

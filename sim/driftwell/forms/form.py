@@ -1,0 +1,86 @@
+"""A form: the options of one part, each with its meaning, unit, default and bounds.
+
+The scenario reader, the JSON Schema for editors and the reference page all come from these
+declarations, so that a key has one meaning, one default and one line of help.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Annotated, Any, Literal, Union
+
+from pydantic import BaseModel, ConfigDict, Discriminator, Field, GetCoreSchemaHandler, Tag
+from pydantic.fields import PydanticUndefined  # type: ignore[attr-defined]
+from pydantic_core import PydanticCustomError, core_schema
+
+
+class Form(BaseModel):
+    """Base of every declared set of keys: frozen, unknown keys refused, numbers finite."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False)
+
+
+def key(help: str, *, default: Any = PydanticUndefined, example: Any = None) -> Any:
+    """Declare a key: one line of help, its default (left out: the key is required), an example."""
+    return Field(default, description=help, examples=None if example is None else [example])
+
+
+def one_of(kinds: tuple[type[Form], ...]) -> Any:
+    """The type "one of these forms, told apart by their key `kind`"."""
+    if len(kinds) == 1:
+        return kinds[0]
+    return Annotated[Union[kinds], Discriminator("kind")]  # noqa: UP007 - built from a table
+
+
+@dataclass(frozen=True, slots=True)
+class Bound:
+    """The range of a number (SI where it has a unit); a value outside is a fault."""
+
+    above: float | None = None
+    least: float | None = None
+    below: float | None = None
+    most: float | None = None
+
+    def check(self, value: float) -> float:
+        """`value`, when it lies in the range."""
+        if (
+            (self.above is not None and not value > self.above)
+            or (self.least is not None and not value >= self.least)
+            or (self.below is not None and not value < self.below)
+            or (self.most is not None and not value <= self.most)
+            or not math.isfinite(value)
+        ):
+            raise PydanticCustomError("bound", "must be {range}", {"range": self.words()})
+        return value
+
+    def words(self) -> str:
+        """The range in words, e.g. ``greater than 0``."""
+        parts = [
+            f"{word} {limit:g}"
+            for word, limit in (
+                ("greater than", self.above),
+                ("at least", self.least),
+                ("less than", self.below),
+                ("at most", self.most),
+            )
+            if limit is not None
+        ]
+        return " and ".join(parts)
+
+    def __get_pydantic_core_schema__(
+        self, source: Any, handler: GetCoreSchemaHandler
+    ) -> core_schema.CoreSchema:
+        return core_schema.no_info_after_validator_function(self.check, handler(source))
+
+
+def or_word(word: str, kind: Any) -> Any:
+    """The type "this one word, or a `kind`", e.g. ``"auto"`` or a time."""
+
+    def which(value: Any) -> str:
+        return "word" if value == word else "value"
+
+    return Annotated[
+        Union[Annotated[Literal[word], Tag("word")], Annotated[kind, Tag("value")]],  # noqa: UP007
+        Discriminator(which),
+    ]

@@ -1,0 +1,112 @@
+"""Dimensioned values: strings with a unit in the file, SI floats in the program.
+
+``"3.5 mm"`` becomes ``0.0035`` where a :data:`Length` is declared. A bare number, an unknown unit,
+a unit of another dimension, or a value that is not finite is a fault that says what is needed.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Annotated, Any, TypeVar
+
+from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler, Strict, StringConstraints
+from pydantic.json_schema import JsonSchemaValue
+from pydantic_core import PydanticCustomError, core_schema
+
+from driftwell.forms import units
+from driftwell.forms.form import Bound
+
+
+@dataclass(frozen=True, slots=True)
+class Quantity:
+    """The declaration of a dimensioned key: what it is, its SI unit, and an example to show."""
+
+    name: str
+    si_unit: str
+    example: str
+
+    def read(self, value: Any) -> float:
+        """The SI value of a string such as ``"3.5 mm"``; raises a fault that says what is needed."""
+        if not isinstance(value, str):
+            raise self._fault("a number and its unit in quotes")
+        parts = units.split(value)
+        if parts is None:
+            raise self._fault("a number and its unit")
+        number, unit = parts
+        if not unit:
+            if number == 0:
+                return 0.0
+            raise self._fault("a unit after the number")
+        try:
+            factor, offset = units.to_si(unit, self.si_unit)
+        except (LookupError, ValueError) as fault:
+            raise self._fault(str(fault.args[0])) from fault
+        result = float(factor * number + offset)
+        if not math.isfinite(result):
+            raise self._fault("a finite value")
+        return result
+
+    def _fault(self, why: str) -> PydanticCustomError:
+        return PydanticCustomError(
+            "quantity",
+            "needs {name} such as \"{example}\" ({why})",
+            {"name": self.name, "example": self.example, "why": why},
+        )
+
+    def __get_pydantic_core_schema__(
+        self, source: Any, handler: GetCoreSchemaHandler
+    ) -> core_schema.CoreSchema:
+        return core_schema.no_info_plain_validator_function(self.read)
+
+    def __get_pydantic_json_schema__(
+        self, schema: core_schema.CoreSchema, handler: GetJsonSchemaHandler
+    ) -> JsonSchemaValue:
+        return {
+            "type": "string",
+            "title": self.name,
+            "pattern": r"^\s*[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?\s*\S.*$|^\s*[+-]?0+(\.0*)?\s*$",
+            "examples": [self.example],
+        }
+
+
+Length = Annotated[float, Quantity("a length", "m", "3.5 mm")]
+Time = Annotated[float, Quantity("a time", "s", "2 ms")]
+Frequency = Annotated[float, Quantity("a frequency", "Hz", "1.1 MHz")]
+Angle = Annotated[float, Quantity("an angle", "rad", "30 deg")]
+Mass = Annotated[float, Quantity("a mass", "kg", "137.905 u")]
+Charge = Annotated[float, Quantity("a charge", "C", "1 e")]
+Voltage = Annotated[float, Quantity("a voltage", "V", "180 V")]
+Current = Annotated[float, Quantity("a current", "A", "12 uA")]
+Energy = Annotated[float, Quantity("an energy", "J", "0.3 eV")]
+Temperature = Annotated[float, Quantity("a temperature", "K", "300 K")]
+Velocity = Annotated[float, Quantity("a speed", "m/s", "400 m/s")]
+ElectricField = Annotated[float, Quantity("an electric field", "V/m", "20 kV/m")]
+MagneticField = Annotated[float, Quantity("a magnetic field", "T", "1.5 T")]
+Emittance = Annotated[float, Quantity("an emittance", "m*rad", "5 mm mrad")]
+
+Real = Annotated[float, Strict()]
+"""A plain number without dimension."""
+Count = Annotated[int, Strict()]
+"""A whole number."""
+Name = Annotated[str, StringConstraints(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]+$")]
+"""What a user calls a thing: one line, 1 to 60 characters."""
+
+T = TypeVar("T")
+Positive = Annotated[T, Bound(above=0.0)]
+NonNegative = Annotated[T, Bound(least=0.0)]
+
+
+def read_quantity(declared: Any, text: str) -> float:
+    """The SI value of `text` read as the dimensioned type `declared`, e.g. :data:`Length`.
+
+    Raises
+    ------
+    ValueError
+        The text is not such a quantity; the message says what is needed.
+    """
+    quantity = next(part for part in declared.__metadata__ if isinstance(part, Quantity))
+    try:
+        return float(quantity.read(text))
+    except PydanticCustomError as fault:
+        raise ValueError(fault.message()) from fault

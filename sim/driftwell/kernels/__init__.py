@@ -1,0 +1,8 @@
+"""The ground floor of compiled code: decorators, status codes, fixed-order sums, waveforms.
+
+Nothing here knows physics beyond numbers; nothing here imports more than numpy, numba and math.
+"""
+
+from driftwell.kernels.compiled import kernel, pair_kernel, threaded_pair_kernel
+
+__all__ = ["kernel", "pair_kernel", "threaded_pair_kernel"]

@@ -1,0 +1,116 @@
+"""The decorators of all compiled code: they fix the flags and where the machine code is kept.
+
+Numba's cache notices an edit of the decorated function's own file, but not of the functions it
+calls: a cached caller would go on with the old callee. So the cache lives in a folder named by a
+digest of *all* sources of the package; an edit or an upgrade begins a new folder. Folders not used
+for a month are removed.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import shutil
+import tempfile
+import time
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any, TypeVar
+
+import numba
+
+from driftwell._version import __version__
+
+PAIR_FLAGS = frozenset({"reassoc", "contract", "arcp", "nsz"})
+"""What pair and expansion kernels may do to sums; never `nnan` or `ninf`: NaN must survive."""
+
+_MONTH = 30 * 24 * 3600.0
+_PACKAGE = Path(__file__).resolve().parent.parent
+
+F = TypeVar("F", bound=Callable[..., Any])
+
+
+def sources_digest(package: Path = _PACKAGE) -> str:
+    """Twelve hex digits that change when any source file of the package changes."""
+    digest = hashlib.sha256()
+    for path in sorted(package.rglob("*.py")):
+        digest.update(path.relative_to(package).as_posix().encode())
+        digest.update(path.read_bytes())
+    return digest.hexdigest()[:12]
+
+
+def _user_cache() -> Path:
+    """The user's cache folder, or DRIFTWELL_CACHE where that is set."""
+    named = os.environ.get("DRIFTWELL_CACHE")
+    if named:
+        return Path(named)
+    base = os.environ.get("XDG_CACHE_HOME")
+    return (Path(base) if base else Path.home() / ".cache") / "driftwell"
+
+
+def _usable(folder: Path) -> bool:
+    """Whether a file can be made in `folder`, which is made where it is missing."""
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryFile(dir=folder) as probe:
+            probe.write(b"0" * 4096)
+    except OSError:
+        return False
+    return True
+
+
+def _prune(parent: Path, keep: Path) -> None:
+    """Remove machine code of other versions not used for a month."""
+    now = time.time()
+    for folder in parent.glob("kernels-*"):
+        try:
+            if folder != keep and now - folder.stat().st_mtime > _MONTH:
+                shutil.rmtree(folder, ignore_errors=True)
+        except OSError:
+            continue
+
+
+def cache_folder() -> Path:
+    """Where machine code is kept: the user's cache folder, else a temporary one."""
+    name = f"kernels-{__version__}-{sources_digest()}"
+    try:
+        parent = _user_cache()
+    except RuntimeError:  # no home folder
+        parent = None
+    if parent is not None and _usable(parent / name):
+        os.utime(parent / name)
+        _prune(parent, parent / name)
+        return parent / name
+    fallback = Path(tempfile.gettempdir()) / f"driftwell-{os.getuid()}" / name
+    if _usable(fallback):
+        return fallback
+    return Path(tempfile.mkdtemp(prefix="driftwell-"))
+
+
+_FOLDER = cache_folder()
+
+
+def _compiled(function: F, **options: Any) -> F:
+    """`function` under numba, its machine code kept in the folder of this version's sources."""
+    before = numba.config.CACHE_DIR
+    numba.config.CACHE_DIR = str(_FOLDER)
+    try:
+        made: F = numba.njit(cache=True, error_model="numpy", nogil=True, **options)(function)
+    finally:
+        numba.config.CACHE_DIR = before
+    return made
+
+
+def kernel(function: F) -> F:
+    """Compile exactly as written: no reordering of sums."""
+    return _compiled(function)
+
+
+def pair_kernel(function: F) -> F:
+    """Compile a pair or expansion sum: the compiler may reorder and contract its additions."""
+    return _compiled(function, fastmath=set(PAIR_FLAGS))
+
+
+def threaded_pair_kernel(function: F) -> F:
+    """Compile a pair sum whose outer `prange` runs on all threads; each pass writes only its own."""
+    return _compiled(function, fastmath=set(PAIR_FLAGS), parallel=True)

@@ -1,0 +1,1 @@
+"""The account of energy, momentum, angular momentum, charge and count."""

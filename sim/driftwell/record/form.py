@@ -1,0 +1,26 @@
+"""The scenario's [record] section."""
+
+from __future__ import annotations
+
+from driftwell.forms import Count, Form, Positive, Time, key
+
+
+class Record(Form):
+    """What is kept, and how often."""
+
+    every: Positive[Time] | None = key(
+        "time between two records; left out: 200 records over the duration",
+        default=None,
+        example="10 us",
+    )
+    tracks: Count | None = key(
+        "number of charges whose trajectories are kept, evenly chosen by id; left out: all up to "
+        "1000, else 1000",
+        default=None,
+        example=200,
+    )
+    snapshots: Positive[Time] | None = key(
+        "time between two snapshots of every charge; left out: start and end only",
+        default=None,
+        example="100 us",
+    )

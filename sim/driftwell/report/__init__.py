@@ -1,0 +1,1 @@
+"""Pictures and pages, made from run folders only."""

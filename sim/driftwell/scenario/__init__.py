@@ -1,0 +1,1 @@
+"""The scenario file: read, checked, explained, described to editors."""

@@ -1,0 +1,1 @@
+"""What stops charges, and what records their passing: walls and detectors."""
