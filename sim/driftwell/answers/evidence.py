@@ -123,7 +123,8 @@ class Evidence(Protocol):
         """Moments of a cloud at every record."""
 
     def losses(self) -> NDArray[np.void]:
-        """Charges lost: fields time, id, cloud, wall, position (3), velocity (3), kinetic_energy."""
+        """Charges lost: fields time, id, cloud, wall, position (3), velocity (3),
+        kinetic_energy."""
 
     def crossings(self) -> NDArray[np.void]:
         """Passages through detectors: fields time, id, cloud, detector, direction (+1 or -1),

@@ -6,9 +6,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import Enum
 
-from driftwell.forms import Form, Length, Name, key
+from driftwell.forms import Form, Name, Point, key, spelled
 from driftwell.forms.body import Body
-from driftwell.forms.waveforms import AnyWaveform, PackedWaveform
+from driftwell.forms.waveform_table import PackedWaveform
+from driftwell.forms.waveforms import AnyWaveform
 
 
 class Role(Enum):
@@ -37,9 +38,7 @@ class FieldForm(Form):
     """Base of all fields. `centre` is the origin the field's own coordinates count from."""
 
     name: Name = key("what the field is called in messages and results")
-    centre: tuple[Length, Length, Length] = key(
-        "origin of the field's own coordinates", default=(0.0, 0.0, 0.0)
-    )
+    centre: Point = key("origin of the field's own coordinates", default=(0.0, 0.0, 0.0))
 
     def species_named(self) -> tuple[str, ...]:
         """Names of species the options refer to (each must exist in the scenario)."""
@@ -60,6 +59,12 @@ class FieldForm(Form):
         "radial", "cyclotron", "magnetron".
         """
         return {}
+
+    def where(self) -> str:
+        """The centre in words, to end a sentence with; nothing where it is the origin."""
+        if self.centre == (0.0, 0.0, 0.0):
+            return ""
+        return f", centred at ({', '.join(spelled(x, 'm') for x in self.centre)})"
 
     def words(self) -> str:
         """One sentence for `driftwell check`: what the field does, with its numbers."""

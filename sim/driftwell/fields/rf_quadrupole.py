@@ -13,23 +13,23 @@ W. Paul, Rev. Mod. Phys. 62 (1990) 531, eqs. 1-6.
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 from typing import Literal
 
 import numpy as np
 
 from driftwell.fields.form import FieldForm, PackedField, Role
-from driftwell.forms import Length, Positive, key
+from driftwell.fields.rates import linear_rates
+from driftwell.forms import Length, Positive, key, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import (
     AnyWaveform,
     VoltageWave,
     frequency_scale,
-    largest_value,
     packed_waveform,
+    waveform_words,
 )
-from driftwell.kernels import kernel
+from driftwell.kernels import inner_kernel
 
 RF_QUADRUPOLE = 2
 
@@ -53,22 +53,17 @@ class RfQuadrupole(FieldForm):
         )
 
     def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
-        strength = abs(body.charge_to_mass) * largest_value(self.voltage) / self.radius**2
-        drive = 2.0 * math.pi * frequency_scale(self.voltage)
-        if drive == 0.0:
-            return {"radial": math.sqrt(strength)}
-        return {"drive": drive, "secular": strength / (math.sqrt(2.0) * drive)}
+        name = "secular" if frequency_scale(self.voltage) else "radial"
+        return linear_rates({name: abs(body.charge_to_mass) / self.radius**2}, self.voltage)
 
     def words(self) -> str:
-        drive = frequency_scale(self.voltage)
-        how = f"at {drive / 1e6:.6g} MHz" if drive else "static"
         return (
-            f"linear RF quadrupole, r0 = {self.radius * 1e3:.6g} mm, "
-            f"up to {largest_value(self.voltage):.6g} V {how}"
+            f"linear quadrupole of rods at r0 = {spelled(self.radius, 'm')}, "
+            f"{waveform_words(self.voltage, 'V')} between neighbouring rods{self.where()}"
         )
 
 
-@kernel
+@inner_kernel
 def rf_quadrupole(
     p: np.ndarray,
     data: np.ndarray,
@@ -85,12 +80,14 @@ def rf_quadrupole(
     """
     x, y = position[0], position[1]
     ex, ey = out_field[0], out_field[1]
+    x0, y0 = p[0], p[1]
+    per_area: float = p[3]
+    slope = w * per_area
     total = 0.0
-    slope = w * p[3]
     for i in range(first, last):
-        dx = x[i] - p[0]
-        dy = y[i] - p[1]
+        dx = x[i] - x0
+        dy = y[i] - y0
         ex[i] -= slope * dx
         ey[i] += slope * dy
         total += charge[i] * (dx * dx - dy * dy)
-    return 0.5 * p[3] * total
+    return 0.5 * per_area * total

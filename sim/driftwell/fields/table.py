@@ -2,7 +2,7 @@
 
 A new kind is one new file, one line in :data:`FIELD_KINDS` and one branch in the dispatch of its
 role. The branch is chosen once per field and step, not per particle; the loop over particles is
-inside the kind's own kernel, so that it vectorises.
+inside the kind's own kernel, over contiguous rows.
 
 Every electric kind's kernel has the signature
 
@@ -15,6 +15,14 @@ Every electric kind's kernel has the signature
     first, last : the particles to work on
     out_field : (3, n) float64, V/m, added to
     total : float, sum over those particles of charge times g, J for unit w
+
+Every magnetic kind (uniform or not) has a kernel for its field and one for what it induces:
+
+    kernel(p, data, w, position, first, last, out_b)       B = w curl a, T, added to
+    kernel(p, data, rate, position, first, last, out_e)    E = -(dw/dt) a, V/m, added to
+
+A uniform magnetic kind keeps the unit vector of its field in ``p[3:6]``, so that the stepping can
+sum w n over all of them and turn each charge on its exact helix.
 """
 
 from __future__ import annotations
@@ -25,14 +33,53 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.fields.electric_multipole import (
+    ELECTRIC_MULTIPOLE,
+    ElectricMultipole,
+    electric_multipole,
+)
 from driftwell.fields.form import FieldForm, PackedField, Role
+from driftwell.fields.magnetic_multipole import (
+    MAGNETIC_MULTIPOLE,
+    MagneticMultipole,
+    magnetic_multipole,
+    magnetic_multipole_induced,
+)
+from driftwell.fields.quadro_logarithmic import (
+    QUADRO_LOGARITHMIC,
+    QuadroLogarithmic,
+    quadro_logarithmic,
+)
 from driftwell.fields.rf_quadrupole import RF_QUADRUPOLE, RfQuadrupole, rf_quadrupole
+from driftwell.fields.rf_quadrupole_3d import RF_QUADRUPOLE_3D, RfQuadrupole3D, rf_quadrupole_3d
+from driftwell.fields.static_quadrupole import (
+    STATIC_QUADRUPOLE,
+    StaticQuadrupole,
+    static_quadrupole,
+)
 from driftwell.fields.uniform_electric import UNIFORM_ELECTRIC, UniformElectric, uniform_electric
+from driftwell.fields.uniform_magnetic import (
+    UNIFORM_MAGNETIC,
+    UniformMagnetic,
+    uniform_magnetic,
+    uniform_magnetic_induced,
+)
+from driftwell.fields.wire_in_cylinder import WIRE_IN_CYLINDER, WireInCylinder, wire_in_cylinder
 from driftwell.forms.body import Body
-from driftwell.forms.waveforms import waveform_table
+from driftwell.forms.waveform_table import waveform_table
 from driftwell.kernels import kernel
 
-FIELD_KINDS: tuple[type[FieldForm], ...] = (UniformElectric, RfQuadrupole)
+FIELD_KINDS: tuple[type[FieldForm], ...] = (
+    UniformElectric,
+    UniformMagnetic,
+    StaticQuadrupole,
+    RfQuadrupole,
+    RfQuadrupole3D,
+    ElectricMultipole,
+    MagneticMultipole,
+    QuadroLogarithmic,
+    WireInCylinder,
+)
 
 PARAMETERS = 16
 
@@ -77,9 +124,7 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     )
 
 
-def field_tables(
-    forms: Sequence[FieldForm], bodies: Mapping[str, Body]
-) -> dict[Role, FieldTable]:
+def field_tables(forms: Sequence[FieldForm], bodies: Mapping[str, Body]) -> dict[Role, FieldTable]:
     """The scenario's fields as one table for each role."""
     packed = [form.packed(bodies) for form in forms]
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
@@ -102,4 +147,54 @@ def electric_field(
         return uniform_electric(p, data, w, position, charge, first, last, out_field)
     if kind == RF_QUADRUPOLE:
         return rf_quadrupole(p, data, w, position, charge, first, last, out_field)
+    if kind == STATIC_QUADRUPOLE:
+        return static_quadrupole(p, data, w, position, charge, first, last, out_field)
+    if kind == RF_QUADRUPOLE_3D:
+        return rf_quadrupole_3d(p, data, w, position, charge, first, last, out_field)
+    if kind == ELECTRIC_MULTIPOLE:
+        return electric_multipole(p, data, w, position, charge, first, last, out_field)
+    if kind == QUADRO_LOGARITHMIC:
+        return quadro_logarithmic(p, data, w, position, charge, first, last, out_field)
+    if kind == WIRE_IN_CYLINDER:
+        return wire_in_cylinder(p, data, w, position, charge, first, last, out_field)
     return np.nan
+
+
+@kernel
+def magnetic_field(
+    kind: int,
+    p: np.ndarray,
+    data: np.ndarray,
+    w: float,
+    position: np.ndarray,
+    first: int,
+    last: int,
+    out_b: np.ndarray,
+) -> None:
+    """Dispatch to the kernel of a magnetic kind's field; see the module's docstring."""
+    if kind == UNIFORM_MAGNETIC:
+        uniform_magnetic(p, data, w, position, first, last, out_b)
+    elif kind == MAGNETIC_MULTIPOLE:
+        magnetic_multipole(p, data, w, position, first, last, out_b)
+    else:
+        out_b[:, first:last] = np.nan
+
+
+@kernel
+def induced_field(
+    kind: int,
+    p: np.ndarray,
+    data: np.ndarray,
+    rate: float,
+    position: np.ndarray,
+    first: int,
+    last: int,
+    out_e: np.ndarray,
+) -> None:
+    """Dispatch to the kernel of what a magnetic kind induces; see the module's docstring."""
+    if kind == UNIFORM_MAGNETIC:
+        uniform_magnetic_induced(p, data, rate, position, first, last, out_e)
+    elif kind == MAGNETIC_MULTIPOLE:
+        magnetic_multipole_induced(p, data, rate, position, first, last, out_e)
+    else:
+        out_e[:, first:last] = np.nan

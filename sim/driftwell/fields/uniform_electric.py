@@ -9,16 +9,16 @@ from typing import Literal
 import numpy as np
 
 from driftwell.fields.form import FieldForm, PackedField, Role
-from driftwell.forms import Real, key
+from driftwell.forms import Direction, key
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import (
     AnyWaveform,
     ElectricFieldWave,
     frequency_scale,
-    largest_value,
     packed_waveform,
+    waveform_words,
 )
-from driftwell.kernels import kernel
+from driftwell.kernels import inner_kernel
 
 UNIFORM_ELECTRIC = 0
 
@@ -28,7 +28,7 @@ class UniformElectric(FieldForm):
 
     kind: Literal["uniform-electric"]
     strength: ElectricFieldWave = key("field strength", example="20 kV/m")
-    along: tuple[Real, Real, Real] = key(
+    along: Direction = key(
         "direction the field points to; any length but zero", default=(0.0, 0.0, 1.0)
     )
 
@@ -36,12 +36,10 @@ class UniformElectric(FieldForm):
         return self.strength
 
     def packed(self, bodies: Mapping[str, Body]) -> PackedField:
-        length = math.hypot(*self.along)
-        unit = tuple(component / length for component in self.along)
         return PackedField(
             Role.ELECTRIC,
             UNIFORM_ELECTRIC,
-            (*self.centre, *unit),
+            (*self.centre, *self.along),
             packed_waveform(self.strength),
         )
 
@@ -50,10 +48,11 @@ class UniformElectric(FieldForm):
         return {"drive": drive} if drive else {}
 
     def words(self) -> str:
-        return f"uniform electric field of up to {largest_value(self.strength):.6g} V/m"
+        direction = ", ".join(f"{component:.6g}" for component in self.along)
+        return f"uniform electric field along ({direction}), {waveform_words(self.strength, 'V/m')}"
 
 
-@kernel
+@inner_kernel
 def uniform_electric(
     p: np.ndarray,
     data: np.ndarray,
@@ -67,12 +66,12 @@ def uniform_electric(
     """Add E = w n; return the sum of charge times g, g = -n . (x - centre); p = centre, n."""
     x, y, z = position[0], position[1], position[2]
     ex, ey, ez = out_field[0], out_field[1], out_field[2]
+    x0, y0, z0 = p[0], p[1], p[2]
+    nx, ny, nz = p[3], p[4], p[5]
     total = 0.0
     for i in range(first, last):
-        ex[i] += w * p[3]
-        ey[i] += w * p[4]
-        ez[i] += w * p[5]
-        total -= charge[i] * (
-            p[3] * (x[i] - p[0]) + p[4] * (y[i] - p[1]) + p[5] * (z[i] - p[2])
-        )
+        ex[i] += w * nx
+        ey[i] += w * ny
+        ez[i] += w * nz
+        total -= charge[i] * (nx * (x[i] - x0) + ny * (y[i] - y0) + nz * (z[i] - z0))
     return total

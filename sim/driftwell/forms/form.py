@@ -10,9 +10,25 @@ import math
 from dataclasses import dataclass
 from typing import Annotated, Any, Literal, Union
 
-from pydantic import BaseModel, ConfigDict, Discriminator, Field, GetCoreSchemaHandler, Tag
+from pydantic import (
+    BaseModel,
+    ConfigDict,
+    Discriminator,
+    Field,
+    GetCoreSchemaHandler,
+    Tag,
+    model_validator,
+)
 from pydantic.fields import PydanticUndefined  # type: ignore[attr-defined]
 from pydantic_core import PydanticCustomError, core_schema
+
+checked = model_validator(mode="after")
+"""Decorator of a form's method that checks its keys against each other and returns `self`."""
+
+
+def refuse(needed: str) -> PydanticCustomError:
+    """The fault to raise in a :data:`checked` method: says what the keys must be."""
+    return PydanticCustomError("order", "{needed}", {"needed": needed})
 
 
 class Form(BaseModel):
@@ -26,11 +42,11 @@ def key(help: str, *, default: Any = PydanticUndefined, example: Any = None) -> 
     return Field(default, description=help, examples=None if example is None else [example])
 
 
-def one_of(kinds: tuple[type[Form], ...]) -> Any:
-    """The type "one of these forms, told apart by their key `kind`"."""
+def one_of(kinds: tuple[type[Form], ...], by: str = "kind") -> Any:
+    """The type "one of these forms, told apart by their key `kind`" (or the key `by`)."""
     if len(kinds) == 1:
         return kinds[0]
-    return Annotated[Union[kinds], Discriminator("kind")]  # noqa: UP007 - built from a table
+    return Annotated[Union[kinds], Discriminator(by)]  # noqa: UP007 - built from a table
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +57,7 @@ class Bound:
     least: float | None = None
     below: float | None = None
     most: float | None = None
+    other_than: float | None = None
 
     def check(self, value: float) -> float:
         """`value`, when it lies in the range."""
@@ -49,6 +66,7 @@ class Bound:
             or (self.least is not None and not value >= self.least)
             or (self.below is not None and not value < self.below)
             or (self.most is not None and not value <= self.most)
+            or (self.other_than is not None and value == self.other_than)
             or not math.isfinite(value)
         ):
             raise PydanticCustomError("bound", "must be {range}", {"range": self.words()})
@@ -63,6 +81,7 @@ class Bound:
                 ("at least", self.least),
                 ("less than", self.below),
                 ("at most", self.most),
+                ("other than", self.other_than),
             )
             if limit is not None
         ]
@@ -74,13 +93,32 @@ class Bound:
         return core_schema.no_info_after_validator_function(self.check, handler(source))
 
 
-def or_word(word: str, kind: Any) -> Any:
-    """The type "this one word, or a `kind`", e.g. ``"auto"`` or a time."""
+def or_word(word: str | tuple[str, ...], kind: Any) -> Any:
+    """The type "this word (or one of these), or a `kind`", e.g. ``"auto"`` or a time."""
+    words = (word,) if isinstance(word, str) else word
 
     def which(value: Any) -> str:
-        return "word" if value == word else "value"
+        return "word" if isinstance(value, str) and value in words else "value"
 
     return Annotated[
-        Union[Annotated[Literal[word], Tag("word")], Annotated[kind, Tag("value")]],  # noqa: UP007
+        Union[Annotated[Literal[words], Tag("word")], Annotated[kind, Tag("value")]],  # noqa: UP007
         Discriminator(which),
     ]
+
+
+def per_axis(kind: Any, axes: int = 3) -> Any:
+    """The type "one `kind` for all axes, or a list with one for each", see :func:`on_each_axis`."""
+
+    def which(value: Any) -> str:
+        return "axes" if isinstance(value, list | tuple) else "one"
+
+    several: Any = tuple.__class_getitem__((kind,) * axes)
+    return Annotated[
+        Union[Annotated[kind, Tag("one")], Annotated[several, Tag("axes")]],  # noqa: UP007
+        Discriminator(which),
+    ]
+
+
+def on_each_axis(value: float | tuple[float, ...], axes: int = 3) -> tuple[float, ...]:
+    """A value read as :func:`per_axis`, one number for each axis."""
+    return value if isinstance(value, tuple) else (value,) * axes

@@ -10,7 +10,13 @@ import math
 from dataclasses import dataclass
 from typing import Annotated, Any, TypeVar
 
-from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler, Strict, StringConstraints
+from pydantic import (
+    AfterValidator,
+    GetCoreSchemaHandler,
+    GetJsonSchemaHandler,
+    Strict,
+    StringConstraints,
+)
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import PydanticCustomError, core_schema
 
@@ -83,6 +89,8 @@ Temperature = Annotated[float, Quantity("a temperature", "K", "300 K")]
 Velocity = Annotated[float, Quantity("a speed", "m/s", "400 m/s")]
 ElectricField = Annotated[float, Quantity("an electric field", "V/m", "20 kV/m")]
 MagneticField = Annotated[float, Quantity("a magnetic field", "T", "1.5 T")]
+FieldGradient = Annotated[float, Quantity("an electric field gradient", "V/m^2", "3.0e7 V/m^2")]
+MagneticGradient = Annotated[float, Quantity("a magnetic field gradient", "T/m", "12 T/m")]
 Emittance = Annotated[float, Quantity("an emittance", "m*rad", "5 mm mrad")]
 
 Real = Annotated[float, Strict()]
@@ -91,10 +99,35 @@ Count = Annotated[int, Strict()]
 """A whole number."""
 Name = Annotated[str, StringConstraints(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]+$")]
 """What a user calls a thing: one line, 1 to 60 characters."""
+Title = Annotated[
+    str, StringConstraints(min_length=1, max_length=200, pattern=r"^[^\x00-\x1f\x7f]+$")
+]
+"""A sentence on one line, 1 to 200 characters."""
 
 T = TypeVar("T")
 Positive = Annotated[T, Bound(above=0.0)]
 NonNegative = Annotated[T, Bound(least=0.0)]
+NonZero = Annotated[T, Bound(other_than=0.0)]
+
+
+def _unit_vector(components: tuple[float, float, float]) -> tuple[float, float, float]:
+    length = math.hypot(*components)
+    if not 0.0 < length < math.inf:
+        raise PydanticCustomError("direction", "must have at least one component other than 0")
+    x, y, z = components
+    return x / length, y / length, z / length
+
+
+Direction = Annotated[tuple[Real, Real, Real], AfterValidator(_unit_vector)]
+"""Three plain numbers, any length but zero; kept with length 1."""
+Point = tuple[Length, Length, Length]
+"""A place."""
+
+
+def quantity_name(declared: Any) -> str:
+    """What a dimensioned type is called, e.g. ``a voltage``; ``a number`` for a plain one."""
+    names = [part.name for part in declared.__metadata__ if isinstance(part, Quantity)]
+    return names[0] if names else "a number"
 
 
 def read_quantity(declared: Any, text: str) -> float:

@@ -1,4 +1,4 @@
-"""Waveforms as a scenario declares them, and their packing for compiled code.
+"""Waveforms as a scenario declares them.
 
 Any voltage, current or field strength may be a plain quantity (constant) or a table such as
 ``{ amplitude = "180 V", frequency = "1.1 MHz" }``.
@@ -7,45 +7,46 @@ Any voltage, current or field strength may be a plain quantity (constant) or a t
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from typing import TYPE_CHECKING, Annotated, Any, Generic, Literal, Self, TypeVar, Union
 
 import numpy as np
-from numpy.typing import NDArray
-from pydantic import Discriminator, Tag, model_validator
-from pydantic_core import PydanticCustomError
+from numpy.typing import ArrayLike
+from pydantic import Discriminator, Tag
 
-from driftwell.forms.form import Form, key
+from driftwell.errors import ScenarioError
+from driftwell.forms.form import Form, checked, key, refuse
 from driftwell.forms.quantities import (
     Angle,
     Count,
     Current,
     ElectricField,
+    FieldGradient,
     Frequency,
     MagneticField,
+    MagneticGradient,
     NonNegative,
     Positive,
     Real,
     Time,
     Voltage,
+    quantity_name,
 )
+from driftwell.forms.spelling import spelled
+from driftwell.forms.waveform_table import PackedWaveform
 from driftwell.kernels import waveform as packed
 
 Q = TypeVar("Q", bound=float)
 
-
-@dataclass(frozen=True, slots=True)
-class PackedWaveform:
-    """One waveform as numbers: kind, parameters, table points, and what the step choice needs."""
-
-    kind: int
-    parameters: tuple[float, ...]
-    points: tuple[tuple[float, float], ...] = ()
+_MOST_EDGES = 4_000_000
 
 
 class WaveformForm(Form):
     """Base of all waveforms given as a table."""
+
+    @classmethod
+    def model_parametrized_name(cls, params: tuple[Any, ...]) -> str:
+        """What editors call the waveform of one quantity, e.g. ``Sine (a voltage)``."""
+        return f"{cls.__name__} ({quantity_name(params[0])})"
 
     def packed(self) -> PackedWaveform:
         """The waveform as numbers for compiled code."""
@@ -62,6 +63,14 @@ class WaveformForm(Form):
     def largest(self) -> float:
         """Largest magnitude the value reaches, SI."""
         raise TypeError(f"{type(self).__name__} must say how large it gets")
+
+    def steady(self) -> float:
+        """Largest magnitude the value has apart from its oscillation, SI."""
+        return self.largest()
+
+    def words(self, unit: str) -> str:
+        """The waveform in words; `unit` is the SI unit of its values."""
+        raise TypeError(f"{type(self).__name__} must describe itself")
 
 
 class Sine(WaveformForm, Generic[Q]):
@@ -83,6 +92,15 @@ class Sine(WaveformForm, Generic[Q]):
     def largest(self) -> float:
         return abs(self.offset) + abs(self.amplitude)
 
+    def steady(self) -> float:
+        return abs(self.offset)
+
+    def words(self, unit: str) -> str:
+        offset = f"{spelled(self.offset, unit)} and " if self.offset else ""
+        phase = f" from phase {math.degrees(self.phase):.6g} deg" if self.phase else ""
+        amplitude = f"{spelled(self.amplitude, unit)} amplitude"
+        return f"{offset}{amplitude} at {spelled(self.frequency, 'Hz')}{phase}"
+
 
 class Ramp(WaveformForm, Generic[Q]):
     """A straight line from one level to another; constant before and after."""
@@ -93,10 +111,10 @@ class Ramp(WaveformForm, Generic[Q]):
     start: NonNegative[Time] = key("when the ramp begins")
     end: Positive[Time] = key("when the ramp ends")
 
-    @model_validator(mode="after")
+    @checked
     def _ordered(self) -> Self:
         if self.end <= self.start:
-            raise PydanticCustomError("order", "`end` must be later than `start`")
+            raise refuse("`end` must be later than `start`")
         return self
 
     def packed(self) -> PackedWaveform:
@@ -107,6 +125,12 @@ class Ramp(WaveformForm, Generic[Q]):
 
     def largest(self) -> float:
         return max(abs(self.before), abs(self.after))
+
+    def words(self, unit: str) -> str:
+        return (
+            f"ramp from {spelled(self.before, unit)} at {spelled(self.start, 's')} "
+            f"to {spelled(self.after, unit)} at {spelled(self.end, 's')}"
+        )
 
 
 class Step(WaveformForm, Generic[Q]):
@@ -126,6 +150,12 @@ class Step(WaveformForm, Generic[Q]):
     def largest(self) -> float:
         return max(abs(self.before), abs(self.after))
 
+    def words(self, unit: str) -> str:
+        return (
+            f"{spelled(self.before, unit)}, from {spelled(self.at, 's')} on "
+            f"{spelled(self.after, unit)}"
+        )
+
 
 class Pulses(WaveformForm, Generic[Q]):
     """One pulse, or a train of them, with straight edges."""
@@ -136,19 +166,19 @@ class Pulses(WaveformForm, Generic[Q]):
     start: NonNegative[Time] = key("when the first pulse begins to rise")
     width: Positive[Time] = key("from the beginning of the rise to the beginning of the fall")
     rise: NonNegative[Time] = key("duration of each edge", default=0.0)
-    period: Positive[Time] | None = key("time from pulse to pulse; left out: one pulse", default=None)
+    period: Positive[Time] | None = key(
+        "time from pulse to pulse; left out: one pulse", default=None
+    )
     count: Positive[Count] | None = key("number of pulses; left out: no end", default=None)
 
-    @model_validator(mode="after")
+    @checked
     def _ordered(self) -> Self:
         if self.rise > self.width:
-            raise PydanticCustomError("order", "`rise` must not be longer than `width`")
+            raise refuse("`rise` must not be longer than `width`")
         if self.period is not None and self.width + self.rise > self.period:
-            raise PydanticCustomError(
-                "order", "`period` must be at least `width` and `rise` together"
-            )
+            raise refuse("`period` must be at least `width` and `rise` together")
         if self.count is not None and self.period is None:
-            raise PydanticCustomError("order", "`count` needs a `period`")
+            raise refuse("`count` needs a `period`")
         return self
 
     def packed(self) -> PackedWaveform:
@@ -170,14 +200,27 @@ class Pulses(WaveformForm, Generic[Q]):
         if self.period is not None:
             number = max(0, math.ceil((duration - self.start) / self.period))
             number = min(number, self.count) if self.count is not None else number
-        edges = {0.0, self.rise, self.width, self.width + self.rise}
-        return _within(
-            (self.start + i * (self.period or 0.0) + edge for i in range(number) for edge in edges),
-            duration,
-        )
+        if 4 * number > _MOST_EDGES:
+            raise ScenarioError(
+                f"a train of {number} pulses in {spelled(duration, 's')} has more edges than "
+                f"{_MOST_EDGES}: take a longer `period`, a smaller `count` or a sine wave"
+            )
+        begins = self.start + np.arange(number) * (self.period or 0.0)
+        edges = [0.0, self.rise, self.width, self.width + self.rise]
+        return _within(np.add.outer(begins, edges), duration)
 
     def largest(self) -> float:
         return max(abs(self.low), abs(self.high))
+
+    def words(self, unit: str) -> str:
+        low, high = spelled(self.low, unit), spelled(self.high, unit)
+        width, start = spelled(self.width, "s"), spelled(self.start, "s")
+        edges = f" with edges of {spelled(self.rise, 's')}" if self.rise else ""
+        if self.period is None:
+            return f"{low} with one pulse to {high} for {width}{edges}, at {start}"
+        number = f"{self.count} pulses" if self.count is not None else "pulses"
+        every = spelled(self.period, "s")
+        return f"{low} with {number} to {high} for {width}{edges}, every {every} from {start} on"
 
 
 class Table(WaveformForm, Generic[Q]):
@@ -187,14 +230,12 @@ class Table(WaveformForm, Generic[Q]):
     times: tuple[Time, ...] = key("times of the points, rising")
     values: tuple[Q, ...] = key("values at those times")
 
-    @model_validator(mode="after")
+    @checked
     def _ordered(self) -> Self:
         if len(self.times) != len(self.values) or len(self.times) < 2:
-            raise PydanticCustomError(
-                "order", "`times` and `values` must hold the same number of points, at least 2"
-            )
+            raise refuse("`times` and `values` must hold the same number of points, at least 2")
         if any(b <= a for a, b in zip(self.times, self.times[1:], strict=False)):
-            raise PydanticCustomError("order", "`times` must rise from point to point")
+            raise refuse("`times` must rise from point to point")
         return self
 
     def packed(self) -> PackedWaveform:
@@ -207,9 +248,18 @@ class Table(WaveformForm, Generic[Q]):
     def largest(self) -> float:
         return max(abs(value) for value in self.values)
 
+    def words(self, unit: str) -> str:
+        return (
+            f"{spelled(min(self.values), unit)} to {spelled(max(self.values), unit)} "
+            f"in {len(self.times)} points from {spelled(self.times[0], 's')} "
+            f"to {spelled(self.times[-1], 's')}"
+        )
 
-def _within(times: Iterable[float], duration: float) -> list[float]:
-    return sorted({t for t in times if 0.0 < t < duration})
+
+def _within(times: ArrayLike, duration: float) -> list[float]:
+    """The different times between 0 and `duration`, rising."""
+    rising = np.unique(np.asarray(times, dtype=np.float64))
+    return [float(t) for t in rising[(rising > 0.0) & (rising < duration)]]
 
 
 def _kind_of(value: Any) -> str:
@@ -232,7 +282,11 @@ def waveform_of(quantity: Any) -> Any:
             Annotated[Pulses[quantity], Tag("pulses")],
             Annotated[Table[quantity], Tag("table")],
         ],
-        Discriminator(_kind_of),
+        Discriminator(
+            _kind_of,
+            custom_error_type="waveform",
+            custom_error_message='`kind` must be "sine", "ramp", "step", "pulses" or "table"',
+        ),
     ]
 
 
@@ -242,13 +296,17 @@ if TYPE_CHECKING:
     VoltageWave = AnyWaveform
     CurrentWave = AnyWaveform
     ElectricFieldWave = AnyWaveform
+    FieldGradientWave = AnyWaveform
     MagneticFieldWave = AnyWaveform
+    MagneticGradientWave = AnyWaveform
     RealWave = AnyWaveform
 else:
     VoltageWave = waveform_of(Voltage)
     CurrentWave = waveform_of(Current)
     ElectricFieldWave = waveform_of(ElectricField)
+    FieldGradientWave = waveform_of(FieldGradient)
     MagneticFieldWave = waveform_of(MagneticField)
+    MagneticGradientWave = waveform_of(MagneticGradient)
     RealWave = waveform_of(Real)
 
 
@@ -269,31 +327,16 @@ def largest_value(value: AnyWaveform) -> float:
     return value.largest() if isinstance(value, WaveformForm) else abs(value)
 
 
+def steady_value(value: AnyWaveform) -> float:
+    """Largest magnitude the waveform has apart from its oscillation, SI."""
+    return value.steady() if isinstance(value, WaveformForm) else abs(value)
+
+
 def frequency_scale(value: AnyWaveform) -> float:
     """Highest frequency in the waveform that a step must follow, Hz."""
     return value.frequency_scale() if isinstance(value, WaveformForm) else 0.0
 
 
-@dataclass(frozen=True, slots=True)
-class WaveformTable:
-    """All waveforms of a run as flat arrays for compiled code.
-
-    kind : (m,) int64; parameter : (m, 8) float64; data : (k, 2) float64, times and values.
-    """
-
-    kind: NDArray[np.int64]
-    parameter: NDArray[np.float64]
-    data: NDArray[np.float64]
-
-
-def waveform_table(waveforms: Sequence[PackedWaveform]) -> WaveformTable:
-    """Lay the waveforms one after the other; tables share one array of points."""
-    kind = np.array([wave.kind for wave in waveforms], dtype=np.int64)
-    parameter = np.zeros((len(waveforms), packed.PARAMETERS))
-    points: list[tuple[float, float]] = []
-    for row, wave in zip(parameter, waveforms, strict=True):
-        row[: len(wave.parameters)] = wave.parameters
-        if wave.kind == packed.TABLE:
-            row[:2] = len(points), len(wave.points)
-            points.extend(wave.points)
-    return WaveformTable(kind, parameter, np.array(points or [(0.0, 0.0)], dtype=np.float64))
+def waveform_words(value: AnyWaveform, unit: str) -> str:
+    """A waveform in words, e.g. ``180 V amplitude at 1.1 MHz``; `unit` is that of its values."""
+    return value.words(unit) if isinstance(value, WaveformForm) else spelled(value, unit)

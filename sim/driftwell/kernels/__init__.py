@@ -3,6 +3,22 @@
 Nothing here knows physics beyond numbers; nothing here imports more than numpy, numba and math.
 """
 
-from driftwell.kernels.compiled import kernel, pair_kernel, threaded_pair_kernel
+from driftwell.kernels.compiled import (
+    inner_kernel,
+    inner_pair_kernel,
+    kernel,
+    outer_kernel,
+    outer_pair_kernel,
+    pair_kernel,
+    threaded_pair_kernel,
+)
 
-__all__ = ["kernel", "pair_kernel", "threaded_pair_kernel"]
+__all__ = [
+    "inner_kernel",
+    "inner_pair_kernel",
+    "kernel",
+    "outer_kernel",
+    "outer_pair_kernel",
+    "pair_kernel",
+    "threaded_pair_kernel",
+]

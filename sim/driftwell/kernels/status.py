@@ -14,3 +14,5 @@ RUNAWAY = 4
 """A charge left the region the scenario declares as its extent."""
 COLLAPSE = 5
 """Two opposite charges came closer than the step can follow."""
+OVERFLOW = 6
+"""A step met more surfaces than the event buffer can hold: the step is far too long."""

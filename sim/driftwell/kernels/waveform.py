@@ -24,7 +24,7 @@ import math
 
 import numpy as np
 
-from driftwell.kernels.compiled import kernel
+from driftwell.kernels.compiled import inner_kernel, kernel
 
 CONSTANT = 0
 SINE = 1
@@ -62,7 +62,7 @@ def waveform(
     return _table(data, int(parameter[0]), int(parameter[1]), t, inside)
 
 
-@kernel
+@inner_kernel
 def _ramp(
     before: float, after: float, start: float, end: float, t: float, inside: float
 ) -> tuple[float, float]:
@@ -75,7 +75,7 @@ def _ramp(
     return before + slope * (t - start), slope
 
 
-@kernel
+@inner_kernel
 def _pulses(parameter: np.ndarray, t: float, inside: float) -> tuple[float, float]:
     """Trapezoidal pulses: up over `rise`, high until `width`, down over `rise`."""
     low, high, start, width = parameter[0], parameter[1], parameter[2], parameter[3]
@@ -94,7 +94,7 @@ def _pulses(parameter: np.ndarray, t: float, inside: float) -> tuple[float, floa
     return _ramp(high, low, begin + width, begin + width + rise, t, inside)
 
 
-@kernel
+@inner_kernel
 def _table(
     data: np.ndarray, first: int, points: int, t: float, inside: float
 ) -> tuple[float, float]:

@@ -11,6 +11,9 @@ from numpy.typing import NDArray
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
+LARGEST_COUNT = 10_000_000
+"""Most simulated charges one cloud may have: about a gigabyte of state."""
+
 
 @dataclass(slots=True)
 class Particles:

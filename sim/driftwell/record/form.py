@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from driftwell.forms import Count, Form, Positive, Time, key
+from driftwell.forms import Count, Form, NonNegative, Positive, Time, key
 
 
 class Record(Form):
@@ -13,7 +13,7 @@ class Record(Form):
         default=None,
         example="10 us",
     )
-    tracks: Count | None = key(
+    tracks: NonNegative[Count] | None = key(
         "number of charges whose trajectories are kept, evenly chosen by id; left out: all up to "
         "1000, else 1000",
         default=None,

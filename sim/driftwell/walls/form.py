@@ -7,6 +7,12 @@ from typing import Literal
 
 from driftwell.forms import Form, Name, key
 
+PASS = 0
+"""The surface only records."""
+ABSORB = 1
+REFLECT = 2
+EFFECT = {"absorb": ABSORB, "reflect": REFLECT}
+
 
 @dataclass(frozen=True, slots=True)
 class PackedSurface:
@@ -28,6 +34,10 @@ class WallForm(Form):
     def packed(self) -> PackedSurface:
         """The wall as numbers for compiled code."""
         raise TypeError(f"{type(self).__name__} must say how it is packed")
+
+    def closed(self) -> bool:
+        """Whether the wall encloses a space that every charge must be born in."""
+        return False
 
     def words(self) -> str:
         """One sentence for `driftwell check`."""

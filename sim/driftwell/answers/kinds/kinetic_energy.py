@@ -1,0 +1,60 @@
+"""Kinetic energy of a cloud's charges: its mean and its spread, of one real particle, in eV."""
+
+from __future__ import annotations
+
+from typing import ClassVar, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.answers.charges import Charges
+from driftwell.answers.evidence import CloudFacts, Moments
+from driftwell.answers.kinds.moment_question import MomentQuestion
+from driftwell.answers.moments import kinetic_energies
+from driftwell.answers.sampling import mean_error
+from driftwell.constants import ELEMENTARY_CHARGE
+from driftwell.forms import key
+
+Floats = NDArray[np.float64]
+
+
+class KineticEnergy(MomentQuestion):
+    """Mean kinetic energy, drift of the cloud included."""
+
+    unit: ClassVar[str] = "eV"
+    ask: Literal["kinetic-energy"] = key("mean kinetic energy, motion of the whole cloud included")
+
+    def least_charges(self) -> int:
+        return 1
+
+    def of_charges(self, charges: Charges) -> float:
+        return float(_energies(charges).mean())
+
+    def of_moments(self, moments: Moments, cloud: CloudFacts) -> Floats:
+        return moments.kinetic_energy / ELEMENTARY_CHARGE
+
+    def error_of(self, charges: Charges) -> float | None:
+        return mean_error(_energies(charges))
+
+    def words(self) -> str:
+        return f'mean kinetic energy of cloud "{self.of}" {self.when()}'
+
+
+class KineticEnergySpread(MomentQuestion):
+    """Standard deviation of the kinetic energy from charge to charge."""
+
+    unit: ClassVar[str] = "eV"
+    ask: Literal["kinetic-energy-spread"] = key("standard deviation of the kinetic energy")
+
+    def of_charges(self, charges: Charges) -> float:
+        return float(_energies(charges).std())
+
+    def of_moments(self, moments: Moments, cloud: CloudFacts) -> Floats:
+        return np.asarray(np.sqrt(moments.kinetic_variance) / ELEMENTARY_CHARGE)
+
+    def words(self) -> str:
+        return f'spread of kinetic energy of cloud "{self.of}" {self.when()}'
+
+
+def _energies(charges: Charges) -> Floats:
+    return kinetic_energies(charges.velocity, charges.cloud.mass) / ELEMENTARY_CHARGE

@@ -1,0 +1,275 @@
+"""Lines in an evenly sampled record: frequency far below a bin, and how well it is known.
+
+    value(t) = c0 + c1 t + sum over lines of a cos(w t) + b sin(w t)                          (1)
+
+Lines are taken one after the other, the strongest first: the highest point of the spectrum of what
+is left (Hann window, zero-padded) gives a start value through a parabola in its logarithm, then
+all lines found so far are fitted together by least squares (Gauss-Newton in eq. 1). It ends when
+nothing stands above the noise. Lines that are one bin (one over the record's length) apart are
+still told apart in a quiet record.
+
+The error comes from the fit's covariance, with the noise taken from what is left around the line:
+motion that is not a steady sine (a frequency that wanders, lines too close to tell apart) leaves a
+residue just there and widens the error.
+
+    error(f)^2 about 6 s^2 / (pi^2 A^2 n T^2)  for white noise s, amplitude A, n samples in T  (2)
+
+References
+----------
+D. C. Rife, R. R. Boorstyn, IEEE Trans. Inf. Theory 20 (1974) 591 (eq. 2: the least any estimate
+can have; from memory).
+F. J. Harris, Proc. IEEE 66 (1978) 51 (window; from memory).
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.errors import AnswerError
+from driftwell.forms.spelling import spelled
+
+Floats = NDArray[np.float64]
+
+LINES = 12
+LEAST_SAMPLES = 16
+LEAST_PERIODS = 2.0
+_PADDED = 4
+_QUIET = 1e-11
+"""A line so much weaker than the strongest is rounding."""
+_ABOVE_NOISE = 7.0
+_LOCAL = 25
+_SLICE = 1 << 16
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One line: frequency and its error in Hz, amplitude in the unit of the record."""
+
+    frequency: float
+    error: float
+    amplitude: float
+
+
+@dataclass(slots=True)
+class _Fit:
+    """Eq. 1 on times scaled to -1...1: `rate` (m,) of the lines, `linear` = c0, c1, (a, b) each."""
+
+    rate: Floats
+    linear: Floats
+
+
+def lines_in(time: Floats, value: Floats) -> list[Line]:
+    """Lines in evenly spaced samples (n,), the strongest first.
+
+    Raises AnswerError where there are too few samples or nothing stands above the noise.
+    """
+    count = time.size
+    if count < LEAST_SAMPLES:
+        raise AnswerError(f"needs at least {LEAST_SAMPLES} samples, there are {count}")
+    spacing = (time[-1] - time[0]) / (count - 1)
+    if float(np.max(np.abs(np.diff(time) - spacing))) > 0.01 * spacing:
+        raise AnswerError("the samples are not evenly spaced in time")
+    half = 0.5 * (time[-1] - time[0])
+    scaled = (time - 0.5 * (time[0] + time[-1])) / half
+    bin_rate = 2.0 * math.pi / (count * spacing) * half
+    moved = value - value.mean()
+    scale = float(np.max(np.abs(moved)))
+    rounding = float(np.finfo(float).eps * np.max(np.abs(value)))
+    if scale <= 100.0 * rounding:
+        raise AnswerError("it does not move")
+    moved /= scale
+    fit = _fitted(scaled, moved, bin_rate, rounding / scale)
+    if fit.rate.size == 0:
+        raise AnswerError("nothing in it stands above the noise")
+    errors = _rate_errors(scaled, moved, fit, bin_rate)
+    amplitude = scale * np.hypot(fit.linear[2::2], fit.linear[3::2])
+    found = [
+        Line(
+            float(rate / half / (2.0 * math.pi)),
+            # Below four roundings the error is that of the arithmetic.
+            float(max(error, 4.0 * np.finfo(float).eps * rate) / half / (2.0 * math.pi)),
+            float(strength),
+        )
+        for rate, error, strength in zip(fit.rate, errors, amplitude, strict=True)
+    ]
+    return sorted(found, key=lambda line: -line.amplitude)
+
+
+def chosen_line(lines: list[Line], near: float | None, length: float) -> Line:
+    """The strongest line, or the strongest within a tenth of `near` (or two bins of it), Hz.
+
+    Raises AnswerError where there is none, or the record of `length` (s) is too short for it.
+    """
+    if near is not None:
+        reach = max(0.1 * near, 2.0 / length)
+        found = lines
+        lines = [line for line in lines if abs(line.frequency - near) <= reach]
+        if not lines:
+            strongest = ", ".join(spelled(line.frequency, "Hz") for line in found[:3])
+            raise AnswerError(
+                f"no line within {spelled(reach, 'Hz', 3)} of {spelled(near, 'Hz')}; "
+                f"the strongest are at {strongest}"
+            )
+    line = lines[0]
+    if line.frequency * length < LEAST_PERIODS:
+        raise AnswerError(
+            f"the record of {spelled(length, 's', 3)} holds fewer than {LEAST_PERIODS:g} periods; "
+            "run longer"
+        )
+    return line
+
+
+def _fitted(time: Floats, value: Floats, bin_rate: float, rounding: float) -> _Fit:
+    """All lines above the noise and the rounding of the values, fitted together."""
+    fit = _Fit(np.empty(0), np.zeros(2))
+    fit.linear = _solved(time, value, fit)
+    quiet = rounding
+    for _ in range(LINES):
+        start = _next_line(value - _model(time, fit), bin_rate, quiet)
+        if start is None or np.any(np.abs(fit.rate - start) < 0.5 * bin_rate):
+            break
+        more = _Fit(np.append(fit.rate, start), np.append(fit.linear, [0.0, 0.0]))
+        more.linear = _solved(time, value, more)
+        more = _refined(time, value, more, bin_rate, rounds=4)
+        amplitude = np.hypot(more.linear[2::2], more.linear[3::2])
+        close = np.diff(np.sort(more.rate)) < 0.5 * bin_rate
+        if np.any(close) or amplitude.max() > 10.0 or more.rate.min() <= 0.0:
+            break
+        fit = more
+        quiet = max(rounding, _QUIET * float(amplitude.max()))
+    return _refined(time, value, fit, bin_rate, rounds=40)
+
+
+def _spectrum(value: Floats) -> tuple[Floats, int]:
+    """Power of the windowed values on a padded grid, and the length of that grid."""
+    from scipy.fft import next_fast_len
+
+    count = value.size
+    window = 0.5 - 0.5 * np.cos(2.0 * math.pi * (np.arange(count) + 0.5) / count)
+    length = int(next_fast_len(_PADDED * count, real=True))
+    return np.asarray(np.abs(np.fft.rfft(value * window, length)) ** 2), length
+
+
+def _next_line(rest: Floats, bin_rate: float, quiet: float) -> float | None:
+    """Scaled rate of the strongest line in what is left; None where it is noise or quieter."""
+    count = rest.size
+    power, length = _spectrum(rest)
+    # Below one bin a line cannot be told from the straight line in eq. 1.
+    first = math.ceil(length / count)
+    body = power[first : power.size - 1]
+    peak = first + int(body.argmax())
+    # The median of an exponential distribution is ln 2 of its mean.
+    noise = float(np.median(body)) / math.log(2.0)
+    if power[peak] <= (math.log(count / 2.0) + _ABOVE_NOISE) * noise:
+        return None
+    if 4.0 * math.sqrt(power[peak]) / count <= quiet:  # its amplitude
+        return None
+    low, middle, high = np.log(np.maximum(power[peak - 1 : peak + 2], 1e-300))
+    bend = low - 2.0 * middle + high
+    shift = 0.5 * (low - high) / bend if bend < 0.0 else 0.0
+    return float((peak + min(max(shift, -1.0), 1.0)) * count / length * bin_rate)
+
+
+def _refined(time: Floats, value: Floats, fit: _Fit, bin_rate: float, rounds: int) -> _Fit:
+    """Gauss-Newton on all unknowns of eq. 1; a step that does not help is halved."""
+    if fit.rate.size == 0:
+        return fit
+    left = _left(time, value, fit)
+    for _ in range(rounds):
+        change = _step(time, value, fit)[0]
+        by = change[2 + 2 * fit.rate.size :]
+        limit = 0.5 * bin_rate / max(float(np.max(np.abs(by))), 1e-300)
+        size = min(1.0, limit)
+        for _ in range(8):
+            tried = _Fit(fit.rate + size * by, fit.linear)
+            tried.linear = _solved(time, value, tried)
+            after = _left(time, value, tried)
+            if after <= left:
+                break
+            size *= 0.5
+        else:
+            return fit
+        settled = bool(np.all(np.abs(size * by) <= 1e-15 * np.abs(fit.rate)))
+        fit, left = tried, after
+        if settled:
+            break
+    return fit
+
+
+def _columns(time: Floats, fit: _Fit, rates_too: bool) -> Floats:
+    """Derivatives of eq. 1 by c0, c1, (a, b) of each line, then each rate: (unknowns, n)."""
+    rows = [np.ones_like(time), time]
+    by_rate = []
+    for line, rate in enumerate(fit.rate):
+        cosine, sine = np.cos(rate * time), np.sin(rate * time)
+        rows += [cosine, sine]
+        if rates_too:
+            a, b = fit.linear[2 + 2 * line : 4 + 2 * line]
+            by_rate.append(time * (b * cosine - a * sine))
+    return np.array(rows + by_rate)
+
+
+def _model(time: Floats, fit: _Fit) -> Floats:
+    parts = [
+        fit.linear @ _columns(time[k : k + _SLICE], fit, False) for k in range(0, time.size, _SLICE)
+    ]
+    return np.concatenate(parts)
+
+
+def _left(time: Floats, value: Floats, fit: _Fit) -> float:
+    return float(np.sum((value - _model(time, fit)) ** 2))
+
+
+def _normal(time: Floats, value: Floats, fit: _Fit, rates_too: bool) -> tuple[Floats, Floats]:
+    """Normal equations of least squares: products of columns, and of columns and residue."""
+    size = 2 + (3 if rates_too else 2) * fit.rate.size
+    square, right = np.zeros((size, size)), np.zeros(size)
+    for k in range(0, time.size, _SLICE):
+        columns = _columns(time[k : k + _SLICE], fit, rates_too)
+        rest = value[k : k + _SLICE]
+        if rates_too:
+            rest = rest - fit.linear @ columns[: fit.linear.size]
+        square += columns @ columns.T
+        right += columns @ rest
+    return square, right
+
+
+def _solved(time: Floats, value: Floats, fit: _Fit) -> Floats:
+    """Best c0, c1, a, b at the given rates; refined once, since the products lose digits."""
+    square, right = _normal(time, value, fit, False)
+    solution = np.asarray(np.linalg.lstsq(square, right, rcond=None)[0])
+    rest = value - _model(time, _Fit(fit.rate, solution))
+    _, right = _normal(time, rest, fit, False)
+    return solution + np.asarray(np.linalg.lstsq(square, right, rcond=None)[0])
+
+
+def _step(time: Floats, value: Floats, fit: _Fit) -> tuple[Floats, Floats]:
+    """Change of all unknowns, and the inverse of the normal matrix."""
+    square, right = _normal(time, value, fit, True)
+    size = np.sqrt(np.maximum(np.diag(square), 1e-300))
+    inverse = np.linalg.pinv(square / np.outer(size, size), rcond=1e-13) / np.outer(size, size)
+    return inverse @ right, inverse
+
+
+def _rate_errors(time: Floats, value: Floats, fit: _Fit, bin_rate: float) -> Floats:
+    """Standard deviation of each rate, from the noise left in the bins around its line."""
+    inverse = _step(time, value, fit)[1]
+    spread = np.sqrt(np.maximum(np.diag(inverse)[2 + 2 * fit.rate.size :], 0.0))
+    rest = value - _model(time, fit)
+    power = np.abs(np.fft.rfft(rest)) ** 2 / rest.size
+    inner = power[1:-1]
+    noise = []
+    for rate in fit.rate:
+        place = rate / bin_rate - 1.0
+        low = max(0, math.floor(place) - _LOCAL)
+        around = inner[low : math.ceil(place) + _LOCAL + 1]
+        # Each line takes its own three unknowns out of the bins it lies in: 1.5 bins' worth.
+        taken = 1.5 * np.sum(
+            (fit.rate / bin_rate - 1.0 >= low) & (fit.rate / bin_rate - 1.0 <= low + around.size)
+        )
+        noise.append(float(around.sum()) / max(around.size - taken, 1.0))
+    return np.asarray(spread * np.sqrt(np.array(noise)))

@@ -1,0 +1,13 @@
+"""``driftwell schema``: the JSON Schema of scenario files, for editors."""
+
+from __future__ import annotations
+
+import json
+
+from driftwell.scenario.schema import json_schema
+
+
+def schema() -> int:
+    """Print the schema and return 0."""
+    print(json.dumps(json_schema(), indent=2, ensure_ascii=False))
+    return 0

@@ -1,0 +1,133 @@
+"""What a run is: its scenario, its parts by name, its programs and its machine."""
+
+from __future__ import annotations
+
+import os
+import platform
+from collections.abc import Callable
+from dataclasses import asdict, dataclass, field, fields
+from datetime import UTC, datetime
+from hashlib import sha256
+from importlib.metadata import version
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from driftwell._version import __version__
+from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.errors import RecordError
+from driftwell.record.file_image import (
+    attributes_of,
+    put_attributes,
+    put_dataset,
+    table_rows,
+    text_table,
+)
+from driftwell.record.layout import FORMAT_VERSION, HEADER, dataset
+
+
+def _processor() -> str:
+    """The processor by name."""
+    listing = Path("/proc/cpuinfo")
+    if listing.is_file():
+        for line in listing.read_text(errors="replace").splitlines():
+            if line.startswith("model name"):
+                return line.partition(":")[2].strip()
+    return platform.processor() or platform.machine()
+
+
+def _version_of(package: str) -> Callable[[], str]:
+    return lambda: version(package)
+
+
+@dataclass(frozen=True, slots=True)
+class Header:
+    """What a run is; the lower fields are found out where they are not given.
+
+    scenario : text of the scenario file, as given
+    duration, step : s
+    softening : m
+    tracked : ids of the charges whose trajectories are kept
+    traces : names of the traced coordinates, from :func:`trace_name`
+    """
+
+    scenario: str
+    title: str
+    seed: int
+    duration: float
+    step: float
+    scheme: str
+    softening: float
+    clouds: tuple[CloudFacts, ...]
+    species: tuple[str, ...]
+    walls: tuple[str, ...] = ()
+    detectors: tuple[str, ...] = ()
+    tracked: tuple[int, ...] = ()
+    traces: tuple[str, ...] = ()
+    format_version: int = FORMAT_VERSION
+    driftwell_version: str = __version__
+    python_version: str = field(default_factory=platform.python_version)
+    numpy_version: str = field(default_factory=_version_of("numpy"))
+    numba_version: str = field(default_factory=_version_of("numba"))
+    h5py_version: str = field(default_factory=_version_of("h5py"))
+    processor: str = field(default_factory=_processor)
+    cores: int = field(default_factory=lambda: os.cpu_count() or 1)
+    created: str = field(default_factory=lambda: datetime.now(UTC).isoformat(timespec="seconds"))
+
+    @property
+    def scenario_sha256(self) -> str:
+        """Digest of the scenario's text."""
+        return sha256(self.scenario.encode()).hexdigest()
+
+    @property
+    def sizes(self) -> dict[str, int]:
+        """Lengths that stay the same over the run, by the layout's words."""
+        return {
+            "tracked": len(self.tracked),
+            "traces": len(self.traces),
+            "clouds": len(self.clouds),
+        }
+
+
+def trace_name(request: TraceRequest) -> str:
+    """Name of a traced coordinate: cloud, what of it, axis; not how finely it is sampled."""
+    what = "centre" if request.charge is None else f"charge {request.charge}"
+    return f"{request.cloud} {what} {'xyz'[request.axis]}"
+
+
+def put_header(file: Any, header: Header) -> None:
+    """Write the header into a file made in memory."""
+    put_attributes(file, HEADER, {entry.name: getattr(header, entry.name) for entry in HEADER})
+    put_dataset(file, dataset("trajectory/id"), np.array(header.tracked, np.int64))
+    clouds = [asdict(cloud) for cloud in header.clouds]
+    entry = dataset("clouds")
+    columns = {column.name: [cloud[column.name] for cloud in clouds] for column in entry.columns}
+    put_dataset(file, entry, text_table(entry, columns))
+
+
+def header_of(file: Any) -> Header:
+    """The header of an open master or segment.
+
+    Raises RecordError where the file is of a newer format or its scenario is damaged.
+    """
+    found = int(file.attrs["format_version"])
+    if found > FORMAT_VERSION:
+        raise RecordError(
+            f"{file.filename}: written in format {found}, and this driftwell {__version__} reads "
+            f"up to {FORMAT_VERSION}; read it with driftwell {file.attrs['driftwell_version']}."
+        )
+    values = attributes_of(file, HEADER)
+    digest = values.pop("scenario_sha256")
+    entry = dataset("clouds")
+    header = Header(
+        clouds=tuple(CloudFacts(**row) for row in table_rows(entry, file["clouds"][()])),
+        tracked=tuple(file["trajectory/id"][()].tolist()),
+        **{each.name: values[each.name] for each in fields(Header) if each.name in values},
+    )
+    if header.scenario_sha256 != digest:
+        raise RecordError(
+            f"{file.filename}: damaged; the scenario in it does not have the digest noted beside "
+            "it. Restore the file from a copy."
+        )
+    return header

@@ -1,0 +1,139 @@
+"""A run in a few lines, for `driftwell info RUN`."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from driftwell.answers.answer import Answer
+from driftwell.errors import RecordError
+from driftwell.record.layout import ROWS
+from driftwell.record.reader import Run
+
+_RESIDUALS = (
+    ("energy", "energy_residual"),
+    ("momentum", "momentum_residual"),
+    ("angular momentum", "angular_residual"),
+    ("charge", "charge_residual"),
+    ("count", "count_residual"),
+    ("third law", "third_law_residual"),
+)
+
+
+def summary(run: Run) -> list[str]:
+    """What the run is, how it ended, what it holds and what it answers.
+
+    A part that cannot be read says so in its place; damaged files are listed at the end.
+    """
+    lines = [*_identity(run)]
+    for title, part in (
+        ("clouds", _clouds),
+        ("ledger", _ledger),
+        ("answers", _answers),
+        ("record", _datasets),
+    ):
+        try:
+            found = part(run)
+        except RecordError as fault:
+            found = [f"cannot be read: {fault}"]
+        lines += ["", title, *(f"  {line}" for line in found)]
+    damage = run.damage()
+    if damage:
+        lines += ["", "damage", *(f"  {line}" for line in damage)]
+    return lines
+
+
+def answers_table(answers: tuple[Answer, ...]) -> list[str]:
+    """The answers as aligned lines: name, what was asked, value, error, unit, note."""
+    rows = [("name", "ask", "value", "error", "unit", "note")]
+    for answer in answers:
+        error = "unknown" if answer.error is None else f"{answer.error:.2g}"
+        value = f"{answer.value:.7g}"
+        rows.append((answer.name, answer.ask, value, error, answer.unit, answer.note))
+    widths = [max(len(row[k]) for row in rows) for k in range(6)]
+    return [
+        "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
+        for row in rows
+    ]
+
+
+def _identity(run: Run) -> list[str]:
+    header, outcome = run.header, run.outcome
+    lines = [
+        header.title,
+        f"{outcome.word}: {outcome.sentence}",
+        f"reached {run.end_time:.6g} s of {header.duration:.6g} s",
+    ]
+    if outcome.steps is not None:
+        lines.append(f"{outcome.steps} steps in {outcome.wall_time:.1f} s by the clock")
+    return [
+        *lines,
+        f"{header.scheme}, step {header.step:.6g} s, seed {header.seed}",
+        f"begun {header.created} on {header.processor}, {header.cores} processors",
+        f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "
+        f"{header.numpy_version}, numba {header.numba_version}, h5py {header.h5py_version}",
+        f"scenario sha256 {header.scenario_sha256}",
+    ]
+
+
+def _clouds(run: Run) -> list[str]:
+    losses, crossings = run.losses(), run.crossings()
+    lines = []
+    for cloud in run.header.clouds:
+        mine = losses[losses["cloud"] == cloud.index]
+        line = f"{cloud.name}: {cloud.count} {cloud.species}"
+        if cloud.weight != 1.0:
+            line += f", each standing for {cloud.weight:.6g}"
+        line += f"; {cloud.count - len(mine)} left"
+        places = np.bincount(mine["wall"], minlength=len(run.header.walls))
+        lines.append(
+            line
+            + "".join(
+                f", {count} lost on {name}"
+                for name, count in zip(run.header.walls, places, strict=True)
+                if count
+            )
+        )
+    passed = np.bincount(crossings["detector"], minlength=len(run.detectors))
+    return lines + [
+        f"detector {name}: {count} passages"
+        for name, count in zip(run.detectors, passed, strict=True)
+    ]
+
+
+def _ledger(run: Run) -> list[str]:
+    ledger = run.ledger
+    if not len(ledger):
+        return ["no row sealed yet"]
+    width = max(len(name) for name, _ in _RESIDUALS)
+    return [
+        f"{name.ljust(width)}  residual {ledger[column][-1]: .2e} at the end, "
+        f"{np.abs(ledger[column]).max():.2e} at most"
+        for name, column in _RESIDUALS
+    ]
+
+
+def _answers(run: Run) -> list[str]:
+    if run.answers:
+        return answers_table(run.answers)
+    return ["unfinished" if run.outcome.exit_code is None else "none asked"]
+
+
+def _datasets(run: Run) -> list[str]:
+    sizes = run.header.sizes
+    lines = []
+    for entry in ROWS:
+        count = sum(facts.rows[str(entry.shape[0])] for facts in run.segments)
+        row_shape = entry.row_shape(sizes)
+        row_bytes = entry.dtype().itemsize * int(np.prod(row_shape))
+        shape = " x ".join(str(length) for length in (count, *row_shape))
+        lines.append(f"{entry.path}: {shape}, {_megabytes(count * row_bytes)}")
+    total = sum(facts.bytes for facts in run.segments)
+    return [
+        *lines,
+        f"snapshots: {len(run.snapshots)}",
+        f"{len(run.segments)} segments, {_megabytes(total)} in all",
+    ]
+
+
+def _megabytes(count: int) -> str:
+    return f"{count / 1e6:.3g} MB"

@@ -1,0 +1,233 @@
+"""The writer of a run's folder: rows are collected, sealed in write-once segments, then mastered.
+
+Whatever happens at whatever instant, the segments sealed before are whole and stay so.
+"""
+
+from __future__ import annotations
+
+import time as clocks
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import asdict
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from driftwell.answers.answer import Answer
+from driftwell.errors import RecordError
+from driftwell.particles.state import Particles
+from driftwell.record.commit import commit, force_folder
+from driftwell.record.file_image import (
+    file_in_memory,
+    image_of,
+    put_attributes,
+    put_dataset,
+    text_table,
+)
+from driftwell.record.header import Header
+from driftwell.record.index import SEGMENTS, SegmentFacts, segment_name
+from driftwell.record.layout import ANSWERS, OUTCOME, SNAPSHOT, dataset
+from driftwell.record.master import ANSWERS_FILE, MASTER, master_image
+from driftwell.record.outcome import Outcome
+from driftwell.record.sealing import longest_wait, most_bytes
+from driftwell.record.segment import Pending, segment_image
+
+SCENARIO_FILE = "scenario.toml"
+
+
+class RunWriter:
+    """Writes one run; made by :meth:`create`. Arrays given to it are copied at once."""
+
+    def __init__(self, folder: Path, header: Header, clock: Callable[[], float]) -> None:
+        self.folder = folder
+        self.header = header
+        self._clock = clock
+        self._began = self._sealed_at = clock()
+        self._segments: list[SegmentFacts] = []
+        self._sealed_bytes = 0
+        self._snapshots = 0
+        self._pending = Pending(0.0)
+
+    @classmethod
+    def create(
+        cls, folder: Path, header: Header, clock: Callable[[], float] = clocks.monotonic
+    ) -> RunWriter:
+        """Begin a run in `folder`, made where missing.
+
+        Raises RecordError where the folder holds a run already or cannot be written.
+        """
+        try:
+            folder.mkdir(parents=True, exist_ok=True)
+            _claim(folder, header.scenario.encode())
+            commit(folder / MASTER, master_image(header, (), answered=False))
+        except OSError as fault:
+            raise RecordError(
+                f"{folder}: cannot be written ({fault.strerror or fault}); a run needs a folder it "
+                "may write to, on a disk with space. Name another with -o."
+            ) from fault
+        return cls(folder, header, clock)
+
+    def trajectory(self, time: float, state: ArrayLike) -> None:
+        """Record the tracked charges: `state` (tracked, 6), m and m/s, NaN where lost."""
+        self._add("trajectory/time", [time])
+        self._add("trajectory/state", np.asarray(state)[np.newaxis])
+        self._pending.reaches(time, time)
+
+    def moments(self, time: float, rows: NDArray[Any]) -> None:
+        """Record one row for each cloud, in order; fills in the columns time and cloud."""
+        filled = rows.copy()
+        filled["time"] = time
+        filled["cloud"] = np.arange(len(self.header.clouds))
+        self._add("moments", filled)
+        self._pending.reaches(time, time)
+
+    def snapshot(self, time: float, particles: Particles) -> None:
+        """Record every charge alive."""
+        self._snapshots += 1
+        columns = {"time": np.float64(time)} | {
+            entry.path: getattr(particles, entry.path) for entry in SNAPSHOT if entry.shape
+        }
+        self._pending.add_snapshot(
+            self._snapshots,
+            {
+                entry.path: np.array(np.transpose(columns[entry.path]), entry.dtype(), order="C")
+                for entry in SNAPSHOT
+            },
+        )
+        self._pending.reaches(time, time)
+
+    def ledger(self, row: NDArray[Any] | np.void) -> None:
+        """Record a row of the ledger (or several), of the layout's type."""
+        self._add_timed("ledger", row)
+
+    def losses(self, rows: NDArray[Any]) -> None:
+        """Record charges lost, rows of the layout's type."""
+        self._add_timed("losses", rows)
+
+    def crossings(self, rows: NDArray[Any]) -> None:
+        """Record passages through detectors, rows of the layout's type."""
+        self._add_timed("crossings", rows)
+
+    def trace(self, times: ArrayLike, values: ArrayLike) -> None:
+        """Record samples of the traces: `times` (k,), s, and `values` (k, traces), m."""
+        sampled = np.array(times, np.float64)
+        found = np.asarray(values)
+        if len(found) != len(sampled):
+            raise ValueError(f"trace: {len(sampled)} times with {len(found)} rows of values")
+        self._add("trace/time", sampled)
+        self._add("trace/value", found)
+        if sampled.size:
+            self._pending.reaches(float(sampled.min()), float(sampled.max()))
+
+    def due(self) -> bool:
+        """Whether enough bytes or time have gathered for :meth:`seal`."""
+        now = self._clock()
+        return self._pending.bytes >= most_bytes(self._sealed_bytes) or (
+            self._pending.bytes > 0 and now - self._sealed_at >= longest_wait(now - self._began)
+        )
+
+    def seal(self, state: Mapping[str, ArrayLike]) -> None:
+        """Put what was recorded since the last segment, and the state now, on the disk for good.
+
+        state : name -> array or number; a slash in a name makes a group
+
+        Raises RecordError, saying what is kept, where the disk refuses; nothing recorded is
+        dropped then, and :meth:`seal` may be tried again.
+        """
+        number = len(self._segments) + 1
+        image, facts = segment_image(self.header, number, self._pending, state)
+        self._commit(segment_name(number), image)
+        self._segments.append(facts)
+        self._sealed_bytes += facts.bytes
+        self._pending = Pending(facts.end)
+        self._sealed_at = self._clock()
+        self._commit_master(answered=False)
+
+    def finish(self, outcome: Outcome, answers: Sequence[Answer]) -> None:
+        """Write how the run ended and what it answers; everything must have been sealed before.
+
+        Raises RecordError where rows wait to be sealed or the disk refuses.
+        """
+        if self._pending.bytes:
+            raise RecordError(
+                f"{self.folder}: {self._pending.bytes} bytes recorded are not sealed, so the run "
+                f"cannot be finished. {self._kept()}"
+            )
+        columns: dict[str, list[Any]] = {
+            column.name: [getattr(answer, column.name) for answer in answers]
+            for column in ANSWERS.columns
+        }
+        columns["error"] = [np.nan if error is None else error for error in columns["error"]]
+        with file_in_memory() as file:
+            put_dataset(file, ANSWERS, text_table(ANSWERS, columns))
+            put_attributes(file.create_group("outcome"), OUTCOME, asdict(outcome))
+            image = image_of(file)
+        self._commit(ANSWERS_FILE, image)
+        self._commit_master(answered=True)
+
+    def _add(self, path: str, rows: ArrayLike) -> None:
+        entry = dataset(path)
+        made = np.array(rows, entry.dtype())
+        wanted = entry.row_shape(self.header.sizes)
+        if made.shape[1:] != wanted:
+            raise ValueError(f"{path}: rows of shape {made.shape[1:]}, {wanted} needed")
+        self._pending.add(path, made)
+
+    def _add_timed(self, path: str, rows: NDArray[Any] | np.void) -> None:
+        found = np.atleast_1d(rows)
+        if found.dtype.names != dataset(path).dtype().names:
+            raise ValueError(f"{path}: columns {found.dtype.names}, not those of the layout")
+        self._add(path, found)
+        if found.size:
+            times = found["time"]
+            self._pending.reaches(float(times.min()), float(times.max()))
+
+    def _commit_master(self, answered: bool) -> None:
+        self._commit(MASTER, master_image(self.header, self._segments, answered))
+
+    def _commit(self, name: str, image: bytes) -> None:
+        try:
+            commit(self.folder / name, image)
+        except OSError as fault:
+            raise RecordError(
+                f"{self.folder / name}: {fault.strerror or fault} while writing {len(image)} "
+                f"bytes. {self._kept()} Make space or give access, then run the scenario again "
+                "into another folder."
+            ) from fault
+
+    def _kept(self) -> str:
+        if not self._segments:
+            return "Kept: nothing yet, no segment was sealed."
+        count = len(self._segments)
+        return (
+            f"Kept: {count} segment{'s' * (count > 1)}, whole up to t = "
+            f"{self._segments[-1].end:.6g} s; `driftwell info {self.folder}` shows them."
+        )
+
+
+def _claim(folder: Path, scenario: bytes) -> None:
+    """Take the folder for one run and put the scenario into it.
+
+    Of two runs started at once only one makes the folder of segments.
+    """
+    text = folder / SCENARIO_FILE
+    found = [name for name in (MASTER, ANSWERS_FILE, SEGMENTS) if (folder / name).exists()]
+    if text.exists() and text.read_bytes() != scenario:
+        found.append(f"another {SCENARIO_FILE}")
+    try:
+        if not found:
+            (folder / SEGMENTS).mkdir()
+    except FileExistsError:
+        found.append(SEGMENTS)
+    if found:
+        raise RecordError(
+            f"{folder}: holds {' and '.join(found)} already; a run needs a folder without another "
+            "run in it. Name a new folder with -o, or move the old run away."
+        )
+    try:
+        commit(text, scenario)
+        force_folder(folder.parent)
+    except BaseException:
+        (folder / SEGMENTS).rmdir()
+        raise

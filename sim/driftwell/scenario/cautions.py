@@ -1,0 +1,81 @@
+"""What can hurt where a scenario is built: high voltage, X-rays, strong magnets."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+
+from driftwell.constants import ELECTRON_MASS, ELEMENTARY_CHARGE
+from driftwell.forms import Form, spelled
+from driftwell.forms.body import Body
+from driftwell.forms.declared import Choice, Declared, Dimensioned, declared_keys
+from driftwell.forms.waveforms import largest_value
+from driftwell.particles.cloud import Cloud
+from driftwell.particles.species import bodies
+from driftwell.scenario.model import Scenario
+
+HIGH_VOLTAGE = 1e3
+"""V."""
+X_RAY_ENERGY = 5e3 * ELEMENTARY_CHARGE
+"""J."""
+STRONG_MAGNET = 0.5
+"""T."""
+
+
+def cautions(scenario: Scenario) -> list[str]:
+    """The hazards of what is simulated and whom to ask, one sentence each; empty where none."""
+    known = bodies(scenario.species)
+    light = [cloud for cloud in scenario.cloud if _is_electron(known[cloud.species])]
+    voltage = max((abs(v) for field in scenario.field for v in _values(field, "V")), default=0.0)
+    magnet = max((abs(v) for field in scenario.field for v in _values(field, "T")), default=0.0)
+    energy = max((_energy(cloud, known) for cloud in light), default=0.0)
+    if light:
+        energy = max(energy, voltage * ELEMENTARY_CHARGE)
+    found = []
+    if voltage > HIGH_VOLTAGE:
+        found.append(f"Voltages up to {spelled(voltage, 'V')} kill: insulate, interlock, earth.")
+    if energy > X_RAY_ENERGY:
+        reached = spelled(energy / ELEMENTARY_CHARGE, "eV")
+        found.append(f"Electrons of up to {reached} make X-rays where they stop: shield, measure.")
+    if magnet > STRONG_MAGNET:
+        found.append(
+            f"Fields up to {spelled(magnet, 'T')} pull iron through the air and stop pacemakers; "
+            "a superconducting magnet that quenches fills the room with cold gas."
+        )
+    if found:
+        found.append(
+            "driftwell says nothing of safety: follow your local codes, and have licensed "
+            "practitioners plan and check what is built."
+        )
+    return found
+
+
+def _is_electron(body: Body) -> bool:
+    return abs(body.mass / ELECTRON_MASS - 1.0) < 1e-3
+
+
+def _energy(cloud: Cloud, known: Mapping[str, Body]) -> float:
+    """Largest kinetic energy a cloud is given at the start, J."""
+    moving = 0.0 if cloud.motion is None else cloud.motion.mean_energy(known[cloud.species])
+    return max(moving, *_values(cloud, "J"), 0.0)
+
+
+def _values(form: Form, si_unit: str) -> Iterator[float]:
+    """The largest magnitude of every key with this unit, waveforms too, at any depth."""
+    for key in declared_keys(type(form)).values():
+        value = getattr(form, key.name)
+        if value is None:
+            continue
+        if _is_of(key.holds, si_unit):
+            yield abs(largest_value(value))
+        elif isinstance(value, Form):
+            yield from _values(value, si_unit)
+
+
+def _is_of(declared: Declared, si_unit: str) -> bool:
+    match declared:
+        case Dimensioned(_, unit):
+            return unit == si_unit
+        case Choice(options) if declared.kinds:
+            return any(_is_of(option, si_unit) for _, option in options)
+        case _:
+            return False

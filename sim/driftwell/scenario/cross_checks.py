@@ -1,0 +1,140 @@
+"""Values that must fit together across sections: times, sizes, places, numbers of charges."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.errors import ScenarioError
+from driftwell.forms import spelled
+from driftwell.forms.faults import Fault
+from driftwell.particles.cloud import Amount
+from driftwell.particles.species import bodies
+from driftwell.particles.state import LARGEST_COUNT
+from driftwell.scenario.model import Scenario
+
+MOST_RECORDS = 1_000_000
+MOST_STEPS = 1e13
+_FEW = 100_000
+_SAME_TIME = 1e-9
+_TOLD = 5
+
+
+def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
+    """Faults of a scenario whose keys are all well on their own and whose names all exist."""
+    faults = [*_time_faults(scenario), *_question_faults(scenario)]
+    if scenario.coulomb.softening >= scenario.stepping.extent:
+        limit = spelled(scenario.stepping.extent, "m")
+        text = f"must be less than [stepping] extent, {limit}, and far less than any cloud"
+        faults.append(Fault(("coulomb", "softening"), "", text))
+    known = bodies(scenario.species)
+    of_clouds = [
+        Fault(("cloud", i, *fault.path), fault.found, fault.needed)
+        for i, cloud in enumerate(scenario.cloud)
+        for fault in cloud.faults(known, folder)
+    ]
+    return [*faults, *(of_clouds or _place_faults(scenario, folder))]
+
+
+def _time_faults(scenario: Scenario) -> Iterator[Fault]:
+    duration = scenario.duration
+    whole = spelled(duration, "s")
+    for section, key, value in (
+        ("record", "every", scenario.record.every),
+        ("record", "snapshots", scenario.record.snapshots),
+        ("stepping", "step", scenario.stepping.step),
+    ):
+        if not isinstance(value, float):
+            continue
+        if value > duration:
+            yield Fault((section, key), "", f"must be at most the duration, {whole}")
+        elif section == "record" and duration / value > MOST_RECORDS:
+            text = f"would be {duration / value:.3g} times in {whole}; needs at most {MOST_RECORDS}"
+            yield Fault((section, key), "", text)
+        elif section == "stepping" and duration / value > MOST_STEPS:
+            text = f"would be {duration / value:.3g} steps in {whole}; needs at most {MOST_STEPS:g}"
+            yield Fault((section, key), "", text)
+
+
+def _question_faults(scenario: Scenario) -> Iterator[Fault]:
+    for i, question in enumerate(scenario.question):
+        for key, time in question.times().items():
+            if time > scenario.duration * (1.0 + _SAME_TIME):
+                whole = spelled(scenario.duration, "s")
+                text = f"lies after the end of the run, {whole}"
+                yield Fault(("question", i, key), "", text)
+
+
+def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Iterator[Fault]:
+    counts = {
+        cloud.name: amount.count for cloud, amount in zip(scenario.cloud, amounts, strict=True)
+    }
+    for i, question in enumerate(scenario.question):
+        for cloud, number in question.refers_to().charges:
+            if number >= counts[cloud]:
+                text = (
+                    f'asks for charge {number} of "{cloud}", which has {counts[cloud]}, counted '
+                    "from 0"
+                )
+                yield Fault(("question", i, "charge"), "", text)
+
+
+def _place_faults(scenario: Scenario, folder: Path) -> list[Fault]:
+    """Faults of the charges as they are born; clouds must be without faults of their own."""
+    known = bodies(scenario.species)
+    amounts = [cloud.amount(known, folder) for cloud in scenario.cloud]
+    named = list(_named_charge_faults(scenario, amounts))
+    total = sum(amount.count for amount in amounts)
+    if total > LARGEST_COUNT:
+        text = f"{total} charges in all clouds; needs at most {LARGEST_COUNT}: raise the weights"
+        return [Fault(("cloud",), "", text)]
+    if total > _FEW or named:
+        return named
+    faults = []
+    places: list[NDArray[np.float64]] = []
+    owner: list[tuple[int, int]] = []
+    for i, cloud in enumerate(scenario.cloud):
+        try:
+            born = cloud.load(scenario.seed, known, 0, i, 0, folder)
+        except ScenarioError as fault:
+            faults.append(Fault(("cloud", i), "", str(fault).splitlines()[0]))
+            continue
+        places.append(born.position.T)
+        owner += [(i, k) for k in range(len(born))]
+        farthest = float(np.sqrt((born.position**2).sum(axis=0)).max())
+        if farthest > scenario.stepping.extent:
+            text = (
+                f"has charges {spelled(farthest, 'm')} from the origin, farther than "
+                f"[stepping] extent, {spelled(scenario.stepping.extent, 'm')}"
+            )
+            faults.append(Fault(("cloud", i), "", text))
+    if scenario.coulomb.method != "off" and scenario.coulomb.softening == 0.0 and places:
+        faults += _same_places(scenario, np.concatenate(places), owner)
+    return faults
+
+
+def _same_places(
+    scenario: Scenario, places: NDArray[np.float64], owner: list[tuple[int, int]]
+) -> list[Fault]:
+    """Charges at exactly the place of another: the force between them has no value."""
+    _, first, which = np.unique(places + 0.0, axis=0, return_index=True, return_inverse=True)
+    again = np.flatnonzero(first[which.ravel()] != np.arange(len(places)))
+    faults = []
+    for row in again[:_TOLD]:
+        cloud, number = owner[row]
+        other_cloud, other = owner[first[which.ravel()[row]]]
+        name = scenario.cloud[other_cloud].name
+        where = "" if other_cloud == cloud else f' of "{name}"'
+        text = (
+            f"charge {number} is exactly where charge {other}{where} is (counted from 0): move it, "
+            "or give a [coulomb] softening"
+        )
+        faults.append(Fault(("cloud", cloud, "shape"), "", text))
+    if len(again) > _TOLD:
+        cloud = owner[again[_TOLD]][0]
+        text = f"and {len(again) - _TOLD} more charges are exactly where others are"
+        faults.append(Fault(("cloud", cloud, "shape"), "", text))
+    return faults

@@ -1,0 +1,34 @@
+"""The digest of a scenario: the same for the same content, however it is written down."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from pathlib import Path
+
+from driftwell.errors import ScenarioError
+from driftwell.scenario.model import Scenario
+from driftwell.scenario.source import shown_path
+
+
+def digest(scenario: Scenario, folder: Path) -> str:
+    """SHA-256, in hexadecimal, of every value in SI units, defaults too, and of the files named.
+
+    Comments, order, units and whether a default is written out make no difference.
+    """
+    files = {
+        name: _file_digest(folder / name)
+        for cloud in scenario.cloud
+        for name in cloud.files_named()
+    }
+    content = {"scenario": scenario.model_dump(mode="json"), "files": files}
+    text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
+    return hashlib.sha256(text.encode()).hexdigest()
+
+
+def _file_digest(path: Path) -> str:
+    try:
+        with path.open("rb") as stream:
+            return hashlib.file_digest(stream, "sha256").hexdigest()
+    except OSError as fault:
+        raise ScenarioError(f"{shown_path(path)}: cannot be read ({fault.strerror})") from fault

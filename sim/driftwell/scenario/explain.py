@@ -1,0 +1,133 @@
+"""A scenario in words: what will be simulated, one line for each thing."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterator
+
+from driftwell.forms import spelled
+from driftwell.particles.species import bodies
+from driftwell.scenario.cautions import cautions
+from driftwell.scenario.model import Scenario
+from driftwell.scenario.read import LoadedScenario
+from driftwell.scenario.source import shown_path
+
+WIDTH = 100
+_SECTION, _MOST_NAME = 12, 24
+_RECORDS = 200
+
+Row = tuple[str, str, str]
+
+
+def explain(loaded: LoadedScenario) -> list[str]:
+    """The lines that `driftwell check` prints of a scenario without faults."""
+    scenario = loaded.scenario
+    rows = list(_rows(loaded))
+    name_width = min(_MOST_NAME, max((len(name) for _, name, _ in rows), default=0))
+    lines = [scenario.title, f"{shown_path(loaded.path)}, digest {loaded.digest[:12]}", ""]
+    said = ""
+    for section, name, words in rows:
+        lines += _laid_out("" if section == said else section, name, name_width, words)
+        said = section
+    for heading, sentences in (("Note", list(_notes(loaded))), ("Caution", cautions(scenario))):
+        if sentences:
+            lines.append("")
+            lines += _laid_out(heading, "", 0, " ".join(sentences))
+    return lines
+
+
+def _rows(loaded: LoadedScenario) -> Iterator[Row]:
+    scenario = loaded.scenario
+    known = bodies(scenario.species)
+    yield "duration", "", f"{spelled(scenario.duration, 's')}, seed {scenario.seed}"
+    for name, species in scenario.species.items():
+        yield "species", name, species.words()
+    for cloud in scenario.cloud:
+        yield "cloud", cloud.name, cloud.words(known, loaded.folder)
+    for field in scenario.field:
+        yield "field", field.name, field.words()
+    for wall in scenario.wall:
+        yield "wall", wall.name, f"{wall.words()}; {_EFFECT[wall.effect]}"
+    for detector in scenario.detector:
+        yield "detector", detector.name, detector.words()
+    yield "Coulomb", "", _coulomb_words(scenario)
+    yield "stepping", "", _stepping_words(scenario)
+    yield "record", "", _record_words(scenario)
+    for question in scenario.question:
+        yield "question", question.name, question.words()
+
+
+_EFFECT = {"absorb": "absorbs", "reflect": "reflects"}
+
+
+def _coulomb_words(scenario: Scenario) -> str:
+    if scenario.coulomb.method == "off":
+        return "off: the charges do not feel each other"
+    softening = scenario.coulomb.softening
+    soft = f"softened within {spelled(softening, 'm')}" if softening else "without softening"
+    return f"every pair of charges, {soft}"
+
+
+def _stepping_words(scenario: Scenario) -> str:
+    stepping = scenario.stepping
+    if isinstance(stepping.step, float):
+        step = f"steps of {spelled(stepping.step, 's')}"
+    else:
+        step = f"{stepping.steps_per_period:g} steps in a period of the fastest motion"
+    words = f"{stepping.scheme}, {step}"
+    if stepping.coulomb_every > 1:
+        words += f", Coulomb sum every {stepping.coulomb_every} steps"
+    return f"{words}; fails beyond {spelled(stepping.extent, 'm')}"
+
+
+def _record_words(scenario: Scenario) -> str:
+    record = scenario.record
+    every = record.every or scenario.duration / _RECORDS
+    tracks = "up to 1000 charges" if record.tracks is None else f"{record.tracks} charges"
+    if record.snapshots is None:
+        snapshots = "at start and end"
+    else:
+        snapshots = f"every {spelled(record.snapshots, 's')}"
+    return f"every {spelled(every, 's')}, tracks of {tracks}; snapshots of all {snapshots}"
+
+
+def _notes(loaded: LoadedScenario) -> Iterator[str]:
+    """What is allowed, but may not be meant."""
+    scenario = loaded.scenario
+    known = bodies(scenario.species)
+    heavy = [
+        (cloud.name, amount.weight)
+        for cloud in scenario.cloud
+        if (amount := cloud.amount(known, loaded.folder)).weight > 1.0 and amount.count > 1
+    ]
+    softened = scenario.coulomb.softening > 0.0 or scenario.coulomb.method == "off"
+    if heavy and not softened:
+        name, weight = max(heavy, key=lambda pair: pair[1])
+        yield (
+            f'Charges of "{name}" stand for {weight:.6g} real ones each and meet without '
+            "softening: chance encounters push harder than real ones; see [coulomb] softening."
+        )
+    if not scenario.question:
+        yield "No [[question]] is asked: the run only records."
+
+
+def _laid_out(section: str, name: str, name_width: int, words: str) -> list[str]:
+    """One thing on as many lines as it takes; a long name has its own first line."""
+    margin = f"  {section:<{_SECTION}}"
+    if not name:
+        return _wrapped(margin, len(margin), words)
+    indent = len(margin) + name_width + 2
+    if len(name) > name_width:
+        return [margin + name, *_wrapped(" " * indent, indent, words)]
+    return _wrapped(f"{margin}{name:<{name_width}}  ", indent, words)
+
+
+def _wrapped(margin: str, indent: int, words: str) -> list[str]:
+    return textwrap.wrap(
+        words,
+        WIDTH,
+        initial_indent=margin,
+        subsequent_indent=" " * indent,
+        break_long_words=False,
+        break_on_hyphens=False,
+    )

@@ -1,0 +1,50 @@
+"""The scenario: every section a file may hold, from what each part declares."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from driftwell.answers.form import QuestionForm
+from driftwell.answers.table import QUESTION_KINDS
+from driftwell.coulomb.form import Coulomb
+from driftwell.fields.form import FieldForm
+from driftwell.fields.table import FIELD_KINDS
+from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Title, key, one_of
+from driftwell.particles.cloud import Cloud
+from driftwell.particles.species import SpeciesForm
+from driftwell.record.form import Record
+from driftwell.stepping.form import Stepping
+from driftwell.walls.form import DetectorForm, WallForm
+from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
+
+if TYPE_CHECKING:
+    AnyField = FieldForm
+    AnyWall = WallForm
+    AnyDetector = DetectorForm
+    AnyQuestion = QuestionForm
+else:
+    AnyField = one_of(FIELD_KINDS)
+    AnyWall = one_of(WALL_KINDS)
+    AnyDetector = one_of(DETECTOR_KINDS)
+    AnyQuestion = one_of(QUESTION_KINDS, by="ask")
+
+
+class Scenario(Form):
+    """The whole statement of a run: what moves, what pushes and stops it, what is asked of it."""
+
+    title: Title = key("what is simulated, in one line", example="Barium cloud in a rod trap")
+    duration: Positive[Time] = key("time the motion is followed, from time zero", example="2 ms")
+    seed: NonNegative[Count] = key("number all random draws are made from", default=1, example=7)
+    species: dict[Name, SpeciesForm] = key(
+        "kinds of particles beside those known by name, each as [species.NAME]", default={}
+    )
+    cloud: tuple[Cloud, ...] = key("groups of charges present from the start", default=())
+    field: tuple[AnyField, ...] = key("what pushes the charges from outside", default=())
+    wall: tuple[AnyWall, ...] = key("surfaces that absorb or reflect charges", default=())
+    detector: tuple[AnyDetector, ...] = key(
+        "surfaces that record the charges passing them", default=()
+    )
+    coulomb: Coulomb = key("how the force between the charges is summed", default=Coulomb())
+    stepping: Stepping = key("how time is cut into steps", default=Stepping())
+    record: Record = key("what is kept, and how often", default=Record())
+    question: tuple[AnyQuestion, ...] = key("what the run is asked", default=())

@@ -1,0 +1,107 @@
+"""Names in a scenario: each once in its section, and each that is used exists.
+
+These checks read the raw table, so that they are made even where other keys have faults.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from typing import Any
+
+from driftwell.answers.table import QUESTION_KINDS
+from driftwell.forms.declared import kind_name
+from driftwell.forms.faults import Fault, nearest, read_form
+from driftwell.forms.wording import quoted
+from driftwell.particles.species import BUILT_IN
+from driftwell.scenario.places import entry_name
+
+Path = tuple[str | int, ...]
+
+NAMED_SECTIONS = ("cloud", "field", "wall", "detector", "question")
+_SHOWN = 12
+
+
+def reference_faults(data: Mapping[str, Any]) -> list[Fault]:
+    """Names used twice, and names that are used but not there."""
+    faults = [fault for section in NAMED_SECTIONS for fault in _used_twice(data, section)]
+    if not data.get("cloud"):
+        faults.append(Fault(("cloud",), "", "missing; needs at least one group of charges"))
+    faults += _unknown_species(data)
+    faults += _unknown_in_questions(data)
+    return faults
+
+
+def _entries(data: Mapping[str, Any], section: str) -> list[tuple[int, Mapping[str, Any]]]:
+    entries = data.get(section)
+    if not isinstance(entries, list):
+        return []
+    return [(i, entry) for i, entry in enumerate(entries) if isinstance(entry, Mapping)]
+
+
+def _names(data: Mapping[str, Any], section: str) -> list[str]:
+    names = (entry_name(entry) for _, entry in _entries(data, section))
+    return [name for name in names if name is not None]
+
+
+def _used_twice(data: Mapping[str, Any], section: str) -> Iterator[Fault]:
+    first: dict[str, int] = {}
+    for i, entry in _entries(data, section):
+        name = entry_name(entry)
+        if name is None:
+            continue
+        if name in first:
+            path = (section, i, "name")
+            other = f"number {first[name] + 1}"
+            yield Fault(path, quoted(name), f"is the name of [[{section}]] {other} already")
+        else:
+            first[name] = i
+
+
+def _unknown_species(data: Mapping[str, Any]) -> Iterator[Fault]:
+    declared = data.get("species")
+    own = [str(name) for name in declared] if isinstance(declared, Mapping) else []
+    for section in ("cloud", "field"):
+        for i, entry in _entries(data, section):
+            for path, name in _texts_at("species", entry, (section, i)):
+                if name not in own and name not in BUILT_IN:
+                    known = "; known are " + ", ".join([*own, *BUILT_IN][:_SHOWN])
+                    yield _unknown(path, name, "species", [*own, *BUILT_IN], known)
+
+
+def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Clouds and detectors that questions refer to; questions with faults of their own wait."""
+    kinds = {kind_name(form, "ask"): form for form in QUESTION_KINDS}
+    for i, entry in _entries(data, "question"):
+        ask = entry.get("ask")
+        form = kinds.get(ask) if isinstance(ask, str) else None
+        question = None if form is None else read_form(form, entry)[0]
+        if question is None:
+            continue
+        refers = question.refers_to()
+        for section, names in (("cloud", refers.clouds), ("detector", refers.detectors)):
+            known = _names(data, section)
+            there = _there(known)
+            for name in names:
+                if name not in known:
+                    key = next((key for key in entry if entry[key] == name), "of")
+                    path = ("question", i, key)
+                    yield _unknown(path, name, f"[[{section}]]", known, f"; {there}")
+
+
+def _there(known: list[str]) -> str:
+    return "there are " + ", ".join(map(quoted, known[:_SHOWN])) if known else "there is none"
+
+
+def _unknown(path: Path, name: str, what: str, known: list[str], otherwise: str) -> Fault:
+    meant = nearest(name, known)
+    hint = f"; did you mean {quoted(meant)}?" if meant is not None else otherwise
+    return Fault(path, quoted(name), f"no {what} is called so{hint}")
+
+
+def _texts_at(key: str, table: Mapping[str, Any], path: Path) -> Iterator[tuple[Path, str]]:
+    """All texts that stand at `key` in a table or the tables within it."""
+    for name, value in table.items():
+        if name == key and isinstance(value, str):
+            yield (*path, name), value
+        elif isinstance(value, Mapping):
+            yield from _texts_at(key, value, (*path, name))

@@ -1,0 +1,61 @@
+"""The accounts the stepping keeps while it runs, added up with their rounding carried along.
+
+Every force evaluation gives seven rates: the power the drives put in, and the force and torque of
+the fields on all charges. They count for as long as the kicks made with them last.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.sums import add_compensated
+
+WORK_DRIVE = 0
+"""J, work of time-dependent potentials: sum of Q d(phi)/dt."""
+IMPULSE_FIELDS = 1
+"""3 entries, N s, by electric fields."""
+TORQUE_FIELDS = 4
+"""3 entries, N m s, about the origin, by electric fields."""
+RATES = 7
+"""The first seven accounts grow with every force evaluation."""
+WORK_INDUCED = 7
+"""J, work of electric fields induced by changing magnets."""
+IMPULSE_MAGNETS = 8
+TORQUE_MAGNETS = 11
+ENERGY_WALLS = 14
+"""J, kinetic and potential energy the absorbed charges had when they were taken out."""
+MOMENTUM_WALLS = 15
+ANGULAR_WALLS = 18
+CHARGE_WALLS = 21
+COUNT_WALLS = 22
+ACCOUNTS = 23
+
+
+@inner_kernel
+def settle(rate: np.ndarray, pending: np.ndarray, total: np.ndarray, carry: np.ndarray) -> None:
+    """Enter the rates of the last force evaluation for the time their kicks lasted.
+
+    rate : (7,) float64; pending : (1,) float64, s, set to zero
+    total, carry : (accounts,) float64, added to
+    """
+    last = pending[0]
+    for k in range(RATES):
+        # two-sum (D. E. Knuth, The Art of Computer Programming, vol. 2, 4.2.2), free of branches
+        amount = last * rate[k]
+        before = total[k]
+        after = before + amount
+        part = after - before
+        carry[k] += (before - (after - part)) + (amount - part)
+        total[k] = after
+    pending[0] = 0.0
+
+
+@outer_kernel
+def enter_vector(
+    k: int, x: float, y: float, z: float, total: np.ndarray, carry: np.ndarray
+) -> None:
+    """Add a vector to the three accounts from `k` on."""
+    add_compensated(total, carry, k, x)
+    add_compensated(total, carry, k + 1, y)
+    add_compensated(total, carry, k + 2, z)

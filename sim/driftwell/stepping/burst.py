@@ -1,0 +1,252 @@
+"""The time loop: many steps in one compiled call, from mark to mark of the schedule.
+
+A step is the palindrome of kicks and drifts of the scheme (schemes.py), closed before walls and
+detectors look at it. Where the Coulomb kick is taken every m-th step only (impulse multiple time
+stepping), m steps of the fields alone stand between two half kicks of length m h / 2.
+
+A call returns at the asked mark, when its budget of steps is used up, when the event buffer could
+overflow, or with a failing status. Where it returns makes no difference to a single bit of the
+result: everything that is pending stands in the work arrays and the cursor.
+
+References
+----------
+M. Tuckerman, B. J. Berne and G. J. Martyna, J. Chem. Phys. 97 (1992) 1990 (multiple time steps).
+Accounts of a time-dependent potential by the extended phase space: J. M. Sanz-Serna and
+M. P. Calvo, Numerical Hamiltonian Problems (1994), sec. 12 (from memory).
+"""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from driftwell.coulomb.direct import PairSum, unresolved_pair
+from driftwell.kernels import inner_kernel, kernel, outer_kernel
+from driftwell.kernels.status import (
+    COLLAPSE,
+    DONE,
+    EVENTS_FULL,
+    NOT_FINITE,
+    OVERFLOW,
+    PAUSED,
+    RUNAWAY,
+)
+from driftwell.kernels.sums import add_compensated
+from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
+from driftwell.stepping.drift import drift, induced_work, kick, kick_both
+from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
+from driftwell.stepping.forces import coulomb_forces, external_forces
+from driftwell.stepping.motion import (
+    CURSOR_AT_FAULT,
+    CURSOR_EVENTS,
+    CURSOR_FRESH,
+    CURSOR_INTERVAL,
+    CURSOR_OVERFLOW,
+    CURSOR_STEP,
+    CURSOR_STEPS,
+    CURSOR_TRACES,
+    Charges,
+    Fields,
+    Plan,
+    Trace,
+    Work,
+)
+from driftwell.stepping.schedule import BREAK, TRACE
+from driftwell.stepping.schemes import Scheme
+from driftwell.walls.table import SurfaceTable
+
+LOOK_EVERY = 64
+"""Steps between two looks for runaways and numbers that are none."""
+RESOLVED = 0.3
+"""Largest product of step and a pair's own rate that still follows a close fall."""
+
+
+@kernel
+def burst(
+    pair_sum: PairSum,
+    plan: Plan,
+    scheme: Scheme,
+    fields: Fields,
+    surfaces: SurfaceTable,
+    charges: Charges,
+    trace: Trace,
+    time: np.ndarray,
+    flags: np.ndarray,
+    steps: np.ndarray,
+    until: int,
+    budget: int,
+    work: Work,
+) -> int:
+    """Step on to mark `until`, or for about `budget` steps; returns a status.
+
+    Parameters
+    ----------
+    time, flags : (m + 1,) float64 and int64; steps : (m,) int64
+        The schedule.
+    """
+    cursor = work.cursor
+    every = plan.coulomb_every
+    stages = scheme.drift.size
+    surfaced = surfaces.kind.size > 0
+    magnetised = fields.uniform.kind.size + fields.magnetic.kind.size > 0
+    together = plan.coulomb != 0 and every == 1
+    free = work.events.shape[0] // 2
+    while cursor[CURSOR_INTERVAL] < until:
+        j = cursor[CURSOR_INTERVAL]
+        h = (time[j + 1] - time[j]) / steps[j]
+        inside = 0.5 * (time[j] + time[j + 1])
+        while cursor[CURSOR_STEP] < steps[j]:
+            first = cursor[CURSOR_STEP] % every == 0
+            last = cursor[CURSOR_STEP] % every == every - 1
+            start = time[j] + cursor[CURSOR_STEP] * h
+            end = time[j] + (cursor[CURSOR_STEP] + 1) * h
+            if cursor[CURSOR_STEP] + 1 == steps[j]:
+                end = time[j + 1]
+            # Pass k = 0 opens the step, 1..stages drift and kick, the one after looks at surfaces.
+            for k in range(stages + 2):
+                met = UNTOUCHED
+                jump = False
+                t = start
+                if k == 0:
+                    jump = cursor[CURSOR_STEP] == 0 and j > 0 and (flags[j] & BREAK) != 0
+                    if surfaced:
+                        _remember(charges, work)
+                elif k <= stages:
+                    before = start + scheme.node[k - 1] * h
+                    t = end if k == stages else start + scheme.node[k] * h
+                    drift(plan, fields, charges, before, inside, scheme.drift[k - 1] * h, work)
+                else:
+                    t = end
+                    if last and every > 1:
+                        coulomb_forces(pair_sum, plan, charges, work)
+                        kick(charges, work.coulomb, 0.5 * every * h)
+                    if surfaced:
+                        met = meet_surfaces(plan, surfaces, charges, start, h, work)
+                    if met == UNTOUCHED:
+                        break
+                if k > 0 or jump or cursor[CURSOR_FRESH] == 0:
+                    settle(work.rate, work.pending, work.total, work.carry)
+                    energy = work.energy[0]
+                    external_forces(fields, charges, t, inside, work)
+                    if jump or met == LOST:
+                        _settle_energy(energy, jump, work)
+                    if together or (first and k == 0) or (last and k > stages):
+                        coulomb_forces(pair_sum, plan, charges, work)
+                    cursor[CURSOR_FRESH] = 1
+                if k > stages:
+                    break
+                if k == 0 and first:
+                    if budget <= 0:
+                        return PAUSED
+                    if surfaced and cursor[CURSOR_EVENTS] > free:
+                        return EVENTS_FULL
+                    if every > 1:
+                        kick(charges, work.coulomb, 0.5 * every * h)
+                length = scheme.kick[k] * h
+                if magnetised:
+                    _account_induced(plan, charges, length, together, work)
+                if together:
+                    kick_both(charges, work.external, work.coulomb, length)
+                else:
+                    kick(charges, work.external, length)
+                work.pending[0] += length
+            cursor[CURSOR_STEP] += 1
+            cursor[CURSOR_STEPS] += 1
+            budget -= 1
+            status = _look(plan, charges, every * h, cursor[CURSOR_STEP] == steps[j], work)
+            if status != DONE:
+                return status
+        cursor[CURSOR_STEP] = 0
+        cursor[CURSOR_INTERVAL] = j + 1
+        if (flags[j + 1] & TRACE) != 0:
+            _sample(charges, trace, time[j + 1], work)
+    settle(work.rate, work.pending, work.total, work.carry)
+    return DONE
+
+
+@outer_kernel
+def _account_induced(
+    plan: Plan, charges: Charges, h: float, together: bool, work: Work
+) -> None:
+    """Account the induced field's work in the kick to come."""
+    force_field = work.spare
+    for axis in range(3):
+        out, e, c = force_field[axis], work.external[axis], work.coulomb[axis]
+        for i in range(out.size):
+            out[i] = e[i] + c[i] if together else e[i]
+    induced_work(plan, charges, force_field, h, work)
+
+
+@outer_kernel
+def _settle_energy(before: float, jump: bool, work: Work) -> None:
+    """Enter how the energy in the fields changed: by a waveform's jump, or with charges lost."""
+    change = work.energy[0] - before
+    if jump:
+        add_compensated(work.total, work.carry, WORK_DRIVE, change)
+    else:
+        add_compensated(work.total, work.carry, ENERGY_WALLS, -change)
+
+
+@inner_kernel
+def _remember(charges: Charges, work: Work) -> None:
+    """Keep the state at the beginning of a step for the path through it."""
+    for axis in range(3):
+        x, u = charges.position[axis], charges.velocity[axis]
+        old_x, old_u = work.old_position[axis], work.old_velocity[axis]
+        for i in range(x.size):
+            old_x[i] = x[i]
+            old_u[i] = u[i]
+
+
+@inner_kernel
+def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) -> int:
+    """Look for what must stop the run."""
+    cursor = work.cursor
+    if cursor[CURSOR_OVERFLOW] > 0:
+        return OVERFLOW
+    if plan.watch_collapse != 0:
+        limit = (RESOLVED / span) ** 2
+        found = unresolved_pair(
+            charges.position, charges.charge, charges.mass, plan.constant, limit
+        )
+        if found >= 0:
+            cursor[CURSOR_AT_FAULT] = found
+            return COLLAPSE
+    if not at_mark and cursor[CURSOR_STEPS] % LOOK_EVERY != 0:
+        return DONE
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    for i in range(x.size):
+        r2 = x[i] * x[i] + y[i] * y[i] + z[i] * z[i]
+        u2 = ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]
+        if not math.isfinite(r2 + u2):
+            cursor[CURSOR_AT_FAULT] = i
+            return NOT_FINITE
+        if r2 > plan.extent2:
+            cursor[CURSOR_AT_FAULT] = i
+            return RUNAWAY
+    return DONE
+
+
+@outer_kernel
+def _sample(charges: Charges, trace: Trace, t: float, work: Work) -> None:
+    """One row of the traced coordinates."""
+    row = work.cursor[CURSOR_TRACES]
+    trace.time[row] = t
+    for k in range(trace.axis.size):
+        x = charges.position[trace.axis[k]]
+        i = trace.index[k]
+        if i >= 0:
+            trace.value[row, k] = x[i] if charges.alive[i] != 0 else np.nan
+        elif i == -1:
+            total = 0.0
+            count = 0
+            for m in range(x.size):
+                if charges.cloud[m] == trace.cloud[k] and charges.alive[m] != 0:
+                    total += x[m]
+                    count += 1
+            trace.value[row, k] = total / count if count > 0 else np.nan
+        else:
+            trace.value[row, k] = np.nan
+    work.cursor[CURSOR_TRACES] = row + 1

@@ -1,0 +1,191 @@
+"""Kicks and drifts: the exact flows a step is built from.
+
+A kick changes proper velocities u by Q/m E h at fixed positions. A drift moves with constant |u|:
+straight without a magnet, on the exact helix in a uniform magnetic field B (angular frequency
+-Q B / (gamma m) about B), so that with u the proper velocity and b = B/|B|, theta = omega h
+
+    u(h) = u_par + u_perp cos(theta) + (u x b) sin(theta)                                   (1)
+    x(h) = x + (u_par h + u_perp sin(theta)/omega + (u x b) (1 - cos(theta))/omega) / gamma (2)
+
+A magnetic field that varies in space turns u by its exact rotation (1) halfway through the drift.
+Both are volume-preserving, keep gamma to rounding and hold at any speed.
+
+References
+----------
+Q. Spreiter and M. Walter, J. Comput. Phys. 152 (1999) 102 (exact drift in a uniform field; from
+memory). L. D. Landau and E. M. Lifshitz, The Classical Theory of Fields, sec. 21 (helix).
+"""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.sums import add_compensated
+from driftwell.stepping.accounts import (
+    IMPULSE_MAGNETS,
+    TORQUE_MAGNETS,
+    WORK_INDUCED,
+    enter_vector,
+)
+from driftwell.stepping.forces import shaped_magnetic, uniform_magnetic
+from driftwell.stepping.motion import Charges, Fields, Plan, Work
+
+
+@inner_kernel
+def kick(charges: Charges, field: np.ndarray, h: float) -> None:
+    """u += Q/m E h for one field (3, n), V/m."""
+    for axis in range(3):
+        u, e, ratio = charges.velocity[axis], field[axis], charges.charge_to_mass[axis]
+        for i in range(u.size):
+            u[i] += h * ratio[i] * e[i]
+
+
+@inner_kernel
+def kick_both(charges: Charges, field: np.ndarray, coulomb: np.ndarray, h: float) -> None:
+    """u += Q/m (E + E_Coulomb) h."""
+    for axis in range(3):
+        u, ratio = charges.velocity[axis], charges.charge_to_mass[axis]
+        e, c = field[axis], coulomb[axis]
+        for i in range(u.size):
+            u[i] += h * ratio[i] * (e[i] + c[i])
+
+
+@outer_kernel
+def induced_work(
+    plan: Plan, charges: Charges, force_field: np.ndarray, h: float, work: Work
+) -> None:
+    """Account the work the induced field does in a kick of length `h` about to be made.
+
+    The kick changes the kinetic energy by Q E.(u0 + u1)/(gamma0 + gamma1) h exactly; the part of
+    the induced field E_i in it is Q E_i.(u0 + u1)/(gamma0 + gamma1) h.
+    """
+    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    total = 0.0
+    for i in range(ux.size):
+        s = h * charges.charge_to_mass[0, i]
+        vx = ux[i] + s * force_field[0, i]
+        vy = uy[i] + s * force_field[1, i]
+        vz = uz[i] + s * force_field[2, i]
+        gamma0 = math.sqrt(1.0 + (ux[i] ** 2 + uy[i] ** 2 + uz[i] ** 2) / plan.light2)
+        gamma1 = math.sqrt(1.0 + (vx * vx + vy * vy + vz * vz) / plan.light2)
+        along = (
+            work.induced[0, i] * (ux[i] + vx)
+            + work.induced[1, i] * (uy[i] + vy)
+            + work.induced[2, i] * (uz[i] + vz)
+        )
+        total += charges.charge[i] * along / (gamma0 + gamma1)
+    add_compensated(work.total, work.carry, WORK_INDUCED, h * total)
+
+
+@inner_kernel
+def drift(
+    plan: Plan, fields: Fields, charges: Charges, t: float, inside: float, h: float, work: Work
+) -> None:
+    """Move all charges for a time `h` from time `t` on, turning them in the magnetic fields."""
+    _slowness(charges.velocity, plan.light2, work.slowness)
+    if fields.uniform.kind.size + fields.magnetic.kind.size == 0:
+        for axis in range(3):
+            x, u, slow = charges.position[axis], charges.velocity[axis], work.slowness
+            for i in range(x.size):
+                x[i] += h * (u[i] * slow[i])
+        return
+    _account_magnets(charges, -1.0, work)
+    middle = t + 0.5 * h
+    bx, by, bz = uniform_magnetic(fields, middle, inside)
+    if fields.magnetic.kind.size == 0:
+        _helix(charges, bx, by, bz, h, work.slowness)
+    else:
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness)
+        shaped_magnetic(fields, charges, middle, inside, work.spare)
+        _turn(charges, work.spare, h, work.slowness)
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness)
+    _account_magnets(charges, 1.0, work)
+
+
+@inner_kernel
+def _slowness(velocity: np.ndarray, light2: float, out_slowness: np.ndarray) -> None:
+    """1/gamma of every charge."""
+    ux, uy, uz = velocity[0], velocity[1], velocity[2]
+    inverse = 1.0 / light2
+    for i in range(ux.size):
+        out_slowness[i] = 1.0 / math.sqrt(
+            1.0 + (ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]) * inverse
+        )
+
+
+@outer_kernel
+def _helix(
+    charges: Charges, bx: float, by: float, bz: float, h: float, slowness: np.ndarray
+) -> None:
+    """Equations (1) and (2)."""
+    strength = math.sqrt(bx * bx + by * by + bz * bz)
+    if strength > 0.0:
+        bx, by, bz = bx / strength, by / strength, bz / strength
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    for i in range(x.size):
+        theta = charges.charge_to_mass[0, i] * strength * slowness[i] * h
+        half = math.sin(0.5 * theta)
+        turn = math.sin(theta)
+        less = 2.0 * half * half  # 1 - cos(theta), without cancellation
+        along_turn, along_less = h, 0.0
+        if theta != 0.0:
+            along_turn, along_less = h * (turn / theta), h * (less / theta)
+        along = ux[i] * bx + uy[i] * by + uz[i] * bz
+        px, py, pz = ux[i] - along * bx, uy[i] - along * by, uz[i] - along * bz
+        cx = uy[i] * bz - uz[i] * by
+        cy = uz[i] * bx - ux[i] * bz
+        cz = ux[i] * by - uy[i] * bx
+        s = slowness[i]
+        x[i] += s * (along * bx * h + along_turn * px + along_less * cx)
+        y[i] += s * (along * by * h + along_turn * py + along_less * cy)
+        z[i] += s * (along * bz * h + along_turn * pz + along_less * cz)
+        ux[i] += turn * cx - less * px
+        uy[i] += turn * cy - less * py
+        uz[i] += turn * cz - less * pz
+
+
+@outer_kernel
+def _turn(charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray) -> None:
+    """Equation (1) alone, in each charge's own magnetic field (3, n), T."""
+    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    for i in range(ux.size):
+        bx, by, bz = field[0, i], field[1, i], field[2, i]
+        strength = math.sqrt(bx * bx + by * by + bz * bz)
+        if strength == 0.0:
+            continue
+        bx, by, bz = bx / strength, by / strength, bz / strength
+        theta = charges.charge_to_mass[0, i] * strength * slowness[i] * h
+        half = math.sin(0.5 * theta)
+        turn = math.sin(theta)
+        less = 2.0 * half * half
+        along = ux[i] * bx + uy[i] * by + uz[i] * bz
+        px, py, pz = ux[i] - along * bx, uy[i] - along * by, uz[i] - along * bz
+        cx = uy[i] * bz - uz[i] * by
+        cy = uz[i] * bx - ux[i] * bz
+        cz = ux[i] * by - uy[i] * bx
+        ux[i] += turn * cx - less * px
+        uy[i] += turn * cy - less * py
+        uz[i] += turn * cz - less * pz
+
+
+@outer_kernel
+def _account_magnets(charges: Charges, sign: float, work: Work) -> None:
+    """Enter the sums of momentum and angular momentum, before (-1) and after (+1) a drift."""
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    px = py = pz = 0.0
+    lx = ly = lz = 0.0
+    for i in range(x.size):
+        m = sign * charges.mass[i]
+        px += m * ux[i]
+        py += m * uy[i]
+        pz += m * uz[i]
+        lx += m * (y[i] * uz[i] - z[i] * uy[i])
+        ly += m * (z[i] * ux[i] - x[i] * uz[i])
+        lz += m * (x[i] * uy[i] - y[i] * ux[i])
+    enter_vector(IMPULSE_MAGNETS, px, py, pz, work.total, work.carry)
+    enter_vector(TORQUE_MAGNETS, lx, ly, lz, work.total, work.carry)

@@ -1,0 +1,159 @@
+"""Forces on all charges at one time: the fields' and the charges' own."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from driftwell.coulomb.direct import SMALL, PairSum, small_field
+from driftwell.fields.table import electric_field, induced_field, magnetic_field
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.waveform import waveform
+from driftwell.stepping.motion import Charges, Fields, Plan, Work
+
+
+@inner_kernel
+def external_forces(
+    fields: Fields, charges: Charges, t: float, inside: float, work: Work
+) -> None:
+    """The fields' E at every charge, the rates of the accounts, and the energy in the fields.
+
+    Overwrites ``work.external``, ``work.induced`` (where a magnet changes), ``work.rate`` and
+    ``work.energy``.
+    """
+    n = charges.charge.size
+    out = work.external
+    for axis in range(3):
+        row = out[axis]
+        for i in range(n):
+            row[i] = 0.0
+    power = 0.0
+    energy = 0.0
+    table = fields.electric
+    for f in range(table.kind.size):
+        w, rate = waveform(table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside)
+        total = electric_field(
+            table.kind[f],
+            table.parameter[f],
+            table.data[table.first[f] : table.first[f + 1]],
+            w,
+            charges.position,
+            charges.charge,
+            0,
+            n,
+            out,
+        )
+        power += rate * total
+        energy += w * total
+    if fields.uniform.kind.size + fields.magnetic.kind.size > 0:
+        _induced(fields, charges, t, inside, work)
+    work.rate[0] = power
+    work.energy[0] = energy
+    _force_and_torque(charges, work)
+
+
+@outer_kernel
+def _induced(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> None:
+    """Electric fields of changing magnets, kept apart for the account of their work."""
+    n = charges.charge.size
+    for axis in range(3):
+        row = work.induced[axis]
+        for i in range(n):
+            row[i] = 0.0
+    for table in (fields.uniform, fields.magnetic):
+        for f in range(table.kind.size):
+            _, rate = waveform(
+                table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside
+            )
+            if rate != 0.0:
+                induced_field(
+                    table.kind[f],
+                    table.parameter[f],
+                    table.data[table.first[f] : table.first[f + 1]],
+                    rate,
+                    charges.position,
+                    0,
+                    n,
+                    work.induced,
+                )
+    for axis in range(3):
+        row, out = work.induced[axis], work.external[axis]
+        for i in range(n):
+            out[i] += row[i]
+
+
+@inner_kernel
+def _force_and_torque(charges: Charges, work: Work) -> None:
+    """Sums over all charges of Q E and x cross Q E, in the order of the charges."""
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    ex, ey, ez = work.external[0], work.external[1], work.external[2]
+    q = charges.charge
+    fx = fy = fz = 0.0
+    tx = ty = tz = 0.0
+    for i in range(q.size):
+        px, py, pz = q[i] * ex[i], q[i] * ey[i], q[i] * ez[i]
+        fx += px
+        fy += py
+        fz += pz
+        tx += y[i] * pz - z[i] * py
+        ty += z[i] * px - x[i] * pz
+        tz += x[i] * py - y[i] * px
+    work.rate[1], work.rate[2], work.rate[3] = fx, fy, fz
+    work.rate[4], work.rate[5], work.rate[6] = tx, ty, tz
+
+
+@inner_kernel
+def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) -> None:
+    """The field of the charges at each other; overwrites ``work.coulomb``."""
+    if plan.coulomb == 0:
+        return
+    if charges.charge.size <= SMALL:
+        small_field(
+            charges.position, charges.charge, plan.softening2, plan.constant, work.coulomb
+        )
+    else:
+        pair_sum(
+            charges.position,
+            charges.charge,
+            plan.softening2,
+            plan.constant,
+            work.tiles,
+            work.coulomb,
+        )
+
+
+@outer_kernel
+def uniform_magnetic(fields: Fields, t: float, inside: float) -> tuple[float, float, float]:
+    """The sum of all uniform magnetic fields at a time, T."""
+    bx = by = bz = 0.0
+    table = fields.uniform
+    for f in range(table.kind.size):
+        w, _ = waveform(table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside)
+        bx += w * table.parameter[f, 3]
+        by += w * table.parameter[f, 4]
+        bz += w * table.parameter[f, 5]
+    return bx, by, bz
+
+
+@outer_kernel
+def shaped_magnetic(
+    fields: Fields, charges: Charges, t: float, inside: float, out_field: np.ndarray
+) -> None:
+    """The sum of all magnetic fields that vary in space, at every charge; overwrites."""
+    n = charges.charge.size
+    for axis in range(3):
+        row = out_field[axis]
+        for i in range(n):
+            row[i] = 0.0
+    table = fields.magnetic
+    for f in range(table.kind.size):
+        w, _ = waveform(table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside)
+        magnetic_field(
+            table.kind[f],
+            table.parameter[f],
+            table.data[table.first[f] : table.first[f + 1]],
+            w,
+            charges.position,
+            0,
+            n,
+            out_field,
+        )

@@ -1,0 +1,310 @@
+"""The time loop as the run drives it: bursts of compiled steps, events in between, losses removed.
+
+Between two marks nothing of Python runs inside a step. A call into compiled code lasts about half
+a second at most, so that signals, progress and a wish to stop are heard.
+"""
+
+from __future__ import annotations
+
+import time as clocks
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
+from driftwell.coulomb.direct import direct_sum
+from driftwell.coulomb.form import Coulomb
+from driftwell.errors import StepError
+from driftwell.kernels.status import (
+    COLLAPSE,
+    DONE,
+    EVENTS_FULL,
+    NOT_FINITE,
+    OVERFLOW,
+    PAUSED,
+    RUNAWAY,
+)
+from driftwell.particles.state import Particles
+from driftwell.stepping.burst import burst
+from driftwell.stepping.form import Stepping
+from driftwell.stepping.motion import (
+    CURSOR_AT_FAULT,
+    CURSOR_EVENTS,
+    CURSOR_FRESH,
+    CURSOR_INTERVAL,
+    CURSOR_STEP,
+    CURSOR_STEPS,
+    CURSOR_TRACES,
+    Fields,
+    Plan,
+    Trace,
+    charges_of,
+    work_space,
+)
+from driftwell.stepping.schedule import Schedule
+from driftwell.stepping.schemes import SCHEMES
+from driftwell.walls.table import SurfaceTable, sides
+
+_CALL_SECONDS = 0.4
+_TRACE_ROWS = 4096
+_NO_CENTRE = -2
+
+
+@dataclass(frozen=True, slots=True)
+class Traced:
+    """One traced coordinate: a cloud's centre, or one charge by its id."""
+
+    cloud: int
+    id: int | None
+    axis: int
+
+
+@dataclass(frozen=True, slots=True)
+class Events:
+    """What happened on surfaces, in the order it was found.
+
+    surface, id, cloud : (k,) int64; direction : (k,) int64, 0 for losses
+    time : (k,) s; position, velocity : (k, 3), m and m/s (proper)
+    mass, weight : (k,) of one real particle, and how many it stands for
+    """
+
+    surface: NDArray[np.int64]
+    id: NDArray[np.int64]
+    cloud: NDArray[np.int64]
+    direction: NDArray[np.int64]
+    time: NDArray[np.float64]
+    position: NDArray[np.float64]
+    velocity: NDArray[np.float64]
+    mass: NDArray[np.float64]
+    weight: NDArray[np.float64]
+
+
+class TimeLoop:
+    """Moves a set of particles along a schedule.
+
+    Attributes
+    ----------
+    particles : Particles
+        The charges, in the order of their ids; lost ones until :meth:`remove_lost`.
+    charges, work :
+        What the compiled loop works on; the ledger reads them.
+    """
+
+    def __init__(
+        self,
+        particles: Particles,
+        fields: Fields,
+        surfaces: SurfaceTable,
+        coulomb: Coulomb,
+        stepping: Stepping,
+        schedule: Schedule,
+        traced: Sequence[Traced],
+        threads: int,
+    ) -> None:
+        self.particles = particles
+        self.schedule = schedule
+        self._fields = fields
+        self._surfaces = surfaces
+        self._scheme = SCHEMES[stepping.scheme]
+        self._threads = threads
+        self._traced = traced
+        both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
+        self.plan = Plan(
+            coulomb=int(coulomb.method != "off"),
+            coulomb_every=stepping.coulomb_every,
+            constant=COULOMB_CONSTANT,
+            softening2=coulomb.softening**2,
+            extent2=stepping.extent**2,
+            watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
+            light2=SPEED_OF_LIGHT**2,
+        )
+        self.work = work_space(0, 0)
+        self._events: list[Events] = []
+        self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
+        self._budget = 1
+        self._arrange()
+        sides(self._surfaces, particles.position, self.work.side)
+        self._burst(1, 0)  # no step, but the forces at the start
+
+    @property
+    def steps_done(self) -> int:
+        """Steps since the run began."""
+        return int(self.work.cursor[CURSOR_STEPS])
+
+    @property
+    def time(self) -> float:
+        """Time reached, s."""
+        interval, step = self.work.cursor[CURSOR_INTERVAL], self.work.cursor[CURSOR_STEP]
+        times, steps = self.schedule.time, self.schedule.steps
+        if interval >= len(steps):
+            return float(times[-1])
+        return float(times[interval] + step * (times[interval + 1] - times[interval]) / steps[interval])
+
+    @property
+    def mark(self) -> int:
+        """The mark of the schedule last reached."""
+        return int(self.work.cursor[CURSOR_INTERVAL])
+
+    def to_mark(self, until: int, keep_going: Callable[[], bool]) -> bool:
+        """Step on to a mark; False when `keep_going` said no on the way.
+
+        Raises StepError where the motion cannot be continued.
+        """
+        status = PAUSED
+        while status != DONE:
+            if not keep_going():
+                return False
+            began, before = clocks.perf_counter(), self.steps_done
+            status = self._burst(self._next_stop(until), self._budget)
+            self._collect()
+            if status not in {DONE, PAUSED, EVENTS_FULL}:
+                raise StepError(self._failure(status))
+            self._adapt(clocks.perf_counter() - began, self.steps_done - before)
+            if status == DONE and self.mark < until:
+                status = PAUSED
+        return True
+
+    def remove_lost(self) -> None:
+        """Take the charges lost since the last call out of the arrays."""
+        alive = self.charges.alive != 0
+        if alive.all():
+            return
+        side = self.work.side[:, alive]
+        self.particles = self.particles.kept(alive)
+        self._arrange()
+        self.work.side[:] = side
+
+    def state(self) -> dict[str, NDArray[np.float64] | NDArray[np.int64]]:
+        """Copies of everything a resume needs besides the particles, by name."""
+        return {
+            "accounts/total": self.work.total.copy(),
+            "accounts/carry": self.work.carry.copy(),
+            "accounts/energy": self.work.energy.copy(),
+            "schedule/cursor": self.work.cursor.copy(),
+            "surfaces/side": self.work.side.astype(np.int64),
+        }
+
+    def take_events(self) -> list[Events]:
+        """What happened on surfaces since the last call."""
+        taken, self._events = self._events, []
+        return taken
+
+    def take_samples(self) -> list[tuple[NDArray[np.float64], NDArray[np.float64]]]:
+        """Traced times (k,) and values (k, traces) since the last call."""
+        taken, self._samples = self._samples, []
+        return taken
+
+    def _next_stop(self, until: int) -> int:
+        """A mark near enough that the samples on the way fit their buffer."""
+        return min(until, self.mark + _TRACE_ROWS) if self._traced else until
+
+    def _burst(self, until: int, budget: int) -> int:
+        return int(
+            burst(
+                self._pair_sum,
+                self.plan,
+                self._scheme,
+                self._fields,
+                self._surfaces,
+                self.charges,
+                self._trace,
+                self.schedule.time,
+                self.schedule.flags,
+                self.schedule.steps,
+                until,
+                budget,
+                self.work,
+            )
+        )
+
+    def _adapt(self, seconds: float, steps: int) -> None:
+        """Set the budget of the next call to about :data:`_CALL_SECONDS`."""
+        if steps > 0 and seconds > 0.0:
+            wanted = int(steps * _CALL_SECONDS / seconds)
+            self._budget = max(1, min(wanted, 8 * max(self._budget, steps)))
+
+    def _arrange(self) -> None:
+        """Lay out work space for the particles as they are; accounts and cursor are kept."""
+        n = len(self.particles)
+        old = self.work
+        self.charges = charges_of(self.particles)
+        work = work_space(n, self._surfaces.kind.size)
+        work.total[:], work.carry[:] = old.total, old.carry
+        work.energy[:], work.cursor[:] = old.energy, old.cursor
+        work.cursor[CURSOR_FRESH] = 0
+        self.work = work
+        self._pair_sum = direct_sum(n, self._threads)
+        self._trace = Trace(
+            np.array([each.cloud for each in self._traced], dtype=np.int64),
+            np.array([self._index(each) for each in self._traced], dtype=np.int64),
+            np.array([each.axis for each in self._traced], dtype=np.int64),
+            np.zeros(_TRACE_ROWS + 1),
+            np.zeros((_TRACE_ROWS + 1, len(self._traced))),
+        )
+
+    def _index(self, traced: Traced) -> int:
+        """Where a traced charge stands now; -1 for a centre, -2 once the charge is lost."""
+        if traced.id is None:
+            return -1
+        found = np.flatnonzero(self.particles.id == traced.id)
+        return int(found[0]) if found.size else _NO_CENTRE
+
+    def _collect(self) -> None:
+        """Empty the event and sample buffers into lists."""
+        cursor = self.work.cursor
+        count = int(cursor[CURSOR_EVENTS])
+        if count:
+            rows = self.work.events[:count].copy()
+            index = rows[:, 1].astype(np.int64)
+            self._events.append(
+                Events(
+                    surface=rows[:, 0].astype(np.int64),
+                    id=self.particles.id[index],
+                    cloud=self.particles.cloud[index],
+                    direction=rows[:, 9].astype(np.int64),
+                    time=rows[:, 2],
+                    position=rows[:, 3:6],
+                    velocity=rows[:, 6:9],
+                    mass=self.particles.mass[index],
+                    weight=self.particles.weight[index],
+                )
+            )
+            cursor[CURSOR_EVENTS] = 0
+        count = int(cursor[CURSOR_TRACES])
+        if count:
+            self._samples.append(
+                (self._trace.time[:count].copy(), self._trace.value[:count].copy())
+            )
+            cursor[CURSOR_TRACES] = 0
+
+    def _failure(self, status: int) -> str:
+        """What went wrong, with whom, when, and what to do."""
+        i = int(self.work.cursor[CURSOR_AT_FAULT])
+        when = f"after {self.steps_done} steps, before t = {self._time_ahead():.6g} s"
+        if status == OVERFLOW:
+            return f"{when}: a single step met too many surfaces; take a shorter step."
+        who = f"charge {int(self.particles.id[i])}"
+        x, y, z = self.particles.position[:, i]
+        where = f"at ({x:.6g}, {y:.6g}, {z:.6g}) m"
+        if status == NOT_FINITE:
+            return (
+                f"{when}: the position or velocity of {who} is no longer a number. It met a point "
+                "where a field has no value, or the step is far too long; take a shorter step, or "
+                "put a wall before that point."
+            )
+        if status == RUNAWAY:
+            return (
+                f"{when}: {who} has run away, {where}, beyond stepping.extent. The motion is "
+                "unstable or nothing stops it: put a wall, or set a larger extent."
+            )
+        if status == COLLAPSE:
+            return (
+                f"{when}: {who} falls towards an opposite charge faster than the step can follow, "
+                f"{where}. Take a shorter step, or give coulomb.softening a length."
+            )
+        return f"{when}: the step ended with the unknown status {status}."
+
+    def _time_ahead(self) -> float:
+        return float(self.schedule.time[min(self.mark + 1, len(self.schedule.time) - 1)])

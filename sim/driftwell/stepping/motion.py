@@ -1,0 +1,178 @@
+"""What the compiled loop works on: the moving charges, the fields, the plan, and work space.
+
+All are named tuples of flat arrays and numbers, so that one compiled loop serves every scenario.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.coulomb import direct
+from driftwell.fields.table import FieldTable
+from driftwell.particles.state import Particles
+from driftwell.stepping.accounts import ACCOUNTS, RATES
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+EVENT_COLUMNS = 10
+"""surface, particle index, time, x, y, z, ux, uy, uz, direction."""
+
+
+class Charges(NamedTuple):
+    """The moving charges; `charge` and `mass` are those of the macro-particle.
+
+    position, velocity : (3, n) float64, m and m/s (proper velocity), changed
+    charge : (n,) float64, C; mass : (n,) float64, kg; weight : (n,) float64, real particles
+    charge_to_mass : (3, n) float64, C/kg, repeated for the axes
+    cloud : (n,) int64; alive : (n,) int8, 1 or 0, changed
+
+    A charge that is lost stays where it is, with charge, weight and velocity 0, until it is taken
+    out between bursts.
+    """
+
+    position: Floats
+    velocity: Floats
+    charge: Floats
+    mass: Floats
+    weight: Floats
+    charge_to_mass: Floats
+    cloud: Ints
+    alive: NDArray[np.int8]
+
+
+class Fields(NamedTuple):
+    """The fields by role."""
+
+    electric: FieldTable
+    uniform: FieldTable
+    magnetic: FieldTable
+
+
+class Plan(NamedTuple):
+    """Numbers that hold for the whole run.
+
+    coulomb : 1 to sum the charges' own force, 0 to leave it out
+    coulomb_every : steps between Coulomb kicks
+    constant : 1/(4 pi eps0); softening2 : m^2; extent2 : m^2
+    watch_collapse : 1 where charges of both signs move without softening
+    light2 : c^2, m^2/s^2
+    """
+
+    coulomb: int
+    coulomb_every: int
+    constant: float
+    softening2: float
+    extent2: float
+    watch_collapse: int
+    light2: float
+
+
+class Trace(NamedTuple):
+    """Coordinates sampled at the marks for it.
+
+    cloud, index : (m,) int64, a cloud's centre, or one charge (index >= 0, of the present arrays;
+    -2 once it is lost); axis : (m,) int64
+    time : (k,) float64 and value : (k, m) float64, overwritten from the top
+    """
+
+    cloud: Ints
+    index: Ints
+    axis: Ints
+    time: Floats
+    value: Floats
+
+
+class Work(NamedTuple):
+    """Arrays the loop keeps between calls; none is allocated inside a step.
+
+    external, coulomb, induced : (3, n) fields, V/m; spare : (3, n)
+    slowness : (n,) 1/gamma
+    old_position, old_velocity : (3, n) at the beginning of the step
+    side : (surfaces, n) int8
+    tiles : Coulomb work space
+    rate, pending : see accounts.settle
+    energy : (1,) J, potential energy in the fields at the last evaluation
+    total, carry : (accounts,)
+    events : (capacity, 10)
+    cursor : (8,) int64, see the constants below
+    """
+
+    external: Floats
+    coulomb: Floats
+    induced: Floats
+    spare: Floats
+    slowness: Floats
+    old_position: Floats
+    old_velocity: Floats
+    side: NDArray[np.int8]
+    tiles: Floats
+    rate: Floats
+    pending: Floats
+    energy: Floats
+    total: Floats
+    carry: Floats
+    events: Floats
+    cursor: Ints
+
+
+CURSOR_INTERVAL = 0
+CURSOR_STEP = 1
+CURSOR_EVENTS = 2
+CURSOR_TRACES = 3
+CURSOR_FRESH = 4
+"""1 while the force arrays belong to the present positions and time."""
+CURSOR_STEPS = 5
+"""Steps done since the run began."""
+CURSOR_AT_FAULT = 6
+"""Index of the charge a failing status speaks of."""
+CURSOR_OVERFLOW = 7
+"""Events that did not fit the buffer: more than a step can sensibly hold."""
+CURSORS = 8
+
+
+def charges_of(particles: Particles) -> Charges:
+    """The moving charges of a set of particles; positions and velocities are shared, not copied."""
+    charge = particles.charge * particles.weight
+    ratio = particles.charge / particles.mass
+    return Charges(
+        particles.position,
+        particles.velocity,
+        charge,
+        particles.mass * particles.weight,
+        particles.weight.copy(),
+        np.ascontiguousarray(np.broadcast_to(ratio, (3, ratio.size))),
+        particles.cloud,
+        np.ones(ratio.size, dtype=np.int8),
+    )
+
+
+def room_for_events(n: int, surfaces: int) -> int:
+    """Rows one step may need: every charge meets every surface, and some bounce about in corners."""
+    return n * surfaces + 64 * surfaces * 17
+
+
+def work_space(n: int, surfaces: int) -> Work:
+    """Work space for `n` charges and `surfaces` walls and detectors."""
+    events = 2 * room_for_events(n, surfaces)
+    return Work(
+        external=np.zeros((3, n)),
+        coulomb=np.zeros((3, n)),
+        induced=np.zeros((3, n)),
+        spare=np.zeros((3, n)),
+        slowness=np.ones(n),
+        old_position=np.zeros((3, n)),
+        old_velocity=np.zeros((3, n)),
+        side=np.ones((surfaces, n), dtype=np.int8),
+        tiles=direct.workspace(n),
+        rate=np.zeros(RATES),
+        pending=np.zeros(1),
+        energy=np.zeros(1),
+        total=np.zeros(ACCOUNTS),
+        carry=np.zeros(ACCOUNTS),
+        events=np.zeros((events, EVENT_COLUMNS)),
+        cursor=np.zeros(CURSORS, dtype=np.int64),
+    )

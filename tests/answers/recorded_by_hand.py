@@ -1,0 +1,154 @@
+"""A record made of a few arrays, to ask questions of."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from driftwell.answers.evidence import CloudFacts, Moments, Snapshot, TraceRequest
+from driftwell.answers.form import QuestionForm
+from driftwell.answers.table import QUESTION_KINDS
+from driftwell.errors import AnswerError
+from driftwell.forms.declared import kind_name
+from driftwell.forms.faults import read_form
+
+MASS = 2.0e-25
+CHARGE = 1.602176634e-19
+
+LOSS = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
+CROSSING = [("time", "f8"), ("id", "i8"), ("cloud", "i8"), ("detector", "i8"), ("direction", "i8")]
+
+
+def facts(name: str = "load", count: int = 0, **changes: Any) -> CloudFacts:
+    """A cloud's facts; what is not given is invented."""
+    given = {
+        "name": name,
+        "index": 0,
+        "species": "invented",
+        "mass": MASS,
+        "charge": CHARGE,
+        "weight": 1.0,
+        "first_id": 0,
+        "count": count,
+    }
+    return CloudFacts(**(given | changes))
+
+
+def table(kind: list[tuple[str, str]], rows: list[tuple[Any, ...]]) -> np.ndarray:
+    """Rows as a structured array."""
+    return np.array(rows, dtype=kind)
+
+
+@dataclass
+class Recorded:
+    """What a run recorded, filled by hand. `end_time` in s."""
+
+    clouds: dict[str, CloudFacts] = field(default_factory=dict)
+    detectors: list[str] = field(default_factory=list)
+    softening: float = 0.0
+    end_time: float = 1e-3
+    shots: dict[float, Snapshot] = field(default_factory=dict)
+    series: dict[str, Moments] = field(default_factory=dict)
+    lost: np.ndarray = field(default_factory=lambda: table(LOSS, []))
+    crossed: np.ndarray = field(default_factory=lambda: table(CROSSING, []))
+    traced: dict[TraceRequest, tuple[np.ndarray, np.ndarray]] = field(default_factory=dict)
+
+    def snapshot(self, time: float) -> Snapshot:
+        for known, shot in self.shots.items():
+            if abs(known - time) <= 1e-9 * self.end_time:
+                return shot
+        raise AnswerError(f"no snapshot at {time}")
+
+    def moments(self, cloud: str) -> Moments:
+        return self.series[cloud]
+
+    def losses(self) -> np.ndarray:
+        return self.lost
+
+    def crossings(self) -> np.ndarray:
+        return self.crossed
+
+    def trace(self, request: TraceRequest) -> tuple[np.ndarray, np.ndarray]:
+        return self.traced[request]
+
+    def at(
+        self, time: float, *present: tuple[CloudFacts, np.ndarray, np.ndarray, np.ndarray]
+    ) -> Recorded:
+        """Add a snapshot: for each cloud its facts, numbers, positions and velocities (n, 3)."""
+        for cloud, *_ in present:
+            self.clouds[cloud.name] = cloud
+        ids = [cloud.first_id + number for cloud, number, _, _ in present]
+        each = [(cloud, len(number)) for cloud, number, _, _ in present]
+
+        def spread(name: str) -> np.ndarray:
+            return np.concatenate([np.full(n, getattr(cloud, name)) for cloud, n in each])
+
+        self.shots[time] = Snapshot(
+            time,
+            np.concatenate(ids),
+            spread("index"),
+            np.concatenate([place for _, _, place, _ in present]).reshape(-1, 3),
+            np.concatenate([velocity for _, _, _, velocity in present]).reshape(-1, 3),
+            spread("charge"),
+            spread("mass"),
+            spread("weight"),
+        )
+        return self
+
+
+def one_cloud(position: np.ndarray, velocity: np.ndarray | None = None, **changes: Any) -> Recorded:
+    """A record whose end holds one whole cloud "load" at positions and velocities (n, 3)."""
+    count = len(position)
+    cloud = facts(count=count, **changes)
+    velocity = np.zeros((count, 3)) if velocity is None else velocity
+    recorded = Recorded()
+    return recorded.at(recorded.end_time, (cloud, np.arange(count), position, velocity))
+
+
+def passing(times: np.ndarray, count: int | None = None, **changes: Any) -> Recorded:
+    """A record in which the first charges of "load" pass the detector "exit" at `times`, s."""
+    cloud = facts(count=len(times) if count is None else count, **changes)
+    rows = [(time, cloud.first_id + i, cloud.index, 0, 1) for i, time in enumerate(times)]
+    return Recorded({"load": cloud}, ["exit"], end_time=1.0, crossed=table(CROSSING, rows))
+
+
+def in_time(time: np.ndarray, rows: list[Any], **changes: Any) -> Recorded:
+    """A record of moments of "load" at times (k,), from :class:`MomentsRow` values."""
+    series = Moments(
+        time,
+        np.array([row.count for row in rows]),
+        np.array([row.centre for row in rows]),
+        np.array([row.covariance for row in rows]),
+        np.array([row.kinetic_energy for row in rows]),
+        np.array([row.kinetic_variance for row in rows]),
+    )
+    cloud = facts(count=int(series.count.max()), **changes)
+    return Recorded({"load": cloud}, end_time=float(time[-1]), series={"load": series})
+
+
+def asked(ask: str, **keys: Any) -> QuestionForm:
+    """The question a scenario would ask with these keys; of "load" where nothing else is said."""
+    form = next(kind for kind in QUESTION_KINDS if kind_name(kind, "ask") == ask)
+    question, faults = read_form(form, {"name": "asked", "ask": ask, "of": "load"} | keys)
+    assert question is not None, faults
+    return question
+
+
+ONE_OF_EACH: tuple[dict[str, Any], ...] = (
+    {"ask": "fraction-left"},
+    {"ask": "fraction-through", "of": "exit", "cloud": "load"},
+    {"ask": "centre", "axis": "x"},
+    {"ask": "rms-size", "axis": "y"},
+    {"ask": "temperature", "axis": "z"},
+    {"ask": "kinetic-energy"},
+    {"ask": "kinetic-energy-spread"},
+    {"ask": "emittance", "plane": "x", "normalised": True},
+    {"ask": "arrival-time", "of": "exit", "statistic": "rms"},
+    {"ask": "frequency", "axis": "z"},
+    {"ask": "peak-density"},
+    {"ask": "nearest-neighbour"},
+    {"ask": "force", "charge": 0},
+)
+"""One question of every kind, for :func:`asked`."""

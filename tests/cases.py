@@ -1,0 +1,133 @@
+"""One list of everything that keeps a contract: contract tests run over the whole list.
+
+All settings are invented.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE
+from driftwell.fields.form import FieldForm
+from driftwell.fields.table import FIELD_KINDS
+from driftwell.forms.body import Body
+
+BODIES = {
+    "barium": Body("barium", 137.905 * ATOMIC_MASS, ELEMENTARY_CHARGE),
+    "electron": Body("electron", ELECTRON_MASS, -ELEMENTARY_CHARGE),
+}
+
+_KINDS = {kind.model_fields["kind"].annotation.__args__[0]: kind for kind in FIELD_KINDS}
+
+
+def field(kind: str, **keys: Any) -> FieldForm:
+    """A field as a scenario states it; its name is its kind where none is given."""
+    return _KINDS[kind](**{"kind": kind, "name": kind, **keys})
+
+
+SINE = {"frequency": "1.1 MHz", "phase": "40 deg"}
+OFF_CENTRE = ["0.3 mm", "-0.2 mm", "0.5 mm"]
+
+FIELDS = [
+    field("uniform-electric", strength="20 kV/m"),
+    field(
+        "uniform-electric",
+        name="uniform-electric, ramped",
+        strength={
+            "kind": "ramp",
+            "before": "0 V/m",
+            "after": "3 kV/m",
+            "start": "0 s",
+            "end": "2 us",
+        },
+        along=[1.0, -2.0, 0.5],
+        centre=OFF_CENTRE,
+    ),
+    field("uniform-magnetic", strength="1.5 T"),
+    field(
+        "uniform-magnetic",
+        name="uniform-magnetic, changing",
+        strength={"amplitude": "20 mT", "offset": "0.1 T", **SINE},
+        along=[0.2, 0.0, 1.0],
+        centre=OFF_CENTRE,
+    ),
+    field("static-quadrupole", voltage="10 V", radius="5 mm", half_length="4 mm"),
+    field(
+        "static-quadrupole",
+        name="static-quadrupole, elliptic",
+        voltage={
+            "kind": "pulses",
+            "low": "2 V",
+            "high": "10 V",
+            "start": "0 s",
+            "width": "2 us",
+            "rise": "1.5 us",
+        },
+        radius="5 mm",
+        half_length="4 mm",
+        ellipticity=-0.3,
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "static-quadrupole",
+        name="static-quadrupole, by frequency",
+        axial_frequency={"species": "electron", "value": "30 MHz"},
+    ),
+    field(
+        "rf-quadrupole",
+        radius="3.5 mm",
+        voltage={"amplitude": "180 V", "offset": "5 V", **SINE},
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "rf-quadrupole-3d",
+        radius="10 mm",
+        half_length="6 mm",
+        voltage={"amplitude": "500 V", **SINE},
+        centre=OFF_CENTRE,
+    ),
+    *(
+        field(
+            "electric-multipole",
+            name=f"electric-multipole, order {order}",
+            order=order,
+            radius="4 mm",
+            angle="17 deg",
+            voltage={"kind": "table", "times": ["0 s", "3 us"], "values": ["50 V", "-20 V"]},
+            centre=OFF_CENTRE,
+        )
+        for order in (1, 2, 3, 7)
+    ),
+    *(
+        field(
+            "magnetic-multipole",
+            name=f"magnetic-multipole, order {order}",
+            order=order,
+            radius="20 mm",
+            angle="17 deg",
+            strength={"amplitude": "0.3 T", **SINE},
+            centre=OFF_CENTRE,
+        )
+        for order in (1, 2, 3, 6)
+    ),
+    field(
+        "magnetic-multipole",
+        name="magnetic-multipole, by gradient",
+        order=2,
+        radius="20 mm",
+        gradient="12 T/m",
+    ),
+    field(
+        "quadro-logarithmic",
+        curvature={"amplitude": "1.0e6 V/m^2", "offset": "3.0e7 V/m^2", **SINE},
+        characteristic_radius="20 mm",
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "wire-in-cylinder",
+        wire_radius="50 um",
+        cylinder_radius="10 mm",
+        voltage={"amplitude": "-300 V", **SINE},
+        centre=OFF_CENTRE,
+    ),
+]
