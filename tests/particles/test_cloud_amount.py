@@ -14,6 +14,7 @@ from hypothesis import strategies as st
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
 from driftwell.errors import ScenarioError
 from driftwell.forms.faults import Fault
+from driftwell.particles.draws import Draws
 from driftwell.particles.state import Particles, joined
 
 Load = Callable[..., Particles]
@@ -194,6 +195,22 @@ def test_places_and_velocities_of_a_cloud_are_independent_of_each_other(load: Lo
     correlation = np.corrcoef(np.vstack([found.position, found.velocity]))
     off = correlation - np.diag(np.diag(correlation))
     assert np.max(np.abs(off)) < 4.5 / math.sqrt(count)  # 4.5 standard errors
+
+
+def test_no_stream_of_random_numbers_is_used_for_two_purposes(
+    load: Load, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    asked: list[str] = []
+    key = Draws._key
+
+    def noted(draws: Draws, purpose: str) -> int:
+        asked.append(purpose)
+        return key(draws, purpose)
+
+    monkeypatch.setattr(Draws, "_key", noted)
+    motion = THERMAL | {"kinetic_energy": "1 eV", "divergence": "1 deg", "energy_spread": "10 meV"}
+    load(shape=BALL, motion=motion)
+    assert ["divergence", "energy spread", "place", "temperature"] == sorted(asked)
 
 
 def test_a_motion_does_not_change_where_charges_are_nor_a_shape_how_they_move(load: Load) -> None:

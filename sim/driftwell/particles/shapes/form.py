@@ -53,7 +53,7 @@ class ShapeForm(Form):
 
     def moved(self, position: Floats) -> Floats:
         """Places in the shape's own coordinates, (3, n), seen from the scenario's origin."""
-        return np.asarray(position)
+        return np.asarray(position + np.array(self.centre)[:, None])
 
     def words(self) -> str:
         """The shape in words."""
