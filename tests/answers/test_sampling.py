@@ -59,11 +59,19 @@ def test_jackknife_of_a_linear_value_scales_with_it() -> None:
     assert thrice == pytest.approx(3.0 * once, rel=1e-12)
 
 
-def test_groups_are_dealt_in_turn_and_equally_large() -> None:
+def test_groups_are_always_the_same_and_equally_large() -> None:
     group = group_of(1007)
-    assert np.array_equal(np.arange(1007) % 50, group)
+    assert np.array_equal(group, group_of(1007))
     assert set(np.bincount(group)) == {20, 21}
-    assert np.array_equal(np.arange(7), group_of(7))
+    assert sorted(group_of(7)) == list(range(7))
+    assert group_of(0).size == 0
+
+
+@pytest.mark.parametrize("period", [2, 50, 100])
+def test_groups_do_not_follow_an_order_the_charges_were_laid_out_in(period: int) -> None:
+    values = (np.arange(5000) % period).astype(float)
+    found = jackknife_error(lambda keep: float(values[keep].mean()), values.size)
+    assert found == pytest.approx(mean_error(values), rel=0.3)
 
 
 def test_errors_of_too_few_charges_are_unknown() -> None:

@@ -249,7 +249,7 @@ def test_waveforms_of_two_quantities_do_not_take_each_others_units() -> None:
         ({"amplitude": "180 V", "frequency": "1.1 MHz"}, "180 V amplitude at 1.1 MHz"),
         (
             {"amplitude": "1 kV", "frequency": "2 kHz", "offset": "-5 V", "phase": "90 deg"},
-            "-5 V and 1 kV amplitude at 2 kHz from phase 90 deg",
+            "-5 V plus 1 kV amplitude at 2 kHz from phase 90 deg",
         ),
         (RAMP, "ramp from 2 V at 1 us to -6 V at 3 us"),
         (STEP, "2 V, from 1 us on -6 V"),

@@ -64,7 +64,11 @@ def random_rows(path: str, count: int, sizes: dict[str, int], seed: int) -> np.n
     entry = dataset(path)
     shape = (count, *entry.row_shape(sizes))
     size = int(np.prod(shape)) * entry.dtype().itemsize
-    return np.frombuffer(np.random.default_rng(seed).bytes(size), entry.dtype()).reshape(shape)
+    words = np.frombuffer(np.random.default_rng(seed).bytes(size), np.uint64).copy()
+    for k, special in enumerate((np.nan, -np.nan, np.inf, -0.0, 5e-324)):
+        words[k::17] = np.float64(special).view(np.uint64)
+    words[5::17] = 0x7FF8_0000_DEAD_BEEF  # "not a number" with bits of its own
+    return words.view(entry.dtype()).reshape(shape)
 
 
 @dataclass

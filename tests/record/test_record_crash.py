@@ -5,7 +5,10 @@ from __future__ import annotations
 import errno
 import os
 import re
+from collections.abc import Callable
+from contextlib import suppress
 from pathlib import Path
+from typing import Any
 
 import h5py
 import numpy as np
@@ -54,66 +57,68 @@ def assert_whole(folder: Path, recorded: Recorded, segments: int) -> None:
         assert step == run.state()["schedule/step"]
 
 
+class MortalDisk:
+    """The disk until call number `last`, before which the process is killed.
+
+    torn : a write that is the last call is half done first
+    """
+
+    def __init__(self, last: int, torn: bool) -> None:
+        self.last = last
+        self.torn = torn
+        self.calls: list[str] = []
+        self._real = {name: getattr(os, name) for name in CALLS}
+
+    def __getitem__(self, name: str) -> Callable[..., Any]:
+        def call(*arguments: Any, **options: Any) -> Any:
+            self.calls.append(name)
+            if len(self.calls) >= self.last:
+                if self.torn and len(self.calls) == self.last:
+                    self._real[name](arguments[0], arguments[1][: len(arguments[1]) // 2])
+                raise Killed
+            return self._real[name](*arguments, **options)
+
+        return call
+
+
 def test_a_run_killed_at_any_touch_of_the_disk_shows_all_it_sealed(tmp_path, monkeypatch):
-    """Stopped before each single call in turn, and once with half of a write done."""
-    real = {name: getattr(os, name) for name in CALLS}
+    """Stopped before each single call in turn, and within each write."""
     counts = {counter: 2 + place for place, counter in enumerate(COUNTERS)}
 
-    def killed_at(last: int, torn: bool) -> tuple[Path, Recorded, int, bool]:
-        calls = 0
-
-        def mortal(name):
-            def call(*arguments, **options):
-                nonlocal calls
-                calls += 1
-                if calls == last and torn and name == "write":
-                    real[name](arguments[0], arguments[1][: len(arguments[1]) // 2])
-                if calls >= last:
-                    raise Killed
-                return real[name](*arguments, **options)
-
-            return call
-
-        folder = tmp_path / f"{last}-{torn}"
-        recorded, sealed, ended = Recorded(), 0, False
-        with monkeypatch.context() as patch:
+    def killed_run(folder: Path, disk: MortalDisk) -> tuple[Recorded, int]:
+        recorded, sealed = Recorded(), 0
+        with monkeypatch.context() as patch, suppress(Killed):
             for name in CALLS:
-                patch.setattr(os, name, mortal(name))
-            try:
-                writer = RunWriter.create(folder, invented_header())
-                for k in range(2):
-                    record_segment(writer, recorded, counts, (3,), float(k), 100 * k)
-                    sealed += 1
-                writer.finish(FINISHED, ANSWERS)
-                ended = True
-            except Killed:
-                pass
-        return folder, recorded, sealed, ended
+                patch.setattr(os, name, disk[name])
+            writer = RunWriter.create(folder, invented_header())
+            for k in range(2):
+                record_segment(writer, recorded, counts, (3,), float(k), 100 * k)
+                sealed += 1
+            writer.finish(FINISHED, ANSWERS)
+        return recorded, sealed
 
-    unborn = kills = 0
-    seen = set()
-    for torn in (False, True):
-        last, ended = 1, False
-        while not ended:
-            folder, recorded, sealed, ended = killed_at(last, torn)
-            last += 1
-            kills += 1
-            files = every_file(folder) if folder.exists() else {}
-            if not any(name.endswith(".h5") for name in files):
-                with pytest.raises(RecordError, match=r"no run found|before it sealed"):
-                    open_run(folder)
-                unborn += 1
-                continue
-            # a segment may be on the disk already while the writer had not yet heard so
-            found = len(open_run(folder).segments)
-            assert found in (sealed, sealed + 1)
-            seen.add(found - sealed)
-            assert_whole(folder, recorded, found)
-            with h5py.File(folder / "run.h5") as master:
-                assert len(master["trajectory/time"]) >= 2 * sealed
-    assert {0, 1} == seen
-    assert unborn > 5
-    assert kills > 60
+    unbroken = MortalDisk(10**9, torn=False)
+    assert 2 == killed_run(tmp_path / "unbroken", unbroken)[1]
+    assert set(CALLS) - {"rename", "unlink", "rmdir"} == set(unbroken.calls)
+    kills = [(k, False) for k in range(1, len(unbroken.calls) + 1)]
+    kills += [(k, True) for k, name in enumerate(unbroken.calls, 1) if name == "write"]
+    unborn, ahead = 0, set()
+    for last, torn in kills:
+        folder = tmp_path / f"{last}{'-torn' * torn}"
+        recorded, sealed = killed_run(folder, MortalDisk(last, torn))
+        if not (folder / "run.h5").exists():
+            with pytest.raises(RecordError, match=r"no run found|before it sealed"):
+                open_run(folder)
+            unborn += 1
+            continue
+        # the last segment may be on the disk although the writer had not yet heard so
+        found = len(open_run(folder).segments)
+        ahead.add(found - sealed)
+        assert_whole(folder, recorded, found)
+        with h5py.File(folder / "run.h5") as master:
+            assert counts["records"] * sealed <= len(master["trajectory/time"])
+    assert {0, 1} == ahead
+    assert unborn < len(kills) / 3
 
 
 def test_a_file_half_written_by_a_killed_run_is_ignored(tmp_path):
@@ -121,7 +126,8 @@ def test_a_file_half_written_by_a_killed_run_is_ignored(tmp_path):
     half = (tmp_path / "run" / "segments" / "000002.h5").read_bytes()[:3000]
     (tmp_path / "run" / "segments" / "000003.h5.part").write_bytes(half)
     (tmp_path / "run" / "run.h5.part").write_bytes(half)
-    (tmp_path / "run" / "segments" / "notes.h5").write_bytes(b"somebody else's")
+    for name in ("notes.h5", "7.h5", "000003.h5.bak"):
+        (tmp_path / "run" / "segments" / name).write_bytes(b"somebody else's")
     assert_whole(tmp_path / "run", recorded, 2)
 
 

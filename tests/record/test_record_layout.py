@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import importlib.util
+from dataclasses import fields
 from pathlib import Path
 from types import ModuleType
 
 import numpy as np
 import pytest
 
+from driftwell.answers.evidence import Moments
+from driftwell.ledger.ledger import LedgerRow
 from driftwell.record import layout
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -87,3 +90,13 @@ def test_rows_of_a_table_are_filled_by_name():
     rows[1]["position"] = (1.0, 2.0, 3.0)
     assert [[0.0, 0.0, 0.0], [1.0, 2.0, 3.0]] == rows["position"].tolist()
     assert np.dtype(np.int64) == rows["wall"].dtype
+
+
+def test_the_ledgers_rows_and_the_table_have_the_same_columns():
+    columns = [column.name for column in layout.dataset("ledger").columns]
+    assert columns == [each.name for each in fields(LedgerRow)]
+
+
+def test_moments_are_recorded_as_they_are_asked_for():
+    columns = [column.name for column in layout.dataset("moments").columns]
+    assert {*columns} - {"cloud"} == {each.name for each in fields(Moments)}

@@ -183,13 +183,25 @@ def test_a_segment_is_a_plain_file_of_its_own(tmp_path):
     counts = dict.fromkeys(COUNTERS, 130)
     record_segment(writer, Recorded(), counts, (3000,))
     with h5py.File(tmp_path / "run" / "segments" / "000001.h5") as segment:
-        assert (100, 200, 6) == segment["trajectory/state"].chunks
+        assert (65, 150, 6) == segment["trajectory/state"].chunks
         for path in ("trajectory/state", "moments", "ledger", "losses", "crossings"):
             assert segment[path].fletcher32, path
             assert segment[path].compression is None, path
         assert segment["snapshot/1/position"].fletcher32
         assert 1 == segment.attrs["segment"]
         assert {entry.name for entry in HEADER} <= set(segment.attrs)
+
+
+@pytest.mark.parametrize("records", [1, 101, 201])
+def test_a_segment_is_hardly_larger_than_what_it_holds(tmp_path, records):
+    """Chunks are stored whole; a last one with a single row must not cost a hundred."""
+    writer = RunWriter.create(tmp_path / "run", invented_header(tracked=401))
+    for k in range(records):
+        writer.trajectory(float(k), np.ones((401, 6)))
+    writer.seal({})
+    size = (tmp_path / "run" / "segments" / "000001.h5").stat().st_size
+    held = records * 401 * 48
+    assert held < size < 1.03 * held + 40_000
 
 
 @pytest.mark.parametrize(

@@ -43,8 +43,9 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
         "wölk 1: 100 barium, each standing for 2; 97 left, 3 lost on plate",
         "detector exit: 2 passages",
         "energy            residual  2.00e-10 at the end, 3.00e-09 at most",
-        "trajectory/state: 2 x 3 x 6, 0.000288 MB",
+        "trajectory/state: 2 x 3 x 6, 288 bytes",
         "snapshots: 1",
+        "1 segment, 2",
         "held fraction  fraction-left  0.97",
         "h5py",
         open_run(writer.folder).header.scenario_sha256,
@@ -71,7 +72,7 @@ def test_damage_is_shown_and_the_rest_too(writer):
     lines = summary(open_run(writer.folder))
     assert lines[lines.index("ledger") + 1].startswith("  cannot be read: ")
     assert "000001.h5: missing" in lines[lines.index("damage") + 1]
-    assert "  trajectory/state: 2 x 3 x 6, 0.000288 MB" in lines
+    assert "  trajectory/state: 2 x 3 x 6, 288 bytes" in lines
 
 
 def test_the_answers_stand_in_columns():

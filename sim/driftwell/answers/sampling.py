@@ -12,7 +12,8 @@ References
 ----------
 E. B. Wilson, J. Am. Stat. Assoc. 22 (1927) 209 (eq. 1).
 B. Efron, The Jackknife, the Bootstrap and Other Resampling Plans (SIAM, 1982), ch. 3 (eq. 3).
-Both from memory.
+G. L. Steele, D. Lea, C. H. Flood, OOPSLA (2014) 453 (the numbers that shuffle the groups).
+All from memory.
 """
 
 from __future__ import annotations
@@ -53,12 +54,19 @@ def mean_error(values: Floats) -> float | None:
 
 
 def group_of(count: int, groups: int = GROUPS) -> NDArray[np.int64]:
-    """The group of each of `count` charges in the order of their ids: dealt out in turn.
+    """The group of each of `count` charges in the order of their ids: shuffled, then dealt out.
 
-    Dealing in turn keeps the groups equally large whatever was lost, and spreads a cloud that was
-    laid out in order over all of them.
+    Dealing keeps the groups equally large whatever was lost. The shuffle is always the same one;
+    it keeps an order the charges were laid out in (along a line, turn and turn about) from making
+    the groups alike or unlike.
     """
-    return np.arange(count) % min(groups, max(count, 1))
+    mixed = np.arange(1, count + 1, dtype=np.uint64) * np.uint64(0x9E3779B97F4A7C15)
+    for shift, factor in ((30, 0xBF58476D1CE4E5B9), (27, 0x94D049BB133111EB)):
+        mixed = (mixed ^ (mixed >> np.uint64(shift))) * np.uint64(factor)
+    mixed ^= mixed >> np.uint64(31)
+    group = np.empty(count, dtype=np.int64)
+    group[np.argsort(mixed, kind="stable")] = np.arange(count) % min(groups, max(count, 1))
+    return group
 
 
 def jackknife_error(

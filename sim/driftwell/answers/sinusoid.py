@@ -41,6 +41,8 @@ _PADDED = 4
 _QUIET = 1e-11
 """A line so much weaker than the strongest is rounding."""
 _ABOVE_NOISE = 7.0
+_SETTLED = 1e-9
+"""A change of so many bins was the last: the next is about its square."""
 _LOCAL = 25
 _SLICE = 1 << 16
 
@@ -54,12 +56,36 @@ class Line:
     amplitude: float
 
 
-@dataclass(slots=True)
+@dataclass(frozen=True, slots=True)
+class _Samples:
+    """Times scaled to -1...1 and values scaled to at most 1, (n,); one bin as a scaled rate."""
+
+    time: Floats
+    value: Floats
+    bin_rate: float
+
+    def parts(self) -> list[slice]:
+        """Stretches of the samples that are worked on at a time, to bound the memory taken."""
+        return [slice(k, k + _SLICE) for k in range(0, self.time.size, _SLICE)]
+
+
+@dataclass(frozen=True, slots=True)
 class _Fit:
-    """Eq. 1 on times scaled to -1...1: `rate` (m,) of the lines, `linear` = c0, c1, (a, b) each."""
+    """Eq. 1 at its best for some rates.
+
+    rate : (m,) of the lines
+    linear : c0, c1, then a, b of each line
+    rest : (n,) what it leaves of the values
+    """
 
     rate: Floats
     linear: Floats
+    rest: Floats
+
+    @property
+    def left(self) -> float:
+        """Sum of squares left."""
+        return float(np.sum(self.rest**2))
 
 
 def lines_in(time: Floats, value: Floats) -> list[Line]:
@@ -81,11 +107,11 @@ def lines_in(time: Floats, value: Floats) -> list[Line]:
     rounding = float(np.finfo(float).eps * np.max(np.abs(value)))
     if scale <= 100.0 * rounding:
         raise AnswerError("it does not move")
-    moved /= scale
-    fit = _fitted(scaled, moved, bin_rate, rounding / scale)
+    samples = _Samples(scaled, moved / scale, bin_rate)
+    fit = _fitted(samples, rounding / scale)
     if fit.rate.size == 0:
         raise AnswerError("nothing in it stands above the noise")
-    errors = _rate_errors(scaled, moved, fit, bin_rate)
+    errors = _rate_errors(samples, fit)
     amplitude = scale * np.hypot(fit.linear[2::2], fit.linear[3::2])
     found = [
         Line(
@@ -123,25 +149,23 @@ def chosen_line(lines: list[Line], near: float | None, length: float) -> Line:
     return line
 
 
-def _fitted(time: Floats, value: Floats, bin_rate: float, rounding: float) -> _Fit:
+def _fitted(samples: _Samples, rounding: float) -> _Fit:
     """All lines above the noise and the rounding of the values, fitted together."""
-    fit = _Fit(np.empty(0), np.zeros(2))
-    fit.linear = _solved(time, value, fit)
+    near = 0.5 * samples.bin_rate
+    fit = _at(samples, np.empty(0))
     quiet = rounding
     for _ in range(LINES):
-        start = _next_line(value - _model(time, fit), bin_rate, quiet)
-        if start is None or np.any(np.abs(fit.rate - start) < 0.5 * bin_rate):
+        start = _next_line(fit.rest, samples.bin_rate, quiet)
+        if start is None or np.any(np.abs(fit.rate - start) < near):
             break
-        more = _Fit(np.append(fit.rate, start), np.append(fit.linear, [0.0, 0.0]))
-        more.linear = _solved(time, value, more)
-        more = _refined(time, value, more, bin_rate, rounds=4)
+        more = _refined(samples, _at(samples, np.append(fit.rate, start)), rounds=4)
         amplitude = np.hypot(more.linear[2::2], more.linear[3::2])
-        close = np.diff(np.sort(more.rate)) < 0.5 * bin_rate
-        if np.any(close) or amplitude.max() > 10.0 or more.rate.min() <= 0.0:
+        together = np.any(np.diff(np.sort(more.rate)) < near)
+        if together or amplitude.max() > 10.0 or more.rate.min() <= 0.0:
             break
         fit = more
         quiet = max(rounding, _QUIET * float(amplitude.max()))
-    return _refined(time, value, fit, bin_rate, rounds=40)
+    return _refined(samples, fit, rounds=40)
 
 
 def _spectrum(value: Floats) -> tuple[Floats, int]:
@@ -174,102 +198,85 @@ def _next_line(rest: Floats, bin_rate: float, quiet: float) -> float | None:
     return float((peak + min(max(shift, -1.0), 1.0)) * count / length * bin_rate)
 
 
-def _refined(time: Floats, value: Floats, fit: _Fit, bin_rate: float, rounds: int) -> _Fit:
+def _refined(samples: _Samples, fit: _Fit, rounds: int) -> _Fit:
     """Gauss-Newton on all unknowns of eq. 1; a step that does not help is halved."""
     if fit.rate.size == 0:
         return fit
-    left = _left(time, value, fit)
     for _ in range(rounds):
-        change = _step(time, value, fit)[0]
-        by = change[2 + 2 * fit.rate.size :]
-        limit = 0.5 * bin_rate / max(float(np.max(np.abs(by))), 1e-300)
-        size = min(1.0, limit)
-        for _ in range(8):
-            tried = _Fit(fit.rate + size * by, fit.linear)
-            tried.linear = _solved(time, value, tried)
-            after = _left(time, value, tried)
-            if after <= left:
+        by = _step(samples, fit)[0]
+        size = min(1.0, 0.5 * samples.bin_rate / max(float(np.max(np.abs(by))), 1e-300))
+        for _ in range(5):
+            tried = _at(samples, fit.rate + size * by)
+            if tried.left <= fit.left:
                 break
             size *= 0.5
         else:
             return fit
-        settled = bool(np.all(np.abs(size * by) <= 1e-15 * np.abs(fit.rate)))
-        fit, left = tried, after
-        if settled:
+        fit = tried
+        if np.all(np.abs(size * by) <= _SETTLED * samples.bin_rate):
             break
     return fit
 
 
-def _columns(time: Floats, fit: _Fit, rates_too: bool) -> Floats:
-    """Derivatives of eq. 1 by c0, c1, (a, b) of each line, then each rate: (unknowns, n)."""
-    rows = [np.ones_like(time), time]
-    by_rate = []
-    for line, rate in enumerate(fit.rate):
-        cosine, sine = np.cos(rate * time), np.sin(rate * time)
-        rows += [cosine, sine]
-        if rates_too:
-            a, b = fit.linear[2 + 2 * line : 4 + 2 * line]
-            by_rate.append(time * (b * cosine - a * sine))
-    return np.array(rows + by_rate)
+def _columns(time: Floats, rate: Floats) -> Floats:
+    """Derivatives of eq. 1 by c0, c1 and (a, b) of each line: (2 + 2 m, n)."""
+    columns = np.empty((2 + 2 * rate.size, time.size))
+    columns[0], columns[1] = 1.0, time
+    angle = rate[:, None] * time
+    np.cos(angle, out=columns[2::2])
+    np.sin(angle, out=columns[3::2])
+    return columns
 
 
-def _model(time: Floats, fit: _Fit) -> Floats:
-    parts = [
-        fit.linear @ _columns(time[k : k + _SLICE], fit, False) for k in range(0, time.size, _SLICE)
-    ]
-    return np.concatenate(parts)
+def _at(samples: _Samples, rate: Floats) -> _Fit:
+    """Best c0, c1, a, b at the given rates; solved twice, since products of columns lose digits."""
+    size = 2 + 2 * rate.size
+    square, linear = np.zeros((size, size)), np.zeros(size)
+    rest = samples.value.copy()
+    kept = _columns(samples.time, rate) if samples.time.size <= _SLICE else None
+    for turn in range(2):
+        right = np.zeros(size)
+        for part in samples.parts():
+            columns = _columns(samples.time[part], rate) if kept is None else kept
+            if turn == 0:
+                square += columns @ columns.T
+            right += columns @ rest[part]
+        more = np.linalg.lstsq(square, right, rcond=None)[0]
+        linear += more
+        for part in samples.parts():
+            columns = _columns(samples.time[part], rate) if kept is None else kept
+            rest[part] -= more @ columns
+    return _Fit(rate, linear, rest)
 
 
-def _left(time: Floats, value: Floats, fit: _Fit) -> float:
-    return float(np.sum((value - _model(time, fit)) ** 2))
-
-
-def _normal(time: Floats, value: Floats, fit: _Fit, rates_too: bool) -> tuple[Floats, Floats]:
-    """Normal equations of least squares: products of columns, and of columns and residue."""
-    size = 2 + (3 if rates_too else 2) * fit.rate.size
-    square, right = np.zeros((size, size)), np.zeros(size)
-    for k in range(0, time.size, _SLICE):
-        columns = _columns(time[k : k + _SLICE], fit, rates_too)
-        rest = value[k : k + _SLICE]
-        if rates_too:
-            rest = rest - fit.linear @ columns[: fit.linear.size]
+def _step(samples: _Samples, fit: _Fit) -> tuple[Floats, Floats]:
+    """Change of the rates, and its variances (m,) for noise of variance one."""
+    lines = fit.rate.size
+    a, b = fit.linear[2::2, None], fit.linear[3::2, None]
+    square = np.zeros((2 + 3 * lines, 2 + 3 * lines))
+    right = np.zeros(2 + 3 * lines)
+    for part in samples.parts():
+        columns = _columns(samples.time[part], fit.rate)
+        by_rate = samples.time[part] * (b * columns[2::2] - a * columns[3::2])
+        columns = np.concatenate([columns, by_rate])
         square += columns @ columns.T
-        right += columns @ rest
-    return square, right
-
-
-def _solved(time: Floats, value: Floats, fit: _Fit) -> Floats:
-    """Best c0, c1, a, b at the given rates; refined once, since the products lose digits."""
-    square, right = _normal(time, value, fit, False)
-    solution = np.asarray(np.linalg.lstsq(square, right, rcond=None)[0])
-    rest = value - _model(time, _Fit(fit.rate, solution))
-    _, right = _normal(time, rest, fit, False)
-    return solution + np.asarray(np.linalg.lstsq(square, right, rcond=None)[0])
-
-
-def _step(time: Floats, value: Floats, fit: _Fit) -> tuple[Floats, Floats]:
-    """Change of all unknowns, and the inverse of the normal matrix."""
-    square, right = _normal(time, value, fit, True)
+        right += columns @ fit.rest[part]
     size = np.sqrt(np.maximum(np.diag(square), 1e-300))
     inverse = np.linalg.pinv(square / np.outer(size, size), rcond=1e-13) / np.outer(size, size)
-    return inverse @ right, inverse
+    return (inverse @ right)[2 + 2 * lines :], np.diag(inverse)[2 + 2 * lines :]
 
 
-def _rate_errors(time: Floats, value: Floats, fit: _Fit, bin_rate: float) -> Floats:
+def _rate_errors(samples: _Samples, fit: _Fit) -> Floats:
     """Standard deviation of each rate, from the noise left in the bins around its line."""
-    inverse = _step(time, value, fit)[1]
-    spread = np.sqrt(np.maximum(np.diag(inverse)[2 + 2 * fit.rate.size :], 0.0))
-    rest = value - _model(time, fit)
-    power = np.abs(np.fft.rfft(rest)) ** 2 / rest.size
+    variance = np.maximum(_step(samples, fit)[1], 0.0)
+    power = np.abs(np.fft.rfft(fit.rest)) ** 2 / fit.rest.size
     inner = power[1:-1]
+    place = fit.rate / samples.bin_rate - 1.0
     noise = []
-    for rate in fit.rate:
-        place = rate / bin_rate - 1.0
-        low = max(0, math.floor(place) - _LOCAL)
-        around = inner[low : math.ceil(place) + _LOCAL + 1]
+    for line in place:
+        low = max(0, math.floor(line) - _LOCAL)
+        around = inner[low : math.ceil(line) + _LOCAL + 1]
         # Each line takes its own three unknowns out of the bins it lies in: 1.5 bins' worth.
-        taken = 1.5 * np.sum(
-            (fit.rate / bin_rate - 1.0 >= low) & (fit.rate / bin_rate - 1.0 <= low + around.size)
-        )
+        taken = 1.5 * np.sum((place >= low) & (place <= low + around.size))
         noise.append(float(around.sum()) / max(around.size - taken, 1.0))
-    return np.asarray(spread * np.sqrt(np.array(noise)))
+    return np.asarray(np.sqrt(variance * np.array(noise)))

@@ -10,6 +10,9 @@ the sums of its own field, so that the compiler sees constant distances and vect
 of tiles is visited once and what i does to j is minus what j does to i, from the same r^-3.
 Columns of tiles are dealt to a number of groups that depends on n alone, each group adds into its
 own buffer, and the buffers are merged in order: the bits do not depend on the number of threads.
+All of it is made part of the sum's own code: sums the compiler may reorder must not stand in code
+of their own, which is compiled anew for each caller, and of which the linker takes the first that
+was loaded.
 
 Up to 64 charges both halves of a pair are computed, which vectorises without buffers; x_i - x_j
 and its negative round alike, so the terms still cancel exactly where charges are equal, and to
@@ -32,7 +35,6 @@ from numpy.typing import NDArray
 from driftwell.kernels import (
     inner_pair_kernel,
     outer_kernel,
-    outer_pair_kernel,
     pair_kernel,
     threaded_pair_kernel,
 )
@@ -148,7 +150,7 @@ def small_field(
         ez[i] = constant * fz
 
 
-@outer_pair_kernel
+@inner_pair_kernel
 def _group(
     g: int,
     group_count: int,
@@ -200,7 +202,7 @@ def _group(
             sum_z[first + k] += tile[_T6 + k]
 
 
-@outer_pair_kernel
+@inner_pair_kernel
 def _across(
     xi: float, yi: float, zi: float, qi: float, softening2: float, tile: np.ndarray
 ) -> tuple[float, float, float]:
@@ -224,7 +226,7 @@ def _across(
     return fx, fy, fz
 
 
-@outer_pair_kernel
+@inner_pair_kernel
 def _within(
     xi: float, yi: float, zi: float, softening2: float, tile: np.ndarray
 ) -> tuple[float, float, float]:
@@ -259,7 +261,7 @@ def _merge(n: int, constant: float, work: np.ndarray, out_field: np.ndarray) -> 
             out[i] *= constant
 
 
-@pair_kernel
+@inner_pair_kernel
 def potential_at(
     i: int, position: np.ndarray, charge: np.ndarray, softening2: float, constant: float
 ) -> float:
@@ -279,7 +281,7 @@ def potential_at(
     return constant * (total - itself)
 
 
-@threaded_pair_kernel
+@pair_kernel
 def potentials(
     position: np.ndarray,
     charge: np.ndarray,
@@ -288,6 +290,19 @@ def potentials(
     out_potential: np.ndarray,
 ) -> None:
     """Potential at each charge of all others, V; the energy (2) is half the sum of Q times it."""
+    for i in range(charge.size):
+        out_potential[i] = potential_at(i, position, charge, softening2, constant)
+
+
+@threaded_pair_kernel
+def threaded_potentials(
+    position: np.ndarray,
+    charge: np.ndarray,
+    softening2: float,
+    constant: float,
+    out_potential: np.ndarray,
+) -> None:
+    """The same as :func:`potentials`, with the same bits, on all of numba's threads."""
     for i in prange(charge.size):
         out_potential[i] = potential_at(i, position, charge, softening2, constant)
 

@@ -67,7 +67,7 @@ from driftwell.fields.uniform_magnetic import (
 from driftwell.fields.wire_in_cylinder import WIRE_IN_CYLINDER, WireInCylinder, wire_in_cylinder
 from driftwell.forms.body import Body
 from driftwell.forms.waveform_table import waveform_table
-from driftwell.kernels import kernel
+from driftwell.kernels import inlined_kernel, kernel
 
 FIELD_KINDS: tuple[type[FieldForm], ...] = (
     UniformElectric,
@@ -130,7 +130,7 @@ def field_tables(forms: Sequence[FieldForm], bodies: Mapping[str, Body]) -> dict
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
 
 
-@kernel
+@inlined_kernel
 def electric_field(
     kind: int,
     p: np.ndarray,

@@ -60,7 +60,7 @@ def read_form(form: type[F], data: Any) -> tuple[F | None, list[Fault]]:
         details = error.errors(include_url=False, include_context=True, include_input=False)
         return None, _told_once(_Reading(Keys(form), data).fault(detail) for detail in details)
     except (ArithmeticError, RecursionError) as error:
-        return None, [Fault((), "", f"cannot be worked out ({error})")]
+        return None, [Fault((), "", f"holds a value beyond what can be worked with ({error})")]
 
 
 def nearest(word: str, known: Iterable[str]) -> str | None:
@@ -102,6 +102,7 @@ def _told_once(faults: Iterable[Fault]) -> list[Fault]:
 
 _NAME = Text(1, 60)
 _MEANT = "unknown key; did you mean"
+_EVERYWHERE = ("name", "kind", "ask")
 _BRACKETS = ("there may be several", "there is only one")
 _MISSING = "missing; needs"
 
@@ -219,7 +220,9 @@ def _unknown_key(word: str, holder: Declared | None, reading: _Reading, path: Pa
     keys = declared_keys(holder.form)
     top = declared_keys(reading.declared.form) if isinstance(reading.declared, Keys) else {}
     for name, key in keys.items():
-        if any(word in declared_keys(form) for form in _forms_at(key.holds)):
+        if word not in _EVERYWHERE and any(
+            word in declared_keys(form) for form in _forms_at(key.holds)
+        ):
             return f'unknown key here; did you mean "{name}.{word}"?'
     meant = nearest(word, keys)
     if meant is not None:

@@ -48,7 +48,10 @@ class Quantity:
             factor, offset = units.to_si(unit, self.si_unit)
         except (LookupError, ValueError) as fault:
             raise self._fault(str(fault.args[0])) from fault
-        result = float(factor * number + offset)
+        try:
+            result = float(factor * number + offset)
+        except ArithmeticError as fault:  # beyond even the decimal numbers
+            raise self._fault("a value that is not too large or small") from fault
         if not math.isfinite(result):
             raise self._fault("a finite value")
         return result
@@ -97,6 +100,7 @@ Real = Annotated[float, Strict()]
 """A plain number without dimension."""
 Count = Annotated[int, Strict()]
 """A whole number."""
+TrueOrFalse = Annotated[bool, Strict()]
 Name = Annotated[str, StringConstraints(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]+$")]
 """What a user calls a thing: one line, 1 to 60 characters."""
 Title = Annotated[

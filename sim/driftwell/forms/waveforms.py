@@ -96,7 +96,7 @@ class Sine(WaveformForm, Generic[Q]):
         return abs(self.offset)
 
     def words(self, unit: str) -> str:
-        offset = f"{spelled(self.offset, unit)} and " if self.offset else ""
+        offset = f"{spelled(self.offset, unit)} plus " if self.offset else ""
         phase = f" from phase {math.degrees(self.phase):.6g} deg" if self.phase else ""
         amplitude = f"{spelled(self.amplitude, unit)} amplitude"
         return f"{offset}{amplitude} at {spelled(self.frequency, 'Hz')}{phase}"

@@ -36,11 +36,13 @@ def needed(declared: Declared, example: object = None) -> str:
         case Number(whole):
             return "a whole number" if whole else "a plain number"
         case Text():
-            return "text in quotes"
+            return f'text such as "{example}"' if isinstance(example, str) else "text in quotes"
         case Flag():
             return "true or false"
         case Words(words):
             return either(words)
+        case Row() | Several() if isinstance(example, list):
+            return f"a list such as {as_found(example)}"
         case Row(entries):
             if all(entry == entries[0] for entry in entries):
                 return f"a list of {len(entries)}, each {needed(entries[0])}"

@@ -4,6 +4,7 @@ Nothing here knows physics beyond numbers; nothing here imports more than numpy,
 """
 
 from driftwell.kernels.compiled import (
+    inlined_kernel,
     inner_kernel,
     inner_pair_kernel,
     kernel,
@@ -14,6 +15,7 @@ from driftwell.kernels.compiled import (
 )
 
 __all__ = [
+    "inlined_kernel",
     "inner_kernel",
     "inner_pair_kernel",
     "kernel",

@@ -92,12 +92,13 @@ _FOLDER = cache_folder()
 
 def _compiled(function: F, **options: Any) -> F:
     """`function` under numba, its machine code kept in the folder of this version's sources."""
-    before = numba.config.CACHE_DIR
-    numba.config.CACHE_DIR = str(_FOLDER)
+    settings: Any = numba.config
+    before = settings.CACHE_DIR
+    settings.CACHE_DIR = str(_FOLDER)  # read when the function is decorated, by its cache
     try:
         made: F = numba.njit(cache=True, error_model="numpy", nogil=True, **options)(function)
     finally:
-        numba.config.CACHE_DIR = before
+        settings.CACHE_DIR = before
     return made
 
 
@@ -108,6 +109,11 @@ def _compiled(function: F, **options: Any) -> F:
 def kernel(function: F) -> F:
     """Compile exactly as written: no reordering of sums."""
     return _compiled(function, _nrt=False)
+
+
+def inlined_kernel(function: F) -> F:
+    """A :func:`kernel` made part of each caller, with a way in from Python."""
+    return _compiled(function, _nrt=False, forceinline=True)
 
 
 def inner_kernel(function: F) -> F:
@@ -159,7 +165,7 @@ def threaded_pair_kernel(function: F) -> F:
     return _compiled(function, fastmath=set(PAIR_FLAGS), parallel=True)
 
 
-class CompiledFunction(numba.types.WrapperAddressProtocol):  # type: ignore[misc]
+class CompiledFunction(numba.types.WrapperAddressProtocol):
     """A kernel compiled for one signature, to be handed to other compiled code as a pointer.
 
     The caller is compiled for the signature, not for the function: it need not be compiled again
@@ -167,10 +173,11 @@ class CompiledFunction(numba.types.WrapperAddressProtocol):  # type: ignore[misc
     """
 
     def __init__(self, function: Any, signature: str) -> None:
-        arguments, returned = numba.core.sigutils.normalize_signature(signature)
+        core: Any = numba.core
+        arguments, returned = core.sigutils.normalize_signature(signature)
         function.compile(arguments)
         self._function = function
-        self._signature = numba.core.typing.signature(returned, *arguments)
+        self._signature = core.typing.signature(returned, *arguments)
 
     def signature(self) -> Any:
         """Numba's signature of the function."""

@@ -24,7 +24,7 @@ import math
 
 import numpy as np
 
-from driftwell.kernels.compiled import inner_kernel, kernel
+from driftwell.kernels.compiled import inlined_kernel, inner_kernel
 
 CONSTANT = 0
 SINE = 1
@@ -34,7 +34,7 @@ TABLE = 4
 PARAMETERS = 8
 
 
-@kernel
+@inlined_kernel
 def waveform(
     kind: int, parameter: np.ndarray, data: np.ndarray, t: float, inside: float
 ) -> tuple[float, float]:

@@ -17,7 +17,7 @@ from dataclasses import dataclass, field, fields
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.coulomb.direct import potentials
+from driftwell.coulomb.direct import THREADED, potentials, threaded_potentials
 from driftwell.stepping.accounts import (
     ANGULAR_WALLS,
     CHARGE_WALLS,
@@ -184,7 +184,8 @@ class Ledger:
         if plan.coulomb == 0:
             return 0.0, 0.0
         potential = np.empty_like(charges.charge)
-        potentials(charges.position, charges.charge, plan.softening2, plan.constant, potential)
+        summed = threaded_potentials if potential.size >= THREADED else potentials
+        summed(charges.position, charges.charge, plan.softening2, plan.constant, potential)
         force = charges.charge * work.coulomb
         scale = float(np.sqrt(_squares(force)).sum())
         return (

@@ -105,12 +105,17 @@ def _chunks(entry: Dataset, data: NDArray[Any]) -> tuple[int, ...] | None:
     if entry.path != "trajectory/state" or data.size == 0:
         return None
     records, charges, width = data.shape
-    return min(CHUNK_RECORDS, records), min(CHUNK_CHARGES, charges), width
+    return _even(records, CHUNK_RECORDS), _even(charges, CHUNK_CHARGES), width
 
 
 def _plain_chunks(array: NDArray[Any]) -> tuple[int, ...]:
     row_bytes = array.nbytes // array.shape[0]
-    return max(1, min(array.shape[0], CHUNK_BYTES // max(row_bytes, 1))), *array.shape[1:]
+    return _even(array.shape[0], max(1, CHUNK_BYTES // row_bytes)), *array.shape[1:]
+
+
+def _even(length: int, most: int) -> int:
+    """Length of the fewest equal chunks of at most `most`: the last is hardly padded."""
+    return -(-length // -(-length // most))
 
 
 def text_table(entry: Dataset, columns: Mapping[str, list[Any]]) -> NDArray[Any]:

@@ -75,7 +75,7 @@ class Dataset:
         return tuple(sizes[part] if isinstance(part, str) else part for part in self.shape[1:])
 
 
-# A chunk of trajectories: quick for one charge's whole track and for all charges at a few times.
+# The largest chunk of trajectories: quick for one charge's track and for all charges at one time.
 CHUNK_RECORDS = 100
 CHUNK_CHARGES = 200
 CHUNK_BYTES = 1_000_000

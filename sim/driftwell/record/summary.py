@@ -84,19 +84,13 @@ def _clouds(run: Run) -> list[str]:
         if cloud.weight != 1.0:
             line += f", each standing for {cloud.weight:.6g}"
         line += f"; {cloud.count - len(mine)} left"
-        places = np.bincount(mine["wall"], minlength=len(run.header.walls))
-        lines.append(
-            line
-            + "".join(
-                f", {count} lost on {name}"
-                for name, count in zip(run.header.walls, places, strict=True)
-                if count
-            )
-        )
-    passed = np.bincount(crossings["detector"], minlength=len(run.detectors))
+        for index, name in enumerate(run.header.walls):
+            count = np.count_nonzero(mine["wall"] == index)
+            line += f", {count} lost on {name}" if count else ""
+        lines.append(line)
     return lines + [
-        f"detector {name}: {count} passages"
-        for name, count in zip(run.detectors, passed, strict=True)
+        f"detector {name}: {np.count_nonzero(crossings['detector'] == index)} passages"
+        for index, name in enumerate(run.detectors)
     ]
 
 
@@ -126,14 +120,19 @@ def _datasets(run: Run) -> list[str]:
         row_shape = entry.row_shape(sizes)
         row_bytes = entry.dtype().itemsize * int(np.prod(row_shape))
         shape = " x ".join(str(length) for length in (count, *row_shape))
-        lines.append(f"{entry.path}: {shape}, {_megabytes(count * row_bytes)}")
+        lines.append(f"{entry.path}: {shape}, {_size(count * row_bytes)}")
+    count = len(run.segments)
     total = sum(facts.bytes for facts in run.segments)
     return [
         *lines,
         f"snapshots: {len(run.snapshots)}",
-        f"{len(run.segments)} segments, {_megabytes(total)} in all",
+        f"{count} segment{'s' * (count != 1)}, {_size(total)} in all",
     ]
 
 
-def _megabytes(count: int) -> str:
-    return f"{count / 1e6:.3g} MB"
+def _size(count: int) -> str:
+    """Bytes in words."""
+    for unit, scale in (("GB", 1e9), ("MB", 1e6), ("kB", 1e3)):
+        if count >= scale:
+            return f"{count / scale:.3g} {unit}"
+    return f"{count} bytes"

@@ -27,11 +27,12 @@ from driftwell.record.file_image import (
 )
 from driftwell.record.header import Header
 from driftwell.record.index import SEGMENTS, SegmentFacts, segment_name
-from driftwell.record.layout import ANSWERS, OUTCOME, SNAPSHOT, dataset
+from driftwell.record.layout import ANSWERS, OUTCOME, SNAPSHOT
 from driftwell.record.master import ANSWERS_FILE, MASTER, master_image
 from driftwell.record.outcome import Outcome
+from driftwell.record.pending import Pending
 from driftwell.record.sealing import longest_wait, most_bytes
-from driftwell.record.segment import Pending, segment_image
+from driftwell.record.segment import segment_image
 
 SCENARIO_FILE = "scenario.toml"
 
@@ -47,7 +48,7 @@ class RunWriter:
         self._segments: list[SegmentFacts] = []
         self._sealed_bytes = 0
         self._snapshots = 0
-        self._pending = Pending(0.0)
+        self._pending = Pending(header.sizes)
 
     @classmethod
     def create(
@@ -70,8 +71,8 @@ class RunWriter:
 
     def trajectory(self, time: float, state: ArrayLike) -> None:
         """Record the tracked charges: `state` (tracked, 6), m and m/s, NaN where lost."""
-        self._add("trajectory/time", [time])
-        self._add("trajectory/state", np.asarray(state)[np.newaxis])
+        self._pending.add("trajectory/state", np.asarray(state, np.float64)[np.newaxis])
+        self._pending.add("trajectory/time", np.array([time], np.float64))
         self._pending.reaches(time, time)
 
     def moments(self, time: float, rows: NDArray[Any]) -> None:
@@ -79,7 +80,7 @@ class RunWriter:
         filled = rows.copy()
         filled["time"] = time
         filled["cloud"] = np.arange(len(self.header.clouds))
-        self._add("moments", filled)
+        self._pending.add("moments", filled)
         self._pending.reaches(time, time)
 
     def snapshot(self, time: float, particles: Particles) -> None:
@@ -111,12 +112,12 @@ class RunWriter:
 
     def trace(self, times: ArrayLike, values: ArrayLike) -> None:
         """Record samples of the traces: `times` (k,), s, and `values` (k, traces), m."""
-        sampled = np.array(times, np.float64)
-        found = np.asarray(values)
+        sampled = np.asarray(times, np.float64)
+        found = np.asarray(values, np.float64)
         if len(found) != len(sampled):
             raise ValueError(f"trace: {len(sampled)} times with {len(found)} rows of values")
-        self._add("trace/time", sampled)
-        self._add("trace/value", found)
+        self._pending.add("trace/value", found)
+        self._pending.add("trace/time", sampled)
         if sampled.size:
             self._pending.reaches(float(sampled.min()), float(sampled.max()))
 
@@ -140,7 +141,7 @@ class RunWriter:
         self._commit(segment_name(number), image)
         self._segments.append(facts)
         self._sealed_bytes += facts.bytes
-        self._pending = Pending(facts.end)
+        self._pending.clear()
         self._sealed_at = self._clock()
         self._commit_master(answered=False)
 
@@ -166,19 +167,9 @@ class RunWriter:
         self._commit(ANSWERS_FILE, image)
         self._commit_master(answered=True)
 
-    def _add(self, path: str, rows: ArrayLike) -> None:
-        entry = dataset(path)
-        made = np.array(rows, entry.dtype())
-        wanted = entry.row_shape(self.header.sizes)
-        if made.shape[1:] != wanted:
-            raise ValueError(f"{path}: rows of shape {made.shape[1:]}, {wanted} needed")
-        self._pending.add(path, made)
-
     def _add_timed(self, path: str, rows: NDArray[Any] | np.void) -> None:
         found = np.atleast_1d(rows)
-        if found.dtype.names != dataset(path).dtype().names:
-            raise ValueError(f"{path}: columns {found.dtype.names}, not those of the layout")
-        self._add(path, found)
+        self._pending.add(path, found)
         if found.size:
             times = found["time"]
             self._pending.reaches(float(times.min()), float(times.max()))

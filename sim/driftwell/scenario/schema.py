@@ -26,7 +26,7 @@ from driftwell.forms.declared import (
 from driftwell.forms.wording import bound_words, raw_value
 from driftwell.scenario.model import Scenario
 
-_QUANTITY = r"^\s*[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?\s*[A-Za-zµμΩ°%Å1].*$|^\s*[+-]?0*\.?0*\s*$"
+_QUANTITY = r"^\s*[+SIGN]?((\d+\.?\d*|\.\d+)([eE][+-]?\d+)?\s*[A-Za-zµμΩ°%Å1].*|0+\.?0*|\.0+)\s*$"
 _LINE = r"^[^\u0000-\u001f\u007f]+$"
 
 
@@ -95,9 +95,7 @@ def _is_empty(default: Any) -> bool:
 def _value(declared: Declared, definitions: _Definitions) -> dict[str, Any]:
     match declared:
         case Dimensioned(name, si_unit, example, bounds):
-            schema: dict[str, Any] = {"type": "string", "pattern": _QUANTITY, "examples": [example]}
-            schema["title"] = name
-            return schema | _words(bounds, si_unit)
+            return _quantity(name, example, bounds) | _words(bounds, si_unit)
         case Number(whole, bounds):
             return {"type": "integer" if whole else "number", **_limits(bounds)}
         case Text(least, most):
@@ -140,6 +138,12 @@ def _reference(form: type[Form], definitions: _Definitions) -> dict[str, Any]:
         name = definitions.new_name(form)
         definitions.schemas[name] = _table(form, definitions)
     return {"$ref": f"#/$defs/{name}"}
+
+
+def _quantity(name: str, example: str, bounds: tuple[Bound, ...]) -> dict[str, Any]:
+    never_negative = any(0.0 in (bound.above, bound.least) for bound in bounds)
+    pattern = _QUANTITY.replace("SIGN", "" if never_negative else "-")
+    return {"type": "string", "title": name, "pattern": pattern, "examples": [example]}
 
 
 def _limits(bounds: tuple[Bound, ...]) -> dict[str, Any]:

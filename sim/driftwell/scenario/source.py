@@ -75,6 +75,8 @@ def raw_table(text: str, shown: str) -> dict[str, Any]:
     ScenarioError
         The text is empty, is not TOML, or holds tables too deep within each other.
     """
+    if _LONG_KEY.search(text) is not None:  # the parser would need hours
+        raise ScenarioError(f"{shown}: {_TOO_DEEP}")
     try:
         table = tomllib.loads(text)
     except tomllib.TOMLDecodeError as fault:
@@ -92,6 +94,7 @@ def raw_table(text: str, shown: str) -> dict[str, Any]:
     return table
 
 
+_LONG_KEY = re.compile(r"^[ \t]*\[{0,2}[ \t]*(?:[\w-]+[ \t]*\.[ \t]*){100}", re.MULTILINE)
 _TOO_DEEP = f"tables or lists lie too deep within each other; needs at most {DEEPEST} levels"
 
 
@@ -165,10 +168,9 @@ def _needed(reason: str, line: str) -> str:
     if "Cannot overwrite" in reason and not line.startswith("["):
         return "this key is set a second time; leave one of the two out"
     if "Cannot overwrite" in reason or "Cannot declare" in reason or "Cannot mutate" in reason:
-        name = line.strip("[] ")
         return (
-            f"this table stands here a second time; several of a kind are each written [[{name}]], "
-            "in double brackets"
+            "this table stands here a second time; join the two (entries of a section that may "
+            "have several are each written in double brackets, such as [[cloud]])"
         )
     if (quantity := _QUANTITY.search(line)) is not None:
         return f"a number with a unit needs quotes: {quoted(quantity[1])}"

@@ -236,7 +236,7 @@ def _sample(charges: Charges, trace: Trace, t: float, work: Work) -> None:
     trace.time[row] = t
     for k in range(trace.axis.size):
         x = charges.position[trace.axis[k]]
-        i = trace.index[k]
+        i = trace.which[k]
         if i >= 0:
             trace.value[row, k] = x[i] if charges.alive[i] != 0 else np.nan
         elif i == -1:

@@ -140,7 +140,8 @@ class TimeLoop:
         times, steps = self.schedule.time, self.schedule.steps
         if interval >= len(steps):
             return float(times[-1])
-        return float(times[interval] + step * (times[interval + 1] - times[interval]) / steps[interval])
+        span = times[interval + 1] - times[interval]
+        return float(times[interval] + step * span / steps[interval])
 
     @property
     def mark(self) -> int:

@@ -74,13 +74,13 @@ class Plan(NamedTuple):
 class Trace(NamedTuple):
     """Coordinates sampled at the marks for it.
 
-    cloud, index : (m,) int64, a cloud's centre, or one charge (index >= 0, of the present arrays;
-    -2 once it is lost); axis : (m,) int64
+    cloud, which : (m,) int64, a cloud's centre (which = -1), or one charge by its index in the
+    present arrays (-2 once it is lost); axis : (m,) int64
     time : (k,) float64 and value : (k, m) float64, overwritten from the top
     """
 
     cloud: Ints
-    index: Ints
+    which: Ints
     axis: Ints
     time: Floats
     value: Floats
@@ -151,7 +151,7 @@ def charges_of(particles: Particles) -> Charges:
 
 
 def room_for_events(n: int, surfaces: int) -> int:
-    """Rows one step may need: every charge meets every surface, and some bounce about in corners."""
+    """Rows one step may need: every charge meets every surface, some bounce about in corners."""
     return n * surfaces + 64 * surfaces * 17
 
 

@@ -55,7 +55,7 @@ def regular(every: float, duration: float) -> NDArray[np.float64]:
             f"{count} marks of {every:g} s in {duration:g} s are more than {_MOST_MARKS}: "
             f"take a longer interval"
         )
-    times = every * np.arange(count + 1)
+    times = np.arange(count + 1, dtype=np.float64) * every
     if duration - times[-1] > 1e-9 * every:
         times = np.append(times, duration)
     else:

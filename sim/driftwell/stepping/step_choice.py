@@ -100,7 +100,7 @@ def closest_pair_rates(particles: Particles, softening: float) -> list[Rate]:
         first, second = np.triu_indices(n, 1)
         ahead = _closest_approach(particles, first, second)
     else:
-        distance, neighbour = cKDTree(x).query(x, k=2)
+        distance, neighbour = map(np.asarray, cKDTree(x).query(x, k=2))
         first, second = np.arange(n), neighbour[:, 1]
         ahead = distance[:, 1]
     strength = _strength(particles, first, second)

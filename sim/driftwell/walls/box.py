@@ -37,10 +37,7 @@ class Box(WallForm):
 @inner_kernel
 def box_level(p: np.ndarray, x: float, y: float, z: float) -> float:
     """Distance to the nearest face, m: positive inside."""
-    return min(
-        p[3] - abs(x - p[0]),
-        min(p[4] - abs(y - p[1]), p[5] - abs(z - p[2])),
-    )
+    return min(p[3] - abs(x - p[0]), p[4] - abs(y - p[1]), p[5] - abs(z - p[2]))
 
 
 @inner_kernel

@@ -53,7 +53,8 @@ class SurfaceTable(NamedTuple):
 
 def surface_table(walls: Sequence[WallForm], detectors: Sequence[DetectorForm]) -> SurfaceTable:
     """Lay the walls, then the detectors, one after the other."""
-    packed: list[PackedSurface] = [form.packed() for form in (*walls, *detectors)]
+    packed: list[PackedSurface] = [wall.packed() for wall in walls]
+    packed += [detector.packed() for detector in detectors]
     parameter = np.zeros((len(packed), PARAMETERS))
     for row, surface in zip(parameter, packed, strict=True):
         row[: len(surface.parameters)] = surface.parameters

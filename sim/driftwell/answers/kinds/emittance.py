@@ -26,7 +26,7 @@ from driftwell.answers.form import AXES, Axis
 from driftwell.answers.kinds.moment_question import MomentQuestion
 from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.errors import AnswerError
-from driftwell.forms import checked, key, refuse
+from driftwell.forms import TrueOrFalse, checked, key, refuse
 
 Floats = NDArray[np.float64]
 
@@ -41,7 +41,7 @@ class Emittance(MomentQuestion):
     ask: Literal["emittance"] = key("rms emittance in one plane")
     plane: Axis = key("the plane: that of this coordinate and its slope or velocity")
     beam_axis: Axis = key("axis the beam runs along; slopes are against it", default="z")
-    normalised: bool = key(
+    normalised: TrueOrFalse = key(
         "true: with proper velocities over the speed of light; false: with slopes", default=False
     )
 

@@ -1,8 +1,8 @@
 """Highest density of a cloud, in real particles per cubic metre.
 
-Where the density peaks is found in one half of the charges (those of even order of id), how large
-it is there is counted in the other half, then the other way round, and the two are averaged:
-counting where one has just seen many would count chance as density. Lengths are measured in
+Where the density peaks is found in one half of the charges, how large it is there is counted in
+the other half, then the other way round, and the two are averaged: counting where one has just
+seen many would count chance as density. Lengths are measured in
 the cloud's own principal sizes, so that a long thin cloud is treated as a round one.
 
     place    the charge whose k-th neighbour is nearest, moved to the centre of its neighbours
@@ -33,7 +33,7 @@ from driftwell.answers.answer import Answer
 from driftwell.answers.charges import charges_at, number_in_words
 from driftwell.answers.evidence import Evidence
 from driftwell.answers.form import InstantQuestion, instant_in_words
-from driftwell.answers.sampling import Bools, jackknife_error
+from driftwell.answers.sampling import Bools, group_of, jackknife_error
 from driftwell.errors import AnswerError
 from driftwell.forms import key
 
@@ -54,9 +54,9 @@ class PeakDensity(InstantQuestion):
 
     def answer(self, evidence: Evidence) -> Answer:
         charges = charges_at(evidence, self.of, self.time_in(evidence), _LEAST)
-        share, volume = _shares(charges.position)
+        half = group_of(len(charges)) % 2  # whole groups of the jackknife in either half
+        share, volume = _shares(charges.position, half)
         scale = len(charges) * charges.cloud.weight / volume
-        half = np.arange(len(charges)) % 2
 
         def density(keep: Bools) -> float:
             means = [share[keep & (half == side)].mean() for side in (0, 1)]
@@ -75,7 +75,7 @@ class PeakDensity(InstantQuestion):
         return f'peak density of cloud "{self.of}" {instant_in_words(self.at)}'
 
 
-def _shares(position: Floats) -> tuple[Floats, float]:
+def _shares(position: Floats, half: NDArray[np.int64]) -> tuple[Floats, float]:
     """What each charge adds to n0 over the number of charges, (n,), and the unit of volume, m^3."""
     apart = position - position.mean(axis=1, keepdims=True)
     sizes, axes = np.linalg.eigh(np.einsum("in,jn->ij", apart, apart) / apart.shape[1])
@@ -84,11 +84,11 @@ def _shares(position: Floats) -> tuple[Floats, float]:
     scaled = np.einsum("ij,in->nj", axes, apart) / np.sqrt(sizes)
     share = np.zeros(len(scaled))
     for side in (0, 1):
-        place, radius = _densest(scaled[side::2])
-        square = np.sum((scaled[1 - side :: 2] - place) ** 2, axis=1)
+        place, radius = _densest(scaled[half == side])
+        square = np.sum((scaled[half != side] - place) ** 2, axis=1)
         v3, v5, v7 = (4.0 * math.pi * radius**power / power for power in (3, 5, 7))
         inside = square < radius**2
-        share[1 - side :: 2] = np.where(inside, (v7 - v5 * square) / (v3 * v7 - v5**2), 0.0)
+        share[half != side] = np.where(inside, (v7 - v5 * square) / (v3 * v7 - v5**2), 0.0)
     return share, float(np.sqrt(np.prod(sizes)))
 
 

@@ -1,0 +1,103 @@
+"""Picture: where charges were lost, when, and on what."""
+
+from __future__ import annotations
+
+import numpy as np
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+from numpy.typing import NDArray
+
+from driftwell.report.histogram import bins, put_histogram
+from driftwell.report.palette import INK, colour, marker
+from driftwell.report.projection import MOST_DOTS, frame, put_frame
+from driftwell.report.ruler import Ruler, interval, ruler
+from driftwell.report.scene import Scene
+from driftwell.report.sheet import Entry, sheet
+from driftwell.report.time_axis import put_time, time_ruler
+
+Floats = NDArray[np.float64]
+
+SIDE_RATIO, FRONT_RATIO = 2.0, 1.0
+
+
+def losses_picture(scene: Scene) -> Figure | None:
+    """None where nothing was lost."""
+    losses = scene.losses
+    if not len(losses):
+        return None
+    header = scene.run.header
+    walls, counts = np.unique(losses["wall"], return_counts=True)
+    key = [
+        Entry(f"{header.walls[wall]}: {count} lost", colour(int(wall)), marker(int(wall)))
+        for wall, count in zip(walls, counts, strict=True)
+    ]
+    figure = sheet(scene.run, 9.6, 7.3, key)
+    grid = figure.add_gridspec(2, 6)
+    put_places(figure.add_subplot(grid[0, :4]), losses, side=True)
+    put_places(figure.add_subplot(grid[0, 4:]), losses, side=False)
+    times = time_ruler([0.0, scene.run.end_time])
+    put_rate(figure.add_subplot(grid[1, :3]), losses, times)
+    put_share(figure.add_subplot(grid[1, 3:]), scene, times)
+    return figure
+
+
+def put_places(axes: Axes, losses: NDArray[np.void], side: bool) -> None:
+    """Where charges were lost: distance from the z axis along it, or seen along it."""
+    x, y, z = losses["position"].T
+    across, up = (z, np.hypot(x, y)) if side else (x, y)
+    ratio = SIDE_RATIO if side else FRONT_RATIO
+    reach = float(max(map(np.ptp, (x, y, z)))) or float(np.abs(losses["position"]).max())
+    limits = interval(across, least=reach), interval(up, least=reach, zero=side)
+    shown = frame(*limits, ratio)
+    put_frame(axes, shown, ("z", "distance from z axis") if side else ("x", "y"), ratio)
+    size = 4.0 if len(losses) <= 300 else 2.4
+    for wall in np.unique(losses["wall"]):
+        own = np.flatnonzero(losses["wall"] == wall)
+        own = own[:: max(1, -(-len(losses) // MOST_DOTS))]
+        axes.plot(
+            shown.across.shown(across[own]),
+            shown.up.shown(up[own]),
+            linestyle="none",
+            marker=marker(int(wall)),
+            markersize=size,
+            markeredgewidth=0.0,
+            color=colour(int(wall)),
+            alpha=0.6,
+        )
+    axes.set_title("where" if side else "seen along z")
+
+
+def put_rate(axes: Axes, losses: NDArray[np.void], times: Ruler) -> None:
+    """How many were lost in each stretch of time, by wall."""
+    groups = [
+        (losses["time"][losses["wall"] == wall], colour(int(wall)))
+        for wall in np.unique(losses["wall"])
+    ]
+    put_histogram(axes, groups, bins(losses["time"], times.low, times.high), times)
+    put_time(axes, times)
+    axes.set_ylabel("charges lost in each stretch")
+    axes.set_title("when")
+
+
+def put_share(axes: Axes, scene: Scene, times: Ruler) -> None:
+    """Which part of all charges has been lost until then, by wall and in all."""
+    losses = scene.losses
+    real = sum(cloud.count * cloud.weight for cloud in scene.clouds)
+    walls = np.unique(losses["wall"])
+    curves = [(losses[losses["wall"] == wall], colour(int(wall)), 1.3) for wall in walls]
+    if len(walls) > 1:
+        curves.append((losses, INK, 2.0))
+    most = 100.0 * float(losses["weight"].sum()) / real
+    shown = ruler(interval([most], zero=True), "")
+    for rows, look, width in curves:
+        order = np.argsort(rows["time"], kind="stable")
+        share = 100.0 * np.cumsum(rows["weight"][order]) / real
+        time = np.concatenate([[times.low], rows["time"][order], [times.high]])
+        steps = np.concatenate([[0.0], share, share[-1:]])
+        axes.plot(
+            times.shown(time), steps, color=look, linewidth=width, drawstyle="steps-post", alpha=0.9
+        )
+    axes.set_ylim(*shown.limits)
+    put_time(axes, times)
+    axes.set_ylabel("part of all charges (%)")
+    axes.set_title("lost so far" + (", black: on all walls" if len(walls) > 1 else ""))

@@ -1,0 +1,69 @@
+"""The pictures of a run: which there are, and how they get into its folder."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from matplotlib.figure import Figure
+
+from driftwell.errors import RecordError
+from driftwell.record.commit import commit
+from driftwell.record.reader import Run
+from driftwell.report.arrivals import arrivals_picture
+from driftwell.report.cloud import cloud_picture
+from driftwell.report.ledger import ledger_picture
+from driftwell.report.losses import losses_picture
+from driftwell.report.phase_space import phase_space_picture
+from driftwell.report.scene import Scene, scene_of
+from driftwell.report.sheet import png, style
+from driftwell.report.sizes import sizes_picture
+from driftwell.report.trajectories import trajectories_picture
+
+FOLDER = "pictures"
+PICTURES: dict[str, Callable[[Scene], Figure | None]] = {
+    "cloud": cloud_picture,
+    "sizes": sizes_picture,
+    "phase-space": phase_space_picture,
+    "trajectories": trajectories_picture,
+    "losses": losses_picture,
+    "arrivals": arrivals_picture,
+    "ledger": ledger_picture,
+}
+"""Every picture by its name; None says that there is nothing to show."""
+
+
+def draw(run: Run) -> list[Path]:
+    """Draw a run into ``pictures/`` of its folder; returns the files of the pictures made.
+
+    Each file appears whole. A picture with nothing to show is not made, and one left from an
+    earlier drawing is taken away.
+
+    Raises RecordError where the record cannot be read or the folder cannot be written.
+    """
+    folder = run.folder / FOLDER
+    with style():
+        images = {
+            f"{name}.png": png(figure, run.header.title) for name, figure in figures(run).items()
+        }
+    try:
+        folder.mkdir(exist_ok=True)
+        for name in PICTURES:
+            if f"{name}.png" not in images:
+                (folder / f"{name}.png").unlink(missing_ok=True)
+        for name, image in images.items():
+            commit(folder / name, image)
+    except OSError as fault:
+        raise RecordError(
+            f"{folder}: the pictures cannot be written ({fault.strerror or fault}); the record "
+            "itself is whole. Make space or give access."
+        ) from fault
+    return [folder / name for name in images]
+
+
+def figures(run: Run) -> dict[str, Figure]:
+    """The pictures of a run that have something to show, by name."""
+    scene = scene_of(run)
+    with style():
+        made = {name: picture(scene) for name, picture in PICTURES.items()}
+    return {name: figure for name, figure in made.items() if figure is not None}

@@ -1,0 +1,374 @@
+"""Speed of driftwell beside what a user would do by hand, measured side by side in one run.
+
+    python tools/bench.py [--json FILE] [--only NAME] [--repeats N]
+
+Every case times driftwell and its reference in turn, several times, and gives the median of the
+ratios pair by pair: larger is better for driftwell. Reading the scenario, loading and compiling
+stay outside the timing (save in `startup`); recording, ledger and answers are inside it. Needs gcc.
+"""
+
+from __future__ import annotations
+
+import argparse
+import ctypes
+import json
+import os
+import platform
+import shutil
+import statistics
+import subprocess
+import sys
+import tempfile
+import time
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+HERE = Path(__file__).resolve().parent
+GCC = ("gcc", "-O3", "-march=native", "-ffast-math")
+
+ION_MASS_U = 137.905
+RADIUS, VOLTAGE, DRIVE, AXIAL = 3.5e-3, 180.0, 1.1e6, 80e3
+
+TRAP = """
+title    = "{n} ions in a linear RF trap"
+duration = "{duration!r} s"
+seed     = 3
+
+[species.ion]
+mass   = "137.905 u"
+charge = "1 e"
+
+[[cloud]]
+name    = "ions"
+species = "ion"
+count   = {n}
+motion  = {{ temperature = "{kelvin} K" }}
+shape   = {{ kind = "gaussian", sigma = ["{s0} um", "{s0} um", "{s1} um"] }}
+
+[[field]]
+name    = "rods"
+kind    = "rf-quadrupole"
+radius  = "3.5 mm"
+voltage = {{ amplitude = "180 V", frequency = "1.1 MHz" }}
+
+[[field]]
+name = "end caps"
+kind = "static-quadrupole"
+axial_frequency = {{ species = "ion", value = "80 kHz" }}
+
+[stepping]
+step   = "{step!r} s"
+scheme = "{scheme}"
+
+[record]
+every = "{every!r} s"
+
+[[question]]
+name = "left"
+ask  = "fraction-left"
+of   = "ions"
+"""
+
+
+class Watch:
+    """An observer that notes when the run's own work begins."""
+
+    began = 0.0
+
+    def begins(self, choice: Any, plan: Any, particles: Any) -> None:
+        self.began = time.perf_counter()
+
+    def goes_on(self, progress: Any) -> bool:
+        return True
+
+
+def driftwell_run(text: str, threads: int = 1) -> tuple[float, Any]:
+    """Seconds of a whole run (stepping, ledger, record, answers), and its record."""
+    from driftwell.record.reader import open_run
+    from driftwell.run import run
+    from driftwell.scenario.read import read_scenario
+
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "bench.toml"
+        file.write_text(text)
+        watch = Watch()
+        run(read_scenario(file), Path(folder) / "run", watch, threads)
+        seconds = time.perf_counter() - watch.began
+        record = open_run(Path(folder) / "run")
+        return seconds, record.snapshot(record.end_time)
+
+
+def reference_library(folder: Path) -> ctypes.CDLL:
+    """The loops of bench_reference.c, compiled."""
+    made = folder / "reference.so"
+    subprocess.run(
+        [*GCC, "-shared", "-fPIC", str(HERE / "bench_reference.c"), "-o", str(made), "-lm"],
+        check=True,
+    )
+    return ctypes.CDLL(str(made))
+
+
+def pointers(*arrays: NDArray[np.float64]) -> list[Any]:
+    return [array.ctypes.data_as(ctypes.POINTER(ctypes.c_double)) for array in arrays]
+
+
+def side_by_side(
+    ours: Callable[[], float], theirs: Callable[[], float], repeats: int
+) -> dict[str, float]:
+    """Median seconds of both, and the median ratio theirs/ours of pairs taken in turn."""
+    ours(), theirs()
+    pairs = [(ours(), theirs()) for _ in range(repeats)]
+    ratios = [second / first for first, second in pairs]
+    return {
+        "ratio": statistics.median(ratios),
+        "ratio_least": min(ratios),
+        "ratio_most": max(ratios),
+        "seconds": statistics.median(first for first, _ in pairs),
+        "reference_seconds": statistics.median(second for _, second in pairs),
+    }
+
+
+def small_trap(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
+    """8 ions in a linear RF trap: a whole run against the same loop in C, the faster of two."""
+    from driftwell import constants
+
+    n, steps = 8, 1_000_000
+    step = 1.0 / (DRIVE * 100.0)
+    text = TRAP.format(
+        n=n, duration=steps * step, step=step, every=steps * step / 100, scheme="kick-drift-kick",
+        kelvin=300, s0=60, s1=250,
+    )
+    mass = ION_MASS_U * constants.ATOMIC_MASS
+    ratio = constants.ELEMENTARY_CHARGE / mass
+    rng = np.random.default_rng(3)
+    start = rng.normal(size=(3, n)) * np.array([[60e-6], [60e-6], [250e-6]])
+
+    def in_c(loop: Any) -> Callable[[], float]:
+        def once() -> float:
+            x = start.copy()
+            u = np.zeros((3, n))
+            a = np.zeros((3, n))
+            began = time.perf_counter()
+            loop(
+                ctypes.c_long(steps), ctypes.c_int(n), *pointers(*x, *u, *a),
+                *(
+                    ctypes.c_double(value)
+                    for value in (
+                        ratio,
+                        constants.COULOMB_CONSTANT * constants.ELEMENTARY_CHARGE * ratio,
+                        VOLTAGE / RADIUS**2,
+                        2.0 * np.pi * DRIVE,
+                        (2.0 * np.pi * AXIAL) ** 2 / ratio,
+                        step,
+                    )
+                ),
+            )
+            return time.perf_counter() - began
+
+        return once
+
+    once, full = in_c(library.trap_pairs_once), in_c(library.trap_all_terms)
+    times = {"pairs once": min(once() for _ in range(3)), "all terms": min(full() for _ in range(3))}
+    faster = min(times, key=lambda name: times[name])
+    found = side_by_side(
+        lambda: driftwell_run(text)[0], once if faster == "pairs once" else full, repeats
+    )
+    return {
+        **found,
+        "n": n,
+        "threads": 1,
+        "steps": steps,
+        "steps_per_second": steps / found["seconds"],
+        "reference": f"C loop, {faster}, the faster of two",
+        "reference_seconds_by_loop": times,
+    }
+
+
+def direct_2k(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
+    """2000 ions: time of a step of a whole run against the C pair loop, one core each."""
+    n, steps = 2000, 200
+    step = 1.0 / (DRIVE * 100.0)
+    text = TRAP.format(
+        n=n, duration=steps * step, step=step, every=steps * step / 4, scheme="kick-drift-kick",
+        kelvin=300, s0=200, s1=800,
+    )
+    rng = np.random.default_rng(3)
+    x, q, e = rng.normal(size=(3, n)), np.ones(n), np.zeros((3, n))
+
+    def pair_loop() -> float:
+        began = time.perf_counter()
+        for _ in range(steps):
+            library.pair_loop(ctypes.c_int(n), *pointers(*x, q, *e))
+        return time.perf_counter() - began
+
+    found = side_by_side(lambda: driftwell_run(text)[0], pair_loop, repeats)
+    result = {**found, "n": n, "threads": 1, "steps": steps, "reference": "C pair loop, all terms"}
+    if (os.cpu_count() or 1) > 1:
+        two = side_by_side(
+            lambda: driftwell_run(text, threads=2)[0], lambda: driftwell_run(text)[0], repeats
+        )
+        result["two_threads_over_one"] = two["ratio"]
+    return result
+
+
+def script(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
+    """64 ions: driftwell against scipy's DOP853 with a numpy force, at equal final error."""
+    from scipy.integrate import solve_ivp
+
+    from driftwell import constants
+    from driftwell.fields.evaluation import evaluate  # noqa: F401 - compiled before the timing
+
+    n, duration = 64, 20e-6
+    mass = ION_MASS_U * constants.ATOMIC_MASS
+    ratio = constants.ELEMENTARY_CHARGE / mass
+    pair = constants.COULOMB_CONSTANT * constants.ELEMENTARY_CHARGE * ratio
+    gradient, curvature = VOLTAGE / RADIUS**2, (2.0 * np.pi * AXIAL) ** 2 / ratio
+
+    def text(steps_per_drive: int) -> str:
+        step = 1.0 / (DRIVE * steps_per_drive)
+        return TRAP.format(
+            n=n, duration=duration, step=step, every=duration / 2, scheme="composed-4",
+            kelvin=300, s0=60, s1=250,
+        )
+
+    def force(t: float, state: NDArray[np.float64]) -> NDArray[np.float64]:
+        x = state[: 3 * n].reshape(3, n)
+        g = gradient * np.cos(2.0 * np.pi * DRIVE * t)
+        d = x[:, :, None] - x[:, None, :]
+        r2 = (d * d).sum(axis=0)
+        np.fill_diagonal(r2, 1.0)
+        a = pair * (d * (r2**-1.5)).sum(axis=2)
+        a[0] += ratio * (0.5 * curvature - g) * x[0]
+        a[1] += ratio * (0.5 * curvature + g) * x[1]
+        a[2] -= ratio * curvature * x[2]
+        return np.concatenate([state[3 * n :], a.ravel()])
+
+    start = _start_of(text(50))
+
+    def integrate(tolerance: float) -> tuple[float, NDArray[np.float64]]:
+        began = time.perf_counter()
+        found = solve_ivp(
+            force, (0.0, duration), start, method="DOP853", rtol=tolerance, atol=tolerance * 1e-6
+        )
+        return time.perf_counter() - began, found.y[: 3 * n, -1].reshape(3, n)
+
+    _, truth = integrate(1e-12)
+
+    def error(x: NDArray[np.float64]) -> float:
+        return float(np.sqrt(((x - truth) ** 2).mean()))
+
+    steps_per_drive = 100
+    _, snapshot = driftwell_run(text(steps_per_drive))
+    ours = error(snapshot.position.T)
+    tolerance = 1e-3
+    seconds, x = integrate(tolerance)
+    while error(x) > ours and tolerance > 1e-12:
+        tolerance /= 2.0
+        seconds, x = integrate(tolerance)
+    found = side_by_side(
+        lambda: driftwell_run(text(steps_per_drive))[0], lambda: integrate(tolerance)[0], repeats
+    )
+    return {
+        **found,
+        "n": n,
+        "threads": 1,
+        "error_m": ours,
+        "reference_error_m": error(x),
+        "reference": f"solve_ivp DOP853, rtol {tolerance:.1e}, numpy force",
+        "scheme": "composed-4",
+        "steps_per_drive_period": steps_per_drive,
+    }
+
+
+def _start_of(text: str) -> NDArray[np.float64]:
+    """Positions and velocities at time zero, as the integrator wants them."""
+    from driftwell.particles.species import bodies
+    from driftwell.scenario.read import read_scenario
+
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "bench.toml"
+        file.write_text(text)
+        loaded = read_scenario(file)
+        scenario = loaded.scenario
+        part = scenario.cloud[0].load(
+            scenario.seed, bodies(scenario.species), 0, 0, 0, loaded.folder
+        )
+        return np.concatenate([part.position.ravel(), part.velocity.ravel()])
+
+
+def startup(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
+    """`driftwell --help` against an empty Python."""
+
+    def timed(*command: str) -> Callable[[], float]:
+        def once() -> float:
+            began = time.perf_counter()
+            subprocess.run([sys.executable, *command], check=True, capture_output=True)
+            return time.perf_counter() - began
+
+        return once
+
+    found = side_by_side(
+        timed("-m", "driftwell", "--help"), timed("-c", "pass"), max(repeats, 5)
+    )
+    return {**found, "n": 0, "threads": 1, "reference": "python -c pass"}
+
+
+CASES: dict[str, Callable[[ctypes.CDLL, int], dict[str, Any]]] = {
+    "small-trap": small_trap,
+    "direct-2k": direct_2k,
+    "script": script,
+    "startup": startup,
+}
+
+
+def machine() -> dict[str, Any]:
+    """What the figures were measured on."""
+    listing = Path("/proc/cpuinfo")
+    names = (
+        [line for line in listing.read_text().splitlines() if line.startswith("model name")]
+        if listing.is_file()
+        else []
+    )
+    return {
+        "processor": names[0].partition(":")[2].strip() if names else platform.processor(),
+        "cores": os.cpu_count(),
+        "python": platform.python_version(),
+        "numpy": np.__version__,
+    }
+
+
+def main() -> int:
+    """Measure, print, and write the JSON file where asked."""
+    parser = argparse.ArgumentParser(description=__doc__.split("\n\n")[0])
+    parser.add_argument("--json", type=Path, metavar="FILE", help="write the figures to FILE")
+    parser.add_argument("--only", choices=CASES, action="append", help="measure this case only")
+    parser.add_argument("--repeats", type=int, default=5, help="pairs of timings a case")
+    asked = parser.parse_args()
+    if shutil.which(GCC[0]) is None:
+        print("tools/bench.py needs gcc for its references", file=sys.stderr)
+        return 2
+    cases: dict[str, Any] = {}
+    with tempfile.TemporaryDirectory() as folder:
+        library = reference_library(Path(folder))
+        for name in asked.only or CASES:
+            cases[name] = found = CASES[name](library, asked.repeats)
+            print(
+                f"{name:12} ratio {found['ratio']:8.3g} "
+                f"({found['ratio_least']:.3g} to {found['ratio_most']:.3g})  "
+                f"driftwell {found['seconds']:.4g} s, {found['reference']} "
+                f"{found['reference_seconds']:.4g} s"
+            )
+            for extra in ("two_threads_over_one", "steps_per_second", "error_m"):
+                if extra in found:
+                    print(f"{'':12} {extra.replace('_', ' ')}: {found[extra]:.4g}")
+    if asked.json:
+        asked.json.write_text(json.dumps({"machine": machine(), "cases": cases}, indent=2) + "\n")
+    return 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())
