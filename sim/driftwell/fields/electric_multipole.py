@@ -25,7 +25,7 @@ from driftwell.fields.rates import linear_rates
 from driftwell.forms import Angle, Length, Positive, key, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import AnyWaveform, VoltageWave, packed_waveform, waveform_words
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 ELECTRIC_MULTIPOLE = 5
 
@@ -68,7 +68,7 @@ class ElectricMultipole(FieldForm):
         )
 
 
-@inner_kernel
+@inner_sum_kernel
 def electric_multipole(
     p: np.ndarray,
     data: np.ndarray,

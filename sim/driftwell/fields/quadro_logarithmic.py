@@ -33,7 +33,7 @@ from driftwell.forms.waveforms import (
     packed_waveform,
     waveform_words,
 )
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 QUADRO_LOGARITHMIC = 7
 
@@ -78,7 +78,7 @@ class QuadroLogarithmic(FieldForm):
         )
 
 
-@inner_kernel
+@inner_sum_kernel
 def quadro_logarithmic(
     p: np.ndarray,
     data: np.ndarray,

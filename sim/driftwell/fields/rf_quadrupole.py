@@ -29,7 +29,7 @@ from driftwell.forms.waveforms import (
     packed_waveform,
     waveform_words,
 )
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 RF_QUADRUPOLE = 2
 
@@ -63,7 +63,7 @@ class RfQuadrupole(FieldForm):
         )
 
 
-@inner_kernel
+@inner_sum_kernel
 def rf_quadrupole(
     p: np.ndarray,
     data: np.ndarray,

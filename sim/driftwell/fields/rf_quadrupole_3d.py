@@ -26,7 +26,7 @@ from driftwell.fields.rates import linear_rates
 from driftwell.forms import Length, Positive, key, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import AnyWaveform, VoltageWave, packed_waveform, waveform_words
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 RF_QUADRUPOLE_3D = 4
 
@@ -76,7 +76,7 @@ class RfQuadrupole3D(FieldForm):
         )
 
 
-@inner_kernel
+@inner_sum_kernel
 def rf_quadrupole_3d(
     p: np.ndarray,
     data: np.ndarray,

@@ -44,7 +44,7 @@ from driftwell.forms import (
 )
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import AnyWaveform, VoltageWave, packed_waveform, waveform_words
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 STATIC_QUADRUPOLE = 3
 
@@ -146,7 +146,7 @@ class StaticQuadrupole(FieldForm):
         return f"static quadrupole {how}{uneven}{self.where()}"
 
 
-@inner_kernel
+@inner_sum_kernel
 def static_quadrupole(
     p: np.ndarray,
     data: np.ndarray,

@@ -18,7 +18,7 @@ from driftwell.forms.waveforms import (
     packed_waveform,
     waveform_words,
 )
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 UNIFORM_ELECTRIC = 0
 
@@ -52,7 +52,7 @@ class UniformElectric(FieldForm):
         return f"uniform electric field along ({direction}), {waveform_words(self.strength, 'V/m')}"
 
 
-@inner_kernel
+@inner_sum_kernel
 def uniform_electric(
     p: np.ndarray,
     data: np.ndarray,

@@ -29,7 +29,7 @@ from driftwell.fields.rates import linear_rates
 from driftwell.forms import Length, Positive, checked, key, refuse, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import AnyWaveform, VoltageWave, packed_waveform, waveform_words
-from driftwell.kernels import inner_kernel
+from driftwell.kernels import inner_sum_kernel
 
 WIRE_IN_CYLINDER = 8
 
@@ -80,7 +80,7 @@ class WireInCylinder(FieldForm):
         )
 
 
-@inner_kernel
+@inner_sum_kernel
 def wire_in_cylinder(
     p: np.ndarray,
     data: np.ndarray,

@@ -23,6 +23,8 @@ from driftwell._version import __version__
 
 PAIR_FLAGS = frozenset({"reassoc", "contract", "arcp", "nsz"})
 """What pair and expansion kernels may do to sums; never `nnan` or `ninf`: NaN must survive."""
+SUM_FLAGS = frozenset({"reassoc", "contract"})
+"""What sums over the charges may do: take them in lanes, in an order fixed by their number."""
 
 _MONTH = 30 * 24 * 3600.0
 _PACKAGE = Path(__file__).resolve().parent.parent
@@ -124,6 +126,18 @@ def inner_kernel(function: F) -> F:
     """
     return _compiled(
         function, _nrt=False, forceinline=True, no_cpython_wrapper=True, no_cfunc_wrapper=True
+    )
+
+
+def inner_sum_kernel(function: F) -> F:
+    """An :func:`inner_kernel` whose sums over the charges run in lanes, so that it vectorises."""
+    return _compiled(
+        function,
+        _nrt=False,
+        forceinline=True,
+        no_cpython_wrapper=True,
+        no_cfunc_wrapper=True,
+        fastmath=set(SUM_FLAGS),
     )
 
 

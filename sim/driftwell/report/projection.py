@@ -10,9 +10,10 @@ from matplotlib.axes import Axes
 from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts, Snapshot
-from driftwell.report.palette import colour, line_style, marker
+from driftwell.report.palette import PALE, colour, line_style, marker
+from driftwell.report.panel import put_across, put_up
 from driftwell.report.ruler import Interval, Ruler, prefix_size, ruler, widened
-from driftwell.report.sheet import Entry
+from driftwell.report.sheet import SMALL_SIZE, Entry
 
 Floats = NDArray[np.float64]
 
@@ -50,11 +51,20 @@ def frame(across: Interval, up: Interval, ratio: float) -> Frame:
 
 def put_frame(axes: Axes, shown: Frame, names: tuple[str, str], ratio: float) -> None:
     """Give a panel its axes and its shape."""
-    axes.set_xlim(*shown.across.limits)
-    axes.set_ylim(*shown.up.limits)
-    axes.set_xlabel(shown.across.label(names[0]))
-    axes.set_ylabel(shown.up.label(names[1]))
+    put_across(axes, shown.across, names[0], 6)
+    put_up(axes, shown.up, names[1], 6)
     axes.set_box_aspect(1.0 / ratio)
+    if not shown.true:
+        axes.text(
+            0.99,
+            0.01,
+            "axes not to one scale",
+            transform=axes.transAxes,
+            ha="right",
+            va="bottom",
+            fontsize=SMALL_SIZE - 1.0,
+            color=PALE,
+        ).set_in_layout(False)
 
 
 def put_dots(axes: Axes, snapshot: Snapshot, across: Floats, up: Floats, size: float = 1.0) -> None:
@@ -86,7 +96,7 @@ def cloud_key(clouds: Sequence[CloudFacts], lines: bool = False) -> list[Entry]:
     return [
         Entry(
             f"{cloud.name}: {cloud.count} {cloud.species}"
-            + (f", weight {cloud.weight:.4g}" if cloud.weight != 1.0 else ""),
+            + (f", each standing for {cloud.weight:.4g}" if cloud.weight != 1.0 else ""),
             colour(cloud.index),
             "" if lines else marker(cloud.index),
             line_style(cloud.index) if lines else "",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 import numpy as np
@@ -9,6 +10,7 @@ from matplotlib.axes import Axes
 from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 from numpy.typing import ArrayLike, NDArray
 
+from driftwell.report.panel import put_across, put_up
 from driftwell.report.ruler import Ruler, in_words, interval, prefix_size, ruler
 
 Floats = NDArray[np.float64]
@@ -34,10 +36,11 @@ def put_time(
     recorded : times of the records, s: how far apart they are is said
     labelled : whether numbers and name stand below the axis
     """
-    axes.set_xlim(*times.limits)
+    put_across(axes, times, "time")
     if labelled:
         axes.set_xlabel(times.label("time") + _spacing(recorded))
     else:
+        axes.set_xlabel("")
         axes.tick_params(labelbottom=False)
 
 
@@ -68,14 +71,16 @@ def put_amounts(axes: Axes, curves: Sequence[Floats], unit: str, name: str) -> R
     if positive.size and positive.max() > WIDE * positive.min() and positive.size == values.size:
         low, high = float(positive.min()), float(positive.max())
         free = (high / low) ** 0.05
-        shown = ruler((low / free, high * free), unit, prefix_size(high) if unit else None)
+        middle = prefix_size(math.sqrt(low * high)) if unit else None
+        shown = ruler((low / free, high * free), unit, middle)
+        axes.set_ylim(*shown.limits)
+        axes.set_ylabel(shown.label(name))
         axes.set_yscale("log")
         decades = np.log10(high / low)
         put_decades(axes, (1.0, 2.0, 5.0) if decades < 2.5 else (1.0,))
     else:
         shown = ruler(interval(values, zero=True), unit)
-    axes.set_ylim(*shown.limits)
-    axes.set_ylabel(shown.label(name))
+        put_up(axes, shown, name, whole=not unit)
     return shown
 
 

@@ -57,7 +57,7 @@ from driftwell.stepping.schemes import Scheme
 from driftwell.walls.table import SurfaceTable
 
 LOOK_EVERY = 64
-"""Steps between two looks for runaways and numbers that are none."""
+"""Steps between two looks for runaways and numbers that are none; a power of two."""
 RESOLVED = 0.3
 """Largest product of step and a pair's own rate that still follows a close fall."""
 
@@ -97,8 +97,10 @@ def burst(
         h = (time[j + 1] - time[j]) / steps[j]
         inside = 0.5 * (time[j] + time[j + 1])
         while cursor[CURSOR_STEP] < steps[j]:
-            first = cursor[CURSOR_STEP] % every == 0
-            last = cursor[CURSOR_STEP] % every == every - 1
+            first = last = True
+            if every > 1:
+                first = cursor[CURSOR_STEP] % every == 0
+                last = cursor[CURSOR_STEP] % every == every - 1
             start = time[j] + cursor[CURSOR_STEP] * h
             end = time[j] + (cursor[CURSOR_STEP] + 1) * h
             if cursor[CURSOR_STEP] + 1 == steps[j]:
@@ -213,7 +215,7 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
         if found >= 0:
             cursor[CURSOR_AT_FAULT] = found
             return COLLAPSE
-    if not at_mark and cursor[CURSOR_STEPS] % LOOK_EVERY != 0:
+    if not at_mark and cursor[CURSOR_STEPS] & (LOOK_EVERY - 1) != 0:
         return DONE
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]

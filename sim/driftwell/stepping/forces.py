@@ -6,7 +6,7 @@ import numpy as np
 
 from driftwell.coulomb.direct import SMALL, PairSum, small_field
 from driftwell.fields.table import electric_field, induced_field, magnetic_field
-from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
 from driftwell.kernels.waveform import waveform
 from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
@@ -81,9 +81,9 @@ def _induced(fields: Fields, charges: Charges, t: float, inside: float, work: Wo
             out[i] += row[i]
 
 
-@inner_kernel
+@inner_sum_kernel
 def _force_and_torque(charges: Charges, work: Work) -> None:
-    """Sums over all charges of Q E and x cross Q E, in the order of the charges."""
+    """Sums over all charges of Q E and x cross Q E."""
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     ex, ey, ez = work.external[0], work.external[1], work.external[2]
     q = charges.charge
