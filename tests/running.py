@@ -1,4 +1,4 @@
-"""Scenarios carried out by tests: stated as tables, written as TOML, read and run as a user's are."""
+"""Scenarios carried out by tests: stated as tables, written as TOML, run as a user's are."""
 
 from __future__ import annotations
 

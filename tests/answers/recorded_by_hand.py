@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
+import pytest
 
 from driftwell.answers.evidence import CloudFacts, Moments, Snapshot, TraceRequest
 from driftwell.answers.form import QuestionForm
@@ -19,6 +20,14 @@ CHARGE = 1.602176634e-19
 
 LOSS = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
 CROSSING = [("time", "f8"), ("id", "i8"), ("cloud", "i8"), ("detector", "i8"), ("direction", "i8")]
+
+
+def near(value: Any, rel: float = 1e-12) -> Any:
+    """What equals `value` to the part `rel`, however small it is.
+
+    The library's own default also takes whatever lies within 1e-12, which is every force.
+    """
+    return pytest.approx(value, rel=rel, abs=0.0)
 
 
 def facts(name: str = "load", count: int = 0, **changes: Any) -> CloudFacts:

@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from recorded_by_hand import CROSSING, LOSS, MASS, ONE_OF_EACH, Recorded, asked, facts, table
+from recorded_by_hand import CROSSING, LOSS, MASS, ONE_OF_EACH, Recorded, asked, facts, near, table
 
 from driftwell.answers.answer import Answer, answer_all
 from driftwell.answers.evidence import Evidence, Moments, TraceRequest
@@ -90,7 +90,7 @@ def test_with_no_charge_left_every_kind_says_zero_or_why_not(keys: dict[str, Any
     assert question.unit == found.unit
     if keys["ask"] in ("fraction-left", "fraction-through"):
         assert found.value == 0.0
-        assert found.error == pytest.approx(0.5 / (COUNT + 1))
+        assert near(0.5 / (COUNT + 1)) == found.error
     else:
         assert math.isnan(found.value)
         assert found.error is None
@@ -115,7 +115,7 @@ def test_a_trace_that_ends_with_the_charge_is_read_up_to_there() -> None:
     time, value = recorded.traced[TRACE]
     recorded.traced[TRACE] = (time, np.where(time < 0.6e-3, value, np.nan))
     found = asked("frequency", axis="z").answer(recorded)
-    assert found.value == pytest.approx(50e3, rel=1e-9)
+    assert near(50e3, rel=1e-9) == found.value
     assert "600 samples in 600 us, until it was lost" in found.note
 
 
@@ -180,7 +180,7 @@ def test_questions_need_snapshots_at_their_times_and_traces_only() -> None:
     ):
         assert asked(**keys).needs(duration).snapshots == ()
     trace = asked("frequency", axis="y", charge=3, every="0.1 us").needs(duration).traces
-    assert trace == (TraceRequest("load", 3, 1, pytest.approx(1e-7)),)
+    assert trace == (TraceRequest("load", 3, 1, near(1e-7)),)
 
 
 def test_the_times_a_question_names_are_told_by_key() -> None:

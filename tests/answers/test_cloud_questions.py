@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 import pytest
-from recorded_by_hand import CHARGE, MASS, ONE_OF_EACH, asked, in_time, one_cloud
+from recorded_by_hand import CHARGE, MASS, ONE_OF_EACH, asked, in_time, near, one_cloud
 
 from driftwell.answers.moments import MomentsRow, moments_of
 from driftwell.constants import BOLTZMANN, SPEED_OF_LIGHT
@@ -42,10 +42,10 @@ def test_centre_and_size_are_the_clouds_own(axis: int) -> None:
     recorded = one_cloud(*exact())
     centre = asked("centre", axis="xyz"[axis]).answer(recorded)
     size = asked("rms-size", axis="xyz"[axis]).answer(recorded)
-    assert CENTRE[axis] == pytest.approx(centre.value, rel=1e-12)
-    assert SIGMA[axis] / math.sqrt(2000) == pytest.approx(centre.error, rel=1e-3)
-    assert SIGMA[axis] == pytest.approx(size.value, rel=1e-12)
-    assert SIGMA[axis] / math.sqrt(4000) == pytest.approx(size.error, rel=0.3)
+    assert CENTRE[axis] == near(centre.value, rel=1e-12)
+    assert SIGMA[axis] / math.sqrt(2000) == near(centre.error, rel=1e-3)
+    assert SIGMA[axis] == near(size.value, rel=1e-12)
+    assert SIGMA[axis] / math.sqrt(4000) == near(size.error, rel=0.3)
     assert (centre.unit, size.unit) == ("m", "m")
 
 
@@ -53,14 +53,14 @@ def test_centre_and_size_are_the_clouds_own(axis: int) -> None:
 def test_temperature_is_about_the_mean_velocity_with_one_degree_of_freedom_taken(axis: int) -> None:
     """m var(v) / k_B: equipartition, e.g. Reif, Fundamentals (1965), sec. 7.5 (from memory)."""
     found = asked("temperature", axis="xyz"[axis]).answer(one_cloud(*exact(100)))
-    assert KELVIN[axis] * 100 / 99 == pytest.approx(found.value, rel=1e-7)
+    assert KELVIN[axis] * 100 / 99 == near(found.value, rel=1e-7)
     assert found.unit == "K"
     assert "4 km/s" in found.note
 
 
 def test_mean_temperature_is_that_of_the_three_axes() -> None:
     found = asked("temperature").answer(one_cloud(*exact()))
-    assert KELVIN.mean() * 2000 / 1999 == pytest.approx(found.value, rel=1e-7)
+    assert KELVIN.mean() * 2000 / 1999 == near(found.value, rel=1e-7)
 
 
 @pytest.mark.parametrize("direction", [(0.0, 0.0, 1.0), (2.0, -1.0, 2.0)])
@@ -75,14 +75,14 @@ def test_temperature_of_a_fast_bunch_is_that_in_its_own_frame(
     seen = carried(thermal, np.broadcast_to(fast[:, None], thermal.shape))
     for axis in range(3):
         found = asked("temperature", axis="xyz"[axis]).answer(one_cloud(exact()[0], seen.T))
-        assert KELVIN[axis] == pytest.approx(found.value, rel=2e-3)
+        assert KELVIN[axis] == near(found.value, rel=2e-3)
 
 
 def test_kinetic_energy_is_that_of_drift_and_heat_together() -> None:
     position, velocity = exact()
     found = asked("kinetic-energy").answer(one_cloud(position, velocity))
     expected = 0.5 * MASS * float(DRIFT @ DRIFT + SPREAD @ SPREAD)
-    assert expected / CHARGE == pytest.approx(found.value, rel=1e-7)
+    assert expected / CHARGE == near(found.value, rel=1e-7)
     assert found.unit == "eV"
 
 
@@ -91,12 +91,12 @@ def test_spread_of_kinetic_energy_of_a_beam_is_speed_times_momentum_spread() -> 
     velocity = DRIFT + SPREAD * np.array([0.0, 0.0, 1.0]) * exact()[1]
     velocity = np.stack([0 * velocity[:, 0], 0 * velocity[:, 0], exact()[1][:, 2]], axis=1)
     found = asked("kinetic-energy-spread").answer(one_cloud(exact()[0], velocity))
-    assert MASS * DRIFT[2] * SPREAD[2] / CHARGE == pytest.approx(found.value, rel=2e-3)
+    assert MASS * DRIFT[2] * SPREAD[2] / CHARGE == near(found.value, rel=2e-3)
 
 
 def test_normalised_emittance_of_uncorrelated_motion_is_size_times_spread_over_light() -> None:
     found = asked("emittance", plane="y", normalised=True).answer(one_cloud(*exact()))
-    assert SIGMA[1] * SPREAD[1] / SPEED_OF_LIGHT == pytest.approx(found.value, rel=1e-9)
+    assert SIGMA[1] * SPREAD[1] / SPEED_OF_LIGHT == near(found.value, rel=1e-9)
     assert found.unit == "m rad"
 
 
@@ -108,7 +108,7 @@ def test_emittance_does_not_change_in_a_drift_of_any_length() -> None:
     for length in (0.1, 1e4):
         there = position + length * slope
         found = asked("emittance", plane="x").answer(one_cloud(there, velocity))
-        assert start.value == pytest.approx(found.value, rel=1e-8)
+        assert start.value == near(found.value, rel=1e-8)
 
 
 def test_geometric_emittance_takes_slopes_against_the_beam_axis() -> None:
@@ -118,8 +118,8 @@ def test_geometric_emittance_takes_slopes_against_the_beam_axis() -> None:
     found = asked("emittance", plane="z", beam_axis="x").answer(
         one_cloud(position[:, turned], velocity[:, turned])
     )
-    assert expected.value == pytest.approx(found.value, rel=1e-12)
-    assert SIGMA[1] * SPREAD[1] / DRIFT[2] == pytest.approx(expected.value, rel=0.01)
+    assert expected.value == near(found.value, rel=1e-12)
+    assert SIGMA[1] * SPREAD[1] / DRIFT[2] == near(expected.value, rel=0.01)
 
 
 def test_slopes_of_charges_moving_both_ways_are_refused() -> None:
@@ -138,7 +138,7 @@ def test_a_window_of_like_records_gives_the_value_of_one_time(keys: dict[str, ob
     rows = [moments_of(position.T, velocity.T, MASS)] * 20
     recorded = in_time(np.linspace(0.0, 1e-3, 20), rows)
     found = asked(**keys, over=["0.2 ms", "0.8 ms"]).answer(recorded)
-    assert once.value == pytest.approx(found.value, rel=1e-8)
+    assert once.value == near(found.value, rel=1e-8)
     assert found.error == pytest.approx(0.0, abs=1e-12 * abs(found.value))
     assert "mean of 12 records" in found.note
     assert once.unit == found.unit
@@ -154,14 +154,14 @@ def test_temperature_of_a_fast_bunch_is_the_same_from_moments() -> None:
         found = asked("temperature", axis=axis, over=["0 s", "1 ms"]).answer(
             in_time(np.linspace(0.0, 1e-3, 8), rows)
         )
-        assert once.value == pytest.approx(found.value, rel=1e-6)
+        assert once.value == near(found.value, rel=1e-6)
 
 
 def test_a_window_averages_only_the_records_within_it() -> None:
     rows = [at_x(float(k)) for k in range(11)]
     recorded = in_time(np.arange(11) * 1e-4, rows)
     found = asked("centre", axis="x", over=["0.3 ms", "0.6 ms"]).answer(recorded)
-    assert found.value == pytest.approx(4.5, rel=1e-12)
+    assert near(4.5, rel=1e-12) == found.value
 
 
 def at_x(centre: float, count: int = 5) -> MomentsRow:
@@ -188,7 +188,7 @@ def test_a_window_that_holds_no_record_says_so() -> None:
 def test_too_few_charges_give_a_value_without_error_or_a_reason() -> None:
     pair = one_cloud(np.array([[0.0, 0.0, -3e-6], [0.0, 0.0, 3e-6]]))
     size = asked("rms-size", axis="z").answer(pair)
-    assert (size.value, size.error) == (pytest.approx(3e-6), None)
+    assert (size.value, size.error) == (near(3e-6), None)
     assert "too few charges" in size.note
     single = one_cloud(np.zeros((1, 3)))
     with pytest.raises(Exception, match="needs at least 2 charges, there are 1"):

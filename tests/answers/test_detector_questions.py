@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from recorded_by_hand import CROSSING, LOSS, Recorded, asked, facts, passing, table
+from recorded_by_hand import CROSSING, LOSS, Recorded, asked, facts, near, passing, table
 
 from driftwell.answers.sampling import fraction_error
 
@@ -37,7 +37,7 @@ def test_fraction_left_counts_its_own_cloud_only() -> None:
 def test_fraction_of_none_or_all_is_not_certain(lost: int) -> None:
     found = asked("fraction-left").answer(losing([1e-5] * lost))
     assert found.value == 1.0 - lost / 10
-    assert found.error == pytest.approx(0.5 / 11.0, rel=1e-12)
+    assert near(0.5 / 11.0, rel=1e-12) == found.error
 
 
 def test_fraction_through_counts_every_charge_once() -> None:
@@ -45,7 +45,7 @@ def test_fraction_through_counts_every_charge_once() -> None:
     recorded = Recorded({"load": facts(count=8)}, ["exit", "side"], crossed=table(CROSSING, rows))
     found = asked("fraction-through", of="exit").answer(recorded)
     assert found.value == 1 / 8
-    assert found.error == pytest.approx(fraction_error(1, 8), rel=1e-12)
+    assert near(fraction_error(1, 8), rel=1e-12) == found.error
     assert found.note == "1 of 8 charges"
 
 
@@ -62,17 +62,17 @@ def two_clouds(weight: float) -> Recorded:
 def test_fraction_through_of_all_clouds_weighs_real_particles() -> None:
     assert asked("fraction-through", of="exit").answer(two_clouds(1.0)).value == 4 / 6
     found = asked("fraction-through", of="exit").answer(two_clouds(8.0))
-    assert found.value == pytest.approx((2 + 16) / (4 + 16), rel=1e-12)
+    assert near((2 + 16) / (4 + 16), rel=1e-12) == found.value
     # As uncertain as 400/132 equal charges would be.
     trials = 20.0**2 / (4.0 + 128.0)
-    assert found.error == pytest.approx(fraction_error(0.9 * trials, trials), rel=1e-12)
+    assert found.error == near(fraction_error(0.9 * trials, trials), rel=1e-12)
 
 
 def test_a_named_cloud_is_counted_alone() -> None:
     recorded = two_clouds(8.0)
     assert asked("fraction-through", of="exit", cloud="light").answer(recorded).value == 0.5
     found = asked("arrival-time", of="exit", cloud="light").answer(recorded)
-    assert found.value == pytest.approx(1.5e-4, rel=1e-12)
+    assert near(1.5e-4, rel=1e-12) == found.value
 
 
 def test_arrival_times_of_unequal_macro_particles_need_a_cloud() -> None:
@@ -84,8 +84,8 @@ def test_arrival_time_is_that_of_the_first_passage() -> None:
     rows = [(9e-4, 0, 0, 0, -1), (1e-4, 0, 0, 0, 1), (3e-4, 1, 0, 0, 1)]
     recorded = Recorded({"load": facts(count=2)}, ["exit"], crossed=table(CROSSING, rows))
     found = asked("arrival-time", of="exit").answer(recorded)
-    assert found.value == pytest.approx(2e-4, rel=1e-12)
-    assert found.error == pytest.approx(1e-4, rel=1e-12)
+    assert near(2e-4, rel=1e-12) == found.value
+    assert near(1e-4, rel=1e-12) == found.error
     assert found.unit == "s"
 
 
@@ -95,12 +95,12 @@ def test_statistics_of_arrival_times_are_those_of_the_pulse() -> None:
         asked("arrival-time", of="exit", statistic=which).answer(passing(times))
         for which in ("mean", "rms", "fwhm")
     )
-    assert times.mean() == pytest.approx(mean.value, rel=1e-12)
-    assert 3e-9 / np.sqrt(4000) == pytest.approx(mean.error, rel=0.05)
-    assert times.std() == pytest.approx(rms.value, rel=1e-6)
-    assert 3e-9 / np.sqrt(8000) == pytest.approx(rms.error, rel=0.3)
+    assert times.mean() == near(mean.value, rel=1e-12)
+    assert 3e-9 / np.sqrt(4000) == near(mean.error, rel=0.05)
+    assert times.std() == near(rms.value, rel=1e-6)
+    assert 3e-9 / np.sqrt(8000) == near(rms.error, rel=0.3)
     assert fwhm.error is not None
-    assert pytest.approx(fwhm.value, abs=3.0 * fwhm.error) == 3e-9 * GAUSSIAN
+    assert pytest.approx(3e-9 * GAUSSIAN, abs=3.0 * fwhm.error) == fwhm.value
     assert fwhm.error < 0.1 * fwhm.value
 
 
@@ -109,5 +109,5 @@ def test_too_few_passages_say_how_many_are_needed() -> None:
     with pytest.raises(Exception, match='2 charges passed detector "exit"; needs at least 20'):
         asked("arrival-time", of="exit", statistic="fwhm").answer(recorded)
     found = asked("arrival-time", of="exit", statistic="rms").answer(recorded)
-    assert (found.value, found.error) == (pytest.approx(5e-4), None)
+    assert (found.value, found.error) == (near(5e-4), None)
     assert "too few" in found.note

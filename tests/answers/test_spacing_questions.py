@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from recorded_by_hand import Recorded, asked, facts, one_cloud
+from recorded_by_hand import Recorded, asked, facts, near, one_cloud
 from scipy.stats import special_ortho_group
 
 SIGMA = np.array([40e-6, 60e-6, 900e-6])
@@ -44,7 +44,7 @@ def test_peak_density_finds_a_core_within_a_halo() -> None:
     both = 1e-3 * np.stack([halo, 0.2 * core + [0.7, 0.0, -0.3]], axis=1).reshape(-1, 3)
     found = asked("peak-density").answer(one_cloud(both))
     at_core = 8000 / (2.0 * np.pi) ** 1.5 * (125.0 + np.exp(-0.5 * (0.49 + 0.09))) * 1e9
-    assert at_core == pytest.approx(found.value, rel=0.2)
+    assert at_core == near(found.value, rel=0.2)
 
 
 def test_peak_density_does_not_depend_on_place_direction_or_scale() -> None:
@@ -52,7 +52,7 @@ def test_peak_density_does_not_depend_on_place_direction_or_scale() -> None:
     turn = special_ortho_group.rvs(3, random_state=7)
     first = asked("peak-density").answer(one_cloud(cloud))
     second = asked("peak-density").answer(one_cloud(10.0 * cloud @ turn.T - 0.3))
-    assert first.value == pytest.approx(1e3 * second.value, rel=1e-6)
+    assert first.value == near(1e3 * second.value, rel=1e-6)
 
 
 def test_peak_density_needs_a_volume_and_enough_charges() -> None:
@@ -67,7 +67,7 @@ def test_nearest_neighbour_of_a_line_is_the_smaller_gap() -> None:
     line = np.zeros((4, 3))
     line[:, 2] = [0.0, 1e-6, 4e-6, 9e-6]
     found = asked("nearest-neighbour").answer(one_cloud(line))
-    assert found.value == pytest.approx((1.0 + 1.0 + 3.0 + 5.0) / 4.0 * 1e-6, rel=1e-12)
+    assert near((1.0 + 1.0 + 3.0 + 5.0) / 4.0 * 1e-6, rel=1e-12) == found.value
     assert found.error is not None
 
 
@@ -79,7 +79,7 @@ def test_neighbours_of_other_clouds_count() -> None:
         (load, np.arange(2), np.array([[0.0, 0.0, 0.0], [10e-6, 0.0, 0.0]]), rest),
         (other, np.arange(1), np.array([[8e-6, 0.0, 0.0]]), rest[:1]),
     )
-    assert asked("nearest-neighbour").answer(recorded).value == pytest.approx(5e-6, rel=1e-12)
+    assert near(5e-6, rel=1e-12) == asked("nearest-neighbour").answer(recorded).value
 
 
 def test_a_charge_alone_has_no_neighbour() -> None:

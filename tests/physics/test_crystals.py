@@ -149,11 +149,14 @@ def test_a_crystal_breathes_with_its_whole_shape_kept(tmp_path: Path) -> None:
     # turning points: s^3 - (s0^2 + 2/s0) s + 2 = 0 has the roots s0 and the inner one
     inner = (-start + math.sqrt(start**2 + 8.0 / start)) / 2.0
     middle, half = 0.5 * (start + inner), 0.5 * (start - inner)
-    period = 2.0 * quad(
-        lambda a: half * math.cos(a) / math.sqrt(2.0 * kinetic(middle + half * math.sin(a))),
-        -math.pi / 2.0,
-        math.pi / 2.0,
-    )[0]
+    period = (
+        2.0
+        * quad(
+            lambda a: half * math.cos(a) / math.sqrt(2.0 * kinetic(middle + half * math.sin(a))),
+            -math.pi / 2.0,
+            math.pi / 2.0,
+        )[0]
+    )
     found = track(
         carried_out(
             tmp_path,

@@ -33,9 +33,7 @@ class Pair(NamedTuple):
     answered: Floats
 
 
-def pair(
-    folder: Path, first: float, second: float, apart: float, weight: float = 1.0
-) -> Pair:
+def pair(folder: Path, first: float, second: float, apart: float, weight: float = 1.0) -> Pair:
     """Two charges (in e) at -apart/2 and +apart/2 along :data:`LEAN`; `weight` of the second."""
     place = 0.5 * apart * LEAN
     found = carried_out(
@@ -158,8 +156,13 @@ def test_forces_of_charges_at_random_add_up_to_nothing_in_the_ledger(
         1e-6,
         species={"ion": species(2e-25), "heavy": species(4e-25, "3 e")},
         cloud=[
-            {"name": kind, "species": kind, "count": count, "shape": {"kind": "ball",
-             "radius": "1 mm"}, "motion": {"temperature": "300 K"}}
+            {
+                "name": kind,
+                "species": kind,
+                "count": count,
+                "shape": {"kind": "ball", "radius": "1 mm"},
+                "motion": {"temperature": "300 K"},
+            }
             for kind in ("ion", "heavy")
         ],
         stepping={"step": "20 ns"},

@@ -51,10 +51,10 @@ def between_rods(
     q: list[float],
     duration: float,
     a_over_q: float = 0.0,
-    start: tuple[float, float, float] = (1e-6, 1e-6, 0.0),
+    aside: float = 1e-6,
     **sections: Any,
 ) -> Run:
-    """Ions with these q, 1 um off the axis in x and y, none feeling another; 100 steps a period."""
+    """Ions with these q, 1 um off the axis in x and `aside` in y, none feeling another."""
     names = [f"q{k}" for k in range(len(q))]
     # E = -grad phi turns the sign of q; a = 2 q (U / V), with the same sign as U
     voltage = {
@@ -67,7 +67,7 @@ def between_rods(
         folder,
         duration,
         species={name: species(heaviness(each)) for name, each in masses},
-        cloud=[points(name, name, start) for name in names],
+        cloud=[points(name, name, [1e-6, aside, 0.0]) for name in names],
         field=[
             {
                 "name": "rods",
@@ -156,7 +156,7 @@ def test_ions_are_held_below_q_0_908_and_thrown_out_above(tmp_path: Path) -> Non
     """
     limit = 0.9080463337345777
     q = [0.906, 0.910]
-    found = track(between_rods(tmp_path, q, 80.0 / DRIVE, record={"every": "1 us"}))
+    found = track(between_rods(tmp_path, q, 80.0 / DRIVE, aside=0.0, record={"every": "1 us"}))
     size = np.abs(found.position[:, :, 0]).max(axis=0) / 1e-6
     assert size[0] < 100.0
     assert size[1] > 1e4

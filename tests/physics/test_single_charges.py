@@ -185,9 +185,7 @@ def test_round_and_radial_frequencies_of_a_quadro_logarithmic_well(tmp_path: Pat
         cloud=[points("one", "ion", [9e-3, 0.0, 5e-3], [3.0, TANGENTIAL, 0.0])],
         field=[WELL],
         stepping={"scheme": "composed-6", "step": "20 ns"},
-        question=swinging(
-            {"around": ("one", "x", around), "sum": ("one", "x", around + radial)}
-        ),
+        question=swinging({"around": ("one", "x", around), "sum": ("one", "x", around + radial)}),
     )
     turning, both = answers(found)
     assert around == pytest.approx(turning, rel=1e-6)

@@ -47,9 +47,7 @@ def test_two_ions_flying_at_each_other_turn_round_at_the_closest_approach(tmp_pa
     """
     closest, when = 9.565018855783628e-07, 8.492838951469167e-07
     start, speed = np.array([1e-4, 0.0, 0.0]), np.array([-120.0, 0.0, 0.0])
-    found = two_ions(
-        tmp_path, ION, start, speed, 2.0 * when, record={"every": f"{when!r} s"}
-    )
+    found = two_ions(tmp_path, ION, start, speed, 2.0 * when, record={"every": f"{when!r} s"})
     apart = found.position[:, 1, 0] - found.position[:, 0, 0]
     assert closest == pytest.approx(apart[1], rel=1e-9)
     assert 1e-4 == pytest.approx(apart[2], rel=1e-9)

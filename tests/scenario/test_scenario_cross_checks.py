@@ -5,10 +5,10 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from tests.scenario.good_scenarios import BEAM, PAIR, TRAP
 
 from driftwell.errors import ScenarioError
 from driftwell.scenario.read import read_scenario
+from tests.scenario.good_scenarios import BEAM, PAIR, TRAP
 
 BALL = """\
 [[cloud]]

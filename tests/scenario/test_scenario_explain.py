@@ -5,11 +5,11 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from tests.scenario.good_scenarios import BEAM, GOOD, PAIR, TRAP
 
 from driftwell.scenario.cautions import cautions
 from driftwell.scenario.explain import WIDTH, explain
 from driftwell.scenario.read import LoadedScenario, read_scenario
+from tests.scenario.good_scenarios import BEAM, GOOD, PAIR, TRAP
 
 
 def loaded(folder: Path, text: str, *settings: str) -> LoadedScenario:

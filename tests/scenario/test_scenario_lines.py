@@ -8,9 +8,9 @@ from typing import Any
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
-from tests.scenario.good_scenarios import GOOD, toml_file
 
 from driftwell.scenario.lines import KeyLines
+from tests.scenario.good_scenarios import GOOD, toml_file
 
 TEXT = '''\
 # a comment with [brackets] and "quotes"

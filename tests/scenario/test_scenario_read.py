@@ -6,13 +6,13 @@ from collections.abc import Sequence
 from pathlib import Path
 
 import pytest
-from tests.scenario.good_scenarios import GOOD, TRAP
 
 from driftwell.errors import ScenarioError
 from driftwell.forms.declared import kind_name
 from driftwell.forms.waveforms import Sine
 from driftwell.particles.shapes.table import SHAPE_KINDS
 from driftwell.scenario.read import LoadedScenario, read_scenario
+from tests.scenario.good_scenarios import GOOD, TRAP
 
 SPOILED = """\
 title    = "Barium cloud in a rod trap"

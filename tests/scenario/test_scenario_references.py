@@ -5,9 +5,9 @@ from __future__ import annotations
 import tomllib
 
 import pytest
-from tests.scenario.good_scenarios import GOOD, TRAP
 
 from driftwell.scenario.references import reference_faults
+from tests.scenario.good_scenarios import GOOD, TRAP
 
 
 def told(text: str) -> list[tuple[str, str, str]]:

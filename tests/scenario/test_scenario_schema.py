@@ -9,11 +9,11 @@ from typing import Any
 
 import jsonschema
 import pytest
-from tests.scenario.good_scenarios import GOOD, TRAP
 
 from driftwell.forms.declared import Keys, forms_within
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.schema import json_schema
+from tests.scenario.good_scenarios import GOOD, TRAP
 
 SHIPPED = sorted((Path(__file__).parents[2] / "scenarios").glob("*.toml"))
 

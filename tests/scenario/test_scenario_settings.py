@@ -6,10 +6,10 @@ import tomllib
 from typing import Any
 
 import pytest
-from tests.scenario.good_scenarios import TRAP
 
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.settings import apply_settings
+from tests.scenario.good_scenarios import TRAP
 
 
 def at(table: Any, *path: str | int) -> Any:

@@ -5,8 +5,9 @@
 Lines are taken one after the other, the strongest first: the highest point of the spectrum of what
 is left (Hann window, zero-padded) gives a start value through a parabola in its logarithm, then
 all lines found so far are fitted together by least squares (Gauss-Newton in eq. 1). It ends when
-nothing stands above the noise. Lines that are one bin (one over the record's length) apart are
-still told apart in a quiet record.
+nothing stands above the noise. Lines one bin (one over the record's length) apart are told apart in
+a quiet record. Lines closer than half a bin are taken for one, which may then lie half a bin off
+with an error that knows little of it: run longer.
 
 The error comes from the fit's covariance, with the noise taken from what is left around the line:
 motion that is not a steady sine (a frequency that wanders, lines too close to tell apart) leaves a
@@ -229,23 +230,20 @@ def _columns(time: Floats, rate: Floats) -> Floats:
 
 
 def _at(samples: _Samples, rate: Floats) -> _Fit:
-    """Best c0, c1, a, b at the given rates; solved twice, since products of columns lose digits."""
+    """Best c0, c1, a, b at the given rates."""
     size = 2 + 2 * rate.size
-    square, linear = np.zeros((size, size)), np.zeros(size)
+    square, right = np.zeros((size, size)), np.zeros(size)
+    parts = samples.parts()
+    for part in parts:
+        columns = _columns(samples.time[part], rate)
+        square += columns @ columns.T
+        right += columns @ samples.value[part]
+    linear: Floats = np.asarray(np.linalg.lstsq(square, right, rcond=None)[0], dtype=np.float64)
     rest = samples.value.copy()
-    kept = _columns(samples.time, rate) if samples.time.size <= _SLICE else None
-    for turn in range(2):
-        right = np.zeros(size)
-        for part in samples.parts():
-            columns = _columns(samples.time[part], rate) if kept is None else kept
-            if turn == 0:
-                square += columns @ columns.T
-            right += columns @ rest[part]
-        more = np.linalg.lstsq(square, right, rcond=None)[0]
-        linear += more
-        for part in samples.parts():
-            columns = _columns(samples.time[part], rate) if kept is None else kept
-            rest[part] -= more @ columns
+    for part in parts:
+        if len(parts) > 1:
+            columns = _columns(samples.time[part], rate)
+        rest[part] -= linear @ columns
     return _Fit(rate, linear, rest)
 
 

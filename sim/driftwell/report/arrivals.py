@@ -7,9 +7,9 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
-from driftwell.report.histogram import bins, put_histogram
+from driftwell.report.histogram import put_histogram
 from driftwell.report.palette import colour, marker
-from driftwell.report.projection import MOST_DOTS, cloud_key, frame, put_frame
+from driftwell.report.projection import MOST_DOTS, cloud_key, frame, plane_limits, put_frame
 from driftwell.report.ruler import interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import printable, sheet
@@ -52,8 +52,9 @@ def put_spot(axes: Axes, passed: NDArray[np.void]) -> None:
     """Where charges passed, in the two axes along which the places differ most."""
     position = passed["position"]
     first, second = across_axes(passed)
-    reach = float(np.ptp(position, axis=0).max())
-    shown = frame(*(interval(position[:, axis], least=reach) for axis in (first, second)), 1.0)
+    reach = float(np.ptp(position, axis=0).max()) or float(np.abs(position).max())
+    limits = plane_limits(position[:, first], position[:, second], reach)
+    shown = frame(*limits, 1.0)
     put_frame(axes, shown, (AXES[first], AXES[second]), 1.0)
     every = max(1, -(-len(passed) // MOST_DOTS))
     for cloud in np.unique(passed["cloud"]):
@@ -82,11 +83,11 @@ def across_axes(passed: NDArray[np.void]) -> tuple[int, int]:
 
 def put_passages(axes: Axes, passed: NDArray[np.void]) -> None:
     """How many passed in each stretch of time, by cloud."""
-    times = ruler(interval(passed["time"]), "s")
+    low, high = interval(passed["time"])
+    times = ruler((max(low, 0.0), high), "s")
     groups = [
         (passed["time"][passed["cloud"] == cloud], colour(int(cloud)))
         for cloud in np.unique(passed["cloud"])
     ]
-    put_histogram(axes, groups, bins(passed["time"], times.low, times.high), times)
+    put_histogram(axes, groups, times, "passages")
     put_time(axes, times)
-    axes.set_ylabel("passages")

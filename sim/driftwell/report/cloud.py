@@ -2,29 +2,33 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
 from driftwell.answers.evidence import Snapshot
 from driftwell.report.names import MOST_NAMED, put_names
-from driftwell.report.palette import PALE
 from driftwell.report.projection import (
     Frame,
     cloud_key,
+    common_size,
     counted,
     frame,
+    plane_limits,
     put_dots,
     put_frame,
 )
-from driftwell.report.ruler import Interval, in_words, interval, joined
+from driftwell.report.ruler import Interval, in_words, joined
 from driftwell.report.scene import Scene
-from driftwell.report.sheet import SMALL_SIZE, sheet
+from driftwell.report.sheet import sheet
 
 AXES = "xyz"
 SIDE, FRONT = (2, 0), (0, 1)
 """Axes across and up: z-x from the side, x-y along z."""
-SIDE_RATIO, FRONT_RATIO = 2.0, 1.0
+RATIOS = (2.0, 1.0)
+"""Width over height of the panels of both."""
 ALIKE = 4.0
 """Start and end have the same limits where those are at most so many times what each needs."""
 
@@ -36,26 +40,34 @@ def cloud_picture(scene: Scene) -> Figure | None:
         return None
     figure = sheet(scene.run, 9.6, 0.9 + 3.3 * len(views), cloud_key(scene.clouds))
     panels = figure.subplots(
-        len(views), 2, squeeze=False, gridspec_kw={"width_ratios": [SIDE_RATIO, FRONT_RATIO]}
+        len(views), 2, squeeze=False, gridspec_kw={"width_ratios": list(RATIOS)}
     )
-    snapshots = [view for _, view in views]
-    for column, (plane, ratio) in enumerate(((SIDE, SIDE_RATIO), (FRONT, FRONT_RATIO))):
-        frames = plane_frames(snapshots, plane, ratio)
-        for row, (word, snapshot) in enumerate(views):
-            put_projection(panels[row, column], snapshot, frames[row], plane, ratio)
-            if column == 0:
-                panels[row, 0].set_title(
-                    f"{word}: t = {in_words(snapshot.time, 's', 4)}, {counted(len(snapshot.id))}"
-                )
+    rows = cloud_frames([view for _, view in views])
+    for row, (word, snapshot) in enumerate(views):
+        for column, plane in enumerate((SIDE, FRONT)):
+            put_projection(panels[row, column], snapshot, rows[row][column], plane, RATIOS[column])
+        panels[row, 0].set_title(
+            f"{word}: t = {in_words(snapshot.time, 's', 4)}, {counted(len(snapshot.id))}"
+        )
     return figure
 
 
-def plane_frames(snapshots: list[Snapshot], plane: tuple[int, int], ratio: float) -> list[Frame]:
-    """The axes of each snapshot in a plane: the same for all where they can be compared so."""
-    across, up = ([_limits(view, axis) for view in snapshots] for axis in plane)
-    if all(_span(joined(limits)) <= ALIKE * min(map(_span, limits)) for limits in (across, up)):
-        across, up = ([joined(limits)] * len(snapshots) for limits in (across, up))
-    return [frame(*limits, ratio) for limits in zip(across, up, strict=True)]
+def cloud_frames(snapshots: Sequence[Snapshot]) -> list[tuple[Frame, Frame]]:
+    """The axes of each snapshot, from the side and along z.
+
+    They are the same for all snapshots where these can be compared so.
+    """
+    columns = [_comparable([_limits(view, plane) for view in snapshots]) for plane in (SIDE, FRONT)]
+    frames = []
+    for side, front in zip(*columns, strict=True):
+        size = common_size([*side, *front])
+        frames.append(
+            (
+                frame(side[0], side[1], RATIOS[0], size),
+                frame(front[0], front[1], RATIOS[1], size),
+            )
+        )
+    return frames
 
 
 def put_projection(
@@ -68,23 +80,20 @@ def put_projection(
     put_frame(axes, shown, (AXES[plane[0]], AXES[plane[1]]), ratio)
     if len(snapshot.id) <= MOST_NAMED:
         put_names(axes, snapshot.id, across, up, ratio)
-    if not shown.true:
-        axes.text(
-            0.99,
-            0.01,
-            "axes not to one scale",
-            transform=axes.transAxes,
-            ha="right",
-            va="bottom",
-            fontsize=SMALL_SIZE - 1.0,
-            color=PALE,
-        ).set_in_layout(False)
 
 
-def _limits(snapshot: Snapshot, axis: int) -> Interval:
-    """Limits along an axis; a cloud without width there gets that of its longest side."""
-    spans = np.ptp(snapshot.position, axis=0)
-    return interval(snapshot.position[:, axis], least=float(spans.max()))
+def _limits(snapshot: Snapshot, plane: tuple[int, int]) -> tuple[Interval, Interval]:
+    reach = float(np.ptp(snapshot.position, axis=0).max())
+    return plane_limits(snapshot.position[:, plane[0]], snapshot.position[:, plane[1]], reach)
+
+
+def _comparable(limits: list[tuple[Interval, Interval]]) -> list[tuple[Interval, Interval]]:
+    """The limits, made the same where each is a good part of what holds them all."""
+    whole = [joined(sides) for sides in zip(*limits, strict=True)]
+    for side, both in zip(zip(*limits, strict=True), whole, strict=True):
+        if _span(both) > ALIKE * min(map(_span, side)):
+            return limits
+    return [(whole[0], whole[1])] * len(limits)
 
 
 def _span(limits: Interval) -> float:

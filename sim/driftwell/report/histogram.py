@@ -8,28 +8,33 @@ import numpy as np
 from matplotlib.axes import Axes
 from numpy.typing import NDArray
 
-from driftwell.report.ruler import Ruler
+from driftwell.report.panel import put_up
+from driftwell.report.ruler import Ruler, in_words, interval, ruler
 
 Floats = NDArray[np.float64]
 
 FEWEST, MOST = 10, 80
 
 
-def bins(times: Floats, low: float, high: float) -> Floats:
+def bins(events: int, low: float, high: float) -> Floats:
     """Edges of equal stretches from `low` to `high`, more of them where there are more events."""
-    count = min(max(int(2.0 * times.size**0.5), FEWEST), MOST)
+    count = min(max(int(2.0 * events**0.5), FEWEST), MOST)
     return np.linspace(low, high, count + 1)
 
 
 def put_histogram(
-    axes: Axes, groups: Sequence[tuple[Floats, str]], edges: Floats, times: Ruler
+    axes: Axes, groups: Sequence[tuple[Floats, str]], times: Ruler, name: str
 ) -> None:
-    """Draw the number of events in each stretch; `groups` : times in s, and a colour."""
+    """Draw the number of events in each stretch; `groups` : times in s, and a colour.
+
+    `name` : of the events, in the plural
+    """
+    edges = bins(sum(values.size for values, _ in groups), times.low, times.high)
     base = np.zeros(len(edges) - 1)
-    shown = times.shown(edges)
+    places = times.shown(edges)
     for values, colour in groups:
         top = base + np.histogram(values, edges)[0]
-        axes.stairs(top, shown, baseline=base, fill=True, color=colour, alpha=0.85, linewidth=0.0)
+        axes.stairs(top, places, baseline=base, fill=True, color=colour, alpha=0.85, linewidth=0.0)
         base = top
-    axes.set_ylim(0.0, 1.06 * max(float(base.max()), 1.0))
-    axes.yaxis.get_major_locator().set_params(integer=True)
+    shown = ruler(interval([float(base.max()), 1.0], zero=True), "")
+    put_up(axes, shown, f"{name} per {in_words(float(edges[1] - edges[0]), 's')}", whole=True)

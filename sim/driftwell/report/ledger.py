@@ -12,7 +12,8 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, NullLocator
 from numpy.typing import NDArray
 
 from driftwell.constants import ELEMENTARY_CHARGE
-from driftwell.report.palette import BLACK, BLUE, GREEN, ORANGE, PURPLE, SKY, VERMILLION
+from driftwell.report.palette import BLACK, BLUE, GREEN, INK, ORANGE, PURPLE, VERMILLION
+from driftwell.report.panel import put_up
 from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import sheet
@@ -25,9 +26,9 @@ RESIDUALS = (
     ("momentum", "momentum_residual", BLUE, BROAD),
     ("angular momentum", "angular_residual", GREEN, MIDDLE),
     ("third law", "third_law_residual", PURPLE, NARROW),
-    ("charge", "charge_residual", ORANGE, BROAD),
-    ("count", "count_residual", SKY, NARROW),
 )
+BOOKED = (("charge", "charge_residual"), ("count", "count_residual"))
+"""Sums of a few numbers: closed to rounding or plainly wrong, so said in words only."""
 ENERGIES = (
     ("kinetic", "kinetic", VERMILLION, BROAD),
     ("in fields", "field", BLUE, MIDDLE),
@@ -38,6 +39,8 @@ ENERGIES = (
 )
 ROUNDING = 1e-16
 """Where the axis of residuals begins if all of them are zero."""
+MOST_ELECTRONVOLTS = 1e12
+"""Energies up to this are shown in electronvolts, beyond it in joules."""
 MOST_TICKS = 9
 
 
@@ -91,24 +94,30 @@ def put_residuals(axes: Axes, ledger: NDArray[np.void], times: Ruler) -> None:
             put_line(axes, across, np.full(len(zero), 10.0**floor), colour, width=width)
         else:
             put_line(axes, across, np.where(zero, np.nan, values), colour, width=width)
-            axes.plot(across[zero], np.full(zero.sum(), 10.0**floor), ".", color=colour)
-        most = np.nanmax(values) if np.isfinite(values).any() else math.nan
-        entries.append((f"{name}: {most:.1e} at most" if most else f"{name}: 0", colour, width))
+            axes.plot(
+                across[zero], np.full(zero.sum(), 10.0**floor), ".", color=colour, markersize=3.0
+            )
+        entries.append((_at_most(name, values), colour, width))
+    entries += [(_at_most(name, np.abs(ledger[column])), INK, 0.0) for name, column in BOOKED]
     _beside(axes, entries)
 
 
 def put_energies(axes: Axes, ledger: NDArray[np.void], times: Ruler) -> None:
     """The energies that are not zero throughout."""
     found = [
-        (name, ledger[column] / ELEMENTARY_CHARGE, colour, width)
+        (name, ledger[column], colour, width)
         for name, column, colour, width in ENERGIES
         if np.any(ledger[column] != 0.0)
     ]
-    shown = ruler(interval([values for _, values, *_ in found], zero=True), "eV")
+    limits = interval([values for _, values, *_ in found], zero=True)
+    electronvolts = max(map(abs, limits)) < MOST_ELECTRONVOLTS * ELEMENTARY_CHARGE
+    scale, unit = (ELEMENTARY_CHARGE, "eV") if electronvolts else (1.0, "J")
+    shown = ruler((limits[0] / scale, limits[1] / scale), unit)
     for _, values, colour, width in found:
-        put_line(axes, times.shown(ledger["time"]), shown.shown(values), colour, width=width)
-    axes.set_ylim(*shown.limits)
-    axes.set_ylabel(shown.label("energy"))
+        put_line(
+            axes, times.shown(ledger["time"]), shown.shown(values / scale), colour, width=width
+        )
+    put_up(axes, shown, "energy")
     axes.set_title("energies of all charges")
     _beside(axes, [(name, colour, width) for name, _, colour, width in found])
 
@@ -125,3 +134,11 @@ def _beside(axes: Axes, entries: list[tuple[str, str, float]]) -> None:
             borderaxespad=0.0,
             handlelength=2.6,
         )
+
+
+def _at_most(name: str, values: Floats) -> str:
+    """The largest residual, in words."""
+    finite = values[np.isfinite(values)]
+    if finite.size < values.size:
+        return f"{name}: not a number"
+    return f"{name}: {finite.max():.1e} at most" if finite.any() else f"{name}: 0"

@@ -7,16 +7,19 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
-from driftwell.report.histogram import bins, put_histogram
+from driftwell.report.histogram import put_histogram
 from driftwell.report.palette import INK, colour, marker
-from driftwell.report.projection import MOST_DOTS, frame, put_frame
+from driftwell.report.panel import put_up
+from driftwell.report.projection import MOST_DOTS, frame, plane_limits, put_frame
 from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
-from driftwell.report.sheet import Entry, sheet
+from driftwell.report.sheet import Entry, printable, sheet
 from driftwell.report.time_axis import put_time, time_ruler
 
 Floats = NDArray[np.float64]
 
+PART = 0.25
+"""Losses in less than this part of the run are shown without the rest of it."""
 SIDE_RATIO, FRONT_RATIO = 2.0, 1.0
 
 
@@ -28,17 +31,29 @@ def losses_picture(scene: Scene) -> Figure | None:
     header = scene.run.header
     walls, counts = np.unique(losses["wall"], return_counts=True)
     key = [
-        Entry(f"{header.walls[wall]}: {count} lost", colour(int(wall)), marker(int(wall)))
+        Entry(
+            f"{printable(header.walls[wall], 40)}: {count} lost",
+            colour(int(wall)),
+            marker(int(wall)),
+        )
         for wall, count in zip(walls, counts, strict=True)
     ]
     figure = sheet(scene.run, 9.6, 7.3, key)
     grid = figure.add_gridspec(2, 6)
     put_places(figure.add_subplot(grid[0, :4]), losses, side=True)
     put_places(figure.add_subplot(grid[0, 4:]), losses, side=False)
-    times = time_ruler([0.0, scene.run.end_time])
+    times = loss_times(losses, scene.run.end_time)
     put_rate(figure.add_subplot(grid[1, :3]), losses, times)
     put_share(figure.add_subplot(grid[1, 3:]), scene, times)
     return figure
+
+
+def loss_times(losses: NDArray[np.void], end: float) -> Ruler:
+    """The time axis: the whole run, or when charges were lost if that is a small part of it."""
+    low, high = interval(losses["time"])
+    if high - low > PART * end:
+        return time_ruler([0.0, end])
+    return ruler((max(low, 0.0), min(high, end)), "s")
 
 
 def put_places(axes: Axes, losses: NDArray[np.void], side: bool) -> None:
@@ -47,8 +62,7 @@ def put_places(axes: Axes, losses: NDArray[np.void], side: bool) -> None:
     across, up = (z, np.hypot(x, y)) if side else (x, y)
     ratio = SIDE_RATIO if side else FRONT_RATIO
     reach = float(max(map(np.ptp, (x, y, z)))) or float(np.abs(losses["position"]).max())
-    limits = interval(across, least=reach), interval(up, least=reach, zero=side)
-    shown = frame(*limits, ratio)
+    shown = frame(*plane_limits(across, up, reach, up_from_zero=side), ratio)
     put_frame(axes, shown, ("z", "distance from z axis") if side else ("x", "y"), ratio)
     size = 4.0 if len(losses) <= 300 else 2.4
     for wall in np.unique(losses["wall"]):
@@ -73,9 +87,8 @@ def put_rate(axes: Axes, losses: NDArray[np.void], times: Ruler) -> None:
         (losses["time"][losses["wall"] == wall], colour(int(wall)))
         for wall in np.unique(losses["wall"])
     ]
-    put_histogram(axes, groups, bins(losses["time"], times.low, times.high), times)
+    put_histogram(axes, groups, times, "charges lost")
     put_time(axes, times)
-    axes.set_ylabel("charges lost in each stretch")
     axes.set_title("when")
 
 
@@ -97,7 +110,6 @@ def put_share(axes: Axes, scene: Scene, times: Ruler) -> None:
         axes.plot(
             times.shown(time), steps, color=look, linewidth=width, drawstyle="steps-post", alpha=0.9
         )
-    axes.set_ylim(*shown.limits)
+    put_up(axes, shown, "part of all charges (%)")
     put_time(axes, times)
-    axes.set_ylabel("part of all charges (%)")
     axes.set_title("lost so far" + (", black: on all walls" if len(walls) > 1 else ""))

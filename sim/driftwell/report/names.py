@@ -12,45 +12,41 @@ Floats = NDArray[np.float64]
 
 MOST_NAMED = 50
 """More charges than this stay without names."""
-NEAR = (0.075, 0.04)
+NEAR = (0.08, 0.045)
 """Parts of a square panel's width and height within which two names would be on each other."""
-MOST_LISTED = 4
+MOST_LISTED = 3
+EDGES = (0.8, 0.93)
+"""Parts of the width and the height beyond which a name stands on the inner side of its charge."""
 
 
 def put_names(axes: Axes, ids: NDArray[np.int64], across: Floats, up: Floats, ratio: float) -> None:
-    """Write the ids beside charges at these values along the axes of a panel."""
+    """Write the ids beside charges at these values along the axes of a panel with limits."""
     (left, right), (bottom, top) = axes.get_xlim(), axes.get_ylim()
-    places = np.stack(
-        [
-            (across - left) / (right - left) / NEAR[0] * ratio,
-            (up - bottom) / (top - bottom) / NEAR[1],
-        ]
-    )
-    for members in _groups(places):
-        k = members[0]
-        edge = (across[k] - left) / (right - left) > 0.85
+    places = np.stack([(across - left) / (right - left), (up - bottom) / (top - bottom)])
+    for members in groups(places / np.array([[NEAR[0] / ratio], [NEAR[1]]])):
+        beside, above = places[:, members[0]]
         axes.annotate(
             _listed(ids[members]),
             (float(across[members].mean()), float(up[members].mean())),
-            xytext=(-5 if edge else 5, 4),
+            xytext=(-5 if beside > EDGES[0] else 5, -5 if above > EDGES[1] else 4),
             textcoords="offset points",
-            ha="right" if edge else "left",
+            ha="right" if beside > EDGES[0] else "left",
+            va="top" if above > EDGES[1] else "bottom",
             fontsize=SMALL_SIZE,
-            annotation_clip=True,
         ).set_in_layout(False)
 
 
-def _groups(places: Floats) -> list[list[int]]:
-    """Rows of those whose names would be on each other: each near the first of its group."""
-    groups: list[list[int]] = []
+def groups(places: Floats) -> list[list[int]]:
+    """Columns of `places` (2, n) whose names would be on each other: each near its first one."""
+    found: list[list[int]] = []
     for k in range(places.shape[1]):
-        for group in groups:
+        for group in found:
             if np.all(np.abs(places[:, group[0]] - places[:, k]) < 1.0):
                 group.append(k)
                 break
         else:
-            groups.append([k])
-    return groups
+            found.append([k])
+    return found
 
 
 def _listed(ids: NDArray[np.int64]) -> str:

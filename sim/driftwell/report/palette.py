@@ -9,6 +9,10 @@ does not stand out from white paper.
 
 from __future__ import annotations
 
+from typing import Literal
+
+Line = Literal["-", "--", "-.", ":", ""]
+
 BLUE = "#0072b2"
 VERMILLION = "#d55e00"
 GREEN = "#009e73"
@@ -19,7 +23,7 @@ BLACK = "#000000"
 
 COLOURS = (BLUE, VERMILLION, GREEN, PURPLE, ORANGE, SKY, BLACK)
 MARKERS = ("o", "^", "s", "D", "v", "P", "X")
-LINES = ("-", "--", "-.", ":")
+LINES: tuple[Line, ...] = ("-", "--", "-.", ":")
 
 INK = "#222222"
 PALE = "#8a8a8a"
@@ -35,6 +39,6 @@ def marker(number: int) -> str:
     return MARKERS[number // len(COLOURS) % len(MARKERS)]
 
 
-def line_style(number: int) -> str:
+def line_style(number: int) -> Line:
     """Its kind of line: another one each time all colours have been used."""
     return LINES[number // len(COLOURS) % len(LINES)]

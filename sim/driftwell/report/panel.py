@@ -7,7 +7,7 @@ from matplotlib.ticker import MaxNLocator
 
 from driftwell.report.ruler import Ruler
 
-ROUND = (1, 2, 5, 10)
+ROUND = (1, 2, 2.5, 5, 10)
 ACROSS_MOST, UP_MOST = 8, 7
 """Most numbers along an axis."""
 

@@ -19,10 +19,11 @@ from numpy.typing import NDArray
 from driftwell.answers.evidence import Snapshot
 from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.report.palette import INK, colour
+from driftwell.report.panel import put_across, put_up
 from driftwell.report.projection import cloud_key, counted, put_dots
 from driftwell.report.ruler import in_words, interval, ruler
 from driftwell.report.scene import Scene
-from driftwell.report.sheet import sheet
+from driftwell.report.sheet import Entry, sheet
 
 Floats = NDArray[np.float64]
 
@@ -50,23 +51,36 @@ class Plane:
 
 
 def phase_space_picture(scene: Scene) -> Figure | None:
-    """Start and end, one above the other; None where no cloud has enough charges."""
+    """Start and end, one above the other.
+
+    What has too few charges, or all at one velocity, is left out; None where that is both.
+    """
     views = [
         (word, view)
         for word, view in scene.views
         if np.unique(view.cloud, return_counts=True)[1].max() >= LEAST
+        and np.any(np.ptp(view.velocity, axis=0) > 0.0)
     ]
     if not views:
         return None
-    figure = sheet(scene.run, 9.6, 0.9 + 3.2 * len(views), cloud_key(scene.clouds))
-    panels = figure.subplots(len(views), 3, squeeze=False)
     flight = {flight_axis(view) for _, view in views}
     along = flight.pop() if len(flight) == 1 else None
+    key = [*cloud_key(scene.clouds), Entry("rms ellipse", INK, line="-")]
+    if along is not None:
+        across = AXES[along - 2]
+        key.append(Entry(f"{across}′: slope u{across} / u{AXES[along]}", INK))
+    key.append(Entry("u: proper velocity", INK))
+    figure = sheet(scene.run, 9.6, 0.9 + 3.2 * len(views), key)
+    panels = figure.subplots(len(views), 3, squeeze=False)
     for row, (word, view) in enumerate(views):
-        for axis in range(3):
-            notes = put_plane(panels[row, axis], view, axis, plane_of(view, axis, along))
-            head = f"{word}: t = {in_words(view.time, 's', 4)}, {counted(len(view.id))}"
-            panels[row, axis].set_title(f"{head if axis == 0 else ''}\n{notes}")
+        notes = [
+            put_plane(panels[row, axis], view, axis, plane_of(view, axis, along))
+            for axis in range(3)
+        ]
+        head = f"{word}: t = {in_words(view.time, 's', 4)}, {counted(len(view.id))}"
+        for axis, note in enumerate(notes):
+            first = head if axis == 0 else ""
+            panels[row, axis].set_title(f"{first}\n{note}" if any(notes) else first)
     return figure
 
 
@@ -106,10 +120,8 @@ def put_plane(axes: Axes, snapshot: Snapshot, axis: int, plane: Plane) -> str:
         plane.unit,
     )
     put_dots(axes, snapshot, across.shown(place), up.shown(plane.up), 0.8)
-    axes.set_xlim(*across.limits)
-    axes.set_ylim(*up.limits)
-    axes.set_xlabel(across.label(AXES[axis]))
-    axes.set_ylabel(up.label(plane.name))
+    put_across(axes, across, AXES[axis], 6)
+    put_up(axes, up, plane.name)
     clouds = np.unique(snapshot.cloud)
     note = ""
     for cloud in clouds if len(clouds) <= MOST_ELLIPSES else ():

@@ -10,17 +10,21 @@ from matplotlib.axes import Axes
 from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts, Snapshot
-from driftwell.report.palette import PALE, colour, line_style, marker
+from driftwell.report.palette import colour, line_style, marker
 from driftwell.report.panel import put_across, put_up
-from driftwell.report.ruler import Interval, Ruler, prefix_size, ruler, widened
-from driftwell.report.sheet import SMALL_SIZE, Entry
+from driftwell.report.ruler import THIN, Interval, Ruler, interval, ruler, widened
+from driftwell.report.sheet import Entry, printable
 
 Floats = NDArray[np.float64]
 
 MOST_DOTS = 20_000
 """More charges than this are thinned out evenly."""
+FEW = 1000
+"""Clouds up to this are never thinned."""
 UNLIKE = 4.0
 """A panel keeps both axes to one scale where that leaves at least one part in so many filled."""
+LEGIBLE = 0.2
+"""An axis whose numbers are all below this part of the unit needs a smaller unit."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,21 +36,38 @@ class Frame:
     true: bool
 
 
-def frame(across: Interval, up: Interval, ratio: float) -> Frame:
+def plane_limits(
+    across: Floats, up: Floats, reach: float, up_from_zero: bool = False
+) -> tuple[Interval, Interval]:
+    """Limits, m, that hold points in a plane.
+
+    A side without width gets that of the other side, and if that has none either, `reach`.
+    """
+    wide, high = (
+        span if span > THIN * reach else reach
+        for span in (float(np.ptp(side)) for side in (across, up))
+    )
+    return interval(across, least=high), interval(up, least=wide, zero=up_from_zero)
+
+
+def frame(across: Interval, up: Interval, ratio: float, size: float | None = None) -> Frame:
     """Axes for lengths in m within a panel `ratio` times as wide as high, to one scale if sensible.
 
-    Limits are widened, never narrowed.
+    Limits are widened, never narrowed. `size` : see :func:`driftwell.report.ruler.ruler`.
     """
     wide, high = across[1] - across[0], up[1] - up[0]
     true = wide <= UNLIKE * ratio * high and ratio * high <= UNLIKE * wide
-    if not true:
-        return Frame(ruler(across, "m"), ruler(up, "m"), true)
-    across, up = widened(across, ratio * high), widened(up, wide / ratio)
-    first, second = ruler(across, "m"), ruler(up, "m")
-    size = prefix_size(
-        max(abs(end - each.origin) for each in (first, second) for end in (each.low, each.high))
-    )
+    if true:
+        across, up = widened(across, ratio * high), widened(up, wide / ratio)
+        size = size or max(ruler(limits, "m").size for limits in (across, up))
     return Frame(ruler(across, "m", size), ruler(up, "m", size), true)
+
+
+def common_size(limits: Sequence[Interval]) -> float | None:
+    """The size in which all these lengths can be shown, None where they are too different."""
+    size = max(ruler(each, "m").size for each in limits)
+    narrowest = min(high - low for low, high in limits)
+    return size if narrowest >= LEGIBLE * size else None
 
 
 def put_frame(axes: Axes, shown: Frame, names: tuple[str, str], ratio: float) -> None:
@@ -55,16 +76,7 @@ def put_frame(axes: Axes, shown: Frame, names: tuple[str, str], ratio: float) ->
     put_up(axes, shown.up, names[1], 6)
     axes.set_box_aspect(1.0 / ratio)
     if not shown.true:
-        axes.text(
-            0.99,
-            0.01,
-            "axes not to one scale",
-            transform=axes.transAxes,
-            ha="right",
-            va="bottom",
-            fontsize=SMALL_SIZE - 1.0,
-            color=PALE,
-        ).set_in_layout(False)
+        axes.set_xlabel(f"{axes.get_xlabel()}, not to scale")
 
 
 def put_dots(axes: Axes, snapshot: Snapshot, across: Floats, up: Floats, size: float = 1.0) -> None:
@@ -73,7 +85,8 @@ def put_dots(axes: Axes, snapshot: Snapshot, across: Floats, up: Floats, size: f
     every = thinning(count)
     width, alpha = _dot(-(-count // every))
     for cloud in np.unique(snapshot.cloud):
-        own = np.flatnonzero(snapshot.cloud == cloud)[::every]
+        own = np.flatnonzero(snapshot.cloud == cloud)
+        own = own if own.size <= FEW else own[::every]
         axes.plot(
             across[own],
             up[own],
@@ -95,7 +108,7 @@ def cloud_key(clouds: Sequence[CloudFacts], lines: bool = False) -> list[Entry]:
     """The key to the colours of clouds, drawn as dots or as lines."""
     return [
         Entry(
-            f"{cloud.name}: {cloud.count} {cloud.species}"
+            f"{printable(cloud.name, 24)}: {cloud.count} {printable(cloud.species, 24)}"
             + (f", each standing for {cloud.weight:.4g}" if cloud.weight != 1.0 else ""),
             colour(cloud.index),
             "" if lines else marker(cloud.index),
@@ -109,7 +122,7 @@ def counted(number: int) -> str:
     """``1 charge``, ``400 charges``, and how many of them are drawn."""
     said = f"{number} charge{'s' * (number != 1)}"
     every = thinning(number)
-    return said if every == 1 else f"{said}, one in {every} drawn"
+    return said if every == 1 else f"{said}, thinned to one in {every}"
 
 
 def _dot(count: int) -> tuple[float, float]:

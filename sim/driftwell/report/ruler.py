@@ -96,9 +96,10 @@ def interval(
 
 
 def widened(limits: Interval, span: float) -> Interval:
-    """Limits about the same middle, at least `span` apart."""
+    """Limits about the same middle, at least `span` apart; those that begin at zero still do."""
     missing = max(span - (limits[1] - limits[0]), 0.0)
-    return limits[0] - 0.5 * missing, limits[1] + 0.5 * missing
+    below = 0.0 if limits[0] == 0.0 else 0.5 * missing
+    return limits[0] - below, limits[1] + missing - below
 
 
 def joined(intervals: Iterable[Interval]) -> Interval:
@@ -138,7 +139,7 @@ def in_words(value: float, unit: str, digits: int = 3) -> str:
 
 
 def _origin(low: float, high: float, unit: str) -> tuple[float, str]:
-    """The round value an axis is shown from, and its text; zero and no text where none is needed."""
+    """The round value an axis is shown from, and its text; none where zero will do."""
     middle, span = 0.5 * (low + high), high - low
     if span >= FAR * abs(middle):
         return 0.0, ""

@@ -74,7 +74,7 @@ def _ends(run: Run) -> tuple[Snapshot | None, Snapshot | None]:
 
 
 def _sealed(run: Run) -> Snapshot | None:
-    """The charges in the state a run was sealed with, for one that was stopped between snapshots."""
+    """The charges a run was sealed with, for one that was stopped between two snapshots."""
     state = run.state()
     if "particles/position" not in state:
         return None
@@ -92,7 +92,7 @@ def _sealed(run: Run) -> Snapshot | None:
 
 
 def _held(snapshot: Snapshot | None) -> Snapshot | None:
-    """The snapshot without charges whose place or velocity is no number; None where none is left."""
+    """The snapshot without charges whose place or velocity is no number, None if all are such."""
     if snapshot is None:
         return None
     sound = np.isfinite(snapshot.position).all(axis=1) & np.isfinite(snapshot.velocity).all(axis=1)

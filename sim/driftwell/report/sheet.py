@@ -16,13 +16,14 @@ from io import BytesIO
 from typing import Any
 
 import matplotlib.style
+import numpy as np
 from matplotlib.figure import Figure
 from matplotlib.font_manager import FontProperties, findfont, get_font
 from matplotlib.layout_engine import ConstrainedLayoutEngine
 from matplotlib.lines import Line2D
 
 from driftwell.record.reader import Run
-from driftwell.report.palette import INK, PALE
+from driftwell.report.palette import INK, PALE, Line
 from driftwell.report.ruler import in_words
 
 FONT = "DejaVu Sans"
@@ -32,7 +33,11 @@ EDGE = 0.08
 """Free paper at the edges, inches."""
 LINE_HEIGHT = 1.45 / 72.0
 """Height of a line of text, inches for each point of its size."""
-KEY_LONGEST, KEY_MOST = 44, 14
+LETTER_WIDTH = 0.6 / 72.0
+"""Width of a letter, inches for each point of its size; few words are wider."""
+HANDLE_WIDTH = 0.62
+"""Width of what stands before an entry of the key and after it, inches."""
+KEY_LONGEST, KEY_MOST = 90, 14
 """Characters of an entry of the key, and entries."""
 
 _STYLE: dict[str, Any] = {
@@ -70,13 +75,13 @@ class Entry:
     label: str
     colour: str
     marker: str = ""
-    line: str = ""
+    line: Line = ""
     width: float = 1.3
 
 
 def style() -> AbstractContextManager[None]:
     """While inside, figures are made and drawn in the one style of all pictures."""
-    return matplotlib.style.context(["default", _STYLE])  # type: ignore[list-item]
+    return matplotlib.style.context(["default", _STYLE])
 
 
 def sheet(run: Run, width: float, height: float, key: Sequence[Entry] = ()) -> Figure:
@@ -131,7 +136,7 @@ def _letters() -> frozenset[int]:
 def _title(figure: Figure, title: str) -> float:
     """Put the title at the top, in two lines at most; returns their height, inches."""
     width, height = figure.get_size_inches()
-    room = int((width - 2.0 * EDGE) * 72.0 / (0.68 * TITLE_SIZE))
+    room = int((width - 2.0 * EDGE) * 72.0 / (0.6 * TITLE_SIZE))
     lines = textwrap.wrap(printable(title), room, max_lines=2, placeholder=" …") or [""]
     text = figure.text(
         EDGE / width,
@@ -170,8 +175,7 @@ def _key(figure: Figure, key: Sequence[Entry], top: float) -> float:
         labels.append(f"and {len(key) - KEY_MOST} more")
         handles.append(Line2D([], [], linestyle="none"))
     width, height = figure.get_size_inches()
-    column = 0.55 + max(map(len, labels)) * 0.62 * SMALL_SIZE / 72.0
-    columns = min(max(int((width - 2.0 * EDGE) / column), 1), len(labels))
+    columns = _columns([len(label) for label in labels], width - 2.0 * EDGE)
     # A label beginning with "_" would be left out, so the texts are put in afterwards.
     legend = figure.legend(
         handles,
@@ -189,6 +193,15 @@ def _key(figure: Figure, key: Sequence[Entry], top: float) -> float:
     for text, label in zip(legend.get_texts(), labels, strict=True):
         text.set_text(label)
     return math.ceil(len(labels) / columns) * LINE_HEIGHT * SMALL_SIZE + 0.3 * EDGE
+
+
+def _columns(lengths: Sequence[int], room: float) -> int:
+    """How many columns of entries with so many letters fit side by side into `room` inches."""
+    for columns in range(len(lengths), 1, -1):
+        widest = [max(part) for part in np.array_split(np.array(lengths), columns)]
+        if sum(widest) * LETTER_WIDTH * SMALL_SIZE + columns * HANDLE_WIDTH <= room:
+            return columns
+    return 1
 
 
 def _provenance(run: Run) -> str:

@@ -83,7 +83,7 @@ def sizes_picture(scene: Scene) -> Figure | None:
             panels = [figure.add_subplot(grid[row, column]) for column in range(columns)]
             put_quantity(panels, sized, times, (name, unit), quantity, alone)
             for panel in panels:
-                put_time(panel, times, sized[0][1].time, labelled=not alone and row == 1)
+                put_time(panel, times, labelled=not alone and row == 1)
     left = figure.add_subplot(grid[rows - 1, :])
     put_counts(left, kept, times, alone)
     return figure
@@ -130,7 +130,7 @@ def put_quantity(
     every = [curve.value for axis in curves for curve in axis]
     name, unit = named
     for column, panel in enumerate(panels):
-        shown = put_amounts(panel, every, unit, name if alone else f"{name}, {AXES[column]}")
+        shown = put_amounts(panel, every, unit, name if alone else f"{name} {AXES[column]}")
         for curve in (each for axis in curves for each in axis) if alone else curves[column]:
             across, up = times.shown(curve.time), shown.shown(curve.value)
             put_line(panel, across, up, curve.colour, curve.line, curve.width)

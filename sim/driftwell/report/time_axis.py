@@ -15,7 +15,7 @@ from driftwell.report.ruler import Ruler, in_words, interval, prefix_size, ruler
 
 Floats = NDArray[np.float64]
 
-FEW = 60
+FEW = 20
 """Up to so many records each is marked."""
 BROAD, MIDDLE, NARROW = 1.9, 1.3, 0.8
 """Widths of lines that may lie on one another, drawn in this order."""

@@ -10,17 +10,21 @@ from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
 from driftwell.report.palette import colour
-from driftwell.report.projection import frame, put_frame
+from driftwell.report.panel import put_up
+from driftwell.report.projection import frame, plane_limits, put_frame
 from driftwell.report.ruler import interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import Entry, sheet
-from driftwell.report.time_axis import MIDDLE, put_line, put_time, time_ruler
+from driftwell.report.time_axis import put_line, put_time, time_ruler
 
 Floats = NDArray[np.float64]
 
 AXES = "xyz"
 MOST = 6
 """Charges whose ways are drawn."""
+TURN = 0.7
+"""Change from one step to the next, over the step, from which points are not joined."""
+WIDTH = 1.0
 SIDE_RATIO, FRONT_RATIO = 1.5, 1.0
 
 
@@ -36,44 +40,67 @@ class Way:
 
 def trajectories_picture(scene: Scene) -> Figure | None:
     """None where no charge was tracked for two records."""
-    ways = [way for way in map(lambda charge: _way(scene, charge), _chosen(scene)) if way]
+    ways = [way for way in (_way(scene, charge) for charge in _chosen(scene)) if way]
     if not ways:
         return None
     key = [
-        Entry(f"charge {way.charge}{' (lost at ×)' if way.lost else ''}", colour(k), line="-")
+        Entry(f"charge {way.charge}{', lost at ×' if way.lost else ''}", colour(k), "o", "-")
         for k, way in enumerate(ways)
     ]
     figure = sheet(scene.run, 9.6, 6.9, key)
-    left, right = figure.add_gridspec(1, 2, width_ratios=[1.35, 1.0])
-    rows = left.subgridspec(3, 1)
-    times = time_ruler(np.concatenate([way.time for way in ways]))
+    halves = figure.add_gridspec(1, 2, width_ratios=[1.35, 1.0])
+    rows = halves[0].subgridspec(3, 1)
+    times = time_ruler([0.0, scene.run.end_time])
     places = np.concatenate([way.position for way in ways])
     reach = float(np.ptp(places, axis=0).max())
-    limits = [interval(places[:, axis], least=reach) for axis in range(3)]
     for axis in range(3):
         panel = figure.add_subplot(rows[axis])
-        shown = ruler(limits[axis], "m")
+        shown = ruler(interval(places[:, axis], least=reach), "m")
         for k, way in enumerate(ways):
-            put_way(panel, times.shown(way.time), shown.shown(way.position[:, axis]), k, way.lost)
-        panel.set_ylim(*shown.limits)
-        panel.set_ylabel(shown.label(AXES[axis]))
+            across, up = times.shown(way.time), shown.shown(way.position[:, axis])
+            put_line(panel, across, up, colour(k), width=WIDTH)
+            put_loss(panel, across, up, k, way.lost)
+        put_up(panel, shown, AXES[axis], 5)
         put_time(panel, times, scene.run.rows("trajectory/time"), labelled=axis == 2)
-    columns = right.subgridspec(2, 1, height_ratios=[1.0, SIDE_RATIO])
-    for row, (plane, ratio) in enumerate((((2, 0), SIDE_RATIO), ((0, 1), FRONT_RATIO))):
+    columns = halves[1].subgridspec(2, 1, height_ratios=[1.0, SIDE_RATIO])
+    for row, (first, second, ratio) in enumerate(((2, 0, SIDE_RATIO), (0, 1, FRONT_RATIO))):
         panel = figure.add_subplot(columns[row])
-        seen = frame(limits[plane[0]], limits[plane[1]], ratio)
-        for k, way in enumerate(ways):
-            across, up = (way.position[:, axis] for axis in plane)
-            put_way(panel, seen.across.shown(across), seen.up.shown(up), k, way.lost)
-        put_frame(panel, seen, (AXES[plane[0]], AXES[plane[1]]), ratio)
+        seen = frame(*plane_limits(places[:, first], places[:, second], reach), ratio)
+        paths = [
+            (seen.across.shown(way.position[:, first]), seen.up.shown(way.position[:, second]))
+            for way in ways
+        ]
+        joined = not any(jagged(*path) for path in paths)
+        for k, (way, path) in enumerate(zip(ways, paths, strict=True)):
+            put_path(panel, *path, k, joined)
+            put_loss(panel, *path, k, way.lost)
+        put_frame(panel, seen, (AXES[first], AXES[second]), ratio)
     return figure
 
 
-def put_way(axes: Axes, across: Floats, up: Floats, number: int, lost: bool) -> None:
-    """Draw a way, with a cross where it ended on a wall."""
-    put_line(axes, across, up, colour(number), width=MIDDLE - 0.3)
+def put_path(axes: Axes, across: Floats, up: Floats, number: int, joined: bool) -> None:
+    """Draw a way in space, a larger dot where it begins; `joined` : by lines between its points."""
+    look = colour(number)
+    if joined:
+        axes.plot(across, up, "-", color=look, linewidth=WIDTH, alpha=0.9)
+    else:
+        axes.plot(across, up, ".", color=look, markersize=3.6, alpha=0.8, markeredgewidth=0.0)
+    axes.plot(across[:1], up[:1], "o", color=look, markersize=4.5)
+
+
+def put_loss(axes: Axes, across: Floats, up: Floats, number: int, lost: bool) -> None:
+    """Put a cross where a way ended on a wall."""
     if lost:
-        axes.plot(across[-1:], up[-1:], "x", color=colour(number), markersize=6.0)
+        axes.plot(across[-1:], up[-1:], "x", color=colour(number), markersize=6.0, clip_on=False)
+
+
+def jagged(across: Floats, up: Floats) -> bool:
+    """Whether a way turns so much from point to point that lines between them would mislead."""
+    steps = np.diff(np.stack([across, up]))
+    if steps.shape[1] < 2:
+        return False
+    length, turn = (np.median(np.hypot(*each)) for each in (steps, np.diff(steps)))
+    return bool(turn > TURN * length)
 
 
 def _chosen(scene: Scene) -> list[int]:
