@@ -5,12 +5,16 @@ All settings are invented.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE
 from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
+from driftwell.forms import Form
 from driftwell.forms.body import Body
+from driftwell.walls.form import DetectorForm, WallForm
+from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
 
 BODIES = {
     "barium": Body("barium", 137.905 * ATOMIC_MASS, ELEMENTARY_CHARGE),
@@ -23,6 +27,23 @@ _KINDS = {kind.model_fields["kind"].annotation.__args__[0]: kind for kind in FIE
 def field(kind: str, **keys: Any) -> FieldForm:
     """A field as a scenario states it; its name is its kind where none is given."""
     return _KINDS[kind](**{"kind": kind, "name": kind, **keys})
+
+
+def _kinds(kinds: Sequence[type[Form]]) -> dict[str, Any]:
+    return {kind.model_fields["kind"].annotation.__args__[0]: kind for kind in kinds}
+
+
+_WALLS, _DETECTORS = _kinds(WALL_KINDS), _kinds(DETECTOR_KINDS)
+
+
+def wall(kind: str, **keys: Any) -> WallForm:
+    """A wall as a scenario states it; its name is its kind where none is given."""
+    return _WALLS[kind](**{"kind": kind, "name": kind, **keys})
+
+
+def detector(kind: str, **keys: Any) -> DetectorForm:
+    """A detector as a scenario states it; its name is its kind where none is given."""
+    return _DETECTORS[kind](**{"kind": kind, "name": kind, **keys})
 
 
 SINE = {"frequency": "1.1 MHz", "phase": "40 deg"}
@@ -130,4 +151,39 @@ FIELDS = [
         voltage={"amplitude": "-300 V", **SINE},
         centre=OFF_CENTRE,
     ),
+]
+
+WALLS = [
+    wall("cylinder", radius="3.5 mm"),
+    wall(
+        "cylinder",
+        name="cylinder along x, of a length",
+        radius="4 mm",
+        axis="x",
+        length="6 mm",
+        centre=OFF_CENTRE,
+    ),
+    wall("cylinder", name="cylinder along y", radius="4 mm", axis="y", centre=OFF_CENTRE),
+    wall("sphere", radius="5 mm", centre=OFF_CENTRE),
+    wall("box", size=["6 mm", "8 mm", "10 mm"], centre=OFF_CENTRE),
+    wall("plane", at=OFF_CENTRE),
+    wall(
+        "plane",
+        name="plane with a hole",
+        at=OFF_CENTRE,
+        normal=[1, 2, -2],
+        hole={"radius": "1 mm"},
+    ),
+    wall(
+        "plane",
+        name="plane with a slit",
+        at=OFF_CENTRE,
+        normal=[0, 3, 4],
+        slit={"width": "1.2 mm", "along": [1, 0, 0]},
+    ),
+]
+
+DETECTORS = [
+    detector("plane", at=OFF_CENTRE),
+    detector("plane", name="tilted disc", at=OFF_CENTRE, normal=[-2, 1, 2], radius="2 mm"),
 ]

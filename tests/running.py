@@ -32,11 +32,11 @@ class Unwatched:
         return True
 
 
-def carried_out(folder: Path, duration: float, **sections: Any) -> Run:
-    """The finished run of a scenario given by its sections; `duration` in s.
+def carried_out(folder: Path, duration: float, ending: str = "finished", **sections: Any) -> Run:
+    """The run of a scenario given by its sections; `duration` in s.
 
     Each call leaves a folder of its own in `folder`. Unless said otherwise there are two records,
-    at the start and at the end.
+    at the start and at the end. The run must come to the `ending` expected of it.
     """
     number = len(list(folder.glob("*.toml")))
     path = folder / f"scenario{number}.toml"
@@ -44,7 +44,7 @@ def carried_out(folder: Path, duration: float, **sections: Any) -> Run:
     table = {"title": "a check", "duration": whole, "record": {"every": whole}, **sections}
     path.write_text(toml_file(table))
     result = run(read_scenario(path), folder / f"run{number}", Unwatched())
-    assert result.outcome.word == "finished", result.outcome.sentence
+    assert ending == result.outcome.word, result.outcome.sentence
     return open_run(result.folder)
 
 

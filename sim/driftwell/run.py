@@ -5,7 +5,6 @@ The run itself prints nothing: an :class:`Observer` is told how far it is and ma
 
 from __future__ import annotations
 
-import math
 import time as clocks
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -16,39 +15,25 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.answers.answer import Answer, answer_all
-from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.answers.evidence import CloudFacts
 from driftwell.answers.moments import moments_of
+from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError, StepError
-from driftwell.fields.form import Role
-from driftwell.fields.table import field_tables
-from driftwell.forms.body import Body
-from driftwell.forms.waveforms import waveform_breaks
 from driftwell.ledger.ledger import Ledger, LedgerRow
-from driftwell.particles.species import bodies as known_bodies
-from driftwell.particles.state import Particles, joined
+from driftwell.particles.state import Particles
 from driftwell.record.header import Header, trace_name
 from driftwell.record.layout import dataset
 from driftwell.record.outcome import Outcome
 from driftwell.record.reader import open_run
-from driftwell.record.resume_state import particles_state
+from driftwell.record.resume_state import particles_of, particles_state
 from driftwell.record.writer import RunWriter
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
-from driftwell.stepping.loop import Events, TimeLoop, Traced
-from driftwell.stepping.motion import Fields
-from driftwell.stepping.schedule import BREAK, RECORD, SNAPSHOT, TRACE, Schedule, regular, schedule
-from driftwell.stepping.step_choice import (
-    Rate,
-    StepChoice,
-    chosen_step,
-    closest_pair_rates,
-    plasma_rates,
-)
-from driftwell.walls.table import sides, surface_table
+from driftwell.stepping.loop import Events
+from driftwell.stepping.schedule import RECORD, SNAPSHOT, Schedule
+from driftwell.stepping.step_choice import StepChoice
 
-DEFAULT_RECORDS = 200
 DEFAULT_TRACKS = 1000
-SAMPLES_PER_PERIOD = 20.0
 
 FINISHED, ALL_LOST, STOPPED, FAILED = "finished", "all lost", "stopped", "failed"
 EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5}
@@ -110,35 +95,18 @@ class _Execution:
     def __init__(
         self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
     ) -> None:
-        scenario = loaded.scenario
         self._began = clocks.monotonic()
+        parts = assembled(loaded)
+        scenario = parts.scenario
         self._scenario = scenario
         self._folder = folder
         self._observer = observer
-        bodies = known_bodies(scenario.species)
-        names = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
-        particles, self._clouds = _loaded_particles(loaded, bodies, names)
-        _check_births(scenario, particles)
-        self._born = len(particles)
-        requests = _traces(scenario)
-        self._choice, every = _steps(scenario, bodies, names, particles, requests)
-        self._schedule = _schedule(scenario, self._choice.step, bool(requests), every)
-        tables = field_tables(scenario.field, bodies)
-        self._loop = TimeLoop(
-            particles,
-            Fields(
-                electric=tables[Role.ELECTRIC],
-                uniform=tables[Role.UNIFORM_MAGNETIC],
-                magnetic=tables[Role.MAGNETIC],
-            ),
-            surface_table(scenario.wall, scenario.detector),
-            scenario.coulomb,
-            scenario.stepping,
-            self._schedule,
-            [_traced(request, self._clouds) for request in requests],
-            threads,
-        )
-        self._tracked = _tracked(scenario, particles)
+        self._clouds = parts.clouds
+        self._born = len(parts.particles)
+        self._choice = parts.choice
+        self._schedule = parts.schedule
+        self._tracked = _tracked(scenario, parts.particles)
+        self._loop = parts.time_loop(threads)
         self._writer = RunWriter.create(
             folder,
             Header(
@@ -146,26 +114,30 @@ class _Execution:
                 title=scenario.title,
                 seed=scenario.seed,
                 duration=scenario.duration,
-                step=self._choice.step,
+                step=parts.choice.step,
                 scheme=scenario.stepping.scheme,
                 softening=scenario.coulomb.softening,
-                clouds=tuple(self._clouds),
-                species=names,
+                clouds=parts.clouds,
+                species=parts.species,
                 walls=tuple(wall.name for wall in scenario.wall),
                 detectors=tuple(detector.name for detector in scenario.detector),
                 tracked=tuple(int(i) for i in self._tracked),
-                traces=tuple(trace_name(request) for request in requests),
+                traces=tuple(trace_name(request) for request in parts.requests),
             ),
         )
         self._ledger = Ledger()
         self._row: LedgerRow | None = None
         self._state: dict[str, Any] = {}
+        self._flags = 0
 
     def result(self) -> Result:
         """Go through all marks, then answer."""
         self._observer.begins(self._choice, self._schedule, self._loop.particles)
         flags = self._schedule.flags
-        word, sentence = FINISHED, f"The motion was followed to t = {self._scenario.duration:.6g} s."
+        word, sentence = (
+            FINISHED,
+            f"The motion was followed to t = {self._scenario.duration:.6g} s.",
+        )
         self._record(0)
         try:
             for mark in np.flatnonzero(flags & (RECORD | SNAPSHOT))[1:]:
@@ -184,6 +156,9 @@ class _Execution:
                     break
         except StepError as fault:
             word, sentence = FAILED, f"The motion could not be continued {fault}"
+        if word in {STOPPED, FAILED} and not self._flags & SNAPSHOT:
+            # questions about the end are answered for the last record
+            self._writer.snapshot(self._reached, particles_of(self._state))
         self._writer.seal(self._state)
         return self._finished(word, sentence)
 
@@ -210,7 +185,7 @@ class _Execution:
         """Keep what there is at a mark of the schedule."""
         loop, writer = self._loop, self._writer
         time = float(self._schedule.time[mark])
-        flags = int(self._schedule.flags[mark])
+        self._flags = flags = int(self._schedule.flags[mark])
         self._row = self._ledger.close(time, loop.plan, loop.charges, loop.work)
         writer.ledger(_ledger_row(self._row))
         for events in loop.take_events():
@@ -262,128 +237,6 @@ class _Execution:
         if self._row is None:
             raise ScenarioError("the run kept no record")
         return Result(self._folder, outcome, answers, self._row)
-
-
-def _loaded_particles(
-    loaded: LoadedScenario, bodies: dict[str, Body], names: Sequence[str]
-) -> tuple[Particles, list[CloudFacts]]:
-    """All charges at time zero, and the facts of their clouds."""
-    scenario = loaded.scenario
-    parts: list[Particles] = []
-    clouds: list[CloudFacts] = []
-    first_id = 0
-    for index, cloud in enumerate(scenario.cloud):
-        part = cloud.load(
-            scenario.seed,
-            bodies,
-            first_id,
-            index,
-            names.index(cloud.species),
-            loaded.folder,
-        )
-        body = bodies[cloud.species]
-        clouds.append(
-            CloudFacts(
-                cloud.name,
-                index,
-                cloud.species,
-                body.mass,
-                body.charge,
-                float(part.weight[0]),
-                first_id,
-                len(part),
-            )
-        )
-        parts.append(part)
-        first_id += len(part)
-    return joined(parts), clouds
-
-
-def _check_births(scenario: Scenario, particles: Particles) -> None:
-    """Refuse charges born outside a wall that encloses a space."""
-    side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
-    sides(surface_table(scenario.wall, ()), particles.position, side)
-    for wall, row in zip(scenario.wall, side, strict=True):
-        outside = np.flatnonzero(row < 0)
-        if wall.closed() and outside.size:
-            x, y, z = particles.position[:, outside[0]]
-            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
-            raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges begin outside '
-                f'the wall "{wall.name}", the first at ({x:.6g}, {y:.6g}, {z:.6g}) m; make the '
-                "cloud smaller, move it, or enlarge the wall."
-            )
-
-
-def _traces(scenario: Scenario) -> list[TraceRequest]:
-    """The coordinates all questions want traced, each once."""
-    requests: dict[str, TraceRequest] = {}
-    for question in scenario.question:
-        for request in question.needs(scenario.duration).traces:
-            name = trace_name(request)
-            known = requests.get(name)
-            if known is None or (request.every or math.inf) < (known.every or math.inf):
-                requests[name] = request
-    return list(requests.values())
-
-
-def _traced(request: TraceRequest, clouds: Sequence[CloudFacts]) -> Traced:
-    facts = next(cloud for cloud in clouds if cloud.name == request.cloud)
-    charge = None if request.charge is None else facts.first_id + request.charge
-    return Traced(facts.index, charge, request.axis)
-
-
-def _steps(
-    scenario: Scenario,
-    bodies: dict[str, Body],
-    names: Sequence[str],
-    particles: Particles,
-    requests: Sequence[TraceRequest],
-) -> tuple[StepChoice, float]:
-    """The step, and the time between samples of the traces."""
-    stepping = scenario.stepping
-    rates = [
-        Rate(f'{name} of field "{field.name}" on {species}', value)
-        for field in scenario.field
-        for species in names
-        for name, value in field.rates(bodies[species], bodies).items()
-    ]
-    fastest = max((rate.rate for rate in rates), default=0.0)
-    every = min((request.every for request in requests if request.every), default=math.inf)
-    if any(request.every is None for request in requests):
-        period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
-        every = min(every, period / SAMPLES_PER_PERIOD)
-    if stepping.step != "auto":
-        return StepChoice(float(stepping.step), "the scenario says so"), every
-    if scenario.coulomb.method != "off":
-        rates += plasma_rates(particles)
-        rates += closest_pair_rates(particles, scenario.coulomb.softening)
-    mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
-    return chosen_step(rates, stepping.steps_per_period, scenario.duration, mark), every
-
-
-def _schedule(scenario: Scenario, step: float, traced: bool, every: float) -> Schedule:
-    """All marks of the run."""
-    duration = scenario.duration
-    records = regular(scenario.record.every or duration / DEFAULT_RECORDS, duration)
-    snapshots = [np.array([0.0, duration])]
-    if scenario.record.snapshots is not None:
-        snapshots.append(regular(scenario.record.snapshots, duration))
-    for question in scenario.question:
-        snapshots.append(np.array(question.needs(duration).snapshots, dtype=np.float64))
-    breaks = [
-        waveform_breaks(field.waveform(), duration) for field in scenario.field
-    ]
-    marks: list[tuple[int, NDArray[np.float64]]] = [
-        (RECORD, records),
-        (SNAPSHOT, np.concatenate(snapshots)),
-        (BREAK, np.array([time for times in breaks for time in times])),
-    ]
-    if traced:
-        samples = regular(every, duration)
-        even = np.abs(np.diff(samples, prepend=-every) - every) < 1e-6 * every
-        marks.append((TRACE, samples[even]))
-    return schedule(duration, step, marks, scenario.stepping.coulomb_every)
 
 
 def _tracked(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:

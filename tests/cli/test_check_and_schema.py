@@ -6,11 +6,11 @@ import json
 from pathlib import Path
 
 import pytest
-from tests.scenario.good_scenarios import TRAP
 
 from driftwell.cli.check import check
 from driftwell.cli.schema import schema
 from driftwell.scenario.schema import json_schema
+from tests.scenario.good_scenarios import TRAP
 
 
 def test_a_good_scenario_is_explained_on_stdout(

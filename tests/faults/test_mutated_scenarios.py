@@ -11,11 +11,11 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from tests.scenario.good_scenarios import GOOD, toml_file
 
 from driftwell.errors import ScenarioError
 from driftwell.scenario.explain import explain
 from driftwell.scenario.read import read_scenario
+from tests.scenario.good_scenarios import GOOD, toml_file
 
 SEED = 20
 KEYS_SPOILED = 320

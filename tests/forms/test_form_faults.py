@@ -112,6 +112,19 @@ RING = {"kind": "ring", "inner": "1 mm", "outer": "2 mm"}
                 'unknown key here; "title" belongs at the top of the file, before any [table]',
             ),
         ),
+        ({"outer": 1}, ("outer", "", 'unknown key here; did you mean "ring.outer"?')),
+        (
+            {"spare": {"a": RING | {"title": "x"}}},
+            (
+                "spare.a.title",
+                "",
+                'unknown key here; "title" belongs at the top of the file, before any [table]',
+            ),
+        ),
+        (
+            {"part": [RODS | {"outer": "1 mm"}]},
+            ("part.0.outer", "", 'unknown key here; "outer" belongs in [ring]'),
+        ),
         (
             {"part": [{"kind": "rods"}]},
             ("part.0.radius", "", 'missing; needs a length such as "2 mm"'),

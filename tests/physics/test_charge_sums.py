@@ -11,7 +11,7 @@ import pytest
 from scipy.optimize import minimize
 
 from driftwell.constants import COULOMB_CONSTANT, ELEMENTARY_CHARGE, PROTON_MASS
-from driftwell.coulomb.direct import direct_field, potential_at, potentials, workspace
+from driftwell.coulomb.direct import direct_field, potentials, workspace
 from tests.running import Floats, carried_out, points, quantity, species
 
 
@@ -22,11 +22,11 @@ def field_at_charges(place: Floats, charge: Floats) -> Floats:
     return out
 
 
-def energy(place: Floats, charge: Floats) -> float:
-    """Energy of all pairs, with 1/(4 pi eps0) = 1."""
+def potential_at_charges(place: Floats, charge: Floats) -> Floats:
+    """Potential (n,) at each charge of all others, with 1/(4 pi eps0) = 1."""
     out = np.full_like(charge, np.nan)
     potentials(place, charge, 0.0, 1.0, out)
-    return 0.5 * float(charge @ out)
+    return out
 
 
 @pytest.mark.parametrize(
@@ -49,10 +49,10 @@ def test_a_rock_salt_lattice_adds_up_cube_by_cube(n: int, weighted: float, plain
     index = np.array(list(product(line, line, line))).T
     charge = np.where(index.sum(axis=0) % 2 == 0, 1.0, -1.0)
     centre = int(np.flatnonzero((index == 0).all(axis=0))[0])
-    place = index.astype(float)
-    assert plain == pytest.approx(-potential_at(centre, place, charge, 0.0, 1.0), rel=1e-12)
+    place = np.ascontiguousarray(index, dtype=np.float64)
+    assert plain == pytest.approx(-potential_at_charges(place, charge)[centre], rel=1e-12)
     charge *= 0.5 ** (np.abs(index) == n).sum(axis=0)
-    assert weighted == pytest.approx(-potential_at(centre, place, charge, 0.0, 1.0), rel=1e-12)
+    assert weighted == pytest.approx(-potential_at_charges(place, charge)[centre], rel=1e-12)
     assert 0.0 == pytest.approx(field_at_charges(place, charge)[:, centre], abs=1e-12)
 
 
@@ -94,7 +94,7 @@ def test_a_ring_of_charges_pushes_as_a_ring(
     size = math.hypot(field_rho, field_z)
     assert [field_rho, 0.0, field_z] == pytest.approx(push, abs=1e-9 * size)
     place, charge = np.ascontiguousarray(start.position.T), start.charge * start.weight
-    seen = potential_at(1000, place, charge, 0.0, COULOMB_CONSTANT)
+    seen = COULOMB_CONSTANT * potential_at_charges(place, charge)[-1]
     assert potential == pytest.approx(seen, rel=1e-9)
 
 
@@ -170,7 +170,7 @@ THOMSON = {
     11: 40.596450508,
     12: 49.165253058,
 }
-"""Least energy of unit charges on the unit sphere: J. J. Thomson, Phil. Mag. 7 (1904) 237; T. Erber,
+"""Least energy of unit charges on a unit sphere: J. J. Thomson, Phil. Mag. 7 (1904) 237; T. Erber,
 G. M. Hockney, J. Phys. A 24 (1991) L1369 (table of the Cambridge Cluster Database)."""
 
 
@@ -186,7 +186,8 @@ def test_charges_on_a_sphere_settle_at_thomsons_energies(count: int) -> None:
         charge = np.ones(count)
         slope = -field_at_charges(place, charge)
         along = slope - place * (slope * place).sum(axis=0)
-        return energy(place, charge), (along / length).ravel()
+        energy = 0.5 * float(charge @ potential_at_charges(place, charge))
+        return energy, (along / length).ravel()
 
     random = np.random.default_rng(count)
     found = [

@@ -16,7 +16,7 @@ from driftwell.constants import ATOMIC_MASS
 from driftwell.record.reader import Run
 from tests.running import Floats, Track, carried_out, points, quantity, species, track
 
-COUNT, BOX, STEP = 50, 50e-6, 0.1e-9
+COUNT, BOX, STEP = 50, 50e-6, 0.2e-9
 
 
 class Cluster(NamedTuple):
@@ -37,12 +37,12 @@ def cluster() -> Cluster:
         if np.linalg.norm(np.array(place) - new, axis=1).min() > 2e-6:
             place.append(new)
     charge = random.choice([-3.0, -2.0, -1.0, 1.0, 2.0, 3.0, 4.0, 5.0], COUNT)
-    velocity = random.normal(scale=300.0, size=(COUNT, 3))
+    velocity = random.normal(scale=30.0, size=(COUNT, 3))
     return Cluster(random.uniform(1.0, 200.0, COUNT), charge, np.array(place), velocity)
 
 
 def moved(folder: Path, start: Cluster, steps: int = 500, order: Floats | None = None) -> Run:
-    """The cluster after some steps of 0.1 ns; `order` is that of the clouds in the file."""
+    """The cluster after some steps of 0.2 ns; `order` is that of the clouds in the file."""
     names = [f"ion{k}" for k in (range(COUNT) if order is None else order)]
     return carried_out(
         folder,

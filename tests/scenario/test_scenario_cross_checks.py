@@ -121,6 +121,13 @@ def test_values_that_do_not_fit_are_told_at_the_key_to_change(
     assert [expected] == told(tmp_path, spoiled)
 
 
+def test_places_beyond_what_can_be_squared_are_told_and_no_warning_is_given(
+    tmp_path: Path,
+) -> None:
+    [line] = told(tmp_path, PAIR.replace('"-1 um"', '"1e300 m"'))
+    assert 's.toml:3 [[cloud]] "pair": has charges 1e+300 m from the origin, farther' in line
+
+
 def test_times_up_to_the_very_end_are_fine(tmp_path: Path) -> None:
     text = TRAP.replace('"1 ms"', '"2 ms"').replace('"10 us"', '"2 ms"').replace('"auto"', '"2 ms"')
     assert [] == told(tmp_path, text)

@@ -82,7 +82,7 @@ def test_a_setting_remembers_the_first_table_that_was_made_for_it() -> None:
             "duration.x=2",
             '"duration" is not a table in the scenario; set all of it: "duration=...".',
         ),
-        ('"a\\q".b=2', '"a\\q" is not a key.'),
+        ('"a\\q".b=2', '"a\\\\q" is not a key in quotes.'),
         ("a." * 40 + "b=1", "has more than 30 parts in its key."),
         ("title=\udcff", "is not valid text."),
     ],

@@ -7,8 +7,8 @@
 Neighbouring values of a slow quantity say almost the same, so the scatter of single values
 promises too much. Blocks longer than the memory are nearly independent; the bracket in eq. 2
 makes up for what they still share. Few blocks know their own scatter badly: the error is widened
-by Student's factor. The second term is for regular oscillations, whose blocks may all be alike:
-where in a period the window begins and ends is chance.
+by the factor of the t distribution. The second term is for regular oscillations, whose blocks may
+all be alike: where in a period the window begins and ends is chance.
 
 References
 ----------
@@ -32,8 +32,8 @@ BLOCKS = 12
 WINDOW = 5.0
 LEAST_INDEPENDENT = 6.0
 """A series with fewer independent values has no error that could be trusted."""
-_STUDENT = (1.837, 1.321, 1.197, 1.142, 1.111, 1.091, 1.077, 1.067, 1.059, 1.053, 1.048)
-"""What holds 68.27 % in Student's distribution, for 1 to 11 degrees of freedom."""
+_WIDER = (1.837, 1.321, 1.197, 1.142, 1.111, 1.091, 1.077, 1.067, 1.059, 1.053, 1.048)
+"""What holds 68.27 % of the t distribution, for 1 to 11 degrees of freedom."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,7 +65,7 @@ def series_mean(values: Floats) -> SeriesMean:
     length = count // blocks
     means = values[count - blocks * length :].reshape(blocks, length).mean(axis=1)
     shared = max(1.0 - (memory - 0.5) / length, 0.5)
-    error = math.sqrt(float(means.var(ddof=1)) / blocks / shared) * _STUDENT[blocks - 2]
+    error = math.sqrt(float(means.var(ddof=1)) / blocks / shared) * _WIDER[blocks - 2]
     ends = scatter * int((correlation <= 0.0).argmax()) / count
     return SeriesMean(mean, math.hypot(error, ends), independent)
 

@@ -33,6 +33,7 @@ from numba import prange
 from numpy.typing import NDArray
 
 from driftwell.kernels import (
+    inner_kernel,
     inner_pair_kernel,
     outer_kernel,
     pair_kernel,
@@ -55,9 +56,7 @@ once, whichever sum it is given."""
 _FAR = 1e12
 
 
-_SIGNATURE = (
-    "void(float64[:,::1], float64[::1], float64, float64, float64[:,::1], float64[:,::1])"
-)
+_SIGNATURE = "void(float64[:,::1], float64[::1], float64, float64, float64[:,::1], float64[:,::1])"
 
 
 def direct_sum(n: int, threads: int) -> PairSum:
@@ -68,12 +67,14 @@ def direct_sum(n: int, threads: int) -> PairSum:
 
 def groups(n: int) -> int:
     """Number of separate buffers the columns of tiles are dealt to; a function of n alone."""
-    return max(2, min(32, n // (4 * TILE)))
+    if n < THREADED:
+        return 1
+    return 8 if n < 32 * TILE else 16 if n < 128 * TILE else 32
 
 
 def workspace(n: int) -> NDArray[np.float64]:
     """(groups, 3 n + BUFFER) float64: one row of sums and one tile buffer for each group."""
-    return np.empty((groups(n) if n > SMALL else 1, 3 * n + BUFFER))
+    return np.empty((groups(n), 3 * n + BUFFER))
 
 
 @pair_kernel
@@ -168,10 +169,7 @@ def _group(
         work_row[i] = 0.0
     columns = (n + TILE - 1) // TILE
     for c in range(columns):
-        deal = c % group_count
-        if (c // group_count) % 2 == 1:  # back and forth, so that groups get equal work
-            deal = group_count - 1 - deal
-        if deal != g:
+        if _dealt(columns - 1 - c, group_count) != g:
             continue
         first = c * TILE
         filled = min(TILE, n - first)
@@ -200,6 +198,19 @@ def _group(
             sum_x[first + k] += tile[_T4 + k]
             sum_y[first + k] += tile[_T5 + k]
             sum_z[first + k] += tile[_T6 + k]
+
+
+@inner_kernel
+def _dealt(place: int, group_count: int) -> int:
+    """The group of a column by its place from the longest down.
+
+    Columns are dealt back and forth, and in turn to the first and the last groups, so that any
+    run of neighbouring groups, which is what a thread gets, has its share of the work.
+    """
+    deal = place % group_count
+    if (place // group_count) % 2 == 1:
+        deal = group_count - 1 - deal
+    return deal // 2 if deal % 2 == 0 else group_count - 1 - deal // 2
 
 
 @inner_pair_kernel

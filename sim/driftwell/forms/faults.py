@@ -104,6 +104,7 @@ _NAME = Text(1, 60)
 _MEANT = "unknown key; did you mean"
 _EVERYWHERE = ("name", "kind", "ask")
 _BRACKETS = ("there may be several", "there is only one")
+_PLAIN = (Dimensioned, Number, Text)
 _MISSING = "missing; needs"
 
 
@@ -224,11 +225,14 @@ def _unknown_key(word: str, holder: Declared | None, reading: _Reading, path: Pa
             word in declared_keys(form) for form in _forms_at(key.holds)
         ):
             return f'unknown key here; did you mean "{name}.{word}"?'
+    if len(path) > 1 and word in top and isinstance(top[word].holds, _PLAIN):
+        return f'unknown key here; "{word}" belongs at the top of the file, before any [table]'
     meant = nearest(word, keys)
     if meant is not None:
         return f'{_MEANT} "{meant}"?'
-    if len(path) > 1 and word in top:
-        return f'unknown key here; "{word}" belongs at the top of the file, before any [table]'
+    for name, key in top.items():
+        if isinstance(key.holds, Keys) and word in declared_keys(key.holds.form):
+            return f'unknown key here; "{word}" belongs in [{name}]'
     return "unknown key; the keys here are " + ", ".join(keys)
 
 

@@ -59,7 +59,7 @@ class Quantity:
     def _fault(self, why: str) -> PydanticCustomError:
         return PydanticCustomError(
             "quantity",
-            "needs {name} such as \"{example}\" ({why})",
+            'needs {name} such as "{example}" ({why})',
             {"name": self.name, "example": self.example, "why": why},
         )
 
@@ -101,7 +101,9 @@ Real = Annotated[float, Strict()]
 Count = Annotated[int, Strict()]
 """A whole number."""
 TrueOrFalse = Annotated[bool, Strict()]
-Name = Annotated[str, StringConstraints(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]+$")]
+Name = Annotated[
+    str, StringConstraints(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]+$")
+]
 """What a user calls a thing: one line, 1 to 60 characters."""
 Title = Annotated[
     str, StringConstraints(min_length=1, max_length=200, pattern=r"^[^\x00-\x1f\x7f]+$")

@@ -93,7 +93,15 @@ def bound_words(bounds: Sequence[Bound], si_unit: str = "") -> str:
 
 def as_found(value: Any) -> str:
     """A raw value of the file, as TOML and short enough for a message of one line."""
-    text = toml_text(value, depth=3)
+    return _shortened(toml_text(value, depth=3))
+
+
+def name_found(name: str) -> str:
+    """A key as TOML, short enough for a message of one line."""
+    return _shortened(name_text(name))
+
+
+def _shortened(text: str) -> str:
     return text if len(text) <= _LONGEST else text[: _LONGEST - 4] + " ..."
 
 

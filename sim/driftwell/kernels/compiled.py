@@ -119,7 +119,7 @@ def inlined_kernel(function: F) -> F:
 
 
 def inner_kernel(function: F) -> F:
-    """A :func:`kernel` that only other kernels call: made part of each caller, no way in from Python.
+    """A :func:`kernel` that only other kernels call: made part of each, no way in from Python.
 
     The arguments of a call (dozens of arrays) cost more than a small trap's step; inlining saves
     them, and leaving out the wrappers for Python saves a third of the compilation.
@@ -175,7 +175,7 @@ def outer_pair_kernel(function: F) -> F:
 
 
 def threaded_pair_kernel(function: F) -> F:
-    """Compile a pair sum whose outer `prange` runs on all threads; each pass writes only its own."""
+    """Compile a pair sum whose outer `prange` runs on all threads; a pass writes only its own."""
     return _compiled(function, fastmath=set(PAIR_FLAGS), parallel=True)
 
 
@@ -197,7 +197,7 @@ class CompiledFunction(numba.types.WrapperAddressProtocol):
         """Numba's signature of the function."""
         return self._signature
 
-    def __wrapper_address__(self) -> int:  # noqa: PLW3201 - numba's protocol
+    def __wrapper_address__(self) -> int:
         """Address of the compiled function, in C's calling convention."""
         made = self._function.overloads[self._signature.args]
         return int(made.library.get_pointer_to_function(made.fndesc.llvm_cfunc_wrapper_name))

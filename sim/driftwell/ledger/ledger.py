@@ -126,8 +126,13 @@ class Ledger:
             vector(ANGULAR_WALLS),
         )
         energy_gap = (
-            kinetic + in_fields + coulomb - self._energy
-            - book[WORK_DRIVE] - book[WORK_INDUCED] + book[ENERGY_WALLS]
+            kinetic
+            + in_fields
+            + coulomb
+            - self._energy
+            - book[WORK_DRIVE]
+            - book[WORK_INDUCED]
+            + book[ENERGY_WALLS]
         )
         momentum_gap = momentum - self._momentum - impulses - magnets + walls
         angular_gap = angular - self._angular - torques - turns + spins_walls

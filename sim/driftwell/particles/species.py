@@ -6,10 +6,13 @@ from collections.abc import Mapping
 
 from scipy.constants import physical_constants
 
-from driftwell.constants import ELEMENTARY_CHARGE
+from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
 from driftwell.forms import Charge, Form, Mass, NonZero, Positive, key
 from driftwell.forms.body import Body
 from driftwell.forms.spelling import spelled
+
+_HEAVY = 1e6
+"""Atomic mass units from which a mass is said in grams."""
 
 
 class SpeciesForm(Form):
@@ -20,8 +23,9 @@ class SpeciesForm(Form):
 
     def words(self) -> str:
         """One sentence for `driftwell check`."""
-        multiple = self.charge / ELEMENTARY_CHARGE
-        return f"mass {spelled(self.mass * 1e3, 'g')}, charge {multiple:+.6g} e"
+        units = self.mass / ATOMIC_MASS
+        mass = f"{units:.9g} u" if units < _HEAVY else spelled(self.mass * 1e3, "g")
+        return f"mass {mass}, charge {self.charge / ELEMENTARY_CHARGE:+.6g} e"
 
 
 def _known(name: str, quantity: str, charges: int) -> tuple[str, Body]:

@@ -55,7 +55,7 @@ def put_spot(axes: Axes, passed: NDArray[np.void]) -> None:
     reach = float(np.ptp(position, axis=0).max()) or float(np.abs(position).max())
     limits = plane_limits(position[:, first], position[:, second], reach)
     shown = frame(*limits, 1.0)
-    put_frame(axes, shown, (AXES[first], AXES[second]), 1.0)
+    put_frame(axes, shown, (AXES[first], AXES[second]))
     every = max(1, -(-len(passed) // MOST_DOTS))
     for cloud in np.unique(passed["cloud"]):
         own = np.flatnonzero(passed["cloud"] == cloud)[::every]

@@ -45,7 +45,7 @@ def cloud_picture(scene: Scene) -> Figure | None:
     rows = cloud_frames([view for _, view in views])
     for row, (word, snapshot) in enumerate(views):
         for column, plane in enumerate((SIDE, FRONT)):
-            put_projection(panels[row, column], snapshot, rows[row][column], plane, RATIOS[column])
+            put_projection(panels[row, column], snapshot, rows[row][column], plane)
         panels[row, 0].set_title(
             f"{word}: t = {in_words(snapshot.time, 's', 4)}, {counted(len(snapshot.id))}"
         )
@@ -70,16 +70,14 @@ def cloud_frames(snapshots: Sequence[Snapshot]) -> list[tuple[Frame, Frame]]:
     return frames
 
 
-def put_projection(
-    axes: Axes, snapshot: Snapshot, shown: Frame, plane: tuple[int, int], ratio: float
-) -> None:
+def put_projection(axes: Axes, snapshot: Snapshot, shown: Frame, plane: tuple[int, int]) -> None:
     """Fill a panel with the charges seen in a plane."""
     first, second = (snapshot.position[:, axis] for axis in plane)
     across, up = shown.across.shown(first), shown.up.shown(second)
     put_dots(axes, snapshot, across, up)
-    put_frame(axes, shown, (AXES[plane[0]], AXES[plane[1]]), ratio)
+    put_frame(axes, shown, (AXES[plane[0]], AXES[plane[1]]))
     if len(snapshot.id) <= MOST_NAMED:
-        put_names(axes, snapshot.id, across, up, ratio)
+        put_names(axes, snapshot.id, across, up, shown.ratio)
 
 
 def _limits(snapshot: Snapshot, plane: tuple[int, int]) -> tuple[Interval, Interval]:

@@ -63,7 +63,7 @@ def put_places(axes: Axes, losses: NDArray[np.void], side: bool) -> None:
     ratio = SIDE_RATIO if side else FRONT_RATIO
     reach = float(max(map(np.ptp, (x, y, z)))) or float(np.abs(losses["position"]).max())
     shown = frame(*plane_limits(across, up, reach, up_from_zero=side), ratio)
-    put_frame(axes, shown, ("z", "distance from z axis") if side else ("x", "y"), ratio)
+    put_frame(axes, shown, ("z", "distance from z axis") if side else ("x", "y"))
     size = 4.0 if len(losses) <= 300 else 2.4
     for wall in np.unique(losses["wall"]):
         own = np.flatnonzero(losses["wall"] == wall)

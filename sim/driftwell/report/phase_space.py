@@ -137,7 +137,7 @@ def put_plane(axes: Axes, snapshot: Snapshot, axis: int, plane: Plane) -> str:
             path_effects=[withStroke(linewidth=3.4, foreground="white")],
         )
         if len(clouds) == 1:
-            kind = "rms emittance" if plane.scale == 1.0 else "normalised rms emittance"
+            kind = "rms emittance" if plane.scale == 1.0 else "norm. rms emittance"
             value = area * across.size * up.size / plane.scale
             note = f"{kind} {in_words(value, 'm rad')}"
     return note

@@ -29,10 +29,15 @@ LEGIBLE = 0.2
 
 @dataclass(frozen=True, slots=True)
 class Frame:
-    """The two axes of a panel; `true` : whether both are to one scale."""
+    """The two axes of a panel.
+
+    ratio : width over height of the panel
+    true : whether both axes are to one scale
+    """
 
     across: Ruler
     up: Ruler
+    ratio: float
     true: bool
 
 
@@ -60,7 +65,7 @@ def frame(across: Interval, up: Interval, ratio: float, size: float | None = Non
     if true:
         across, up = widened(across, ratio * high), widened(up, wide / ratio)
         size = size or max(ruler(limits, "m").size for limits in (across, up))
-    return Frame(ruler(across, "m", size), ruler(up, "m", size), true)
+    return Frame(ruler(across, "m", size), ruler(up, "m", size), ratio, true)
 
 
 def common_size(limits: Sequence[Interval]) -> float | None:
@@ -70,11 +75,11 @@ def common_size(limits: Sequence[Interval]) -> float | None:
     return size if narrowest >= LEGIBLE * size else None
 
 
-def put_frame(axes: Axes, shown: Frame, names: tuple[str, str], ratio: float) -> None:
+def put_frame(axes: Axes, shown: Frame, names: tuple[str, str]) -> None:
     """Give a panel its axes and its shape."""
     put_across(axes, shown.across, names[0], 6)
     put_up(axes, shown.up, names[1], 6)
-    axes.set_box_aspect(1.0 / ratio)
+    axes.set_box_aspect(1.0 / shown.ratio)
     if not shown.true:
         axes.set_xlabel(f"{axes.get_xlabel()}, not to scale")
 

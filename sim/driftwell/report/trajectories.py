@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,8 +12,8 @@ from numpy.typing import NDArray
 
 from driftwell.report.palette import colour
 from driftwell.report.panel import put_up
-from driftwell.report.projection import frame, plane_limits, put_frame
-from driftwell.report.ruler import interval, ruler
+from driftwell.report.projection import Frame, frame, plane_limits, put_frame
+from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import Entry, sheet
 from driftwell.report.time_axis import put_line, put_time, time_ruler
@@ -22,8 +23,12 @@ Floats = NDArray[np.float64]
 AXES = "xyz"
 MOST = 6
 """Charges whose ways are drawn."""
-TURN = 0.7
-"""Change from one step to the next, over the step, from which points are not joined."""
+TURN, FLICKER = 0.7, 1.3
+"""Change from one step to the next, over the step, from which lines between points would mislead:
+for ways in space, about 9 points to a turn; for a coordinate in time, about 4 points to a period.
+"""
+VISIBLE = 0.02
+"""Part of an axis below which a flicker is not seen."""
 WIDTH = 1.0
 SIDE_RATIO, FRONT_RATIO = 1.5, 1.0
 
@@ -39,7 +44,10 @@ class Way:
 
 
 def trajectories_picture(scene: Scene) -> Figure | None:
-    """None where no charge was tracked for two records."""
+    """Coordinates in time on the left, ways in space on the right.
+
+    None where no charge was tracked for two records.
+    """
     ways = [way for way in (_way(scene, charge) for charge in _chosen(scene)) if way]
     if not ways:
         return None
@@ -49,43 +57,54 @@ def trajectories_picture(scene: Scene) -> Figure | None:
     ]
     figure = sheet(scene.run, 9.6, 6.9, key)
     halves = figure.add_gridspec(1, 2, width_ratios=[1.35, 1.0])
-    rows = halves[0].subgridspec(3, 1)
-    times = time_ruler([0.0, scene.run.end_time])
     places = np.concatenate([way.position for way in ways])
     reach = float(np.ptp(places, axis=0).max())
+    times = time_ruler([0.0, scene.run.end_time])
+    rows = halves[0].subgridspec(3, 1)
     for axis in range(3):
         panel = figure.add_subplot(rows[axis])
         shown = ruler(interval(places[:, axis], least=reach), "m")
-        for k, way in enumerate(ways):
-            across, up = times.shown(way.time), shown.shown(way.position[:, axis])
-            put_line(panel, across, up, colour(k), width=WIDTH)
-            put_loss(panel, across, up, k, way.lost)
-        put_up(panel, shown, AXES[axis], 5)
+        put_courses(panel, ways, axis, times, shown)
         put_time(panel, times, scene.run.rows("trajectory/time"), labelled=axis == 2)
     columns = halves[1].subgridspec(2, 1, height_ratios=[1.0, SIDE_RATIO])
-    for row, (first, second, ratio) in enumerate(((2, 0, SIDE_RATIO), (0, 1, FRONT_RATIO))):
+    for row, (plane, ratio) in enumerate((((2, 0), SIDE_RATIO), ((0, 1), FRONT_RATIO))):
         panel = figure.add_subplot(columns[row])
-        seen = frame(*plane_limits(places[:, first], places[:, second], reach), ratio)
-        paths = [
-            (seen.across.shown(way.position[:, first]), seen.up.shown(way.position[:, second]))
-            for way in ways
-        ]
-        joined = not any(jagged(*path) for path in paths)
-        for k, (way, path) in enumerate(zip(ways, paths, strict=True)):
-            put_path(panel, *path, k, joined)
-            put_loss(panel, *path, k, way.lost)
-        put_frame(panel, seen, (AXES[first], AXES[second]), ratio)
+        limits = plane_limits(places[:, plane[0]], places[:, plane[1]], reach)
+        put_paths(panel, ways, plane, frame(*limits, ratio))
     return figure
 
 
-def put_path(axes: Axes, across: Floats, up: Floats, number: int, joined: bool) -> None:
-    """Draw a way in space, a larger dot where it begins; `joined` : by lines between its points."""
-    look = colour(number)
-    if joined:
-        axes.plot(across, up, "-", color=look, linewidth=WIDTH, alpha=0.9)
-    else:
-        axes.plot(across, up, ".", color=look, markersize=3.6, alpha=0.8, markeredgewidth=0.0)
-    axes.plot(across[:1], up[:1], "o", color=look, markersize=4.5)
+def put_courses(axes: Axes, ways: Sequence[Way], axis: int, times: Ruler, shown: Ruler) -> None:
+    """Draw a coordinate of each charge in time."""
+    courses = [(times.shown(way.time), shown.shown(way.position[:, axis])) for way in ways]
+    seen = VISIBLE * (shown.limits[1] - shown.limits[0])
+    joined = not any(jagged(np.zeros(up.size), up, FLICKER, seen) for _, up in courses)
+    for k, (way, (across, up)) in enumerate(zip(ways, courses, strict=True)):
+        if joined:
+            put_line(axes, across, up, colour(k), width=WIDTH)
+        else:
+            axes.plot(across, up, ".", color=colour(k), markersize=2.5, alpha=0.8)
+        put_loss(axes, across, up, k, way.lost)
+    put_up(axes, shown, AXES[axis], 5)
+
+
+def put_paths(axes: Axes, ways: Sequence[Way], plane: tuple[int, int], shown: Frame) -> None:
+    """Draw the way of each charge seen in a plane, a larger dot where it begins."""
+    first, second = plane
+    paths = [
+        (shown.across.shown(way.position[:, first]), shown.up.shown(way.position[:, second]))
+        for way in ways
+    ]
+    joined = not any(jagged(*path, TURN) for path in paths)
+    for k, (way, (across, up)) in enumerate(zip(ways, paths, strict=True)):
+        look = colour(k)
+        if joined:
+            axes.plot(across, up, "-", color=look, linewidth=WIDTH, alpha=0.9)
+        else:
+            axes.plot(across, up, ".", color=look, markersize=3.6, alpha=0.8, markeredgewidth=0.0)
+        axes.plot(across[:1], up[:1], "o", color=look, markersize=4.5)
+        put_loss(axes, across, up, k, way.lost)
+    put_frame(axes, shown, (AXES[first], AXES[second]))
 
 
 def put_loss(axes: Axes, across: Floats, up: Floats, number: int, lost: bool) -> None:
@@ -94,13 +113,16 @@ def put_loss(axes: Axes, across: Floats, up: Floats, number: int, lost: bool) ->
         axes.plot(across[-1:], up[-1:], "x", color=colour(number), markersize=6.0, clip_on=False)
 
 
-def jagged(across: Floats, up: Floats) -> bool:
-    """Whether a way turns so much from point to point that lines between them would mislead."""
+def jagged(across: Floats, up: Floats, most: float, seen: float = 0.0) -> bool:
+    """Whether a way changes by more than `most` of a step from one step to the next.
+
+    seen : changes smaller than this are too small to mislead
+    """
     steps = np.diff(np.stack([across, up]))
     if steps.shape[1] < 2:
         return False
     length, turn = (np.median(np.hypot(*each)) for each in (steps, np.diff(steps)))
-    return bool(turn > TURN * length)
+    return bool(turn > max(most * length, seen))
 
 
 def _chosen(scene: Scene) -> list[int]:

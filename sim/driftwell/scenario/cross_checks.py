@@ -104,7 +104,8 @@ def _place_faults(scenario: Scenario, folder: Path) -> list[Fault]:
             continue
         places.append(born.position.T)
         owner += [(i, k) for k in range(len(born))]
-        farthest = float(np.sqrt((born.position**2).sum(axis=0)).max())
+        x, y, z = born.position
+        farthest = float(np.hypot(np.hypot(x, y), z).max())
         if farthest > scenario.stepping.extent:
             text = (
                 f"has charges {spelled(farthest, 'm')} from the origin, farther than "

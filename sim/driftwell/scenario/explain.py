@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import re
 import textwrap
 from collections.abc import Iterator
+from itertools import groupby
+from operator import itemgetter
 
 from driftwell.forms import spelled
 from driftwell.particles.species import bodies
@@ -13,8 +16,9 @@ from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.source import shown_path
 
 WIDTH = 100
-_SECTION, _MOST_NAME = 12, 24
+_SECTION, _LEAST_NAME, _MOST_NAME = 12, 8, 24
 _RECORDS = 200
+_NUMBER_AND_UNIT = re.compile(r"(\d) (?=[A-Za-zµ]{1,3}\b)")
 
 Row = tuple[str, str, str]
 
@@ -22,13 +26,12 @@ Row = tuple[str, str, str]
 def explain(loaded: LoadedScenario) -> list[str]:
     """The lines that `driftwell check` prints of a scenario without faults."""
     scenario = loaded.scenario
-    rows = list(_rows(loaded))
-    name_width = min(_MOST_NAME, max((len(name) for _, name, _ in rows), default=0))
     lines = [scenario.title, f"{shown_path(loaded.path)}, digest {loaded.digest[:12]}", ""]
-    said = ""
-    for section, name, words in rows:
-        lines += _laid_out("" if section == said else section, name, name_width, words)
-        said = section
+    for section, rows in groupby(_rows(loaded), key=itemgetter(0)):
+        entries = [(name, words) for _, name, words in rows]
+        name_width = min(_MOST_NAME, max(_LEAST_NAME, *(len(name) for name, _ in entries)))
+        for i, (name, words) in enumerate(entries):
+            lines += _laid_out("" if i else section, name, name_width, words)
     for heading, sentences in (("Note", list(_notes(loaded))), ("Caution", cautions(scenario))):
         if sentences:
             lines.append("")
@@ -123,11 +126,13 @@ def _laid_out(section: str, name: str, name_width: int, words: str) -> list[str]
 
 
 def _wrapped(margin: str, indent: int, words: str) -> list[str]:
-    return textwrap.wrap(
-        words,
+    """Lines of at most a page's width, none of which parts a number from its unit."""
+    lines = textwrap.wrap(
+        _NUMBER_AND_UNIT.sub("\\1\u00a0", words),
         WIDTH,
         initial_indent=margin,
         subsequent_indent=" " * indent,
         break_long_words=False,
         break_on_hyphens=False,
     )
+    return [line.replace("\u00a0", " ") for line in lines]

@@ -9,6 +9,7 @@ from __future__ import annotations
 import re
 import tomllib
 from bisect import bisect_right
+from contextlib import suppress
 
 Path = tuple[str | int, ...]
 
@@ -31,7 +32,8 @@ class KeyLines:
         self._lines: dict[Path, int] = {}
         self._entries: dict[Path, int] = {}
         self._at = 0
-        self._scan()
+        with suppress(ValueError, IndexError):  # of a TOML to come: keep the lines found so far
+            self._scan()
 
     def line(self, path: Path) -> int:
         """The line of the key at `path`, else of the nearest table around it, counted from 1."""

@@ -7,7 +7,7 @@ from typing import Any
 
 from driftwell.forms import Form
 from driftwell.forms.declared import Keys, Named, Several, declared_keys
-from driftwell.forms.wording import name_text, quoted
+from driftwell.forms.wording import as_found, name_found
 
 Path = tuple[str | int, ...]
 
@@ -21,16 +21,16 @@ def place(path: Path, data: Mapping[str, Any], form: type[Form]) -> str:
     holds = None if declared is None else declared.holds
     if isinstance(value, list) and _is_list_of_tables(value, holds):
         if len(path) == 1:
-            return f"[[{name_text(section)}]]"
+            return f"[[{name_found(section)}]]"
         return _spaced(_entry(section, value, path[1]), keys(path[2:]))
     if isinstance(value, Mapping) and isinstance(holds, Named) and len(path) > 1:
-        return _spaced(f"[{name_text(section)}.{name_text(str(path[1]))}]", keys(path[2:]))
+        return _spaced(f"[{name_found(section)}.{name_found(str(path[1]))}]", keys(path[2:]))
     if isinstance(value, Mapping):
-        return _spaced(f"[{name_text(section)}]", keys(path[1:]))
+        return _spaced(f"[{name_found(section)}]", keys(path[1:]))
     if value is None and isinstance(holds, Several):
-        return f"[[{name_text(section)}]]"
+        return f"[[{name_found(section)}]]"
     if value is None and isinstance(holds, Keys):
-        return _spaced(f"[{name_text(section)}]", keys(path[1:]))
+        return _spaced(f"[{name_found(section)}]", keys(path[1:]))
     return keys(path)
 
 
@@ -42,7 +42,7 @@ def keys(path: Path) -> str:
             text += f"{',' if after_entry else ''} entry {part + 1}"
         else:
             between = " " if after_entry else "."
-            text += f"{between if text else ''}{name_text(part)}"
+            text += f"{between if text else ''}{name_found(part)}"
         after_entry = isinstance(part, int)
     return text.strip()
 
@@ -61,8 +61,8 @@ def entry_name(entry: object) -> str | None:
 def _entry(section: str, entries: list[Any], number: str | int) -> str:
     entry = entries[number] if isinstance(number, int) and number < len(entries) else None
     name = entry_name(entry)
-    which = f"number {int(number) + 1}" if name is None else quoted(name)
-    return f"[[{name_text(section)}]] {which}"
+    which = f"number {int(number) + 1}" if name is None else as_found(name)
+    return f"[[{name_found(section)}]] {which}"
 
 
 def _is_list_of_tables(value: list[Any], holds: object) -> bool:

@@ -11,7 +11,7 @@ from typing import Any
 from driftwell.answers.table import QUESTION_KINDS
 from driftwell.forms.declared import kind_name
 from driftwell.forms.faults import Fault, nearest, read_form
-from driftwell.forms.wording import quoted
+from driftwell.forms.wording import as_found
 from driftwell.particles.species import BUILT_IN
 from driftwell.scenario.places import entry_name
 
@@ -52,7 +52,7 @@ def _used_twice(data: Mapping[str, Any], section: str) -> Iterator[Fault]:
         if name in first:
             path = (section, i, "name")
             other = f"number {first[name] + 1}"
-            yield Fault(path, quoted(name), f"is the name of [[{section}]] {other} already")
+            yield Fault(path, as_found(name), f"is the name of [[{section}]] {other} already")
         else:
             first[name] = i
 
@@ -89,13 +89,13 @@ def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:
 
 
 def _there(known: list[str]) -> str:
-    return "there are " + ", ".join(map(quoted, known[:_SHOWN])) if known else "there is none"
+    return "there are " + ", ".join(map(as_found, known[:_SHOWN])) if known else "there is none"
 
 
 def _unknown(path: Path, name: str, what: str, known: list[str], otherwise: str) -> Fault:
     meant = nearest(name, known)
-    hint = f"; did you mean {quoted(meant)}?" if meant is not None else otherwise
-    return Fault(path, quoted(name), f"no {what} is called so{hint}")
+    hint = f"; did you mean {as_found(meant)}?" if meant is not None else otherwise
+    return Fault(path, as_found(name), f"no {what} is called so{hint}")
 
 
 def _texts_at(key: str, table: Mapping[str, Any], path: Path) -> Iterator[tuple[Path, str]]:

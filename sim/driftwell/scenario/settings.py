@@ -17,7 +17,7 @@ from typing import Any
 from driftwell.forms import Form
 from driftwell.forms.declared import Several, declared_keys
 from driftwell.forms.faults import nearest
-from driftwell.forms.wording import quoted
+from driftwell.forms.wording import as_found, quoted
 from driftwell.scenario.places import ended, entry_name, keys
 from driftwell.scenario.source import DEEPEST
 
@@ -86,7 +86,7 @@ def _unquoted(word: str) -> str:
     try:
         return next(iter(tomllib.loads(f"{word} = 0")))
     except ValueError as fault:
-        raise _UnusableError(f"{word} is not a key") from fault
+        raise _UnusableError(f"{as_found(word[1:-1])} is not a key in quotes") from fault
 
 
 def _read(text: str) -> Any:
@@ -143,12 +143,12 @@ def _index(entries: list[Any], part: str, path: Path) -> int:
     known = [name for name in names if name is not None]
     meant = nearest(part, known)
     if meant is not None:
-        hint = f"did you mean {quoted(meant)}?"
+        hint = f"did you mean {as_found(meant)}?"
     elif known:
-        hint = "there are " + ", ".join(quoted(name) for name in known[:10])
+        hint = "there are " + ", ".join(as_found(name) for name in known[:10])
     else:
         hint = f"there are {len(entries)}, counted from 1"
-    raise _UnusableError(f"no entry of {keys(path)} is {quoted(part)}; {hint}")
+    raise _UnusableError(f"no entry of {keys(path)} is {as_found(part)}; {hint}")
 
 
 def is_within(path: Path, setting: Setting) -> bool:

@@ -168,9 +168,7 @@ def burst(
 
 
 @outer_kernel
-def _account_induced(
-    plan: Plan, charges: Charges, h: float, together: bool, work: Work
-) -> None:
+def _account_induced(plan: Plan, charges: Charges, h: float, together: bool, work: Work) -> None:
     """Account the induced field's work in the kick to come."""
     force_field = work.spare
     for axis in range(3):

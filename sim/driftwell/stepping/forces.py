@@ -12,9 +12,7 @@ from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 
 @inner_kernel
-def external_forces(
-    fields: Fields, charges: Charges, t: float, inside: float, work: Work
-) -> None:
+def external_forces(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> None:
     """The fields' E at every charge, the rates of the accounts, and the energy in the fields.
 
     Overwrites ``work.external``, ``work.induced`` (where a magnet changes), ``work.rate`` and
@@ -107,9 +105,7 @@ def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) 
     if plan.coulomb == 0:
         return
     if charges.charge.size <= SMALL:
-        small_field(
-            charges.position, charges.charge, plan.softening2, plan.constant, work.coulomb
-        )
+        small_field(charges.position, charges.charge, plan.softening2, plan.constant, work.coulomb)
     else:
         pair_sum(
             charges.position,

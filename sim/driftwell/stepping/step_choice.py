@@ -84,9 +84,7 @@ def plasma_rates(particles: Particles) -> list[Rate]:
         charge = (particles.charge * particles.weight)[member]
         ratio = np.abs(particles.charge / particles.mass)[member].max()
         density = np.abs(charge).sum() / volume  # C/m^3
-        rates.append(
-            Rate("plasma oscillation", math.sqrt(density * ratio / ELECTRIC_CONSTANT))
-        )
+        rates.append(Rate("plasma oscillation", math.sqrt(density * ratio / ELECTRIC_CONSTANT)))
     return rates
 
 
@@ -115,9 +113,7 @@ def _strength(
     """|Q_i q_j| / (4 pi eps0 mu) of pairs, m^3/s^2; weights act on the charge that pushes."""
     pushed = np.abs(particles.charge * particles.weight)
     ratio = np.abs(particles.charge / particles.mass)
-    return COULOMB_CONSTANT * (
-        pushed[first] * ratio[second] + pushed[second] * ratio[first]
-    )
+    return COULOMB_CONSTANT * (pushed[first] * ratio[second] + pushed[second] * ratio[first])
 
 
 def _closest_approach(

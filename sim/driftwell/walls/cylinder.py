@@ -65,9 +65,7 @@ def cylinder_stops(p: np.ndarray, x: float, y: float, z: float) -> bool:
 
 
 @inner_kernel
-def cylinder_normal(
-    p: np.ndarray, x: float, y: float, z: float
-) -> tuple[float, float, float]:
+def cylinder_normal(p: np.ndarray, x: float, y: float, z: float) -> tuple[float, float, float]:
     """Direction in which the level rises, of any length: towards the axis."""
     along = int(p[3])
     dx, dy, dz = p[0] - x, p[1] - y, p[2] - z

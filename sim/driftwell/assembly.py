@@ -1,0 +1,222 @@
+"""A scenario's parts put together: charges, fields, surfaces, the step, the schedule of the run."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.errors import ScenarioError
+from driftwell.fields.form import Role
+from driftwell.fields.table import field_tables
+from driftwell.forms.body import Body
+from driftwell.forms.waveforms import waveform_breaks
+from driftwell.particles.species import bodies as known_bodies
+from driftwell.particles.state import Particles, joined
+from driftwell.record.header import trace_name
+from driftwell.scenario.model import Scenario
+from driftwell.scenario.read import LoadedScenario
+from driftwell.stepping.loop import TimeLoop, Traced
+from driftwell.stepping.motion import Fields
+from driftwell.stepping.schedule import BREAK, RECORD, SNAPSHOT, TRACE, Schedule, regular, schedule
+from driftwell.stepping.step_choice import (
+    Rate,
+    StepChoice,
+    chosen_step,
+    closest_pair_rates,
+    plasma_rates,
+)
+from driftwell.walls.table import sides, surface_table
+
+DEFAULT_RECORDS = 200
+SAMPLES_PER_PERIOD = 20.0
+
+
+@dataclass(frozen=True, slots=True)
+class Assembly:
+    """What a run is made of, at time zero.
+
+    species : names in the order of ``particles.species``
+    clouds : facts in the order of ``particles.cloud``
+    requests : the coordinates to be traced, each once
+    """
+
+    scenario: Scenario
+    bodies: dict[str, Body]
+    species: tuple[str, ...]
+    particles: Particles
+    clouds: tuple[CloudFacts, ...]
+    requests: tuple[TraceRequest, ...]
+    choice: StepChoice
+    schedule: Schedule
+
+    def time_loop(self, threads: int) -> TimeLoop:
+        """The loop that moves the charges; it works on `particles` themselves."""
+        tables = field_tables(self.scenario.field, self.bodies)
+        return TimeLoop(
+            self.particles,
+            Fields(
+                electric=tables[Role.ELECTRIC],
+                uniform=tables[Role.UNIFORM_MAGNETIC],
+                magnetic=tables[Role.MAGNETIC],
+            ),
+            surface_table(self.scenario.wall, self.scenario.detector),
+            self.scenario.coulomb,
+            self.scenario.stepping,
+            self.schedule,
+            [_traced(request, self.clouds) for request in self.requests],
+            threads,
+        )
+
+
+def assembled(loaded: LoadedScenario) -> Assembly:
+    """Put a scenario together.
+
+    Raises
+    ------
+    ScenarioError
+        The charges cannot be placed as the scenario says, or the schedule would not fit in memory.
+    """
+    scenario = loaded.scenario
+    bodies = known_bodies(scenario.species)
+    species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
+    particles, clouds = _loaded_particles(loaded, bodies, species)
+    _check_births(scenario, particles)
+    requests = _traces(scenario)
+    choice, every = _steps(scenario, bodies, species, particles, requests)
+    return Assembly(
+        scenario,
+        bodies,
+        species,
+        particles,
+        tuple(clouds),
+        tuple(requests),
+        choice,
+        _schedule(scenario, choice.step, bool(requests), every),
+    )
+
+
+def _loaded_particles(
+    loaded: LoadedScenario, bodies: dict[str, Body], names: Sequence[str]
+) -> tuple[Particles, list[CloudFacts]]:
+    """All charges at time zero, and the facts of their clouds."""
+    scenario = loaded.scenario
+    parts: list[Particles] = []
+    clouds: list[CloudFacts] = []
+    first_id = 0
+    for index, cloud in enumerate(scenario.cloud):
+        part = cloud.load(
+            scenario.seed,
+            bodies,
+            first_id,
+            index,
+            names.index(cloud.species),
+            loaded.folder,
+        )
+        body = bodies[cloud.species]
+        clouds.append(
+            CloudFacts(
+                cloud.name,
+                index,
+                cloud.species,
+                body.mass,
+                body.charge,
+                float(part.weight[0]),
+                first_id,
+                len(part),
+            )
+        )
+        parts.append(part)
+        first_id += len(part)
+    return joined(parts), clouds
+
+
+def _check_births(scenario: Scenario, particles: Particles) -> None:
+    """Refuse charges born outside a wall that encloses a space."""
+    side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
+    sides(surface_table(scenario.wall, ()), particles.position, side)
+    for wall, row in zip(scenario.wall, side, strict=True):
+        outside = np.flatnonzero(row < 0)
+        if wall.closed() and outside.size:
+            x, y, z = particles.position[:, outside[0]]
+            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+            raise ScenarioError(
+                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges begin outside '
+                f'the wall "{wall.name}", the first at ({x:.6g}, {y:.6g}, {z:.6g}) m; make the '
+                "cloud smaller, move it, or enlarge the wall."
+            )
+
+
+def _traces(scenario: Scenario) -> list[TraceRequest]:
+    """The coordinates all questions want traced, each once."""
+    requests: dict[str, TraceRequest] = {}
+    for question in scenario.question:
+        for request in question.needs(scenario.duration).traces:
+            name = trace_name(request)
+            known = requests.get(name)
+            if known is None or (request.every or math.inf) < (known.every or math.inf):
+                requests[name] = request
+    return list(requests.values())
+
+
+def _traced(request: TraceRequest, clouds: Sequence[CloudFacts]) -> Traced:
+    facts = next(cloud for cloud in clouds if cloud.name == request.cloud)
+    charge = None if request.charge is None else facts.first_id + request.charge
+    return Traced(facts.index, charge, request.axis)
+
+
+def _steps(
+    scenario: Scenario,
+    bodies: dict[str, Body],
+    names: Sequence[str],
+    particles: Particles,
+    requests: Sequence[TraceRequest],
+) -> tuple[StepChoice, float]:
+    """The step, and the time between samples of the traces."""
+    stepping = scenario.stepping
+    rates = [
+        Rate(f'{name} of field "{field.name}" on {species}', value)
+        for field in scenario.field
+        for species in names
+        for name, value in field.rates(bodies[species], bodies).items()
+    ]
+    fastest = max((rate.rate for rate in rates), default=0.0)
+    every = min((request.every for request in requests if request.every), default=math.inf)
+    if any(request.every is None for request in requests):
+        period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
+        every = min(every, period / SAMPLES_PER_PERIOD)
+    if stepping.step != "auto":
+        return StepChoice(float(stepping.step), "the scenario says so"), every
+    if scenario.coulomb.method != "off":
+        rates += plasma_rates(particles)
+        rates += closest_pair_rates(particles, scenario.coulomb.softening)
+    mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
+    return chosen_step(rates, stepping.steps_per_period, scenario.duration, mark), every
+
+
+def _schedule(scenario: Scenario, step: float, traced: bool, every: float) -> Schedule:
+    """All marks of the run."""
+    duration = scenario.duration
+    records = regular(scenario.record.every or duration / DEFAULT_RECORDS, duration)
+    snapshots = [np.array([0.0, duration])]
+    if scenario.record.snapshots is not None:
+        snapshots.append(regular(scenario.record.snapshots, duration))
+    snapshots += [
+        np.array(question.needs(duration).snapshots, dtype=np.float64)
+        for question in scenario.question
+    ]
+    breaks = [waveform_breaks(field.waveform(), duration) for field in scenario.field]
+    marks: list[tuple[int, NDArray[np.float64]]] = [
+        (RECORD, records),
+        (SNAPSHOT, np.concatenate(snapshots)),
+        (BREAK, np.array([time for times in breaks for time in times])),
+    ]
+    if traced:
+        samples = regular(every, duration)
+        even = np.abs(np.diff(samples, prepend=-every) - every) < 1e-6 * every
+        marks.append((TRACE, samples[even]))
+    return schedule(duration, step, marks, scenario.stepping.coulomb_every)

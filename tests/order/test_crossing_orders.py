@@ -1,0 +1,99 @@
+"""How well detectors and walls know where, when and how fast they are met.
+
+Inside a step the path is a polynomial through what is known at both ends, so the error at a
+crossing has an order of its own, on top of that of the motion.
+"""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+from typing import Any, NamedTuple
+
+import numpy as np
+import pytest
+
+from driftwell.stepping.schemes import ORDER
+from tests.running import Floats, carried_out, points, species
+
+ION = 2.29e-25  # kg
+RATE = 2.0 * math.pi * 80e3  # rad/s
+PERIOD = 1.0 / 80e3  # s
+AMPLITUDE = 1e-4 * np.linspace(1.0, 2.0, 24)
+"""Many, so that crossings fall everywhere within a step, m."""
+DETECTOR, WALL = 0.3e-4, -0.5e-4  # m
+
+
+class Errors(NamedTuple):
+    """rms errors: times in radians, velocities in those of the smallest swing."""
+
+    detector_time: float
+    detector_velocity: float
+    wall_time: float
+    wall_velocity: float
+
+
+def swinging(folder: Path, scheme: str, steps: int, **surfaces: Any) -> Any:
+    """Ions that begin at rest at their largest z, all independent; `steps` in a period."""
+    start = np.zeros((AMPLITUDE.size, 3))
+    start[:, 2] = AMPLITUDE
+    return carried_out(
+        folder,
+        PERIOD,
+        species={"ion": species(ION)},
+        cloud=[points("swing", "ion", start)],
+        field=[
+            {
+                "name": "caps",
+                "kind": "static-quadrupole",
+                "axial_frequency": {"species": "ion", "value": "80 kHz"},
+            }
+        ],
+        coulomb={"method": "off"},
+        stepping={"scheme": scheme, "step": f"{PERIOD / steps!r} s"},
+        **surfaces,
+    )
+
+
+def plane(name: str, height: float, **keys: Any) -> dict[str, Any]:
+    """A surface across z."""
+    return {"name": name, "kind": "plane", "at": ["0 m", "0 m", f"{height!r} m"], **keys}
+
+
+def found_errors(folder: Path, scheme: str, steps: int) -> Errors:
+    """Against z = A cos(w t): every ion passes the detector once, then it ends on the wall."""
+    found = swinging(
+        folder,
+        scheme,
+        steps,
+        detector=[plane("gate", DETECTOR)],
+        wall=[plane("plate", WALL)],
+        ending="all lost",
+    )
+    errors = []
+    for rows, height in ((found.crossings(), DETECTOR), (found.losses(), WALL)):
+        assert sorted(rows["id"]) == list(range(AMPLITUDE.size))
+        amplitude = AMPLITUDE[rows["id"]]
+        phase = np.arccos(height / amplitude)
+        assert height == pytest.approx(rows["position"][:, 2], abs=1e-18)
+        speed = -amplitude * RATE * np.sin(phase)
+        errors.append(rms(RATE * rows["time"] - phase))
+        errors.append(rms((rows["velocity"][:, 2] - speed) / (AMPLITUDE[0] * RATE)))
+    return Errors(*errors)
+
+
+def rms(values: Floats) -> float:
+    return float(np.sqrt(np.mean(values**2)))
+
+
+def order_of(steps: tuple[int, ...], errors: list[float]) -> float:
+    """Slope of the logarithm of the error against that of the step."""
+    return float(-np.polyfit(np.log(steps), np.log(errors), 1)[0])
+
+
+@pytest.mark.parametrize("scheme", ORDER)
+def test_crossings_are_found_to_the_order_of_the_scheme(tmp_path: Path, scheme: str) -> None:
+    steps = {2: (160, 320, 640), 4: (60, 100, 160), 6: (30, 45, 64)}[ORDER[scheme]]
+    errors = [found_errors(tmp_path, scheme, count) for count in steps]
+    for name, column in zip(Errors._fields, zip(*errors, strict=True), strict=True):
+        print(scheme, name, column, order_of(steps, list(column)))
