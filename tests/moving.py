@@ -41,13 +41,13 @@ def ions(
     cloud: ArrayLike = 0,
 ) -> Particles:
     """Charges at places (n, 3), m, with proper velocities, m/s; charge in e, mass in u."""
-    place = np.asarray(position, dtype=np.float64).reshape(-1, 3)
+    place = np.array(position, dtype=np.float64).reshape(-1, 3)
     n = len(place)
 
     def each(values: ArrayLike, unit: float = 1.0) -> Floats:
         return np.broadcast_to(np.asarray(values, dtype=np.float64) * unit, (n,)).copy()
 
-    speed = np.broadcast_to(np.asarray(velocity, dtype=np.float64), (n, 3))
+    speed = np.broadcast_to(np.asarray(velocity, dtype=np.float64), (n, 3)).copy()
     return Particles(
         np.ascontiguousarray(place.T),
         np.ascontiguousarray(speed.T),

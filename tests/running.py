@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -88,19 +88,6 @@ def track(found: Run) -> Track:
     """The trajectories of a run that recorded all its charges."""
     time, state = found.trajectory
     return Track(time, state[:, :, :3], state[:, :, 3:])
-
-
-def value(found: Run, name: str) -> float:
-    """The answer to the question of this name."""
-    return next(answer.value for answer in found.answers if answer.name == name)
-
-
-def questions(ask: str, of: str, several: Iterable[Mapping[str, Any]]) -> list[dict[str, Any]]:
-    """Several questions of one kind about one cloud, named by their place in the list."""
-    return [
-        {"name": f"{of} {number}", "ask": ask, "of": of, **keys}
-        for number, keys in enumerate(several)
-    ]
 
 
 def answers(found: Run) -> Sequence[float]:

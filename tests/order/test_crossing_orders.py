@@ -13,13 +13,13 @@ from typing import Any, NamedTuple
 import numpy as np
 import pytest
 
-from driftwell.stepping.schemes import ORDER
+from driftwell.constants import ELEMENTARY_CHARGE
 from tests.running import Floats, carried_out, points, species
 
 ION = 2.29e-25  # kg
 RATE = 2.0 * math.pi * 80e3  # rad/s
 PERIOD = 1.0 / 80e3  # s
-AMPLITUDE = 1e-4 * np.linspace(1.0, 2.0, 24)
+AMPLITUDE = 1e-4 * np.linspace(1.0, 2.0, 200)
 """Many, so that crossings fall everywhere within a step, m."""
 DETECTOR, WALL = 0.3e-4, -0.5e-4  # m
 
@@ -91,9 +91,40 @@ def order_of(steps: tuple[int, ...], errors: list[float]) -> float:
     return float(-np.polyfit(np.log(steps), np.log(errors), 1)[0])
 
 
-@pytest.mark.parametrize("scheme", ORDER)
-def test_crossings_are_found_to_the_order_of_the_scheme(tmp_path: Path, scheme: str) -> None:
-    steps = {2: (160, 320, 640), 4: (60, 100, 160), 6: (30, 45, 64)}[ORDER[scheme]]
+@pytest.mark.parametrize(
+    ("scheme", "steps", "time", "velocity"),
+    [
+        ("kick-drift-kick", (160, 320, 640), 2, 2),
+        ("composed-4", (120, 200, 320), 4, 3),
+        ("composed-6", (120, 200, 320), 4, 3),
+    ],
+)
+def test_crossings_are_found_to_their_order(
+    tmp_path: Path, scheme: str, steps: tuple[int, ...], time: int, velocity: int
+) -> None:
+    """Time and place to the scheme's order, up to 4 (that of a cubic path); velocity up to 3."""
     errors = [found_errors(tmp_path, scheme, count) for count in steps]
-    for name, column in zip(Errors._fields, zip(*errors, strict=True), strict=True):
-        print(scheme, name, column, order_of(steps, list(column)))
+    orders = [order_of(steps, list(column)) for column in zip(*errors, strict=True)]
+    assert [time, velocity, time, velocity] == pytest.approx(orders, abs=0.1)
+
+
+def test_a_steady_fall_is_met_exactly_at_any_step(tmp_path: Path) -> None:
+    """z = a t^2 / 2 passes a height at sqrt(2 z / a) with sqrt(2 a z): kick-drift-kick makes no
+    error under a constant force, and a polynomial follows a parabola; 7 steps, rounding."""
+    duration, pull = 1e-5, 1e3  # s, V/m
+    acceleration = pull * ELEMENTARY_CHARGE / ION
+    heights = [1e-3, 7e-3, 30e-3]
+    found = carried_out(
+        tmp_path,
+        duration,
+        species={"ion": species(ION)},
+        cloud=[points("one", "ion", [0.0, 0.0, 0.0])],
+        field=[{"name": "gap", "kind": "uniform-electric", "strength": f"{pull} V/m"}],
+        detector=[plane(f"gate {height}", height) for height in heights],
+        stepping={"step": f"{duration / 7!r} s"},
+    ).crossings()
+    heights = np.array(heights)
+    assert list(np.sqrt(2.0 * heights / acceleration)) == pytest.approx(found["time"], rel=1e-9)
+    speed = np.sqrt(2.0 * heights * acceleration)
+    assert list(speed) == pytest.approx(found["velocity"][:, 2], rel=1e-9)
+    assert [1, 1, 1] == list(found["direction"])

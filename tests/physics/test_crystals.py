@@ -1,39 +1,23 @@
-"""Ions in a trap that holds them alike on all axes: energies of crystals, and their breathing.
-
-No static potential holds a charge on all axes (Earnshaw), but a uniform magnetic field does with a
-static quadrupole: seen from a frame that turns with half the cyclotron frequency, ions of one kind
-move as without a magnet in the potential
-
-    m/2 [omega_z^2 z^2 + (omega_c^2 / 4 - omega_z^2 / 2) (x^2 + y^2)]                      (1)
-
-(Larmor's theorem: Landau & Lifshitz, The Classical Theory of Fields, sec. 45). Here
-omega_c^2 = 6 omega_z^2, so (1) is the same on all axes. Lengths in l = (k q^2 / (m omega^2))^(1/3),
-energies in m omega^2 l^2.
-"""
+"""Energies of ion crystals, their standing still and their breathing, in the trap of crystal.py."""
 
 from __future__ import annotations
 
 import math
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import pytest
 from scipy.integrate import quad, solve_ivp
-from scipy.optimize import minimize
 
-from driftwell.constants import ELEMENTARY_CHARGE
-from tests.running import Floats, carried_out, points, quantity, species, track
-
-ION = 6.6359e-26  # kg
-FREQUENCY = 100e3  # Hz
-OMEGA = 2.0 * math.pi * FREQUENCY
-LENGTH = 2.065067291239522e-05
-"""l, m."""
-ENERGY = 1.117192432694808e-23
-"""m omega^2 l^2, J."""
-TURN = -math.sqrt(1.5) * OMEGA
-"""Angular frequency of the frame: half the cyclotron frequency, against the field, rad/s."""
+from tests.crystal import (
+    ENERGY,
+    FREQUENCY,
+    OMEGA,
+    at_rest_in_the_frame,
+    crystal,
+    in_the_frame,
+)
+from tests.running import carried_out, track
 
 ENERGIES = {
     2: 0.5952753945,
@@ -52,53 +36,6 @@ ENERGIES = {
 """Lowest energy per ion: R. Rafac et al., Proc. Natl. Acad. Sci. 88 (1991) 483; P. Ludwig,
 S. Kosse, M. Bonitz, Phys. Rev. E 71 (2005) 046403, table I, whose unit is 2^(1/3) smaller (from
 memory to six decimals; further ones by minimising anew)."""
-
-
-def crystal(count: int) -> Floats:
-    """Places (n, 3), in l, of the lowest of some minima."""
-    random = np.random.default_rng(count)
-    starts = random.normal(size=(12, count, 3)) * count ** (1.0 / 3.0)
-    found = [
-        minimize(_energy_and_slope, start.ravel(), jac=True, method="BFGS", options={"gtol": 1e-9})
-        for start in starts
-    ]
-    place: Floats = min(found, key=lambda each: float(each.fun)).x.reshape(-1, 3)
-    return place
-
-
-def _energy_and_slope(flat: Floats) -> tuple[float, Floats]:
-    place = flat.reshape(-1, 3)
-    apart = place[:, None] - place[None, :]
-    distance = np.sqrt((apart**2).sum(axis=2))
-    np.fill_diagonal(distance, np.inf)
-    energy = 0.5 * (flat @ flat) + 0.5 * (1.0 / distance).sum()
-    return energy, (place - (apart / distance[:, :, None] ** 3).sum(axis=1)).ravel()
-
-
-def at_rest_in_the_frame(place: Floats) -> dict[str, Any]:
-    """Sections of a scenario: ions at `place` (n, 3) in l that turn with the frame."""
-    metres = LENGTH * place
-    velocity = TURN * np.stack([-metres[:, 1], metres[:, 0], 0.0 * metres[:, 2]], axis=1)
-    strength = -2.0 * TURN * ION / ELEMENTARY_CHARGE
-    return {
-        "species": {"ion": species(ION)},
-        "cloud": [points("crystal", "ion", metres, velocity)],
-        "field": [
-            {
-                "name": "caps",
-                "kind": "static-quadrupole",
-                "axial_frequency": {"species": "ion", "value": f"{FREQUENCY} Hz"},
-            },
-            {"name": "coil", "kind": "uniform-magnetic", "strength": quantity(strength, "T")},
-        ],
-    }
-
-
-def in_the_frame(time: Floats, position: Floats) -> Floats:
-    """Positions (k, n, 3), m, seen from the turning frame, in l."""
-    cosine, sine = np.cos(TURN * time)[:, None], np.sin(TURN * time)[:, None]
-    x, y, z = np.moveaxis(position, 2, 0) / LENGTH
-    return np.stack([cosine * x + sine * y, cosine * y - sine * x, z], axis=2)
 
 
 @pytest.mark.parametrize("count", ENERGIES)

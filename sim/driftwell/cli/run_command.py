@@ -27,22 +27,33 @@ def run_command(
         with display.listening():
             result = run(loaded, folder, display, threads)
             display.ends()
-            if pictures:
-                from driftwell.report.pictures import draw
-
-                draw(open_run(folder))
     except DriftwellError as error:
         display.ends()
         print(error, file=sys.stderr)
         return error.exit_code
-    print("\n".join(_told(result)))
+    print("\n".join(_told(result)), flush=True)
+    if pictures:
+        _draw(folder)
     return result.outcome.exit_code or 0
+
+
+def _draw(folder: Path) -> None:
+    """Draw the run; what hinders that is said, and takes nothing from the answers."""
+    from driftwell.report.pictures import draw
+
+    try:
+        files = draw(open_run(folder))
+    except DriftwellError as error:
+        print(error, file=sys.stderr)
+        return
+    if files:
+        print(f"pictures: {files[0].parent}, {len(files)} files")
 
 
 def _told(result: Result) -> list[str]:
     """The end of a run: outcome, ledger, answers as a table, and where it all is."""
     row, outcome = result.ledger, result.outcome
-    lines = [
+    return [
         "",
         f"{outcome.word}: {outcome.sentence}",
         f"{outcome.steps} steps in {outcome.wall_time:.1f} s; {row.count - 0:g} real particles "
@@ -54,7 +65,6 @@ def _told(result: Result) -> list[str]:
         "",
         f"record: {result.folder}/run.h5",
     ]
-    return lines
 
 
 def _table(answers: Sequence[Answer]) -> list[str]:

@@ -37,9 +37,9 @@ class Form(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False)
 
 
-def key(help: str, *, default: Any = PydanticUndefined, example: Any = None) -> Any:
-    """Declare a key: one line of help, its default (left out: the key is required), an example."""
-    return Field(default, description=help, examples=None if example is None else [example])
+def key(meaning: str, *, default: Any = PydanticUndefined, example: Any = None) -> Any:
+    """Declare a key: its meaning in a line, its default (left out: required), an example."""
+    return Field(default, description=meaning, examples=None if example is None else [example])
 
 
 def one_of(kinds: tuple[type[Form], ...], by: str = "kind") -> Any:

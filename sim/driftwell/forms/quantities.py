@@ -33,7 +33,7 @@ class Quantity:
     example: str
 
     def read(self, value: Any) -> float:
-        """The SI value of a string such as ``"3.5 mm"``; raises a fault that says what is needed."""
+        """The SI value of a string such as ``"3.5 mm"``; a fault says what is needed."""
         if not isinstance(value, str):
             raise self._fault("a number and its unit in quotes")
         parts = units.split(value)

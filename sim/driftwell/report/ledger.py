@@ -39,29 +39,33 @@ ENERGIES = (
 )
 ROUNDING = 1e-16
 """Where the axis of residuals begins if all of them are zero."""
+NOTHING = 1e-30
+"""Residuals below this are shown as zero."""
 MOST_ELECTRONVOLTS = 1e12
 """Energies up to this are shown in electronvolts, beyond it in joules."""
 MOST_TICKS = 9
 
 
 def ledger_picture(scene: Scene) -> Figure | None:
-    """Residuals above, energies below; None where there are no two rows."""
+    """Residuals above, energies below if there are any; None where there are no two rows."""
     ledger = scene.run.ledger
     if len(ledger) < 2:
         return None
-    figure = sheet(scene.run, 9.6, 7.0)
-    upper, lower = figure.subplots(2, 1)
+    parts = [put_residuals]
+    if any(np.any(ledger[column] != 0.0) for _, column, *_ in ENERGIES):
+        parts.append(put_energies)
+    figure = sheet(scene.run, 9.6, 0.8 + 3.1 * len(parts))
     times = time_ruler(ledger["time"])
-    put_residuals(upper, ledger, times)
-    put_energies(lower, ledger, times)
-    put_time(upper, times, labelled=False)
-    put_time(lower, times, ledger["time"])
+    for row, put in enumerate(parts):
+        panel = figure.add_subplot(len(parts), 1, row + 1)
+        put(panel, ledger, times)
+        put_time(panel, times, ledger["time"], labelled=row == len(parts) - 1)
     return figure
 
 
 def put_residuals(axes: Axes, ledger: NDArray[np.void], times: Ruler) -> None:
     """Magnitudes on a logarithmic axis, on whose lowest tick stands what is exactly zero."""
-    magnitudes = {name: np.abs(ledger[column]) for name, column, *_ in RESIDUALS}
+    magnitudes = {name: _magnitude(ledger[column]) for name, column, *_ in RESIDUALS}
     every = np.concatenate(list(magnitudes.values()))
     every = every[(every > 0.0) & np.isfinite(every)]
     lowest = math.floor(math.log10(every.min())) if every.size else round(math.log10(ROUNDING))
@@ -98,7 +102,7 @@ def put_residuals(axes: Axes, ledger: NDArray[np.void], times: Ruler) -> None:
                 across[zero], np.full(zero.sum(), 10.0**floor), ".", color=colour, markersize=3.0
             )
         entries.append((_at_most(name, values), colour, width))
-    entries += [(_at_most(name, np.abs(ledger[column])), INK, 0.0) for name, column in BOOKED]
+    entries += [(_at_most(name, _magnitude(ledger[column])), INK, 0.0) for name, column in BOOKED]
     _beside(axes, entries)
 
 
@@ -134,6 +138,12 @@ def _beside(axes: Axes, entries: list[tuple[str, str, float]]) -> None:
             borderaxespad=0.0,
             handlelength=2.6,
         )
+
+
+def _magnitude(residual: Floats) -> Floats:
+    """Magnitudes; what is too small for the axis is zero."""
+    values = np.abs(residual)
+    return np.where(values < NOTHING, 0.0, values)
 
 
 def _at_most(name: str, values: Floats) -> str:

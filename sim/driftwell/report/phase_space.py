@@ -20,7 +20,7 @@ from driftwell.answers.evidence import Snapshot
 from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.report.palette import INK, colour
 from driftwell.report.panel import put_across, put_up
-from driftwell.report.projection import cloud_key, counted, put_dots
+from driftwell.report.projection import cloud_key, put_dots, thinning
 from driftwell.report.ruler import in_words, interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import Entry, sheet
@@ -70,6 +70,9 @@ def phase_space_picture(scene: Scene) -> Figure | None:
         across = AXES[along - 2]
         key.append(Entry(f"{across}′: slope u{across} / u{AXES[along]}", INK))
     key.append(Entry("u: proper velocity", INK))
+    every = max(thinning(len(view.id)) for _, view in views)
+    if every > 1:
+        key.append(Entry(f"one charge in {every} drawn", INK))
     figure = sheet(scene.run, 9.6, 0.9 + 3.2 * len(views), key)
     panels = figure.subplots(len(views), 3, squeeze=False)
     for row, (word, view) in enumerate(views):
@@ -77,10 +80,10 @@ def phase_space_picture(scene: Scene) -> Figure | None:
             put_plane(panels[row, axis], view, axis, plane_of(view, axis, along))
             for axis in range(3)
         ]
-        head = f"{word}: t = {in_words(view.time, 's', 4)}, {counted(len(view.id))}"
+        head = f"{word}: t = {in_words(view.time, 's', 4)}, {len(view.id)} charges"
+        notes[0] = "\n".join(filter(None, (head, notes[0])))
         for axis, note in enumerate(notes):
-            first = head if axis == 0 else ""
-            panels[row, axis].set_title(f"{first}\n{note}" if any(notes) else first)
+            panels[row, axis].set_title(note)
     return figure
 
 

@@ -39,7 +39,7 @@ class Ruler:
 
     low, high : limits, in SI
     unit : with its prefix, empty for a pure number
-    origin_text : the origin in words, empty where it is zero
+    origin_text : the origin's magnitude in words, empty where it is zero
     """
 
     low: float
@@ -67,7 +67,8 @@ class Ruler:
     def label(self, name: str) -> str:
         """Name and unit, such as ``z (mm)``."""
         if self.origin_text:
-            name = f"{name} − {self.origin_text}"
+            sign = "−" if self.origin > 0.0 else "+"
+            name = f"{name} {sign} {self.origin_text}"
         return f"{name} ({self.unit})" if self.unit else name
 
 
@@ -146,4 +147,4 @@ def _origin(low: float, high: float, unit: str) -> tuple[float, str]:
     step = 10.0 ** math.floor(math.log10(span))
     digits = math.floor(math.log10(abs(middle))) - round(math.log10(step)) + 1
     origin = float(f"{middle:.{digits - 1}e}")
-    return origin, in_words(origin, unit, digits)
+    return origin, in_words(abs(origin), unit, digits)

@@ -16,7 +16,7 @@ from driftwell.report.projection import Frame, frame, plane_limits, put_frame
 from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
 from driftwell.report.sheet import Entry, sheet
-from driftwell.report.time_axis import put_line, put_time, time_ruler
+from driftwell.report.time_axis import FEW, put_line, put_time, time_ruler
 
 Floats = NDArray[np.float64]
 
@@ -99,7 +99,7 @@ def put_paths(axes: Axes, ways: Sequence[Way], plane: tuple[int, int], shown: Fr
     for k, (way, (across, up)) in enumerate(zip(ways, paths, strict=True)):
         look = colour(k)
         if joined:
-            axes.plot(across, up, "-", color=look, linewidth=WIDTH, alpha=0.9)
+            put_line(axes, across, up, look, width=WIDTH)
         else:
             axes.plot(across, up, ".", color=look, markersize=3.6, alpha=0.8, markeredgewidth=0.0)
         axes.plot(across[:1], up[:1], "o", color=look, markersize=4.5)
@@ -114,12 +114,12 @@ def put_loss(axes: Axes, across: Floats, up: Floats, number: int, lost: bool) ->
 
 
 def jagged(across: Floats, up: Floats, most: float, seen: float = 0.0) -> bool:
-    """Whether a way changes by more than `most` of a step from one step to the next.
+    """Whether a way of many steps changes by more than `most` of a step from one to the next.
 
     seen : changes smaller than this are too small to mislead
     """
     steps = np.diff(np.stack([across, up]))
-    if steps.shape[1] < 2:
+    if steps.shape[1] < FEW:
         return False
     length, turn = (np.median(np.hypot(*each)) for each in (steps, np.diff(steps)))
     return bool(turn > max(most * length, seen))

@@ -1,0 +1,152 @@
+"""What the pages tell a reader to type runs, their links lead somewhere, their tables are true."""
+
+from __future__ import annotations
+
+import os
+import re
+import shutil
+import subprocess
+import sys
+import tomllib
+from dataclasses import dataclass
+from pathlib import Path
+
+import pytest
+
+from driftwell.run import EXIT_CODES
+
+ROOT = Path(__file__).resolve().parents[2]
+PAGES = sorted(
+    [*ROOT.glob("*.md"), *(ROOT / "docs").rglob("*.md")], key=lambda page: page.as_posix()
+)
+RUN_IT = (
+    "python3 -m venv .venv && .venv/bin/pip install . && "
+    ".venv/bin/driftwell run scenarios/rod-trap.toml"
+)
+TEST_IT = "python3 -m venv .venv && .venv/bin/pip install '.[test]' && .venv/bin/python -m pytest"
+
+
+@dataclass(frozen=True, slots=True)
+class Block:
+    """A fenced block of a page: its language and its text."""
+
+    language: str
+    text: str
+
+
+def blocks(page: Path) -> list[Block]:
+    found = re.findall(r"^```(\w*)\n(.*?)^```$", page.read_text(), re.MULTILINE | re.DOTALL)
+    return [Block(language, text) for language, text in found]
+
+
+def typed(page: Path) -> list[str]:
+    """The lines a reader is told to type into a shell."""
+    return [
+        line
+        for block in blocks(page)
+        if block.language == "sh"
+        for line in block.text.splitlines()
+        if line
+    ]
+
+
+def has_commands(page: Path) -> bool:
+    return any(block.language == "python" for block in blocks(page)) or any(
+        line.startswith("driftwell ") for line in typed(page)
+    )
+
+
+@pytest.fixture
+def desk(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
+    """A folder with the scenarios in it, where `driftwell` is this very package."""
+    shutil.copytree(ROOT / "scenarios", tmp_path / "scenarios")
+    command = tmp_path / "bin" / "driftwell"
+    command.parent.mkdir()
+    command.write_text(f'#!/bin/sh\nexec "{sys.executable}" -m driftwell "$@"\n')
+    command.chmod(0o755)
+    monkeypatch.setenv("PATH", f"{command.parent}{os.pathsep}{os.environ['PATH']}")
+    monkeypatch.chdir(tmp_path)
+    return tmp_path
+
+
+def shell(line: str) -> subprocess.CompletedProcess[str]:
+    return subprocess.run(["sh", "-c", line], capture_output=True, text=True, check=False)
+
+
+@pytest.mark.parametrize(
+    "page", [page for page in PAGES if has_commands(page)], ids=lambda page: page.name
+)
+def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path) -> None:
+    names: dict[str, object] = {"__name__": "page"}
+    for block in blocks(page):
+        if block.language == "python":
+            exec(compile(block.text, page.name, "exec"), names)
+        for line in block.text.splitlines() if block.language == "sh" else ():
+            if line.startswith("driftwell "):
+                done = shell(line)
+                assert 0 == done.returncode, f"{line}\n{done.stderr}"
+
+
+def test_the_readme_states_the_job_in_one_paragraph_before_its_two_commands() -> None:
+    text = (ROOT / "README.md").read_text()
+    heading, job, told, first = text.split("\n\n")[:4]
+    assert heading.startswith("# driftwell")
+    assert "\n" in job
+    assert not told.startswith(("#", "```"))
+    assert f"```sh\n{RUN_IT}\n```" == first
+    assert [RUN_IT, TEST_IT] == typed(ROOT / "README.md")[:2]
+
+
+def test_what_the_two_commands_name_is_there() -> None:
+    project = tomllib.loads((ROOT / "pyproject.toml").read_text())["project"]
+    assert "driftwell" in project["scripts"]
+    assert "test" in project["optional-dependencies"]
+    assert (ROOT / "scenarios" / "rod-trap.toml").is_file()
+
+
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.relative_to(ROOT).as_posix())
+def test_every_link_of_a_page_leads_to_a_file_or_a_heading(page: Path) -> None:
+    text = re.sub(r"^```.*?^```$", "", page.read_text(), flags=re.MULTILINE | re.DOTALL)
+    for target in re.findall(r"\]\(([^)\s]+)\)", text):
+        if target.startswith("http"):
+            continue
+        file, _, heading = target.partition("#")
+        place = page if not file else (page.parent / file).resolve()
+        assert place.exists(), f"{page.name}: {target}"
+        if heading:
+            assert heading in headings(place), f"{page.name}: {target}"
+
+
+def headings(page: Path) -> set[str]:
+    """The anchors of a page's headings, as hosts of Markdown make them."""
+    titles = re.findall(r"^#+ (.*)$", page.read_text(), re.MULTILINE)
+    return {re.sub(r"[^\w\- ]", "", title.lower()).replace(" ", "-") for title in titles}
+
+
+def test_the_readme_lists_the_exit_codes_that_runs_end_with() -> None:
+    text = (ROOT / "README.md").read_text()
+    listed = {int(code) for code in re.findall(r"^\| (\d) \| ", text, re.MULTILINE)}
+    assert {*EXIT_CODES.values(), 2} == listed
+
+
+def test_the_readme_shows_keys_as_the_shipped_scenario_has_them() -> None:
+    shown = next(b.text for b in blocks(ROOT / "README.md") if b.language == "toml")
+    shipped = (ROOT / "scenarios" / "rod-trap.toml").read_text()
+    for paragraph in shown.strip().split("\n\n"):
+        assert paragraph in shipped
+
+
+def test_the_tools_that_a_page_names_are_there() -> None:
+    for page in PAGES:
+        for tool in re.findall(r"\btools/[\w./]+\w", page.read_text()):
+            assert (ROOT / tool).is_file(), f"{page.name}: {tool}"
+
+
+def test_documentation_generators_find_their_pages_fresh() -> None:
+    checks = [line for line in typed(ROOT / "DEVELOPERS.md") if line.endswith("--check")]
+    checks = [line for line in checks if line.startswith("python tools/")]
+    assert 2 == len(checks)
+    for line in checks:
+        command = [sys.executable, *line.split()[1:]]
+        done = subprocess.run(command, cwd=ROOT, capture_output=True, text=True, check=False)
+        assert 0 == done.returncode, f"{line}\n{done.stdout}{done.stderr}"
