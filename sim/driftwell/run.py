@@ -14,7 +14,8 @@ from typing import Any, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.answers.answer import Answer, answer_all
+from driftwell.answers.answer import Answer
+from driftwell.answers.answering import answer_all
 from driftwell.answers.evidence import CloudFacts
 from driftwell.answers.moments import moments_of
 from driftwell.assembly import assembled

@@ -9,7 +9,8 @@ import numpy as np
 import pytest
 from recorded_by_hand import CROSSING, LOSS, MASS, ONE_OF_EACH, Recorded, asked, facts, near, table
 
-from driftwell.answers.answer import Answer, answer_all
+from driftwell.answers.answer import Answer
+from driftwell.answers.answering import answer_all
 from driftwell.answers.evidence import Evidence, Moments, TraceRequest
 from driftwell.answers.form import QuestionForm
 from driftwell.answers.moments import moments_of

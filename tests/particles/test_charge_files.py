@@ -121,7 +121,7 @@ def test_a_file_without_velocities_leaves_them_to_the_motion(load: Load, tmp_pat
     found = load(
         shape=shape, count=None, folder=tmp_path, motion={"velocity": ["0 m/s", "0 m/s", "5 m/s"]}
     )
-    assert [5.0, 5.0] == pytest.approx(found.velocity[2].tolist(), rel=1e-15)
+    assert [5.0, 5.0] == pytest.approx(found.velocity[2].tolist(), rel=1e-15, abs=0.0)
 
 
 def test_a_file_with_velocities_leaves_no_room_for_a_motion(

@@ -50,9 +50,9 @@ def test_count_and_weight_follow_from_what_is_given(
 ) -> None:
     found = load(**({"shape": BALL} | keys))
     assert count == len(found)
-    assert [weight] * count == pytest.approx(found.weight.tolist(), rel=1e-14)
+    assert [weight] * count == pytest.approx(found.weight.tolist(), rel=1e-14, abs=0.0)
     assert [E] * count == found.charge.tolist()
-    assert [100.0 * ATOMIC_MASS] * count == pytest.approx(found.mass.tolist(), rel=1e-14)
+    assert [100.0 * ATOMIC_MASS] * count == pytest.approx(found.mass.tolist(), rel=1e-14, abs=0.0)
 
 
 @given(count=st.integers(1, 500), charge=st.floats(1e-19, 1e-6))
@@ -61,7 +61,7 @@ def test_a_total_charge_shared_by_a_count_comes_out_exactly(
 ) -> None:
     found = load(species="alpha", count=count, total_charge=f"{charge!r} C", shape=BALL)
     total = math.fsum(found.charge * found.weight)
-    assert charge == pytest.approx(total, rel=1e-13)
+    assert charge == pytest.approx(total, rel=1e-13, abs=0.0)
 
 
 @pytest.mark.parametrize(

@@ -52,7 +52,7 @@ def test_edge_over_rms_emittance_is_the_published_ratio(
     """M. Reiser, Theory and Design of Charged Particle Beams (1994), sec. 5.3.4 (from memory)."""
     for place, slope in planes(beam(load, kind)):
         edge = np.max(place**2 + slope**2)  # alpha 0, beta 1 m
-        assert ratio == pytest.approx(edge / rms_emittance(place, slope), rel=tolerance)
+        assert ratio == pytest.approx(edge / rms_emittance(place, slope), rel=tolerance, abs=0.0)
         assert edge < ratio * EPSILON * (1.0 + 1e-12)
 
 
@@ -75,7 +75,7 @@ def test_the_ellipse_of_four_rms_emittances_holds_the_published_fraction(
     """
     for place, slope in planes(beam(load, kind)):
         found = np.mean(place**2 + slope**2 <= 4.0 * EPSILON * (1.0 + 1e-12))
-        assert inside == pytest.approx(found, rel=0.005)
+        assert inside == pytest.approx(found, rel=0.005, abs=0.0)
 
 
 @pytest.mark.parametrize(
@@ -125,20 +125,20 @@ def test_emittance_and_twiss_parameters_come_out_as_they_went_in(load: Load, kin
     )
     twiss = [(5e-6, 1.5, 0.8), (0.2e-6, -0.5, 2.0)]
     for (place, slope), (emittance, alpha, beta) in zip(planes(found), twiss, strict=True):
-        assert emittance == pytest.approx(rms_emittance(place, slope), rel=0.001)
-        assert emittance * beta == pytest.approx(np.mean(place**2), rel=0.001)
-        assert -emittance * alpha == pytest.approx(np.mean(place * slope), rel=0.002)
+        assert emittance == pytest.approx(rms_emittance(place, slope), rel=0.001, abs=0.0)
+        assert emittance * beta == pytest.approx(np.mean(place**2), rel=0.001, abs=0.0)
+        assert -emittance * alpha == pytest.approx(np.mean(place * slope), rel=0.002, abs=0.0)
         expected = emittance * (1.0 + alpha**2) / beta
-        assert expected == pytest.approx(np.mean(slope**2), rel=0.001)
+        assert expected == pytest.approx(np.mean(slope**2), rel=0.001, abs=0.0)
 
 
 @pytest.mark.parametrize("kind", KINDS)
 def test_a_beam_has_the_kinetic_energy_and_spread_it_declares(load: Load, kind: str) -> None:
     cold = kinetic_energy(beam(load, kind).velocity, MASS) / EV
-    assert [1e3, 1e3] == pytest.approx([cold.min(), cold.max()], rel=1e-12)
+    assert [1e3, 1e3] == pytest.approx([cold.min(), cold.max()], rel=1e-12, abs=0.0)
     warm = kinetic_energy(beam(load, kind, energy_spread="50 eV").velocity, MASS) / EV
     assert 1e3 == pytest.approx(warm.mean(), abs=50.0 * 5.0 / math.sqrt(MANY))
-    assert 50.0 == pytest.approx(warm.std(), rel=5.0 / math.sqrt(2.0 * MANY))
+    assert 50.0 == pytest.approx(warm.std(), rel=5.0 / math.sqrt(2.0 * MANY), abs=0.0)
 
 
 def test_a_bunch_is_as_long_as_it_declares(load: Load) -> None:

@@ -36,8 +36,8 @@ def test_a_thermal_cloud_has_the_published_mean_and_rms_speed(load: Load) -> Non
     Kinetic theory, e.g. L. D. Landau, E. M. Lifshitz, Statistical Physics (1980), sec. 29.
     """
     speed = np.linalg.norm(moving(load, temperature="500 K").velocity, axis=0)
-    assert 325.36598758202814 == pytest.approx(speed.mean(), rel=0.005)
-    assert 353.152855207418 == pytest.approx(math.sqrt(np.mean(speed**2)), rel=0.005)
+    assert 325.36598758202814 == pytest.approx(speed.mean(), rel=0.005, abs=0.0)
+    assert 353.152855207418 == pytest.approx(math.sqrt(np.mean(speed**2)), rel=0.005, abs=0.0)
 
 
 def test_each_axis_of_a_thermal_cloud_is_normal_with_its_own_temperature(load: Load) -> None:
@@ -58,18 +58,20 @@ def test_a_declared_velocity_is_stored_as_proper_velocity(load: Load) -> None:
     found = moving(load, count=3, velocity=["0 m/s", "1.8e8 m/s", "0 m/s"]).velocity
     expected = 1.8e8 / math.sqrt(1.0 - (1.8e8 / SPEED_OF_LIGHT) ** 2)
     assert [0.0, 0.0, 0.0] == found[0].tolist() == found[2].tolist()
-    assert [expected] * 3 == pytest.approx(found[1].tolist(), rel=1e-14)
+    assert [expected] * 3 == pytest.approx(found[1].tolist(), rel=1e-14, abs=0.0)
 
 
 def test_a_30_kev_electron_cloud_has_30_kev_and_the_momentum_of_its_energy(load: Load) -> None:
     """(p c)^2 = T^2 + 2 T m c^2."""
     velocity = moving(load, species="electron", kinetic_energy="30 keV", along=[0, 3, 4]).velocity
     energy = kinetic_energy(velocity, ELECTRON_MASS)
-    assert 30e3 * EV == pytest.approx(energy.mean(), rel=1e-13)
+    assert 30e3 * EV == pytest.approx(energy.mean(), rel=1e-13, abs=0.0)
     rest = ELECTRON_MASS * SPEED_OF_LIGHT**2
     momentum = math.sqrt((30e3 * EV) ** 2 + 2.0 * 30e3 * EV * rest) / SPEED_OF_LIGHT
     found = ELECTRON_MASS * velocity[:, 0]
-    assert [0.0, 0.6 * momentum, 0.8 * momentum] == pytest.approx(found.tolist(), rel=1e-12)
+    assert [0.0, 0.6 * momentum, 0.8 * momentum] == pytest.approx(
+        found.tolist(), rel=1e-12, abs=0.0
+    )
 
 
 def test_energy_spread_is_gaussian_about_the_mean_and_cut_at_five_rms(load: Load) -> None:
@@ -79,7 +81,7 @@ def test_energy_spread_is_gaussian_about_the_mean_and_cut_at_five_rms(load: Load
     energy = kinetic_energy(velocity, ELECTRON_MASS) / EV
     assert kstest((energy - 30e3) / 6e3, "norm").pvalue > 1e-3
     assert 30e3 == pytest.approx(energy.mean(), abs=6e3 * FIVE_ERRORS)
-    assert 6e3 == pytest.approx(energy.std(), rel=FIVE_ERRORS / math.sqrt(2.0))
+    assert 6e3 == pytest.approx(energy.std(), rel=FIVE_ERRORS / math.sqrt(2.0), abs=0.0)
     assert 0.0 < energy.min() < energy.max() < 60e3
 
 
@@ -95,10 +97,12 @@ def test_divergence_is_the_rms_angle_in_both_planes_and_keeps_the_energy(load: L
     for across in (velocity[1], velocity[2]):
         angle = np.arctan2(across, velocity[0])
         # tan of the angle in one plane differs from its share of the polar angle by angle^2
-        assert 0.02 == pytest.approx(angle.std(), rel=FIVE_ERRORS / math.sqrt(2.0) + 0.02**2)
+        assert 0.02 == pytest.approx(
+            angle.std(), rel=FIVE_ERRORS / math.sqrt(2.0) + 0.02**2, abs=0.0
+        )
         assert 0.0 == pytest.approx(angle.mean(), abs=0.02 * FIVE_ERRORS)
     energy = kinetic_energy(velocity, ELECTRON_MASS) / EV
-    assert [1e3, 1e3] == pytest.approx([energy.min(), energy.max()], rel=1e-12)
+    assert [1e3, 1e3] == pytest.approx([energy.min(), energy.max()], rel=1e-12, abs=0.0)
 
 
 def test_divergence_and_spread_are_given_to_a_declared_velocity_as_well(load: Load) -> None:
@@ -111,10 +115,10 @@ def test_divergence_and_spread_are_given_to_a_declared_velocity_as_well(load: Lo
     energy = kinetic_energy(velocity, 100.0 * ATOMIC_MASS)
     mean = 50.0 * ATOMIC_MASS * 40e3**2  # slow: m v^2 / 2
     assert mean == pytest.approx(energy.mean(), abs=10.0 * EV * FIVE_ERRORS)
-    assert 10.0 * EV == pytest.approx(energy.std(), rel=FIVE_ERRORS / math.sqrt(2.0))
+    assert 10.0 * EV == pytest.approx(energy.std(), rel=FIVE_ERRORS / math.sqrt(2.0), abs=0.0)
     polar = np.arctan2(np.hypot(velocity[0], velocity[1]), velocity[2])
     assert math.sqrt(2.0) * 0.1 == pytest.approx(
-        math.sqrt(np.mean(polar**2)), rel=FIVE_ERRORS / 2.0
+        math.sqrt(np.mean(polar**2)), rel=FIVE_ERRORS / 2.0, abs=0.0
     )
 
 
@@ -140,7 +144,7 @@ def test_the_velocity_spread_of_a_fast_thermal_beam_shrinks_by_gamma_and_gamma_s
     for axis, power in ((0, 1), (1, 1), (2, 2)):
         found = velocity[axis].std()
         # beside the sampling error: corrections of the order of the thermal speed over light's
-        assert rms / factor**power == pytest.approx(found, rel=0.012)
+        assert rms / factor**power == pytest.approx(found, rel=0.012, abs=0.0)
 
 
 def test_a_slow_thermal_beam_has_the_sum_of_both_motions(load: Load) -> None:

@@ -50,14 +50,14 @@ def test_a_kinetic_energy_survives_the_way_to_a_proper_speed_and_back(exponent: 
     energy = 10.0**exponent * ELECTRON_MASS * c**2
     u = proper_speed(np.array([energy]), ELECTRON_MASS)
     found = kinetic_energy(np.array([u * 0.6, u * 0.0, u * 0.8]), ELECTRON_MASS)[0]
-    assert energy == pytest.approx(found, rel=1e-13)
+    assert energy == pytest.approx(found, rel=1e-13, abs=0.0)
 
 
 @given(beta=st.floats(-0.999, 0.999))
 def test_proper_velocity_is_gamma_times_velocity(beta: float) -> None:
     found = proper_velocity(np.array([[0.0], [beta * c], [0.0]]))
     expected = beta * c / math.sqrt(1.0 - beta**2)
-    assert expected == pytest.approx(found[1, 0], rel=1e-12)
+    assert expected == pytest.approx(found[1, 0], rel=1e-12, abs=0.0)
 
 
 @given(first=st.floats(-0.99, 0.99), second=st.floats(-0.99, 0.99))

@@ -32,7 +32,7 @@ def test_a_built_in_species_has_its_published_mass_and_charge(
 ) -> None:
     body = bodies({})[name]
     assert (name, charge) == (body.name, body.charge)
-    assert mass == pytest.approx(body.mass, rel=1e-10)
+    assert mass == pytest.approx(body.mass, rel=1e-10, abs=0.0)
 
 
 def test_every_built_in_species_is_compared_with_a_published_one() -> None:
