@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import assume, example, given, settings
 from hypothesis import strategies as st
 
 from driftwell.constants import SPEED_OF_LIGHT
@@ -33,10 +33,14 @@ def speed_of(proper: Floats) -> Floats:
 
 @FEW
 @given(VECTORS, VECTORS, VECTORS, st.floats(10.0, 1e9), st.floats(0.5, 40.0))
+@example((-1.0, 1.0, 0.125), (-0.5, 0.796875, 0.25), (1.0, 0.78125, 0.0), 10.0, 30.0)
 def test_a_plane_reflects_as_a_mirror(
     normal: Any, start: Any, along: Any, speed: float, steps: float
 ) -> None:
-    """The charge ends where the mirror image of a free one is, with the velocity of the image."""
+    """The charge ends where the mirror image of a free one is, with the velocity of the image.
+
+    The example is one that meets the mirror at the very end of a step.
+    """
     across, course = np.array(normal), np.array(along)
     assume(min(np.linalg.norm(across), np.linalg.norm(course)) > 0.2)
     across /= np.linalg.norm(across)
