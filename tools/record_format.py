@@ -6,6 +6,7 @@ import sys
 from collections.abc import Iterable
 from pathlib import Path
 
+from driftwell.record.claim import SCENARIO_FILE
 from driftwell.record.index import SEGMENTS
 from driftwell.record.layout import (
     ANSWERS,
@@ -21,7 +22,6 @@ from driftwell.record.layout import (
     Dataset,
 )
 from driftwell.record.master import ANSWERS_FILE, MASTER
-from driftwell.record.writer import SCENARIO_FILE
 
 PAGE = Path(__file__).resolve().parent.parent / "docs" / "record-format.md"
 

@@ -11,18 +11,31 @@ from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts, TraceRequest
 from driftwell.errors import ScenarioError
-from driftwell.fields.form import Role
+from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
+from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
+from driftwell.record.form import DEFAULT_RECORDS
 from driftwell.record.header import trace_name
+from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
+from driftwell.scenario.room import Extent, extent_of, refuse_beyond_memory
 from driftwell.stepping.loop import TimeLoop, Traced
 from driftwell.stepping.motion import Fields
-from driftwell.stepping.schedule import BREAK, RECORD, SNAPSHOT, TRACE, Schedule, regular, schedule
+from driftwell.stepping.schedule import (
+    BREAK,
+    MOST_MARKS,
+    RECORD,
+    SNAPSHOT,
+    TRACE,
+    Schedule,
+    regular,
+    schedule,
+)
 from driftwell.stepping.step_choice import (
     Rate,
     StepChoice,
@@ -32,7 +45,6 @@ from driftwell.stepping.step_choice import (
 )
 from driftwell.walls.table import sides, surface_table
 
-DEFAULT_RECORDS = 200
 SAMPLES_PER_PERIOD = 20.0
 
 
@@ -43,6 +55,7 @@ class Assembly:
     species : names in the order of ``particles.species``
     clouds : facts in the order of ``particles.cloud``
     requests : the coordinates to be traced, each once
+    extent : how much of everything it is
     """
 
     scenario: Scenario
@@ -53,6 +66,7 @@ class Assembly:
     requests: tuple[TraceRequest, ...]
     choice: StepChoice
     schedule: Schedule
+    extent: Extent
 
     def time_loop(self, threads: int) -> TimeLoop:
         """The loop that moves the charges; it works on `particles` themselves."""
@@ -79,15 +93,21 @@ def assembled(loaded: LoadedScenario) -> Assembly:
     Raises
     ------
     ScenarioError
-        The charges cannot be placed as the scenario says, or the schedule would not fit in memory.
+        The charges cannot be placed as the scenario says, or the run would not fit in memory.
     """
     scenario = loaded.scenario
     bodies = known_bodies(scenario.species)
     species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
+    amounts = [cloud.amount(bodies, loaded.folder) for cloud in scenario.cloud]
+    charges = sum(amount.count for amount in amounts)
+    refuse_beyond_memory(extent_of(scenario, charges))
     particles, clouds = _loaded_particles(loaded, bodies, species)
     _check_births(scenario, particles)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests)
+    samples = scenario.duration / every if requests else 0.0
+    extent = extent_of(scenario, charges, int(samples), len(requests))
+    refuse_beyond_memory(extent)
     return Assembly(
         scenario,
         bodies,
@@ -97,6 +117,7 @@ def assembled(loaded: LoadedScenario) -> Assembly:
         tuple(requests),
         choice,
         _schedule(scenario, choice.step, bool(requests), every),
+        extent,
     )
 
 
@@ -140,14 +161,14 @@ def _check_births(scenario: Scenario, particles: Particles) -> None:
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
-        outside = np.flatnonzero(row < 0)
+        outside = np.flatnonzero(row <= 0)
         if wall.closed() and outside.size:
             x, y, z = particles.position[:, outside[0]]
             cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
             raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges begin outside '
-                f'the wall "{wall.name}", the first at ({x:.6g}, {y:.6g}, {z:.6g}) m; make the '
-                "cloud smaller, move it, or enlarge the wall."
+                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin '
+                f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
+                "Make the cloud smaller, move it, or enlarge the wall."
             )
 
 
@@ -182,7 +203,7 @@ def _steps(
         Rate(f'{name} of field "{field.name}" on {species}', value)
         for field in scenario.field
         for species in names
-        for name, value in field.rates(bodies[species], bodies).items()
+        for name, value in _rates_of(field, bodies[species], bodies).items()
     ]
     fastest = max((rate.rate for rate in rates), default=0.0)
     every = min((request.every for request in requests if request.every), default=math.inf)
@@ -190,12 +211,47 @@ def _steps(
         period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
         every = min(every, period / SAMPLES_PER_PERIOD)
     if stepping.step != "auto":
-        return StepChoice(float(stepping.step), "the scenario says so"), every
-    if scenario.coulomb.method != "off":
-        rates += plasma_rates(particles)
-        rates += closest_pair_rates(particles, scenario.coulomb.softening)
-    mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
-    return chosen_step(rates, stepping.steps_per_period, scenario.duration, mark), every
+        choice = StepChoice(float(stepping.step), "the scenario says so")
+    else:
+        if scenario.coulomb.method != "off":
+            rates += plasma_rates(particles)
+            rates += closest_pair_rates(particles, scenario.coulomb.softening)
+        mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
+        choice = chosen_step(rates, stepping.steps_per_period, scenario.duration, mark)
+    _refuse_too_many(scenario.duration, choice, every)
+    return choice, every
+
+
+def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str, float]:
+    """How fast a body moves in a field, rad/s, by what it does."""
+    try:
+        return dict(field.rates(body, bodies))
+    except ArithmeticError as fault:
+        raise ScenarioError(
+            f'[[field]] "{field.name}": moves {body.name} too fast for any number; check its '
+            "strength and its sizes."
+        ) from fault
+
+
+def _refuse_too_many(duration: float, choice: StepChoice, every: float) -> None:
+    """Refuse more samples or steps than a run could ever take."""
+    whole = spelled(duration, "s")
+    if duration > every * MOST_MARKS:
+        raise ScenarioError(
+            f"duration = {whole}: the questions about oscillations would take "
+            f"{_parts(duration, every)} samples, one every {spelled(every, 's', 4)}; needs at most "
+            f"{MOST_MARKS}. Shorten the duration, or give these questions a longer `every`."
+        )
+    if duration > choice.step * MOST_STEPS:
+        raise ScenarioError(
+            f"duration = {whole}: would be {_parts(duration, choice.step)} steps of "
+            f"{spelled(choice.step, 's', 4)} ({choice.because}); needs at most "
+            f"{MOST_STEPS:g}. Shorten the duration, or give [stepping] a longer step."
+        )
+
+
+def _parts(whole: float, part: float) -> str:
+    return f"{whole / part:.3g}" if part > 0.0 and math.isfinite(whole / part) else "countless"
 
 
 def _schedule(scenario: Scenario, step: float, traced: bool, every: float) -> Schedule:

@@ -18,9 +18,16 @@ class ScenarioError(DriftwellError):
 
 
 class StepError(DriftwellError):
-    """The motion cannot be continued: not a number, runaway, or unresolved collapse."""
+    """The motion cannot be continued: not a number, runaway, or unresolved collapse.
+
+    charge : id of the charge it happened to, where it was one
+    """
 
     exit_code = 5
+
+    def __init__(self, text: str, charge: int | None = None) -> None:
+        super().__init__(text)
+        self.charge = charge
 
 
 class RecordError(DriftwellError):

@@ -5,9 +5,11 @@ The run itself prints nothing: an :class:`Observer` is told how far it is and ma
 
 from __future__ import annotations
 
+import shlex
 import time as clocks
 from collections.abc import Sequence
 from dataclasses import dataclass
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any, Protocol
 
@@ -20,8 +22,11 @@ from driftwell.answers.evidence import CloudFacts
 from driftwell.answers.moments import moments_of
 from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError, StepError
+from driftwell.forms import spelled
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
+from driftwell.record.claim import refuse_taken
+from driftwell.record.form import DEFAULT_TRACKS
 from driftwell.record.header import Header, trace_name
 from driftwell.record.layout import dataset
 from driftwell.record.outcome import Outcome
@@ -30,11 +35,10 @@ from driftwell.record.resume_state import particles_of, particles_state
 from driftwell.record.writer import RunWriter
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
+from driftwell.scenario.room import refuse_beyond_disk
 from driftwell.stepping.loop import Events
 from driftwell.stepping.schedule import RECORD, SNAPSHOT, Schedule
 from driftwell.stepping.step_choice import StepChoice
-
-DEFAULT_TRACKS = 1000
 
 FINISHED, ALL_LOST, STOPPED, FAILED = "finished", "all lost", "stopped", "failed"
 EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5}
@@ -61,7 +65,7 @@ class Observer(Protocol):
     """Who watches a run."""
 
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
-        """The parts are ready; the first step comes next."""
+        """What will be done is settled; compilation may come next, then the first step."""
 
     def goes_on(self, progress: Progress) -> bool:
         """Called about twice a second; False asks the run to stop."""
@@ -83,9 +87,9 @@ def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int =
     Raises
     ------
     ScenarioError
-        The charges cannot be placed as the scenario says.
+        The charges cannot be placed as the scenario says, or the run would not fit in memory.
     RecordError
-        The folder cannot be written; the text says what is kept.
+        The folder holds another run or cannot be written; the text says what is kept.
     """
     return _Execution(loaded, folder, observer, threads).result()
 
@@ -96,8 +100,10 @@ class _Execution:
     def __init__(
         self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
     ) -> None:
-        self._began = clocks.monotonic()
+        created = datetime.now(UTC).isoformat(timespec="seconds")
+        refuse_taken(folder, loaded.text.encode())
         parts = assembled(loaded)
+        refuse_beyond_disk(parts.extent, folder)
         scenario = parts.scenario
         self._scenario = scenario
         self._folder = folder
@@ -107,6 +113,7 @@ class _Execution:
         self._choice = parts.choice
         self._schedule = parts.schedule
         self._tracked = _tracked(scenario, parts.particles)
+        observer.begins(parts.choice, parts.schedule, parts.particles)
         self._loop = parts.time_loop(threads)
         self._writer = RunWriter.create(
             folder,
@@ -124,39 +131,41 @@ class _Execution:
                 detectors=tuple(detector.name for detector in scenario.detector),
                 tracked=tuple(int(i) for i in self._tracked),
                 traces=tuple(trace_name(request) for request in parts.requests),
+                settings=loaded.settings,
+                digest=loaded.digest,
+                command=_command(loaded),
+                threads=threads,
+                created=created,
             ),
         )
         self._ledger = Ledger()
         self._row: LedgerRow | None = None
         self._state: dict[str, Any] = {}
         self._flags = 0
+        self._began = 0.0
 
     def result(self) -> Result:
         """Go through all marks, then answer."""
-        self._observer.begins(self._choice, self._schedule, self._loop.particles)
+        self._began = clocks.monotonic()
         flags = self._schedule.flags
-        word, sentence = (
-            FINISHED,
-            f"The motion was followed to t = {self._scenario.duration:.6g} s.",
-        )
+        whole = spelled(self._scenario.duration, "s")
+        word, sentence = FINISHED, f"The motion was followed to t = {whole}."
         self._record(0)
         try:
             for mark in np.flatnonzero(flags & (RECORD | SNAPSHOT))[1:]:
                 if not self._loop.to_mark(int(mark), self._keep_going):
                     word = STOPPED
-                    sentence = (
-                        f"Stopped on request; what was recorded up to t = {self._reached:.6g} s "
-                        "is kept."
-                    )
+                    reached = spelled(self._reached, "s")
+                    sentence = f"Asked to stop; the record up to t = {reached} is kept."
                     break
                 gone = not self._loop.charges.alive.any()
                 self._record(int(mark), last=gone)
                 if gone:
                     word = ALL_LOST
-                    sentence = f"Every charge was lost by t = {self._reached:.6g} s."
+                    sentence = f"Every charge was lost by t = {spelled(self._reached, 's')}."
                     break
         except StepError as fault:
-            word, sentence = FAILED, f"The motion could not be continued {fault}"
+            word, sentence = FAILED, f"The motion could not be continued {self._of_whom(fault)}"
         if word in {STOPPED, FAILED} and not self._flags & SNAPSHOT:
             # questions about the end are answered for the last record
             self._writer.snapshot(self._reached, particles_of(self._state))
@@ -167,6 +176,14 @@ class _Execution:
     def _reached(self) -> float:
         """Time of the last record, s."""
         return 0.0 if self._row is None else self._row.time
+
+    def _of_whom(self, fault: StepError) -> str:
+        """What went wrong; among several clouds, whose charge it is."""
+        for cloud in self._clouds if len(self._clouds) > 1 else ():
+            if fault.charge is not None and 0 <= fault.charge - cloud.first_id < cloud.count:
+                number = fault.charge - cloud.first_id
+                return f'{fault} (Charge {fault.charge} is number {number} of "{cloud.name}".)'
+        return str(fault)
 
     def _keep_going(self) -> bool:
         loop = self._loop
@@ -238,6 +255,13 @@ class _Execution:
         if self._row is None:
             raise ScenarioError("the run kept no record")
         return Result(self._folder, outcome, answers, self._row)
+
+
+def _command(loaded: LoadedScenario) -> str:
+    """The command that makes the same run again."""
+    settings = [word for each in loaded.settings for word in ("--set", each)]
+    text = shlex.join(["driftwell", "run", str(loaded.path), *settings])
+    return text.encode(errors="backslashreplace").decode()  # names of files may be no text
 
 
 def _tracked(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:

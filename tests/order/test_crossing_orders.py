@@ -95,17 +95,20 @@ def order_of(steps: tuple[int, ...], errors: list[float]) -> float:
     ("scheme", "steps", "time", "velocity"),
     [
         ("kick-drift-kick", (160, 320, 640), 2, 2),
-        ("composed-4", (120, 200, 320), 4, 3),
-        ("composed-6", (120, 200, 320), 4, 3),
+        ("composed-4", (60, 100, 160), 4, 4),
+        ("composed-6", (60, 90, 130), 6, 5),
     ],
 )
-def test_crossings_are_found_to_their_order(
+def test_crossings_are_found_to_the_order_of_the_scheme(
     tmp_path: Path, scheme: str, steps: tuple[int, ...], time: int, velocity: int
 ) -> None:
-    """Time and place to the scheme's order, up to 4 (that of a cubic path); velocity up to 3."""
+    """Time and place to the scheme's order within 0.1, and velocity to at least 5 of it."""
     errors = [found_errors(tmp_path, scheme, count) for count in steps]
     orders = [order_of(steps, list(column)) for column in zip(*errors, strict=True)]
-    assert [time, velocity, time, velocity] == pytest.approx(orders, abs=0.1)
+    print(scheme, orders, errors[0], errors[-1])
+    assert [time, time] == pytest.approx([orders[0], orders[2]], abs=0.1)
+    for found in (orders[1], orders[3]):
+        assert velocity - 0.1 < found < time + 0.1
 
 
 def test_a_steady_fall_is_met_exactly_at_any_step(tmp_path: Path) -> None:
@@ -124,7 +127,9 @@ def test_a_steady_fall_is_met_exactly_at_any_step(tmp_path: Path) -> None:
         stepping={"step": f"{duration / 7!r} s"},
     ).crossings()
     heights = np.array(heights)
-    assert list(np.sqrt(2.0 * heights / acceleration)) == pytest.approx(found["time"], rel=1e-9)
+    assert list(np.sqrt(2.0 * heights / acceleration)) == pytest.approx(
+        found["time"], rel=1e-9, abs=0.0
+    )
     speed = np.sqrt(2.0 * heights * acceleration)
-    assert list(speed) == pytest.approx(found["velocity"][:, 2], rel=1e-9)
+    assert list(speed) == pytest.approx(found["velocity"][:, 2], rel=1e-9, abs=0.0)
     assert [1, 1, 1] == list(found["direction"])

@@ -75,15 +75,15 @@ def test_a_cold_round_beam_follows_the_universal_spreading_curve(tmp_path: Path)
     charge that its middle third happens to have; 1 % from there on, see above.
     """
     perveance, start, length = 0.0012496413151481351, 5e-3, 0.2
-    assert 4.171240438595189e-09 == pytest.approx(line_charge(perveance), rel=1e-9)
+    assert 4.171240438595189e-09 == pytest.approx(line_charge(perveance), rel=1e-9, abs=0.0)
 
     def way(chi: float, radius: float, strength: float) -> float:
         curve = 2.0 * chi * float(dawsn(math.sqrt(math.log(chi))))
         return radius * curve / math.sqrt(2.0 * strength)
 
-    assert 0.2145345422881625 == pytest.approx(way(2.0, start, perveance), rel=1e-9)
+    assert 0.2145345422881625 == pytest.approx(way(2.0, start, perveance), rel=1e-9, abs=0.0)
     far = way(3.0, start, perveance)
-    assert 0.32007521523921834 == pytest.approx(far, rel=1e-9)
+    assert 0.32007521523921834 == pytest.approx(far, rel=1e-9, abs=0.0)
     cloud = {
         "count": 3000,
         "total_charge": quantity(line_charge(perveance) * length, "C"),
@@ -92,14 +92,14 @@ def test_a_cold_round_beam_follows_the_universal_spreading_curve(tmp_path: Path)
     }
     found = flown(tmp_path, far, cloud, 5)
     radius, slope, share = envelope(found, length)
-    assert start == pytest.approx(radius[0], rel=0.02)
+    assert start == pytest.approx(radius[0], rel=0.02, abs=0.0)
     own = perveance * 3.0 * share
-    assert perveance == pytest.approx(own, rel=0.05)
+    assert perveance == pytest.approx(own, rel=0.05, abs=0.0)
     for k in range(1, 6):
         along = far * k / 5
         chi = brentq(lambda x, z=along: way(x, radius[0], own) - z, 1.0 + 1e-9, 10.0)
-        assert chi == pytest.approx(radius[k] / radius[0], rel=0.01)
-        assert math.sqrt(2.0 * own * math.log(chi)) == pytest.approx(slope[k], rel=0.015)
+        assert chi == pytest.approx(radius[k] / radius[0], rel=0.01, abs=0.0)
+        assert math.sqrt(2.0 * own * math.log(chi)) == pytest.approx(slope[k], rel=0.015, abs=0.0)
     assert 0.0 == pytest.approx(found.ledger["energy_residual"][-1], abs=1e-6)
 
 
@@ -123,9 +123,13 @@ def test_a_beam_with_emittance_opens_from_its_waist(tmp_path: Path) -> None:
         },
     }
     radius, slope, _ = envelope(flown(tmp_path, 0.2, cloud, 2), length)
-    assert waist == pytest.approx(radius[0], rel=0.005)
-    assert [0.003192520454371186, 0.006032028415521456] == pytest.approx(radius[1:], rel=0.015)
-    assert [0.021973895837370003, 0.03355872171749546] == pytest.approx(slope[1:], rel=0.025)
+    assert waist == pytest.approx(radius[0], rel=0.005, abs=0.0)
+    assert [0.003192520454371186, 0.006032028415521456] == pytest.approx(
+        radius[1:], rel=0.015, abs=0.0
+    )
+    assert [0.021973895837370003, 0.03355872171749546] == pytest.approx(
+        slope[1:], rel=0.025, abs=0.0
+    )
 
 
 @pytest.mark.parametrize("mismatch", [1.0, 1.2])
@@ -191,6 +195,6 @@ def test_a_matched_beam_keeps_its_radius_and_a_wide_one_breathes(
         rtol=1e-10,
         atol=1e-14,
     ).y[0]
-    assert radius == pytest.approx(expected[6], rel=0.002)
+    assert radius == pytest.approx(expected[6], rel=0.002, abs=0.0)
     assert mismatch == 1.0 or expected[3] < 0.7 * radius
-    assert list(expected) == pytest.approx(envelope(found, length)[0], rel=0.025)
+    assert list(expected) == pytest.approx(envelope(found, length)[0], rel=0.025, abs=0.0)

@@ -57,15 +57,15 @@ def test_a_ball_doubles_its_radius_in_time(tmp_path: Path) -> None:
     )
     recorded = track(found)
     size = np.linalg.norm(spread(recorded), axis=1)
-    assert 1e-3 * math.sqrt(0.6) == pytest.approx(size[0], rel=0.01)
-    assert [2.0, 4.0] == pytest.approx(size[[1, 3]] / size[0], rel=0.01)
+    assert 1e-3 * math.sqrt(0.6) == pytest.approx(size[0], rel=0.01, abs=0.0)
+    assert [2.0, 4.0] == pytest.approx(size[[1, 3]] / size[0], rel=0.01, abs=0.0)
     energy = 0.5 * ION * (recorded.velocity[-1] ** 2).sum(axis=1) / ELEMENTARY_CHARGE
-    assert 0.6 * 0.75 * largest == pytest.approx(energy.mean(), rel=0.01)
+    assert 0.6 * 0.75 * largest == pytest.approx(energy.mean(), rel=0.01, abs=0.0)
     share = np.clip(energy / (0.75 * largest), 0.0, 1.0) ** 1.5
     distance = np.abs(np.sort(share) - (np.arange(count) + 0.5) / count).max()
     assert 0.0 == pytest.approx(distance, abs=0.03)
     stored = found.ledger["coulomb"][0] / (REAL * ELEMENTARY_CHARGE)
-    assert 0.6 * largest == pytest.approx(stored, rel=0.01)
+    assert 0.6 * largest == pytest.approx(stored, rel=0.01, abs=0.0)
     assert 0.0 == pytest.approx(found.ledger["energy_residual"][-1], abs=1e-4)
 
 
@@ -82,7 +82,7 @@ def test_a_pancake_grows_fastest_along_its_short_axis(tmp_path: Path) -> None:
         a = y[:3]
         b, c = np.roll(a, 1), np.roll(a, 2)
         factor = np.prod(a) / 3.0 * elliprd(b**2, c**2, a**2)
-        assert 1.0 == pytest.approx(factor.sum(), rel=1e-9)
+        assert 1.0 == pytest.approx(factor.sum(), rel=1e-9, abs=0.0)
         return np.concatenate([y[3:], squared / np.prod(a) * factor * a])
 
     found = carried_out(
@@ -102,7 +102,7 @@ def test_a_pancake_grows_fastest_along_its_short_axis(tmp_path: Path) -> None:
         record={"every": quantity(duration / 3, "s"), "tracks": count},
     )
     size = spread(track(found))
-    assert list(start / math.sqrt(5.0)) == pytest.approx(size[0], rel=0.02)
+    assert list(start / math.sqrt(5.0)) == pytest.approx(size[0], rel=0.02, abs=0.0)
     expected = solve_ivp(
         motion,
         (0.0, duration),
@@ -113,4 +113,4 @@ def test_a_pancake_grows_fastest_along_its_short_axis(tmp_path: Path) -> None:
     ).y[:3]
     assert expected[2, 3] / expected[2, 0] > 3.0 * expected[0, 3] / expected[0, 0]
     for k in range(1, 4):
-        assert list(expected[:, k]) == pytest.approx(size[k] * math.sqrt(5.0), rel=0.015)
+        assert list(expected[:, k]) == pytest.approx(size[k] * math.sqrt(5.0), rel=0.015, abs=0.0)

@@ -72,7 +72,7 @@ def test_the_three_motions_have_their_frequencies(tmp_path: Path) -> None:
     question = asked([FAST, SLOW])
     question.append({**question[0], "name": "fz", "axis": "z", "near": f"{AXIAL} Hz"})
     found = carried_out(tmp_path, 1e-3, **trap(), question=question)
-    assert [FAST, SLOW, AXIAL] == pytest.approx(answers(found), rel=1e-8)
+    assert [FAST, SLOW, AXIAL] == pytest.approx(answers(found), rel=1e-8, abs=0.0)
 
 
 def test_the_ion_is_where_the_linear_equations_take_it_after_a_millisecond(tmp_path: Path) -> None:
@@ -107,8 +107,8 @@ def test_tilt_and_ellipticity_leave_the_sum_of_squares(
     if not tilt:  # the axial motion is along z alone
         question.insert(1, {**question[0], "name": "fz", "axis": "z", "near": f"{AXIAL} Hz"})
     found = carried_out(tmp_path, 1e-3, **trap(direction, ellipticity), question=question)
-    assert expected == pytest.approx(answers(found), rel=1e-8)
-    assert CYCLOTRON == pytest.approx(math.hypot(*answers(found)), rel=1e-8)
+    assert expected == pytest.approx(answers(found), rel=1e-8, abs=0.0)
+    assert CYCLOTRON == pytest.approx(math.hypot(*answers(found)), rel=1e-8, abs=0.0)
 
 
 def frequencies(direction: Floats, ellipticity: float) -> list[float]:

@@ -123,7 +123,7 @@ def test_secular_frequencies_are_the_characteristic_exponents(tmp_path: Path) ->
     secular = 2.0 * np.array(answers(found)) / DRIVE
     for (q, beta), seen in zip(EXPONENTS.items(), secular, strict=True):
         assert beta == pytest.approx(exponent(0.0, q), abs=1e-10)
-        assert beta == pytest.approx(seen, rel=1e-7), f"q = {q}"
+        assert beta == pytest.approx(seen, rel=1e-7, abs=0.0), f"q = {q}"
 
 
 @pytest.mark.parametrize(
@@ -145,7 +145,7 @@ def test_a_direct_voltage_shifts_the_two_axes_apart(tmp_path: Path, a: float, q:
         for axis, beta in zip("xy", both, strict=True)
     ]
     found = between_rods(tmp_path, [q], 0.3e-3, a / q, question=question)
-    assert both == pytest.approx(2.0 * np.array(answers(found)) / DRIVE, rel=1e-7)
+    assert both == pytest.approx(2.0 * np.array(answers(found)) / DRIVE, rel=1e-7, abs=0.0)
 
 
 def test_ions_are_held_below_q_0_908_and_thrown_out_above(tmp_path: Path) -> None:
@@ -216,4 +216,4 @@ def test_secular_frequencies_of_a_three_dimensional_trap(tmp_path: Path) -> None
             for axis, near in zip("xyz", expected, strict=True)
         ],
     )
-    assert expected == pytest.approx(answers(found), rel=1e-7)
+    assert expected == pytest.approx(answers(found), rel=1e-7, abs=0.0)

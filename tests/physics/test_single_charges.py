@@ -40,7 +40,7 @@ def test_a_fast_electron_is_back_after_a_thousand_turns(tmp_path: Path) -> None:
         )
     )
     proper = SPEED_OF_LIGHT * math.sqrt(99.0)
-    assert proper == pytest.approx(np.linalg.norm(found.velocity[:, 0], axis=1), rel=1e-12)
+    assert proper == pytest.approx(np.linalg.norm(found.velocity[:, 0], axis=1), rel=1e-12, abs=0.0)
     # a quarter turn before a whole number of turns, then further ones back
     assert [radius, -radius, 0.0] != pytest.approx(found.position[1, 0], abs=1e-3 * radius)
     assert [-radius, radius, 0.0] == pytest.approx(found.position[1, 0], abs=1e-9 * radius)
@@ -82,8 +82,8 @@ def test_an_electron_pulled_steadily_moves_on_a_hyperbola(
         )
     )
     proper = SPEED_OF_LIGHT * math.sqrt(gamma**2 - 1.0)
-    assert [distance, 0.0, 0.0] == pytest.approx(found.position[-1, 0], rel=1e-10)
-    assert [proper, 0.0, 0.0] == pytest.approx(found.velocity[-1, 0], rel=1e-12)
+    assert [distance, 0.0, 0.0] == pytest.approx(found.position[-1, 0], rel=1e-10, abs=0.0)
+    assert [proper, 0.0, 0.0] == pytest.approx(found.velocity[-1, 0], rel=1e-12, abs=0.0)
 
 
 def test_a_proton_from_rest_in_crossed_fields_goes_on_a_cycloid(tmp_path: Path) -> None:
@@ -164,7 +164,7 @@ def test_the_axial_frequency_of_a_quadro_logarithmic_well_is_the_same_for_all(
         record={"every": "1 us"},
         question=swinging({name: (name, "z", AXIAL) for name in starts}),
     )
-    assert [AXIAL] * 4 == pytest.approx(answers(found), rel=1e-7)
+    assert [AXIAL] * 4 == pytest.approx(answers(found), rel=1e-7, abs=0.0)
     radius = np.linalg.norm(track(found).position[:, :, :2], axis=2)
     assert np.ptp(radius, axis=0)[:2] == pytest.approx(0.0, abs=1e-8)
     assert np.ptp(radius, axis=0)[2:].min() > 1e-3
@@ -188,5 +188,5 @@ def test_round_and_radial_frequencies_of_a_quadro_logarithmic_well(tmp_path: Pat
         question=swinging({"around": ("one", "x", around), "sum": ("one", "x", around + radial)}),
     )
     turning, both = answers(found)
-    assert around == pytest.approx(turning, rel=1e-6)
-    assert radial == pytest.approx(both - turning, rel=1e-5)
+    assert around == pytest.approx(turning, rel=1e-6, abs=0.0)
+    assert radial == pytest.approx(both - turning, rel=1e-5, abs=0.0)

@@ -49,9 +49,9 @@ def test_two_ions_flying_at_each_other_turn_round_at_the_closest_approach(tmp_pa
     start, speed = np.array([1e-4, 0.0, 0.0]), np.array([-120.0, 0.0, 0.0])
     found = two_ions(tmp_path, ION, start, speed, 2.0 * when, record={"every": f"{when!r} s"})
     apart = found.position[:, 1, 0] - found.position[:, 0, 0]
-    assert closest == pytest.approx(apart[1], rel=1e-9)
-    assert 1e-4 == pytest.approx(apart[2], rel=1e-9)
-    assert 60.0 == pytest.approx(found.velocity[2, 1, 0], rel=1e-9)
+    assert closest == pytest.approx(apart[1], rel=1e-9, abs=0.0)
+    assert 1e-4 == pytest.approx(apart[2], rel=1e-9, abs=0.0)
+    assert 60.0 == pytest.approx(found.velocity[2, 1, 0], rel=1e-9, abs=0.0)
 
 
 @pytest.mark.parametrize("ratio", [0.2, 0.5, 1.0, 2.0, 5.0])
@@ -65,7 +65,7 @@ def test_ions_scatter_by_rutherfords_angle(tmp_path: Path, ratio: float) -> None
     """
     reduced, fast = 0.5 * ION, 200.0
     b90 = STRENGTH / (reduced * fast**2)
-    assert 1.7383305586117597e-07 == pytest.approx(b90, rel=1e-12)
+    assert 1.7383305586117597e-07 == pytest.approx(b90, rel=1e-12, abs=0.0)
     far = 200.0 * b90
     offset = ratio * b90
     # the speed at this distance by the energy, the offset there by the angular momentum
@@ -81,7 +81,7 @@ def test_ions_scatter_by_rutherfords_angle(tmp_path: Path, ratio: float) -> None
     turned = math.degrees(math.acos(float(way_in @ way_out)))
     impact = float(np.linalg.norm(np.cross(relative[0], speed[0]))) / fast
     expected = math.degrees(2.0 * math.atan(b90 / impact))
-    assert ratio == pytest.approx(impact / b90, rel=1e-4)
+    assert ratio == pytest.approx(impact / b90, rel=1e-4, abs=0.0)
     assert expected == pytest.approx(turned, abs=1e-7)
 
 
@@ -140,7 +140,7 @@ def test_an_opposite_pair_goes_round_on_a_closed_ellipse(tmp_path: Path) -> None
     motion = found.velocity[:, 1] - found.velocity[:, 0]
     quarter = [9.351308590367094e-07, 7.797408874975592e-07, 0.0]
     assert quarter == pytest.approx(relative[1], abs=1e-15)
-    assert 5e-7 == pytest.approx(float(np.linalg.norm(relative[2])), rel=1e-9)
+    assert 5e-7 == pytest.approx(float(np.linalg.norm(relative[2])), rel=1e-9, abs=0.0)
     # after whole periods back at the start: an error of the period of 1e-9 of it is 2.3e-14 m
     assert list(start) == pytest.approx(relative[40], abs=2.3e-14)
     assert list(speed) == pytest.approx(motion[40], abs=1e-5)
@@ -168,4 +168,4 @@ def test_ions_released_at_rest_double_their_distance_in_time(tmp_path: Path) -> 
     )
     apart = found.position[-1, 1] - found.position[-1, 0]
     assert [0.0, 0.0, 2e-5] == pytest.approx(apart, abs=2e-14)
-    assert 7.2411035553642 == pytest.approx(found.velocity[-1, 1, 2], rel=1e-9)
+    assert 7.2411035553642 == pytest.approx(found.velocity[-1, 1, 2], rel=1e-9, abs=0.0)

@@ -43,6 +43,10 @@ def invented_header(tracked: int = 3, clouds: int = 2, traces: int = 2) -> Heade
         detectors=("exit",),
         tracked=tuple(range(0, 2 * tracked, 2)),
         traces=tuple(f"wölk 0 charge {k} z" for k in range(traces)),
+        settings=("duration=1 s", "seed=7"),
+        digest="0123456789abcdef",
+        command="driftwell run invented.toml --set 'duration=1 s' --set seed=7",
+        threads=2,
     )
 
 

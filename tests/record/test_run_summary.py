@@ -8,7 +8,7 @@ from invented_run import ANSWERS, FINISHED, invented_header, invented_particles
 
 from driftwell import open_run
 from driftwell.record.layout import rows
-from driftwell.record.summary import answers_table, summary
+from driftwell.record.summary import summary
 from driftwell.record.writer import RunWriter
 
 
@@ -35,7 +35,7 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
     lines = summary(open_run(writer.folder))
     assert "Invented cloud, Größe 3 µm" == lines[0]
     assert "finished: The run reached its end." == lines[1]
-    assert "reached 0.75 s of 1 s" == lines[2]
+    assert "reached 750 ms of 1 s" == lines[2]
     assert "2000 steps in 1.5 s by the clock" == lines[3]
     text = "\n".join(lines)
     for expected in (
@@ -46,7 +46,7 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
         "trajectory/state: 2 x 3 x 6, 288 bytes",
         "snapshots: 1",
         "1 segment, 2",
-        "held fraction  fraction-left  0.97",
+        "held fraction  0.9700 ± 0.0040",
         "h5py",
         open_run(writer.folder).header.scenario_sha256,
     ):
@@ -75,8 +75,8 @@ def test_damage_is_shown_and_the_rest_too(writer):
     assert "  trajectory/state: 2 x 3 x 6, 288 bytes" in lines
 
 
-def test_the_answers_stand_in_columns():
-    first, second, third = answers_table(ANSWERS)
-    assert first.index("error") == second.index("0.004") == third.index("unknown")
-    assert first.index("unit") == third.index("K")
-    assert third.endswith("no error is known; µ and é stay whole")
+def test_the_command_and_the_settings_that_make_the_run_again_are_told(writer):
+    text = "\n".join(summary(open_run(writer.folder)))
+    assert "settings: 'duration=1 s' seed=7" in text
+    assert "made by: driftwell run invented.toml --set 'duration=1 s' --set seed=7" in text
+    assert "digest of the content: 0123456789abcdef" in text

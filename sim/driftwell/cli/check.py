@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Sequence
 from pathlib import Path
 
+from driftwell.cli.printing import answer, tell
 from driftwell.errors import DriftwellError
 from driftwell.scenario.explain import explain
 from driftwell.scenario.read import read_scenario
@@ -16,7 +16,6 @@ def check(path: str | Path, overrides: Sequence[str] = ()) -> int:
     try:
         lines = explain(read_scenario(path, overrides))
     except DriftwellError as error:
-        print(error, file=sys.stderr)
+        tell(str(error))
         return error.exit_code
-    print("\n".join(lines))
-    return 0
+    return 0 if answer(lines) else 2

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-import sys
 from pathlib import Path
 
+from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.errors import DriftwellError
 from driftwell.record.reader import open_run
 from driftwell.record.summary import summary
@@ -13,9 +13,8 @@ from driftwell.record.summary import summary
 def info(path: str | Path) -> int:
     """Print the summary and return 0, or what is wrong with the folder (to stderr) and return 2."""
     try:
-        lines = summary(open_run(path))
+        lines = summary(open_run(path), width(), sign())
     except DriftwellError as error:
-        print(error, file=sys.stderr)
+        tell(str(error))
         return error.exit_code
-    print("\n".join(lines))
-    return 0
+    return 0 if answer(lines) else 2

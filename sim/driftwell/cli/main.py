@@ -8,13 +8,23 @@ from __future__ import annotations
 import argparse
 import os
 import sys
+import warnings
 from collections.abc import Sequence
 
 from driftwell._version import __version__
+from driftwell.cli.printing import flush_quietly, tell, write_anything
+
+INTERRUPTED = 130
+DEFECT = 1
+LARGEST_SEED = 2**63 - 1
+MOST_THREADS = 1024
+TRACEBACK = "DRIFTWELL_TRACEBACK"
+"""Environment variable that lets a defect of driftwell show where it is."""
 
 _EXIT_CODES = """\
 exit codes: 0 finished; 2 the scenario, the folder or the command line cannot be used;
-3 every charge was lost; 4 stopped on request, go on later; 5 the motion could not be continued
+3 every charge was lost; 4 stopped on request; 5 the motion could not be continued;
+130 interrupted at once; 1 a defect of driftwell
 """
 
 
@@ -31,9 +41,20 @@ def _parser() -> argparse.ArgumentParser:
 
     run = commands.add_parser("run", help="execute a scenario and answer its questions")
     run.add_argument("file", help="scenario file (TOML)")
-    run.add_argument("-o", "--output", metavar="FOLDER", help="where to leave the record")
-    run.add_argument("--threads", type=_threads, metavar="N", help="threads (default: all cores)")
-    run.add_argument("--seed", type=int, metavar="N", help="seed instead of the scenario's own")
+    run.add_argument(
+        "-o",
+        "--output",
+        type=_folder,
+        metavar="FOLDER",
+        help="where to leave the record (default: the file's name with -run, here)",
+    )
+    run.add_argument(
+        "--threads",
+        type=_threads,
+        metavar="N",
+        help="threads (default: NUMBA_NUM_THREADS where it is set, else one for each core)",
+    )
+    run.add_argument("--seed", type=_seed, metavar="N", help="seed instead of the scenario's own")
     run.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
     _add_settings(run)
 
@@ -59,25 +80,56 @@ def _add_settings(parser: argparse.ArgumentParser) -> None:
     )
 
 
+def _whole(text: str, least: int, most: int) -> int:
+    try:
+        number = int(text)
+    except ValueError:
+        number = least - 1
+    if not least <= number <= most:
+        raise argparse.ArgumentTypeError(
+            f"{text[:40]!r} is not a whole number from {least} to {most}"
+        )
+    return number
+
+
 def _threads(text: str) -> int:
-    count = int(text)
-    if not 1 <= count <= 1024:
-        raise argparse.ArgumentTypeError("must be between 1 and 1024")
-    return count
+    return _whole(text, 1, MOST_THREADS)
+
+
+def _seed(text: str) -> int:
+    return _whole(text, 0, LARGEST_SEED)
+
+
+def _folder(text: str) -> str:
+    if not text.strip():
+        raise argparse.ArgumentTypeError("needs the name of a folder")
+    return text
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; returns its exit code."""
-    asked = _parser().parse_args(arguments)
+    write_anything()
     try:
-        return _carry_out(asked)
+        asked = _parser().parse_args(arguments)
+    finally:
+        flush_quietly()
+    try:
+        with warnings.catch_warnings():
+            if not sys.warnoptions:  # meant for whoever works on the libraries, not for the user
+                warnings.simplefilter("ignore")
+            return _carry_out(asked)
     except KeyboardInterrupt:
-        print("driftwell: interrupted; nothing is running any more.", file=sys.stderr)
-        return 130
-    except BrokenPipeError:
-        # the reader of our output left; say nothing to the broken pipe at exit either
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return 0
+        tell("driftwell: interrupted; nothing is running any more.")
+        return INTERRUPTED
+    except Exception as defect:
+        if os.environ.get(TRACEBACK):
+            raise
+        tell(
+            f"driftwell: this is a defect of driftwell {__version__}, please report it with the "
+            f"command and the scenario: {type(defect).__name__}: {defect}\n"
+            f"Setting {TRACEBACK}=1 shows where it happened."
+        )
+        return DEFECT
 
 
 def _carry_out(asked: argparse.Namespace) -> int:
@@ -93,7 +145,7 @@ def _carry_out(asked: argparse.Namespace) -> int:
         from driftwell.cli.info import info
 
         return info(asked.run)
-    threads = asked.threads or len(os.sched_getaffinity(0))
+    threads = _usable_threads(asked.threads)
     os.environ["NUMBA_NUM_THREADS"] = str(threads)  # read once, when numba is imported
     from driftwell.cli.run_command import run_command
 
@@ -101,3 +153,16 @@ def _carry_out(asked: argparse.Namespace) -> int:
     if asked.seed is not None:
         settings.append(f"seed={asked.seed}")
     return run_command(asked.file, asked.output, settings, threads, not asked.no_pictures)
+
+
+def _usable_threads(asked: int | None) -> int:
+    """The number of threads: as asked, as the environment says, or one for each core."""
+    cores = len(os.sched_getaffinity(0))
+    if asked is None:
+        try:
+            return _threads(os.environ.get("NUMBA_NUM_THREADS", ""))
+        except argparse.ArgumentTypeError:
+            return cores
+    if asked > cores:
+        tell(f"{asked} threads on {cores} core{'s' * (cores != 1)}: no faster than {cores}.")
+    return asked

@@ -2,95 +2,150 @@
 
 from __future__ import annotations
 
-import signal
+import math
 import sys
 import time
-from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import suppress
 from datetime import datetime, timedelta
-from types import FrameType
 from typing import Any
 
 from tqdm import tqdm
 
+from driftwell.cli.printing import is_terminal, tell
+from driftwell.cli.stop_wish import StopWish
+from driftwell.forms import spelled
 from driftwell.particles.state import Particles
 from driftwell.run import Progress
 from driftwell.stepping.schedule import Schedule
 from driftwell.stepping.step_choice import StepChoice
 
+_REDRAWN = 0.2
+"""s, between two drawings of the bar."""
 _FIRST_LINE, _LONGEST_WAIT = 5.0, 600.0
+"""s, until the first line of a log, and the longest time between two."""
+_PAIRS_PER_SECOND = 1e9
+"""Pairs a thread sums in a second, at the best."""
+_LONG = 2 * 3600.0
+"""s, from which on a user should know before waiting."""
+_ROOMY = 120
+"""Characters of a terminal from which on the bar's text is written out."""
 
 
 class ProgressDisplay:
     """Shows progress on stderr, and passes the wish to stop on to the run."""
 
-    def __init__(self) -> None:
-        self._stop = False
+    def __init__(self, wish: StopWish, threads: int, coulomb: bool) -> None:
+        self._wish = wish
+        self._pairs_per_second = threads * _PAIRS_PER_SECOND if coulomb else math.inf
         self._bar: Any = None
-        self._began = time.monotonic()
-        self._next_line = _FIRST_LINE
+        self._began = 0.0
+        self._next: float | None = None
+
+    def compiles(self) -> None:
+        """Say why nothing moves yet."""
+        tell("compiling for this machine, once for each version: about half a minute")
 
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         """Say what the run will do, and why in such steps."""
-        count = len(particles)
-        print(
-            f"{count} charges, {plan.total_steps} steps of at most {choice.step:.4g} s, "
-            f"by {choice.because}",
-            file=sys.stderr,
+        tell(
+            f"{_counted(len(particles), 'charge')}, {_counted(plan.total_steps, 'step')} of at "
+            f"most {spelled(choice.step, 's', 4)}: {choice.because}"
         )
-        if sys.stderr.isatty():
-            self._bar = tqdm(
-                total=1.0,
-                bar_format="{percentage:5.1f} %|{bar}| {elapsed}, {remaining} left {postfix}",
-                leave=False,
-                file=sys.stderr,
+        count = len(particles)
+        sums = count * (count - 1) / 2 * plan.total_steps / self._pairs_per_second
+        if sums > _LONG:
+            tell(
+                f"That many pairs in that many steps take at least {_in_days(sums)}. Fewer charges "
+                "of more weight each, or a longer step, take less."
             )
-        self._began = time.monotonic()
 
     def goes_on(self, progress: Progress) -> bool:
         """Show how far the run is; False once a stop was asked for."""
-        share = progress.time / progress.duration
-        state = (
-            f"t = {progress.time:.4g} of {progress.duration:.4g} s, "
-            f"{progress.alive} of {progress.born} charges, "
-            f"energy residual {progress.energy_residual:.1e}"
-        )
-        if self._bar is not None:
-            self._bar.set_postfix_str(state, refresh=False)
-            self._bar.update(share - self._bar.n)
+        if self._next is None:
+            self._next = self._first()
         elapsed = time.monotonic() - self._began
-        if self._bar is None and elapsed >= self._next_line:
-            self._next_line = elapsed + min(2.0 * elapsed, _LONGEST_WAIT)
-            print(f"{state}{_finish(elapsed, share)}", file=sys.stderr)
-        return not self._stop
+        if elapsed >= self._next:
+            if self._bar is None:
+                self._next = elapsed + min(2.0 * elapsed, _LONGEST_WAIT)
+                tell(f"{datetime.now():%H:%M:%S}  {told(progress, elapsed)}")
+            else:
+                self._next = elapsed + _REDRAWN
+                self._draw(progress, elapsed)
+        return not self._wish.wanted
 
     def ends(self) -> None:
         """Take the bar away."""
         if self._bar is not None:
-            self._bar.close()
+            with suppress(OSError):
+                self._bar.close()
             self._bar = None
 
-    @contextmanager
-    def listening(self) -> Iterator[None]:
-        """While inside, Ctrl-C and SIGTERM ask the run to stop; a second one ends it at once."""
+    def _first(self) -> float:
+        """Begin with a bar or without; the time until something is shown, s."""
+        self._began = time.monotonic()
+        if not is_terminal(sys.stderr):
+            return _FIRST_LINE
+        tqdm.monitor_interval = 0  # no thread of its own: it would write beside us
+        with suppress(OSError):
+            self._bar = tqdm(
+                total=1.0,
+                bar_format="{percentage:3.0f} %|{bar}| {desc}",
+                leave=False,
+                dynamic_ncols=True,
+                file=sys.stderr,
+            )
+        return 0.0
 
-        def stop(number: int, frame: FrameType | None) -> None:
-            if self._stop:
-                raise KeyboardInterrupt
-            self._stop = True
-            print("\nStopping after the present steps; once more to end at once.", file=sys.stderr)
-
-        before = {each: signal.signal(each, stop) for each in (signal.SIGINT, signal.SIGTERM)}
+    def _draw(self, progress: Progress, elapsed: float) -> None:
+        bar = self._bar
         try:
-            yield
-        finally:
-            for each, handler in before.items():
-                signal.signal(each, handler)
+            bar.n = progress.time / progress.duration
+            bar.set_description_str(
+                told(progress, elapsed, short=(bar.ncols or 80) < _ROOMY), refresh=True
+            )
+        except OSError:  # the terminal is gone; the run is not
+            self._bar = None
 
 
-def _finish(elapsed: float, share: float) -> str:
+def told(progress: Progress, elapsed: float, short: bool = False) -> str:
+    """How far a run is: time, charges, energy residual, and when it will be done.
+
+    elapsed : s by the clock since its first step
+    """
+    reached, whole = spelled(progress.time, "s", 3), spelled(progress.duration, "s", 4)
+    done = _done(progress, elapsed)
+    if short:
+        return (
+            f"{reached} of {whole}, {progress.alive}/{progress.born} left, "
+            f"residual {abs(progress.energy_residual):.0e}{done}"
+        )
+    return (
+        f"t = {reached} of {whole}, {progress.alive} of {progress.born} charges left, "
+        f"energy residual {progress.energy_residual:.1e}{done}"
+    )
+
+
+def _done(progress: Progress, elapsed: float) -> str:
     """When the run will be done at the present pace."""
-    if share <= 0.0:
+    if progress.steps <= 0 or elapsed <= 0.0:
         return ""
-    done = datetime.now() + timedelta(seconds=elapsed * (1.0 - share) / share)
-    return f", done about {done:%H:%M:%S}" if elapsed < 3600 else f", done about {done:%a %H:%M}"
+    rest = elapsed * (progress.all_steps - progress.steps) / progress.steps
+    try:
+        done = datetime.now() + timedelta(seconds=rest)
+    except OverflowError:
+        return ", done in no time that can be told"
+    if rest < 12 * 3600:
+        return f", done {done:%H:%M:%S}"
+    return f", done {done:%a %H:%M}" if rest < 6 * 86400 else f", done {done:%Y-%m-%d}"
+
+
+def _in_days(seconds: float) -> str:
+    """A long time in words."""
+    for unit, length in (("years", 3.156e7), ("days", 86400.0)):
+        if seconds >= 2.0 * length:
+            return f"{seconds / length:.2g} {unit}"
+    return f"{seconds / 3600.0:.2g} hours"
+
+
+def _counted(number: int, noun: str) -> str:
+    return f"{number} {noun}{'s' * (number != 1)}"

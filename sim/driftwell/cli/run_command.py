@@ -2,94 +2,100 @@
 
 from __future__ import annotations
 
-import math
-import sys
 from collections.abc import Sequence
 from pathlib import Path
 
-from driftwell.answers.answer import Answer
+from driftwell.answers.answer_lines import answer_lines
+from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
+from driftwell.cli.stop_wish import StopWish
 from driftwell.errors import DriftwellError
+from driftwell.kernels.compilation import first_compilation
+from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
-from driftwell.run import Result, run
-from driftwell.scenario.read import read_scenario
+from driftwell.run import FINISHED, Result, run
+from driftwell.scenario.read import LoadedScenario, read_scenario
+
+UNUSABLE = 2
+"""Exit code where a file or folder cannot be used."""
 
 
 def run_command(
     file: str, output: str | None, settings: Sequence[str], threads: int, pictures: bool
 ) -> int:
     """Execute a scenario; returns the exit code of its outcome, or 2 with a message."""
-    folder = Path(output) if output else Path(f"{Path(file).stem}-run")
-    display = ProgressDisplay()
+    folder = Path(output) if output is not None else Path(f"{Path(file).stem}-run")
     try:
         loaded = read_scenario(file, settings)
-        print(loaded.scenario.title, file=sys.stderr)
-        with display.listening():
-            result = run(loaded, folder, display, threads)
-            display.ends()
+        tell(loaded.scenario.title)
+        result, written = _carried_out(loaded, folder, threads, pictures)
     except DriftwellError as error:
-        display.ends()
-        print(error, file=sys.stderr)
+        tell(str(error))
         return error.exit_code
-    print("\n".join(_told(result)), flush=True)
-    if pictures:
-        _draw(folder)
-    return result.outcome.exit_code or 0
+    except MemoryError as error:
+        tell(_too_little_memory(error))
+        return UNUSABLE
+    return result.outcome.exit_code or (0 if written else UNUSABLE)
 
 
-def _draw(folder: Path) -> None:
-    """Draw the run; what hinders that is said, and takes nothing from the answers."""
+def _carried_out(
+    loaded: LoadedScenario, folder: Path, threads: int, pictures: bool
+) -> tuple[Result, bool]:
+    """The run's result, and whether all that was to be printed and drawn could be."""
+    wish = StopWish((folder / MASTER).exists)
+    display = ProgressDisplay(wish, threads, loaded.scenario.coulomb.method != "off")
+    with wish.listening():
+        try:
+            with first_compilation(display.compiles):
+                result = run(loaded, folder, display, threads)
+        finally:
+            display.ends()
+        written = _report(result)
+        if pictures:
+            written = _draw(folder) and written
+    return result, written
+
+
+def _report(result: Result) -> bool:
+    """Print how a run ended and what it answers; whether that could be written."""
+    ending = f"{result.outcome.word}: {result.outcome.sentence}"
+    if result.outcome.word != FINISHED and not same_place():
+        tell(ending)  # whoever looks at stderr alone must know too
+    row, outcome = result.ledger, result.outcome
+    lines = [
+        "",
+        ending,
+        f"{row.count:.7g} real particles left, {row.count_lost:.7g} lost; "
+        f"{outcome.steps} steps in {outcome.wall_time:.1f} s",
+        f"ledger residuals: energy {row.energy_residual:.1e}, momentum "
+        f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
+        f"{row.third_law_residual:.1e}",
+        "",
+        *(
+            answer_lines(result.answers, width(), sign())
+            or ["The scenario asks no questions: the run only recorded."]
+        ),
+        "",
+        f"record: {result.folder / MASTER}",
+    ]
+    return answer(lines)
+
+
+def _draw(folder: Path) -> bool:
+    """Draw the pictures and say where they are; whether they could be drawn and told of."""
     from driftwell.report.pictures import draw
 
     try:
-        files = draw(open_run(folder))
+        made = draw(open_run(folder))
     except DriftwellError as error:
-        print(error, file=sys.stderr)
-        return
-    if files:
-        print(f"pictures: {files[0].parent}, {len(files)} files")
+        tell(str(error))
+        return False
+    return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])
 
 
-def _told(result: Result) -> list[str]:
-    """The end of a run: outcome, ledger, answers as a table, and where it all is."""
-    row, outcome = result.ledger, result.outcome
-    return [
-        "",
-        f"{outcome.word}: {outcome.sentence}",
-        f"{outcome.steps} steps in {outcome.wall_time:.1f} s; {row.count - 0:g} real particles "
-        f"left, {row.count_lost:g} lost",
-        f"ledger: energy residual {row.energy_residual:.1e}, momentum {row.momentum_residual:.1e}, "
-        f"angular momentum {row.angular_residual:.1e}, third law {row.third_law_residual:.1e}",
-        "",
-        *_table(result.answers),
-        "",
-        f"record: {result.folder}/run.h5",
-    ]
-
-
-def _table(answers: Sequence[Answer]) -> list[str]:
-    """The answers, aligned."""
-    if not answers:
-        return ["The scenario asks no questions."]
-    cells = [(answer.name, _value(answer), answer.unit, answer.note) for answer in answers]
-    name = max(len(cell[0]) for cell in cells)
-    value = max(len(cell[1]) for cell in cells)
-    unit = max(len(cell[2]) for cell in cells)
-    return [
-        f"{cell[0]:<{name}}  {cell[1]:>{value}} {cell[2]:<{unit}}  {cell[3]}".rstrip()
-        for cell in cells
-    ]
-
-
-def _value(answer: Answer) -> str:
-    """Value and error to the digits the error warrants."""
-    if math.isnan(answer.value):
-        return "none"
-    if answer.error is None or not math.isfinite(answer.error) or answer.error <= 0.0:
-        return f"{answer.value:.6g}"
-    if answer.value != 0.0:
-        digits = math.floor(math.log10(abs(answer.value))) - math.floor(math.log10(answer.error))
-        shown = f"{answer.value:.{max(2, min(digits + 2, 12))}g}"
-    else:
-        shown = "0"
-    return f"{shown} +- {answer.error:.2g}"
+def _too_little_memory(error: MemoryError) -> str:
+    why = f" ({error})" if str(error) else ""
+    return (
+        f"This machine has too little memory for the run{why}. Take fewer charges of more weight "
+        "each, record less often, or track fewer charges; what was sealed before is kept."
+    )

@@ -276,20 +276,27 @@ def _merge(n: int, constant: float, work: np.ndarray, out_field: np.ndarray) -> 
 def potential_at(
     i: int, position: np.ndarray, charge: np.ndarray, softening2: float, constant: float
 ) -> float:
-    """Potential at charge `i` of all others, V."""
+    """Potential at charge `i` of all others, V; of one at its very place none, if unsoftened."""
+    before = _potential_of(0, i, i, position, charge, softening2)
+    after = _potential_of(i + 1, charge.size, i, position, charge, softening2)
+    return constant * (before + after)
+
+
+@inner_pair_kernel
+def _potential_of(
+    first: int, last: int, i: int, position: np.ndarray, charge: np.ndarray, softening2: float
+) -> float:
+    """Sum of Q/r at charge `i` over the charges from `first` to before `last`."""
     x, y, z = position[0], position[1], position[2]
     xi, yi, zi = x[i], y[i], z[i]
     total = 0.0
-    for j in range(charge.size):
+    for j in range(first, last):
         dx = xi - x[j]
         dy = yi - y[j]
         dz = zi - z[j]
         r2 = dx * dx + dy * dy + dz * dz + softening2
-        r2 = r2 if r2 > 0.0 else 1.0
-        total += charge[j] / math.sqrt(r2)
-    # a charge's own softened term, or the guard's r = 1 without softening
-    itself = charge[i] / math.sqrt(softening2 if softening2 > 0.0 else 1.0)
-    return constant * (total - itself)
+        total += 0.0 if r2 == 0.0 else charge[j] / math.sqrt(r2)
+    return total
 
 
 @pair_kernel

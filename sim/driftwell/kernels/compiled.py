@@ -11,6 +11,7 @@ from __future__ import annotations
 import hashlib
 import os
 import shutil
+import stat
 import tempfile
 import time
 from collections.abc import Callable
@@ -45,7 +46,7 @@ def _user_cache() -> Path:
     """The user's cache folder, or DRIFTWELL_CACHE where that is set."""
     named = os.environ.get("DRIFTWELL_CACHE")
     if named:
-        return Path(named)
+        return Path(named).absolute()
     base = os.environ.get("XDG_CACHE_HOME")
     return (Path(base) if base else Path.home() / ".cache") / "driftwell"
 
@@ -59,6 +60,23 @@ def _usable(folder: Path) -> bool:
     except OSError:
         return False
     return True
+
+
+def _private(folder: Path) -> bool:
+    """Whether `folder`, made where it is missing, is the user's own and nobody else's to write in.
+
+    Machine code read from it is run, and anybody may make a folder where temporary files live.
+    """
+    try:
+        folder.mkdir(mode=0o700, exist_ok=True)
+        status = folder.lstat()
+    except OSError:
+        return False
+    return (
+        stat.S_ISDIR(status.st_mode)
+        and status.st_uid == os.getuid()
+        and not (status.st_mode & (stat.S_IWGRP | stat.S_IWOTH))
+    )
 
 
 def _prune(parent: Path, keep: Path) -> None:
@@ -83,9 +101,9 @@ def cache_folder() -> Path:
         os.utime(parent / name)
         _prune(parent, parent / name)
         return parent / name
-    fallback = Path(tempfile.gettempdir()) / f"driftwell-{os.getuid()}" / name
-    if _usable(fallback):
-        return fallback
+    fallback = Path(tempfile.gettempdir()) / f"driftwell-{os.getuid()}"
+    if _private(fallback) and _usable(fallback / name):
+        return fallback / name
     return Path(tempfile.mkdtemp(prefix="driftwell-"))
 
 

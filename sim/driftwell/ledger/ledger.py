@@ -74,11 +74,13 @@ class _Scale:
     energy: float = 0.0
     momentum: float = 0.0
     angular: float = 0.0
+    charge: float = 0.0
 
-    def grow(self, energy: float, momentum: float, angular: float) -> None:
+    def grow(self, energy: float, momentum: float, angular: float, charge: float) -> None:
         self.energy = max(self.energy, energy)
         self.momentum = max(self.momentum, momentum)
         self.angular = max(self.angular, angular)
+        self.charge = max(self.charge, charge)
 
 
 @dataclass(slots=True)
@@ -110,6 +112,7 @@ class Ledger:
             kinetic + abs(in_fields) + abs(coulomb),
             float(np.sqrt(_squares(momenta)).sum()),
             float(np.sqrt(_squares(position) * _squares(momenta)).sum()),
+            float(np.abs(charges.charge).sum()),
         )
 
         def vector(k: int) -> Floats:
@@ -158,7 +161,7 @@ class Ledger:
             angular_residual=_share(float(np.linalg.norm(angular_gap)), self._scale.angular),
             charge=charge,
             charge_walls=float(book[CHARGE_WALLS]),
-            charge_residual=_share(charge - self._charge + book[CHARGE_WALLS], abs(self._charge)),
+            charge_residual=_share(charge - self._charge + book[CHARGE_WALLS], self._scale.charge),
             count=count,
             count_lost=float(book[COUNT_WALLS]),
             count_residual=_share(lost - book[COUNT_WALLS], self._count),

@@ -4,18 +4,21 @@ from __future__ import annotations
 
 from driftwell.forms import Count, Form, NonNegative, Positive, Time, key
 
+DEFAULT_RECORDS = 200
+DEFAULT_TRACKS = 1000
+
 
 class Record(Form):
     """What is kept, and how often."""
 
     every: Positive[Time] | None = key(
-        "time between two records; left out: 200 records over the duration",
+        f"time between two records; left out: {DEFAULT_RECORDS} records over the duration",
         default=None,
         example="10 us",
     )
     tracks: NonNegative[Count] | None = key(
         "number of charges whose trajectories are kept, evenly chosen by id; left out: all up to "
-        "1000, else 1000",
+        f"{DEFAULT_TRACKS}, else {DEFAULT_TRACKS}",
         default=None,
         example=200,
     )

@@ -46,6 +46,9 @@ class Header:
     """What a run is; the lower fields are found out where they are not given.
 
     scenario : text of the scenario file, as given
+    settings : ``key=value`` given beside the file
+    digest : of the content with settings and files named
+    command : the command that makes the same run again
     duration, step : s
     softening : m
     tracked : ids of the charges whose trajectories are kept
@@ -65,6 +68,10 @@ class Header:
     detectors: tuple[str, ...] = ()
     tracked: tuple[int, ...] = ()
     traces: tuple[str, ...] = ()
+    settings: tuple[str, ...] = ()
+    digest: str = ""
+    command: str = ""
+    threads: int = 1
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)

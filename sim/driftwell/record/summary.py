@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+import shlex
+from functools import partial
+
 import numpy as np
 
-from driftwell.answers.answer import Answer
+from driftwell.answers.answer_lines import answer_lines
 from driftwell.errors import RecordError
+from driftwell.forms import spelled
 from driftwell.record.layout import ROWS
 from driftwell.record.reader import Run
 
@@ -19,16 +23,22 @@ _RESIDUALS = (
 )
 
 
-def summary(run: Run) -> list[str]:
+WIDTH = 100
+"""Characters of a line, where nothing else is asked."""
+
+
+def summary(run: Run, width: int = WIDTH, sign: str = "±") -> list[str]:
     """What the run is, how it ended, what it holds and what it answers.
 
     A part that cannot be read says so in its place; damaged files are listed at the end.
+
+    width, sign : as for :func:`driftwell.answers.answer_lines.answer_lines`
     """
     lines = [*_identity(run)]
     for title, part in (
         ("clouds", _clouds),
         ("ledger", _ledger),
-        ("answers", _answers),
+        ("answers", partial(_answers, width=width - 2, sign=sign)),
         ("record", _datasets),
     ):
         try:
@@ -42,36 +52,26 @@ def summary(run: Run) -> list[str]:
     return lines
 
 
-def answers_table(answers: tuple[Answer, ...]) -> list[str]:
-    """The answers as aligned lines: name, what was asked, value, error, unit, note."""
-    rows = [("name", "ask", "value", "error", "unit", "note")]
-    for answer in answers:
-        error = "unknown" if answer.error is None else f"{answer.error:.2g}"
-        value = f"{answer.value:.7g}"
-        rows.append((answer.name, answer.ask, value, error, answer.unit, answer.note))
-    widths = [max(len(row[k]) for row in rows) for k in range(6)]
-    return [
-        "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
-        for row in rows
-    ]
-
-
 def _identity(run: Run) -> list[str]:
     header, outcome = run.header, run.outcome
     lines = [
         header.title,
         f"{outcome.word}: {outcome.sentence}",
-        f"reached {run.end_time:.6g} s of {header.duration:.6g} s",
+        f"reached {spelled(run.end_time, 's')} of {spelled(header.duration, 's')}",
     ]
     if outcome.steps is not None:
         lines.append(f"{outcome.steps} steps in {outcome.wall_time:.1f} s by the clock")
     return [
         *lines,
-        f"{header.scheme}, step {header.step:.6g} s, seed {header.seed}",
-        f"begun {header.created} on {header.processor}, {header.cores} processors",
+        f"{header.scheme}, step {spelled(header.step, 's')}, seed {header.seed}",
+        f"begun {header.created} on {header.processor}, {header.threads} threads on "
+        f"{header.cores} processors",
         f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "
         f"{header.numpy_version}, numba {header.numba_version}, h5py {header.h5py_version}",
-        f"scenario sha256 {header.scenario_sha256}",
+        f"settings: {shlex.join(header.settings) or 'as in the file'}",
+        f"made by: {header.command or 'a program, not the command line'}",
+        f"digest of the content: {header.digest or 'none'}",
+        f"sha256 of the scenario's text: {header.scenario_sha256}",
     ]
 
 
@@ -106,9 +106,9 @@ def _ledger(run: Run) -> list[str]:
     ]
 
 
-def _answers(run: Run) -> list[str]:
+def _answers(run: Run, width: int, sign: str) -> list[str]:
     if run.answers:
-        return answers_table(run.answers)
+        return answer_lines(run.answers, width, sign)
     return ["unfinished" if run.outcome.exit_code is None else "none asked"]
 
 

@@ -17,7 +17,8 @@ from numpy.typing import ArrayLike, NDArray
 from driftwell.answers.answer import Answer
 from driftwell.errors import RecordError
 from driftwell.particles.state import Particles
-from driftwell.record.commit import commit, force_folder
+from driftwell.record.claim import claim, refuse_taken, unwritable
+from driftwell.record.commit import commit
 from driftwell.record.file_image import (
     file_in_memory,
     image_of,
@@ -26,15 +27,13 @@ from driftwell.record.file_image import (
     text_table,
 )
 from driftwell.record.header import Header
-from driftwell.record.index import SEGMENTS, SegmentFacts, segment_name
+from driftwell.record.index import SegmentFacts, segment_name
 from driftwell.record.layout import ANSWERS, OUTCOME, SNAPSHOT
 from driftwell.record.master import ANSWERS_FILE, MASTER, master_image
 from driftwell.record.outcome import Outcome
 from driftwell.record.pending import Pending
 from driftwell.record.sealing import longest_wait, most_bytes
 from driftwell.record.segment import segment_image
-
-SCENARIO_FILE = "scenario.toml"
 
 
 class RunWriter:
@@ -58,15 +57,13 @@ class RunWriter:
 
         Raises RecordError where the folder holds a run already or cannot be written.
         """
+        text = header.scenario.encode()
+        refuse_taken(folder, text)
         try:
             folder.mkdir(parents=True, exist_ok=True)
-            _claim(folder, header.scenario.encode())
-            commit(folder / MASTER, master_image(header, (), answered=False))
+            claim(folder, text, master_image(header, (), answered=False))
         except OSError as fault:
-            raise RecordError(
-                f"{folder}: cannot be written ({fault.strerror or fault}); a run needs a folder it "
-                "may write to, on a disk with space. Name another with -o."
-            ) from fault
+            raise unwritable(folder, fault) from fault
         return cls(folder, header, clock)
 
     def trajectory(self, time: float, state: ArrayLike) -> None:
@@ -195,30 +192,3 @@ class RunWriter:
             f"Kept: {count} segment{'s' * (count > 1)}, whole up to t = "
             f"{self._segments[-1].end:.6g} s; `driftwell info {self.folder}` shows them."
         )
-
-
-def _claim(folder: Path, scenario: bytes) -> None:
-    """Take the folder for one run and put the scenario into it.
-
-    Of two runs started at once only one makes the folder of segments.
-    """
-    text = folder / SCENARIO_FILE
-    found = [name for name in (MASTER, ANSWERS_FILE, SEGMENTS) if (folder / name).exists()]
-    if text.exists() and text.read_bytes() != scenario:
-        found.append(f"another {SCENARIO_FILE}")
-    try:
-        if not found:
-            (folder / SEGMENTS).mkdir()
-    except FileExistsError:
-        found.append(SEGMENTS)
-    if found:
-        raise RecordError(
-            f"{folder}: holds {' and '.join(found)} already; a run needs a folder without another "
-            "run in it. Name a new folder with -o, or move the old run away."
-        )
-    try:
-        commit(text, scenario)
-        force_folder(folder.parent)
-    except BaseException:
-        (folder / SEGMENTS).rmdir()
-        raise

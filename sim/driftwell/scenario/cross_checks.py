@@ -51,10 +51,10 @@ def _time_faults(scenario: Scenario) -> Iterator[Fault]:
             continue
         if value > duration:
             yield Fault((section, key), "", f"must be at most the duration, {whole}")
-        elif section == "record" and duration / value > MOST_RECORDS:
+        elif section == "record" and duration / value > MOST_RECORDS * (1.0 + _SAME_TIME):
             text = f"would be {duration / value:.3g} times in {whole}; needs at most {MOST_RECORDS}"
             yield Fault((section, key), "", text)
-        elif section == "stepping" and duration / value > MOST_STEPS:
+        elif section == "stepping" and duration / value > MOST_STEPS * (1.0 + _SAME_TIME):
             text = f"would be {duration / value:.3g} steps in {whole}; needs at most {MOST_STEPS:g}"
             yield Fault((section, key), "", text)
 

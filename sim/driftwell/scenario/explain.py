@@ -10,6 +10,7 @@ from operator import itemgetter
 
 from driftwell.forms import spelled
 from driftwell.particles.species import bodies
+from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.scenario.cautions import cautions
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -17,7 +18,6 @@ from driftwell.scenario.source import shown_path
 
 WIDTH = 100
 _SECTION, _LEAST_NAME, _MOST_NAME = 12, 8, 24
-_RECORDS = 200
 _NUMBER_AND_UNIT = re.compile(r"(\d) (?=[A-Za-zµ]{1,3}\b)")
 
 Row = tuple[str, str, str]
@@ -85,8 +85,10 @@ def _stepping_words(scenario: Scenario) -> str:
 
 def _record_words(scenario: Scenario) -> str:
     record = scenario.record
-    every = record.every or scenario.duration / _RECORDS
-    tracks = "up to 1000 charges" if record.tracks is None else f"{record.tracks} charges"
+    every = record.every or scenario.duration / DEFAULT_RECORDS
+    tracks = (
+        f"up to {DEFAULT_TRACKS} charges" if record.tracks is None else f"{record.tracks} charges"
+    )
     if record.snapshots is None:
         snapshots = "at start and end"
     else:

@@ -34,14 +34,22 @@ from driftwell.kernels.status import (
 )
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
-from driftwell.stepping.drift import drift, induced_work, kick, kick_both
-from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
+from driftwell.stepping.drift import drift, induced_work, jump_magnets, kick, kick_both
+from driftwell.stepping.events import (
+    LOST,
+    UNTOUCHED,
+    any_crossing,
+    meet_surfaces,
+    take_out,
+)
 from driftwell.stepping.forces import coulomb_forces, external_forces
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,
     CURSOR_FRESH,
+    CURSOR_INDUCED,
     CURSOR_INTERVAL,
+    CURSOR_JUMPED,
     CURSOR_OVERFLOW,
     CURSOR_STEP,
     CURSOR_STEPS,
@@ -105,39 +113,68 @@ def burst(
             end = time[j] + (cursor[CURSOR_STEP] + 1) * h
             if cursor[CURSOR_STEP] + 1 == steps[j]:
                 end = time[j + 1]
-            # Pass k = 0 opens the step, 1..stages drift and kick, the one after looks at surfaces.
-            for k in range(stages + 2):
-                met = UNTOUCHED
+            # Pass k = 0 opens the step, 1..stages drift and kick, the next looks at surfaces, and
+            # the last takes lost charges out, when the forces belong to where reflected ones are.
+            met = UNTOUCHED
+            for k in range(stages + 3):
                 jump = False
                 t = start
                 if k == 0:
-                    jump = cursor[CURSOR_STEP] == 0 and j > 0 and (flags[j] & BREAK) != 0
-                    if surfaced:
-                        _remember(charges, work)
+                    jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
                 elif k <= stages:
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
-                    drift(plan, fields, charges, before, inside, scheme.drift[k - 1] * h, work)
-                else:
+                    drift(
+                        plan,
+                        fields,
+                        charges,
+                        before,
+                        inside,
+                        scheme.drift[k - 1] * h,
+                        work,
+                    )
+                elif k == stages + 1:
                     t = end
                     if last and every > 1:
                         coulomb_forces(pair_sum, plan, charges, work)
                         kick(charges, work.coulomb, 0.5 * every * h)
-                    if surfaced:
-                        met = meet_surfaces(plan, surfaces, charges, start, h, work)
+                    if surfaced and any_crossing(surfaces, charges, work):
+                        met = meet_surfaces(
+                            plan,
+                            fields,
+                            surfaces,
+                            charges,
+                            together,
+                            start,
+                            h,
+                            inside,
+                            work,
+                        )
                     if met == UNTOUCHED:
                         break
+                    if met == LOST:
+                        continue
+                else:
+                    t = end
+                    if met & LOST == 0:
+                        break
+                    take_out(plan, surfaces, charges, work)
                 if k > 0 or jump or cursor[CURSOR_FRESH] == 0:
                     settle(work.rate, work.pending, work.total, work.carry)
+                    if jump:
+                        cursor[CURSOR_JUMPED] = j
+                        if magnetised:
+                            before = 0.5 * (time[j - 1] + time[j])
+                            jump_magnets(plan, fields, charges, t, before, inside, work)
                     energy = work.energy[0]
                     external_forces(fields, charges, t, inside, work)
-                    if jump or met == LOST:
+                    if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
                     if together or (first and k == 0) or (last and k > stages):
                         coulomb_forces(pair_sum, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
-                    break
+                    continue
                 if k == 0 and first:
                     if budget <= 0:
                         return PAUSED
@@ -145,8 +182,10 @@ def burst(
                         return EVENTS_FULL
                     if every > 1:
                         kick(charges, work.coulomb, 0.5 * every * h)
+                if k == 0 and surfaced:
+                    _remember(charges, together, work)
                 length = scheme.kick[k] * h
-                if magnetised:
+                if magnetised and cursor[CURSOR_INDUCED] != 0:
                     _account_induced(plan, charges, length, together, work)
                 if together:
                     kick_both(charges, work.external, work.coulomb, length)
@@ -189,14 +228,17 @@ def _settle_energy(before: float, jump: bool, work: Work) -> None:
 
 
 @inner_kernel
-def _remember(charges: Charges, work: Work) -> None:
-    """Keep the state at the beginning of a step for the path through it."""
+def _remember(charges: Charges, together: bool, work: Work) -> None:
+    """Keep state and field at the beginning of a step for the path through it."""
     for axis in range(3):
         x, u = charges.position[axis], charges.velocity[axis]
+        e, c = work.external[axis], work.coulomb[axis]
         old_x, old_u = work.old_position[axis], work.old_velocity[axis]
+        old_e = work.old_field[axis]
         for i in range(x.size):
             old_x[i] = x[i]
             old_u[i] = u[i]
+            old_e[i] = e[i] + c[i] if together else e[i]
 
 
 @inner_kernel

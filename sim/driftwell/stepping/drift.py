@@ -29,8 +29,14 @@ from driftwell.stepping.accounts import (
     TORQUE_MAGNETS,
     WORK_INDUCED,
     enter_vector,
+    settle,
 )
-from driftwell.stepping.forces import shaped_magnetic, uniform_magnetic
+from driftwell.stepping.forces import (
+    force_and_torque,
+    induced_by_jumps,
+    shaped_magnetic,
+    uniform_magnetic,
+)
 from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 _SLOW = 1e-4
@@ -81,6 +87,34 @@ def induced_work(
         )
         total += charges.charge[i] * along / (gamma0 + gamma1)
     add_compensated(work.total, work.carry, WORK_INDUCED, h * total)
+
+
+@outer_kernel
+def jump_magnets(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    t: float,
+    before: float,
+    after: float,
+    work: Work,
+) -> None:
+    """Kick by what magnets that jump at time `t` induce: u += Q/m times minus the change of A.
+
+    It is the limit of ever faster ramps. `before` and `after` lie inside the pieces on both sides
+    of `t`. Overwrites the fields and the rates in `work`, which must be settled.
+    """
+    induced_by_jumps(fields, charges, t, before, after, work)
+    induced_work(plan, charges, work.induced, 1.0, work)
+    for axis in range(3):
+        row, out = work.induced[axis], work.external[axis]
+        for i in range(row.size):
+            out[i] = row[i]
+    force_and_torque(charges, work)
+    work.rate[0] = 0.0
+    work.pending[0] = 1.0
+    settle(work.rate, work.pending, work.total, work.carry)
+    kick(charges, work.induced, 1.0)
 
 
 @inner_kernel
@@ -161,6 +195,32 @@ def _helix(
         uz[i] += turn * cz - less * pz
 
 
+@inner_kernel
+def helix(
+    ux: float, uy: float, uz: float, bx: float, by: float, bz: float, theta: float
+) -> tuple[float, float, float, float, float, float]:
+    """Mean of u on the way round by `theta` about the unit vector b, and how u changes."""
+    half = math.sin(0.5 * theta)
+    turn = math.sin(theta)
+    less = 2.0 * half * half  # 1 - cos(theta), without cancellation
+    mean_turn, mean_less = 1.0, 0.0
+    if theta != 0.0:
+        mean_turn, mean_less = turn / theta, less / theta
+    along = ux * bx + uy * by + uz * bz
+    px, py, pz = ux - along * bx, uy - along * by, uz - along * bz
+    cx = uy * bz - uz * by
+    cy = uz * bx - ux * bz
+    cz = ux * by - uy * bx
+    return (
+        along * bx + mean_turn * px + mean_less * cx,
+        along * by + mean_turn * py + mean_less * cy,
+        along * bz + mean_turn * pz + mean_less * cz,
+        turn * cx - less * px,
+        turn * cy - less * py,
+        turn * cz - less * pz,
+    )
+
+
 @outer_kernel
 def _turn(charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray) -> None:
     """Equation (1) alone, in each charge's own magnetic field (3, n), T."""
@@ -172,17 +232,10 @@ def _turn(charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray) -
             continue
         bx, by, bz = bx / strength, by / strength, bz / strength
         theta = charges.charge_to_mass[0, i] * strength * slowness[i] * h
-        half = math.sin(0.5 * theta)
-        turn = math.sin(theta)
-        less = 2.0 * half * half
-        along = ux[i] * bx + uy[i] * by + uz[i] * bz
-        px, py, pz = ux[i] - along * bx, uy[i] - along * by, uz[i] - along * bz
-        cx = uy[i] * bz - uz[i] * by
-        cy = uz[i] * bx - ux[i] * bz
-        cz = ux[i] * by - uy[i] * bx
-        ux[i] += turn * cx - less * px
-        uy[i] += turn * cy - less * py
-        uz[i] += turn * cz - less * pz
+        _, _, _, wx, wy, wz = helix(ux[i], uy[i], uz[i], bx, by, bz, theta)
+        ux[i] += wx
+        uy[i] += wy
+        uz[i] += wz
 
 
 @outer_kernel

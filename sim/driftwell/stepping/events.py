@@ -1,15 +1,18 @@
 """What happens on walls and detectors inside a step.
 
 After a whole step every charge's side of every surface is compared with the side it was on. Where
-one changed, the path through the step is the cubic through both ends' positions and velocities
-(Hermite; error of order h^4, as small as the best scheme's), and the crossing is found on it by
-bisection to the last bit. Proper velocity at the crossing is the straight line between both ends,
-corrected by how the cubic's slope differs from the straight line of velocities.
+one changed, the path through the step is the quintic through both ends' positions, velocities and
+accelerations (path.py; error of order h^6 in place and time, as small as the best scheme's, and h^5
+in velocity), and the crossing is found on it by bisection to the last bit.
 
-An absorbed charge leaves the sums at the end of the step it was lost in; what is entered in the
-accounts is what it carried then, so that the ledger closes exactly, while the record keeps place,
-time and velocity of the crossing itself. A reflected charge turns its velocity over at the
-crossing and goes on for the rest of the step with the step's mean acceleration (order h^2).
+An absorbed charge leaves the sums at the end of the step it was lost in, after all reflected ones
+have found their places; what is entered in the accounts is what it carried then, so that the
+ledger closes exactly, while the record keeps place, time and velocity of the crossing itself, and
+that is where it stays. A reflected charge turns its velocity over at the crossing and goes on for
+the rest of the step with the step's mean electric acceleration, turning in the magnetic field
+(order h^2). What the magnet did in the step is told apart by the way made: with u' = a + Q/m v x B,
+
+    a = ((u1 - u0) - Q/m (x1 - x0) x B) / h                                                 (1)
 """
 
 from __future__ import annotations
@@ -19,7 +22,7 @@ import math
 import numpy as np
 
 from driftwell.coulomb.direct import potential_at
-from driftwell.kernels import outer_kernel
+from driftwell.kernels import inner_kernel, outer_kernel
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import (
     ANGULAR_WALLS,
@@ -29,27 +32,59 @@ from driftwell.stepping.accounts import (
     MOMENTUM_WALLS,
     enter_vector,
 )
-from driftwell.stepping.motion import CURSOR_EVENTS, CURSOR_OVERFLOW, Charges, Plan, Work
+from driftwell.stepping.drift import helix
+from driftwell.stepping.forces import magnetic_at
+from driftwell.stepping.motion import (
+    CURSOR_EVENTS,
+    CURSOR_OVERFLOW,
+    LEAVING,
+    Charges,
+    Fields,
+    Plan,
+    Work,
+)
+from driftwell.stepping.path import End, end_of, place, point
 from driftwell.walls.form import ABSORB, PASS
 from driftwell.walls.table import SurfaceTable, level, normal, stops
 
 UNTOUCHED, MOVED, LOST = 0, 1, 2
+"""What a step's surfaces did, as bits: MOVED + LOST where both happened."""
 _BISECTIONS = 60
 _BOUNCES = 16
+
+
+@inner_kernel
+def any_crossing(surfaces: SurfaceTable, charges: Charges, work: Work) -> bool:
+    """Whether a charge is on another side of a surface than at the beginning of the step."""
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    crossed = 0
+    for s in range(surfaces.kind.size):
+        kind = surfaces.kind[s]
+        p = surfaces.parameter[s]
+        side = work.side[s]
+        for i in range(x.size):
+            now = 1 if level(kind, p, x[i], y[i], z[i]) > 0.0 else -1
+            crossed += now != side[i]
+    return crossed > 0
 
 
 @outer_kernel
 def meet_surfaces(
     plan: Plan,
+    fields: Fields,
     surfaces: SurfaceTable,
     charges: Charges,
+    together: bool,
     t: float,
     h: float,
+    inside: float,
     work: Work,
 ) -> int:
-    """Treat all crossings of the step from `t` to `t + h`; returns UNTOUCHED, MOVED or LOST.
+    """Treat all crossings of the step from `t` to `t + h`; returns UNTOUCHED, MOVED and LOST.
 
-    ``work.old_position`` and ``work.old_velocity`` hold the state at `t`.
+    ``work.old_position``, ``work.old_velocity`` and ``work.old_field`` hold the state at `t`;
+    `together` : the Coulomb field is part of every kick. Lost charges are marked
+    as LEAVING; :func:`take_out` is to be called once the forces belong to the places of the rest.
     """
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     changed = UNTOUCHED
@@ -57,87 +92,209 @@ def meet_surfaces(
         kind = surfaces.kind[s]
         p = surfaces.parameter[s]
         side = work.side[s]
-        crossed = 0
         for i in range(x.size):
-            now = 1 if level(kind, p, x[i], y[i], z[i]) > 0.0 else -1
-            crossed += now != side[i]
-        if crossed == 0:
-            continue
-        for i in range(x.size):
-            if charges.alive[i] == 0:
+            there = level(kind, p, x[i], y[i], z[i])
+            now = 1 if there > 0.0 else -1
+            if now == side[i] or charges.alive[i] != 1:
                 continue
-            now = 1 if level(kind, p, x[i], y[i], z[i]) > 0.0 else -1
-            if now != side[i]:
-                changed = max(changed, _follow(plan, surfaces, charges, i, t, h, work))
+            if side[i] == 0:
+                side[i] = 0 if there == 0.0 else now
+            else:
+                changed |= _follow(plan, fields, surfaces, charges, together, i, t, h, inside, work)
     return changed
+
+
+@outer_kernel
+def take_out(plan: Plan, surfaces: SurfaceTable, charges: Charges, work: Work) -> None:
+    """Take the charges that are LEAVING out of all sums, and put them where they were lost."""
+    for i in range(charges.alive.size):
+        if charges.alive[i] == LEAVING:
+            _absorb(plan, charges, i, work)
+            x, y, z = (
+                work.old_position[0, i],
+                work.old_position[1, i],
+                work.old_position[2, i],
+            )
+            _put(charges, i, x, y, z)
+            for s in range(surfaces.kind.size):
+                there = level(surfaces.kind[s], surfaces.parameter[s], x, y, z)
+                work.side[s, i] = 1 if there > 0.0 else -1
 
 
 @outer_kernel
 def _follow(
     plan: Plan,
+    fields: Fields,
     surfaces: SurfaceTable,
     charges: Charges,
+    together: bool,
     i: int,
     t: float,
     h: float,
+    inside: float,
     work: Work,
 ) -> int:
     """Follow one charge through the step, surface by surface; UNTOUCHED, MOVED or LOST."""
-    x0, y0, z0 = work.old_position[0, i], work.old_position[1, i], work.old_position[2, i]
-    ux0, uy0, uz0 = work.old_velocity[0, i], work.old_velocity[1, i], work.old_velocity[2, i]
+    last = _state(plan, fields, charges, together, i, t + h, inside, work)
+    first = _old_state(plan, fields, charges, i, t, inside, work)
     changed = UNTOUCHED
     start, span = t, h
     for _ in range(_BOUNCES):
-        x1, y1, z1 = charges.position[0, i], charges.position[1, i], charges.position[2, i]
-        ux1, uy1, uz1 = charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i]
-        path = (x0, y0, z0, ux0, uy0, uz0, x1, y1, z1, ux1, uy1, uz1)
-        wall, when = _first_wall(plan, surfaces, path, span, i, work)
-        _pass_detectors(plan, surfaces, path, start, span, when, i, work)
+        x0, y0, z0, ux0, uy0, uz0 = first[:6]
+        x1, y1, z1, ux1, uy1, uz1 = last[:6]
+        wall, when = _first_wall(plan, surfaces, first, last, span, i, work)
+        _pass_detectors(plan, surfaces, first, last, start, span, when, i, work)
         if wall < 0:
             return changed
-        xc, yc, zc, uxc, uyc, uzc = _point(plan, path, span, when)
+        xc, yc, zc, uxc, uyc, uzc = point(plan, first, last, span, when)
         if surfaces.effect[wall] == ABSORB:
             _write(wall, i, start + when * span, xc, yc, zc, uxc, uyc, uzc, 0.0, work)
-            _absorb(plan, charges, i, work)
+            charges.alive[i] = LEAVING
             for s in range(surfaces.kind.size):
                 there = level(surfaces.kind[s], surfaces.parameter[s], x1, y1, z1)
                 work.side[s, i] = 1 if there > 0.0 else -1
-            return LOST
-        nx, ny, nz = normal(surfaces.kind[wall], surfaces.parameter[wall], xc, yc, zc)
+            work.old_position[0, i], work.old_position[1, i] = xc, yc
+            work.old_position[2, i] = zc
+            return changed | LOST
+        nx, ny, nz = normal(
+            surfaces.kind[wall], surfaces.parameter[wall], xc, yc, zc, uxc, uyc, uzc
+        )
         outward = -work.side[wall, i] * (uxc * nx + uyc * ny + uzc * nz)
         if outward <= 0.0:  # rounding left it a hair outside, on its way back in
             return changed
         changed = MOVED
-        ax, ay, az = (ux1 - ux0) / span, (uy1 - uy0) / span, (uz1 - uz0) / span
+        _account_bounce(charges, i, -1.0, work)
+        ratio = charges.charge_to_mass[0, i]
+        dx, dy, dz = ratio * (x1 - x0), ratio * (y1 - y0), ratio * (z1 - z0)
+        _put(charges, i, 0.5 * (x0 + x1), 0.5 * (y0 + y1), 0.5 * (z0 + z1))
+        bx, by, bz = magnetic_at(fields, charges, i, start + 0.5 * span, inside, work)
+        rest = 0.5 * (1.0 - when)
+        ax = rest * (ux1 - ux0 - (dy * bz - dz * by))  # (1), for half of what is left
+        ay = rest * (uy1 - uy0 - (dz * bx - dx * bz))
+        az = rest * (uz1 - uz0 - (dx * by - dy * bx))
         along = 2.0 * (uxc * nx + uyc * ny + uzc * nz)
-        x0, y0, z0 = xc, yc, zc
         ux0, uy0, uz0 = uxc - along * nx, uyc - along * ny, uzc - along * nz
         start += when * span
         span *= 1.0 - when
-        vx, vy, vz = ux0 + ax * span, uy0 + ay * span, uz0 + az * span
-        mx, my, mz = 0.5 * (ux0 + vx), 0.5 * (uy0 + vy), 0.5 * (uz0 + vz)
-        slow = span / math.sqrt(1.0 + (mx * mx + my * my + mz * mz) / plan.light2)
-        _account_bounce(charges, i, -1.0, work)
-        charges.position[0, i] = xc + mx * slow
-        charges.position[1, i] = yc + my * slow
-        charges.position[2, i] = zc + mz * slow
-        charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = vx, vy, vz
+        _put(charges, i, xc, yc, zc)
+        bx, by, bz = magnetic_at(fields, charges, i, start + 0.5 * span, inside, work)
+        strength = math.sqrt(bx * bx + by * by + bz * bz)
+        if strength > 0.0:
+            bx, by, bz = bx / strength, by / strength, bz / strength
+        vx, vy, vz = ux0 + ax, uy0 + ay, uz0 + az
+        way = span / math.sqrt(1.0 + (vx * vx + vy * vy + vz * vz) / plan.light2)
+        dx, dy, dz, wx, wy, wz = helix(vx, vy, vz, bx, by, bz, ratio * strength * way)
+        x1, y1, z1 = xc + way * dx, yc + way * dy, zc + way * dz
+        ux1, uy1, uz1 = vx + wx + ax, vy + wy + ay, vz + wz + az
+        _put(charges, i, x1, y1, z1)
+        charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = (
+            ux1,
+            uy1,
+            uz1,
+        )
         _account_bounce(charges, i, 1.0, work)
         if span <= 0.0:
             return changed
+        push = (2.0 * ax / span, 2.0 * ay / span, 2.0 * az / span)
+        strength *= ratio
+        whirl = (strength * bx, strength * by, strength * bz)
+        first = end_of(plan, xc, yc, zc, ux0, uy0, uz0, push, whirl)
+        last = end_of(plan, x1, y1, z1, ux1, uy1, uz1, push, whirl)
     # caught in a corner: it stays where it last bounced, inside, and goes on in the next step
     _account_bounce(charges, i, -1.0, work)
-    charges.position[0, i], charges.position[1, i], charges.position[2, i] = x0, y0, z0
-    charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = ux0, uy0, uz0
+    _put(charges, i, first[0], first[1], first[2])
+    for axis in range(3):
+        charges.velocity[axis, i] = first[3 + axis]
     _account_bounce(charges, i, 1.0, work)
     return changed
+
+
+@outer_kernel
+def _state(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    together: bool,
+    i: int,
+    t: float,
+    inside: float,
+    work: Work,
+) -> End:
+    """Charge `i` at the end of the step, at the time `t`, with the field of the last kick."""
+    e, c = work.external, work.coulomb
+    ex, ey, ez = e[0, i], e[1, i], e[2, i]
+    if together:
+        ex, ey, ez = ex + c[0, i], ey + c[1, i], ez + c[2, i]
+    return _with_field(plan, fields, charges, charges.velocity, ex, ey, ez, i, t, inside, work)
+
+
+@outer_kernel
+def _old_state(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    i: int,
+    t: float,
+    inside: float,
+    work: Work,
+) -> End:
+    """Charge `i` at the beginning of the step, at the time `t`."""
+    x, y, z = charges.position[0, i], charges.position[1, i], charges.position[2, i]
+    old, e = work.old_position, work.old_field
+    _put(charges, i, old[0, i], old[1, i], old[2, i])
+    found = _with_field(
+        plan,
+        fields,
+        charges,
+        work.old_velocity,
+        e[0, i],
+        e[1, i],
+        e[2, i],
+        i,
+        t,
+        inside,
+        work,
+    )
+    _put(charges, i, x, y, z)
+    return found
+
+
+@inner_kernel
+def _with_field(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    velocity: np.ndarray,
+    ex: float,
+    ey: float,
+    ez: float,
+    i: int,
+    t: float,
+    inside: float,
+    work: Work,
+) -> End:
+    """An end of the path where charge `i` is, in this electric field and the magnetic one there."""
+    ratio = charges.charge_to_mass[0, i]
+    bx, by, bz = magnetic_at(fields, charges, i, t, inside, work)
+    return end_of(
+        plan,
+        charges.position[0, i],
+        charges.position[1, i],
+        charges.position[2, i],
+        velocity[0, i],
+        velocity[1, i],
+        velocity[2, i],
+        (ratio * ex, ratio * ey, ratio * ez),
+        (ratio * bx, ratio * by, ratio * bz),
+    )
 
 
 @outer_kernel
 def _first_wall(
     plan: Plan,
     surfaces: SurfaceTable,
-    path: tuple[float, ...],
+    start: End,
+    end: End,
     span: float,
     i: int,
     work: Work,
@@ -145,15 +302,15 @@ def _first_wall(
     """The first wall met on the path, and the fraction of the path behind it; (-1, 1) for none."""
     first, earliest = -1, 1.0
     for s in range(surfaces.kind.size):
-        if surfaces.effect[s] == PASS:
+        if surfaces.effect[s] == PASS or work.side[s, i] == 0:
             continue
         p = surfaces.parameter[s]
         kind = surfaces.kind[s]
-        now = 1 if level(kind, p, path[6], path[7], path[8]) > 0.0 else -1
+        now = 1 if level(kind, p, end[0], end[1], end[2]) > 0.0 else -1
         if now == work.side[s, i]:
             continue
-        when = _crossing(plan, kind, p, work.side[s, i], path, span)
-        x, y, z, _, _, _ = _point(plan, path, span, when)
+        when = _crossing(plan, kind, p, work.side[s, i], start, end, span)
+        x, y, z = place(plan, start, end, span, when)
         if not stops(kind, p, x, y, z):
             continue
         if first < 0 or when < earliest:
@@ -165,7 +322,8 @@ def _first_wall(
 def _pass_detectors(
     plan: Plan,
     surfaces: SurfaceTable,
-    path: tuple[float, ...],
+    first: End,
+    last: End,
     start: float,
     span: float,
     until: float,
@@ -177,13 +335,15 @@ def _pass_detectors(
         p = surfaces.parameter[s]
         kind = surfaces.kind[s]
         side = work.side[s, i]
-        now = 1 if level(kind, p, path[6], path[7], path[8]) > 0.0 else -1
+        now = 1 if level(kind, p, last[0], last[1], last[2]) > 0.0 else -1
+        if side == 0:
+            continue
         if now == side:
             continue
-        when = _crossing(plan, kind, p, side, path, span)
+        when = _crossing(plan, kind, p, side, first, last, span)
         if when > until:
             continue
-        x, y, z, ux, uy, uz = _point(plan, path, span, when)
+        x, y, z, ux, uy, uz = point(plan, first, last, span, when)
         if surfaces.effect[s] == PASS:
             if stops(kind, p, x, y, z):
                 _write(s, i, start + when * span, x, y, z, ux, uy, uz, float(now), work)
@@ -194,56 +354,19 @@ def _pass_detectors(
 
 @outer_kernel
 def _crossing(
-    plan: Plan, kind: int, p: np.ndarray, side: int, path: tuple[float, ...], span: float
+    plan: Plan, kind: int, p: np.ndarray, side: int, start: End, end: End, span: float
 ) -> float:
     """Fraction of the path where the level leaves `side`, by bisection."""
     low, high = 0.0, 1.0
     for _ in range(_BISECTIONS):
         middle = 0.5 * (low + high)
-        x, y, z, _, _, _ = _point(plan, path, span, middle)
+        x, y, z = place(plan, start, end, span, middle)
         now = 1 if level(kind, p, x, y, z) > 0.0 else -1
         if now == side:
             low = middle
         else:
             high = middle
     return high
-
-
-@outer_kernel
-def _point(
-    plan: Plan, path: tuple[float, ...], span: float, s: float
-) -> tuple[float, float, float, float, float, float]:
-    """Position and proper velocity at the fraction `s` of the path."""
-    x0, y0, z0, ux0, uy0, uz0, x1, y1, z1, ux1, uy1, uz1 = path
-    slow0 = 1.0 / math.sqrt(1.0 + (ux0 * ux0 + uy0 * uy0 + uz0 * uz0) / plan.light2)
-    slow1 = 1.0 / math.sqrt(1.0 + (ux1 * ux1 + uy1 * uy1 + uz1 * uz1) / plan.light2)
-    x, ux = _cubic(x0, ux0, slow0, x1, ux1, slow1, span, s)
-    y, uy = _cubic(y0, uy0, slow0, y1, uy1, slow1, span, s)
-    z, uz = _cubic(z0, uz0, slow0, z1, uz1, slow1, span, s)
-    return x, y, z, ux, uy, uz
-
-
-@outer_kernel
-def _cubic(
-    x0: float,
-    u0: float,
-    slow0: float,
-    x1: float,
-    u1: float,
-    slow1: float,
-    span: float,
-    s: float,
-) -> tuple[float, float]:
-    """One coordinate of the Hermite cubic, and the proper velocity that goes with it."""
-    v0, v1 = u0 * slow0, u1 * slow1
-    r = 1.0 - s
-    bend = x1 - x0 - 0.5 * span * (v0 + v1)
-    x = x0 + s * s * (3.0 - 2.0 * s) * (x1 - x0) + span * s * r * (r * v0 - s * v1)
-    u = r * u0 + s * u1
-    if span > 0.0:
-        # the cubic's slope less the straight line of velocities, as proper velocity
-        u += 6.0 * s * r * bend / (span * (r * slow0 + s * slow1))
-    return x, u
 
 
 @outer_kernel
@@ -274,6 +397,11 @@ def _absorb(plan: Plan, charges: Charges, i: int, work: Work) -> None:
         charges.velocity[axis, i] = 0.0
 
 
+@inner_kernel
+def _put(charges: Charges, i: int, x: float, y: float, z: float) -> None:
+    charges.position[0, i], charges.position[1, i], charges.position[2, i] = x, y, z
+
+
 @outer_kernel
 def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
     """Enter what a bounce takes from the charges: their momentum before (-1) less after (+1)."""
@@ -283,7 +411,13 @@ def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
     pz = m * charges.velocity[2, i]
     enter_vector(MOMENTUM_WALLS, px, py, pz, work.total, work.carry)
     _enter_angular(
-        charges.position[0, i], charges.position[1, i], charges.position[2, i], px, py, pz, work
+        charges.position[0, i],
+        charges.position[1, i],
+        charges.position[2, i],
+        px,
+        py,
+        pz,
+        work,
     )
 
 

@@ -8,7 +8,7 @@ from driftwell.coulomb.direct import SMALL, PairSum, small_field
 from driftwell.fields.table import electric_field, induced_field, magnetic_field
 from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
 from driftwell.kernels.waveform import waveform
-from driftwell.stepping.motion import Charges, Fields, Plan, Work
+from driftwell.stepping.motion import CURSOR_INDUCED, Charges, Fields, Plan, Work
 
 
 @inner_kernel
@@ -16,7 +16,7 @@ def external_forces(fields: Fields, charges: Charges, t: float, inside: float, w
     """The fields' E at every charge, the rates of the accounts, and the energy in the fields.
 
     Overwrites ``work.external``, ``work.induced`` (where a magnet changes), ``work.rate`` and
-    ``work.energy``.
+    ``work.energy``; the cursor tells whether a magnet changes.
     """
     n = charges.charge.size
     out = work.external
@@ -43,44 +43,107 @@ def external_forces(fields: Fields, charges: Charges, t: float, inside: float, w
         power += rate * total
         energy += w * total
     if fields.uniform.kind.size + fields.magnetic.kind.size > 0:
-        _induced(fields, charges, t, inside, work)
+        work.cursor[CURSOR_INDUCED] = 1 if _induced(fields, charges, t, inside, work) else 0
     work.rate[0] = power
     work.energy[0] = energy
-    _force_and_torque(charges, work)
+    force_and_torque(charges, work)
 
 
 @outer_kernel
-def _induced(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> None:
-    """Electric fields of changing magnets, kept apart for the account of their work."""
+def magnetic_at(
+    fields: Fields, charges: Charges, i: int, t: float, inside: float, work: Work
+) -> tuple[float, float, float]:
+    """All magnetic fields at the place of charge `i`, T; overwrites its part of ``work.spare``."""
+    bx, by, bz = uniform_magnetic(fields, t, inside)
+    table = fields.magnetic
+    spare = work.spare
+    spare[0, i] = spare[1, i] = spare[2, i] = 0.0
+    for f in range(table.kind.size):
+        w, _ = waveform(table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside)
+        magnetic_field(
+            table.kind[f],
+            table.parameter[f],
+            table.data[table.first[f] : table.first[f + 1]],
+            w,
+            charges.position,
+            i,
+            i + 1,
+            spare,
+        )
+    return bx + spare[0, i], by + spare[1, i], bz + spare[2, i]
+
+
+@outer_kernel
+def _induced(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> bool:
+    """Electric fields of changing magnets, kept apart for the account of their work.
+
+    Tells whether any magnet changes; where none does nothing is touched.
+    """
     n = charges.charge.size
-    for axis in range(3):
-        row = work.induced[axis]
-        for i in range(n):
-            row[i] = 0.0
+    changes = False
     for table in (fields.uniform, fields.magnetic):
         for f in range(table.kind.size):
             _, rate = waveform(
                 table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside
             )
-            if rate != 0.0:
+            if rate == 0.0:
+                continue
+            if not changes:
+                changes = True
+                for axis in range(3):
+                    row = work.induced[axis]
+                    for i in range(n):
+                        row[i] = 0.0
+            induced_field(
+                table.kind[f],
+                table.parameter[f],
+                table.data[table.first[f] : table.first[f + 1]],
+                rate,
+                charges.position,
+                0,
+                n,
+                work.induced,
+            )
+    if changes:
+        for axis in range(3):
+            row, out = work.induced[axis], work.external[axis]
+            for i in range(n):
+                out[i] += row[i]
+    return changes
+
+
+@outer_kernel
+def induced_by_jumps(
+    fields: Fields, charges: Charges, t: float, before: float, after: float, work: Work
+) -> None:
+    """What magnets that jump at time `t` induce, as an impulse, V s/m; overwrites ``work.induced``.
+
+    `before` and `after` lie inside the pieces of the waveforms on both sides of `t`.
+    """
+    for axis in range(3):
+        row = work.induced[axis]
+        for i in range(row.size):
+            row[i] = 0.0
+    for table in (fields.uniform, fields.magnetic):
+        for f in range(table.kind.size):
+            kind, parameter = table.wave_kind[f], table.wave_parameter[f]
+            old, _ = waveform(kind, parameter, table.wave_data, t, before)
+            new, _ = waveform(kind, parameter, table.wave_data, t, after)
+            if new != old:
                 induced_field(
                     table.kind[f],
                     table.parameter[f],
                     table.data[table.first[f] : table.first[f + 1]],
-                    rate,
+                    new - old,
                     charges.position,
                     0,
-                    n,
+                    charges.charge.size,
                     work.induced,
                 )
-    for axis in range(3):
-        row, out = work.induced[axis], work.external[axis]
-        for i in range(n):
-            out[i] += row[i]
 
 
 @inner_sum_kernel
-def _force_and_torque(charges: Charges, work: Work) -> None:
+def force_and_torque(charges: Charges, work: Work) -> None:
     """Sums over all charges of Q E and x cross Q E."""
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     ex, ey, ez = work.external[0], work.external[1], work.external[2]
@@ -117,7 +180,7 @@ def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) 
         )
 
 
-@outer_kernel
+@inner_kernel
 def uniform_magnetic(fields: Fields, t: float, inside: float) -> tuple[float, float, float]:
     """The sum of all uniform magnetic fields at a time, T."""
     bx = by = bz = 0.0

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Literal
+from typing import TYPE_CHECKING, Annotated, Literal
 
-from driftwell.forms import Count, Form, Length, Positive, Real, Time, key, or_word
+from driftwell.forms import Bound, Count, Form, Length, Positive, Real, Time, key, or_word
 
 if TYPE_CHECKING:
     StepChoice = float | Literal["auto"]
 else:
     StepChoice = or_word("auto", Positive[Time])
+FewSteps = Annotated[Count, Bound(least=1, most=1000)]
 
 
 class Stepping(Form):
@@ -27,7 +28,7 @@ class Stepping(Form):
     steps_per_period: Positive[Real] = key(
         "steps the automatic choice takes in one period of the fastest motion", default=100.0
     )
-    coulomb_every: Positive[Count] = key(
+    coulomb_every: FewSteps = key(
         "steps between two Coulomb sums; more than 1 only while the charges' own motion is slow "
         "against the fields'",
         default=1,

@@ -17,6 +17,7 @@ from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
 from driftwell.coulomb.direct import direct_sum
 from driftwell.coulomb.form import Coulomb
 from driftwell.errors import StepError
+from driftwell.forms import spelled
 from driftwell.kernels.status import (
     COLLAPSE,
     DONE,
@@ -43,7 +44,7 @@ from driftwell.stepping.motion import (
     charges_of,
     work_space,
 )
-from driftwell.stepping.schedule import Schedule
+from driftwell.stepping.schedule import TRACE, Schedule
 from driftwell.stepping.schemes import SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
 
@@ -63,7 +64,7 @@ class Traced:
 
 @dataclass(frozen=True, slots=True)
 class Events:
-    """What happened on surfaces, in the order it was found.
+    """What happened on surfaces, in the order of time.
 
     surface, id, cloud : (k,) int64; direction : (k,) int64, 0 for losses
     time : (k,) s; position, velocity : (k, 3), m and m/s (proper)
@@ -127,6 +128,8 @@ class TimeLoop:
         self._arrange()
         sides(self._surfaces, particles.position, self.work.side)
         self._burst(1, 0)  # no step, but the forces at the start
+        if traced and schedule.flags[0] & TRACE:
+            self._samples.append((schedule.time[:1].copy(), self._traced_now()))
 
     @property
     def steps_done(self) -> int:
@@ -161,7 +164,7 @@ class TimeLoop:
             status = self._burst(self._next_stop(until), self._budget)
             self._collect()
             if status not in {DONE, PAUSED, EVENTS_FULL}:
-                raise StepError(self._failure(status))
+                raise StepError(self._failure(status), self._id_at_fault(status))
             self._adapt(clocks.perf_counter() - began, self.steps_done - before)
             if status == DONE and self.mark < until:
                 status = PAUSED
@@ -252,12 +255,25 @@ class TimeLoop:
         found = np.flatnonzero(self.particles.id == traced.id)
         return int(found[0]) if found.size else _NO_CENTRE
 
+    def _traced_now(self) -> NDArray[np.float64]:
+        """The traced coordinates (1, traces) while nothing is lost, as at the start."""
+        x, cloud = self.charges.position, self.charges.cloud
+        return np.array(
+            [
+                [
+                    x[each.axis, cloud == each.cloud].mean() if i == -1 else x[each.axis, i]
+                    for each, i in zip(self._traced, self._trace.which, strict=True)
+                ]
+            ]
+        )
+
     def _collect(self) -> None:
         """Empty the event and sample buffers into lists."""
         cursor = self.work.cursor
         count = int(cursor[CURSOR_EVENTS])
         if count:
-            rows = self.work.events[:count].copy()
+            rows = self.work.events[:count]
+            rows = rows[np.argsort(rows[:, 2], kind="stable")]
             index = rows[:, 1].astype(np.int64)
             self._events.append(
                 Events(
@@ -283,12 +299,12 @@ class TimeLoop:
     def _failure(self, status: int) -> str:
         """What went wrong, with whom, when, and what to do."""
         i = int(self.work.cursor[CURSOR_AT_FAULT])
-        when = f"after {self.steps_done} steps, before t = {self._time_ahead():.6g} s"
+        when = f"after {self.steps_done} steps, at t = {spelled(self.time, 's')}"
         if status == OVERFLOW:
             return f"{when}: a single step met too many surfaces; take a shorter step."
         who = f"charge {int(self.particles.id[i])}"
         x, y, z = self.particles.position[:, i]
-        where = f"at ({x:.6g}, {y:.6g}, {z:.6g}) m"
+        where = f"at ({', '.join(spelled(float(each), 'm', 4) for each in (x, y, z))})"
         if status == NOT_FINITE:
             return (
                 f"{when}: the position or velocity of {who} is no longer a number. It met a point "
@@ -307,5 +323,7 @@ class TimeLoop:
             )
         return f"{when}: the step ended with the unknown status {status}."
 
-    def _time_ahead(self) -> float:
-        return float(self.schedule.time[min(self.mark + 1, len(self.schedule.time) - 1)])
+    def _id_at_fault(self, status: int) -> int | None:
+        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE}:
+            return None
+        return int(self.particles.id[self.work.cursor[CURSOR_AT_FAULT]])

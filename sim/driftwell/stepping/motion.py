@@ -18,6 +18,8 @@ from driftwell.stepping.accounts import ACCOUNTS, RATES
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
+LEAVING = 2
+"""What `alive` is for a charge lost in the present step, while it still stands in all sums."""
 EVENT_COLUMNS = 10
 """surface, particle index, time, x, y, z, ux, uy, uz, direction."""
 
@@ -28,10 +30,10 @@ class Charges(NamedTuple):
     position, velocity : (3, n) float64, m and m/s (proper velocity), changed
     charge : (n,) float64, C; mass : (n,) float64, kg; weight : (n,) float64, real particles
     charge_to_mass : (3, n) float64, C/kg, repeated for the axes
-    cloud : (n,) int64; alive : (n,) int8, 1 or 0, changed
+    cloud : (n,) int64; alive : (n,) int8, 1 or 0, changed (LEAVING within a step)
 
-    A charge that is lost stays where it is, with charge, weight and velocity 0, until it is taken
-    out between bursts.
+    A charge that is lost stays where it was lost, with charge, weight and velocity 0, until it is
+    taken out between bursts.
     """
 
     position: Floats
@@ -91,14 +93,15 @@ class Work(NamedTuple):
 
     external, coulomb, induced : (3, n) fields, V/m; spare : (3, n)
     slowness : (n,) 1/gamma
-    old_position, old_velocity : (3, n) at the beginning of the step
-    side : (surfaces, n) int8
+    old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
+        the electric one that the step's kicks begin with, V/m
+    side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
     rate, pending : see accounts.settle
     energy : (1,) J, potential energy in the fields at the last evaluation
     total, carry : (accounts,)
     events : (capacity, 10)
-    cursor : (8,) int64, see the constants below
+    cursor : (10,) int64, see the constants below
     """
 
     external: Floats
@@ -108,6 +111,7 @@ class Work(NamedTuple):
     slowness: Floats
     old_position: Floats
     old_velocity: Floats
+    old_field: Floats
     side: NDArray[np.int8]
     tiles: Floats
     rate: Floats
@@ -131,7 +135,11 @@ CURSOR_AT_FAULT = 6
 """Index of the charge a failing status speaks of."""
 CURSOR_OVERFLOW = 7
 """Events that did not fit the buffer: more than a step can sensibly hold."""
-CURSORS = 8
+CURSOR_JUMPED = 8
+"""The last mark whose jump of a waveform has been taken."""
+CURSOR_INDUCED = 9
+"""1 while magnets change, so that the induced field does work."""
+CURSORS = 10
 
 
 def charges_of(particles: Particles) -> Charges:
@@ -144,7 +152,7 @@ def charges_of(particles: Particles) -> Charges:
         charge,
         particles.mass * particles.weight,
         particles.weight.copy(),
-        np.ascontiguousarray(np.broadcast_to(ratio, (3, ratio.size))),
+        np.tile(ratio, (3, 1)),
         particles.cloud,
         np.ones(ratio.size, dtype=np.int8),
     )
@@ -166,6 +174,7 @@ def work_space(n: int, surfaces: int) -> Work:
         slowness=np.ones(n),
         old_position=np.zeros((3, n)),
         old_velocity=np.zeros((3, n)),
+        old_field=np.zeros((3, n)),
         side=np.ones((surfaces, n), dtype=np.int8),
         tiles=direct.workspace(n),
         rate=np.zeros(RATES),

@@ -25,7 +25,8 @@ BREAK = 4
 SNAPSHOT = 8
 """Record every charge at this mark."""
 
-_MOST_MARKS = 20_000_000
+MOST_MARKS = 20_000_000
+_MOST_STEPS = 1e15
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,12 +50,13 @@ class Schedule:
 
 def regular(every: float, duration: float) -> NDArray[np.float64]:
     """0, every, 2 every, ... up to the duration, which is always the last."""
-    count = math.floor(duration / every * (1.0 + 1e-12))
-    if count > _MOST_MARKS:
+    ratio = duration / every
+    if not ratio < MOST_MARKS:
         raise ScenarioError(
-            f"{count} marks of {every:g} s in {duration:g} s are more than {_MOST_MARKS}: "
+            f"{ratio:.6g} marks of {every:g} s in {duration:g} s are more than {MOST_MARKS}: "
             f"take a longer interval"
         )
+    count = math.floor(ratio * (1.0 + 1e-12))
     times = np.arange(count + 1, dtype=np.float64) * every
     if duration - times[-1] > 1e-9 * every:
         times = np.append(times, duration)
@@ -81,7 +83,7 @@ def schedule(
     Raises
     ------
     ScenarioError
-        There are more marks than fit in memory.
+        There are more marks than fit in memory, or more steps than anybody can wait for.
     """
     times = [np.array([0.0, duration])]
     flags = [np.array([0, 0], dtype=np.int64)]
@@ -90,20 +92,26 @@ def schedule(
         flags.append(np.full(len(at), flag, dtype=np.int64))
     all_times = np.concatenate(times)
     all_flags = np.concatenate(flags)
-    if all_times.size > _MOST_MARKS:
+    if all_times.size > MOST_MARKS:
         raise ScenarioError(
             f"{all_times.size} records, samples and waveform breaks are more than "
-            f"{_MOST_MARKS}: record or sample less often"
+            f"{MOST_MARKS}: record or sample less often"
         )
     order = np.argsort(all_times, kind="stable")
     all_times, all_flags = all_times[order], all_flags[order]
-    # times closer than a millionth of a step are one mark
-    starts = np.append(True, np.diff(all_times) > 1e-6 * longest_step)
+    # times closer than a millionth of a step, and of their mean distance, are one mark
+    close = 1e-6 * min(longest_step, duration / all_times.size)
+    starts = np.append(True, np.diff(all_times) > close)
     index = np.cumsum(starts) - 1
     merged = np.zeros(int(index[-1]) + 1, dtype=np.int64)
     np.bitwise_or.at(merged, index, all_flags)
     time = all_times[starts].copy()
     time[-1] = duration
     spans = np.diff(time)
+    if not duration / longest_step < _MOST_STEPS:
+        raise ScenarioError(
+            f"{duration / longest_step:.3g} steps of {longest_step:g} s in {duration:g} s are more "
+            f"than {_MOST_STEPS:g}: take a longer step"
+        )
     counts = np.ceil(spans / (longest_step * multiple) * (1.0 - 1e-9)).astype(np.int64)
     return Schedule(time, merged, multiple * np.maximum(counts, 1))

@@ -20,6 +20,7 @@ from numpy.typing import NDArray
 from scipy.spatial import cKDTree
 
 from driftwell.constants import COULOMB_CONSTANT, ELECTRIC_CONSTANT
+from driftwell.forms import spelled
 from driftwell.particles.state import Particles
 
 FEW = 64
@@ -63,7 +64,8 @@ def chosen_step(
         if step < best.step:
             period = 2.0 * math.pi / rate.rate
             best = StepChoice(
-                step, f"the {rate.name} ({period:.3g} s a period, {steps:.4g} steps each)"
+                step,
+                f"the {rate.name} ({spelled(period, 's', 3)} a period, {steps:.4g} steps each)",
             )
     return best
 

@@ -41,10 +41,17 @@ def box_level(p: np.ndarray, x: float, y: float, z: float) -> float:
 
 
 @inner_kernel
-def box_normal(p: np.ndarray, x: float, y: float, z: float) -> tuple[float, float, float]:
-    """Inward normal of the nearest face."""
+def box_normal(
+    p: np.ndarray, x: float, y: float, z: float, ux: float, uy: float, uz: float
+) -> tuple[float, float, float]:
+    """Inward normal of the nearest face a charge of velocity u runs into, or of the nearest."""
     dx, dy, dz = x - p[0], y - p[1], z - p[2]
     ax, ay, az = p[3] - abs(dx), p[4] - abs(dy), p[5] - abs(dz)
+    if dx * ux > 0.0 or dy * uy > 0.0 or dz * uz > 0.0:
+        # on an edge or in a corner the faces already bounced off must not be chosen again
+        ax = ax if dx * ux > 0.0 else np.inf
+        ay = ay if dy * uy > 0.0 else np.inf
+        az = az if dz * uz > 0.0 else np.inf
     if ax <= ay and ax <= az:
         return (-1.0 if dx > 0.0 else 1.0), 0.0, 0.0
     if ay <= az:

@@ -2,7 +2,8 @@
 
 A surface is where its *level* is zero. A charge meets it where the level changes sign along its
 path, in either direction, and only where the surface *stops* (is solid, or sensitive): not in an
-opening, not beyond a tube's end. A new kind is one new file, one line in :data:`WALL_KINDS` or
+opening, not beyond a tube's end. A charge that begins on a surface has not met it: the side it
+leaves to is its own. A new kind is one new file, one line in :data:`WALL_KINDS` or
 :data:`DETECTOR_KINDS`, and one branch in each dispatch.
 """
 
@@ -90,8 +91,10 @@ def stops(kind: int, p: np.ndarray, x: float, y: float, z: float) -> bool:
 
 
 @outer_kernel
-def normal(kind: int, p: np.ndarray, x: float, y: float, z: float) -> tuple[float, float, float]:
-    """Unit vector in which the level rises, at a point on the surface."""
+def normal(
+    kind: int, p: np.ndarray, x: float, y: float, z: float, ux: float, uy: float, uz: float
+) -> tuple[float, float, float]:
+    """Unit vector in which the level rises, at a point where a charge of velocity u meets it."""
     if kind == CYLINDER:
         nx, ny, nz = cylinder_normal(p, x, y, z)
     elif kind == PLANE:
@@ -99,14 +102,14 @@ def normal(kind: int, p: np.ndarray, x: float, y: float, z: float) -> tuple[floa
     elif kind == SPHERE:
         nx, ny, nz = sphere_normal(p, x, y, z)
     else:
-        nx, ny, nz = box_normal(p, x, y, z)
+        nx, ny, nz = box_normal(p, x, y, z, ux, uy, uz)
     length = np.sqrt(nx * nx + ny * ny + nz * nz)
     return nx / length, ny / length, nz / length
 
 
 @kernel
 def sides(surfaces: SurfaceTable, position: np.ndarray, out_side: np.ndarray) -> None:
-    """The side of every surface each charge is on: +1 where the level is positive, else -1.
+    """The side of every surface each charge begins on: +1 or -1 by the level's sign, 0 on it.
 
     position : (3, n) float64, m; out_side : (m, n) int8, overwritten
     """
@@ -115,4 +118,5 @@ def sides(surfaces: SurfaceTable, position: np.ndarray, out_side: np.ndarray) ->
         kind = surfaces.kind[s]
         p = surfaces.parameter[s]
         for i in range(x.size):
-            out_side[s, i] = 1 if level(kind, p, x[i], y[i], z[i]) > 0.0 else -1
+            there = level(kind, p, x[i], y[i], z[i])
+            out_side[s, i] = 1 if there > 0.0 else (0 if there == 0.0 else -1)

@@ -1,0 +1,116 @@
+"""Answers as a person reads them: value and error to the digits the error warrants, unit, note."""
+
+from __future__ import annotations
+
+import math
+import textwrap
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from driftwell.answers.answer import Answer
+from driftwell.forms import spelled
+
+PLAIN_UNITS = ("", "1", "1/m^3")
+"""Units that take no prefix: a pure number has none, in a density it would be raised as well."""
+_LONGEST_NAME = 28
+_DIGITS = 6
+"""Digits of a value whose error is not known."""
+_MOST_DIGITS = 15
+
+
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """A value, its error ("" where it is exact) and their unit, as texts."""
+
+    value: str
+    error: str
+    unit: str
+
+
+def reading(answer: Answer) -> Reading:
+    """The numbers of an answer in words; a value that is none says so."""
+    value, error = answer.value, answer.error
+    if not math.isfinite(value):
+        return Reading("none", "", "")
+    known = error is not None and math.isfinite(error) and error > 0.0
+    size = max(abs(value), error) if error is not None and known else abs(value)
+    factor, power, unit = _scale(size, answer.unit)
+    if error is None or not known:
+        shown = f"{value / factor:.{_DIGITS}g}{power}"
+        return Reading(shown, "" if error == 0.0 else "unknown", unit)
+    scaled = float(f"{error / factor:.1e}")
+    place = 1 - math.floor(math.log10(scaled)) if scaled > 0.0 else _MOST_DIGITS
+    whole = max(0, math.floor(math.log10(size / factor))) if size > 0.0 else 0
+    place = min(place, _MOST_DIGITS - 1 - whole)
+    digits = max(place, 0)
+    rounded = f"{round(value / factor, place) + 0.0:.{digits}f}"  # -0 is 0
+    doubt = f"{scaled:.{digits}f}" if scaled >= 10.0**-place else f"{scaled:.1g}"
+    if power:
+        return Reading(f"({rounded}", f"{doubt}){power}", unit)
+    return Reading(rounded, doubt, unit)
+
+
+def _scale(size: float, unit: str) -> tuple[float, str, str]:
+    """What to divide by, the power of ten to write behind the number, and the unit with prefix."""
+    exponent = math.floor(math.log10(float(f"{size:.2e}"))) if size > 0.0 else 0
+    if unit in PLAIN_UNITS:
+        unit = "" if unit == "1" else unit
+        return (1.0, "", unit) if -4 <= exponent < 6 else (10.0**exponent, f"e{exponent}", unit)
+    if size == 0.0:
+        return 1.0, "", unit
+    power = 3 * (exponent // 3)
+    prefixed = spelled(10.0**power, unit)
+    if not prefixed.startswith("1 "):  # beyond the prefixes
+        return 10.0**exponent, f"e{exponent}", unit
+    return 10.0**power, "", prefixed[2:]
+
+
+def answer_lines(answers: Sequence[Answer], width: int, sign: str = "±") -> list[str]:
+    """The answers as aligned lines of at most `width` characters, notes wrapped.
+
+    sign : what stands between value and error
+    """
+    readings = [reading(answer) for answer in answers]
+    names = [_on_one_line(answer.name) for answer in answers]
+    name_width = max((len(name) for name in names if len(name) <= _LONGEST_NAME), default=0)
+    value_width = max((len(each.value) for each in readings), default=0)
+    texts = [
+        f"{each.value:>{value_width}}"
+        + (f" {sign} {each.error}" if each.error else "")
+        + (f" {each.unit}" if each.unit else "")
+        for each in readings
+    ]
+    text_width = max((len(text) for text in texts), default=0)
+    lines = []
+    for answer, name, text in zip(answers, names, texts, strict=True):
+        beside = name if len(name) <= name_width else ""
+        if not beside:
+            lines.append(name)
+        start = f"{beside:<{name_width}}  {text:<{text_width}}"
+        lines += _with_note(start, answer.note, width)
+    return lines
+
+
+def _with_note(start: str, note: str, width: int) -> list[str]:
+    """A line and its note beside it, or below where it would be too narrow beside it."""
+    note = _on_one_line(note)
+    if not note:
+        return [start.rstrip()]
+    beside = len(start) + 2
+    if width - beside >= 24:
+        first, indent, lines = f"{start}  ", " " * beside, []
+    else:
+        first = indent = " " * 4
+        lines = [start.rstrip()]
+    return lines + textwrap.wrap(
+        note,
+        max(width, len(indent) + 8),
+        initial_indent=first,
+        subsequent_indent=indent,
+        break_on_hyphens=False,
+    )
+
+
+def _on_one_line(text: str) -> str:
+    """The text without characters that would break the line or cannot be seen."""
+    return "".join(c if c.isprintable() else " " for c in text)

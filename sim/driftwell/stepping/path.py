@@ -1,0 +1,141 @@
+"""The path of one charge through a step: a polynomial through what is known at both ends.
+
+With s from 0 to 1 over the span h, and position x, velocity v and acceleration a at both ends, the
+quintic of Hermite
+
+    x(s) = x0 + h v0 s + h^2 a0 s^2 / 2 + c3 s^3 + c4 s^4 + c5 s^5                          (1)
+    c3, c4, c5 = 10 X - 4 V + A / 2, -15 X + 7 V - A, 6 X - 3 V + A / 2
+    X = x1 - x0 - h v0 - h^2 a0 / 2,    V = h (v1 - v0 - h a0),    A = h^2 (a1 - a0)
+
+errs by order h^6, its slope v(s) by h^5. Proper velocity is the cubic through u and du/dt at both
+ends, corrected by how far v(s) is from the like cubic of v, where that is more than the rounding
+of the places over the span: so near the speed of light it does not come from 1 / (1 - v^2/c^2).
+
+    dv/dt = (f - v (v . f) / c^2) / gamma,    f = du/dt = Q/m (E + v x B)                   (2)
+    du = gamma dv + gamma^3 v (v . dv) / c^2                                                (3)
+
+References
+----------
+E. Hairer, S. P. Norsett, G. Wanner, Solving Ordinary Differential Equations I, sec. II.6 (Hermite
+interpolation as dense output; from memory). J. D. Jackson, Classical Electrodynamics, 3rd ed.
+(1998), sec. 11.4 and 12.1, for (2) and (3).
+"""
+
+from __future__ import annotations
+
+import math
+
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.stepping.motion import Plan
+
+End = tuple[float, float, float, float, float, float, float, float, float]
+"""x, y, z, m; ux, uy, uz, m/s, proper; f = du/dt (3), m/s^2."""
+_ROUNDING = 64.0 * 2.0**-52
+
+
+@inner_kernel
+def end_of(
+    plan: Plan,
+    x: float,
+    y: float,
+    z: float,
+    ux: float,
+    uy: float,
+    uz: float,
+    push: tuple[float, float, float],
+    turn: tuple[float, float, float],
+) -> End:
+    """An end of a path; push : Q/m E, m/s^2; turn : Q/m B, rad/s."""
+    slow = 1.0 / math.sqrt(1.0 + (ux * ux + uy * uy + uz * uz) / plan.light2)
+    wx, wy, wz = slow * turn[0], slow * turn[1], slow * turn[2]
+    fx = push[0] + uy * wz - uz * wy
+    fy = push[1] + uz * wx - ux * wz
+    fz = push[2] + ux * wy - uy * wx
+    return x, y, z, ux, uy, uz, fx, fy, fz
+
+
+@outer_kernel
+def place(plan: Plan, start: End, end: End, span: float, s: float) -> tuple[float, float, float]:
+    """Position at the fraction `s` of the path."""
+    v0, a0 = _moving(plan, start)
+    v1, a1 = _moving(plan, end)
+    x, _ = _quintic(start[0], v0[0], a0[0], end[0], v1[0], a1[0], span, s)
+    y, _ = _quintic(start[1], v0[1], a0[1], end[1], v1[1], a1[1], span, s)
+    z, _ = _quintic(start[2], v0[2], a0[2], end[2], v1[2], a1[2], span, s)
+    return x, y, z
+
+
+@outer_kernel
+def point(
+    plan: Plan, start: End, end: End, span: float, s: float
+) -> tuple[float, float, float, float, float, float]:
+    """Position and proper velocity at the fraction `s` of the path."""
+    v0, a0 = _moving(plan, start)
+    v1, a1 = _moving(plan, end)
+    x, vx = _quintic(start[0], v0[0], a0[0], end[0], v1[0], a1[0], span, s)
+    y, vy = _quintic(start[1], v0[1], a0[1], end[1], v1[1], a1[1], span, s)
+    z, vz = _quintic(start[2], v0[2], a0[2], end[2], v1[2], a1[2], span, s)
+    wx = _cubic(v0[0], a0[0], v1[0], a1[0], span, s)
+    wy = _cubic(v0[1], a0[1], v1[1], a1[1], span, s)
+    wz = _cubic(v0[2], a0[2], v1[2], a1[2], span, s)
+    ux = _cubic(start[3], start[6], end[3], end[6], span, s)
+    uy = _cubic(start[4], start[7], end[4], end[7], span, s)
+    uz = _cubic(start[5], start[8], end[5], end[8], span, s)
+    gamma = math.sqrt(1.0 + (ux * ux + uy * uy + uz * uz) / plan.light2)
+    dx = _above_rounding(vx - wx, start[0], end[0], span)
+    dy = _above_rounding(vy - wy, start[1], end[1], span)
+    dz = _above_rounding(vz - wz, start[2], end[2], span)
+    along = gamma * (ux * dx + uy * dy + uz * dz) / plan.light2
+    return (
+        x,
+        y,
+        z,
+        ux + gamma * dx + along * ux,
+        uy + gamma * dy + along * uy,
+        (uz + gamma * dz + along * uz),
+    )
+
+
+@inner_kernel
+def _above_rounding(change: float, x0: float, x1: float, span: float) -> float:
+    """A change of velocity, or nothing where it is but the rounding of the places."""
+    return change if abs(change) * span > _ROUNDING * (abs(x0) + abs(x1)) else 0.0
+
+
+@outer_kernel
+def _moving(plan: Plan, end: End) -> tuple[tuple[float, float, float], tuple[float, float, float]]:
+    """Velocity, and acceleration by (2)."""
+    slow = 1.0 / math.sqrt(1.0 + (end[3] ** 2 + end[4] ** 2 + end[5] ** 2) / plan.light2)
+    vx, vy, vz = slow * end[3], slow * end[4], slow * end[5]
+    along = (vx * end[6] + vy * end[7] + vz * end[8]) / plan.light2
+    return (vx, vy, vz), (
+        slow * (end[6] - vx * along),
+        slow * (end[7] - vy * along),
+        slow * (end[8] - vz * along),
+    )
+
+
+@outer_kernel
+def _quintic(
+    x0: float, v0: float, a0: float, x1: float, v1: float, a1: float, h: float, s: float
+) -> tuple[float, float]:
+    """Equation (1), and its slope in time."""
+    push = h * a0
+    far = x1 - x0 - h * (v0 + 0.5 * push)
+    fast = h * (v1 - v0 - push)
+    bend = h * (h * a1 - push)
+    c3 = 10.0 * far - 4.0 * fast + 0.5 * bend
+    c4 = -15.0 * far + 7.0 * fast - bend
+    c5 = 6.0 * far - 3.0 * fast + 0.5 * bend
+    x = x0 + s * (h * (v0 + 0.5 * push * s) + s * s * (c3 + s * (c4 + s * c5)))
+    v = v0 + push * s
+    if h > 0.0:
+        v += s * s * (3.0 * c3 + s * (4.0 * c4 + s * 5.0 * c5)) / h
+    return x, v
+
+
+@outer_kernel
+def _cubic(u0: float, f0: float, u1: float, f1: float, h: float, s: float) -> float:
+    """The cubic through u and du/dt at both ends."""
+    r = 1.0 - s
+    return u0 + s * s * (3.0 - 2.0 * s) * (u1 - u0) + h * s * r * (r * f0 - s * f1)
