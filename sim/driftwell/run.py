@@ -23,6 +23,7 @@ from driftwell.answers.moments import moments_of
 from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError, StepError
 from driftwell.forms import spelled
+from driftwell.kernels.threads import use_threads
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.record.claim import refuse_taken
@@ -101,6 +102,7 @@ class _Execution:
         self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
     ) -> None:
         created = datetime.now(UTC).isoformat(timespec="seconds")
+        threads = use_threads(threads)
         refuse_taken(folder, loaded.text.encode())
         parts = assembled(loaded)
         refuse_beyond_disk(parts.extent, folder)

@@ -152,7 +152,7 @@ def test_ions_are_held_below_q_0_908_and_thrown_out_above(tmp_path: Path) -> Non
     """Stable at q = 0.906, unstable at 0.910: the limit is 0.9080463 (A&S, ch. 20, table 20.1).
 
     After 80 periods of the drive both are where the Floquet matrix takes them, the unstable one
-    16 000 times as far out; 2e-6 is what the step leaves, and the speed of light of the growth.
+    16 000 times as far out. 2e-6 is what the step leaves, and that the growth comes near light.
     """
     limit = 0.9080463337345777
     q = [0.906, 0.910]

@@ -48,7 +48,7 @@ def test_a_charge_that_has_run_away_is_named() -> None:
 def test_a_run_away_is_seen_at_the_next_mark_at_the_latest() -> None:
     """However few steps there are."""
     moving = loop(ions([0, 0, 0], [0, 2e6, 0]), 1e-6, 1e-6, extent="1 m")
-    assert "after 1 steps, at t = 1 us: charge 0 has run away" in told(moving)
+    assert "after 1 step, at t = 1 us: charge 0 has run away" in told(moving)
 
 
 def test_a_charge_on_the_axis_of_a_wire_is_no_longer_a_number() -> None:

@@ -146,7 +146,8 @@ def _carry_out(asked: argparse.Namespace) -> int:
 
         return info(asked.run)
     threads = _usable_threads(asked.threads)
-    os.environ["NUMBA_NUM_THREADS"] = str(threads)  # read once, when numba is imported
+    if "numba" not in sys.modules:  # it reads its limit once, and minds another one later
+        os.environ["NUMBA_NUM_THREADS"] = str(threads)
     from driftwell.cli.run_command import run_command
 
     settings = list(asked.settings)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import os
 import sys
 import time
 from contextlib import suppress
@@ -27,6 +28,7 @@ _PAIRS_PER_SECOND = 1e9
 """Pairs a thread sums in a second, at the best."""
 _LONG = 2 * 3600.0
 """s, from which on a user should know before waiting."""
+_USUAL = 80
 _ROOMY = 120
 """Characters of a terminal from which on the bar's text is written out."""
 
@@ -91,7 +93,7 @@ class ProgressDisplay:
                 total=1.0,
                 bar_format="{percentage:3.0f} %|{bar}| {desc}",
                 leave=False,
-                dynamic_ncols=True,
+                ncols=_columns(),
                 file=sys.stderr,
             )
         return 0.0
@@ -99,9 +101,10 @@ class ProgressDisplay:
     def _draw(self, progress: Progress, elapsed: float) -> None:
         bar = self._bar
         try:
+            bar.ncols = _columns()
             bar.n = progress.time / progress.duration
             bar.set_description_str(
-                told(progress, elapsed, short=(bar.ncols or 80) < _ROOMY), refresh=True
+                told(progress, elapsed, short=bar.ncols < _ROOMY), refresh=True
             )
         except OSError:  # the terminal is gone; the run is not
             self._bar = None
@@ -139,11 +142,19 @@ def _done(progress: Progress, elapsed: float) -> str:
     return f", done {done:%a %H:%M}" if rest < 6 * 86400 else f", done {done:%Y-%m-%d}"
 
 
+def _columns() -> int:
+    """Characters of the terminal's lines now; 80 where it does not say."""
+    try:
+        return os.get_terminal_size(sys.stderr.fileno()).columns or _USUAL
+    except (OSError, ValueError):
+        return _USUAL
+
+
 def _in_days(seconds: float) -> str:
     """A long time in words."""
     for unit, length in (("years", 3.156e7), ("days", 86400.0)):
         if seconds >= 2.0 * length:
-            return f"{seconds / length:.2g} {unit}"
+            return f"{float(f'{seconds / length:.1e}'):g} {unit}"
     return f"{seconds / 3600.0:.2g} hours"
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 from collections.abc import Sequence
 from pathlib import Path
 
@@ -85,6 +86,7 @@ def _draw(folder: Path) -> bool:
     """Draw the pictures and say where they are; whether they could be drawn and told of."""
     from driftwell.report.pictures import draw
 
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
     try:
         made = draw(open_run(folder))
     except DriftwellError as error:

@@ -14,9 +14,9 @@ All of it is made part of the sum's own code: sums the compiler may reorder must
 of their own, which is compiled anew for each caller, and of which the linker takes the first that
 was loaded.
 
-Up to 64 charges both halves of a pair are computed, which vectorises without buffers; x_i - x_j
-and its negative round alike, so the terms still cancel exactly where charges are equal, and to
-rounding elsewhere.
+Up to 64 charges both halves of a pair are computed, in lanes over the charges that are pushed;
+x_i - x_j and its negative round alike, so the terms still cancel exactly where charges are equal,
+and to rounding elsewhere.
 
 References
 ----------
@@ -99,7 +99,7 @@ def direct_field(
     """
     n = charge.size
     if n <= SMALL:
-        small_field(position, charge, softening2, constant, out_field)
+        small_field(position, charge, softening2, constant, work[0], out_field)
         return
     for g in range(work.shape[0]):
         _group(g, work.shape[0], position, charge, softening2, work[g])
@@ -127,28 +127,39 @@ def small_field(
     charge: np.ndarray,
     softening2: float,
     constant: float,
+    work_row: np.ndarray,
     out_field: np.ndarray,
 ) -> None:
-    """The same sum for up to :data:`SMALL` charges, made part of the time loop."""
-    x, y, z = position[0], position[1], position[2]
-    ex, ey, ez = out_field[0], out_field[1], out_field[2]
+    """The same sum for up to :data:`SMALL` charges, made part of the time loop.
+
+    work_row : one row of :func:`workspace`, overwritten
+    """
     n = charge.size
+    for axis in range(3):
+        x = position[axis]
+        for i in range(n):
+            work_row[axis * TILE + i] = x[i]
     for i in range(n):
-        xi, yi, zi = x[i], y[i], z[i]
-        fx = fy = fz = 0.0
-        for j in range(n):
-            dx = xi - x[j]
-            dy = yi - y[j]
-            dz = zi - z[j]
+        work_row[_T3 + i] = 0.0
+        work_row[_T4 + i] = 0.0
+        work_row[_T5 + i] = 0.0
+    for j in range(n):
+        xj, yj, zj = work_row[j], work_row[_T1 + j], work_row[_T2 + j]
+        pushes = constant * charge[j]
+        for i in range(n):
+            dx = work_row[i] - xj
+            dy = work_row[_T1 + i] - yj
+            dz = work_row[_T2 + i] - zj
             r2 = dx * dx + dy * dy + dz * dz + softening2
             r2 = r2 if r2 > 0.0 else 1.0  # the charge itself
-            s = charge[j] / (r2 * math.sqrt(r2))
-            fx += s * dx
-            fy += s * dy
-            fz += s * dz
-        ex[i] = constant * fx
-        ey[i] = constant * fy
-        ez[i] = constant * fz
+            s = pushes / (r2 * math.sqrt(r2))
+            work_row[_T3 + i] += s * dx
+            work_row[_T4 + i] += s * dy
+            work_row[_T5 + i] += s * dz
+    for axis in range(3):
+        e = out_field[axis]
+        for i in range(n):
+            e[i] = work_row[(3 + axis) * TILE + i]
 
 
 @inner_pair_kernel

@@ -10,7 +10,6 @@ from driftwell.kernels.compiled import (
     inner_sum_kernel,
     kernel,
     outer_kernel,
-    outer_pair_kernel,
     pair_kernel,
     threaded_pair_kernel,
 )
@@ -22,7 +21,6 @@ __all__ = [
     "inner_sum_kernel",
     "kernel",
     "outer_kernel",
-    "outer_pair_kernel",
     "pair_kernel",
     "threaded_pair_kernel",
 ]

@@ -181,17 +181,6 @@ def pair_kernel(function: F) -> F:
     return _compiled(function, _nrt=False, fastmath=set(PAIR_FLAGS))
 
 
-def outer_pair_kernel(function: F) -> F:
-    """A :func:`pair_kernel` that only other kernels call."""
-    return _compiled(
-        function,
-        _nrt=False,
-        no_cpython_wrapper=True,
-        no_cfunc_wrapper=True,
-        fastmath=set(PAIR_FLAGS),
-    )
-
-
 def threaded_pair_kernel(function: F) -> F:
     """Compile a pair sum whose outer `prange` runs on all threads; a pass writes only its own."""
     return _compiled(function, fastmath=set(PAIR_FLAGS), parallel=True)

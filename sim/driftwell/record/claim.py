@@ -19,6 +19,8 @@ def refuse_taken(folder: Path, scenario: bytes) -> None:
 
     Raises RecordError where the folder holds a run already, or cannot be made or written.
     """
+    if "\0" in str(folder):
+        raise unwritable(folder, "its name holds a null character")
     try:
         found = _found(folder, scenario)
         if found:
@@ -30,7 +32,7 @@ def refuse_taken(folder: Path, scenario: bytes) -> None:
             what = "is a file" if place == folder else f"lies below the file {place}"
             raise RecordError(f"{folder}: {what}; a run needs a folder. Name another with -o.")
         writable = os.access(place, os.W_OK | os.X_OK)
-    except (OSError, ValueError) as fault:  # ValueError: a null character in the name
+    except OSError as fault:
         raise unwritable(folder, fault) from fault
     if not writable:
         raise unwritable(folder, f"no permission to write in {place}")
@@ -43,7 +45,7 @@ def _taken(folder: Path, found: Sequence[str]) -> RecordError:
     )
 
 
-def unwritable(folder: Path, fault: Exception | str) -> RecordError:
+def unwritable(folder: Path, fault: OSError | str) -> RecordError:
     """What to say of a folder that refuses."""
     why = getattr(fault, "strerror", None) or fault
     return RecordError(

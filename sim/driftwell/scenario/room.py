@@ -128,7 +128,8 @@ def free_space(folder: Path) -> int | None:
     """Bytes free on the disk of `folder`, made or not; None where the system does not say."""
     for place in (folder, *folder.absolute().parents):
         with suppress(OSError):
-            return shutil.disk_usage(place).free
+            usage = shutil.disk_usage(place)
+            return usage.free if usage.total else None
     return None
 
 

@@ -2,7 +2,7 @@
 
 After a whole step every charge's side of every surface is compared with the side it was on. Where
 one changed, the path through the step is the quintic through both ends' positions, velocities and
-accelerations (path.py; error of order h^6 in place and time, as small as the best scheme's, and h^5
+accelerations (path.py; error of order h^6 in place and time, as small as the best scheme's, and h^4
 in velocity), and the crossing is found on it by bisection to the last bit.
 
 An absorbed charge leaves the sums at the end of the step it was lost in, after all reflected ones

@@ -168,7 +168,14 @@ def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) 
     if plan.coulomb == 0:
         return
     if charges.charge.size <= SMALL:
-        small_field(charges.position, charges.charge, plan.softening2, plan.constant, work.coulomb)
+        small_field(
+            charges.position,
+            charges.charge,
+            plan.softening2,
+            plan.constant,
+            work.tiles[0],
+            work.coulomb,
+        )
     else:
         pair_sum(
             charges.position,

@@ -299,7 +299,8 @@ class TimeLoop:
     def _failure(self, status: int) -> str:
         """What went wrong, with whom, when, and what to do."""
         i = int(self.work.cursor[CURSOR_AT_FAULT])
-        when = f"after {self.steps_done} steps, at t = {spelled(self.time, 's')}"
+        steps = f"{self.steps_done} step{'s' * (self.steps_done != 1)}"
+        when = f"after {steps}, at t = {spelled(self.time, 's')}"
         if status == OVERFLOW:
             return f"{when}: a single step met too many surfaces; take a shorter step."
         who = f"charge {int(self.particles.id[i])}"

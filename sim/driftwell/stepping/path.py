@@ -7,18 +7,17 @@ quintic of Hermite
     c3, c4, c5 = 10 X - 4 V + A / 2, -15 X + 7 V - A, 6 X - 3 V + A / 2
     X = x1 - x0 - h v0 - h^2 a0 / 2,    V = h (v1 - v0 - h a0),    A = h^2 (a1 - a0)
 
-errs by order h^6, its slope v(s) by h^5. Proper velocity is the cubic through u and du/dt at both
-ends, corrected by how far v(s) is from the like cubic of v, where that is more than the rounding
-of the places over the span: so near the speed of light it does not come from 1 / (1 - v^2/c^2).
+errs by order h^6. Proper velocity u is the cubic through u and f = du/dt at both ends, with an
+error of order h^4; it does not come from the slope of (1), which near the speed of light says
+nothing of gamma.
 
-    dv/dt = (f - v (v . f) / c^2) / gamma,    f = du/dt = Q/m (E + v x B)                   (2)
-    du = gamma dv + gamma^3 v (v . dv) / c^2                                                (3)
+    f = Q/m (E + v x B),    a = (f - v (v . f) / c^2) / gamma                               (2)
 
 References
 ----------
 E. Hairer, S. P. Norsett, G. Wanner, Solving Ordinary Differential Equations I, sec. II.6 (Hermite
 interpolation as dense output; from memory). J. D. Jackson, Classical Electrodynamics, 3rd ed.
-(1998), sec. 11.4 and 12.1, for (2) and (3).
+(1998), sec. 12.1, for (2).
 """
 
 from __future__ import annotations
@@ -30,7 +29,6 @@ from driftwell.stepping.motion import Plan
 
 End = tuple[float, float, float, float, float, float, float, float, float]
 """x, y, z, m; ux, uy, uz, m/s, proper; f = du/dt (3), m/s^2."""
-_ROUNDING = 64.0 * 2.0**-52
 
 
 @inner_kernel
@@ -59,10 +57,11 @@ def place(plan: Plan, start: End, end: End, span: float, s: float) -> tuple[floa
     """Position at the fraction `s` of the path."""
     v0, a0 = _moving(plan, start)
     v1, a1 = _moving(plan, end)
-    x, _ = _quintic(start[0], v0[0], a0[0], end[0], v1[0], a1[0], span, s)
-    y, _ = _quintic(start[1], v0[1], a0[1], end[1], v1[1], a1[1], span, s)
-    z, _ = _quintic(start[2], v0[2], a0[2], end[2], v1[2], a1[2], span, s)
-    return x, y, z
+    return (
+        _quintic(start[0], v0[0], a0[0], end[0], v1[0], a1[0], span, s),
+        _quintic(start[1], v0[1], a0[1], end[1], v1[1], a1[1], span, s),
+        _quintic(start[2], v0[2], a0[2], end[2], v1[2], a1[2], span, s),
+    )
 
 
 @outer_kernel
@@ -70,36 +69,11 @@ def point(
     plan: Plan, start: End, end: End, span: float, s: float
 ) -> tuple[float, float, float, float, float, float]:
     """Position and proper velocity at the fraction `s` of the path."""
-    v0, a0 = _moving(plan, start)
-    v1, a1 = _moving(plan, end)
-    x, vx = _quintic(start[0], v0[0], a0[0], end[0], v1[0], a1[0], span, s)
-    y, vy = _quintic(start[1], v0[1], a0[1], end[1], v1[1], a1[1], span, s)
-    z, vz = _quintic(start[2], v0[2], a0[2], end[2], v1[2], a1[2], span, s)
-    wx = _cubic(v0[0], a0[0], v1[0], a1[0], span, s)
-    wy = _cubic(v0[1], a0[1], v1[1], a1[1], span, s)
-    wz = _cubic(v0[2], a0[2], v1[2], a1[2], span, s)
+    x, y, z = place(plan, start, end, span, s)
     ux = _cubic(start[3], start[6], end[3], end[6], span, s)
     uy = _cubic(start[4], start[7], end[4], end[7], span, s)
     uz = _cubic(start[5], start[8], end[5], end[8], span, s)
-    gamma = math.sqrt(1.0 + (ux * ux + uy * uy + uz * uz) / plan.light2)
-    dx = _above_rounding(vx - wx, start[0], end[0], span)
-    dy = _above_rounding(vy - wy, start[1], end[1], span)
-    dz = _above_rounding(vz - wz, start[2], end[2], span)
-    along = gamma * (ux * dx + uy * dy + uz * dz) / plan.light2
-    return (
-        x,
-        y,
-        z,
-        ux + gamma * dx + along * ux,
-        uy + gamma * dy + along * uy,
-        (uz + gamma * dz + along * uz),
-    )
-
-
-@inner_kernel
-def _above_rounding(change: float, x0: float, x1: float, span: float) -> float:
-    """A change of velocity, or nothing where it is but the rounding of the places."""
-    return change if abs(change) * span > _ROUNDING * (abs(x0) + abs(x1)) else 0.0
+    return x, y, z, ux, uy, uz
 
 
 @outer_kernel
@@ -118,8 +92,8 @@ def _moving(plan: Plan, end: End) -> tuple[tuple[float, float, float], tuple[flo
 @outer_kernel
 def _quintic(
     x0: float, v0: float, a0: float, x1: float, v1: float, a1: float, h: float, s: float
-) -> tuple[float, float]:
-    """Equation (1), and its slope in time."""
+) -> float:
+    """Equation (1)."""
     push = h * a0
     far = x1 - x0 - h * (v0 + 0.5 * push)
     fast = h * (v1 - v0 - push)
@@ -127,11 +101,7 @@ def _quintic(
     c3 = 10.0 * far - 4.0 * fast + 0.5 * bend
     c4 = -15.0 * far + 7.0 * fast - bend
     c5 = 6.0 * far - 3.0 * fast + 0.5 * bend
-    x = x0 + s * (h * (v0 + 0.5 * push * s) + s * s * (c3 + s * (c4 + s * c5)))
-    v = v0 + push * s
-    if h > 0.0:
-        v += s * s * (3.0 * c3 + s * (4.0 * c4 + s * 5.0 * c5)) / h
-    return x, v
+    return x0 + s * (h * (v0 + 0.5 * push * s) + s * s * (c3 + s * (c4 + s * c5)))
 
 
 @outer_kernel

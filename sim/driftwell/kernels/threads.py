@@ -1,0 +1,36 @@
+"""How many threads parallel kernels run on. The bits of their results do not depend on it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numba
+
+from driftwell.errors import DriftwellError
+
+
+def use_threads(count: int) -> int:
+    """Let parallel kernels run on `count` threads; returns how many they really get.
+
+    More than ``NUMBA_NUM_THREADS``, which is fixed when numba is imported, cannot be had; left
+    unset it is the number of cores.
+
+    Raises DriftwellError where threads cannot be started, or compilation is switched off.
+    """
+    settings: Any = numba.config
+    if settings.DISABLE_JIT:
+        raise DriftwellError(
+            "NUMBA_DISABLE_JIT is set, so nothing can be compiled; needs it unset: "
+            "`unset NUMBA_DISABLE_JIT`, then run again."
+        )
+    possible = min(count, int(settings.NUMBA_NUM_THREADS))
+    if possible > 1:
+        try:
+            numba.set_num_threads(possible)
+        except (ValueError, RuntimeError, ImportError) as fault:
+            why = " ".join(str(fault).split())
+            raise DriftwellError(
+                f"{possible} threads cannot be started ({why}). Unset NUMBA_THREADING_LAYER, or "
+                "run on one thread with --threads 1."
+            ) from fault
+    return possible
