@@ -78,7 +78,7 @@ def test_penning_trap_has_its_three_eigenfrequencies() -> None:
     """omega_+- = (omega_c +- sqrt(omega_c^2 - 2 omega_z^2))/2; L. S. Brown, G. Gabrielse, Rev. Mod.
     Phys. 58 (1986) 233; values computed with mpmath from this formula."""
     expected = [22065.3539244286, 156406.71972508682, 554331.9644666738]
-    assert expected == pytest.approx(frequencies(penning()), rel=1e-9)
+    assert expected == pytest.approx(frequencies(penning()), rel=1e-9, abs=0.0)
 
 
 def test_charge_in_a_penning_trap_ends_where_the_closed_form_says() -> None:
@@ -101,7 +101,7 @@ def test_tilt_and_ellipticity_leave_the_sum_of_squared_frequencies(
     25 (1982) 2423."""
     angle = math.radians(tilt)
     found = frequencies(penning((math.sin(angle), 0.0, math.cos(angle)), ellipticity))
-    assert 576397.3183911024 == pytest.approx(math.sqrt(np.sum(found**2)), rel=1e-9)
+    assert 576397.3183911024 == pytest.approx(math.sqrt(np.sum(found**2)), rel=1e-9, abs=0.0)
     moved = tilt != 0.0 or ellipticity != 0.0
     assert moved == bool(abs(found[0] / 22065.3539244286 - 1.0) > 1e-4)
 
@@ -113,13 +113,15 @@ def test_magnetron_frequency_of_an_elliptic_trap() -> None:
     a, b = omega_z**2 * 1.2 / 2.0, omega_z**2 * 0.8 / 2.0
     squares = np.roots([1.0, a + b - omega_c**2, a * b])
     expected = np.sort(np.sqrt(squares)) / (2.0 * math.pi)
-    assert expected == pytest.approx(frequencies(penning(ellipticity=0.2))[[0, 2]], rel=1e-9)
+    assert expected == pytest.approx(
+        frequencies(penning(ellipticity=0.2))[[0, 2]], rel=1e-9, abs=0.0
+    )
 
 
 def test_static_quadrupole_puts_its_voltage_between_end_caps_and_ring() -> None:
     form = field("static-quadrupole", voltage="10 V", radius="6 mm", half_length="3 mm")
     cap, ring = at(form, [[0, 0, 3e-3], [0, 6e-3, 0]]).potential
-    assert 10.0 == pytest.approx(cap - ring, rel=1e-14)
+    assert 10.0 == pytest.approx(cap - ring, rel=1e-14, abs=0.0)
 
 
 def test_axial_frequency_holds_charges_of_either_sign() -> None:
@@ -127,10 +129,10 @@ def test_axial_frequency_holds_charges_of_either_sign() -> None:
         form = field("static-quadrupole", axial_frequency={"species": name, "value": "80 kHz"})
         per_metre = slope([form])
         assert (2.0 * math.pi * 80e3) ** 2 == pytest.approx(
-            -body.charge_to_mass * per_metre[2, 2], rel=1e-14
+            -body.charge_to_mass * per_metre[2, 2], rel=1e-14, abs=0.0
         )
         assert (2.0 * math.pi * 80e3) ** 2 / 2.0 == pytest.approx(
-            body.charge_to_mass * per_metre[0, 0], rel=1e-14
+            body.charge_to_mass * per_metre[0, 0], rel=1e-14, abs=0.0
         )
 
 
@@ -145,16 +147,16 @@ def test_paul_trap_has_its_secular_frequencies() -> None:
         voltage={"amplitude": "500 V", "frequency": "1 MHz"},
     )
     q_z = 2.0 * body.charge_to_mass * slope([form])[2, 2] / (2.0 * math.pi * 1e6) ** 2
-    assert 0.3258669348192602 == pytest.approx(q_z, rel=1e-9)
+    assert 0.3258669348192602 == pytest.approx(q_z, rel=1e-9, abs=0.0)
     found = [math.acos(mathieu_exponent(form, body, axis, 1e6)) / math.pi for axis in (0, 1, 2)]
     beta_r, beta_z = 0.11581765569830098, 0.2355053341286928
-    assert [beta_r, beta_r, beta_z] == pytest.approx(found, rel=1e-8)
+    assert [beta_r, beta_r, beta_z] == pytest.approx(found, rel=1e-8, abs=0.0)
 
 
 def test_3d_quadrupole_puts_its_voltage_between_ring_and_end_caps() -> None:
     form = field("rf-quadrupole-3d", radius="10 mm", half_length="6 mm", voltage="500 V")
     ring, cap, centre = at(form, [[0, 10e-3, 0], [0, 0, -6e-3], [0, 0, 0]]).potential
-    assert 500.0 == pytest.approx(ring - cap, rel=1e-14)
+    assert 500.0 == pytest.approx(ring - cap, rel=1e-14, abs=0.0)
     assert centre == 0.0
 
 
@@ -177,7 +179,7 @@ def test_linear_rf_quadrupole_has_the_mathieu_exponent(q: float, beta: float) ->
     Floquet map and by Hill's determinant."""
     for axis in (0, 1):
         found = math.acos(mathieu_exponent(rods(q), ION, axis, 1e6)) / math.pi
-        assert beta == pytest.approx(found, rel=1e-7)
+        assert beta == pytest.approx(found, rel=1e-7, abs=0.0)
 
 
 def test_linear_rf_quadrupole_loses_charges_above_q_of_0_908() -> None:
@@ -195,14 +197,14 @@ def test_quadro_logarithmic_well_has_its_three_frequencies() -> None:
     ratio, radius = ELEMENTARY_CHARGE / 8.6e-25, 9e-3
     electric = at(form, [[radius, 0, 1e-3], [0, -radius, 5e-3]]).electric
     axial = np.sqrt(-ratio * electric[:, 2] / [1e-3, 5e-3])
-    assert [376258.8556027039] * 2 == pytest.approx(axial / (2.0 * math.pi), rel=1e-10)
+    assert [376258.8556027039] * 2 == pytest.approx(axial / (2.0 * math.pi), rel=1e-10, abs=0.0)
     turning = math.sqrt(-ratio * electric[0, 0] / radius)
-    assert 527988.622958975 == pytest.approx(turning / (2.0 * math.pi), rel=1e-10)
-    assert 29857.053223204326 == pytest.approx(radius * turning, rel=1e-10)
+    assert 527988.622958975 == pytest.approx(turning / (2.0 * math.pi), rel=1e-10, abs=0.0)
+    assert 29857.053223204326 == pytest.approx(radius * turning, rel=1e-10, abs=0.0)
     step = 1e-6
     beyond, before = at(form, [[radius + step, 0, 0], [radius - step, 0, 0]]).electric[:, 0]
     radial = math.sqrt(3.0 * turning**2 - ratio * (beyond - before) / (2.0 * step))
-    assert 644959.8790070378 == pytest.approx(radial / (2.0 * math.pi), rel=1e-6)
+    assert 644959.8790070378 == pytest.approx(radial / (2.0 * math.pi), rel=1e-6, abs=0.0)
 
 
 def test_quadro_logarithmic_well_has_no_radial_field_at_its_characteristic_radius() -> None:
@@ -210,7 +212,7 @@ def test_quadro_logarithmic_well_has_no_radial_field_at_its_characteristic_radiu
     values = at(form, [[0.02, 0, 0], [0.01, 0, 0]])
     assert 0.0 == pytest.approx(values.electric[0, 0], abs=1e-8)
     assert values.electric[1, 0] < 0.0
-    assert -0.5 * 3.0e7 * 0.02**2 / 2.0 == pytest.approx(values.potential[0], rel=1e-12)
+    assert -0.5 * 3.0e7 * 0.02**2 / 2.0 == pytest.approx(values.potential[0], rel=1e-12, abs=0.0)
 
 
 def test_wire_is_at_its_voltage_and_the_cylinder_at_zero() -> None:
@@ -218,7 +220,9 @@ def test_wire_is_at_its_voltage_and_the_cylinder_at_zero() -> None:
     form = field("wire-in-cylinder", wire_radius="50 um", cylinder_radius="10 mm", voltage="-300 V")
     values = at(form, [[50e-6, 0, 0], [0, 10e-3, 1.0], [0, 2e-3, 0]])
     assert [-300.0, 0.0] == pytest.approx(values.potential[:2], rel=1e-12, abs=1e-10)
-    assert -300.0 / (2e-3 * math.log(200.0)) == pytest.approx(values.electric[2, 1], rel=1e-12)
+    assert -300.0 / (2e-3 * math.log(200.0)) == pytest.approx(
+        values.electric[2, 1], rel=1e-12, abs=0.0
+    )
 
 
 @pytest.mark.parametrize(
@@ -238,15 +242,15 @@ def test_a_charge_on_the_axis_of_a_logarithm_gets_no_number(form: FieldForm) -> 
 def test_electric_dipole_is_a_uniform_field() -> None:
     dipole = at(field("electric-multipole", order=1, radius="4 mm", voltage="50 V"), RANDOM)
     uniform = at(field("uniform-electric", strength="12.5 kV/m", along=[-1, 0, 0]), RANDOM)
-    assert uniform.potential == pytest.approx(dipole.potential, rel=1e-12)
-    assert uniform.electric == pytest.approx(dipole.electric, rel=1e-12)
+    assert uniform.potential == pytest.approx(dipole.potential, rel=1e-12, abs=0.0)
+    assert uniform.electric == pytest.approx(dipole.electric, rel=1e-12, abs=0.0)
 
 
 def test_electric_quadrupole_is_the_rods_with_twice_the_voltage_between_them() -> None:
     poles = at(field("electric-multipole", order=2, radius="4 mm", voltage="50 V"), RANDOM)
     rods = at(field("rf-quadrupole", radius="4 mm", voltage="100 V"), RANDOM)
     assert rods.potential == pytest.approx(poles.potential, rel=1e-10, abs=1e-12)
-    assert rods.electric == pytest.approx(poles.electric, rel=1e-12)
+    assert rods.electric == pytest.approx(poles.electric, rel=1e-12, abs=0.0)
 
 
 @pytest.mark.parametrize("order", [1, 2, 3, 5, 12])
@@ -256,18 +260,22 @@ def test_electric_multipole_alternates_between_its_poles(order: int) -> None:
     theta = 0.3 + np.arange(2 * order) * math.pi / order
     circle = 4e-3 * np.stack([np.cos(theta), np.sin(theta), 0.0 * theta], axis=1)
     values = at(form, circle)
-    assert [50.0, -50.0] * order == pytest.approx(values.potential, rel=1e-12)
+    assert [50.0, -50.0] * order == pytest.approx(values.potential, rel=1e-12, abs=0.0)
     outwards = np.sum(values.electric * circle, axis=1) / 4e-3
-    assert [-50.0 * order / 4e-3, 50.0 * order / 4e-3] * order == pytest.approx(outwards, rel=1e-12)
+    assert [-50.0 * order / 4e-3, 50.0 * order / 4e-3] * order == pytest.approx(
+        outwards, rel=1e-12, abs=0.0
+    )
     half = at(form, 0.5 * circle).potential
-    assert values.potential / 2.0**order == pytest.approx(half, rel=1e-12)
+    assert values.potential / 2.0**order == pytest.approx(half, rel=1e-12, abs=0.0)
 
 
 def test_magnetic_dipole_is_a_uniform_field() -> None:
     dipole = field("magnetic-multipole", order=1, radius="20 mm", strength="0.3 T", angle="30 deg")
     along = [-math.sin(math.pi / 6.0), math.cos(math.pi / 6.0), 0.0]
     uniform = field("uniform-magnetic", strength="0.3 T", along=along)
-    assert at(uniform, RANDOM).magnetic == pytest.approx(at(dipole, RANDOM).magnetic, rel=1e-12)
+    assert at(uniform, RANDOM).magnetic == pytest.approx(
+        at(dipole, RANDOM).magnetic, rel=1e-12, abs=0.0
+    )
 
 
 def test_normal_magnetic_multipoles_have_their_textbook_fields() -> None:
@@ -277,11 +285,11 @@ def test_normal_magnetic_multipoles_have_their_textbook_fields() -> None:
     by_gradient = field("magnetic-multipole", order=2, radius="20 mm", gradient="12 T/m")
     by_strength = field("magnetic-multipole", order=2, radius="20 mm", strength="0.24 T")
     expected = 12.0 * np.stack([y, x, zero], axis=1)
-    assert expected == pytest.approx(at(by_gradient, RANDOM).magnetic, rel=1e-12)
-    assert expected == pytest.approx(at(by_strength, RANDOM).magnetic, rel=1e-12)
+    assert expected == pytest.approx(at(by_gradient, RANDOM).magnetic, rel=1e-12, abs=0.0)
+    assert expected == pytest.approx(at(by_strength, RANDOM).magnetic, rel=1e-12, abs=0.0)
     sextupole = field("magnetic-multipole", order=3, radius="20 mm", strength="0.24 T")
     expected = 0.24 / 0.02**2 * np.stack([2.0 * x * y, x**2 - y**2, zero], axis=1)
-    assert expected == pytest.approx(at(sextupole, RANDOM).magnetic, rel=1e-10)
+    assert expected == pytest.approx(at(sextupole, RANDOM).magnetic, rel=1e-10, abs=0.0)
 
 
 def test_skew_quadrupole_is_the_normal_one_turned_by_45_degrees() -> None:

@@ -60,7 +60,7 @@ def test_a_quantity_is_read_in_si_units(declared: object, text: str, expected: f
 
 
 def test_degrees_celsius_are_counted_from_their_own_zero() -> None:
-    assert pytest.approx(300.15, rel=1e-15) == read_quantity(Temperature, "27 degC")
+    assert pytest.approx(300.15, rel=1e-15, abs=0.0) == read_quantity(Temperature, "27 degC")
 
 
 @given(st.floats(allow_nan=False, allow_infinity=False))

@@ -101,9 +101,9 @@ def test_a_step_takes_the_side_of_the_time_inside() -> None:
     ],
 )
 def test_a_pulse_rises_stays_and_falls(t: float, expected: tuple[float, float]) -> None:
-    assert expected == pytest.approx(at(read(EDGES), t), rel=1e-9)
-    assert expected == pytest.approx(at(read(TRAIN), t), rel=1e-9)
-    assert expected == pytest.approx(at(read(TRAIN), t + 20e-6), rel=1e-9)
+    assert expected == pytest.approx(at(read(EDGES), t), rel=1e-9, abs=0.0)
+    assert expected == pytest.approx(at(read(TRAIN), t), rel=1e-9, abs=0.0)
+    assert expected == pytest.approx(at(read(TRAIN), t + 20e-6), rel=1e-9, abs=0.0)
     assert (1.0, 0.0) == at(read(TRAIN), t + 30e-6)
 
 

@@ -155,16 +155,16 @@ def test_the_amounts_are_those_of_the_charges() -> None:
     row = Ledger().close(0.0, moving.plan, moving.charges, moving.work)
     gamma = np.sqrt(1.0 + (proper**2).sum(axis=1) / SPEED_OF_LIGHT**2)
     kinetic = (weight * ION_MASS * (gamma - 1.0) * SPEED_OF_LIGHT**2).sum()
-    assert kinetic == pytest.approx(row.kinetic, rel=1e-13)
+    assert kinetic == pytest.approx(row.kinetic, rel=1e-13, abs=0.0)
     pair = COULOMB_CONSTANT * 6.0 * ELEMENTARY_CHARGE**2 / 5e-6
-    assert pair == pytest.approx(row.coulomb, rel=1e-14)
+    assert pair == pytest.approx(row.coulomb, rel=1e-14, abs=0.0)
     in_field = -1e3 * 4e-6 * 3.0 * ELEMENTARY_CHARGE
-    assert in_field == pytest.approx(row.field, rel=1e-14)
+    assert in_field == pytest.approx(row.field, rel=1e-14, abs=0.0)
     momentum = (weight[:, None] * ION_MASS * proper).sum(axis=0)
-    assert momentum == pytest.approx(row.momentum, rel=1e-14)
+    assert momentum == pytest.approx(row.momentum, rel=1e-14, abs=0.0)
     spin = 3.0 * ION_MASS * np.cross(place[1], proper[1])
-    assert spin == pytest.approx(row.angular_momentum, rel=1e-14)
-    assert 5.0 * ELEMENTARY_CHARGE == pytest.approx(row.charge, rel=1e-15)
+    assert spin == pytest.approx(row.angular_momentum, rel=1e-14, abs=0.0)
+    assert 5.0 * ELEMENTARY_CHARGE == pytest.approx(row.charge, rel=1e-15, abs=0.0)
     assert 5.0 == row.count
     assert 0.0 == row.count_lost == row.work_drive == row.energy_walls
 
@@ -178,8 +178,8 @@ def test_residuals_are_held_against_the_largest_amounts() -> None:
     assert moving.to_mark(1, always)
     moving.charges.velocity[0, 0] *= 1.0 + 1e-3
     row = ledger.close(1e-6, moving.plan, moving.charges, moving.work)
-    assert 0.5e-3 == pytest.approx(row.momentum_residual, rel=1e-2)
-    assert 1e-3 == pytest.approx(row.energy_residual, rel=1e-2)
+    assert 0.5e-3 == pytest.approx(row.momentum_residual, rel=1e-2, abs=0.0)
+    assert 1e-3 == pytest.approx(row.energy_residual, rel=1e-2, abs=0.0)
 
 
 def test_the_state_holds_what_the_account_was_opened_with() -> None:

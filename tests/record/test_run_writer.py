@@ -58,7 +58,7 @@ def test_a_folder_that_cannot_be_made_is_told(tmp_path):
     (tmp_path / "file").write_text("text")
     with pytest.raises(RecordError, match="file: is a file; a run needs a folder"):
         RunWriter.create(tmp_path / "file", invented_header())
-    with pytest.raises(RecordError, match="lies below the file .*; a run needs a folder"):
+    with pytest.raises(RecordError, match=r"lies below the file .*; a run needs a folder"):
         RunWriter.create(tmp_path / "file" / "run", invented_header())
 
 

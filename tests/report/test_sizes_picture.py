@@ -36,7 +36,9 @@ def test_temperatures_are_those_of_the_velocities(run_of):
     velocity = run.snapshot(0.0).velocity
     heat = drawn(run).axes[1]
     expected = MASS / BOLTZMANN * velocity.var(axis=0, ddof=1)
-    assert expected == pytest.approx([line.get_ydata()[0] for line in heat.lines], rel=1e-9)
+    assert expected == pytest.approx(
+        [line.get_ydata()[0] for line in heat.lines], rel=1e-9, abs=0.0
+    )
 
 
 def test_several_clouds_have_a_panel_for_each_axis(run_of):

@@ -72,8 +72,11 @@ def test_the_energy_has_the_same_bits_on_one_thread_and_two(count: int) -> None:
     assert {results[0]} == set(results)
 
 
-def executed(folder: Path, threads: int) -> Run:
-    """700 ions in rods with a narrow bore, by the command, on so many threads."""
+def executed(folder: Path, threads: int, cache: Path | None = None) -> Run:
+    """700 ions in rods with a narrow bore, by the command, on so many threads.
+
+    cache : where machine code is kept, if not where it always is
+    """
     table = {
         "title": "a check",
         "duration": "1 us",
@@ -111,7 +114,11 @@ def executed(folder: Path, threads: int) -> Run:
     done = subprocess.run(
         [*command, "--threads", str(threads)],
         cwd=folder,
-        env={**os.environ, "PYTHONPATH": str(sources)},
+        env={
+            **os.environ,
+            "PYTHONPATH": str(sources),
+            **({} if cache is None else {"DRIFTWELL_CACHE": str(cache)}),
+        },
         capture_output=True,
         text=True,
         check=False,

@@ -163,4 +163,4 @@ def test_a_failed_run_keeps_what_was_recorded_and_says_why(tmp_path: Path) -> No
     assert ("failed", 5) == (result.outcome.word, result.outcome.exit_code)
     assert result.outcome.sentence.startswith("The motion could not be continued after 5")
     assert "charge 0 has run away, at (500 mm, 0 m, 0 m)" in result.outcome.sentence
-    assert 4e-7 == pytest.approx(result.ledger.time, rel=1e-9)
+    assert 4e-7 == pytest.approx(result.ledger.time, rel=1e-9, abs=0.0)

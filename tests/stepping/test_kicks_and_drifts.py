@@ -29,7 +29,7 @@ def test_a_steady_pull_changes_the_proper_velocity_steadily(strength: float, ste
         )
     )
     expected = [1e6, 0.0, ION_RATIO * strength * time]
-    assert expected == pytest.approx(moving.charges.velocity[:, 0], rel=1e-14)
+    assert expected == pytest.approx(moving.charges.velocity[:, 0], rel=1e-14, abs=0.0)
 
 
 @pytest.mark.parametrize("share", [0.0, 1e-6, 1e-3, 0.00999, 0.01001, 0.5, 10.0, 1e4])
@@ -84,8 +84,8 @@ def test_fields_of_several_magnets_add_up_to_one_turn() -> None:
         to_end(loop(ions([0, 0, 0], [1e3, 2e3, 3e3]), 1e-6, 1e-6, fields=fields)).charges
         for fields in (sum_of, parts)
     ]
-    assert ends[0].position == pytest.approx(ends[1].position, rel=1e-13)
-    assert ends[0].velocity == pytest.approx(ends[1].velocity, rel=1e-13)
+    assert ends[0].position == pytest.approx(ends[1].position, rel=1e-13, abs=0.0)
+    assert ends[0].velocity == pytest.approx(ends[1].velocity, rel=1e-13, abs=0.0)
 
 
 def test_a_magnetic_field_that_varies_in_space_turns_without_work() -> None:
@@ -97,5 +97,7 @@ def test_a_magnetic_field_that_varies_in_space_turns_without_work() -> None:
         loop(ions(random.uniform(-2e-3, 2e-3, (20, 3)), proper), 1e-8, 1e-10, fields=[magnet])
     )
     expected = np.linalg.norm(proper, axis=1)
-    assert expected == pytest.approx(np.linalg.norm(moving.charges.velocity, axis=0), rel=1e-13)
-    assert moving.charges.velocity.T != pytest.approx(proper, rel=1e-3)
+    assert expected == pytest.approx(
+        np.linalg.norm(moving.charges.velocity, axis=0), rel=1e-13, abs=0.0
+    )
+    assert moving.charges.velocity.T != pytest.approx(proper, rel=1e-3, abs=0.0)

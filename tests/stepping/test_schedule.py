@@ -25,9 +25,9 @@ def longest(plan: Schedule) -> float:
 
 def test_regular_times_begin_at_zero_and_end_with_the_duration() -> None:
     """Whole multiples between; a last shorter interval where it does not divide."""
-    assert [0.0, 0.3, 0.6, 0.9] == pytest.approx(regular(0.3, 0.9), rel=1e-15)
+    assert [0.0, 0.3, 0.6, 0.9] == pytest.approx(regular(0.3, 0.9), rel=1e-15, abs=0.0)
     assert 0.9 == regular(0.3, 0.9)[-1]
-    assert [0.0, 0.4, 0.8, 0.9] == pytest.approx(regular(0.4, 0.9), rel=1e-15)
+    assert [0.0, 0.4, 0.8, 0.9] == pytest.approx(regular(0.4, 0.9), rel=1e-15, abs=0.0)
     assert [0.0, 0.9] == list(regular(5.0, 0.9))
 
 

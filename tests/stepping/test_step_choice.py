@@ -38,20 +38,20 @@ def test_the_fastest_motion_decides_and_is_named() -> None:
     """A hundredth of its period; shares take part of the number of steps."""
     rates = [Rate("slow swing", 1e3), Rate("fast swing", 1e6), Rate("none", 0.0)]
     found = chosen_step(rates, 100.0, 1.0, 1.0)
-    assert PERIOD / 1e6 / 100.0 == pytest.approx(found.step, rel=1e-15)
+    assert PERIOD / 1e6 / 100.0 == pytest.approx(found.step, rel=1e-15, abs=0.0)
     assert "the fast swing (6.28 us a period, 100 steps each)" == found.because
     hasty = [*rates, Rate("encounter", 4e6, 0.2)]
     assert "the fast swing" in chosen_step(hasty, 100.0, 1.0, 1.0).because
     hasty[-1] = Rate("encounter", 6e6, 0.2)
     found = chosen_step(hasty, 100.0, 1.0, 1.0)
-    assert PERIOD / 6e6 / 20.0 == pytest.approx(found.step, rel=1e-15)
+    assert PERIOD / 6e6 / 20.0 == pytest.approx(found.step, rel=1e-15, abs=0.0)
     assert "encounter" in found.because
 
 
 def test_a_period_is_never_left_without_a_step() -> None:
     """A share of few steps a period is one step at least."""
     found = chosen_step([Rate("encounter", 1e6, 0.2)], 2.0, 1.0, 1.0)
-    assert PERIOD / 1e6 == pytest.approx(found.step, rel=1e-15)
+    assert PERIOD / 1e6 == pytest.approx(found.step, rel=1e-15, abs=0.0)
 
 
 def test_where_nothing_moves_fast_records_decide() -> None:
@@ -79,7 +79,7 @@ def test_the_plasma_frequency_is_that_of_a_uniform_ball() -> None:
     [found] = plasma_rates(ions(place, weight=5.0))
     density = 5.0 * count / (4.0 / 3.0 * math.pi * radius**3)
     expected = math.sqrt(density * ELEMENTARY_CHARGE**2 / (ELECTRIC_CONSTANT * ION_MASS))
-    assert expected == pytest.approx(found.rate, rel=0.01)
+    assert expected == pytest.approx(found.rate, rel=0.01, abs=0.0)
 
 
 def test_every_cloud_has_its_own_plasma_frequency() -> None:
@@ -93,7 +93,7 @@ def test_every_cloud_has_its_own_plasma_frequency() -> None:
         mass=np.repeat([100.0, 1.0, 1.0, 1.0], [50, 50, 50, 1]),
     )
     large, small = plasma_rates(both)
-    assert math.sqrt(10.0) == pytest.approx(large.rate / small.rate, rel=1e-12)
+    assert math.sqrt(10.0) == pytest.approx(large.rate / small.rate, rel=1e-12, abs=0.0)
 
 
 def pair_rate(distance: float, mass: float = ION_MASS, charges: float = 1.0) -> float:
@@ -105,7 +105,7 @@ def pair_rate(distance: float, mass: float = ION_MASS, charges: float = 1.0) -> 
 def test_two_ions_at_rest_are_as_near_as_they_get() -> None:
     """Repelling each other from where they are."""
     [found] = closest_pair_rates(ions([[0, 0, 0], [0, 0, 1e-5]]), 0.0)
-    assert pair_rate(1e-5) == pytest.approx(found.rate, rel=1e-12)
+    assert pair_rate(1e-5) == pytest.approx(found.rate, rel=1e-12, abs=0.0)
     assert 0.2 == found.share
 
 
@@ -116,9 +116,9 @@ def test_two_ions_flying_at_each_other_turn_where_their_energy_says() -> None:
     unit = COULOMB_CONSTANT * ELEMENTARY_CHARGE**2
     nearest = unit / (unit / apart + 0.25 * ION_MASS * (2.0 * speed) ** 2)
     [found] = closest_pair_rates(moving, 0.0)
-    assert pair_rate(nearest) == pytest.approx(found.rate, rel=1e-9)
+    assert pair_rate(nearest) == pytest.approx(found.rate, rel=1e-9, abs=0.0)
     [away] = closest_pair_rates(ions([[0, 0, 0], [0, 0, apart]], [[0, 0, -1], [0, 0, 1]]), 0.0)
-    assert pair_rate(apart) == pytest.approx(away.rate, rel=1e-12)
+    assert pair_rate(apart) == pytest.approx(away.rate, rel=1e-12, abs=0.0)
 
 
 @pytest.mark.parametrize(("signs", "bend"), [((1.0, 1.0), 1.0), ((1.0, -1.0), -1.0)])
@@ -136,14 +136,14 @@ def test_a_passing_pair_is_nearest_where_rutherford_says(
     moving = ions([[0, 0, 0], [impact, 0, far]], [[0, 0, 0], [0, 0, -speed]], charge=signs)
     nearest = bend * b90 + math.hypot(b90, impact)
     [found] = closest_pair_rates(moving, 0.0)
-    assert pair_rate(nearest) == pytest.approx(found.rate, rel=1e-3)
-    assert pair_rate(impact) != pytest.approx(found.rate, rel=0.1)
+    assert pair_rate(nearest) == pytest.approx(found.rate, rel=1e-3, abs=0.0)
+    assert pair_rate(impact) != pytest.approx(found.rate, rel=0.1, abs=0.0)
 
 
 def test_softening_slows_the_closest_approach() -> None:
     """r^3 becomes (r^2 + e^2)^(3/2)."""
     [found] = closest_pair_rates(ions([[0, 0, 0], [0, 0, 3e-6]]), 4e-6)
-    assert pair_rate(5e-6) == pytest.approx(found.rate, rel=1e-12)
+    assert pair_rate(5e-6) == pytest.approx(found.rate, rel=1e-12, abs=0.0)
 
 
 def test_many_charges_are_followed_by_their_nearest_neighbours() -> None:
@@ -152,7 +152,7 @@ def test_many_charges_are_followed_by_their_nearest_neighbours() -> None:
     place = random.uniform(-1e-3, 1e-3, (200, 3))
     place[150] = place[20] + [0.0, 0.0, 1e-7]
     [found] = closest_pair_rates(ions(place, weight=4.0), 0.0)
-    assert pair_rate(1e-7, charges=4.0) == pytest.approx(found.rate, rel=1e-12)
+    assert pair_rate(1e-7, charges=4.0) == pytest.approx(found.rate, rel=1e-12, abs=0.0)
     assert [] == closest_pair_rates(ions([0, 0, 0]), 0.0)
 
 
@@ -241,7 +241,7 @@ def test_a_run_says_what_decided_its_step(
     run(read_scenario(path), tmp_path / "run", watching)
     assert watching.choice.because.startswith(told)
     expected = 1e-5 if period is None else period / 100.0
-    assert expected == pytest.approx(watching.choice.step, rel=1e-9)
+    assert expected == pytest.approx(watching.choice.step, rel=1e-9, abs=0.0)
     assert watching.longest <= watching.choice.step * (1.0 + 1e-8)
 
 

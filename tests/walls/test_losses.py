@@ -50,13 +50,13 @@ def test_every_loss_is_kept_with_place_time_wall_and_energy(tmp_path: Path) -> N
     speeds = np.array([5e6, 4e3, 4e3])
     gamma = 1.0 / np.sqrt(1.0 - (speeds / SPEED_OF_LIGHT) ** 2)
     expected = np.array([2e-3, 2e-3, 3e-3]) / speeds
-    assert expected == pytest.approx(losses["time"], rel=1e-12)
+    assert expected == pytest.approx(losses["time"], rel=1e-12, abs=0.0)
     places = [[2e-3, 0, 0], [0, 0, 3e-3], [0, 0, 3e-3]]
     assert np.array(places) == pytest.approx(losses["position"], abs=1e-15)
     proper = [[gamma[0] * 5e6, 0, 0], [0, 0, gamma[1] * 4e3], [0, 0, gamma[2] * 4e3]]
     assert np.array(proper) == pytest.approx(losses["velocity"], rel=1e-12, abs=1e-9)
     energy = MASS * (gamma * speeds) ** 2 / (1.0 + gamma)
-    assert energy == pytest.approx(losses["kinetic_energy"], rel=1e-12)
+    assert energy == pytest.approx(losses["kinetic_energy"], rel=1e-12, abs=0.0)
     assert 1 == len(found.snapshot(found.header.duration).id)
     ledger = found.ledger[-1]
     assert 15.0 == pytest.approx(ledger["count_lost"])

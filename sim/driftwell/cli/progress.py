@@ -103,9 +103,7 @@ class ProgressDisplay:
         try:
             bar.ncols = _columns()
             bar.n = progress.time / progress.duration
-            bar.set_description_str(
-                told(progress, elapsed, short=bar.ncols < _ROOMY), refresh=True
-            )
+            bar.set_description_str(told(progress, elapsed, short=bar.ncols < _ROOMY), refresh=True)
         except OSError:  # the terminal is gone; the run is not
             self._bar = None
 

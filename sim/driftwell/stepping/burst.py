@@ -35,13 +35,7 @@ from driftwell.kernels.status import (
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
 from driftwell.stepping.drift import drift, induced_work, jump_magnets, kick, kick_both
-from driftwell.stepping.events import (
-    LOST,
-    UNTOUCHED,
-    any_crossing,
-    meet_surfaces,
-    take_out,
-)
+from driftwell.stepping.events import LOST, UNTOUCHED, any_crossing, meet_surfaces, take_out
 from driftwell.stepping.forces import coulomb_forces, external_forces
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
@@ -100,6 +94,11 @@ def burst(
     magnetised = fields.uniform.kind.size + fields.magnetic.kind.size > 0
     together = plan.coulomb != 0 and every == 1
     free = work.events.shape[0] // 2
+    if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
+        # a step far too long may throw charges apart before they are looked at
+        status = _look(plan, charges, every * (time[1] - time[0]) / steps[0], True, work)
+        if status != DONE:
+            return status
     while cursor[CURSOR_INTERVAL] < until:
         j = cursor[CURSOR_INTERVAL]
         h = (time[j + 1] - time[j]) / steps[j]
@@ -124,15 +123,7 @@ def burst(
                 elif k <= stages:
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
-                    drift(
-                        plan,
-                        fields,
-                        charges,
-                        before,
-                        inside,
-                        scheme.drift[k - 1] * h,
-                        work,
-                    )
+                    drift(plan, fields, charges, before, inside, scheme.drift[k - 1] * h, work)
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
@@ -140,15 +131,7 @@ def burst(
                         kick(charges, work.coulomb, 0.5 * every * h)
                     if surfaced and any_crossing(surfaces, charges, work):
                         met = meet_surfaces(
-                            plan,
-                            fields,
-                            surfaces,
-                            charges,
-                            together,
-                            start,
-                            h,
-                            inside,
-                            work,
+                            plan, fields, surfaces, charges, together, start, h, inside, work
                         )
                     if met == UNTOUCHED:
                         break

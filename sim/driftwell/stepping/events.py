@@ -43,7 +43,7 @@ from driftwell.stepping.motion import (
     Plan,
     Work,
 )
-from driftwell.stepping.path import End, end_of, place, point
+from driftwell.stepping.path import End, end_of, first_end, last_end, place, point
 from driftwell.walls.form import ABSORB, PASS
 from driftwell.walls.table import SurfaceTable, level, normal, stops
 
@@ -83,8 +83,8 @@ def meet_surfaces(
     """Treat all crossings of the step from `t` to `t + h`; returns UNTOUCHED, MOVED and LOST.
 
     ``work.old_position``, ``work.old_velocity`` and ``work.old_field`` hold the state at `t`;
-    `together` : the Coulomb field is part of every kick. Lost charges are marked
-    as LEAVING; :func:`take_out` is to be called once the forces belong to the places of the rest.
+    `together` : the Coulomb field is part of every kick. Lost charges are marked as LEAVING;
+    :func:`take_out` is to be called once the forces belong to the places of the rest.
     """
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     changed = UNTOUCHED
@@ -110,11 +110,7 @@ def take_out(plan: Plan, surfaces: SurfaceTable, charges: Charges, work: Work) -
     for i in range(charges.alive.size):
         if charges.alive[i] == LEAVING:
             _absorb(plan, charges, i, work)
-            x, y, z = (
-                work.old_position[0, i],
-                work.old_position[1, i],
-                work.old_position[2, i],
-            )
+            x, y, z = work.old_position[0, i], work.old_position[1, i], work.old_position[2, i]
             _put(charges, i, x, y, z)
             for s in range(surfaces.kind.size):
                 there = level(surfaces.kind[s], surfaces.parameter[s], x, y, z)
@@ -135,8 +131,8 @@ def _follow(
     work: Work,
 ) -> int:
     """Follow one charge through the step, surface by surface; UNTOUCHED, MOVED or LOST."""
-    last = _state(plan, fields, charges, together, i, t + h, inside, work)
-    first = _old_state(plan, fields, charges, i, t, inside, work)
+    last = last_end(plan, fields, charges, together, i, t + h, inside, work)
+    first = first_end(plan, fields, charges, i, t, inside, work)
     changed = UNTOUCHED
     start, span = t, h
     for _ in range(_BOUNCES):
@@ -187,11 +183,7 @@ def _follow(
         x1, y1, z1 = xc + way * dx, yc + way * dy, zc + way * dz
         ux1, uy1, uz1 = vx + wx + ax, vy + wy + ay, vz + wz + az
         _put(charges, i, x1, y1, z1)
-        charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = (
-            ux1,
-            uy1,
-            uz1,
-        )
+        charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = ux1, uy1, uz1
         _account_bounce(charges, i, 1.0, work)
         if span <= 0.0:
             return changed
@@ -207,86 +199,6 @@ def _follow(
         charges.velocity[axis, i] = first[3 + axis]
     _account_bounce(charges, i, 1.0, work)
     return changed
-
-
-@outer_kernel
-def _state(
-    plan: Plan,
-    fields: Fields,
-    charges: Charges,
-    together: bool,
-    i: int,
-    t: float,
-    inside: float,
-    work: Work,
-) -> End:
-    """Charge `i` at the end of the step, at the time `t`, with the field of the last kick."""
-    e, c = work.external, work.coulomb
-    ex, ey, ez = e[0, i], e[1, i], e[2, i]
-    if together:
-        ex, ey, ez = ex + c[0, i], ey + c[1, i], ez + c[2, i]
-    return _with_field(plan, fields, charges, charges.velocity, ex, ey, ez, i, t, inside, work)
-
-
-@outer_kernel
-def _old_state(
-    plan: Plan,
-    fields: Fields,
-    charges: Charges,
-    i: int,
-    t: float,
-    inside: float,
-    work: Work,
-) -> End:
-    """Charge `i` at the beginning of the step, at the time `t`."""
-    x, y, z = charges.position[0, i], charges.position[1, i], charges.position[2, i]
-    old, e = work.old_position, work.old_field
-    _put(charges, i, old[0, i], old[1, i], old[2, i])
-    found = _with_field(
-        plan,
-        fields,
-        charges,
-        work.old_velocity,
-        e[0, i],
-        e[1, i],
-        e[2, i],
-        i,
-        t,
-        inside,
-        work,
-    )
-    _put(charges, i, x, y, z)
-    return found
-
-
-@inner_kernel
-def _with_field(
-    plan: Plan,
-    fields: Fields,
-    charges: Charges,
-    velocity: np.ndarray,
-    ex: float,
-    ey: float,
-    ez: float,
-    i: int,
-    t: float,
-    inside: float,
-    work: Work,
-) -> End:
-    """An end of the path where charge `i` is, in this electric field and the magnetic one there."""
-    ratio = charges.charge_to_mass[0, i]
-    bx, by, bz = magnetic_at(fields, charges, i, t, inside, work)
-    return end_of(
-        plan,
-        charges.position[0, i],
-        charges.position[1, i],
-        charges.position[2, i],
-        velocity[0, i],
-        velocity[1, i],
-        velocity[2, i],
-        (ratio * ex, ratio * ey, ratio * ez),
-        (ratio * bx, ratio * by, ratio * bz),
-    )
 
 
 @outer_kernel
@@ -411,13 +323,7 @@ def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
     pz = m * charges.velocity[2, i]
     enter_vector(MOMENTUM_WALLS, px, py, pz, work.total, work.carry)
     _enter_angular(
-        charges.position[0, i],
-        charges.position[1, i],
-        charges.position[2, i],
-        px,
-        py,
-        pz,
-        work,
+        charges.position[0, i], charges.position[1, i], charges.position[2, i], px, py, pz, work
     )
 
 

@@ -24,11 +24,76 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
+
 from driftwell.kernels import inner_kernel, outer_kernel
-from driftwell.stepping.motion import Plan
+from driftwell.stepping.forces import magnetic_at
+from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 End = tuple[float, float, float, float, float, float, float, float, float]
 """x, y, z, m; ux, uy, uz, m/s, proper; f = du/dt (3), m/s^2."""
+
+
+@outer_kernel
+def first_end(
+    plan: Plan, fields: Fields, charges: Charges, i: int, t: float, inside: float, work: Work
+) -> End:
+    """Charge `i` at the beginning of the step, at the time `t`."""
+    x, old, e = charges.position, work.old_position, work.old_field
+    now = (x[0, i], x[1, i], x[2, i])
+    x[0, i], x[1, i], x[2, i] = old[0, i], old[1, i], old[2, i]
+    field = (e[0, i], e[1, i], e[2, i])
+    found = _end_there(plan, fields, charges, work.old_velocity, field, i, t, inside, work)
+    x[0, i], x[1, i], x[2, i] = now
+    return found
+
+
+@outer_kernel
+def last_end(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    together: bool,
+    i: int,
+    t: float,
+    inside: float,
+    work: Work,
+) -> End:
+    """Charge `i` at the end of the step, at the time `t`, with the field of the last kick."""
+    e, c = work.external, work.coulomb
+    field = (e[0, i], e[1, i], e[2, i])
+    if together:
+        field = (e[0, i] + c[0, i], e[1, i] + c[1, i], e[2, i] + c[2, i])
+    return _end_there(plan, fields, charges, charges.velocity, field, i, t, inside, work)
+
+
+@inner_kernel
+def _end_there(
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    velocity: np.ndarray,
+    field: tuple[float, float, float],
+    i: int,
+    t: float,
+    inside: float,
+    work: Work,
+) -> End:
+    """An end where charge `i` is, in this electric field and the magnetic one there."""
+    x = charges.position
+    ratio = charges.charge_to_mass[0, i]
+    bx, by, bz = magnetic_at(fields, charges, i, t, inside, work)
+    return end_of(
+        plan,
+        x[0, i],
+        x[1, i],
+        x[2, i],
+        velocity[0, i],
+        velocity[1, i],
+        velocity[2, i],
+        (ratio * field[0], ratio * field[1], ratio * field[2]),
+        (ratio * bx, ratio * by, ratio * bz),
+    )
 
 
 @inner_kernel
