@@ -225,11 +225,12 @@ def _steps(
 def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str, float]:
     """How fast a body moves in a field, rad/s, by what it does."""
     try:
+        field.packed(bodies)
         return dict(field.rates(body, bodies))
     except ArithmeticError as fault:
         raise ScenarioError(
-            f'[[field]] "{field.name}": moves {body.name} too fast for any number; check its '
-            "strength and its sizes."
+            f'[[field]] "{field.name}": its numbers, or the motion of {body.name} in it, are too '
+            "large or too small to compute with; check its strength and its sizes."
         ) from fault
 
 

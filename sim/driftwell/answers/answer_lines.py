@@ -3,19 +3,22 @@
 from __future__ import annotations
 
 import math
-import textwrap
 from collections.abc import Sequence
 from dataclasses import dataclass
 
 from driftwell.answers.answer import Answer
 from driftwell.forms import spelled
+from driftwell.forms.paragraph import paragraph
 
 PLAIN_UNITS = ("", "1", "1/m^3")
 """Units that take no prefix: a pure number has none, in a density it would be raised as well."""
 _LONGEST_NAME = 28
 _DIGITS = 6
 """Digits of a value whose error is not known."""
-_MOST_DIGITS = 15
+_MOST_DIGITS = 10
+"""Digits of a value whose error is tiny: how many more could be right, nobody needs."""
+_LEAST_EXPONENT = -300
+"""Powers of ten below this are too small to divide by."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,12 +42,12 @@ def reading(answer: Answer) -> Reading:
         shown = f"{value / factor:.{_DIGITS}g}{power}"
         return Reading(shown, "" if error == 0.0 else "unknown", unit)
     scaled = float(f"{error / factor:.1e}")
-    place = 1 - math.floor(math.log10(scaled)) if scaled > 0.0 else _MOST_DIGITS
+    wanted = 1 - math.floor(math.log10(scaled)) if scaled > 0.0 else _MOST_DIGITS
     whole = max(0, math.floor(math.log10(size / factor))) if size > 0.0 else 0
-    place = min(place, _MOST_DIGITS - 1 - whole)
+    place = min(wanted, _MOST_DIGITS - 1 - whole)
     digits = max(place, 0)
     rounded = f"{round(value / factor, place) + 0.0:.{digits}f}"  # -0 is 0
-    doubt = f"{scaled:.{digits}f}" if scaled >= 10.0**-place else f"{scaled:.1g}"
+    doubt = f"{scaled:.{digits}f}" if place == wanted else f"{scaled:.2g}"
     if power:
         return Reading(f"({rounded}", f"{doubt}){power}", unit)
     return Reading(rounded, doubt, unit)
@@ -55,8 +58,9 @@ def _scale(size: float, unit: str) -> tuple[float, str, str]:
     exponent = math.floor(math.log10(float(f"{size:.2e}"))) if size > 0.0 else 0
     if unit in PLAIN_UNITS:
         unit = "" if unit == "1" else unit
-        return (1.0, "", unit) if -4 <= exponent < 6 else (10.0**exponent, f"e{exponent}", unit)
-    if size == 0.0:
+        plain = -4 <= exponent < 6 or exponent < _LEAST_EXPONENT
+        return (1.0, "", unit) if plain else (10.0**exponent, f"e{exponent}", unit)
+    if size == 0.0 or exponent < _LEAST_EXPONENT:
         return 1.0, "", unit
     power = 3 * (exponent // 3)
     prefixed = spelled(10.0**power, unit)
@@ -102,13 +106,7 @@ def _with_note(start: str, note: str, width: int) -> list[str]:
     else:
         first = indent = " " * 4
         lines = [start.rstrip()]
-    return lines + textwrap.wrap(
-        note,
-        max(width, len(indent) + 8),
-        initial_indent=first,
-        subsequent_indent=indent,
-        break_on_hyphens=False,
-    )
+    return lines + paragraph(note, max(width, len(indent) + 8), first, indent)
 
 
 def _on_one_line(text: str) -> str:

@@ -66,8 +66,8 @@ def _report(result: Result) -> bool:
     lines = [
         "",
         ending,
-        f"{row.count:.7g} real particles left, {row.count_lost:.7g} lost; "
-        f"{outcome.steps} steps in {outcome.wall_time:.1f} s",
+        f"{row.count:.7g} real particle{'s' * (row.count != 1)} left, {row.count_lost:.7g} lost; "
+        f"{outcome.steps} step{'s' * (outcome.steps != 1)} in {outcome.wall_time:.1f} s",
         f"ledger residuals: energy {row.energy_residual:.1e}, momentum "
         f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
         f"{row.third_law_residual:.1e}",

@@ -288,26 +288,18 @@ def potential_at(
     i: int, position: np.ndarray, charge: np.ndarray, softening2: float, constant: float
 ) -> float:
     """Potential at charge `i` of all others, V; of one at its very place none, if unsoftened."""
-    before = _potential_of(0, i, i, position, charge, softening2)
-    after = _potential_of(i + 1, charge.size, i, position, charge, softening2)
-    return constant * (before + after)
-
-
-@inner_pair_kernel
-def _potential_of(
-    first: int, last: int, i: int, position: np.ndarray, charge: np.ndarray, softening2: float
-) -> float:
-    """Sum of Q/r at charge `i` over the charges from `first` to before `last`."""
     x, y, z = position[0], position[1], position[2]
     xi, yi, zi = x[i], y[i], z[i]
     total = 0.0
-    for j in range(first, last):
+    for j in range(charge.size):
         dx = xi - x[j]
         dy = yi - y[j]
         dz = zi - z[j]
         r2 = dx * dx + dy * dy + dz * dz + softening2
-        total += 0.0 if r2 == 0.0 else charge[j] / math.sqrt(r2)
-    return total
+        r2 = r2 if r2 != 0.0 else math.inf
+        r2 = r2 if j != i else math.inf  # taken away afterwards, its own term would swamp far ones
+        total += charge[j] / math.sqrt(r2)
+    return constant * total
 
 
 @pair_kernel

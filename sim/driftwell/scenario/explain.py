@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import re
-import textwrap
 from collections.abc import Iterator
 from itertools import groupby
 from operator import itemgetter
 
 from driftwell.forms import spelled
+from driftwell.forms.paragraph import paragraph
 from driftwell.particles.species import bodies
 from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.scenario.cautions import cautions
@@ -18,7 +17,6 @@ from driftwell.scenario.source import shown_path
 
 WIDTH = 100
 _SECTION, _LEAST_NAME, _MOST_NAME = 12, 8, 24
-_NUMBER_AND_UNIT = re.compile(r"(\d) (?=[A-Za-zµ]{1,3}\b)")
 
 Row = tuple[str, str, str]
 
@@ -128,13 +126,4 @@ def _laid_out(section: str, name: str, name_width: int, words: str) -> list[str]
 
 
 def _wrapped(margin: str, indent: int, words: str) -> list[str]:
-    """Lines of at most a page's width, none of which parts a number from its unit."""
-    lines = textwrap.wrap(
-        _NUMBER_AND_UNIT.sub("\\1\u00a0", words),
-        WIDTH,
-        initial_indent=margin,
-        subsequent_indent=" " * indent,
-        break_long_words=False,
-        break_on_hyphens=False,
-    )
-    return [line.replace("\u00a0", " ") for line in lines]
+    return paragraph(words, WIDTH, margin, " " * indent)
