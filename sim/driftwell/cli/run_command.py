@@ -12,6 +12,7 @@ from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
 from driftwell.errors import DriftwellError
 from driftwell.kernels.compilation import first_compilation
+from driftwell.ledger.doubts import doubts
 from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
 from driftwell.run import FINISHED, Result, run
@@ -72,6 +73,7 @@ def _report(result: Result) -> bool:
         f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
         f"{row.third_law_residual:.1e}",
         "",
+        *(f"Doubt: {doubt}" for doubt in doubts(row)),
         *(
             answer_lines(result.answers, width(), sign())
             or ["The scenario asks no questions: the run only recorded."]
