@@ -23,7 +23,7 @@ from driftwell.answers.moments import moments_of
 from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError, StepError
 from driftwell.forms import spelled
-from driftwell.kernels.threads import use_threads
+from driftwell.kernels.threads import on_threads
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.record.claim import refuse_taken
@@ -92,7 +92,8 @@ def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int =
     RecordError
         The folder holds another run or cannot be written; the text says what is kept.
     """
-    return _Execution(loaded, folder, observer, threads).result()
+    with on_threads(threads) as given:
+        return _Execution(loaded, folder, observer, given).result()
 
 
 class _Execution:
@@ -102,7 +103,6 @@ class _Execution:
         self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
     ) -> None:
         created = datetime.now(UTC).isoformat(timespec="seconds")
-        threads = use_threads(threads)
         refuse_taken(folder, loaded.text.encode())
         parts = assembled(loaded)
         refuse_beyond_disk(parts.extent, folder)

@@ -11,8 +11,10 @@ from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
 from driftwell.errors import DriftwellError
+from driftwell.forms.paragraph import paragraph
 from driftwell.kernels.compilation import first_compilation
 from driftwell.ledger.doubts import doubts
+from driftwell.ledger.ledger import LedgerRow
 from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
 from driftwell.run import FINISHED, Result, run
@@ -73,7 +75,7 @@ def _report(result: Result) -> bool:
         f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
         f"{row.third_law_residual:.1e}",
         "",
-        *(f"Doubt: {doubt}" for doubt in doubts(row)),
+        *_doubted(row),
         *(
             answer_lines(result.answers, width(), sign())
             or ["The scenario asks no questions: the run only recorded."]
@@ -82,6 +84,15 @@ def _report(result: Result) -> bool:
         f"record: {result.folder / MASTER}",
     ]
     return answer(lines)
+
+
+def _doubted(row: LedgerRow) -> list[str]:
+    """What the ledger says against the answers, before them."""
+    return [
+        line
+        for doubt in doubts(row)
+        for line in (*paragraph(f"Doubt: {doubt}", width(), rest="  "), "")
+    ]
 
 
 def _draw(folder: Path) -> bool:

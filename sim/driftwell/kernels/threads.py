@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import Any
 
 import numba
@@ -9,8 +11,9 @@ import numba
 from driftwell.errors import DriftwellError
 
 
-def use_threads(count: int) -> int:
-    """Let parallel kernels run on `count` threads; returns how many they really get.
+@contextmanager
+def on_threads(count: int) -> Iterator[int]:
+    """Within it, parallel kernels run on `count` threads; gives how many they really get.
 
     More than ``NUMBA_NUM_THREADS``, which is fixed when numba is imported, cannot be had; left
     unset it is the number of cores.
@@ -23,14 +26,21 @@ def use_threads(count: int) -> int:
             "NUMBA_DISABLE_JIT is set, so nothing can be compiled; needs it unset: "
             "`unset NUMBA_DISABLE_JIT`, then run again."
         )
-    possible = min(count, int(settings.NUMBA_NUM_THREADS))
-    if possible > 1:
-        try:
-            numba.set_num_threads(possible)
-        except (ValueError, RuntimeError, ImportError) as fault:
-            why = " ".join(str(fault).split())
-            raise DriftwellError(
-                f"{possible} threads cannot be started ({why}). Unset NUMBA_THREADING_LAYER, or "
-                "run on one thread with --threads 1."
-            ) from fault
-    return possible
+    most = int(settings.NUMBA_NUM_THREADS)
+    possible = min(count, most)
+    if most == 1:
+        yield possible
+        return
+    try:
+        before = numba.get_num_threads()
+        numba.set_num_threads(possible)
+    except (ValueError, RuntimeError, ImportError) as fault:
+        why = " ".join(str(fault).split())
+        raise DriftwellError(
+            f"{possible} threads cannot be started ({why}). Unset NUMBA_THREADING_LAYER, or run on "
+            "one thread with --threads 1."
+        ) from fault
+    try:
+        yield possible
+    finally:
+        numba.set_num_threads(before)
