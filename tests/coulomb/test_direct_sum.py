@@ -7,7 +7,7 @@ Electrodynamics, 3rd ed. (1998), eq. 1.5; softening by S. J. Aarseth, Mon. Not. 
 
 from __future__ import annotations
 
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import mpmath
 import numpy as np
@@ -16,19 +16,24 @@ from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.coulomb.direct import (
+    SMALL,
     direct_field,
     direct_sum,
+    mixed_field,
     potentials,
     threaded_direct_field,
+    threaded_mixed_field,
     threaded_potentials,
     workspace,
 )
 
 Floats = NDArray[np.float64]
 
-COUNTS = [1, 2, 3, 63, 64, 65, 127, 128, 129, 500, 511, 512, 513, 1000]
+COUNTS = [1, 2, 4, 5, 8, 9, 24, 25, 40, 63, 64, 65, 72, 127, 128, 129, 500, 511, 512, 513, 1000]
 ROUNDING = 1e-14
 """Of the sum of the terms' sizes: a sum of 1000 terms in any order errs by less."""
+ROUGH = 3e-8
+"""What the mixed sum may err by in each term."""
 
 
 class Terms(NamedTuple):
@@ -60,12 +65,14 @@ def written_out(place: Floats, charge: Floats, softening: float = 0.0) -> Terms:
     )
 
 
-def field(place: Floats, charge: Floats, softening: float = 0.0) -> Floats:
+def field(
+    place: Floats, charge: Floats, softening: float = 0.0, summed: Any = direct_field
+) -> Floats:
     """The field (3, n) of the product, on one thread."""
     found = np.full_like(place, np.nan)
     work = workspace(charge.size)
     work[:] = np.nan
-    direct_field(place, charge, softening**2, COULOMB_CONSTANT, work, found)
+    summed(place, charge, softening**2, COULOMB_CONSTANT, work, found)
     return found
 
 
@@ -92,6 +99,34 @@ def test_field_and_potential_are_the_sums_written_out(n: int, softening: float) 
     assert (wrong <= ROUNDING * expected.field_size).all()
     wrong = np.abs(expected.potential - potential(place, charge, softening))
     assert (wrong <= ROUNDING * expected.potential_size).all()
+
+
+@pytest.mark.parametrize("softening", [0.0, 0.1])
+@pytest.mark.parametrize("n", [65, 128, 500, 513, 1000])
+def test_the_mixed_sum_errs_by_its_measure_in_each_term(n: int, softening: float) -> None:
+    """And by no less than the measure of processors that do not estimate: something is saved."""
+    place, charge = cloud(n)
+    expected = written_out(place, charge, softening)
+    found = field(place, charge, softening, mixed_field)
+    wrong = np.abs(expected.field - found).max(axis=0)
+    assert (wrong <= ROUGH * expected.field_size).all()
+    assert wrong.max() > 1e-13 * expected.field_size.max()
+
+
+@pytest.mark.parametrize("n", [1, 2, 8, 64])
+def test_few_charges_are_summed_in_double_even_where_mixed_is_asked_for(n: int) -> None:
+    """Nothing would be saved."""
+    place, charge = cloud(n)
+    assert (field(place, charge) == field(place, charge, 0.0, direct_sum(n, 1, mixed=True))).all()
+
+
+def test_no_charges_have_no_field() -> None:
+    """All may be lost; nothing is touched."""
+    nothing, work = np.empty((3, 0)), workspace(0)
+    work[:] = 7.0
+    direct_sum(0, 1)(nothing, nothing[0], 0.0, COULOMB_CONSTANT, work, nothing)
+    potentials(nothing, nothing[0], 0.0, COULOMB_CONSTANT, nothing[0])
+    assert (7.0 == work).all()
 
 
 @pytest.mark.parametrize("size", [1e-12, 1e-6, 1.0, 1e3])
@@ -169,8 +204,14 @@ def test_two_charges_at_one_place_push_nowhere_and_leave_the_rest_alone(
     assert np.isfinite(level).all()
 
 
-@pytest.mark.parametrize("n", [2, 64, 65, 129, 600])
-def test_forces_cancel_pair_by_pair(n: int) -> None:
+@pytest.mark.parametrize(
+    ("n", "summed"),
+    [
+        *((n, direct_field) for n in (2, 4, 8, 24, 64, 65, 129, 600)),
+        *((n, mixed_field) for n in (65, 129, 600)),
+    ],
+)
+def test_forces_cancel_pair_by_pair(n: int, summed: Any) -> None:
     """Newton's third law: |sum F| / sum |F| at rounding, like and unlike charges.
 
     1e-15 where both halves of a pair come from one product; a sum of n forces rounds by about
@@ -178,12 +219,29 @@ def test_forces_cancel_pair_by_pair(n: int) -> None:
     """
     place, charge = cloud(n)
     for q in (charge, np.ones(n)):
-        force = q * field(place, q)
+        force = q * field(place, q, 0.0, summed)
         residual = np.linalg.norm(force.sum(axis=1)) / np.linalg.norm(force, axis=0).sum()
         assert residual <= 2e-15
     if n == 2:
         force = field(place, np.ones(2))
         assert (force[:, 0] == -force[:, 1]).all()
+
+
+@pytest.mark.parametrize("summed", [direct_field, mixed_field])
+@pytest.mark.parametrize(("first", "second"), [(0, 1), (3, 60), (5, 70), (64, 120), (100, 128)])
+def test_two_charges_alone_push_each_other_alike(first: int, second: int, summed: Any) -> None:
+    """Whichever place in a tile they have: their forces are each other's negative to a rounding.
+
+    Of unequal charges the last product of each force is rounded apart; of equal ones none.
+    """
+    place, _ = cloud(129)
+    for charges, most in (((1.0, 1.0), 0.0), ((2.7, -0.9), 4e-16)):
+        charge = np.zeros(129)
+        charge[first], charge[second] = charges
+        force = charge * field(place, charge, 0.0, summed)
+        sizes = np.abs(force[:, first])
+        assert (sizes > 0.0).all()
+        assert (np.abs(force[:, first] + force[:, second]) <= most * sizes).all()
 
 
 @pytest.mark.parametrize("n", [40, 64, 200, 600])
@@ -218,7 +276,7 @@ def test_the_field_is_minus_the_gradient_of_the_potential(softening: float) -> N
     assert -slope == pytest.approx(found, abs=1e-7 * np.linalg.norm(found))
 
 
-@pytest.mark.parametrize("n", [512, 513, 1000, 2100])
+@pytest.mark.parametrize("n", [512, 513, 1000, 2100, 4096, 4099])
 def test_threads_change_no_bit(n: int) -> None:
     """Field and potential of the threaded kernels are those of the serial ones, bit for bit."""
     place, charge = cloud(n)
@@ -226,6 +284,9 @@ def test_threads_change_no_bit(n: int) -> None:
     threaded = np.full_like(place, np.nan)
     threaded_direct_field(place, charge, 0.0, COULOMB_CONSTANT, workspace(n), threaded)
     assert (serial == threaded).all()
+    threaded_mixed_field(place, charge, 0.0, COULOMB_CONSTANT, workspace(n), threaded)
+    assert (field(place, charge, 0.0, mixed_field) == threaded).all()
+    assert (serial != threaded).any()
     level = np.full(n, np.nan)
     threaded_potentials(place, charge, 0.0, COULOMB_CONSTANT, level)
     assert (potential(place, charge) == level).all()
@@ -238,6 +299,33 @@ def test_the_sum_handed_to_the_time_loop_is_the_same_sum(n: int, threads: int) -
     found = np.full_like(place, np.nan)
     direct_sum(n, threads)(place, charge, 0.1**2, COULOMB_CONSTANT, workspace(n), found)
     assert (field(place, charge, 0.1) == found).all()
+    if n > SMALL:
+        rough = direct_sum(n, threads, mixed=True)
+        assert (field(place, charge, 0.1, mixed_field) == field(place, charge, 0.1, rough)).all()
+
+
+@pytest.mark.parametrize("n", [1, 2, 8, 9, 24, 30, 64, 100, 600])
+def test_a_place_that_is_no_number_makes_every_field_and_potential_none(n: int) -> None:
+    """Of the charge that is nowhere, all of the field; of all others at least the part along."""
+    place, charge = cloud(n)
+    place[1, n // 2] = np.nan
+    sums = [direct_field] if n <= SMALL else [direct_field, mixed_field]
+    for summed in sums:
+        found = field(place, charge, 0.0, summed)
+        assert np.isnan(found[1]).all()
+        assert n == 1 or np.isnan(found).all()
+    if n > 1:
+        others = np.arange(n) != n // 2
+        assert np.isnan(potential(place, charge)[others]).all()
+
+
+@pytest.mark.parametrize("n", [2, 64, 100, 600])
+def test_charges_nearer_than_any_two_can_be_push_with_finite_force(n: int) -> None:
+    """1e-100 m apart and unsoftened: the guard against their own place is theirs as well."""
+    place, charge = cloud(n)
+    place[:, 0] = 0.0
+    place[:, n - 1] = [1e-100, 0.0, 0.0]
+    assert np.isfinite(field(place, charge)).all()
 
 
 @pytest.mark.parametrize("n", [2, 64, 100, 600])

@@ -6,7 +6,15 @@ import numpy as np
 import pytest
 
 from driftwell.coulomb import direct
-from driftwell.coulomb.direct import BUFFER, SMALL, THREADED, TILE, groups, workspace
+from driftwell.coulomb.direct import (
+    BUFFER,
+    SMALL,
+    THREADED,
+    TILE,
+    groups,
+    workspace,
+    workspace_shape,
+)
 from driftwell.kernels import kernel
 
 
@@ -24,10 +32,14 @@ def dealt(n: int) -> tuple[np.ndarray, np.ndarray]:
     return group, np.arange(1, columns + 1)
 
 
-@pytest.mark.parametrize("n", [1, 64, 65, 511, 512, 1000, 2048, 5000, 8192, 20000])
+@pytest.mark.parametrize("n", [0, 1, 64, 65, 511, 512, 1000, 2048, 5000, 8192, 20000])
 def test_the_work_space_has_a_row_for_each_group(n: int) -> None:
-    """One row of three sums for each charge and one tile buffer; groups for threads only."""
-    assert (groups(n), 3 * n + BUFFER) == workspace(n).shape
+    """Three sums for each charge, in whole vectors, and one tile; groups for threads only."""
+    vectors = -(-n // 8)
+    work = workspace(n)
+    assert (groups(n), 3 * 8 * vectors + BUFFER) == work.shape == workspace_shape(n)
+    assert 0 == work.ctypes.data % 64
+    assert 0 == work.strides[0] % 64
     assert (groups(n) == 1) == (n < THREADED)
 
 

@@ -15,11 +15,14 @@ import driftwell
 from driftwell.coulomb.direct import (
     direct_field,
     direct_sum,
+    mixed_field,
     potentials,
     threaded_direct_field,
+    threaded_mixed_field,
     threaded_potentials,
     workspace,
 )
+from driftwell.coulomb.sampled import sampled_field
 from driftwell.record.reader import Run, open_run
 from tests.running import quantity, species
 from tests.scenario.good_scenarios import toml_file
@@ -34,7 +37,7 @@ def gas(count: int) -> tuple[np.ndarray, np.ndarray]:
 
 
 @TWO
-@pytest.mark.parametrize("count", [2, 8, 64, 65, 511, 512, 2000])
+@pytest.mark.parametrize("count", [2, 8, 24, 25, 64, 65, 511, 512, 2000, 5000])
 @pytest.mark.parametrize("softening", [0.0, 0.1])
 def test_the_direct_sum_has_the_same_bits_on_one_thread_and_two(
     count: int, softening: float
@@ -52,6 +55,39 @@ def test_the_direct_sum_has_the_same_bits_on_one_thread_and_two(
             summed(place, charge, softening**2, 9e9, work, field)
             assert np.isfinite(field).all()
             results.append(field.tobytes())
+    numba.set_num_threads(numba.config.NUMBA_NUM_THREADS)
+    assert {results[0]} == set(results)
+
+
+@TWO
+@pytest.mark.parametrize("count", [65, 512, 2000, 5000])
+def test_the_mixed_sum_has_the_same_bits_on_one_thread_and_two(count: int) -> None:
+    """The groups are merged on all threads where there are many charges."""
+    place, charge = gas(count)
+    work = workspace(count)
+    results = []
+    for threads in (1, 2):
+        numba.set_num_threads(threads)
+        for summed in (direct_sum(count, threads, mixed=True), mixed_field, threaded_mixed_field):
+            field = np.full((3, count), np.nan)
+            summed(place, charge, 0.0, 9e9, work, field)
+            assert np.isfinite(field).all()
+            results.append(field.tobytes())
+    numba.set_num_threads(numba.config.NUMBA_NUM_THREADS)
+    assert {results[0]} == set(results)
+
+
+@TWO
+def test_the_field_at_some_charges_has_the_same_bits_on_one_thread_and_two() -> None:
+    place, charge = gas(2000)
+    which = np.arange(3, 2000, 19)
+    results = []
+    for threads in (1, 2):
+        numba.set_num_threads(threads)
+        field = np.full((3, which.size), np.nan)
+        sampled_field(which, place, charge, 0.0, 9e9, field)
+        assert np.isfinite(field).all()
+        results.append(field.tobytes())
     numba.set_num_threads(numba.config.NUMBA_NUM_THREADS)
     assert {results[0]} == set(results)
 

@@ -3,20 +3,19 @@
 The field at charge i (Q macro-charges, e the softening length):
 
     E_i = 1/(4 pi eps0) sum_{j != i} Q_j (x_i - x_j) / (|x_i - x_j|^2 + e^2)^(3/2)        (1)
-    U   = 1/(4 pi eps0) sum_{i < j} Q_i Q_j / (|x_i - x_j|^2 + e^2)^(1/2)                 (2)
 
-Charges are taken in tiles of 64. A tile of sources stands in one small flat buffer, together with
-the sums of its own field, so that the compiler sees constant distances and vectorises; each pair
-of tiles is visited once and what i does to j is minus what j does to i, from the same r^-3.
-Columns of tiles are dealt to a number of groups that depends on n alone, each group adds into its
-own buffer, and the buffers are merged in order: the bits do not depend on the number of threads.
-All of it is made part of the sum's own code: sums the compiler may reorder must not stand in code
-of their own, which is compiled anew for each caller, and of which the linker takes the first that
-was loaded.
+Charges are taken in tiles of 64, each pair of tiles is visited once (`tile.py`). Columns of tiles
+are dealt to a number of groups that depends on n alone, each group adds into its own buffer, and
+the buffers are merged in order: the bits do not depend on the number of threads. All of it is
+written in lanes, which the compiler does not reorder, so that they do not depend either on what was
+compiled with what.
 
-Up to 64 charges both halves of a pair are computed, in lanes over the charges that are pushed;
-x_i - x_j and its negative round alike, so the terms still cancel exactly where charges are equal,
-and to rounding elsewhere.
+Up to 4 charges are summed pair by pair. Up to 24, both halves of a pair are computed, in lanes over
+the charges that are pushed; x_i - x_j and its negative round alike, so the terms still cancel
+exactly where charges are equal, and to rounding elsewhere. Up to 64 are one tile.
+
+The mixed variant takes r^-3 of each pair to 3e-8, once for both its halves, and sums in double all
+the same: its third law is as exact. Up to 64 charges are always summed in double.
 
 References
 ----------
@@ -32,37 +31,55 @@ import numpy as np
 from numba import prange
 from numpy.typing import NDArray
 
-from driftwell.kernels import (
-    inner_kernel,
-    inner_pair_kernel,
-    outer_kernel,
-    pair_kernel,
-    threaded_pair_kernel,
-)
+from driftwell.coulomb.eight_places import NEAREST2, field_at_eight
+from driftwell.coulomb.pair_sum import SIGNATURE, PairSum
+from driftwell.coulomb.potential import potential_at, potentials, threaded_potentials
+from driftwell.coulomb.tile import BUFFER, TILE, add_across, add_within, fill_tile, take_tile
+from driftwell.kernels import inner_kernel, kernel, threaded_kernel
+from driftwell.kernels.cache_lines import room
 from driftwell.kernels.compiled import CompiledFunction
+from driftwell.kernels.lanes import ROUGH_SCALE, lanes, load, load_some, store_some
 
-TILE = 64
-_T1, _T2, _T3, _T4, _T5, _T6 = TILE, 2 * TILE, 3 * TILE, 4 * TILE, 5 * TILE, 6 * TILE
-BUFFER = 7 * TILE
-"""float64 of one tile's buffer: x, y, z, Q, and the three sums of its field."""
+__all__ = [
+    "BUFFER",
+    "SMALL",
+    "THREADED",
+    "TILE",
+    "PairSum",
+    "direct_field",
+    "direct_sum",
+    "groups",
+    "mixed_field",
+    "potential_at",
+    "potentials",
+    "small_field",
+    "threaded_direct_field",
+    "threaded_mixed_field",
+    "threaded_potentials",
+    "workspace",
+    "workspace_shape",
+]
+
 SMALL = 64
-"""Up to this many charges the sum needs no tiles."""
+"""Up to this many charges the sum is made part of the time loop."""
 THREADED = 512
 """From this many charges on threads pay for their start."""
-PairSum = CompiledFunction
-"""What the time loop takes as the sum over pairs: (position, charge, softening2, constant, work,
-out_field), as :func:`direct_field`. It is handed over as a pointer, so that the loop is compiled
-once, whichever sum it is given."""
-_FAR = 1e12
+_PAIRS = 4
+"""Up to this many charges lanes do not pay."""
+_FEW = 24
+"""Up to this many charges a tile does not pay."""
+_MERGED = 4096
+"""From this many charges on the groups are merged on all threads."""
+_PART = 512
+"""Charges merged by one pass of a thread; a multiple of 8."""
 
 
-_SIGNATURE = "void(float64[:,::1], float64[::1], float64, float64, float64[:,::1], float64[:,::1])"
-
-
-def direct_sum(n: int, threads: int) -> PairSum:
-    """The direct sum for `n` charges on so many threads."""
+def direct_sum(n: int, threads: int, mixed: bool = False) -> PairSum:
+    """The direct sum for `n` charges on so many threads; `mixed`: each pair to 3e-8."""
     threaded = threads > 1 and n >= THREADED
-    return CompiledFunction(threaded_direct_field if threaded else direct_field, _SIGNATURE)
+    if mixed and n > SMALL:
+        return CompiledFunction(threaded_mixed_field if threaded else mixed_field, SIGNATURE)
+    return CompiledFunction(threaded_direct_field if threaded else direct_field, SIGNATURE)
 
 
 def groups(n: int) -> int:
@@ -72,12 +89,17 @@ def groups(n: int) -> int:
     return 8 if n < 32 * TILE else 16 if n < 128 * TILE else 32
 
 
+def workspace_shape(n: int) -> tuple[int, int]:
+    """(groups, size): for each group a row of three sums, in whole vectors, and a tile."""
+    return groups(n), 3 * (n + 7 & ~7) + BUFFER
+
+
 def workspace(n: int) -> NDArray[np.float64]:
-    """(groups, 3 n + BUFFER) float64: one row of sums and one tile buffer for each group."""
-    return np.empty((groups(n), 3 * n + BUFFER))
+    """float64 of :func:`workspace_shape` that begin on a cache line; any contents will do."""
+    return room(workspace_shape(n))
 
 
-@pair_kernel
+@kernel
 def direct_field(
     position: np.ndarray,
     charge: np.ndarray,
@@ -90,23 +112,22 @@ def direct_field(
 
     Parameters
     ----------
-    position : (3, n) float64, m
+    position : (3, n) float64, m; below 1e-42 m apart the push is softened
     charge : (n,) float64, C, macro-charges; 0 takes a charge out of the sum
     softening2 : e^2, m^2
     constant : 1/(4 pi eps0), N m^2/C^2
     work : from :func:`workspace`, overwritten
     out_field : (3, n) float64, V/m, overwritten
     """
-    n = charge.size
-    if n <= SMALL:
+    if charge.size <= SMALL:
         small_field(position, charge, softening2, constant, work[0], out_field)
         return
     for g in range(work.shape[0]):
-        _group(g, work.shape[0], position, charge, softening2, work[g])
-    _merge(n, constant, work, out_field)
+        _group(g, work.shape[0], position, charge, softening2, False, work[g])
+    _merge(0, charge.size, constant, work, out_field)
 
 
-@threaded_pair_kernel
+@threaded_kernel
 def threaded_direct_field(
     position: np.ndarray,
     charge: np.ndarray,
@@ -117,11 +138,51 @@ def threaded_direct_field(
 ) -> None:
     """The same sum as :func:`direct_field`, with the same bits, on all of numba's threads."""
     for g in prange(work.shape[0]):
-        _group(g, work.shape[0], position, charge, softening2, work[g])
-    _merge(charge.size, constant, work, out_field)
+        _group(g, work.shape[0], position, charge, softening2, False, work[g])
+    n = charge.size
+    if n < _MERGED:
+        _merge(0, n, constant, work, out_field)
+    else:
+        for part in prange((n + _PART - 1) // _PART):
+            _merge(_PART * part, min(_PART * part + _PART, n), constant, work, out_field)
 
 
-@inner_pair_kernel
+@kernel
+def mixed_field(
+    position: np.ndarray,
+    charge: np.ndarray,
+    softening2: float,
+    constant: float,
+    work: np.ndarray,
+    out_field: np.ndarray,
+) -> None:
+    """The sum (1) with r^-3 of each pair to 3e-8, on one thread; as :func:`direct_field`."""
+    for g in range(work.shape[0]):
+        _group(g, work.shape[0], position, charge, softening2, True, work[g])
+    _merge(0, charge.size, constant * ROUGH_SCALE, work, out_field)
+
+
+@threaded_kernel
+def threaded_mixed_field(
+    position: np.ndarray,
+    charge: np.ndarray,
+    softening2: float,
+    constant: float,
+    work: np.ndarray,
+    out_field: np.ndarray,
+) -> None:
+    """The same sum as :func:`mixed_field`, with the same bits, on all of numba's threads."""
+    for g in prange(work.shape[0]):
+        _group(g, work.shape[0], position, charge, softening2, True, work[g])
+    n, scale = charge.size, constant * ROUGH_SCALE
+    if n < _MERGED:
+        _merge(0, n, scale, work, out_field)
+    else:
+        for part in prange((n + _PART - 1) // _PART):
+            _merge(_PART * part, min(_PART * part + _PART, n), scale, work, out_field)
+
+
+@inner_kernel
 def small_field(
     position: np.ndarray,
     charge: np.ndarray,
@@ -135,48 +196,69 @@ def small_field(
     work_row : one row of :func:`workspace`, overwritten
     """
     n = charge.size
-    for axis in range(3):
-        x = position[axis]
-        for i in range(n):
-            work_row[axis * TILE + i] = x[i]
-    for i in range(n):
-        work_row[_T3 + i] = 0.0
-        work_row[_T4 + i] = 0.0
-        work_row[_T5 + i] = 0.0
-    for j in range(n):
-        xj, yj, zj = work_row[j], work_row[_T1 + j], work_row[_T2 + j]
-        pushes = constant * charge[j]
-        for i in range(n):
-            dx = work_row[i] - xj
-            dy = work_row[_T1 + i] - yj
-            dz = work_row[_T2 + i] - zj
-            r2 = dx * dx + dy * dy + dz * dz + softening2
-            r2 = r2 if r2 > 0.0 else 1.0  # the charge itself
-            s = pushes / (r2 * math.sqrt(r2))
-            work_row[_T3 + i] += s * dx
-            work_row[_T4 + i] += s * dy
-            work_row[_T5 + i] += s * dz
-    for axis in range(3):
-        e = out_field[axis]
-        for i in range(n):
-            e[i] = work_row[(3 + axis) * TILE + i]
+    if n <= _PAIRS:
+        _pair_by_pair(position, charge, softening2, constant, out_field)
+        return
+    if n > _FEW:
+        _group(0, 1, position, charge, softening2, False, work_row)
+        for axis in range(3):
+            for i in range(n):
+                out_field[axis, i] = constant * work_row[axis * (n + 7 & ~7) + i]
+        return
+    for i in range(0, n, 8):
+        x = load_some(position[0], i, n - i)
+        y = load_some(position[1], i, n - i)
+        z = load_some(position[2], i, n - i)
+        ex, ey, ez = field_at_eight(x, y, z, position, charge, softening2)
+        store_some(out_field[0], i, n - i, lanes(constant) * ex)
+        store_some(out_field[1], i, n - i, lanes(constant) * ey)
+        store_some(out_field[2], i, n - i, lanes(constant) * ez)
 
 
-@inner_pair_kernel
+@inner_kernel
+def _pair_by_pair(
+    position: np.ndarray,
+    charge: np.ndarray,
+    softening2: float,
+    constant: float,
+    out_field: np.ndarray,
+) -> None:
+    """The same sum for so few charges that most lanes would stay empty."""
+    x, y, z = position[0], position[1], position[2]
+    ex, ey, ez = out_field[0], out_field[1], out_field[2]
+    for i in range(charge.size):
+        fx = 0.0 * x[i]  # a charge that is nowhere feels no number, even alone
+        fy = 0.0 * y[i]
+        fz = 0.0 * z[i]
+        for j in range(i):
+            dx, dy, dz = x[i] - x[j], y[i] - y[j], z[i] - z[j]
+            r2 = dx * dx + dy * dy + dz * dz + softening2 + NEAREST2
+            s = constant / (r2 * math.sqrt(r2))
+            to_i, by_i = s * charge[j], s * charge[i]
+            fx += to_i * dx
+            fy += to_i * dy
+            fz += to_i * dz
+            ex[j] -= by_i * dx
+            ey[j] -= by_i * dy
+            ez[j] -= by_i * dz
+        ex[i], ey[i], ez[i] = fx, fy, fz
+
+
+@inner_kernel
 def _group(
     g: int,
     group_count: int,
     position: np.ndarray,
     charge: np.ndarray,
     softening2: float,
+    rough: bool,
     work_row: np.ndarray,
 ) -> None:
     """Add the columns of tiles dealt to group `g` into its own sums."""
     n = charge.size
-    x, y, z = position[0], position[1], position[2]
-    sum_x, sum_y, sum_z = work_row[:n], work_row[n : 2 * n], work_row[2 * n : 3 * n]
-    tile = work_row[3 * n :]
-    for i in range(3 * n):
+    stride = n + 7 & ~7
+    tile = work_row[3 * stride :]
+    for i in range(3 * stride):
         work_row[i] = 0.0
     columns = (n + TILE - 1) // TILE
     for c in range(columns):
@@ -184,31 +266,10 @@ def _group(
             continue
         first = c * TILE
         filled = min(TILE, n - first)
-        for k in range(filled):
-            tile[k] = x[first + k]
-            tile[_T1 + k] = y[first + k]
-            tile[_T2 + k] = z[first + k]
-            tile[_T3 + k] = charge[first + k]
-        for k in range(filled, TILE):
-            tile[k] = _FAR
-            tile[_T1 + k] = tile[_T2 + k] = tile[_T3 + k] = 0.0
-        for k in range(3 * TILE):
-            tile[_T4 + k] = 0.0
-        for i in range(first):
-            fx, fy, fz = _across(x[i], y[i], z[i], charge[i], softening2, tile)
-            sum_x[i] += fx
-            sum_y[i] += fy
-            sum_z[i] += fz
-        for k in range(filled):
-            i = first + k
-            fx, fy, fz = _within(x[i], y[i], z[i], softening2, tile)
-            sum_x[i] += fx
-            sum_y[i] += fy
-            sum_z[i] += fz
-        for k in range(filled):
-            sum_x[first + k] += tile[_T4 + k]
-            sum_y[first + k] += tile[_T5 + k]
-            sum_z[first + k] += tile[_T6 + k]
+        fill_tile(position, charge, first, filled, tile)
+        add_across(position, charge, first, softening2, rough, tile, work_row, stride)
+        add_within(filled, softening2, rough, tile, work_row, stride, first)
+        take_tile(tile, filled, work_row, stride, first)
 
 
 @inner_kernel
@@ -224,132 +285,14 @@ def _dealt(place: int, group_count: int) -> int:
     return deal // 2 if deal % 2 == 0 else group_count - 1 - deal // 2
 
 
-@inner_pair_kernel
-def _across(
-    xi: float, yi: float, zi: float, qi: float, softening2: float, tile: np.ndarray
-) -> tuple[float, float, float]:
-    """One charge against a tile, each pair once: its own sums are returned, the tile's added."""
-    fx = fy = fz = 0.0
-    for k in range(TILE):
-        dx = xi - tile[k]
-        dy = yi - tile[_T1 + k]
-        dz = zi - tile[_T2 + k]
-        r2 = dx * dx + dy * dy + dz * dz + softening2
-        r2 = r2 if r2 > 0.0 else 1.0  # two charges at one place push nowhere
-        s = 1.0 / (r2 * math.sqrt(r2))
-        to_i = s * tile[_T3 + k]
-        to_k = s * qi
-        fx += to_i * dx
-        fy += to_i * dy
-        fz += to_i * dz
-        tile[_T4 + k] -= to_k * dx
-        tile[_T5 + k] -= to_k * dy
-        tile[_T6 + k] -= to_k * dz
-    return fx, fy, fz
-
-
-@inner_pair_kernel
-def _within(
-    xi: float, yi: float, zi: float, softening2: float, tile: np.ndarray
-) -> tuple[float, float, float]:
-    """One charge against its own tile."""
-    fx = fy = fz = 0.0
-    for k in range(TILE):
-        dx = xi - tile[k]
-        dy = yi - tile[_T1 + k]
-        dz = zi - tile[_T2 + k]
-        r2 = dx * dx + dy * dy + dz * dz + softening2
-        r2 = r2 if r2 > 0.0 else 1.0  # the charge itself
-        s = tile[_T3 + k] / (r2 * math.sqrt(r2))
-        fx += s * dx
-        fy += s * dy
-        fz += s * dz
-    return fx, fy, fz
-
-
-@outer_kernel
-def _merge(n: int, constant: float, work: np.ndarray, out_field: np.ndarray) -> None:
-    """Sum the groups in their order."""
+@inner_kernel
+def _merge(first: int, last: int, constant: float, work: np.ndarray, out_field: np.ndarray) -> None:
+    """Sum the groups in their order, for charges `first`, a multiple of 8, to ``last - 1``."""
+    stride = out_field.shape[1] + 7 & ~7
     for axis in range(3):
-        out = out_field[axis]
-        row = work[0, axis * n : (axis + 1) * n]
-        for i in range(n):
-            out[i] = row[i]
-        for g in range(1, work.shape[0]):
-            row = work[g, axis * n : (axis + 1) * n]
-            for i in range(n):
-                out[i] += row[i]
-        for i in range(n):
-            out[i] *= constant
-
-
-@inner_pair_kernel
-def potential_at(
-    i: int, position: np.ndarray, charge: np.ndarray, softening2: float, constant: float
-) -> float:
-    """Potential at charge `i` of all others, V; of one at its very place none, if unsoftened."""
-    x, y, z = position[0], position[1], position[2]
-    xi, yi, zi = x[i], y[i], z[i]
-    total = 0.0
-    for j in range(charge.size):
-        dx = xi - x[j]
-        dy = yi - y[j]
-        dz = zi - z[j]
-        r2 = dx * dx + dy * dy + dz * dz + softening2
-        r2 = r2 if r2 != 0.0 else math.inf
-        r2 = r2 if j != i else math.inf  # taken away afterwards, its own term would swamp far ones
-        total += charge[j] / math.sqrt(r2)
-    return constant * total
-
-
-@pair_kernel
-def potentials(
-    position: np.ndarray,
-    charge: np.ndarray,
-    softening2: float,
-    constant: float,
-    out_potential: np.ndarray,
-) -> None:
-    """Potential at each charge of all others, V; the energy (2) is half the sum of Q times it."""
-    for i in range(charge.size):
-        out_potential[i] = potential_at(i, position, charge, softening2, constant)
-
-
-@threaded_pair_kernel
-def threaded_potentials(
-    position: np.ndarray,
-    charge: np.ndarray,
-    softening2: float,
-    constant: float,
-    out_potential: np.ndarray,
-) -> None:
-    """The same as :func:`potentials`, with the same bits, on all of numba's threads."""
-    for i in prange(charge.size):
-        out_potential[i] = potential_at(i, position, charge, softening2, constant)
-
-
-@outer_kernel
-def unresolved_pair(
-    position: np.ndarray,
-    charge: np.ndarray,
-    mass: np.ndarray,
-    constant: float,
-    limit: float,
-) -> int:
-    """Index of a charge that falls towards an opposite one faster than the step can follow, or -1.
-
-    A pair's own rate is sqrt(|Q_i Q_j| / (4 pi eps0 mu r^3)); `limit` is the largest one allowed,
-    squared, 1/s^2.
-    """
-    x, y, z = position[0], position[1], position[2]
-    for i in range(charge.size):
-        for j in range(i):
-            if charge[i] * charge[j] < 0.0:
-                dx = x[i] - x[j]
-                dy = y[i] - y[j]
-                dz = z[i] - z[j]
-                r2 = dx * dx + dy * dy + dz * dz
-                strength = -constant * charge[i] * charge[j] * (1.0 / mass[i] + 1.0 / mass[j])
-                if strength > limit * r2 * math.sqrt(r2):
-                    return i
-    return -1
+        for i in range(first, last, 8):
+            at = axis * stride + i
+            result = load(work[0], at)
+            for g in range(1, work.shape[0]):
+                result = result + load(work[g], at)
+            store_some(out_field[axis], i, last - i, lanes(constant) * result)

@@ -11,7 +11,9 @@ from driftwell.kernels.compiled import (
     kernel,
     outer_kernel,
     pair_kernel,
+    threaded_kernel,
     threaded_pair_kernel,
+    view_kernel,
 )
 
 __all__ = [
@@ -22,5 +24,7 @@ __all__ = [
     "kernel",
     "outer_kernel",
     "pair_kernel",
+    "threaded_kernel",
     "threaded_pair_kernel",
+    "view_kernel",
 ]

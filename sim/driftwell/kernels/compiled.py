@@ -110,6 +110,11 @@ def cache_folder() -> Path:
 _FOLDER = cache_folder()
 
 
+def kept_in() -> Path:
+    """The folder of this version's machine code, and of what was measured of it on this machine."""
+    return _FOLDER
+
+
 def _compiled(function: F, **options: Any) -> F:
     """`function` under numba, its machine code kept in the folder of this version's sources."""
     settings: Any = numba.config
@@ -159,6 +164,11 @@ def inner_sum_kernel(function: F) -> F:
     )
 
 
+def threaded_kernel(function: F) -> F:
+    """A :func:`kernel` whose outer `prange` runs on all threads; a pass writes only its own."""
+    return _compiled(function, parallel=True)
+
+
 def outer_kernel(function: F) -> F:
     """A :func:`kernel` that only other kernels call, seldom: kept out of its callers."""
     return _compiled(function, _nrt=False, no_cpython_wrapper=True, no_cfunc_wrapper=True)
@@ -184,6 +194,11 @@ def pair_kernel(function: F) -> F:
 def threaded_pair_kernel(function: F) -> F:
     """Compile a pair sum whose outer `prange` runs on all threads; a pass writes only its own."""
     return _compiled(function, fastmath=set(PAIR_FLAGS), parallel=True)
+
+
+def view_kernel(function: F) -> F:
+    """A :func:`kernel` that returns parts of the arrays it is given, for threaded kernels."""
+    return _compiled(function, forceinline=True)
 
 
 class CompiledFunction(numba.types.WrapperAddressProtocol):
