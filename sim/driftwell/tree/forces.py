@@ -1,0 +1,178 @@
+"""What the walk finds is summed: far cells in lanes, near charges in lanes, and a leaf's own."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.lanes import (
+    ROUGH_SCALE,
+    WIDTH,
+    LanesType,
+    fused,
+    inverse_cube,
+    inverse_root,
+    lanes,
+    load,
+    load_one,
+    scaled_rough_inverse_cube,
+    store,
+    where_above,
+)
+from driftwell.tree.cells import BATCH, CELL, RIGHT, TURNED, Tree, X, Y, Z
+from driftwell.tree.expansions import (
+    BasisType,
+    add_cells,
+    add_far_charges,
+    field_of,
+    field_of_cell,
+    is_mixed,
+    moment_row,
+    side_by_side,
+    with_potential,
+)
+
+AT_ONE_PLACE = 1e-199
+"""Squared distances below this are those of charges at one place, in the tree's units."""
+
+
+@inner_kernel
+def local_lanes(of: BasisType) -> int:
+    """Where, among a desk's lanes, a local expansion is added up."""
+    return int(TURNED + BATCH * moment_row(of))
+
+
+@outer_kernel
+def hear(
+    of: BasisType,
+    cell: int,
+    far: int,
+    which: np.ndarray,
+    tree: Tree,
+    softening2: float,
+    work_lanes: np.ndarray,
+) -> None:
+    """Add so many far cells to a cell's local expansion, in lanes, eight at a time.
+
+    which : (far + 8,) int64, overwritten behind the first `far`
+    """
+    row = tree.cells[cell]
+    length = moment_row(of)
+    turned, local = work_lanes[TURNED:], work_lanes[local_lanes(of) :]
+    for k in range(far, far + BATCH):
+        which[k] = tree.cells.shape[0] - 1  # a cell without charge
+    for k in range(0, far, BATCH):
+        side_by_side(tree.cells.reshape(-1), BATCH, CELL, which, k, work_lanes)
+        side_by_side(tree.moments, length, length, which, k, turned)
+        x = lanes(row[X]) - load(work_lanes, 0)
+        y = lanes(row[Y]) - load(work_lanes, BATCH)
+        z = lanes(row[Z]) - load(work_lanes, 2 * BATCH)
+        add_cells(of, x, y, z, _inverse(x, y, z, softening2), turned, local)
+
+
+@outer_kernel
+def one_by_one(
+    of: BasisType,
+    cell: int,
+    other: int,
+    tree: Tree,
+    softening2: float,
+    work_lanes: np.ndarray,
+) -> None:
+    """Let a cell gather from another where one is a leaf whose charges are taken one by one."""
+    is_leaf = tree.cells[cell, RIGHT] == 0.0
+    leaf, middle = (cell, tree.cells[other]) if is_leaf else (other, tree.cells[cell])
+    local = work_lanes[local_lanes(of) :]
+    none = lanes(0.0)
+    for i in range(tree.first[leaf], tree.first[leaf + 1], WIDTH):
+        x = load(tree.place[0], i) - lanes(middle[X])
+        y = load(tree.place[1], i) - lanes(middle[Y])
+        z = load(tree.place[2], i) - lanes(middle[Z])
+        inverse = _inverse(x, y, z, softening2)
+        if is_leaf:
+            found = field_of_cell(of, x, y, z, inverse, tree.moments, other * moment_row(of))
+            _add(tree.field[0], i, found[0])
+            _add(tree.field[1], i, found[1])
+            _add(tree.field[2], i, found[2])
+            if with_potential(of):
+                _add(tree.field[3], i, found[3])
+        else:
+            charge = load(tree.place[3], i)
+            add_far_charges(of, none - x, none - y, none - z, inverse, charge, local)
+
+
+@outer_kernel
+def push(
+    of: BasisType, cell: int, near: int, ranges: np.ndarray, tree: Tree, softening2: float
+) -> None:
+    """Add near charges, in so many ranges, to the fields at a leaf's own, pair by pair."""
+    x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
+    soft = lanes(softening2)
+    for i in range(tree.first[cell], tree.first[cell + 1], 2 * WIDTH):
+        xa, ya, za = load(x, i), load(y, i), load(z, i)
+        xb, yb, zb = load(x, i + WIDTH), load(y, i + WIDTH), load(z, i + WIDTH)
+        ax = ay = az = va = bx = by = bz = vb = lanes(0.0)
+        for k in range(near):
+            for j in range(ranges[2 * k], ranges[2 * k + 1]):
+                xj, yj = load_one(x, j), load_one(y, j)
+                zj, qj = load_one(z, j), load_one(charge, j)
+                dx, dy, dz = xa - xj, ya - yj, za - zj
+                square = fused(dx, dx, fused(dy, dy, fused(dz, dz, soft)))
+                s = qj * _cube(of, square)
+                ax, ay, az = fused(s, dx, ax), fused(s, dy, ay), fused(s, dz, az)
+                if with_potential(of):
+                    va = fused(
+                        where_above(square, lanes(AT_ONE_PLACE), qj), inverse_root(square), va
+                    )
+                dx, dy, dz = xb - xj, yb - yj, zb - zj
+                square = fused(dx, dx, fused(dy, dy, fused(dz, dz, soft)))
+                s = qj * _cube(of, square)
+                bx, by, bz = fused(s, dx, bx), fused(s, dy, by), fused(s, dz, bz)
+                if with_potential(of):
+                    vb = fused(
+                        where_above(square, lanes(AT_ONE_PLACE), qj), inverse_root(square), vb
+                    )
+        unit = lanes(ROUGH_SCALE) if is_mixed(of) else lanes(1.0)
+        _add(tree.field[0], i, unit * ax)
+        _add(tree.field[1], i, unit * ay)
+        _add(tree.field[2], i, unit * az)
+        _add(tree.field[0], i + WIDTH, unit * bx)
+        _add(tree.field[1], i + WIDTH, unit * by)
+        _add(tree.field[2], i + WIDTH, unit * bz)
+        if with_potential(of):
+            _add(tree.field[3], i, va)
+            _add(tree.field[3], i + WIDTH, vb)
+
+
+@inner_kernel
+def settle(of: BasisType, cell: int, tree: Tree, local: np.ndarray, own: int) -> None:
+    """Add the far field to the fields at a leaf's charges."""
+    row = tree.cells[cell]
+    for i in range(tree.first[cell], tree.first[cell + 1], WIDTH):
+        x = load(tree.place[0], i) - lanes(row[X])
+        y = load(tree.place[1], i) - lanes(row[Y])
+        z = load(tree.place[2], i) - lanes(row[Z])
+        found = field_of(of, x, y, z, local, own)
+        _add(tree.field[0], i, found[0])
+        _add(tree.field[1], i, found[1])
+        _add(tree.field[2], i, found[2])
+        if with_potential(of):
+            _add(tree.field[3], i, found[3])
+
+
+@inner_kernel
+def _inverse(x: LanesType, y: LanesType, z: LanesType, softening2: float) -> LanesType:
+    """1 over softened distances."""
+    return inverse_root(fused(x, x, fused(y, y, fused(z, z, lanes(softening2)))))
+
+
+@inner_kernel
+def _cube(of: BasisType, square: LanesType) -> LanesType:
+    if is_mixed(of):
+        return scaled_rough_inverse_cube(square)
+    return inverse_cube(square)
+
+
+@inner_kernel
+def _add(row: np.ndarray, i: int, value: LanesType) -> None:
+    store(row, i, load(row, i) + value)

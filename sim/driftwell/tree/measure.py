@@ -1,0 +1,163 @@
+"""The tree is measured, from the leaves up: centres, extents, amounts and moments of its cells."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.lanes import lanes, load
+from driftwell.tree.cells import (
+    AMOUNT,
+    BATCH,
+    COUNT,
+    NET,
+    REACH,
+    RIGHT,
+    SPREAD,
+    SQUARES,
+    STRENGTH,
+    Tree,
+    X,
+    Y,
+    Z,
+)
+from driftwell.tree.expansions import (
+    BasisType,
+    add_charges,
+    add_moments,
+    finish_moments,
+    full_row,
+    moment_row,
+)
+
+
+@outer_kernel
+def climb(of: BasisType, low: int, high: int, tree: Tree, work_lanes: np.ndarray) -> None:
+    """Measure the cells ``low:high``, the last first; children of other cells are measured."""
+    for cell in range(high - 1, low - 1, -1):
+        if tree.cells[cell, RIGHT] == 0.0:
+            _measure_leaf(of, cell, tree, work_lanes)
+        else:
+            measure_parent(of, cell, tree)
+
+
+@outer_kernel
+def _measure_leaf(of: BasisType, cell: int, tree: Tree, work_lanes: np.ndarray) -> None:
+    """Overwrite the row and the moments of a leaf.
+
+    Distances count half by charge, as a source, and half by number, as those who feel.
+    """
+    x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
+    low, high = tree.first[cell], tree.first[cell + 1]
+    count = float(high - low)
+    amount = net = squares = 0.0
+    for k in range(low, high):
+        amount += abs(charge[k])
+        net += charge[k]
+        squares += charge[k] * charge[k]
+    per_charge = 0.5 / amount if amount > 0.0 else 0.0
+    per_one = 0.5 / count if amount > 0.0 else 1.0 / count
+    cx = cy = cz = 0.0
+    for k in range(low, high):
+        share = per_charge * abs(charge[k]) + per_one
+        cx += share * x[k]
+        cy += share * y[k]
+        cz += share * z[k]
+    farthest = spread = 0.0
+    for k in range(low, high):
+        dx, dy, dz = x[k] - cx, y[k] - cy, z[k] - cz
+        square = dx * dx + dy * dy + dz * dz
+        farthest = max(farthest, square)
+        spread += (per_charge * abs(charge[k]) + per_one) * _cube(square) * _cube(square)
+    row = tree.cells[cell]
+    row[X], row[Y], row[Z] = cx, cy, cz
+    row[REACH], row[SPREAD] = math.sqrt(farthest), spread ** (1.0 / 12.0)
+    row[AMOUNT], row[NET], row[SQUARES], row[COUNT] = amount, net, squares, count
+    for k in range(BATCH * full_row(of)):
+        work_lanes[k] = 0.0
+    for i in range(low, high, BATCH):
+        add_charges(
+            of,
+            lanes(cx) - load(x, i),
+            lanes(cy) - load(y, i),
+            lanes(cz) - load(z, i),
+            load(charge, i),
+            work_lanes,
+        )
+    finish_moments(of, work_lanes, tree.moments, cell * moment_row(of))
+    _measure_strength(of, cell, tree)
+
+
+@outer_kernel
+def measure_parent(of: BasisType, cell: int, tree: Tree) -> None:
+    """Overwrite the row and the moments of a cell from those of its children."""
+    row = tree.cells[cell]
+    left, right = cell + 1, int(row[RIGHT])
+    a, b = tree.cells[left], tree.cells[right]
+    amount, count = a[AMOUNT] + b[AMOUNT], a[COUNT] + b[COUNT]
+    share = b[COUNT] / count
+    if amount > 0.0:
+        share = 0.5 * share + 0.5 * b[AMOUNT] / amount
+    for axis in range(3):
+        row[axis] = a[axis] + share * (b[axis] - a[axis])
+    to_a, to_b = _distance(row, a), _distance(row, b)
+    reach = max(to_a + a[REACH], to_b + b[REACH])
+    spread = (1.0 - share) * _twelfth(to_a + a[SPREAD]) + share * _twelfth(to_b + b[SPREAD])
+    row[REACH], row[SPREAD] = reach, min(spread ** (1.0 / 12.0), reach)
+    row[AMOUNT], row[COUNT] = amount, count
+    row[NET], row[SQUARES] = a[NET] + b[NET], a[SQUARES] + b[SQUARES]
+    length = moment_row(of)
+    for k in range(length):
+        tree.moments[cell * length + k] = 0.0
+    _add_child(of, cell, left, tree)
+    _add_child(of, cell, right, tree)
+    _measure_strength(of, cell, tree)
+
+
+@inner_kernel
+def _add_child(of: BasisType, cell: int, child: int, tree: Tree) -> None:
+    row, other = tree.cells[cell], tree.cells[child]
+    add_moments(
+        of,
+        row[X] - other[X],
+        row[Y] - other[Y],
+        row[Z] - other[Z],
+        tree.moments,
+        child * moment_row(of),
+        cell * moment_row(of),
+    )
+
+
+@inner_kernel
+def _measure_strength(of: BasisType, cell: int, tree: Tree) -> None:
+    """The amount S with which a cell counts in error bounds, at most the sum of |Q|.
+
+    S is the smallest for which net charge, dipole and quadrupole are at most S spread^k, but no
+    smaller than chance makes the higher ones where signs are mixed: the root of the sum of Q^2.
+    """
+    row, m = tree.cells[cell], tree.moments[cell * moment_row(of) :]
+    strength = max(abs(m[0]), math.sqrt(row[SQUARES]))
+    spread = row[SPREAD]
+    if spread > 0.0:
+        dipole = math.sqrt(m[1] * m[1] + m[2] * m[2] + m[3] * m[3])
+        quadrupole = math.sqrt(m[4] * m[4] + m[5] * m[5] + m[6] * m[6] + m[7] * m[7] + m[8] * m[8])
+        strength = max(strength, dipole / spread, 1.4 * quadrupole / (spread * spread))
+    row[STRENGTH] = min(strength, row[AMOUNT])
+
+
+@inner_kernel
+def _cube(a: float) -> float:
+    return a * a * a
+
+
+@inner_kernel
+def _twelfth(a: float) -> float:
+    return _cube(a * a) * _cube(a * a)
+
+
+@inner_kernel
+def _distance(a: np.ndarray, b: np.ndarray) -> float:
+    dx, dy, dz = a[X] - b[X], a[Y] - b[Y], a[Z] - b[Z]
+    return math.sqrt(dx * dx + dy * dy + dz * dz)
