@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -74,6 +74,7 @@ def loop(
     samples: ArrayLike = (),
     traced: Sequence[Traced] = (),
     threads: int = 1,
+    coulomb_state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
     """A time loop at its start; `records` and `samples` are times of marks, s."""
@@ -99,6 +100,7 @@ def loop(
         plan,
         traced,
         threads,
+        coulomb_state,
     )
 
 
@@ -116,14 +118,18 @@ def to_end(moving: TimeLoop, keep_going: Callable[[], bool] = always) -> TimeLoo
 def accounts(moving: TimeLoop, remove_lost: bool = True) -> list[LedgerRow]:
     """The ledger closed at the start, at every mark for a record, and at the end."""
     ledger = Ledger()
-    rows = [ledger.close(0.0, moving.plan, moving.charges, moving.work)]
+
+    def closed(time: float) -> LedgerRow:
+        error, _ = moving.keep_accuracy()
+        return ledger.close(time, moving.plan, moving.charges, moving.work, moving.summation, error)
+
+    rows = [closed(0.0)]
     flags = moving.schedule.flags
     last = len(flags) - 1
     for mark in range(1, last + 1):
         if flags[mark] & RECORD or mark == last:
             assert moving.to_mark(mark, always)
-            time = float(moving.schedule.time[mark])
-            rows.append(ledger.close(time, moving.plan, moving.charges, moving.work))
+            rows.append(closed(float(moving.schedule.time[mark])))
             if remove_lost:
                 moving.remove_lost()
     return rows

@@ -27,6 +27,9 @@ class Unwatched:
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         """Nothing to show."""
 
+    def told(self, sentence: str) -> None:
+        """Nothing to show."""
+
     def goes_on(self, progress: Progress) -> bool:
         """On to the end."""
         return True

@@ -21,6 +21,7 @@ from driftwell.answers.answering import answer_all
 from driftwell.answers.evidence import CloudFacts
 from driftwell.answers.moments import moments_of
 from driftwell.assembly import assembled
+from driftwell.coulomb.promise import Broken
 from driftwell.errors import ScenarioError, StepError
 from driftwell.forms import spelled
 from driftwell.kernels.threads import on_threads
@@ -42,6 +43,8 @@ from driftwell.stepping.schedule import RECORD, SNAPSHOT, Schedule
 from driftwell.stepping.step_choice import StepChoice
 
 FINISHED, ALL_LOST, STOPPED, FAILED = "finished", "all lost", "stopped", "failed"
+_MOVED = ("particles/position", "particles/velocity")
+"""What the time loop changes of the particles."""
 EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5}
 
 
@@ -68,18 +71,25 @@ class Observer(Protocol):
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         """What will be done is settled; compilation may come next, then the first step."""
 
+    def told(self, sentence: str) -> None:
+        """What a user should know of the Coulomb sum: which it is and why, how much it errs."""
+
     def goes_on(self, progress: Progress) -> bool:
         """Called about twice a second; False asks the run to stop."""
 
 
 @dataclass(frozen=True, slots=True)
 class Result:
-    """What a run came to."""
+    """What a run came to.
+
+    broken : how the Coulomb sum was less accurate than asked; None where it never was
+    """
 
     folder: Path
     outcome: Outcome
     answers: list[Answer]
     ledger: LedgerRow
+    broken: Broken | None = None
 
 
 def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int = 1) -> Result:
@@ -117,6 +127,8 @@ class _Execution:
         self._tracked = _tracked(scenario, parts.particles)
         observer.begins(parts.choice, parts.schedule, parts.particles)
         self._loop = parts.time_loop(threads)
+        summation = self._loop.summation
+        observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
         self._writer = RunWriter.create(
             folder,
             Header(
@@ -127,6 +139,9 @@ class _Execution:
                 step=parts.choice.step,
                 scheme=scenario.stepping.scheme,
                 softening=scenario.coulomb.softening,
+                coulomb_method=summation.method,
+                coulomb_because=summation.because,
+                coulomb_accuracy=scenario.coulomb.accuracy,
                 clouds=parts.clouds,
                 species=parts.species,
                 walls=tuple(wall.name for wall in scenario.wall),
@@ -206,7 +221,12 @@ class _Execution:
         loop, writer = self._loop, self._writer
         time = float(self._schedule.time[mark])
         self._flags = flags = int(self._schedule.flags[mark])
-        self._row = self._ledger.close(time, loop.plan, loop.charges, loop.work)
+        error, told = loop.keep_accuracy()
+        for sentence in told:
+            self._observer.told(sentence)
+        self._row = self._ledger.close(
+            time, loop.plan, loop.charges, loop.work, loop.summation, error
+        )
         writer.ledger(_ledger_row(self._row))
         for events in loop.take_events():
             self._keep_events(events)
@@ -218,13 +238,26 @@ class _Execution:
             writer.moments(time, _moment_rows(loop.particles, self._clouds))
         if flags & SNAPSHOT or last:
             writer.snapshot(time, loop.particles)
-        self._state = {
-            **{name: np.copy(item) for name, item in particles_state(loop.particles).items()},
-            **loop.state(),
-            **{f"ledger/{name}": item for name, item in self._ledger.state().items()},
-        }
-        if writer.due():
+        self._keep_state()
+        if writer.due(self._state):
             writer.seal(self._state)
+
+    def _keep_state(self) -> None:
+        """Keep the state as it is now; the loop changes places and velocities only, in their place.
+
+        The copies go where those of the record before are, as long as no charge was lost.
+        """
+        before, loop = self._state, self._loop
+        state: dict[str, Any] = dict(particles_state(loop.particles))
+        for name in _MOVED:
+            old = before.get(name)
+            if old is not None and old.shape == state[name].shape:
+                old[...] = state[name]
+                state[name] = old
+            else:
+                state[name] = state[name].copy()
+        kept = {f"ledger/{name}": item for name, item in self._ledger.state().items()}
+        self._state = {**state, **loop.state(), **kept}
 
     def _keep_events(self, events: Events) -> None:
         walls = len(self._scenario.wall)
@@ -256,7 +289,9 @@ class _Execution:
         self._writer.finish(outcome, answers)
         if self._row is None:
             raise ScenarioError("the run kept no record")
-        return Result(self._folder, outcome, answers, self._row)
+        return Result(
+            self._folder, outcome, answers, self._row, self._loop.promise.broken(self._reached)
+        )
 
 
 def _command(loaded: LoadedScenario) -> str:
@@ -290,7 +325,9 @@ def _moment_rows(particles: Particles, clouds: Sequence[CloudFacts]) -> NDArray[
     """One row of moments for each cloud."""
     rows = np.zeros(len(clouds), dataset("moments").dtype())
     for row, cloud in zip(rows, clouds, strict=True):
-        member = particles.cloud == cloud.index
+        # charges stand in the order of their clouds
+        first, last = np.searchsorted(particles.cloud, [cloud.index, cloud.index + 1])
+        member = slice(first, last)
         found = moments_of(particles.position[:, member], particles.velocity[:, member], cloud.mass)
         for name in ("count", "centre", "covariance", "kinetic_energy", "kinetic_variance"):
             row[name] = getattr(found, name)

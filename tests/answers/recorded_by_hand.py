@@ -57,12 +57,16 @@ class Recorded:
     clouds: dict[str, CloudFacts] = field(default_factory=dict)
     detectors: list[str] = field(default_factory=list)
     softening: float = 0.0
+    force_error: float = 0.0
     end_time: float = 1e-3
     shots: dict[float, Snapshot] = field(default_factory=dict)
     series: dict[str, Moments] = field(default_factory=dict)
     lost: np.ndarray = field(default_factory=lambda: table(LOSS, []))
     crossed: np.ndarray = field(default_factory=lambda: table(CROSSING, []))
     traced: dict[TraceRequest, tuple[np.ndarray, np.ndarray]] = field(default_factory=dict)
+
+    def coulomb_error(self, until: float) -> float:
+        return self.force_error
 
     def snapshot(self, time: float) -> Snapshot:
         for known, shot in self.shots.items():

@@ -233,3 +233,32 @@ def test_a_wrong_question_is_a_fault_that_says_what_is_needed(
     assert read is None
     assert len(faults) == 1
     assert needed in faults[0].needed
+
+
+class Erring(Recorded):
+    """A record whose forces erred by 1e-5 at first and by 1e-3 from half a millisecond on."""
+
+    def coulomb_error(self, until: float) -> float:
+        return 1e-5 if until < 0.5e-3 else 1e-3
+
+
+@pytest.mark.parametrize(
+    ("keys", "expected"),
+    [
+        ({"ask": "fraction-left"}, 1e-3),
+        ({"ask": "fraction-left", "at": "start"}, 0.0),
+        ({"ask": "fraction-left", "at": "0 s"}, 0.0),
+        ({"ask": "fraction-left", "at": "0.3 ms"}, 1e-5),
+        ({"ask": "fraction-left", "at": "5 ms"}, 1e-3),
+        ({"ask": "centre", "axis": "x", "over": ["0 ms", "0.2 ms"]}, 1e-5),
+        ({"ask": "centre", "axis": "x", "over": ["0.1 ms", "0.8 ms"]}, 1e-3),
+        ({"ask": "frequency", "axis": "z"}, 1e-3),
+        ({"ask": "arrival-time", "of": "exit"}, 1e-3),
+    ],
+)
+def test_an_answer_carries_the_error_of_the_forces_up_to_its_time(
+    keys: dict[str, Any], expected: float
+) -> None:
+    """Of the start nothing has moved yet; where there is no answer the error is that of the try."""
+    (found,) = answer_all([asked(**keys)], Erring(**vars(full())))
+    assert expected == found.coulomb_error

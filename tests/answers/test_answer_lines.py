@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import answer_lines, reading
+from driftwell.answers.answer_lines import answer_lines, coulomb_lines, reading
 
 
 def answer(value: float, error: float | None, unit: str = "m", note: str = "") -> Answer:
@@ -118,3 +119,30 @@ def test_a_note_of_several_lines_is_one_paragraph() -> None:
 
 def test_the_sign_may_be_another_where_the_usual_one_cannot_be_written() -> None:
     assert ["size  1.00 +- 0.10 m"] == answer_lines([answer(1.0, 0.1)], 80, "+-")
+
+
+@pytest.mark.parametrize(
+    ("errors", "expected"),
+    [
+        ((), []),
+        ((0.0, 0.0), []),
+        (
+            (4e-5, 4.02e-5),
+            "coulomb error: rms 4.0e-05 of the force, as measured on the way; it is not in the "
+            "errors above",
+        ),
+        (
+            (0.0, 4e-5, 1e-6),
+            "coulomb error: rms 1.0e-06 to 4.0e-05 of the force, as measured on the way, behind 2 "
+            "of 3; it is not in the errors above",
+        ),
+    ],
+)
+def test_the_error_of_the_forces_is_told_beside_the_answers(
+    errors: tuple[float, ...], expected: str
+) -> None:
+    """In its own unit, and only where there is one."""
+    answers = [replace(answer(1.0, 0.1), coulomb_error=each) for each in errors]
+    lines = coulomb_lines(answers, 80)
+    assert expected == (" ".join(line.strip() for line in lines) or [])
+    assert all(len(line) <= 80 for line in lines)

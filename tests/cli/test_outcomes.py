@@ -12,6 +12,7 @@ from driftwell.cli.main import main
 from driftwell.errors import RecordError
 from driftwell.report import pictures
 from tests.cli.small_runs import PAIR, SMALL, scenario, settings
+from tests.inexact import Inexact, inexact  # noqa: F401
 
 Printed = pytest.CaptureFixture[str]
 
@@ -43,6 +44,7 @@ def test_a_finished_run_prints_its_answers_and_ends_with_0(tmp_path: Path, capsy
     assert printed.err.startswith(
         "Eight ions in a trap\n8 charges, 1000 steps of at most 20 ns: the scenario says so\n"
     )
+    assert printed.err.endswith("Coulomb sum: direct; 8 charges, too few for a tree to pay\n")
     lines = printed.out.splitlines()
     assert "finished: The motion was followed to t = 20 us." == lines[1]
     assert lines[2].startswith("8 real particles left, 0 lost; 1000 steps in ")
@@ -51,6 +53,23 @@ def test_a_finished_run_prints_its_answers_and_ends_with_0(tmp_path: Path, capsy
     assert lines[6].startswith("warmth ")
     assert " K " in lines[6]
     assert f"record: {tmp_path / 'run' / 'run.h5'}" == lines[-1]
+
+
+def test_a_broken_promise_of_the_coulomb_sum_stands_before_the_answers(
+    tmp_path: Path,
+    capsys: Printed,
+    inexact: Inexact,  # noqa: F811
+) -> None:
+    """Warned of when it is found, and told again where the answers are read."""
+    inexact.tolerance = inexact.best = 1.0
+    settings = ("cloud.load.count=70", "coulomb.method=tree", "coulomb.accuracy=1e-3")
+    assert 0 == run(tmp_path, *settings, "duration=2 us")
+    printed = capsys.readouterr()
+    told = " ".join(printed.out.split())
+    assert "Coulomb sum: tree; the scenario says so; to 0.001 of the force\n" in printed.err
+    assert "more than coulomb.accuracy = 0.001. Tightened as far as it goes" in printed.err
+    doubt = told.index("Doubt: the Coulomb sum was less accurate than coulomb.accuracy = 0.001")
+    assert doubt < told.index("70 of 70 charges") < told.index("coulomb error: rms ")
 
 
 def test_the_pictures_are_named_after_the_answers(tmp_path: Path, capsys: Printed) -> None:

@@ -19,6 +19,7 @@ import pytest
 from driftwell.cli import progress as module
 from driftwell.cli.progress import ProgressDisplay, told
 from driftwell.cli.stop_wish import StopWish
+from driftwell.coulomb.form import Coulomb
 from driftwell.particles.state import Particles
 from driftwell.run import Progress
 from driftwell.stepping.schedule import Schedule
@@ -41,7 +42,10 @@ def clock(monkeypatch: pytest.MonkeyPatch) -> Callable[[float], None]:
     return goes_to
 
 
-def display(wanted: bool = False, coulomb: bool = True) -> ProgressDisplay:
+DIRECT, OFF, TREE = (Coulomb(method=method) for method in ("direct", "off", "tree"))
+
+
+def display(wanted: bool = False, coulomb: Coulomb = DIRECT) -> ProgressDisplay:
     wish = StopWish(lambda: True)
     wish.wanted = wanted
     return ProgressDisplay(wish, 2, coulomb)
@@ -127,8 +131,18 @@ def test_a_sum_without_end_is_told_before_it_begins(
 ) -> None:
     display().begins(StepChoice(1e-9, "the drive"), plan(steps), particles(count))
     assert f"take at least {words}." in capsys.readouterr().err
-    display(coulomb=False).begins(StepChoice(1e-9, "the drive"), plan(steps), particles(count))
-    assert "at least" not in capsys.readouterr().err
+    for shorter in (TREE, OFF):
+        display(coulomb=shorter).begins(
+            StepChoice(1e-9, "the drive"), plan(steps), particles(count)
+        )
+        assert f"take at least {words}." not in capsys.readouterr().err
+
+
+def test_what_is_to_be_known_of_the_coulomb_sum_is_told_on_a_line_of_its_own(
+    clock: Callable[[float], None], capsys: Printed
+) -> None:
+    display().told("Coulomb sum: direct; the scenario says so")
+    assert "Coulomb sum: direct; the scenario says so\n" == capsys.readouterr().err
 
 
 def at_a_terminal(columns: int, arguments: list[str]) -> tuple[int, str]:

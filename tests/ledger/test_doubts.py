@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import fields, replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
+from driftwell.coulomb.promise import Broken
 from driftwell.ledger.doubts import doubts
 from driftwell.ledger.ledger import LedgerRow
 from driftwell.run import run
@@ -36,6 +37,12 @@ name     = "magnet"
 kind     = "uniform-magnetic"
 strength = "2 T"
 """
+
+
+QUIET = replace(
+    LedgerRow(**{each.name: 0.0 for each in fields(LedgerRow)}),  # type: ignore[arg-type]
+    count=40.0,
+)
 
 
 def last_row(folder: Path, step: str) -> LedgerRow:
@@ -70,3 +77,28 @@ def test_an_account_no_rounding_explains_is_told(
     row = replace(last_row(tmp_path, "1 ns"), **{field: amount})
     (told,) = doubts(row)
     assert name in told
+
+
+def test_angular_momentum_may_be_open_by_what_the_torque_of_the_sum_explains() -> None:
+    """No more, and nothing else may."""
+    assert [] == doubts(replace(QUIET, angular_residual=1e-6, angular_allowance=1e-6))
+    (told,) = doubts(replace(QUIET, angular_residual=1e-5, angular_allowance=1e-6))
+    assert "account of angular momentum is open by 1e-05" in told
+    (told,) = doubts(replace(QUIET, momentum_residual=1e-6, angular_allowance=1e-3))
+    assert "account of momentum" in told
+
+
+def test_an_energy_account_open_by_the_error_of_the_sum_is_told_as_that() -> None:
+    (told,) = doubts(replace(QUIET, energy_residual=-0.03, coulomb_error=0.05))
+    assert "open by 0.03" in told
+    assert "error of the Coulomb sum, 5.0e-02 of the force, can explain" in told
+    (told,) = doubts(replace(QUIET, energy_residual=-0.03, coulomb_error=1e-4))
+    assert "hard encounter" in told
+
+
+def test_a_broken_promise_is_told_before_all_else() -> None:
+    row = replace(QUIET, energy_residual=0.5)
+    first, second = doubts(row, Broken(1e-4, 3.2e-4, 2.5e-6, unmended=False))
+    assert "less accurate than coulomb.accuracy = 0.0001: for up to 2.5 us of the run" in first
+    assert "3.2e-04 of the force (rms) at the worst look; from then on it was tightened" in first
+    assert "energy" in second

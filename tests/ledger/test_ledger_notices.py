@@ -134,6 +134,30 @@ def test_a_force_that_breaks_the_third_law_shows() -> None:
     assert closed(MOVED.work._replace(coulomb=push)).third_law_residual > 1e-4
 
 
+def test_forces_that_turn_the_cloud_show_and_make_the_allowance() -> None:
+    """A field that circles about the axis turns all charges; its torque counts as long as it may
+    have lasted."""
+    row = closed(MOVED.work)
+    assert row.torque_residual <= 1e-13
+    x, y, z = MOVED.charges.position
+    turning = MOVED.work.coulomb.copy()
+    turning[0] -= 1e3 * y
+    turning[1] += 1e3 * x
+    ledger = Ledger()
+    ledger.close(0.0, MOVED.plan, MOVED.charges, MOVED.work)
+    spoiled = ledger.close(
+        DURATION, MOVED.plan, MOVED.charges, MOVED.work._replace(coulomb=turning)
+    )
+    assert spoiled.torque_residual > 1e-6
+    turn = 1e3 * np.array([-z * x, -z * y, x**2 + y**2])
+    torque = np.linalg.norm((MOVED.charges.charge * turn).sum(axis=1))
+    place, velocity = MOVED.charges.position, MOVED.charges.velocity
+    spins = np.sqrt((place**2).sum(axis=0) * (velocity**2).sum(axis=0)) * MOVED.charges.mass
+    assert torque * DURATION / spins.sum() == pytest.approx(
+        spoiled.angular_allowance, rel=1e-6, abs=0.0
+    )
+
+
 def test_a_push_nobody_accounted_for_shows() -> None:
     """A change of one velocity appears in energy, momentum and angular momentum."""
     charges = MOVED.charges
@@ -185,7 +209,7 @@ def test_residuals_are_held_against_the_largest_amounts() -> None:
 def test_the_state_holds_what_the_account_was_opened_with() -> None:
     """Energy, momentum, angular momentum, charge, count, and the scales: finite, all of them."""
     state = LEDGER.state()
-    assert {"start", "scale"} == set(state)
+    assert {"start", "scale", "torque"} == set(state)
     assert 9 == len(state["start"])
     assert all(np.isfinite(values).all() for values in state.values())
     assert (state["scale"] > 0.0).all()

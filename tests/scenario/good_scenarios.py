@@ -181,6 +181,10 @@ ask = "force"
 of = "pair"
 charge = 1
 at = "start"
+[coulomb]
+method = "auto"
+accuracy = 1e-5
+precision = "double"
 """
 
 GOOD = {"trap": TRAP, "beam": BEAM, "pair": PAIR}

@@ -10,6 +10,7 @@ from pathlib import Path
 
 import pytest
 
+from driftwell.coulomb.form import Coulomb
 from driftwell.errors import RecordError, ScenarioError
 from driftwell.scenario import room
 from driftwell.scenario.read import read_scenario
@@ -24,6 +25,7 @@ from driftwell.scenario.room import (
 )
 from tests.scenario.good_scenarios import BEAM, TRAP
 
+OFF = Coulomb(method="off")
 USUAL = Extent(
     charges=1000,
     tracked=1000,
@@ -33,27 +35,39 @@ USUAL = Extent(
     samples=0,
     traces=0,
     snapshots=2,
-    coulomb=True,
+    coulomb=Coulomb(method="direct"),
 )
 
 
 def test_how_much_a_run_is_follows_from_the_scenario(tmp_path: Path) -> None:
     path = tmp_path / "s.toml"
     path.write_text(TRAP)
-    assert Extent(200, 200, 1, 2, 202, 0, 0, 2, True) == extent_of(
-        read_scenario(path).scenario, 200
-    )
+    trap = read_scenario(path).scenario
+    assert Extent(200, 200, 1, 2, 202, 0, 0, 2, trap.coulomb) == extent_of(trap, 200)
     path.write_text(BEAM)
     scenario = read_scenario(path, ["coulomb.method=off"]).scenario
-    assert Extent(5000, 20, 2, 3, 102, 40, 1, 3, False) == extent_of(scenario, 5000, 40, 1)
+    assert Extent(5000, 20, 2, 3, 102, 40, 1, 3, scenario.coulomb) == extent_of(
+        scenario, 5000, 40, 1
+    )
 
 
-@pytest.mark.parametrize(
-    "more", ["charges", "tracked", "records", "samples", "clouds", "surfaces", "coulomb"]
-)
+@pytest.mark.parametrize("more", ["charges", "tracked", "records", "samples", "clouds", "surfaces"])
 def test_more_of_anything_needs_more_memory(more: str) -> None:
-    small = replace(USUAL, traces=1, coulomb=False)
+    small = replace(USUAL, traces=1, coulomb=OFF)
     assert small.memory() < replace(small, **{more: getattr(small, more) + 1000}).memory()
+
+
+@pytest.mark.parametrize("charges", [500, 3000, 200_000])
+def test_each_way_to_sum_has_its_own_room(charges: int) -> None:
+    """None where nothing is summed; the automatic choice has room for what it may take."""
+    needed = {
+        method: replace(USUAL, charges=charges, coulomb=Coulomb(method=method)).memory()
+        for method in ("off", "direct", "tree", "auto")
+    }
+    assert needed["off"] < min(needed["direct"], needed["tree"])
+    few, many = charges < 2000, charges > 100_000
+    expected = needed["direct"] if few else needed["tree"] if many else max(needed.values())
+    assert expected == needed["auto"]
 
 
 def test_the_record_on_the_disk_is_as_large_as_foretold(tmp_path: Path) -> None:
@@ -70,7 +84,7 @@ def test_the_record_on_the_disk_is_as_large_as_foretold(tmp_path: Path) -> None:
         timeout=300,
     )
     size = sum(file.stat().st_size for file in (folder / "segments").glob("*.h5"))
-    foretold = Extent(300, 300, 1, 2, 202, 0, 0, 2, True).disk()
+    foretold = Extent(300, 300, 1, 2, 202, 0, 0, 2, USUAL.coulomb).disk()
     assert 0.9 * foretold < size < 1.1 * foretold + 60_000
 
 
@@ -103,7 +117,7 @@ print(json.dumps([code, 1024 * int(peak)]))
     )
     code, used = json.loads(done.stdout.splitlines()[-1])
     assert 0 == code
-    foretold = Extent(300_000, 1000, 1, 2, 4, 0, 0, 2, False).memory()
+    foretold = Extent(300_000, 1000, 1, 2, 4, 0, 0, 2, OFF).memory()
     assert 0.7 * foretold < used < 1.3 * foretold
 
 

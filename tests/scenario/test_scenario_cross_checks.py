@@ -139,7 +139,31 @@ def test_charges_of_two_clouds_at_one_place_are_told_with_both_names(tmp_path: P
         'shape = { kind = "points", positions = [["1 um", "0", "0"]] }\n'
     )
     [line] = told(tmp_path, PAIR + other)
-    assert 's.toml:17 [[cloud]] "o" shape: charge 0 is exactly where charge 1 of "pair" is' in line
+    assert 's.toml:21 [[cloud]] "o" shape: charge 0 is exactly where charge 1 of "pair" is' in line
+
+
+@pytest.mark.parametrize(
+    ("settings", "expected"),
+    [
+        (["coulomb.accuracy=1e-9"], "must be at least 1e-08 and at most 0.1"),
+        (["coulomb.accuracy=0.2"], "must be at least 1e-08 and at most 0.1"),
+        (["coulomb.accuracy=fine"], "accuracy"),
+        (["coulomb.accuracy=nan"], "needs a finite number"),
+        (["coulomb.method=fmm"], '"auto", "direct", "tree" or "off"'),
+        (["coulomb.method=trees"], "tree"),
+        (["coulomb.precision=single"], '"auto", "double" or "mixed"'),
+        (
+            ["coulomb.precision=mixed", "coulomb.accuracy=1e-7"],
+            "needs an accuracy of 1e-06 or more",
+        ),
+    ],
+)
+def test_ways_to_sum_that_cannot_be_are_told(
+    tmp_path: Path, settings: list[str], expected: str
+) -> None:
+    (line,) = told(tmp_path, PAIR, *settings)
+    assert expected in line
+    assert settings[0].split("=")[1] in line
 
 
 @pytest.mark.parametrize("setting", ["coulomb.softening=1 um", "coulomb.method=off"])

@@ -64,6 +64,8 @@ def test_every_part_of_a_scenario_is_named(tmp_path: Path) -> None:
     [
         ("coulomb.method=off", "off: the charges do not feel each other"),
         ("coulomb.softening=0 m", "every pair of charges, without softening"),
+        ("coulomb.method=tree", "a tree, to 0.0001 of the force (rms), softened within 1 um"),
+        ("coulomb.precision=mixed", "softened within 1 um, in mixed precision"),
         ("stepping.step=5 ns", "kick-drift-kick, steps of 5 ns"),
         ("stepping.coulomb_every=4", "Coulomb sum every 4 steps"),
         ("record.snapshots=1 ms", "snapshots of all every 1 ms"),
@@ -74,6 +76,23 @@ def test_every_part_of_a_scenario_is_named(tmp_path: Path) -> None:
 def test_choices_of_the_scenario_are_told(tmp_path: Path, setting: str, expected: str) -> None:
     assert expected in in_one_line(explain(loaded(tmp_path, TRAP, setting)))
     assert expected not in in_one_line(explain(loaded(tmp_path, TRAP)))
+
+
+@pytest.mark.parametrize(
+    ("method", "count", "expected"),
+    [
+        ("auto", 200, "every pair of charges, softened"),
+        ("auto", 5000, "every pair of charges, or where that is faster on the machine a tree, to"),
+        ("direct", 5000, "every pair of charges, softened"),
+        ("tree", 50, "every pair of charges, softened"),
+        ("tree", 5000, "Coulomb a tree, to 0.001 of the force"),
+    ],
+)
+def test_how_the_force_is_summed_is_told(
+    tmp_path: Path, method: str, count: int, expected: str
+) -> None:
+    settings = (f"coulomb.method={method}", f"cloud.load.count={count}", "coulomb.accuracy=1e-3")
+    assert expected in in_one_line(explain(loaded(tmp_path, TRAP, *settings)))
 
 
 def test_macro_particles_without_softening_and_runs_without_questions_are_noted(

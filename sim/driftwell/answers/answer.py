@@ -7,11 +7,13 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class Answer:
-    """A value with its unit and its sampling error.
+    """A value with its unit, its sampling error, and the error of the forces behind it.
 
     name, ask : of the question, as in the scenario
     value, error : in `unit`; error is None where none is known
     note : what else to know, empty where nothing
+    coulomb_error : largest rms relative error of the Coulomb forces that moved the charges until
+        then, as measured; 0 where there are none, or all pairs were summed. It is not in `error`.
     """
 
     name: str
@@ -20,3 +22,4 @@ class Answer:
     unit: str
     error: float | None
     note: str
+    coulomb_error: float = 0.0

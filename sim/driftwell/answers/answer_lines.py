@@ -95,6 +95,21 @@ def answer_lines(answers: Sequence[Answer], width: int, sign: str = "±") -> lis
     return lines
 
 
+def coulomb_lines(answers: Sequence[Answer], width: int) -> list[str]:
+    """What the answers say of the forces behind them; nothing where these have no error."""
+    errors = [answer.coulomb_error for answer in answers if answer.coulomb_error != 0.0]
+    if not errors:
+        return []
+    least, most = f"{min(errors):.1e}", f"{max(errors):.1e}"
+    size = most if least == most else f"{least} to {most}"
+    whose = "" if len(errors) == len(answers) else f", behind {len(errors)} of {len(answers)}"
+    text = (
+        f"coulomb error: rms {size} of the force, as measured on the way{whose}; it is not in the "
+        "errors above"
+    )
+    return paragraph(text, width, "", "  ")
+
+
 def _with_note(start: str, note: str, width: int) -> list[str]:
     """A line and its note beside it, or below where it would be too narrow beside it."""
     note = _on_one_line(note)

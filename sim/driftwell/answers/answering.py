@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.evidence import Evidence
@@ -15,9 +16,13 @@ def answer_all(questions: Sequence[QuestionForm], evidence: Evidence) -> list[An
     """The answers to all questions, in their order.
 
     A question that cannot be answered becomes an answer that is not a number, with the reason in
-    its note; it never takes the other answers with it.
+    its note; it never takes the other answers with it. Each carries the error of the forces that
+    moved the charges until then.
     """
-    return [_answer(question, evidence) for question in questions]
+    return [
+        replace(_answer(question, evidence), coulomb_error=_coulomb_error(question, evidence))
+        for question in questions
+    ]
 
 
 def _answer(question: QuestionForm, evidence: Evidence) -> Answer:
@@ -28,3 +33,8 @@ def _answer(question: QuestionForm, evidence: Evidence) -> Answer:
     except Exception as defect:  # a defect in one estimator must not cost the run its answers
         note = f"a defect of driftwell, please report it: {type(defect).__name__}: {defect}"
     return Answer(question.name, question.ask, math.nan, question.unit, None, note)
+
+
+def _coulomb_error(question: QuestionForm, evidence: Evidence) -> float:
+    until = question.moved_until(evidence.end_time)
+    return evidence.coulomb_error(until) if until > 0.0 else 0.0

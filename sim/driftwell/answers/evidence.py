@@ -109,6 +109,9 @@ class Evidence(Protocol):
     def softening(self) -> float:
         """Softening length of the Coulomb sum, m."""
 
+    def coulomb_error(self, until: float) -> float:
+        """Largest rms relative error of the Coulomb forces measured up to a time, s."""
+
     @property
     def end_time(self) -> float:
         """Time the run reached, s."""

@@ -52,6 +52,10 @@ class QuestionForm(Form):
         """Times the question names, s, by their keys; none may lie after the end of the run."""
         return {}
 
+    def moved_until(self, end: float) -> float:
+        """Up to when the charges' motion decides the answer, s; `end` of the run."""
+        return min(end, max(self.times().values(), default=end))
+
     def refers_to(self) -> References:
         """The clouds, detectors and charges the question names."""
         return References(clouds=(self.of,))
@@ -82,6 +86,9 @@ class InstantQuestion(QuestionForm):
 
     def times(self) -> dict[str, float]:
         return {} if isinstance(self.at, str) else {"at": self.at}
+
+    def moved_until(self, end: float) -> float:
+        return 0.0 if self.at == "start" else super().moved_until(end)
 
     def time_in(self, evidence: Evidence) -> float:
         """The time asked for, s. Raises AnswerError where the run did not reach it."""

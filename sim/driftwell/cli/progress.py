@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 import os
 import sys
 import time
@@ -14,6 +13,8 @@ from tqdm import tqdm
 
 from driftwell.cli.printing import is_terminal, tell
 from driftwell.cli.stop_wish import StopWish
+from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.summation import pairs_in_one_sum
 from driftwell.forms import spelled
 from driftwell.particles.state import Particles
 from driftwell.run import Progress
@@ -36,16 +37,17 @@ _ROOMY = 120
 class ProgressDisplay:
     """Shows progress on stderr, and passes the wish to stop on to the run."""
 
-    def __init__(self, wish: StopWish, threads: int, coulomb: bool) -> None:
+    def __init__(self, wish: StopWish, threads: int, coulomb: Coulomb) -> None:
         self._wish = wish
-        self._pairs_per_second = threads * _PAIRS_PER_SECOND if coulomb else math.inf
+        self._coulomb = coulomb
+        self._pairs_per_second = threads * _PAIRS_PER_SECOND
         self._bar: Any = None
         self._began = 0.0
         self._next: float | None = None
 
     def compiles(self) -> None:
         """Say why nothing moves yet."""
-        tell("compiling for this machine, once for each version: about half a minute")
+        tell("compiling for this machine, once for each version: up to a minute")
 
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         """Say what the run will do, and why in such steps."""
@@ -53,13 +55,20 @@ class ProgressDisplay:
             f"{_counted(len(particles), 'charge')}, {_counted(plan.total_steps, 'step')} of at "
             f"most {spelled(choice.step, 's', 4)}: {choice.because}"
         )
-        count = len(particles)
-        sums = count * (count - 1) / 2 * plan.total_steps / self._pairs_per_second
+        pairs = pairs_in_one_sum(self._coulomb, len(particles))
+        sums = pairs * plan.total_steps / self._pairs_per_second
         if sums > _LONG:
             tell(
                 f"That many pairs in that many steps take at least {_in_days(sums)}. Fewer charges "
                 "of more weight each, or a longer step, take less."
             )
+
+    def told(self, sentence: str) -> None:
+        """Say it above the bar, or between the lines of a log."""
+        if self._bar is not None:
+            with suppress(OSError):
+                self._bar.clear()
+        tell(sentence)
 
     def goes_on(self, progress: Progress) -> bool:
         """Show how far the run is; False once a stop was asked for."""

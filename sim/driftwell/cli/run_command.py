@@ -6,7 +6,7 @@ import logging
 from collections.abc import Sequence
 from pathlib import Path
 
-from driftwell.answers.answer_lines import answer_lines
+from driftwell.answers.answer_lines import answer_lines, coulomb_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
@@ -14,7 +14,6 @@ from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
 from driftwell.kernels.compilation import first_compilation
 from driftwell.ledger.doubts import doubts
-from driftwell.ledger.ledger import LedgerRow
 from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
 from driftwell.run import FINISHED, Result, run
@@ -47,7 +46,7 @@ def _carried_out(
 ) -> tuple[Result, bool]:
     """The run's result, and whether all that was to be printed and drawn could be."""
     wish = StopWish((folder / MASTER).exists)
-    display = ProgressDisplay(wish, threads, loaded.scenario.coulomb.method != "off")
+    display = ProgressDisplay(wish, threads, loaded.scenario.coulomb)
     with wish.listening():
         try:
             with first_compilation(display.compiles):
@@ -75,22 +74,23 @@ def _report(result: Result) -> bool:
         f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
         f"{row.third_law_residual:.1e}",
         "",
-        *_doubted(row),
+        *_doubted(result),
         *(
             answer_lines(result.answers, width(), sign())
             or ["The scenario asks no questions: the run only recorded."]
         ),
+        *coulomb_lines(result.answers, width()),
         "",
         f"record: {result.folder / MASTER}",
     ]
     return answer(lines)
 
 
-def _doubted(row: LedgerRow) -> list[str]:
-    """What the ledger says against the answers, before them."""
+def _doubted(result: Result) -> list[str]:
+    """What the ledger and the Coulomb sum say against the answers, before them."""
     return [
         line
-        for doubt in doubts(row)
+        for doubt in doubts(result.ledger, result.broken)
         for line in (*paragraph(f"Doubt: {doubt}", width(), rest="  "), "")
     ]
 

@@ -7,7 +7,10 @@ is the difference of both sides of (1) over the largest amount that was ever in 
 relative error that cannot look small because a sum of signed terms happens to be.
 
 The Coulomb forces enter (1) nowhere, so a force that broke the third law would show in momentum;
-its direct check is the third-law residual |sum F| / sum |F|.
+its direct check is the third-law residual |sum F| / sum |F|. Forces that act along the line between
+two charges have no torque together either. Those of the tree do, as far as its expansions err: the
+torque residual |sum r x F| / sum |r| |F| says how much, and the sum of |sum r x F| over the time
+between records how far the account of angular momentum may be open for it.
 """
 
 from __future__ import annotations
@@ -17,7 +20,24 @@ from dataclasses import dataclass, field, fields
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.coulomb.direct import THREADED, potentials, threaded_potentials
+from driftwell.coulomb.potential import potentials
+from driftwell.coulomb.summation import Summation
+from driftwell.ledger.sums import (
+    ANGULAR,
+    ANGULAR_SIZE,
+    CHARGE,
+    CHARGE_SIZE,
+    COULOMB_FORCE,
+    COULOMB_SIZE,
+    COULOMB_TORQUE,
+    COULOMB_TORQUE_SIZE,
+    COUNT,
+    KINETIC,
+    MOMENTUM,
+    MOMENTUM_SIZE,
+    SUMS,
+    sum_charges,
+)
 from driftwell.stepping.accounts import (
     ANGULAR_WALLS,
     CHARGE_WALLS,
@@ -65,6 +85,19 @@ class LedgerRow:
     count_lost: float
     count_residual: float
     third_law_residual: float
+    torque_residual: float
+    angular_allowance: float
+    coulomb_error: float
+
+
+@dataclass(frozen=True, slots=True)
+class _Pairs:
+    """What the charges' own forces come to: energy, J, residuals, and the torque of all, N m."""
+
+    energy: float = 0.0
+    third_law: float = 0.0
+    torque_residual: float = 0.0
+    torque: float = 0.0
 
 
 @dataclass(slots=True)
@@ -93,27 +126,53 @@ class Ledger:
     _charge: float = 0.0
     _count: float = 0.0
     _opened: bool = False
+    _time: float = 0.0
+    _torque: float = 0.0
+    _untrue: float = 0.0
     _scale: _Scale = field(default_factory=_Scale)
 
-    def close(self, time: float, plan: Plan, charges: Charges, work: Work) -> LedgerRow:
-        """The row at `time`; forces in `work` belong to the positions, accounts are settled."""
-        mass, velocity, position = charges.mass, charges.velocity, charges.position
-        gamma = np.sqrt(1.0 + _squares(velocity) / plan.light2)
-        kinetic = float(np.sum(mass * _squares(velocity) / (1.0 + gamma)))
-        in_fields = float(work.energy[0])
-        coulomb, third_law = self._coulomb(plan, charges, work)
-        momenta = mass * velocity
-        spins = np.cross(position.T, momenta.T).T
-        momentum, angular = momenta.sum(axis=1), spins.sum(axis=1)
-        charge, count = float(charges.charge.sum()), float(charges.weight.sum())
+    def close(
+        self,
+        time: float,
+        plan: Plan,
+        charges: Charges,
+        work: Work,
+        summation: Summation | None = None,
+        coulomb_error: float = 0.0,
+    ) -> LedgerRow:
+        """The row at `time`; forces in `work` belong to the positions, accounts are settled.
+
+        summation : what gives the energy of the pairs; None: every pair is summed
+        coulomb_error : rms relative force error of the pair sum, as last measured
+        """
+        sums = np.empty(SUMS)
+        sum_charges(
+            charges.position,
+            charges.velocity,
+            charges.charge,
+            charges.mass,
+            charges.weight,
+            work.coulomb,
+            plan.light2,
+            np.empty(SUMS),
+            sums,
+        )
+        kinetic, in_fields = float(sums[KINETIC]), float(work.energy[0])
+        pairs = _pairs(plan, charges, sums, summation)
+        coulomb = pairs.energy
+        momentum, angular = sums[MOMENTUM : MOMENTUM + 3], sums[ANGULAR : ANGULAR + 3]
+        charge, count = float(sums[CHARGE]), float(sums[COUNT])
         book = work.total + work.carry
         self._open(kinetic + in_fields + coulomb, momentum, angular, charge, count)
         self._scale.grow(
             kinetic + abs(in_fields) + abs(coulomb),
-            float(np.sqrt(_squares(momenta)).sum()),
-            float(np.sqrt(_squares(position) * _squares(momenta)).sum()),
-            float(np.abs(charges.charge).sum()),
+            float(sums[MOMENTUM_SIZE]),
+            float(sums[ANGULAR_SIZE]),
+            float(sums[CHARGE_SIZE]),
         )
+
+        self._untrue += max(self._torque, pairs.torque) * (time - self._time)
+        self._time, self._torque = time, pairs.torque
 
         def vector(k: int) -> Floats:
             return book[k : k + 3].copy()
@@ -165,7 +224,10 @@ class Ledger:
             count=count,
             count_lost=float(book[COUNT_WALLS]),
             count_residual=_share(lost - book[COUNT_WALLS], self._count),
-            third_law_residual=third_law,
+            third_law_residual=pairs.third_law,
+            torque_residual=pairs.torque_residual,
+            angular_allowance=_share(self._untrue, self._scale.angular),
+            coulomb_error=coulomb_error,
         )
 
     def state(self) -> dict[str, Floats]:
@@ -174,6 +236,7 @@ class Ledger:
             "start": np.array(
                 [self._energy, *self._momentum, *self._angular, self._charge, self._count]
             ),
+            "torque": np.array([self._time, self._torque, self._untrue]),
             "scale": np.array([getattr(self._scale, each.name) for each in fields(_Scale)]),
         }
 
@@ -186,27 +249,25 @@ class Ledger:
         self._energy, self._charge, self._count = energy, charge, count
         self._momentum, self._angular = momentum.copy(), angular.copy()
 
-    @staticmethod
-    def _coulomb(plan: Plan, charges: Charges, work: Work) -> tuple[float, float]:
-        """Energy of all pairs, J, and |sum F| / sum |F| of the forces at hand."""
-        if plan.coulomb == 0:
-            return 0.0, 0.0
-        potential = np.empty_like(charges.charge)
-        summed = threaded_potentials if potential.size >= THREADED else potentials
-        summed(charges.position, charges.charge, plan.softening2, plan.constant, potential)
-        force = charges.charge * work.coulomb
-        scale = float(np.sqrt(_squares(force)).sum())
-        return (
-            0.5 * float(np.sum(charges.charge * potential)),
-            _share(float(np.linalg.norm(force.sum(axis=1))), scale),
-        )
 
-
-def _squares(vectors: Floats) -> Floats:
-    """Squared lengths of vectors (3, n)."""
-    x, y, z = vectors
-    result: Floats = x * x + y * y + z * z
-    return result
+def _pairs(plan: Plan, charges: Charges, sums: Floats, summation: Summation | None) -> _Pairs:
+    """What the charges' own forces at hand come to."""
+    if plan.coulomb == 0:
+        return _Pairs()
+    position, charge = charges.position, charges.charge
+    potential = np.empty_like(charge)
+    if summation is None:
+        potentials(position, charge, plan.softening2, plan.constant, potential)
+    else:
+        summation.potential(position, charge, potential)
+    force = float(np.linalg.norm(sums[COULOMB_FORCE : COULOMB_FORCE + 3]))
+    torque = float(np.linalg.norm(sums[COULOMB_TORQUE : COULOMB_TORQUE + 3]))
+    return _Pairs(
+        0.5 * float(np.sum(charge * potential)),
+        _share(force, float(sums[COULOMB_SIZE])),
+        _share(torque, float(sums[COULOMB_TORQUE_SIZE])),
+        torque,
+    )
 
 
 def _share(amount: float, scale: float) -> float:

@@ -9,7 +9,6 @@ from dataclasses import asdict, dataclass, field, fields
 from datetime import UTC, datetime
 from hashlib import sha256
 from importlib.metadata import version
-from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -17,6 +16,7 @@ import numpy as np
 from driftwell._version import __version__
 from driftwell.answers.evidence import CloudFacts, TraceRequest
 from driftwell.errors import RecordError
+from driftwell.kernels.processor import processor
 from driftwell.record.file_image import (
     attributes_of,
     put_attributes,
@@ -25,16 +25,6 @@ from driftwell.record.file_image import (
     text_table,
 )
 from driftwell.record.layout import FORMAT_VERSION, HEADER, dataset
-
-
-def _processor() -> str:
-    """The processor by name."""
-    listing = Path("/proc/cpuinfo")
-    if listing.is_file():
-        for line in listing.read_text(errors="replace").splitlines():
-            if line.startswith("model name"):
-                return line.partition(":")[2].strip()
-    return platform.processor() or platform.machine()
 
 
 def _version_of(package: str) -> Callable[[], str]:
@@ -51,6 +41,8 @@ class Header:
     command : the command that makes the same run again
     duration, step : s
     softening : m
+    coulomb_method, coulomb_because : the pair sum the run began with, and why
+    coulomb_accuracy : rms relative force error asked of it
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -72,13 +64,16 @@ class Header:
     digest: str = ""
     command: str = ""
     threads: int = 1
+    coulomb_method: str = "direct"
+    coulomb_because: str = ""
+    coulomb_accuracy: float = 1e-4
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)
     numpy_version: str = field(default_factory=_version_of("numpy"))
     numba_version: str = field(default_factory=_version_of("numba"))
     h5py_version: str = field(default_factory=_version_of("h5py"))
-    processor: str = field(default_factory=_processor)
+    processor: str = field(default_factory=processor)
     cores: int = field(default_factory=lambda: os.cpu_count() or 1)
     created: str = field(default_factory=lambda: datetime.now(UTC).isoformat(timespec="seconds"))
 

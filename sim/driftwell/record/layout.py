@@ -148,6 +148,24 @@ ROWS = (
                 "1",
                 "|sum of the Coulomb forces| / sum of their magnitudes",
             ),
+            Column(
+                "torque_residual",
+                "float64",
+                "1",
+                "|sum of their torques about the origin| / sum of |place| |force|",
+            ),
+            Column(
+                "angular_allowance",
+                "float64",
+                "1",
+                "angular residual that these torques, over the time so far, may have made",
+            ),
+            Column(
+                "coulomb_error",
+                "float64",
+                "1",
+                "rms relative force error of the Coulomb sum, last measured; 0 for the direct sum",
+            ),
         ),
     ),
     Dataset(
@@ -266,6 +284,12 @@ ANSWERS = Dataset(
         Column("value", "float64", "in the row's unit", "the answer; not a number where none"),
         Column("unit", "text", "", "unit of value and error"),
         Column("error", "float64", "in the row's unit", "sampling error; not a number if unknown"),
+        Column(
+            "coulomb_error",
+            "float64",
+            "1",
+            "largest rms relative error of the Coulomb forces behind it; not in `error`",
+        ),
         Column("note", "text", "", "what else to know of the answer"),
     ),
 )
@@ -297,6 +321,9 @@ HEADER = (
     Attribute("step", "float64", "s", "length of a step"),
     Attribute("scheme", "text", "", "scheme of the steps"),
     Attribute("softening", "float64", "m", "softening length of the Coulomb sum"),
+    Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
+    Attribute("coulomb_because", "text", "", "why, in words"),
+    Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of the walls, in order"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),

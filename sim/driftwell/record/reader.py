@@ -124,6 +124,12 @@ class Run:
         """Softening length of the Coulomb sum, m."""
         return self.header.softening
 
+    def coulomb_error(self, until: float) -> float:
+        """Largest rms relative error of the Coulomb forces measured up to a time, s."""
+        rows = self.ledger
+        near = TIME_TOLERANCE * self.header.duration
+        return float(rows["coulomb_error"][rows["time"] <= until + near].max(initial=0.0))
+
     @property
     def end_time(self) -> float:
         """Time the record reaches, s."""

@@ -7,7 +7,7 @@ from functools import partial
 
 import numpy as np
 
-from driftwell.answers.answer_lines import answer_lines
+from driftwell.answers.answer_lines import answer_lines, coulomb_lines
 from driftwell.errors import RecordError
 from driftwell.forms import spelled
 from driftwell.record.layout import ROWS
@@ -20,6 +20,7 @@ _RESIDUALS = (
     ("charge", "charge_residual"),
     ("count", "count_residual"),
     ("third law", "third_law_residual"),
+    ("torque", "torque_residual"),
 )
 
 
@@ -64,6 +65,7 @@ def _identity(run: Run) -> list[str]:
     return [
         *lines,
         f"{header.scheme}, step {spelled(header.step, 's')}, seed {header.seed}",
+        f"Coulomb sum {header.coulomb_method}: {header.coulomb_because or 'no reason given'}",
         f"begun {header.created} on {header.processor}, {header.threads} threads on "
         f"{header.cores} processors",
         f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "
@@ -99,16 +101,24 @@ def _ledger(run: Run) -> list[str]:
     if not len(ledger):
         return ["no row sealed yet"]
     width = max(len(name) for name, _ in _RESIDUALS)
-    return [
+    lines = [
         f"{name.ljust(width)}  residual {ledger[column][-1]: .2e} at the end, "
         f"{np.abs(ledger[column]).max():.2e} at most"
         for name, column in _RESIDUALS
     ]
+    error = ledger["coulomb_error"]
+    if error.any():
+        broken = "" if error.max() <= run.header.coulomb_accuracy else ": less accurate than asked"
+        lines.append(
+            f"Coulomb force errs by {error[-1]:.1e} (rms) at the end, {error.max():.1e} at most; "
+            f"{run.header.coulomb_accuracy:g} asked{broken}"
+        )
+    return lines
 
 
 def _answers(run: Run, width: int, sign: str) -> list[str]:
     if run.answers:
-        return answer_lines(run.answers, width, sign)
+        return answer_lines(run.answers, width, sign) + coulomb_lines(run.answers, width)
     return ["unfinished" if run.outcome.exit_code is None else "none asked"]
 
 

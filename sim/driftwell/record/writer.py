@@ -118,11 +118,13 @@ class RunWriter:
         if sampled.size:
             self._pending.reaches(float(sampled.min()), float(sampled.max()))
 
-    def due(self) -> bool:
-        """Whether enough bytes or time have gathered for :meth:`seal`."""
+    def due(self, state: Mapping[str, ArrayLike]) -> bool:
+        """Whether enough bytes or time have gathered for :meth:`seal` with this state."""
         now = self._clock()
-        return self._pending.bytes >= most_bytes(self._sealed_bytes) or (
-            self._pending.bytes > 0 and now - self._sealed_at >= longest_wait(now - self._began)
+        size = sum(np.asarray(value).nbytes for value in state.values())
+        return self._pending.bytes >= most_bytes(self._sealed_bytes, size) or (
+            self._pending.bytes > 0
+            and now - self._sealed_at >= longest_wait(now - self._began, size)
         )
 
     def seal(self, state: Mapping[str, ArrayLike]) -> None:

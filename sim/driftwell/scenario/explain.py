@@ -6,6 +6,8 @@ from collections.abc import Iterator
 from itertools import groupby
 from operator import itemgetter
 
+from driftwell.coulomb.crossover import LEAST
+from driftwell.coulomb.direct import SMALL
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 from driftwell.particles.species import bodies
@@ -51,7 +53,7 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
         yield "wall", wall.name, f"{wall.words()}; {_EFFECT[wall.effect]}"
     for detector in scenario.detector:
         yield "detector", detector.name, detector.words()
-    yield "Coulomb", "", _coulomb_words(scenario)
+    yield "Coulomb", "", _coulomb_words(loaded)
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:
@@ -61,12 +63,28 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
 _EFFECT = {"absorb": "absorbs", "reflect": "reflects"}
 
 
-def _coulomb_words(scenario: Scenario) -> str:
-    if scenario.coulomb.method == "off":
+def _coulomb_words(loaded: LoadedScenario) -> str:
+    coulomb = loaded.scenario.coulomb
+    if coulomb.method == "off":
         return "off: the charges do not feel each other"
-    softening = scenario.coulomb.softening
-    soft = f"softened within {spelled(softening, 'm')}" if softening else "without softening"
-    return f"every pair of charges, {soft}"
+    known = bodies(loaded.scenario.species)
+    charges = sum(cloud.amount(known, loaded.folder).count for cloud in loaded.scenario.cloud)
+    soft = f"softened within {spelled(coulomb.softening, 'm')}"
+    if not coulomb.softening:
+        soft = "without softening"
+    tree = f"a tree, to {coulomb.accuracy:g} of the force (rms)"
+    if (
+        coulomb.method == "direct"
+        or charges <= SMALL
+        or (coulomb.method == "auto" and charges < LEAST)
+    ):
+        way = "every pair of charges"
+    elif coulomb.method == "tree":
+        way = tree
+    else:
+        way = f"every pair of charges, or where that is faster on the machine {tree}"
+    precise = "" if coulomb.precision == "auto" else f", in {coulomb.precision} precision"
+    return f"{way}, {soft}{precise}"
 
 
 def _stepping_words(scenario: Scenario) -> str:

@@ -1,7 +1,8 @@
 """The room a run needs, in memory and on the disk, against what there is: refused before it begins.
 
 A machine that runs out of memory ends the program without a word, and a disk that fills up ends a
-run half-way; both can be seen coming. What a charge takes was measured with 1e6 of them.
+run half-way; both can be seen coming. What a charge takes was measured with 3e5 to 3e6 of them: 650
+bytes in a run without walls and Coulomb sum, 700 to 730 with two surfaces, where this counts 800.
 """
 
 from __future__ import annotations
@@ -11,17 +12,18 @@ from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 
-from driftwell.coulomb.direct import groups
+from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.summation import room_in_bytes
 from driftwell.errors import RecordError, ScenarioError
 from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.record.layout import dtype
 from driftwell.scenario.model import Scenario
 
-BASE = 350_000_000
-"""Bytes of the program itself."""
-PER_CHARGE = 850
+BASE = 500_000_000
+"""Bytes of the program itself: 250 MB, and up to 600 MB in the run that compiles."""
+PER_CHARGE = 700
 """Bytes of each charge: its state, the loop's work space, two copies for the record."""
-PER_SURFACE = 100
+PER_SURFACE = 50
 """Bytes of each charge for each wall and detector."""
 PER_TRACKED = 220
 """Bytes of each tracked charge while a segment is made."""
@@ -33,7 +35,7 @@ _LIMITS = ("/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory/memory.limit_in_b
 
 @dataclass(frozen=True, slots=True)
 class Extent:
-    """How much a run is: all are numbers of things."""
+    """How much a run is: numbers of things, and how the charges' own force is summed."""
 
     charges: int
     tracked: int
@@ -43,16 +45,17 @@ class Extent:
     samples: int
     traces: int
     snapshots: int
-    coulomb: bool
+    coulomb: Coulomb
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
-        sums = 24 * groups(self.charges) if self.coulomb else 0
+        sums = room_in_bytes(self.coulomb, self.charges)
         moments = self.records * self.clouds * dtype("moments").itemsize
         traces = self.samples * (self.traces + 1) * 8
         return (
             BASE
-            + self.charges * (PER_CHARGE + sums + self.surfaces * PER_SURFACE)
+            + sums
+            + self.charges * (PER_CHARGE + self.surfaces * PER_SURFACE)
             + self.tracked * PER_TRACKED
             + (self.records + self.samples) * PER_MARK
             + 3 * (moments + traces)
@@ -81,7 +84,7 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         samples=samples,
         traces=traces,
         snapshots=int(duration / (record.snapshots or duration)) + 1,
-        coulomb=scenario.coulomb.method != "off",
+        coulomb=scenario.coulomb,
     )
 
 
