@@ -15,6 +15,7 @@ from driftwell.forms import Form
 from driftwell.forms.body import Body
 from driftwell.walls.form import DetectorForm, WallForm
 from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
+from tests.pair_sums import direct, tree
 
 BODIES = {
     "barium": Body("barium", 137.905 * ATOMIC_MASS, ELEMENTARY_CHARGE),
@@ -186,4 +187,13 @@ WALLS = [
 DETECTORS = [
     detector("plane", at=OFF_CENTRE),
     detector("plane", name="tilted disc", at=OFF_CENTRE, normal=[-2, 1, 2], radius="2 mm"),
+]
+
+PAIR_SUMS = [
+    direct(threads=1),
+    direct(threads=2),
+    direct(threads=2, mixed=True),
+    tree(1e-3),
+    tree(1e-4),
+    tree(5e-7),
 ]

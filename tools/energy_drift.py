@@ -80,6 +80,9 @@ class _Quiet:
     def begins(self, choice: Any, plan: Any, particles: Any) -> None:
         return
 
+    def told(self, sentence: str) -> None:
+        return
+
     def goes_on(self, progress: Any) -> bool:
         return True
 

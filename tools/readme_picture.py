@@ -40,6 +40,9 @@ class Silent:
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         pass
 
+    def told(self, sentence: str) -> None:
+        """Nothing to show."""
+
     def goes_on(self, progress: Progress) -> bool:
         return True
 

@@ -1,0 +1,1 @@
+"""What tools/bench.py measures, case by case."""
