@@ -117,15 +117,15 @@ def test_a_segment_is_due_after_some_time_once_there_is_something_in_it(tmp_path
     clock = Clock()
     writer = RunWriter.create(tmp_path / "run", invented_header(), clock)
     clock.now += 100.0
-    assert not writer.due()
+    assert not writer.due({})
     writer.trajectory(0.0, np.zeros((3, 6)))
-    assert writer.due()
+    assert writer.due({})
     writer.seal({})
     writer.trajectory(1.0, np.zeros((3, 6)))
     clock.now += 9.9
-    assert not writer.due()
+    assert not writer.due({})
     clock.now += 0.2
-    assert writer.due()
+    assert writer.due({})
 
 
 def test_a_segment_is_due_by_its_bytes(tmp_path):
@@ -133,21 +133,21 @@ def test_a_segment_is_due_by_its_bytes(tmp_path):
     state = np.zeros((100_000, 6))
     for _ in range(6):
         writer.trajectory(0.0, state)
-    assert not writer.due()
+    assert not writer.due({})
     writer.trajectory(0.0, state)
-    assert writer.due()
+    assert writer.due({})
 
 
 def test_a_night_leaves_hundreds_of_segments():
     """Eight hours cut by time, and a hundred gigabytes cut by bytes."""
     elapsed, cuts = 0.0, 0
     while elapsed < 8 * 3600.0:
-        elapsed += longest_wait(elapsed)
+        elapsed += longest_wait(elapsed, 0)
         cuts += 1
     assert 600 < cuts < 700
     sealed, cuts = 0, 0
     while sealed < 100e9:
-        sealed += most_bytes(sealed)
+        sealed += most_bytes(sealed, 0)
         cuts += 1
     assert 800 < cuts < 1000
 
@@ -156,4 +156,27 @@ def test_a_night_leaves_hundreds_of_segments():
     ("elapsed", "expected"), [(0.0, 10.0), (999.0, 10.0), (3000.0, 30.0), (1e5, 60.0)]
 )
 def test_the_wait_grows_with_the_run_between_ten_and_sixty_seconds(elapsed, expected):
-    assert expected == longest_wait(elapsed)
+    assert expected == longest_wait(elapsed, 0)
+
+
+@pytest.mark.parametrize(
+    ("charges", "wait", "least"), [(1e3, 10.0, 32e6), (1e6, 208.0, 52e6), (1e7, 900.0, 520e6)]
+)
+def test_a_large_state_waits_for_rows_or_minutes(charges, wait, least):
+    """104 bytes a charge: half as many bytes of rows, or 2 s a megabyte, at most 15 min."""
+    state = int(104 * charges)
+    assert wait == longest_wait(0.0, state)
+    assert least == most_bytes(0, state)
+    assert max(wait, 60.0) == longest_wait(1e6, state)
+
+
+def test_the_writer_asks_how_large_the_state_is(tmp_path):
+    """Rows that would be sealed with a small state wait for a large one."""
+    clock = Clock()
+    writer = RunWriter.create(tmp_path / "run", invented_header(), clock)
+    writer.trajectory(0.0, np.zeros((3, 6)))
+    clock.now += 11.0
+    assert writer.due({})
+    assert not writer.due({"large": np.zeros(2_000_000)})
+    clock.now += 30.0
+    assert writer.due({"large": np.zeros(2_000_000)})

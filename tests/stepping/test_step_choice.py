@@ -8,6 +8,7 @@ from typing import Any
 
 import numpy as np
 import pytest
+from scipy.spatial import cKDTree
 
 from driftwell.constants import (
     ATOMIC_MASS,
@@ -154,6 +155,42 @@ def test_many_charges_are_followed_by_their_nearest_neighbours() -> None:
     [found] = closest_pair_rates(ions(place, weight=4.0), 0.0)
     assert pair_rate(1e-7, charges=4.0) == pytest.approx(found.rate, rel=1e-12, abs=0.0)
     assert [] == closest_pair_rates(ions([0, 0, 0]), 0.0)
+
+
+@pytest.mark.parametrize("kind", ["alike", "of two masses", "of two weights", "at few places"])
+@pytest.mark.parametrize("softening", [0.0, 2e-6])
+def test_the_fastest_of_very_many_is_that_of_their_nearest_neighbours(
+    kind: str, softening: float
+) -> None:
+    """Few are asked for their neighbour first; the fastest pair is found all the same."""
+    random = np.random.default_rng(5)
+    n = 20_000
+    place = random.normal(scale=1e-4, size=(n, 3))
+    mass, weight = np.full(n, 100.0), np.ones(n)
+    if kind == "of two masses":
+        mass[::2] = 5e-4
+    if kind == "of two weights":
+        weight[::3] = 1000.0
+    if kind == "at few places":
+        place[: n // 2] = place[:50].repeat(n // 100, axis=0)
+    many = ions(place, mass=mass, weight=weight)
+    [found] = closest_pair_rates(many, softening)
+    neighbour = cKDTree(place).query(place, k=2)[1]
+    mate = np.where(neighbour[:, 0] == np.arange(n), neighbour[:, 1], neighbour[:, 0])
+    away = np.sqrt(((place - place[mate]) ** 2).sum(axis=1))
+    pushed = weight * ELEMENTARY_CHARGE
+    strength = (
+        COULOMB_CONSTANT
+        * ELEMENTARY_CHARGE
+        / ATOMIC_MASS
+        * (pushed / mass[mate] + pushed[mate] / mass)
+    )
+    softened = (away**2 + softening**2) ** 1.5
+    least = math.sqrt((strength[softened > 0.0] / softened[softened > 0.0]).max())
+    assert found.rate >= least * (1.0 - 1e-12)
+    if kind == "alike":
+        assert least == pytest.approx(found.rate, rel=1e-12, abs=0.0)
+    assert found.rate < 10.0 * least
 
 
 class _Watching(Unwatched):

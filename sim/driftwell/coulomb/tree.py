@@ -17,7 +17,7 @@ W. Dehnen, J. Comput. Phys. 179 (2002) 27; Comput. Astrophys. Cosmol. 1 (2014) 1
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -67,7 +67,12 @@ def settings_for(accuracy: float) -> TreeSettings:
 
 
 def tightened(settings: TreeSettings, factor: float) -> TreeSettings:
-    """Settings whose rms error is smaller by about `factor`, or larger if it is below 1."""
+    """Settings whose rms error is smaller by about `factor`.
+
+    Below 1 it is larger, and the order stays, so that nothing need be compiled.
+    """
+    if factor < 1.0:
+        return replace(settings, tolerance=settings.tolerance / factor ** (1.0 / _SLOPE))
     reached = _ERRORS[settings.order] * (settings.tolerance / _REFERENCE) ** _SLOPE
     return settings_for(reached / _SHARE / factor)
 

@@ -31,6 +31,9 @@ CHARGE_WALLS = 21
 COUNT_WALLS = 22
 ACCOUNTS = 23
 
+Six = tuple[float, float, float, float, float, float]
+"""The three components of a vector, then those of its moment about the origin."""
+
 
 @inner_kernel
 def settle(rate: np.ndarray, pending: np.ndarray, total: np.ndarray, carry: np.ndarray) -> None:
@@ -49,6 +52,14 @@ def settle(rate: np.ndarray, pending: np.ndarray, total: np.ndarray, carry: np.n
         carry[k] += (before - (after - part)) + (amount - part)
         total[k] = after
     pending[0] = 0.0
+
+
+@inner_kernel
+def enter_rates(power: float, sums: Six, out_rate: np.ndarray) -> None:
+    """Keep the rates of a force evaluation: the drives' power, the fields' force and torque."""
+    out_rate[0] = power
+    out_rate[1], out_rate[2], out_rate[3] = sums[0], sums[1], sums[2]
+    out_rate[4], out_rate[5], out_rate[6] = sums[3], sums[4], sums[5]
 
 
 @outer_kernel

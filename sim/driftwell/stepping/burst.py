@@ -21,7 +21,8 @@ import math
 
 import numpy as np
 
-from driftwell.coulomb.direct import PairSum, unresolved_pair
+from driftwell.coulomb.direct import PairSum
+from driftwell.coulomb.unresolved import unresolved_pair
 from driftwell.kernels import inner_kernel, kernel, outer_kernel
 from driftwell.kernels.status import (
     COLLAPSE,
@@ -34,14 +35,13 @@ from driftwell.kernels.status import (
 )
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
-from driftwell.stepping.drift import drift, induced_work, jump_magnets, kick, kick_both
-from driftwell.stepping.events import LOST, UNTOUCHED, any_crossing, meet_surfaces, take_out
-from driftwell.stepping.forces import coulomb_forces, external_forces
+from driftwell.stepping.drift import jump_magnets
+from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces, take_out
+from driftwell.stepping.forces import coulomb_forces, magnetised
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,
     CURSOR_FRESH,
-    CURSOR_INDUCED,
     CURSOR_INTERVAL,
     CURSOR_JUMPED,
     CURSOR_OVERFLOW,
@@ -53,6 +53,14 @@ from driftwell.stepping.motion import (
     Plan,
     Trace,
     Work,
+)
+from driftwell.stepping.passes import (
+    Passes,
+    any_crossing,
+    move,
+    push,
+    push_apart,
+    take_fields,
 )
 from driftwell.stepping.schedule import BREAK, TRACE
 from driftwell.stepping.schemes import Scheme
@@ -67,6 +75,7 @@ RESOLVED = 0.3
 @kernel
 def burst(
     pair_sum: PairSum,
+    passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
     fields: Fields,
@@ -91,7 +100,6 @@ def burst(
     every = plan.coulomb_every
     stages = scheme.drift.size
     surfaced = surfaces.kind.size > 0
-    magnetised = fields.uniform.kind.size + fields.magnetic.kind.size > 0
     together = plan.coulomb != 0 and every == 1
     free = work.events.shape[0] // 2
     if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
@@ -123,13 +131,15 @@ def burst(
                 elif k <= stages:
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
-                    drift(plan, fields, charges, before, inside, scheme.drift[k - 1] * h, work)
+                    way = scheme.drift[k - 1] * h
+                    move(passes, plan, fields, surfaces, charges, before, inside, way, work)
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
                         coulomb_forces(pair_sum, plan, charges, work)
-                        kick(charges, work.coulomb, 0.5 * every * h)
-                    if surfaced and any_crossing(surfaces, charges, work):
+                        half = 0.5 * every * h
+                        push_apart(passes, plan, fields, surfaces, charges, half, work)
+                    if surfaced and any_crossing(passes, plan, fields, surfaces, charges, work):
                         met = meet_surfaces(
                             plan, fields, surfaces, charges, together, start, h, inside, work
                         )
@@ -146,14 +156,14 @@ def burst(
                     settle(work.rate, work.pending, work.total, work.carry)
                     if jump:
                         cursor[CURSOR_JUMPED] = j
-                        if magnetised:
+                        if magnetised(fields):
                             before = 0.5 * (time[j - 1] + time[j])
                             jump_magnets(plan, fields, charges, t, before, inside, work)
                     energy = work.energy[0]
-                    external_forces(fields, charges, t, inside, work)
+                    take_fields(passes, plan, fields, surfaces, charges, t, inside, work)
                     if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
-                    if together or (first and k == 0) or (last and k > stages):
+                    if _pushed_anew(k, stages, first, last, together, met, cursor):
                         coulomb_forces(pair_sum, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
@@ -164,16 +174,11 @@ def burst(
                     if surfaced and cursor[CURSOR_EVENTS] > free:
                         return EVENTS_FULL
                     if every > 1:
-                        kick(charges, work.coulomb, 0.5 * every * h)
-                if k == 0 and surfaced:
-                    _remember(charges, together, work)
+                        half = 0.5 * every * h
+                        push_apart(passes, plan, fields, surfaces, charges, half, work)
+                keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
-                if magnetised and cursor[CURSOR_INDUCED] != 0:
-                    _account_induced(plan, charges, length, together, work)
-                if together:
-                    kick_both(charges, work.external, work.coulomb, length)
-                else:
-                    kick(charges, work.external, length)
+                push(passes, plan, fields, surfaces, charges, together, keep, length, work)
                 work.pending[0] += length
             cursor[CURSOR_STEP] += 1
             cursor[CURSOR_STEPS] += 1
@@ -189,15 +194,18 @@ def burst(
     return DONE
 
 
-@outer_kernel
-def _account_induced(plan: Plan, charges: Charges, h: float, together: bool, work: Work) -> None:
-    """Account the induced field's work in the kick to come."""
-    force_field = work.spare
-    for axis in range(3):
-        out, e, c = force_field[axis], work.external[axis], work.coulomb[axis]
-        for i in range(out.size):
-            out[i] = e[i] + c[i] if together else e[i]
-    induced_work(plan, charges, force_field, h, work)
+@inner_kernel
+def _pushed_anew(
+    k: int, stages: int, first: bool, last: bool, together: bool, met: int, cursor: np.ndarray
+) -> bool:
+    """Whether the charges' own field is needed in pass `k`, and not at hand."""
+    if k == 0:
+        return (together or first) and cursor[CURSOR_FRESH] == 0  # else a waveform jumped, no more
+    if k <= stages:
+        return together
+    if k == stages + 1 and met & LOST != 0:
+        return False  # the next pass takes lost charges out
+    return together or last
 
 
 @outer_kernel
@@ -211,30 +219,13 @@ def _settle_energy(before: float, jump: bool, work: Work) -> None:
 
 
 @inner_kernel
-def _remember(charges: Charges, together: bool, work: Work) -> None:
-    """Keep state and field at the beginning of a step for the path through it."""
-    for axis in range(3):
-        x, u = charges.position[axis], charges.velocity[axis]
-        e, c = work.external[axis], work.coulomb[axis]
-        old_x, old_u = work.old_position[axis], work.old_velocity[axis]
-        old_e = work.old_field[axis]
-        for i in range(x.size):
-            old_x[i] = x[i]
-            old_u[i] = u[i]
-            old_e[i] = e[i] + c[i] if together else e[i]
-
-
-@inner_kernel
 def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) -> int:
     """Look for what must stop the run."""
     cursor = work.cursor
     if cursor[CURSOR_OVERFLOW] > 0:
         return OVERFLOW
     if plan.watch_collapse != 0:
-        limit = (RESOLVED / span) ** 2
-        found = unresolved_pair(
-            charges.position, charges.charge, charges.mass, plan.constant, limit
-        )
+        found = _falling(plan, charges, span, work)
         if found >= 0:
             cursor[CURSOR_AT_FAULT] = found
             return COLLAPSE
@@ -252,6 +243,20 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
             cursor[CURSOR_AT_FAULT] = i
             return RUNAWAY
     return DONE
+
+
+@outer_kernel
+def _falling(plan: Plan, charges: Charges, span: float, work: Work) -> int:
+    """A charge that falls towards an opposite one faster than steps of `span` follow, or -1."""
+    return unresolved_pair(
+        charges.position,
+        charges.charge,
+        charges.mass,
+        plan.constant,
+        (RESOLVED / span) ** 2,
+        math.sqrt(plan.extent2),
+        work.search,
+    )
 
 
 @outer_kernel

@@ -10,6 +10,9 @@ straight without a magnet, on the exact helix in a uniform magnetic field B (ang
 A magnetic field that varies in space turns u by its exact rotation (1) halfway through the drift.
 Both are volume-preserving, keep gamma to rounding and hold at any speed.
 
+All work on a stretch of the charges, `first` to `last`: the whole of few, a block of many
+(passes.py).
+
 References
 ----------
 Q. Spreiter and M. Walter, J. Comput. Phys. 152 (1999) 102 (exact drift in a uniform field; from
@@ -28,12 +31,15 @@ from driftwell.stepping.accounts import (
     IMPULSE_MAGNETS,
     TORQUE_MAGNETS,
     WORK_INDUCED,
+    Six,
+    enter_rates,
     enter_vector,
     settle,
 )
 from driftwell.stepping.forces import (
     force_and_torque,
     induced_by_jumps,
+    magnetised,
     shaped_magnetic,
     uniform_magnetic,
 )
@@ -44,36 +50,44 @@ _SLOW = 1e-4
 
 
 @inner_kernel
-def kick(charges: Charges, field: np.ndarray, h: float) -> None:
+def kick(charges: Charges, field: np.ndarray, h: float, first: int, last: int) -> None:
     """u += Q/m E h for one field (3, n), V/m."""
     for axis in range(3):
         u, e, ratio = charges.velocity[axis], field[axis], charges.charge_to_mass[axis]
-        for i in range(u.size):
+        for i in range(first, last):
             u[i] += h * ratio[i] * e[i]
 
 
 @inner_kernel
-def kick_both(charges: Charges, field: np.ndarray, coulomb: np.ndarray, h: float) -> None:
+def kick_both(
+    charges: Charges, field: np.ndarray, coulomb: np.ndarray, h: float, first: int, last: int
+) -> None:
     """u += Q/m (E + E_Coulomb) h."""
     for axis in range(3):
         u, ratio = charges.velocity[axis], charges.charge_to_mass[axis]
         e, c = field[axis], coulomb[axis]
-        for i in range(u.size):
+        for i in range(first, last):
             u[i] += h * ratio[i] * (e[i] + c[i])
 
 
 @outer_kernel
 def induced_work(
-    plan: Plan, charges: Charges, force_field: np.ndarray, h: float, work: Work
-) -> None:
-    """Account the work the induced field does in a kick of length `h` about to be made.
+    plan: Plan,
+    charges: Charges,
+    force_field: np.ndarray,
+    induced: np.ndarray,
+    h: float,
+    first: int,
+    last: int,
+) -> float:
+    """The work, J, the induced field does in a kick of length `h` about to be made.
 
     The kick changes the kinetic energy by Q E.(u0 + u1)/(gamma0 + gamma1) h exactly; the part of
     the induced field E_i in it is Q E_i.(u0 + u1)/(gamma0 + gamma1) h.
     """
     ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
     total = 0.0
-    for i in range(ux.size):
+    for i in range(first, last):
         s = h * charges.charge_to_mass[0, i]
         vx = ux[i] + s * force_field[0, i]
         vy = uy[i] + s * force_field[1, i]
@@ -81,12 +95,12 @@ def induced_work(
         gamma0 = math.sqrt(1.0 + (ux[i] ** 2 + uy[i] ** 2 + uz[i] ** 2) / plan.light2)
         gamma1 = math.sqrt(1.0 + (vx * vx + vy * vy + vz * vz) / plan.light2)
         along = (
-            work.induced[0, i] * (ux[i] + vx)
-            + work.induced[1, i] * (uy[i] + vy)
-            + work.induced[2, i] * (uz[i] + vz)
+            induced[0, i] * (ux[i] + vx)
+            + induced[1, i] * (uy[i] + vy)
+            + induced[2, i] * (uz[i] + vz)
         )
         total += charges.charge[i] * along / (gamma0 + gamma1)
-    add_compensated(work.total, work.carry, WORK_INDUCED, h * total)
+    return h * total
 
 
 @outer_kernel
@@ -104,46 +118,55 @@ def jump_magnets(
     It is the limit of ever faster ramps. `before` and `after` lie inside the pieces on both sides
     of `t`. Overwrites the fields and the rates in `work`, which must be settled.
     """
+    n = charges.charge.size
     induced_by_jumps(fields, charges, t, before, after, work)
-    induced_work(plan, charges, work.induced, 1.0, work)
+    done = induced_work(plan, charges, work.induced, work.induced, 1.0, 0, n)
+    add_compensated(work.total, work.carry, WORK_INDUCED, done)
     for axis in range(3):
         row, out = work.induced[axis], work.external[axis]
-        for i in range(row.size):
+        for i in range(n):
             out[i] = row[i]
-    force_and_torque(charges, work)
-    work.rate[0] = 0.0
+    enter_rates(0.0, force_and_torque(charges, work.external, 0, n), work.rate)
     work.pending[0] = 1.0
     settle(work.rate, work.pending, work.total, work.carry)
-    kick(charges, work.induced, 1.0)
+    kick(charges, work.induced, 1.0, 0, n)
 
 
 @inner_kernel
 def drift(
-    plan: Plan, fields: Fields, charges: Charges, t: float, inside: float, h: float, work: Work
+    plan: Plan,
+    fields: Fields,
+    charges: Charges,
+    t: float,
+    inside: float,
+    h: float,
+    work: Work,
+    first: int,
+    last: int,
 ) -> None:
-    """Move all charges for a time `h` from time `t` on, turning them in the magnetic fields."""
-    _slowness(charges.velocity, plan.light2, work.slowness)
-    if fields.uniform.kind.size + fields.magnetic.kind.size == 0:
+    """Move charges for a time `h` from time `t` on, turning them in the magnetic fields."""
+    _slowness(charges.velocity, plan.light2, work.slowness, first, last)
+    if not magnetised(fields):
         for axis in range(3):
             x, u, slow = charges.position[axis], charges.velocity[axis], work.slowness
-            for i in range(x.size):
+            for i in range(first, last):
                 x[i] += h * (u[i] * slow[i])
         return
-    _account_magnets(charges, -1.0, work)
     middle = t + 0.5 * h
     bx, by, bz = uniform_magnetic(fields, middle, inside)
     if fields.magnetic.kind.size == 0:
-        _helix(charges, bx, by, bz, h, work.slowness)
+        _helix(charges, bx, by, bz, h, work.slowness, first, last)
     else:
-        _helix(charges, bx, by, bz, 0.5 * h, work.slowness)
-        shaped_magnetic(fields, charges, middle, inside, work.spare)
-        _turn(charges, work.spare, h, work.slowness)
-        _helix(charges, bx, by, bz, 0.5 * h, work.slowness)
-    _account_magnets(charges, 1.0, work)
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, first, last)
+        shaped_magnetic(fields, charges, middle, inside, work.spare, first, last)
+        _turn(charges, work.spare, h, work.slowness, first, last)
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, first, last)
 
 
 @inner_kernel
-def _slowness(velocity: np.ndarray, light2: float, out_slowness: np.ndarray) -> None:
+def _slowness(
+    velocity: np.ndarray, light2: float, out_slowness: np.ndarray, first: int, last: int
+) -> None:
     """1/gamma = (1 + u^2/c^2)^(-1/2) of every charge.
 
     Below u = c/100 the binomial series to the fourth term is the same to the last bit but one, at
@@ -152,12 +175,12 @@ def _slowness(velocity: np.ndarray, light2: float, out_slowness: np.ndarray) -> 
     ux, uy, uz = velocity[0], velocity[1], velocity[2]
     inverse = 1.0 / light2
     fast = 0
-    for i in range(ux.size):
+    for i in range(first, last):
         s = (ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]) * inverse
         out_slowness[i] = 1.0 - s * (0.5 - s * (0.375 - 0.3125 * s))
         fast += not s < _SLOW
     if fast > 0:
-        for i in range(ux.size):
+        for i in range(first, last):
             s = (ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]) * inverse
             if not s < _SLOW:
                 out_slowness[i] = 1.0 / math.sqrt(1.0 + s)
@@ -165,7 +188,14 @@ def _slowness(velocity: np.ndarray, light2: float, out_slowness: np.ndarray) -> 
 
 @outer_kernel
 def _helix(
-    charges: Charges, bx: float, by: float, bz: float, h: float, slowness: np.ndarray
+    charges: Charges,
+    bx: float,
+    by: float,
+    bz: float,
+    h: float,
+    slowness: np.ndarray,
+    first: int,
+    last: int,
 ) -> None:
     """Equations (1) and (2)."""
     strength = math.sqrt(bx * bx + by * by + bz * bz)
@@ -173,7 +203,7 @@ def _helix(
         bx, by, bz = bx / strength, by / strength, bz / strength
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
-    for i in range(x.size):
+    for i in range(first, last):
         theta = charges.charge_to_mass[0, i] * strength * slowness[i] * h
         half = math.sin(0.5 * theta)
         turn = math.sin(theta)
@@ -222,10 +252,12 @@ def helix(
 
 
 @outer_kernel
-def _turn(charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray) -> None:
+def _turn(
+    charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray, first: int, last: int
+) -> None:
     """Equation (1) alone, in each charge's own magnetic field (3, n), T."""
     ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
-    for i in range(ux.size):
+    for i in range(first, last):
         bx, by, bz = field[0, i], field[1, i], field[2, i]
         strength = math.sqrt(bx * bx + by * by + bz * bz)
         if strength == 0.0:
@@ -239,19 +271,25 @@ def _turn(charges: Charges, field: np.ndarray, h: float, slowness: np.ndarray) -
 
 
 @outer_kernel
-def _account_magnets(charges: Charges, sign: float, work: Work) -> None:
-    """Enter the sums of momentum and angular momentum, before (-1) and after (+1) a drift."""
+def momenta(charges: Charges, first: int, last: int) -> Six:
+    """Sums of momentum and angular momentum; magnets change them in a drift."""
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
     px = py = pz = 0.0
     lx = ly = lz = 0.0
-    for i in range(x.size):
-        m = sign * charges.mass[i]
+    for i in range(first, last):
+        m = charges.mass[i]
         px += m * ux[i]
         py += m * uy[i]
         pz += m * uz[i]
         lx += m * (y[i] * uz[i] - z[i] * uy[i])
         ly += m * (z[i] * ux[i] - x[i] * uz[i])
         lz += m * (x[i] * uy[i] - y[i] * ux[i])
-    enter_vector(IMPULSE_MAGNETS, px, py, pz, work.total, work.carry)
-    enter_vector(TORQUE_MAGNETS, lx, ly, lz, work.total, work.carry)
+    return px, py, pz, lx, ly, lz
+
+
+@outer_kernel
+def enter_magnets(sign: float, sums: Six, total: np.ndarray, carry: np.ndarray) -> None:
+    """Enter the :func:`momenta` before (-1) and after (+1) a drift."""
+    enter_vector(IMPULSE_MAGNETS, sign * sums[0], sign * sums[1], sign * sums[2], total, carry)
+    enter_vector(TORQUE_MAGNETS, sign * sums[3], sign * sums[4], sign * sums[5], total, carry)

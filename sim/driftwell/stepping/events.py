@@ -32,6 +32,7 @@ from driftwell.stepping.accounts import (
     MOMENTUM_WALLS,
     enter_vector,
 )
+from driftwell.stepping.blocks import BLOCK, CROSSED
 from driftwell.stepping.drift import helix
 from driftwell.stepping.forces import magnetic_at
 from driftwell.stepping.motion import (
@@ -53,21 +54,6 @@ _BISECTIONS = 60
 _BOUNCES = 16
 
 
-@inner_kernel
-def any_crossing(surfaces: SurfaceTable, charges: Charges, work: Work) -> bool:
-    """Whether a charge is on another side of a surface than at the beginning of the step."""
-    x, y, z = charges.position[0], charges.position[1], charges.position[2]
-    crossed = 0
-    for s in range(surfaces.kind.size):
-        kind = surfaces.kind[s]
-        p = surfaces.parameter[s]
-        side = work.side[s]
-        for i in range(x.size):
-            now = 1 if level(kind, p, x[i], y[i], z[i]) > 0.0 else -1
-            crossed += now != side[i]
-    return crossed > 0
-
-
 @outer_kernel
 def meet_surfaces(
     plan: Plan,
@@ -87,20 +73,29 @@ def meet_surfaces(
     :func:`take_out` is to be called once the forces belong to the places of the rest.
     """
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    blocks = work.block_sums.shape[0]
     changed = UNTOUCHED
     for s in range(surfaces.kind.size):
         kind = surfaces.kind[s]
         p = surfaces.parameter[s]
         side = work.side[s]
-        for i in range(x.size):
-            there = level(kind, p, x[i], y[i], z[i])
-            now = 1 if there > 0.0 else -1
-            if now == side[i] or charges.alive[i] != 1:
-                continue
-            if side[i] == 0:
-                side[i] = 0 if there == 0.0 else now
-            else:
-                changed |= _follow(plan, fields, surfaces, charges, together, i, t, h, inside, work)
+        for b in range(max(1, blocks)):
+            first, last = 0, x.size
+            if blocks > 0:
+                if work.block_sums[b, CROSSED] == 0.0:
+                    continue
+                first, last = b * BLOCK, min(b * BLOCK + BLOCK, x.size)
+            for i in range(first, last):
+                there = level(kind, p, x[i], y[i], z[i])
+                now = 1 if there > 0.0 else -1
+                if now == side[i] or charges.alive[i] != 1:
+                    continue
+                if side[i] == 0:
+                    side[i] = 0 if there == 0.0 else now
+                else:
+                    changed |= _follow(
+                        plan, fields, surfaces, charges, together, i, t, h, inside, work
+                    )
     return changed
 
 

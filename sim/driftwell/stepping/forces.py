@@ -1,4 +1,8 @@
-"""Forces on all charges at one time: the fields' and the charges' own."""
+"""Forces on the charges at one time: the fields' and the charges' own.
+
+The fields' work on a stretch of the charges, `first` to `last`, and return their sums over it: the
+whole of few charges, a block of many (passes.py).
+"""
 
 from __future__ import annotations
 
@@ -8,21 +12,31 @@ from driftwell.coulomb.direct import SMALL, PairSum, small_field
 from driftwell.fields.table import electric_field, induced_field, magnetic_field
 from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
 from driftwell.kernels.waveform import waveform
-from driftwell.stepping.motion import CURSOR_INDUCED, Charges, Fields, Plan, Work
+from driftwell.stepping.accounts import Six
+from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 
 @inner_kernel
-def external_forces(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> None:
-    """The fields' E at every charge, the rates of the accounts, and the energy in the fields.
+def external_forces(
+    fields: Fields,
+    charges: Charges,
+    t: float,
+    inside: float,
+    changing: bool,
+    work: Work,
+    first: int,
+    last: int,
+) -> tuple[float, float, Six]:
+    """The fields' E at charges; overwrites their part of ``work.external`` and ``work.induced``.
 
-    Overwrites ``work.external``, ``work.induced`` (where a magnet changes), ``work.rate`` and
-    ``work.energy``; the cursor tells whether a magnet changes.
+    changing : whether a magnet changes, see :func:`magnets_change`
+
+    Returns the drives' power, W, the energy in the fields, J, and :func:`force_and_torque`.
     """
-    n = charges.charge.size
     out = work.external
     for axis in range(3):
         row = out[axis]
-        for i in range(n):
+        for i in range(first, last):
             row[i] = 0.0
     power = 0.0
     energy = 0.0
@@ -36,17 +50,34 @@ def external_forces(fields: Fields, charges: Charges, t: float, inside: float, w
             w,
             charges.position,
             charges.charge,
-            0,
-            n,
+            first,
+            last,
             out,
         )
         power += rate * total
         energy += w * total
-    if fields.uniform.kind.size + fields.magnetic.kind.size > 0:
-        work.cursor[CURSOR_INDUCED] = 1 if _induced(fields, charges, t, inside, work) else 0
-    work.rate[0] = power
-    work.energy[0] = energy
-    force_and_torque(charges, work)
+    if changing:
+        _induced(fields, charges, t, inside, work, first, last)
+    return power, energy, force_and_torque(charges, out, first, last)
+
+
+@inner_kernel
+def magnetised(fields: Fields) -> bool:
+    """Whether there is any magnet."""
+    return fields.uniform.kind.size + fields.magnetic.kind.size > 0
+
+
+@outer_kernel
+def magnets_change(fields: Fields, t: float, inside: float) -> bool:
+    """Whether any magnet changes at a time, so that it induces an electric field."""
+    for table in (fields.uniform, fields.magnetic):
+        for f in range(table.kind.size):
+            _, rate = waveform(
+                table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside
+            )
+            if rate != 0.0:
+                return True
+    return False
 
 
 @outer_kernel
@@ -74,42 +105,40 @@ def magnetic_at(
 
 
 @outer_kernel
-def _induced(fields: Fields, charges: Charges, t: float, inside: float, work: Work) -> bool:
-    """Electric fields of changing magnets, kept apart for the account of their work.
-
-    Tells whether any magnet changes; where none does nothing is touched.
-    """
-    n = charges.charge.size
-    changes = False
+def _induced(
+    fields: Fields,
+    charges: Charges,
+    t: float,
+    inside: float,
+    work: Work,
+    first: int,
+    last: int,
+) -> None:
+    """Electric fields of changing magnets, kept apart for the account of their work."""
+    for axis in range(3):
+        row = work.induced[axis]
+        for i in range(first, last):
+            row[i] = 0.0
     for table in (fields.uniform, fields.magnetic):
         for f in range(table.kind.size):
             _, rate = waveform(
                 table.wave_kind[f], table.wave_parameter[f], table.wave_data, t, inside
             )
-            if rate == 0.0:
-                continue
-            if not changes:
-                changes = True
-                for axis in range(3):
-                    row = work.induced[axis]
-                    for i in range(n):
-                        row[i] = 0.0
-            induced_field(
-                table.kind[f],
-                table.parameter[f],
-                table.data[table.first[f] : table.first[f + 1]],
-                rate,
-                charges.position,
-                0,
-                n,
-                work.induced,
-            )
-    if changes:
-        for axis in range(3):
-            row, out = work.induced[axis], work.external[axis]
-            for i in range(n):
-                out[i] += row[i]
-    return changes
+            if rate != 0.0:
+                induced_field(
+                    table.kind[f],
+                    table.parameter[f],
+                    table.data[table.first[f] : table.first[f + 1]],
+                    rate,
+                    charges.position,
+                    first,
+                    last,
+                    work.induced,
+                )
+    for axis in range(3):
+        row, out = work.induced[axis], work.external[axis]
+        for i in range(first, last):
+            out[i] += row[i]
 
 
 @outer_kernel
@@ -143,14 +172,14 @@ def induced_by_jumps(
 
 
 @inner_sum_kernel
-def force_and_torque(charges: Charges, work: Work) -> None:
-    """Sums over all charges of Q E and x cross Q E."""
+def force_and_torque(charges: Charges, field: np.ndarray, first: int, last: int) -> Six:
+    """Sums over charges of Q E and x cross Q E."""
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
-    ex, ey, ez = work.external[0], work.external[1], work.external[2]
+    ex, ey, ez = field[0], field[1], field[2]
     q = charges.charge
     fx = fy = fz = 0.0
     tx = ty = tz = 0.0
-    for i in range(q.size):
+    for i in range(first, last):
         px, py, pz = q[i] * ex[i], q[i] * ey[i], q[i] * ez[i]
         fx += px
         fy += py
@@ -158,8 +187,7 @@ def force_and_torque(charges: Charges, work: Work) -> None:
         tx += y[i] * pz - z[i] * py
         ty += z[i] * px - x[i] * pz
         tz += x[i] * py - y[i] * px
-    work.rate[1], work.rate[2], work.rate[3] = fx, fy, fz
-    work.rate[4], work.rate[5], work.rate[6] = tx, ty, tz
+    return fx, fy, fz, tx, ty, tz
 
 
 @inner_kernel
@@ -202,13 +230,18 @@ def uniform_magnetic(fields: Fields, t: float, inside: float) -> tuple[float, fl
 
 @outer_kernel
 def shaped_magnetic(
-    fields: Fields, charges: Charges, t: float, inside: float, out_field: np.ndarray
+    fields: Fields,
+    charges: Charges,
+    t: float,
+    inside: float,
+    out_field: np.ndarray,
+    first: int,
+    last: int,
 ) -> None:
-    """The sum of all magnetic fields that vary in space, at every charge; overwrites."""
-    n = charges.charge.size
+    """The sum of all magnetic fields that vary in space, at charges; overwrites their part."""
     for axis in range(3):
         row = out_field[axis]
-        for i in range(n):
+        for i in range(first, last):
             row[i] = 0.0
     table = fields.magnetic
     for f in range(table.kind.size):
@@ -219,7 +252,7 @@ def shaped_magnetic(
             table.data[table.first[f] : table.first[f + 1]],
             w,
             charges.position,
-            0,
-            n,
+            first,
+            last,
             out_field,
         )

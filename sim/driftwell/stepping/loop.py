@@ -7,17 +7,20 @@ a second at most, so that signals, progress and a wish to stop are heard.
 from __future__ import annotations
 
 import time as clocks
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
-from driftwell.coulomb.direct import direct_sum
 from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.promise import Promise, Scene
+from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
     DONE,
@@ -44,6 +47,7 @@ from driftwell.stepping.motion import (
     charges_of,
     work_space,
 )
+from driftwell.stepping.passes import passes_over
 from driftwell.stepping.schedule import TRACE, Schedule
 from driftwell.stepping.schemes import SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
@@ -91,6 +95,10 @@ class TimeLoop:
         The charges, in the order of their ids; lost ones until :meth:`remove_lost`.
     charges, work :
         What the compiled loop works on; the ledger reads them.
+    summation : Summation
+        The pair sum as it is now.
+    promise : Promise
+        Whether that sum is as accurate as asked.
     """
 
     def __init__(
@@ -103,13 +111,18 @@ class TimeLoop:
         schedule: Schedule,
         traced: Sequence[Traced],
         threads: int,
+        coulomb_state: Mapping[str, NDArray[Any]] | None = None,
     ) -> None:
+        """A loop at time zero.
+
+        coulomb_state : the entries of :meth:`state` below ``coulomb/``, where a run is taken up
+        again: it sums as it did
+        """
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
         self._scheme = SCHEMES[stepping.scheme]
-        self._threads = threads
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
         self.plan = Plan(
@@ -121,7 +134,12 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
         )
-        self.work = work_space(0, 0)
+        manner = None if coulomb_state is None else manner_of(coulomb_state)
+        self.summation = Summation(coulomb, len(particles), threads, manner=manner)
+        self.promise = Promise(coulomb.accuracy, coulomb_state)
+        every = stepping.coulomb_every
+        self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
+        self.work = work_space(0, 0, room((1, 1)), False)
         self._events: list[Events] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
         self._budget = 1
@@ -170,6 +188,29 @@ class TimeLoop:
                 status = PAUSED
         return True
 
+    def keep_accuracy(self) -> tuple[float, list[str]]:
+        """Measure the pair sum's error where that is due, and mend it; only at a mark.
+
+        Returns the rms relative force error the sum had, and what the user should be told.
+        """
+        summation, error, told = self.promise.look(
+            self.summation,
+            Scene(
+                self.time,
+                self.steps_done,
+                self.steps_done * self._sums_per_step,
+                self.charges.position,
+                self.charges.charge,
+                self.particles.id,
+                self.work.coulomb,
+                last=self.mark == len(self.schedule.steps),
+            ),
+        )
+        if summation is not self.summation:
+            self.summation = summation
+            self.work = self.work._replace(tiles=summation.work)
+        return error, told
+
     def remove_lost(self) -> None:
         """Take the charges lost since the last call out of the arrays."""
         alive = self.charges.alive != 0
@@ -188,6 +229,10 @@ class TimeLoop:
             "accounts/energy": self.work.energy.copy(),
             "schedule/cursor": self.work.cursor.copy(),
             "surfaces/side": self.work.side.astype(np.int64),
+            **{
+                f"coulomb/{name}": item
+                for name, item in (self.summation.manner.state() | self.promise.state()).items()
+            },
         }
 
     def take_events(self) -> list[Events]:
@@ -207,7 +252,8 @@ class TimeLoop:
     def _burst(self, until: int, budget: int) -> int:
         return int(
             burst(
-                self._pair_sum,
+                self.summation.pair_sum,
+                self._passes,
                 self.plan,
                 self._scheme,
                 self._fields,
@@ -234,12 +280,16 @@ class TimeLoop:
         n = len(self.particles)
         old = self.work
         self.charges = charges_of(self.particles)
-        work = work_space(n, self._surfaces.kind.size)
+        self.summation = self.summation.laid_out(n)
+        collapse = bool(self.plan.watch_collapse)
+        work = work_space(n, self._surfaces.kind.size, self.summation.work, collapse)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
-        self._pair_sum = direct_sum(n, self._threads)
+        self._passes = passes_over(
+            n, self.plan, self._fields, self._surfaces, self.charges, self.work
+        )
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),
             np.array([self._index(each) for each in self._traced], dtype=np.int64),

@@ -5,16 +5,17 @@ All are named tuples of flat arrays and numbers, so that one compiled loop serve
 
 from __future__ import annotations
 
-import math
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.coulomb import direct
+from driftwell.coulomb.unresolved import search_room
 from driftwell.fields.table import FieldTable
+from driftwell.kernels.cache_lines import room
 from driftwell.particles.state import Particles
 from driftwell.stepping.accounts import ACCOUNTS, RATES
+from driftwell.stepping.blocks import SUMS, blocks
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -98,6 +99,8 @@ class Work(NamedTuple):
         the electric one that the step's kicks begin with, V/m
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
+    search : int64, see coulomb/unresolved.py; empty where no pair can collapse
+    block_sums : (blocks, 24), see blocks.py
     rate, pending : see accounts.settle
     energy : (1,) J, potential energy in the fields at the last evaluation
     total, carry : (accounts,)
@@ -115,6 +118,8 @@ class Work(NamedTuple):
     old_field: Floats
     side: NDArray[np.int8]
     tiles: Floats
+    search: Ints
+    block_sums: Floats
     rate: Floats
     pending: Floats
     energy: Floats
@@ -141,21 +146,6 @@ CURSOR_JUMPED = 8
 CURSOR_INDUCED = 9
 """1 while magnets change, so that the induced field does work."""
 CURSORS = 10
-
-
-_LINE = 64
-"""Bytes of a cache line, and of the widest vector."""
-
-
-def room(shape: tuple[int, ...]) -> Floats:
-    """Zeros that begin on a cache line: rows of 8 charges are then read in one piece each.
-
-    A step of 8 charges took 150 ns so, and 152 to 178 ns where numpy laid the arrays anywhere.
-    """
-    count = math.prod(shape)
-    raw = np.zeros(8 * count + _LINE, dtype=np.uint8)
-    start = -raw.ctypes.data % _LINE
-    return raw[start : start + 8 * count].view(np.float64).reshape(shape)
 
 
 def aligned(values: Floats) -> Floats:
@@ -190,8 +180,13 @@ def room_for_events(n: int, surfaces: int) -> int:
     return n * surfaces + 64 * surfaces * 17
 
 
-def work_space(n: int, surfaces: int) -> Work:
-    """Work space for `n` charges and `surfaces` walls and detectors."""
+def work_space(n: int, surfaces: int, tiles: Floats, collapse: bool) -> Work:
+    """Work space for `n` charges and `surfaces` walls and detectors.
+
+    What a run never writes to takes no memory: the system gives it by the page, when it is used.
+
+    tiles : the pair sum's; collapse : whether opposite charges may fall together
+    """
     events = 2 * room_for_events(n, surfaces)
     return Work(
         external=room((3, n)),
@@ -203,7 +198,9 @@ def work_space(n: int, surfaces: int) -> Work:
         old_velocity=room((3, n)),
         old_field=room((3, n)),
         side=np.ones((surfaces, n), dtype=np.int8),
-        tiles=room(direct.workspace(n).shape),
+        tiles=tiles,
+        search=search_room(n) if collapse else np.zeros(0, dtype=np.int64),
+        block_sums=room((blocks(n), SUMS)),
         rate=np.zeros(RATES),
         pending=np.zeros(1),
         energy=np.zeros(1),

@@ -14,6 +14,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,6 +27,9 @@ from driftwell.particles.state import Particles
 FEW = 64
 """Up to this many charges every pair is followed to its closest approach."""
 _PAIR_SHARE = 0.2
+_SAMPLE = 5000
+"""So many charges are asked for their nearest neighbour first."""
+_MOST_PAIRS = 2_000_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,11 +81,13 @@ def plasma_rates(particles: Particles) -> list[Rate]:
     volume have none.
     """
     rates = []
-    for cloud in np.unique(particles.cloud):
-        member = particles.cloud == cloud
+    # charges stand in the order of their clouds
+    bounds = np.flatnonzero(np.diff(particles.cloud, prepend=-1, append=-1))
+    for first, last in pairwise(bounds):
+        member = slice(first, last)
         size = particles.position[:, member].std(axis=1)
         volume = 4.0 / 3.0 * math.pi * math.prod(math.sqrt(5.0) * size)
-        if member.sum() < 2 or volume <= 0.0:
+        if last - first < 2 or volume <= 0.0:
             continue
         charge = (particles.charge * particles.weight)[member]
         ratio = np.abs(particles.charge / particles.mass)[member].max()
@@ -100,13 +106,51 @@ def closest_pair_rates(particles: Particles, softening: float) -> list[Rate]:
         first, second = np.triu_indices(n, 1)
         ahead = _closest_approach(particles, first, second)
     else:
-        distance, neighbour = map(np.asarray, cKDTree(x).query(x, k=2))
-        first, second = np.arange(n), neighbour[:, 1]
-        ahead = distance[:, 1]
-    strength = _strength(particles, first, second)
-    softened = (ahead**2 + softening**2) ** 1.5
-    rate2 = np.divide(strength, softened, out=np.zeros_like(strength), where=softened > 0.0)
+        first, second = _near_pairs(particles, softening)
+        ahead = np.sqrt(((x[first] - x[second]) ** 2).sum(axis=1))
+    rate2 = _rate2(_strength(particles, first, second), ahead, softening)
     return [Rate("closest approach of two charges", math.sqrt(float(rate2.max())), _PAIR_SHARE)]
+
+
+def _rate2(
+    strength: NDArray[np.float64], distance: NDArray[np.float64], softening: float
+) -> NDArray[np.float64]:
+    """Squared rates of pairs, 1/s^2; 0 for two at one place without softening."""
+    softened = (distance**2 + softening**2) ** 1.5
+    return np.divide(strength, softened, out=np.zeros_like(strength), where=softened > 0.0)
+
+
+def _near_pairs(
+    particles: Particles, softening: float
+) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+    """Pairs among which the fastest is.
+
+    Some charges' nearest neighbours give a rate; a pair that is to be faster must be nearer than
+    the strongest pair of that rate. Where that leaves too many, as among charges of very different
+    strength, every charge with its nearest neighbour.
+    """
+    x = particles.position.T
+    n = len(particles)
+    tree = cKDTree(x, balanced_tree=False)
+    sample = np.linspace(0, n - 1, min(n, _SAMPLE)).astype(np.int64)
+    distance, neighbour = map(np.asarray, tree.query(x[sample], k=2))
+    other = np.where(neighbour[:, 0] == sample, neighbour[:, 1], neighbour[:, 0])
+    rate2 = float(_rate2(_strength(particles, sample, other), distance[:, 1], softening).max())
+    if n > _SAMPLE and rate2 > 0.0:
+        pushed = np.abs(particles.charge * particles.weight).max()
+        strongest = (
+            2.0 * COULOMB_CONSTANT * pushed * np.abs(particles.charge / particles.mass).max()
+        )
+        reach = math.sqrt((strongest / rate2) ** (2.0 / 3.0) - softening**2) * (1.0 + 1e-9)
+        around = tree.query_ball_point(x[sample[::10]], reach, return_length=True)
+        if float(np.mean(around)) - 1.0 < _MOST_PAIRS / n:
+            pairs = tree.query_pairs(reach, output_type="ndarray")
+            return pairs[:, 0], pairs[:, 1]
+    elif n <= _SAMPLE:
+        return sample, other
+    neighbour = np.asarray(tree.query(x, k=2)[1])
+    own = np.arange(n)
+    return own, np.where(neighbour[:, 0] == own, neighbour[:, 1], neighbour[:, 0])
 
 
 def _strength(

@@ -32,7 +32,7 @@ from driftwell.tree.expansions import (
     with_potential,
 )
 
-AT_ONE_PLACE = 1e-199
+AT_ONE_PLACE = 1e-179
 """Squared distances below this are those of charges at one place, in the tree's units."""
 
 

@@ -46,7 +46,7 @@ from driftwell.tree.walk import gather, gather_above
 
 SHARED = 100_000
 """From this many charges on the first cuts are worth sharing among threads."""
-NEXT_TO_NOTHING = 1e-200
+NEXT_TO_NOTHING = 1e-180
 """Added to all squared distances, of up to 1, so that charges at one place push nowhere."""
 _FAR_AWAY = 1e3
 """Where the cell without charge stands; all charges lie within 1 of the origin."""

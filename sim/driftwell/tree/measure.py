@@ -32,6 +32,9 @@ from driftwell.tree.expansions import (
     moment_row,
 )
 
+_ROUNDING = 4e-16
+"""By this part of its coordinates a centre may miss the true one."""
+
 
 @outer_kernel
 def climb(of: BasisType, low: int, high: int, tree: Tree, work_lanes: np.ndarray) -> None:
@@ -71,9 +74,12 @@ def _measure_leaf(of: BasisType, cell: int, tree: Tree, work_lanes: np.ndarray) 
         square = dx * dx + dy * dy + dz * dz
         farthest = max(farthest, square)
         spread += (per_charge * abs(charge[k]) + per_one) * _cube(square) * _cube(square)
+    reach = math.sqrt(farthest) + _ROUNDING * (abs(cx) + abs(cy) + abs(cz))
+    spread = spread ** (1.0 / 12.0)
+    if _at_one_place(low, high, tree):
+        cx, cy, cz, reach, spread = x[low], y[low], z[low], 0.0, 0.0
     row = tree.cells[cell]
-    row[X], row[Y], row[Z] = cx, cy, cz
-    row[REACH], row[SPREAD] = math.sqrt(farthest), spread ** (1.0 / 12.0)
+    row[X], row[Y], row[Z], row[REACH], row[SPREAD] = cx, cy, cz, reach, spread
     row[AMOUNT], row[NET], row[SQUARES], row[COUNT] = amount, net, squares, count
     for k in range(BATCH * full_row(of)):
         work_lanes[k] = 0.0
@@ -104,6 +110,8 @@ def measure_parent(of: BasisType, cell: int, tree: Tree) -> None:
         row[axis] = a[axis] + share * (b[axis] - a[axis])
     to_a, to_b = _distance(row, a), _distance(row, b)
     reach = max(to_a + a[REACH], to_b + b[REACH])
+    if reach > 0.0:
+        reach += _ROUNDING * (abs(row[X]) + abs(row[Y]) + abs(row[Z]))
     spread = (1.0 - share) * _twelfth(to_a + a[SPREAD]) + share * _twelfth(to_b + b[SPREAD])
     row[REACH], row[SPREAD] = reach, min(spread ** (1.0 / 12.0), reach)
     row[AMOUNT], row[COUNT] = amount, count
@@ -145,6 +153,17 @@ def _measure_strength(of: BasisType, cell: int, tree: Tree) -> None:
         quadrupole = math.sqrt(m[4] * m[4] + m[5] * m[5] + m[6] * m[6] + m[7] * m[7] + m[8] * m[8])
         strength = max(strength, dipole / spread, 1.4 * quadrupole / (spread * spread))
     row[STRENGTH] = min(strength, row[AMOUNT])
+
+
+@inner_kernel
+def _at_one_place(low: int, high: int, tree: Tree) -> bool:
+    """Whether all charges of a leaf stand at the very same place."""
+    for axis in range(3):
+        x = tree.place[axis]
+        for k in range(low + 1, high):
+            if x[k] != x[low]:
+                return False
+    return True
 
 
 @inner_kernel
