@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from driftwell.coulomb import summation
 from driftwell.coulomb.pair_sum import SIGNATURE, PairSum
 from driftwell.coulomb.tree import TreeSettings
-from driftwell.kernels import pair_kernel
+from driftwell.kernels import inner_pair_kernel, pair_kernel
 from driftwell.kernels.compiled import CompiledFunction
 
 SIZE = 1e-3
@@ -53,7 +53,6 @@ def inexact(monkeypatch: pytest.MonkeyPatch) -> Inexact:
     monkeypatch.setattr(summation, "tightened", made.tightened)
     monkeypatch.setattr(summation, "tree_workspace", _workspace)
     monkeypatch.setattr(summation, "tree_sum", _sum)
-    monkeypatch.setattr(summation, "tree_potential_sum", _potential_sum)
     return made
 
 
@@ -67,8 +66,17 @@ def _sum(settings: TreeSettings, softened: bool = False, mixed: bool = False) ->
     return CompiledFunction(inexact_field, SIGNATURE)
 
 
-def _potential_sum(settings: TreeSettings, softened: bool = False) -> PairSum:
-    return CompiledFunction(inexact_potential, SIGNATURE)
+@inner_pair_kernel
+def _potential(position, charge, softening2, constant, out_potential):  # type: ignore[no-untyped-def]
+    for i in range(charge.size):
+        total = 0.0
+        for j in range(charge.size):
+            if j != i:
+                dx = position[0, i] - position[0, j]
+                dy = position[1, i] - position[1, j]
+                dz = position[2, i] - position[2, j]
+                total += charge[j] / math.sqrt(dx * dx + dy * dy + dz * dz + softening2)
+        out_potential[i] = constant * total
 
 
 @pair_kernel
@@ -93,19 +101,5 @@ def inexact_field(position, charge, softening2, constant, work, out_field):  # t
             out_field[0, j] -= s * charge[i] * dx
             out_field[1, j] -= s * charge[i] * dy
             out_field[2, j] -= s * charge[i] * dz
-
-
-@pair_kernel
-def inexact_potential(position, charge, softening2, constant, work, out_field):  # type: ignore[no-untyped-def]
-    n = charge.size
-    for i in range(n):
-        total = 0.0
-        for j in range(n):
-            if j != i:
-                dx = position[0, i] - position[0, j]
-                dy = position[1, i] - position[1, j]
-                dz = position[2, i] - position[2, j]
-                total += charge[j] / math.sqrt(dx * dx + dy * dy + dz * dz + softening2)
-        for axis in range(3):
-            out_field[axis, i] = 0.0
-        out_field[3, i] = constant * total * (1.0 + 0.1 * work[0, 0])
+    if out_field.shape[0] == 4:
+        _potential(position, charge, softening2, constant * (1.0 + 0.1 * work[0, 0]), out_field[3])

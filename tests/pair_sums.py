@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from driftwell.coulomb.direct import direct_sum, workspace
 from driftwell.coulomb.pair_sum import PairSum
 from driftwell.coulomb.potential import threaded_potentials
-from driftwell.coulomb.tree import settings_for, tree_potential_sum, tree_sum, tree_workspace
+from driftwell.coulomb.tree import settings_for, tree_sum, tree_workspace
 from driftwell.kernels.threads import on_threads
 
 Floats = NDArray[np.float64]
@@ -92,7 +92,8 @@ def tree(accuracy: float, threads: int = 2) -> PairSumCase:
 
     def potential(place: Floats, charge: Floats, softening: float, constant: float) -> Floats:
         out = np.full((4, charge.size), np.nan)
-        fill(tree_potential_sum(settings, softening > 0.0), place, charge, softening, constant, out)
+        made = tree_sum(settings, softening > 0.0, accuracy >= MIXED)
+        fill(made, place, charge, softening, constant, out)
         return out[3]
 
     return PairSumCase(f"tree, {accuracy:g}", accuracy, field, potential)

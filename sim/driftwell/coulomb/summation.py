@@ -32,7 +32,6 @@ from driftwell.coulomb.tree import (
     TreeSettings,
     settings_for,
     tightened,
-    tree_potential_sum,
     tree_sum,
     tree_workspace,
 )
@@ -134,7 +133,6 @@ class Summation:
             self.manner = replace(self.manner, settings=settings)
         self._form, self._n, self._threads = form, n, threads
         self._softening2 = form.softening**2
-        self._potential_sum: PairSum | None = None
         self.settings = None
         self.mixed = False
         if form.method == "off":
@@ -205,12 +203,8 @@ class Summation:
         if self.method == "off":
             out_potential[...] = 0.0
         elif self.settings is not None:
-            if self._potential_sum is None:
-                self._potential_sum = tree_potential_sum(self.settings, self._form.softening > 0.0)
             found = np.empty((4, self._n))
-            self._potential_sum(
-                position, charge, self._softening2, COULOMB_CONSTANT, self.work, found
-            )
+            self.pair_sum(position, charge, self._softening2, COULOMB_CONSTANT, self.work, found)
             out_potential[...] = found[3]
         else:
             threaded = self._threads > 1 and self._n >= THREADED

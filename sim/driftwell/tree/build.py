@@ -44,6 +44,13 @@ def cut_in_level(k: int, most_leaves: int, leaf: int, tree: Tree) -> None:
 
 
 @outer_kernel
+def cut_level(count: int, most_leaves: int, leaf: int, tree: Tree) -> None:
+    """Cut all cells of a level, on one thread."""
+    for k in range(count):
+        cut_in_level(k, most_leaves, leaf, tree)
+
+
+@outer_kernel
 def next_level(count: int, tops: int, tree: Tree) -> tuple[int, int]:
     """Go on to the children noted; returns their number, and the number of cells cut so far."""
     children = 0

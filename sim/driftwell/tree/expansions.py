@@ -36,22 +36,19 @@ _ROW = NUMBERS.as_pointer()
 class BasisType(types.Type):
     """Type of a :class:`Basis`."""
 
-    def __init__(self, order: int, softened: bool, potential: bool, mixed: bool) -> None:
-        self.order, self.softened, self.potential, self.mixed = order, softened, potential, mixed
-        super().__init__(name=f"Basis({order}, {softened}, {potential}, {mixed})")
+    def __init__(self, order: int, softened: bool, mixed: bool) -> None:
+        self.order, self.softened, self.mixed = order, softened, mixed
+        super().__init__(name=f"Basis({order}, {softened}, {mixed})")
 
     @property
     def moments(self) -> list[Index]:
+        """The indices of a cell's moments."""
         return formulas.indices(self.order - 1, self.softened)
 
     @property
     def locals(self) -> list[Index]:
-        lowest = 0 if self.potential else 1
-        return [n for n in formulas.indices(self.order, self.softened) if sum(n) >= lowest]
-
-    @property
-    def lowest(self) -> int:
-        return 0 if self.potential else 1
+        """The indices of a local expansion."""
+        return formulas.indices(self.order, self.softened)
 
 
 @register_model(BasisType)
@@ -64,22 +61,21 @@ def padded(count: int) -> int:
     return -(-count // WIDTH) * WIDTH
 
 
-def _basis(typing: Any, order: Any, softened: Any, potential: Any, mixed: Any) -> Any:
+def _basis(typing: Any, order: Any, softened: Any, mixed: Any) -> Any:
     made = BasisType(
         order.literal_value,
         bool(softened.literal_value),
-        bool(potential.literal_value),
         bool(mixed.literal_value),
     )
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return context.get_dummy_value()
 
-    return made(order, softened, potential, mixed), emitted
+    return made(order, softened, mixed), emitted
 
 
 basis: Callable[..., BasisType] = intrinsic(prefer_literal=True)(_basis)
-"""The basis of an order, from constants: (order, softened, potential, mixed)."""
+"""The basis of an order, from constants: (order, softened, mixed)."""
 
 
 class _Code:
@@ -369,11 +365,11 @@ def field_of_cell(
         source = _start(context, builder, sig.args[5], args[5], args[6])
         derivative = formulas.derivatives(code, args[1:4], args[4], of.order, of.softened)
         own = {n: code.everywhere(value) for n, value in _read(builder, source, of.moments).items()}
-        wanted = [(1, 0, 0), (0, 1, 0), (0, 0, 1)] + [(0, 0, 0)] * of.potential
+        wanted = [(1, 0, 0), (0, 1, 0), (0, 0, 1), (0, 0, 0)]
         nothing = dict.fromkeys(wanted, code.constant(0.0))
         made = formulas.local_terms(code, own, derivative, of.order, of.softened, nothing)
         found = [code.subtract(code.constant(0.0), made[n]) for n in wanted[:3]]
-        found.append(made[0, 0, 0] if of.potential else code.constant(0.0))
+        found.append(made[0, 0, 0])
         return context.make_tuple(builder, sig.return_type, found)
 
     return types.UniTuple(LANES, 4)(of, LANES, LANES, LANES, LANES, moments, types.int64), emitted
@@ -408,7 +404,7 @@ def pass_down(
         source = _start(context, builder, sig.args[4], args[4], args[5])
         sink = _start(context, builder, sig.args[4], args[4], args[6])
         own = _read(builder, source, of.locals)
-        made = formulas.shifted_locals(code, own, args[1:4], of.order, of.softened, of.lowest)
+        made = formulas.shifted_locals(code, own, args[1:4], of.order, of.softened)
         for k, n in enumerate(of.locals):
             builder.store(made[n], _at(builder, sink, k))
         for k in range(len(of.locals), padded(len(of.locals))):
@@ -421,10 +417,7 @@ def pass_down(
 
 @emitted_code
 def field_of(typing: Any, of: Any, x: Any, y: Any, z: Any, locals_: Any, first: Any) -> Any:
-    """Field and potential of a local expansion at eight places; x, y, z : place minus centre.
-
-    The potential is 0 where the basis does not keep it.
-    """
+    """Field and potential of a local expansion at eight places; x, y, z : place minus centre."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         narrow, code = _Code(builder, wide=False), _Code(builder, wide=True)
@@ -432,9 +425,7 @@ def field_of(typing: Any, of: Any, x: Any, y: Any, z: Any, locals_: Any, first: 
         own = _read(builder, source, of.locals)
         full = own if of.softened else formulas.unfolded(narrow, own, of.order)
         everywhere = {n: code.everywhere(value) for n, value in full.items()}
-        found = formulas.local_field(code, everywhere, args[1:4], of.order, True, of.potential)
-        if not of.potential:
-            found.append(repeated(0.0))
+        found = formulas.local_field(code, everywhere, args[1:4], of.order, True)
         return context.make_tuple(builder, sig.return_type, found)
 
     return types.UniTuple(LANES, 4)(of, LANES, LANES, LANES, locals_, types.int64), emitted
@@ -446,15 +437,5 @@ def is_mixed(typing: Any, of: Any) -> Any:
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return ir.Constant(ir.IntType(1), int(of.mixed))
-
-    return types.boolean(of), emitted
-
-
-@emitted_code
-def with_potential(typing: Any, of: Any) -> Any:
-    """Whether potentials are wanted."""
-
-    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        return ir.Constant(ir.IntType(1), int(of.potential))
 
     return types.boolean(of), emitted

@@ -29,7 +29,6 @@ from driftwell.tree.expansions import (
     is_mixed,
     moment_row,
     side_by_side,
-    with_potential,
 )
 
 AT_ONE_PLACE = 1e-179
@@ -94,8 +93,7 @@ def one_by_one(
             _add(tree.field[0], i, found[0])
             _add(tree.field[1], i, found[1])
             _add(tree.field[2], i, found[2])
-            if with_potential(of):
-                _add(tree.field[3], i, found[3])
+            _add(tree.field[3], i, found[3])
         else:
             charge = load(tree.place[3], i)
             add_far_charges(of, none - x, none - y, none - z, inverse, charge, local)
@@ -111,7 +109,7 @@ def push(
     for i in range(tree.first[cell], tree.first[cell + 1], 2 * WIDTH):
         xa, ya, za = load(x, i), load(y, i), load(z, i)
         xb, yb, zb = load(x, i + WIDTH), load(y, i + WIDTH), load(z, i + WIDTH)
-        ax = ay = az = va = bx = by = bz = vb = lanes(0.0)
+        ax = ay = az = bx = by = bz = lanes(0.0)
         for k in range(near):
             for j in range(ranges[2 * k], ranges[2 * k + 1]):
                 xj, yj = load_one(x, j), load_one(y, j)
@@ -120,18 +118,10 @@ def push(
                 square = fused(dx, dx, fused(dy, dy, fused(dz, dz, soft)))
                 s = qj * _cube(of, square)
                 ax, ay, az = fused(s, dx, ax), fused(s, dy, ay), fused(s, dz, az)
-                if with_potential(of):
-                    va = fused(
-                        where_above(square, lanes(AT_ONE_PLACE), qj), inverse_root(square), va
-                    )
                 dx, dy, dz = xb - xj, yb - yj, zb - zj
                 square = fused(dx, dx, fused(dy, dy, fused(dz, dz, soft)))
                 s = qj * _cube(of, square)
                 bx, by, bz = fused(s, dx, bx), fused(s, dy, by), fused(s, dz, bz)
-                if with_potential(of):
-                    vb = fused(
-                        where_above(square, lanes(AT_ONE_PLACE), qj), inverse_root(square), vb
-                    )
         unit = lanes(ROUGH_SCALE) if is_mixed(of) else lanes(1.0)
         _add(tree.field[0], i, unit * ax)
         _add(tree.field[1], i, unit * ay)
@@ -139,9 +129,23 @@ def push(
         _add(tree.field[0], i + WIDTH, unit * bx)
         _add(tree.field[1], i + WIDTH, unit * by)
         _add(tree.field[2], i + WIDTH, unit * bz)
-        if with_potential(of):
-            _add(tree.field[3], i, va)
-            _add(tree.field[3], i + WIDTH, vb)
+
+
+@outer_kernel
+def push_potential(cell: int, near: int, ranges: np.ndarray, tree: Tree, softening2: float) -> None:
+    """Add the potentials of near charges to those at a leaf's own; a softened one's own too."""
+    x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
+    soft, nothing = lanes(softening2), lanes(AT_ONE_PLACE)
+    for i in range(tree.first[cell], tree.first[cell + 1], WIDTH):
+        xi, yi, zi = load(x, i), load(y, i), load(z, i)
+        potential = lanes(0.0)
+        for k in range(near):
+            for j in range(ranges[2 * k], ranges[2 * k + 1]):
+                dx, dy, dz = xi - load_one(x, j), yi - load_one(y, j), zi - load_one(z, j)
+                square = fused(dx, dx, fused(dy, dy, fused(dz, dz, soft)))
+                qj = where_above(square, nothing, load_one(charge, j))
+                potential = fused(qj, inverse_root(square), potential)
+        _add(tree.field[3], i, potential)
 
 
 @inner_kernel
@@ -156,8 +160,7 @@ def settle(of: BasisType, cell: int, tree: Tree, local: np.ndarray, own: int) ->
         _add(tree.field[0], i, found[0])
         _add(tree.field[1], i, found[1])
         _add(tree.field[2], i, found[2])
-        if with_potential(of):
-            _add(tree.field[3], i, found[3])
+        _add(tree.field[3], i, found[3])
 
 
 @inner_kernel

@@ -127,9 +127,7 @@ def local_terms(
 ) -> Numbers:
     """The local expansion of eq. (1), added to `start`: L_m = sum_n M_n D_{m+n}."""
     made = {}
-    for m in indices(order, softened):
-        if m not in start:
-            continue
+    for m in start:
         value = start[m]
         for n in moments:
             if sum(m) + sum(n) <= order:
@@ -156,20 +154,13 @@ def shifted_moments(
 
 
 def shifted_locals(
-    code: Arithmetic,
-    local: Numbers,
-    x: Sequence[Number],
-    order: int,
-    softened: bool,
-    lowest: int,
+    code: Arithmetic, local: Numbers, x: Sequence[Number], order: int, softened: bool
 ) -> Numbers:
     """A local expansion about a new centre; x : new centre minus old."""
-    power = monomials(code, x, order - lowest, code.constant(1.0))
+    power = monomials(code, x, order, code.constant(1.0))
     full = local if softened else unfolded(code, local, order)
     made = {}
     for m in indices(order, softened):
-        if sum(m) < lowest:
-            continue
         value = full[m]
         for n in full:
             step = minus(n, m)
@@ -180,25 +171,18 @@ def shifted_locals(
 
 
 def local_field(
-    code: Arithmetic,
-    local: Numbers,
-    x: Sequence[Number],
-    order: int,
-    softened: bool,
-    potential: bool,
+    code: Arithmetic, local: Numbers, x: Sequence[Number], order: int, softened: bool
 ) -> list[Number]:
     """Minus the gradient of a local expansion at a place x from its centre, and the potential."""
     full = local if softened else unfolded(code, local, order)
-    power = monomials(code, x, order if potential else order - 1, code.constant(1.0))
+    power = monomials(code, x, order, code.constant(1.0))
     found = []
     for axis in range(3):
         value = code.constant(0.0)
         for n in cartesian(order - 1):
             value = code.fused(full[plus(n, unit(axis))], power[n], value)
         found.append(code.subtract(code.constant(0.0), value))
-    if potential:
-        value = code.constant(0.0)
-        for n in cartesian(order):
-            value = code.fused(full[n], power[n], value)
-        found.append(value)
-    return found
+    value = code.constant(0.0)
+    for n in cartesian(order):
+        value = code.fused(full[n], power[n], value)
+    return [*found, value]

@@ -19,6 +19,7 @@ from driftwell.kernels.lane_values import emitted_code
 from driftwell.tree.build import (
     begin_level,
     cut_in_level,
+    cut_level,
     extent,
     grow,
     leaves_of,
@@ -44,6 +45,8 @@ from driftwell.tree.measure import climb, measure_parent
 from driftwell.tree.scale import scale_task, settle_scale
 from driftwell.tree.walk import gather, gather_above
 
+LAY_OUT, CUT, GROW, SCALE, GATHER, DONE = range(6)
+"""What is done after one another, each by all threads."""
 SHARED = 100_000
 """From this many charges on the first cuts are worth sharing among threads."""
 NEXT_TO_NOTHING = 1e-180
@@ -53,7 +56,7 @@ _FAR_AWAY = 1e3
 
 
 @functools.cache
-def tree_field_kernel(order: int, softened: bool, potential: bool, mixed: bool) -> Any:
+def tree_field_kernel(order: int, softened: bool, mixed: bool) -> Any:
     """The tree sum with one basis, as the time loop takes it.
 
     out_field : (3, n) V/m, or (4, n) with potentials, V; overwritten. A charge that is nowhere
@@ -69,8 +72,8 @@ def tree_field_kernel(order: int, softened: bool, potential: bool, mixed: bool) 
         work: np.ndarray,
         out_field: np.ndarray,
     ) -> None:
-        of = basis(order, softened, potential, mixed)
-        n, leaf, workers = charge.size, int(work[0, LEAF]), int(work[0, WORKERS])
+        of = basis(order, softened, mixed)
+        n, leaf = charge.size, int(work[0, LEAF])
         unit = _unit(position)
         if n == 0 or not math.isfinite(unit):
             for axis in range(out_field.shape[0]):
@@ -79,37 +82,50 @@ def tree_field_kernel(order: int, softened: bool, potential: bool, mixed: bool) 
             return
         tree, desk = tree_in(work), desk_in(work, 0)
         soft2 = softening2 * unit * unit + NEXT_TO_NOTHING
-        cells = 2 * leaves_of(n, leaf) - 1
-        for worker in prange(workers):
-            _lay_out(worker, workers, position, unit, work)
         most_leaves = max(1, leaves_of(n, leaf) // TASKS)
-        begin_level(n, tree)
-        count, tops = 1, 0
-        while count > 0:
-            if tops + 3 * count > MOST_TASKS:
-                most_leaves = n
+        stage, count, tops = LAY_OUT, 1, 0
+        while stage != DONE:
             _begin_tasks(work)
-            if n < SHARED or count == 1:
-                _cut_level(count, most_leaves, leaf, work)
+            if stage == CUT and (n < SHARED or count == 1):
+                cut_level(count, most_leaves, leaf, tree)
             else:
-                for _ in prange(workers):
-                    _cut_level(count, most_leaves, leaf, work)
-            count, tops = next_level(count, tops, tree)
-        tasks = list_tasks(tree, desk.path)
-        _begin_tasks(work)
-        for worker in prange(workers):
-            _grow_tasks(of, worker, tasks, charge, leaf, work)
-        for k in range(tops - 1, -1, -1):
-            measure_parent(of, tree.tops[k], tree)
-        _place_nobody(moment_row(of), tree)
-        _begin_tasks(work)
-        for worker in prange(workers):
-            _scale_tasks(worker, tasks, n, leaf, soft2, work)
-        settle_scale(cells, work[0, TOLERANCE], tree)
-        gather_above(of, tree, desk, soft2)
-        _begin_tasks(work)
-        for worker in prange(workers):
-            _gather_tasks(of, worker, tasks, n, leaf, soft2, constant * unit, unit, work, out_field)
+                workers = int(work[0, WORKERS])
+                for worker in prange(
+                    workers
+                ):  # one loop for all stages: each costs seconds to compile
+                    if stage == LAY_OUT:
+                        _lay_out(worker, workers, position, unit, work)
+                    elif stage == CUT:
+                        _cut_shared(count, most_leaves, leaf, work)
+                    elif stage == GROW:
+                        _grow_tasks(of, worker, count, charge, leaf, work)
+                    elif stage == SCALE:
+                        _scale_tasks(worker, count, n, leaf, soft2, work)
+                    else:
+                        _gather_tasks(
+                            of, worker, count, leaf, soft2, constant, unit, work, out_field
+                        )
+            if stage == LAY_OUT:
+                begin_level(n, tree)
+                stage = CUT
+            elif stage == CUT:
+                count, tops = next_level(count, tops, tree)
+                if tops + 3 * count > MOST_TASKS:
+                    most_leaves = n
+                if count == 0:
+                    count = list_tasks(tree, desk.path)
+                    stage = GROW
+            elif stage == GROW:
+                for k in range(tops - 1, -1, -1):
+                    measure_parent(of, tree.tops[k], tree)
+                _place_nobody(moment_row(of), tree)
+                stage = SCALE
+            elif stage == SCALE:
+                settle_scale(2 * leaves_of(n, leaf) - 1, work[0, TOLERANCE], tree)
+                gather_above(of, out_field.shape[0] == 4, tree, desk, soft2)
+                stage = GATHER
+            else:
+                stage = DONE
 
     return tree_field
 
@@ -131,7 +147,7 @@ def _begin_tasks(work: np.ndarray) -> None:
 
 
 @view_kernel
-def _cut_level(count: int, most_leaves: int, leaf: int, work: np.ndarray) -> None:
+def _cut_shared(count: int, most_leaves: int, leaf: int, work: np.ndarray) -> None:
     """Cut one cell of a level above the tasks after the other."""
     tree = tree_in(work)
     counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
@@ -181,10 +197,9 @@ def _gather_tasks(
     of: BasisType,
     worker: int,
     tasks: int,
-    n: int,
     leaf: int,
     softening2: float,
-    to_volt: float,
+    constant: float,
     unit: float,
     work: np.ndarray,
     out_field: np.ndarray,
@@ -192,11 +207,12 @@ def _gather_tasks(
     """The fields at the charges of one task after the other."""
     tree, desk = tree_in(work), desk_in(work, worker)
     counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
+    potential = out_field.shape[0] == 4
     task = _next_task(counter)
     while task < tasks:
-        gather(of, task, tree, desk, softening2)
-        low, high, _, _ = _bounds(task, tasks, n, leaf, tree)
-        _hand_out(low, high, softening2, to_volt, unit, tree, out_field)
+        gather(of, task, potential, tree, desk, softening2)
+        low, high, _, _ = _bounds(task, tasks, out_field.shape[1], leaf, tree)
+        _hand_out(low, high, softening2, constant * unit, unit, tree, out_field)
         task = _next_task(counter)
 
 

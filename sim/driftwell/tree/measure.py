@@ -7,7 +7,7 @@ import math
 import numpy as np
 
 from driftwell.kernels import inner_kernel, outer_kernel
-from driftwell.kernels.lanes import lanes, load
+from driftwell.kernels.lanes import fused, lanes, larger, load, most, total
 from driftwell.tree.cells import (
     AMOUNT,
     BATCH,
@@ -68,19 +68,12 @@ def _measure_leaf(of: BasisType, cell: int, tree: Tree, work_lanes: np.ndarray) 
         cx += share * x[k]
         cy += share * y[k]
         cz += share * z[k]
-    farthest = spread = 0.0
-    for k in range(low, high):
-        dx, dy, dz = x[k] - cx, y[k] - cy, z[k] - cz
-        square = dx * dx + dy * dy + dz * dz
-        farthest = max(farthest, square)
-        spread += (per_charge * abs(charge[k]) + per_one) * _cube(square) * _cube(square)
-    reach = math.sqrt(farthest) + _ROUNDING * (abs(cx) + abs(cy) + abs(cz))
-    spread = spread ** (1.0 / 12.0)
     if _at_one_place(low, high, tree):
-        cx, cy, cz, reach, spread = x[low], y[low], z[low], 0.0, 0.0
+        cx, cy, cz = x[low], y[low], z[low]
     row = tree.cells[cell]
-    row[X], row[Y], row[Z], row[REACH], row[SPREAD] = cx, cy, cz, reach, spread
+    row[X], row[Y], row[Z] = cx, cy, cz
     row[AMOUNT], row[NET], row[SQUARES], row[COUNT] = amount, net, squares, count
+    _measure_extent(cell, tree)
     for k in range(BATCH * full_row(of)):
         work_lanes[k] = 0.0
     for i in range(low, high, BATCH):
@@ -108,14 +101,9 @@ def measure_parent(of: BasisType, cell: int, tree: Tree) -> None:
         share = 0.5 * share + 0.5 * b[AMOUNT] / amount
     for axis in range(3):
         row[axis] = a[axis] + share * (b[axis] - a[axis])
-    to_a, to_b = _distance(row, a), _distance(row, b)
-    reach = max(to_a + a[REACH], to_b + b[REACH])
-    if reach > 0.0:
-        reach += _ROUNDING * (abs(row[X]) + abs(row[Y]) + abs(row[Z]))
-    spread = (1.0 - share) * _twelfth(to_a + a[SPREAD]) + share * _twelfth(to_b + b[SPREAD])
-    row[REACH], row[SPREAD] = reach, min(spread ** (1.0 / 12.0), reach)
     row[AMOUNT], row[COUNT] = amount, count
     row[NET], row[SQUARES] = a[NET] + b[NET], a[SQUARES] + b[SQUARES]
+    _measure_extent(cell, tree)
     length = moment_row(of)
     for k in range(length):
         tree.moments[cell * length + k] = 0.0
@@ -166,17 +154,29 @@ def _at_one_place(low: int, high: int, tree: Tree) -> bool:
     return True
 
 
-@inner_kernel
-def _cube(a: float) -> float:
-    return a * a * a
+@outer_kernel
+def _measure_extent(cell: int, tree: Tree) -> None:
+    """Overwrite a cell's reach and spread: those of its charges about its centre.
 
-
-@inner_kernel
-def _twelfth(a: float) -> float:
-    return _cube(a * a) * _cube(a * a)
-
-
-@inner_kernel
-def _distance(a: np.ndarray, b: np.ndarray) -> float:
-    dx, dy, dz = a[X] - b[X], a[Y] - b[Y], a[Z] - b[Z]
-    return math.sqrt(dx * dx + dy * dy + dz * dz)
+    The copies behind the last charge are taken in with it; they change nothing to speak of.
+    """
+    row = tree.cells[cell]
+    low, count = tree.first[cell], row[COUNT]
+    per_charge = lanes(0.5 / row[AMOUNT] if row[AMOUNT] > 0.0 else 0.0)
+    per_one = lanes(0.5 / count if row[AMOUNT] > 0.0 else 1.0 / count)
+    x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
+    cx, cy, cz = lanes(row[X]), lanes(row[Y]), lanes(row[Z])
+    none = lanes(0.0)
+    farthest, powers = none, none
+    for i in range(low, low + int(count), BATCH):
+        dx, dy, dz = load(x, i) - cx, load(y, i) - cy, load(z, i) - cz
+        square = fused(dx, dx, fused(dy, dy, dz * dz))
+        farthest = larger(farthest, square)
+        sixth = square * square * square
+        own = load(charge, i)
+        share = fused(per_charge, larger(own, none - own), per_one)
+        powers = fused(share, sixth * sixth, powers)
+    reach = math.sqrt(most(farthest))
+    if reach > 0.0:
+        reach += _ROUNDING * (abs(row[X]) + abs(row[Y]) + abs(row[Z]))
+    row[REACH], row[SPREAD] = reach, min(total(powers) ** (1.0 / 12.0), reach)

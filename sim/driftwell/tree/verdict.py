@@ -40,6 +40,8 @@ from driftwell.tree.cells import BATCH, REACH, RIGHT, SPREAD, STRENGTH, WANT, X,
 NEAR, FAR, BY_CHARGE, NOTHING = 0.0, 1.0, 2.0, 3.0
 """Cut one of them, or sum over charges; expansions; a leaf's charges one by one; no force."""
 _LARGER = 1.25
+_CLOSEST2 = tuple(10.0 ** (-560.0 / (2 * order + 1)) for order in range(16))
+"""Squared distance, by order, below which derivatives, of order -(2 p + 1), are no numbers."""
 
 
 @inner_kernel
@@ -62,7 +64,7 @@ def verdicts(row: np.ndarray, others: np.ndarray, order: int, out_verdicts: np.n
     power = _power((spread_a + spread_b) * inverse, order)
     fails_a = _exceeds(at_a * power, allowed, spread_a, spread_b)
     fails_b = _exceeds(at_b * power, allowed, spread_b, spread_a)
-    separate = where_above(square, reach * reach, one)
+    separate = where_above(square, larger(reach * reach, lanes(_CLOSEST2[order])), one)
     far = separate - where_above(fails_a + fails_b, none, separate)
     leaf_a, leaf_b = _is_zero(lanes(row[RIGHT])), _is_zero(load(others, BATCH * RIGHT))
     either = leaf_a * (one - leaf_b) + leaf_b * (one - leaf_a)

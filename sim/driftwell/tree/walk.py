@@ -33,7 +33,15 @@ from driftwell.tree.expansions import (
     pass_down,
     side_by_side,
 )
-from driftwell.tree.forces import hear, local_lanes, one_by_one, push, settle
+from driftwell.tree.forces import (
+    AT_ONE_PLACE,
+    hear,
+    local_lanes,
+    one_by_one,
+    push,
+    push_potential,
+    settle,
+)
 from driftwell.tree.verdict import BY_CHARGE, FAR, NOTHING, verdicts
 
 
@@ -53,6 +61,7 @@ def _visit(
     begin: int,
     end: int,
     own: int,
+    potential: bool,
     tree: Tree,
     desk: Desk,
     softening2: float,
@@ -62,12 +71,14 @@ def _visit(
     quiet : only find out what is left to its children
     begin, end : the waiting cells; those left to the children follow them
     own : where its local expansion begins, added to
+    potential : whether the potential is wanted of near charges as well
     """
     order = expansion_order(of)
     row = tree.cells[cell]
     is_leaf = row[RIGHT] == 0.0
     waiting, queue, ranges = desk.waiting, desk.queue, desk.ranges
     nobody = tree.cells.shape[0] - 1
+    levels_at_one_place = potential and softening2 > AT_ONE_PLACE
     left_over = end
     far = near = 0
     for k in range(begin, end):
@@ -81,7 +92,7 @@ def _visit(
         verdicts(row, desk.lanes, order, desk.lanes[VERDICTS:])
         for k in range(count):
             other, found = queue[head + k], desk.lanes[VERDICTS + k]
-            if found == FAR:
+            if found == FAR or (found == NOTHING and levels_at_one_place):
                 desk.far[far] = other
                 far += 1
             elif found == BY_CHARGE:
@@ -97,9 +108,6 @@ def _visit(
                 pass
             elif is_leaf and tree.cells[other, RIGHT] == 0.0:
                 near = _note_range(other, tree.first, ranges, near)
-                if near == RANGES:
-                    push(of, cell, near, ranges, tree, softening2)
-                    near = 0
             elif _other_is_cut(row, tree.cells[other], cell, other):
                 queue[tail], queue[tail + 1] = other + 1, int(tree.cells[other, RIGHT])
                 tail += 2
@@ -107,6 +115,9 @@ def _visit(
                 waiting[left_over] = other
                 left_over += 1
         head += count
+        if near > RANGES - BATCH:
+            _push_all(of, cell, near, potential, tree, desk, softening2)
+            near = 0
         if quiet:
             far = 0
         elif far > FARS - BATCH:
@@ -116,9 +127,25 @@ def _visit(
         hear(of, cell, far, desk.far, tree, softening2, desk.lanes)
         add_lanes(of, desk.lanes[local_lanes(of) :], desk.local, own)
         if is_leaf:
-            push(of, cell, near, ranges, tree, softening2)
+            _push_all(of, cell, near, potential, tree, desk, softening2)
             settle(of, cell, tree, desk.local, own)
     return left_over
+
+
+@outer_kernel
+def _push_all(
+    of: BasisType,
+    cell: int,
+    near: int,
+    potential: bool,
+    tree: Tree,
+    desk: Desk,
+    softening2: float,
+) -> None:
+    """Add near charges, in so many ranges, to a leaf's fields and, where wanted, potentials."""
+    push(of, cell, near, desk.ranges, tree, softening2)
+    if potential:
+        push_potential(cell, near, desk.ranges, tree, softening2)
 
 
 @inner_kernel
@@ -133,7 +160,7 @@ def _note_range(cell: int, first: np.ndarray, ranges: np.ndarray, near: int) -> 
 
 
 @outer_kernel
-def gather_above(of: BasisType, tree: Tree, desk: Desk, softening2: float) -> None:
+def gather_above(of: BasisType, potential: bool, tree: Tree, desk: Desk, softening2: float) -> None:
     """Let the cells above the tasks gather; what they pass down to the tasks is kept for them."""
     length = local_row(of)
     for k in range(length):
@@ -152,21 +179,23 @@ def gather_above(of: BasisType, tree: Tree, desk: Desk, softening2: float) -> No
                 tree.above[task * length + k] = desk.local[own + k]
             task += 1
             continue
-        left_over = _visit(of, cell, False, begin, end, own, tree, desk, softening2)
+        left_over = _visit(of, cell, False, begin, end, own, potential, tree, desk, softening2)
         right = int(tree.cells[cell, RIGHT])
         top = _put(desk.path, top, right, end, left_over, level + 1, cell)
         top = _put(desk.path, top, cell + 1, end, left_over, level + 1, cell)
 
 
 @outer_kernel
-def gather(of: BasisType, task: int, tree: Tree, desk: Desk, softening2: float) -> None:
+def gather(
+    of: BasisType, task: int, potential: bool, tree: Tree, desk: Desk, softening2: float
+) -> None:
     """The fields of all charges at those of one task, in the tree's order and units."""
     length = local_row(of)
     root = tree.tasks[task]
     desk.waiting[0] = 0
     begin, end, cell = 0, 1, 0
     while cell != root:
-        left_over = _visit(of, cell, True, begin, end, 0, tree, desk, softening2)
+        left_over = _visit(of, cell, True, begin, end, 0, potential, tree, desk, softening2)
         begin, end = end, left_over
         right = int(tree.cells[cell, RIGHT])
         cell = cell + 1 if root < right else right
@@ -179,7 +208,7 @@ def gather(of: BasisType, task: int, tree: Tree, desk: Desk, softening2: float) 
         level, parent = desk.path[top + 3], desk.path[top + 4]
         own = level * length
         _inherit(of, cell, parent, level, own, tree, desk)
-        left_over = _visit(of, cell, False, begin, end, own, tree, desk, softening2)
+        left_over = _visit(of, cell, False, begin, end, own, potential, tree, desk, softening2)
         right = int(tree.cells[cell, RIGHT])
         if right > 0:
             top = _put(desk.path, top, right, end, left_over, level + 1, cell)
