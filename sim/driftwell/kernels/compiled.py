@@ -197,8 +197,8 @@ def threaded_pair_kernel(function: F) -> F:
 
 
 def view_kernel(function: F) -> F:
-    """A :func:`kernel` that returns parts of the arrays it is given, for threaded kernels."""
-    return _compiled(function, forceinline=True)
+    """A part of a threaded kernel that takes views of arrays, which needs reference counts."""
+    return _compiled(function, no_cpython_wrapper=True, no_cfunc_wrapper=True)
 
 
 class CompiledFunction(numba.types.WrapperAddressProtocol):

@@ -90,21 +90,22 @@ def tree_field_kernel(order: int, softened: bool, mixed: bool) -> Any:
                 cut_level(count, most_leaves, leaf, tree)
             else:
                 workers = int(work[0, WORKERS])
-                for worker in prange(
-                    workers
-                ):  # one loop for all stages: each costs seconds to compile
-                    if stage == LAY_OUT:
-                        _lay_out(worker, workers, position, unit, work)
-                    elif stage == CUT:
-                        _cut_shared(count, most_leaves, leaf, work)
-                    elif stage == GROW:
-                        _grow_tasks(of, worker, count, charge, leaf, work)
-                    elif stage == SCALE:
-                        _scale_tasks(worker, count, n, leaf, soft2, work)
-                    else:
-                        _gather_tasks(
-                            of, worker, count, leaf, soft2, constant, unit, work, out_field
-                        )
+                # one loop for all stages, integers of one kind: each other one is compiled anew
+                for worker in prange(workers):
+                    _take_part(
+                        of,
+                        types.int64(stage),
+                        types.int64(worker),
+                        types.int64(count),
+                        types.int64(most_leaves),
+                        position,
+                        charge,
+                        soft2,
+                        constant,
+                        unit,
+                        work,
+                        out_field,
+                    )
             if stage == LAY_OUT:
                 begin_level(n, tree)
                 stage = CUT
@@ -128,6 +129,35 @@ def tree_field_kernel(order: int, softened: bool, mixed: bool) -> Any:
                 stage = DONE
 
     return tree_field
+
+
+@view_kernel
+def _take_part(
+    of: BasisType,
+    stage: Any,
+    worker: Any,
+    count: Any,
+    most_leaves: Any,
+    position: np.ndarray,
+    charge: np.ndarray,
+    softening2: float,
+    constant: float,
+    unit: float,
+    work: np.ndarray,
+    out_field: np.ndarray,
+) -> None:
+    """One thread's part of a stage; count : of the level's cells, or of tasks (integers all)."""
+    leaf, n = int(work[0, LEAF]), charge.size
+    if stage == LAY_OUT:
+        _lay_out(worker, int(work[0, WORKERS]), position, unit, work)
+    elif stage == CUT:
+        _cut_shared(count, most_leaves, leaf, work)
+    elif stage == GROW:
+        _grow_tasks(of, worker, count, charge, leaf, work)
+    elif stage == SCALE:
+        _scale_tasks(worker, count, n, leaf, softening2, work)
+    else:
+        _gather_tasks(of, worker, count, leaf, softening2, constant, unit, work, out_field)
 
 
 @emitted_code
