@@ -1,7 +1,7 @@
 """The formulas of the expansions, written out term by term.
 
 Each function takes numbers and gives numbers; what a number is, it need not know: floats in a
-test, or values of machine code in the making (emitted.py), eight lanes or one. G is 1/r, or
+test, or values of machine code in the making (expansions.py), eight lanes or one. G is 1/r, or
 (r^2 + e^2)^(-1/2) where softened; D_a are its derivatives, x the vector from source to sink centre.
 
     potential at a + u of charges at b + v, x = a - b:
