@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cache
 
+import numba
 import numpy as np
 from numpy.typing import NDArray
 
@@ -19,6 +20,12 @@ Placement = Callable[[int], Floats]
 """Number of charges -> places (3, n)."""
 
 SETTINGS = settings_for(1e-2)
+
+
+@numba.njit  # type: ignore[untyped-decorator]
+def _tree_of(work: Floats) -> Tree:
+    """What has no way in from Python, with one."""
+    return tree_in(work)
 
 
 @dataclass(frozen=True)
@@ -71,7 +78,7 @@ def grown(
     with on_threads(threads) as given:
         work = tree_workspace(q.size, given, settings)
         tree_sum(settings, mixed=True)(place, q, 0.0, 1.0, work, field)
-    return Grown(place, q, field, tree_in(work), leaf)
+    return Grown(place, q, field, _tree_of(work), leaf)
 
 
 def uniform(n: int) -> Floats:
