@@ -235,12 +235,17 @@ def totals(typing: Any, array: Any, first: Any) -> Any:
     return LANES(array, types.int64), emitted
 
 
+def _picked(builder: Any, sign: str, a: Any, b: Any) -> Any:
+    """`a` where it stands to `b` as the sign says, else `b`."""
+    return builder.select(builder.fcmp_ordered(sign, a, b), a, b)
+
+
 @emitted_code
 def smaller(typing: Any, a: Any, b: Any) -> Any:
     """The smaller of two, lane by lane."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        return builder.select(builder.fcmp_ordered("<", *args), *args)
+        return _picked(builder, "<", *args)
 
     return LANES(LANES, LANES), emitted
 
@@ -250,7 +255,7 @@ def larger(typing: Any, a: Any, b: Any) -> Any:
     """The larger of two, lane by lane."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        return builder.select(builder.fcmp_ordered(">", *args), *args)
+        return _picked(builder, ">", *args)
 
     return LANES(LANES, LANES), emitted
 
@@ -270,10 +275,7 @@ def least(typing: Any, a: Any) -> Any:
     """The smallest lane."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        def joined(low: Any, high: Any) -> Any:
-            return builder.select(builder.fcmp_ordered("<", low, high), low, high)
-
-        return halved(builder, args[0], joined)
+        return halved(builder, args[0], lambda low, high: _picked(builder, "<", low, high))
 
     return types.float64(LANES), emitted
 
@@ -283,10 +285,7 @@ def most(typing: Any, a: Any) -> Any:
     """The largest lane."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        def joined(low: Any, high: Any) -> Any:
-            return builder.select(builder.fcmp_ordered(">", low, high), low, high)
-
-        return halved(builder, args[0], joined)
+        return halved(builder, args[0], lambda low, high: _picked(builder, ">", low, high))
 
     return types.float64(LANES), emitted
 

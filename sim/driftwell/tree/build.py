@@ -54,7 +54,7 @@ def cut_level(count: int, most_leaves: int, leaf: int, tree: Tree) -> None:
 def next_level(count: int, tops: int, tree: Tree) -> tuple[int, int]:
     """Go on to the children noted; returns their number, and the number of cells cut so far."""
     children = 0
-    for k in range(count):
+    for k in range(count):  # before the children overwrite the level
         if tree.below[8 * k] >= 0:
             tree.tops[tops] = tree.level[4 * k]
             tops += 1

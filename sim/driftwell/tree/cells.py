@@ -29,7 +29,7 @@ REACH = 3
 SPREAD = 4
 """Mean of high order of these distances: what the error of an expansion grows with."""
 STRENGTH = 5
-"""What the cell's field and its error amount to: measure.measure_strength."""
+"""What the cell's field and its error amount to: measure.py says how."""
 WANT = 6
 """1 / (tolerance F): what error its charges can bear."""
 RIGHT = 7

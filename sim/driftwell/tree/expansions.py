@@ -26,6 +26,7 @@ from driftwell.kernels.lane_values import (
     call_llvm,
     emitted_code,
     repeated,
+    repeated_value,
 )
 from driftwell.tree import formulas
 from driftwell.tree.multi_index import Index, cartesian
@@ -100,12 +101,6 @@ class _Code:
 
     def subtract(self, a: Any, b: Any) -> Any:
         return self._builder.fsub(a, b)
-
-    def everywhere(self, number: Any) -> Any:
-        """One number in all lanes."""
-        builder, none = self._builder, ir.Constant(NUMBERS, ir.Undefined)
-        first = builder.insert_element(none, number, ir.Constant(INDEX, 0))
-        return builder.shuffle_vector(first, none, ir.Constant(_mask(WIDTH), [0] * WIDTH))
 
 
 def _mask(width: int) -> Any:
@@ -364,7 +359,10 @@ def field_of_cell(
         code = _Code(builder, wide=True)
         source = _start(context, builder, sig.args[5], args[5], args[6])
         derivative = formulas.derivatives(code, args[1:4], args[4], of.order, of.softened)
-        own = {n: code.everywhere(value) for n, value in _read(builder, source, of.moments).items()}
+        own = {
+            n: repeated_value(builder, value, NUMBERS)
+            for n, value in _read(builder, source, of.moments).items()
+        }
         wanted = [(1, 0, 0), (0, 1, 0), (0, 0, 1), (0, 0, 0)]
         nothing = dict.fromkeys(wanted, code.constant(0.0))
         made = formulas.local_terms(code, own, derivative, of.order, of.softened, nothing)
@@ -424,7 +422,7 @@ def field_of(typing: Any, of: Any, x: Any, y: Any, z: Any, locals_: Any, first: 
         source = _start(context, builder, sig.args[4], args[4], args[5])
         own = _read(builder, source, of.locals)
         full = own if of.softened else formulas.unfolded(narrow, own, of.order)
-        everywhere = {n: code.everywhere(value) for n, value in full.items()}
+        everywhere = {n: repeated_value(builder, value, NUMBERS) for n, value in full.items()}
         found = formulas.local_field(code, everywhere, args[1:4], of.order, True)
         return context.make_tuple(builder, sig.return_type, found)
 

@@ -31,7 +31,9 @@ from driftwell.tree.expansions import (
     side_by_side,
 )
 
-AT_ONE_PLACE = 1e-179
+NEXT_TO_NOTHING = 1e-180
+"""Added to all squared distances, of up to 1, so that charges at one place push nowhere."""
+AT_ONE_PLACE = 10.0 * NEXT_TO_NOTHING
 """Squared distances below this are those of charges at one place, in the tree's units."""
 
 
@@ -90,10 +92,7 @@ def one_by_one(
         inverse = _inverse(x, y, z, softening2)
         if is_leaf:
             found = field_of_cell(of, x, y, z, inverse, tree.moments, other * moment_row(of))
-            _add(tree.field[0], i, found[0])
-            _add(tree.field[1], i, found[1])
-            _add(tree.field[2], i, found[2])
-            _add(tree.field[3], i, found[3])
+            _add_all(tree.field, i, found)
         else:
             charge = load(tree.place[3], i)
             add_far_charges(of, none - x, none - y, none - z, inverse, charge, local)
@@ -157,10 +156,7 @@ def settle(of: BasisType, cell: int, tree: Tree, local: np.ndarray, own: int) ->
         y = load(tree.place[1], i) - lanes(row[Y])
         z = load(tree.place[2], i) - lanes(row[Z])
         found = field_of(of, x, y, z, local, own)
-        _add(tree.field[0], i, found[0])
-        _add(tree.field[1], i, found[1])
-        _add(tree.field[2], i, found[2])
-        _add(tree.field[3], i, found[3])
+        _add_all(tree.field, i, found)
 
 
 @inner_kernel
@@ -174,6 +170,15 @@ def _cube(of: BasisType, square: LanesType) -> LanesType:
     if is_mixed(of):
         return scaled_rough_inverse_cube(square)
     return inverse_cube(square)
+
+
+@inner_kernel
+def _add_all(field: np.ndarray, i: int, found: tuple[LanesType, ...]) -> None:
+    """Add field and potential to those of eight charges."""
+    _add(field[0], i, found[0])
+    _add(field[1], i, found[1])
+    _add(field[2], i, found[2])
+    _add(field[3], i, found[3])
 
 
 @inner_kernel

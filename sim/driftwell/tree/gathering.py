@@ -40,7 +40,7 @@ from driftwell.tree.cells import (
     tree_in,
 )
 from driftwell.tree.expansions import BasisType, basis, moment_row
-from driftwell.tree.forces import AT_ONE_PLACE
+from driftwell.tree.forces import AT_ONE_PLACE, NEXT_TO_NOTHING
 from driftwell.tree.measure import climb, measure_parent
 from driftwell.tree.scale import scale_task, settle_scale
 from driftwell.tree.walk import gather, gather_above
@@ -49,8 +49,6 @@ LAY_OUT, CUT, GROW, SCALE, GATHER, DONE = range(6)
 """What is done after one another, each by all threads."""
 SHARED = 100_000
 """From this many charges on the first cuts are worth sharing among threads."""
-NEXT_TO_NOTHING = 1e-180
-"""Added to all squared distances, of up to 1, so that charges at one place push nowhere."""
 _FAR_AWAY = 1e3
 """Where the cell without charge stands; all charges lie within 1 of the origin."""
 
@@ -172,15 +170,21 @@ def _next_task(typing: Any, counter: Any) -> Any:
 
 
 @view_kernel
+def _counter(work: np.ndarray) -> np.ndarray:
+    """(1,) int64, what :func:`_next_task` counts with."""
+    return work[0, COUNTER : COUNTER + 1].view(np.int64)
+
+
+@view_kernel
 def _begin_tasks(work: np.ndarray) -> None:
-    work[0, COUNTER : COUNTER + 1].view(np.int64)[0] = 0
+    _counter(work)[0] = 0
 
 
 @view_kernel
 def _cut_shared(count: int, most_leaves: int, leaf: int, work: np.ndarray) -> None:
     """Cut one cell of a level above the tasks after the other."""
     tree = tree_in(work)
-    counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
+    counter = _counter(work)
     k = _next_task(counter)
     while k < count:
         cut_in_level(k, most_leaves, leaf, tree)
@@ -193,7 +197,7 @@ def _grow_tasks(
 ) -> None:
     """Cut and measure the cells of one task after the other."""
     tree, desk = tree_in(work), desk_in(work, worker)
-    counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
+    counter = _counter(work)
     n = charge.size
     task = _next_task(counter)
     while task < tasks:
@@ -213,7 +217,7 @@ def _scale_tasks(
 ) -> None:
     """Estimate the fields in one task after the other, and clear them."""
     tree, desk = tree_in(work), desk_in(work, worker)
-    counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
+    counter = _counter(work)
     task = _next_task(counter)
     while task < tasks:
         low, high, first, last = _bounds(task, tasks, n, leaf, tree)
@@ -236,7 +240,7 @@ def _gather_tasks(
 ) -> None:
     """The fields at the charges of one task after the other."""
     tree, desk = tree_in(work), desk_in(work, worker)
-    counter = work[0, COUNTER : COUNTER + 1].view(np.int64)
+    counter = _counter(work)
     potential = out_field.shape[0] == 4
     task = _next_task(counter)
     while task < tasks:
