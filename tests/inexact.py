@@ -18,7 +18,7 @@ from driftwell.coulomb import summation
 from driftwell.coulomb.pair_sum import SIGNATURE, PairSum
 from driftwell.coulomb.tree import TreeSettings
 from driftwell.kernels import inner_pair_kernel, pair_kernel
-from driftwell.kernels.compiled import CompiledFunction
+from driftwell.kernels.pointers import CompiledFunction
 
 SIZE = 1e-3
 """m, where the error is the tolerance itself."""
@@ -57,12 +57,12 @@ def inexact(monkeypatch: pytest.MonkeyPatch) -> Inexact:
 
 
 def _workspace(
-    n: int, threads: int, settings: TreeSettings, softened: bool = False
+    n: int, threads: int, settings: TreeSettings, softened: bool = False, mixed: bool = False
 ) -> NDArray[np.float64]:
     return np.array([[settings.tolerance, SIZE]])
 
 
-def _sum(settings: TreeSettings, softened: bool = False, mixed: bool = False) -> PairSum:
+def _sum() -> PairSum:
     return CompiledFunction(inexact_field, SIGNATURE)
 
 

@@ -9,7 +9,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.coulomb.direct import direct_sum, workspace
-from driftwell.coulomb.pair_sum import PairSum
 from driftwell.coulomb.potential import threaded_potentials
 from driftwell.coulomb.tree import settings_for, tree_sum, tree_workspace
 from driftwell.kernels.threads import on_threads
@@ -77,23 +76,20 @@ def tree(accuracy: float, threads: int = 2) -> PairSumCase:
     """The tree, with leaves in mixed precision where the accuracy allows it, as a run has it."""
     settings = settings_for(accuracy)
 
-    def fill(
-        made: PairSum, place: Floats, charge: Floats, softening: float, constant: float, out: Floats
-    ) -> None:
+    def fill(place: Floats, charge: Floats, softening: float, constant: float, out: Floats) -> None:
+        mixed = accuracy >= MIXED
         with on_threads(threads) as given:
-            work = tree_workspace(charge.size, given, settings, softening > 0.0)
-            made(place, charge, softening**2, constant, work, out)
+            work = tree_workspace(charge.size, given, settings, softening > 0.0, mixed)
+            tree_sum()(place, charge, softening**2, constant, work, out)
 
     def field(place: Floats, charge: Floats, softening: float, constant: float) -> Floats:
         out = np.full_like(place, np.nan)
-        made = tree_sum(settings, softening > 0.0, accuracy >= MIXED)
-        fill(made, place, charge, softening, constant, out)
+        fill(place, charge, softening, constant, out)
         return out
 
     def potential(place: Floats, charge: Floats, softening: float, constant: float) -> Floats:
         out = np.full((4, charge.size), np.nan)
-        made = tree_sum(settings, softening > 0.0, accuracy >= MIXED)
-        fill(made, place, charge, softening, constant, out)
+        fill(place, charge, softening, constant, out)
         return out[3]
 
     return PairSumCase(f"tree, {accuracy:g}", accuracy, field, potential)

@@ -17,7 +17,6 @@ import numpy as np
 import pytest
 
 import driftwell
-from driftwell.coulomb.pair_sum import PairSum
 from driftwell.coulomb.tree import (
     TreeSettings,
     settings_for,
@@ -51,18 +50,18 @@ def found(shape: str, accuracy: float, n: int = COUNT) -> Floats:
 
 
 def summed(
-    made: PairSum,
     settings: TreeSettings,
     place: Floats,
     charge: Floats,
     softening: float = 0.0,
     rows: int = 3,
+    mixed: bool = False,
 ) -> Floats:
-    """What a sum finds, (rows, n), in a new work space on two threads."""
+    """What the tree finds, (rows, n), in a new work space on two threads."""
     out = np.full((rows, charge.size), np.nan)
     with on_threads(2) as given:
-        work = tree_workspace(charge.size, given, settings, softening > 0.0)
-        made(place, charge, softening**2, 1.0, work, out)
+        work = tree_workspace(charge.size, given, settings, softening > 0.0, mixed)
+        tree_sum()(place, charge, softening**2, 1.0, work, out)
     return out
 
 
@@ -114,7 +113,7 @@ def test_tightening_mends_even_salt() -> None:
     place, charge = CLOUDS["salt"](COUNT)
     factor = rms_error(reference("salt"), found("salt", 1e-3)) / 1e-3
     settings = tightened(settings_for(1e-3), 1.5 * factor)
-    again = summed(tree_sum(settings, mixed=True), settings, place, charge)
+    again = summed(settings, place, charge, mixed=True)
     assert factor > 1.0
     assert rms_error(reference("salt"), again) <= 1e-3
 
@@ -130,7 +129,7 @@ def test_the_tree_converges_to_the_direct_sum() -> None:
     assert 0.0 < errors[-1] <= 1e-8
     loose = TreeSettings(12, 16, 1e-3)
     place, charge = CLOUDS["even signs"](n)
-    error = rms_error(reference("even signs", n), summed(tree_sum(loose), loose, place, charge))
+    error = rms_error(reference("even signs", n), summed(loose, place, charge))
     assert 1e-9 < error < 1e-4
 
 
@@ -155,7 +154,7 @@ def test_half_the_sum_of_charge_times_potential_is_the_energy(shape: str, accura
     assert DIRECT.potential is not None
     expected = DIRECT.potential(place, charge, 0.0, 1.0)
     settings = settings_for(accuracy)
-    level = summed(tree_sum(settings), settings, place, charge, rows=4)[3]
+    level = summed(settings, place, charge, rows=4)[3]
     size = float(np.abs(charge) @ np.abs(expected))
     assert float(charge @ expected) == pytest.approx(float(charge @ level), abs=accuracy * size)
     assert 0.0 < rms_error(expected, level) <= 3.0 * accuracy
@@ -166,8 +165,8 @@ def test_the_field_found_with_potentials_is_the_field_found_without(shape: str) 
     """To rounding, where neither is mixed; far within the accuracy."""
     place, charge = CLOUDS[shape](COUNT)
     settings = settings_for(5e-7)
-    with_levels = summed(tree_sum(settings), settings, place, charge, rows=4)
-    without = summed(tree_sum(settings), settings, place, charge)
+    with_levels = summed(settings, place, charge, rows=4)
+    without = summed(settings, place, charge)
     assert rms_error(without, with_levels[:3]) <= 1e-12
     assert rms_error(reference(shape), without) > 1e-9
 
@@ -179,8 +178,8 @@ def test_softened_sums_are_as_accurate(shape: str, softening: float) -> None:
     place, charge = CLOUDS[shape](5000)
     settings = settings_for(1e-4)
     expected = DIRECT.field(place, charge, softening, 1.0)
-    alone = summed(tree_sum(settings, True, True), settings, place, charge, softening)
-    both = summed(tree_sum(settings, True), settings, place, charge, softening, rows=4)
+    alone = summed(settings, place, charge, softening, mixed=True)
+    both = summed(settings, place, charge, softening, rows=4)
     assert 0.0 < rms_error(expected, alone) <= 1e-4
     assert rms_error(alone, both[:3]) <= 1e-7
     assert DIRECT.potential is not None
@@ -197,7 +196,7 @@ def test_softened_charges_at_one_place_have_each_others_level(at: tuple[float, .
     charge = np.random.default_rng(1).uniform(0.5, 2.0, 100)
     settings = settings_for(1e-4)
     for q in (charge, np.ones(100)):
-        both = summed(tree_sum(settings, True), settings, place, q, 0.25, rows=4)
+        both = summed(settings, place, q, 0.25, rows=4)
         assert np.abs(both[:3]).max() <= 1e-12
         assert (q.sum() - q) / 0.25 == pytest.approx(both[3], rel=1e-13, abs=0.0)
 
@@ -207,9 +206,7 @@ def test_the_order_of_the_charges_changes_roundings_only() -> None:
     place, charge = CLOUDS["even signs"](COUNT)
     order = np.random.default_rng(2).permutation(COUNT)
     settings = settings_for(5e-7)
-    other = summed(
-        tree_sum(settings), settings, np.ascontiguousarray(place[:, order]), charge[order]
-    )
+    other = summed(settings, np.ascontiguousarray(place[:, order]), charge[order])
     expected = found("even signs", 5e-7)[:, order]
     assert rms_error(expected, other) <= 1e-11
     assert rms_error(reference("even signs")[:, order], other) > 1e-9
@@ -252,7 +249,7 @@ def test_high_orders_do_not_overflow_beside_a_lone_charge_far_away(far: float) -
     expected = DIRECT.field(place, charge, 0.0, 1.0)
     here = np.arange(6000) != 1234
     for settings in (settings_for(5e-7), TreeSettings(12, 32, 1e-4)):
-        got = summed(tree_sum(settings), settings, place, charge)
+        got = summed(settings, place, charge)
         assert rms_error(expected[:, here], got[:, here]) <= 1e-5
 
 
@@ -279,18 +276,19 @@ import sys
 import numpy as np
 from driftwell.coulomb.tree import settings_for, tree_sum, tree_workspace
 settings = settings_for(1e-4)
-summed = tree_sum(settings, mixed=True)
+summed = tree_sum()
 
 def pages(name):
     with open("/proc/self/status") as status:
         return next(1024 * int(line.split()[1]) for line in status if line.startswith(name))
 
 few = np.random.default_rng(1).normal(size=(3, 2000))
-summed(few, np.ones(2000), 0.0, 1.0, tree_workspace(2000, 1, settings), np.empty_like(few))
+work = tree_workspace(2000, 1, settings, mixed=True)
+summed(few, np.ones(2000), 0.0, 1.0, work, np.empty_like(few))
 n = int(sys.argv[1])
 place, out, charge = np.random.default_rng(1).normal(size=(3, n)), np.zeros((3, n)), np.ones(n)
 found = [pages('VmHWM')]
-work = tree_workspace(n, 1, settings)
+work = tree_workspace(n, 1, settings, mixed=True)
 found += [pages('VmHWM')]
 for _ in range(2):
     summed(place, charge, 0.0, 1.0, work, out)

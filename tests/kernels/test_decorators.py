@@ -8,7 +8,8 @@ import numpy as np
 import pytest
 
 from driftwell.kernels import kernel, pair_kernel
-from driftwell.kernels.compiled import PAIR_FLAGS, SUM_FLAGS, CompiledFunction
+from driftwell.kernels.compiled import PAIR_FLAGS, SUM_FLAGS
+from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.status import (
     COLLAPSE,
     DONE,

@@ -124,41 +124,6 @@ def test_the_energy_of_charges_at_random_in_a_cube(tmp_path: Path) -> None:
     assert 1.88231264438966 == pytest.approx(mean, rel=3.0 * 0.4 / math.sqrt(count), abs=0.0)
 
 
-HOLTSMARK = {
-    0.5: 0.016511612608452984,
-    1.0: 0.10860772958285916,
-    1.5: 0.27274150672986314,
-    2.0: 0.4517618481857794,
-    2.5: 0.6006340568178486,
-    3.0: 0.7077478511836393,
-    4.0: 0.8294655532427452,
-    5.0: 0.8875444652432112,
-    7.0: 0.938005733457631,
-    10.0: 0.9657648611058076,
-}
-"""Share of fields below beta: J. Holtsmark, Ann. Phys. 58 (1919) 577; S. Chandrasekhar, Rev. Mod.
-Phys. 15 (1943) 1, sec. IV (integrals worked out anew)."""
-
-
-def test_fields_in_a_random_gas_are_distributed_by_holtsmark() -> None:
-    """beta = |E| / E0, E0 = 2.603109 k q n^(2/3), of the charges in the middle of a cube.
-
-    16 000 charges of both signs. Fields of near charges depend on each other, and the cube ends:
-    0.04 of distance is what direct sums of this kind were seen to reach.
-    """
-    count = 16_000
-    random = np.random.default_rng(5)
-    place = random.uniform(-0.5, 0.5, (3, count))
-    charge = np.where(np.arange(count) % 2 == 0, 1.0, -1.0)
-    middle = np.abs(place).max(axis=0) < 0.3
-    strength = np.linalg.norm(field_at_charges(place, charge)[:, middle], axis=0)
-    beta = strength / (2.603109016986679 * count ** (2.0 / 3.0))
-    assert middle.sum() > 3000
-    for least, share in HOLTSMARK.items():
-        assert share == pytest.approx(float(np.mean(beta < least)), abs=0.04)
-    assert 2.147792637089312 == pytest.approx(float(np.median(beta)), rel=0.03, abs=0.0)
-
-
 THOMSON = {
     2: 0.5,
     3: 1.732050808,

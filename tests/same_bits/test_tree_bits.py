@@ -40,9 +40,9 @@ def field(
     """The tree's field (3, n); in a new work space if none is given."""
     out = np.full_like(place, np.nan)
     if work is None:
-        work = tree_workspace(charge.size, threads, settings)
+        work = tree_workspace(charge.size, threads, settings, mixed=True)
     with on_threads(threads):
-        tree_sum(settings, mixed=True)(place, charge, 0.0, 9e9, work, out)
+        tree_sum()(place, charge, 0.0, 9e9, work, out)
     assert np.isfinite(out).all()
     return out
 
@@ -55,7 +55,7 @@ def test_threads_change_no_bit(shape: str, n: int) -> None:
     place, charge = CLOUDS[shape](n)
     results = {field(place, charge, threads).tobytes() for threads in THREADS}
     for workers in (1, 2, 5):
-        work = tree_workspace(n, workers, COARSE)
+        work = tree_workspace(n, workers, COARSE, mixed=True)
         results |= {field(place, charge, threads, work).tobytes() for threads in THREADS[:2]}
     assert 1 == len(results)
 
@@ -70,7 +70,7 @@ def test_threads_change_no_bit_of_softened_fields_and_potentials() -> None:
         out = np.full((4, 6000), np.nan)
         with on_threads(threads):
             work = tree_workspace(6000, threads, settings, softened=True)
-            tree_sum(settings, softened=True)(place, charge, 1e-4, 9e9, work, out)
+            tree_sum()(place, charge, 1e-4, 9e9, work, out)
         assert np.isfinite(out).all()
         results.add(out.tobytes())
     assert 1 == len(results)
@@ -81,7 +81,7 @@ def test_what_a_work_space_was_used_for_before_changes_no_bit() -> None:
     n = 3000
     place, charge = CLOUDS["plummer"](n)
     expected = field(place, charge).tobytes()
-    work = tree_workspace(n, 2, COARSE)
+    work = tree_workspace(n, 2, COARSE, mixed=True)
     head = work[0, :64].copy()
     assert expected == field(place, charge, 2, work).tobytes()
     assert expected == field(place, charge, 1, work).tobytes()
@@ -92,7 +92,7 @@ def test_what_a_work_space_was_used_for_before_changes_no_bit() -> None:
     assert expected == field(place, charge, 2, work).tobytes()
     with on_threads(2):
         nowhere = np.full_like(place, np.nan)
-        tree_sum(COARSE, mixed=True)(nowhere, charge, 0.0, 9e9, work, np.empty_like(place))
+        tree_sum()(nowhere, charge, 0.0, 9e9, work, np.empty_like(place))
     assert expected == field(place, charge, 2, work).tobytes()
     for rubbish in (np.nan, np.inf, -1e300, 3.0):
         work[:] = rubbish
@@ -103,7 +103,8 @@ def test_what_a_work_space_was_used_for_before_changes_no_bit() -> None:
 def test_fewer_charges_in_a_larger_work_space_have_the_same_bits() -> None:
     place, charge = CLOUDS["gaussian"](1000)
     expected = field(place, charge).tobytes()
-    assert expected == field(place, charge, 1, tree_workspace(5000, 1, COARSE)).tobytes()
+    work = tree_workspace(5000, 1, COARSE, mixed=True)
+    assert expected == field(place, charge, 1, work).tobytes()
 
 
 @pytest.mark.parametrize("k", [-60, -1, 3, 40])
@@ -114,10 +115,7 @@ def test_places_times_a_power_of_two_have_fields_over_its_square(shape: str, k: 
     scaled = field(place * 2.0**k, charge) * 2.0 ** (2 * k)
     assert field(place, charge).tobytes() == scaled.tobytes()
     settings = settings_for(1e-4)
-    made, work = (
-        tree_sum(settings, softened=True),
-        tree_workspace(4000, 1, settings, softened=True),
-    )
+    made, work = tree_sum(), tree_workspace(4000, 1, settings, softened=True)
     out, other = np.empty((4, 4000)), np.empty((4, 4000))
     made(place, charge, 1e-4, 9e9, work, out)
     made(place * 2.0**k, charge, 1e-4 * 2.0 ** (2 * k), 9e9, work, other)
@@ -133,13 +131,12 @@ from driftwell.coulomb.tree import settings_for, tree_sum, tree_workspace
 settings = settings_for(1e-2)
 for name in {names}:
     softened = name != "field"
-    made = tree_sum(settings, softened, mixed=True)
     random, digest = np.random.default_rng(6), hashlib.sha256()
     for n in (3, 30, 600, 4000):
         place, charge = random.normal(size=(3, n)), random.uniform(-1.0, 1.0, n)
         out = np.zeros((4 if softened else 3, n))
-        work = tree_workspace(n, 2, settings, softened)
-        made(place, charge, 0.0, 9e9, work, out)
+        work = tree_workspace(n, 2, settings, softened, mixed=True)
+        tree_sum()(place, charge, 0.0, 9e9, work, out)
         digest.update(out.tobytes())
     print(digest.hexdigest())
 """

@@ -76,8 +76,8 @@ def grown(
     settings = TreeSettings(SETTINGS.order, leaf, SETTINGS.tolerance)
     field = np.full_like(place, 7.0)
     with on_threads(threads) as given:
-        work = tree_workspace(q.size, given, settings)
-        tree_sum(settings, mixed=True)(place, q, 0.0, 1.0, work, field)
+        work = tree_workspace(q.size, given, settings, mixed=True)
+        tree_sum()(place, q, 0.0, 1.0, work, field)
     return Grown(place, q, field, _tree_of(work), leaf)
 
 

@@ -12,6 +12,7 @@ import pytest
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE, SPEED_OF_LIGHT
 from driftwell.errors import ScenarioError
 from driftwell.record.reader import Run
+from driftwell.stepping.events import MANY_LOST
 from tests.running import carried_out, points, species, vector
 
 MASS = 100.0 * ATOMIC_MASS
@@ -62,6 +63,44 @@ def test_every_loss_is_kept_with_place_time_wall_and_energy(tmp_path: Path) -> N
     assert 15.0 == pytest.approx(ledger["count_lost"])
     assert 15.0 * ELEMENTARY_CHARGE == pytest.approx(ledger["charge_walls"])
     assert abs(ledger["energy_residual"]) <= 1e-13
+
+
+@pytest.mark.parametrize("count", [MANY_LOST - 50, 2 * MANY_LOST])
+def test_many_charges_lost_in_one_step_leave_with_the_energy_they_have(
+    tmp_path: Path, count: int
+) -> None:
+    """As many as the tree's potentials are taken for at once, and fewer: as the direct sum has it.
+
+    Half of them hit a plane within one step, with more energy in their repulsion than in their
+    motion.
+    """
+    random = np.random.default_rng(1)
+    places = random.normal(0.0, 5e-4, (2 * count, 3))
+    places[::2, 2] = -random.uniform(0.0, 5e-6, count)
+    places[1::2, 2] -= 5e-3
+    speeds = np.tile([0.0, 0.0, 1e3], (2 * count, 1))
+    walls, residual = {}, {}
+    for method in ("direct", "tree"):
+        found = carried_out(
+            tmp_path,
+            2e-8,
+            species={"ion": species(MASS)},
+            coulomb={"method": method, "accuracy": 1e-6, "softening": "50 um"},
+            stepping={"step": "10 ns"},
+            cloud=[{**points("sheet", "ion", places, speeds), "weight": 3e6 / count}],
+            wall=[{"name": "plate", "kind": "plane", "at": ["0 mm", "0 mm", "0 mm"]}],
+        )
+        lost = found.losses()["time"]
+        assert lost.size > 0.98 * count
+        assert (lost < 1e-8).sum() > 0.98 * lost.size
+        ledger = found.ledger[-1]
+        walls[method] = ledger["energy_walls"]
+        residual[method] = ledger["energy_residual"]
+    moving = 0.5 * MASS * 1e6 * 3e6
+    assert walls["direct"] > 5.0 * moving
+    assert walls["direct"] == pytest.approx(walls["tree"], rel=1e-6, abs=0.0)
+    assert abs(residual["direct"]) <= 1e-4
+    assert residual["direct"] == pytest.approx(residual["tree"], abs=1e-6)
 
 
 def test_the_last_charge_lost_ends_the_run(tmp_path: Path) -> None:

@@ -54,8 +54,8 @@ def tree(
 
     chosen = settings or settings_for(accuracy)
     return BareSum(
-        tree_sum(chosen, mixed=accuracy >= MIXED),
-        tree_workspace(charge.size, threads, chosen),
+        tree_sum(),
+        tree_workspace(charge.size, threads, chosen, mixed=accuracy >= MIXED),
         position,
         charge,
         np.empty_like(position),

@@ -111,9 +111,10 @@ def _direct_seconds(contest: Contest) -> float:
 
 
 def _tree_seconds(contest: Contest, n: int) -> float:
-    summed = tree_sum(contest.settings, contest.softened, contest.tree_mixed)
-    work = tree_workspace(n, contest.threads, contest.settings, contest.softened)
-    return _least_seconds(contest, summed, n, work)
+    work = tree_workspace(
+        n, contest.threads, contest.settings, contest.softened, contest.tree_mixed
+    )
+    return _least_seconds(contest, tree_sum(), n, work)
 
 
 def _least_seconds(contest: Contest, summed: PairSum, n: int, work: Floats) -> float:

@@ -37,8 +37,8 @@ from driftwell.coulomb.potential import potential_at, potentials, threaded_poten
 from driftwell.coulomb.tile import BUFFER, TILE, add_across, add_within, fill_tile, take_tile
 from driftwell.kernels import inner_kernel, kernel, threaded_kernel
 from driftwell.kernels.cache_lines import room
-from driftwell.kernels.compiled import CompiledFunction
 from driftwell.kernels.lanes import ROUGH_SCALE, lanes, load, load_some, store_some
+from driftwell.kernels.pointers import CompiledFunction
 
 __all__ = [
     "BUFFER",

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from driftwell.kernels.compiled import CompiledFunction
+from driftwell.kernels.pointers import CompiledFunction
 
 PairSum = CompiledFunction
 """A sum as the time loop takes it: (position, charge, softening2, constant, work, out_field).

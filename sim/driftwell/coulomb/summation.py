@@ -142,8 +142,8 @@ class Summation:
             self.method, self.settings = "tree", self.manner.settings
             self.mixed = self.manner.tree_mixed
             softened = form.softening > 0.0
-            self.pair_sum = tree_sum(self.settings, softened, self.mixed)
-            self.work = tree_workspace(n, threads, self.settings, softened)
+            self.pair_sum = tree_sum()
+            self.work = tree_workspace(n, threads, self.settings, softened, self.mixed)
             self.because = self._why()
         else:
             self.method = "direct"

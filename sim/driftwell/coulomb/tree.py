@@ -23,10 +23,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.coulomb.pair_sum import SIGNATURE, PairSum
-from driftwell.kernels.compiled import CompiledFunction
-from driftwell.tree.cells import tree_room
-from driftwell.tree.expansions import BasisType
-from driftwell.tree.gathering import tree_field_kernel
+from driftwell.kernels.pointers import CompiledFunction
+from driftwell.tree.gathering import tree_room
+from driftwell.tree.stages import tree_field
 
 LEAF_SIZE = 32
 """Charges in a leaf."""
@@ -54,6 +53,13 @@ class TreeSettings:
     leaf: int
     tolerance: float
 
+    def __post_init__(self) -> None:
+        if not 3 <= self.order <= 14 or self.leaf <= 0 or self.leaf % 16 != 0:
+            raise ValueError(
+                f"order {self.order}, leaf {self.leaf}: the order is 3 to 14,"
+                " a leaf holds a multiple of 16"
+            )
+
 
 def settings_for(accuracy: float) -> TreeSettings:
     """Settings whose rms relative force error is below `accuracy`, 1e-8 to 1e-1.
@@ -78,16 +84,19 @@ def tightened(settings: TreeSettings, factor: float) -> TreeSettings:
 
 
 def tree_workspace(
-    n: int, threads: int, settings: TreeSettings, softened: bool = False
+    n: int, threads: int, settings: TreeSettings, softened: bool = False, mixed: bool = False
 ) -> NDArray[np.float64]:
-    """(1, size) float64, work space for the sums of `n` charges, with potentials or without."""
-    of = BasisType(settings.order, softened, False)
-    return tree_room(n, threads, settings.leaf, settings.tolerance, of)
+    """(1, size) float64, work space for the sums of `n` charges, with potentials or without.
+
+    It says how the tree sums: with what settings, whether softened, and whether near pairs are
+    taken in mixed precision. It holds an address, and is of no use to another process.
+    """
+    return tree_room(n, threads, settings.leaf, settings.tolerance, settings.order, softened, mixed)
 
 
-def tree_sum(settings: TreeSettings, softened: bool = False, mixed: bool = False) -> PairSum:
-    """The tree sum as the time loop takes it.
+def tree_sum() -> PairSum:
+    """The tree sum as the time loop takes it, with a work space of :func:`tree_workspace`.
 
     Where its last argument is (4, n), it holds E_x, E_y, E_z and the potential, V.
     """
-    return CompiledFunction(tree_field_kernel(settings.order, softened, mixed), SIGNATURE)
+    return CompiledFunction(tree_field, SIGNATURE)

@@ -124,7 +124,23 @@ def _compiled(function: F, **options: Any) -> F:
         made: F = numba.njit(cache=True, error_model="numpy", nogil=True, **options)(function)
     finally:
         settings.CACHE_DIR = before
+    _take_constants_as_values(made)
     return made
+
+
+def _take_constants_as_values(made: Any) -> None:
+    """Let calls with constants and with variables use one compiled version.
+
+    Left to itself numba compiles a function anew for each constant another calls it with, and all
+    that it calls in turn: the tree's kernels took two and a half times as long.
+    """
+    with_constants = made.get_call_template
+
+    def with_values(args: Any, kws: Any) -> Any:
+        plain: Any = numba.types.unliteral
+        return with_constants([plain(a) for a in args], {k: plain(a) for k, a in kws.items()})
+
+    made.get_call_template = with_values
 
 
 # Serial kernels neither allocate nor return arrays, so they run without numba's reference counts
@@ -201,29 +217,6 @@ def view_kernel(function: F) -> F:
     return _compiled(function, no_cpython_wrapper=True, no_cfunc_wrapper=True)
 
 
-class CompiledFunction(numba.types.WrapperAddressProtocol):
-    """A kernel compiled for one signature, to be handed to other compiled code as a pointer.
-
-    The caller is compiled for the signature, not for the function: it need not be compiled again
-    for another function, nor carry its code.
-    """
-
-    def __init__(self, function: Any, signature: str) -> None:
-        core: Any = numba.core
-        arguments, returned = core.sigutils.normalize_signature(signature)
-        function.compile(arguments)
-        self._function = function
-        self._signature = core.typing.signature(returned, *arguments)
-
-    def signature(self) -> Any:
-        """Numba's signature of the function."""
-        return self._signature
-
-    def __wrapper_address__(self) -> int:
-        """Address of the compiled function, in C's calling convention."""
-        made = self._function.overloads[self._signature.args]
-        return int(made.library.get_pointer_to_function(made.fndesc.llvm_cfunc_wrapper_name))
-
-    def __call__(self, *arguments: Any) -> Any:
-        """Call the function from Python."""
-        return self._function(*arguments)
+def pointed_kernel(function: F) -> F:
+    """A :func:`view_kernel` that is called by its address: its callers do not carry its code."""
+    return _compiled(function, no_cpython_wrapper=True)

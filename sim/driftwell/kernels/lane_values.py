@@ -6,7 +6,7 @@ What compiled code calls is in `lanes.py`; what is here is called while code is 
 from __future__ import annotations
 
 import operator
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING, Any
 
 from llvmlite import ir
@@ -112,6 +112,41 @@ def halved(builder: Any, part: Any, joined: Callable[[Any, Any], Any]) -> Any:
         )
         part = joined(low, high)
     return builder.extract_element(part, ir.Constant(INDEX, 0))
+
+
+_HALVES = ((0, 1, 2, 3, 8, 9, 10, 11), (4, 5, 6, 7, 12, 13, 14, 15))
+_QUARTERS = ((0, 1, 8, 9, 4, 5, 12, 13), (2, 3, 10, 11, 6, 7, 14, 15))
+_NEIGHBOURS = ((0, 8, 2, 10, 4, 12, 6, 14), (1, 9, 3, 11, 5, 13, 7, 15))
+
+
+def _shuffled(builder: Any, a: Any, b: Any, places: Sequence[int]) -> Any:
+    mask = ir.Constant(ir.VectorType(INDEX, WIDTH), list(places))
+    return builder.shuffle_vector(a, b, mask)
+
+
+def added_crosswise(builder: Any, rows: Sequence[Any]) -> Any:
+    """One vector of the sums of eight vectors' lanes: halves are added, quarters, neighbours."""
+    for low, high in (_HALVES, _QUARTERS, _NEIGHBOURS):
+        half = len(rows) // 2
+        rows = [
+            builder.fadd(_shuffled(builder, a, b, low), _shuffled(builder, a, b, high))
+            for a, b in zip(rows[:half], rows[half:], strict=True)
+        ]
+    return rows[0]
+
+
+def turned(builder: Any, rows: Sequence[Any]) -> list[Any]:
+    """Eight vectors turned about the diagonal."""
+    columns = list(rows)
+    for distance, (low, high) in ((1, _NEIGHBOURS), (2, _QUARTERS), (4, _HALVES)):
+        further = list(columns)
+        for k in range(WIDTH):
+            if k & distance == 0:
+                a, b = columns[k], columns[k + distance]
+                further[k] = _shuffled(builder, a, b, low)
+                further[k + distance] = _shuffled(builder, a, b, high)
+        columns = further
+    return columns
 
 
 def emitted_code(function: Callable[..., Any]) -> Callable[..., Any]:

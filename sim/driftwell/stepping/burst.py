@@ -151,7 +151,7 @@ def burst(
                     t = end
                     if met & LOST == 0:
                         break
-                    take_out(plan, surfaces, charges, work)
+                    take_out(pair_sum, plan, surfaces, charges, work)
                 if k > 0 or jump or cursor[CURSOR_FRESH] == 0:
                     settle(work.rate, work.pending, work.total, work.carry)
                     if jump:

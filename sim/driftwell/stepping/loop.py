@@ -139,7 +139,7 @@ class TimeLoop:
         self.promise = Promise(coulomb.accuracy, coulomb_state)
         every = stepping.coulomb_every
         self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
-        self.work = work_space(0, 0, room((1, 1)), False)
+        self.work = work_space(0, 0, room((1, 1)), False, False)
         self._events: list[Events] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
         self._budget = 1
@@ -282,7 +282,8 @@ class TimeLoop:
         self.charges = charges_of(self.particles)
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
-        work = work_space(n, self._surfaces.kind.size, self.summation.work, collapse)
+        tiles, levels = self.summation.work, self.summation.method == "tree"
+        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0

@@ -99,6 +99,7 @@ class Work(NamedTuple):
         the electric one that the step's kicks begin with, V/m
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
+    levels : (4, n) field and potential of the tree, V/m and V; (4, 0) where another sum is used
     search : int64, see coulomb/unresolved.py; empty where no pair can collapse
     block_sums : (blocks, 24), see blocks.py
     rate, pending : see accounts.settle
@@ -118,6 +119,7 @@ class Work(NamedTuple):
     old_field: Floats
     side: NDArray[np.int8]
     tiles: Floats
+    levels: Floats
     search: Ints
     block_sums: Floats
     rate: Floats
@@ -180,12 +182,13 @@ def room_for_events(n: int, surfaces: int) -> int:
     return n * surfaces + 64 * surfaces * 17
 
 
-def work_space(n: int, surfaces: int, tiles: Floats, collapse: bool) -> Work:
+def work_space(n: int, surfaces: int, tiles: Floats, levels: bool, collapse: bool) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
     What a run never writes to takes no memory: the system gives it by the page, when it is used.
 
-    tiles : the pair sum's; collapse : whether opposite charges may fall together
+    tiles : the pair sum's; levels : whether that finds potentials too
+    collapse : whether opposite charges may fall together
     """
     events = 2 * room_for_events(n, surfaces)
     return Work(
@@ -199,6 +202,7 @@ def work_space(n: int, surfaces: int, tiles: Floats, collapse: bool) -> Work:
         old_field=room((3, n)),
         side=np.ones((surfaces, n), dtype=np.int8),
         tiles=tiles,
+        levels=room((4, n if levels else 0)),
         search=search_room(n) if collapse else np.zeros(0, dtype=np.int64),
         block_sums=room((blocks(n), SUMS)),
         rate=np.zeros(RATES),

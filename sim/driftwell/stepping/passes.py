@@ -17,7 +17,7 @@ from numba import prange
 
 from driftwell.fields.table import FieldTable
 from driftwell.kernels import inner_kernel, outer_kernel, threaded_kernel
-from driftwell.kernels.compiled import CompiledFunction
+from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import WORK_INDUCED, enter_rates
 from driftwell.stepping.blocks import (
@@ -204,6 +204,12 @@ def _index(i: int) -> Any:
 
 
 @inner_kernel
+def _signed(i: int) -> Any:
+    """`i` with a sign, as all others are: a parallel loop's index has none."""
+    return np.int64(i)
+
+
+@inner_kernel
 def _over_blocks(
     passes: Passes,
     plan: Plan,
@@ -359,7 +365,7 @@ def _blocks(
     """A pass over all blocks, on all of numba's threads, which take no tuples of tuples."""
     for b in prange(work.block_sums.shape[0]):
         _block(
-            b,
+            _signed(b),
             plan,
             Fields(electric, uniform, magnetic),
             surfaces,

@@ -57,8 +57,9 @@ TURNED = VERDICTS + BATCH
 PATH = 5
 """Numbers of a cell on the path: itself, its waiting cells' begin and end, level, parent."""
 
-TOLERANCE, LEAF, WORKERS, COUNTER, MARKS = 0, 1, 2, 3, 8
-"""Places in the header: settings, the tasks' counter, then begin and length of each region."""
+TOLERANCE, LEAF, WORKERS, COUNTER, PART, MARKS = 0, 1, 2, 3, 4, 8
+"""Places in the header: settings, the tasks' counter, the address of the part (gathering.py), then
+begin and length of each region."""
 _HEADER = 64
 _REGIONS = (
     "place",
@@ -170,8 +171,8 @@ def regions(n: int, threads: int, leaf: int, of: BasisType) -> dict[str, int]:
     }
 
 
-def tree_room(n: int, threads: int, leaf: int, tolerance: float, of: BasisType) -> Floats:
-    """(1, size) float64, work space for `n` charges; pages not used are not touched."""
+def laid_out(n: int, threads: int, leaf: int, tolerance: float, of: BasisType) -> Floats:
+    """(1, size) float64, work space for `n` charges, without the address of its part."""
     lengths = {name: padded(size) for name, size in regions(n, threads, leaf, of).items()}
     work = np.empty((1, _HEADER + sum(lengths.values())))
     header = work[0, :_HEADER]

@@ -10,7 +10,7 @@ Rows of moments (order p - 1) and of local expansions (order p) are padded to fu
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from typing import Any
 
 from llvmlite import ir
@@ -23,15 +23,15 @@ from driftwell.kernels.lane_values import (
     LANES,
     NUMBERS,
     WIDTH,
-    call_llvm,
+    added_crosswise,
     emitted_code,
     repeated,
     repeated_value,
+    turned,
 )
 from driftwell.tree import formulas
+from driftwell.tree.code import Code, at, load_at, read, read_wide, start_of, store_at
 from driftwell.tree.multi_index import Index, cartesian
-
-_ROW = NUMBERS.as_pointer()
 
 
 class BasisType(types.Type):
@@ -79,94 +79,6 @@ basis: Callable[..., BasisType] = intrinsic(prefer_literal=True)(_basis)
 """The basis of an order, from constants: (order, softened, mixed)."""
 
 
-class _Code:
-    """Arithmetic on values of machine code, one number or eight lanes."""
-
-    def __init__(self, builder: Any, wide: bool) -> None:
-        self._builder = builder
-        self._wide = wide
-        self._suffix = "v8f64" if wide else "f64"
-
-    def constant(self, value: float) -> Any:
-        return repeated(value) if self._wide else ir.Constant(ir.DoubleType(), value)
-
-    def fused(self, a: Any, b: Any, c: Any) -> Any:
-        return call_llvm(self._builder, f"llvm.fmuladd.{self._suffix}", a, b, c)
-
-    def times(self, a: Any, b: Any) -> Any:
-        return self._builder.fmul(a, b)
-
-    def add(self, a: Any, b: Any) -> Any:
-        return self._builder.fadd(a, b)
-
-    def subtract(self, a: Any, b: Any) -> Any:
-        return self._builder.fsub(a, b)
-
-
-def _mask(width: int) -> Any:
-    return ir.VectorType(INDEX, width)
-
-
-def _start(context: Any, builder: Any, kind: Any, array: Any, offset: Any) -> Any:
-    """Address of an element of a contiguous array."""
-    return builder.gep(context.make_array(kind)(context, builder, array).data, [offset])
-
-
-def _at(builder: Any, start: Any, k: int) -> Any:
-    return builder.gep(start, [ir.Constant(INDEX, k)])
-
-
-def _read(builder: Any, start: Any, names: Sequence[Index]) -> dict[Index, Any]:
-    """Consecutive numbers, by their indices."""
-    return {n: builder.load(_at(builder, start, k)) for k, n in enumerate(names)}
-
-
-def _read_wide(builder: Any, start: Any, names: Sequence[Index]) -> dict[Index, Any]:
-    """Consecutive vectors, by their indices."""
-    return {n: _load(builder, start, WIDTH * k) for k, n in enumerate(names)}
-
-
-def _load(builder: Any, start: Any, k: int) -> Any:
-    return builder.load(builder.bitcast(_at(builder, start, k), _ROW), align=8)
-
-
-def _store(builder: Any, value: Any, start: Any, k: int) -> None:
-    builder.store(value, builder.bitcast(_at(builder, start, k), _ROW), align=8)
-
-
-def _shuffled(builder: Any, a: Any, b: Any, places: Sequence[int]) -> Any:
-    return builder.shuffle_vector(a, b, ir.Constant(_mask(WIDTH), list(places)))
-
-
-_NEAR = ((0, 8, 2, 10, 4, 12, 6, 14), (1, 9, 3, 11, 5, 13, 7, 15))
-_PAIRS = ((0, 1, 8, 9, 4, 5, 12, 13), (2, 3, 10, 11, 6, 7, 14, 15))
-_HALVES = ((0, 1, 2, 3, 8, 9, 10, 11), (4, 5, 6, 7, 12, 13, 14, 15))
-
-
-def _totals(builder: Any, rows: Sequence[Any]) -> Any:
-    """One vector of the sums of eight vectors' lanes."""
-    for places in (_NEAR, _PAIRS, _HALVES):
-        rows = [
-            builder.fadd(_shuffled(builder, a, b, places[0]), _shuffled(builder, a, b, places[1]))
-            for a, b in zip(rows[::2], rows[1::2], strict=True)
-        ]
-    return rows[0]
-
-
-def _transposed(builder: Any, rows: Sequence[Any]) -> list[Any]:
-    """Eight vectors turned about the diagonal."""
-    columns = list(rows)
-    for distance, places in ((1, _NEAR), (2, _PAIRS), (4, _HALVES)):
-        turned = list(columns)
-        for k in range(WIDTH):
-            if k & distance == 0:
-                a, b = columns[k], columns[k + distance]
-                turned[k] = _shuffled(builder, a, b, places[0])
-                turned[k + distance] = _shuffled(builder, a, b, places[1])
-        columns = turned
-    return columns
-
-
 @emitted_code
 def moment_row(typing: Any, of: Any) -> Any:
     """Length of a row of moments."""
@@ -212,11 +124,11 @@ def add_charges(typing: Any, of: Any, x: Any, y: Any, z: Any, charge: Any, work_
     """Add eight charges to unfolded moments, lane by lane; x, y, z : centre minus place."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=True)
-        start = _start(context, builder, sig.args[5], args[5], ir.Constant(ir.IntType(64), 0))
+        code = Code(builder, wide=True)
+        start = start_of(context, builder, sig.args[5], args[5], ir.Constant(ir.IntType(64), 0))
         made = formulas.monomials(code, args[1:4], of.order - 1, args[4])
         for k, value in enumerate(made.values()):
-            _store(builder, code.add(_load(builder, start, WIDTH * k), value), start, WIDTH * k)
+            store_at(builder, code.add(load_at(builder, start, WIDTH * k), value), start, WIDTH * k)
         return context.get_dummy_value()
 
     return types.void(of, LANES, LANES, LANES, LANES, work_lanes), emitted
@@ -228,19 +140,19 @@ def finish_moments(typing: Any, of: Any, work_lanes: Any, out_moments: Any, firs
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         zero = ir.Constant(ir.IntType(64), 0)
-        lanes_start = _start(context, builder, sig.args[1], args[1], zero)
-        out = _start(context, builder, sig.args[2], args[2], args[3])
+        lanes_start = start_of(context, builder, sig.args[1], args[1], zero)
+        out = start_of(context, builder, sig.args[2], args[2], args[3])
         names = cartesian(of.order - 1)
         full = {}
         for k in range(0, len(names), WIDTH):
-            rows = [_load(builder, lanes_start, WIDTH * (k + each)) for each in range(WIDTH)]
-            summed = _totals(builder, rows)
+            rows = [load_at(builder, lanes_start, WIDTH * (k + each)) for each in range(WIDTH)]
+            summed = added_crosswise(builder, rows)
             for each, n in enumerate(names[k : k + WIDTH]):
                 full[n] = builder.extract_element(summed, ir.Constant(INDEX, each))
-        code = _Code(builder, wide=False)
+        code = Code(builder, wide=False)
         made = full if of.softened else formulas.folded(code, full, of.order - 1)
         for k, n in enumerate(of.moments):
-            builder.store(made[n], _at(builder, out, k))
+            builder.store(made[n], at(builder, out, k))
         return context.get_dummy_value()
 
     return types.void(of, work_lanes, out_moments, types.int64), emitted
@@ -253,13 +165,13 @@ def add_moments(
     """Add a child's row of moments to its parent's; x, y, z : parent's centre minus child's."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=False)
-        source = _start(context, builder, sig.args[4], args[4], args[5])
-        sink = _start(context, builder, sig.args[4], args[4], args[6])
-        own = _read(builder, source, of.moments)
+        code = Code(builder, wide=False)
+        source = start_of(context, builder, sig.args[4], args[4], args[5])
+        sink = start_of(context, builder, sig.args[4], args[4], args[6])
+        own = read(builder, source, of.moments)
         made = formulas.shifted_moments(code, own, args[1:4], of.order - 1, of.softened)
         for k, n in enumerate(of.moments):
-            place = _at(builder, sink, k)
+            place = at(builder, sink, k)
             builder.store(code.add(builder.load(place), made[n]), place)
         return context.get_dummy_value()
 
@@ -279,23 +191,23 @@ def side_by_side(
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         wide = ir.IntType(64)
-        chosen = _start(context, builder, sig.args[3], args[3], args[4])
-        out = _start(context, builder, sig.args[5], args[5], ir.Constant(wide, 0))
+        chosen = start_of(context, builder, sig.args[3], args[3], args[4])
+        out = start_of(context, builder, sig.args[5], args[5], ir.Constant(wide, 0))
         starts = []
         for c in range(WIDTH):
-            cell = builder.load(_at(builder, chosen, c))
+            cell = builder.load(at(builder, chosen, c))
             starts.append(
-                _start(context, builder, sig.args[0], args[0], builder.mul(cell, args[2]))
+                start_of(context, builder, sig.args[0], args[0], builder.mul(cell, args[2]))
             )
         with cgutils.for_range_slice(
             builder, ir.Constant(wide, 0), args[1], ir.Constant(wide, WIDTH), intp=wide
         ) as (k, _):
-            columns = _transposed(
-                builder, [_load(builder, builder.gep(each, [k]), 0) for each in starts]
+            columns = turned(
+                builder, [load_at(builder, builder.gep(each, [k]), 0) for each in starts]
             )
             place = builder.gep(out, [builder.mul(k, ir.Constant(wide, WIDTH))])
             for each, column in enumerate(columns):
-                _store(builder, column, place, WIDTH * each)
+                store_at(builder, column, place, WIDTH * each)
         return context.get_dummy_value()
 
     return types.void(rows, types.int64, types.int64, which, types.int64, out_lanes), emitted
@@ -311,21 +223,21 @@ def add_cells(
     """
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=True)
+        code = Code(builder, wide=True)
         zero = ir.Constant(ir.IntType(64), 0)
-        source = _start(context, builder, sig.args[5], args[5], zero)
-        sink = _start(context, builder, sig.args[6], args[6], zero)
+        source = start_of(context, builder, sig.args[5], args[5], zero)
+        sink = start_of(context, builder, sig.args[6], args[6], zero)
         derivative = formulas.derivatives(code, args[1:4], args[4], of.order, of.softened)
         made = formulas.local_terms(
             code,
-            _read_wide(builder, source, of.moments),
+            read_wide(builder, source, of.moments),
             derivative,
             of.order,
             of.softened,
-            _read_wide(builder, sink, of.locals),
+            read_wide(builder, sink, of.locals),
         )
         for k, n in enumerate(of.locals):
-            _store(builder, made[n], sink, WIDTH * k)
+            store_at(builder, made[n], sink, WIDTH * k)
         return context.get_dummy_value()
 
     return types.void(of, LANES, LANES, LANES, LANES, moments, work_local), emitted
@@ -338,12 +250,12 @@ def add_far_charges(
     """Add the local expansions of eight charges, lane by lane; x, y, z : centre minus places."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=True)
-        sink = _start(context, builder, sig.args[6], args[6], ir.Constant(ir.IntType(64), 0))
+        code = Code(builder, wide=True)
+        sink = start_of(context, builder, sig.args[6], args[6], ir.Constant(ir.IntType(64), 0))
         derivative = formulas.derivatives(code, args[1:4], args[4], of.order, of.softened)
         for k, n in enumerate(of.locals):
-            value = code.fused(args[5], derivative[n], _load(builder, sink, WIDTH * k))
-            _store(builder, value, sink, WIDTH * k)
+            value = code.fused(args[5], derivative[n], load_at(builder, sink, WIDTH * k))
+            store_at(builder, value, sink, WIDTH * k)
         return context.get_dummy_value()
 
     return types.void(of, LANES, LANES, LANES, LANES, LANES, work_local), emitted
@@ -356,12 +268,12 @@ def field_of_cell(
     """Field and potential of one cell at eight places; x, y, z : places minus its centre."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=True)
-        source = _start(context, builder, sig.args[5], args[5], args[6])
+        code = Code(builder, wide=True)
+        source = start_of(context, builder, sig.args[5], args[5], args[6])
         derivative = formulas.derivatives(code, args[1:4], args[4], of.order, of.softened)
         own = {
             n: repeated_value(builder, value, NUMBERS)
-            for n, value in _read(builder, source, of.moments).items()
+            for n, value in read(builder, source, of.moments).items()
         }
         wanted = [(1, 0, 0), (0, 1, 0), (0, 0, 1), (0, 0, 0)]
         nothing = dict.fromkeys(wanted, code.constant(0.0))
@@ -378,14 +290,14 @@ def add_lanes(typing: Any, of: Any, work_local: Any, locals_: Any, first: Any) -
     """Add the sums of the lanes to a row of local expansions, and clear the lanes."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        source = _start(context, builder, sig.args[1], args[1], ir.Constant(ir.IntType(64), 0))
-        sink = _start(context, builder, sig.args[2], args[2], args[3])
+        source = start_of(context, builder, sig.args[1], args[1], ir.Constant(ir.IntType(64), 0))
+        sink = start_of(context, builder, sig.args[2], args[2], args[3])
         for k in range(0, padded(len(of.locals)), WIDTH):
-            rows = [_load(builder, source, WIDTH * (k + each)) for each in range(WIDTH)]
-            summed = builder.fadd(_load(builder, sink, k), _totals(builder, rows))
-            _store(builder, summed, sink, k)
+            rows = [load_at(builder, source, WIDTH * (k + each)) for each in range(WIDTH)]
+            summed = builder.fadd(load_at(builder, sink, k), added_crosswise(builder, rows))
+            store_at(builder, summed, sink, k)
             for each in range(WIDTH):
-                _store(builder, repeated(0.0), source, WIDTH * (k + each))
+                store_at(builder, repeated(0.0), source, WIDTH * (k + each))
         return context.get_dummy_value()
 
     return types.void(of, work_local, locals_, types.int64), emitted
@@ -398,15 +310,15 @@ def pass_down(
     """Overwrite a child's row with its parent's; x, y, z : child's centre minus parent's."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        code = _Code(builder, wide=False)
-        source = _start(context, builder, sig.args[4], args[4], args[5])
-        sink = _start(context, builder, sig.args[4], args[4], args[6])
-        own = _read(builder, source, of.locals)
+        code = Code(builder, wide=False)
+        source = start_of(context, builder, sig.args[4], args[4], args[5])
+        sink = start_of(context, builder, sig.args[4], args[4], args[6])
+        own = read(builder, source, of.locals)
         made = formulas.shifted_locals(code, own, args[1:4], of.order, of.softened)
         for k, n in enumerate(of.locals):
-            builder.store(made[n], _at(builder, sink, k))
+            builder.store(made[n], at(builder, sink, k))
         for k in range(len(of.locals), padded(len(of.locals))):
-            builder.store(ir.Constant(ir.DoubleType(), 0.0), _at(builder, sink, k))
+            builder.store(ir.Constant(ir.DoubleType(), 0.0), at(builder, sink, k))
         return context.get_dummy_value()
 
     number = types.float64
@@ -418,9 +330,9 @@ def field_of(typing: Any, of: Any, x: Any, y: Any, z: Any, locals_: Any, first: 
     """Field and potential of a local expansion at eight places; x, y, z : place minus centre."""
 
     def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
-        narrow, code = _Code(builder, wide=False), _Code(builder, wide=True)
-        source = _start(context, builder, sig.args[4], args[4], args[5])
-        own = _read(builder, source, of.locals)
+        narrow, code = Code(builder, wide=False), Code(builder, wide=True)
+        source = start_of(context, builder, sig.args[4], args[4], args[5])
+        own = read(builder, source, of.locals)
         full = own if of.softened else formulas.unfolded(narrow, own, of.order)
         everywhere = {n: repeated_value(builder, value, NUMBERS) for n, value in full.items()}
         found = formulas.local_field(code, everywhere, args[1:4], of.order, True)
