@@ -69,7 +69,7 @@ def test_every_loss_is_kept_with_place_time_wall_and_energy(tmp_path: Path) -> N
 def test_many_charges_lost_in_one_step_leave_with_the_energy_they_have(
     tmp_path: Path, count: int
 ) -> None:
-    """As many as the tree's potentials are taken for at once, and fewer: as the direct sum has it.
+    """So many that the tree finds their potentials at once, and fewer: as the direct sum has it.
 
     Half of them hit a plane within one step, with more energy in their repulsion than in their
     motion.

@@ -12,7 +12,7 @@ import numpy as np
 from bench_cases.timing import driftwell_run
 
 THREADS = min(2, os.cpu_count() or 1)
-COUNT, STEPS = 1_000_000, 20
+COUNT, STEPS = 1_000_000, 100
 STEP = 1.0 / (1.1e6 * 100.0)
 
 SCENARIO = """
@@ -73,7 +73,7 @@ def text(n: int, steps: int, records: int) -> str:
 
 
 def run_1e6(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
-    """Fields, walls, ledger, record and answers of 20 steps: seconds a step, over a bare sum's."""
+    """Fields, walls, ledger, record and answers of 100 steps: seconds a step, over a bare sum's."""
     from driftwell.coulomb.form import Coulomb
     from driftwell.coulomb.promise import Promise, Scene
     from driftwell.coulomb.summation import Summation

@@ -29,9 +29,9 @@ from driftwell.tree.stages import tree_field
 
 LEAF_SIZE = 32
 """Charges in a leaf."""
-_ORDERS = ((2e-3, 4), (3e-4, 6), (2e-6, 8), (2e-7, 10), (0.0, 12))
+_ORDERS = ((3e-3, 6), (3e-6, 8), (2e-7, 10), (0.0, 12))
 """The order that costs least, from an accuracy on."""
-_ERRORS = {4: 1.6e-3, 6: 6e-4, 8: 4e-4, 10: 3e-4, 12: 2e-4}
+_ERRORS = {6: 6e-4, 8: 4e-4, 10: 3e-4, 12: 2e-4}
 """Rms relative errors of the hardest cloud at a tolerance of :data:`_REFERENCE`, by order."""
 _REFERENCE = 1e-3
 _SLOPE = 0.75

@@ -134,7 +134,9 @@ def _take_constants_as_values(made: Any) -> None:
     Left to itself numba compiles a function anew for each constant another calls it with, and all
     that it calls in turn: the tree's kernels took two and a half times as long.
     """
-    with_constants = made.get_call_template
+    with_constants = getattr(made, "get_call_template", None)
+    if with_constants is None:  # numba is switched off, which the command line refuses
+        return
 
     def with_values(args: Any, kws: Any) -> Any:
         plain: Any = numba.types.unliteral
