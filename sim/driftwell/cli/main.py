@@ -130,9 +130,14 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; returns its exit code."""
     write_anything()
     try:
-        asked = _parser().parse_args(arguments)
+        return _answered(arguments)
     finally:
         flush_quietly()
+
+
+def _answered(arguments: Sequence[str] | None) -> int:
+    """The exit code of the command; errors and defects have been told."""
+    asked = _parser().parse_args(arguments)
     try:
         with warnings.catch_warnings():
             if not sys.warnoptions:  # meant for whoever works on the libraries, not for the user
