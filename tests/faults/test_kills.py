@@ -8,7 +8,6 @@ from __future__ import annotations
 import multiprocessing
 import os
 import random
-import signal
 import time
 from pathlib import Path
 from typing import Any
@@ -23,7 +22,7 @@ from tests.cli.small_runs import scenario
 KILLS = int(os.environ.get("DRIFTWELL_KILLS", "20"))
 CROWD = """\
 title = "Ions that leave a trap"
-duration = "24 us"
+duration = "{duration} us"
 seed = 5
 
 [[cloud]]
@@ -112,7 +111,10 @@ def test_a_run_killed_again_and_again_ends_where_the_unbroken_one_does(
     method: str, count: int, tmp_path: Path
 ) -> None:
     """Half of the kills of all; before some a warning comes, as on a cluster."""
-    path = scenario(tmp_path, CROWD.format(method=method, count=count, weight=10000 / count))
+    text = CROWD.format(
+        method=method, count=count, weight=10_000 / count, duration=6 * (KILLS // 5)
+    )
+    path = scenario(tmp_path, text)
     words = ["run", str(path), "--no-pictures", "--threads", "1", "-o"]
     whole = begun([*words, str(tmp_path / "whole")])
     whole.join(300)
@@ -130,7 +132,7 @@ def test_a_run_killed_again_and_again_ends_where_the_unbroken_one_does(
             time.sleep(0.005)
         time.sleep(chance.uniform(0.0, 0.15))
         if chance.random() < 0.3:
-            os.kill(process.pid, signal.SIGTERM)
+            process.terminate()
             warned += 1
             time.sleep(chance.uniform(0.0, 0.02))
         process.kill()
