@@ -202,12 +202,13 @@ def test_the_record_of_a_run_that_went_on_is_that_of_one_that_was_not_stopped(
     tmp_path: Path,
 ) -> None:
     """Every dataset and answer, after stops within intervals."""
-    given = ("duration=40 ms", "record.every=10 ms", "stepping.step=20 ns")
+    given = ("duration=2 ms", "record.every=0.5 ms", "stepping.step=20 ns")
+    given += ("cloud.load.count=100", "coulomb.softening=5 um")
     (tmp_path / "whole").mkdir()
     assert 0 == run(tmp_path / "whole", *given)
     (tmp_path / "parts").mkdir()
     stops = 0
-    while (code := run(tmp_path / "parts", *given, more=("--stop-after", "0.3 s"))) == 4:
+    while (code := run(tmp_path / "parts", *given, more=("--stop-after", "0.2 s"))) == 4:
         stops += 1
         assert stops < 50
     assert 0 == code

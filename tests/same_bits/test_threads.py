@@ -179,4 +179,5 @@ def test_a_whole_run_leaves_the_same_record_on_one_thread_and_two(tmp_path: Path
     first, second = one.state(), two.state()
     assert first.keys() == second.keys()
     for name, values in first.items():
-        assert values.tobytes() == second[name].tobytes(), name
+        if name != "run/seconds":
+            assert values.tobytes() == second[name].tobytes(), name
