@@ -30,6 +30,7 @@ from driftwell.particles.state import Particles
 from driftwell.record.claim import refuse_taken
 from driftwell.record.form import DEFAULT_TRACKS
 from driftwell.record.header import Header, trace_name
+from driftwell.record.heartbeat import Heartbeat
 from driftwell.record.layout import dataset
 from driftwell.record.outcome import Outcome
 from driftwell.record.reader import open_run
@@ -72,7 +73,7 @@ class Observer(Protocol):
         """What will be done is settled; compilation may come next, then the first step."""
 
     def told(self, sentence: str) -> None:
-        """What a user should know of the Coulomb sum: which it is and why, how much it errs."""
+        """What a user should know: which Coulomb sum and why, how much it errs; too little room."""
 
     def goes_on(self, progress: Progress) -> bool:
         """Called about twice a second; False asks the run to stop."""
@@ -92,8 +93,17 @@ class Result:
     broken: Broken | None = None
 
 
-def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int = 1) -> Result:
+def run(
+    loaded: LoadedScenario,
+    folder: Path,
+    observer: Observer,
+    threads: int = 1,
+    *,
+    force: bool = False,
+) -> Result:
     """Execute a scenario, leaving its record in `folder`.
+
+    force : begin even where memory or disk look too small; the observer is told
 
     Raises
     ------
@@ -103,19 +113,25 @@ def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int =
         The folder holds another run or cannot be written; the text says what is kept.
     """
     with on_threads(threads) as given:
-        return _Execution(loaded, folder, observer, given).result()
+        return _Execution(loaded, folder, observer, given, force).result()
 
 
 class _Execution:
     """A run while it goes on."""
 
     def __init__(
-        self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
+        self,
+        loaded: LoadedScenario,
+        folder: Path,
+        observer: Observer,
+        threads: int,
+        force: bool = False,
     ) -> None:
         created = datetime.now(UTC).isoformat(timespec="seconds")
         refuse_taken(folder, loaded.text.encode())
-        parts = assembled(loaded)
-        refuse_beyond_disk(parts.extent, folder)
+        warn = observer.told if force else None
+        parts = assembled(loaded, warn)
+        refuse_beyond_disk(parts.extent, folder, warn)
         scenario = parts.scenario
         self._scenario = scenario
         self._folder = folder
@@ -124,7 +140,7 @@ class _Execution:
         self._born = len(parts.particles)
         self._choice = parts.choice
         self._schedule = parts.schedule
-        self._tracked = _tracked(scenario, parts.particles)
+        self._tracked = tracked_ids(scenario, parts.particles)
         observer.begins(parts.choice, parts.schedule, parts.particles)
         self._loop = parts.time_loop(threads)
         summation = self._loop.summation
@@ -155,6 +171,7 @@ class _Execution:
                 created=created,
             ),
         )
+        self._heartbeat = Heartbeat(folder)
         self._ledger = Ledger()
         self._row: LedgerRow | None = None
         self._state: dict[str, Any] = {}
@@ -203,17 +220,20 @@ class _Execution:
         return str(fault)
 
     def _keep_going(self) -> bool:
+        progress = self._progress()
+        self._heartbeat.beats(progress)
+        return self._observer.goes_on(progress)
+
+    def _progress(self) -> Progress:
         loop = self._loop
-        return self._observer.goes_on(
-            Progress(
-                time=loop.time,
-                duration=self._scenario.duration,
-                alive=int(np.count_nonzero(loop.charges.alive)),
-                born=self._born,
-                steps=loop.steps_done,
-                all_steps=self._schedule.total_steps,
-                energy_residual=0.0 if self._row is None else self._row.energy_residual,
-            )
+        return Progress(
+            time=loop.time,
+            duration=self._scenario.duration,
+            alive=int(np.count_nonzero(loop.charges.alive)),
+            born=self._born,
+            steps=loop.steps_done,
+            all_steps=self._schedule.total_steps,
+            energy_residual=0.0 if self._row is None else self._row.energy_residual,
         )
 
     def _record(self, mark: int, last: bool = False) -> None:
@@ -227,15 +247,15 @@ class _Execution:
         self._row = self._ledger.close(
             time, loop.plan, loop.charges, loop.work, loop.summation, error
         )
-        writer.ledger(_ledger_row(self._row))
+        writer.ledger(ledger_rows(self._row))
         for events in loop.take_events():
             self._keep_events(events)
         for times, values in loop.take_samples():
             writer.trace(times, values)
         loop.remove_lost()
         if flags & RECORD or last:
-            writer.trajectory(time, _tracks(loop.particles, self._tracked))
-            writer.moments(time, _moment_rows(loop.particles, self._clouds))
+            writer.trajectory(time, tracks_of(loop.particles, self._tracked))
+            writer.moments(time, moment_rows(loop.particles, self._clouds))
         if flags & SNAPSHOT or last:
             writer.snapshot(time, loop.particles)
         self._keep_state()
@@ -287,6 +307,7 @@ class _Execution:
             steps=self._loop.steps_done,
         )
         self._writer.finish(outcome, answers)
+        self._heartbeat.ends(self._progress(), word, sentence)
         if self._row is None:
             raise ScenarioError("the run kept no record")
         return Result(
@@ -301,7 +322,7 @@ def _command(loaded: LoadedScenario) -> str:
     return text.encode(errors="backslashreplace").decode()  # names of files may be no text
 
 
-def _tracked(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:
+def tracked_ids(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:
     """Ids of the charges whose trajectories are kept, evenly chosen."""
     count = len(particles)
     wanted = scenario.record.tracks
@@ -309,7 +330,7 @@ def _tracked(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:
     return np.unique(np.linspace(0, count - 1, wanted).round().astype(np.int64))
 
 
-def _tracks(particles: Particles, tracked: NDArray[np.int64]) -> NDArray[np.float64]:
+def tracks_of(particles: Particles, tracked: NDArray[np.int64]) -> NDArray[np.float64]:
     """State (tracked, 6) of the tracked charges, NaN where lost."""
     rows = np.full((len(tracked), 6), np.nan)
     if len(particles) == 0:
@@ -321,7 +342,7 @@ def _tracks(particles: Particles, tracked: NDArray[np.int64]) -> NDArray[np.floa
     return rows
 
 
-def _moment_rows(particles: Particles, clouds: Sequence[CloudFacts]) -> NDArray[Any]:
+def moment_rows(particles: Particles, clouds: Sequence[CloudFacts]) -> NDArray[Any]:
     """One row of moments for each cloud."""
     rows = np.zeros(len(clouds), dataset("moments").dtype())
     for row, cloud in zip(rows, clouds, strict=True):
@@ -334,7 +355,7 @@ def _moment_rows(particles: Particles, clouds: Sequence[CloudFacts]) -> NDArray[
     return rows
 
 
-def _ledger_row(row: LedgerRow) -> NDArray[Any]:
+def ledger_rows(row: LedgerRow) -> NDArray[Any]:
     """A ledger row in the record's type."""
     made = np.zeros(1, dataset("ledger").dtype())
     for name in dataset("ledger").dtype().names or ():

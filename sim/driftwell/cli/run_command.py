@@ -24,25 +24,30 @@ UNUSABLE = 2
 
 
 def run_command(
-    file: str, output: str | None, settings: Sequence[str], threads: int, pictures: bool
+    file: str,
+    output: str | None,
+    settings: Sequence[str],
+    threads: int,
+    pictures: bool,
+    force: bool = False,
 ) -> int:
     """Execute a scenario; returns the exit code of its outcome, or 2 with a message."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-run")
     try:
         loaded = read_scenario(file, settings)
         tell(loaded.scenario.title)
-        result, written = _carried_out(loaded, folder, threads, pictures)
+        result, written = _carried_out(loaded, folder, threads, pictures, force)
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
     except MemoryError as error:
-        tell(_too_little_memory(error))
+        tell(too_little_memory(error))
         return UNUSABLE
     return result.outcome.exit_code or (0 if written else UNUSABLE)
 
 
 def _carried_out(
-    loaded: LoadedScenario, folder: Path, threads: int, pictures: bool
+    loaded: LoadedScenario, folder: Path, threads: int, pictures: bool, force: bool
 ) -> tuple[Result, bool]:
     """The run's result, and whether all that was to be printed and drawn could be."""
     wish = StopWish((folder / MASTER).exists)
@@ -50,7 +55,7 @@ def _carried_out(
     with wish.listening():
         try:
             with first_compilation(display.compiles):
-                result = run(loaded, folder, display, threads)
+                result = run(loaded, folder, display, threads, force=force)
         finally:
             display.ends()
         written = _report(result)
@@ -108,7 +113,8 @@ def _draw(folder: Path) -> bool:
     return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])
 
 
-def _too_little_memory(error: MemoryError) -> str:
+def too_little_memory(error: MemoryError) -> str:
+    """What to say where the system gives no more memory."""
     why = f" ({error})" if str(error) else ""
     return (
         f"This machine has too little memory for the run{why}. Take fewer charges of more weight "
