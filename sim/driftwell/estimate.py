@@ -35,8 +35,9 @@ from driftwell.timed_run import (
 
 Part = Literal["the pair sum", "fields and motion", "the record"]
 
-NOISE = 0.1
-"""Part of its time by which a run may differ on a quiet machine from what was timed."""
+NOISE, NOISE_OF_FEW, FEW = 0.1, 0.3, 10
+"""Part of its time by which a run may differ from what was timed, at the least; more where only few
+steps could be timed, and how many are few."""
 WORTH = 0.95
 """Of the time: what a change must bring it below to be named."""
 _RECORD, _OFF, _HALF = 0.1, 0.15, 0.25
@@ -176,8 +177,9 @@ def _whole(
     seconds = stepping + recording
     power = 1 if summation.method == "tree" else 2
     kept = _kept(times.stretch, steps, power), _kept(times.stretch, steps, 1)
-    shortest = min(times.stretch.fastest / times.stretch.step, 1.0 - NOISE)
-    longest = max(times.stretch.slowest / times.stretch.step, 1.0 + NOISE)
+    noise = NOISE if times.stretch.steps >= FEW else NOISE_OF_FEW
+    shortest = min(times.stretch.fastest / times.stretch.step, 1.0 - noise)
+    longest = max(times.stretch.slowest / times.stretch.step, 1.0 + noise)
     fewer = pairs * kept[0] + (stepping - pairs) * kept[1]
     return Estimate(
         charges=extent.charges,

@@ -104,7 +104,7 @@ def test_a_folder_taken_while_the_run_is_prepared_is_told(
 ) -> None:
     real = command_module.run
 
-    def late(loaded: object, folder: Path, display: object, threads: int) -> object:
+    def late(loaded: object, folder: Path, display: object, threads: int, **more: object) -> object:
         begins = display.begins  # type: ignore[attr-defined]
 
         def takes(*given: object) -> None:
@@ -112,7 +112,7 @@ def test_a_folder_taken_while_the_run_is_prepared_is_told(
             (folder / SEGMENTS).mkdir(parents=True)
 
         monkeypatch.setattr(display, "begins", takes)
-        return real(loaded, folder, display, threads)  # type: ignore[arg-type]
+        return real(loaded, folder, display, threads, **more)  # type: ignore[arg-type]
 
     monkeypatch.setattr(command_module, "run", late)
     assert 2 == run(tmp_path, tmp_path / "run")

@@ -5,16 +5,24 @@ from __future__ import annotations
 import json
 import math
 import os
+import re
 import subprocess
 import sys
 import time
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 from pathlib import Path
 
 import pytest
 
 from driftwell.errors import RecordError
-from driftwell.record.heartbeat import EVERY, PROGRESS_FILE, Heartbeat, process_mark, read_sign
+from driftwell.record.heartbeat import (
+    EVERY,
+    PROGRESS_FILE,
+    Heartbeat,
+    Sign,
+    process_mark,
+    read_sign,
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,6 +70,13 @@ def test_it_says_how_far_the_run_is_and_who_carries_it_out(
     assert (1.7e9, 1.7e9 + 10.0) == (sign.start, sign.stamp)
     assert (10.0, 10.0, 30.0) == (sign.stepping, sign.gap, sign.left)
     assert process_mark(os.getpid()) == sign.mark
+
+
+def test_every_key_of_the_file_stands_on_the_page_of_the_format() -> None:
+    page = (Path(__file__).resolve().parents[2] / "docs" / "record-format.md").read_text()
+    table = page.partition("## Progress")[2]
+    keys = re.findall(r"`(\w+)`", "".join(re.findall(r"^\|([^|]*)\|", table, re.MULTILINE)))
+    assert {each.name for each in fields(Sign)} == set(keys)
 
 
 def test_it_beats_at_once_and_then_every_other_second(

@@ -85,8 +85,10 @@ def _live(watched: _Watched) -> int:
     quiet_since = time.monotonic()
     try:
         while True:
+            began = time.monotonic()
             rows = watched.rows()
             now = time.monotonic()
+            wait = max(_REDRAWN, now - began)  # many runs take a while to look at
             if not rows or any(row.condition.state in {"going on", "silent"} for row in rows):
                 quiet_since = now
             over = now - quiet_since >= _QUIET or (
@@ -99,7 +101,7 @@ def _live(watched: _Watched) -> int:
             before = lines
             if over:
                 return 0
-            time.sleep(_REDRAWN)
+            time.sleep(wait)
     except KeyboardInterrupt:
         sys.stdout.write("\n")
         sys.stdout.flush()
