@@ -7,6 +7,7 @@ from collections.abc import Iterable
 from pathlib import Path
 
 from driftwell.record.claim import SCENARIO_FILE
+from driftwell.record.heartbeat import EVERY, PROGRESS_FILE
 from driftwell.record.index import SEGMENTS
 from driftwell.record.layout import (
     ANSWERS,
@@ -39,6 +40,7 @@ writer and the reader follow (`record/layout.py`); change the table, not the pag
 | `{MASTER}` | the master: shows all segments in one piece; replaced as a whole at each segment |
 | `{ANSWERS_FILE}` | answers and outcome; there once the run has ended or was stopped |
 | `{LAST_FILE}` | of a run that was stopped or failed: a snapshot at its last record |
+| `{PROGRESS_FILE}` | how far the run is, for whoever watches it; no part of the record |
 | `{LOCK}` | which process works in the folder; there meanwhile, or after a kill |
 
 A file ending in `.part` was being written when the run was cut off; it is not part of the record.
@@ -68,6 +70,28 @@ samples later than its last record. Names and types are kept as given and read b
 (`open_run(folder).state()`). The master links the newest state.
 """
 
+PROGRESS = f"""\
+## Progress
+
+`{PROGRESS_FILE}` is a JSON table, replaced as a whole every {EVERY:g} s or more while the run goes
+on, and once at its end. Nothing depends on it: it is not forced to disk, may be missing or old, and
+may be removed. Lengths of time are measured by a clock that only goes forward.
+
+| key | unit | meaning |
+| --- | --- | --- |
+| `time`, `duration` | s | how far the motion was followed, and how far it is to be |
+| `steps`, `all_steps` | 1 | steps taken, and of the whole run |
+| `alive`, `born` | 1 | simulated charges left, and all there ever were |
+| `energy_residual` | 1 | at the last record; null where it is not a number |
+| `outcome`, `sentence` | | how the run ended; empty while it goes on |
+| `process`, `host` | | number of the process, name of the machine |
+| `mark` | | tells the process from later ones of its number |
+| `start`, `stamp` | s | time of day (Unix) of the first writing and of this one |
+| `stepping` | s | since the first writing |
+| `gap` | s | the longest time between two writings |
+| `left` | s | that the run will take at its present pace; null where that is not known |
+"""
+
 
 def page() -> str:
     """The whole page."""
@@ -87,6 +111,7 @@ def page() -> str:
         "## Answers\n",
         _dataset(ANSWERS),
         f"The group `outcome` in `{ANSWERS_FILE}` has the attributes:\n\n" + _attributes(OUTCOME),
+        PROGRESS,
     ]
     return "\n".join(parts)
 

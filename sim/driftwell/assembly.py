@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -24,7 +24,7 @@ from driftwell.record.header import trace_name
 from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
-from driftwell.scenario.room import Extent, extent_of, refuse_beyond_memory
+from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
 from driftwell.stepping.loop import TimeLoop, Traced
 from driftwell.stepping.motion import Fields
 from driftwell.stepping.schedule import (
@@ -97,8 +97,10 @@ class Assembly:
         )
 
 
-def assembled(loaded: LoadedScenario) -> Assembly:
+def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
     """Put a scenario together.
+
+    warn : where given, it is told that the run would not fit in memory, and nothing is refused
 
     Raises
     ------
@@ -110,14 +112,16 @@ def assembled(loaded: LoadedScenario) -> Assembly:
     species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
     amounts = [cloud.amount(bodies, loaded.folder) for cloud in scenario.cloud]
     charges = sum(amount.count for amount in amounts)
-    refuse_beyond_memory(extent_of(scenario, charges))
+    warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
     _check_births(scenario, particles)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests)
     samples = scenario.duration / every if requests else 0.0
     extent = extent_of(scenario, charges, int(samples), len(requests))
-    refuse_beyond_memory(extent)
+    if not warned:
+        refuse_beyond_memory(extent, warn)
+    plan = _schedule(scenario, choice.step, bool(requests), every)
     return Assembly(
         scenario,
         bodies,
@@ -126,9 +130,17 @@ def assembled(loaded: LoadedScenario) -> Assembly:
         tuple(clouds),
         tuple(requests),
         choice,
-        _schedule(scenario, choice.step, bool(requests), every),
-        extent,
+        plan,
+        _counted(extent, plan),
     )
+
+
+def _counted(extent: Extent, plan: Schedule) -> Extent:
+    """The extent with the records, samples and snapshots that the schedule really has."""
+    records, samples, snapshots = (
+        int(np.count_nonzero(plan.flags & flag)) for flag in (RECORD, TRACE, SNAPSHOT)
+    )
+    return replace(extent, records=records, samples=samples, snapshots=snapshots)
 
 
 def _loaded_particles(

@@ -28,6 +28,7 @@ from driftwell.particles.state import Particles
 from driftwell.record.claim import holds_run, refuse_taken, unwritable
 from driftwell.record.earlier import clear_unsealed, differences, earlier_run, put_aside
 from driftwell.record.header import Header, trace_name
+from driftwell.record.heartbeat import Heartbeat
 from driftwell.record.lock import held
 from driftwell.record.outcome import Outcome
 from driftwell.record.reader import Run, open_run
@@ -85,7 +86,7 @@ class Observer(Protocol):
         """What will be done is settled; compilation may come next, then the first step."""
 
     def told(self, sentence: str) -> None:
-        """What a user should know of the Coulomb sum: which it is and why, how much it errs."""
+        """What a user should know: which Coulomb sum and why, how much it errs; too little room."""
 
     def goes_on(self, progress: Progress) -> bool:
         """Called about twice a second; False asks the run to stop."""
@@ -113,6 +114,7 @@ def run(
     *,
     fresh: bool = False,
     stop_after: float | None = None,
+    force: bool = False,
 ) -> Result:
     """Execute a scenario, leaving its record in `folder`, or go on with what was begun there.
 
@@ -121,6 +123,9 @@ def run(
 
     fresh : put what is there aside, under another name, and start over
     stop_after : s by the clock, after which the run stops by itself, to be gone on with
+    force : begin even where memory or disk look too small; the observer is told
+
+    force : begin even where memory or disk look too small; the observer is told
 
     Raises
     ------
@@ -150,9 +155,10 @@ def run(
                     return _told_again(earlier)
         if earlier is None:
             refuse_taken(folder, text)
-        parts = assembled(loaded)
+        warn = observer.told if force else None
+        parts = assembled(loaded, warn)
         if earlier is None:
-            refuse_beyond_disk(parts.extent, folder)
+            refuse_beyond_disk(parts.extent, folder, warn)
         execution = _Execution(parts, folder, observer, stop_after)
         if earlier is None:
             execution.begin(loaded, given, holding, held_already=holds and not fresh)
@@ -221,6 +227,7 @@ class _Execution:
         self._schedule = parts.schedule
         self._stop_after = stop_after
         self._stopped = "Asked to stop"
+        self._heartbeat = Heartbeat(folder)
         self._row: LedgerRow | None = None
         self._state: dict[str, Any] = {}
         self._flags = 0
@@ -342,22 +349,25 @@ class _Execution:
 
     def _keep_going(self) -> bool:
         """Between two calls of the compiled loop, about twice a second."""
-        loop = self._loop
         if self._writer.due(self._state_bytes):
             self._checkpoint()
         if self._stop_after is not None and clocks.monotonic() - self._started > self._stop_after:
             self._stopped = "The time allowed was over"
             return False
-        return self._observer.goes_on(
-            Progress(
-                time=loop.time,
-                duration=self._scenario.duration,
-                alive=int(np.count_nonzero(loop.charges.alive)),
-                born=self._born,
-                steps=loop.steps_done,
-                all_steps=self._schedule.total_steps,
-                energy_residual=0.0 if self._row is None else self._row.energy_residual,
-            )
+        progress = self._progress()
+        self._heartbeat.beats(progress)
+        return self._observer.goes_on(progress)
+
+    def _progress(self) -> Progress:
+        loop = self._loop
+        return Progress(
+            time=loop.time,
+            duration=self._scenario.duration,
+            alive=int(np.count_nonzero(loop.charges.alive)),
+            born=self._born,
+            steps=loop.steps_done,
+            all_steps=self._schedule.total_steps,
+            energy_residual=0.0 if self._row is None else self._row.energy_residual,
         )
 
     def _record(self, mark: int, last: bool = False) -> None:
@@ -444,6 +454,7 @@ class _Execution:
             wall_time=self._seconds_so_far(),
             steps=self._loop.steps_done,
         )
+        self._heartbeat.ends(self._progress(), word, sentence)
         if self._row is None:
             raise ScenarioError("the run kept no record")
         return Result(

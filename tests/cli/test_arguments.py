@@ -31,6 +31,12 @@ from tests.cli.small_runs import command, scenario, settings
         (["run", "s.toml", "--set"], "expected one argument"),
         (["run", "s.toml", "--fast"], "unrecognized arguments: --fast"),
         (["check", "s.toml", "--seed", "1"], "unrecognized arguments: --seed 1"),
+        (["estimate"], "file"),
+        (["estimate", "s.toml", "--seconds", "0"], "'0' is not a number of seconds from 0.1 to"),
+        (["estimate", "s.toml", "--seconds", "nan"], "'nan' is not a number of seconds from 0.1"),
+        (["estimate", "s.toml", "--seconds", "x"], "'x' is not a number of seconds from 0.1 to"),
+        (["estimate", "s.toml", "-o", "x"], "unrecognized arguments: -o x"),
+        (["watch"], "FOLDER"),
     ],
 )
 def test_arguments_that_cannot_be_used_are_told_with_exit_code_2(

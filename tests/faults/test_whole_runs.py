@@ -151,6 +151,21 @@ def test_a_record_that_would_not_fit_on_the_disk_is_refused(
     assert "the record needs at least " in refused(tmp_path, capsys)
 
 
+def test_what_looks_too_large_is_begun_all_the_same_where_it_is_forced(
+    tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Each shortage is told once, as a warning, and the run goes to its end."""
+    monkeypatch.setattr(room, "free_memory", lambda: 1_000_000)
+    monkeypatch.setattr(room, "free_space", lambda folder: 10_000)
+    (tmp_path / "s.toml").write_text(SMALL)
+    arguments = ["run", str(tmp_path / "s.toml"), "-o", str(tmp_path / "run"), "--no-pictures"]
+    assert 0 == main([*arguments, "--force"])
+    told = capsys.readouterr().err
+    assert 1 == told.count("Warning: The run needs about ")
+    assert 1 == told.count("the record needs at least ")
+    assert 2 == told.count("The run begins all the same, as --force says; ")
+
+
 def test_memory_that_runs_out_while_loading_is_told_in_words(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:

@@ -19,6 +19,7 @@ INTERRUPTED = 130
 DEFECT = 1
 LARGEST_SEED = 2**63 - 1
 MOST_THREADS = 1024
+SHORTEST_TIMING, LONGEST_TIMING = 0.1, 3600.0
 TRACEBACK = "DRIFTWELL_TRACEBACK"
 """Environment variable that lets a defect of driftwell show where it is."""
 
@@ -50,12 +51,7 @@ def _parser() -> argparse.ArgumentParser:
         metavar="FOLDER",
         help="where to leave the record (default: the file's name with -run, here)",
     )
-    run.add_argument(
-        "--threads",
-        type=_threads,
-        metavar="N",
-        help="threads (default: NUMBA_NUM_THREADS where it is set, else one for each core)",
-    )
+    _add_threads(run)
     run.add_argument("--seed", type=_seed, metavar="N", help="seed instead of the scenario's own")
     run.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
     run.add_argument(
@@ -69,17 +65,49 @@ def _parser() -> argparse.ArgumentParser:
         metavar="TIME",
         help="stop by the clock, e.g. after 7h30m; the same command then goes on",
     )
+    run.add_argument(
+        "--force",
+        action="store_true",
+        help="begin even where memory or disk look too small, with a warning",
+    )
     _add_settings(run)
 
     check = commands.add_parser("check", help="say what a scenario would simulate, or its faults")
     check.add_argument("file", help="scenario file (TOML)")
     _add_settings(check)
 
+    estimate = commands.add_parser(
+        "estimate", help="time a scenario's own steps, and say what the whole run will cost"
+    )
+    estimate.add_argument("file", help="scenario file (TOML)")
+    estimate.add_argument(
+        "--seconds",
+        type=_seconds,
+        default=5.0,
+        metavar="S",
+        help="how long to time, about (default: %(default)g)",
+    )
+    _add_threads(estimate)
+    _add_settings(estimate)
+
+    watch = commands.add_parser("watch", help="show how far a run or a sweep is")
+    watch.add_argument("folder", metavar="FOLDER", help="a run's folder, or a sweep's")
+    watch.add_argument("--once", action="store_true", help="show it once, as text")
+
     info = commands.add_parser("info", help="summarise a run's folder")
     info.add_argument("run", metavar="RUN", help="a run's folder, or its run.h5")
 
     commands.add_parser("schema", help="print the JSON Schema of scenario files, for editors")
     return parser
+
+
+def _add_threads(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument(
+        "--threads",
+        type=_threads,
+        metavar="N",
+        help="threads (default: NUMBA_NUM_THREADS where it is set, else one for each core)",
+    )
 
 
 def _add_settings(parser: argparse.ArgumentParser) -> None:
@@ -118,6 +146,19 @@ def _duration(text: str) -> float:
         return seconds_of(text)
     except ValueError as fault:
         raise argparse.ArgumentTypeError(str(fault)) from None
+
+
+def _seconds(text: str) -> float:
+    try:
+        number = float(text)
+    except ValueError:
+        number = 0.0
+    if not SHORTEST_TIMING <= number <= LONGEST_TIMING:
+        raise argparse.ArgumentTypeError(
+            f"{text[:40]!r} is not a number of seconds from {SHORTEST_TIMING:g} to "
+            f"{LONGEST_TIMING:g}"
+        )
+    return number
 
 
 def _folder(text: str) -> str:
@@ -170,9 +211,17 @@ def _carry_out(asked: argparse.Namespace) -> int:
         from driftwell.cli.info import info
 
         return info(asked.run)
+    if asked.command == "watch":
+        from driftwell.cli.watch import watch
+
+        return watch(asked.folder, asked.once)
     threads = _usable_threads(asked.threads)
     if "numba" not in sys.modules:  # it reads its limit once, and minds another one later
         os.environ["NUMBA_NUM_THREADS"] = str(threads)
+    if asked.command == "estimate":
+        from driftwell.cli.estimate import estimate_command
+
+        return estimate_command(asked.file, asked.settings, threads, asked.seconds)
     from driftwell.cli.run_command import run_command
 
     settings = list(asked.settings)
@@ -186,6 +235,7 @@ def _carry_out(asked: argparse.Namespace) -> int:
         pictures=not asked.no_pictures,
         fresh=asked.fresh,
         stop_after=asked.stop_after,
+        force=asked.force,
     )
 
 

@@ -6,11 +6,12 @@ import os
 import sys
 import time
 from contextlib import suppress
-from datetime import datetime, timedelta
+from datetime import datetime
 from typing import Any
 
 from tqdm import tqdm
 
+from driftwell.cli.clock import by_the_clock
 from driftwell.cli.printing import is_terminal, tell
 from driftwell.cli.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
@@ -47,14 +48,11 @@ class ProgressDisplay:
 
     def compiles(self) -> None:
         """Say why nothing moves yet."""
-        tell("compiling for this machine, once for each version: up to a minute")
+        tell_of_compiling()
 
     def begins(self, choice: StepChoice, plan: Schedule, particles: Particles) -> None:
         """Say what the run will do, and why in such steps."""
-        tell(
-            f"{_counted(len(particles), 'charge')}, {_counted(plan.total_steps, 'step')} of at "
-            f"most {spelled(choice.step, 's', 4)}: {choice.because}"
-        )
+        tell(steps_in_words(choice, plan, particles))
         pairs = pairs_in_one_sum(self._coulomb, len(particles))
         sums = pairs * plan.total_steps / self._pairs_per_second
         if sums > _LONG:
@@ -117,6 +115,19 @@ class ProgressDisplay:
             self._bar = None
 
 
+def tell_of_compiling() -> None:
+    """Say why nothing moves yet."""
+    tell("compiling for this machine, once for each version: up to a minute")
+
+
+def steps_in_words(choice: StepChoice, plan: Schedule, particles: Particles) -> str:
+    """How many charges are moved in how many steps, and why in such."""
+    return (
+        f"{_counted(len(particles), 'charge')}, {_counted(plan.total_steps, 'step')} of at "
+        f"most {spelled(choice.step, 's', 4)}: {choice.because}"
+    )
+
+
 def told(progress: Progress, elapsed: float, short: bool = False) -> str:
     """How far a run is: time, charges, energy residual, and when it will be done.
 
@@ -140,13 +151,7 @@ def _done(progress: Progress, elapsed: float) -> str:
     if progress.steps <= 0 or elapsed <= 0.0:
         return ""
     rest = elapsed * (progress.all_steps - progress.steps) / progress.steps
-    try:
-        done = datetime.now() + timedelta(seconds=rest)
-    except OverflowError:
-        return ", done in no time that can be told"
-    if rest < 12 * 3600:
-        return f", done {done:%H:%M:%S}"
-    return f", done {done:%a %H:%M}" if rest < 6 * 86400 else f", done {done:%Y-%m-%d}"
+    return f", done {by_the_clock(rest)}"
 
 
 def _columns() -> int:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import logging
 from collections.abc import Sequence
 from pathlib import Path
+from typing import Any
 
 from driftwell.answers.answer_lines import answer_lines, coulomb_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
@@ -32,6 +33,7 @@ def run_command(
     pictures: bool = True,
     fresh: bool = False,
     stop_after: float | None = None,
+    force: bool = False,
 ) -> int:
     """Execute a scenario; returns the exit code of its outcome, or 2 with a message."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-run")
@@ -39,13 +41,13 @@ def run_command(
         loaded = read_scenario(file, settings)
         tell(loaded.scenario.title)
         result, written = _carried_out(
-            loaded, folder, threads, pictures=pictures, fresh=fresh, stop_after=stop_after
+            loaded, folder, threads, pictures, fresh=fresh, stop_after=stop_after, force=force
         )
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
     except MemoryError as error:
-        tell(_too_little_memory(error))
+        tell(too_little_memory(error))
         return UNUSABLE
     return result.outcome.exit_code or (0 if written else UNUSABLE)
 
@@ -54,10 +56,8 @@ def _carried_out(
     loaded: LoadedScenario,
     folder: Path,
     threads: int,
-    *,
     pictures: bool,
-    fresh: bool,
-    stop_after: float | None,
+    **options: Any,
 ) -> tuple[Result, bool]:
     """The run's result, and whether all that was to be printed and drawn could be."""
     wish = StopWish((folder / MASTER).exists)
@@ -65,7 +65,7 @@ def _carried_out(
     with wish.listening():
         try:
             with first_compilation(display.compiles):
-                result = run(loaded, folder, display, threads, fresh=fresh, stop_after=stop_after)
+                result = run(loaded, folder, display, threads, **options)
         finally:
             display.ends()
         written = _report(result)
@@ -123,7 +123,8 @@ def _draw(folder: Path) -> bool:
     return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])
 
 
-def _too_little_memory(error: MemoryError) -> str:
+def too_little_memory(error: MemoryError) -> str:
+    """What to say where the system gives no more memory."""
     why = f" ({error})" if str(error) else ""
     return (
         f"This machine has too little memory for the run{why}. Take fewer charges of more weight "

@@ -7,6 +7,8 @@ minutes at most.
 
 from __future__ import annotations
 
+import math
+
 SHORTEST = 10.0
 LONGEST = 60.0
 """s, bounds of the time between two segments."""
@@ -39,3 +41,30 @@ def most_bytes(sealed: int, state: int) -> int:
     sealed : bytes of the segments before; state : bytes of the state
     """
     return max(min(max(sealed // SHARE, SMALLEST), LARGEST), state // 2)
+
+
+def segments_of(seconds: float, records: int, rows: int, state: int) -> int:
+    """Segments into which a run is cut, the last one at its end.
+
+    seconds : s that the run lasts by the clock; 0 where only its bytes are to cut it
+    records : times at which it may be sealed; rows : bytes of all of them; state : of one state
+
+    What is recorded is taken to come evenly.
+    """
+    if records <= 0:
+        return 1
+    record, pace = rows / records, seconds / records
+    count, at, sealed = 0, 0, 0.0
+    while True:
+        elapsed = at * pace
+        by_time = longest_wait(elapsed, state) / pace if pace > 0.0 else math.inf
+        by_bytes = most_bytes(int(sealed), state) / record if record > 0.0 else math.inf
+        span = max(min(by_time, by_bytes), 1.0)
+        left = records - at
+        if span > left:
+            return count + 1
+        step = math.ceil(span)
+        if by_time <= by_bytes and elapsed >= SHARE * LONGEST:  # from here on the wait is the same
+            return count + left // step + 1
+        count, at = count + 1, at + step
+        sealed += step * record + state

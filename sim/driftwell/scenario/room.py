@@ -3,20 +3,23 @@
 A machine that runs out of memory ends the program without a word, and a disk that fills up ends a
 run half-way; both can be seen coming. What a charge takes was measured with 3e5 to 3e6 of them: 650
 bytes in a run without walls and Coulomb sum, 700 to 730 with two surfaces, where this counts 800.
+Whoever knows better than this count can have the refusals said as warnings.
 """
 
 from __future__ import annotations
 
 import shutil
+from collections.abc import Callable
 from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.summation import room_in_bytes
-from driftwell.errors import RecordError, ScenarioError
+from driftwell.errors import DriftwellError, RecordError, ScenarioError
 from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.record.layout import dtype
+from driftwell.record.sealing import segments_of
 from driftwell.scenario.model import Scenario
 
 BASE = 500_000_000
@@ -30,12 +33,26 @@ PER_TRACKED = 220
 PER_MARK = 100
 """Bytes of each record, sample and break of a waveform in the schedule."""
 
+STATE, STATE_SURFACE = 104, 8
+"""Bytes on the disk of each charge's state, and of the side it is on of each wall and detector."""
+SNAPSHOT, SNAPSHOT_BASE = 96, 6000
+"""Bytes on the disk of each charge in a snapshot, and of HDF5's structures around it."""
+SEGMENT = 36_000
+"""Bytes on the disk of HDF5's structures in a segment, and of its scenario."""
+MASTER, MASTER_SEGMENT = 28_000, 800
+"""Bytes on the disk of master and answers, and of what the master says of each segment."""
+
+Warn = Callable[[str], None]
+
 _LIMITS = ("/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory/memory.limit_in_bytes")
 
 
 @dataclass(frozen=True, slots=True)
 class Extent:
-    """How much a run is: numbers of things, and how the charges' own force is summed."""
+    """How much a run is: numbers of things, and how the charges' own force is summed.
+
+    surfaces : walls and detectors; detectors : those among them
+    """
 
     charges: int
     tracked: int
@@ -46,6 +63,7 @@ class Extent:
     traces: int
     snapshots: int
     coulomb: Coulomb
+    detectors: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -61,15 +79,41 @@ class Extent:
             + 3 * (moments + traces)
         )
 
-    def disk(self) -> int:
-        """Bytes of the record, without what is lost or passes a detector."""
+    def rows(self) -> int:
+        """Bytes of all that is recorded, without what is lost or passes a detector."""
         return (
-            self.records * self.tracked * 48
+            self.records * (8 + self.tracked * 48)
             + self.records * self.clouds * dtype("moments").itemsize
-            + self.records * dtype("ledger").itemsize
+            + (self.records + self.snapshots) * dtype("ledger").itemsize
             + self.samples * (self.traces + 1) * 8
-            + self.snapshots * self.charges * 96
+            + self.snapshots * (self.charges * SNAPSHOT + SNAPSHOT_BASE)
         )
+
+    def state(self) -> int:
+        """Bytes of the state that ends each segment, while no charge is lost."""
+        return self.charges * (STATE + self.surfaces * STATE_SURFACE)
+
+    def segments(self, seconds: float = 0.0) -> int:
+        """Segments of a run that lasts so many seconds by the clock; 0 s: as few as can be."""
+        return segments_of(seconds, self.records, self.rows(), self.state())
+
+    def disk(self, seconds: float = 0.0) -> int:
+        """Bytes of the record, without what is lost or passes a detector.
+
+        seconds : s the run lasts by the clock, which says how often its state is written; 0: as
+        seldom as can be
+        """
+        ids = self.tracked * 8
+        segments = self.segments(seconds)
+        return (
+            self.rows() + segments * (self.state() + ids + SEGMENT + MASTER_SEGMENT) + ids + MASTER
+        )
+
+    def events(self) -> int:
+        """Bytes on the disk if every charge passes every detector once, and all are lost."""
+        crossing, loss = dtype("crossings").itemsize, dtype("losses").itemsize
+        walls = min(self.surfaces - self.detectors, 1)
+        return self.charges * (self.detectors * crossing + walls * loss)
 
 
 def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 0) -> Extent:
@@ -85,31 +129,59 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         traces=traces,
         snapshots=int(duration / (record.snapshots or duration)) + 1,
         coulomb=scenario.coulomb,
+        detectors=len(scenario.detector),
     )
 
 
-def refuse_beyond_memory(extent: Extent) -> None:
-    """Raise ScenarioError where a run needs more memory than is free."""
+def refuse_beyond_memory(extent: Extent, warn: Warn | None = None) -> bool:
+    """Raise ScenarioError where a run needs more memory than is free.
+
+    warn : where given, it is called with what there is to say instead
+
+    Returns whether it was.
+    """
     needed, free = extent.memory(), free_memory()
-    if free is not None and needed > free:
-        raise ScenarioError(
+    if free is None or needed <= free:
+        return False
+    return _refuse(
+        ScenarioError(
             f"The run needs about {in_words(needed)} of memory, and {in_words(free)} are free: it "
             f"has {extent.charges} charges, {extent.records} records of {extent.clouds} clouds and "
             f"{extent.samples} samples. Take fewer charges of more weight each, or record less "
             "often."
-        )
+        ),
+        "should memory run out, the system ends it without a word",
+        warn,
+    )
 
 
-def refuse_beyond_disk(extent: Extent, folder: Path) -> None:
-    """Raise RecordError where a record needs more space than the disk of `folder` has."""
-    needed, space = extent.disk(), free_space(folder)
-    if space is not None and needed > space:
-        raise RecordError(
+def refuse_beyond_disk(extent: Extent, folder: Path, warn: Warn | None = None) -> bool:
+    """Raise RecordError where a record needs more space than the disk of `folder` has.
+
+    warn, and what is returned : as for :func:`refuse_beyond_memory`
+    """
+    needed, space, states = extent.disk(), free_space(folder), extent.segments()
+    if space is None or needed <= space:
+        return False
+    return _refuse(
+        RecordError(
             f"{folder}: the record needs at least {in_words(needed)}, and the disk has "
             f"{in_words(space)}: {extent.records} records of {extent.tracked} tracked charges, "
-            f"{extent.snapshots} snapshots of {extent.charges}. Record less often, track fewer "
-            "charges, or name a folder on a larger disk with -o."
-        )
+            f"{extent.snapshots} snapshots of {extent.charges}, {states} state"
+            f"{'s' * (states != 1)}. Record less often, track fewer charges, or name a folder on a "
+            "larger disk with -o."
+        ),
+        "should the disk fill up, it ends there, and what was sealed before is kept",
+        warn,
+    )
+
+
+def _refuse(fault: DriftwellError, otherwise: str, warn: Warn | None) -> bool:
+    """Raise the fault, or say it and what may come of going on all the same."""
+    if warn is None:
+        raise fault
+    warn(f"Warning: {fault} The run begins all the same, as --force says; {otherwise}.")
+    return True
 
 
 def free_memory() -> int | None:

@@ -1,0 +1,130 @@
+"""``driftwell estimate FILE``: what a run would cost, before it is begun."""
+
+from __future__ import annotations
+
+import shlex
+from collections.abc import Sequence
+from pathlib import Path
+
+from driftwell.assembly import Assembly
+from driftwell.cli.clock import by_the_clock, lasting
+from driftwell.cli.printing import answer, tell, width
+from driftwell.cli.progress import steps_in_words, tell_of_compiling
+from driftwell.cli.run_command import UNUSABLE, too_little_memory
+from driftwell.coulomb.summation import Summation
+from driftwell.errors import DriftwellError, StepError
+from driftwell.estimate import Estimate, estimate
+from driftwell.forms.paragraph import paragraph
+from driftwell.kernels.compilation import first_compilation
+from driftwell.scenario.read import read_scenario
+from driftwell.scenario.room import free_memory, free_space, in_words
+
+_COLUMN = 9
+_FEW = 0.01
+"""Part of the disk that losses and passages must take to be spoken of."""
+
+
+def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: float) -> int:
+    """Print what a run would cost and return 0, or why none could be, with the run's exit code."""
+    try:
+        loaded = read_scenario(file, settings)
+        tell(loaded.scenario.title)
+        with first_compilation(tell_of_compiling):
+            found = estimate(loaded, threads, seconds, _begins)
+    except StepError as error:
+        tell(f"The run would fail {error}")
+        return error.exit_code
+    except DriftwellError as error:
+        tell(str(error))
+        return error.exit_code
+    except MemoryError as error:
+        tell(too_little_memory(error))
+        return UNUSABLE
+    return 0 if answer(estimate_lines(found, width())) else UNUSABLE
+
+
+def _begins(parts: Assembly, summation: Summation) -> None:
+    """Say what is timed, as a run says what it does."""
+    tell(steps_in_words(parts.choice, parts.schedule, parts.particles))
+    tell(f"Coulomb sum: {summation.method}; {summation.because}")
+
+
+def estimate_lines(found: Estimate, columns: int) -> list[str]:
+    """What a run would cost, in lines of at most so many characters."""
+    rows = [
+        ("time", _time(found)),
+        ("goes to", _goes_to(found)),
+        ("steps", _steps(found)),
+        ("memory", _memory(found)),
+        ("disk", _disk(found)),
+        *(("cheaper" if not k else "", words) for k, words in enumerate(_cheaper(found))),
+    ]
+    return [
+        line
+        for name, words in rows
+        for line in paragraph(words, columns, name.ljust(_COLUMN), " " * _COLUMN)
+    ]
+
+
+def _time(found: Estimate) -> str:
+    timed = found.timed
+    text = (
+        f"about {lasting(found.seconds)} on {_counted(found.threads, 'thread')}, from "
+        f"{lasting(found.least)} to {lasting(found.most)}; begun now, done "
+        f"{by_the_clock(found.seconds)}. Timed: {_counted(timed.steps, 'step')} in "
+        f"{lasting(timed.seconds)}"
+    )
+    if found.ended:
+        return f"{text}, in which every charge was lost: the run ends there."
+    if timed.left < timed.alive:
+        return (
+            f"{text}, in which {timed.alive - timed.left} of {timed.alive} charges were lost; the "
+            "shorter time is for losses that go on so."
+        )
+    return f"{text}. Compiling, once for each version, answers and pictures come on top."
+
+
+def _goes_to(found: Estimate) -> str:
+    whole = max(found.seconds, 1e-300)
+    shares = sorted(found.parts.items(), key=lambda part: -part[1])
+    return ", ".join(f"{name} {100.0 * seconds / whole:.0f} %" for name, seconds in shares)
+
+
+def _steps(found: Estimate) -> str:
+    return (
+        f"{found.steps}, of {lasting(found.timed.step)} each; {_counted(found.records, 'record')}, "
+        f"{_counted(found.snapshots, 'snapshot')} and {_counted(found.segments, 'segment')}"
+    )
+
+
+def _memory(found: Estimate) -> str:
+    free = free_memory()
+    text = f"about {in_words(found.memory)}"
+    return text if free is None else f"{text}; {in_words(free)} are free"
+
+
+def _disk(found: Estimate) -> str:
+    text = f"about {in_words(found.disk)}"
+    if found.events > _FEW * found.disk:
+        text += f", and {in_words(found.events)} more if every charge meets every surface once"
+    space = free_space(Path())
+    if space is None:
+        return text
+    text += f"; {in_words(space)} are free here"
+    if found.disk > space:
+        text += ", too little: record less often, or name a folder on a larger disk with -o"
+    return text
+
+
+def _cheaper(found: Estimate) -> list[str]:
+    if not found.changes:
+        return ["nothing that is known to help"]
+    return [
+        f"{change.words}: {lasting(change.seconds)}"
+        + "".join(f" (--set {shlex.quote(each)})" for each in change.settings)
+        for change in found.changes
+    ]
+
+
+def _counted(number: int, noun: str) -> str:
+    return f"{number} {noun}{'s' * (number != 1)}"

@@ -1,0 +1,174 @@
+"""`driftwell estimate`: what a run would cost, or why there would be none."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from driftwell.cli import estimate as module
+from driftwell.cli.clock import by_the_clock, lasting
+from driftwell.cli.estimate import estimate_lines
+from driftwell.cli.main import main
+from driftwell.estimate import Change, Estimate
+from driftwell.timed_run import Stretch
+from tests.cli.small_runs import PAIR, scenario, settings
+
+Printed = pytest.CaptureFixture[str]
+
+NIGHT = Estimate(
+    charges=20_000,
+    threads=2,
+    method="direct",
+    because="the scenario says so",
+    steps=1_000_000,
+    records=2001,
+    snapshots=5,
+    segments=500,
+    seconds=30_000.0,
+    least=26_000.0,
+    most=36_000.0,
+    parts={"the pair sum": 27_000.0, "fields and motion": 2400.0, "the record": 600.0},
+    memory=600_000_000,
+    disk=2_000_000_000,
+    events=5_000_000,
+    timed=Stretch(100, 3.0, 0.026, 0.036, 20_000, 20_000),
+    ended=False,
+    changes=(
+        Change("half the charges, each of twice the weight", (), 8000.0),
+        Change("steps twice as long", ("stepping.step=2 ns",), 15_000.0),
+    ),
+)
+
+
+def text(found: Estimate) -> str:
+    """The lines as one, with single spaces."""
+    return " ".join(" ".join(estimate_lines(found, 100)).split())
+
+
+def test_the_command_says_time_memory_disk_and_what_would_be_cheaper(
+    tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    arguments = ["estimate", str(scenario(tmp_path)), "--seconds", "0.3", "--threads", "1"]
+    assert 0 == main([*arguments, *settings("duration=2 ms")])
+    printed = capsys.readouterr()
+    heads = [line[:9].strip() for line in printed.out.splitlines()]
+    assert ["time", "goes to", "steps", "memory", "disk", "cheaper"] == [h for h in heads if h]
+    assert max(map(len, printed.out.splitlines())) <= 100
+    assert re.search(
+        r"time     about [\d.]+ s on 1 thread, from [\d.]+ s to [\d.]+ s; begun now, done \d\d:",
+        printed.out,
+    )
+    assert "steps    100000, of " in printed.out
+    assert "2001 records, 2 snapshots and 1 segment" in " ".join(printed.out.split())
+    assert printed.err.startswith("Eight ions in a trap\n")
+    assert "8 charges, 100000 steps of at most 20 ns: the scenario says so\n" in printed.err
+    assert "Coulomb sum: direct; 8 charges, too few for a tree to pay\n" in printed.err
+    assert ["small.toml"] == [each.name for each in tmp_path.iterdir()]
+
+
+@pytest.mark.parametrize(
+    ("given", "told"),
+    [
+        (["cloud.load.count=x"], 'count = "x"'),
+        (["duration=100 Gs", "record.every=1 Gs"], "needs at most 1e+13"),
+    ],
+)
+def test_a_scenario_that_cannot_be_run_is_told_with_2(
+    given: list[str], told: str, tmp_path: Path, capsys: Printed
+) -> None:
+    assert 2 == main(["estimate", str(scenario(tmp_path)), *settings(*given)])
+    printed = capsys.readouterr()
+    assert "" == printed.out
+    assert told in printed.err
+
+
+def test_a_file_that_is_not_there_is_told_with_2(tmp_path: Path, capsys: Printed) -> None:
+    assert 2 == main(["estimate", str(tmp_path / "missing.toml")])
+    assert "missing.toml" in capsys.readouterr().err
+
+
+def test_motion_that_cannot_be_continued_is_told_with_the_exit_code_of_the_run(
+    tmp_path: Path, capsys: Printed
+) -> None:
+    assert 5 == main(["estimate", str(scenario(tmp_path, PAIR)), "--seconds", "0.5"])
+    printed = capsys.readouterr()
+    assert "" == printed.out
+    assert re.search(r"The run would fail after \d+ steps, at t = .*opposite charge", printed.err)
+
+
+def test_memory_that_runs_out_is_told_with_2(
+    tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(*given: object) -> None:
+        raise MemoryError("Unable to allocate 229. MiB for an array")
+
+    monkeypatch.setattr(module, "estimate", full)
+    assert 2 == main(["estimate", str(scenario(tmp_path))])
+    assert "too little memory for the run (Unable to allocate" in capsys.readouterr().err
+
+
+def test_a_night_is_told_in_readable_numbers(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(module, "free_memory", lambda: 16_000_000_000)
+    monkeypatch.setattr(module, "free_space", lambda folder: 80_000_000_000)
+    told = text(NIGHT)
+    for words in (
+        "time about 8 h 20 min on 2 threads, from 7 h 13 min to 10 h; begun now, done ",
+        "Timed: 100 steps in 3 s. Compiling,",
+        "goes to the pair sum 90 %, fields and motion 8 %, the record 2 %",
+        "steps 1000000, of 0.03 s each; 2001 records, 5 snapshots and 500 segments",
+        "memory about 600 MB; 16 GB are free",
+        "disk about 2 GB; 80 GB are free here",
+        "cheaper half the charges, each of twice the weight: 2 h 13 min steps twice as long: "
+        "4 h 10 min (--set 'stepping.step=2 ns')",
+    ):
+        assert words in told
+
+
+def test_what_does_not_fit_what_is_lost_and_what_cannot_be_helped_is_told(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr(module, "free_memory", lambda: None)
+    monkeypatch.setattr(module, "free_space", lambda folder: 1_000_000_000)
+    lossy = replace(NIGHT.timed, left=15_000)
+    told = text(replace(NIGHT, timed=lossy, changes=(), events=10**9))
+    assert "in which 5000 of 20000 charges were lost; the shorter time is for losses" in told
+    assert "disk about 2 GB, and 1 GB more if every charge meets every surface once" in told
+    assert "1 GB are free here, too little: record less often" in told
+    assert "memory about 600 MB disk" in told
+    assert told.endswith("cheaper nothing that is known to help")
+    monkeypatch.setattr(module, "free_space", lambda folder: None)
+    told = text(replace(NIGHT, timed=replace(lossy, left=0), ended=True))
+    assert "in which every charge was lost: the run ends there." in told
+    assert "free here" not in told
+
+
+@pytest.mark.parametrize(
+    ("seconds", "words"),
+    [
+        (0.0, "0 s"),
+        (0.0123, "0.012 s"),
+        (9.96, "10 s"),
+        (42.4, "42 s"),
+        (119.4, "119 s"),
+        (125.0, "2 min 5 s"),
+        (599.7, "10 min"),
+        (1500.0, "25 min"),
+        (3600.0, "1 h"),
+        (30_000.0, "8 h 20 min"),
+        (50_000.0, "14 h"),
+        (5 * 86400.0, "5 days"),
+        (100 * 86400.0, "100 days"),
+        (1e12, "32000 years"),
+    ],
+)
+def test_lengths_of_time_are_said_in_words(seconds: float, words: str) -> None:
+    assert words == lasting(seconds)
+
+
+def test_a_time_beyond_the_calendar_is_said_in_words() -> None:
+    for rest in (1e15, float("inf"), float("nan")):
+        assert "in no time that can be told" == by_the_clock(rest)
