@@ -34,5 +34,13 @@ class RecordError(DriftwellError):
     """A run folder cannot be written or read."""
 
 
+class BusyError(RecordError):
+    """A folder is in use by another process."""
+
+
+class FullError(RecordError):
+    """The disk refuses what a run goes on recording; what was sealed before is kept."""
+
+
 class AnswerError(DriftwellError):
     """A question cannot be answered from what the run recorded."""

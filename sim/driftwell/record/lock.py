@@ -1,0 +1,90 @@
+"""A run's folder belongs to one process at a time.
+
+The system's own lock on a file: it is gone with the process that held it, however that ended, so no
+lock is ever left behind by a kill. What the file says is for whoever is refused.
+"""
+
+from __future__ import annotations
+
+import fcntl
+import json
+import os
+import platform
+from collections.abc import Iterator
+from contextlib import contextmanager, suppress
+from datetime import datetime
+from pathlib import Path
+
+from driftwell.errors import BusyError
+
+LOCK = "in-use"
+"""Name of the file in the folder, there while a process works in it or after one was killed."""
+
+
+@contextmanager
+def held(folder: Path) -> Iterator[None]:
+    """While inside, no other process (and nobody else in this one) can hold the folder.
+
+    Raises BusyError where somebody does, OSError where the folder cannot be written.
+    """
+    handle = _locked(folder / LOCK, folder)
+    try:
+        _introduce(handle)
+        yield
+    finally:
+        with suppress(OSError):
+            (folder / LOCK).unlink()
+        os.close(handle)
+
+
+def in_use(folder: Path) -> bool:
+    """Whether a process of this machine, or of one that shares its locks, holds the folder."""
+    try:
+        handle = os.open(folder / LOCK, os.O_RDONLY)
+    except OSError:
+        return False
+    try:
+        fcntl.flock(handle, fcntl.LOCK_SH | fcntl.LOCK_NB)
+    except OSError:
+        return True
+    finally:
+        os.close(handle)
+    return False
+
+
+def _locked(path: Path, folder: Path) -> int:
+    """An open handle with the lock on the file that stands under the name."""
+    while True:
+        handle = os.open(path, os.O_RDWR | os.O_CREAT, 0o666)
+        try:
+            fcntl.flock(handle, fcntl.LOCK_EX | fcntl.LOCK_NB)
+        except OSError as fault:
+            holder = _holder(handle)
+            os.close(handle)
+            raise BusyError(
+                f"{folder}: in use by {holder}. Wait for it, stop it, or name another folder with "
+                "-o."
+            ) from fault
+        with suppress(FileNotFoundError):  # removed by the one before, between our two steps
+            if os.path.samestat(os.fstat(handle), path.stat()):
+                return handle
+        os.close(handle)
+
+
+def _introduce(handle: int) -> None:
+    about = {
+        "process": os.getpid(),
+        "machine": platform.node(),
+        "since": datetime.now().astimezone().isoformat(timespec="seconds"),
+    }
+    with suppress(OSError):  # a full disk: the lock holds without words
+        os.ftruncate(handle, 0)
+        os.pwrite(handle, json.dumps(about).encode(), 0)
+
+
+def _holder(handle: int) -> str:
+    try:
+        about = json.loads(os.pread(handle, 4096, 0))
+        return f"process {about['process']} on {about['machine']} since {about['since']}"
+    except (OSError, ValueError, KeyError, TypeError):
+        return "another process"

@@ -1,0 +1,1 @@
+"""Studies: many runs for one purpose, and the engines that carry them out."""
