@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
@@ -49,7 +49,7 @@ def study_of(path: Path, *settings: Sequence[str]) -> Points:
 
 @dataclass
 class Entry:
-    """A row of the catalogue."""
+    """A run in the catalogue."""
 
     digest: str
     numbers: list[int]
@@ -65,8 +65,11 @@ class Memory:
 
     entries: dict[str, Entry] = field(default_factory=dict)
 
-    def add(self, digest: str, number: int, settings: Sequence[str]) -> None:
-        self.entries.setdefault(digest, Entry(digest, [])).numbers.append(number)
+    def add_all(self, cases: Iterable[tuple[str, int, Sequence[str]]]) -> None:
+        for entry in self.entries.values():
+            entry.numbers.clear()
+        for digest, number, _ in cases:
+            self.entries.setdefault(digest, Entry(digest, [])).numbers.append(number)
 
     def began(self, digest: str) -> None:
         self.entries[digest].begun += 1
@@ -84,7 +87,7 @@ class Memory:
         entry.word, entry.sentence, entry.answers = word, sentence, tuple(answers)
 
     def rows(self) -> list[Entry]:
-        return list(self.entries.values())
+        return [entry for entry in self.entries.values() for _ in entry.numbers]
 
 
 class Heard:

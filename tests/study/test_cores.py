@@ -73,7 +73,7 @@ def test_what_the_user_asks_for_is_done(
             16,
             8,
             2,
-            "2 runs side by side on 1 thread each: 16 or more runs are left, and threads pay only "
+            "2 runs side by side on 1 thread each: 16 runs are left, and threads pay only "
             "from 512 charges on",
         ),
         (
@@ -87,7 +87,7 @@ def test_what_the_user_asks_for_is_done(
             16,
             10_000,
             2,
-            "2 runs side by side on 1 thread each: 16 or more runs are left, and a run on one "
+            "2 runs side by side on 1 thread each: 16 runs are left, and a run on one "
             "thread wastes nothing",
         ),
     ],

@@ -106,7 +106,7 @@ def test_content_counts_not_how_it_is_written(tmp_path: Path) -> None:
     )
     assert (4, 0, 0, 0) == counts(result)
     assert 2 == len(engine.asked)
-    assert [[1, 2, 3], [4]] == [entry.numbers for entry in memory.rows()]
+    assert [[1, 2, 3], [4]] == [entry.numbers for entry in memory.entries.values()]
     result, engine = swept(study_of(path, *same), tmp_path / "s", memory)
     assert (0, 3, 0, 0) == counts(result)
 

@@ -12,14 +12,13 @@ from driftwell.errors import DriftwellError
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
-from driftwell.scenario.source import source_text
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import ANSWERS_FILE, CATALOGUE_FILE, SUMMARY_FILE, taken
 from driftwell.study.table import write_tables
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
@@ -72,7 +71,7 @@ def _carried_out(
 
     wish = StopWish(lambda: True, kill_workers)
     display = SweepDisplay(wish)
-    with taken(folder, study.text, source_text(study.scenario_path)) as changed, wish.listening():
+    with taken(folder, study.text, study.scenario_text) as changed, wish.listening():
         if changed:
             tell(
                 f"{folder}: the study or its scenario was changed since the last sweep; runs of "
@@ -99,11 +98,11 @@ def _carried_out(
 
 def _report(study: Study, folder: Path, result: SweepResult) -> bool:
     """Print the summary and keep it in the folder; whether it could be printed."""
-    lines = [*summary(study, result, WIDTH), "", f"answers: {folder / CSV_FILE}"]
+    lines = [*summary(study, result, WIDTH), "", f"answers: {folder / ANSWERS_FILE}"]
     try:
         commit(folder / SUMMARY_FILE, ("\n".join(lines) + "\n").encode(errors="backslashreplace"))
     except OSError as fault:
         raise unwritable(folder, fault) from fault
     return answer(
-        ["", *summary(study, result, width(), sign()), "", f"answers: {folder / CSV_FILE}"]
+        ["", *summary(study, result, width(), sign()), "", f"answers: {folder / ANSWERS_FILE}"]
     )

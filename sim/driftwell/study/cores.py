@@ -19,8 +19,6 @@ FEW, GAIN_OF_FEW, GAIN = 2000, 1.5, 1.8
 
 Measured with the direct sum: 1.5 at 512 to 1000 charges, 1.8 at 2000, 1.94 at 4096.
 """
-ENOUGH = 8
-"""Runs left for each core, from which on one thread each is surely the fastest."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,7 +34,7 @@ class Sharing:
 class Load:
     """What is to be shared.
 
-    left : runs to compute, counted up to ENOUGH for each core
+    left : runs to compute, at least one
     charges : of the largest; pays : from how many on threads pay
     memory : bytes the largest takes; free : bytes there are, None where the system does not say
     """
@@ -57,7 +55,7 @@ def shared(
     load: Load, cores: int, workers: int | None = None, threads: int | None = None
 ) -> Sharing:
     """Share the cores; `workers` and `threads` are what the user asked for, None where nothing."""
-    left = max(1, load.left)
+    left = load.left
     fit = left if load.free is None else max(1, min(left, load.free // max(1, load.memory)))
     if workers is not None:
         side = min(workers, left)
@@ -70,7 +68,7 @@ def shared(
     gain = math.log2(GAIN_OF_FEW if load.charges < FEW else GAIN)
     each = min(range(1, most + 1), key=lambda k: _time(left, min(fit, cores // k), k, gain))
     side = min(fit, cores // each)
-    return Sharing(side, each, _shown(side, each, _reason(load, left, fit, side, each, cores)))
+    return Sharing(side, each, _shown(side, each, _reason(load, fit, side, each, cores)))
 
 
 def _time(left: int, side: int, threads: int, gain: float) -> float:
@@ -78,8 +76,9 @@ def _time(left: int, side: int, threads: int, gain: float) -> float:
     return math.ceil(left / side) / math.pow(threads, gain)
 
 
-def _reason(load: Load, left: int, fit: int, side: int, threads: int, cores: int) -> str:
-    count = f"{left} or more runs are" if left >= ENOUGH * cores else _runs_are(left)
+def _reason(load: Load, fit: int, side: int, threads: int, cores: int) -> str:
+    left = load.left
+    count = "1 run is" if left == 1 else f"{left} runs are"
     if load.charges < load.pays:
         reason = f"{count} left, and threads pay only from {load.pays} charges on"
     elif threads == 1:
@@ -89,10 +88,6 @@ def _reason(load: Load, left: int, fit: int, side: int, threads: int, cores: int
     if side == fit < min(left, cores):
         reason += f"; no more of them fit in memory at {load.memory / 1e9:.3g} GB each"
     return reason
-
-
-def _runs_are(left: int) -> str:
-    return "1 run is" if left == 1 else f"{left} runs are"
 
 
 def _shown(side: int, threads: int, reason: str) -> str:

@@ -34,7 +34,7 @@ class Axis(Protocol):
 
     @property
     def unit(self) -> str:
-        """Of its values; empty where they have none."""
+        """Of its values; "1" where they are plain numbers, empty where they are texts."""
 
 
 class Study(Protocol):
@@ -62,11 +62,11 @@ class Study(Protocol):
 
 
 class Row(Protocol):
-    """What a catalogue knows of a run."""
+    """What a catalogue knows of the run of a case."""
 
     @property
     def digest(self) -> str:
-        """Of its content."""
+        """Of the run's content."""
 
     @property
     def word(self) -> str:
@@ -84,8 +84,8 @@ class Row(Protocol):
 class Catalogue(Protocol):
     """What is kept of the runs of a sweep."""
 
-    def add(self, digest: str, number: int, settings: Sequence[str]) -> None:
-        """A run with this content is the answer to a case."""
+    def add_all(self, cases: Iterable[tuple[str, int, Sequence[str]]]) -> None:
+        """All cases of the study: digest of the run that answers it, number, settings."""
 
     def began(self, digest: str) -> None:
         """The run is given to a worker."""
@@ -100,5 +100,5 @@ class Catalogue(Protocol):
     ) -> None:
         """How the run ended."""
 
-    def rows(self) -> Iterable[Row]:
-        """All runs."""
+    def rows(self) -> Sequence[Row]:
+        """All cases with their runs."""

@@ -7,7 +7,7 @@ import re
 from collections.abc import Iterable, Sequence
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import reading
+from driftwell.answers.answer_lines import PLAIN_UNITS, reading
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 from driftwell.study.needed import Case, Study
@@ -56,7 +56,7 @@ def value_in_words(value: float | str, unit: str) -> str:
     """A value of an axis with its unit."""
     if isinstance(value, str):
         return value
-    return spelled(value, unit) if unit else f"{value:g}"
+    return f"{value:g}" if unit in PLAIN_UNITS else spelled(value, unit)
 
 
 def _what_ran(result: SweepResult, width: int) -> list[str]:

@@ -11,19 +11,17 @@ from __future__ import annotations
 import os
 import time
 from collections import Counter, deque
-from collections.abc import Callable, Sequence
+from collections.abc import Callable
 from contextlib import closing
 from pathlib import Path
 from typing import Any
 
 from driftwell.answers.answer import Answer
-from driftwell.particles.species import bodies
 from driftwell.run import STOPPED
-from driftwell.scenario.model import Scenario
-from driftwell.scenario.room import extent_of, free_memory
-from driftwell.study.cores import ENOUGH, Load, Sharing, shared, threads_pay_from
+from driftwell.scenario.room import free_memory
+from driftwell.study.cores import Load, Sharing, shared
 from driftwell.study.engine import Done, Engine, Task
-from driftwell.study.missing import ANSWERED, Missing, missing_runs
+from driftwell.study.missing import ANSWERED, Needed, missing_runs
 from driftwell.study.needed import Catalogue, Study
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepObserver, SweepProgress, SweepResult
@@ -64,9 +62,8 @@ class Sweep:
         self._asked = workers, threads
         self._engine_of = engine_of
         self._tally = Tally(len(study.cases), observer.failed)
-        self._found = missing_runs(study, folder, catalogue, self._tally, retry_failed)
-        self._more = True
-        self._waiting: deque[Missing] = deque()
+        self._retry_failed = retry_failed
+        self._waiting: deque[Needed] = deque()
         self._contents: dict[str, dict[str, Any]] = {}
         self._stops: Counter[str] = Counter()
         self._stopped = False
@@ -75,12 +72,20 @@ class Sweep:
         self._looked = 0.0
 
     def result(self) -> SweepResult:
-        """Go through all cases; compute what is not there yet."""
+        """Look at all cases; compute what is not there yet."""
         sharing = None
-        while self._more and len(self._waiting) < ENOUGH * _cores() and not self._to_stop(0):
-            self._look_for_one()
-        if self._waiting and not self._stopped:
-            sharing = self._sharing([each.loaded.scenario for each in self._waiting])
+        self._waiting.extend(
+            missing_runs(
+                self._study,
+                self._folder,
+                self._catalogue,
+                self._tally,
+                self._retry_failed,
+                lambda: not self._to_stop(0),
+            )
+        )
+        if self._waiting and not self._to_stop(0):
+            sharing = self._sharing()
             self._began = time.monotonic()
             self._observer.begins(sharing, self._progress(0))
             with closing(self._engine_of(sharing.workers, sharing.threads)) as engine:
@@ -96,65 +101,41 @@ class Sweep:
             self._busy,
         )
 
-    def _look_for_one(self) -> None:
-        """Look at the next case."""
-        try:
-            each = next(self._found)
-        except StopIteration:
-            self._more = False
-            return
-        if each is not None:
-            self._waiting.append(each)
-
-    def _sharing(self, scenarios: Sequence[Scenario]) -> Sharing:
-        """How to share the cores among the runs, as far as they are known."""
-        folder = self._study.scenario_path.parent
-        extents = [
-            extent_of(
-                scenario,
-                sum(
-                    cloud.amount(bodies(scenario.species), folder).count for cloud in scenario.cloud
-                ),
-            )
-            for scenario in scenarios
-        ]
+    def _sharing(self) -> Sharing:
+        """How to share the cores among the runs that are missing."""
         load = Load(
-            left=len(scenarios),
-            charges=max(extent.charges for extent in extents),
-            pays=min(threads_pay_from(scenario.coulomb) for scenario in scenarios),
-            memory=max(extent.memory() for extent in extents),
+            left=len(self._waiting),
+            charges=max(each.charges for each in self._waiting),
+            pays=min(each.pays for each in self._waiting),
+            memory=max(each.memory for each in self._waiting),
             free=free_memory(),
         )
         return shared(load, _cores(), *self._asked)
 
     def _work(self, engine: Engine, threads: int) -> None:
         """Keep the engine supplied, and take what it gives, until there is nothing more."""
-        while self._more or self._waiting or self._contents:
-            supplied = engine.room() > 0 and (self._more or bool(self._waiting))
-            if supplied and self._waiting:
+        while self._waiting or self._contents:
+            while self._waiting and engine.room():
                 self._submit(engine, self._waiting.popleft(), threads)
-            elif supplied:
-                self._look_for_one()
-            self._take(engine, 0.0 if supplied else _PAUSE)
+            self._take(engine, _PAUSE)
             if self._to_stop(engine.under_way()):
                 engine.stop()
                 while self._take(engine, _PAUSE) or engine.under_way():
                     self._observer.goes_on(self._progress(engine.under_way()))
                 return
 
-    def _submit(self, engine: Engine, each: Missing, threads: int) -> None:
-        loaded = each.loaded
+    def _submit(self, engine: Engine, each: Needed, threads: int) -> None:
         content = {
-            "scenario": str(loaded.path),
-            "settings": list(loaded.settings),
-            "digest": loaded.digest,
-            "folder": str(run_folder(self._folder, loaded.digest)),
+            "scenario": str(self._study.scenario_path),
+            "settings": list(each.settings),
+            "digest": each.digest,
+            "folder": str(run_folder(self._folder, each.digest)),
             "threads": threads,
             "fresh": each.fresh,
         }
-        self._contents[loaded.digest] = content
-        self._catalogue.began(loaded.digest)
-        engine.submit(Task(loaded.digest, content))
+        self._contents[each.digest] = content
+        self._catalogue.began(each.digest)
+        engine.submit(Task(each.digest, content))
 
     def _take(self, engine: Engine, timeout: float) -> bool:
         """Keep what became of a run; whether any was done in that time."""

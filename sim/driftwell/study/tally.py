@@ -37,7 +37,6 @@ class Tally:
         self._cases = cases
         self._tell = tell
         self._cases_of: dict[str, list[Case]] = {}
-        self._fates: dict[str, _Fate] = {}
         self._counts: Counter[str] = Counter()
         self._failures: list[Failure] = []
         self.digests: dict[int, str] = {}
@@ -55,14 +54,10 @@ class Tally:
             self._cases, counts[THERE], counts[COMPUTED], counts[FAILED], under_way, seconds
         )
 
-    def joins(self, case: Case, digest: str) -> bool:
-        """A case is answered by the run with this digest; whether no case before was."""
+    def joins(self, case: Case, digest: str) -> None:
+        """A case will be answered by the run with this digest."""
         self.digests[case.number] = digest
-        cases = self._cases_of.setdefault(digest, [])
-        cases.append(case)
-        if digest in self._fates:
-            self._count(case, self._fates[digest])
-        return len(cases) == 1
+        self._cases_of.setdefault(digest, []).append(case)
 
     def answered(self, digest: str, answers: Sequence[Answer], what: str) -> None:
         """The run has answered its questions."""
@@ -78,7 +73,6 @@ class Tally:
         self._count(case, _Fate(FAILED, reason))
 
     def _settle(self, digest: str, fate: _Fate) -> None:
-        self._fates[digest] = fate
         for case in self._cases_of[digest]:
             self._count(case, fate)
 
