@@ -1,1 +1,1 @@
-"""Studies: many runs for one purpose, and the engines that carry them out."""
+"""Many runs for one purpose: what a study file says, which runs it means, what they answered."""
