@@ -18,15 +18,6 @@ INTERRUPTED = 130
 DEFECT = 1
 LARGEST_SEED = 2**63 - 1
 MOST_THREADS = 1024
-TRACEBACK = "DRIFTWELL_TRACEBACK"
-"""Environment variable that lets a defect of driftwell show where it is."""
-
-_EXIT_CODES = """\
-exit codes: 0 finished; 2 the scenario, the folder or the command line cannot be used;
-3 every charge was lost; 4 stopped on request; 5 the motion could not be continued;
-7 some runs of a sweep failed; 130 interrupted at once; 1 a defect of driftwell
-"""
-
 _SWEEP_EPILOG = """\
 What is there already is not computed again; what was cut off goes on. Give the same command
 again after a stop, a crash or a change of the study.
@@ -34,6 +25,15 @@ again after a stop, a crash or a change of the study.
 exit codes: 0 every run is there (finished, or every charge lost); 2 the study, the folder or
 the command line cannot be used; 4 stopped on request, the same command goes on; 7 some runs
 failed, the summary says which and why; 130 interrupted at once; 1 a defect of driftwell
+"""
+
+TRACEBACK = "DRIFTWELL_TRACEBACK"
+"""Environment variable that lets a defect of driftwell show where it is."""
+
+_EXIT_CODES = """\
+exit codes: 0 finished; 2 the scenario, the folder or the command line cannot be used;
+3 every charge was lost; 4 stopped on request; 5 the motion could not be continued;
+130 interrupted at once; 1 a defect of driftwell
 """
 
 

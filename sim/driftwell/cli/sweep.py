@@ -18,8 +18,8 @@ from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import ANSWERS_FILE, CATALOGUE_FILE, SUMMARY_FILE, taken
-from driftwell.study.table import write_tables
+from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
+from driftwell.study.table import TABLE_CSV, write_tables
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
 """Exit codes; the last one is a sweep's own."""
@@ -98,11 +98,11 @@ def _carried_out(
 
 def _report(study: Study, folder: Path, result: SweepResult) -> bool:
     """Print the summary and keep it in the folder; whether it could be printed."""
-    lines = [*summary(study, result, WIDTH), "", f"answers: {folder / ANSWERS_FILE}"]
+    lines = [*summary(study, result, WIDTH), "", f"answers: {folder / TABLE_CSV}"]
     try:
         commit(folder / SUMMARY_FILE, ("\n".join(lines) + "\n").encode(errors="backslashreplace"))
     except OSError as fault:
         raise unwritable(folder, fault) from fault
     return answer(
-        ["", *summary(study, result, width(), sign()), "", f"answers: {folder / ANSWERS_FILE}"]
+        ["", *summary(study, result, width(), sign()), "", f"answers: {folder / TABLE_CSV}"]
     )

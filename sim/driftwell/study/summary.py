@@ -10,6 +10,7 @@ from driftwell.answers.answer import Answer
 from driftwell.answers.answer_lines import PLAIN_UNITS, reading
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
+from driftwell.study.means import mean
 from driftwell.study.needed import Case, Study
 from driftwell.study.progress import Failure, SweepResult
 
@@ -118,8 +119,7 @@ def _what_it_says(study: Study, result: SweepResult, width: int, sign: str) -> l
     replicas = max(map(len, _runs_of(study, result).values()))
     if replicas > 1:
         lines += paragraph(
-            "Runs that differ in their seed only are taken together: mean, and its error by their "
-            "scatter.",
+            "Runs that differ in their seed only are taken together: mean and its error.",
             width,
             "  ",
             "  ",
@@ -145,18 +145,13 @@ def _points(study: Study, result: SweepResult) -> dict[Point, list[Answer]]:
 
 
 def _together(runs: Sequence[tuple[Answer, ...]]) -> list[Answer]:
-    """The answers of runs that differ by chance only: means, with errors by their scatter."""
+    """The answers of runs that differ by chance only: their means."""
     if len(runs) == 1:
         return list(runs[0])
     merged = []
     for first in runs[0]:
-        values = [each.value for answers in runs for each in answers if each.name == first.name]
-        known = [value for value in values if math.isfinite(value)]
-        count = len(known)
-        mean = math.fsum(known) / count if count else math.nan
-        squares = math.fsum((value - mean) ** 2 for value in known)
-        error = math.sqrt(squares / (count - 1) / count) if count > 1 else None
-        merged.append(Answer(first.name, first.ask, mean, first.unit, error, ""))
+        found = mean([each for answers in runs for each in answers if each.name == first.name])
+        merged.append(Answer(first.name, first.ask, found.value, first.unit, found.error, ""))
     return merged
 
 

@@ -17,7 +17,6 @@ from driftwell.record.master import MASTER
 STUDY_FILE = "study.toml"
 CATALOGUE_FILE = "catalogue.sqlite"
 SUMMARY_FILE = "summary.txt"
-ANSWERS_FILE = "answers.csv"
 RUNS = "runs"
 _DIGITS = 16
 """Digits of a run's digest that name its folder."""
