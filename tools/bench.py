@@ -27,6 +27,7 @@ from bench_cases import tree
 from bench_cases.direct import direct_16k
 from bench_cases.reference import GCC, reference_library
 from bench_cases.start import start, startup
+from bench_cases.sweep import sweep
 from bench_cases.trap import direct_2k, script, small_trap
 from bench_cases.whole_run import run_1e6
 
@@ -49,6 +50,7 @@ LONG: dict[str, Case] = {
     "tree-growth": tree.tree_growth,
     "run-1e6": run_1e6,
     "start": start,
+    "sweep": sweep,
 }
 CASES = {**QUICK, **LONG}
 WITH_LARGE: dict[str, dict[str, Any]] = {

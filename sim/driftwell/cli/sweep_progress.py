@@ -13,6 +13,7 @@ from tqdm import tqdm
 from driftwell.cli.clock import by_the_clock
 from driftwell.cli.printing import is_terminal, tell
 from driftwell.cli.stop_wish import StopWish
+from driftwell.kernels.compiled import kept_in
 from driftwell.study.cores import Sharing
 from driftwell.study.progress import Failure, SweepProgress
 
@@ -35,8 +36,10 @@ class SweepDisplay:
         self._failures = 0
 
     def begins(self, sharing: Sharing, progress: SweepProgress) -> None:
-        """Say how the cores are shared."""
+        """Say how the cores are shared, and why nothing may move yet."""
         tell(sharing.because)
+        if not any(kept_in().rglob("*.nbi")):
+            tell("compiling for this machine, once for each version: up to a minute")
         self._began = time.monotonic()
         if not is_terminal(sys.stderr):
             self._next = _FIRST_LINE
