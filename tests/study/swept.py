@@ -69,11 +69,11 @@ def waited_for(process: subprocess.Popen[str], count: int, folder: Path, pattern
 def gone(pids: list[int], patience: float = 30.0) -> bool:
     """Whether the processes end within the time."""
     end = time.monotonic() + patience
-    while time.monotonic() < end:
-        if not any(_lives(pid) for pid in pids):
-            return True
+    while any(_lives(pid) for pid in pids):
+        if time.monotonic() >= end:
+            return False
         time.sleep(0.02)
-    return False
+    return True
 
 
 def _lives(pid: int) -> bool:
