@@ -29,6 +29,7 @@ ION_MASS = 100.0 * ATOMIC_MASS
 ION_RATIO = ELEMENTARY_CHARGE / ION_MASS
 OFF = Coulomb(method="off")
 DIRECT = Coulomb(method="direct")
+TREE = Coulomb(method="tree", accuracy=1e-2)
 
 
 def ions(
@@ -74,10 +75,10 @@ def loop(
     samples: ArrayLike = (),
     traced: Sequence[Traced] = (),
     threads: int = 1,
-    coulomb_state: Mapping[str, NDArray[Any]] | None = None,
+    state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
-    """A time loop at its start; `records` and `samples` are times of marks, s."""
+    """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s."""
     options = Stepping(**stepping)
     breaks = [t for field in fields for t in waveform_breaks(field.waveform(), duration)]
     plan = schedule(
@@ -100,7 +101,7 @@ def loop(
         plan,
         traced,
         threads,
-        coulomb_state,
+        state,
     )
 
 

@@ -25,6 +25,7 @@ from typing import Any
 import numpy as np
 from bench_cases import tree
 from bench_cases.direct import direct_16k
+from bench_cases.night import record_1e4, resume
 from bench_cases.reference import GCC, reference_library
 from bench_cases.start import start, startup
 from bench_cases.sweep import sweep
@@ -50,6 +51,8 @@ LONG: dict[str, Case] = {
     "tree-growth": tree.tree_growth,
     "run-1e6": run_1e6,
     "start": start,
+    "record-1e4": record_1e4,
+    "resume": resume,
     "sweep": sweep,
 }
 CASES = {**QUICK, **LONG}

@@ -21,7 +21,8 @@ from driftwell.record.layout import (
     Attribute,
     Dataset,
 )
-from driftwell.record.master import ANSWERS_FILE, MASTER
+from driftwell.record.lock import LOCK
+from driftwell.record.master import ANSWERS_FILE, LAST_FILE, MASTER
 
 PAGE = Path(__file__).resolve().parent.parent / "docs" / "record-format.md"
 
@@ -36,9 +37,12 @@ writer and the reader follow (`record/layout.py`); change the table, not the pag
 | `{SCENARIO_FILE}` | the scenario, as given |
 | `{SEGMENTS}/000001.h5`, `000002.h5`, ... | the record, cut in time; each file is written once |
 | `{MASTER}` | the master: shows all segments in one piece; replaced as a whole at each segment |
-| `{ANSWERS_FILE}` | answers and outcome; there once the run has ended |
+| `{ANSWERS_FILE}` | answers and outcome; there once the run has ended or was stopped |
+| `{LAST_FILE}` | of a run that was stopped or failed: a snapshot at its last record |
+| `{LOCK}` | which process works in the folder; there meanwhile, or after a kill |
 
 A file ending in `.part` was being written when the run was cut off; it is not part of the record.
+When the run goes on, `{ANSWERS_FILE}`, `{LAST_FILE}` and such files are removed.
 All paths inside the files are relative, so a folder can be moved or copied as a whole.
 
 From Python, `driftwell.open_run(folder)` reads the folder and says what is damaged. Any HDF5 reader
@@ -55,10 +59,12 @@ compressed.
 STATE = """\
 ## State
 
-The group `state` of each segment holds all that is needed to go on from the segment's end: the
-particles under `state/particles/` (the arrays of the program, `position` and `velocity` as (3, n),
-m and m/s), the position in the schedule as whole numbers, and the accounts with what rounding
-dropped from them. Names and types are kept as given and read back bit for bit
+The group `state` of each segment holds all that is needed to go on from where it was sealed, at a
+record or between two: the particles under `state/particles/` (the arrays of the program, `position`
+and `velocity` as (3, n), m and m/s; with them those lost since the last record, told by
+`state/charges/alive`), the position in the schedule as whole numbers, and the accounts with what
+rounding dropped from them. A segment sealed between two records may hold losses, passages and
+samples later than its last record. Names and types are kept as given and read back bit for bit
 (`open_run(folder).state()`). The master links the newest state.
 """
 

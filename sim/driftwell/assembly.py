@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -68,11 +69,19 @@ class Assembly:
     schedule: Schedule
     extent: Extent
 
-    def time_loop(self, threads: int) -> TimeLoop:
-        """The loop that moves the charges; it works on `particles` themselves."""
+    def time_loop(
+        self,
+        threads: int,
+        particles: Particles | None = None,
+        state: Mapping[str, NDArray[Any]] | None = None,
+    ) -> TimeLoop:
+        """The loop that moves the charges; it works on `particles` themselves.
+
+        particles, state : where a run is taken up, those it was left with
+        """
         tables = field_tables(self.scenario.field, self.bodies)
         return TimeLoop(
-            self.particles,
+            self.particles if particles is None else particles,
             Fields(
                 electric=tables[Role.ELECTRIC],
                 uniform=tables[Role.UNIFORM_MAGNETIC],
@@ -84,6 +93,7 @@ class Assembly:
             self.schedule,
             [_traced(request, self.clouds) for request in self.requests],
             threads,
+            state,
         )
 
 

@@ -7,45 +7,58 @@ from __future__ import annotations
 
 import shlex
 import time as clocks
-from collections.abc import Sequence
+from collections.abc import Iterator
+from contextlib import ExitStack, contextmanager, suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any, Protocol
 
 import numpy as np
-from numpy.typing import NDArray
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.answering import answer_all
-from driftwell.answers.evidence import CloudFacts
-from driftwell.answers.moments import moments_of
-from driftwell.assembly import assembled
-from driftwell.coulomb.promise import Broken
-from driftwell.errors import ScenarioError, StepError
+from driftwell.assembly import Assembly, assembled
+from driftwell.coulomb.promise import Broken, Promise
+from driftwell.errors import FullError, ScenarioError, StepError
 from driftwell.forms import spelled
 from driftwell.kernels.threads import on_threads
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
-from driftwell.record.claim import refuse_taken
-from driftwell.record.form import DEFAULT_TRACKS
+from driftwell.record.claim import holds_run, refuse_taken, unwritable
+from driftwell.record.earlier import clear_unsealed, differences, earlier_run, put_aside
 from driftwell.record.header import Header, trace_name
-from driftwell.record.layout import dataset
+from driftwell.record.lock import held
 from driftwell.record.outcome import Outcome
-from driftwell.record.reader import open_run
+from driftwell.record.reader import Run, open_run
 from driftwell.record.resume_state import particles_of, particles_state
+from driftwell.record.rows import (
+    event_rows,
+    ledger_row,
+    moment_rows,
+    row_of,
+    track_rows,
+    tracked_ids,
+)
 from driftwell.record.writer import RunWriter
-from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.room import refuse_beyond_disk
-from driftwell.stepping.loop import Events
+from driftwell.stepping.loop import entries_below
 from driftwell.stepping.schedule import RECORD, SNAPSHOT, Schedule
 from driftwell.stepping.step_choice import StepChoice
 
-FINISHED, ALL_LOST, STOPPED, FAILED = "finished", "all lost", "stopped", "failed"
+FINISHED, ALL_LOST, STOPPED, FAILED, FULL = (
+    "finished",
+    "all lost",
+    "stopped",
+    "failed",
+    "not recorded",
+)
+_ENDED = {FINISHED, ALL_LOST, FAILED}
+"""What is not gone on with: a motion that could not be continued cannot be now."""
 _MOVED = ("particles/position", "particles/velocity")
 """What the time loop changes of the particles."""
-EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5}
+EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5, FULL: 6}
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,45 +105,144 @@ class Result:
     broken: Broken | None = None
 
 
-def run(loaded: LoadedScenario, folder: Path, observer: Observer, threads: int = 1) -> Result:
-    """Execute a scenario, leaving its record in `folder`.
+def run(
+    loaded: LoadedScenario,
+    folder: Path,
+    observer: Observer,
+    threads: int = 1,
+    *,
+    fresh: bool = False,
+    stop_after: float | None = None,
+) -> Result:
+    """Execute a scenario, leaving its record in `folder`, or go on with what was begun there.
+
+    A run that was cut off or stopped is gone on with, to the same last bit as if it had not been;
+    one that has ended is answered from its record.
+
+    fresh : put what is there aside, under another name, and start over
+    stop_after : s by the clock, after which the run stops by itself, to be gone on with
 
     Raises
     ------
     ScenarioError
         The charges cannot be placed as the scenario says, or the run would not fit in memory.
+    BusyError
+        Another process works in the folder.
     RecordError
-        The folder holds another run or cannot be written; the text says what is kept.
+        The folder holds the run of another scenario, or cannot be written; the text says what is
+        kept.
     """
-    with on_threads(threads) as given:
-        return _Execution(loaded, folder, observer, given).result()
+    text = loaded.text.encode()
+    with on_threads(threads) as given, ExitStack() as holding:
+        earlier, holds = None, holds_run(folder)
+        if holds:
+            if fresh:
+                with _hold(folder):
+                    pass
+                observer.told(f"The run that was there is kept as {put_aside(folder)}.")
+            else:
+                holding.enter_context(_hold(folder))
+                earlier = earlier_run(folder, text, loaded.digest)
+                if earlier is None:
+                    clear_unsealed(folder)
+                elif earlier.outcome.word in _ENDED:
+                    observer.told("Not computed again: the record is whole; --fresh does.")
+                    return _told_again(earlier)
+        if earlier is None:
+            refuse_taken(folder, text)
+        parts = assembled(loaded)
+        if earlier is None:
+            refuse_beyond_disk(parts.extent, folder)
+        execution = _Execution(parts, folder, observer, stop_after)
+        if earlier is None:
+            execution.begin(loaded, given, holding, held_already=holds and not fresh)
+        else:
+            execution.go_on(earlier, given)
+        return execution.result()
+
+
+@contextmanager
+def _hold(folder: Path) -> Iterator[None]:
+    """Keep other processes out of a folder; what refuses is told."""
+    with ExitStack() as stack:
+        try:
+            stack.enter_context(held(folder))
+        except OSError as fault:
+            raise unwritable(folder, fault) from fault
+        yield
+
+
+@contextmanager
+def _made(folder: Path) -> Iterator[None]:
+    """A folder, made where it is missing and held; without a run in it it goes again."""
+    missing = not folder.exists()
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
+    try:
+        with _hold(folder):
+            yield
+    finally:
+        if missing and not holds_run(folder):
+            with suppress(OSError):
+                folder.rmdir()
+
+
+def _told_again(earlier: Run) -> Result:
+    """What a run came to that has ended."""
+    watch = Promise(earlier.header.coulomb_accuracy, entries_below("coulomb", earlier.state()))
+    return Result(
+        earlier.folder,
+        earlier.outcome,
+        list(earlier.answers),
+        row_of(earlier.ledger[-1]),
+        watch.broken(earlier.end_time),
+    )
 
 
 class _Execution:
     """A run while it goes on."""
 
     def __init__(
-        self, loaded: LoadedScenario, folder: Path, observer: Observer, threads: int
+        self,
+        parts: Assembly,
+        folder: Path,
+        observer: Observer,
+        stop_after: float | None,
     ) -> None:
-        created = datetime.now(UTC).isoformat(timespec="seconds")
-        refuse_taken(folder, loaded.text.encode())
-        parts = assembled(loaded)
-        refuse_beyond_disk(parts.extent, folder)
-        scenario = parts.scenario
-        self._scenario = scenario
+        self._parts = parts
+        self._scenario = parts.scenario
         self._folder = folder
         self._observer = observer
         self._clouds = parts.clouds
         self._born = len(parts.particles)
         self._choice = parts.choice
         self._schedule = parts.schedule
-        self._tracked = _tracked(scenario, parts.particles)
+        self._stop_after = stop_after
+        self._stopped = "Asked to stop"
+        self._row: LedgerRow | None = None
+        self._state: dict[str, Any] = {}
+        self._flags = 0
+        self._seconds = 0.0
+        self._began = self._started = clocks.monotonic()
         observer.begins(parts.choice, parts.schedule, parts.particles)
+
+    def begin(
+        self, loaded: LoadedScenario, threads: int, holding: ExitStack, *, held_already: bool
+    ) -> None:
+        """At time zero, with a new record, in a folder that is held from now on."""
+        created = datetime.now(UTC).isoformat(timespec="seconds")
+        parts, scenario = self._parts, self._scenario
+        self._tracked = tracked_ids(len(parts.particles), scenario.record.tracks)
         self._loop = parts.time_loop(threads)
+        self._ledger = Ledger()
         summation = self._loop.summation
-        observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
+        self._observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
+        if not held_already:
+            holding.enter_context(_made(self._folder))
         self._writer = RunWriter.create(
-            folder,
+            self._folder,
             Header(
                 scenario=loaded.text,
                 title=scenario.title,
@@ -155,26 +267,55 @@ class _Execution:
                 created=created,
             ),
         )
-        self._ledger = Ledger()
-        self._row: LedgerRow | None = None
-        self._state: dict[str, Any] = {}
-        self._flags = 0
-        self._began = 0.0
+        self._began = clocks.monotonic()
+        self._record(0)
+
+    def go_on(self, earlier: Run, threads: int) -> None:
+        """Where an earlier process sealed its last segment."""
+        state = earlier.state()
+        self._tracked = np.array(earlier.header.tracked, dtype=np.int64)
+        self._loop = self._parts.time_loop(threads, particles_of(state), state)
+        self._ledger = Ledger.taken_up(entries_below("ledger", state))
+        self._row = row_of(earlier.ledger[-1])
+        self._flags = int(self._schedule.flags[self._schedule.time == self._row.time][0])
+        self._state = state
+        self._seconds = float(state["run/seconds"])
+        self._writer = RunWriter.resumed(earlier)
+        steps = self._loop.steps_done
+        self._observer.told(
+            f"Going on with the run begun {earlier.header.created}, from "
+            f"t = {spelled(self._loop.time, 's')}, after {steps} step{'s' * (steps != 1)}"
+        )
+        for sentence in differences(earlier):
+            self._observer.told(sentence)
+        self._began = clocks.monotonic()
 
     def result(self) -> Result:
         """Go through all marks, then answer."""
-        self._began = clocks.monotonic()
-        flags = self._schedule.flags
         whole = spelled(self._scenario.duration, "s")
         word, sentence = FINISHED, f"The motion was followed to t = {whole}."
-        self._record(0)
         try:
-            for mark in np.flatnonzero(flags & (RECORD | SNAPSHOT))[1:]:
+            word, sentence = self._moved(word, sentence)
+            if word in {STOPPED, FAILED} and not self._flags & SNAPSHOT:
+                # questions about the end are answered for the last record
+                self._writer.last(self._reached, particles_of(self._state))
+            return self._finished(word, sentence)
+        except FullError as fault:
+            return self._result(FULL, str(fault), [])
+
+    def _moved(self, word: str, sentence: str) -> tuple[str, str]:
+        """Go from record to record; how it ended, which is as given where nothing came between."""
+        flags = self._schedule.flags
+        ahead = np.flatnonzero(flags & (RECORD | SNAPSHOT))
+        try:
+            for mark in ahead[ahead > self._loop.mark]:
                 if not self._loop.to_mark(int(mark), self._keep_going):
-                    word = STOPPED
+                    self._checkpoint()
                     reached = spelled(self._reached, "s")
-                    sentence = f"Asked to stop; the record up to t = {reached} is kept."
-                    break
+                    return STOPPED, (
+                        f"{self._stopped}; recorded up to t = {reached}, and the same command "
+                        "goes on."
+                    )
                 gone = not self._loop.charges.alive.any()
                 self._record(int(mark), last=gone)
                 if gone:
@@ -183,11 +324,8 @@ class _Execution:
                     break
         except StepError as fault:
             word, sentence = FAILED, f"The motion could not be continued {self._of_whom(fault)}"
-        if word in {STOPPED, FAILED} and not self._flags & SNAPSHOT:
-            # questions about the end are answered for the last record
-            self._writer.snapshot(self._reached, particles_of(self._state))
-        self._writer.seal(self._state)
-        return self._finished(word, sentence)
+        self._seal(self._state)
+        return word, sentence
 
     @property
     def _reached(self) -> float:
@@ -203,7 +341,13 @@ class _Execution:
         return str(fault)
 
     def _keep_going(self) -> bool:
+        """Between two calls of the compiled loop, about twice a second."""
         loop = self._loop
+        if self._writer.due(self._state_bytes):
+            self._checkpoint()
+        if self._stop_after is not None and clocks.monotonic() - self._started > self._stop_after:
+            self._stopped = "The time allowed was over"
+            return False
         return self._observer.goes_on(
             Progress(
                 time=loop.time,
@@ -227,20 +371,48 @@ class _Execution:
         self._row = self._ledger.close(
             time, loop.plan, loop.charges, loop.work, loop.summation, error
         )
-        writer.ledger(_ledger_row(self._row))
-        for events in loop.take_events():
-            self._keep_events(events)
-        for times, values in loop.take_samples():
-            writer.trace(times, values)
+        writer.ledger(ledger_row(self._row))
+        self._keep_events()
         loop.remove_lost()
         if flags & RECORD or last:
-            writer.trajectory(time, _tracks(loop.particles, self._tracked))
-            writer.moments(time, _moment_rows(loop.particles, self._clouds))
+            writer.trajectory(time, track_rows(loop.particles, self._tracked))
+            writer.moments(time, moment_rows(loop.particles, self._clouds))
         if flags & SNAPSHOT or last:
             writer.snapshot(time, loop.particles)
         self._keep_state()
-        if writer.due(self._state):
-            writer.seal(self._state)
+        if writer.due(self._state_bytes):
+            self._seal(self._state)
+
+    def _keep_events(self) -> None:
+        """Record what happened on surfaces, and the samples taken, since the last time."""
+        for events in self._loop.take_events():
+            losses, crossings = event_rows(events, len(self._scenario.wall))
+            self._writer.losses(losses)
+            self._writer.crossings(crossings)
+        for times, values in self._loop.take_samples():
+            self._writer.trace(times, values)
+
+    def _checkpoint(self) -> None:
+        """Seal what there is between two records, so that a kill costs minutes, not a record."""
+        self._keep_events()
+        self._seal({**particles_state(self._loop.particles), **self._other_state()})
+
+    def _seal(self, state: dict[str, Any]) -> None:
+        self._writer.seal({**state, "run/seconds": np.float64(self._seconds_so_far())})
+
+    def _seconds_so_far(self) -> float:
+        """s by the clock, of all processes that worked at the run."""
+        return self._seconds + clocks.monotonic() - self._began
+
+    @property
+    def _state_bytes(self) -> int:
+        """Bytes of a state, about."""
+        return sum(each.nbytes for each in self._state.values())
+
+    def _other_state(self) -> dict[str, Any]:
+        """All of the state but the particles."""
+        kept = {f"ledger/{name}": item for name, item in self._ledger.state().items()}
+        return {**self._loop.state(), **kept}
 
     def _keep_state(self) -> None:
         """Keep the state as it is now; the loop changes places and velocities only, in their place.
@@ -256,37 +428,22 @@ class _Execution:
                 state[name] = old
             else:
                 state[name] = state[name].copy()
-        kept = {f"ledger/{name}": item for name, item in self._ledger.state().items()}
-        self._state = {**state, **loop.state(), **kept}
-
-    def _keep_events(self, events: Events) -> None:
-        walls = len(self._scenario.wall)
-        lost = events.surface < walls
-        light2 = self._loop.plan.light2
-        losses = np.zeros(int(lost.sum()), dataset("losses").dtype())
-        crossings = np.zeros(int((~lost).sum()), dataset("crossings").dtype())
-        for rows, chosen in ((losses, lost), (crossings, ~lost)):
-            for name in ("time", "id", "cloud", "position", "velocity", "weight"):
-                rows[name] = getattr(events, name)[chosen]
-        losses["wall"] = events.surface[lost]
-        squares = (losses["velocity"] ** 2).sum(axis=1)
-        gamma = np.sqrt(1.0 + squares / light2)
-        losses["kinetic_energy"] = events.mass[lost] * squares / (1.0 + gamma)
-        crossings["detector"] = events.surface[~lost] - walls
-        crossings["direction"] = events.direction[~lost]
-        self._writer.losses(losses)
-        self._writer.crossings(crossings)
+        self._state = {**state, **self._other_state()}
 
     def _finished(self, word: str, sentence: str) -> Result:
         answers = answer_all(self._scenario.question, open_run(self._folder))
+        result = self._result(word, sentence, answers)
+        self._writer.finish(result.outcome, answers)
+        return result
+
+    def _result(self, word: str, sentence: str, answers: list[Answer]) -> Result:
         outcome = Outcome(
             word=word,
             sentence=sentence,
             exit_code=EXIT_CODES[word],
-            wall_time=clocks.monotonic() - self._began,
+            wall_time=self._seconds_so_far(),
             steps=self._loop.steps_done,
         )
-        self._writer.finish(outcome, answers)
         if self._row is None:
             raise ScenarioError("the run kept no record")
         return Result(
@@ -299,44 +456,3 @@ def _command(loaded: LoadedScenario) -> str:
     settings = [word for each in loaded.settings for word in ("--set", each)]
     text = shlex.join(["driftwell", "run", str(loaded.path), *settings])
     return text.encode(errors="backslashreplace").decode()  # names of files may be no text
-
-
-def _tracked(scenario: Scenario, particles: Particles) -> NDArray[np.int64]:
-    """Ids of the charges whose trajectories are kept, evenly chosen."""
-    count = len(particles)
-    wanted = scenario.record.tracks
-    wanted = min(count, DEFAULT_TRACKS) if wanted is None else min(wanted, count)
-    return np.unique(np.linspace(0, count - 1, wanted).round().astype(np.int64))
-
-
-def _tracks(particles: Particles, tracked: NDArray[np.int64]) -> NDArray[np.float64]:
-    """State (tracked, 6) of the tracked charges, NaN where lost."""
-    rows = np.full((len(tracked), 6), np.nan)
-    if len(particles) == 0:
-        return rows
-    where = np.minimum(np.searchsorted(particles.id, tracked), len(particles) - 1)
-    alive = particles.id[where] == tracked
-    rows[alive, :3] = particles.position[:, where[alive]].T
-    rows[alive, 3:] = particles.velocity[:, where[alive]].T
-    return rows
-
-
-def _moment_rows(particles: Particles, clouds: Sequence[CloudFacts]) -> NDArray[Any]:
-    """One row of moments for each cloud."""
-    rows = np.zeros(len(clouds), dataset("moments").dtype())
-    for row, cloud in zip(rows, clouds, strict=True):
-        # charges stand in the order of their clouds
-        first, last = np.searchsorted(particles.cloud, [cloud.index, cloud.index + 1])
-        member = slice(first, last)
-        found = moments_of(particles.position[:, member], particles.velocity[:, member], cloud.mass)
-        for name in ("count", "centre", "covariance", "kinetic_energy", "kinetic_variance"):
-            row[name] = getattr(found, name)
-    return rows
-
-
-def _ledger_row(row: LedgerRow) -> NDArray[Any]:
-    """A ledger row in the record's type."""
-    made = np.zeros(1, dataset("ledger").dtype())
-    for name in dataset("ledger").dtype().names or ():
-        made[0][name] = getattr(row, name)
-    return made

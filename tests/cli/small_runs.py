@@ -108,7 +108,7 @@ def started(
             text=True,
             encoding="utf-8",
             cwd=folder,
-            env={**os.environ, "PYTHONIOENCODING": "utf-8", **environment},
+            env={**os.environ, "PYTHONIOENCODING": "utf-8", "PYTHONUNBUFFERED": "", **environment},
         )
     finally:
         for each, handler in before.items():

@@ -176,7 +176,7 @@ def test_an_outcome_that_is_no_end_is_told_on_both_streams(tmp_path: Path, capsy
 def test_a_defect_is_told_without_a_traceback_and_ends_with_1(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def broken(*_: object) -> None:
+    def broken(*_: object, **__: object) -> None:
         raise KeyError("a thing")
 
     monkeypatch.setattr(command_module, "run", broken)
@@ -191,7 +191,7 @@ def test_a_defect_is_told_without_a_traceback_and_ends_with_1(
 def test_a_defect_shows_where_it_is_to_whoever_asks(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def broken(*_: object) -> None:
+    def broken(*_: object, **__: object) -> None:
         raise KeyError("a thing")
 
     monkeypatch.setattr(command_module, "run", broken)
@@ -203,7 +203,7 @@ def test_a_defect_shows_where_it_is_to_whoever_asks(
 def test_too_little_memory_is_told_in_words(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def too_large(*_: object) -> None:
+    def too_large(*_: object, **__: object) -> None:
         raise MemoryError("Unable to allocate 2.98 TiB")
 
     monkeypatch.setattr(command_module, "run", too_large)

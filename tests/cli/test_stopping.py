@@ -55,7 +55,9 @@ def test_a_signal_stops_the_run_in_order_and_the_record_is_kept(
     assert 4 == process.returncode, err
     assert "Stopping after the steps under way; once more to end at once." in err
     assert "Traceback" not in err
-    told = re.search(r"stopped: Asked to stop; the record up to t = (.*) is kept\.", out)
+    told = re.search(
+        r"stopped: Asked to stop; recorded up to t = (.*), and the same command goes on\.", out
+    )
     assert told is not None
     assert "held    1.000 ± 0.056" in out
     found = open_run(tmp_path / "run")

@@ -113,19 +113,20 @@ def test_a_run_cannot_be_finished_over_rows_not_sealed(tmp_path):
     assert FINISHED == open_run(tmp_path / "run").outcome
 
 
-def test_a_segment_is_due_after_some_time_once_there_is_something_in_it(tmp_path):
+def test_a_segment_is_due_after_some_time(tmp_path):
+    """Also between two records, when it has nothing but the state."""
     clock = Clock()
     writer = RunWriter.create(tmp_path / "run", invented_header(), clock)
+    assert not writer.due(0)
     clock.now += 100.0
-    assert not writer.due({})
-    writer.trajectory(0.0, np.zeros((3, 6)))
-    assert writer.due({})
+    assert writer.due(0)
     writer.seal({})
+    assert not writer.due(0)
     writer.trajectory(1.0, np.zeros((3, 6)))
     clock.now += 9.9
-    assert not writer.due({})
+    assert not writer.due(0)
     clock.now += 0.2
-    assert writer.due({})
+    assert writer.due(0)
 
 
 def test_a_segment_is_due_by_its_bytes(tmp_path):
@@ -133,9 +134,9 @@ def test_a_segment_is_due_by_its_bytes(tmp_path):
     state = np.zeros((100_000, 6))
     for _ in range(6):
         writer.trajectory(0.0, state)
-    assert not writer.due({})
+    assert not writer.due(0)
     writer.trajectory(0.0, state)
-    assert writer.due({})
+    assert writer.due(0)
 
 
 def test_a_night_leaves_hundreds_of_segments():
@@ -176,7 +177,7 @@ def test_the_writer_asks_how_large_the_state_is(tmp_path):
     writer = RunWriter.create(tmp_path / "run", invented_header(), clock)
     writer.trajectory(0.0, np.zeros((3, 6)))
     clock.now += 11.0
-    assert writer.due({})
-    assert not writer.due({"large": np.zeros(2_000_000)})
+    assert writer.due(0)
+    assert not writer.due(16_000_000)
     clock.now += 30.0
-    assert writer.due({"large": np.zeros(2_000_000)})
+    assert writer.due(16_000_000)

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from driftwell.coulomb.form import Coulomb
+from driftwell.particles.state import Particles
 from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.schedule import RECORD
 from tests.cases import wall
@@ -16,11 +17,12 @@ NEVER = 1 << 40
 SPAN, STEPS, RECORDS = 20e-6, 1000, 10
 
 
-def swelling(**changes: object) -> TimeLoop:
+def swelling(particles: Particles | None = None, **changes: object) -> TimeLoop:
     """130 macro-charges that blow each other up, within a wall far away."""
     random = np.random.default_rng(2)
+    start = ions(random.normal(scale=1e-4, size=(130, 3)), weight=5.0)
     return loop(
-        ions(random.normal(scale=1e-4, size=(130, 3)), weight=5.0),
+        start if particles is None else particles,
         SPAN,
         SPAN / STEPS,
         walls=[wall("sphere", radius="1 mm")],
@@ -68,13 +70,8 @@ def test_a_run_taken_up_again_sums_as_it_did(inexact: Inexact) -> None:  # noqa:
     """From the state alone: the mended sum, its field to the last bit, and the watch."""
     inexact.tolerance = 1e-3
     moving, _, _ = moved(NEVER)
-    state = {
-        name.removeprefix("coulomb/"): values
-        for name, values in moving.state().items()
-        if name.startswith("coulomb/")
-    }
     inexact.tolerance = 7e-3  # what a new run would begin with is of no account
-    again = swelling(threads=2, coulomb_state=state)
+    again = swelling(moving.particles, threads=2, state=moving.state())
     assert moving.summation.manner == again.summation.manner
     assert moving.promise.state().keys() == again.promise.state().keys()
     for name, values in moving.promise.state().items():

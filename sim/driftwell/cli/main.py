@@ -12,6 +12,7 @@ import warnings
 from collections.abc import Sequence
 
 from driftwell._version import __version__
+from driftwell.cli.durations import seconds_of
 from driftwell.cli.printing import flush_quietly, tell, write_anything
 
 INTERRUPTED = 130
@@ -32,7 +33,8 @@ TRACEBACK = "DRIFTWELL_TRACEBACK"
 
 _EXIT_CODES = """\
 exit codes: 0 finished; 2 the scenario, the folder or the command line cannot be used;
-3 every charge was lost; 4 stopped on request; 5 the motion could not be continued;
+3 every charge was lost; 4 stopped on request or by --stop-after, the same command goes on;
+5 the motion could not be continued; 6 the disk refused the record, the same command goes on;
 130 interrupted at once; 1 a defect of driftwell
 """
 
@@ -65,6 +67,17 @@ def _parser() -> argparse.ArgumentParser:
     )
     run.add_argument("--seed", type=_seed, metavar="N", help="seed instead of the scenario's own")
     run.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    run.add_argument(
+        "--fresh",
+        action="store_true",
+        help="start over where a run was begun; the old one is kept under another name",
+    )
+    run.add_argument(
+        "--stop-after",
+        type=_duration,
+        metavar="TIME",
+        help="stop by the clock, e.g. after 7h30m; the same command then goes on",
+    )
     _add_settings(run)
 
     sweep = commands.add_parser(
@@ -143,6 +156,13 @@ def _seed(text: str) -> int:
     return _whole(text, 0, LARGEST_SEED)
 
 
+def _duration(text: str) -> float:
+    try:
+        return seconds_of(text)
+    except ValueError as fault:
+        raise argparse.ArgumentTypeError(str(fault)) from None
+
+
 def _folder(text: str) -> str:
     if not text.strip():
         raise argparse.ArgumentTypeError("needs the name of a folder")
@@ -153,9 +173,14 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command; returns its exit code."""
     write_anything()
     try:
-        asked = _parser().parse_args(arguments)
+        return _answered(arguments)
     finally:
         flush_quietly()
+
+
+def _answered(arguments: Sequence[str] | None) -> int:
+    """The exit code of the command; errors and defects have been told."""
+    asked = _parser().parse_args(arguments)
     try:
         with warnings.catch_warnings():
             if not sys.warnoptions:  # meant for whoever works on the libraries, not for the user
@@ -208,7 +233,15 @@ def _carry_out(asked: argparse.Namespace) -> int:
     settings = list(asked.settings)
     if asked.seed is not None:
         settings.append(f"seed={asked.seed}")
-    return run_command(asked.file, asked.output, settings, threads, not asked.no_pictures)
+    return run_command(
+        asked.file,
+        asked.output,
+        settings,
+        threads,
+        pictures=not asked.no_pictures,
+        fresh=asked.fresh,
+        stop_after=asked.stop_after,
+    )
 
 
 def _usable_threads(asked: int | None) -> int:

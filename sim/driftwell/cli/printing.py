@@ -29,7 +29,7 @@ def answer(lines: Iterable[str]) -> bool:
     try:
         print(shown("\n".join(lines)), flush=True)
     except OSError as fault:
-        _give_up_stdout()
+        _give_up(sys.stdout)
         if isinstance(fault, BrokenPipeError):
             return True
         tell(f"The output cannot be written ({fault.strerror}).")
@@ -38,17 +38,23 @@ def answer(lines: Iterable[str]) -> bool:
 
 
 def flush_quietly() -> None:
-    """Send what stdout still holds; where its reader has left, say nothing of it at exit."""
-    try:
-        if sys.stdout is not None:
-            sys.stdout.flush()
-    except OSError:
-        _give_up_stdout()
+    """Send what stdout and stderr still hold; where a reader has left, nothing is said of it.
+
+    Left to itself the interpreter would try once more at exit, and end with a code of its own.
+    """
+    for stream in (sys.stdout, sys.stderr):
+        try:
+            if stream is not None:
+                stream.flush()
+        except OSError:
+            _give_up(stream)
+        except ValueError:  # it has been closed
+            continue
 
 
-def _give_up_stdout() -> None:
-    """Let what is left in the buffer vanish: it must not be tried, and told of, again at exit."""
-    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+def _give_up(stream: TextIO) -> None:
+    """Let what is left in the stream's buffer vanish."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
 
 
 def tell(text: str) -> None:

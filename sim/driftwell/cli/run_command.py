@@ -16,7 +16,7 @@ from driftwell.kernels.compilation import first_compilation
 from driftwell.ledger.doubts import doubts
 from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
-from driftwell.run import FINISHED, Result, run
+from driftwell.run import FINISHED, FULL, Result, run
 from driftwell.scenario.read import LoadedScenario, read_scenario
 
 UNUSABLE = 2
@@ -24,14 +24,23 @@ UNUSABLE = 2
 
 
 def run_command(
-    file: str, output: str | None, settings: Sequence[str], threads: int, pictures: bool
+    file: str,
+    output: str | None,
+    settings: Sequence[str],
+    threads: int,
+    *,
+    pictures: bool = True,
+    fresh: bool = False,
+    stop_after: float | None = None,
 ) -> int:
     """Execute a scenario; returns the exit code of its outcome, or 2 with a message."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-run")
     try:
         loaded = read_scenario(file, settings)
         tell(loaded.scenario.title)
-        result, written = _carried_out(loaded, folder, threads, pictures)
+        result, written = _carried_out(
+            loaded, folder, threads, pictures=pictures, fresh=fresh, stop_after=stop_after
+        )
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
@@ -42,7 +51,13 @@ def run_command(
 
 
 def _carried_out(
-    loaded: LoadedScenario, folder: Path, threads: int, pictures: bool
+    loaded: LoadedScenario,
+    folder: Path,
+    threads: int,
+    *,
+    pictures: bool,
+    fresh: bool,
+    stop_after: float | None,
 ) -> tuple[Result, bool]:
     """The run's result, and whether all that was to be printed and drawn could be."""
     wish = StopWish((folder / MASTER).exists)
@@ -50,11 +65,11 @@ def _carried_out(
     with wish.listening():
         try:
             with first_compilation(display.compiles):
-                result = run(loaded, folder, display, threads)
+                result = run(loaded, folder, display, threads, fresh=fresh, stop_after=stop_after)
         finally:
             display.ends()
         written = _report(result)
-        if pictures:
+        if pictures and result.outcome.word != FULL:
             written = _draw(folder) and written
     return result, written
 

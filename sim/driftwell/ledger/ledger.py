@@ -15,6 +15,7 @@ between records how far the account of angular momentum may be open for it.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field, fields
 
 import numpy as np
@@ -239,6 +240,24 @@ class Ledger:
             "torque": np.array([self._time, self._torque, self._untrue]),
             "scale": np.array([getattr(self._scale, each.name) for each in fields(_Scale)]),
         }
+
+    @classmethod
+    def taken_up(cls, state: Mapping[str, Floats]) -> Ledger:
+        """The ledger whose :meth:`state` this is."""
+        energy, px, py, pz, lx, ly, lz, charge, count = state["start"].tolist()
+        time, torque, untrue = state["torque"].tolist()
+        return cls(
+            energy,
+            np.array([px, py, pz]),
+            np.array([lx, ly, lz]),
+            charge,
+            count,
+            True,
+            time,
+            torque,
+            untrue,
+            _Scale(*state["scale"].tolist()),
+        )
 
     def _open(
         self, energy: float, momentum: Floats, angular: Floats, charge: float, count: float

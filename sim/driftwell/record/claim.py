@@ -12,6 +12,15 @@ from driftwell.record.index import SEGMENTS
 from driftwell.record.master import ANSWERS_FILE, MASTER
 
 SCENARIO_FILE = "scenario.toml"
+_OWN = (MASTER, ANSWERS_FILE, SEGMENTS)
+
+
+def holds_run(folder: Path) -> bool:
+    """Whether a run was begun in the folder."""
+    try:
+        return any((folder / name).exists() for name in _OWN)
+    except (OSError, ValueError):  # told by :func:`refuse_taken`
+        return False
 
 
 def refuse_taken(folder: Path, scenario: bytes) -> None:
@@ -79,7 +88,7 @@ def claim(folder: Path, scenario: bytes, master: bytes) -> None:
 
 def _found(folder: Path, scenario: bytes) -> list[str]:
     """What is in the folder and belongs to another run."""
-    found = [name for name in (MASTER, ANSWERS_FILE, SEGMENTS) if (folder / name).exists()]
+    found = [name for name in _OWN if (folder / name).exists()]
     text = folder / SCENARIO_FILE
     if text.exists() and text.read_bytes() != scenario:
         found.append(f"another {SCENARIO_FILE}")

@@ -29,6 +29,12 @@ def commit(path: Path, image: bytes) -> None:
     force_folder(path.parent)
 
 
+def remove_parts(folder: Path) -> None:
+    """Remove what a process that was killed had begun to write."""
+    for part in folder.rglob(f"*{PART}"):
+        part.unlink(missing_ok=True)
+
+
 def force_folder(folder: Path) -> None:
     """Force the names in `folder` to disk, so that a rename outlives a loss of power."""
     handle = os.open(folder, os.O_RDONLY)

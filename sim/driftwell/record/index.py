@@ -20,7 +20,7 @@ class SegmentFacts:
 
     bytes : size of the file
     sha256 : digest of the file, empty where the master does not list it
-    start, end : s, of its first and last entry
+    start, end : s, of its first and last record
     rows : number of rows by the layout's word for the length
     snapshots : number and time (s) of each snapshot in it
     """

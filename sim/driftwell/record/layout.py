@@ -253,8 +253,8 @@ INDEX = (
             Column("number", "int64", "1", "number in the file's name, counted from 1"),
             Column("bytes", "int64", "1", "size of the file"),
             Column("sha256", "text", "", "digest of the file"),
-            Column("start", "float64", "s", "time of its first entry"),
-            Column("end", "float64", "s", "time of its last entry"),
+            Column("start", "float64", "s", "time of its first record"),
+            Column("end", "float64", "s", "time of its last record"),
             *(
                 Column(f"rows_{counter}", "int64", "1", f"rows along `{counter}`")
                 for counter in COUNTERS
@@ -336,8 +336,8 @@ TRACE = (Attribute("names", "texts", "", "names of the columns, in order"),)
 
 SEGMENT = (
     Attribute("segment", "int64", "1", "number of this segment, counted from 1"),
-    Attribute("start", "float64", "s", "time of its first entry"),
-    Attribute("end", "float64", "s", "time of its last entry"),
+    Attribute("start", "float64", "s", "time of its first record"),
+    Attribute("end", "float64", "s", "time of its last record"),
 )
 """Attributes a segment has besides."""
 

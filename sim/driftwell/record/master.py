@@ -25,6 +25,8 @@ from driftwell.record.layout import ROWS, TRACE, Dataset
 
 MASTER = "run.h5"
 ANSWERS_FILE = "answers.h5"
+LAST_FILE = "last.h5"
+"""All charges at the last record of a run that was stopped or failed; gone when it goes on."""
 
 
 def master_image(header: Header, segments: Sequence[SegmentFacts], answered: bool) -> bytes:

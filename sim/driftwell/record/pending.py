@@ -61,7 +61,7 @@ class Pending:
 
     @property
     def start(self) -> float:
-        """Time of the first entry, s; where nothing waits, the end of the segment before."""
+        """Time of the first record, s; where nothing waits, the end of the segment before."""
         return self.end if self._start is None else self._start
 
     def add(self, path: str, rows: NDArray[Any]) -> None:

@@ -30,7 +30,7 @@ from driftwell.record.index import (
     segment_name,
 )
 from driftwell.record.layout import ANSWERS, OUTCOME, dataset, unit
-from driftwell.record.master import ANSWERS_FILE, MASTER
+from driftwell.record.master import ANSWERS_FILE, LAST_FILE, MASTER
 from driftwell.record.outcome import UNFINISHED, Outcome
 
 Floats = NDArray[np.float64]
@@ -98,6 +98,7 @@ class Run:
         self.segments = tuple(segments)
         self._tables: dict[str, NDArray[Any]] = {}
         self.outcome, self.answers = self._ending()
+        self._last = self._last_snapshot()
 
     outcome: Outcome
     """How the run ended; its word is "unfinished" until it has."""
@@ -160,8 +161,9 @@ class Run:
 
     @property
     def snapshots(self) -> list[float]:
-        """Times of the snapshots, s."""
-        return [time for facts in self.segments for _, time in facts.snapshots]
+        """Times of the snapshots, s; where a run was stopped or failed, that of its last record."""
+        times = [time for facts in self.segments for _, time in facts.snapshots]
+        return times if self._last is None else [*times, self._last]
 
     def snapshot(self, time: float) -> Snapshot:
         """The snapshot recorded at `time` (to a billionth of the duration).
@@ -175,6 +177,9 @@ class Run:
             for number, found in facts.snapshots
             if abs(found - time) <= near
         ]
+        if not places and self._last is not None and abs(self._last - time) <= near:
+            with opened(self.folder / LAST_FILE) as file:
+                return _snapshot_in(file)
         if not places:
             raise AnswerError(
                 f"{self.folder}: no snapshot at t = {time:.9g} s; those recorded are at "
@@ -182,14 +187,7 @@ class Run:
             )
         _, facts, number = min(places, key=lambda place: place[0])
         with self._segment(facts) as file:
-            group = file[f"snapshot/{number}"]
-            return Snapshot(
-                float(group["time"][()]),
-                *(
-                    group[name][()]
-                    for name in ("id", "cloud", "position", "velocity", "charge", "mass", "weight")
-                ),
-            )
+            return _snapshot_in(file[f"snapshot/{number}"])
 
     def moments(self, cloud: str) -> Moments:
         """Moments of a cloud at every record. Raises AnswerError where there is no such cloud."""
@@ -304,6 +302,13 @@ class Run:
                     pieces.append(file[path][choice])
         return np.concatenate(pieces)
 
+    def _last_snapshot(self) -> float | None:
+        """Time of the snapshot beside the record, s; None where there is none."""
+        if not (self.folder / LAST_FILE).is_file():
+            return None
+        with opened(self.folder / LAST_FILE) as file:
+            return float(file["time"][()])
+
     def _ending(self) -> tuple[Outcome, tuple[Answer, ...]]:
         path = self.folder / ANSWERS_FILE
         if not path.is_file():
@@ -316,6 +321,17 @@ class Run:
             error = row.pop("error")
             answers.append(Answer(**row, error=None if np.isnan(error) else error))
         return outcome, tuple(answers)
+
+
+def _snapshot_in(group: Any) -> Snapshot:
+    """A snapshot as it lies in a file."""
+    return Snapshot(
+        float(group["time"][()]),
+        *(
+            group[name][()]
+            for name in ("id", "cloud", "position", "velocity", "charge", "mass", "weight")
+        ),
+    )
 
 
 def _listed(items: Any) -> str:

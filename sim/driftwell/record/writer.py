@@ -15,10 +15,10 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from driftwell.answers.answer import Answer
-from driftwell.errors import RecordError
+from driftwell.errors import FullError, RecordError
 from driftwell.particles.state import Particles
 from driftwell.record.claim import claim, refuse_taken, unwritable
-from driftwell.record.commit import commit
+from driftwell.record.commit import commit, remove_parts
 from driftwell.record.file_image import (
     file_in_memory,
     image_of,
@@ -29,9 +29,10 @@ from driftwell.record.file_image import (
 from driftwell.record.header import Header
 from driftwell.record.index import SegmentFacts, segment_name
 from driftwell.record.layout import ANSWERS, OUTCOME, SNAPSHOT
-from driftwell.record.master import ANSWERS_FILE, MASTER, master_image
+from driftwell.record.master import ANSWERS_FILE, LAST_FILE, MASTER, master_image
 from driftwell.record.outcome import Outcome
 from driftwell.record.pending import Pending
+from driftwell.record.reader import Run
 from driftwell.record.sealing import longest_wait, most_bytes
 from driftwell.record.segment import segment_image
 
@@ -66,6 +67,26 @@ class RunWriter:
             raise unwritable(folder, fault) from fault
         return cls(folder, header, clock)
 
+    @classmethod
+    def resumed(cls, run: Run, clock: Callable[[], float] = clocks.monotonic) -> RunWriter:
+        """Go on with a run that was cut off or stopped, behind its last segment.
+
+        How it ended before is forgotten: files that say so, and any half-written, are removed.
+        """
+        writer = cls(run.folder, run.header, clock)
+        writer._segments = list(run.segments)
+        writer._sealed_bytes = sum(facts.bytes for facts in run.segments)
+        writer._snapshots = max([0, *(k for facts in run.segments for k, _ in facts.snapshots)])
+        writer._pending.end = run.segments[-1].end if run.segments else 0.0
+        try:
+            for name in (ANSWERS_FILE, LAST_FILE):
+                (run.folder / name).unlink(missing_ok=True)
+            remove_parts(run.folder)
+        except OSError as fault:
+            raise unwritable(run.folder, fault) from fault
+        writer._commit_master(answered=False)
+        return writer
+
     def trajectory(self, time: float, state: ArrayLike) -> None:
         """Record the tracked charges: `state` (tracked, 6), m and m/s, NaN where lost."""
         self._pending.add("trajectory/state", np.asarray(state, np.float64)[np.newaxis])
@@ -83,29 +104,33 @@ class RunWriter:
     def snapshot(self, time: float, particles: Particles) -> None:
         """Record every charge alive."""
         self._snapshots += 1
-        columns = {"time": np.float64(time)} | {
-            entry.path: getattr(particles, entry.path) for entry in SNAPSHOT if entry.shape
-        }
-        self._pending.add_snapshot(
-            self._snapshots,
-            {
-                entry.path: np.array(np.transpose(columns[entry.path]), entry.dtype(), order="C")
-                for entry in SNAPSHOT
-            },
-        )
+        self._pending.add_snapshot(self._snapshots, _snapshot_columns(time, particles))
         self._pending.reaches(time, time)
+
+    def last(self, time: float, particles: Particles) -> None:
+        """Keep every charge alive at the last record of a run that may go on, beside the record."""
+        columns = _snapshot_columns(time, particles)
+        with file_in_memory() as file:
+            for entry in SNAPSHOT:
+                put_dataset(file, entry, columns[entry.path])
+            image = image_of(file)
+        self._commit(LAST_FILE, image)
 
     def ledger(self, row: NDArray[Any] | np.void) -> None:
         """Record a row of the ledger (or several), of the layout's type."""
-        self._add_timed("ledger", row)
+        found = np.atleast_1d(row)
+        self._pending.add("ledger", found)
+        if found.size:
+            times = found["time"]
+            self._pending.reaches(float(times.min()), float(times.max()))
 
     def losses(self, rows: NDArray[Any]) -> None:
         """Record charges lost, rows of the layout's type."""
-        self._add_timed("losses", rows)
+        self._pending.add("losses", rows)
 
     def crossings(self, rows: NDArray[Any]) -> None:
         """Record passages through detectors, rows of the layout's type."""
-        self._add_timed("crossings", rows)
+        self._pending.add("crossings", rows)
 
     def trace(self, times: ArrayLike, values: ArrayLike) -> None:
         """Record samples of the traces: `times` (k,), s, and `values` (k, traces), m."""
@@ -115,17 +140,13 @@ class RunWriter:
             raise ValueError(f"trace: {len(sampled)} times with {len(found)} rows of values")
         self._pending.add("trace/value", found)
         self._pending.add("trace/time", sampled)
-        if sampled.size:
-            self._pending.reaches(float(sampled.min()), float(sampled.max()))
 
-    def due(self, state: Mapping[str, ArrayLike]) -> bool:
-        """Whether enough bytes or time have gathered for :meth:`seal` with this state."""
+    def due(self, state: int) -> bool:
+        """Whether enough bytes or time have gathered for :meth:`seal`; `state` : its bytes."""
         now = self._clock()
-        size = sum(np.asarray(value).nbytes for value in state.values())
-        return self._pending.bytes >= most_bytes(self._sealed_bytes, size) or (
-            self._pending.bytes > 0
-            and now - self._sealed_at >= longest_wait(now - self._began, size)
-        )
+        return self._pending.bytes >= most_bytes(
+            self._sealed_bytes, state
+        ) or now - self._sealed_at >= longest_wait(now - self._began, state)
 
     def seal(self, state: Mapping[str, ArrayLike]) -> None:
         """Put what was recorded since the last segment, and the state now, on the disk for good.
@@ -166,13 +187,6 @@ class RunWriter:
         self._commit(ANSWERS_FILE, image)
         self._commit_master(answered=True)
 
-    def _add_timed(self, path: str, rows: NDArray[Any] | np.void) -> None:
-        found = np.atleast_1d(rows)
-        self._pending.add(path, found)
-        if found.size:
-            times = found["time"]
-            self._pending.reaches(float(times.min()), float(times.max()))
-
     def _commit_master(self, answered: bool) -> None:
         self._commit(MASTER, master_image(self.header, self._segments, answered))
 
@@ -180,10 +194,10 @@ class RunWriter:
         try:
             commit(self.folder / name, image)
         except OSError as fault:
-            raise RecordError(
+            raise FullError(
                 f"{self.folder / name}: {fault.strerror or fault} while writing {len(image)} "
-                f"bytes. {self._kept()} Make space or give access, then run the scenario again "
-                "into another folder."
+                f"bytes. {self._kept()} Make space or give access; the same command then goes on "
+                "from there."
             ) from fault
 
     def _kept(self) -> str:
@@ -194,3 +208,14 @@ class RunWriter:
             f"Kept: {count} segment{'s' * (count > 1)}, whole up to t = "
             f"{self._segments[-1].end:.6g} s; `driftwell info {self.folder}` shows them."
         )
+
+
+def _snapshot_columns(time: float, particles: Particles) -> dict[str, NDArray[Any]]:
+    """The datasets of a snapshot, copied."""
+    columns = {"time": np.float64(time)} | {
+        entry.path: getattr(particles, entry.path) for entry in SNAPSHOT if entry.shape
+    }
+    return {
+        entry.path: np.array(np.transpose(columns[entry.path]), entry.dtype(), order="C")
+        for entry in SNAPSHOT
+    }

@@ -111,13 +111,9 @@ class TimeLoop:
         schedule: Schedule,
         traced: Sequence[Traced],
         threads: int,
-        coulomb_state: Mapping[str, NDArray[Any]] | None = None,
+        state: Mapping[str, NDArray[Any]] | None = None,
     ) -> None:
-        """A loop at time zero.
-
-        coulomb_state : the entries of :meth:`state` below ``coulomb/``, where a run is taken up
-        again: it sums as it did
-        """
+        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then."""
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
@@ -134,9 +130,10 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
         )
-        manner = None if coulomb_state is None else manner_of(coulomb_state)
+        summed = None if state is None else entries_below("coulomb", state)
+        manner = None if summed is None else manner_of(summed)
         self.summation = Summation(coulomb, len(particles), threads, manner=manner)
-        self.promise = Promise(coulomb.accuracy, coulomb_state)
+        self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
         self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
         self.work = work_space(0, 0, room((1, 1)), False, False)
@@ -144,6 +141,9 @@ class TimeLoop:
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
         self._budget = 1
         self._arrange()
+        if state is not None:
+            self._take_up(state)
+            return
         sides(self._surfaces, particles.position, self.work.side)
         self._burst(1, 0)  # no step, but the forces at the start
         if traced and schedule.flags[0] & TRACE:
@@ -221,14 +221,19 @@ class TimeLoop:
         self._arrange()
         self.work.side[:] = side
 
-    def state(self) -> dict[str, NDArray[np.float64] | NDArray[np.int64]]:
-        """Copies of everything a resume needs besides the particles, by name."""
+    def state(self) -> dict[str, NDArray[Any]]:
+        """Copies of everything a resume needs besides the particles, by name.
+
+        Between two marks as well, once events and samples have been taken.
+        """
         return {
             "accounts/total": self.work.total.copy(),
             "accounts/carry": self.work.carry.copy(),
             "accounts/energy": self.work.energy.copy(),
+            "accounts/pending": self.work.pending.copy(),
             "schedule/cursor": self.work.cursor.copy(),
-            "surfaces/side": self.work.side.astype(np.int64),
+            "surfaces/side": self.work.side.copy(),
+            "charges/alive": self.charges.alive.copy(),
             **{
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
@@ -244,6 +249,26 @@ class TimeLoop:
         """Traced times (k,) and values (k, traces) since the last call."""
         taken, self._samples = self._samples, []
         return taken
+
+    def _take_up(self, state: Mapping[str, NDArray[Any]]) -> None:
+        """Put a state into the arrays laid out, and find the forces it was left with.
+
+        They are those of the last kick's second half: rates of the accounts are at hand again for
+        the time that is pending, which is put back last.
+        """
+        accounts, work = entries_below("accounts", state), self.work
+        for name in ("total", "carry", "energy"):
+            getattr(work, name)[:] = accounts[name]
+        work.cursor[:] = state["schedule/cursor"]
+        work.cursor[CURSOR_FRESH] = 0
+        work.side[:] = state["surfaces/side"]
+        self.charges.alive[:] = state["charges/alive"]
+        gone = self.charges.alive == 0
+        self.charges.charge[gone] = self.charges.weight[gone] = 0.0
+        self.charges.charge_to_mass[:, gone] = 0.0
+        if self.mark < len(self.schedule.steps):
+            self._burst(self.mark + 1, 0)
+        work.pending[:] = accounts["pending"]
 
     def _next_stop(self, until: int) -> int:
         """A mark near enough that the samples on the way fit their buffer."""
@@ -379,3 +404,11 @@ class TimeLoop:
         if status not in {NOT_FINITE, RUNAWAY, COLLAPSE}:
             return None
         return int(self.particles.id[self.work.cursor[CURSOR_AT_FAULT]])
+
+
+def entries_below(group: str, state: Mapping[str, NDArray[Any]]) -> dict[str, NDArray[Any]]:
+    """The entries of a group, without its name."""
+    start = f"{group}/"
+    return {
+        name.removeprefix(start): each for name, each in state.items() if name.startswith(start)
+    }
