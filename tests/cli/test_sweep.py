@@ -30,9 +30,7 @@ def test_a_sweep_computes_tells_and_leaves_everything_and_does_it_once(
     assert "3 runs: 3 computed now" in printed.out
     assert f"answers: {folder / 'answers.csv'}\n" in printed.out
     left = {"study.toml", "scenario.toml", "catalogue.sqlite", "runs", "answers.csv"}
-    assert {*left, "answers.h5", "summary.txt"} == {
-        each.name for each in folder.iterdir()
-    }
+    assert {*left, "answers.h5", "summary.txt"} == {each.name for each in folder.iterdir()}
     assert path.read_bytes() == (folder / "study.toml").read_bytes()
     assert (tmp_path / "small.toml").read_bytes() == (folder / "scenario.toml").read_bytes()
     assert printed.out.strip() == (folder / "summary.txt").read_text().strip()

@@ -13,8 +13,10 @@ from driftwell.record.reader import open_run
 from driftwell.run import ALL_LOST, FAILED, FINISHED
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from driftwell.scenario.room import extent_of
+from driftwell.study.catalogue import Catalogue
 from driftwell.study.cores import threads_pay_from
-from driftwell.study.needed import Case, Catalogue, Study
+from driftwell.study.points import Case
+from driftwell.study.read import Study
 from driftwell.study.sweep_folder import run_folder
 from driftwell.study.tally import THERE, Tally
 

@@ -11,8 +11,9 @@ from driftwell.answers.answer_lines import PLAIN_UNITS, reading
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 from driftwell.study.means import mean
-from driftwell.study.needed import Case, Study
+from driftwell.study.points import Case
 from driftwell.study.progress import Failure, SweepResult
+from driftwell.study.read import Study
 
 MOST_ROWS = 40
 """Rows of the table; a longer one is given by its least and largest values."""

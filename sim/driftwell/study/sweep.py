@@ -19,12 +19,13 @@ from typing import Any
 from driftwell.answers.answer import Answer
 from driftwell.run import STOPPED
 from driftwell.scenario.room import free_memory
+from driftwell.study.catalogue import Catalogue
 from driftwell.study.cores import Load, Sharing, shared
 from driftwell.study.engine import Done, Engine, Task
 from driftwell.study.missing import ANSWERED, Needed, missing_runs
-from driftwell.study.needed import Catalogue, Study
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepObserver, SweepProgress, SweepResult
+from driftwell.study.read import Study
 from driftwell.study.sweep_folder import run_folder
 from driftwell.study.tally import COMPUTED, Tally
 from driftwell.study.words import BROKEN

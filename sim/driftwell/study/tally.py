@@ -10,7 +10,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from driftwell.answers.answer import Answer
-from driftwell.study.needed import Case
+from driftwell.study.points import Case
 from driftwell.study.progress import Failure, SweepProgress
 
 THERE, COMPUTED, FAILED = "there", "computed", "failed"
