@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 from collections.abc import Sequence
 from pathlib import Path
 
@@ -19,7 +20,7 @@ from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
-from driftwell.study.table import TABLE_CSV, write_tables
+from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
 """Exit codes; the last one is a sweep's own."""
@@ -92,7 +93,10 @@ def _carried_out(
             finally:
                 display.ends()
             write_tables(folder, study, catalogue)
+            table = table_of(study, catalogue)
         written = _report(study, folder, result)
+        if pictures:
+            written = _draw(folder, table) and written
     return result, written
 
 
@@ -106,3 +110,16 @@ def _report(study: Study, folder: Path, result: SweepResult) -> bool:
     return answer(
         ["", *summary(study, result, width(), sign()), "", f"answers: {folder / TABLE_CSV}"]
     )
+
+
+def _draw(folder: Path, table: Table) -> bool:
+    """Draw a picture of each question and say where they are; whether that could be done."""
+    from driftwell.report.varied import draw_sweep
+
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
+    try:
+        made = draw_sweep(folder, table)
+    except DriftwellError as error:
+        tell(str(error))
+        return False
+    return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])
