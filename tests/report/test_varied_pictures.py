@@ -77,6 +77,7 @@ def test_a_range_of_equal_ratios_has_a_logarithmic_axis_with_a_prefix() -> None:
     found = figure(table(TIME))
     (axes,) = found.axes
     assert ("log", "duration (µs)") == (axes.get_xscale(), axes.get_xlabel())
+    assert {"1", "10", "100"} <= {text.get_text() for text in axes.get_xticklabels()}
     assert [([1.0, 10.0, 100.0], [1.0, 2.0, 3.0])] == lines(found)
 
 

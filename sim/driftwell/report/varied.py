@@ -14,7 +14,9 @@ from pathlib import Path
 
 import numpy as np
 from matplotlib.axes import Axes
+from matplotlib.axis import Axis as AnyAxis
 from matplotlib.figure import Figure
+from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 from numpy.typing import NDArray
 
 from driftwell._version import __version__
@@ -38,6 +40,8 @@ _MOST_TEXTS = 12
 """Texts along an axis; of more, only some are written."""
 _NAME_LONGEST = 40
 _LOG_MARGIN = 1.15
+_LONG = 300.0
+"""Ratio of the ends of a logarithmic axis from which on only powers of ten are written."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,9 +77,10 @@ class Scale:
             ticks = self._ticks()
             axes.set_xticks(ticks, [printable(str(self.axis.values[k]), 12) for k in ticks])
             axes.set_xlabel(name)
-        elif self.axis.log:
+        elif self._log:
             axes.set_xscale("log")
             axes.set_xlim(*self.shown.limits)
+            _put_decades(axes.xaxis, self.shown)
             axes.set_xlabel(self.shown.label(name))
         else:
             put_across(axes, self.shown, name)
@@ -87,12 +92,18 @@ class Scale:
             ticks = self._ticks()
             axes.set_yticks(ticks, [printable(str(self.axis.values[k]), 12) for k in ticks])
             axes.set_ylabel(name)
-        elif self.axis.log:
+        elif self._log:
             axes.set_yscale("log")
             axes.set_ylim(*self.shown.limits)
+            _put_decades(axes.yaxis, self.shown)
             axes.set_ylabel(self.shown.label(name))
         else:
             put_up(axes, self.shown, name)
+
+    @property
+    def _log(self) -> bool:
+        """Equal ratios of numbers below zero have no logarithm."""
+        return self.axis.log and self.shown is not None and self.shown.low > 0.0
 
     def _ticks(self) -> list[int]:
         count = len(self.axis.values)
@@ -251,12 +262,19 @@ def _scale(axis: Axis, values: Sequence[float | str]) -> Scale:
     if not axis.unit or len(numbers) < len(values):
         return Scale(axis, None)
     unit = "" if axis.unit in {"", "1"} else axis.unit
-    if axis.log:
-        ends = sorted((min(numbers), max(numbers)), key=abs)
-        low, high = sorted((ends[0] / _LOG_MARGIN, ends[1] * _LOG_MARGIN))
+    if axis.log and min(numbers) > 0.0:
+        low, high = min(numbers) / _LOG_MARGIN, max(numbers) * _LOG_MARGIN
         plain = ruler((low, high), unit, _size(axis.unit))
         return Scale(axis, Ruler(low, high, plain.size, plain.unit))
     return Scale(axis, ruler(interval(numbers), unit, _size(axis.unit)))
+
+
+def _put_decades(axis: AnyAxis, shown: Ruler) -> None:
+    """Plain numbers along a logarithmic axis, fewer of them where it is long."""
+    places = (1.0, 2.0, 5.0) if shown.high < _LONG * shown.low else (1.0,)
+    axis.set_major_locator(LogLocator(subs=places))
+    axis.set_minor_locator(NullLocator())
+    axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
 
 
 def _size(unit: str) -> float | None:
