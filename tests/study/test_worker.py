@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import os
 import signal
 import subprocess
@@ -25,6 +26,13 @@ from tests.study.test_pool import all_done, until_gone
 SHORT = ("duration=2 us",)
 PATIENCE = 240.0
 """s, for a first compilation on a busy machine."""
+
+
+@pytest.fixture(scope="module", autouse=True)
+def compiled(tmp_path_factory: pytest.TempPathFactory) -> None:
+    """A worker that compiles would be told to stop before it has something to seal."""
+    folder = tmp_path_factory.mktemp("compiled")
+    assert "finished" == replied(content(scenario(folder), folder / "run"))["word"]
 
 
 def content(path: Path, folder: Path, settings: tuple[str, ...] = SHORT) -> dict[str, Any]:
@@ -138,7 +146,7 @@ def begun(engine: Pool, folder: Path) -> None:
     while not (folder / MASTER).exists():
         assert engine.next(0.1) is None
         assert time.monotonic() < end
-    time.sleep(0.5)
+    time.sleep(1.5)
 
 
 def test_a_worker_that_is_to_stop_seals_its_run_answers_and_ends(tmp_path: Path) -> None:
@@ -191,8 +199,6 @@ time.sleep(600)
 
 
 def test_a_worker_whose_driver_is_killed_seals_its_run_and_ends(tmp_path: Path) -> None:
-    import json
-
     folder = tmp_path / "run"
     told = content(scenario(tmp_path), folder, LONG)
     driver = subprocess.Popen(
@@ -207,7 +213,7 @@ def test_a_worker_whose_driver_is_killed_seals_its_run_and_ends(tmp_path: Path) 
     while not (folder / MASTER).exists():
         assert time.monotonic() < end
         time.sleep(0.05)
-    time.sleep(0.5)
+    time.sleep(1.5)
     os.kill(driver.pid, signal.SIGKILL)
     driver.communicate()
     until_gone(pids)
