@@ -28,6 +28,7 @@ from bench_cases.direct import direct_16k
 from bench_cases.night import record_1e4, resume
 from bench_cases.reference import GCC, reference_library
 from bench_cases.start import start, startup
+from bench_cases.sweep import sweep
 from bench_cases.trap import direct_2k, script, small_trap
 from bench_cases.whole_run import run_1e6
 
@@ -52,6 +53,7 @@ LONG: dict[str, Case] = {
     "start": start,
     "record-1e4": record_1e4,
     "resume": resume,
+    "sweep": sweep,
 }
 CASES = {**QUICK, **LONG}
 WITH_LARGE: dict[str, dict[str, Any]] = {

@@ -8,6 +8,7 @@ from pathlib import Path
 
 from driftwell.forms import Form
 from driftwell.forms.declared import (
+    Anything,
     Choice,
     Declared,
     DeclaredKey,
@@ -191,6 +192,8 @@ def _words(declared: Declared, headings: Headings) -> str:
             return "text" if most is None else f"text of {least} to {most} characters"
         case Flag():
             return "`true` or `false`"
+        case Anything():
+            return "any value"
         case Words(words):
             return " or ".join(f'`"{word}"`' for word in words)
         case Row(entries):

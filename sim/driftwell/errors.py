@@ -17,6 +17,10 @@ class ScenarioError(DriftwellError):
     """A scenario file cannot be used; the text lists every fault found in it."""
 
 
+class StudyError(DriftwellError):
+    """A study file cannot be used; the text lists every fault found in it."""
+
+
 class StepError(DriftwellError):
     """The motion cannot be continued: not a number, runaway, or unresolved collapse.
 

@@ -20,6 +20,15 @@ DEFECT = 1
 LARGEST_SEED = 2**63 - 1
 MOST_THREADS = 1024
 SHORTEST_TIMING, LONGEST_TIMING = 0.1, 3600.0
+_SWEEP_EPILOG = """\
+What is there already is not computed again; what was cut off goes on. Give the same command
+again after a stop, a crash or a change of the study.
+
+exit codes: 0 every run is there (finished, or every charge lost); 2 the study, the folder or
+the command line cannot be used; 4 stopped on request, the same command goes on; 7 some runs
+failed, the summary says which and why; 130 interrupted at once; 1 a defect of driftwell
+"""
+
 TRACEBACK = "DRIFTWELL_TRACEBACK"
 """Environment variable that lets a defect of driftwell show where it is."""
 
@@ -71,6 +80,40 @@ def _parser() -> argparse.ArgumentParser:
         help="begin even where memory or disk look too small, with a warning",
     )
     _add_settings(run)
+
+    sweep = commands.add_parser(
+        "sweep",
+        help="compute all runs of a study that are not there yet",
+        epilog=_SWEEP_EPILOG,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    sweep.add_argument("study", metavar="STUDY", help="study file (TOML)")
+    sweep.add_argument(
+        "-o",
+        "--output",
+        type=_folder,
+        metavar="FOLDER",
+        help="the sweep's folder (default: the file's name with -sweep, here)",
+    )
+    sweep.add_argument(
+        "--workers",
+        type=_threads,
+        metavar="N",
+        help="runs side by side (default: by number of runs, cores, charges and memory)",
+    )
+    sweep.add_argument(
+        "--threads",
+        type=_threads,
+        metavar="N",
+        help="threads of each run (default: as for --workers)",
+    )
+    sweep.add_argument(
+        "--retry-failed",
+        action="store_true",
+        help="start over the runs whose motion could not be continued",
+    )
+    sweep.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    _add_settings(sweep)
 
     check = commands.add_parser("check", help="say what a scenario would simulate, or its faults")
     check.add_argument("file", help="scenario file (TOML)")
@@ -215,6 +258,18 @@ def _carry_out(asked: argparse.Namespace) -> int:
         from driftwell.cli.watch import watch
 
         return watch(asked.folder, asked.once)
+    if asked.command == "sweep":
+        from driftwell.cli.sweep import sweep_command
+
+        return sweep_command(
+            asked.study,
+            asked.output,
+            asked.settings,
+            asked.workers,
+            asked.threads,
+            asked.retry_failed,
+            not asked.no_pictures,
+        )
     threads = _usable_threads(asked.threads)
     if "numba" not in sys.modules:  # it reads its limit once, and minds another one later
         os.environ["NUMBA_NUM_THREADS"] = str(threads)

@@ -22,11 +22,15 @@ class StopWish:
     """Whether the user wants the run to stop; see :meth:`listening`.
 
     keeping : whether there is a record by now
+    ending : done before the process is ended at once
     wanted : set by the first signal
     """
 
-    def __init__(self, keeping: Callable[[], bool]) -> None:
+    def __init__(
+        self, keeping: Callable[[], bool], ending: Callable[[], None] = lambda: None
+    ) -> None:
         self._keeping = keeping
+        self._ending = ending
         self.wanted = False
 
     @contextmanager
@@ -60,6 +64,7 @@ class StopWish:
             keeping = self._keeping()
             if self.wanted or not keeping:
                 tell(f"\n{_LAST_WORDS[keeping]}")
+                self._ending()
                 os._exit(128 + number)
             self.wanted = True
             tell("\nStopping after the steps under way; once more to end at once.")

@@ -13,6 +13,7 @@ from driftwell.forms.form import (
 )
 from driftwell.forms.quantities import (
     Angle,
+    AnyValue,
     Charge,
     Count,
     Current,
@@ -29,6 +30,7 @@ from driftwell.forms.quantities import (
     Name,
     NonNegative,
     NonZero,
+    NumberOrText,
     Point,
     Positive,
     Real,
@@ -44,6 +46,7 @@ from driftwell.forms.spelling import spelled
 
 __all__ = [
     "Angle",
+    "AnyValue",
     "Bound",
     "Charge",
     "Count",
@@ -62,6 +65,7 @@ __all__ = [
     "Name",
     "NonNegative",
     "NonZero",
+    "NumberOrText",
     "Point",
     "Positive",
     "Real",

@@ -17,7 +17,7 @@ from pydantic import Discriminator, StringConstraints, Tag
 from pydantic.fields import FieldInfo
 
 from driftwell.forms.form import Bound, Form
-from driftwell.forms.quantities import Quantity
+from driftwell.forms.quantities import Quantity, Whatever
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,6 +49,11 @@ class Text:
 @dataclass(frozen=True, slots=True)
 class Flag:
     """true or false."""
+
+
+@dataclass(frozen=True, slots=True)
+class Anything:
+    """Any value a file can hold."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,14 +116,21 @@ class Choice:
         )
 
 
-Declared = Dimensioned | Number | Text | Flag | Words | Row | Several | Named | Keys | Choice
+Declared = (
+    Dimensioned | Number | Text | Flag | Anything | Words | Row | Several | Named | Keys | Choice
+)
 
 
 @dataclass(frozen=True, slots=True)
 class DeclaredKey:
-    """One key of a form: its help, what it may hold, whether it may be left out and as what."""
+    """One key of a form: its help, what it may hold, whether it may be left out and as what.
+
+    name : as a file has it
+    attribute : as the form has it; another word only where the name is none Python can use
+    """
 
     name: str
+    attribute: str
     help: str
     holds: Declared
     required: bool
@@ -129,7 +141,8 @@ class DeclaredKey:
 @lru_cache(maxsize=512)
 def declared_keys(form: type[Form]) -> dict[str, DeclaredKey]:
     """The keys of a form by name, in the order of their declaration."""
-    return {name: _declared_key(name, info) for name, info in form.model_fields.items()}
+    keys = (_declared_key(name, info) for name, info in form.model_fields.items())
+    return {key.name: key for key in keys}
 
 
 def about(form: type[Form]) -> tuple[str, ...]:
@@ -170,6 +183,7 @@ def _declared_key(name: str, info: FieldInfo) -> DeclaredKey:
     required = info.is_required()
     examples = info.examples or [None]
     return DeclaredKey(
+        info.alias or name,
         name,
         info.description or "",
         _declared(info.annotation, tuple(info.metadata)),
@@ -206,6 +220,8 @@ def _single(annotation: Any, marks: tuple[Any, ...]) -> Declared:
     quantity = next((mark for mark in marks if isinstance(mark, Quantity)), None)
     if quantity is not None:
         return Dimensioned(quantity.name, quantity.si_unit, quantity.example, bounds)
+    if any(isinstance(mark, Whatever) for mark in marks):
+        return Anything()
     if annotation is bool:
         return Flag()
     if annotation in (float, int):

@@ -37,9 +37,15 @@ class Form(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", allow_inf_nan=False)
 
 
-def key(meaning: str, *, default: Any = PydanticUndefined, example: Any = None) -> Any:
-    """Declare a key: its meaning in a line, its default (left out: required), an example."""
-    return Field(default, description=meaning, examples=None if example is None else [example])
+def key(
+    meaning: str, *, default: Any = PydanticUndefined, example: Any = None, named: str | None = None
+) -> Any:
+    """Declare a key: its meaning in a line, its default (left out: required), an example.
+
+    named : the key in the file, where it cannot be the attribute's own name (such as ``from``)
+    """
+    examples = None if example is None else [example]
+    return Field(default, alias=named, description=meaning, examples=examples)
 
 
 def one_of(kinds: tuple[type[Form], ...], by: str = "kind") -> Any:

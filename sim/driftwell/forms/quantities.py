@@ -8,14 +8,16 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from typing import Annotated, Any, TypeVar
+from typing import TYPE_CHECKING, Annotated, Any, TypeVar
 
 from pydantic import (
     AfterValidator,
+    Discriminator,
     GetCoreSchemaHandler,
     GetJsonSchemaHandler,
     Strict,
     StringConstraints,
+    Tag,
 )
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import PydanticCustomError, core_schema
@@ -109,6 +111,29 @@ Title = Annotated[
     str, StringConstraints(min_length=1, max_length=200, pattern=r"^[^\x00-\x1f\x7f]+$")
 ]
 """A sentence on one line, 1 to 200 characters."""
+
+
+@dataclass(frozen=True, slots=True)
+class Whatever:
+    """The declaration of a value that may be anything a file can hold."""
+
+    def __get_pydantic_core_schema__(
+        self, source: Any, handler: GetCoreSchemaHandler
+    ) -> core_schema.CoreSchema:
+        return core_schema.any_schema()
+
+
+if TYPE_CHECKING:
+    AnyValue = object
+    NumberOrText = float | str
+else:
+    AnyValue = Annotated[object, Whatever()]
+    """Whatever TOML can state: it is judged elsewhere."""
+    NumberOrText = Annotated[
+        Annotated[float, Strict(), Tag("number")] | Annotated[str, Strict(), Tag("text")],
+        Discriminator(lambda value: "text" if isinstance(value, str) else "number"),
+    ]
+    """A plain number, or a quantity whose dimension is judged elsewhere."""
 
 T = TypeVar("T")
 Positive = Annotated[T, Bound(above=0.0)]

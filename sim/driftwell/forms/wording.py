@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from driftwell.forms.declared import (
+    Anything,
     Choice,
     Declared,
     Dimensioned,
@@ -39,6 +40,8 @@ def needed(declared: Declared, example: object = None) -> str:
             return f'text such as "{example}"' if isinstance(example, str) else "text in quotes"
         case Flag():
             return "true or false"
+        case Anything():
+            return "any value"
         case Words(words):
             return either(words)
         case Row() | Several() if isinstance(example, list):
@@ -47,7 +50,7 @@ def needed(declared: Declared, example: object = None) -> str:
             if all(entry == entries[0] for entry in entries):
                 return f"a list of {len(entries)}, each {needed(entries[0])}"
             return "a list of " + ", ".join(needed(entry) for entry in entries)
-        case Several(Dimensioned() | Number() | Text() | Words() | Row() as entry):
+        case Several(Dimensioned() | Number() | Text() | Words() | Row() | Anything() as entry):
             return f"a list, each entry {needed(entry)}"
         case Several():
             return "a list of tables"
@@ -137,7 +140,7 @@ def _shortest(value: float) -> str:
 
 def raw_table(form: Form) -> dict[str, Any]:
     """The raw table that reads as `form`; keys that are left out by default stay left out."""
-    values = ((key, getattr(form, key.name)) for key in declared_keys(type(form)).values())
+    values = ((key, getattr(form, key.attribute)) for key in declared_keys(type(form)).values())
     return {key.name: raw_value(key.holds, value) for key, value in values if value is not None}
 
 
@@ -155,6 +158,8 @@ def _may_hold(declared: Declared, value: Any) -> bool:
             return isinstance(value, str)
         case Flag():
             return isinstance(value, bool)
+        case Anything():
+            return True
         case Row() | Several():
             return isinstance(value, list | tuple)
         case Dimensioned() | Number():

@@ -85,15 +85,22 @@ def style() -> AbstractContextManager[None]:
 
 
 def sheet(run: Run, width: float, height: float, key: Sequence[Entry] = ()) -> Figure:
-    """An empty figure, `width` by `height` inches, with title, key and provenance around it."""
+    """An empty figure, `width` by `height` inches, with a run's title, key and provenance."""
+    return page(run.header.title, _provenance(run), width, height, key)
+
+
+def page(
+    title: str, provenance: str, width: float, height: float, key: Sequence[Entry] = ()
+) -> Figure:
+    """An empty figure with a title and a key above it and a line of small print below."""
     figure = Figure(figsize=(width, height), dpi=DOTS_PER_INCH)
-    top = EDGE + _title(figure, run.header.title)
+    top = EDGE + _title(figure, title)
     top += _key(figure, key, top)
     bottom = EDGE + LINE_HEIGHT * SMALL_SIZE
     figure.text(
         1.0 - EDGE / width,
         EDGE / height,
-        _provenance(run),
+        provenance,
         ha="right",
         va="bottom",
         fontsize=SMALL_SIZE - 1.0,

@@ -8,6 +8,7 @@ from typing import Any
 
 from driftwell.forms import Bound, Form
 from driftwell.forms.declared import (
+    Anything,
     Choice,
     Declared,
     DeclaredKey,
@@ -103,6 +104,8 @@ def _value(declared: Declared, definitions: _Definitions) -> dict[str, Any]:
             return schema if most is None else schema | {"maxLength": most, "pattern": _LINE}
         case Flag():
             return {"type": "boolean"}
+        case Anything():
+            return {}
         case Words(words):
             return {"const": words[0]} if len(words) == 1 else {"enum": list(words)}
         case Row(entries):

@@ -10,14 +10,15 @@ from __future__ import annotations
 
 import re
 import tomllib
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
+from copy import deepcopy
 from dataclasses import dataclass
 from typing import Any
 
 from driftwell.forms import Form
 from driftwell.forms.declared import Several, declared_keys
 from driftwell.forms.faults import nearest
-from driftwell.forms.wording import as_found, quoted
+from driftwell.forms.wording import as_found, quoted, toml_text
 from driftwell.scenario.places import ended, entry_name, keys
 from driftwell.scenario.source import DEEPEST
 
@@ -28,10 +29,14 @@ _PART = re.compile(r"""\s*("(?:[^"\\]|\\.)*"|'[^']*'|[^.="']+)(\.|=)""")
 
 @dataclass(frozen=True, slots=True)
 class Setting:
-    """One setting: its text as given, and the path in the raw table that it made or changed."""
+    """One setting: its text as given, and the path in the raw table that it made or changed.
+
+    key : the path of the value itself, which lies within `path` where tables were made for it
+    """
 
     text: str
     path: Path
+    key: Path = ()
 
     def shown(self) -> str:
         """The setting as a user types it, on one line."""
@@ -53,10 +58,45 @@ def apply_settings(
     for text in texts:
         try:
             parts, value = _split(text)
-            settings.append(Setting(text, _put(data, parts, _read(value), form)))
+            settings.append(Setting(text, *_put(data, parts, _read(value), form)))
         except _UnusableError as fault:
             faults.append(ended(f"{Setting(text, ()).shown()}: {fault}"))
     return settings, faults
+
+
+def path_of(key: str, data: Mapping[str, Any], form: type[Form]) -> Path:
+    """The path of the value that a setting of `key` would put into the raw table `data`.
+
+    Raises
+    ------
+    LookupError
+        No setting can have this key; the text says why.
+    """
+    try:
+        parts, value = _split(f"{key}=0")
+        if value != "0":
+            raise _UnusableError('needs a key without "=", for example cloud.load.count')
+        return _put(deepcopy(dict(data)), parts, 0, form)[1]
+    except _UnusableError as fault:
+        raise LookupError(str(fault)) from fault
+
+
+def setting_path(text: str, data: Mapping[str, Any], form: type[Form]) -> Path | None:
+    """The path of the value that a setting changes; None where it cannot be put in."""
+    settings, _ = apply_settings(deepcopy(dict(data)), [text], form)
+    return settings[0].key if settings else None
+
+
+def setting_text(key: str, value: Any) -> str:
+    """The setting ``key=value`` that puts the raw `value` in: without quotes where none are needed.
+
+    It reads back as this very value.
+    """
+    if isinstance(value, str) and value == value.strip() and value.isprintable():
+        plain = _read(value)
+        if isinstance(plain, str) and plain == value:
+            return f"{key}={value}"
+    return f"{key}={toml_text(value)}"
 
 
 class _UnusableError(Exception):
@@ -98,8 +138,11 @@ def _read(text: str) -> Any:
     return table["value"] if table.keys() == {"value"} else text
 
 
-def _put(data: dict[str, Any], parts: list[str], value: Any, form: type[Form]) -> Path:
-    """Set the value at the end of `parts`; the path to it, or to the first table made for it."""
+def _put(data: dict[str, Any], parts: list[str], value: Any, form: type[Form]) -> tuple[Path, Path]:
+    """Set the value at the end of `parts`.
+
+    Returns the path of what was changed (the first table made for it, if any), and of the value.
+    """
     _refuse_missing_section(data, parts, form)
     holder: Any = data
     path: Path = ()
@@ -113,7 +156,8 @@ def _put(data: dict[str, Any], parts: list[str], value: Any, form: type[Form]) -
         holder = holder[step]
     last = _step(holder, parts[-1], path)
     holder[last] = value
-    return made or (*path, last)
+    path = (*path, last)
+    return made or path, path
 
 
 def _refuse_missing_section(data: dict[str, Any], parts: list[str], form: type[Form]) -> None:

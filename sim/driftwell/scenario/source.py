@@ -24,8 +24,8 @@ def shown_path(path: Path) -> str:
     return text if text.isprintable() else quoted(text)
 
 
-def source_text(path: Path) -> str:
-    """The text of the file.
+def source_text(path: Path, what: str = "scenario") -> str:
+    """The text of the file, which should be a `what`.
 
     Raises
     ------
@@ -36,12 +36,12 @@ def source_text(path: Path) -> str:
     try:
         status = path.stat()
         if stat.S_ISDIR(status.st_mode):
-            raise ScenarioError(f"{shown}: is a folder; needs a scenario file{_files_in(path)}")
+            raise ScenarioError(f"{shown}: is a folder; needs a {what} file{_files_in(path)}")
         if not stat.S_ISREG(status.st_mode):
-            raise ScenarioError(f"{shown}: is not a file; needs a scenario file (.toml)")
+            raise ScenarioError(f"{shown}: is not a file; needs a {what} file (.toml)")
         if status.st_size > LARGEST:
             raise ScenarioError(
-                f"{shown}: has {status.st_size / 1e6:.1f} MB; a scenario has at most "
+                f"{shown}: has {status.st_size / 1e6:.1f} MB; a {what} has at most "
                 f"{LARGEST / 1e6:g} MB. Long lists of charges belong in a file of their own, "
                 'read with shape = { kind = "file", path = "start.csv" }'
             )
@@ -67,8 +67,11 @@ def _decoded(content: bytes, shown: str) -> str:
         ) from fault
 
 
-def raw_table(text: str, shown: str) -> dict[str, Any]:
-    """The table a TOML text holds.
+A_SCENARIO = "a scenario needs a title, a duration and at least one [[cloud]]"
+
+
+def raw_table(text: str, shown: str, needs: str = A_SCENARIO) -> dict[str, Any]:
+    """The table a TOML text holds; `needs` says what belongs into one that is empty.
 
     Raises
     ------
@@ -86,9 +89,7 @@ def raw_table(text: str, shown: str) -> dict[str, Any]:
     except RecursionError as fault:
         raise ScenarioError(f"{shown}: {_TOO_DEEP}") from fault
     if not table:
-        raise ScenarioError(
-            f"{shown}: is empty; a scenario needs a title, a duration and at least one [[cloud]]"
-        )
+        raise ScenarioError(f"{shown}: is empty; {needs}")
     if _is_deeper(table, DEEPEST):
         raise ScenarioError(f"{shown}: {_TOO_DEEP}")
     return table

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from pathlib import Path, PurePosixPath
+from pathlib import Path
 from typing import Literal, Self
 
 import numpy as np
 
 from driftwell.errors import ScenarioError
-from driftwell.forms import checked, key, refuse
+from driftwell.forms import checked, key
 from driftwell.forms.body import Body
+from driftwell.forms.inside import check_inside, found_inside
 from driftwell.particles.charge_columns import ChargeColumns, ChargeFileError
 from driftwell.particles.charge_csv import read_csv
 from driftwell.particles.charge_hdf5 import read_hdf5
@@ -33,16 +34,7 @@ class FromFile(ShapeForm):
 
     @checked
     def _inside(self) -> Self:
-        path = PurePosixPath(self.path)
-        if not self.path.isprintable() or "\\" in self.path or ":" in self.path:
-            raise refuse("`path` must be plain text, its folders separated by /")
-        if path.is_absolute() or ".." in path.parts:
-            raise refuse(
-                "`path` must lead to a file in the scenario's own folder: "
-                "relative to it and without .."
-            )
-        if path.suffix.lower() not in READERS:
-            raise refuse(f"`path` must end in {', '.join(READERS)}")
+        check_inside(self.path, READERS, "path", "scenario")
         return self
 
     def fixes_count(self) -> bool:
@@ -67,13 +59,9 @@ class FromFile(ShapeForm):
             raise ScenarioError(f"{self.path}: cannot be read ({why})") from fault
 
     def _read(self, folder: Path) -> ChargeColumns:
-        path = (folder / self.path).resolve()
-        if not path.is_relative_to(folder.resolve()):
-            raise ChargeFileError(": leads out of the scenario's folder; put the file into it")
-        if not path.exists():
-            raise ChargeFileError(": there is no such file in the scenario's folder")
-        if not path.is_file():
-            raise ChargeFileError(": is not a file")
+        path = found_inside(folder, self.path, "scenario")
+        if isinstance(path, str):
+            raise ChargeFileError(f": {path}")
         return READERS[path.suffix.lower()](path)
 
     def words(self) -> str:

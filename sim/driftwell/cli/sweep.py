@@ -1,0 +1,125 @@
+"""``driftwell sweep STUDY``: compute a study's runs, show progress, print the morning summary."""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Sequence
+from pathlib import Path
+
+from driftwell.cli.printing import answer, sign, tell, width
+from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.sweep_progress import SweepDisplay
+from driftwell.errors import DriftwellError
+from driftwell.record.claim import unwritable
+from driftwell.record.commit import commit
+from driftwell.record.summary import WIDTH
+from driftwell.study.catalogue import Catalogue
+from driftwell.study.pool import Pool
+from driftwell.study.progress import SweepResult
+from driftwell.study.read import Study, read_study
+from driftwell.study.summary import summary
+from driftwell.study.sweep import Sweep
+from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
+from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
+
+DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
+"""Exit codes; the last one is a sweep's own."""
+
+
+def sweep_command(
+    file: str,
+    output: str | None,
+    settings: Sequence[str],
+    workers: int | None,
+    threads: int | None,
+    retry_failed: bool,
+    pictures: bool,
+) -> int:
+    """Compute what is not there yet; returns the exit code."""
+    folder = Path(output) if output is not None else Path(f"{Path(file).stem}-sweep")
+    try:
+        study = read_study(file, settings)
+        tell(study.title)
+        result, written = _carried_out(study, folder, workers, threads, retry_failed, pictures)
+    except DriftwellError as error:
+        tell(str(error))
+        return error.exit_code
+    if result.stopped:
+        return STOPPED
+    if result.failures:
+        return SOME_FAILED
+    return DONE if written else UNUSABLE
+
+
+def _carried_out(
+    study: Study,
+    folder: Path,
+    workers: int | None,
+    threads: int | None,
+    retry_failed: bool,
+    pictures: bool,
+) -> tuple[SweepResult, bool]:
+    """What the sweep came to, and whether all that was to be written and drawn could be."""
+    pools: list[Pool] = []
+
+    def pool_of(workers: int, threads: int) -> Pool:
+        pools.append(Pool.of_runs(workers, threads))
+        return pools[-1]
+
+    def kill_workers() -> None:
+        for pool in pools:
+            pool.kill()
+
+    wish = StopWish(lambda: True, kill_workers)
+    display = SweepDisplay(wish)
+    with taken(folder, study.text, study.scenario_text) as changed, wish.listening():
+        if changed:
+            tell(
+                f"{folder}: the study or its scenario was changed since the last sweep; runs of "
+                "both that are the same are kept, others of the last one stay in the folder."
+            )
+        with Catalogue(folder / CATALOGUE_FILE) as catalogue:
+            try:
+                result = Sweep(
+                    study,
+                    folder,
+                    catalogue,
+                    display,
+                    retry_failed=retry_failed,
+                    workers=workers,
+                    threads=threads,
+                    engine_of=pool_of,
+                ).result()
+            finally:
+                display.ends()
+            write_tables(folder, study, catalogue)
+            table = table_of(study, catalogue)
+        written = _report(study, folder, result)
+        if pictures:
+            written = _draw(folder, table) and written
+    return result, written
+
+
+def _report(study: Study, folder: Path, result: SweepResult) -> bool:
+    """Print the summary and keep it in the folder; whether it could be printed."""
+    lines = [*summary(study, result, WIDTH), "", f"answers: {folder / TABLE_CSV}"]
+    try:
+        commit(folder / SUMMARY_FILE, ("\n".join(lines) + "\n").encode(errors="backslashreplace"))
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
+    return answer(
+        ["", *summary(study, result, width(), sign()), "", f"answers: {folder / TABLE_CSV}"]
+    )
+
+
+def _draw(folder: Path, table: Table) -> bool:
+    """Draw a picture of each question and say where they are; whether that could be done."""
+    from driftwell.report.varied import draw_sweep
+
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
+    try:
+        made = draw_sweep(folder, table)
+    except DriftwellError as error:
+        tell(str(error))
+        return False
+    return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])

@@ -1,0 +1,1 @@
+"""Many runs for one purpose: what a study file says, which runs it means, what they answered."""
