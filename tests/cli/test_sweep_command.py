@@ -43,6 +43,14 @@ def test_a_sweep_computes_tells_and_leaves_everything_and_does_it_once(
     assert table == (folder / "answers.csv").read_bytes()
 
 
+def test_each_question_has_a_picture(tmp_path: Path, capsys: Printed) -> None:
+    path, folder = study(tmp_path, "2, 4"), tmp_path / "sweep"
+    assert 0 == main(["sweep", str(path), "-o", str(folder)])
+    assert f"pictures: 2 in {folder / 'pictures'}\n" in capsys.readouterr().out
+    drawn = {each.name for each in (folder / "pictures").iterdir()}
+    assert {"held.png", "warmth.png"} == drawn
+
+
 def test_more_cases_later_compute_only_what_is_new(tmp_path: Path, capsys: Printed) -> None:
     folder = tmp_path / "sweep"
     assert 0 == sweep(study(tmp_path, "2, 4"), folder)
