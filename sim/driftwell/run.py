@@ -125,8 +125,6 @@ def run(
     stop_after : s by the clock, after which the run stops by itself, to be gone on with
     force : begin even where memory or disk look too small; the observer is told
 
-    force : begin even where memory or disk look too small; the observer is told
-
     Raises
     ------
     ScenarioError
