@@ -6,7 +6,7 @@ import tempfile
 from pathlib import Path
 from typing import Annotated, Any
 
-from hypothesis import HealthCheck, Phase, given, settings
+from hypothesis import HealthCheck, Phase, given, reject, settings
 from hypothesis import strategies as st
 
 from driftwell.forms import Bound, Form, read_quantity
@@ -99,7 +99,7 @@ def raw_tables(draw: st.DrawFn, form: type[Form]) -> dict[str, Any]:
         }
         if read_form(form, table)[0] is not None:
             return table
-    raise AssertionError(f"no table of {form.__name__} was read in {TRIES} tries")
+    reject()  # the same draw again and again; too many of these fail by hypothesis's own check
 
 
 DURATION = "10 ms"
