@@ -92,6 +92,24 @@ def test_a_range_of_quantities_is_written_in_the_unit_of_its_ends(
     ]
 
 
+@pytest.mark.parametrize("spacing", ["even", "log"])
+@pytest.mark.parametrize(
+    ("first", "last"), [("1e-300", "1e300"), ("1e308", "1.7e308"), ("5e-324", "1e-320")]
+)
+def test_ranges_at_the_edge_of_what_numbers_can_be_stay_between_their_ends(
+    first: str, last: str, spacing: str
+) -> None:
+    text = f'from = "{first} V"\nto = "{last} V"\npoints = 5\nspacing = "{spacing}"'
+    values = [float(case.values[0]) for case in cases_of(vary(VOLTAGE, text))]
+    assert sorted(values) == values
+    assert (float(first), float(last)) == (values[0], values[-1])
+
+
+def test_a_range_over_all_numbers_has_its_middle_at_zero() -> None:
+    text = 'from = "-1.7e308 V"\nto = "1.7e308 V"\npoints = 3'
+    assert [-1.7e308, 0.0, 1.7e308] == [case.values[0] for case in cases_of(vary(VOLTAGE, text))]
+
+
 def test_a_temperature_in_degrees_is_spaced_on_the_absolute_scale() -> None:
     text = vary("cloud.load.motion.temperature", 'from = "0 degC"\nto = "100 degC"\npoints = 3')
     _, cases, faults = expanded(text)

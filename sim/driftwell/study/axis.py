@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping, Sequence
 from copy import deepcopy
 from dataclasses import dataclass
@@ -127,10 +128,12 @@ class Range:
             end = self.ends[int(share)]
             whole = not isinstance(end, str) and self._is_whole
             return int(end) if whole else end
-        if self.log:
-            value = self.first * (self.last / self.first) ** share
+        if self.log:  # by logarithms: the ratio of the ends may be too large for a number
+            ends = math.log(abs(self.first)), math.log(abs(self.last))
+            between = math.exp((1.0 - share) * ends[0] + share * ends[1])
+            value = math.copysign(between, self.first)
         else:
-            value = self.first + (self.last - self.first) * share
+            value = (1.0 - share) * self.first + share * self.last
         if self._is_whole:
             return round(value)
         if not self.unit:
