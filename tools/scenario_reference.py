@@ -1,9 +1,12 @@
-"""Write docs/scenario-reference.md: `python tools/scenario_reference.py [--check]`."""
+"""Write docs/scenario-reference.md and docs/study-reference.md from the declarations.
+
+`python tools/scenario_reference.py [--check]`
+"""
 
 from __future__ import annotations
 
 import sys
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from pathlib import Path
 
 from driftwell.forms import Form
@@ -27,9 +30,27 @@ from driftwell.forms.declared import (
 from driftwell.forms.waveforms import WaveformForm
 from driftwell.forms.wording import bound_words, raw_value, toml_text
 from driftwell.particles.species import BUILT_IN
+from driftwell.record.layout import Attribute, Dataset
 from driftwell.scenario.model import Scenario
+from driftwell.study.form import MOST_CASES, StudyForm
+from driftwell.study.means import USED
+from driftwell.study.points import SEED_BITS
+from driftwell.study.table import MEANS_CSV, TABLE_CSV, TABLE_H5
+from driftwell.study.table_image import (
+    HEADER,
+    NAMED,
+    POINT,
+    RUN,
+    TABLE_VERSION,
+    answer_entry,
+    mean_entry,
+    varied_entry,
+)
+from driftwell.study.trial import ALL_UP_TO
 
-PAGE = Path(__file__).resolve().parent.parent / "docs" / "scenario-reference.md"
+DOCS = Path(__file__).resolve().parent.parent / "docs"
+PAGE = DOCS / "scenario-reference.md"
+STUDY_PAGE = DOCS / "study-reference.md"
 
 INTRODUCTION = """\
 # What a scenario file may hold
@@ -61,17 +82,91 @@ for example `voltage = { amplitude = "180 V", frequency = "1.1 MHz" }`. A table 
 sine wave.
 """
 
+STUDY_INTRODUCTION = f"""\
+# What a study file may hold
+
+A study is one TOML file: one scenario, and what changes in it from case to case. This page is
+written by `tools/scenario_reference.py` from the declarations the reader itself follows; change
+those, not the page.
+
+```toml
+title    = "Charge of a pulse that passes an aperture"
+scenario = "beam-aperture.toml"
+set      = ["cloud.pulse.count=300"]
+replicas = 3
+
+[[vary]]
+key    = "wall.aperture.hole.radius"
+values = ["5 mm", "8 mm"]
+
+[[vary]]
+key     = "cloud.pulse.total_charge"
+from    = "33.37 pC"
+to      = "667.4 pC"
+points  = 4
+spacing = "log"
+```
+
+are 2 x 4 points with 3 replicas each: 24 cases ([the whole
+file](../scenarios/studies/aperture-current.toml)). A study has at most {MOST_CASES} cases.
+
+- Each case is the scenario with the study's `set`, then one value of each `[[vary]]`, put in as
+  `--set` would put them in; it has a digest of its own, by which its run is known again. The same
+  case in another study, or the same study after more values were added, is not computed anew.
+- A value is what the scenario would have at that key: `values = ["150 V", "180 V"]`, `[100, 200]`,
+  `["direct", "tree"]`, or whole tables.
+- The last `[[vary]]` changes fastest; a sample changes faster than all lists. Replicas of a point
+  stand next to each other.
+- The first replica has the scenario's own `seed`. Each further one has a seed drawn from that seed
+  and the replica's number by numpy's `SeedSequence` ({SEED_BITS} bits): the same each time, and the
+  same however many replicas there are. All points share these seeds, so that neighbouring points
+  differ by what was varied more than by their draws. Their errors are not independent: a
+  difference between two points is often surer than their error bars say.
+- All faults of a study are told at once. Cases are tried before the first one runs: all of them up
+  to {ALL_UP_TO}, else the values of each axis, one after another (of a range, or of a list of more
+  than {ALL_UP_TO} numbers, the least and the greatest). What only one of many cases has, is told
+  when its turn comes.
+"""
+
+USED_WORDS = " or ".join(f"`{word}`" for word in USED)
+
+TABLES = f"""\
+## What the tables hold
+
+`{TABLE_CSV}` has one line of headings and one line for each case: its number, its replica, each
+key that varies, how it ended, then for each question the answer and its error. Headings carry
+units in brackets, SI for keys and the question's own for answers; `[1]` marks a plain number, and
+no brackets a text. What is not known is left empty. All digits are given: a number reads back to
+the last bit.
+
+With replicas there is `{MEANS_CSV}` as well, one line for all replicas of a point: the number of
+the first case, the keys that vary, and for each question the mean, its error, and how many runs it
+is the mean of. Runs count that ended as {USED_WORDS}. Of n values x with errors e, the
+error of the mean is the larger of
+
+- sqrt(sum e^2) / n, from the runs' own sampling errors, where all of them are known, and
+- sqrt(sum (x - mean)^2 / (n (n - 1))), from the scatter of the replicas.
+
+The two agree where the sampling errors are true. The scatter of two or three replicas is small by
+chance often enough, and the sampling error of one run does not see what that run cannot show; so
+the larger one is given.
+
+`{TABLE_H5}` holds the same (layout {TABLE_VERSION}) with each answer's note and each outcome's
+sentence, built and described as [a run's files](record-format.md) are: 64 bits, unit and meaning
+in the attributes of each dataset. Its attributes:
+"""
+
+COUNTED = """\
+The keys that vary are counted from 1 in the order of the file, the questions in the order in which
+they first appear. Each such dataset has these attributes besides:
+"""
+
 Headings = dict[type[Form], str]
 
 
 def page() -> str:
-    """The whole page."""
-    keys = list(declared_keys(Scenario).values())
-    top = [key for key in keys if not _is_section(key)]
-    sections = [key for key in keys if _is_section(key)]
-    headings: Headings = {}
-    for key in sections:
-        headings |= {form: name for form, name in _tables(key) if form not in headings}
+    """The whole page of scenarios."""
+    top, sections, headings = _parts(Scenario)
     contents = [f"- [`{_title(key)}`](#{_anchor(_title(key))}): {key.help}" for key in sections]
     contents.append("- [Values in time](#values-in-time)")
     parts = [INTRODUCTION, "\n".join(contents) + "\n", TOP, _key_table(top, headings)]
@@ -81,8 +176,33 @@ def page() -> str:
     return "\n".join(parts)
 
 
+def study_page() -> str:
+    """The whole page of studies."""
+    top, sections, headings = _parts(StudyForm)
+    parts = [STUDY_INTRODUCTION, TOP, _key_table(top, headings)]
+    for key in sections:
+        parts += _section(key, headings)
+    datasets = (
+        *(RUN, varied_entry("cases", "N", None), answer_entry("N")),
+        *(POINT, varied_entry("means", "N", None), mean_entry("N")),
+    )
+    parts += [TABLES, attribute_table(HEADER), *map(dataset_part, datasets)]
+    return "\n".join([*parts, COUNTED, attribute_table(NAMED)])
+
+
+def _parts(form: type[Form]) -> tuple[list[DeclaredKey], list[DeclaredKey], Headings]:
+    """Keys at the top of a file, its sections, and the headings of all tables."""
+    keys = declared_keys(form).values()
+    sections = [key for key in keys if _is_section(key)]
+    headings: Headings = {}
+    for key in sections:
+        headings |= {each: name for each, name in _tables(key) if each not in headings}
+    return [key for key in keys if not _is_section(key)], sections, headings
+
+
 def _is_section(key: DeclaredKey) -> bool:
-    return isinstance(key.holds, Keys | Named | Several)
+    texts = isinstance(key.holds, Several) and isinstance(key.holds.entry, Text)
+    return isinstance(key.holds, Keys | Named | Several) and not texts
 
 
 def _title(key: DeclaredKey) -> str:
@@ -231,18 +351,45 @@ def _capital(text: str) -> str:
     return text[:1].upper() + text[1:]
 
 
+def attribute_table(entries: Iterable[Attribute]) -> str:
+    """One row for each attribute."""
+    rows = [(f"`{each.name}`", each.kind, each.help) for each in entries]
+    return _plain_table(("attribute", "type", "meaning"), rows)
+
+
+def dataset_part(entry: Dataset) -> str:
+    """A dataset's heading and meaning, and the columns of a table."""
+    unit = "" if entry.columns else f" Unit: {entry.unit}."
+    head = f"### `{entry.path}`\n\n{_capital(entry.help)}.{unit}\n"
+    if not entry.columns:
+        return head
+    rows = [(f"`{each.name}`", each.kind, each.unit, each.help) for each in entry.columns]
+    return f"{head}\n{_plain_table(('column', 'type', 'unit', 'meaning'), rows)}"
+
+
+def _plain_table(heads: tuple[str, ...], rows: Iterable[tuple[str, ...]]) -> str:
+    lines = [heads, ("---",) * len(heads), *rows]
+    return "".join(f"| {' | '.join(line)} |\n" for line in lines)
+
+
 def _docstring(form: type[Form]) -> str:
     return "\n\n".join(about(form))
 
 
 def main(arguments: list[str]) -> int:
-    """Write the page, or with --check say whether it is fresh."""
+    """Write the pages, or with --check say whether they are fresh."""
+    pages = {PAGE: page(), STUDY_PAGE: study_page()}
     if "--check" not in arguments:
-        PAGE.write_text(page(), encoding="utf-8")
+        for path, text in pages.items():
+            path.write_text(text, encoding="utf-8")
         return 0
-    if PAGE.is_file() and PAGE.read_text(encoding="utf-8") == page():
+    return max(_stale(path, text) for path, text in pages.items())
+
+
+def _stale(path: Path, text: str) -> int:
+    if path.is_file() and path.read_text(encoding="utf-8") == text:
         return 0
-    sys.stderr.write(f"{PAGE.name} is stale: run `python tools/scenario_reference.py`.\n")
+    sys.stderr.write(f"{path.name} is stale: run `python tools/scenario_reference.py`.\n")
     return 1
 
 

@@ -11,6 +11,7 @@ import pytest
 
 from driftwell.forms.declared import Keys, declared_keys, forms_within
 from driftwell.scenario.model import Scenario
+from driftwell.study.form import StudyForm
 
 TOOL = Path(__file__).parents[2] / "tools" / "scenario_reference.py"
 
@@ -37,8 +38,11 @@ def test_a_stale_or_missing_page_is_told_and_written_anew(
 ) -> None:
     page = tmp_path / "scenario-reference.md"
     monkeypatch.setattr(tool, "PAGE", page)
+    monkeypatch.setattr(tool, "STUDY_PAGE", tmp_path / "study-reference.md")
     assert 1 == tool.main(["--check"])
-    assert "scenario-reference.md is stale" in capsys.readouterr().err
+    told = capsys.readouterr().err
+    assert "scenario-reference.md is stale" in told
+    assert "study-reference.md is stale" in told
     assert 0 == tool.main([])
     assert 0 == tool.main(["--check"])
     page.write_text(page.read_text(encoding="utf-8") + "x", encoding="utf-8")
@@ -54,6 +58,17 @@ def test_every_key_of_every_form_is_on_the_page(tool: ModuleType) -> None:
         if f"| `{name}` |" not in page and f"[{name}]" not in page and f"[{name}." not in page
     }
     assert set() == missing
+
+
+def test_every_key_of_a_study_is_on_its_page_and_every_dataset_of_its_table(
+    tool: ModuleType,
+) -> None:
+    page = tool.study_page()
+    for form in forms_within(Keys(StudyForm)):
+        for name in declared_keys(form):
+            assert f"| `{name}` |" in page or f"[{name}]" in page, name
+    for path in ("cases/run", "cases/varied/N", "cases/answer/N", "means/point", "means/answer/N"):
+        assert f"### `{path}`" in page
 
 
 def test_every_link_leads_to_one_heading(tool: ModuleType) -> None:

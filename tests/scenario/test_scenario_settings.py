@@ -8,7 +8,7 @@ from typing import Any
 import pytest
 
 from driftwell.scenario.model import Scenario
-from driftwell.scenario.settings import apply_settings
+from driftwell.scenario.settings import apply_settings, path_of, setting_path, setting_text
 from tests.scenario.good_scenarios import TRAP
 
 
@@ -103,3 +103,59 @@ def test_an_entry_of_a_section_that_is_not_there_cannot_be_set() -> None:
     _, faults = apply_settings(data, ["wall.bore.radius=1 mm"], Scenario)
     assert ["--set wall.bore.radius=1 mm: the scenario has no [[wall]]."] == faults
     assert {"title": "x"} == data
+
+
+@pytest.mark.parametrize(
+    ("key", "expected"),
+    [
+        ("duration", ("duration",)),
+        ("cloud.load.count", ("cloud", 0, "count")),
+        ("new.a.b", ("new", "a", "b")),
+        ('field."end caps".kind', ("field", 1, "kind")),
+    ],
+)
+def test_the_path_of_a_key_is_found_without_changing_the_table(
+    key: str, expected: tuple[str | int, ...]
+) -> None:
+    data = tomllib.loads(TRAP)
+    assert expected == path_of(key, data, Scenario)
+    assert tomllib.loads(TRAP) == data
+
+
+@pytest.mark.parametrize("key", ["a=b", "", "cloud.laod.count", "duration.x", "a." * 40 + "b"])
+def test_a_key_that_no_setting_can_have_is_refused(key: str) -> None:
+    with pytest.raises(LookupError):
+        path_of(key, tomllib.loads(TRAP), Scenario)
+
+
+def test_the_path_of_a_setting_is_that_of_its_key() -> None:
+    data = tomllib.loads(TRAP)
+    assert ("cloud", 0, "count") == setting_path("cloud.1.count=5", data, Scenario)
+    assert setting_path("cloud.2.count=5", data, Scenario) is None
+    assert tomllib.loads(TRAP) == data
+
+
+@pytest.mark.parametrize(
+    ("value", "expected"),
+    [
+        ("1 ms", "title=1 ms"),
+        ("auto", "title=auto"),
+        ("7", 'title="7"'),
+        ("true", 'title="true"'),
+        (" x", 'title=" x"'),
+        ("", "title="),
+        ("a = b", "title=a = b"),
+        ("a\nb", 'title="a\\nb"'),
+        (7, "title=7"),
+        (1e-9, "title=1e-09"),
+        (True, "title=true"),
+        (["1 mm", 2], 'title=["1 mm", 2]'),
+        ({"kind": "ball"}, 'title={ kind = "ball" }'),
+    ],
+)
+def test_a_setting_is_written_so_that_it_reads_back_as_its_value(value: Any, expected: str) -> None:
+    assert expected == setting_text("title", value)
+    data: dict[str, Any] = {}
+    apply_settings(data, [expected], Scenario)
+    assert {"title": value} == data
+    assert type(value) is type(data["title"])

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from driftwell.forms import Form
-from driftwell.forms.declared import Keys, Named, Several, declared_keys
+from driftwell.forms.declared import Keys, Named, Several, Text, declared_keys
 from driftwell.forms.wording import as_found, name_found
 
 Path = tuple[str | int, ...]
@@ -66,6 +66,8 @@ def _entry(section: str, entries: list[Any], number: str | int) -> str:
 
 
 def _is_list_of_tables(value: list[Any], holds: object) -> bool:
+    if isinstance(holds, Several) and isinstance(holds.entry, Text):
+        return False
     return isinstance(holds, Several) or any(isinstance(entry, Mapping) for entry in value)
 
 

@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping, Sequence
+from copy import deepcopy
 from dataclasses import dataclass
 from decimal import Decimal
 from typing import Any
 
 from driftwell.forms import units
 from driftwell.forms.declared import Dimensioned, Number
-from driftwell.forms.faults import Fault
+from driftwell.forms.faults import Fault, read_form
 from driftwell.forms.held import Path, held_at, read_dimensioned
 from driftwell.forms.wording import needed, toml_text
 from driftwell.scenario.model import Scenario
@@ -28,11 +30,13 @@ class Held:
     path : of the value in the scenario's raw table
     quantity : what it is where it has a dimension
     number : a plain number where it may be one
+    unknown : why the scenario has no such key as it stands; empty where it has it
     """
 
     path: Path
     quantity: Dimensioned | None = None
     number: Number | None = None
+    unknown: str = ""
 
     @property
     def unit(self) -> str:
@@ -60,7 +64,19 @@ def held_by(path: Path, data: Mapping[str, Any]) -> Held:
         path,
         next((option for option in options if isinstance(option, Dimensioned)), None),
         next((option for option in options if isinstance(option, Number)), None),
+        "" if options else _why_unknown(path, data),
     )
+
+
+def _why_unknown(path: Path, data: Mapping[str, Any]) -> str:
+    """What the scenario's reader says of the key."""
+    changed: Any = deepcopy(dict(data))
+    holder = changed
+    for part in path[:-1]:
+        holder = holder.setdefault(part, {}) if isinstance(holder, dict) else holder[part]
+    holder[path[-1]] = 0
+    faults = read_form(Scenario, changed)[1]
+    return next((fault.needed for fault in faults if fault.path == path), "unknown key")
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,25 +128,29 @@ class Range:
             end = self.ends[int(share)]
             whole = not isinstance(end, str) and self._is_whole
             return int(end) if whole else end
-        if self.log:
-            value = self.first * (self.last / self.first) ** share
+        if self.log:  # by logarithms: the ratio of the ends may be too large for a number
+            ends = math.log(abs(self.first)), math.log(abs(self.last))
+            between = math.exp((1.0 - share) * ends[0] + share * ends[1])
+            value = math.copysign(between, self.first)
         else:
-            value = self.first + (self.last - self.first) * share
+            value = (1.0 - share) * self.first + share * self.last
         if self._is_whole:
             return round(value)
         if not self.unit:
             return float(f"{value:.{_DIGITS}g}")
-        return f"{(Decimal(value) - self.offset) / self.factor:.{_DIGITS}g} {self.unit}"
+        in_unit = float((Decimal(value) - self.offset) / self.factor)
+        return f"{in_unit:.{_DIGITS}g} {self.unit}"
 
     @property
     def _is_whole(self) -> bool:
-        return (
-            self.held.quantity is None and self.held.number is not None and self.held.number.whole
-        )
+        number = self.held.number
+        return self.held.quantity is None and number is not None and number.whole
 
 
 def range_of(entry: Vary, held: Held, path: Path) -> Range | list[Fault]:
     """The range of the entry at `path` of the study, or its faults."""
+    if held.unknown:
+        return [Fault((*path, "key"), "", held.unknown)]
     found = {"from": entry.first, "to": entry.last}
     faults = [
         Fault((*path, name), "", why)

@@ -27,7 +27,7 @@ Replicas = Annotated[Count, Bound(least=1, most=MOST_CASES)]
 
 
 class Vary(Form):
-    """One key of the scenario that changes from case to case.
+    """One key of the scenario, and the values it takes.
 
     Its values are either listed, `values = [...]`, or cut from a range, `from`, `to` and `points`.
     A range has both its ends. Values between them are rounded to 12 digits, and to the nearest
@@ -80,7 +80,7 @@ class Vary(Form):
 
 
 class Sample(Form):
-    """Ranges are sampled instead of cut into a grid.
+    """Points drawn over all ranges at once, instead of a grid of them.
 
     Each range is divided into as many parts as there are points, and each part is met exactly once
     (a Latin hypercube): many ranges are covered with few cases. Lists are not sampled: the same
@@ -113,7 +113,7 @@ class StudyForm(Form):
         example=3,
     )
     vary: tuple[Vary, ...] = key("what changes from case to case", default=())
-    sample: Sample | None = key("ranges are sampled instead of cut into a grid", default=None)
+    sample: Sample | None = key("how ranges are sampled", default=None)
 
     @checked
     def _in_its_folder(self) -> Self:

@@ -12,7 +12,7 @@ from driftwell.forms.faults import Fault, read_form
 from driftwell.forms.inside import found_inside
 from driftwell.scenario.lines import KeyLines
 from driftwell.scenario.model import Scenario
-from driftwell.scenario.settings import apply_settings
+from driftwell.scenario.settings import Setting, apply_settings
 from driftwell.scenario.source import raw_table, shown_path, source_text
 from driftwell.scenario.told import shortened, told, with_value
 from driftwell.study.form import StudyForm
@@ -118,7 +118,7 @@ def _set_all(
 ) -> tuple[list[str], list[Fault]]:
     """Put settings into the scenario's raw table; lines and faults of those that cannot be."""
     faults = [
-        Fault(("set", k), "", why.removeprefix("--set ").removesuffix("."))
+        Fault(("set", k), "", why.removeprefix(f"{Setting(text, ()).shown()}: "))
         for k, text in enumerate(own)
         for why in apply_settings(data, [text], Scenario)[1]
     ]

@@ -164,7 +164,9 @@ def _cell(value: Value | None) -> str:
     """A number to the last bit; empty where there is none."""
     if isinstance(value, str):
         return value
-    return "" if value is None or math.isnan(value) else f"{value!r}"
+    if value is None or math.isnan(value):
+        return ""
+    return repr(value).removesuffix(".0")
 
 
 def _unlike(headings: Sequence[str]) -> list[str]:

@@ -66,28 +66,32 @@ def trial_faults(scene: Scene, axes: Sequence[Axis], cases: Sequence[Case]) -> l
     for case in tried:
         for found in _faults(scene, axes, case):
             met.setdefault(found.key, []).append((case, found))
-    return [_line(scene, axes, tried, those) for those in met.values()]
+    faulty = {case.number for those in met.values() for case, _ in those}
+    well = [case for case in tried if case.number not in faulty]
+    return [_line(scene, axes, len(tried), well, those) for those in met.values()]
 
 
 def _line(
-    scene: Scene, axes: Sequence[Axis], tried: Sequence[Case], those: list[tuple[Case, _Found]]
+    scene: Scene,
+    axes: Sequence[Axis],
+    tried: int,
+    well: Sequence[Case],
+    those: Sequence[tuple[Case, _Found]],
 ) -> str:
+    """A fault in words; where no one setting is behind it, the case and what it varies too."""
     case, found = those[0]
     if found.where:
         more = len({other.setting for _, other in those}) - 1
         also = f" ({more} more of its values {'has' if more == 1 else 'have'} this fault)"
         return f"{found.where}: {found.words}{also if more else ''}"
-    faulty = {other.number for other, _ in those}
-    if len(faulty) == len(tried):
+    if len(those) == tried:
         return found.words
-    well = [other for other in tried if other.number not in faulty]
     behind = next(
         (k for k in range(len(axes)) if all(c.values[k] != case.values[k] for c in well)), 0
     )
     varied = " ".join(Setting(text, ()).shown() for text in case.settings[scene.common :])
-    return (
-        f"{_where(scene, axes, scene.common + behind)}, case {case.number}, {varied}: {found.words}"
-    )
+    where = _where(scene, axes, scene.common + behind)
+    return f"{where}, case {case.number}, {varied}: {found.words}"
 
 
 def chosen(axes: Sequence[Axis], cases: Sequence[Case]) -> list[Case]:
