@@ -1,4 +1,4 @@
-"""``driftwell estimate FILE``: what a run would cost, before it is begun."""
+"""``driftwell estimate FILE``: what a run or a sweep would cost, before it is begun."""
 
 from __future__ import annotations
 
@@ -18,6 +18,8 @@ from driftwell.forms.paragraph import paragraph
 from driftwell.kernels.compilation import first_compilation
 from driftwell.scenario.read import read_scenario
 from driftwell.scenario.room import free_memory, free_space, in_words
+from driftwell.study.forecast import Forecast, forecast
+from driftwell.study.read import Study, is_study, read_study
 
 _COLUMN = 9
 _FEW = 0.01
@@ -25,8 +27,10 @@ _FEW = 0.01
 
 
 def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: float) -> int:
-    """Print what a run would cost and return 0, or why none could be, with the run's exit code."""
+    """Print what it would cost and return 0, or why nothing could be run, with its exit code."""
     try:
+        if is_study(file):
+            return _of_study(read_study(file, settings), seconds)
         loaded = read_scenario(file, settings)
         tell(loaded.scenario.title)
         with first_compilation(tell_of_compiling):
@@ -43,6 +47,15 @@ def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: 
     return 0 if answer(estimate_lines(found, width())) else UNUSABLE
 
 
+def _of_study(study: Study, seconds: float) -> int:
+    """Print what a sweep would cost."""
+    tell(study.title)
+    tell(f"{_counted(len(study.cases), 'case')}; some of them are timed")
+    with first_compilation(tell_of_compiling):
+        found = forecast(study, seconds)
+    return 0 if answer(forecast_lines(found, width())) else UNUSABLE
+
+
 def _begins(parts: Assembly, summation: Summation) -> None:
     """Say what is timed, as a run says what it does."""
     tell(steps_in_words(parts.choice, parts.schedule, parts.particles))
@@ -55,15 +68,50 @@ def estimate_lines(found: Estimate, columns: int) -> list[str]:
         ("time", _time(found)),
         ("goes to", _goes_to(found)),
         ("steps", _steps(found)),
-        ("memory", _memory(found)),
-        ("disk", _disk(found)),
+        ("memory", _of_memory(found.memory)),
+        ("disk", _of_disk(found.disk, found.events)),
         *(("cheaper" if not k else "", words) for k, words in enumerate(_cheaper(found))),
     ]
+    return _laid_out(rows, columns)
+
+
+def _laid_out(rows: Sequence[tuple[str, str]], columns: int) -> list[str]:
+    """Names, and beside them what is said."""
     return [
         line
         for name, words in rows
         for line in paragraph(words, columns, name.ljust(_COLUMN), " " * _COLUMN)
     ]
+
+
+def forecast_lines(found: Forecast, columns: int) -> list[str]:
+    """What a sweep would cost, in lines of at most so many characters."""
+    refused, why = found.refused
+    rows = [
+        (
+            "time",
+            f"about {lasting(found.seconds)}, from {lasting(found.least)} to "
+            f"{lasting(found.most)}; begun now, done {by_the_clock(found.seconds)}. Runs that are "
+            "there already are counted, though they are not computed again.",
+        ),
+        (
+            "runs",
+            f"{found.runs} of {_counted(found.cases, 'case')}, {lasting(found.work)} of work; the "
+            f"longest takes {lasting(found.longest)}",
+        ),
+        ("cores", found.sharing.because),
+        (
+            "timed",
+            ", ".join(
+                f"{_counted(each.charges, 'charge')} {lasting(each.seconds)}"
+                for each in found.timed
+            ),
+        ),
+        ("memory", _of_memory(found.memory)),
+        ("disk", _of_disk(found.disk, 0)),
+        *([("faults", f"{refused} of the cases cannot be run: {why}")] if refused else []),
+    ]
+    return _laid_out(rows, columns)
 
 
 def _time(found: Estimate) -> str:
@@ -97,21 +145,21 @@ def _steps(found: Estimate) -> str:
     )
 
 
-def _memory(found: Estimate) -> str:
+def _of_memory(needed: int) -> str:
     free = free_memory()
-    text = f"about {in_words(found.memory)}"
+    text = f"about {in_words(needed)}"
     return text if free is None else f"{text}; {in_words(free)} are free"
 
 
-def _disk(found: Estimate) -> str:
-    text = f"about {in_words(found.disk)}"
-    if found.events > _FEW * found.disk:
-        text += f", and {in_words(found.events)} more if every charge meets every surface once"
+def _of_disk(needed: int, events: int) -> str:
+    text = f"about {in_words(needed)}"
+    if events > _FEW * needed:
+        text += f", and {in_words(events)} more if every charge meets every surface once"
     space = free_space(Path())
     if space is None:
         return text
     text += f"; {in_words(space)} are free here"
-    if found.disk > space:
+    if needed > space:
         text += ", too little: record less often, or name a folder on a larger disk with -o"
     return text
 

@@ -120,7 +120,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_settings(check)
 
     estimate = commands.add_parser(
-        "estimate", help="time a scenario's own steps, and say what the whole run will cost"
+        "estimate", help="time some steps, and say what a run or a sweep will cost"
     )
     estimate.add_argument("file", help="scenario file (TOML)")
     estimate.add_argument(

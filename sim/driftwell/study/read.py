@@ -50,6 +50,15 @@ class Study:
         return self.path.stem
 
 
+def is_study(path: str | Path) -> bool:
+    """Whether a file looks like a study rather than a scenario; False where it cannot be read."""
+    try:
+        data = raw_table(source_text(Path(path), "study"), str(path), A_STUDY)
+    except ScenarioError:
+        return False
+    return "scenario" in data or "vary" in data
+
+
 def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
     """Read and check a study file; `overrides` are settings of the scenario for all cases.
 

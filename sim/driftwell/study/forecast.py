@@ -1,0 +1,144 @@
+"""What a sweep will cost: a few of its runs are timed, the others lie between them.
+
+Runs are put in order of charges times duration, and at most :data:`TIMED` of them, evenly chosen
+with the first and the last, are estimated by their own steps. Time and disk of a run between two of
+these follow from its place between them, on logarithmic scales.
+"""
+
+from __future__ import annotations
+
+import math
+import os
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.errors import DriftwellError
+from driftwell.estimate import Estimate, estimate
+from driftwell.particles.species import bodies
+from driftwell.scenario.read import LoadedScenario, read_scenario
+from driftwell.scenario.room import extent_of, free_memory
+from driftwell.study.cores import Load, Sharing, shared, threads_pay_from
+from driftwell.study.read import Study
+
+TIMED = 5
+"""Most runs that are timed."""
+BESIDES = 0.1
+"""s that a run takes besides its steps and records: reading, setting up, answers, files."""
+
+
+@dataclass(frozen=True, slots=True)
+class Forecast:
+    """What all runs of a sweep will cost together, those that are there already included.
+
+    cases, runs : how many, and how many of them differ
+    refused : cases that are no scenario, with the reason of the first
+    sharing : how the cores would be shared
+    seconds, least, most : s by the clock; work : s of all runs, each for itself
+    longest : s of the longest run
+    memory : bytes at the busiest time, of the runs side by side; disk : bytes of all records
+    timed : the runs that were timed, from the smallest to the largest
+    """
+
+    cases: int
+    runs: int
+    refused: tuple[int, str]
+    sharing: Sharing
+    seconds: float
+    least: float
+    most: float
+    work: float
+    longest: float
+    memory: int
+    disk: int
+    timed: tuple[Estimate, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class _Sized:
+    """A run's scenario and how large it is: charges, and charges times seconds of motion."""
+
+    loaded: LoadedScenario
+    charges: int
+    size: float
+
+
+def forecast(
+    study: Study, seconds: float = 5.0, workers: int | None = None, threads: int | None = None
+) -> Forecast:
+    """What a sweep will cost; takes about `seconds` s besides reading its cases and setting up.
+
+    workers, threads : what the user asks for; None where the sweep is to find out
+
+    Raises DriftwellError where one of the runs that are timed cannot be carried out.
+    """
+    runs, refused = _runs(study)
+    runs.sort(key=lambda run: run.size)
+    largest = max(runs, key=lambda run: run.charges)
+    memory = extent_of(largest.loaded.scenario, largest.charges).memory()
+    pays = min(threads_pay_from(run.loaded.scenario.coulomb) for run in runs)
+    load = Load(len(runs), largest.charges, pays, memory, free_memory())
+    sharing = shared(load, len(os.sched_getaffinity(0)), workers, threads)
+    chosen = np.unique(np.linspace(0, len(runs) - 1, TIMED).round().astype(int))
+    timed = tuple(estimate(runs[k].loaded, sharing.threads, seconds / len(chosen)) for k in chosen)
+    sizes = np.array([run.size for run in runs])
+    at = sizes[chosen]
+    each = BESIDES + _between(sizes, at, [found.seconds for found in timed])
+    low = BESIDES + _between(sizes, at, [found.least for found in timed])
+    high = BESIDES + _between(sizes, at, [found.most for found in timed])
+    disk = _between(sizes, at, [float(found.disk) for found in timed])
+    return Forecast(
+        cases=len(study.cases),
+        runs=len(runs),
+        refused=refused,
+        sharing=sharing,
+        seconds=_by_the_clock(each, sharing.workers),
+        least=_by_the_clock(low, sharing.workers),
+        most=_by_the_clock(high, sharing.workers),
+        work=float(each.sum()),
+        longest=float(each.max()),
+        memory=sharing.workers * max([memory, *(found.memory for found in timed)]),
+        disk=math.ceil(disk.sum()),
+        timed=timed,
+    )
+
+
+def _runs(study: Study) -> tuple[list[_Sized], tuple[int, str]]:
+    """The runs that differ, and how many cases are no scenario; raises where none is one."""
+    found: dict[str, _Sized] = {}
+    refused = 0
+    first = ""
+    for case in study.cases:
+        try:
+            loaded = read_scenario(study.scenario_path, case.settings)
+        except DriftwellError as fault:
+            refused, first = refused + 1, first or str(fault)
+            continue
+        if loaded.digest not in found:
+            scenario = loaded.scenario
+            known = bodies(scenario.species)
+            charges = sum(cloud.amount(known, loaded.folder).count for cloud in scenario.cloud)
+            found[loaded.digest] = _Sized(loaded, charges, charges * scenario.duration)
+    if not found:
+        raise DriftwellError(f"No case of the study is a scenario that can be run: {first}")
+    return list(found.values()), (refused, first)
+
+
+def _between(
+    sizes: NDArray[np.float64], at: NDArray[np.float64], values: Sequence[float]
+) -> NDArray[np.float64]:
+    """A value for each size, from those known at some of them; the mean where sizes are equal."""
+    known = np.unique(at)
+    means = [
+        float(np.mean([value for size, value in zip(at, values, strict=True) if size == each]))
+        for each in known
+    ]
+    floor = 1e-9  # of what takes no time there is no logarithm
+    return np.exp(np.interp(np.log(sizes), np.log(known), np.log(np.maximum(means, floor))))
+
+
+def _by_the_clock(each: NDArray[np.float64], workers: int) -> float:
+    """Time of all runs side by side: no less than the longest of them."""
+    return max(float(each.sum()) / workers, float(each.max()))
