@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.coulomb.summation import Summation
 from driftwell.errors import ScenarioError
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
@@ -20,7 +21,8 @@ from driftwell.forms.waveforms import waveform_breaks
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
-from driftwell.record.header import trace_name
+from driftwell.record.header import Header, trace_name
+from driftwell.record.rows import tracked_ids
 from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -68,6 +70,40 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+
+    @property
+    def tracked(self) -> NDArray[np.int64]:
+        """Ids of the charges whose trajectories are kept."""
+        return tracked_ids(len(self.particles), self.scenario.record.tracks)
+
+    def header(
+        self, loaded: LoadedScenario, summation: Summation, threads: int, created: str
+    ) -> Header:
+        """What a run of it is; created : the time of day it is begun, as text."""
+        scenario = self.scenario
+        return Header(
+            scenario=loaded.text,
+            title=scenario.title,
+            seed=scenario.seed,
+            duration=scenario.duration,
+            step=self.choice.step,
+            scheme=scenario.stepping.scheme,
+            softening=scenario.coulomb.softening,
+            coulomb_method=summation.method,
+            coulomb_because=summation.because,
+            coulomb_accuracy=scenario.coulomb.accuracy,
+            clouds=self.clouds,
+            species=self.species,
+            walls=tuple(wall.name for wall in scenario.wall),
+            detectors=tuple(detector.name for detector in scenario.detector),
+            tracked=tuple(int(i) for i in self.tracked),
+            traces=tuple(trace_name(request) for request in self.requests),
+            settings=loaded.settings,
+            digest=loaded.digest,
+            command=loaded.command,
+            threads=threads,
+            created=created,
+        )
 
     def time_loop(
         self,

@@ -5,7 +5,6 @@ The run itself prints nothing: an :class:`Observer` is told how far it is and ma
 
 from __future__ import annotations
 
-import shlex
 import time as clocks
 from collections.abc import Iterator
 from contextlib import ExitStack, contextmanager, suppress
@@ -27,7 +26,6 @@ from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.record.claim import holds_run, refuse_taken, unwritable
 from driftwell.record.earlier import clear_unsealed, differences, earlier_run, put_aside
-from driftwell.record.header import Header, trace_name
 from driftwell.record.heartbeat import Heartbeat
 from driftwell.record.lock import held
 from driftwell.record.outcome import Outcome
@@ -39,7 +37,6 @@ from driftwell.record.rows import (
     moment_rows,
     row_of,
     track_rows,
-    tracked_ids,
 )
 from driftwell.record.writer import RunWriter
 from driftwell.scenario.read import LoadedScenario
@@ -238,8 +235,8 @@ class _Execution:
     ) -> None:
         """At time zero, with a new record, in a folder that is held from now on."""
         created = datetime.now(UTC).isoformat(timespec="seconds")
-        parts, scenario = self._parts, self._scenario
-        self._tracked = tracked_ids(len(parts.particles), scenario.record.tracks)
+        parts = self._parts
+        self._tracked = parts.tracked
         self._loop = parts.time_loop(threads)
         self._ledger = Ledger()
         summation = self._loop.summation
@@ -247,30 +244,7 @@ class _Execution:
         if not held_already:
             holding.enter_context(_made(self._folder))
         self._writer = RunWriter.create(
-            self._folder,
-            Header(
-                scenario=loaded.text,
-                title=scenario.title,
-                seed=scenario.seed,
-                duration=scenario.duration,
-                step=parts.choice.step,
-                scheme=scenario.stepping.scheme,
-                softening=scenario.coulomb.softening,
-                coulomb_method=summation.method,
-                coulomb_because=summation.because,
-                coulomb_accuracy=scenario.coulomb.accuracy,
-                clouds=parts.clouds,
-                species=parts.species,
-                walls=tuple(wall.name for wall in scenario.wall),
-                detectors=tuple(detector.name for detector in scenario.detector),
-                tracked=tuple(int(i) for i in self._tracked),
-                traces=tuple(trace_name(request) for request in parts.requests),
-                settings=loaded.settings,
-                digest=loaded.digest,
-                command=_command(loaded),
-                threads=threads,
-                created=created,
-            ),
+            self._folder, parts.header(loaded, summation, threads, created)
         )
         self._began = clocks.monotonic()
         self._record(0)
@@ -458,10 +432,3 @@ class _Execution:
         return Result(
             self._folder, outcome, answers, self._row, self._loop.promise.broken(self._reached)
         )
-
-
-def _command(loaded: LoadedScenario) -> str:
-    """The command that makes the same run again."""
-    settings = [word for each in loaded.settings for word in ("--set", each)]
-    text = shlex.join(["driftwell", "run", str(loaded.path), *settings])
-    return text.encode(errors="backslashreplace").decode()  # names of files may be no text

@@ -23,10 +23,9 @@ from driftwell.coulomb.form import Coulomb
 from driftwell.errors import RecordError, StepError
 from driftwell.ledger.ledger import Ledger
 from driftwell.particles.state import Particles
-from driftwell.record.header import Header, trace_name
 from driftwell.record.index import segment_name
 from driftwell.record.resume_state import particles_state
-from driftwell.record.rows import ledger_row, moment_rows, track_rows, tracked_ids
+from driftwell.record.rows import ledger_row, moment_rows, track_rows
 from driftwell.record.writer import RunWriter
 from driftwell.scenario.read import LoadedScenario
 from driftwell.stepping.loop import TimeLoop
@@ -165,24 +164,11 @@ class TimedRecord:
 
     def __init__(self, loaded: LoadedScenario, parts: Assembly, loop: TimeLoop, folder: Path):
         self._parts, self._loop, self._folder = parts, loop, folder
-        scenario = parts.scenario
-        self._tracked = tracked_ids(len(parts.particles), scenario.record.tracks)
+        self._tracked = parts.tracked
         self._ledger = Ledger()
         self._writer = RunWriter.create(
             folder,
-            Header(
-                scenario=loaded.text,
-                title=scenario.title,
-                seed=scenario.seed,
-                duration=scenario.duration,
-                step=parts.choice.step,
-                scheme=scenario.stepping.scheme,
-                softening=scenario.coulomb.softening,
-                clouds=parts.clouds,
-                species=parts.species,
-                tracked=tuple(int(i) for i in self._tracked),
-                traces=tuple(trace_name(request) for request in parts.requests),
-            ),
+            parts.header(loaded, loop.summation, 1, ""),
         )
         self._sealed = 0
         self._bytes = [0]

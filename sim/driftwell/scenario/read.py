@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shlex
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -34,6 +35,13 @@ class LoadedScenario:
     folder: Path
     digest: str
     settings: tuple[str, ...] = ()
+
+    @property
+    def command(self) -> str:
+        """The command that makes a run of it."""
+        settings = [word for each in self.settings for word in ("--set", each)]
+        text = shlex.join(["driftwell", "run", str(self.path), *settings])
+        return text.encode(errors="backslashreplace").decode()  # names of files may be no text
 
 
 def read_scenario(path: str | Path, overrides: Sequence[str] = ()) -> LoadedScenario:
