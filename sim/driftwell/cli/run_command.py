@@ -90,15 +90,19 @@ def _report(result: Result) -> bool:
         f"{row.third_law_residual:.1e}",
         "",
         *_doubted(result),
-        *(
-            answer_lines(result.answers, width(), sign())
-            or ["The scenario asks no questions: the run only recorded."]
-        ),
+        *_answers(result),
         *coulomb_lines(result.answers, width()),
         "",
         f"record: {result.folder / MASTER}",
     ]
     return answer(lines)
+
+
+def _answers(result: Result) -> list[str]:
+    if result.outcome.word == FULL:
+        return ["The questions are answered once the run is whole."]
+    found = answer_lines(result.answers, width(), sign())
+    return found or ["The scenario asks no questions: the run only recorded."]
 
 
 def _doubted(result: Result) -> list[str]:
