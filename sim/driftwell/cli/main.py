@@ -115,14 +115,16 @@ def _parser() -> argparse.ArgumentParser:
     sweep.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
     _add_settings(sweep)
 
-    check = commands.add_parser("check", help="say what a scenario would simulate, or its faults")
-    check.add_argument("file", help="scenario file (TOML)")
+    check = commands.add_parser(
+        "check", help="say what a scenario or study would simulate, or its faults"
+    )
+    check.add_argument("file", help="scenario or study file (TOML)")
     _add_settings(check)
 
     estimate = commands.add_parser(
         "estimate", help="time some steps, and say what a run or a sweep will cost"
     )
-    estimate.add_argument("file", help="scenario file (TOML)")
+    estimate.add_argument("file", help="scenario or study file (TOML)")
     estimate.add_argument(
         "--seconds",
         type=_seconds,
