@@ -42,7 +42,7 @@ def test_workers_killed_at_random_cost_no_run_and_no_run_counts_twice(tmp_path: 
         process = started(*arguments, "--on", "dask", "--scheduler", made.address)
         waited_for(process, 1, folder, "runs/*/run.h5")
         while process.poll() is None:
-            time.sleep(draw.uniform(0.2, 2.0))
+            time.sleep(draw.uniform(1.0, 5.0))
             pids = made.workers()
             if pids:
                 with suppress(ProcessLookupError):
