@@ -95,8 +95,16 @@ class Cluster:
                 raise EngineError(said)
 
     def sharing(self, load: Load, workers: int | None, threads: int | None) -> Sharing:
-        """As many runs side by side as the cluster has threads; one thread each, or as asked."""
-        there = sum(self._client.nthreads().values())
+        """As many runs side by side as the cluster has threads; one thread each, or as asked.
+
+        Raises EngineError where the cluster does not say.
+        """
+        try:
+            there = sum(self._client.nthreads().values())
+        except Exception as fault:
+            raise EngineError(
+                f"{self._address}: its workers could not be counted ({_first_words(fault)})."
+            ) from fault
         each = threads or 1
         side = there if workers is None else min(there, workers)
         if not there:

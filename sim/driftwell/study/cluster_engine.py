@@ -49,7 +49,7 @@ class ClusterLostError(EngineError):
 class _Given:
     """A task that the cluster has.
 
-    name : of this try; tries : with this one
+    name : of this try; times : it was given; tries : of those, without the ones that found it busy
     busy : when its folder was first found in use; not_before : when it is given again
     """
 
@@ -57,6 +57,7 @@ class _Given:
     content: Mapping[str, Any]
     future: Any = None
     name: str = ""
+    times: int = 0
     tries: int = 0
     busy: float | None = None
     not_before: float | None = None
@@ -195,9 +196,10 @@ class ClusterEngine:
 
     def _give(self, given: _Given) -> None:
         """Let the cluster try it."""
+        given.times += 1
         given.tries += 1
         given.not_before = None
-        given.name = f"run-{given.task.key[:32]}-{self._sweep}-{given.tries}"
+        given.name = f"run-{given.task.key[:32]}-{self._sweep}-{given.times}"
         given.future = self._asked(
             lambda: self._client.submit(
                 computed,
