@@ -86,8 +86,11 @@ def _command(pid: int) -> bytes:
 
 def main(workers: int, security: dict[str, Any]) -> None:
     """Be the cluster."""
+    import dask
     from distributed import LocalCluster, Security
 
+    # at its default a worker that takes seconds to be replaced is never replaced
+    dask.config.set({"distributed.deploy.lost-worker-timeout": "1h"})
     options: dict[str, Any] = {}
     if security:
         options["security"] = Security(require_encryption=True, **security)
