@@ -15,6 +15,7 @@ import pytest
 
 from driftwell.cli.sweep import SOME_FAILED
 from driftwell.run import EXIT_CODES
+from driftwell.study.cluster_engine import ClusterLostError
 
 ROOT = Path(__file__).resolve().parents[2]
 PAGES = sorted(
@@ -127,7 +128,7 @@ def headings(page: Path) -> set[str]:
 def test_the_readme_lists_the_exit_codes_that_runs_end_with() -> None:
     text = (ROOT / "README.md").read_text()
     listed = {int(code) for code in re.findall(r"^\| (\d) \| ", text, re.MULTILINE)}
-    assert {*EXIT_CODES.values(), 2, SOME_FAILED} == listed
+    assert {*EXIT_CODES.values(), 2, SOME_FAILED, ClusterLostError.exit_code} == listed
 
 
 def test_the_readme_shows_keys_as_the_shipped_scenario_has_them() -> None:

@@ -26,7 +26,8 @@ again after a stop, a crash or a change of the study.
 
 exit codes: 0 every run is there (finished, or every charge lost); 2 the study, the folder or
 the command line cannot be used; 4 stopped on request, the same command goes on; 7 some runs
-failed, the summary says which and why; 130 interrupted at once; 1 a defect of driftwell
+failed, the summary says which and why; 8 the cluster's scheduler is gone, the same command
+goes on; 130 interrupted at once; 1 a defect of driftwell
 """
 
 TRACEBACK = "DRIFTWELL_TRACEBACK"
@@ -113,6 +114,7 @@ def _parser() -> argparse.ArgumentParser:
         help="start over the runs whose motion could not be continued",
     )
     sweep.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    _add_cluster(sweep)
     _add_settings(sweep)
 
     check = commands.add_parser(
@@ -144,6 +146,21 @@ def _parser() -> argparse.ArgumentParser:
 
     commands.add_parser("schema", help="print the JSON Schema of scenario files, for editors")
     return parser
+
+
+def _add_cluster(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument(
+        "--on", choices=("dask",), help="compute on a cluster (needs the cluster extra)"
+    )
+    parser.add_argument(
+        "--scheduler", metavar="ADDRESS", help="of the cluster, e.g. tcp://192.0.2.1:8786"
+    )
+    for option, what in (
+        ("--tls-ca", "certificate of the cluster's authority"),
+        ("--tls-cert", "certificate to show to the cluster"),
+        ("--tls-key", "its key"),
+    ):
+        parser.add_argument(option, type=_file, metavar="FILE", help=f"{what} (PEM)")
 
 
 def _add_threads(parser: argparse.ArgumentParser) -> None:
@@ -206,6 +223,12 @@ def _seconds(text: str) -> float:
     return number
 
 
+def _file(text: str) -> str:
+    if not text.strip():
+        raise argparse.ArgumentTypeError("needs the name of a file")
+    return text
+
+
 def _folder(text: str) -> str:
     if not text.strip():
         raise argparse.ArgumentTypeError("needs the name of a folder")
@@ -262,6 +285,7 @@ def _carry_out(asked: argparse.Namespace) -> int:
         return watch(asked.folder, asked.once)
     if asked.command == "sweep":
         from driftwell.cli.sweep import sweep_command
+        from driftwell.cli.sweep_place import Place
 
         return sweep_command(
             asked.study,
@@ -271,6 +295,7 @@ def _carry_out(asked: argparse.Namespace) -> int:
             asked.threads,
             asked.retry_failed,
             not asked.no_pictures,
+            Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key),
         )
     threads = _usable_threads(asked.threads)
     if "numba" not in sys.modules:  # it reads its limit once, and minds another one later

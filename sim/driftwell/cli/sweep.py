@@ -4,22 +4,25 @@ from __future__ import annotations
 
 import logging
 from collections.abc import Sequence
+from contextlib import ExitStack
 from pathlib import Path
 
 from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
 from driftwell.errors import DriftwellError
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.study.catalogue import Catalogue
+from driftwell.study.engine import Engine
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
 from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
@@ -34,13 +37,16 @@ def sweep_command(
     threads: int | None,
     retry_failed: bool,
     pictures: bool,
+    place: Place,
 ) -> int:
     """Compute what is not there yet; returns the exit code."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-sweep")
     try:
         study = read_study(file, settings)
         tell(study.title)
-        result, written = _carried_out(study, folder, workers, threads, retry_failed, pictures)
+        result, written = _carried_out(
+            study, folder, workers, threads, retry_failed, pictures, place
+        )
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
@@ -58,12 +64,16 @@ def _carried_out(
     threads: int | None,
     retry_failed: bool,
     pictures: bool,
+    place: Place,
 ) -> tuple[SweepResult, bool]:
     """What the sweep came to, and whether all that was to be written and drawn could be."""
+    cluster = place.cluster()
     pools: list[Pool] = []
 
-    def pool_of(workers: int, threads: int) -> Pool:
-        pools.append(Pool.of_runs(workers, threads))
+    def engine_of(workers_now: int, threads: int) -> Engine:
+        if cluster is not None:
+            return cluster.engine(workers)
+        pools.append(Pool.of_runs(workers_now, threads))
         return pools[-1]
 
     def kill_workers() -> None:
@@ -72,7 +82,13 @@ def _carried_out(
 
     wish = StopWish(lambda: True, kill_workers)
     display = SweepDisplay(wish)
-    with taken(folder, study.text, study.scenario_text) as changed, wish.listening():
+    with ExitStack() as holding:
+        if cluster is not None:
+            holding.callback(cluster.close)
+        changed = holding.enter_context(taken(folder, study.text, study.scenario_text))
+        holding.enter_context(wish.listening())
+        if cluster is not None:
+            cluster.fits(folder / RUNS)
         if changed:
             tell(
                 f"{folder}: the study or its scenario was changed since the last sweep; runs of "
@@ -88,7 +104,8 @@ def _carried_out(
                     retry_failed=retry_failed,
                     workers=workers,
                     threads=threads,
-                    engine_of=pool_of,
+                    engine_of=engine_of,
+                    sharing_of=None if cluster is None else cluster.sharing,
                 ).result()
             finally:
                 display.ends()

@@ -42,6 +42,7 @@ class Sweep:
     retry_failed : start over the runs whose motion could not be continued in an earlier sweep
     workers, threads : what the user asks for; None where it is to be found out
     engine_of : makes the engine, of so many workers on so many threads each
+    sharing_of : says how many those are; this machine's cores are shared where it is None
     """
 
     def __init__(
@@ -55,6 +56,7 @@ class Sweep:
         workers: int | None = None,
         threads: int | None = None,
         engine_of: Callable[[int, int], Engine] = Pool.of_runs,
+        sharing_of: Callable[[Load, int | None, int | None], Sharing] | None = None,
     ) -> None:
         self._study = study
         self._folder = folder
@@ -62,6 +64,7 @@ class Sweep:
         self._observer = observer
         self._asked = workers, threads
         self._engine_of = engine_of
+        self._sharing_of = sharing_of
         self._tally = Tally(len(study.cases), observer.failed)
         self._retry_failed = retry_failed
         self._waiting: deque[Needed] = deque()
@@ -111,6 +114,8 @@ class Sweep:
             memory=max(each.memory for each in self._waiting),
             free=free_memory(),
         )
+        if self._sharing_of is not None:
+            return self._sharing_of(load, *self._asked)
         return shared(load, _cores(), *self._asked)
 
     def _work(self, engine: Engine, threads: int) -> None:

@@ -94,7 +94,7 @@ def main(arguments: list[str]) -> int:
         except _Asked:
             if task is None:
                 break
-            reply = _ended(STOPPED, "Asked to stop before the first step.", EXIT_CODES[STOPPED])
+            reply = ended_so(STOPPED, "Asked to stop before the first step.", EXIT_CODES[STOPPED])
         _say(sink, {"key": task["key"], **reply})
     return 0
 
@@ -122,33 +122,36 @@ def _reply(task: Mapping[str, Any], wish: _Wish) -> dict[str, Any]:
     try:
         result = _executed(task, wish)
         outcome = result.outcome
-        reply = _ended(outcome.word, outcome.sentence, outcome.exit_code)
+        reply = ended_so(outcome.word, outcome.sentence, outcome.exit_code)
         reply["wall_time"] = outcome.wall_time
         reply["answers"] = [asdict(answer) for answer in result.answers]
     except DriftwellError as fault:
-        reply = _ended(BROKEN, str(fault), fault.exit_code)
+        reply = ended_so(BROKEN, str(fault), fault.exit_code)
+        reply["busy"] = isinstance(fault, BusyError)
     except MemoryError as fault:
         why = f" ({fault})" if str(fault) else ""
         sentence = f"This machine has too little memory for the run{why}."
-        reply = _ended(BROKEN, sentence, DriftwellError.exit_code)
+        reply = ended_so(BROKEN, sentence, DriftwellError.exit_code)
     except Exception as defect:
         sentence = (
             f"This is a defect of driftwell {__version__}, please report it with the scenario and "
             f"the settings: {type(defect).__name__}: {defect}"
         )
-        reply = _ended(BROKEN, sentence, 1)
+        reply = ended_so(BROKEN, sentence, 1)
     reply["seconds"] = time.perf_counter() - began
     reply["processor_seconds"] = time.process_time() - worked
     return reply
 
 
-def _ended(word: str, sentence: str, exit_code: int | None) -> dict[str, Any]:
+def ended_so(word: str, sentence: str, exit_code: int | None) -> dict[str, Any]:
+    """A reply without answers; `busy` where another process holds the run's folder."""
     return {
         "word": word,
         "sentence": sentence,
         "exit_code": exit_code,
         "wall_time": None,
         "answers": [],
+        "busy": False,
         "seconds": 0.0,
         "processor_seconds": 0.0,
     }
