@@ -44,7 +44,7 @@ writer and the reader follow (`record/layout.py`); change the table, not the pag
 | `{LOCK}` | which process works in the folder; there meanwhile, or after a kill |
 
 A file ending in `.part` was being written when the run was cut off; it is not part of the record.
-When the run goes on, `{ANSWERS_FILE}`, `{LAST_FILE}` and such files are removed.
+When the run goes on, `{ANSWERS_FILE}` and such files are removed; `{LAST_FILE}` at its next record.
 All paths inside the files are relative, so a folder can be moved or copied as a whole.
 
 From Python, `driftwell.open_run(folder)` reads the folder and says what is damaged. Any HDF5 reader

@@ -225,6 +225,7 @@ class _Execution:
         self._heartbeat = Heartbeat(folder)
         self._row: LedgerRow | None = None
         self._state: dict[str, Any] = {}
+        self._state_at = 0.0
         self._flags = 0
         self._seconds = 0.0
         self._began = self._started = clocks.monotonic()
@@ -257,7 +258,7 @@ class _Execution:
         self._ledger = Ledger.taken_up(entries_below("ledger", state))
         self._row = row_of(earlier.ledger[-1])
         self._flags = int(self._schedule.flags[self._schedule.time == self._row.time][0])
-        self._state = state
+        self._state, self._state_at = state, self._loop.time
         self._seconds = float(state["run/seconds"])
         self._writer = RunWriter.resumed(earlier)
         steps = self._loop.steps_done
@@ -275,7 +276,9 @@ class _Execution:
         word, sentence = FINISHED, f"The motion was followed to t = {whole}."
         try:
             word, sentence = self._moved(word, sentence)
-            if word in {STOPPED, FAILED} and not self._flags & SNAPSHOT:
+            if word not in {STOPPED, FAILED}:
+                self._writer.forget_last()
+            elif self._state_at == self._reached and not self._flags & SNAPSHOT:
                 # questions about the end are answered for the last record
                 self._writer.last(self._reached, particles_of(self._state))
             return self._finished(word, sentence)
@@ -361,6 +364,7 @@ class _Execution:
             writer.moments(time, moment_rows(loop.particles, self._clouds))
         if flags & SNAPSHOT or last:
             writer.snapshot(time, loop.particles)
+        writer.forget_last()
         self._keep_state()
         if writer.due(self._state_bytes):
             self._seal(self._state)
@@ -410,7 +414,7 @@ class _Execution:
                 state[name] = old
             else:
                 state[name] = state[name].copy()
-        self._state = {**state, **self._other_state()}
+        self._state, self._state_at = {**state, **self._other_state()}, self._reached
 
     def _finished(self, word: str, sentence: str) -> Result:
         answers = answer_all(self._scenario.question, open_run(self._folder))

@@ -15,7 +15,11 @@ from driftwell.record import earlier as earlier_module
 from driftwell.record.index import SEGMENTS
 from driftwell.record.lock import LOCK, held
 from driftwell.record.master import ANSWERS_FILE, LAST_FILE, MASTER
+from driftwell.run import Progress
+from driftwell.run import run as carry_out
+from driftwell.scenario.read import read_scenario
 from tests.cli.small_runs import LONG, SMALL, scenario, settings
+from tests.running import Unwatched
 
 Printed = pytest.CaptureFixture[str]
 SHORT = ("duration=2 us",)
@@ -81,6 +85,39 @@ def test_a_run_stopped_by_the_clock_goes_on_where_it_stopped(
     told = capsys.readouterr().err
     assert f"Going on with the run begun {stopped.header.created}, from t = " in told
     assert f"after {stopped.outcome.steps} steps" in told
+
+
+class Until(Unwatched):
+    """Stops a run when it has gone beyond a time, s, and its steps beyond a number."""
+
+    def __init__(self, time: float, steps: int = 0) -> None:
+        self._time, self._steps = time, steps
+
+    def goes_on(self, progress: Progress) -> bool:
+        return progress.time <= self._time or progress.steps <= self._steps
+
+
+def test_a_run_stopped_again_before_its_next_record_answers_for_its_last_one(
+    tmp_path: Path,
+) -> None:
+    """From what the first stop kept beside the record."""
+    given = ["duration=1000 s", "record.every=0.2 s", "stepping.step=20 ns"]
+    loaded, folder = read_scenario(scenario(tmp_path), given), tmp_path / "run"
+    assert "stopped" == carry_out(loaded, folder, Until(0.2)).outcome.word
+    first = open_run(folder)
+    assert 0.2 == pytest.approx(first.end_time)
+    assert (folder / LAST_FILE).exists()
+    kept = first.snapshot(first.end_time).position.tobytes()
+    steps = first.outcome.steps or 0
+    assert "stopped" == carry_out(loaded, folder, Until(0.2, steps)).outcome.word
+    again = open_run(folder)
+    assert (again.outcome.steps or 0) > steps
+    assert first.end_time == again.end_time
+    assert kept == again.snapshot(again.end_time).position.tobytes()
+    assert first.answers == again.answers
+    later = carry_out(loaded, folder, Until(0.4))
+    assert "stopped" == later.outcome.word
+    assert 0.4 == pytest.approx(open_run(folder).snapshots[-1])
 
 
 @pytest.mark.parametrize("text", ["7", "h", "-3 s", "0 s", "3 weeks", ""])

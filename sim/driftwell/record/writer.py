@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import time as clocks
 from collections.abc import Callable, Mapping, Sequence
+from contextlib import suppress
 from dataclasses import asdict
 from pathlib import Path
 from typing import Any
@@ -48,6 +49,7 @@ class RunWriter:
         self._segments: list[SegmentFacts] = []
         self._sealed_bytes = 0
         self._snapshots = 0
+        self._has_last = False
         self._pending = Pending(header.sizes)
 
     @classmethod
@@ -71,16 +73,17 @@ class RunWriter:
     def resumed(cls, run: Run, clock: Callable[[], float] = clocks.monotonic) -> RunWriter:
         """Go on with a run that was cut off or stopped, behind its last segment.
 
-        How it ended before is forgotten: files that say so, and any half-written, are removed.
+        How it ended before is forgotten: the file that says so, and any half-written, are removed.
+        The snapshot at the last record stays until there is another record.
         """
         writer = cls(run.folder, run.header, clock)
         writer._segments = list(run.segments)
         writer._sealed_bytes = sum(facts.bytes for facts in run.segments)
         writer._snapshots = max([0, *(k for facts in run.segments for k, _ in facts.snapshots)])
+        writer._has_last = (run.folder / LAST_FILE).exists()
         writer._pending.end = run.segments[-1].end if run.segments else 0.0
         try:
-            for name in (ANSWERS_FILE, LAST_FILE):
-                (run.folder / name).unlink(missing_ok=True)
+            (run.folder / ANSWERS_FILE).unlink(missing_ok=True)
             remove_parts(run.folder)
         except OSError as fault:
             raise unwritable(run.folder, fault) from fault
@@ -115,6 +118,14 @@ class RunWriter:
                 put_dataset(file, entry, columns[entry.path])
             image = image_of(file)
         self._commit(LAST_FILE, image)
+        self._has_last = True
+
+    def forget_last(self) -> None:
+        """Remove what :meth:`last` kept, now or before the run was gone on with."""
+        if self._has_last:
+            self._has_last = False
+            with suppress(OSError):  # it is known by its time, and harms nothing
+                (self.folder / LAST_FILE).unlink(missing_ok=True)
 
     def ledger(self, row: NDArray[Any] | np.void) -> None:
         """Record a row of the ledger (or several), of the layout's type."""
