@@ -39,6 +39,7 @@ def whole(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     """A small run in several segments."""
     monkeypatch.setattr(sealing, "SHORTEST", 0.0)
     monkeypatch.setattr(sealing, "LONGEST", 0.0)
+    monkeypatch.setattr(sealing, "STATE_RATE", 1e12)
     words = ["run", str(scenario(tmp_path)), "-o", str(tmp_path / "run"), "--no-pictures"]
     assert 0 == main([*words, *settings("record.every=4 us")])
     return tmp_path / "run"

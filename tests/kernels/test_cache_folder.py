@@ -207,7 +207,13 @@ def test_an_edited_callee_is_not_overlooked(tmp_path: Path) -> None:
         (here / "callee.py").write_text(CALLEE.format(factor=factor))
         done = subprocess.run(
             [sys.executable, "-c", "from driftwell.caller import outcome; print(outcome(5.0))"],
-            env={**os.environ, "PYTHONPATH": str(tmp_path), "DRIFTWELL_CACHE": str(tmp_path / "c")},
+            env={
+                **os.environ,
+                "PYTHONPATH": str(tmp_path),
+                "DRIFTWELL_CACHE": str(tmp_path / "c"),
+                # Python's own cache of modules misses an edit within the second
+                "PYTHONDONTWRITEBYTECODE": "1",
+            },
             cwd=tmp_path,
             capture_output=True,
             text=True,

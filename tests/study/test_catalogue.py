@@ -250,7 +250,7 @@ def test_what_was_acknowledged_outlives_a_kill(tmp_path: Path) -> None:
         for row in rows.values():
             if row.word == "finished":
                 assert (float(row.number),) == tuple(each.value for each in row.answers)
-    assert acknowledged[digest(0)] == KILLS  # each writer got as far as this run at least
+    assert acknowledged[digest(0)] >= KILLS  # each writer got as far as this run at least
     base = sqlite3.connect(path)
     assert [("ok",)] == base.execute("PRAGMA integrity_check").fetchall()
     base.close()
