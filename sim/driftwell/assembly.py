@@ -146,8 +146,7 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
     scenario = loaded.scenario
     bodies = known_bodies(scenario.species)
     species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
-    amounts = [cloud.amount(bodies, loaded.folder) for cloud in scenario.cloud]
-    charges = sum(amount.count for amount in amounts)
+    charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
     _check_births(scenario, particles)

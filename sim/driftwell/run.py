@@ -6,8 +6,7 @@ The run itself prints nothing: an :class:`Observer` is told how far it is and ma
 from __future__ import annotations
 
 import time as clocks
-from collections.abc import Iterator
-from contextlib import ExitStack, contextmanager, suppress
+from contextlib import ExitStack
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -24,10 +23,10 @@ from driftwell.forms import spelled
 from driftwell.kernels.threads import on_threads
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
-from driftwell.record.claim import holds_run, refuse_taken, unwritable
+from driftwell.record.claim import holds_run, refuse_taken
 from driftwell.record.earlier import clear_unsealed, differences, earlier_run, put_aside
 from driftwell.record.heartbeat import Heartbeat
-from driftwell.record.lock import held
+from driftwell.record.lock import held, made_and_held
 from driftwell.record.outcome import Outcome
 from driftwell.record.reader import Run, open_run
 from driftwell.record.resume_state import particles_of, particles_state
@@ -135,59 +134,28 @@ def run(
     text = loaded.text.encode()
     with on_threads(threads) as given, ExitStack() as holding:
         earlier, holds = None, holds_run(folder)
+        if holds and fresh:
+            observer.told(f"The run that was there is kept as {put_aside(folder)}.")
+            holds = False
         if holds:
-            if fresh:
-                with _hold(folder):
-                    pass
-                observer.told(f"The run that was there is kept as {put_aside(folder)}.")
-            else:
-                holding.enter_context(_hold(folder))
-                earlier = earlier_run(folder, text, loaded.digest)
-                if earlier is None:
-                    clear_unsealed(folder)
-                elif earlier.outcome.word in _ENDED:
-                    observer.told("Not computed again: the record is whole; --fresh does.")
-                    return _told_again(earlier)
-        if earlier is None:
-            refuse_taken(folder, text)
+            holding.enter_context(held(folder))
+            earlier = earlier_run(folder, text, loaded.digest)
+            if earlier is None:
+                clear_unsealed(folder)
+            elif earlier.outcome.word in _ENDED:
+                observer.told("Not computed again: the record is whole; --fresh does.")
+                return _told_again(earlier)
         warn = observer.told if force else None
-        parts = assembled(loaded, warn)
-        if earlier is None:
-            refuse_beyond_disk(parts.extent, folder, warn)
-        execution = _Execution(parts, folder, observer, stop_after)
-        if earlier is None:
-            execution.begin(loaded, given, holding, held_already=holds and not fresh)
-        else:
+        if earlier is not None:
+            execution = _Execution(assembled(loaded, warn), folder, observer, stop_after)
             execution.go_on(earlier, given)
+            return execution.result()
+        refuse_taken(folder, text)
+        parts = assembled(loaded, warn)
+        refuse_beyond_disk(parts.extent, folder, warn)
+        execution = _Execution(parts, folder, observer, stop_after)
+        execution.begin(loaded, given, holding, held_already=holds)
         return execution.result()
-
-
-@contextmanager
-def _hold(folder: Path) -> Iterator[None]:
-    """Keep other processes out of a folder; what refuses is told."""
-    with ExitStack() as stack:
-        try:
-            stack.enter_context(held(folder))
-        except OSError as fault:
-            raise unwritable(folder, fault) from fault
-        yield
-
-
-@contextmanager
-def _made(folder: Path) -> Iterator[None]:
-    """A folder, made where it is missing and held; without a run in it it goes again."""
-    missing = not folder.exists()
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-    except OSError as fault:
-        raise unwritable(folder, fault) from fault
-    try:
-        with _hold(folder):
-            yield
-    finally:
-        if missing and not holds_run(folder):
-            with suppress(OSError):
-                folder.rmdir()
 
 
 def _told_again(earlier: Run) -> Result:
@@ -243,7 +211,7 @@ class _Execution:
         summation = self._loop.summation
         self._observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
         if not held_already:
-            holding.enter_context(_made(self._folder))
+            holding.enter_context(made_and_held(self._folder))
         self._writer = RunWriter.create(
             self._folder, parts.header(loaded, summation, threads, created)
         )

@@ -144,6 +144,7 @@ def test_a_run_killed_again_and_again_ends_where_the_unbroken_one_does(
         reached = len(found.segments)
         if process.exitcode == 0:
             break
+    print(f"{kills} kills, {warned} of them after SIGTERM, {reached} segments")
     assert kills >= min(KILLS // 2, 4), "the run is too short to be killed"
     last = begun([*words, str(folder)])
     last.join(300)

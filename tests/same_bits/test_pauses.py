@@ -7,24 +7,12 @@ from typing import Any
 import numpy as np
 import pytest
 
-from driftwell.stepping.loop import TimeLoop, Traced
+from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.schedule import RECORD
-from tests.cases import detector, field, wall
-from tests.moving import DIRECT, events, ions, loop
+from tests.moving import DIRECT, events
+from tests.same_bits.busy_trap import busy_trap, load
 
 NEVER = 1 << 40
-RODS = field("rf-quadrupole", radius="2 mm", voltage={"amplitude": "60 V", "frequency": "1 MHz"})
-PULSED = field(
-    "uniform-electric",
-    strength={
-        "kind": "pulses",
-        "low": "0 V/m",
-        "high": "400 V/m",
-        "start": "2.3 us",
-        "width": "1 us",
-    },
-)
-COIL = field("uniform-magnetic", strength={"amplitude": "20 mT", "frequency": "300 kHz"})
 
 
 def moved(budget: int, **stepping: Any) -> tuple[TimeLoop, int, dict[str, bytes]]:
@@ -32,23 +20,7 @@ def moved(budget: int, **stepping: Any) -> tuple[TimeLoop, int, dict[str, bytes]
 
     Returns the loop at its end, the number of calls, and the bytes of all that came of it.
     """
-    random = np.random.default_rng(2)
-    moving = loop(
-        ions(random.normal(scale=2e-4, size=(70, 3)), random.normal(scale=100.0, size=(70, 3))),
-        8e-6,
-        20e-9,
-        fields=[RODS, PULSED, COIL],
-        walls=[
-            wall("cylinder", radius="0.9 mm"),
-            wall("plane", at=["0", "0", "-1 mm"], effect="reflect"),
-        ],
-        detectors=[detector("plane", at=["0", "0", "0.4 mm"])],
-        coulomb=DIRECT,
-        records=[2e-6, 4e-6, 6e-6],
-        samples=np.arange(0.0, 8e-6, 0.1e-6),
-        traced=[Traced(0, None, 0), Traced(0, 3, 2)],
-        **stepping,
-    )
+    moving = busy_trap(load(), coulomb=DIRECT, **stepping)
     calls = 0
 
     def keep_going() -> bool:

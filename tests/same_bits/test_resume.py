@@ -7,45 +7,10 @@ from typing import Any
 import numpy as np
 import pytest
 
-from driftwell.particles.state import Particles
 from driftwell.record.resume_state import particles_of, particles_state
-from driftwell.stepping.loop import TimeLoop, Traced
 from driftwell.stepping.schedule import RECORD
-from tests.cases import detector, field, wall
-from tests.moving import DIRECT, TREE, ions, loop
-
-RODS = field("rf-quadrupole", radius="2 mm", voltage={"amplitude": "60 V", "frequency": "1 MHz"})
-PULSED = field(
-    "uniform-electric",
-    strength={
-        "kind": "pulses",
-        "low": "0 V/m",
-        "high": "400 V/m",
-        "start": "2.3 us",
-        "width": "1 us",
-    },
-)
-COIL = field("uniform-magnetic", strength={"amplitude": "20 mT", "frequency": "300 kHz"})
-
-
-def trap(particles: Particles, state: Any = None, **options: Any) -> TimeLoop:
-    """Ions in rods, a pulse and a coil, within walls that take and walls that turn back."""
-    return loop(
-        particles,
-        8e-6,
-        20e-9,
-        fields=[RODS, PULSED, COIL],
-        walls=[
-            wall("cylinder", radius="0.9 mm"),
-            wall("plane", at=["0", "0", "-1 mm"], effect="reflect"),
-        ],
-        detectors=[detector("plane", at=["0", "0", "0.4 mm"])],
-        records=[2e-6, 4e-6, 6e-6],
-        samples=np.arange(0.0, 8e-6, 0.1e-6),
-        traced=[Traced(0, None, 0), Traced(0, 3, 2)],
-        state=state,
-        **options,
-    )
+from tests.moving import DIRECT, TREE
+from tests.same_bits.busy_trap import busy_trap, load
 
 
 def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes]]:
@@ -54,9 +19,7 @@ def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes
     After `every` such calls the loop is thrown away, and another one made from its state. Returns
     how often that was.
     """
-    random = np.random.default_rng(2)
-    start = ions(random.normal(scale=2e-4, size=(70, 3)), random.normal(scale=100.0, size=(70, 3)))
-    moving = trap(start, **options)
+    moving = busy_trap(load(), **options)
     calls = taken_up = 0
     events, samples = [], []
 
@@ -74,7 +37,7 @@ def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes
             samples += moving.take_samples()
             kept = {**particles_state(moving.particles), **moving.state()}
             kept = {name: np.array(each) for name, each in kept.items()}
-            moving = trap(particles_of(kept), kept, **options)
+            moving = busy_trap(particles_of(kept), state=kept, **options)
         events += moving.take_events()
         samples += moving.take_samples()
         moving.keep_accuracy()

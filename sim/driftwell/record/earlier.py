@@ -14,6 +14,7 @@ from driftwell.kernels.processor import processor
 from driftwell.record.claim import SCENARIO_FILE
 from driftwell.record.commit import remove_parts
 from driftwell.record.index import SEGMENTS, sealed_numbers
+from driftwell.record.lock import held
 from driftwell.record.master import MASTER
 from driftwell.record.reader import Run, open_run
 
@@ -79,7 +80,12 @@ def clear_unsealed(folder: Path) -> None:
 
 
 def put_aside(folder: Path) -> Path:
-    """Give the folder of an old run another name, and return that."""
+    """Give the folder of an old run another name, and return that.
+
+    Raises BusyError where another process works in it.
+    """
+    with held(folder):
+        pass
     number = 1
     while (aside := folder.with_name(f"{folder.name}-before-{number}")).exists():
         number += 1

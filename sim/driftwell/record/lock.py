@@ -16,6 +16,7 @@ from datetime import datetime
 from pathlib import Path
 
 from driftwell.errors import BusyError
+from driftwell.record.claim import holds_run, unwritable
 
 LOCK = "in-use"
 """Name of the file in the folder, there while a process works in it or after one was killed."""
@@ -25,9 +26,12 @@ LOCK = "in-use"
 def held(folder: Path) -> Iterator[None]:
     """While inside, no other process (and nobody else in this one) can hold the folder.
 
-    Raises BusyError where somebody does, OSError where the folder cannot be written.
+    Raises BusyError where somebody does, RecordError where the folder cannot be written.
     """
-    handle = _locked(folder / LOCK, folder)
+    try:
+        handle = _locked(folder / LOCK, folder)
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
     try:
         _introduce(handle)
         yield
@@ -37,19 +41,21 @@ def held(folder: Path) -> Iterator[None]:
         os.close(handle)
 
 
-def in_use(folder: Path) -> bool:
-    """Whether a process of this machine, or of one that shares its locks, holds the folder."""
+@contextmanager
+def made_and_held(folder: Path) -> Iterator[None]:
+    """A folder, made where it is missing and held; without a run in it it goes again."""
+    missing = not folder.exists()
     try:
-        handle = os.open(folder / LOCK, os.O_RDONLY)
-    except OSError:
-        return False
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
     try:
-        fcntl.flock(handle, fcntl.LOCK_SH | fcntl.LOCK_NB)
-    except OSError:
-        return True
+        with held(folder):
+            yield
     finally:
-        os.close(handle)
-    return False
+        if missing and not holds_run(folder):
+            with suppress(OSError):
+                folder.rmdir()
 
 
 def _locked(path: Path, folder: Path) -> int:

@@ -7,11 +7,10 @@ from pathlib import Path
 
 from matplotlib.figure import Figure
 
-from driftwell.errors import RecordError
-from driftwell.record.commit import commit
 from driftwell.record.reader import Run
 from driftwell.report.arrivals import arrivals_picture
 from driftwell.report.cloud import cloud_picture
+from driftwell.report.gallery import hang
 from driftwell.report.ledger import ledger_picture
 from driftwell.report.losses import losses_picture
 from driftwell.report.phase_space import phase_space_picture
@@ -20,7 +19,6 @@ from driftwell.report.sheet import png, style
 from driftwell.report.sizes import sizes_picture
 from driftwell.report.trajectories import trajectories_picture
 
-FOLDER = "pictures"
 PICTURES: dict[str, Callable[[Scene], Figure | None]] = {
     "cloud": cloud_picture,
     "sizes": sizes_picture,
@@ -41,24 +39,12 @@ def draw(run: Run) -> list[Path]:
 
     Raises RecordError where the record cannot be read or the folder cannot be written.
     """
-    folder = run.folder / FOLDER
     with style():
         images = {
             f"{name}.png": png(figure, run.header.title) for name, figure in figures(run).items()
         }
-    try:
-        folder.mkdir(exist_ok=True)
-        for name in PICTURES:
-            if f"{name}.png" not in images:
-                (folder / f"{name}.png").unlink(missing_ok=True)
-        for name, image in images.items():
-            commit(folder / name, image)
-    except OSError as fault:
-        raise RecordError(
-            f"{folder}: the pictures cannot be written ({fault.strerror or fault}); the record "
-            "itself is whole. Make space or give access."
-        ) from fault
-    return [folder / name for name in images]
+    old = [f"{name}.png" for name in PICTURES]
+    return hang(run.folder, images, old, "the record itself is whole")
 
 
 def figures(run: Run) -> dict[str, Figure]:

@@ -21,8 +21,7 @@ from numpy.typing import NDArray
 
 from driftwell._version import __version__
 from driftwell.answers.answer_lines import PLAIN_UNITS
-from driftwell.errors import RecordError
-from driftwell.record.commit import commit
+from driftwell.report.gallery import FOLDER, hang
 from driftwell.report.palette import colour, line_style, marker
 from driftwell.report.panel import put_across, put_up
 from driftwell.report.ruler import Ruler, in_words, interval, ruler
@@ -32,7 +31,6 @@ from driftwell.study.table import Asked, Table
 
 Floats = NDArray[np.float64]
 
-FOLDER = "pictures"
 MOST_LINES = 7
 """Lines in one panel; more values of the second key are a map."""
 MOST_PANELS = 6
@@ -117,25 +115,13 @@ def draw_sweep(folder: Path, table: Table) -> list[Path]:
 
     Raises RecordError where the folder cannot be written.
     """
-    place = folder / FOLDER
     with style():
         images = {
             f"{name}.png": png(figure, table.study.title)
             for name, figure in sweep_figures(table).items()
         }
-    try:
-        place.mkdir(exist_ok=True)
-        for old in place.glob("*.png"):
-            if old.name not in images:
-                old.unlink()
-        for name, image in images.items():
-            commit(place / name, image)
-    except OSError as fault:
-        raise RecordError(
-            f"{place}: the pictures cannot be written ({fault.strerror or fault}); the tables are "
-            "whole. Make space or give access."
-        ) from fault
-    return [place / name for name in images]
+    old = [path.name for path in (folder / FOLDER).glob("*.png")]
+    return hang(folder, images, old, "the tables are whole")
 
 
 def sweep_figures(table: Table) -> dict[str, Figure]:

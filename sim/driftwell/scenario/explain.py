@@ -67,8 +67,7 @@ def _coulomb_words(loaded: LoadedScenario) -> str:
     coulomb = loaded.scenario.coulomb
     if coulomb.method == "off":
         return "off: the charges do not feel each other"
-    known = bodies(loaded.scenario.species)
-    charges = sum(cloud.amount(known, loaded.folder).count for cloud in loaded.scenario.cloud)
+    charges = loaded.scenario.charges(loaded.folder)
     soft = f"softened within {spelled(coulomb.softening, 'm')}"
     if not coulomb.softening:
         soft = "without softening"

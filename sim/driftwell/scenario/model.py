@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 from driftwell.answers.form import QuestionForm
@@ -11,7 +12,7 @@ from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Title, key, one_of
 from driftwell.particles.cloud import Cloud
-from driftwell.particles.species import SpeciesForm
+from driftwell.particles.species import SpeciesForm, bodies
 from driftwell.record.form import Record
 from driftwell.stepping.form import Stepping
 from driftwell.walls.form import DetectorForm, WallForm
@@ -48,3 +49,8 @@ class Scenario(Form):
     stepping: Stepping = key("how time is cut into steps", default=Stepping())
     record: Record = key("what is kept, and how often", default=Record())
     question: tuple[AnyQuestion, ...] = key("what the run is asked", default=())
+
+    def charges(self, folder: Path) -> int:
+        """Number of simulated charges at the start; files that are named count from `folder`."""
+        known = bodies(self.species)
+        return sum(cloud.amount(known, folder).count for cloud in self.cloud)

@@ -99,8 +99,6 @@ class TimeLoop:
         The pair sum as it is now.
     promise : Promise
         Whether that sum is as accurate as asked.
-    sums_per_step : float
-        Pair sums that one step takes.
     """
 
     def __init__(
@@ -137,7 +135,7 @@ class TimeLoop:
         self.summation = Summation(coulomb, len(particles), threads, manner=manner)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
-        self.sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
+        self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
         self.work = work_space(0, 0, room((1, 1)), False, False)
         self._events: list[Events] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
@@ -200,7 +198,7 @@ class TimeLoop:
             Scene(
                 self.time,
                 self.steps_done,
-                self.steps_done * self.sums_per_step,
+                self.steps_done * self._sums_per_step,
                 self.charges.position,
                 self.charges.charge,
                 self.particles.id,

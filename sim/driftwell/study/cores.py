@@ -8,6 +8,7 @@ charges never gain by threads.
 from __future__ import annotations
 
 import math
+import os
 from dataclasses import dataclass
 
 from driftwell.coulomb.direct import THREADED
@@ -44,6 +45,11 @@ class Load:
     pays: int
     memory: int
     free: int | None
+
+
+def usable_cores() -> int:
+    """Processors this process may use."""
+    return len(os.sched_getaffinity(0))
 
 
 def threads_pay_from(coulomb: Coulomb) -> int:

@@ -8,7 +8,6 @@ these follow from its place between them, on logarithmic scales.
 from __future__ import annotations
 
 import math
-import os
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -17,10 +16,9 @@ from numpy.typing import NDArray
 
 from driftwell.errors import DriftwellError
 from driftwell.estimate import Estimate, estimate
-from driftwell.particles.species import bodies
 from driftwell.scenario.read import LoadedScenario, read_scenario
-from driftwell.scenario.room import extent_of, free_memory
-from driftwell.study.cores import Load, Sharing, shared, threads_pay_from
+from driftwell.study.cores import Sharing, shared, usable_cores
+from driftwell.study.missing import Needed, load_of, needed_by
 from driftwell.study.read import Study
 
 TIMED = 5
@@ -58,10 +56,10 @@ class Forecast:
 
 @dataclass(frozen=True, slots=True)
 class _Sized:
-    """A run's scenario and how large it is: charges, and charges times seconds of motion."""
+    """A run's scenario, what it needs, and how large it is: charges times seconds of motion."""
 
     loaded: LoadedScenario
-    charges: int
+    needed: Needed
     size: float
 
 
@@ -76,11 +74,8 @@ def forecast(
     """
     runs, refused = _runs(study)
     runs.sort(key=lambda run: run.size)
-    largest = max(runs, key=lambda run: run.charges)
-    memory = extent_of(largest.loaded.scenario, largest.charges).memory()
-    pays = min(threads_pay_from(run.loaded.scenario.coulomb) for run in runs)
-    load = Load(len(runs), largest.charges, pays, memory, free_memory())
-    sharing = shared(load, len(os.sched_getaffinity(0)), workers, threads)
+    load = load_of([run.needed for run in runs])
+    sharing = shared(load, usable_cores(), workers, threads)
     chosen = np.unique(np.linspace(0, len(runs) - 1, TIMED).round().astype(int))
     timed = tuple(estimate(runs[k].loaded, sharing.threads, seconds / len(chosen)) for k in chosen)
     sizes = np.array([run.size for run in runs])
@@ -99,7 +94,7 @@ def forecast(
         most=_by_the_clock(high, sharing.workers),
         work=float(each.sum()),
         longest=float(each.max()),
-        memory=sharing.workers * max([memory, *(found.memory for found in timed)]),
+        memory=sharing.workers * max([load.memory, *(found.memory for found in timed)]),
         disk=math.ceil(disk.sum()),
         timed=timed,
     )
@@ -117,10 +112,9 @@ def _runs(study: Study) -> tuple[list[_Sized], tuple[int, str]]:
             refused, first = refused + 1, first or str(fault)
             continue
         if loaded.digest not in found:
-            scenario = loaded.scenario
-            known = bodies(scenario.species)
-            charges = sum(cloud.amount(known, loaded.folder).count for cloud in scenario.cloud)
-            found[loaded.digest] = _Sized(loaded, charges, charges * scenario.duration)
+            needed = needed_by(loaded)
+            size = needed.charges * loaded.scenario.duration
+            found[loaded.digest] = _Sized(loaded, needed, size)
     if not found:
         raise DriftwellError(f"No case of the study is a scenario that can be run: {first}")
     return list(found.values()), (refused, first)

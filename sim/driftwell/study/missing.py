@@ -2,19 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from dataclasses import dataclass, replace
 from pathlib import Path
 
 from driftwell.answers.answer import Answer
 from driftwell.errors import DriftwellError, RecordError
-from driftwell.particles.species import bodies
 from driftwell.record.reader import open_run
 from driftwell.run import ALL_LOST, FAILED, FINISHED
 from driftwell.scenario.read import LoadedScenario, read_scenario
-from driftwell.scenario.room import extent_of
+from driftwell.scenario.room import extent_of, free_memory
 from driftwell.study.catalogue import Catalogue
-from driftwell.study.cores import threads_pay_from
+from driftwell.study.cores import Load, threads_pay_from
 from driftwell.study.points import Case
 from driftwell.study.read import Study
 from driftwell.study.sweep_folder import run_folder
@@ -72,7 +71,7 @@ def missing_runs(
         if not goes_on():
             return []
         try:
-            needed = _needed(read_scenario(study.scenario_path, case.settings))
+            needed = needed_by(read_scenario(study.scenario_path, case.settings))
         except DriftwellError as fault:
             tally.refused(case, str(fault))
             continue
@@ -99,17 +98,27 @@ def missing_runs(
     return missing
 
 
-def _needed(loaded: LoadedScenario) -> Needed:
+def needed_by(loaded: LoadedScenario) -> Needed:
     """What is to be known of a run before it is begun."""
     scenario = loaded.scenario
-    known = bodies(scenario.species)
-    charges = sum(cloud.amount(known, loaded.folder).count for cloud in scenario.cloud)
+    charges = scenario.charges(loaded.folder)
     return Needed(
         loaded.digest,
         loaded.settings,
         charges,
         extent_of(scenario, charges).memory(),
         threads_pay_from(scenario.coulomb),
+    )
+
+
+def load_of(runs: Collection[Needed]) -> Load:
+    """What is to be shared among the cores; at least one run."""
+    return Load(
+        left=len(runs),
+        charges=max(each.charges for each in runs),
+        pays=min(each.pays for each in runs),
+        memory=max(each.memory for each in runs),
+        free=free_memory(),
     )
 
 

@@ -8,7 +8,6 @@ ended at any instant, and the next one goes on.
 
 from __future__ import annotations
 
-import os
 import time
 from collections import Counter, deque
 from collections.abc import Callable
@@ -18,11 +17,10 @@ from typing import Any
 
 from driftwell.answers.answer import Answer
 from driftwell.run import STOPPED
-from driftwell.scenario.room import free_memory
 from driftwell.study.catalogue import Catalogue
-from driftwell.study.cores import Load, Sharing, shared
+from driftwell.study.cores import Load, Sharing, shared, usable_cores
 from driftwell.study.engine import Done, Engine, Task
-from driftwell.study.missing import ANSWERED, Needed, missing_runs
+from driftwell.study.missing import ANSWERED, Needed, load_of, missing_runs
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepObserver, SweepProgress, SweepResult
 from driftwell.study.read import Study
@@ -107,16 +105,10 @@ class Sweep:
 
     def _sharing(self) -> Sharing:
         """How to share the cores among the runs that are missing."""
-        load = Load(
-            left=len(self._waiting),
-            charges=max(each.charges for each in self._waiting),
-            pays=min(each.pays for each in self._waiting),
-            memory=max(each.memory for each in self._waiting),
-            free=free_memory(),
-        )
+        load = load_of(self._waiting)
         if self._sharing_of is not None:
             return self._sharing_of(load, *self._asked)
-        return shared(load, _cores(), *self._asked)
+        return shared(load, usable_cores(), *self._asked)
 
     def _work(self, engine: Engine, threads: int) -> None:
         """Keep the engine supplied, and take what it gives, until there is nothing more."""
@@ -184,8 +176,3 @@ class Sweep:
             self._looked = now
             self._stopped = self._stopped or not self._observer.goes_on(self._progress(under_way))
         return self._stopped
-
-
-def _cores() -> int:
-    """Processors this process may use."""
-    return len(os.sched_getaffinity(0))
