@@ -108,7 +108,7 @@ def test_of_two_runs_started_at_once_into_one_folder_one_is_refused(tmp_path: Pa
         "-o",
         tmp_path / "run",
         "--no-pictures",
-        *settings("record.every=2 us"),
+        *settings("duration=400 ms", "record.every=40 ms"),  # some seconds: the two meet
     )
     both = [started(*arguments), started(*arguments)]
     talk = [process.communicate(timeout=300) for process in both]
