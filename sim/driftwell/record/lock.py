@@ -10,6 +10,7 @@ import fcntl
 import json
 import os
 import platform
+import time
 from collections.abc import Iterator
 from contextlib import contextmanager, suppress
 from datetime import datetime
@@ -20,6 +21,9 @@ from driftwell.record.claim import holds_run, unwritable
 
 LOCK = "in-use"
 """Name of the file in the folder, there while a process works in it or after one was killed."""
+
+_LOOKS, _MOMENT = 10, 0.02
+"""Looks at the words of a lock that was taken just now, and s between two."""
 
 
 @contextmanager
@@ -89,8 +93,10 @@ def _introduce(handle: int) -> None:
 
 
 def _holder(handle: int) -> str:
-    try:
-        about = json.loads(os.pread(handle, 4096, 0))
-        return f"process {about['process']} on {about['machine']} since {about['since']}"
-    except (OSError, ValueError, KeyError, TypeError):
-        return "another process"
+    """Who holds the lock, given a moment to have introduced itself."""
+    for _ in range(_LOOKS):
+        with suppress(OSError, ValueError, KeyError, TypeError):
+            about = json.loads(os.pread(handle, 4096, 0))
+            return f"process {about['process']} on {about['machine']} since {about['since']}"
+        time.sleep(_MOMENT)
+    return "another process"
