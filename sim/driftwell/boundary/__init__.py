@@ -1,0 +1,1 @@
+"""Laplace's equation around conductors, by charges on their surfaces (boundary elements)."""

@@ -1,0 +1,1 @@
+"""Electrodes as a scenario declares them, and the shapes they may have."""

@@ -1,0 +1,1 @@
+"""All kinds of shapes an electrode may have."""

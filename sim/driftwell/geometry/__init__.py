@@ -1,0 +1,1 @@
+"""Shapes of bodies: outlines in a plane, outlines revolved or extruded, triangle meshes."""

@@ -1,0 +1,1 @@
+"""The charges that electrodes answer to the charges between them: images."""
