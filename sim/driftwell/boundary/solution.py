@@ -34,11 +34,13 @@ class Solution(Protocol):
         symmetric to the solution's own error
     error : estimated relative error of potentials, by comparison with a coarser solution
     panels : where the charge sits
+    mirrors : for each coordinate, whether every unit solution is even in it
     """
 
     capacitance: Floats
     error: float
     panels: Panels
+    mirrors: tuple[bool, ...]
 
     def potential(self, points: Floats) -> Floats:
         """Potentials (e, n), V per V, at points (n, d), m; d = 2 for (r, z) and (x, y), else 3."""
