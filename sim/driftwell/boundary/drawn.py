@@ -1,12 +1,13 @@
 """Electrodes drawn in a plane: their unit solutions, by charge on their outlines.
 
 The potential of a surface charge on all electrodes is prescribed at the Gauss-Legendre nodes of
-every element (collocation). Between the nodes and at the ends of elements it is then compared with
-the voltage; by the maximum principle the potential is nowhere more wrong than on the surface. Elements
-where it is are halved, until it is nowhere wrong by more than asked.
+every element (collocation). Between the nodes and towards the ends of elements it is then compared
+with the voltage; by the maximum principle the potential is nowhere more wrong than on the surface.
+Elements are halved until it is nowhere wrong by more than asked. Only within 2e-8 of the size from
+a tip or an edge is it let be: an error there fades at least like the root of the distance.
 
-About z there is no charge at infinity and the potential vanishes there. In a plane the potential of a
-charge grows like the logarithm of the distance, so that all charges together vanish,
+About z the potential vanishes far away. In a plane the potential of a charge grows like the
+logarithm of the distance, so that all charges together vanish,
 
     phi(x) = sum over lines of -tau ln|x - x'| / (2 pi) + c,    sum of tau = 0              (1)
 
@@ -43,6 +44,10 @@ MOST_NODES = 8000
 BEST_ACCURACY = 1e-10
 _ROUNDS = 40
 _BLOCKS = 128
+_SMALLEST = 2e-8
+"""Length, in the electrodes' size, below which an element is not halved."""
+_FADED = 1e-3
+"""What is left of an error on such an element at a hundredth of the size from it, at most."""
 _REACH = 2.5
 """Longest element, in distances from the nearest other electrode."""
 _T, _W = np.polynomial.legendre.leggauss(ORDER)
@@ -115,7 +120,10 @@ class DrawnSolution:
         return np.asarray(self._sums(points, False)[:, :, 0] + self.constants[:, None])
 
     def field(self, points: Floats) -> Floats:
-        """Fields -grad phi (e, n, 2), 1/m, at points (n, 2), m; on a surface the mean of both sides."""
+        """Fields -grad phi (e, n, 2), 1/m, at points (n, 2), m.
+
+        On a surface: the mean of both sides.
+        """
         return self._sums(points, True) / self.size
 
     def _sums(self, points: Floats, with_field: bool) -> Floats:
@@ -250,8 +258,7 @@ def _solved(elements: Elements, rings: bool, count: int, rules: Quadrature) -> _
 def _fit_to_gaps(elements: Elements, surface: Surface) -> Elements:
     """Elements none of which is long against its distance from other electrodes."""
     while len(elements) * ORDER < MOST_NODES:
-        points, rate = elements.places(np.linspace(-1.0, 1.0, 9))
-        length = 2.0 * rate.mean(axis=1)
+        points, _ = elements.places(np.linspace(-1.0, 1.0, 9))
         nearest = np.full(len(elements), np.inf)
         for number in np.unique(elements.electrode):
             own = np.flatnonzero(elements.electrode == number)
@@ -262,7 +269,7 @@ def _fit_to_gaps(elements: Elements, surface: Surface) -> Elements:
                 places = points[part].reshape(-1, 2)
                 distance = others.nearest(places[:, 0] + 1j * places[:, 1])[0].min(axis=1)
                 nearest[part] = distance.reshape(len(part), -1).min(axis=1)
-        long = length > _REACH * nearest
+        long = elements.lengths() > _REACH * nearest
         if not long.any():
             break
         elements = elements.halved(long)
@@ -288,15 +295,15 @@ def solve_drawn(
     surface = charged_surface(outlines, axisymmetric, size)
     rules = quadrature(accuracy)
     elements = _fit_to_gaps(elements_on(surface, axisymmetric), surface)
-    best = math.inf
     for _ in range(_ROUNDS):
         found = _solved(elements, axisymmetric, len(outlines), rules)
-        worst = float(found.wrong.max())
-        best = min(best, worst)
+        small = elements.lengths() < _SMALLEST
+        wrong = np.where(small, _FADED, 1.0) * found.wrong
+        worst = float(wrong.max())
         if worst <= accuracy:
             break
-        finer = elements.halved(found.wrong > max(0.3 * accuracy, 0.01 * worst))
-        if len(finer) * ORDER > MOST_NODES:
+        finer = elements.halved((wrong > max(0.3 * accuracy, 0.01 * worst)) & ~small)
+        if len(finer) == len(elements) or len(finer) * ORDER > MOST_NODES:
             break
         elements = finer
     if not worst <= accuracy:
@@ -308,9 +315,7 @@ def solve_drawn(
     nodes = _nodes(elements, axisymmetric)
     owners = np.repeat(elements.electrode, ORDER)
     charges = found.density * nodes[2] * (2.0 * math.pi * size if axisymmetric else 1.0)
-    capacitance = np.stack(
-        [charges[:, owners == k].sum(axis=1) for k in range(len(outlines))]
-    )
+    capacitance = np.stack([charges[:, owners == k].sum(axis=1) for k in range(len(outlines))])
     return DrawnSolution(
         axisymmetric,
         size,
@@ -320,5 +325,5 @@ def solve_drawn(
         accuracy,
         ELECTRIC_CONSTANT * capacitance,
         worst,
-        evenness(outlines, axisymmetric, size),
+        evenness(surface, axisymmetric),
     )

@@ -8,20 +8,25 @@ pi/w - 1. An element there is parametrised by
 
 so that sigma ds/du begins like u^(m pi/w - 1). m is chosen to make that an integer power; along the
 edge of a thin sheet (w = 2 pi) m is 2, along the outer edge of a box (w = 3 pi/2) 3, and every
-term of the density is then a polynomial in u.
+term of the density is then a polynomial in u. Towards a tip on the axis of revolution the potential
+is like distance^nu, P_nu(cos w) = 0, where the field fills a cone of half angle w.
 
 References
 ----------
-Behaviour at corners: J. D. Jackson, Classical Electrodynamics, 3rd ed. (1998), sec. 2.11.
+Behaviour at corners: J. D. Jackson, Classical Electrodynamics, 3rd ed. (1998), sec. 2.11;
+at tips: sec. 3.4.
 """
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.optimize import brentq
+from scipy.special import hyp2f1
 
 from driftwell.boundary.drawn_rows import place
 from driftwell.boundary.drawn_surface import SAME_PLACE, Surface, field_angles, vertices
@@ -38,9 +43,7 @@ _STRAIGHT = 1e-6
 _BEND = 0.02
 """Change of curvature, times the shorter length, above which an element ends between strokes."""
 _MOST_TURN = 0.5 * math.pi * (1.0 + 1e-6)
-_CONE = 2.0
-"""Exponent at a tip on the axis."""
-_SINGLE = 4.0
+_STEEPEST = 4.0
 """Largest exponent m."""
 
 
@@ -60,11 +63,12 @@ class Elements:
     def __len__(self) -> int:
         return len(self.spans)
 
-    def ends(self) -> Floats:
-        """(k, 2), the lesser and the larger position along the chain."""
-        base, reach, m = self.spans[:, 0], self.spans[:, 1], self.spans[:, 2]
-        s = base[:, None] + reach[:, None] * self.spans[:, 3:5] ** m[:, None]
-        return np.sort(s, axis=1)
+    def lengths(self) -> Floats:
+        """(k,), along the outline."""
+        m = self.spans[:, 2]
+        return np.asarray(
+            np.abs(self.spans[:, 1]) * (self.spans[:, 4] ** m - self.spans[:, 3] ** m)
+        )
 
     def halved(self, which: NDArray[np.bool_]) -> Elements:
         """The elements, some of them in two halves of the parameter u."""
@@ -77,16 +81,12 @@ class Elements:
         spans[:, 4] = np.where(which[origin] & ~second, middle, spans[:, 4])
         spans[:, 3] = np.where(second, middle, spans[:, 3])
         return _encircled(
-            replace(
-                self, spans=spans, chain=self.chain[origin], electrode=self.electrode[origin]
-            )
+            replace(self, spans=spans, chain=self.chain[origin], electrode=self.electrode[origin])
         )
 
     def places(self, t: Floats) -> tuple[Floats, Floats]:
         """Points (k, n, 2) at the parameters t (n,) in [-1, 1], and ds/dt (k, n)."""
-        u = 0.5 * (
-            self.spans[:, 3:4] * (1.0 - t) + self.spans[:, 4:5] * (1.0 + t)
-        )
+        u = 0.5 * (self.spans[:, 3:4] * (1.0 - t) + self.spans[:, 4:5] * (1.0 + t))
         m, reach = self.spans[:, 2:3], self.spans[:, 1:2]
         s = self.spans[:, 0:1] + reach * u**m
         rate = np.abs(reach) * m * u ** (m - 1.0)
@@ -125,9 +125,41 @@ def exponent(angle: float) -> float:
     power = math.pi / angle
     for whole in (1, 2, 3):
         m = whole / power
-        if m <= _SINGLE and abs(m - round(m)) < _STRAIGHT:
+        if m <= _STEEPEST and abs(m - round(m)) < _STRAIGHT:
             return float(round(m))
-    return min(2.0 / power, _SINGLE)
+    return min(2.0 / power, _STEEPEST)
+
+
+def cone_power(opening: float) -> float:
+    """The least nu > 0 with P_nu(cos(opening)) = 0: near a tip the potential is like distance^nu.
+
+    opening : half angle, rad, of the cone that the field fills, less than pi
+    """
+
+    def legendre(nu: float) -> float:
+        return float(hyp2f1(-nu, nu + 1.0, 1.0, 0.5 * (1.0 - math.cos(opening))))
+
+    # the first zero lies near 2.405 / opening - 1/2; for needles at 1 / (2 ln(2 / half angle))
+    low, step = 1e-3, 0.02
+    while legendre(low + step) > 0.0:
+        low += step
+    return float(brentq(legendre, low, low + step))
+
+
+def tip_exponent(leaving: float, metal: NDArray[np.bool_]) -> float:
+    """m of equation (1) at a tip on the axis, which a stroke leaves in this direction, rad.
+
+    metal : whether there is metal to its left, towards +z, and to its right
+    """
+    if abs(math.sin(leaving)) < _STRAIGHT:
+        return 1.0
+    from_z = math.acos(math.sin(leaving))
+    openings = [from_z, math.pi - from_z]
+    opening = max(angle for angle, filled in zip(openings, metal, strict=True) if not filled)
+    if opening < 0.1 or opening > math.pi - 1e-3:
+        return 1.0 if opening < 0.1 else _STEEPEST
+    power = cone_power(opening)
+    return min(max(1.0, (1.0 if power < 1.0 else 2.0) / power), _STEEPEST)
 
 
 @dataclass(slots=True)
@@ -146,16 +178,18 @@ def _ends(surface: Surface, axisymmetric: bool) -> _Ends:
     count = len(pieces)
     where = np.stack([pieces.start, pieces.end], axis=1).ravel()
     leaving = np.stack([pieces.direction, pieces.last_direction + math.pi], axis=1).ravel()
-    left = np.stack([surface.metal[:, 0], surface.metal[:, 1]], axis=1).ravel()
+    # seen from its end a stroke has left and right exchanged
+    metal = np.stack([surface.metal, surface.metal[:, ::-1]], axis=1).reshape(-1, 2)
     vertex = vertices(where)
     m, following = np.ones(2 * count), np.full(2 * count, -1, dtype=np.int64)
     order = np.argsort(vertex, kind="stable")
     for group in np.split(order, np.flatnonzero(np.diff(vertex[order])) + 1):
         if axisymmetric and abs(where[group[0]].real) <= SAME_PLACE:
-            upright = np.abs(np.sin(leaving[group]))
-            m[group] = 1.0 if len(group) == 1 and upright[0] < _STRAIGHT else _CONE
+            m[group] = [
+                tip_exponent(*of_end) for of_end in zip(leaving[group], metal[group], strict=True)
+            ]
             continue
-        angles = field_angles(leaving[group], left[group])
+        angles = field_angles(leaving[group], metal[group, 0])
         if len(group) == 2 and abs(angles.max() - math.pi) < _STRAIGHT:
             turned = leaving[group[1]] - leaving[group[0]]
             if abs(math.cos(turned) + 1.0) < _STRAIGHT**2:
@@ -182,21 +216,21 @@ def _chains(ends: _Ends) -> list[list[int]]:
     return chains
 
 
-def _sections(chain: Strokes, at_start: float, at_end: float) -> list[tuple[float, float, float, float]]:
+def _sections(
+    chain: Strokes, at_start: float, at_end: float
+) -> list[tuple[float, float, float, float]]:
     """Parts of a chain between which density may bend: from, to, exponents at both."""
     joints = np.concatenate([[0.0], np.cumsum(chain.length)])
     jump = np.abs(np.diff(chain.curvature))
     shorter = np.minimum(chain.length[:-1], chain.length[1:])
-    borders = [0.0]
-    for k in np.flatnonzero(jump * shorter > _BEND):
-        borders.append(float(joints[k + 1]))
-    borders.append(float(joints[-1]))
+    bent = joints[1:-1][jump * shorter > _BEND]
+    borders = [0.0, *bent.tolist(), float(joints[-1])]
     sections = []
-    for first, last in zip(borders[:-1], borders[1:], strict=True):
+    for first, last in itertools.pairwise(borders):
         inside = np.clip(np.minimum(joints[1:], last) - np.maximum(joints[:-1], first), 0.0, None)
         parts = max(1, math.ceil(float(np.sum(np.abs(chain.curvature) * inside)) / _MOST_TURN))
         cuts = np.linspace(first, last, parts + 1)
-        for a, b in zip(cuts[:-1], cuts[1:], strict=True):
+        for a, b in itertools.pairwise(cuts):
             m_a = at_start if a == 0.0 else 1.0
             m_b = at_end if b == borders[-1] else 1.0
             sections.append((float(a), float(b), m_a, m_b))
@@ -207,7 +241,8 @@ def elements_on(surface: Surface, axisymmetric: bool) -> Elements:
     """The coarsest elements of a surface: between corners, and two where both ends are graded."""
     ends = _ends(surface, axisymmetric)
     backwards = surface.strokes.reversed()
-    arcs, spans, chains, electrode = [], [], [], []
+    arcs: list[Floats] = []
+    spans, chains, electrode = [], [], []
     for walked in _chains(ends):
         chain = joined(
             [

@@ -62,7 +62,7 @@ def arc_at(s: float, first: int, last: int, arcs: np.ndarray) -> int:
 
 @inner_kernel
 def place(s: float, first: int, last: int, arcs: np.ndarray) -> tuple[float, float]:
-    """The point at the position s of a chain; arcs by their chord, which holds for straight ones."""
+    """The point at the position s of a chain: the chord of an arc, which may be straight."""
     k = arc_at(s, first, last, arcs)
     along = s - arcs[k, 0]
     half = 0.5 * arcs[k, 5] * along
@@ -158,7 +158,7 @@ def near_weights(
     work_moments: np.ndarray,
     out_rows: np.ndarray,
 ) -> None:
-    """Overwrite the weights of element e's nodes in ``out_rows[slot]`` by those for a near point."""
+    """Overwrite the weights of element e's nodes in ``out_rows[slot]``, for a near point."""
     p = len(transform)
     components = 2 if with_field else 1
     for component in range(components):
@@ -351,9 +351,7 @@ def sums_at(
     """
     blocks = len(work_rows)
     for block in numba.prange(blocks):
-        for i in range(
-            block * len(points) // blocks, (block + 1) * len(points) // blocks
-        ):
+        for i in range(block * len(points) // blocks, (block + 1) * len(points) // blocks):
             fill_rows(
                 points[i, 0],
                 points[i, 1],

@@ -7,6 +7,7 @@ left out, as are second copies.
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -26,6 +27,8 @@ Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 SAME_PLACE = 1e-10
 """Distance, of the size of all electrodes, below which two points are one."""
+_ALIKE = 1e-9
+"""Distance, of the size, below which a surface counts as its own mirror image."""
 _ASIDE = 1e-5
 """How far from its middle, of its length, a stroke is asked for metal."""
 
@@ -62,7 +65,8 @@ def _cut(pieces: Strokes, owner: NDArray[np.int64]) -> tuple[Strokes, NDArray[np
     for i, j in neighbours(pieces, SAME_PLACE):
         for s, t in meetings(pieces, i, j, SAME_PLACE):
             if owner[i] != owner[j]:
-                raise Contact(int(owner[i]), int(owner[j]), complex(pieces.at(np.array([s]), np.array([i]))[0]))
+                there = pieces.at(np.array([s]), np.array([i]))[0]
+                raise ContactError(int(owner[i]), int(owner[j]), complex(there))
             cuts[i].append(s)
             cuts[j].append(t)
     parts, origin = [], []
@@ -77,12 +81,12 @@ def _cut(pieces: Strokes, owner: NDArray[np.int64]) -> tuple[Strokes, NDArray[np
         if len(bounds) == 2:
             parts.append(pieces.taken(np.array([i])))
         else:
-            parts += [pieces.part(i, a, b) for a, b in zip(bounds[:-1], bounds[1:], strict=True)]
+            parts += [pieces.part(i, a, b) for a, b in itertools.pairwise(bounds)]
         origin += [i] * (len(bounds) - 1)
     return joined(parts), np.array(origin, dtype=np.int64)
 
 
-class Contact(DriftwellError):
+class ContactError(DriftwellError):
     """Two electrodes touch or overlap.
 
     pair : their numbers
@@ -102,13 +106,11 @@ class Contact(DriftwellError):
 def _closed(bounding: Strokes, loops: NDArray[np.int64]) -> Strokes:
     """The strokes, and a straight one from the end to the start of each loop that is open."""
     parts = [bounding]
-    for first, last in zip(loops[:-1], loops[1:], strict=True):
+    for first, last in itertools.pairwise(loops):
         begin, end = bounding.start[first], bounding.at(bounding.length)[last - 1]
         if abs(begin - end) > SAME_PLACE:
             along = np.array([begin - end])
-            parts.append(
-                Strokes(np.array([end]), np.angle(along), np.zeros(1), np.abs(along))
-            )
+            parts.append(Strokes(np.array([end]), np.angle(along), np.zeros(1), np.abs(along)))
     return joined(parts)
 
 
@@ -165,7 +167,7 @@ def charged_surface(
 ) -> Surface:
     """The surface of electrodes of some outlines each, in units of `size`, m.
 
-    Raises Contact where two electrodes touch.
+    Raises ContactError where two electrodes touch.
     """
     pieces, owner, metal = [], [], []
     bounds: list[list[Strokes]] = []
@@ -182,8 +184,8 @@ def charged_surface(
     owners = np.array(owner, dtype=np.int64)
     try:
         parts, origin = _cut(joined(pieces), owners)
-    except Contact as fault:
-        raise Contact(*fault.pair, fault.place * size) from None
+    except ContactError as fault:
+        raise ContactError(*fault.pair, fault.place * size) from None
     owners = owners[origin]
     metal = [
         _metal(parts.taken(owners == number), bounds[number]) for number in range(len(outlines))
@@ -201,19 +203,16 @@ def vertices(ends: NDArray[np.complex128]) -> NDArray[np.int64]:
     return np.asarray(connected_components(links, directed=False)[1], dtype=np.int64)
 
 
-def evenness(
-    outlines: Sequence[tuple[Outline, ...]], axisymmetric: bool, size: float
-) -> tuple[bool, bool]:
-    """For each coordinate, whether every electrode is its own mirror image in it."""
+def evenness(surface: Surface, axisymmetric: bool) -> tuple[bool, bool]:
+    """For each coordinate, whether the surface of every electrode is its own mirror image in it."""
     even = [not axisymmetric, True]
-    for drawn in outlines:
-        found = joined([_loops_of_strokes(outline, size)[0] for outline in drawn])
-        found = found.taken(_without_axis(found, axisymmetric))
-        share = np.array([0.0, 0.213, 0.5, 0.787, 1.0])
+    share = np.array([0.0, 0.213, 0.5, 0.787, 1.0])
+    for number in np.unique(surface.electrode):
+        found = surface.strokes.taken(surface.electrode == number)
         points = np.concatenate([found.at(found.length * part) for part in share])
         for axis, image in enumerate((-points.conjugate(), points.conjugate())):
             if even[axis]:
-                even[axis] = bool(found.nearest(image)[0].min(axis=1).max() < 1e-9)
+                even[axis] = bool(found.nearest(image)[0].min(axis=1).max() < _ALIKE)
     return even[0], even[1]
 
 

@@ -12,12 +12,12 @@ T = sum over n >= 1 of 2^(n-1) c_n^2,
     F_z = phi (z - c) (E/K) / s^2                                                           (3)
     F_r = phi (B - A + 2 r A B),   A = (b - r)/s^2,   B = (b + T/(2 r)) / l^2               (4)
 
-(4) is the usual form, phi / (2 r) (1 - (1 + 2 r A)(1 - 2 r B)), multiplied out: nothing is divided by
-r, as c_1 / r = 2 b / (l + s). A line along z with the charge eps0 tau per length has
+(4) is the usual form, phi / (2 r) (1 - (1 + 2 r A)(1 - 2 r B)), multiplied out: nothing is divided
+by r, as c_1 / r = 2 b / (l + s). A line along z with the charge eps0 tau per length has
 
     phi = -ln(d) / (2 pi),   F = (x - c) / (2 pi d^2)                                       (5)
 
-Number of steps of the mean: 5 give rounding for s/l > 1e-3 and 1e-10 at 1e-5; 7 give it down to 1e-12.
+Steps of the mean: 5 give rounding for s/l > 1e-3 and 1e-10 at 1e-5; 7 give it down to 1e-12.
 
 References
 ----------

@@ -74,9 +74,7 @@ class Strokes:
 
     def reversed(self) -> Strokes:
         """The same strokes walked the other way, each where it was in the list."""
-        return Strokes(
-            self.end, self.last_direction + math.pi, -self.curvature, self.length.copy()
-        )
+        return Strokes(self.end, self.last_direction + math.pi, -self.curvature, self.length.copy())
 
     def nearest(self, points: Complex) -> tuple[Floats, Floats]:
         """Distance (m, n) of each point from each stroke, and the position (m, n) that near."""
@@ -103,7 +101,7 @@ def joined(parts: list[Strokes]) -> Strokes:
 
 
 def strokes(outline: Outline) -> Strokes:
-    """The pieces of an outline in their order, arcs cut so that none turns more than a right angle."""
+    """The pieces of an outline in order, arcs cut so that none turns more than a right angle."""
     starts, directions, curvatures, lengths = [], [], [], []
     for x0, y0, x1, y1, xc, yc, sweep in outline.pieces.tolist():
         z0, z1, centre = complex(x0, y0), complex(x1, y1), complex(xc, yc)
