@@ -43,14 +43,14 @@ def weight_polynomials() -> list[list[Fraction]]:
             # B(x) = sum_j (-1)^j C(6, j) (x + 3 - j)_+^5 / 5!, at x = t + 2 - k
             part = Fraction((-1) ** j * math.comb(SUPPORT, j), math.factorial(DEGREE))
             for m in range(SUPPORT):
-                table[m][k] += part * math.comb(DEGREE, m) * Fraction(DEGREE - k - j) ** (
-                    DEGREE - m
+                table[m][k] += (
+                    part * math.comb(DEGREE, m) * Fraction(DEGREE - k - j) ** (DEGREE - m)
                 )
     return table
 
 
 def _in_lanes(derivative: int) -> np.ndarray:
-    """Vectors of the powers of t, highest first, of the weights' derivative, one after the other."""
+    """Factors of the powers of t in the weights' derivative, highest first, a vector each."""
     rows = []
     for m in range(DEGREE, derivative - 1, -1):
         factor = math.perm(m, derivative)
@@ -60,7 +60,6 @@ def _in_lanes(derivative: int) -> np.ndarray:
 
 VALUE_WEIGHTS = _in_lanes(0)
 SLOPE_WEIGHTS = _in_lanes(1)
-BEND_WEIGHTS = _in_lanes(2)
 
 
 @inner_kernel
@@ -82,15 +81,6 @@ def slope_weights(t: float) -> LanesType:
     w = fused(w, x, load(SLOPE_WEIGHTS, 16))
     w = fused(w, x, load(SLOPE_WEIGHTS, 24))
     return fused(w, x, load(SLOPE_WEIGHTS, 32))
-
-
-@inner_kernel
-def bend_weights(t: float) -> LanesType:
-    """Weights of the second derivative by t, in six lanes."""
-    x = lanes(t)
-    w = fused(load(BEND_WEIGHTS, 0), x, load(BEND_WEIGHTS, 8))
-    w = fused(w, x, load(BEND_WEIGHTS, 16))
-    return fused(w, x, load(BEND_WEIGHTS, 24))
 
 
 @inner_kernel

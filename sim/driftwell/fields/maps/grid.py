@@ -65,7 +65,8 @@ class Grid:
 
     def axis(self, which: int) -> Floats:
         """Coordinates of the nodes along an axis."""
-        return self.origin[which] + self.spacing[which] * np.arange(self.counts[which])
+        steps = np.arange(self.counts[which], dtype=np.float64)
+        return self.origin[which] + self.spacing[which] * steps
 
     def nodes(self) -> Floats:
         """(n, d), the last axis fastest."""

@@ -60,9 +60,7 @@ class PotentialMap:
         """Coefficients (n0 + 4, ...) of the sum of the unit solutions times weights (e,)."""
         return np.tensordot(np.asarray(weights, dtype=np.float64), self.coefficients, axes=1)
 
-    def packed(
-        self, coefficients: Floats, centre: Point3, waveform: PackedWaveform
-    ) -> PackedField:
+    def packed(self, coefficients: Floats, centre: Point3, waveform: PackedWaveform) -> PackedField:
         """A field of combined coefficients that a waveform scales, as numbers for compiled code.
 
         centre : where the origin of the electrodes' own coordinates lies, m
@@ -75,7 +73,9 @@ class PotentialMap:
 
     def values(self, points: ArrayLike, weights: ArrayLike) -> tuple[Floats, Floats]:
         """Potential (n,) and field (n, d) at points (n, d), by the kernels of the time loop."""
-        return map_values(self.packed(self.combined(weights), (0.0, 0.0, 0.0), CONSTANT_ONE), points)
+        return map_values(
+            self.packed(self.combined(weights), (0.0, 0.0, 0.0), CONSTANT_ONE), points
+        )
 
     def curvature(self, points: ArrayLike, weights: ArrayLike) -> Floats:
         """Second derivatives (n, 3, 3) of the potential at points (n, d), V/m^2.

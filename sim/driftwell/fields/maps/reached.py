@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import NamedTuple
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,7 +11,8 @@ from numpy.typing import NDArray
 Floats = NDArray[np.float64]
 
 
-class NearErrors(NamedTuple):
+@dataclass(frozen=True, slots=True)
+class NearErrors:
     """Errors of the field at test points by their distance from the nearest surface.
 
     edges : (k + 1,) float64, m; the last is infinite
@@ -94,7 +95,7 @@ def reached_from(arrays: dict[str, NDArray[np.generic]]) -> Reached:
 def errors_by_distance(error: Floats, distance: Floats, edges: Floats) -> NearErrors:
     """Errors (e, n) of each electrode as parts of its rms field, by distance (n,)."""
     count, rms, largest = [], [], []
-    for low, high in zip(edges[:-1], edges[1:], strict=True):
+    for low, high in pairwise(edges):
         here = error[:, (distance >= low) & (distance < high)]
         count.append(here.shape[1])
         rms.append(float(np.sqrt(np.mean(here**2, axis=1)).max()) if here.size else np.nan)

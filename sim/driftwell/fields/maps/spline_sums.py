@@ -62,7 +62,7 @@ def _sums(
         shape = [len(points)] + [1] * grid.axes
         shape[axis + 1] = SUPPORT
         index.append(cells[axis].reshape(shape))
-    near = coefficients[(slice(None), *index)]
+    near = coefficients[(slice(None), *index)]  # type: ignore[arg-type]
     terms = f"en{letters}," + ",".join(f"n{letter}" for letter in letters) + "->en"
     found = []
     for orders in derivatives:
