@@ -131,9 +131,11 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     )
 
 
-def field_tables(forms: Sequence[FieldForm], bodies: Mapping[str, Body]) -> dict[Role, FieldTable]:
-    """The scenario's fields as one table for each role."""
-    packed = [form.packed(bodies) for form in forms]
+def field_tables(
+    forms: Sequence[FieldForm], bodies: Mapping[str, Body], more: Sequence[PackedField] = ()
+) -> dict[Role, FieldTable]:
+    """The scenario's fields as one table for each role; `more` are packed already."""
+    packed = [*(form.packed(bodies) for form in forms), *more]
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
 
 

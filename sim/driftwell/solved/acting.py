@@ -8,20 +8,23 @@ absorb, as walls with names of their own.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.electrodes.form import Electrode, Electrodes
+from driftwell.electrodes.bodies import bodies_of
 from driftwell.fields.form import PackedField
 from driftwell.fields.rates import linear_rates
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import AnyWaveform, packed_waveform, waveform_breaks
+from driftwell.geometry.body_table import body_table
+from driftwell.scenario.model import Scenario
 from driftwell.solved.region import Distance
-from driftwell.solved.solved_field import SolvedField
+from driftwell.solved.solved_field import SolvedField, distance_of, solved_field
+from driftwell.solved.store import Told
 from driftwell.solved.waves import Course, courses
 from driftwell.walls.cylinder import Cylinder
 from driftwell.walls.form import WallForm
@@ -148,13 +151,27 @@ class ActingField:
         ]
 
 
-def acting_field(
-    electrodes: Electrodes,
-    electrode: Sequence[Electrode],
-    solved: SolvedField,
-    distance: Distance,
-) -> ActingField:
-    """The solved field with the voltages of a scenario's electrodes."""
-    voltages: list[AnyWaveform] = [each.voltage for each in electrode]
+def acting_field(scenario: Scenario, folder: Path, told: Told | None = None) -> ActingField | None:
+    """The solved field with the voltages of a scenario's electrodes; None where it has none.
+
+    folder : what files named in the scenario count from
+
+    Raises ScenarioError or DriftwellError where it cannot be solved; the text says why.
+    """
+    if not scenario.electrode:
+        return None
+    electrodes = scenario.electrodes
+    solved = solved_field(electrodes, scenario.electrode, folder, told or _unheard)
+    bodies = body_table(bodies_of(electrodes, scenario.electrode, folder))
+    voltages: list[AnyWaveform] = [each.voltage for each in scenario.electrode]
     voltages += [0.0] * (len(solved.names) - len(voltages))
-    return ActingField(solved, electrodes.centre, tuple(courses(voltages)), distance)
+    return ActingField(
+        solved,
+        electrodes.centre,
+        tuple(courses(voltages)),
+        distance_of(bodies, electrodes.geometry),
+    )
+
+
+def _unheard(sentence: str) -> None:
+    """Nobody listens."""

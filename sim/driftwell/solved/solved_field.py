@@ -1,4 +1,4 @@
-"""The solved field of a scenario's electrodes: unit solutions, their map, and where they are kept."""
+"""The solved field of a scenario's electrodes: unit solutions and their map, found or solved."""
 
 from __future__ import annotations
 
@@ -12,13 +12,14 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.boundary.drawn_solution import DrawnSolution, solve_drawn
+from driftwell.boundary.drawn import DrawnSolution, solve_drawn
 from driftwell.boundary.solution import Solution
 from driftwell.boundary.spatial_solution import SpatialSolution, solve_spatial
 from driftwell.electrodes.bodies import bodies_of
 from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.maps.build import build_map
 from driftwell.fields.maps.potential_map import PotentialMap
+from driftwell.forms import spelled
 from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.geometry.distance import distances, plane_distances
 from driftwell.geometry.solid import Solid
@@ -59,6 +60,16 @@ class SolvedField:
     def digest(self) -> str:
         """Of the map's numbers: equal where a run goes on in the very same field."""
         return hashlib.sha256(self.map.coefficients.tobytes()).hexdigest()[:16]
+
+    def where(self) -> str:
+        """The region of the map in words, in the electrodes' own coordinates."""
+        names = {"axisymmetric": "rz", "planar": "xy", "spatial": "xyz"}[self.geometry]
+        return ", ".join(
+            f"r up to {spelled(high, 'm', 4)}"
+            if name == "r"
+            else f"{name} from {spelled(low, 'm', 4)} to {spelled(high, 'm', 4)}"
+            for name, (low, high) in zip(names, self.map.region(), strict=True)
+        )
 
 
 def solved_field(
@@ -104,10 +115,11 @@ def _solved(
     depth = distance_of(body_table(bodies), geometry)
     box = region_of(electrodes, depth, solution)
     mapped = build_map(
-        geometry,
         tuple(zip(box.low.tolist(), box.high.tolist(), strict=True)),
         solution,
         electrodes.field_accuracy,
+        geometry=geometry,
+        mirrors=solution.mirrors,
         depth=depth,
     )
     return SolvedField(names, geometry, solution, mapped)
