@@ -27,6 +27,7 @@ from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
+from driftwell.solved.acting import ActingField, acting_field
 from driftwell.stepping.loop import TimeLoop, Traced
 from driftwell.stepping.motion import Fields
 from driftwell.stepping.schedule import (
@@ -46,6 +47,7 @@ from driftwell.stepping.step_choice import (
     closest_pair_rates,
     plasma_rates,
 )
+from driftwell.walls.form import WallForm
 from driftwell.walls.table import sides, surface_table
 
 SAMPLES_PER_PERIOD = 20.0
@@ -59,6 +61,7 @@ class Assembly:
     clouds : facts in the order of ``particles.cloud``
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
+    acting : the electrodes' solved field; None without electrodes
     """
 
     scenario: Scenario
@@ -70,6 +73,13 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+    acting: ActingField | None = None
+
+    @property
+    def walls(self) -> tuple[WallForm, ...]:
+        """The scenario's walls, then the edges of the solved field."""
+        edges = () if self.acting is None else self.acting.edges()
+        return (*self.scenario.wall, *edges)
 
     @property
     def tracked(self) -> NDArray[np.int64]:
@@ -92,9 +102,11 @@ class Assembly:
             coulomb_method=summation.method,
             coulomb_because=summation.because,
             coulomb_accuracy=scenario.coulomb.accuracy,
+            field_error=0.0 if self.acting is None else self.acting.solved.error,
+            field_digest="" if self.acting is None else self.acting.solved.digest,
             clouds=self.clouds,
             species=self.species,
-            walls=tuple(wall.name for wall in scenario.wall),
+            walls=tuple(wall.name for wall in self.walls),
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -115,7 +127,8 @@ class Assembly:
 
         particles, state : where a run is taken up, those it was left with
         """
-        tables = field_tables(self.scenario.field, self.bodies)
+        packed = [] if self.acting is None else self.acting.packed()
+        tables = field_tables(self.scenario.field, self.bodies, packed)
         return TimeLoop(
             self.particles if particles is None else particles,
             Fields(
@@ -123,7 +136,7 @@ class Assembly:
                 uniform=tables[Role.UNIFORM_MAGNETIC],
                 magnetic=tables[Role.MAGNETIC],
             ),
-            surface_table(self.scenario.wall, self.scenario.detector),
+            surface_table(self.walls, self.scenario.detector),
             self.scenario.coulomb,
             self.scenario.stepping,
             self.schedule,
@@ -133,10 +146,13 @@ class Assembly:
         )
 
 
-def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
-    """Put a scenario together.
+def assembled(
+    loaded: LoadedScenario, warn: Warn | None = None, told: Warn | None = None
+) -> Assembly:
+    """Put a scenario together; the field of its electrodes is solved where it is not kept.
 
     warn : where given, it is told that the run would not fit in memory, and nothing is refused
+    told : where given, it is told how the electrodes' field comes about
 
     Raises
     ------
@@ -150,13 +166,16 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
     _check_births(scenario, particles)
+    acting = acting_field(scenario, loaded.folder, told)
+    if acting is not None:
+        _check_within(scenario, particles, acting)
     requests = _traces(scenario)
-    choice, every = _steps(scenario, bodies, species, particles, requests)
+    choice, every = _steps(scenario, bodies, species, particles, requests, acting)
     samples = scenario.duration / every if requests else 0.0
     extent = extent_of(scenario, charges, int(samples), len(requests))
     if not warned:
         refuse_beyond_memory(extent, warn)
-    plan = _schedule(scenario, choice.step, bool(requests), every)
+    plan = _schedule(scenario, choice.step, bool(requests), every, acting)
     return Assembly(
         scenario,
         bodies,
@@ -167,6 +186,7 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
         choice,
         plan,
         _counted(extent, plan),
+        acting,
     )
 
 
@@ -229,6 +249,20 @@ def _check_births(scenario: Scenario, particles: Particles) -> None:
             )
 
 
+def _check_within(scenario: Scenario, particles: Particles, acting: ActingField) -> None:
+    """Refuse charges born where the electrodes' field is not known."""
+    outside = np.flatnonzero(acting.outside(particles.position))
+    if outside.size:
+        x, y, z = particles.position[:, outside[0]]
+        cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+        raise ScenarioError(
+            f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges begin where the '
+            f"electrodes' field is not worked out; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m, "
+            f"and the field is known for {acting.solved.where()}. Give [electrodes] a larger "
+            "`region`, or move the cloud."
+        )
+
+
 def _traces(scenario: Scenario) -> list[TraceRequest]:
     """The coordinates all questions want traced, each once."""
     requests: dict[str, TraceRequest] = {}
@@ -253,6 +287,7 @@ def _steps(
     names: Sequence[str],
     particles: Particles,
     requests: Sequence[TraceRequest],
+    acting: ActingField | None,
 ) -> tuple[StepChoice, float]:
     """The step, and the time between samples of the traces."""
     stepping = scenario.stepping
@@ -262,6 +297,8 @@ def _steps(
         for species in names
         for name, value in _rates_of(field, bodies[species], bodies).items()
     ]
+    if acting is not None:
+        rates += _rates_in(acting, bodies, names, particles)
     fastest = max((rate.rate for rate in rates), default=0.0)
     every = min((request.every for request in requests if request.every), default=math.inf)
     if any(request.every is None for request in requests):
@@ -291,6 +328,20 @@ def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str
         ) from fault
 
 
+def _rates_in(
+    acting: ActingField, bodies: Mapping[str, Body], names: Sequence[str], particles: Particles
+) -> list[Rate]:
+    """How fast charges move in the electrodes' field."""
+    speed = np.linalg.norm(particles.velocity, axis=0)
+    return [
+        Rate(f"{name} of {species} in the electrodes' field", value)
+        for number, species in enumerate(names)
+        for name, value in acting.rates(
+            bodies[species], float(speed[particles.species == number].max(initial=0.0))
+        ).items()
+    ]
+
+
 def _refuse_too_many(duration: float, choice: StepChoice, every: float) -> None:
     """Refuse more samples or steps than a run could ever take."""
     whole = spelled(duration, "s")
@@ -312,7 +363,9 @@ def _parts(whole: float, part: float) -> str:
     return f"{whole / part:.3g}" if part > 0.0 and math.isfinite(whole / part) else "countless"
 
 
-def _schedule(scenario: Scenario, step: float, traced: bool, every: float) -> Schedule:
+def _schedule(
+    scenario: Scenario, step: float, traced: bool, every: float, acting: ActingField | None
+) -> Schedule:
     """All marks of the run."""
     duration = scenario.duration
     records = regular(scenario.record.every or duration / DEFAULT_RECORDS, duration)
@@ -324,6 +377,7 @@ def _schedule(scenario: Scenario, step: float, traced: bool, every: float) -> Sc
         for question in scenario.question
     ]
     breaks = [waveform_breaks(field.waveform(), duration) for field in scenario.field]
+    breaks += [] if acting is None else acting.breaks(duration)
     marks: list[tuple[int, NDArray[np.float64]]] = [
         (RECORD, records),
         (SNAPSHOT, np.concatenate(snapshots)),

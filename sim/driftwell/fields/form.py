@@ -6,6 +6,9 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import Enum
 
+import numpy as np
+from numpy.typing import NDArray
+
 from driftwell.forms import Form, Name, Point, key, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveform_table import PackedWaveform
@@ -25,13 +28,16 @@ class Role(Enum):
 
 @dataclass(frozen=True, slots=True)
 class PackedField:
-    """One field as numbers: what the table of its role holds in one row."""
+    """One field as numbers: what the table of its role holds in one row.
+
+    data : the kind's own numbers beyond its parameters, few or (k,) float64
+    """
 
     role: Role
     kind: int
     parameters: tuple[float, ...]
     waveform: PackedWaveform
-    data: tuple[float, ...] = ()
+    data: tuple[float, ...] | NDArray[np.float64] = ()
 
 
 class FieldForm(Form):

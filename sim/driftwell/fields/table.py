@@ -45,6 +45,14 @@ from driftwell.fields.magnetic_multipole import (
     magnetic_multipole,
     magnetic_multipole_induced,
 )
+from driftwell.fields.maps.kernels import (
+    PLANAR_MAP,
+    ROUND_MAP,
+    SPATIAL_MAP,
+    planar_map,
+    round_map,
+    spatial_map,
+)
 from driftwell.fields.quadro_logarithmic import (
     QUADRO_LOGARITHMIC,
     QuadroLogarithmic,
@@ -108,25 +116,26 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     waves = waveform_table([field.waveform for field in fields])
     parameter = np.zeros((len(fields), PARAMETERS))
     first = np.zeros(len(fields) + 1, dtype=np.int64)
-    data: list[float] = []
+    data = [np.asarray(field.data, dtype=np.float64) for field in fields]
     for row, field in enumerate(fields):
         parameter[row, : len(field.parameters)] = field.parameters
-        data.extend(field.data)
-        first[row + 1] = len(data)
+        first[row + 1] = first[row] + data[row].size
     return FieldTable(
         np.array([field.kind for field in fields], dtype=np.int64),
         parameter,
         first,
-        np.array(data or [0.0]),
+        np.concatenate(data) if first[-1] else np.zeros(1),
         waves.kind,
         waves.parameter,
         waves.data,
     )
 
 
-def field_tables(forms: Sequence[FieldForm], bodies: Mapping[str, Body]) -> dict[Role, FieldTable]:
-    """The scenario's fields as one table for each role."""
-    packed = [form.packed(bodies) for form in forms]
+def field_tables(
+    forms: Sequence[FieldForm], bodies: Mapping[str, Body], more: Sequence[PackedField] = ()
+) -> dict[Role, FieldTable]:
+    """The scenario's fields as one table for each role; `more` are packed already."""
+    packed = [*(form.packed(bodies) for form in forms), *more]
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
 
 
@@ -157,6 +166,12 @@ def electric_field(
         return quadro_logarithmic(p, data, w, position, charge, first, last, out_field)
     if kind == WIRE_IN_CYLINDER:
         return wire_in_cylinder(p, data, w, position, charge, first, last, out_field)
+    if kind == ROUND_MAP:
+        return round_map(p, data, w, position, charge, first, last, out_field)
+    if kind == PLANAR_MAP:
+        return planar_map(p, data, w, position, charge, first, last, out_field)
+    if kind == SPATIAL_MAP:
+        return spatial_map(p, data, w, position, charge, first, last, out_field)
     return np.nan
 
 

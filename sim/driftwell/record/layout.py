@@ -290,6 +290,12 @@ ANSWERS = Dataset(
             "1",
             "largest rms relative error of the Coulomb forces behind it; not in `error`",
         ),
+        Column(
+            "field_error",
+            "float64",
+            "1",
+            "relative rms error of the electrodes' solved field behind it; not in `error`",
+        ),
         Column("note", "text", "", "what else to know of the answer"),
     ),
 )
@@ -324,6 +330,8 @@ HEADER = (
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
+    Attribute("field_error", "float64", "1", "relative rms error of the electrodes' solved field"),
+    Attribute("field_digest", "text", "", "digest of that field's numbers"),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of the walls, in order"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
