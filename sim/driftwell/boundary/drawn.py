@@ -28,10 +28,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg import lu_factor, lu_solve
+from scipy.spatial import cKDTree
 
 from driftwell.boundary.drawn_elements import ORDER, Elements, elements_on
 from driftwell.boundary.drawn_rows import sums_at, weights_at
-from driftwell.boundary.drawn_surface import Surface, charged_surface, evenness, size_of
+from driftwell.boundary.drawn_surface import charged_surface, evenness, size_of
 from driftwell.boundary.solution import Panels
 from driftwell.constants import ELECTRIC_CONSTANT
 from driftwell.errors import DriftwellError
@@ -42,7 +43,8 @@ Floats = NDArray[np.float64]
 MOST_NODES = 8000
 """Beyond this the matrix takes more than half a gigabyte."""
 BEST_ACCURACY = 1e-10
-_ROUNDS = 40
+_PATIENCE, _NEARLY = 3, 10.0
+"""Rounds that must halve the error, else one of this many times what was asked for is let be."""
 _BLOCKS = 128
 _SMALLEST = 2e-8
 """Length, in the electrodes' size, below which an element is not halved."""
@@ -255,20 +257,22 @@ def _solved(elements: Elements, rings: bool, count: int, rules: Quadrature) -> _
     return _Solved(density, constants, gap.reshape(len(elements), -1).max(axis=1))
 
 
-def _fit_to_gaps(elements: Elements, surface: Surface) -> Elements:
-    """Elements none of which is long against its distance from other electrodes."""
+def _fit_to_gaps(elements: Elements) -> Elements:
+    """Elements none of which is long against its distance from other electrodes.
+
+    That is told from points on all of them: where one of two neighbours is long, it is halved until
+    its points lie as dense as the gap is wide.
+    """
     while len(elements) * ORDER < MOST_NODES:
         points, _ = elements.places(np.linspace(-1.0, 1.0, 9))
         nearest = np.full(len(elements), np.inf)
         for number in np.unique(elements.electrode):
-            own = np.flatnonzero(elements.electrode == number)
-            others = surface.strokes.taken(surface.electrode != number)
-            if len(others) == 0:
-                continue
-            for part in np.array_split(own, 1 + len(own) * len(others) // 100_000):
-                places = points[part].reshape(-1, 2)
-                distance = others.nearest(places[:, 0] + 1j * places[:, 1])[0].min(axis=1)
-                nearest[part] = distance.reshape(len(part), -1).min(axis=1)
+            own = elements.electrode == number
+            if own.all():
+                break
+            others = cKDTree(points[~own].reshape(-1, 2))
+            distance = np.asarray(others.query(points[own].reshape(-1, 2))[0])
+            nearest[own] = distance.reshape(-1, 9).min(axis=1)
         long = elements.lengths() > _REACH * nearest
         if not long.any():
             break
@@ -281,7 +285,9 @@ def solve_drawn(
 ) -> DrawnSolution:
     """Unit solutions of electrodes of one outline or several each.
 
-    accuracy : largest error of potentials, in parts of the voltage
+    accuracy : largest error of potentials, in parts of the voltage. Where it cannot be had, as on
+        curves that are themselves made of arcs to 1e-8, `error` of the solution may be up to ten
+        times as large.
 
     Runs on as many threads as `driftwell.kernels.threads.on_threads` allows.
 
@@ -294,23 +300,27 @@ def solve_drawn(
     size = size_of(outlines)
     surface = charged_surface(outlines, axisymmetric, size)
     rules = quadrature(accuracy)
-    elements = _fit_to_gaps(elements_on(surface, axisymmetric), surface)
-    for _ in range(_ROUNDS):
+    elements = _fit_to_gaps(elements_on(surface, axisymmetric))
+    history: list[float] = []
+    while True:
         found = _solved(elements, axisymmetric, len(outlines), rules)
         small = elements.lengths() < _SMALLEST
         wrong = np.where(small, _FADED, 1.0) * found.wrong
         worst = float(wrong.max())
-        if worst <= accuracy:
+        history.append(worst)
+        slow = len(history) > _PATIENCE and worst > 0.5 * history[-1 - _PATIENCE]
+        if worst <= accuracy or (slow and worst <= _NEARLY * accuracy):
             break
         finer = elements.halved((wrong > max(0.3 * accuracy, 0.01 * worst)) & ~small)
         if len(finer) == len(elements) or len(finer) * ORDER > MOST_NODES:
             break
         elements = finer
-    if not worst <= accuracy:
+    if not worst <= _NEARLY * accuracy:
         raise DriftwellError(
             f"the electrodes' potential is known to {worst:.1e} of the voltage only, with "
             f"{len(elements) * ORDER} unknowns; {accuracy:.1e} was asked for. Ask for a larger "
-            "`field_accuracy`, or draw a simpler electrode."
+            "`field_accuracy`, or draw simpler electrodes, without needles or gaps that are thin "
+            "against their length."
         )
     nodes = _nodes(elements, axisymmetric)
     owners = np.repeat(elements.electrode, ORDER)

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import itertools
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -24,6 +24,7 @@ from driftwell.geometry.outline import Outline
 from driftwell.geometry.strokes import Strokes, joined, strokes, turns_around
 
 Floats = NDArray[np.float64]
+Complex = NDArray[np.complex128]
 Flags = NDArray[np.bool_]
 SAME_PLACE = 1e-10
 """Distance, of the size of all electrodes, below which two points are one."""
@@ -205,15 +206,32 @@ def vertices(ends: NDArray[np.complex128]) -> NDArray[np.int64]:
 
 def evenness(surface: Surface, axisymmetric: bool) -> tuple[bool, bool]:
     """For each coordinate, whether the surface of every electrode is its own mirror image in it."""
-    even = [not axisymmetric, True]
+    owns = [surface.electrode == number for number in np.unique(surface.electrode)]
+    each = [surface.strokes.taken(own) for own in owns]
+    return (
+        not axisymmetric and all(_even(one, lambda z: -z.conjugate()) for one in each),
+        all(_even(one, lambda z: z.conjugate()) for one in each),
+    )
+
+
+def _even(found: Strokes, image: Callable[[Complex], Complex]) -> bool:
+    """Whether strokes are their own image, however they are cut."""
+
+    def apart(places: Complex) -> NDArray[np.bool_]:
+        tree = cKDTree(np.stack([places.real, places.imag], axis=1))
+        mirrored = image(places)
+        distance, _ = tree.query(np.stack([mirrored.real, mirrored.imag], axis=1))
+        return np.asarray(distance > _ALIKE)
+
+    # strokes whose ends and middle have no counterpart are compared with all others
+    ends = np.concatenate([found.start, found.end])
+    doubtful = apart(found.at(0.5 * found.length)) | apart(ends).reshape(2, -1).any(axis=0)
     share = np.array([0.0, 0.213, 0.5, 0.787, 1.0])
-    for number in np.unique(surface.electrode):
-        found = surface.strokes.taken(surface.electrode == number)
-        points = np.concatenate([found.at(found.length * part) for part in share])
-        for axis, image in enumerate((-points.conjugate(), points.conjugate())):
-            if even[axis]:
-                even[axis] = bool(found.nearest(image)[0].min(axis=1).max() < _ALIKE)
-    return even[0], even[1]
+    for k in np.flatnonzero(doubtful):
+        points = image(found.at(found.length[k] * share, np.full(5, k)))
+        if found.nearest(points)[0].min(axis=1).max() > _ALIKE:
+            return False
+    return True
 
 
 def field_angles(directions: Floats, metal_left: Flags) -> Floats:

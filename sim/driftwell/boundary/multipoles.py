@@ -124,9 +124,7 @@ def _half_circle(potential: Potential, centre: float, radius: float, highest: in
     height, weight = np.polynomial.legendre.leggauss(_SAMPLES // 2)
     points = np.stack([radius * np.sqrt(1.0 - height**2), centre + radius * height], axis=1)
     order = np.arange(highest + 1)[:, None]
-    return np.asarray(
-        potential(points) @ ((order + 0.5) * weight * eval_legendre(order, height)).T
-    )
+    return np.asarray(potential(points) @ ((order + 0.5) * weight * eval_legendre(order, height)).T)
 
 
 def round_content(
