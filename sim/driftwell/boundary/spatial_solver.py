@@ -39,8 +39,10 @@ _TURN = 2.5
 """Largest turn of a curved surface from edge to edge, rad, times the edges of an extent."""
 _ROUNDS = 12
 _PLACES, _FEWEST_PLACES = 512, 32
-_AROUND, _BESIDE = 1.2, 0.3
+_AROUND, _BESIDE = 1.2, 0.5
 """Box of the places: parts of the electrodes' own along each axis, and of its longest side."""
+_CLEAR = 0.6
+"""Distance of the places from panels' middles, in longest sides."""
 
 
 class SolvedSpatial(NamedTuple):
@@ -220,12 +222,12 @@ def _spread_places(surfaces: Surfaces) -> Floats:
     reach = _AROUND * (high - low) + _BESIDE * np.max(high - low)
     points = 0.5 * (low + high) + (qmc.Sobol(3, scramble=False).random(_PLACES) - 0.5) * reach
     rows = panel_rows(surfaces.corners)
-    tree = bounds_of(np.ascontiguousarray(rows[:, 23:26]), rows[:, 22])
+    tree = bounds_of(np.ascontiguousarray(rows[:, 23:26]), _CLEAR * rows[:, 22])
     near = np.zeros(_PLACES, dtype=np.int64)
     count_near(points, np.zeros(_PLACES), tree, near)
-    clear = near == 0
-    clear &= winding(surfaces.corners[own & surfaces.closed], points) < 0.5
+    outside = winding(surfaces.corners[own & surfaces.closed], points) < 0.5
     around = surfaces.closed & ~own
     if np.any(around):
-        clear &= np.abs(winding(surfaces.corners[around], points)) > 0.5
-    return np.ascontiguousarray(points[clear] if clear.sum() >= _FEWEST_PLACES else points)
+        outside &= np.abs(winding(surfaces.corners[around], points)) > 0.5
+    clear = outside & (near == 0)
+    return np.ascontiguousarray(points[clear if clear.sum() >= _FEWEST_PLACES else outside])
