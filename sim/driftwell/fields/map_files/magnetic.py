@@ -120,13 +120,17 @@ def _round(table: NodeTable) -> tuple[Floats, float]:
 
 
 def _spatial(table: NodeTable) -> tuple[Floats, float]:
-    """The splines of the components, and their divergence as part of all their slopes (rms)."""
+    """The splines of the components, and their divergence as part of all their slopes (rms).
+
+    Slopes that are all divergence have the part 1: the square of a sum of three is at most three
+    times the sum of their squares.
+    """
     grid = table.grid
     values = np.stack([table.values[name] for name in ("Bx", "By", "Bz")])
     found = spline_coefficients(values, grid.mirrors)
     slopes = spline_sums(grid, found, grid.nodes()[some_nodes(grid)], first_derivatives(3))
     divergence = slopes[0, :, 0] + slopes[1, :, 1] + slopes[2, :, 2]
-    every = float(np.mean(np.sum(slopes**2, axis=(0, 2))))
+    every = 3.0 * float(np.mean(np.sum(slopes**2, axis=(0, 2))))
     extent = max(high - low for low, high in grid.region())
     least = float(np.mean(np.sum(values**2, axis=0))) * (_EVEN / extent) ** 2
     return packed_coefficients(found), _part(float(np.mean(divergence**2)), max(every, least))
