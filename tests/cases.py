@@ -15,6 +15,7 @@ from driftwell.forms import Form
 from driftwell.forms.body import Body
 from driftwell.walls.form import DetectorForm, WallForm
 from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
+from tests.grid_files import grids
 from tests.pair_sums import direct, tree
 
 BODIES = {
@@ -27,7 +28,7 @@ _KINDS = {kind.model_fields["kind"].annotation.__args__[0]: kind for kind in FIE
 
 def field(kind: str, **keys: Any) -> FieldForm:
     """A field as a scenario states it; its name is its kind where none is given."""
-    return _KINDS[kind](**{"kind": kind, "name": kind, **keys})
+    return _KINDS[kind](**{"kind": kind, "name": kind, **keys}).found_in(grids())
 
 
 def _kinds(kinds: Sequence[type[Form]]) -> dict[str, Any]:
@@ -152,6 +153,29 @@ FIELDS = [
         voltage={"amplitude": "-300 V", **SINE},
         centre=OFF_CENTRE,
     ),
+    *(
+        field("potential-map", name=f"potential-map, {path}", path=path, centre=OFF_CENTRE)
+        for path in ("round.csv", "flat.csv")
+    ),
+    field("potential-map", name="potential-map, mirrored", path="half.h5", mirrors=["z"]),
+    field(
+        "potential-map",
+        name="potential-map, in space",
+        path="space.h5",
+        scale={"amplitude": 1.5, "offset": 0.2, **SINE},
+        centre=OFF_CENTRE,
+    ),
+    *(
+        field("electric-map", name=f"electric-map, {path}", path=path, centre=OFF_CENTRE)
+        for path in ("round-e.csv", "flat-e.csv", "space-e.h5")
+    ),
+    field(
+        "magnetic-map",
+        path="round-b.csv",
+        scale={"amplitude": 2.0, **SINE},
+        centre=OFF_CENTRE,
+    ),
+    field("magnetic-map", name="magnetic-map, in space", path="space-b.h5", centre=OFF_CENTRE),
 ]
 
 WALLS = [

@@ -45,6 +45,9 @@ from driftwell.fields.magnetic_multipole import (
     magnetic_multipole,
     magnetic_multipole_induced,
 )
+from driftwell.fields.map_files.electric import ElectricMapFile
+from driftwell.fields.map_files.magnetic import MagneticMapFile
+from driftwell.fields.map_files.potential import PotentialMapFile
 from driftwell.fields.maps.kernels import (
     PLANAR_MAP,
     ROUND_MAP,
@@ -52,6 +55,14 @@ from driftwell.fields.maps.kernels import (
     planar_map,
     round_map,
     spatial_map,
+)
+from driftwell.fields.maps.magnetic_kernels import (
+    ROUND_MAGNETIC_MAP,
+    SPATIAL_MAGNETIC_MAP,
+    round_magnetic_map,
+    round_magnetic_map_induced,
+    spatial_magnetic_map,
+    spatial_magnetic_map_induced,
 )
 from driftwell.fields.quadro_logarithmic import (
     QUADRO_LOGARITHMIC,
@@ -87,6 +98,9 @@ FIELD_KINDS: tuple[type[FieldForm], ...] = (
     MagneticMultipole,
     QuadroLogarithmic,
     WireInCylinder,
+    PotentialMapFile,
+    ElectricMapFile,
+    MagneticMapFile,
 )
 
 PARAMETERS = 16
@@ -191,6 +205,10 @@ def magnetic_field(
         uniform_magnetic(p, data, w, position, first, last, out_b)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole(p, data, w, position, first, last, out_b)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map(p, data, w, position, first, last, out_b)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map(p, data, w, position, first, last, out_b)
     else:
         out_b[:, first:last] = np.nan
 
@@ -211,5 +229,9 @@ def induced_field(
         uniform_magnetic_induced(p, data, rate, position, first, last, out_e)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole_induced(p, data, rate, position, first, last, out_e)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map_induced(p, data, rate, position, first, last, out_e)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map_induced(p, data, rate, position, first, last, out_e)
     else:
         out_e[:, first:last] = np.nan

@@ -30,6 +30,11 @@ def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
         limit = spelled(scenario.stepping.extent, "m")
         text = f"must be less than [stepping] extent, {limit}, and far less than any cloud"
         faults.append(Fault(("coulomb", "softening"), "", text))
+    faults += [
+        Fault(("field", i, *fault.path), fault.found, fault.needed)
+        for i, field in enumerate(scenario.field)
+        for fault in field.faults()
+    ]
     known = bodies(scenario.species)
     of_clouds = [
         Fault(("cloud", i, *fault.path), fault.found, fault.needed)

@@ -16,11 +16,9 @@ def digest(scenario: Scenario, folder: Path) -> str:
 
     Comments, order, units and whether a default is written out make no difference.
     """
-    files = {
-        name: _file_digest(folder / name)
-        for cloud in scenario.cloud
-        for name in cloud.files_named()
-    }
+    clouds = [name for cloud in scenario.cloud for name in cloud.files_named()]
+    fields = [name for field in scenario.field for name in field.files_named()]
+    files = {name: _file_digest(folder / name) for name in (*clouds, *fields)}
     content = {"scenario": scenario.model_dump(mode="json"), "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(text.encode()).hexdigest()
