@@ -21,8 +21,9 @@ Every magnetic kind (uniform or not) has a kernel for its field and one for what
     kernel(p, data, w, position, first, last, out_b)       B = w curl a, T, added to
     kernel(p, data, rate, position, first, last, out_e)    E = -(dw/dt) a, V/m, added to
 
-A kind with long formulas is compiled apart, and only where a scenario uses it: its two kernels stand
-in :data:`KERNELS_APART` instead of a branch, and it has 14 parameters at most (fields/apart.py).
+A kind with long formulas is compiled apart, and only where a scenario uses it: its two kernels
+stand in :data:`KERNELS_APART`, with no branch of their own, and it has 14 parameters at most
+(fields/apart.py).
 
 A uniform magnetic kind keeps the unit vector of its field in ``p[3:6]``, so that the stepping can
 sum w n over all of them and turn each charge on its exact helix.

@@ -15,7 +15,7 @@ hold exactly. What is left is curl B, of the order n + 6 in the radius. The stre
 
     g(z) = (tanh((z + L/2)/b) - tanh((z - L/2)/b)) / 2                                          (3)
 
-in the middle 1 where L is long against b, at the ends a half; its integral is L. Its derivatives are
+in the middle 1 where L is long against b, at the ends a half; its integral is L. Derivatives are
 polynomials in the tangents. Where r0 reaches 1.571 b the series has no sum: such a magnet is
 refused. The vector potential is, with f_j = (B0/n) c_j g^(2j),
 
