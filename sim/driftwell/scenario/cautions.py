@@ -39,8 +39,8 @@ def cautions(scenario: Scenario) -> list[str]:
         found.append(f"Electrons of up to {reached} make X-rays where they stop: shield, measure.")
     if magnet > STRONG_MAGNET:
         found.append(
-            f"Fields up to {spelled(magnet, 'T', 3)} pull iron through the air and stop pacemakers; "
-            "a superconducting magnet that quenches fills the room with cold gas."
+            f"Fields up to {spelled(magnet, 'T', 3)} pull iron through the air and stop pacemakers;"
+            " a superconducting magnet that quenches fills the room with cold gas."
         )
     if found:
         found.append(
