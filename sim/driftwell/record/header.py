@@ -43,6 +43,7 @@ class Header:
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
+    images : the conductors that answer to the charges, in words; empty where none do
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -67,6 +68,7 @@ class Header:
     coulomb_method: str = "direct"
     coulomb_because: str = ""
     coulomb_accuracy: float = 1e-4
+    images: str = ""
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)

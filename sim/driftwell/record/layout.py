@@ -14,7 +14,7 @@ import h5py
 import numpy as np
 from numpy.typing import NDArray
 
-FORMAT_VERSION = 1
+FORMAT_VERSION = 2
 
 Kind = Literal["float64", "int64", "text", "texts"]
 
@@ -166,6 +166,9 @@ ROWS = (
                 "1",
                 "rms relative force error of the Coulomb sum, last measured; 0 for the direct sum",
             ),
+            Column("image", "float64", "J", "energy with the charges that conductors answer with"),
+            Column("impulse_images", "float64", "kg m/s", "given by these", (3,)),
+            Column("torque_images", "float64", "kg m^2/s", "given by these", (3,)),
         ),
     ),
     Dataset(
@@ -324,6 +327,7 @@ HEADER = (
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
+    Attribute("images", "text", "", "the conductors that answer to the charges; empty: none"),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of the walls, in order"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),

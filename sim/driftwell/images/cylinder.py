@@ -1,0 +1,49 @@
+"""An endless grounded tube with the charges inside."""
+
+from __future__ import annotations
+
+from typing import Annotated, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.forms import Bound, Length, Point, Positive, Real, key
+from driftwell.images.form import ImagesForm
+from driftwell.images.image_sum import Images
+from driftwell.images.tube_sum import GROUPS, TubeImages, work_size
+from driftwell.images.tube_table import orders_for
+
+_AXES = {"x": 0, "y": 1, "z": 2}
+Reach = Annotated[Real, Bound(least=0.3, most=0.95)]
+
+
+class CylinderImages(ImagesForm):
+    """An endless round conducting tube at a fixed voltage, around the charges."""
+
+    kind: Literal["cylinder"]
+    radius: Positive[Length] = key("inner radius of the tube", example="3.5 mm")
+    axis: Literal["x", "y", "z"] = key("direction of the tube's axis", default="z")
+    centre: Point = key("a point of the axis", default=(0.0, 0.0, 0.0))
+    reach: Reach = key(
+        "distance from the axis, in radii, up to which forces are summed to 1e-6; beyond it they "
+        "stop growing; the nearer to 1, the more one charge there costs",
+        default=0.8,
+    )
+
+    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
+        along = _AXES[self.axis]
+        away = position.T - self.centre
+        one, two = away[:, (along + 1) % 3], away[:, (along + 2) % 3]
+        return np.asarray(one**2 + two**2 < self.radius**2)
+
+    def images(self, closest: float) -> Images:
+        return TubeImages(_AXES[self.axis], np.array(self.centre), self.radius, self.reach)
+
+    def words(self) -> str:
+        return (
+            f"of an endless tube along {self.axis}, radius {self.radius * 1e3:.6g} mm, to 1e-6 of "
+            f"the force within {self.reach:g} of the radius"
+        )
+
+    def room_in_bytes(self, n: int) -> int:
+        return 20_000_000 + 8 * GROUPS * work_size(n, orders_for(self.reach))

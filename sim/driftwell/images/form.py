@@ -1,0 +1,66 @@
+"""What every kind of images declares."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.constants import COULOMB_CONSTANT
+from driftwell.forms import Form, Length, NonNegative, key, or_word
+from driftwell.images.image_sum import Images
+
+if TYPE_CHECKING:
+    Closest = float | str
+else:
+    Closest = or_word("auto", NonNegative[Length])
+
+
+_RESOLVED = 0.3
+"""rad, the most that steps turn an oscillation by and still follow it well."""
+
+
+class ImagesForm(Form):
+    """Base of all kinds of images."""
+
+    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
+        """Which of the places (3, n), m, lie where charges may be."""
+        raise TypeError(f"{type(self).__name__} must know its own side")
+
+    def images(self, closest: float) -> Images:
+        """The conductor; closest : m, see :class:`MirrorForm`."""
+        raise TypeError(f"{type(self).__name__} must make its images")
+
+    def words(self) -> str:
+        """What the charges feel, for `driftwell check`."""
+        raise TypeError(f"{type(self).__name__} must describe itself")
+
+    def room_in_bytes(self, n: int) -> int:
+        """Bytes of tables and work space for `n` charges."""
+        return 64 * n
+
+
+class MirrorForm(ImagesForm):
+    """Base of the kinds whose force grows without bound towards the conductor."""
+
+    closest: Closest = key(
+        "distance c from the conductor within which the force stops growing: it errs by 1.5 (c/d)^2 "
+        'at the distance d; "auto": what the step can follow',
+        default="auto",
+        example="10 nm",
+    )
+
+
+def followed(step: float, charge: NDArray[np.float64], mass: NDArray[np.float64]) -> float:
+    """The distance c, m, that steps can follow every charge's own image to.
+
+    With it the well in front of the conductor, K Q^2 / (4 (d^2 + c^2)^(1/2)), is nowhere steeper
+    than an oscillation of 0.3 rad in a step: c^3 = K Q^2 h^2 / (4 m 0.3^2).
+
+    step : s between two kicks; charge : (n,) C and mass : (n,) kg, of the macro-charges
+    """
+    if charge.size == 0:
+        return 0.0
+    fastest = float(np.max(charge**2 / mass))
+    return float(np.cbrt(COULOMB_CONSTANT * fastest * step**2 / (4.0 * _RESOLVED**2)))

@@ -1,0 +1,31 @@
+"""A grounded hollow sphere with the charges inside."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.forms import Length, Point, Positive, key
+from driftwell.images.form import MirrorForm
+from driftwell.images.image_sum import Images
+from driftwell.images.mirror_sum import sphere_images
+
+
+class SphereImages(MirrorForm):
+    """A hollow conducting sphere at a fixed voltage, around the charges."""
+
+    kind: Literal["sphere"]
+    radius: Positive[Length] = key("inner radius", example="5 mm")
+    centre: Point = key("the sphere's centre", default=(0.0, 0.0, 0.0))
+
+    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
+        away = position.T - self.centre
+        return np.asarray(np.einsum("ij,ij->i", away, away) < self.radius**2)
+
+    def images(self, closest: float) -> Images:
+        return sphere_images(np.array(self.centre), self.radius, closest)
+
+    def words(self) -> str:
+        return f"of a sphere of radius {self.radius * 1e3:.6g} mm around the charges"
