@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.forms import Bound, Length, Point, Positive, Real, key
-from driftwell.images.form import ImagesForm
+from driftwell.images.form import ClosedForm
 from driftwell.images.image_sum import Images
 from driftwell.images.tube_sum import GROUPS, TubeImages, work_size
 from driftwell.images.tube_table import orders_for
@@ -17,7 +17,7 @@ _AXES = {"x": 0, "y": 1, "z": 2}
 Reach = Annotated[Real, Bound(least=0.3, most=0.95)]
 
 
-class CylinderImages(ImagesForm):
+class CylinderImages(ClosedForm):
     """An endless round conducting tube at a fixed voltage, around the charges."""
 
     kind: Literal["cylinder"]
@@ -36,7 +36,7 @@ class CylinderImages(ImagesForm):
         one, two = away[:, (along + 1) % 3], away[:, (along + 2) % 3]
         return np.asarray(one**2 + two**2 < self.radius**2)
 
-    def images(self, closest: float) -> Images:
+    def images(self, followed: float) -> Images:
         return TubeImages(_AXES[self.axis], np.array(self.centre), self.radius, self.reach)
 
     def words(self) -> str:

@@ -24,14 +24,6 @@ _RESOLVED = 0.3
 class ImagesForm(Form):
     """Base of all kinds of images."""
 
-    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
-        """Which of the places (3, n), m, lie where charges may be."""
-        raise TypeError(f"{type(self).__name__} must know its own side")
-
-    def images(self, closest: float) -> Images:
-        """The conductor; closest : m, see :class:`MirrorForm`."""
-        raise TypeError(f"{type(self).__name__} must make its images")
-
     def words(self) -> str:
         """What the charges feel, for `driftwell check`."""
         raise TypeError(f"{type(self).__name__} must describe itself")
@@ -41,7 +33,19 @@ class ImagesForm(Form):
         return 64 * n
 
 
-class MirrorForm(ImagesForm):
+class ClosedForm(ImagesForm):
+    """Base of the kinds that are a conductor by themselves, with its images in closed form."""
+
+    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
+        """Which of the places (3, n), m, lie where charges may be."""
+        raise TypeError(f"{type(self).__name__} must know its own side")
+
+    def images(self, followed: float) -> Images:
+        """The conductor; followed : m, of :func:`followed`."""
+        raise TypeError(f"{type(self).__name__} must make its images")
+
+
+class MirrorForm(ClosedForm):
     """Base of the kinds whose force grows without bound towards the conductor."""
 
     closest: Closest = key(
@@ -50,6 +54,10 @@ class MirrorForm(ImagesForm):
         default="auto",
         example="10 nm",
     )
+
+    def length(self, followed: float) -> float:
+        """The distance c, m, where `followed` is what the step can follow."""
+        return followed if isinstance(self.closest, str) else self.closest
 
 
 def followed(step: float, charge: NDArray[np.float64], mass: NDArray[np.float64]) -> float:

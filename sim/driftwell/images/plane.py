@@ -26,8 +26,8 @@ class PlaneImages(MirrorForm):
     def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
         return np.asarray(np.array(self.normal) @ (position.T - self.point).T > 0.0)
 
-    def images(self, closest: float) -> Images:
-        return plane_images(np.array(self.point), np.array(self.normal), closest)
+    def images(self, followed: float) -> Images:
+        return plane_images(np.array(self.point), np.array(self.normal), self.length(followed))
 
     def words(self) -> str:
         place = ", ".join(f"{each * 1e3:.6g}" for each in self.point)

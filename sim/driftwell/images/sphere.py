@@ -24,8 +24,8 @@ class SphereImages(MirrorForm):
         away = position.T - self.centre
         return np.asarray(np.einsum("ij,ij->i", away, away) < self.radius**2)
 
-    def images(self, closest: float) -> Images:
-        return sphere_images(np.array(self.centre), self.radius, closest)
+    def images(self, followed: float) -> Images:
+        return sphere_images(np.array(self.centre), self.radius, self.length(followed))
 
     def words(self) -> str:
         return f"of a sphere of radius {self.radius * 1e3:.6g} mm around the charges"

@@ -121,7 +121,7 @@ def header_of(file: Any) -> Header:
             f"{file.filename}: written in format {found}, and this driftwell {__version__} reads "
             f"up to {FORMAT_VERSION}; read it with driftwell {file.attrs['driftwell_version']}."
         )
-    values = attributes_of(file, HEADER)
+    values = attributes_of(file, (entry for entry in HEADER if entry.since <= found))
     digest = values.pop("scenario_sha256")
     entry = dataset("clouds")
     header = Header(

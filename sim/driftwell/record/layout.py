@@ -23,12 +23,13 @@ _NUMBERS = {"float64": "<f8", "int64": "<i8"}
 
 @dataclass(frozen=True, slots=True)
 class Attribute:
-    """One attribute: a number, a text, or a list of texts."""
+    """One attribute: a number, a text, or a list of texts; `since` : the first format with it."""
 
     name: str
     kind: Kind
     unit: str
     help: str
+    since: int = 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -327,7 +328,7 @@ HEADER = (
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
-    Attribute("images", "text", "", "the conductors that answer to the charges; empty: none"),
+    Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of the walls, in order"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
