@@ -18,6 +18,8 @@ from driftwell.fields.table import field_tables
 from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.images.form import ClosedForm, followed
+from driftwell.images.image_sum import Images
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
@@ -92,6 +94,7 @@ class Assembly:
             coulomb_method=summation.method,
             coulomb_because=summation.because,
             coulomb_accuracy=scenario.coulomb.accuracy,
+            images="" if scenario.images is None else scenario.images.words(),
             clouds=self.clouds,
             species=self.species,
             walls=tuple(wall.name for wall in scenario.wall),
@@ -130,7 +133,23 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
+            self.images(),
         )
+
+    def images(self) -> Images | None:
+        """The conductors that answer to the charges, made; None where none does."""
+        form = self.scenario.images
+        if form is None:
+            return None
+        if not isinstance(form, ClosedForm):
+            raise ScenarioError(
+                '[images] kind = "electrodes": the scenario has no [[electrode]]; needs one at '
+                "least."
+            )
+        particles = self.particles
+        kick = self.choice.step * self.scenario.stepping.coulomb_every
+        charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+        return form.images(followed(kick, charge, mass))
 
 
 def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
@@ -150,6 +169,7 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
     _check_births(scenario, particles)
+    _check_sides(scenario, particles)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests)
     samples = scenario.duration / every if requests else 0.0
@@ -227,6 +247,22 @@ def _check_births(scenario: Scenario, particles: Particles) -> None:
                 f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
                 "Make the cloud smaller, move it, or enlarge the wall."
             )
+
+
+def _check_sides(scenario: Scenario, particles: Particles) -> None:
+    """Refuse charges born where the conductor that answers to them is, or beyond it."""
+    form = scenario.images
+    if not isinstance(form, ClosedForm):
+        return
+    outside = np.flatnonzero(~form.inside(particles.position))
+    if outside.size:
+        x, y, z = particles.position[:, outside[0]]
+        cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+        raise ScenarioError(
+            f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin on the '
+            f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
+            f"{z:.6g}) m. Move the cloud, or the conductor."
+        )
 
 
 def _traces(scenario: Scenario) -> list[TraceRequest]:
