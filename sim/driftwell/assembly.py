@@ -149,7 +149,8 @@ class Assembly:
         particles = self.particles
         kick = self.choice.step * self.scenario.stepping.coulomb_every
         charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
-        return form.images(followed(kick, charge, mass))
+        away = form.distance(particles.position)
+        return form.images(followed(kick, charge, mass, particles.velocity, away))
 
 
 def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
@@ -254,7 +255,7 @@ def _check_sides(scenario: Scenario, particles: Particles) -> None:
     form = scenario.images
     if not isinstance(form, ClosedForm):
         return
-    outside = np.flatnonzero(~form.inside(particles.position))
+    outside = np.flatnonzero(~(form.distance(particles.position) > 0.0))
     if outside.size:
         x, y, z = particles.position[:, outside[0]]
         cloud = scenario.cloud[int(particles.cloud[outside[0]])].name

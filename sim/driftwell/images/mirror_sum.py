@@ -34,6 +34,7 @@ import numpy as np
 from numba import prange
 from numpy.typing import NDArray
 
+from driftwell.forms import spelled
 from driftwell.images.image_sum import SIGNATURE, THREADED, ImageSum
 from driftwell.kernels import inner_kernel, kernel, threaded_kernel
 from driftwell.kernels.cache_lines import room
@@ -50,6 +51,9 @@ from driftwell.kernels.pointers import CompiledFunction
 Floats = NDArray[np.float64]
 
 PLANE, SPHERE = 0, 1
+_NEAR, _MANY = 8.0, 0.1
+"""Distance in lengths `closest` from which on forces are right to 2 %; the share of charges nearer
+than that which is said."""
 NEAREST2 = 1e-100
 """m^2, added to every squared distance: what pushes along no distance pushes nowhere."""
 
@@ -70,8 +74,23 @@ class MirrorImages:
         return ImageSum(CompiledFunction(summed, SIGNATURE), self.table, room((4, n)))
 
     def doubt(self, position: Floats, charge: Floats) -> str | None:
-        """Nothing: the sum errs by rounding, and near the conductor as `closest` says."""
-        return None
+        """Where many charges are so near the conductor that `closest` weakens their force."""
+        closest = float(self.table[4])
+        away = position[:, charge != 0.0].T - self.table[1:4]
+        if not len(away) or closest == 0.0:
+            return None
+        if self.table[0] == PLANE:
+            depth = away @ self.table[5:8]
+        else:
+            depth = self.table[5] - np.linalg.norm(away, axis=1)
+        share = float(np.mean(depth < _NEAR * closest))
+        if share <= _MANY:
+            return None
+        return (
+            f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} times "
+            f"{spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by more "
+            "than 2 % there. Where that matters, take a shorter step, or state [images] closest"
+        )
 
 
 def plane_images(point: Floats, normal: Floats, closest: float) -> MirrorImages:

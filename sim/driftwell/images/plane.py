@@ -23,8 +23,8 @@ class PlaneImages(MirrorForm):
         default=(0.0, 0.0, 1.0),
     )
 
-    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
-        return np.asarray(np.array(self.normal) @ (position.T - self.point).T > 0.0)
+    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.asarray((position.T - self.point) @ np.array(self.normal))
 
     def images(self, followed: float) -> Images:
         return plane_images(np.array(self.point), np.array(self.normal), self.length(followed))

@@ -20,9 +20,8 @@ class SphereImages(MirrorForm):
     radius: Positive[Length] = key("inner radius", example="5 mm")
     centre: Point = key("the sphere's centre", default=(0.0, 0.0, 0.0))
 
-    def inside(self, position: NDArray[np.float64]) -> NDArray[np.bool_]:
-        away = position.T - self.centre
-        return np.asarray(np.einsum("ij,ij->i", away, away) < self.radius**2)
+    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.asarray(self.radius - np.linalg.norm(position.T - self.centre, axis=1))
 
     def images(self, followed: float) -> Images:
         return sphere_images(np.array(self.centre), self.radius, self.length(followed))

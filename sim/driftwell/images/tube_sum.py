@@ -11,8 +11,13 @@ all positive, and downwards by
 which only adds. Eight nodes stand in the lanes. Blocks of nodes are dealt to 8 groups with sums of
 their own, which are added in order: the bits do not depend on the number of threads.
 
-Beyond the wall, where a charge may be within the step that ends on it, the potential is that of
-the point of the wall before it, so that it stays bounded and continuous.
+The force grows without bound towards the wall, and with it the number of orders. So a charge at the
+distance r from the axis is taken to be at
+
+    r' = s r,   s = (1 + t)^(-1/32),   t = (r / reach)^32                                   (2)
+
+in its direction, which is never beyond `reach`; the field is that of the energy as a function of r,
+by the chain rule, so the energy is conserved all the same. Field and potential err by about t.
 
 References
 ----------
@@ -128,19 +133,16 @@ def _spread(
     position: np.ndarray, charge: np.ndarray, table: np.ndarray
 ) -> tuple[float, float, float]:
     """Largest distance from the axis, and lowest and highest place along it, in radii."""
-    along = int(table[0])
-    a = table[4]
-    u, v, w = position[(along + 1) % 3], position[(along + 2) % 3], position[along]
-    cu, cv, cw = table[1 + (along + 1) % 3], table[1 + (along + 2) % 3], table[1 + along]
-    far2 = (_SMALL * a) ** 2
+    far2 = _SMALL**2
     low, high = math.inf, -math.inf
     for i in range(charge.size):
         if charge[i] != 0.0:
-            far2 = max(far2, (u[i] - cu) ** 2 + (v[i] - cv) ** 2)
-            low, high = min(low, w[i]), max(high, w[i])
+            u, v, w, _, _ = _place(position, table, i)
+            far2 = max(far2, u * u + v * v)
+            low, high = min(low, w), max(high, w)
     if low > high:
-        low = high = cw
-    return math.sqrt(far2) / a, (low - cw) / a, (high - cw) / a
+        low = high = 0.0
+    return math.sqrt(far2), low, high
 
 
 @outer_kernel
@@ -184,17 +186,21 @@ def _group(
 @inner_kernel
 def _place(
     position: np.ndarray, table: np.ndarray, i: int
-) -> tuple[float, float, float, float]:
-    """Coordinates of a charge across the axis and along it, and the factor beyond the wall."""
+) -> tuple[float, float, float, float, float]:
+    """Where a charge is taken to be, u, v and w in radii; s of (2), and t."""
     along = int(table[0])
     one, two = (along + 1) % 3, (along + 2) % 3
     a = table[4]
     u = (position[one, i] - table[1 + one]) / a
     v = (position[two, i] - table[1 + two]) / a
     w = (position[along, i] - table[1 + along]) / a
-    r2 = u * u + v * v
-    back = 1.0 / math.sqrt(r2) if r2 > 1.0 else 1.0
-    return u * back, v * back, w, back
+    t = (u * u + v * v) / (table[8] * table[8])
+    t *= t
+    t *= t
+    t *= t
+    t *= t
+    root = math.sqrt(math.sqrt(math.sqrt(math.sqrt(math.sqrt(1.0 + t)))))
+    return u / root, v / root, w, 1.0 / root, t
 
 
 @inner_kernel
@@ -213,7 +219,7 @@ def _collect(
     for i in range(32 * (orders + 1)):
         work_row[i] = 0.0
     for i in range(charge.size):
-        u, v, w, _ = _place(position, table, i)
+        u, v, w, _, _ = _place(position, table, i)
         for lane in range(8):
             phase = table[first + lane] * (w - middle)
             work_row[trig + 16 * i + lane] = math.cos(phase)
@@ -252,7 +258,7 @@ def _hand_out(
     k = load(table, first)
     half_k2 = k * k * lanes(0.5)
     for i in range(n):
-        u, v, _, _ = _place(position, table, i)
+        u, v, _, s, t = _place(position, table, i)
         _bessel(table, first, orders, u * u + v * v, lam, work_row)
         cos, sin = load(work_row, trig + 16 * i), load(work_row, trig + 16 * i + 8)
         level = bulge = eu = ev = ew = lanes(0.0)
@@ -277,8 +283,11 @@ def _hand_out(
             rate_re, rate_im = (m + 1.0) * re, (m + 1.0) * im
             re, im = re * u - im * v, re * v + im * u
         outward = total(bulge * half_k2)
-        work_row[out + i] += total(eu) + u * outward
-        work_row[out + n + i] += total(ev) + v * outward
+        fu, fv = total(eu) + u * outward, total(ev) + v * outward
+        r2 = u * u + v * v
+        less = t / (1.0 + t) * (fu * u + fv * v) / r2 if t > 0.0 else 0.0
+        work_row[out + i] += s * (fu - less * u)
+        work_row[out + n + i] += s * (fv - less * v)
         work_row[out + 2 * n + i] += total(ew * k)
         work_row[out + 3 * n + i] += total(level)
 

@@ -17,7 +17,7 @@ for cos k z over the length of a *level*: lengths up to 4 a, 8 a, ... 64 a.
 References
 ----------
 J. D. Jackson, Classical Electrodynamics, 3rd ed. (1999), problem 3.23 (b).
-M. Abramowitz and I. A. Stegun, Handbook of Mathematical Functions (1964), 9.6.10 and 9.6.9.
+M. Abramowitz and I. A. Stegun, Handbook of Mathematical Functions (1964), 9.6.10, 9.6.26.
 """
 
 from __future__ import annotations
@@ -26,7 +26,7 @@ import math
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import gammaln, ive, kve
+from scipy.special import gammaln, i0e, k0e, k1e
 
 Floats = NDArray[np.float64]
 
@@ -37,9 +37,11 @@ TOLERANCE = 1e-9
 DIGITS = -math.log(TOLERANCE)
 HEAD = 10
 """Entries of the table before those of the levels: axis, centre, radius, orders, widest k, levels,
-and two that are not used."""
+reach, and one that is not used."""
 _PHASE, _WIDEST = 20.0, 4.0
 _FIRST, _PANEL = 24, 16
+_ABOVE = 30
+"""Orders above the highest, and above k, from which the ratios of I_m are taken downwards."""
 
 
 def orders_for(reach: float) -> int:
@@ -69,15 +71,25 @@ def nodes(length: float, widest: float) -> tuple[Floats, Floats]:
 
 
 def coefficients(k: Floats, weight: Floats, orders: int) -> Floats:
-    """C_mk of (2), (orders + 1, nodes)."""
+    """C_mk of (2), (orders + 1, nodes).
+
+    From the ratios K_{m+1}/K_m, upwards, and I_{m+1}/I_m, downwards, which neither grow nor vanish.
+    """
     m = np.arange(orders + 1)[:, None]
-    with np.errstate(all="ignore"):
-        bend = np.log(kve(m, k)) - np.log(ive(m, k)) - 2.0 * k
-        found = bend + 2.0 * (m * np.log(0.5 * k) - gammaln(m + 1.0))
-    # where K_m overflows, K_m I_m = 1/(2 m) to 1e-10 and the factors before L_m cancel
-    small = np.log(1.0 / (2.0 * np.maximum(m, 1)))
-    found = np.where(np.isfinite(found), found, np.broadcast_to(small, found.shape))
+    log_k, log_i = np.empty((orders + 1, k.size)), np.empty((orders + 1, k.size))
+    log_k[0], log_i[0] = np.log(k0e(k)) - k, np.log(i0e(k)) + k
+    ratio = k1e(k) / k0e(k)
+    for order in range(1, orders + 1):
+        log_k[order] = log_k[order - 1] + np.log(ratio)
+        ratio = 2.0 * order / k + 1.0 / ratio
+    ratio = np.zeros(k.size)
+    for order in range(orders + _ABOVE + int(k[-1]), -1, -1):
+        ratio = 1.0 / (2.0 * (order + 1) / k + ratio)
+        if order < orders:
+            log_i[order + 1] = np.log(ratio)
+    log_i = np.cumsum(log_i, axis=0)
     share = np.where(m == 0, 1.0, 2.0)
+    found = log_k - log_i + 2.0 * (m * np.log(0.5 * k) - gammaln(m + 1.0))
     return np.asarray((2.0 / math.pi) * share * weight * np.exp(found))
 
 
@@ -88,7 +100,7 @@ def tube_table(axis: int, centre: Floats, radius: float, reach: float) -> Floats
     to `orders` of 8 coefficients.
     """
     orders, widest = orders_for(reach), widest_for(reach)
-    head = [axis, *centre, radius, orders, widest, len(LENGTHS), 0.0, 0.0]
+    head = [axis, *centre, radius, orders, widest, len(LENGTHS), reach, 0.0]
     parts: list[Floats] = []
     index: list[float] = []
     start = HEAD + 3 * len(LENGTHS)
