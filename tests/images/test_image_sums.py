@@ -53,7 +53,7 @@ def test_the_field_is_minus_the_gradient_of_the_energy(case: Case) -> None:
     for i in (0, 5):
         for axis in range(3):
             slopes = []
-            for h in (1e-3, 5e-4):
+            for h in (2e-4, 1e-4):
                 ends = []
                 for sign in (1.0, -1.0):
                     moved = place.copy()

@@ -111,15 +111,22 @@ def test_far_along_a_tube_charges_no_longer_feel_each_other(apart: float) -> Non
     assert abs(left) <= 4.0 * math.exp(-2.404825557695773 * apart) + 2e-9
 
 
+@pytest.fixture(scope="module")
+def plates() -> PanelImages:
+    """Two square plates 1 apart, of 12, with finer triangles in the middle."""
+    flat = sheet(12.0, 18, 4.0)
+    return PanelImages(np.concatenate([put(flat, 2, 0.0), put(flat, 2, 1.0)]))
+
+
 @pytest.mark.parametrize("x", [0.5, 0.2])
-def test_two_plates_as_triangles_have_the_potential_of_the_psi_function(x: float) -> None:
+def test_two_plates_as_triangles_have_the_potential_of_the_psi_function(
+    x: float, plates: PanelImages
+) -> None:
     """phi = K q / (2 D) [psi(x/D) + psi(1 - x/D) + 2 gamma]; plates of 12 D, 1 % and less.
 
     The series of images, summed (reference case I6; digamma of scipy).
     """
-    flat = sheet(12.0, 20, 4.0)
-    images = PanelImages(np.concatenate([put(flat, 2, 0.0), put(flat, 2, 1.0)]))
-    found = images_at(images, at((0.013, -0.021, x)), 1.0)[3, 0]
+    found = images_at(plates, at((0.013, -0.021, x)), 1.0)[3, 0]
     expected = 0.5 * (digamma(x) + digamma(1.0 - x) + 2.0 * np.euler_gamma)
     assert expected == pytest.approx(found, rel=2e-3)
     assert abs(found / expected - 1.0) > 1e-7

@@ -24,7 +24,9 @@ DEFAULT_PANELS, MOST_PANELS = 2000, 20_000
 Panels = Annotated[Count, Bound(least=50, most=MOST_PANELS)]
 _GRADE = 1.5
 """Power by which panels are smaller towards sharp edges."""
-_ATTEMPTS, _NEAR_ENOUGH = 12, 0.15
+_TURNS = (math.pi / 8.0, math.pi / 5.0, math.pi / 3.0)
+"""rad between facets of curved surfaces, the finest that gives few enough triangles."""
+_ATTEMPTS, _NEAR_ENOUGH, _TOO_MANY = 8, 0.15, 1.4
 
 
 class ElectrodeImages(ImagesForm):
@@ -75,33 +77,41 @@ def electrode_images(
 def triangles_of(solids: Sequence[Solid], panels: int, length: float | None) -> Floats:
     """About `panels` triangles (k, 3 corners, 3 axes), m, of all bodies, alike in size."""
     ended = [_ended(solid, length) for solid in solids]
+    for turn in _TURNS:
+        best = _cut(ended, panels, turn)
+        if len(best) <= _TOO_MANY * panels:
+            return best
+    raise ScenarioError(
+        f"[images]: the electrodes cannot be cut into about {panels} triangles (the least found: "
+        f"{len(best)}): their shapes have more parts than that. Raise `panels`, up to "
+        f"{MOST_PANELS}."
+    )
+
+
+def _cut(solids: Sequence[Solid], panels: int, turn: float) -> Floats:
+    """The number of triangles nearest to `panels` that some sizes of them give.
+
+    turn : rad, largest angle between neighbouring normals of a curved surface
+    """
     low, high = 0.0, math.inf
-    size = _extent(ended)
+    extent = size = _extent(solids)
     best: Floats | None = None
     for _ in range(_ATTEMPTS):
-        found = _corners(ended, size)
-        if len(found) <= MOST_PANELS and (
-            best is None or abs(len(found) - panels) < abs(len(best) - panels)
-        ):
+        found = _corners(solids, size, turn)
+        if best is None or abs(len(found) - panels) < abs(len(best) - panels):
             best = found
         if abs(len(found) - panels) <= _NEAR_ENOUGH * panels:
             break
         if len(found) > panels:
+            if size >= extent:  # no larger ones fit
+                break
             low = max(low, size)
         else:
             high = min(high, size)
         guess = size * math.sqrt(len(found) / panels)
-        inside = low < guess < high
-        size = guess if inside else math.sqrt(low * high) if low > 0.0 else 0.5 * high
-        if not math.isfinite(size):
-            break
-    if best is None or len(best) > 4 * panels:
-        count = "none" if best is None else str(len(best))
-        raise ScenarioError(
-            f"[images]: the electrodes cannot be cut into about {panels} triangles (the least "
-            f"found: {count}): their shapes have more parts than that. Raise `panels`, up to "
-            f"{MOST_PANELS}."
-        )
+        size = guess if low < guess < high else math.sqrt(max(low, 0.1 * high) * high)
+    if best is None:
+        raise ScenarioError("[images]: there is no electrode to cut into triangles.")
     return best
 
 
@@ -116,9 +126,9 @@ def _ended(solid: Solid, length: float | None) -> Solid:
     return replace(solid, half_length=0.5 * length)
 
 
-def _corners(solids: Sequence[Solid], size: float) -> Floats:
+def _corners(solids: Sequence[Solid], size: float, turn: float) -> Floats:
     try:
-        meshes = [mesh_of(solid, size, grade=_GRADE, fair=True) for solid in solids]
+        meshes = [mesh_of(solid, size, turn, grade=_GRADE, fair=True) for solid in solids]
     except ValueError as fault:
         raise ScenarioError(
             f"[images]: an electrode cannot be cut into triangles ({fault})."
