@@ -45,7 +45,7 @@ each_case = pytest.mark.parametrize("case", CASES, ids=lambda case: case.name)
 
 @each_case
 def test_the_field_is_minus_the_gradient_of_the_energy(case: Case) -> None:
-    """By differences of the energy of all charges, extrapolated twice: 1e-9 of the largest force."""
+    """By differences of the energy of all charges, extrapolated: 3e-9 of the largest force."""
     place, charge = cloud(12, SIZE)
     if "closest" in case.name:
         place[2, 0] = -0.41  # just beyond the plane, or near the sphere

@@ -52,7 +52,9 @@ CASES = [
 each_case = pytest.mark.parametrize("case", CASES, ids=lambda case: case.name)
 
 
-def rows(case: Case, step: float = 1e-8, coulomb: Coulomb = SOFT, **options: Any) -> list[LedgerRow]:
+def rows(
+    case: Case, step: float = 1e-8, coulomb: Coulomb = SOFT, **options: Any
+) -> list[LedgerRow]:
     """The ledger of 30 macro-charges that fly apart, or of other options."""
     random = np.random.default_rng(5)
     start = ions(
@@ -119,9 +121,7 @@ def test_charges_feel_pairs_and_images_in_one_kick(n: int, every: int) -> None:
     random = np.random.default_rng(8)
     place, speed = random.uniform(-1e-4, 1e-4, (n, 3)), random.normal(0.0, 30.0, (n, 3))
     images, h = CASES[1].images, 1e-8
-    moving = loop(
-        ions(place, speed), 10 * h, h, coulomb=DIRECT, coulomb_every=every, images=images
-    )
+    moving = loop(ions(place, speed), 10 * h, h, coulomb=DIRECT, coulomb_every=every, images=images)
     to_end(moving)
     other = ions(place, speed)
     x, u, work = other.position, other.velocity, workspace(n)
@@ -158,7 +158,7 @@ def test_softening_of_the_pairs_leaves_images_as_they_are() -> None:
 
 
 def test_many_charges_in_blocks_close_their_accounts_too() -> None:
-    """From 16384 on passes go block by block; images of a tube, whose cost grows with the number."""
+    """From 16384 on passes go block by block; a tube, whose cost grows with the number."""
     random = np.random.default_rng(1)
     n = 17_000
     start = ions(random.uniform(-5e-5, 5e-5, (n, 3)), random.normal(0.0, 50.0, (n, 3)), weight=10.0)

@@ -179,8 +179,8 @@ def test_a_tube_of_triangles_of_a_length_pulls_as_the_endless_one() -> None:
 def test_a_plate_is_pulled_as_the_charges_before_it_are() -> None:
     """The force on charges before a plane is minus that on its surface charge.
 
-    Maxwell's stress, sigma^2 / (2 eps0) over the plane (Jackson, section 1.11 and problem 1.9), with
-    sigma of the mirrored charges; integrated in polar coordinates.
+    Maxwell's stress, sigma^2 / (2 eps0) over the plane (Jackson, section 1.11 and problem 1.9),
+    with sigma of the mirrored charges; integrated in polar coordinates.
     """
     place = at((0.1, 0.2, 0.5), (-0.4, 0.1, 0.7), (0.3, -0.5, 0.4))
     charge = np.array([1.0, -0.6, 0.8])

@@ -7,10 +7,10 @@ from typing import Any
 import numpy as np
 import pytest
 
-from driftwell.record.resume_state import particles_of, particles_state
-from driftwell.stepping.schedule import RECORD
 from driftwell.images.mirror_sum import plane_images
 from driftwell.images.tube_sum import TubeImages
+from driftwell.record.resume_state import particles_of, particles_state
+from driftwell.stepping.schedule import RECORD
 from tests.moving import DIRECT, OFF, TREE
 from tests.same_bits.busy_trap import busy_trap, load
 
@@ -68,7 +68,12 @@ def test_a_loop_taken_up_between_any_two_calls_changes_no_bit(
     scheme: str, coulomb_every: int, coulomb: Any, images: Any
 ) -> None:
     """With losses, bounces, passages, a jump, traces, within and at the ends of intervals."""
-    options = {"scheme": scheme, "coulomb_every": coulomb_every, "coulomb": coulomb, "images": images}
+    options = {
+        "scheme": scheme,
+        "coulomb_every": coulomb_every,
+        "coulomb": coulomb,
+        "images": images,
+    }
     never, unbroken = moved(1 << 40, 1 << 40, **options)
     for every in (2, 5):
         often, found = moved(3, every, **options)

@@ -25,8 +25,9 @@ class CylinderImages(ClosedForm):
     axis: Literal["x", "y", "z"] = key("direction of the tube's axis", default="z")
     centre: Point = key("a point of the axis", default=(0.0, 0.0, 0.0))
     reach: Reach = key(
-        "distance from the axis, in radii, beyond which the force does not grow; it is right to 1e-4 "
-        "within 0.75 of it, to 1 % within 0.85; the nearer to 1, the more a charge out there costs",
+        "distance from the axis, in radii, beyond which the force does not grow; it is right to "
+        "1e-4 within 0.75 of it, to 1 % within 0.85; the nearer to 1, the more a charge out there "
+        "costs",
         default=0.9,
     )
 

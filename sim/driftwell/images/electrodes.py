@@ -134,9 +134,7 @@ def _corners(solids: Sequence[Solid], size: float, turn: float) -> Floats:
             f"[images]: an electrode cannot be cut into triangles ({fault})."
         ) from fault
     found = np.concatenate([mesh.vertices[mesh.triangles] for mesh in meshes])
-    area2 = np.linalg.norm(
-        np.cross(found[:, 1] - found[:, 0], found[:, 2] - found[:, 0]), axis=1
-    )
+    area2 = np.linalg.norm(np.cross(found[:, 1] - found[:, 0], found[:, 2] - found[:, 0]), axis=1)
     longest = np.linalg.norm(found - np.roll(found, 1, axis=1), axis=2).max(axis=1)
     return np.asarray(found[area2 > 1e-9 * longest**2])
 

@@ -50,8 +50,8 @@ class MirrorForm(ClosedForm):
     """Base of the kinds whose force grows without bound towards the conductor."""
 
     closest: Closest = key(
-        "distance c from the conductor within which the force stops growing; it errs by 1.5 (c/d)^2 "
-        'at the distance d; "auto": what the step can follow',
+        "distance c from the conductor within which the force stops growing; it errs by "
+        '1.5 (c/d)^2 at the distance d; "auto": what the step can follow',
         default="auto",
         example="10 nm",
     )

@@ -147,6 +147,6 @@ def remark(estimates: Sequence[Importance], on: bool, share: float = SHARE) -> s
     )
     return (
         f'Images are left out: conductors {spelled(worst.distance, "m", 2)} from "{worst.name}" '
-        f"would pull it with {spelled(worst.image, 'V/m', 2)}, {against}, and move a free charge by "
-        f"up to {spelled(worst.shift, 'm', 2)} in the run. See [images]."
+        f"would pull it with {spelled(worst.image, 'V/m', 2)}, {against}, and move a free charge "
+        f"by up to {spelled(worst.shift, 'm', 2)} in the run. See [images]."
     )

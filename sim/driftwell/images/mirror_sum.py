@@ -87,14 +87,14 @@ class MirrorImages:
         if share <= _MANY:
             return None
         return (
-            f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} times "
-            f"{spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by more "
-            "than 2 % there. Where that matters, take a shorter step, or state [images] closest"
+            f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} "
+            f"times {spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by "
+            "more than 2 % there. Where that matters, take a shorter step, or state [images] closest"
         )
 
 
 def plane_images(point: Floats, normal: Floats, closest: float) -> MirrorImages:
-    """A grounded plane through `point`, m; the charges are where the unit vector `normal` points."""
+    """A grounded plane through `point`, m; charges are where the unit vector `normal` points."""
     return MirrorImages(np.array([PLANE, *point, closest, *normal], dtype=np.float64))
 
 
@@ -192,7 +192,11 @@ def _eight(
         ez = fused(push, dz, ez)
         inward = fused(push, other, inward)
     scale = lanes(-constant)
-    gx, gy, gz = load_some(work[1], i, left), load_some(work[2], i, left), load_some(work[3], i, left)
+    gx, gy, gz = (
+        load_some(work[1], i, left),
+        load_some(work[2], i, left),
+        load_some(work[3], i, left),
+    )
     store_some(out_image[0], i, left, scale * fused(inward, gx, ex))
     store_some(out_image[1], i, left, scale * fused(inward, gy, ey))
     store_some(out_image[2], i, left, scale * fused(inward, gz, ez))

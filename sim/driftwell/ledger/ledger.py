@@ -17,6 +17,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field, fields
+from dataclasses import field as filled
 
 import numpy as np
 from numpy.typing import NDArray
@@ -92,8 +93,8 @@ class LedgerRow:
     angular_allowance: float
     coulomb_error: float
     image: float = 0.0
-    impulse_images: Floats = field(default_factory=lambda: np.zeros(3))
-    torque_images: Floats = field(default_factory=lambda: np.zeros(3))
+    impulse_images: Floats = filled(default_factory=lambda: np.zeros(3))
+    torque_images: Floats = filled(default_factory=lambda: np.zeros(3))
 
 
 @dataclass(frozen=True, slots=True)
