@@ -89,7 +89,8 @@ class MirrorImages:
         return (
             f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} "
             f"times {spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by "
-            "more than 2 % there. Where that matters, take a shorter step, or state [images] closest"
+            "more than 2 % there. Where that matters, take a shorter step, or state [images] "
+            "closest"
         )
 
 
