@@ -157,7 +157,7 @@ def test_the_influence_of_triangles_is_symmetric_and_positive() -> None:
     assert (matrix == matrix.T).all()
     assert np.linalg.eigvalsh(matrix).min() > 0.0
     total = 1.0 / np.linalg.inv(matrix).sum()
-    assert 1.0 / 0.6607 == pytest.approx(total, rel=0.02)  # the cube's capacity, W. J. Hwang, 2004
+    assert 1.0 / 0.6607 == pytest.approx(total, rel=0.02)  # the cube's capacity (reference case I5)
 
 
 def test_triangles_upon_each_other_are_refused_in_words() -> None:
