@@ -13,6 +13,7 @@ from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.images.image_sum import Images
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.stepping.form import Stepping
@@ -75,6 +76,7 @@ def loop(
     samples: ArrayLike = (),
     traced: Sequence[Traced] = (),
     threads: int = 1,
+    images: Images | None = None,
     state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
@@ -102,6 +104,7 @@ def loop(
         traced,
         threads,
         state,
+        images,
     )
 
 

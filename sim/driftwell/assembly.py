@@ -18,6 +18,8 @@ from driftwell.fields.table import field_tables
 from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.images.form import ClosedForm, followed
+from driftwell.images.image_sum import Images
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
@@ -104,6 +106,7 @@ class Assembly:
             coulomb_accuracy=scenario.coulomb.accuracy,
             field_error=0.0 if self.acting is None else self.acting.solved.error,
             field_digest="" if self.acting is None else self.acting.solved.digest,
+            images="" if scenario.images is None else scenario.images.words(),
             clouds=self.clouds,
             species=self.species,
             walls=tuple(wall.name for wall in self.walls),
@@ -143,7 +146,24 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
+            self.images(),
         )
+
+    def images(self) -> Images | None:
+        """The conductors that answer to the charges, made; None where none does."""
+        form = self.scenario.images
+        if form is None:
+            return None
+        if not isinstance(form, ClosedForm):
+            raise ScenarioError(
+                '[images] kind = "electrodes": the scenario has no [[electrode]]; needs one at '
+                "least."
+            )
+        particles = self.particles
+        kick = self.choice.step * self.scenario.stepping.coulomb_every
+        charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+        away = form.distance(particles.position)
+        return form.images(followed(kick, charge, mass, particles.velocity, away))
 
 
 def assembled(
@@ -169,6 +189,7 @@ def assembled(
     acting = acting_field(scenario, loaded.folder, told)
     if acting is not None:
         _check_within(scenario, particles, acting)
+    _check_sides(scenario, particles)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests, acting)
     samples = scenario.duration / every if requests else 0.0
@@ -260,6 +281,22 @@ def _check_within(scenario: Scenario, particles: Particles, acting: ActingField)
             f"electrodes' field is not worked out; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m, "
             f"and the field is known for {acting.solved.where()}. Give [electrodes] a larger "
             "`region`, or move the cloud."
+        )
+
+
+def _check_sides(scenario: Scenario, particles: Particles) -> None:
+    """Refuse charges born where the conductor that answers to them is, or beyond it."""
+    form = scenario.images
+    if not isinstance(form, ClosedForm):
+        return
+    outside = np.flatnonzero(~(form.distance(particles.position) > 0.0))
+    if outside.size:
+        x, y, z = particles.position[:, outside[0]]
+        cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+        raise ScenarioError(
+            f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin on the '
+            f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
+            f"{z:.6g}) m. Move the cloud, or the conductor."
         )
 
 

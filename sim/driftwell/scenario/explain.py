@@ -54,6 +54,8 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
     for detector in scenario.detector:
         yield "detector", detector.name, detector.words()
     yield "Coulomb", "", _coulomb_words(loaded)
+    if scenario.images is not None:
+        yield "images", "", scenario.images.words()
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:

@@ -11,6 +11,8 @@ from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Title, key, one_of
+from driftwell.images.form import ImagesForm
+from driftwell.images.table import IMAGE_KINDS
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.species import SpeciesForm, bodies
 from driftwell.record.form import Record
@@ -23,11 +25,13 @@ if TYPE_CHECKING:
     AnyWall = WallForm
     AnyDetector = DetectorForm
     AnyQuestion = QuestionForm
+    AnyImages = ImagesForm
 else:
     AnyField = one_of(FIELD_KINDS)
     AnyWall = one_of(WALL_KINDS)
     AnyDetector = one_of(DETECTOR_KINDS)
     AnyQuestion = one_of(QUESTION_KINDS, by="ask")
+    AnyImages = one_of(IMAGE_KINDS)
 
 
 class Scenario(Form):
@@ -46,6 +50,9 @@ class Scenario(Form):
         "surfaces that record the charges passing them", default=()
     )
     coulomb: Coulomb = key("how the force between the charges is summed", default=Coulomb())
+    images: AnyImages | None = key(
+        "conductors that answer to the charges between them; left out: none does", default=None
+    )
     stepping: Stepping = key("how time is cut into steps", default=Stepping())
     record: Record = key("what is kept, and how often", default=Record())
     question: tuple[AnyQuestion, ...] = key("what the run is asked", default=())

@@ -52,6 +52,7 @@ class Extent:
     """How much a run is: numbers of things, and how the charges' own force is summed.
 
     surfaces : walls and detectors; detectors : those among them
+    images : bytes that sums over images take
     """
 
     charges: int
@@ -64,6 +65,7 @@ class Extent:
     snapshots: int
     coulomb: Coulomb
     detectors: int = 0
+    images: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -73,6 +75,7 @@ class Extent:
         return (
             BASE
             + sums
+            + self.images
             + self.charges * (PER_CHARGE + self.surfaces * PER_SURFACE)
             + self.tracked * PER_TRACKED
             + (self.records + self.samples) * PER_MARK
@@ -130,6 +133,7 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         snapshots=int(duration / (record.snapshots or duration)) + 1,
         coulomb=scenario.coulomb,
         detectors=len(scenario.detector),
+        images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
     )
 
 

@@ -23,6 +23,7 @@ import numpy as np
 
 from driftwell.coulomb.direct import PairSum, potential_at
 from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import (
     ANGULAR_WALLS,
@@ -34,7 +35,7 @@ from driftwell.stepping.accounts import (
 )
 from driftwell.stepping.blocks import BLOCK, CROSSED
 from driftwell.stepping.drift import helix
-from driftwell.stepping.forces import magnetic_at
+from driftwell.stepping.forces import magnetic_at, take_images
 from driftwell.stepping.motion import (
     CURSOR_EVENTS,
     CURSOR_OVERFLOW,
@@ -103,13 +104,21 @@ def meet_surfaces(
 
 @outer_kernel
 def take_out(
-    pair_sum: PairSum, plan: Plan, surfaces: SurfaceTable, charges: Charges, work: Work
+    pair_sum: PairSum,
+    images: CompiledFunction,
+    plan: Plan,
+    surfaces: SurfaceTable,
+    charges: Charges,
+    work: Work,
 ) -> None:
     """Take the charges that are LEAVING out of all sums, and put them where they were lost.
 
     What they carry is entered in the accounts; their energy in the fields is entered by the loop,
     as the difference the renewed forces show.
     """
+    if plan.images != 0:
+        energy = take_images(images, plan, charges, work)
+        add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
     n = charges.alive.size
     one_by_one = plan.coulomb != 0
     if work.levels.shape[1] == n and plan.coulomb != 0:
@@ -132,6 +141,9 @@ def take_out(
             for s in range(surfaces.kind.size):
                 there = level(surfaces.kind[s], surfaces.parameter[s], x, y, z)
                 work.side[s, i] = 1 if there > 0.0 else -1
+    if plan.images != 0:
+        energy = take_images(images, plan, charges, work)
+        add_compensated(work.total, work.carry, ENERGY_WALLS, -energy)
 
 
 @outer_kernel

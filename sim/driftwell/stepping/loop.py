@@ -20,6 +20,7 @@ from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
@@ -112,8 +113,12 @@ class TimeLoop:
         traced: Sequence[Traced],
         threads: int,
         state: Mapping[str, NDArray[Any]] | None = None,
+        images: Images | None = None,
     ) -> None:
-        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then."""
+        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
+
+        images : the conductors that answer to the charges
+        """
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
@@ -129,7 +134,11 @@ class TimeLoop:
             extent2=stepping.extent**2,
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
+            images=int(images is not None),
         )
+        self._images, self._threads = images, threads
+        self._image_sum = no_images()
+        self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
         self.summation = Summation(coulomb, len(particles), threads, manner=manner)
@@ -202,13 +211,18 @@ class TimeLoop:
                 self.charges.position,
                 self.charges.charge,
                 self.particles.id,
-                self.work.coulomb,
+                self.work.pairs,
                 last=self.mark == len(self.schedule.steps),
             ),
         )
         if summation is not self.summation:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
+        if self._images is not None and not self._doubted:
+            doubt = self._images.doubt(self.charges.position, self.charges.charge)
+            if doubt is not None:
+                self._doubted = True
+                told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
         return error, told
 
     def remove_lost(self) -> None:
@@ -278,6 +292,7 @@ class TimeLoop:
         return int(
             burst(
                 self.summation.pair_sum,
+                self._image_sum.function,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -308,7 +323,10 @@ class TimeLoop:
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
         tiles, levels = self.summation.work, self.summation.method == "tree"
-        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse)
+        images = None
+        if self._images is not None:
+            images = self._image_sum = self._images.laid_out(n, self._threads)
+        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse, images)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
