@@ -23,6 +23,7 @@ from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
 from driftwell.record.header import Header, trace_name
 from driftwell.record.rows import tracked_ids
+from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -59,6 +60,7 @@ class Assembly:
     clouds : facts in the order of ``particles.cloud``
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
+    conductors : the electrodes as surfaces
     """
 
     scenario: Scenario
@@ -70,6 +72,7 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+    conductors: Conductors
 
     @property
     def tracked(self) -> NDArray[np.int64]:
@@ -94,7 +97,7 @@ class Assembly:
             coulomb_accuracy=scenario.coulomb.accuracy,
             clouds=self.clouds,
             species=self.species,
-            walls=tuple(wall.name for wall in scenario.wall),
+            walls=(*(wall.name for wall in scenario.wall), *self.conductors.names),
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -130,6 +133,7 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
+            self.conductors.table,
         )
 
 
@@ -149,7 +153,8 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
-    _check_births(scenario, particles)
+    conductors = Conductors.of(scenario, loaded.folder)
+    _check_births(scenario, particles, conductors)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests)
     samples = scenario.duration / every if requests else 0.0
@@ -167,6 +172,7 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
         choice,
         plan,
         _counted(extent, plan),
+        conductors,
     )
 
 
@@ -213,17 +219,21 @@ def _loaded_particles(
     return joined(parts), clouds
 
 
-def _check_births(scenario: Scenario, particles: Particles) -> None:
-    """Refuse charges born outside a wall that encloses a space."""
+def _check_births(scenario: Scenario, particles: Particles, conductors: Conductors) -> None:
+    """Refuse charges born outside a wall that encloses a space, or inside an electrode."""
+    for index, cloud in enumerate(scenario.cloud):
+        struck = conductors.struck(particles.position.T[particles.cloud == index])
+        if struck:
+            raise ScenarioError(f'[[cloud]] "{cloud.name}": {struck}.')
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
         outside = np.flatnonzero(row <= 0)
         if wall.closed() and outside.size:
             x, y, z = particles.position[:, outside[0]]
-            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+            born = scenario.cloud[int(particles.cloud[outside[0]])].name
             raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin '
+                f'[[cloud]] "{born}": {outside.size} of {len(particles)} charges do not begin '
                 f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
                 "Make the cloud smaller, move it, or enlarge the wall."
             )

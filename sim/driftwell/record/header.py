@@ -43,6 +43,7 @@ class Header:
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
+    walls : names of what takes charges: the walls, then the electrodes
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """

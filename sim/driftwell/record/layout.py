@@ -325,7 +325,7 @@ HEADER = (
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
     Attribute("species", "texts", "", "names of the species, in order"),
-    Attribute("walls", "texts", "", "names of the walls, in order"),
+    Attribute("walls", "texts", "", "names of what takes charges: the walls, then the electrodes"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

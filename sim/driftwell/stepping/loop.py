@@ -20,6 +20,7 @@ from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
@@ -112,12 +113,17 @@ class TimeLoop:
         traced: Sequence[Traced],
         threads: int,
         state: Mapping[str, NDArray[Any]] | None = None,
+        bodies: BodyTable | None = None,
     ) -> None:
-        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then."""
+        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
+
+        bodies : what else stops charges: owner k is surface number (walls + detectors + k)
+        """
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
+        self._bodies = body_table(()) if bodies is None else bodies
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
@@ -216,10 +222,11 @@ class TimeLoop:
         alive = self.charges.alive != 0
         if alive.all():
             return
-        side = self.work.side[:, alive]
+        side, clearance = self.work.side[:, alive], self.work.clearance
         self.particles = self.particles.kept(alive)
         self._arrange()
         self.work.side[:] = side
+        self.work.clearance[:] = clearance[alive] if clearance.size else clearance
 
     def state(self) -> dict[str, NDArray[Any]]:
         """Copies of everything a resume needs besides the particles, by name.
@@ -283,6 +290,7 @@ class TimeLoop:
                 self._scheme,
                 self._fields,
                 self._surfaces,
+                self._bodies,
                 self.charges,
                 self._trace,
                 self.schedule.time,
@@ -308,13 +316,14 @@ class TimeLoop:
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
         tiles, levels = self.summation.work, self.summation.method == "tree"
-        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse)
+        stopped = self._bodies.whole.shape[0] > 0
+        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse, stopped)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
         self._passes = passes_over(
-            n, self.plan, self._fields, self._surfaces, self.charges, self.work
+            n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),
