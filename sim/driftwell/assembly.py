@@ -18,6 +18,7 @@ from driftwell.fields.table import field_tables
 from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.images.electrodes import ElectrodeImages, electrode_images
 from driftwell.images.form import ClosedForm, followed
 from driftwell.images.image_sum import Images
 from driftwell.particles.species import bodies as known_bodies
@@ -25,6 +26,7 @@ from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
 from driftwell.record.header import Header, trace_name
 from driftwell.record.rows import tracked_ids
+from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -64,6 +66,7 @@ class Assembly:
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
     acting : the electrodes' solved field; None without electrodes
+    conductors : the electrodes as surfaces
     """
 
     scenario: Scenario
@@ -75,6 +78,7 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+    conductors: Conductors
     acting: ActingField | None = None
 
     @property
@@ -109,7 +113,7 @@ class Assembly:
             images="" if scenario.images is None else scenario.images.words(),
             clouds=self.clouds,
             species=self.species,
-            walls=tuple(wall.name for wall in self.walls),
+            walls=(*(wall.name for wall in self.walls), *self.conductors.names),
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -147,6 +151,7 @@ class Assembly:
             threads,
             state,
             self.images(),
+            self.conductors.table,
         )
 
     def images(self) -> Images | None:
@@ -154,11 +159,11 @@ class Assembly:
         form = self.scenario.images
         if form is None:
             return None
+        if isinstance(form, ElectrodeImages):
+            solids = [solid for own in self.conductors.bodies for solid in own]
+            return electrode_images(solids, form.panels, form.length)
         if not isinstance(form, ClosedForm):
-            raise ScenarioError(
-                '[images] kind = "electrodes": the scenario has no [[electrode]]; needs one at '
-                "least."
-            )
+            return None
         particles = self.particles
         kick = self.choice.step * self.scenario.stepping.coulomb_every
         charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
@@ -185,7 +190,8 @@ def assembled(
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
-    _check_births(scenario, particles)
+    conductors = Conductors.of(scenario, loaded.folder)
+    _check_births(scenario, particles, conductors)
     acting = acting_field(scenario, loaded.folder, told)
     if acting is not None:
         _check_within(scenario, particles, acting)
@@ -207,6 +213,7 @@ def assembled(
         choice,
         plan,
         _counted(extent, plan),
+        conductors,
         acting,
     )
 
@@ -254,17 +261,21 @@ def _loaded_particles(
     return joined(parts), clouds
 
 
-def _check_births(scenario: Scenario, particles: Particles) -> None:
-    """Refuse charges born outside a wall that encloses a space."""
+def _check_births(scenario: Scenario, particles: Particles, conductors: Conductors) -> None:
+    """Refuse charges born outside a wall that encloses a space, or inside an electrode."""
+    for index, cloud in enumerate(scenario.cloud):
+        struck = conductors.struck(particles.position.T[particles.cloud == index])
+        if struck:
+            raise ScenarioError(f'[[cloud]] "{cloud.name}": {struck}.')
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
         outside = np.flatnonzero(row <= 0)
         if wall.closed() and outside.size:
             x, y, z = particles.position[:, outside[0]]
-            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+            born = scenario.cloud[int(particles.cloud[outside[0]])].name
             raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin '
+                f'[[cloud]] "{born}": {outside.size} of {len(particles)} charges do not begin '
                 f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
                 "Make the cloud smaller, move it, or enlarge the wall."
             )

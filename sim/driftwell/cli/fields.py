@@ -9,6 +9,7 @@ from pathlib import Path
 from driftwell.cli.printing import answer, tell, width
 from driftwell.cli.progress import tell_of_compiling
 from driftwell.cli.run_command import UNUSABLE, too_little_memory
+from driftwell.electrodes.form import Electrodes
 from driftwell.errors import DriftwellError, ScenarioError
 from driftwell.kernels.compilation import first_compilation
 from driftwell.kernels.threads import on_threads
@@ -46,7 +47,8 @@ def _solved(loaded: LoadedScenario) -> SolvedField:
             f"{loaded.path}: has no [[electrode]], so there is no field to solve. `driftwell "
             "check` says what its fields are."
         )
-    return solved_field(scenario.electrodes, scenario.electrode, loaded.folder, tell)
+    common = scenario.electrodes or Electrodes()
+    return solved_field(common, scenario.electrode, loaded.folder, tell)
 
 
 def _draw(field: SolvedField, loaded: LoadedScenario, folder: Path) -> bool:

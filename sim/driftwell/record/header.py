@@ -46,6 +46,7 @@ class Header:
     field_error, field_digest : relative rms error of the electrodes' solved field as it was mapped,
         and a digest of its numbers; 0 and "" without electrodes
     images : the conductors that answer to the charges, in words; empty where none do
+    walls : names of what takes charges: the walls, then the electrodes
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """

@@ -338,7 +338,7 @@ HEADER = (
     Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
     Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
     Attribute("species", "texts", "", "names of the species, in order"),
-    Attribute("walls", "texts", "", "names of the walls, in order"),
+    Attribute("walls", "texts", "", "names of what takes charges: the walls, then the electrodes"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

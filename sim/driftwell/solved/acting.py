@@ -15,7 +15,8 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.electrodes.bodies import bodies_of
+from driftwell.electrodes.bodies import own_bodies
+from driftwell.electrodes.form import Electrodes
 from driftwell.fields.form import PackedField
 from driftwell.fields.rates import linear_rates
 from driftwell.forms.body import Body
@@ -160,16 +161,17 @@ def acting_field(scenario: Scenario, folder: Path, told: Told | None = None) -> 
     """
     if not scenario.electrode:
         return None
-    electrodes = scenario.electrodes
+    electrodes = scenario.electrodes or Electrodes()
     solved = solved_field(electrodes, scenario.electrode, folder, told or _unheard)
-    bodies = body_table(bodies_of(electrodes, scenario.electrode, folder))
     voltages: list[AnyWaveform] = [each.voltage for each in scenario.electrode]
-    voltages += [0.0] * (len(solved.names) - len(voltages))
+    voltages += [0.0] * (len(solved.map.coefficients) - len(voltages))
     return ActingField(
         solved,
         electrodes.centre,
         tuple(courses(voltages)),
-        distance_of(bodies, electrodes.geometry),
+        distance_of(
+            body_table(own_bodies(electrodes, scenario.electrode, folder)), electrodes.geometry
+        ),
     )
 
 
