@@ -8,7 +8,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from driftwell.fields.form import FieldForm, Role
+from driftwell.fields.form import FieldForm, PackedField, Role
 from driftwell.fields.table import (
     FieldTable,
     electric_field,
@@ -44,6 +44,7 @@ def evaluate(
     position: ArrayLike,
     t: float,
     inside: float | None = None,
+    more: Sequence[PackedField] = (),
 ) -> FieldValues:
     """The sum of several fields at some points.
 
@@ -56,6 +57,7 @@ def evaluate(
     inside : a time on the smooth piece of the waveforms that is meant, s; left out: `t` itself,
         which at a jump is the value before it for ramps, steps and pulses (see
         kernels/waveform.py)
+    more : fields that are packed already, as of solved electrodes
     """
     place = np.ascontiguousarray(np.asarray(position, dtype=np.float64).reshape(-1, 3).T)
     count = place.shape[1]
@@ -65,7 +67,7 @@ def evaluate(
     magnetic = np.zeros((3, count))
     unit_charge = np.ones(count)
     piece = t if inside is None else inside
-    tables = field_tables(forms, bodies)
+    tables = field_tables(forms, bodies, more)
     _add_electric(
         tables[Role.ELECTRIC], t, piece, place, unit_charge, potential, potential_rate, electric
     )

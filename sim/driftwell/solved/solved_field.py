@@ -32,7 +32,7 @@ from driftwell.solved.store import Arrays, Store, Told, store_folder
 
 Floats = NDArray[np.float64]
 
-BOUNDARY_SHARE = 0.1
+DRAWN_SHARE, SPATIAL_SHARE = 0.1, 0.5
 """Part of the error asked for that the boundary solution may have; the map may have the rest."""
 _PLACES, _BESIDE = 512, 0.1
 """Points at which solutions are compared; their distance from electrodes, of the largest."""
@@ -114,14 +114,15 @@ def _solved(
     table = body_table(bodies)
     depth = distance_of(table, geometry)
     box = region_of(electrodes, depth, _around(table, geometry))
-    accuracy = BOUNDARY_SHARE * electrodes.field_accuracy
     solution: Solution
     if geometry == "spatial":
         enclosure = bodies[-1] if electrodes.enclosure is not None else ()
         own = bodies[:-1] if electrodes.enclosure is not None else bodies
+        accuracy = SPATIAL_SHARE * electrodes.field_accuracy
         solution = solve_spatial(own, accuracy, threads_now(), enclosure, _places(box, depth))
     else:
         outlines = [tuple(_outline(solid) for solid in each) for each in bodies]
+        accuracy = DRAWN_SHARE * electrodes.field_accuracy
         solution = solve_drawn(outlines, geometry == "axisymmetric", accuracy)
     mapped = build_map(
         tuple(zip(box.low.tolist(), box.high.tolist(), strict=True)),
