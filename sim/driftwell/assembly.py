@@ -20,6 +20,7 @@ from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
 from driftwell.images.form import ClosedForm, followed
 from driftwell.images.image_sum import Images
+from driftwell.images.importance import Distance, importance, remark
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
@@ -61,6 +62,7 @@ class Assembly:
     clouds : facts in the order of ``particles.cloud``
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
+    images : the conductors that answer to the charges; None where none does
     """
 
     scenario: Scenario
@@ -72,6 +74,7 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+    images: Images | None = None
 
     @property
     def tracked(self) -> NDArray[np.int64]:
@@ -133,24 +136,38 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
-            self.images(),
+            self.images,
         )
 
-    def images(self) -> Images | None:
-        """The conductors that answer to the charges, made; None where none does."""
+    def image_remark(self, distance: Distance | None = None) -> str | None:
+        """What is to be said of images that are left out, or taken without need; None: nothing.
+
+        distance : of points (n, 3) to the nearest conductor, m; where none is given, that of the
+            conductor which answers with images, if it is one by itself
+        """
         form = self.scenario.images
-        if form is None:
-            return None
-        if not isinstance(form, ClosedForm):
-            raise ScenarioError(
-                '[images] kind = "electrodes": the scenario has no [[electrode]]; needs one at '
-                "least."
+        if distance is None:
+            if not isinstance(form, ClosedForm):
+                return None
+            closed = form
+
+            def distance(points: NDArray[np.float64]) -> NDArray[np.float64]:
+                return closed.distance(points.T)
+
+        estimates = []
+        for cloud in self.clouds:
+            own = self.particles.kept(self.particles.cloud == cloud.index)
+            estimates.append(
+                importance(
+                    cloud.name,
+                    own.position,
+                    own.charge * own.weight,
+                    own.mass * own.weight,
+                    distance,
+                    self.scenario.duration,
+                )
             )
-        particles = self.particles
-        kick = self.choice.step * self.scenario.stepping.coulomb_every
-        charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
-        away = form.distance(particles.position)
-        return form.images(followed(kick, charge, mass, particles.velocity, away))
+        return remark(estimates, form is not None)
 
 
 def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
@@ -188,6 +205,7 @@ def assembled(loaded: LoadedScenario, warn: Warn | None = None) -> Assembly:
         choice,
         plan,
         _counted(extent, plan),
+        _images(scenario, particles, choice),
     )
 
 
@@ -264,6 +282,21 @@ def _check_sides(scenario: Scenario, particles: Particles) -> None:
             f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
             f"{z:.6g}) m. Move the cloud, or the conductor."
         )
+
+
+def _images(scenario: Scenario, particles: Particles, choice: StepChoice) -> Images | None:
+    """The conductors that answer to the charges."""
+    form = scenario.images
+    if form is None:
+        return None
+    if not isinstance(form, ClosedForm):
+        raise ScenarioError(
+            '[images] kind = "electrodes": the scenario has no [[electrode]]; needs one at least.'
+        )
+    kick = choice.step * scenario.stepping.coulomb_every
+    charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+    away = form.distance(particles.position)
+    return form.images(followed(kick, charge, mass, particles.velocity, away))
 
 
 def _traces(scenario: Scenario) -> list[TraceRequest]:

@@ -58,6 +58,7 @@ def loaded(folder: Path, images: dict[str, Any], place: Any = (0.0, 0.0, 0.0)) -
 def test_images_are_told_in_words(tmp_path: Path, kind: str, words: str) -> None:
     text = " ".join(" ".join(explain(loaded(tmp_path, KINDS[kind]))).split())
     assert f"images {words}" in text
+    assert "Nothing stops charges at the conductor" in text
 
 
 @pytest.mark.parametrize(
