@@ -13,6 +13,8 @@ from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.geometry.body_table import body_table
+from driftwell.geometry.solid import Solid
 from driftwell.images.image_sum import Images
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
@@ -77,10 +79,14 @@ def loop(
     traced: Sequence[Traced] = (),
     threads: int = 1,
     images: Images | None = None,
+    bodies: Sequence[Sequence[Solid]] = (),
     state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
-    """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s."""
+    """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
+
+    bodies : those of each electrode
+    """
     options = Stepping(**stepping)
     breaks = [t for field in fields for t in waveform_breaks(field.waveform(), duration)]
     plan = schedule(
@@ -105,6 +111,7 @@ def loop(
         threads,
         state,
         images,
+        body_table(bodies),
     )
 
 

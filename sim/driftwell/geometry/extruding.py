@@ -37,7 +37,7 @@ def extruded_patches(solid: Extruded, how: Fineness) -> list[Patch]:
 
 def _wall(loop: Chain, half: float, how: Fineness) -> Patch:
     """The strip that a loop sweeps, turned outwards."""
-    heights = half * (2.0 * spaced(even_count(2.0 * half, how, True), how.grade, True, True) - 1.0)
+    heights = half * (2.0 * spaced(even_count(2.0 * half, how), how.grade, True, True) - 1.0)
     count = len(loop.points)
     points = np.column_stack(
         [np.tile(loop.points, (len(heights), 1)), np.repeat(heights, count)],

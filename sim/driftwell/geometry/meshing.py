@@ -23,12 +23,13 @@ def mesh_of(
     solid: Solid,
     size: float,
     turn: float = math.pi / 8.0,
-    grade: float = 2.5,
+    grade: float = 3.0,
     fair: bool = False,
 ) -> Mesh:
     """Triangles of a body.
 
-    size : m, longest edge, about
+    size : m, mean edge; between sharp edges of the body the longest has `grade` times that, and
+        of a given mesh all longer edges are halved
     turn : rad, largest angle between neighbouring normals of a curved surface
     grade : power of the spacing of points towards sharp edges; 1 for even spacing
     fair : whether facets of curved surfaces lie on them on average; else their corners do

@@ -53,7 +53,7 @@ class Chain:
 class Fineness:
     """How finely surfaces are cut.
 
-    size : longest edge, m
+    size : mean edge along a piece, m; between graded ends the longest has `grade` times that
     turn : largest angle between neighbouring normals of a curved surface, rad
     grade : power of the spacing towards edges; 1 for even spacing
     fair : whether facets lie on curved surfaces on average, else with their corners
@@ -61,7 +61,7 @@ class Fineness:
 
     size: float
     turn: float = math.pi / 8.0
-    grade: float = 2.5
+    grade: float = 3.0
     fair: bool = False
 
 
@@ -136,10 +136,9 @@ def spaced(count: int, grade: float, at_start: bool, at_end: bool) -> Floats:
     return even
 
 
-def even_count(length: float, how: Fineness, graded: bool, sweep: float = 0.0) -> int:
+def even_count(length: float, how: Fineness, sweep: float = 0.0) -> int:
     """An even number of edges that a length, and the turn of its direction, are cut into."""
-    stretched = length / how.size * (how.grade if graded else 1.0)
-    needed = max(stretched, abs(sweep) / how.turn, 2.0)
+    needed = max(length / how.size, abs(sweep) / how.turn, 2.0)
     return 2 * math.ceil(0.5 * needed - 1e-9)
 
 
@@ -156,7 +155,7 @@ def _chain(
     ends = [*sharp[1:], sharp[0] if closed or not outline.solid else False]
     points, owner = [], []
     for k, piece in enumerate(pieces):
-        number = even_count(piece_length(piece), how, sharp[k] or ends[k], piece[6])
+        number = even_count(piece_length(piece), how, piece[6])
         parts = spaced(number, how.grade, sharp[k], ends[k])
         found = places(piece, parts)
         if how.fair and piece[6] != 0.0:
@@ -214,7 +213,7 @@ def _inside_left(outline: Outline) -> list[bool]:
     starts, ends, loops = [], [], []
     for low, high in pairwise(outline.loops):
         stretch = [
-            places(p, spaced(even_count(piece_length(p), fine, False, p[6]), 1.0, False, False))
+            places(p, spaced(even_count(piece_length(p), fine, p[6]), 1.0, False, False))
             for p in outline.pieces[low:high]
         ]
         loops.append(np.concatenate([np.stack([s[:-1], s[1:]], axis=1) for s in stretch]))

@@ -11,6 +11,11 @@ import numba
 from driftwell.errors import DriftwellError
 
 
+def threads_now() -> int:
+    """How many threads parallel kernels run on now."""
+    return int(numba.get_num_threads()) if int(numba.config.NUMBA_NUM_THREADS) > 1 else 1
+
+
 @contextmanager
 def on_threads(count: int) -> Iterator[int]:
     """Within it, parallel kernels run on `count` threads; gives how many they really get.

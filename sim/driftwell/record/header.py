@@ -43,7 +43,10 @@ class Header:
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
+    field_error, field_digest : relative rms error of the electrodes' solved field as it was mapped,
+        and a digest of its numbers; 0 and "" without electrodes
     images : the conductors that answer to the charges, in words; empty where none do
+    walls : names of what takes charges: the walls, then the electrodes
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -68,6 +71,8 @@ class Header:
     coulomb_method: str = "direct"
     coulomb_because: str = ""
     coulomb_accuracy: float = 1e-4
+    field_error: float = 0.0
+    field_digest: str = ""
     images: str = ""
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__

@@ -294,6 +294,12 @@ ANSWERS = Dataset(
             "1",
             "largest rms relative error of the Coulomb forces behind it; not in `error`",
         ),
+        Column(
+            "field_error",
+            "float64",
+            "1",
+            "relative rms error of the electrodes' solved field behind it; not in `error`",
+        ),
         Column("note", "text", "", "what else to know of the answer"),
     ),
 )
@@ -328,9 +334,11 @@ HEADER = (
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
+    Attribute("field_error", "float64", "1", "relative rms error of the electrodes' field", 2),
+    Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
     Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
     Attribute("species", "texts", "", "names of the species, in order"),
-    Attribute("walls", "texts", "", "names of the walls, in order"),
+    Attribute("walls", "texts", "", "names of what takes charges: the walls, then the electrodes"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

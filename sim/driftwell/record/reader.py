@@ -125,6 +125,11 @@ class Run:
         """Softening length of the Coulomb sum, m."""
         return self.header.softening
 
+    @property
+    def field_error(self) -> float:
+        """Relative rms error of the electrodes' solved field; 0 where there is none."""
+        return self.header.field_error
+
     def coulomb_error(self, until: float) -> float:
         """Largest rms relative error of the Coulomb forces measured up to a time, s."""
         rows = self.ledger

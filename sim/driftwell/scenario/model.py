@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 from driftwell.answers.form import QuestionForm
 from driftwell.answers.table import QUESTION_KINDS
 from driftwell.coulomb.form import Coulomb
+from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Title, key, one_of
@@ -45,6 +46,11 @@ class Scenario(Form):
     )
     cloud: tuple[Cloud, ...] = key("groups of charges present from the start", default=())
     field: tuple[AnyField, ...] = key("what pushes the charges from outside", default=())
+    electrodes: Electrodes | None = key(
+        "what all electrodes have in common: how they are drawn, how well their field is known",
+        default=None,
+    )
+    electrode: tuple[Electrode, ...] = key("conductors, each with a voltage", default=())
     wall: tuple[AnyWall, ...] = key("surfaces that absorb or reflect charges", default=())
     detector: tuple[AnyDetector, ...] = key(
         "surfaces that record the charges passing them", default=()

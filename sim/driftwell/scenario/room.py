@@ -51,7 +51,7 @@ _LIMITS = ("/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory/memory.limit_in_b
 class Extent:
     """How much a run is: numbers of things, and how the charges' own force is summed.
 
-    surfaces : walls and detectors; detectors : those among them
+    surfaces : walls, detectors, and one for all electrodes; detectors : those among them
     images : bytes that sums over images take
     """
 
@@ -126,7 +126,7 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         charges=charges,
         tracked=min(charges, DEFAULT_TRACKS if record.tracks is None else record.tracks),
         clouds=len(scenario.cloud),
-        surfaces=len(scenario.wall) + len(scenario.detector),
+        surfaces=len(scenario.wall) + len(scenario.detector) + bool(scenario.electrode),
         records=int(duration / (record.every or duration / DEFAULT_RECORDS)) + 2,
         samples=samples,
         traces=traces,

@@ -22,6 +22,7 @@ import math
 import numpy as np
 
 from driftwell.coulomb.direct import PairSum, potential_at
+from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, outer_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
@@ -34,6 +35,7 @@ from driftwell.stepping.accounts import (
     enter_vector,
 )
 from driftwell.stepping.blocks import BLOCK, CROSSED
+from driftwell.stepping.contact import first_body
 from driftwell.stepping.drift import helix
 from driftwell.stepping.forces import magnetic_at, take_images
 from driftwell.stepping.motion import (
@@ -62,6 +64,7 @@ def meet_surfaces(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     together: bool,
     t: float,
@@ -97,8 +100,20 @@ def meet_surfaces(
                     side[i] = 0 if there == 0.0 else now
                 else:
                     changed |= _follow(
-                        plan, fields, surfaces, charges, together, i, t, h, inside, work
+                        plan, fields, surfaces, bodies, charges, together, i, t, h, inside, work
                     )
+    near = work.clearance
+    for b in range(max(1, blocks)):
+        first, last = 0, near.size
+        if blocks > 0:
+            if work.block_sums[b, CROSSED] == 0.0:
+                continue
+            first, last = b * BLOCK, min(b * BLOCK + BLOCK, near.size)
+        for i in range(first, last):
+            if near[i] < 0.0 and charges.alive[i] == 1:  # not followed through a surface yet
+                changed |= _follow(
+                    plan, fields, surfaces, bodies, charges, together, i, t, h, inside, work
+                )
     return changed
 
 
@@ -151,6 +166,7 @@ def _follow(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     together: bool,
     i: int,
@@ -163,16 +179,22 @@ def _follow(
     last = last_end(plan, fields, charges, together, i, t + h, inside, work)
     first = first_end(plan, fields, charges, i, t, inside, work)
     changed = UNTOUCHED
+    if work.clearance.size > 0:
+        work.clearance[i] = 0.0
     start, span = t, h
     for _ in range(_BOUNCES):
         x0, y0, z0, ux0, uy0, uz0 = first[:6]
         x1, y1, z1, ux1, uy1, uz1 = last[:6]
         wall, when = _first_wall(plan, surfaces, first, last, span, i, work)
+        if bodies.whole.shape[0] > 0:
+            body, at = first_body(plan, bodies, first, last, span, when)
+            if body >= 0 and (wall < 0 or at < when):
+                wall, when = surfaces.kind.size + body, at
         _pass_detectors(plan, surfaces, first, last, start, span, when, i, work)
         if wall < 0:
             return changed
         xc, yc, zc, uxc, uyc, uzc = point(plan, first, last, span, when)
-        if surfaces.effect[wall] == ABSORB:
+        if wall >= surfaces.kind.size or surfaces.effect[wall] == ABSORB:
             _write(wall, i, start + when * span, xc, yc, zc, uxc, uyc, uzc, 0.0, work)
             charges.alive[i] = LEAVING
             for s in range(surfaces.kind.size):

@@ -20,6 +20,7 @@ from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
@@ -114,15 +115,18 @@ class TimeLoop:
         threads: int,
         state: Mapping[str, NDArray[Any]] | None = None,
         images: Images | None = None,
+        bodies: BodyTable | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
+        bodies : what else stops charges: owner k is surface number (walls + detectors + k)
         """
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
+        self._bodies = body_table(()) if bodies is None else bodies
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
@@ -230,10 +234,11 @@ class TimeLoop:
         alive = self.charges.alive != 0
         if alive.all():
             return
-        side = self.work.side[:, alive]
+        side, clearance = self.work.side[:, alive], self.work.clearance
         self.particles = self.particles.kept(alive)
         self._arrange()
         self.work.side[:] = side
+        self.work.clearance[:] = clearance[alive] if clearance.size else clearance
 
     def state(self) -> dict[str, NDArray[Any]]:
         """Copies of everything a resume needs besides the particles, by name.
@@ -298,6 +303,7 @@ class TimeLoop:
                 self._scheme,
                 self._fields,
                 self._surfaces,
+                self._bodies,
                 self.charges,
                 self._trace,
                 self.schedule.time,
@@ -326,13 +332,15 @@ class TimeLoop:
         images = None
         if self._images is not None:
             images = self._image_sum = self._images.laid_out(n, self._threads)
-        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse, images)
+        stopped = self._bodies.whole.shape[0] > 0
+        surfaces = self._surfaces.kind.size
+        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
         self._passes = passes_over(
-            n, self.plan, self._fields, self._surfaces, self.charges, self.work
+            n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),

@@ -104,6 +104,7 @@ class Work(NamedTuple):
     slowness : (n,) 1/gamma
     old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
         the electric one that the step's kicks begin with, V/m
+    clearance : (n,) m, less than the distance to every electrode, see approach.py; empty without
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
     levels : (4, n) field and potential of the tree, V/m and V; (4, 0) where another sum is used
@@ -129,6 +130,7 @@ class Work(NamedTuple):
     old_position: Floats
     old_velocity: Floats
     old_field: Floats
+    clearance: Floats
     side: NDArray[np.int8]
     tiles: Floats
     levels: Floats
@@ -201,6 +203,7 @@ def work_space(
     levels: bool,
     collapse: bool,
     images: ImageSum | None = None,
+    bodies: bool = False,
 ) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
@@ -209,8 +212,9 @@ def work_space(
     tiles : the pair sum's; levels : whether that finds potentials too
     collapse : whether opposite charges may fall together
     images : the sum over the images; None where there are none
+    bodies : whether electrodes stop charges
     """
-    events = 2 * room_for_events(n, surfaces)
+    events = 2 * room_for_events(n, surfaces + bodies)
     coulomb = room((3, n))
     return Work(
         external=room((3, n)),
@@ -226,6 +230,7 @@ def work_space(
         old_position=room((3, n)),
         old_velocity=room((3, n)),
         old_field=room((3, n)),
+        clearance=room((n if bodies else 0,)),
         side=np.ones((surfaces, n), dtype=np.int8),
         tiles=tiles,
         levels=room((4, n if levels else 0)),

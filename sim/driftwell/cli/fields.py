@@ -1,0 +1,60 @@
+"""``driftwell fields FILE``: solve the electrodes' field, say what it is, and draw it."""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Sequence
+from pathlib import Path
+
+from driftwell.cli.printing import answer, tell, width
+from driftwell.cli.progress import tell_of_compiling
+from driftwell.cli.run_command import UNUSABLE, too_little_memory
+from driftwell.electrodes.form import Electrodes
+from driftwell.errors import DriftwellError, ScenarioError
+from driftwell.kernels.compilation import first_compilation
+from driftwell.kernels.threads import on_threads
+from driftwell.scenario.read import LoadedScenario, read_scenario
+from driftwell.solved.solved_field import SolvedField, solved_field
+from driftwell.solved.summary import summary
+
+
+def fields_command(
+    file: str, output: str | None, settings: Sequence[str], threads: int, *, pictures: bool
+) -> int:
+    """Print the table of electrodes and draw the pictures; 0, or 2 with a message."""
+    folder = Path(output) if output is not None else Path(f"{Path(file).stem}-fields")
+    try:
+        loaded = read_scenario(file, settings)
+        tell(loaded.scenario.title)
+        with first_compilation(tell_of_compiling), on_threads(threads):
+            field = _solved(loaded)
+            written = answer(summary(field, loaded.scenario.electrode, width()))
+            if pictures:
+                written = _draw(field, loaded, folder) and written
+    except DriftwellError as error:
+        tell(str(error))
+        return error.exit_code
+    except MemoryError as error:
+        tell(too_little_memory(error))
+        return UNUSABLE
+    return 0 if written else UNUSABLE
+
+
+def _solved(loaded: LoadedScenario) -> SolvedField:
+    scenario = loaded.scenario
+    if not scenario.electrode:
+        raise ScenarioError(
+            f"{loaded.path}: has no [[electrode]], so there is no field to solve. `driftwell "
+            "check` says what its fields are."
+        )
+    common = scenario.electrodes or Electrodes()
+    return solved_field(common, scenario.electrode, loaded.folder, tell)
+
+
+def _draw(field: SolvedField, loaded: LoadedScenario, folder: Path) -> bool:
+    """Draw the pictures and say where they are."""
+    from driftwell.report.solved_field import draw_field
+
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)
+    made = draw_field(field, loaded, folder)
+    return answer(["", f"pictures: {len(made)} in {folder}"])
