@@ -13,7 +13,8 @@ from driftwell.errors import DriftwellError
 
 def threads_now() -> int:
     """How many threads parallel kernels run on now."""
-    return int(numba.get_num_threads()) if int(numba.config.NUMBA_NUM_THREADS) > 1 else 1
+    settings: Any = numba.config
+    return int(numba.get_num_threads()) if int(settings.NUMBA_NUM_THREADS) > 1 else 1
 
 
 @contextmanager

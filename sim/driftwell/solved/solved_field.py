@@ -176,7 +176,7 @@ def _places(box: Box, depth: Distance) -> Floats:
     drawn = np.random.default_rng(2).random((4 * _PLACES, len(box.low)))
     points = box.low + drawn * (box.high - box.low)
     distance = depth(points)
-    return points[distance > _BESIDE * distance.max()][:_PLACES]
+    return np.asarray(points[distance > _BESIDE * distance.max()][:_PLACES])
 
 
 def _even(mirrors: tuple[bool, ...], box: Box, geometry: str) -> tuple[bool, ...]:
