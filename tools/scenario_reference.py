@@ -246,9 +246,10 @@ def _tables(section: DeclaredKey) -> Iterator[tuple[type[Form], str]]:
             forms = [(declared, _title(section) if declared is holds else name)]
         for keys, heading in forms:
             yield keys.form, heading
-            inner = declared_keys(keys.form).values()
             within = name if heading.startswith("[") else heading
-            waiting += [(key.holds, f"{within} {key.name}") for key in inner]
+            for key in declared_keys(keys.form).values():
+                inner = key.holds.entry if isinstance(key.holds, Several) else key.holds
+                waiting.append((inner, f"{within} {key.name}"))
 
 
 def _kinds(declared: Declared) -> tuple[tuple[str, Keys], ...]:
