@@ -286,7 +286,7 @@ def wandering(count: int, first: int | None = None) -> TimeLoop:
     return loop(
         ions(place[:first], proper[:first]),
         4e-4,
-        1e-6,
+        4e-6,
         fields=[field("uniform-magnetic", strength="0.02 T")],
         bodies=[
             [Revolved(rectangle((1.0, -0.3), (1.1, 0.3)))],
