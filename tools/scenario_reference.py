@@ -250,18 +250,13 @@ def _tables(section: DeclaredKey) -> Iterator[tuple[type[Form], str]]:
         for keys, heading in forms:
             yield keys.form, heading
             within = name if heading.startswith("[") else heading
-<<<<<<< HEAD
+            inner = declared_keys(keys.form).values()
             waiting += [(_entry(key.holds), f"{within} {key.name}") for key in inner]
 
 
 def _entry(declared: Declared) -> Declared:
     """What each entry of a list or table of names is; a value itself."""
     return declared.entry if isinstance(declared, Named | Several) else declared
-=======
-            for key in declared_keys(keys.form).values():
-                inner = key.holds.entry if isinstance(key.holds, Several) else key.holds
-                waiting.append((inner, f"{within} {key.name}"))
->>>>>>> f150e5c196161f0972860d6921e9bde0f92e7d83
 
 
 def _kinds(declared: Declared) -> tuple[tuple[str, Keys], ...]:
