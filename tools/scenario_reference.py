@@ -238,18 +238,25 @@ def _section(key: DeclaredKey, headings: Headings) -> Iterator[str]:
 
 def _tables(section: DeclaredKey) -> Iterator[tuple[type[Form], str]]:
     """The forms of a section with their headings, outermost first; waveforms left out."""
-    holds = section.holds.entry if isinstance(section.holds, Named | Several) else section.holds
+    holds = _entry(section.holds)
     waiting: list[tuple[Declared, str]] = [(holds, section.name.capitalize())]
     while waiting:
         declared, name = waiting.pop(0)
+        if isinstance(declared, Choice) and not (declared.kinds or _in_time(declared)):
+            waiting += [(each, name) for _, each in declared.options if isinstance(each, Keys)]
         forms = [(option, f"{name} {kind}") for kind, option in _kinds(declared)]
         if isinstance(declared, Keys):
             forms = [(declared, _title(section) if declared is holds else name)]
         for keys, heading in forms:
             yield keys.form, heading
-            inner = declared_keys(keys.form).values()
             within = name if heading.startswith("[") else heading
-            waiting += [(key.holds, f"{within} {key.name}") for key in inner]
+            inner = declared_keys(keys.form).values()
+            waiting += [(_entry(key.holds), f"{within} {key.name}") for key in inner]
+
+
+def _entry(declared: Declared) -> Declared:
+    """What each entry of a list or table of names is; a value itself."""
+    return declared.entry if isinstance(declared, Named | Several) else declared
 
 
 def _kinds(declared: Declared) -> tuple[tuple[str, Keys], ...]:

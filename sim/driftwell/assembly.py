@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
+from functools import partial
 from typing import Any
 
 import numpy as np
@@ -18,9 +19,11 @@ from driftwell.fields.table import field_tables
 from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.geometry.distance import distances
 from driftwell.images.electrodes import ElectrodeImages, electrode_images
 from driftwell.images.form import ClosedForm, followed
 from driftwell.images.image_sum import Images
+from driftwell.images.importance import importance, remark
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
@@ -65,8 +68,9 @@ class Assembly:
     clouds : facts in the order of ``particles.cloud``
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
-    acting : the electrodes' solved field; None without electrodes
     conductors : the electrodes as surfaces
+    acting : the electrodes' solved field; None without electrodes
+    images : the conductors that answer to the charges; None where none does
     """
 
     scenario: Scenario
@@ -80,6 +84,7 @@ class Assembly:
     extent: Extent
     conductors: Conductors
     acting: ActingField | None = None
+    images: Images | None = None
 
     @property
     def walls(self) -> tuple[WallForm, ...]:
@@ -150,25 +155,33 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
-            self.images(),
+            self.images,
             self.conductors.table,
         )
 
-    def images(self) -> Images | None:
-        """The conductors that answer to the charges, made; None where none does."""
+    def image_remark(self) -> str | None:
+        """What is to be said of images that are left out, or taken without need; None: nothing."""
         form = self.scenario.images
-        if form is None:
+        if isinstance(form, ClosedForm):
+            distance = partial(_distance_from, form)
+        elif self.conductors.names:
+            distance = partial(_distance_between, self.conductors)
+        else:
             return None
-        if isinstance(form, ElectrodeImages):
-            solids = [solid for own in self.conductors.bodies for solid in own]
-            return electrode_images(solids, form.panels, form.length)
-        if not isinstance(form, ClosedForm):
-            return None
-        particles = self.particles
-        kick = self.choice.step * self.scenario.stepping.coulomb_every
-        charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
-        away = form.distance(particles.position)
-        return form.images(followed(kick, charge, mass, particles.velocity, away))
+        estimates = []
+        for cloud in self.clouds:
+            own = self.particles.kept(self.particles.cloud == cloud.index)
+            estimates.append(
+                importance(
+                    cloud.name,
+                    own.position,
+                    own.charge * own.weight,
+                    own.mass * own.weight,
+                    distance,
+                    self.scenario.duration,
+                )
+            )
+        return remark(estimates, form is not None)
 
 
 def assembled(
@@ -215,6 +228,7 @@ def assembled(
         _counted(extent, plan),
         conductors,
         acting,
+        _images(scenario, conductors, particles, choice),
     )
 
 
@@ -309,6 +323,32 @@ def _check_sides(scenario: Scenario, particles: Particles) -> None:
             f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
             f"{z:.6g}) m. Move the cloud, or the conductor."
         )
+
+
+def _images(
+    scenario: Scenario, conductors: Conductors, particles: Particles, choice: StepChoice
+) -> Images | None:
+    """The conductors that answer to the charges."""
+    form = scenario.images
+    if isinstance(form, ElectrodeImages):
+        solids = [solid for own in conductors.bodies for solid in own]
+        return electrode_images(solids, form.panels, form.length)
+    if not isinstance(form, ClosedForm):
+        return None
+    kick = choice.step * scenario.stepping.coulomb_every
+    charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+    away = form.distance(particles.position)
+    return form.images(followed(kick, charge, mass, particles.velocity, away))
+
+
+def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Distances of points (n, 3) from the one conductor, m."""
+    return form.distance(points.T)
+
+
+def _distance_between(conductors: Conductors, points: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Distances of points (n, 3) from the nearest electrode, m."""
+    return distances(conductors.table, points)[0]
 
 
 def _traces(scenario: Scenario) -> list[TraceRequest]:

@@ -211,6 +211,9 @@ class _Execution:
         self._ledger = Ledger()
         summation = self._loop.summation
         self._observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
+        of_images = parts.image_remark()
+        if of_images is not None:
+            self._observer.told(of_images)
         if not held_already:
             holding.enter_context(made_and_held(self._folder))
         self._writer = RunWriter.create(

@@ -16,6 +16,7 @@ from driftwell.images.mirror_sum import plane_images, sphere_images
 from driftwell.images.panel_sum import PanelImages
 from driftwell.images.tube_sum import TubeImages
 from driftwell.ledger.ledger import Ledger, LedgerRow
+from driftwell.stepping.accounts import IMPULSE_IMAGES, TORQUE_IMAGES
 from tests.cases import field, wall
 from tests.images.images_at import box, images_at
 from tests.moving import DIRECT, OFF, accounts, ions, loop, to_end
@@ -112,6 +113,25 @@ def test_the_ledger_notices_a_conductor_that_is_not_where_it_was() -> None:
     assert abs(found[0].energy_residual) <= 1e-4
     assert abs(found[1].energy_residual) > 3e-3
     assert found[1].momentum_residual <= 1e-13
+
+
+@pytest.mark.parametrize(
+    ("account", "residual"),
+    [(IMPULSE_IMAGES, "momentum_residual"), (TORQUE_IMAGES, "angular_residual")],
+)
+def test_what_images_gave_left_out_leaves_a_residual(account: int, residual: str) -> None:
+    """Of its own kind, far above rounding."""
+    start = ions(np.random.default_rng(1).normal(0.0, 5e-5, (30, 3)), weight=100.0)
+    moving = loop(start, 5e-7, 1e-8, coulomb=SOFT, images=CASES[0].images)
+    ledger = Ledger()
+    ledger.close(0.0, moving.plan, moving.charges, moving.work)
+    to_end(moving)
+    right = ledger.close(5e-7, moving.plan, moving.charges, moving.work)
+    moving.work.total[account : account + 3] = moving.work.carry[account : account + 3] = 0.0
+    spoiled = ledger.close(5e-7, moving.plan, moving.charges, moving.work)
+    assert getattr(right, residual) <= 1e-13
+    assert getattr(spoiled, residual) > 1e-3
+    assert right.energy_residual == spoiled.energy_residual
 
 
 @pytest.mark.parametrize("n", [3, 70])

@@ -58,6 +58,7 @@ def loaded(folder: Path, images: dict[str, Any], place: Any = (0.0, 0.0, 0.0)) -
 def test_images_are_told_in_words(tmp_path: Path, kind: str, words: str) -> None:
     text = " ".join(" ".join(explain(loaded(tmp_path, KINDS[kind]))).split())
     assert f"images {words}" in text
+    assert "Nothing stops charges at the conductor" in text
 
 
 @pytest.mark.parametrize(
@@ -69,6 +70,7 @@ def test_images_are_told_in_words(tmp_path: Path, kind: str, words: str) -> None
         ({"kind": "sphere"}, "radius"),
         ({"kind": "cylinder", "radius": "1 mm", "reach": 1.0}, "at most 0.95"),
         ({"kind": "electrodes", "panels": 3}, "at least 50"),
+        ({"kind": "electrodes"}, "needs an [[electrode]], which would answer"),
     ],
 )
 def test_what_cannot_be_is_refused_in_words(
@@ -109,6 +111,42 @@ def test_a_run_keeps_what_images_did(tmp_path: Path, kind: str) -> None:
     assert pulled[:, 2].sum() < free[:, 2].sum()
     assert run.header.images != off.header.images == ""
     assert KINDS[kind]["kind"][:4] in run.header.images or kind == "cylinder"
+
+
+CAN = {
+    "electrodes": {"enclosure": {"radius": "1 mm", "length": "3 mm"}, "field_accuracy": 1e-2},
+    "electrode": [
+        {
+            "name": "ring",
+            "voltage": "0 V",
+            "shape": [
+                {
+                    "kind": "rectangle",
+                    "low": ["0.7 mm", "-0.1 mm"],
+                    "high": ["0.8 mm", "0.1 mm"],
+                }
+            ],
+        }
+    ],
+}
+
+
+def test_electrodes_answer_as_a_tube_does_where_they_nearly_are_one(tmp_path: Path) -> None:
+    """Within a ring in a can of 1 mm a charge is drawn outwards; accounts close, and none is
+    far from what an endless tube of the ring's radius and one of the can's give."""
+    place = (0.3e-3, 0.0, 0.0)
+    found = []
+    for images in (
+        {"kind": "electrodes", "panels": 1200},
+        {"kind": "cylinder", "radius": "0.7 mm"},
+        {"kind": "cylinder", "radius": "1 mm"},
+    ):
+        more = CAN if images["kind"] == "electrodes" else {}
+        run = carried_out(tmp_path, 1e-6, **sections(images, place), **more)
+        assert run.ledger["momentum_residual"].max() <= 1e-13
+        assert abs(run.ledger["energy_residual"]).max() <= 1e-4
+        found.append(float(run.ledger["image"][0]))
+    assert found[1] < found[0] < found[2] < 0.0
 
 
 def test_a_record_of_before_is_read_as_one_without_images(tmp_path: Path) -> None:

@@ -113,6 +113,8 @@ def test_every_account_is_one_of_these() -> None:
         "TORQUE_MAGNETS",
         "MOMENTUM_WALLS",
         "ANGULAR_WALLS",
+        "IMPULSE_IMAGES",
+        "TORQUE_IMAGES",
     ]
     taken = [getattr(account, name) for name in single]
     taken += [getattr(account, name) + k for name in triple for k in range(3)]
@@ -128,10 +130,10 @@ def test_every_account_is_one_of_these() -> None:
 def test_a_force_that_breaks_the_third_law_shows() -> None:
     """|sum F| / sum |F| of the forces at hand: one field changed by a percent is told."""
     assert closed(MOVED.work).third_law_residual <= 1e-14
-    push = MOVED.work.coulomb.copy()
+    push = MOVED.work.pairs.copy()
     strongest = int(np.argmax(np.abs(MOVED.charges.charge * push[0])))
     push[0, strongest] *= 1.01
-    assert closed(MOVED.work._replace(coulomb=push)).third_law_residual > 1e-4
+    assert closed(MOVED.work._replace(pairs=push)).third_law_residual > 1e-4
 
 
 def test_forces_that_turn_the_cloud_show_and_make_the_allowance() -> None:
@@ -140,14 +142,12 @@ def test_forces_that_turn_the_cloud_show_and_make_the_allowance() -> None:
     row = closed(MOVED.work)
     assert row.torque_residual <= 1e-13
     x, y, z = MOVED.charges.position
-    turning = MOVED.work.coulomb.copy()
+    turning = MOVED.work.pairs.copy()
     turning[0] -= 1e3 * y
     turning[1] += 1e3 * x
     ledger = Ledger()
     ledger.close(0.0, MOVED.plan, MOVED.charges, MOVED.work)
-    spoiled = ledger.close(
-        DURATION, MOVED.plan, MOVED.charges, MOVED.work._replace(coulomb=turning)
-    )
+    spoiled = ledger.close(DURATION, MOVED.plan, MOVED.charges, MOVED.work._replace(pairs=turning))
     assert spoiled.torque_residual > 1e-6
     turn = 1e3 * np.array([-z * x, -z * y, x**2 + y**2])
     torque = np.linalg.norm((MOVED.charges.charge * turn).sum(axis=1))

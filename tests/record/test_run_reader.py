@@ -15,7 +15,7 @@ from driftwell import open_run
 from driftwell.answers.evidence import Moments, TraceRequest
 from driftwell.errors import AnswerError, RecordError
 from driftwell.record.header import trace_name
-from driftwell.record.layout import COUNTERS
+from driftwell.record.layout import COUNTERS, FORMAT_VERSION
 from driftwell.record.writer import RunWriter
 
 
@@ -166,9 +166,10 @@ def test_where_there_is_no_run_it_says_so(tmp_path, name):
 def test_a_newer_format_is_refused_with_the_version_that_reads_it(tmp_path):
     RunWriter.create(tmp_path / "run", invented_header())
     with h5py.File(tmp_path / "run" / "run.h5", "r+") as file:
-        file.attrs["format_version"] = 2
+        file.attrs["format_version"] = FORMAT_VERSION + 1
         file.attrs["driftwell_version"] = "9.1"
     with pytest.raises(
-        RecordError, match=r"format 2, .* reads up to 1; read it with driftwell 9\.1"
+        RecordError,
+        match=rf"format {FORMAT_VERSION + 1}, .* reads up to {FORMAT_VERSION}; .* driftwell 9\.1",
     ):
         open_run(tmp_path / "run")

@@ -34,8 +34,8 @@ def load() -> Particles:
 
 
 ROD = Extruded(circle((0.0, 0.0), 0.3e-3), np.inf, Frame(np.array([0.9e-3, 0.5e-3, 0.0])))
-SHEET = Extruded(rectangle((-0.4e-3, -1e-3), (1e-3, 1e-3)), 0.0, Frame(np.array([0, 0, 0.7e-3])))
-RING = Revolved(rectangle((0.75e-3, -0.2e-3), (0.8e-3, 0.2e-3)))
+SHEET = Extruded(rectangle((0.1e-3, -1e-3), (1e-3, 1e-3)), 0.0, Frame(np.array([0, 0, 0.8e-3])))
+RING = Revolved(rectangle((0.8e-3, -0.1e-3), (0.85e-3, 0.1e-3)))
 
 
 def busy_trap(particles: Particles, **options: Any) -> TimeLoop:

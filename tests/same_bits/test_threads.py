@@ -135,6 +135,13 @@ def executed(folder: Path, threads: int, cache: Path | None = None) -> Run:
                 "voltage": {"amplitude": "100 V", "frequency": "2 MHz"},
             }
         ],
+        "electrode": [
+            {
+                "name": "rod",
+                "voltage": "0 V",
+                "shape": [{"kind": "circle", "centre": ["0.6 mm", "0.4 mm"], "radius": "60 um"}],
+            }
+        ],
         "wall": [{"name": "bore", "kind": "cylinder", "radius": quantity(0.6e-3, "m")}],
         "detector": [{"name": "middle", "kind": "plane", "at": ["0 m", "0 m", "0.1 mm"]}],
         "stepping": {"step": "10 ns"},
@@ -170,6 +177,8 @@ def test_a_whole_run_leaves_the_same_record_on_one_thread_and_two(tmp_path: Path
     for rows in ("moments", "losses", "crossings", "ledger", "trace/time", "trace/value"):
         assert one.rows(rows).tobytes() == two.rows(rows).tobytes(), rows
     assert one.losses().size > 10
+    assert ("bore", "rod") == one.header.walls
+    assert {0, 1} == set(one.losses()["wall"])
     assert one.crossings().size > 10
     assert len(one.snapshots) == 3
     for time in one.snapshots:

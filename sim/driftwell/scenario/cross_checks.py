@@ -12,6 +12,7 @@ from driftwell.electrodes.faults import electrode_faults
 from driftwell.errors import ScenarioError
 from driftwell.forms import spelled
 from driftwell.forms.faults import Fault
+from driftwell.images.electrodes import ElectrodeImages
 from driftwell.particles.cloud import Amount
 from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT
@@ -27,7 +28,7 @@ _TOLD = 5
 
 def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
     """Faults of a scenario whose keys are all well on their own and whose names all exist."""
-    faults = [*_time_faults(scenario), *_question_faults(scenario)]
+    faults = [*_time_faults(scenario), *_question_faults(scenario), *_image_faults(scenario)]
     of_electrodes = electrode_faults(scenario.electrodes, scenario.electrode, folder)
     faults += of_electrodes
     if scenario.coulomb.softening >= scenario.stepping.extent:
@@ -78,6 +79,21 @@ def _question_faults(scenario: Scenario) -> Iterator[Fault]:
                 whole = spelled(scenario.duration, "s")
                 text = f"lies after the end of the run, {whole}"
                 yield Fault(("question", i, key), "", text)
+
+
+def _image_faults(scenario: Scenario) -> Iterator[Fault]:
+    """Electrodes that are to answer with images, and are not there or have no end."""
+    if not isinstance(scenario.images, ElectrodeImages):
+        return
+    if not scenario.electrode:
+        yield Fault(("images", "kind"), "", "needs an [[electrode]], which would answer; none is")
+    elif (
+        scenario.electrodes is not None
+        and scenario.electrodes.geometry == "planar"
+        and scenario.images.length is None
+    ):
+        text = "missing; needs the length that planar electrodes, which have no end, are cut to"
+        yield Fault(("images", "length"), "", text)
 
 
 def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Iterator[Fault]:

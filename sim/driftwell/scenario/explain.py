@@ -11,6 +11,7 @@ from driftwell.coulomb.direct import SMALL
 from driftwell.electrodes.form import electrodes_words
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
+from driftwell.images.form import ClosedForm
 from driftwell.particles.species import bodies
 from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.scenario.cautions import cautions
@@ -133,6 +134,11 @@ def _notes(loaded: LoadedScenario) -> Iterator[str]:
         yield (
             f'Charges of "{name}" stand for {weight:.6g} real ones each and meet without '
             "softening: chance encounters push harder than real ones; see [coulomb] softening."
+        )
+    if isinstance(scenario.images, ClosedForm) and not scenario.wall:
+        yield (
+            "Nothing stops charges at the conductor that answers with images: a [[wall]] where it "
+            "is does."
         )
     if not scenario.question:
         yield "No [[question]] is asked: the run only records."

@@ -1,17 +1,18 @@
 """Which charges come near enough to an electrode for their paths to be followed.
 
-A step's path (path.py) stays within
+A step's path (path.py) is no longer than
 
     reach = |x1 - x0| + h (|v0| + |v1|) / 2                                                 (1)
 
-of where the step begins, as long as velocity and acceleration at its ends do not contradict each
-other: twice what the quintic needs, whose control points lie 2 h v / 5 + h^2 a / 20 from its ends.
-A charge whose distance to the nearest surface is greater is left alone; all others are followed.
+as long as velocity and acceleration at its ends do not contradict each other: about twice what it
+really is. A path that is shorter than the distances to the nearest surface at both its ends
+together meets none: all its points lie within one of them of an end. Such charges are left alone,
+all others are followed.
 
 Distances are dear, so every charge has a *clearance*, a lower bound of its distance: what was last
-found, less the way made since. Only where that does not exceed the reach is the distance asked for
-again. So the clearance saves time and decides nothing: with any other lower bound, and zero is one,
-the same charges are followed.
+found, less the way made since. Only where that does not exceed the reach are the distances asked
+for again. So the clearance saves time and decides nothing: with any other lower bound, and zero is
+one, the same charges are followed.
 """
 
 from __future__ import annotations
@@ -45,16 +46,14 @@ def near_bodies(
     old_x, old_y, old_z = work.old_position[0], work.old_position[1], work.old_position[2]
     old_ux, old_uy, old_uz = work.old_velocity[0], work.old_velocity[1], work.old_velocity[2]
     clearance = work.clearance
-    light2, half = plan.light2, 0.5 * h
+    light2 = plan.light2
     near = 0
     for i in range(first, last):
         dx, dy, dz = x[i] - old_x[i], y[i] - old_y[i], z[i] - old_z[i]
         way = math.sqrt(dx * dx + dy * dy + dz * dz)
         before = old_ux[i] * old_ux[i] + old_uy[i] * old_uy[i] + old_uz[i] * old_uz[i]
         after = ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]
-        speeds = math.sqrt(before * light2 / (light2 + before))
-        speeds += math.sqrt(after * light2 / (light2 + after))
-        reach = way + half * speeds
+        reach = _reach(way, before, after, light2, h)
         left = clearance[i]
         far = left > reach
         near += not far
@@ -77,18 +76,24 @@ def _look_closer(
         if charges.alive[i] != 1:
             work.clearance[i] = np.inf
             continue
-        way2 = before = after = 0.0
+        way2 = before2 = after2 = 0.0
         for axis in range(3):
             way2 += (x[axis, i] - old[axis, i]) ** 2
-            before += old_u[axis, i] ** 2
-            after += u[axis, i] ** 2
-        way = math.sqrt(way2)
-        speeds = math.sqrt(before * plan.light2 / (plan.light2 + before))
-        speeds += math.sqrt(after * plan.light2 / (plan.light2 + after))
-        distance, _, _ = nearest_body(bodies, old[0, i], old[1, i], old[2, i])
-        if distance <= way + 0.5 * h * speeds:
+            before2 += old_u[axis, i] ** 2
+            after2 += u[axis, i] ** 2
+        reach = _reach(math.sqrt(way2), before2, after2, plan.light2, h)
+        before, _, _ = nearest_body(bodies, old[0, i], old[1, i], old[2, i])
+        after, _, _ = nearest_body(bodies, x[0, i], x[1, i], x[2, i])
+        if before < 0.0 or after < 0.0 or before + after <= reach:
             followed += 1
-            continue
-        left = distance * (1.0 - _SURE) - bodies.touch[0] - way * (1.0 + _SURE)
-        work.clearance[i] = max(left, 0.0)
+        else:
+            work.clearance[i] = max(after * (1.0 - _SURE) - bodies.touch[0], 0.0)
     return followed
+
+
+@inner_kernel
+def _reach(way: float, before2: float, after2: float, light2: float, h: float) -> float:
+    """Equation (1), from the squares of the proper speeds."""
+    speeds = math.sqrt(before2 * light2 / (light2 + before2))
+    speeds += math.sqrt(after2 * light2 / (light2 + after2))
+    return way + 0.5 * h * speeds
