@@ -100,6 +100,10 @@ class FieldForm(Form):
         """
         return {}
 
+    def strongest(self) -> float:
+        """Largest flux density, T, that the step and the cautions are to reckon with."""
+        return 0.0
+
     def where(self) -> str:
         """The centre in words, to end a sentence with; nothing where it is the origin."""
         if self.centre == (0.0, 0.0, 0.0):
