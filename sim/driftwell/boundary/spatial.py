@@ -25,7 +25,7 @@ from driftwell.kernels.threads import on_threads
 
 Floats = NDArray[np.float64]
 
-NEAR = 4.0
+NEAR = 3.0
 """Distance, in longest sides of a panel, within which its closed form is taken."""
 _FEW = 3e7
 """Pairs of panels and points up to which all panels are summed in closed form."""

@@ -141,12 +141,20 @@ def solve_spatial(
 def cut(bodies: Sequence[Sequence[Solid]], enclosure: Sequence[Solid], fineness: float) -> Surfaces:
     """All bodies as triangles, `fineness` edges along the root of half a body's surface."""
     turn = min(_TURN / fineness, math.pi / 4.0)
-    parts = [
-        (number, mesh_of(solid, _extent(solid) / fineness, turn, grade, fair=True))
-        for number, solids in enumerate([*bodies, enclosure])
-        for grade in (GRADE if number < len(bodies) else 1.0,)
-        for solid in solids
-    ]
+    parts: list[tuple[int, Mesh]] = []
+    for number, solids in enumerate([*bodies, enclosure]):
+        grade = GRADE if number < len(bodies) else 1.0
+        sizes = [_extent(solid) / fineness for solid in solids]
+        try:
+            parts += [
+                (number, mesh_of(solid, size, turn, grade, fair=True))
+                for solid, size in zip(solids, sizes, strict=True)
+            ]
+        except ValueError as fault:
+            raise DriftwellError(
+                f"electrode {number + 1}: {fault}; needs holes that keep clear of each other and "
+                "of edges, and corners that are not too sharp."
+            ) from fault
     return joined(parts, len(bodies))
 
 

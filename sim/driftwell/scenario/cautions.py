@@ -26,7 +26,8 @@ def cautions(scenario: Scenario) -> list[str]:
     """The hazards of what is simulated and whom to ask, one sentence each; empty where none."""
     known = bodies(scenario.species)
     light = [cloud for cloud in scenario.cloud if _is_electron(known[cloud.species])]
-    voltage = max((abs(v) for field in scenario.field for v in _values(field, "V")), default=0.0)
+    powered = (*scenario.field, *scenario.electrode)
+    voltage = max((abs(v) for each in powered for v in _values(each, "V")), default=0.0)
     magnet = max((_flux_density(field) for field in scenario.field), default=0.0)
     energy = max((_energy(cloud, known) for cloud in light), default=0.0)
     if light:

@@ -104,7 +104,7 @@ def content_lines(found: Content) -> list[str]:
     """One line for each order: volts at the radius, and as part of the quadrupole."""
     course = found.course
     steady = isinstance(course, float)
-    of = "constant voltages" if steady else f"voltages times {waveform_words(course, '1')}"
+    of = "constant voltages" if steady else f"voltages as {waveform_words(course, 'V')}"
     lines = [f"multipoles of the {of}, at {spelled(found.radius, 'm', 4)} from the centre:"]
     quadrupole = found.terms[2].amplitude if len(found.terms) > 2 else 0.0
     largest = max(abs(term.amplitude) for term in found.terms)
