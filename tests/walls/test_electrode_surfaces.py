@@ -121,9 +121,7 @@ def test_a_thin_sheet_is_met_in_the_midst_of_a_step_and_missed_beside(steps: flo
     own, course = FRAME.inward(start), along @ FRAME.axes.T
     way = -own[:, 2] / course[:, 2]
     foot = own + way[:, None] * course
-    way = np.where(
-        (np.hypot(foot[:, 0], foot[:, 1]) < 0.8) & (way > 0.0) & (way < 4.0), way, np.inf
-    )
+    way = np.where((np.hypot(foot[:, 0], foot[:, 1]) < 0.8) & (way > 0.0) & (way < 4.0), way, np.inf)
     expect(SOLIDS["sheet"], start, along, way, steps)
 
 
@@ -210,9 +208,7 @@ def test_what_begins_on_a_surface_may_leave_it() -> None:
     proper = SPEED * np.array([[0, 0, 1.0], [0.6, 0, -0.8], [0, 0, 0], [0, 0, 1], [0, 0, -1.0]])
     up = field("uniform-electric", strength="100 V/m")
     for step in (1e-5, 1.3e-7):
-        moving = to_end(
-            loop(ions(start, proper), 1e-5, step, fields=[up], bodies=[[plate], [sheet]])
-        )
+        moving = to_end(loop(ions(start, proper), 1e-5, step, fields=[up], bodies=[[plate], [sheet]]))
         assert [1, 0, 1, 1, 1] == list(moving.charges.alive)
         found = events(moving)
         assert [0] == list(found.surface)
