@@ -8,6 +8,7 @@ import pytest
 from driftwell.fields.evaluation import FieldValues, evaluate
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import (
+    ELECTRIC_APART,
     FIELD_KINDS,
     KERNELS_APART,
     electric_field,
@@ -189,7 +190,8 @@ def test_the_table_of_each_role_holds_its_fields_as_they_were_packed() -> None:
             assert one.kind == table.kind[row]
             wanted = np.zeros(16)
             wanted[: len(one.parameters)] = one.parameters
-            kept = 14 if one.kind in KERNELS_APART else 16  # two addresses follow
+            apart = one.kind in KERNELS_APART or one.kind in ELECTRIC_APART
+            kept = 14 if apart else 16  # addresses follow
             assert wanted[:kept].tolist() == table.parameter[row, :kept].tolist()
             data = table.data[table.first[row] : table.first[row + 1]]
             assert list(one.data) == data.tolist()

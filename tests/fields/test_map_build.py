@@ -97,8 +97,19 @@ def test_a_budget_too_small_is_told(spheres: PotentialMap) -> None:
     assert poor.grid.size <= 3000
     assert not poor.reached.met
     assert poor.reached.largest > 1e-6
-    assert "NOT within the 1e-06 asked for" in poor.reached.words()
+    assert "NOT within at most 1e-06, as asked for" in poor.reached.words()
     assert "NOT" not in spheres.reached.words()
+
+
+def test_an_rms_error_takes_fewer_nodes_than_a_largest_one() -> None:
+    """Error asked of the rms: reached, with the largest beyond it."""
+    made = build_map(
+        REGION, SPHERES, 1e-5, geometry="axisymmetric", depth=SPHERES.depth, judged="rms"
+    )
+    assert made.reached.met
+    assert made.reached.rms <= 1e-5 < made.reached.largest
+    assert "within an rms of 1e-05, as asked for" in made.reached.words()
+    assert made.reached.words() == PotentialMap.from_arrays(made.arrays()).reached.words()
 
 
 def test_errors_near_surfaces_are_told_apart_by_distance(spheres: PotentialMap) -> None:
@@ -163,3 +174,11 @@ def test_a_region_within_the_electrodes_is_refused() -> None:
         build_map(
             ((0.0, 1.0), (-1.0, 1.0)), sphere, 1e-3, geometry="axisymmetric", depth=sphere.depth
         )
+
+
+def test_conductors_beyond_the_region_leave_nothing_to_tell_of_their_neighbourhood() -> None:
+    sphere = Sphere(0.2)
+    region = ((0.0, 0.3), (1.0, 1.5))
+    made = build_map(region, sphere, 1e-4, geometry="axisymmetric", depth=sphere.depth)
+    assert made.reached.met
+    assert [0] * 5 == made.reached.near.count[:5].tolist()

@@ -16,7 +16,7 @@ from driftwell.scenario.read import read_scenario
 from tests.cases import BODIES, field
 from tests.grid_files import grids, nodes, round_polynomial, write_csv, write_hdf5
 from tests.potential_sources import PointCharges, Ring
-from tests.running import points, species
+from tests.running import carried_out, points, species
 from tests.scenario.good_scenarios import toml_file
 
 HALF, WHOLE = np.linspace(0.0, 4.0, 41), np.linspace(-4.0, 4.0, 81)
@@ -321,3 +321,31 @@ def test_the_digest_of_a_scenario_covers_the_files_of_its_fields(tmp_path: Path)
         for loaded in (again, changed)
     ]
     assert [1.5, 1.5] == pytest.approx(potential)  # the file is read when it is needed
+
+
+def test_a_run_in_a_map_ends_where_a_run_in_its_formula_ends(tmp_path: Path) -> None:
+    """A static quadrupole of 10 V, r0 = 5 mm, z0 = 4 mm, whose potential a quintic spline holds."""
+    place = nodes(r=HALF[::5], z=WHOLE[::5])
+    value = 10.0 * (2.0 * place["z"] ** 2 - place["r"] ** 2) / (5.0**2 + 2.0 * 4.0**2)
+    write_hdf5(tmp_path / "v.h5", {**place, "V": value})
+    quadrupole = {
+        "name": "trap",
+        "kind": "static-quadrupole",
+        "voltage": "10 V",
+        "radius": "5 mm",
+        "half_length": "4 mm",
+    }
+    ends = []
+    for one in (quadrupole, {"name": "trap", "kind": "potential-map", "path": "v.h5"}):
+        record = carried_out(
+            tmp_path,
+            2e-6,
+            species={"barium": species(2.3e-25)},
+            cloud=[points("one", "barium", [[1e-3, 0.5e-3, 2e-3]], [[0.0, 300.0, 0.0]])],
+            field=[one],
+            stepping={"step": "10 ns"},
+        )
+        ends.append(record.snapshot(record.end_time))
+    assert ends[0].position == pytest.approx(ends[1].position, rel=1e-11)
+    assert ends[0].velocity == pytest.approx(ends[1].velocity, rel=1e-11)
+    assert np.abs(np.ravel(ends[0].position) - [1e-3, 0.5e-3, 2e-3]).max() > 1e-4

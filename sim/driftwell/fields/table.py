@@ -21,9 +21,9 @@ Every magnetic kind (uniform or not) has a kernel for its field and one for what
     kernel(p, data, w, position, first, last, out_b)       B = w curl a, T, added to
     kernel(p, data, rate, position, first, last, out_e)    E = -(dw/dt) a, V/m, added to
 
-A kind with long formulas is compiled apart, and only where a scenario uses it: its two kernels
-stand in :data:`KERNELS_APART`, with no branch of their own, and it has 14 parameters at most
-(fields/apart.py).
+A kind with long formulas is compiled apart, and only where a scenario uses it: its kernels stand in
+:data:`KERNELS_APART` or, an electric one's, in :data:`ELECTRIC_APART`, with no branch of their own,
+and it has 14 parameters at most (fields/apart.py).
 
 A uniform magnetic kind keeps the unit vector of its field in ``p[3:6]``, so that the stepping can
 sum w n over all of them and turn each charge on its exact helix.
@@ -37,7 +37,15 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.fields.apart import APART, call_field, call_induced, note_addresses
+from driftwell.fields.apart import (
+    APART,
+    ELECTRIC,
+    MAGNETIC,
+    call_electric,
+    call_field,
+    call_induced,
+    note_addresses,
+)
 from driftwell.fields.electric_multipole import (
     ELECTRIC_MULTIPOLE,
     ElectricMultipole,
@@ -144,9 +152,13 @@ KERNELS_APART = {
     MAGNET_BLOCK: (magnet_block, magnet_block_induced),
     MAGNET_CYLINDER: (magnet_cylinder, magnet_cylinder_induced),
     MULTIPOLE_MAGNET: (multipole_magnet, multipole_magnet_induced),
+    ROUND_MAGNETIC_MAP: (round_magnetic_map, round_magnetic_map_induced),
+    SPATIAL_MAGNETIC_MAP: (spatial_magnetic_map, spatial_magnetic_map_induced),
 }
-"""Of the kinds that are compiled apart: kernels of the field and of what it induces."""
-LAST_APART = max(KERNELS_APART)
+"""Of the magnetic kinds that are compiled apart: kernels of the field and of what it induces."""
+ELECTRIC_APART = {ROUND_MAP: round_map, PLANAR_MAP: planar_map, SPATIAL_MAP: spatial_map}
+"""Of the electric kinds that are compiled apart: the kernel."""
+LAST_APART = max(*KERNELS_APART, *ELECTRIC_APART)
 
 PARAMETERS = 16
 
@@ -179,7 +191,9 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     for row, field in enumerate(fields):
         parameter[row, : len(field.parameters)] = field.parameters
         if field.kind in KERNELS_APART:
-            note_addresses(field.kind, KERNELS_APART[field.kind], parameter[row])
+            note_addresses(field.kind, KERNELS_APART[field.kind], MAGNETIC, parameter[row])
+        elif field.kind in ELECTRIC_APART:
+            note_addresses(field.kind, (ELECTRIC_APART[field.kind],), ELECTRIC, parameter[row])
         first[row + 1] = first[row] + data[row].size
     return FieldTable(
         np.array([field.kind for field in fields], dtype=np.int64),
@@ -227,12 +241,8 @@ def electric_field(
         return quadro_logarithmic(p, data, w, position, charge, first, last, out_field)
     if kind == WIRE_IN_CYLINDER:
         return wire_in_cylinder(p, data, w, position, charge, first, last, out_field)
-    if kind == ROUND_MAP:
-        return round_map(p, data, w, position, charge, first, last, out_field)
-    if kind == PLANAR_MAP:
-        return planar_map(p, data, w, position, charge, first, last, out_field)
-    if kind == SPATIAL_MAP:
-        return spatial_map(p, data, w, position, charge, first, last, out_field)
+    if APART <= kind <= LAST_APART:
+        return call_electric(p, data, w, position, charge, first, last, out_field)
     return np.nan
 
 
@@ -252,10 +262,6 @@ def magnetic_field(
         uniform_magnetic(p, data, w, position, first, last, out_b)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole(p, data, w, position, first, last, out_b)
-    elif kind == ROUND_MAGNETIC_MAP:
-        round_magnetic_map(p, data, w, position, first, last, out_b)
-    elif kind == SPATIAL_MAGNETIC_MAP:
-        spatial_magnetic_map(p, data, w, position, first, last, out_b)
     elif APART <= kind <= LAST_APART:
         call_field(p, data, w, position, first, last, out_b)
     else:
@@ -278,10 +284,6 @@ def induced_field(
         uniform_magnetic_induced(p, data, rate, position, first, last, out_e)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole_induced(p, data, rate, position, first, last, out_e)
-    elif kind == ROUND_MAGNETIC_MAP:
-        round_magnetic_map_induced(p, data, rate, position, first, last, out_e)
-    elif kind == SPATIAL_MAGNETIC_MAP:
-        spatial_magnetic_map_induced(p, data, rate, position, first, last, out_e)
     elif APART <= kind <= LAST_APART:
         call_induced(p, data, rate, position, first, last, out_e)
     else:

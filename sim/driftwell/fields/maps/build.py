@@ -22,7 +22,7 @@ from driftwell.fields.maps.error_points import (
 )
 from driftwell.fields.maps.grid import FEWEST
 from driftwell.fields.maps.potential_map import MapGeometry, PotentialMap
-from driftwell.fields.maps.reached import NearErrors, Reached, errors_by_distance
+from driftwell.fields.maps.reached import Judged, NearErrors, Reached, errors_by_distance
 from driftwell.fields.maps.sampled_grid import SampledGrid, next_counts, sampled
 from driftwell.fields.maps.source import Asked, Depth, PotentialSource
 
@@ -45,6 +45,7 @@ def build_map(
     mirrors: Sequence[bool] | None = None,
     depth: Depth | None = None,
     clearance: float | None = None,
+    judged: Judged = "largest",
     most_nodes: int = MOST_NODES,
     told: Callable[[int], None] | None = None,
 ) -> PotentialMap:
@@ -55,13 +56,15 @@ def build_map(
     region : from and to along each axis, m; the axis r from 0 (or, of an annulus, from its inner
         radius)
     source : unit solutions
-    accuracy : largest error of the field at the test points, as part of its rms over them
+    accuracy : error of the field at the test points, as part of its rms over them
     geometry : what the coordinates are
     mirrors : for each axis, whether the source is even in it; r is, always
     depth : distance (n,) of points (n, d) from the nearest surface, negative inside conductors;
         None where there are no conductors within the region
     clearance : test points nearer to a surface do not count, but are told, m; left out:
         :data:`NEAR_PART` of the region's smallest extent
+    judged : whether that is the largest error or the rms. With edges in the region the largest is
+        that of a few points beside them; with the rms it takes far fewer nodes
     most_nodes : of the grid
     told : called with the number of points the source was asked at so far
 
@@ -90,16 +93,15 @@ def build_map(
     poor = 0
     while True:
         made = sampled(tuple(ends), counts, mirrored, asked, depth, geometry, made)
-        reached = _measured(made, tests, accuracy, asked.count)
-        gain = best.reached.largest / reached.largest if best and reached.largest else math.inf
+        reached = _measured(made, tests, accuracy, judged, asked.count)
+        gain = best.reached.error / reached.error if best and reached.error else math.inf
         if best is None or gain > 1.0:
             best = PotentialMap(geometry, made.grid, made.coefficients, reached)
         poor = poor + 1 if gain < 1.1 else 0
         if reached.met or poor == 2:
             break
-        wider = next_counts(
-            made, tests.scale, tests.clearance, reached.largest / accuracy, most_nodes
-        )
+        excess = reached.error / accuracy
+        wider = next_counts(made, tests.scale, tests.clearance, excess, most_nodes)
         if wider is None:
             break
         counts = wider
@@ -112,9 +114,10 @@ def build_map(
             depth,
             geometry == "axisymmetric",
         )
-        near = _near_errors(best, tests, close)
-        count = len(tests.points) + len(close.points)
-        best = replace(best, reached=replace(best.reached, near=near, points=count))
+        if close is not None:
+            near = _near_errors(best, tests, close)
+            count = len(tests.points) + len(close.points)
+            best = replace(best, reached=replace(best.reached, near=near, points=count))
     return replace(best, reached=replace(best.reached, evaluations=asked.count))
 
 
@@ -135,12 +138,15 @@ def _first_counts(ends: Region, most_nodes: int) -> tuple[int, ...]:
     return tuple(min(longest, 1 + math.ceil(extent / cell * (1.0 - 1e-9))) for extent in extents)
 
 
-def _measured(made: SampledGrid, tests: ErrorPoints, accuracy: float, evaluations: int) -> Reached:
+def _measured(
+    made: SampledGrid, tests: ErrorPoints, accuracy: float, judged: Judged, evaluations: int
+) -> Reached:
     error = field_errors(made.grid, made.coefficients, tests, tests.scale)
     far = error[:, tests.far]
     edges = np.append(np.array(_DISTANCES) * max(made.grid.spacing), np.inf)
     return Reached(
         wanted=accuracy,
+        judged=judged,
         rms=float(np.sqrt(np.mean(far**2, axis=1)).max()),
         largest=float(far.max()),
         clearance=tests.clearance,

@@ -90,7 +90,7 @@ def field_errors(grid: Grid, coefficients: Floats, tests: ErrorPoints, scale: Fl
 
 def points_beside_surfaces(
     ends: Region, grid: Grid, reach: float, asked: Asked, depth: Depth, is_round: bool
-) -> ErrorPoints:
+) -> ErrorPoints | None:
     """Points within a reach of surfaces, where a draw from the whole region has few."""
     random = np.random.default_rng(_SEED + 1)
     low, high = np.array(ends).T
@@ -105,4 +105,6 @@ def points_beside_surfaces(
     distance = depth(points)
     kept = (distance > 0.0) & np.all((points >= low) & (points <= high), axis=1)
     points, distance = points[kept], distance[kept]
+    if len(points) == 0:
+        return None
     return ErrorPoints(points, distance, asked.field(points), 0.0)

@@ -83,13 +83,13 @@ class Grid:
         )
 
     def parameters(self) -> tuple[float, ...]:
-        """Origin, 1/spacing, cells and mirrors as the kernels take them, three of each."""
+        """Origin, 1/spacing and cells, three of each, and the mirrors, as the kernels take them."""
         missing = (0.0,) * (3 - self.axes)
         return (
             *(*self.origin, *missing),
             *(*(1.0 / h for h in self.spacing), *missing),
             *(*(float(n - 1) for n in self.counts), *missing),
-            *(*(float(m) for m in self.mirrors), *missing),
+            float(sum(1 << a for a in range(self.axes) if self.mirrors[a])),
         )
 
 

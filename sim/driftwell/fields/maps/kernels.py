@@ -10,10 +10,11 @@ The force is minus the gradient of the spline itself, so that energy is kept as 
 axis that is mirrored holds one half, from 0 on: the coordinate's sign is dropped, and the
 coefficients on the other side of 0 are those of this side, so the spline is exactly even.
 
-Layout of the parameters: centre (3), origin of the grid (3), 1/spacing (3), cells (3), for each
-axis whether it is mirrored (3); a map of two axes leaves the third number of each out as 0. The
-coefficients follow each other with the last axis fastest; along an axis there are 5 more of them
-than cells, and :data:`~driftwell.kernels.spline.SPARE` numbers follow the last.
+Layout of the parameters: centre (3), origin of the grid (3), 1/spacing (3), cells (3), and one
+number for the mirrors: the sum of 1, 2 and 4 for the axes that are mirrored. A map of two axes
+leaves the third number of each out as 0. The coefficients follow each other with the last axis
+fastest; along an axis there are 5 more of them than cells, and
+:data:`~driftwell.kernels.spline.SPARE` numbers follow the last.
 """
 
 from __future__ import annotations
@@ -22,20 +23,20 @@ import math
 
 import numpy as np
 
-from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels import inner_kernel, kernel
 from driftwell.kernels.spline import DEGREE, cell_of, spline_2d, spline_3d
 
-ROUND_MAP = 40
-PLANAR_MAP = 41
-SPATIAL_MAP = 42
+ROUND_MAP = 71
+PLANAR_MAP = 72
+SPATIAL_MAP = 73
 
 CENTRE, ORIGIN, PER_SPACING, CELLS, MIRRORED = 0, 3, 6, 9, 12
 
 
 @inner_kernel
-def folded(x: float, mirrored: float) -> tuple[float, float]:
+def folded(x: float, mirrors: float, axis: int) -> tuple[float, float]:
     """The coordinate in the half that is kept, and the sign of its derivative."""
-    if mirrored > 0.0 and x < 0.0:
+    if x < 0.0 and (int(mirrors) >> axis) & 1:
         return -x, -1.0
     return x, 1.0
 
@@ -46,7 +47,7 @@ def inverse_radius(r: float) -> float:
     return 1.0 / r if r > 0.0 else 0.0
 
 
-@outer_kernel
+@kernel
 def round_map(
     p: np.ndarray,
     data: np.ndarray,
@@ -64,7 +65,7 @@ def round_map(
     total = 0.0
     for i in range(first, last):
         dx, dy = x[i] - p[0], y[i] - p[1]
-        dz, sign = folded(z[i] - p[2], p[MIRRORED + 1])
+        dz, sign = folded(z[i] - p[2], p[MIRRORED], 1)
         r = math.sqrt(dx * dx + dy * dy)
         u = (r - p[ORIGIN]) * p[PER_SPACING]
         v = (dz - p[ORIGIN + 1]) * p[PER_SPACING + 1]
@@ -78,7 +79,7 @@ def round_map(
     return total
 
 
-@outer_kernel
+@kernel
 def planar_map(
     p: np.ndarray,
     data: np.ndarray,
@@ -95,8 +96,8 @@ def planar_map(
     stride = int(p[CELLS + 1]) + DEGREE
     total = 0.0
     for i in range(first, last):
-        dx, x_sign = folded(x[i] - p[0], p[MIRRORED])
-        dy, y_sign = folded(y[i] - p[1], p[MIRRORED + 1])
+        dx, x_sign = folded(x[i] - p[0], p[MIRRORED], 0)
+        dy, y_sign = folded(y[i] - p[1], p[MIRRORED], 1)
         u = (dx - p[ORIGIN]) * p[PER_SPACING]
         v = (dy - p[ORIGIN + 1]) * p[PER_SPACING + 1]
         k, j = cell_of(u, p[CELLS]), cell_of(v, p[CELLS + 1])
@@ -107,7 +108,7 @@ def planar_map(
     return total
 
 
-@outer_kernel
+@kernel
 def spatial_map(
     p: np.ndarray,
     data: np.ndarray,
@@ -125,9 +126,9 @@ def spatial_map(
     slab = stride * (int(p[CELLS + 1]) + DEGREE)
     total = 0.0
     for i in range(first, last):
-        dx, x_sign = folded(x[i] - p[0], p[MIRRORED])
-        dy, y_sign = folded(y[i] - p[1], p[MIRRORED + 1])
-        dz, z_sign = folded(z[i] - p[2], p[MIRRORED + 2])
+        dx, x_sign = folded(x[i] - p[0], p[MIRRORED], 0)
+        dy, y_sign = folded(y[i] - p[1], p[MIRRORED], 1)
+        dz, z_sign = folded(z[i] - p[2], p[MIRRORED], 2)
         u = (dx - p[ORIGIN]) * p[PER_SPACING]
         v = (dy - p[ORIGIN + 1]) * p[PER_SPACING + 1]
         q = (dz - p[ORIGIN + 2]) * p[PER_SPACING + 2]

@@ -17,14 +17,14 @@ import math
 import numpy as np
 
 from driftwell.fields.maps.kernels import CELLS, ORIGIN, PER_SPACING
-from driftwell.kernels import outer_kernel
+from driftwell.kernels import kernel
 from driftwell.kernels.spline import DEGREE, cell_of, spline_2d, spline_3d
 
-ROUND_MAGNETIC_MAP = 43
-SPATIAL_MAGNETIC_MAP = 44
+ROUND_MAGNETIC_MAP = 69
+SPATIAL_MAGNETIC_MAP = 70
 
 
-@outer_kernel
+@kernel
 def round_magnetic_map(
     p: np.ndarray,
     data: np.ndarray,
@@ -51,7 +51,7 @@ def round_magnetic_map(
         bz[i] += w * (2.0 * f + r * fr * p[PER_SPACING])
 
 
-@outer_kernel
+@kernel
 def round_magnetic_map_induced(
     p: np.ndarray,
     data: np.ndarray,
@@ -76,7 +76,7 @@ def round_magnetic_map_induced(
         ey[i] -= rate * f * dx
 
 
-@outer_kernel
+@kernel
 def spatial_magnetic_map(
     p: np.ndarray,
     data: np.ndarray,
@@ -106,7 +106,7 @@ def spatial_magnetic_map(
         bz[i] += w * gz
 
 
-@outer_kernel
+@kernel
 def spatial_magnetic_map_induced(
     p: np.ndarray,
     data: np.ndarray,

@@ -8,6 +8,7 @@ from typing import Literal, Self, cast, get_args
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from driftwell.fields.apart import ELECTRIC, call_electric, note_addresses
 from driftwell.fields.form import PackedField, Role
 from driftwell.fields.maps.grid import Grid
 from driftwell.fields.maps.kernels import (
@@ -38,6 +39,7 @@ KIND_NUMBERS: dict[str, int] = {
     "planar": PLANAR_MAP,
     "spatial": SPATIAL_MAP,
 }
+_KERNELS = {ROUND_MAP: round_map, PLANAR_MAP: planar_map, SPATIAL_MAP: spatial_map}
 CONSTANT_ONE = PackedWaveform(CONSTANT, (1.0,))
 
 
@@ -160,13 +162,13 @@ def map_values(packed: PackedField, points: ArrayLike) -> tuple[Floats, Floats]:
     potential, field = np.empty(len(place)), np.zeros((3, len(place)))
     parameters = np.zeros(16)
     parameters[: len(packed.parameters)] = packed.parameters
-    _add_values(packed.kind, parameters, np.asarray(packed.data), position, potential, field)
+    note_addresses(packed.kind, (_KERNELS[packed.kind],), ELECTRIC, parameters)
+    _add_values(parameters, np.asarray(packed.data), position, potential, field)
     return potential, np.ascontiguousarray(field[used].T)
 
 
 @kernel
 def _add_values(
-    kind: int,
     p: np.ndarray,
     data: np.ndarray,
     position: np.ndarray,
@@ -177,9 +179,4 @@ def _add_values(
     one = out_potential  # its own charge: read before it is written
     for i in range(out_potential.size):
         one[i] = 1.0
-        if kind == ROUND_MAP:
-            out_potential[i] = round_map(p, data, 1.0, position, one, i, i + 1, out_field)
-        elif kind == PLANAR_MAP:
-            out_potential[i] = planar_map(p, data, 1.0, position, one, i, i + 1, out_field)
-        else:
-            out_potential[i] = spatial_map(p, data, 1.0, position, one, i, i + 1, out_field)
+        out_potential[i] = call_electric(p, data, 1.0, position, one, i, i + 1, out_field)

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from itertools import pairwise
+from typing import Literal, cast, get_args
 
 import numpy as np
 from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
+Judged = Literal["largest", "rms"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,7 +35,8 @@ class Reached:
     Of several electrodes the worst counts. Test points nearer than `clearance` to a surface are
     told in `near` only: not even a fine grid follows the field at a sharp edge.
 
-    wanted : largest error asked for
+    wanted : error asked for
+    judged : which of the two it was asked of
     rms, largest : beyond the clearance
     clearance : m
     points : number of test points, near ones too
@@ -43,6 +46,7 @@ class Reached:
     """
 
     wanted: float
+    judged: Judged
     rms: float
     largest: float
     clearance: float
@@ -52,23 +56,30 @@ class Reached:
     evaluations: int
 
     @property
+    def error(self) -> float:
+        """The error that is judged."""
+        return self.largest if self.judged == "largest" else self.rms
+
+    @property
     def met(self) -> bool:
         """Whether the error asked for was reached."""
-        return self.largest <= self.wanted
+        return self.error <= self.wanted
 
     def words(self) -> str:
         """One sentence, with what was asked for."""
         beyond = f" farther than {self.clearance:.3g} m from the electrodes" * (self.clearance > 0)
         how = "within" if self.met else "NOT within"
+        what = "at most" if self.judged == "largest" else "an rms of"
         return (
             f"field error at most {self.largest:.2g}, rms {self.rms:.2g} of the rms field{beyond}, "
-            f"{how} the {self.wanted:.2g} asked for"
+            f"{how} {what} {self.wanted:.2g}, as asked for"
         )
 
     def arrays(self) -> dict[str, NDArray[np.generic]]:
         """All of it by name."""
         return {
             "error": np.array([self.wanted, self.rms, self.largest, self.clearance]),
+            "judged": np.array([self.judged.encode()]),
             "error_counts": np.array([self.points, self.evaluations]),
             "rms_field": self.rms_field,
             "near_edges": self.near.edges,
@@ -89,7 +100,20 @@ def reached_from(arrays: dict[str, NDArray[np.generic]]) -> Reached:
         np.asarray(arrays["near_largest"], dtype=np.float64),
     )
     field = np.asarray(arrays["rms_field"], dtype=np.float64)
-    return Reached(wanted, rms, largest, clearance, points, near, field, evaluations)
+    judged = bytes(np.asarray(arrays["judged"])[0]).decode()
+    if judged not in get_args(Judged):
+        raise ValueError(f"the error of a map cannot be judged by {judged!r}")
+    return Reached(
+        wanted,
+        cast(Judged, judged),
+        rms,
+        largest,
+        clearance,
+        points,
+        near,
+        field,
+        evaluations,
+    )
 
 
 def errors_by_distance(error: Floats, distance: Floats, edges: Floats) -> NearErrors:

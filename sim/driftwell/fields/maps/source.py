@@ -46,7 +46,7 @@ class Asked:
 
     def _in_parts(self, ask: Callable[[Floats], Floats], points: Floats) -> Floats:
         parts = []
-        for start in range(0, max(len(points), 1), _AT_ONCE):  # of no points, none
+        for start in range(0, len(points), _AT_ONCE):
             some = np.ascontiguousarray(points[start : start + _AT_ONCE])
             parts.append(np.asarray(ask(some), dtype=np.float64))
             self.count += len(some)
