@@ -40,8 +40,8 @@ from driftwell.geometry.outline import Outline
 
 Floats = NDArray[np.float64]
 
-MOST_NODES = 8000
-"""Beyond this the matrix takes more than half a gigabyte."""
+MOST_NODES = 7000
+"""Beyond this the matrix takes more than 0.4 gigabytes."""
 BEST_ACCURACY = 1e-10
 _PATIENCE, _NEARLY = 3, 10.0
 """Rounds that must halve the error, else one of this many times what was asked for is let be."""
@@ -244,12 +244,13 @@ def _solved(elements: Elements, rings: bool, count: int, rules: Quadrature) -> _
     voltage = (np.repeat(elements.electrode, ORDER)[:, None] == np.arange(count)) * 1.0
     matrix = _weights(points.reshape(-1, 2), elements, nodes, rings, rules)
     if not rings:
-        matrix = np.block([[matrix, np.ones((size, 1))], [nodes[2:3], np.zeros((1, 1))]])
-        voltage = np.concatenate([voltage, np.zeros((1, count))])
+        # the constant first: eliminated last it lets rounding grow a millionfold
+        matrix = np.block([[np.zeros((1, 1)), nodes[2:3]], [np.ones((size, 1)), matrix]])
+        voltage = np.concatenate([np.zeros((1, count)), voltage])
     found = lu_solve(lu_factor(matrix, overwrite_a=True, check_finite=False), voltage)
     del matrix
-    density = np.ascontiguousarray(found[:size].T)
-    constants = np.zeros(count) if rings else found[size]
+    density = np.ascontiguousarray(found[-size:].T)
+    constants = np.zeros(count) if rings else found[0]
     checked, _ = elements.places(_BETWEEN)
     potential = _weights(checked.reshape(-1, 2), elements, nodes, rings, rules) @ density.T
     expected = np.repeat(elements.electrode, len(_BETWEEN))[:, None] == np.arange(count)
