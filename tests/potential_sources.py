@@ -1,6 +1,6 @@
 """Potentials in closed form, for maps to be made of: spheres, point charges, charged rings.
 
-All are e unit solutions at points (n, d), as `driftwell.fields.maps.continuation.PotentialSource`.
+All are e unit solutions at points (n, d), as `driftwell.fields.maps.source.PotentialSource`.
 """
 
 from __future__ import annotations

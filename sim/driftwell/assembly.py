@@ -18,11 +18,15 @@ from driftwell.fields.table import field_tables
 from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.images.electrodes import ElectrodeImages, electrode_images
+from driftwell.images.form import ClosedForm, followed
+from driftwell.images.image_sum import Images
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.record.form import DEFAULT_RECORDS
 from driftwell.record.header import Header, trace_name
 from driftwell.record.rows import tracked_ids
+from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.cross_checks import MOST_STEPS
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -62,6 +66,7 @@ class Assembly:
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
     acting : the electrodes' solved field; None without electrodes
+    conductors : the electrodes as surfaces
     """
 
     scenario: Scenario
@@ -73,6 +78,7 @@ class Assembly:
     choice: StepChoice
     schedule: Schedule
     extent: Extent
+    conductors: Conductors
     acting: ActingField | None = None
 
     @property
@@ -104,9 +110,10 @@ class Assembly:
             coulomb_accuracy=scenario.coulomb.accuracy,
             field_error=0.0 if self.acting is None else self.acting.solved.error,
             field_digest="" if self.acting is None else self.acting.solved.digest,
+            images="" if scenario.images is None else scenario.images.words(),
             clouds=self.clouds,
             species=self.species,
-            walls=tuple(wall.name for wall in self.walls),
+            walls=(*(wall.name for wall in self.walls), *self.conductors.names),
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -143,7 +150,25 @@ class Assembly:
             [_traced(request, self.clouds) for request in self.requests],
             threads,
             state,
+            self.images(),
+            self.conductors.table,
         )
+
+    def images(self) -> Images | None:
+        """The conductors that answer to the charges, made; None where none does."""
+        form = self.scenario.images
+        if form is None:
+            return None
+        if isinstance(form, ElectrodeImages):
+            solids = [solid for own in self.conductors.bodies for solid in own]
+            return electrode_images(solids, form.panels, form.length)
+        if not isinstance(form, ClosedForm):
+            return None
+        particles = self.particles
+        kick = self.choice.step * self.scenario.stepping.coulomb_every
+        charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+        away = form.distance(particles.position)
+        return form.images(followed(kick, charge, mass, particles.velocity, away))
 
 
 def assembled(
@@ -165,10 +190,12 @@ def assembled(
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = _loaded_particles(loaded, bodies, species)
-    _check_births(scenario, particles)
+    conductors = Conductors.of(scenario, loaded.folder)
+    _check_births(scenario, particles, conductors)
     acting = acting_field(scenario, loaded.folder, told)
     if acting is not None:
         _check_within(scenario, particles, acting)
+    _check_sides(scenario, particles)
     requests = _traces(scenario)
     choice, every = _steps(scenario, bodies, species, particles, requests, acting)
     samples = scenario.duration / every if requests else 0.0
@@ -186,6 +213,7 @@ def assembled(
         choice,
         plan,
         _counted(extent, plan),
+        conductors,
         acting,
     )
 
@@ -233,17 +261,21 @@ def _loaded_particles(
     return joined(parts), clouds
 
 
-def _check_births(scenario: Scenario, particles: Particles) -> None:
-    """Refuse charges born outside a wall that encloses a space."""
+def _check_births(scenario: Scenario, particles: Particles, conductors: Conductors) -> None:
+    """Refuse charges born outside a wall that encloses a space, or inside an electrode."""
+    for index, cloud in enumerate(scenario.cloud):
+        struck = conductors.struck(particles.position.T[particles.cloud == index])
+        if struck:
+            raise ScenarioError(f'[[cloud]] "{cloud.name}": {struck}.')
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
         outside = np.flatnonzero(row <= 0)
         if wall.closed() and outside.size:
             x, y, z = particles.position[:, outside[0]]
-            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+            born = scenario.cloud[int(particles.cloud[outside[0]])].name
             raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin '
+                f'[[cloud]] "{born}": {outside.size} of {len(particles)} charges do not begin '
                 f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
                 "Make the cloud smaller, move it, or enlarge the wall."
             )
@@ -260,6 +292,22 @@ def _check_within(scenario: Scenario, particles: Particles, acting: ActingField)
             f"electrodes' field is not worked out; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m, "
             f"and the field is known for {acting.solved.where()}. Give [electrodes] a larger "
             "`region`, or move the cloud."
+        )
+
+
+def _check_sides(scenario: Scenario, particles: Particles) -> None:
+    """Refuse charges born where the conductor that answers to them is, or beyond it."""
+    form = scenario.images
+    if not isinstance(form, ClosedForm):
+        return
+    outside = np.flatnonzero(~(form.distance(particles.position) > 0.0))
+    if outside.size:
+        x, y, z = particles.position[:, outside[0]]
+        cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
+        raise ScenarioError(
+            f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin on the '
+            f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
+            f"{z:.6g}) m. Move the cloud, or the conductor."
         )
 
 

@@ -342,7 +342,9 @@ class _Execution:
     def _keep_events(self) -> None:
         """Record what happened on surfaces, and the samples taken, since the last time."""
         for events in self._loop.take_events():
-            losses, crossings = event_rows(events, len(self._parts.walls))
+            losses, crossings = event_rows(
+                events, len(self._parts.walls), len(self._scenario.detector)
+            )
             self._writer.losses(losses)
             self._writer.crossings(crossings)
         for times, values in self._loop.take_samples():

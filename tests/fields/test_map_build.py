@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from driftwell.errors import ScenarioError
-from driftwell.fields.maps import build
+from driftwell.fields.maps import sampled_grid
 from driftwell.fields.maps.build import build_map
 from driftwell.fields.maps.potential_map import PotentialMap
 from tests.potential_sources import LineCharge, PointCharges, Ring, Sphere, TwoSpheres
@@ -83,7 +83,7 @@ def test_continuation_into_conductors_makes_the_field_at_their_surface_a_hundred
     sphere = Sphere(0.3)
     keys = {"geometry": "axisymmetric", "depth": sphere.depth, "most_nodes": 20_000}
     smooth = build_map(((0.0, 1.0), (-1.0, 1.0)), sphere, 1e-12, **keys)
-    monkeypatch.setattr(build, "continue_inside", lambda *_: 0)
+    monkeypatch.setattr(sampled_grid, "continue_inside", lambda *_: 0)
     kinked = build_map(((0.0, 1.0), (-1.0, 1.0)), sphere, 1e-12, **keys)
     assert smooth.grid.counts == pytest.approx(kinked.grid.counts, rel=0.2)
     for near, far in zip(smooth.reached.near.rms[:4], kinked.reached.near.rms[:4], strict=True):

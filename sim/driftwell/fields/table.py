@@ -21,6 +21,10 @@ Every magnetic kind (uniform or not) has a kernel for its field and one for what
     kernel(p, data, w, position, first, last, out_b)       B = w curl a, T, added to
     kernel(p, data, rate, position, first, last, out_e)    E = -(dw/dt) a, V/m, added to
 
+A kind with long formulas is compiled apart, and only where a scenario uses it: its two kernels
+stand in :data:`KERNELS_APART`, with no branch of their own, and it has 14 parameters at most
+(fields/apart.py).
+
 A uniform magnetic kind keeps the unit vector of its field in ``p[3:6]``, so that the stepping can
 sum w n over all of them and turn each charge on its exact helix.
 """
@@ -33,6 +37,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.fields.apart import APART, call_field, call_induced, note_addresses
 from driftwell.fields.electric_multipole import (
     ELECTRIC_MULTIPOLE,
     ElectricMultipole,
@@ -45,6 +50,34 @@ from driftwell.fields.magnetic_multipole import (
     magnetic_multipole,
     magnetic_multipole_induced,
 )
+from driftwell.fields.magnets.current_loop import (
+    CURRENT_LOOP,
+    CurrentLoop,
+    current_loop,
+    current_loop_induced,
+)
+from driftwell.fields.magnets.magnet_block import (
+    MAGNET_BLOCK,
+    MagnetBlock,
+    magnet_block,
+    magnet_block_induced,
+)
+from driftwell.fields.magnets.magnet_cylinder import (
+    MAGNET_CYLINDER,
+    MagnetCylinder,
+    magnet_cylinder,
+    magnet_cylinder_induced,
+)
+from driftwell.fields.magnets.multipole_magnet import (
+    MULTIPOLE_MAGNET,
+    MultipoleMagnet,
+    multipole_magnet,
+    multipole_magnet_induced,
+)
+from driftwell.fields.magnets.solenoid import SOLENOID, Solenoid, solenoid, solenoid_induced
+from driftwell.fields.map_files.electric import ElectricMapFile
+from driftwell.fields.map_files.magnetic import MagneticMapFile
+from driftwell.fields.map_files.potential import PotentialMapFile
 from driftwell.fields.maps.kernels import (
     PLANAR_MAP,
     ROUND_MAP,
@@ -52,6 +85,14 @@ from driftwell.fields.maps.kernels import (
     planar_map,
     round_map,
     spatial_map,
+)
+from driftwell.fields.maps.magnetic_kernels import (
+    ROUND_MAGNETIC_MAP,
+    SPATIAL_MAGNETIC_MAP,
+    round_magnetic_map,
+    round_magnetic_map_induced,
+    spatial_magnetic_map,
+    spatial_magnetic_map_induced,
 )
 from driftwell.fields.quadro_logarithmic import (
     QUADRO_LOGARITHMIC,
@@ -87,7 +128,25 @@ FIELD_KINDS: tuple[type[FieldForm], ...] = (
     MagneticMultipole,
     QuadroLogarithmic,
     WireInCylinder,
+    PotentialMapFile,
+    ElectricMapFile,
+    MagneticMapFile,
+    CurrentLoop,
+    Solenoid,
+    MagnetBlock,
+    MagnetCylinder,
+    MultipoleMagnet,
 )
+
+KERNELS_APART = {
+    CURRENT_LOOP: (current_loop, current_loop_induced),
+    SOLENOID: (solenoid, solenoid_induced),
+    MAGNET_BLOCK: (magnet_block, magnet_block_induced),
+    MAGNET_CYLINDER: (magnet_cylinder, magnet_cylinder_induced),
+    MULTIPOLE_MAGNET: (multipole_magnet, multipole_magnet_induced),
+}
+"""Of the kinds that are compiled apart: kernels of the field and of what it induces."""
+LAST_APART = max(KERNELS_APART)
 
 PARAMETERS = 16
 
@@ -119,6 +178,8 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     data = [np.asarray(field.data, dtype=np.float64) for field in fields]
     for row, field in enumerate(fields):
         parameter[row, : len(field.parameters)] = field.parameters
+        if field.kind in KERNELS_APART:
+            note_addresses(field.kind, KERNELS_APART[field.kind], parameter[row])
         first[row + 1] = first[row] + data[row].size
     return FieldTable(
         np.array([field.kind for field in fields], dtype=np.int64),
@@ -191,6 +252,12 @@ def magnetic_field(
         uniform_magnetic(p, data, w, position, first, last, out_b)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole(p, data, w, position, first, last, out_b)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map(p, data, w, position, first, last, out_b)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map(p, data, w, position, first, last, out_b)
+    elif APART <= kind <= LAST_APART:
+        call_field(p, data, w, position, first, last, out_b)
     else:
         out_b[:, first:last] = np.nan
 
@@ -211,5 +278,11 @@ def induced_field(
         uniform_magnetic_induced(p, data, rate, position, first, last, out_e)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole_induced(p, data, rate, position, first, last, out_e)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map_induced(p, data, rate, position, first, last, out_e)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map_induced(p, data, rate, position, first, last, out_e)
+    elif APART <= kind <= LAST_APART:
+        call_induced(p, data, rate, position, first, last, out_e)
     else:
         out_e[:, first:last] = np.nan

@@ -66,6 +66,7 @@ def _identity(run: Run) -> list[str]:
         *lines,
         f"{header.scheme}, step {spelled(header.step, 's')}, seed {header.seed}",
         f"Coulomb sum {header.coulomb_method}: {header.coulomb_because or 'no reason given'}",
+        *([f"images {header.images}"] if header.images else []),
         f"begun {header.created} on {header.processor}, {header.threads} threads on "
         f"{header.cores} processors",
         f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "

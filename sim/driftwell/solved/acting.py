@@ -15,15 +15,18 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.electrodes.bodies import bodies_of
+from driftwell.electrodes.bodies import own_bodies
+from driftwell.electrodes.form import Electrodes
 from driftwell.fields.form import PackedField
 from driftwell.fields.rates import linear_rates
 from driftwell.forms.body import Body
+from driftwell.forms.waveform_table import waveform_table
 from driftwell.forms.waveforms import AnyWaveform, packed_waveform, waveform_breaks
-from driftwell.geometry.body_table import body_table
+from driftwell.geometry.body_table import BodyTable, body_table
+from driftwell.geometry.distance import distances, plane_distances
+from driftwell.kernels.waveform import waveform
 from driftwell.scenario.model import Scenario
-from driftwell.solved.region import Distance
-from driftwell.solved.solved_field import SolvedField, distance_of, solved_field
+from driftwell.solved.solved_field import SolvedField, solved_field
 from driftwell.solved.store import Told
 from driftwell.solved.waves import Course, courses
 from driftwell.walls.cylinder import Cylinder
@@ -47,13 +50,21 @@ class ActingField:
     solved : unit solutions and map
     centre : place of the electrodes' own origin, m
     courses : the voltages by their course in time, weights of all electrodes and the enclosure
-    distance : signed distance of places in the map's coordinates to the nearest electrode, m
+    bodies : of all electrodes, in their own coordinates
     """
 
     solved: SolvedField
     centre: tuple[float, float, float]
     courses: tuple[Course, ...]
-    distance: Distance
+    bodies: BodyTable
+
+    def nearest(self, points: Floats) -> tuple[Floats, NDArray[np.int64]]:
+        """Signed distances (n,), m, of points in the map's coordinates to the nearest electrode,
+        and whose it is (n,)."""
+        geometry = self.solved.geometry
+        if geometry == "spatial":
+            return distances(self.bodies, points)
+        return plane_distances(self.bodies, points, geometry == "axisymmetric")
 
     def packed(self) -> list[PackedField]:
         """One field for each course."""
@@ -64,6 +75,15 @@ class ActingField:
             )
             for course in self.courses
         ]
+
+    def voltages(self, t: float) -> Floats:
+        """Voltages (e,) of all unit solutions at the time `t`, s."""
+        table = waveform_table([packed_waveform(course.waveform) for course in self.courses])
+        total = np.zeros(len(self.solved.map.coefficients))
+        for k, course in enumerate(self.courses):
+            value, _ = waveform(table.kind[k], table.parameter[k], table.data, t, t)
+            total += value * course.weight
+        return total
 
     def breaks(self, duration: float) -> list[list[float]]:
         """For each course, times in (0, duration) where it or its slope jumps, s."""
@@ -84,17 +104,15 @@ class ActingField:
         """Planes across the named axes."""
         made: list[WallForm] = []
         for axis, pair in ends.items():
-            which = "xyz".index(axis)
             for word, end in zip(("low", "high"), pair, strict=True):
-                at = list(self.centre)
-                at[which] += end
-                normal = tuple(float(k == which) for k in range(3))
+                x, y, z = (float(name == axis) for name in "xyz")
+                at = np.array(self.centre) + end * np.array([x, y, z])
                 made.append(
                     Plane.model_construct(
                         name=f"edge of the field, {word} {axis}",
                         kind="plane",
-                        at=tuple(at),
-                        normal=normal,
+                        at=(float(at[0]), float(at[1]), float(at[2])),
+                        normal=(x, y, z),
                     )
                 )
         return made
@@ -133,7 +151,7 @@ class ActingField:
         places = region[:, 0] + drawn * (region[:, 1] - region[:, 0])
         if self.solved.geometry == "axisymmetric":
             places[:, 0] = np.abs(places[:, 0])
-        return places, self.distance(places)
+        return places, self.nearest(places)[0]
 
     @property
     def _widest(self) -> float:
@@ -160,16 +178,15 @@ def acting_field(scenario: Scenario, folder: Path, told: Told | None = None) -> 
     """
     if not scenario.electrode:
         return None
-    electrodes = scenario.electrodes
+    electrodes = scenario.electrodes or Electrodes()
     solved = solved_field(electrodes, scenario.electrode, folder, told or _unheard)
-    bodies = body_table(bodies_of(electrodes, scenario.electrode, folder))
     voltages: list[AnyWaveform] = [each.voltage for each in scenario.electrode]
-    voltages += [0.0] * (len(solved.names) - len(voltages))
+    voltages += [0.0] * (len(solved.map.coefficients) - len(voltages))
     return ActingField(
         solved,
         electrodes.centre,
         tuple(courses(voltages)),
-        distance_of(bodies, electrodes.geometry),
+        body_table(own_bodies(electrodes, scenario.electrode, folder)),
     )
 
 

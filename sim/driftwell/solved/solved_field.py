@@ -14,25 +14,28 @@ from numpy.typing import NDArray
 
 from driftwell.boundary.drawn import DrawnSolution, solve_drawn
 from driftwell.boundary.solution import Solution
-from driftwell.boundary.spatial_solution import SpatialSolution, solve_spatial
-from driftwell.electrodes.bodies import bodies_of
+from driftwell.boundary.spatial import SpatialSolution
+from driftwell.boundary.spatial_solver import solve_spatial
+from driftwell.electrodes.bodies import names_of, own_bodies
 from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.maps.build import build_map
 from driftwell.fields.maps.potential_map import PotentialMap
 from driftwell.forms import spelled
-from driftwell.geometry.body_table import BodyTable, body_table
+from driftwell.geometry.body_table import HIGH, LOW, BodyTable, body_table
 from driftwell.geometry.distance import distances, plane_distances
-from driftwell.geometry.solid import Solid
+from driftwell.geometry.outline import Outline
+from driftwell.geometry.solid import Mesh, Solid
+from driftwell.kernels.threads import threads_now
 from driftwell.solved.digest import field_digest
 from driftwell.solved.region import Box, Distance, enclosed
 from driftwell.solved.store import Arrays, Store, Told, store_folder
 
 Floats = NDArray[np.float64]
 
-ENCLOSURE = "enclosure"
-"""What the grounded can is called where there is one; it comes after all electrodes."""
-_BOUNDARY_SHARE = 0.1
+BOUNDARY_SHARE = 0.1
 """Part of the error asked for that the boundary solution may have; the map may have the rest."""
+_PLACES, _BESIDE = 512, 0.1
+"""Points at which solutions are compared; their distance from electrodes, of the largest."""
 _SOLUTION, _MAP = "solution/", "map/"
 
 
@@ -80,11 +83,13 @@ def solved_field(
 ) -> SolvedField:
     """The solved field, from where it is kept, or solved now and kept.
 
-    told : hears that it is solved, how long that took, and what could not be kept
+    told : hears that it is solved, how well, and what could not be kept
 
-    Raises ScenarioError where a shape cannot be made, as from a file.
+    Runs on as many threads as `driftwell.kernels.threads.on_threads` allows.
+
+    Raises DriftwellError where a shape cannot be made or solved; the text says why.
     """
-    names = tuple(each.name for each in electrode) + (ENCLOSURE,) * bool(electrodes.enclosure)
+    names = names_of(electrodes, electrode)
     digest = field_digest(electrodes, electrode, folder)
     store = Store(store_folder(), told)
     found = _taken_up(names, electrodes, store.found(digest))
@@ -93,8 +98,9 @@ def solved_field(
     with store.alone(digest):
         found = _taken_up(names, electrodes, store.found(digest))
         if found is None:
-            told(f"Solving the field of {len(names)} electrode{'s' * (len(names) != 1)}.")
-            found = _solved(names, electrodes, bodies_of(electrodes, electrode, folder))
+            number = len(electrode)
+            told(f"Solving the field of {number} electrode{'s' * (number != 1)}, to be kept.")
+            found = _solved(names, electrodes, own_bodies(electrodes, electrode, folder))
             told(f"Solved: {found.map.reached.words()}.")
             store.keep(digest, _arrays(found))
     return found
@@ -105,21 +111,24 @@ def _solved(
 ) -> SolvedField:
     """Solve Laplace's equation, and map the solution."""
     geometry = electrodes.geometry
+    table = body_table(bodies)
+    depth = distance_of(table, geometry)
+    box = region_of(electrodes, depth, _around(table, geometry))
+    accuracy = BOUNDARY_SHARE * electrodes.field_accuracy
     solution: Solution
-    accuracy = _BOUNDARY_SHARE * electrodes.field_accuracy
     if geometry == "spatial":
-        solution = solve_spatial(bodies, accuracy)
+        enclosure = bodies[-1] if electrodes.enclosure is not None else ()
+        own = bodies[:-1] if electrodes.enclosure is not None else bodies
+        solution = solve_spatial(own, accuracy, threads_now(), enclosure, _places(box, depth))
     else:
-        outlines = [tuple(solid.outline for solid in each) for each in bodies]  # type: ignore[union-attr]
+        outlines = [tuple(_outline(solid) for solid in each) for each in bodies]
         solution = solve_drawn(outlines, geometry == "axisymmetric", accuracy)
-    depth = distance_of(body_table(bodies), geometry)
-    box = region_of(electrodes, depth, solution)
     mapped = build_map(
         tuple(zip(box.low.tolist(), box.high.tolist(), strict=True)),
         solution,
         electrodes.field_accuracy,
         geometry=geometry,
-        mirrors=solution.mirrors,
+        mirrors=_even(solution.mirrors, box, geometry),
         depth=depth,
     )
     return SolvedField(names, geometry, solution, mapped)
@@ -132,22 +141,55 @@ def distance_of(table: BodyTable, geometry: str) -> Distance:
     return lambda points: plane_distances(table, points, geometry == "axisymmetric")[0]
 
 
-def region_of(electrodes: Electrodes, distance: Distance, solution: Solution) -> Box:
-    """The region of the map: what the scenario says of it, and for the rest what is enclosed."""
-    panels = solution.panels.position
-    found = enclosed(
-        distance, Box(panels.min(axis=0), panels.max(axis=0)), electrodes.geometry == "axisymmetric"
-    )
+def region_of(electrodes: Electrodes, distance: Distance, around: Box) -> Box:
+    """The region of the map: what the scenario says of it, and for the rest what is enclosed.
+
+    around : the box of all electrodes
+    """
+    axisymmetric = electrodes.geometry == "axisymmetric"
+    found = enclosed(distance, around, axisymmetric)
     low, high = found.low.copy(), found.high.copy()
     asked = electrodes.region
     if asked is not None:
         pairs = [asked.x, asked.y, asked.z]
-        if electrodes.geometry == "axisymmetric":
+        if axisymmetric:
             pairs = [None if asked.r is None else (0.0, asked.r), asked.z]
         for axis, pair in enumerate(pairs[: len(low)]):
             if pair is not None:
                 low[axis], high[axis] = pair
     return Box(low, high)
+
+
+def _around(table: BodyTable, geometry: str) -> Box:
+    """The box of all electrodes in the map's coordinates."""
+    low = table.number[:, LOW : LOW + 3].min(axis=0)
+    high = table.number[:, HIGH : HIGH + 3].max(axis=0)
+    axes = {"axisymmetric": [0, 2], "planar": [0, 1], "spatial": [0, 1, 2]}[geometry]
+    low, high = low[axes], high[axes]
+    if geometry == "axisymmetric":
+        low[0] = 0.0
+    return Box(low, high)
+
+
+def _places(box: Box, depth: Distance) -> Floats:
+    """Points of the region, outside electrodes, at which solutions in space are compared."""
+    drawn = np.random.default_rng(2).random((4 * _PLACES, len(box.low)))
+    points = box.low + drawn * (box.high - box.low)
+    distance = depth(points)
+    return np.asarray(points[distance > _BESIDE * distance.max()][:_PLACES])
+
+
+def _even(mirrors: tuple[bool, ...], box: Box, geometry: str) -> tuple[bool, ...]:
+    """Where the map may hold one half: in the coordinates whose region reaches across 0."""
+    across = tuple(bool(low < 0.0 < high) for low, high in zip(*box, strict=True))
+    even = tuple(m and a for m, a in zip(mirrors, across, strict=True))
+    return (True, *even[1:]) if geometry == "axisymmetric" else even
+
+
+def _outline(solid: Solid) -> Outline:
+    if isinstance(solid, Mesh):
+        raise TypeError("a mesh is not drawn in a plane")
+    return solid.outline
 
 
 def _arrays(field: SolvedField) -> Arrays:

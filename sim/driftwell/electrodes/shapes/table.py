@@ -2,12 +2,21 @@
 
 from __future__ import annotations
 
+from driftwell.electrodes.shapes.box import Box
 from driftwell.electrodes.shapes.circle import Circle
+from driftwell.electrodes.shapes.cone import Cone
 from driftwell.electrodes.shapes.form import ShapeForm
 from driftwell.electrodes.shapes.hyperbola import Hyperbola
+from driftwell.electrodes.shapes.mesh import Mesh
 from driftwell.electrodes.shapes.path import Path
+from driftwell.electrodes.shapes.plate import Plate
 from driftwell.electrodes.shapes.quadro_logarithmic import QuadroLogarithmic
 from driftwell.electrodes.shapes.rectangle import Rectangle
+from driftwell.electrodes.shapes.ring import Ring
+from driftwell.electrodes.shapes.rod import Rod
+from driftwell.electrodes.shapes.sphere import Sphere
+from driftwell.electrodes.shapes.tube import Tube
+from driftwell.electrodes.shapes.wire import Wire
 
 DRAWN_KINDS: tuple[type[ShapeForm], ...] = (
     Rectangle,
@@ -17,6 +26,16 @@ DRAWN_KINDS: tuple[type[ShapeForm], ...] = (
     QuadroLogarithmic,
 )
 """Drawn in a plane."""
-SPATIAL_KINDS: tuple[type[ShapeForm], ...] = ()
+SPATIAL_KINDS: tuple[type[ShapeForm], ...] = (
+    Box,
+    Plate,
+    Rod,
+    Tube,
+    Ring,
+    Sphere,
+    Cone,
+    Wire,
+    Mesh,
+)
 """Bodies in space."""
 SHAPE_KINDS = (*DRAWN_KINDS, *SPATIAL_KINDS)

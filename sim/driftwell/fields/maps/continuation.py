@@ -19,14 +19,12 @@ Divided differences with repeated places: C. de Boor, A Practical Guide to Splin
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from typing import Protocol
-
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.fields.maps.source import Depth, PotentialSource
+
 Floats = NDArray[np.float64]
-Depth = Callable[[Floats], Floats]
 
 SAMPLES = (1.0, 3.0)
 """Distances from the surface of the places a continuation is taken from, in cells."""
@@ -35,19 +33,6 @@ GONE = 16.0
 _FOLLOWED = 0.625
 _FADING = 0.19
 _DEPTHS = (2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 10.0, 12.0, 14.0, GONE)
-
-
-class PotentialSource(Protocol):
-    """What a map is made of: e unit solutions; a boundary solution is one.
-
-    Points (n, d) in the map's coordinates, m.
-    """
-
-    def potential(self, points: Floats) -> Floats:
-        """Potentials (e, n)."""
-
-    def field(self, points: Floats) -> Floats:
-        """Fields -grad phi (e, n, d)."""
 
 
 def continue_inside(
@@ -78,9 +63,9 @@ def continue_inside(
     here = np.flatnonzero((distance < 0.0) & (distance > -GONE * cells.max()))
     if here.size == 0:
         return 0
-    normal = _normals(nodes[here], depth, 0.05 * cells, is_round)
+    normal = surface_normals(nodes[here], depth, 0.05 * cells, is_round)
     foot = nodes[here] - distance[here, None] * normal
-    foot -= depth(_in_half(foot, is_round))[:, None] * normal
+    foot -= depth(in_half(foot, is_round))[:, None] * normal
     cell = np.sqrt(np.sum((normal * cells) ** 2, axis=1))
     inward = np.sum((foot - nodes[here]) * normal, axis=1) / np.where(cell > 0.0, cell, 1.0)
     smooth = _reach_open(foot, normal, cell, depth, is_round)
@@ -95,7 +80,7 @@ def continue_inside(
     numbers = [values[:, here]]
     for step in SAMPLES:
         point = foot + (step * cell)[:, None] * normal
-        half = _in_half(point, is_round)
+        half = in_half(point, is_round)
         potential, field = source.potential(half), source.field(half)
         if is_round:
             field[..., 0] *= np.where(point[:, 0] < 0.0, -1.0, 1.0)
@@ -105,7 +90,7 @@ def continue_inside(
     return int(here.size * len(SAMPLES))
 
 
-def _in_half(points: Floats, is_round: bool) -> Floats:
+def in_half(points: Floats, is_round: bool) -> Floats:
     """Points on the side of the axis where r is positive."""
     if not is_round:
         return points
@@ -114,16 +99,16 @@ def _in_half(points: Floats, is_round: bool) -> Floats:
     return half
 
 
-def _normals(points: Floats, depth: Depth, step: Floats, is_round: bool) -> Floats:
-    """Unit vectors (n, d) towards the nearest surface, from inside."""
+def surface_normals(points: Floats, depth: Depth, step: Floats, is_round: bool) -> Floats:
+    """Unit vectors (n, d) along which the distance from the surface grows; 0 where none do."""
     slopes = np.empty_like(points)
     for axis, h in enumerate(step):
         shift = np.zeros(points.shape[1])
         shift[axis] = h
-        ahead, behind = _in_half(points + shift, is_round), _in_half(points - shift, is_round)
+        ahead, behind = in_half(points + shift, is_round), in_half(points - shift, is_round)
         slopes[:, axis] = (depth(ahead) - depth(behind)) / (2.0 * h)
     length = np.sqrt(np.sum(slopes**2, axis=1))
-    return slopes / np.where(length > 0.5, length, np.inf)[:, None]  # 0 where there is none
+    return slopes / np.where(length > 0.5, length, np.inf)[:, None]
 
 
 def _reach_open(
@@ -132,7 +117,7 @@ def _reach_open(
     """Whether the places outside lie as far from any surface as they were meant to."""
     fine = np.sum(normal**2, axis=1) > 0.5
     for step in SAMPLES:
-        point = _in_half(foot + (step * cell)[:, None] * normal, is_round)
+        point = in_half(foot + (step * cell)[:, None] * normal, is_round)
         fine &= depth(point) > 0.8 * step * cell
     return fine
 
@@ -142,7 +127,7 @@ def _room(foot: Floats, normal: Floats, cell: Floats, depth: Depth, is_round: bo
     room = np.zeros(len(foot))
     going = np.ones(len(foot), dtype=bool)
     for deep in _DEPTHS:
-        point = _in_half(foot - (deep * cell)[:, None] * normal, is_round)
+        point = in_half(foot - (deep * cell)[:, None] * normal, is_round)
         going &= np.abs(depth(point) + deep * cell) < 0.02 * deep * cell
         room[going] = deep
     return room
