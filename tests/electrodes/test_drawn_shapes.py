@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -10,7 +11,8 @@ import pytest
 
 from driftwell.boundary.drawn import solve_drawn
 from driftwell.boundary.multipoles import planar_content, round_content
-from driftwell.electrodes.form import Electrode
+from driftwell.electrodes.faults import electrode_faults
+from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.electrodes.shapes.form import Geometry, ShapeForm
 from driftwell.forms.faults import read_form
 from driftwell.geometry.outline import Outline
@@ -221,6 +223,15 @@ def test_curved_electrodes_in_the_wrong_geometry_are_refused() -> None:
     spindle |= {"characteristic_radius": 22}
     assert ("kind",) == fault(FLAT, along=(-1, 1), **spindle)[0]
     assert "make it shorter" in fault(ROUND, along=(-90, 1), **spindle)[1]
+
+
+def test_a_scenario_says_which_shape_does_not_suit_its_geometry() -> None:
+    ring = _electrode({"kind": "hyperbola", "part": "ring", "radius": 10, "outer": 30})
+    one, _ = read_form(Electrode, ring)
+    planar, _ = read_form(Electrodes, {"geometry": "planar"})
+    assert one is not None
+    faults = electrode_faults(planar, [one], Path())
+    assert [("electrode", 0, "shape", 0, "part")] == [fault.path for fault in faults]
 
 
 def test_curved_electrodes_that_cannot_be_are_refused() -> None:
