@@ -40,8 +40,8 @@ from driftwell.geometry.outline import Outline
 
 Floats = NDArray[np.float64]
 
-MOST_NODES = 8000
-"""Beyond this the matrix takes more than half a gigabyte."""
+MOST_NODES = 7000
+"""Beyond this the matrix takes more than 0.4 gigabytes."""
 BEST_ACCURACY = 1e-10
 _PATIENCE, _NEARLY = 3, 10.0
 """Rounds that must halve the error, else one of this many times what was asked for is let be."""
@@ -229,14 +229,21 @@ def _weights(
 
 
 @dataclass(frozen=True, slots=True)
-class _Solved:
+class SolvedOn:
+    """Unit solutions on given elements.
+
+    density : (e, n) float64, constants : (e,) float64, as of DrawnSolution
+    charge : (e, n) float64, at the nodes, over eps0 and (about z) 2 pi times the size
+    wrong : (k,) float64, the largest error of potential seen on each element
+    """
+
     density: Floats
     constants: Floats
+    charge: Floats
     wrong: Floats
-    """(k,), the largest error of potential seen on each element."""
 
 
-def _solved(elements: Elements, rings: bool, count: int, rules: Quadrature) -> _Solved:
+def solved_on(elements: Elements, rings: bool, count: int, rules: Quadrature) -> SolvedOn:
     """Unit solutions on given elements, and how wrong the potential is on them."""
     nodes = _nodes(elements, rings)
     size = nodes.shape[1]
@@ -244,17 +251,19 @@ def _solved(elements: Elements, rings: bool, count: int, rules: Quadrature) -> _
     voltage = (np.repeat(elements.electrode, ORDER)[:, None] == np.arange(count)) * 1.0
     matrix = _weights(points.reshape(-1, 2), elements, nodes, rings, rules)
     if not rings:
-        matrix = np.block([[matrix, np.ones((size, 1))], [nodes[2:3], np.zeros((1, 1))]])
-        voltage = np.concatenate([voltage, np.zeros((1, count))])
+        # the constant first: eliminated last it lets rounding grow a millionfold
+        matrix = np.block([[np.zeros((1, 1)), nodes[2:3]], [np.ones((size, 1)), matrix]])
+        voltage = np.concatenate([np.zeros((1, count)), voltage])
     found = lu_solve(lu_factor(matrix, overwrite_a=True, check_finite=False), voltage)
     del matrix
-    density = np.ascontiguousarray(found[:size].T)
-    constants = np.zeros(count) if rings else found[size]
+    density = np.ascontiguousarray(found[-size:].T)
+    constants = np.zeros(count) if rings else found[0]
     checked, _ = elements.places(_BETWEEN)
     potential = _weights(checked.reshape(-1, 2), elements, nodes, rings, rules) @ density.T
     expected = np.repeat(elements.electrode, len(_BETWEEN))[:, None] == np.arange(count)
     gap = np.abs(potential + constants - expected).max(axis=1)
-    return _Solved(density, constants, gap.reshape(len(elements), -1).max(axis=1))
+    wrong = gap.reshape(len(elements), -1).max(axis=1)
+    return SolvedOn(density, constants, density * nodes[2], wrong)
 
 
 def _fit_to_gaps(elements: Elements) -> Elements:
@@ -303,7 +312,7 @@ def solve_drawn(
     elements = _fit_to_gaps(elements_on(surface, axisymmetric))
     history: list[float] = []
     while True:
-        found = _solved(elements, axisymmetric, len(outlines), rules)
+        found = solved_on(elements, axisymmetric, len(outlines), rules)
         small = elements.lengths() < _SMALLEST
         wrong = np.where(small, _FADED, 1.0) * found.wrong
         worst = float(wrong.max())
@@ -322,9 +331,8 @@ def solve_drawn(
             "`field_accuracy`, or draw simpler electrodes, without needles or gaps that are thin "
             "against their length."
         )
-    nodes = _nodes(elements, axisymmetric)
     owners = np.repeat(elements.electrode, ORDER)
-    charges = found.density * nodes[2] * (2.0 * math.pi * size if axisymmetric else 1.0)
+    charges = found.charge * (2.0 * math.pi * size if axisymmetric else 1.0)
     capacitance = np.stack([charges[:, owners == k].sum(axis=1) for k in range(len(outlines))])
     return DrawnSolution(
         axisymmetric,

@@ -80,9 +80,18 @@ class Elements:
         middle = 0.5 * (spans[:, 3] + spans[:, 4])
         spans[:, 4] = np.where(which[origin] & ~second, middle, spans[:, 4])
         spans[:, 3] = np.where(second, middle, spans[:, 3])
-        return _encircled(
-            replace(self, spans=spans, chain=self.chain[origin], electrode=self.electrode[origin])
-        )
+        return replace(
+            self, spans=spans, chain=self.chain[origin], electrode=self.electrode[origin]
+        ).encircled()
+
+    def encircled(self) -> Elements:
+        """The elements with the circles around them."""
+        points, _ = self.places(np.linspace(-1.0, 1.0, 9))
+        middle = 0.5 * (points.min(axis=1) + points.max(axis=1))
+        radius = np.hypot(*(points - middle[:, None]).transpose(2, 0, 1)).max(axis=1)
+        spans = self.spans.copy()
+        spans[:, 5:7], spans[:, 7] = middle, radius
+        return replace(self, spans=spans)
 
     def places(self, t: Floats) -> tuple[Floats, Floats]:
         """Points (k, n, 2) at the parameters t (n,) in [-1, 1], and ds/dt (k, n)."""
@@ -104,16 +113,6 @@ def places_along(s: np.ndarray, chain: np.ndarray, arcs: np.ndarray, out: np.nda
             x, y = place(s[e, j], chain[e, 0], chain[e, 1], arcs)
             out[e, j, 0] = x
             out[e, j, 1] = y
-
-
-def _encircled(elements: Elements) -> Elements:
-    """The elements with the circles around them."""
-    points, _ = elements.places(np.linspace(-1.0, 1.0, 9))
-    middle = 0.5 * (points.min(axis=1) + points.max(axis=1))
-    radius = np.hypot(*(points - middle[:, None]).transpose(2, 0, 1)).max(axis=1)
-    spans = elements.spans.copy()
-    spans[:, 5:7], spans[:, 7] = middle, radius
-    return replace(elements, spans=spans)
 
 
 def exponent(angle: float) -> float:
@@ -277,11 +276,9 @@ def elements_on(surface: Surface, axisymmetric: bool) -> Elements:
             spans += [[s, reach, m, 0.0, 1.0, 0.0, 0.0, 0.0] for s, reach, m in found]
             chains += [[first, first + len(chain) - 1]] * len(found)
             electrode += [int(surface.electrode[walked[0] // 2])] * len(found)
-    return _encircled(
-        Elements(
-            np.concatenate(arcs),
-            np.array(spans),
-            np.array(chains, dtype=np.int64),
-            np.array(electrode, dtype=np.int64),
-        )
-    )
+    return Elements(
+        np.concatenate(arcs),
+        np.array(spans),
+        np.array(chains, dtype=np.int64),
+        np.array(electrode, dtype=np.int64),
+    ).encircled()

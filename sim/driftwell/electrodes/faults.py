@@ -84,6 +84,10 @@ def _kind_faults(electrodes: Electrodes, electrode: Sequence[Electrode]) -> Iter
                 needs = "spatial" if not shape.drawn() else "axisymmetric or planar"
                 text = f"{what}, and [electrodes] geometry is {geometry}; needs {needs}"
                 yield Fault(("electrode", i, "shape", k), "", text)
+            elif shape.drawn():
+                for fault in shape.faults(geometry):
+                    path = ("electrode", i, "shape", k, *fault.path)
+                    yield Fault(path, fault.found, fault.needed)
 
 
 def _axis_faults(bodies: Sequence[Sequence[Solid]]) -> Iterator[Fault]:
