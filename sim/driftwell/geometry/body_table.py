@@ -32,6 +32,7 @@ class BodyTable(NamedTuple):
     node : (m, 6) float64 and link : (m, 3) int64, trees of boxes, see box_tree.py
     piece : (k, 15) float64, of outlines; triangle : (t, 30) float64, of meshes
     touch : (1,) float64, m: nearer than this is on the surface
+    search : (1,) int64, address of the compiled search, see body_search.py; 0 without
     """
 
     whole: Ints
@@ -41,6 +42,7 @@ class BodyTable(NamedTuple):
     piece: Floats
     triangle: Floats
     touch: Floats
+    search: Ints
 
 
 def body_table(bodies: Sequence[Sequence[Solid]]) -> BodyTable:
@@ -87,6 +89,7 @@ def body_table(bodies: Sequence[Sequence[Solid]]) -> BodyTable:
         np.concatenate(pieces),
         np.concatenate(triangles),
         np.array([TOUCH * largest]),
+        np.zeros(1, dtype=np.int64),
     )
 
 

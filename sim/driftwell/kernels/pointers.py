@@ -16,7 +16,7 @@ from llvmlite import ir
 class CompiledFunction(numba.types.WrapperAddressProtocol):
     """A kernel compiled for one signature, to be handed to other compiled code as its address."""
 
-    def __init__(self, function: Any, signature: str) -> None:
+    def __init__(self, function: Any, signature: Any) -> None:
         core: Any = numba.core
         arguments, returned = core.sigutils.normalize_signature(signature)
         function.compile(arguments)

@@ -21,8 +21,8 @@ import math
 
 import numpy as np
 
+from driftwell.geometry.body_search import ALL, look
 from driftwell.geometry.body_table import BodyTable
-from driftwell.geometry.distance import nearest_body
 from driftwell.kernels import inner_kernel, outer_kernel
 from driftwell.stepping.motion import Charges, Plan, Work
 
@@ -82,8 +82,8 @@ def _look_closer(
             before2 += old_u[axis, i] ** 2
             after2 += u[axis, i] ** 2
         reach = _reach(math.sqrt(way2), before2, after2, plan.light2, h)
-        before, _, _ = nearest_body(bodies, old[0, i], old[1, i], old[2, i])
-        after, _, _ = nearest_body(bodies, x[0, i], x[1, i], x[2, i])
+        before, _, _ = look(bodies, ALL, old[0, i], old[1, i], old[2, i])
+        after, _, _ = look(bodies, ALL, x[0, i], x[1, i], x[2, i])
         if before < 0.0 or after < 0.0 or before + after <= reach:
             followed += 1
         else:

@@ -24,8 +24,8 @@ and its derivative; from memory).
 
 from __future__ import annotations
 
+from driftwell.geometry.body_search import ALL, look
 from driftwell.geometry.body_table import OWNER, VOLUME, BodyTable
-from driftwell.geometry.distance import nearest_body, to_body
 from driftwell.kernels import outer_kernel
 from driftwell.stepping.motion import Plan
 from driftwell.stepping.path import End, fastest, place
@@ -48,7 +48,7 @@ def first_body(
     until : fraction of the path that is made, at most 1
     """
     touch = bodies.touch[0]
-    distance, body, side = nearest_body(bodies, start[0], start[1], start[2])
+    distance, body, side = look(bodies, ALL, start[0], start[1], start[2])
     if distance < -touch:
         return bodies.whole[body, OWNER], 0.0
     leaving = distance <= touch
@@ -63,7 +63,7 @@ def first_body(
             shortest *= 2.0
         there = min(here + max(distance / speed, shortest), until)
         x, y, z = place(plan, start, end, span, there)
-        found, other, face = nearest_body(bodies, x, y, z)
+        found, other, face = look(bodies, ALL, x, y, z)
         if leaving:
             if found < -touch:
                 at = _crossing(plan, bodies, start, end, span, here, there, other, 1.0)
@@ -80,7 +80,7 @@ def first_body(
         elif other == body and face != side and there - here > distance / speed:
             at = _crossing(plan, bodies, start, end, span, here, there, body, side)
             x, y, z = place(plan, start, end, span, at)
-            gap, between, _ = nearest_body(bodies, x, y, z)
+            gap, between, _ = look(bodies, ALL, x, y, z)
             if gap <= _GAP * touch:
                 return bodies.whole[between, OWNER], at
         here, distance, body, side = there, found, other, face
@@ -103,7 +103,7 @@ def _crossing(
     for _ in range(_BISECTIONS):
         middle = 0.5 * (low + high)
         x, y, z = place(plan, start, end, span, middle)
-        distance, face = to_body(bodies, body, x, y, z)
+        distance, _, face = look(bodies, body, x, y, z)
         behind = distance <= 0.0 if bodies.whole[body, VOLUME] != 0 else face != side
         if behind:
             high = middle

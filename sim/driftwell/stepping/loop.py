@@ -20,6 +20,7 @@ from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.geometry.body_search import searched
 from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
@@ -126,7 +127,7 @@ class TimeLoop:
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
-        self._bodies = body_table(()) if bodies is None else bodies
+        self._bodies = body_table(()) if bodies is None else searched(bodies)
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
