@@ -80,7 +80,7 @@ def _is_mirrored(border: Border, axis: int) -> bool:
     own = np.unique(np.sort(border.edges, axis=1), axis=0)
     images = np.unique(np.sort(np.asarray(image)[border.edges], axis=1), axis=0)
     side = border.points[border.edges, axis]
-    crossing = np.min(side, axis=1) * np.max(side, axis=1) < -(_near(border) ** 2)
+    crossing = (np.min(side, axis=1) < -_near(border)) & (np.max(side, axis=1) > _near(border))
     return bool(np.array_equal(own, images) and not np.any(crossing))
 
 
