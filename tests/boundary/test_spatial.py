@@ -259,3 +259,9 @@ def test_a_plate_with_a_hole_has_a_little_less_capacitance():
     with_hole = SQUARE.joined(circle((0.1, 0.0), 0.05))
     found = in_space(solve_spatial([[Extruded(with_hole, 0.0)]], 1e-2, THREADS))[0, 0]
     assert 0.99 * 0.366788 < found < 0.3667
+
+
+def test_two_equal_meshes_are_no_agreement():
+    """Where a finer mesh turns out the same, it is not taken for convergence."""
+    solution = solve_spatial([[CUBE]], 1e-2, THREADS)
+    assert 1e-4 < solution.error < 1e-2

@@ -30,14 +30,16 @@ from driftwell.geometry.winding import winding
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-COARSEST, FINER = 6.0, 1.5
+COARSEST, FINER = 4.0, 1.5
 """Edges along a body's mean extent at first, and by what factor they become more."""
-MOST_PANELS = 60_000
+MOST_PANELS = 100_000
 GRADE = 3.0
 """Power of the spacing of points towards edges, where it was found to serve best (boundary-3d)."""
 _TURN = 2.5
 """Largest turn of a curved surface from edge to edge, rad, times the edges of an extent."""
-_ROUNDS = 12
+_GROWN = 1.4
+"""Least growth of the number of panels from one solution to the next."""
+_ROUNDS = 16
 _PLACES, _FEWEST_PLACES = 512, 32
 _AROUND, _BESIDE = 1.2, 0.5
 """Box of the places: parts of the electrodes' own along each axis, and of its longest side."""
@@ -120,6 +122,9 @@ def solve_spatial(
     fineness = COARSEST
     for _ in range(_ROUNDS):
         surfaces = cut(bodies, enclosure, fineness)
+        fineness *= FINER
+        if before is not None and len(surfaces.corners) < _GROWN * len(before.corners):
+            continue  # even numbers of edges may stay the same: nothing to compare
         if before is not None and len(surfaces.corners) > most_panels:
             break
         found = _solved(surfaces, threads, DENSE).solution
@@ -131,7 +136,6 @@ def solve_spatial(
             if found.error <= accuracy:
                 return found
         before = found
-        fineness *= FINER
     if before is None or not math.isfinite(before.error):
         raise DriftwellError(
             f"the electrodes take more than {most_panels} triangles; needs fewer or simpler "
