@@ -15,6 +15,7 @@ from driftwell.forms import Form
 from driftwell.forms.body import Body
 from driftwell.walls.form import DetectorForm, WallForm
 from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
+from tests.grid_files import grids
 from tests.pair_sums import direct, tree
 
 BODIES = {
@@ -27,7 +28,7 @@ _KINDS = {kind.model_fields["kind"].annotation.__args__[0]: kind for kind in FIE
 
 def field(kind: str, **keys: Any) -> FieldForm:
     """A field as a scenario states it; its name is its kind where none is given."""
-    return _KINDS[kind](**{"kind": kind, "name": kind, **keys})
+    return _KINDS[kind](**{"kind": kind, "name": kind, **keys}).found_in(grids())
 
 
 def _kinds(kinds: Sequence[type[Form]]) -> dict[str, Any]:
@@ -140,6 +141,81 @@ FIELDS = [
         gradient="12 T/m",
     ),
     field(
+        "current-loop",
+        radius="20 mm",
+        current={"amplitude": "3 A", "offset": "5 A", **SINE},
+        turns=40,
+        along=[0.3, -0.2, 1.0],
+        centre=OFF_CENTRE,
+    ),
+    field("current-loop", name="current-loop, small", radius="0.1 mm", current="30 A"),
+    field(
+        "solenoid",
+        radius="18 mm",
+        length="12 mm",
+        current={"amplitude": "3 A", **SINE},
+        turns=100,
+        along=[1.0, 0.5, -0.4],
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "solenoid",
+        name="solenoid, thick",
+        radius="15 mm",
+        length="30 mm",
+        thickness="10 mm",
+        current={"amplitude": "3 A", **SINE},
+        turns=100,
+    ),
+    field(
+        "solenoid",
+        name="solenoid, seen from outside",
+        radius="0.1 mm",
+        length="0.3 mm",
+        current={"amplitude": "3 A", **SINE},
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "magnet-block",
+        size=["0.3 mm", "0.2 mm", "0.25 mm"],
+        remanence={"amplitude": "1.2 T", **SINE},
+        magnetised_along=[1.0, -2.0, 3.0],
+        rotation=["20 deg", "-35 deg", "50 deg"],
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "magnet-cylinder",
+        radius="0.1 mm",
+        length="0.3 mm",
+        remanence={"amplitude": "1.2 T", **SINE},
+        along=[0.2, 1.0, 0.4],
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "magnet-cylinder",
+        name="magnet-cylinder, magnetised aslant",
+        radius="0.15 mm",
+        length="0.2 mm",
+        remanence={"amplitude": "1.2 T", **SINE},
+        along=[0.2, 1.0, 0.4],
+        magnetised_along=[1.0, 0.5, 0.3],
+        centre=OFF_CENTRE,
+    ),
+    *(
+        field(
+            "multipole-magnet",
+            name=f"multipole-magnet, order {order}",
+            order=order,
+            radius="20 mm",
+            strength={"amplitude": "0.3 T", **SINE},
+            length="60 mm",
+            edge="40 mm",
+            angle="17 deg",
+            centre=OFF_CENTRE,
+        )
+        for order in (1, 2, 3, 6)
+    ),
+    field(
         "quadro-logarithmic",
         curvature={"amplitude": "1.0e6 V/m^2", "offset": "3.0e7 V/m^2", **SINE},
         characteristic_radius="20 mm",
@@ -152,6 +228,29 @@ FIELDS = [
         voltage={"amplitude": "-300 V", **SINE},
         centre=OFF_CENTRE,
     ),
+    *(
+        field("potential-map", name=f"potential-map, {path}", path=path, centre=OFF_CENTRE)
+        for path in ("round.csv", "flat.csv")
+    ),
+    field("potential-map", name="potential-map, mirrored", path="half.h5", mirrors=["z"]),
+    field(
+        "potential-map",
+        name="potential-map, in space",
+        path="space.h5",
+        scale={"amplitude": 1.5, "offset": 0.2, **SINE},
+        centre=OFF_CENTRE,
+    ),
+    *(
+        field("electric-map", name=f"electric-map, {path}", path=path, centre=OFF_CENTRE)
+        for path in ("round-e.csv", "flat-e.csv", "space-e.h5")
+    ),
+    field(
+        "magnetic-map",
+        path="round-b.csv",
+        scale={"amplitude": 2.0, **SINE},
+        centre=OFF_CENTRE,
+    ),
+    field("magnetic-map", name="magnetic-map, in space", path="space-b.h5", centre=OFF_CENTRE),
 ]
 
 WALLS = [

@@ -13,6 +13,9 @@ from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.waveforms import waveform_breaks
+from driftwell.geometry.body_table import body_table
+from driftwell.geometry.solid import Solid
+from driftwell.images.image_sum import Images
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.stepping.form import Stepping
@@ -75,10 +78,15 @@ def loop(
     samples: ArrayLike = (),
     traced: Sequence[Traced] = (),
     threads: int = 1,
+    images: Images | None = None,
+    bodies: Sequence[Sequence[Solid]] = (),
     state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
-    """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s."""
+    """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
+
+    bodies : those of each electrode
+    """
     options = Stepping(**stepping)
     breaks = [t for field in fields for t in waveform_breaks(field.waveform(), duration)]
     plan = schedule(
@@ -102,6 +110,8 @@ def loop(
         traced,
         threads,
         state,
+        images,
+        body_table(bodies),
     )
 
 

@@ -202,7 +202,8 @@ def _parts(form: type[Form]) -> tuple[list[DeclaredKey], list[DeclaredKey], Head
 
 def _is_section(key: DeclaredKey) -> bool:
     texts = isinstance(key.holds, Several) and isinstance(key.holds.entry, Text)
-    return isinstance(key.holds, Keys | Named | Several) and not texts
+    kinds = bool(_kinds(key.holds))
+    return kinds or (isinstance(key.holds, Keys | Named | Several) and not texts)
 
 
 def _title(key: DeclaredKey) -> str:

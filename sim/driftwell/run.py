@@ -147,11 +147,12 @@ def run(
                 return _told_again(earlier)
         warn = observer.told if force else None
         if earlier is not None:
-            execution = _Execution(assembled(loaded, warn), folder, observer, stop_after)
+            parts = assembled(loaded, warn, observer.told)
+            execution = _Execution(parts, folder, observer, stop_after)
             execution.go_on(earlier, given)
             return execution.result()
         refuse_taken(folder, text)
-        parts = assembled(loaded, warn)
+        parts = assembled(loaded, warn, observer.told)
         refuse_beyond_disk(parts.extent, folder, warn)
         execution = _Execution(parts, folder, observer, stop_after)
         execution.begin(loaded, given, holding, held_already=holds)
@@ -234,7 +235,8 @@ class _Execution:
             f"Going on with the run begun {earlier.header.created}, from "
             f"t = {spelled(self._loop.time, 's')}, after {steps} step{'s' * (steps != 1)}"
         )
-        for sentence in differences(earlier):
+        acting = self._parts.acting
+        for sentence in differences(earlier, "" if acting is None else acting.solved.digest):
             self._observer.told(sentence)
         self._began = clocks.monotonic()
 
@@ -340,7 +342,9 @@ class _Execution:
     def _keep_events(self) -> None:
         """Record what happened on surfaces, and the samples taken, since the last time."""
         for events in self._loop.take_events():
-            losses, crossings = event_rows(events, len(self._scenario.wall))
+            losses, crossings = event_rows(
+                events, len(self._parts.walls), len(self._scenario.detector)
+            )
             self._writer.losses(losses)
             self._writer.crossings(crossings)
         for times, values in self._loop.take_samples():

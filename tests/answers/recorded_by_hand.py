@@ -58,6 +58,7 @@ class Recorded:
     detectors: list[str] = field(default_factory=list)
     softening: float = 0.0
     force_error: float = 0.0
+    field_error: float = 0.0
     end_time: float = 1e-3
     shots: dict[float, Snapshot] = field(default_factory=dict)
     series: dict[str, Moments] = field(default_factory=dict)

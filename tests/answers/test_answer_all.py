@@ -260,5 +260,6 @@ def test_an_answer_carries_the_error_of_the_forces_up_to_its_time(
     keys: dict[str, Any], expected: float
 ) -> None:
     """Of the start nothing has moved yet; where there is no answer the error is that of the try."""
-    (found,) = answer_all([asked(**keys)], Erring(**vars(full())))
+    (found,) = answer_all([asked(**keys)], Erring(**vars(full()) | {"field_error": 2e-6}))
     assert expected == found.coulomb_error
+    assert (2e-6 if expected else 0.0) == found.field_error

@@ -86,6 +86,22 @@ def test_a_strength_of_another_dimension_is_refused() -> None:
     assert 'needs an electric field gradient such as "3.0e7 V/m^2"' in what
 
 
+def test_a_multipole_magnet_needs_edges_that_have_a_series() -> None:
+    """pi/2 edges or more from the axis it has none."""
+    keys = {"order": 2, "strength": "0.3 T", "length": "50 mm", "edge": "10 mm"}
+    ((_, what),) = faults("multipole-magnet", radius="16 mm", **keys)
+    assert "`edge` must be longer than 0.64 times `radius`" in what
+    assert field("multipole-magnet", radius="15 mm", **keys).radius == 15e-3
+
+
+@pytest.mark.parametrize("key", ["radius", "length", "turns"])
+def test_a_solenoid_has_sizes_and_turns_greater_than_zero(key: str) -> None:
+    keys = {"radius": "2 mm", "length": "5 mm", "turns": 5, "current": "1 A"}
+    ((where, what),) = faults("solenoid", **{**keys, key: -1 if key == "turns" else "-1 mm"})
+    assert (key,) == where
+    assert "must be greater than 0" == what
+
+
 @pytest.mark.parametrize("form", FIELDS, ids=lambda form: form.name)
 def test_a_field_describes_itself_on_one_line_with_its_numbers(form) -> None:
     words = form.words()
@@ -109,6 +125,63 @@ def test_a_field_describes_itself_on_one_line_with_its_numbers(form) -> None:
                 "rf-quadrupole",
                 radius="3.5 mm",
                 voltage={"amplitude": "180 V", "frequency": "1.1 MHz"},
+            ),
+        ),
+        (
+            "current loop about z of radius 50 mm, 20 turns, 10 A, centred at (0 m, 0 m, 30 mm)",
+            field(
+                "current-loop",
+                radius="50 mm",
+                current="10 A",
+                turns=20,
+                centre=["0 mm", "0 mm", "30 mm"],
+            ),
+        ),
+        (
+            "solenoid about (1, 0, 0) of radius 20 mm and length 100 mm, 5 mm thick, 200 turns, "
+            "2 A amplitude at 50 Hz",
+            field(
+                "solenoid",
+                radius="20 mm",
+                length="100 mm",
+                thickness="5 mm",
+                turns=200,
+                current={"amplitude": "2 A", "frequency": "50 Hz"},
+                along=[2, 0, 0],
+            ),
+        ),
+        (
+            "block magnet of 20 mm x 10 mm x 5 mm magnetised along (0, 0, 1), turned by (0 deg, "
+            "90 deg, 0 deg), remanence 1.2 T",
+            field(
+                "magnet-block",
+                size=["20 mm", "10 mm", "5 mm"],
+                remanence="1.2 T",
+                rotation=["0 deg", "90 deg", "0 deg"],
+            ),
+        ),
+        (
+            "round magnet about z of radius 5 mm and length 10 mm magnetised along (1, 0, 0), "
+            "remanence 1.2 T",
+            field(
+                "magnet-cylinder",
+                radius="5 mm",
+                length="10 mm",
+                remanence="1.2 T",
+                magnetised_along=[1, 0, 0],
+            ),
+        ),
+        (
+            "magnetic quadrupole along z of length 100 mm with edges of 25 mm, turned by 45 deg, "
+            "300 mT at r0 = 20 mm",
+            field(
+                "multipole-magnet",
+                order=2,
+                radius="20 mm",
+                strength="0.3 T",
+                length="100 mm",
+                edge="25 mm",
+                angle="45 deg",
             ),
         ),
         (

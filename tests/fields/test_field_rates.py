@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
 import pytest
 
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
+from driftwell.fields.evaluation import evaluate
 from driftwell.forms.body import Body
 from tests.cases import field
 
@@ -122,3 +124,94 @@ def test_wire_gives_the_rate_of_the_orbit_at_its_surface() -> None:
     form = field("wire-in-cylinder", wire_radius="50 um", cylinder_radius="10 mm", voltage="-300 V")
     speed = math.sqrt(300.0 * body.charge_to_mass / math.log(200.0))
     assert {"radial": speed / 50e-6} == pytest.approx(form.rates(body, BODIES), rel=1e-12, abs=0.0)
+
+
+def cyclotron(tesla: float) -> float:
+    """Hz, of ION."""
+    return ION.charge_to_mass * tesla / TURN
+
+
+def field_at(form, place: list[float]) -> float:
+    found = evaluate([form], BODIES, [place], 0.0).magnetic[0]
+    return float(np.sqrt(found @ found))
+
+
+@pytest.mark.parametrize(
+    ("form", "place", "tolerance"),
+    [
+        (field("current-loop", radius="50 mm", current="10 A", turns=30), [0, 0, 0], 1e-12),
+        (
+            field(
+                "solenoid",
+                radius="20 mm",
+                length="50 mm",
+                thickness="9 mm",
+                current="10 A",
+                turns=30,
+            ),
+            [0, 0, 0],
+            1e-12,
+        ),
+        (
+            field(
+                "magnet-block",
+                size=["20 mm", "10 mm", "5 mm"],
+                remanence="1.2 T",
+                magnetised_along=[1, 0, 0],
+                clearance="3 mm",
+            ),
+            [0.013, 0, 0],
+            1e-12,
+        ),
+        (
+            field(
+                "magnet-cylinder",
+                radius="5 mm",
+                length="10 mm",
+                remanence="1.2 T",
+                clearance="3 mm",
+            ),
+            [0, 0, 0.008],
+            1e-12,
+        ),
+        (
+            field(
+                "magnet-cylinder",
+                radius="5 mm",
+                length="80 mm",
+                remanence="1.2 T",
+                magnetised_along=[0, 1, 0],
+                clearance="1 mm",
+            ),
+            [0, 0.006, 0],
+            0.02,
+        ),
+        (
+            field(
+                "multipole-magnet",
+                order=1,
+                radius="20 mm",
+                strength="0.3 T",
+                length="50 mm",
+                edge="20 mm",
+            ),
+            [0, 0, 0],
+            1e-12,
+        ),
+    ],
+    ids=["loop", "solenoid", "block", "rod", "rod across", "dipole"],
+)
+def test_magnets_give_the_cyclotron_frequency_of_the_place_they_state(
+    form, place: list[float], tolerance: float
+) -> None:
+    """In the middle of coils, before the face of magnets: as the kernel has it there."""
+    expected = cyclotron(field_at(form, place))
+    assert {"cyclotron": expected} == pytest.approx(hertz(form), rel=tolerance, abs=0.0)
+    assert expected == pytest.approx(cyclotron(form.strongest()), rel=tolerance, abs=0.0)
+
+
+def test_alternating_coil_gives_its_drive_too() -> None:
+    form = field(
+        "current-loop", radius="50 mm", current={"amplitude": "10 A", "frequency": "2 kHz"}
+    )
+    assert 2000.0 == pytest.approx(hertz(form)["drive"], rel=1e-12, abs=0.0)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -16,8 +17,8 @@ from hypothesis.extra.numpy import arrays
 
 from driftwell.errors import ScenarioError
 from driftwell.forms.faults import Fault
-from driftwell.particles import charge_columns, charge_csv
-from driftwell.particles.charge_columns import ChargeFileError
+from driftwell.particles.charge_columns import CHARGE_RULES
+from driftwell.particles.shapes import file as shape_file
 from driftwell.particles.state import Particles
 
 Load = Callable[..., Particles]
@@ -218,7 +219,7 @@ def test_numbers_that_are_finite_only_without_their_unit_are_refused(
 def test_a_file_of_more_charges_than_a_cloud_may_have_is_refused(
     load: Load, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(charge_csv, "LARGEST_COUNT", 3)
+    monkeypatch.setattr(shape_file, "CHARGE_RULES", replace(CHARGE_RULES, most=3))
     (tmp_path / "start.csv").write_text(XYZ + "\n1, 2, 3" * 3)
     assert 3 == len(from_file(load, tmp_path))
     (tmp_path / "start.csv").write_text(XYZ + "\n1, 2, 3" * 4)
@@ -371,8 +372,8 @@ def test_text_in_a_file_called_hdf5_is_refused(load: Load, tmp_path: Path) -> No
 
 
 def test_the_largest_number_of_charges_is_checked_for_every_format(
-    monkeypatch: pytest.MonkeyPatch,
+    load: Load, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(charge_columns, "LARGEST_COUNT", 2)
-    with pytest.raises(ChargeFileError, match="holds 3 charges; at most 2"):
-        charge_columns.ChargeColumns({"x": np.zeros(3)}, str)
+    monkeypatch.setattr(shape_file, "CHARGE_RULES", replace(CHARGE_RULES, most=2))
+    write_hdf5(tmp_path / "start.h5", dict.fromkeys("xyz", np.zeros(3)))
+    assert ["start.h5: holds more than 2 charges"] == message(load, tmp_path, "start.h5")

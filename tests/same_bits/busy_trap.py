@@ -6,6 +6,8 @@ from typing import Any
 
 import numpy as np
 
+from driftwell.geometry.outline import circle, rectangle
+from driftwell.geometry.solid import Extruded, Frame, Revolved
 from driftwell.particles.state import Particles
 from driftwell.stepping.loop import TimeLoop, Traced
 from tests.cases import detector, field, wall
@@ -31,8 +33,16 @@ def load() -> Particles:
     return ions(random.normal(scale=2e-4, size=(70, 3)), random.normal(scale=100.0, size=(70, 3)))
 
 
+ROD = Extruded(circle((0.0, 0.0), 0.3e-3), np.inf, Frame(np.array([0.9e-3, 0.5e-3, 0.0])))
+SHEET = Extruded(rectangle((-0.4e-3, -1e-3), (1e-3, 1e-3)), 0.0, Frame(np.array([0, 0, 0.7e-3])))
+RING = Revolved(rectangle((0.75e-3, -0.2e-3), (0.8e-3, 0.2e-3)))
+
+
 def busy_trap(particles: Particles, **options: Any) -> TimeLoop:
-    """Ions in rods, a pulse and a coil, within walls that take and walls that turn back."""
+    """Ions in rods, a pulse and a coil, within walls that take and walls that turn back.
+
+    And electrodes that take them: a rod, a thin sheet, a ring.
+    """
     return loop(
         particles,
         8e-6,
@@ -43,6 +53,7 @@ def busy_trap(particles: Particles, **options: Any) -> TimeLoop:
             wall("plane", at=["0", "0", "-1 mm"], effect="reflect"),
         ],
         detectors=[detector("plane", at=["0", "0", "0.4 mm"])],
+        bodies=[[ROD], [SHEET, RING]],
         records=[2e-6, 4e-6, 6e-6],
         samples=np.arange(0.0, 8e-6, 0.1e-6),
         traced=[Traced(0, None, 0), Traced(0, 3, 2)],

@@ -7,10 +7,15 @@ from typing import Any
 import numpy as np
 import pytest
 
+from driftwell.images.mirror_sum import plane_images
+from driftwell.images.tube_sum import TubeImages
 from driftwell.record.resume_state import particles_of, particles_state
 from driftwell.stepping.schedule import RECORD
-from tests.moving import DIRECT, TREE
+from tests.moving import DIRECT, OFF, TREE
 from tests.same_bits.busy_trap import busy_trap, load
+
+TUBE = TubeImages(2, np.zeros(3), 0.9e-3, 0.9)
+PLANE = plane_images(np.array([0.0, 0.0, -1e-3]), np.array([0.0, 0.0, 1.0]), 5e-6)
 
 
 def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes]]:
@@ -52,14 +57,23 @@ def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes
     return taken_up, found
 
 
-@pytest.mark.parametrize("coulomb", [DIRECT, TREE], ids=["direct", "tree"])
+@pytest.mark.parametrize(
+    ("coulomb", "images"),
+    [(DIRECT, None), (TREE, None), (DIRECT, TUBE), (OFF, TUBE), (DIRECT, PLANE)],
+    ids=["direct", "tree", "direct, tube", "images of a tube alone", "direct, plane"],
+)
 @pytest.mark.parametrize("scheme", ["kick-drift-kick", "composed-4", "composed-6"])
 @pytest.mark.parametrize("coulomb_every", [1, 3])
 def test_a_loop_taken_up_between_any_two_calls_changes_no_bit(
-    scheme: str, coulomb_every: int, coulomb: Any
+    scheme: str, coulomb_every: int, coulomb: Any, images: Any
 ) -> None:
     """With losses, bounces, passages, a jump, traces, within and at the ends of intervals."""
-    options = {"scheme": scheme, "coulomb_every": coulomb_every, "coulomb": coulomb}
+    options = {
+        "scheme": scheme,
+        "coulomb_every": coulomb_every,
+        "coulomb": coulomb,
+        "images": images,
+    }
     never, unbroken = moved(1 << 40, 1 << 40, **options)
     for every in (2, 5):
         often, found = moved(3, every, **options)

@@ -11,6 +11,23 @@ from driftwell.scenario.explain import WIDTH, explain
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from tests.scenario.good_scenarios import BEAM, GOOD, PAIR, TRAP
 
+COIL = """
+[[field]]
+name = "coil"
+kind = "current-loop"
+radius = "50 mm"
+turns = 50
+current = { amplitude = "10 A", frequency = "50 Hz" }
+"""
+BLOCK = """
+[[field]]
+name = "block"
+kind = "magnet-block"
+size = ["20 mm", "10 mm", "5 mm"]
+remanence = "1.3 T"
+centre = ["100 mm", "0 mm", "0 mm"]
+"""
+
 
 def loaded(folder: Path, text: str, *settings: str) -> LoadedScenario:
     path = folder / "s.toml"
@@ -122,6 +139,10 @@ def test_macro_particles_without_softening_and_runs_without_questions_are_noted(
             ("cloud.bunch.shape.kinetic_energy=4 keV", "field.bend.strength=0.6 T"),
             ["Fields up to 600 mT"],
         ),
+        (TRAP + COIL, (), []),
+        (TRAP + COIL, ("field.coil.current=1.2 kA",), ["Fields up to 754 mT"]),
+        (TRAP + COIL, ("field.coil.current.amplitude=1.2 kA",), ["Fields up to 754 mT"]),
+        (TRAP + BLOCK, (), ["Fields up to 1.3 T"]),
         (
             TRAP,
             ("cloud.load.species=electron", "field.rods.voltage=6 kV"),

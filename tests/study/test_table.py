@@ -106,7 +106,7 @@ def test_the_hdf5_file_holds_the_same_with_units_and_notes(swept: Study, tmp_pat
             varied["coulomb.method"]["text"].tolist()
         )
         size = named(file["cases/answer"])["size"]
-        assert ["m", "m", "1", ""] == list(size.attrs["units"])
+        assert ["m", "m", "1", "1", ""] == list(size.attrs["units"])
         assert "rms-size" == size.attrs["ask"]
         assert [1 / 3, 2 / 3, 1.0, 4 / 3, 9.0, 6.0] == size["value"][:6].tolist()
         assert all(map(math.isnan, size["value"][6:]))

@@ -62,7 +62,7 @@ def test_a_run_is_answered_with_its_ending_its_times_and_its_answers(tmp_path: P
     assert [answer.value for answer in found.answers] == [
         answer["value"] for answer in reply["answers"]
     ]
-    assert {"name", "ask", "value", "unit", "error", "note", "coulomb_error"} == set(
+    assert {"name", "ask", "value", "unit", "error", "note", "coulomb_error", "field_error"} == set(
         reply["answers"][0]
     )
 

@@ -14,6 +14,8 @@ class Answer:
     note : what else to know, empty where nothing
     coulomb_error : largest rms relative error of the Coulomb forces that moved the charges until
         then, as measured; 0 where there are none, or all pairs were summed. It is not in `error`.
+    field_error : relative rms error of the solved field of the electrodes that pushed them until
+        then, as measured when it was solved; 0 where there is none. It is not in `error` either.
     """
 
     name: str
@@ -23,3 +25,4 @@ class Answer:
     error: float | None
     note: str
     coulomb_error: float = 0.0
+    field_error: float = 0.0

@@ -95,19 +95,23 @@ def answer_lines(answers: Sequence[Answer], width: int, sign: str = "±") -> lis
     return lines
 
 
-def coulomb_lines(answers: Sequence[Answer], width: int) -> list[str]:
+def force_lines(answers: Sequence[Answer], width: int) -> list[str]:
     """What the answers say of the forces behind them; nothing where these have no error."""
-    errors = [answer.coulomb_error for answer in answers if answer.coulomb_error != 0.0]
-    if not errors:
-        return []
-    least, most = f"{min(errors):.1e}", f"{max(errors):.1e}"
-    size = most if least == most else f"{least} to {most}"
-    whose = "" if len(errors) == len(answers) else f", behind {len(errors)} of {len(answers)}"
-    text = (
-        f"coulomb error: rms {size} of the force, as measured on the way{whose}; it is not in the "
-        "errors above"
-    )
-    return paragraph(text, width, "", "  ")
+    coulomb = [answer.coulomb_error for answer in answers if answer.coulomb_error != 0.0]
+    field = [answer.field_error for answer in answers if answer.field_error != 0.0]
+    lines = []
+    for name, errors, what in (
+        ("coulomb error", coulomb, "of the force, as measured on the way"),
+        ("field error", field, "of the electrodes' field, as measured when it was mapped"),
+    ):
+        if not errors:
+            continue
+        least, most = f"{min(errors):.1e}", f"{max(errors):.1e}"
+        size = most if least == most else f"{least} to {most}"
+        whose = "" if len(errors) == len(answers) else f", behind {len(errors)} of {len(answers)}"
+        text = f"{name}: rms {size} {what}{whose}; it is not in the errors above"
+        lines += paragraph(text, width, "", "  ")
+    return lines
 
 
 def _with_note(start: str, note: str, width: int) -> list[str]:

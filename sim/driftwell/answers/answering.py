@@ -20,7 +20,7 @@ def answer_all(questions: Sequence[QuestionForm], evidence: Evidence) -> list[An
     moved the charges until then.
     """
     return [
-        replace(_answer(question, evidence), coulomb_error=_coulomb_error(question, evidence))
+        _with_force_errors(_answer(question, evidence), question, evidence)
         for question in questions
     ]
 
@@ -35,6 +35,10 @@ def _answer(question: QuestionForm, evidence: Evidence) -> Answer:
     return Answer(question.name, question.ask, math.nan, question.unit, None, note)
 
 
-def _coulomb_error(question: QuestionForm, evidence: Evidence) -> float:
+def _with_force_errors(answer: Answer, question: QuestionForm, evidence: Evidence) -> Answer:
     until = question.moved_until(evidence.end_time)
-    return evidence.coulomb_error(until) if until > 0.0 else 0.0
+    if until <= 0.0:
+        return answer
+    return replace(
+        answer, coulomb_error=evidence.coulomb_error(until), field_error=evidence.field_error
+    )

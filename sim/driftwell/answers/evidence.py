@@ -109,6 +109,10 @@ class Evidence(Protocol):
     def softening(self) -> float:
         """Softening length of the Coulomb sum, m."""
 
+    @property
+    def field_error(self) -> float:
+        """Relative rms error of the electrodes' solved field; 0 where there is none."""
+
     def coulomb_error(self, until: float) -> float:
         """Largest rms relative error of the Coulomb forces measured up to a time, s."""
 

@@ -37,10 +37,14 @@ class Solution(Protocol):
     mirrors : for each coordinate, whether every unit solution is even in it
     """
 
-    capacitance: Floats
-    error: float
-    panels: Panels
-    mirrors: tuple[bool, ...]
+    @property
+    def capacitance(self) -> Floats: ...
+    @property
+    def error(self) -> float: ...
+    @property
+    def panels(self) -> Panels: ...
+    @property
+    def mirrors(self) -> tuple[bool, ...]: ...
 
     def potential(self, points: Floats) -> Floats:
         """Potentials (e, n), V per V, at points (n, d), m; d = 2 for (r, z) and (x, y), else 3."""

@@ -137,6 +137,21 @@ def _parser() -> argparse.ArgumentParser:
     _add_threads(estimate)
     _add_settings(estimate)
 
+    fields = commands.add_parser(
+        "fields", help="solve the field of a scenario's electrodes, tell and draw it"
+    )
+    fields.add_argument("file", help="scenario file (TOML)")
+    fields.add_argument(
+        "-o",
+        "--output",
+        type=_folder,
+        metavar="FOLDER",
+        help="where to leave the pictures (default: the file's name with -fields, here)",
+    )
+    fields.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    _add_threads(fields)
+    _add_settings(fields)
+
     watch = commands.add_parser("watch", help="show how far a run or a sweep is")
     watch.add_argument("folder", metavar="FOLDER", help="a run's folder, or a sweep's")
     watch.add_argument("--once", action="store_true", help="show it once, as text")
@@ -304,6 +319,12 @@ def _carry_out(asked: argparse.Namespace) -> int:
         from driftwell.cli.estimate import estimate_command
 
         return estimate_command(asked.file, asked.settings, threads, asked.seconds)
+    if asked.command == "fields":
+        from driftwell.cli.fields import fields_command
+
+        return fields_command(
+            asked.file, asked.output, asked.settings, threads, pictures=not asked.no_pictures
+        )
     from driftwell.cli.run_command import run_command
 
     settings = list(asked.settings)

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
-from driftwell.answers.answer_lines import answer_lines, coulomb_lines
+from driftwell.answers.answer_lines import answer_lines, force_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
@@ -91,7 +91,7 @@ def _report(result: Result) -> bool:
         "",
         *_doubted(result),
         *_answers(result),
-        *coulomb_lines(result.answers, width()),
+        *force_lines(result.answers, width()),
         "",
         f"record: {result.folder / MASTER}",
     ]

@@ -18,8 +18,9 @@ from driftwell.forms import (
     key,
     one_of,
     refuse,
+    spelled,
 )
-from driftwell.forms.waveforms import VoltageWave
+from driftwell.forms.waveforms import VoltageWave, waveform_words
 
 if TYPE_CHECKING:
     AnyShape = ShapeForm
@@ -90,3 +91,22 @@ class Electrode(Form):
     name: Name = key("what the electrode is called in messages and results")
     voltage: VoltageWave = key("its voltage against ground", example="200 V")
     shape: tuple[AnyShape, ...] = key("its bodies, one or more")
+
+    def words(self) -> str:
+        """One sentence for `driftwell check`."""
+        shapes = "; ".join(shape.words() for shape in self.shape)
+        return f"{waveform_words(self.voltage, 'V')}: {shapes}"
+
+
+def electrodes_words(electrodes: Electrodes | None) -> str:
+    """What all electrodes have in common, for `driftwell check`."""
+    common = electrodes or Electrodes()
+    words = f"{common.geometry}, field to {common.field_accuracy:g} of its rms"
+    if any(common.centre):
+        words += ", about (" + ", ".join(spelled(x, "m") for x in common.centre) + ")"
+    can = common.enclosure
+    if can is not None:
+        sizes = [can.radius, can.length, *(can.size or ())]
+        said = " x ".join(spelled(size, "m") for size in sizes if size is not None)
+        words += f"; within a grounded can, {said}"
+    return words

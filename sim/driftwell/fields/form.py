@@ -5,9 +5,15 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import Enum
+from pathlib import Path
+from typing import Self
+
+import numpy as np
+from numpy.typing import NDArray
 
 from driftwell.forms import Form, Name, Point, key, spelled
 from driftwell.forms.body import Body
+from driftwell.forms.faults import Fault
 from driftwell.forms.waveform_table import PackedWaveform
 from driftwell.forms.waveforms import AnyWaveform
 
@@ -25,13 +31,28 @@ class Role(Enum):
 
 @dataclass(frozen=True, slots=True)
 class PackedField:
-    """One field as numbers: what the table of its role holds in one row."""
+    """One field as numbers: what the table of its role holds in one row.
+
+    data : the kind's own numbers beyond its parameters, few or (k,) float64
+    """
 
     role: Role
     kind: int
     parameters: tuple[float, ...]
     waveform: PackedWaveform
-    data: tuple[float, ...] = ()
+    data: tuple[float, ...] | NDArray[np.float64] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class FieldRegion:
+    """The part of space in which a field is known, in the field's own coordinates.
+
+    geometry : "axisymmetric" (r, z), "planar" (x, y) or "spatial" (x, y, z)
+    ends : from and to along each axis, m; r from minus the largest to the largest
+    """
+
+    geometry: str
+    ends: tuple[tuple[float, float], ...]
 
 
 class FieldForm(Form):
@@ -43,6 +64,25 @@ class FieldForm(Form):
     def species_named(self) -> tuple[str, ...]:
         """Names of species the options refer to (each must exist in the scenario)."""
         return ()
+
+    def files_named(self) -> tuple[str, ...]:
+        """Files the field reads, relative to the scenario's folder."""
+        return ()
+
+    def found_in(self, folder: Path) -> Self:
+        """The field, knowing the scenario's folder; paths of files it names count from there."""
+        return self
+
+    def faults(self) -> list[Fault]:
+        """What is wrong with the files it names: paths of keys count from the field's table."""
+        return []
+
+    def region(self) -> FieldRegion | None:
+        """Where the field is known; None where its formula holds everywhere.
+
+        Beyond the region a field goes on smoothly for a little and means nothing.
+        """
+        return None
 
     def waveform(self) -> AnyWaveform:
         """The value in time that scales the field; its breaks end steps exactly."""
@@ -56,9 +96,13 @@ class FieldForm(Form):
         """Angular frequencies (rad/s) a particle of `body` would move or be driven with.
 
         The names are those the automatic step choice shows: "drive", "secular", "axial",
-        "radial", "cyclotron", "magnetron".
+        "radial", "oscillation", "cyclotron", "magnetron".
         """
         return {}
+
+    def strongest(self) -> float:
+        """Largest flux density, T, that the step and the cautions are to reckon with."""
+        return 0.0
 
     def where(self) -> str:
         """The centre in words, to end a sentence with; nothing where it is the origin."""

@@ -74,6 +74,9 @@ class MagneticMultipole(FieldForm):
         """Field at `radius` for a waveform of 1, T."""
         return 1.0 if self.gradient is None else self.radius
 
+    def strongest(self) -> float:
+        return self.scale() * largest_value(self.waveform())
+
     def packed(self, bodies: Mapping[str, Body]) -> PackedField:
         turn = self.order * self.angle
         return PackedField(
@@ -91,8 +94,7 @@ class MagneticMultipole(FieldForm):
 
     def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
         """The cyclotron motion is that at r = r0, the strongest inside the magnet."""
-        strongest = self.scale() * largest_value(self.waveform())
-        rates = {"cyclotron": abs(body.charge_to_mass) * strongest}
+        rates = {"cyclotron": abs(body.charge_to_mass) * self.strongest()}
         drive = 2.0 * math.pi * frequency_scale(self.waveform())
         return {"drive": drive, **rates} if drive else rates
 

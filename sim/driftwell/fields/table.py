@@ -21,6 +21,10 @@ Every magnetic kind (uniform or not) has a kernel for its field and one for what
     kernel(p, data, w, position, first, last, out_b)       B = w curl a, T, added to
     kernel(p, data, rate, position, first, last, out_e)    E = -(dw/dt) a, V/m, added to
 
+A kind with long formulas is compiled apart, and only where a scenario uses it: its two kernels
+stand in :data:`KERNELS_APART`, with no branch of their own, and it has 14 parameters at most
+(fields/apart.py).
+
 A uniform magnetic kind keeps the unit vector of its field in ``p[3:6]``, so that the stepping can
 sum w n over all of them and turn each charge on its exact helix.
 """
@@ -33,6 +37,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.fields.apart import APART, call_field, call_induced, note_addresses
 from driftwell.fields.electric_multipole import (
     ELECTRIC_MULTIPOLE,
     ElectricMultipole,
@@ -44,6 +49,50 @@ from driftwell.fields.magnetic_multipole import (
     MagneticMultipole,
     magnetic_multipole,
     magnetic_multipole_induced,
+)
+from driftwell.fields.magnets.current_loop import (
+    CURRENT_LOOP,
+    CurrentLoop,
+    current_loop,
+    current_loop_induced,
+)
+from driftwell.fields.magnets.magnet_block import (
+    MAGNET_BLOCK,
+    MagnetBlock,
+    magnet_block,
+    magnet_block_induced,
+)
+from driftwell.fields.magnets.magnet_cylinder import (
+    MAGNET_CYLINDER,
+    MagnetCylinder,
+    magnet_cylinder,
+    magnet_cylinder_induced,
+)
+from driftwell.fields.magnets.multipole_magnet import (
+    MULTIPOLE_MAGNET,
+    MultipoleMagnet,
+    multipole_magnet,
+    multipole_magnet_induced,
+)
+from driftwell.fields.magnets.solenoid import SOLENOID, Solenoid, solenoid, solenoid_induced
+from driftwell.fields.map_files.electric import ElectricMapFile
+from driftwell.fields.map_files.magnetic import MagneticMapFile
+from driftwell.fields.map_files.potential import PotentialMapFile
+from driftwell.fields.maps.kernels import (
+    PLANAR_MAP,
+    ROUND_MAP,
+    SPATIAL_MAP,
+    planar_map,
+    round_map,
+    spatial_map,
+)
+from driftwell.fields.maps.magnetic_kernels import (
+    ROUND_MAGNETIC_MAP,
+    SPATIAL_MAGNETIC_MAP,
+    round_magnetic_map,
+    round_magnetic_map_induced,
+    spatial_magnetic_map,
+    spatial_magnetic_map_induced,
 )
 from driftwell.fields.quadro_logarithmic import (
     QUADRO_LOGARITHMIC,
@@ -79,7 +128,25 @@ FIELD_KINDS: tuple[type[FieldForm], ...] = (
     MagneticMultipole,
     QuadroLogarithmic,
     WireInCylinder,
+    PotentialMapFile,
+    ElectricMapFile,
+    MagneticMapFile,
+    CurrentLoop,
+    Solenoid,
+    MagnetBlock,
+    MagnetCylinder,
+    MultipoleMagnet,
 )
+
+KERNELS_APART = {
+    CURRENT_LOOP: (current_loop, current_loop_induced),
+    SOLENOID: (solenoid, solenoid_induced),
+    MAGNET_BLOCK: (magnet_block, magnet_block_induced),
+    MAGNET_CYLINDER: (magnet_cylinder, magnet_cylinder_induced),
+    MULTIPOLE_MAGNET: (multipole_magnet, multipole_magnet_induced),
+}
+"""Of the kinds that are compiled apart: kernels of the field and of what it induces."""
+LAST_APART = max(KERNELS_APART)
 
 PARAMETERS = 16
 
@@ -108,25 +175,28 @@ def field_table(fields: Sequence[PackedField]) -> FieldTable:
     waves = waveform_table([field.waveform for field in fields])
     parameter = np.zeros((len(fields), PARAMETERS))
     first = np.zeros(len(fields) + 1, dtype=np.int64)
-    data: list[float] = []
+    data = [np.asarray(field.data, dtype=np.float64) for field in fields]
     for row, field in enumerate(fields):
         parameter[row, : len(field.parameters)] = field.parameters
-        data.extend(field.data)
-        first[row + 1] = len(data)
+        if field.kind in KERNELS_APART:
+            note_addresses(field.kind, KERNELS_APART[field.kind], parameter[row])
+        first[row + 1] = first[row] + data[row].size
     return FieldTable(
         np.array([field.kind for field in fields], dtype=np.int64),
         parameter,
         first,
-        np.array(data or [0.0]),
+        np.concatenate(data) if first[-1] else np.zeros(1),
         waves.kind,
         waves.parameter,
         waves.data,
     )
 
 
-def field_tables(forms: Sequence[FieldForm], bodies: Mapping[str, Body]) -> dict[Role, FieldTable]:
-    """The scenario's fields as one table for each role."""
-    packed = [form.packed(bodies) for form in forms]
+def field_tables(
+    forms: Sequence[FieldForm], bodies: Mapping[str, Body], more: Sequence[PackedField] = ()
+) -> dict[Role, FieldTable]:
+    """The scenario's fields as one table for each role; `more` are packed already."""
+    packed = [*(form.packed(bodies) for form in forms), *more]
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
 
 
@@ -157,6 +227,12 @@ def electric_field(
         return quadro_logarithmic(p, data, w, position, charge, first, last, out_field)
     if kind == WIRE_IN_CYLINDER:
         return wire_in_cylinder(p, data, w, position, charge, first, last, out_field)
+    if kind == ROUND_MAP:
+        return round_map(p, data, w, position, charge, first, last, out_field)
+    if kind == PLANAR_MAP:
+        return planar_map(p, data, w, position, charge, first, last, out_field)
+    if kind == SPATIAL_MAP:
+        return spatial_map(p, data, w, position, charge, first, last, out_field)
     return np.nan
 
 
@@ -176,6 +252,12 @@ def magnetic_field(
         uniform_magnetic(p, data, w, position, first, last, out_b)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole(p, data, w, position, first, last, out_b)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map(p, data, w, position, first, last, out_b)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map(p, data, w, position, first, last, out_b)
+    elif APART <= kind <= LAST_APART:
+        call_field(p, data, w, position, first, last, out_b)
     else:
         out_b[:, first:last] = np.nan
 
@@ -196,5 +278,11 @@ def induced_field(
         uniform_magnetic_induced(p, data, rate, position, first, last, out_e)
     elif kind == MAGNETIC_MULTIPOLE:
         magnetic_multipole_induced(p, data, rate, position, first, last, out_e)
+    elif kind == ROUND_MAGNETIC_MAP:
+        round_magnetic_map_induced(p, data, rate, position, first, last, out_e)
+    elif kind == SPATIAL_MAGNETIC_MAP:
+        spatial_magnetic_map_induced(p, data, rate, position, first, last, out_e)
+    elif APART <= kind <= LAST_APART:
+        call_induced(p, data, rate, position, first, last, out_e)
     else:
         out_e[:, first:last] = np.nan

@@ -49,6 +49,9 @@ class UniformMagnetic(FieldForm):
     def waveform(self) -> AnyWaveform:
         return self.strength
 
+    def strongest(self) -> float:
+        return largest_value(self.strength)
+
     def packed(self, bodies: Mapping[str, Body]) -> PackedField:
         return PackedField(
             Role.UNIFORM_MAGNETIC,
@@ -58,7 +61,7 @@ class UniformMagnetic(FieldForm):
         )
 
     def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
-        rates = {"cyclotron": abs(body.charge_to_mass) * largest_value(self.strength)}
+        rates = {"cyclotron": abs(body.charge_to_mass) * self.strongest()}
         drive = 2.0 * math.pi * frequency_scale(self.strength)
         return {"drive": drive, **rates} if drive else rates
 

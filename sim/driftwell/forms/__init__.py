@@ -10,6 +10,7 @@ from driftwell.forms.form import (
     or_word,
     per_axis,
     refuse,
+    row_or_table,
 )
 from driftwell.forms.quantities import (
     Angle,
@@ -83,5 +84,6 @@ __all__ = [
     "per_axis",
     "read_quantity",
     "refuse",
+    "row_or_table",
     "spelled",
 ]

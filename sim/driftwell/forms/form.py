@@ -112,6 +112,18 @@ def or_word(word: str | tuple[str, ...], kind: Any) -> Any:
     ]
 
 
+def row_or_table(row: Any, table: Any) -> Any:
+    """The type "a list such as `row`, or a table such as `table`"."""
+
+    def which(value: Any) -> str:
+        return "row" if isinstance(value, list | tuple) else "table"
+
+    return Annotated[
+        Union[Annotated[row, Tag("row")], Annotated[table, Tag("table")]],  # noqa: UP007
+        Discriminator(which),
+    ]
+
+
 def per_axis(kind: Any, axes: int = 3) -> Any:
     """The type "one `kind` for all axes, or a list with one for each", see :func:`on_each_axis`."""
 

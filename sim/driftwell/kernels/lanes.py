@@ -62,6 +62,7 @@ __all__ = [
     "most",
     "positive",
     "repeated",
+    "repeated_lane",
     "rough_inverse_cube",
     "scaled_rough_inverse_cube",
     "smaller",
@@ -88,6 +89,16 @@ def lanes(typing: Any, number: Any) -> Any:
         return repeated_value(builder, args[0], NUMBERS)
 
     return LANES(types.float64), emitted
+
+
+@emitted_code
+def repeated_lane(typing: Any, a: Any, lane: Any) -> Any:
+    """The number in one lane of `a`, 0 to 7, in all lanes."""
+
+    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        return repeated_value(builder, builder.extract_element(args[0], args[1]), NUMBERS)
+
+    return LANES(LANES, types.int64), emitted
 
 
 @emitted_code

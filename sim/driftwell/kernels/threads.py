@@ -11,6 +11,12 @@ import numba
 from driftwell.errors import DriftwellError
 
 
+def threads_now() -> int:
+    """How many threads parallel kernels run on now."""
+    settings: Any = numba.config
+    return int(numba.get_num_threads()) if int(settings.NUMBA_NUM_THREADS) > 1 else 1
+
+
 @contextmanager
 def on_threads(count: int) -> Iterator[int]:
     """Within it, parallel kernels run on `count` threads; gives how many they really get.

@@ -1,6 +1,6 @@
 """The ledger: what is there now against what was there, came in, and went out.
 
-    now = start + by fields and magnets + work of drives - taken by walls                     (1)
+    now = start + by fields, magnets and images + work of drives - taken by walls             (1)
 
 for energy, momentum, angular momentum (about the origin), charge and count. The residual of each
 is the difference of both sides of (1) over the largest amount that was ever in the account: a
@@ -17,6 +17,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field, fields
+from dataclasses import field as filled
 
 import numpy as np
 from numpy.typing import NDArray
@@ -45,9 +46,11 @@ from driftwell.stepping.accounts import (
     COUNT_WALLS,
     ENERGY_WALLS,
     IMPULSE_FIELDS,
+    IMPULSE_IMAGES,
     IMPULSE_MAGNETS,
     MOMENTUM_WALLS,
     TORQUE_FIELDS,
+    TORQUE_IMAGES,
     TORQUE_MAGNETS,
     WORK_DRIVE,
     WORK_INDUCED,
@@ -89,6 +92,9 @@ class LedgerRow:
     torque_residual: float
     angular_allowance: float
     coulomb_error: float
+    image: float = 0.0
+    impulse_images: Floats = filled(default_factory=lambda: np.zeros(3))
+    torque_images: Floats = filled(default_factory=lambda: np.zeros(3))
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,7 +159,7 @@ class Ledger:
             charges.charge,
             charges.mass,
             charges.weight,
-            work.coulomb,
+            work.pairs,
             plan.light2,
             np.empty(SUMS),
             sums,
@@ -161,12 +167,13 @@ class Ledger:
         kinetic, in_fields = float(sums[KINETIC]), float(work.energy[0])
         pairs = _pairs(plan, charges, sums, summation)
         coulomb = pairs.energy
+        image = 0.5 * float(np.sum(charges.charge * work.image[3])) if plan.images else 0.0
         momentum, angular = sums[MOMENTUM : MOMENTUM + 3], sums[ANGULAR : ANGULAR + 3]
         charge, count = float(sums[CHARGE]), float(sums[COUNT])
         book = work.total + work.carry
-        self._open(kinetic + in_fields + coulomb, momentum, angular, charge, count)
+        self._open(kinetic + in_fields + coulomb + image, momentum, angular, charge, count)
         self._scale.grow(
-            kinetic + abs(in_fields) + abs(coulomb),
+            kinetic + abs(in_fields) + abs(coulomb) + abs(image),
             float(sums[MOMENTUM_SIZE]),
             float(sums[ANGULAR_SIZE]),
             float(sums[CHARGE_SIZE]),
@@ -192,13 +199,15 @@ class Ledger:
             kinetic
             + in_fields
             + coulomb
+            + image
             - self._energy
             - book[WORK_DRIVE]
             - book[WORK_INDUCED]
             + book[ENERGY_WALLS]
         )
-        momentum_gap = momentum - self._momentum - impulses - magnets + walls
-        angular_gap = angular - self._angular - torques - turns + spins_walls
+        pulls, twists = vector(IMPULSE_IMAGES), vector(TORQUE_IMAGES)
+        momentum_gap = momentum - self._momentum - impulses - magnets - pulls + walls
+        angular_gap = angular - self._angular - torques - turns - twists + spins_walls
         lost = self._count - count
         return LedgerRow(
             time=time,
@@ -229,6 +238,9 @@ class Ledger:
             torque_residual=pairs.torque_residual,
             angular_allowance=_share(self._untrue, self._scale.angular),
             coulomb_error=coulomb_error,
+            image=image,
+            impulse_images=pulls,
+            torque_images=twists,
         )
 
     def state(self) -> dict[str, Floats]:

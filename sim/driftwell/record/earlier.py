@@ -52,8 +52,11 @@ def earlier_run(folder: Path, scenario: bytes, digest: str) -> Run | None:
     return run
 
 
-def differences(run: Run) -> list[str]:
-    """What may change last digits where this process goes on with a run, one sentence each."""
+def differences(run: Run, field_digest: str = "") -> list[str]:
+    """What may change last digits where this process goes on with a run, one sentence each.
+
+    field_digest : of the electrodes' solved field in this process, "" without electrodes
+    """
     header = run.header
     found = [
         (name, then, now)
@@ -61,6 +64,7 @@ def differences(run: Run) -> list[str]:
             ("numpy", header.numpy_version, np.__version__),
             ("numba", header.numba_version, version("numba")),
             ("the processor", header.processor, processor()),
+            ("a solved field of digest", header.field_digest, field_digest),
         )
         if then != now
     ]

@@ -134,13 +134,14 @@ def text_table(entry: Dataset, columns: Mapping[str, list[Any]]) -> NDArray[Any]
 
 
 def table_rows(entry: Dataset, table: NDArray[Any]) -> list[dict[str, Any]]:
-    """The rows of a table as plain Python values by column."""
+    """The rows of a table as plain Python values by column; older formats lack some."""
     return [
         {
             column.name: row[column.name].decode()
             if column.kind == "text"
             else row[column.name].item()
             for column in entry.columns
+            if column.name in (table.dtype.names or ())
         }
         for row in table
     ]

@@ -43,6 +43,10 @@ class Header:
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
+    field_error, field_digest : relative rms error of the electrodes' solved field as it was mapped,
+        and a digest of its numbers; 0 and "" without electrodes
+    images : the conductors that answer to the charges, in words; empty where none do
+    walls : names of what takes charges: the walls, then the electrodes
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -67,6 +71,9 @@ class Header:
     coulomb_method: str = "direct"
     coulomb_because: str = ""
     coulomb_accuracy: float = 1e-4
+    field_error: float = 0.0
+    field_digest: str = ""
+    images: str = ""
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)
@@ -119,7 +126,7 @@ def header_of(file: Any) -> Header:
             f"{file.filename}: written in format {found}, and this driftwell {__version__} reads "
             f"up to {FORMAT_VERSION}; read it with driftwell {file.attrs['driftwell_version']}."
         )
-    values = attributes_of(file, HEADER)
+    values = attributes_of(file, (entry for entry in HEADER if entry.since <= found))
     digest = values.pop("scenario_sha256")
     entry = dataset("clouds")
     header = Header(

@@ -14,7 +14,7 @@ import h5py
 import numpy as np
 from numpy.typing import NDArray
 
-FORMAT_VERSION = 1
+FORMAT_VERSION = 2
 
 Kind = Literal["float64", "int64", "text", "texts"]
 
@@ -23,12 +23,13 @@ _NUMBERS = {"float64": "<f8", "int64": "<i8"}
 
 @dataclass(frozen=True, slots=True)
 class Attribute:
-    """One attribute: a number, a text, or a list of texts."""
+    """One attribute: a number, a text, or a list of texts; `since` : the first format with it."""
 
     name: str
     kind: Kind
     unit: str
     help: str
+    since: int = 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -166,6 +167,9 @@ ROWS = (
                 "1",
                 "rms relative force error of the Coulomb sum, last measured; 0 for the direct sum",
             ),
+            Column("image", "float64", "J", "energy with the charges that conductors answer with"),
+            Column("impulse_images", "float64", "kg m/s", "given by these", (3,)),
+            Column("torque_images", "float64", "kg m^2/s", "given by these", (3,)),
         ),
     ),
     Dataset(
@@ -290,6 +294,12 @@ ANSWERS = Dataset(
             "1",
             "largest rms relative error of the Coulomb forces behind it; not in `error`",
         ),
+        Column(
+            "field_error",
+            "float64",
+            "1",
+            "relative rms error of the electrodes' solved field behind it; not in `error`",
+        ),
         Column("note", "text", "", "what else to know of the answer"),
     ),
 )
@@ -324,8 +334,11 @@ HEADER = (
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),
     Attribute("coulomb_accuracy", "float64", "1", "rms relative force error asked of the tree"),
+    Attribute("field_error", "float64", "1", "relative rms error of the electrodes' field", 2),
+    Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
+    Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
     Attribute("species", "texts", "", "names of the species, in order"),
-    Attribute("walls", "texts", "", "names of the walls, in order"),
+    Attribute("walls", "texts", "", "names of what takes charges: the walls, then the electrodes"),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

@@ -125,6 +125,11 @@ class Run:
         """Softening length of the Coulomb sum, m."""
         return self.header.softening
 
+    @property
+    def field_error(self) -> float:
+        """Relative rms error of the electrodes' solved field; 0 where there is none."""
+        return self.header.field_error
+
     def coulomb_error(self, until: float) -> float:
         """Largest rms relative error of the Coulomb forces measured up to a time, s."""
         rows = self.ledger
@@ -295,11 +300,12 @@ class Run:
         """`choice` of the rows of each segment, one after another."""
         entry = dataset(path)
         shape = entry.row_shape(self.header.sizes) if row_shape is None else row_shape
-        pieces = [np.zeros((0, *shape), entry.dtype())]
+        empty = np.zeros((0, *shape), entry.dtype())
+        pieces = [empty]
         for facts in self.segments:
             if facts.rows[str(entry.shape[0])]:
                 with self._segment(facts) as file:
-                    pieces.append(file[path][choice])
+                    pieces.append(_of_now(file[path][choice], empty.dtype))
         return np.concatenate(pieces)
 
     def _last_snapshot(self) -> float | None:
@@ -346,3 +352,13 @@ if TYPE_CHECKING:
 
     def _fulfils(run: Run) -> Evidence:
         return run
+
+
+def _of_now(rows: NDArray[Any], dtype: np.dtype[Any]) -> NDArray[Any]:
+    """Rows as the layout has them now: columns that came later than a record are zero in it."""
+    if dtype.names is None or rows.dtype.names == dtype.names:
+        return rows
+    made = np.zeros(rows.shape, dtype)
+    for name in rows.dtype.names or ():
+        made[name] = rows[name]
+    return made

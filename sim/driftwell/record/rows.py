@@ -66,18 +66,23 @@ def row_of(stored: np.void) -> LedgerRow:
     return LedgerRow(**values)
 
 
-def event_rows(events: Events, walls: int) -> tuple[NDArray[Any], NDArray[Any]]:
-    """What happened on surfaces: losses on the first so many, the walls; passages on the rest."""
-    lost = events.surface < walls
+def event_rows(events: Events, walls: int, detectors: int) -> tuple[NDArray[Any], NDArray[Any]]:
+    """What happened on surfaces: losses on walls and electrodes, passages through detectors.
+
+    Surfaces are numbered walls, detectors, electrodes; what takes charges stands in the record as
+    walls, then electrodes.
+    """
+    surface = events.surface
+    lost = (surface < walls) | (surface >= walls + detectors)
     losses = np.zeros(int(lost.sum()), dataset("losses").dtype())
     crossings = np.zeros(int((~lost).sum()), dataset("crossings").dtype())
     for rows, chosen in ((losses, lost), (crossings, ~lost)):
         for name in ("time", "id", "cloud", "position", "velocity", "weight"):
             rows[name] = getattr(events, name)[chosen]
-    losses["wall"] = events.surface[lost]
+    losses["wall"] = surface[lost] - np.where(surface[lost] < walls, 0, detectors)
     squares = (losses["velocity"] ** 2).sum(axis=1)
     gamma = np.sqrt(1.0 + squares / SPEED_OF_LIGHT**2)
     losses["kinetic_energy"] = events.mass[lost] * squares / (1.0 + gamma)
-    crossings["detector"] = events.surface[~lost] - walls
+    crossings["detector"] = surface[~lost] - walls
     crossings["direction"] = events.direction[~lost]
     return losses, crossings

@@ -7,7 +7,7 @@ from functools import partial
 
 import numpy as np
 
-from driftwell.answers.answer_lines import answer_lines, coulomb_lines
+from driftwell.answers.answer_lines import answer_lines, force_lines
 from driftwell.errors import RecordError
 from driftwell.forms import spelled
 from driftwell.record.layout import ROWS
@@ -66,6 +66,7 @@ def _identity(run: Run) -> list[str]:
         *lines,
         f"{header.scheme}, step {spelled(header.step, 's')}, seed {header.seed}",
         f"Coulomb sum {header.coulomb_method}: {header.coulomb_because or 'no reason given'}",
+        *([f"images {header.images}"] if header.images else []),
         f"begun {header.created} on {header.processor}, {header.threads} threads on "
         f"{header.cores} processors",
         f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "
@@ -118,7 +119,7 @@ def _ledger(run: Run) -> list[str]:
 
 def _answers(run: Run, width: int, sign: str) -> list[str]:
     if run.answers:
-        return answer_lines(run.answers, width, sign) + coulomb_lines(run.answers, width)
+        return answer_lines(run.answers, width, sign) + force_lines(run.answers, width)
     return ["unfinished" if run.outcome.exit_code is None else "none asked"]
 
 

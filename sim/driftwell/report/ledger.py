@@ -12,7 +12,7 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, NullLocator
 from numpy.typing import NDArray
 
 from driftwell.constants import ELEMENTARY_CHARGE
-from driftwell.report.palette import BLACK, BLUE, GREEN, INK, ORANGE, PURPLE, VERMILLION
+from driftwell.report.palette import BLACK, BLUE, GREEN, INK, ORANGE, PURPLE, SKY, VERMILLION
 from driftwell.report.panel import put_up
 from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
@@ -33,6 +33,7 @@ ENERGIES = (
     ("kinetic", "kinetic", VERMILLION, BROAD),
     ("in fields", "field", BLUE, MIDDLE),
     ("of all pairs", "coulomb", GREEN, MIDDLE),
+    ("of images", "image", SKY, NARROW),
     ("work of drives", "work_drive", PURPLE, NARROW),
     ("work of induction", "work_induced", ORANGE, NARROW),
     ("taken by walls", "energy_walls", BLACK, NARROW),

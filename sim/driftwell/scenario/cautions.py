@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from driftwell.constants import ELECTRON_MASS, ELEMENTARY_CHARGE
+from driftwell.fields.form import FieldForm
 from driftwell.forms import Form, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.declared import Choice, Declared, Dimensioned, declared_keys
@@ -25,8 +26,9 @@ def cautions(scenario: Scenario) -> list[str]:
     """The hazards of what is simulated and whom to ask, one sentence each; empty where none."""
     known = bodies(scenario.species)
     light = [cloud for cloud in scenario.cloud if _is_electron(known[cloud.species])]
-    voltage = max((abs(v) for field in scenario.field for v in _values(field, "V")), default=0.0)
-    magnet = max((abs(v) for field in scenario.field for v in _values(field, "T")), default=0.0)
+    powered = (*scenario.field, *scenario.electrode)
+    voltage = max((abs(v) for each in powered for v in _values(each, "V")), default=0.0)
+    magnet = max((_flux_density(field) for field in scenario.field), default=0.0)
     energy = max((_energy(cloud, known) for cloud in light), default=0.0)
     if light:
         energy = max(energy, voltage * ELEMENTARY_CHARGE)
@@ -38,8 +40,8 @@ def cautions(scenario: Scenario) -> list[str]:
         found.append(f"Electrons of up to {reached} make X-rays where they stop: shield, measure.")
     if magnet > STRONG_MAGNET:
         found.append(
-            f"Fields up to {spelled(magnet, 'T')} pull iron through the air and stop pacemakers; "
-            "a superconducting magnet that quenches fills the room with cold gas."
+            f"Fields up to {spelled(magnet, 'T', 3)} pull iron through the air and stop pacemakers;"
+            " a superconducting magnet that quenches fills the room with cold gas."
         )
     if found:
         found.append(
@@ -51,6 +53,11 @@ def cautions(scenario: Scenario) -> list[str]:
 
 def _is_electron(body: Body) -> bool:
     return abs(body.mass / ELECTRON_MASS - 1.0) < 1e-3
+
+
+def _flux_density(field: FieldForm) -> float:
+    """Largest flux density a field states, or that its currents make, T."""
+    return max(field.strongest(), *_values(field, "T"), 0.0)
 
 
 def _energy(cloud: Cloud, known: Mapping[str, Body]) -> float:

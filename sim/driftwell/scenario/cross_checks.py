@@ -8,12 +8,14 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.electrodes.faults import electrode_faults
 from driftwell.errors import ScenarioError
 from driftwell.forms import spelled
 from driftwell.forms.faults import Fault
 from driftwell.particles.cloud import Amount
 from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT
+from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 
 MOST_RECORDS = 1_000_000
@@ -26,17 +28,27 @@ _TOLD = 5
 def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
     """Faults of a scenario whose keys are all well on their own and whose names all exist."""
     faults = [*_time_faults(scenario), *_question_faults(scenario)]
+    of_electrodes = electrode_faults(scenario.electrodes, scenario.electrode, folder)
+    faults += of_electrodes
     if scenario.coulomb.softening >= scenario.stepping.extent:
         limit = spelled(scenario.stepping.extent, "m")
         text = f"must be less than [stepping] extent, {limit}, and far less than any cloud"
         faults.append(Fault(("coulomb", "softening"), "", text))
+    faults += [
+        Fault(("field", i, *fault.path), fault.found, fault.needed)
+        for i, field in enumerate(scenario.field)
+        for fault in field.faults()
+    ]
     known = bodies(scenario.species)
     of_clouds = [
         Fault(("cloud", i, *fault.path), fault.found, fault.needed)
         for i, cloud in enumerate(scenario.cloud)
         for fault in cloud.faults(known, folder)
     ]
-    return [*faults, *(of_clouds or _place_faults(scenario, folder))]
+    if not of_clouds:
+        conductors = None if of_electrodes else Conductors.of(scenario, folder)
+        of_clouds = _place_faults(scenario, folder, conductors)
+    return [*faults, *of_clouds]
 
 
 def _time_faults(scenario: Scenario) -> Iterator[Fault]:
@@ -82,7 +94,7 @@ def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Itera
                 yield Fault(("question", i, "charge"), "", text)
 
 
-def _place_faults(scenario: Scenario, folder: Path) -> list[Fault]:
+def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | None) -> list[Fault]:
     """Faults of the charges as they are born; clouds must be without faults of their own."""
     known = bodies(scenario.species)
     amounts = [cloud.amount(known, folder) for cloud in scenario.cloud]
@@ -112,6 +124,8 @@ def _place_faults(scenario: Scenario, folder: Path) -> list[Fault]:
                 f"[stepping] extent, {spelled(scenario.stepping.extent, 'm')}"
             )
             faults.append(Fault(("cloud", i), "", text))
+        if conductors is not None and (told := conductors.struck(born.position.T)):
+            faults.append(Fault(("cloud", i), "", told))
     if scenario.coulomb.method != "off" and scenario.coulomb.softening == 0.0 and places:
         faults += _same_places(scenario, np.concatenate(places), owner)
     return faults

@@ -10,18 +10,26 @@ from driftwell.errors import ScenarioError
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.source import shown_path
 
+LATER = ("electrodes", "electrode")
+"""Sections left out where they are not used: scenarios from before keep their digests."""
+
 
 def digest(scenario: Scenario, folder: Path) -> str:
     """SHA-256, in hexadecimal, of every value in SI units, defaults too, and of the files named.
 
     Comments, order, units and whether a default is written out make no difference.
     """
-    files = {
-        name: _file_digest(folder / name)
-        for cloud in scenario.cloud
-        for name in cloud.files_named()
-    }
-    content = {"scenario": scenario.model_dump(mode="json"), "files": files}
+    named = [name for cloud in scenario.cloud for name in cloud.files_named()]
+    named += [name for field in scenario.field for name in field.files_named()]
+    named += [
+        name for each in scenario.electrode for shape in each.shape for name in shape.files_named()
+    ]
+    values = scenario.model_dump(mode="json")
+    for section in LATER:
+        if not values[section]:
+            del values[section]
+    files = {name: _file_digest(folder / name) for name in named}
+    content = {"scenario": values, "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(text.encode()).hexdigest()
 

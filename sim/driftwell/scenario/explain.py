@@ -8,6 +8,7 @@ from operator import itemgetter
 
 from driftwell.coulomb.crossover import LEAST
 from driftwell.coulomb.direct import SMALL
+from driftwell.electrodes.form import electrodes_words
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 from driftwell.particles.species import bodies
@@ -49,11 +50,17 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
         yield "cloud", cloud.name, cloud.words(known, loaded.folder)
     for field in scenario.field:
         yield "field", field.name, field.words()
+    if scenario.electrode:
+        yield "electrodes", "", electrodes_words(scenario.electrodes)
+    for electrode in scenario.electrode:
+        yield "electrode", electrode.name, electrode.words()
     for wall in scenario.wall:
         yield "wall", wall.name, f"{wall.words()}; {_EFFECT[wall.effect]}"
     for detector in scenario.detector:
         yield "detector", detector.name, detector.words()
     yield "Coulomb", "", _coulomb_words(loaded)
+    if scenario.images is not None:
+        yield "images", "", scenario.images.words()
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:

@@ -8,9 +8,12 @@ from typing import TYPE_CHECKING
 from driftwell.answers.form import QuestionForm
 from driftwell.answers.table import QUESTION_KINDS
 from driftwell.coulomb.form import Coulomb
+from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Title, key, one_of
+from driftwell.images.form import ImagesForm
+from driftwell.images.table import IMAGE_KINDS
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.species import SpeciesForm, bodies
 from driftwell.record.form import Record
@@ -23,11 +26,13 @@ if TYPE_CHECKING:
     AnyWall = WallForm
     AnyDetector = DetectorForm
     AnyQuestion = QuestionForm
+    AnyImages = ImagesForm
 else:
     AnyField = one_of(FIELD_KINDS)
     AnyWall = one_of(WALL_KINDS)
     AnyDetector = one_of(DETECTOR_KINDS)
     AnyQuestion = one_of(QUESTION_KINDS, by="ask")
+    AnyImages = one_of(IMAGE_KINDS)
 
 
 class Scenario(Form):
@@ -41,11 +46,19 @@ class Scenario(Form):
     )
     cloud: tuple[Cloud, ...] = key("groups of charges present from the start", default=())
     field: tuple[AnyField, ...] = key("what pushes the charges from outside", default=())
+    electrodes: Electrodes | None = key(
+        "what all electrodes have in common: how they are drawn, how well their field is known",
+        default=None,
+    )
+    electrode: tuple[Electrode, ...] = key("conductors, each with a voltage", default=())
     wall: tuple[AnyWall, ...] = key("surfaces that absorb or reflect charges", default=())
     detector: tuple[AnyDetector, ...] = key(
         "surfaces that record the charges passing them", default=()
     )
     coulomb: Coulomb = key("how the force between the charges is summed", default=Coulomb())
+    images: AnyImages | None = key(
+        "conductors that answer to the charges between them; left out: none does", default=None
+    )
     stepping: Stepping = key("how time is cut into steps", default=Stepping())
     record: Record = key("what is kept, and how often", default=Record())
     question: tuple[AnyQuestion, ...] = key("what the run is asked", default=())

@@ -71,5 +71,7 @@ def checked_table(data: Mapping[str, Any], folder: Path) -> tuple[Scenario | Non
     faults += reference_faults(data)
     if scenario is None or faults:
         return None, list(dict.fromkeys(faults))
+    fields = tuple(field.found_in(folder) for field in scenario.field)
+    scenario = scenario.model_copy(update={"field": fields})
     found = [with_value(fault, data) for fault in cross_faults(scenario, folder)]
     return (None, found) if found else (scenario, [])

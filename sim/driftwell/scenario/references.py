@@ -9,6 +9,7 @@ from collections.abc import Iterator, Mapping
 from typing import Any
 
 from driftwell.answers.table import QUESTION_KINDS
+from driftwell.electrodes.bodies import ENCLOSURE
 from driftwell.forms.declared import kind_name
 from driftwell.forms.faults import Fault, nearest, read_form
 from driftwell.forms.wording import as_found
@@ -17,7 +18,8 @@ from driftwell.scenario.places import entry_name
 
 Path = tuple[str | int, ...]
 
-NAMED_SECTIONS = ("cloud", "field", "wall", "detector", "question")
+NAMED_SECTIONS = ("cloud", "field", "electrode", "wall", "detector", "question")
+SURFACES = ("wall", "detector")
 _SHOWN = 12
 
 
@@ -26,6 +28,7 @@ def reference_faults(data: Mapping[str, Any]) -> list[Fault]:
     faults = [fault for section in NAMED_SECTIONS for fault in _used_twice(data, section)]
     if not data.get("cloud"):
         faults.append(Fault(("cloud",), "", "missing; needs at least one group of charges"))
+    faults += _same_as_surfaces(data)
     faults += _unknown_species(data)
     faults += _unknown_in_questions(data)
     return faults
@@ -55,6 +58,19 @@ def _used_twice(data: Mapping[str, Any], section: str) -> Iterator[Fault]:
             yield Fault(path, as_found(name), f"is the name of [[{section}]] {other} already")
         else:
             first[name] = i
+
+
+def _same_as_surfaces(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Electrodes are surfaces: losses on them and on walls are told apart by names."""
+    taken = {name: f"a [[{section}]]" for section in SURFACES for name in _names(data, section)}
+    common = data.get("electrodes")
+    if isinstance(common, Mapping) and "enclosure" in common:
+        taken[ENCLOSURE] = "[electrodes] enclosure"
+    for i, entry in _entries(data, "electrode"):
+        name = entry_name(entry)
+        if name in taken:
+            path = ("electrode", i, "name")
+            yield Fault(path, as_found(name), f"is the name of {taken[name]} already")
 
 
 def _unknown_species(data: Mapping[str, Any]) -> Iterator[Fault]:

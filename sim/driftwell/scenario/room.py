@@ -51,7 +51,8 @@ _LIMITS = ("/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory/memory.limit_in_b
 class Extent:
     """How much a run is: numbers of things, and how the charges' own force is summed.
 
-    surfaces : walls and detectors; detectors : those among them
+    surfaces : walls, detectors, and one for all electrodes; detectors : those among them
+    images : bytes that sums over images take
     """
 
     charges: int
@@ -64,6 +65,7 @@ class Extent:
     snapshots: int
     coulomb: Coulomb
     detectors: int = 0
+    images: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -73,6 +75,7 @@ class Extent:
         return (
             BASE
             + sums
+            + self.images
             + self.charges * (PER_CHARGE + self.surfaces * PER_SURFACE)
             + self.tracked * PER_TRACKED
             + (self.records + self.samples) * PER_MARK
@@ -123,13 +126,14 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         charges=charges,
         tracked=min(charges, DEFAULT_TRACKS if record.tracks is None else record.tracks),
         clouds=len(scenario.cloud),
-        surfaces=len(scenario.wall) + len(scenario.detector),
+        surfaces=len(scenario.wall) + len(scenario.detector) + bool(scenario.electrode),
         records=int(duration / (record.every or duration / DEFAULT_RECORDS)) + 2,
         samples=samples,
         traces=traces,
         snapshots=int(duration / (record.snapshots or duration)) + 1,
         coulomb=scenario.coulomb,
         detectors=len(scenario.detector),
+        images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
     )
 
 

@@ -29,7 +29,10 @@ MOMENTUM_WALLS = 15
 ANGULAR_WALLS = 18
 CHARGE_WALLS = 21
 COUNT_WALLS = 22
-ACCOUNTS = 23
+IMPULSE_IMAGES = 23
+"""3 entries, N s, by charges that conductors answer with."""
+TORQUE_IMAGES = 26
+ACCOUNTS = 29
 
 Six = tuple[float, float, float, float, float, float]
 """The three components of a vector, then those of its moment about the origin."""

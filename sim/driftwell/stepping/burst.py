@@ -23,7 +23,9 @@ import numpy as np
 
 from driftwell.coulomb.direct import PairSum
 from driftwell.coulomb.unresolved import unresolved_pair
+from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, kernel, outer_kernel
+from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.status import (
     COLLAPSE,
     DONE,
@@ -37,7 +39,7 @@ from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
 from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces, take_out
-from driftwell.stepping.forces import coulomb_forces, magnetised
+from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,
@@ -75,11 +77,13 @@ RESOLVED = 0.3
 @kernel
 def burst(
     pair_sum: PairSum,
+    images: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     trace: Trace,
     time: np.ndarray,
@@ -99,8 +103,8 @@ def burst(
     cursor = work.cursor
     every = plan.coulomb_every
     stages = scheme.drift.size
-    surfaced = surfaces.kind.size > 0
-    together = plan.coulomb != 0 and every == 1
+    surfaced = surfaces.kind.size > 0 or bodies.whole.shape[0] > 0
+    together = (plan.coulomb != 0 or plan.images != 0) and every == 1
     free = work.events.shape[0] // 2
     if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
         # a step far too long may throw charges apart before they are looked at
@@ -132,16 +136,29 @@ def burst(
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
                     way = scheme.drift[k - 1] * h
-                    move(passes, plan, fields, surfaces, charges, before, inside, way, work)
+                    move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
-                        coulomb_forces(pair_sum, plan, charges, work)
+                        coulomb_forces(pair_sum, images, plan, charges, work)
                         half = 0.5 * every * h
-                        push_apart(passes, plan, fields, surfaces, charges, half, work)
-                    if surfaced and any_crossing(passes, plan, fields, surfaces, charges, work):
+                        push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
+                        if plan.images != 0:
+                            enter_images(half, work)
+                    if surfaced and any_crossing(
+                        passes, plan, fields, surfaces, bodies, charges, h, work
+                    ):
                         met = meet_surfaces(
-                            plan, fields, surfaces, charges, together, start, h, inside, work
+                            plan,
+                            fields,
+                            surfaces,
+                            bodies,
+                            charges,
+                            together,
+                            start,
+                            h,
+                            inside,
+                            work,
                         )
                     if met == UNTOUCHED:
                         break
@@ -151,7 +168,7 @@ def burst(
                     t = end
                     if met & LOST == 0:
                         break
-                    take_out(pair_sum, plan, surfaces, charges, work)
+                    take_out(pair_sum, images, plan, surfaces, charges, work)
                 if k > 0 or jump or cursor[CURSOR_FRESH] == 0:
                     settle(work.rate, work.pending, work.total, work.carry)
                     if jump:
@@ -160,11 +177,11 @@ def burst(
                             before = 0.5 * (time[j - 1] + time[j])
                             jump_magnets(plan, fields, charges, t, before, inside, work)
                     energy = work.energy[0]
-                    take_fields(passes, plan, fields, surfaces, charges, t, inside, work)
+                    take_fields(passes, plan, fields, surfaces, bodies, charges, t, inside, work)
                     if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
                     if _pushed_anew(k, stages, first, last, together, met, cursor):
-                        coulomb_forces(pair_sum, plan, charges, work)
+                        coulomb_forces(pair_sum, images, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
                     continue
@@ -175,10 +192,14 @@ def burst(
                         return EVENTS_FULL
                     if every > 1:
                         half = 0.5 * every * h
-                        push_apart(passes, plan, fields, surfaces, charges, half, work)
+                        push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
+                        if plan.images != 0:
+                            enter_images(half, work)
                 keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
-                push(passes, plan, fields, surfaces, charges, together, keep, length, work)
+                push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
+                if together and plan.images != 0:
+                    enter_images(length, work)
                 work.pending[0] += length
             cursor[CURSOR_STEP] += 1
             cursor[CURSOR_STEPS] += 1

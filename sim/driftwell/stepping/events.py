@@ -22,7 +22,9 @@ import math
 import numpy as np
 
 from driftwell.coulomb.direct import PairSum, potential_at
+from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import (
     ANGULAR_WALLS,
@@ -33,8 +35,9 @@ from driftwell.stepping.accounts import (
     enter_vector,
 )
 from driftwell.stepping.blocks import BLOCK, CROSSED
+from driftwell.stepping.contact import first_body
 from driftwell.stepping.drift import helix
-from driftwell.stepping.forces import magnetic_at
+from driftwell.stepping.forces import magnetic_at, take_images
 from driftwell.stepping.motion import (
     CURSOR_EVENTS,
     CURSOR_OVERFLOW,
@@ -61,6 +64,7 @@ def meet_surfaces(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     together: bool,
     t: float,
@@ -96,20 +100,40 @@ def meet_surfaces(
                     side[i] = 0 if there == 0.0 else now
                 else:
                     changed |= _follow(
-                        plan, fields, surfaces, charges, together, i, t, h, inside, work
+                        plan, fields, surfaces, bodies, charges, together, i, t, h, inside, work
                     )
+    near = work.clearance
+    for b in range(max(1, blocks)):
+        first, last = 0, near.size
+        if blocks > 0:
+            if work.block_sums[b, CROSSED] == 0.0:
+                continue
+            first, last = b * BLOCK, min(b * BLOCK + BLOCK, near.size)
+        for i in range(first, last):
+            if near[i] < 0.0 and charges.alive[i] == 1:  # not followed through a surface yet
+                changed |= _follow(
+                    plan, fields, surfaces, bodies, charges, together, i, t, h, inside, work
+                )
     return changed
 
 
 @outer_kernel
 def take_out(
-    pair_sum: PairSum, plan: Plan, surfaces: SurfaceTable, charges: Charges, work: Work
+    pair_sum: PairSum,
+    images: CompiledFunction,
+    plan: Plan,
+    surfaces: SurfaceTable,
+    charges: Charges,
+    work: Work,
 ) -> None:
     """Take the charges that are LEAVING out of all sums, and put them where they were lost.
 
     What they carry is entered in the accounts; their energy in the fields is entered by the loop,
     as the difference the renewed forces show.
     """
+    if plan.images != 0:
+        energy = take_images(images, plan, charges, work)
+        add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
     n = charges.alive.size
     one_by_one = plan.coulomb != 0
     if work.levels.shape[1] == n and plan.coulomb != 0:
@@ -132,6 +156,9 @@ def take_out(
             for s in range(surfaces.kind.size):
                 there = level(surfaces.kind[s], surfaces.parameter[s], x, y, z)
                 work.side[s, i] = 1 if there > 0.0 else -1
+    if plan.images != 0:
+        energy = take_images(images, plan, charges, work)
+        add_compensated(work.total, work.carry, ENERGY_WALLS, -energy)
 
 
 @outer_kernel
@@ -139,6 +166,7 @@ def _follow(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     together: bool,
     i: int,
@@ -151,16 +179,22 @@ def _follow(
     last = last_end(plan, fields, charges, together, i, t + h, inside, work)
     first = first_end(plan, fields, charges, i, t, inside, work)
     changed = UNTOUCHED
+    if work.clearance.size > 0:
+        work.clearance[i] = 0.0
     start, span = t, h
     for _ in range(_BOUNCES):
         x0, y0, z0, ux0, uy0, uz0 = first[:6]
         x1, y1, z1, ux1, uy1, uz1 = last[:6]
         wall, when = _first_wall(plan, surfaces, first, last, span, i, work)
+        if bodies.whole.shape[0] > 0:
+            body, at = first_body(plan, bodies, first, last, span, when)
+            if body >= 0 and (wall < 0 or at < when):
+                wall, when = surfaces.kind.size + body, at
         _pass_detectors(plan, surfaces, first, last, start, span, when, i, work)
         if wall < 0:
             return changed
         xc, yc, zc, uxc, uyc, uzc = point(plan, first, last, span, when)
-        if surfaces.effect[wall] == ABSORB:
+        if wall >= surfaces.kind.size or surfaces.effect[wall] == ABSORB:
             _write(wall, i, start + when * span, xc, yc, zc, uxc, uyc, uzc, 0.0, work)
             charges.alive[i] = LEAVING
             for s in range(surfaces.kind.size):

@@ -11,8 +11,10 @@ import numpy as np
 from driftwell.coulomb.direct import SMALL, PairSum, small_field
 from driftwell.fields.table import electric_field, induced_field, magnetic_field
 from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
+from driftwell.kernels.pointers import CompiledFunction
+from driftwell.kernels.sums import add_compensated
 from driftwell.kernels.waveform import waveform
-from driftwell.stepping.accounts import Six
+from driftwell.stepping.accounts import IMPULSE_IMAGES, TORQUE_IMAGES, Six
 from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 
@@ -191,8 +193,49 @@ def force_and_torque(charges: Charges, field: np.ndarray, first: int, last: int)
 
 
 @inner_kernel
-def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) -> None:
-    """The field of the charges at each other; overwrites ``work.coulomb``."""
+def coulomb_forces(
+    pair_sum: PairSum, images: CompiledFunction, plan: Plan, charges: Charges, work: Work
+) -> None:
+    """The charges' field at each other, with their images; overwrites ``work.coulomb``."""
+    _pair_forces(pair_sum, plan, charges, work)
+    if plan.images != 0:
+        take_images(images, plan, charges, work)
+
+
+@outer_kernel
+def take_images(images: CompiledFunction, plan: Plan, charges: Charges, work: Work) -> float:
+    """Field and potential of the images, their force and torque, and the sum of all with pairs.
+
+    Overwrites ``work.image``, ``work.image_force`` and ``work.coulomb``; returns the energy, J.
+    """
+    out, image, pairs = work.coulomb, work.image, work.pairs
+    images(
+        charges.position, charges.charge, plan.constant, work.image_table, work.image_work, image
+    )
+    six = force_and_torque(charges, image, 0, charges.charge.size)
+    for k in range(6):
+        work.image_force[k] = six[k]
+    energy = 0.0
+    for i in range(charges.charge.size):
+        energy += 0.5 * charges.charge[i] * image[3, i]
+    for axis in range(3):
+        for i in range(charges.charge.size):
+            out[axis, i] = pairs[axis, i] + image[axis, i]
+    return energy
+
+
+@outer_kernel
+def enter_images(h: float, work: Work) -> None:
+    """Account what the images gave the charges in a kick of length `h`."""
+    force = work.image_force
+    for k in range(3):
+        add_compensated(work.total, work.carry, IMPULSE_IMAGES + k, h * force[k])
+        add_compensated(work.total, work.carry, TORQUE_IMAGES + k, h * force[3 + k])
+
+
+@inner_kernel
+def _pair_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) -> None:
+    """The field of the charges at each other; overwrites ``work.pairs``."""
     if plan.coulomb == 0:
         return
     if charges.charge.size <= SMALL:
@@ -202,7 +245,7 @@ def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) 
             plan.softening2,
             plan.constant,
             work.tiles[0],
-            work.coulomb,
+            work.pairs,
         )
     else:
         pair_sum(
@@ -211,7 +254,7 @@ def coulomb_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) 
             plan.softening2,
             plan.constant,
             work.tiles,
-            work.coulomb,
+            work.pairs,
         )
 
 

@@ -20,6 +20,8 @@ from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
 from driftwell.forms import spelled
+from driftwell.geometry.body_table import BodyTable, body_table
+from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
@@ -112,12 +114,19 @@ class TimeLoop:
         traced: Sequence[Traced],
         threads: int,
         state: Mapping[str, NDArray[Any]] | None = None,
+        images: Images | None = None,
+        bodies: BodyTable | None = None,
     ) -> None:
-        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then."""
+        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
+
+        images : the conductors that answer to the charges
+        bodies : what else stops charges: owner k is surface number (walls + detectors + k)
+        """
         self.particles = particles
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
+        self._bodies = body_table(()) if bodies is None else bodies
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
@@ -129,7 +138,11 @@ class TimeLoop:
             extent2=stepping.extent**2,
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
+            images=int(images is not None),
         )
+        self._images, self._threads = images, threads
+        self._image_sum = no_images()
+        self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
         self.summation = Summation(coulomb, len(particles), threads, manner=manner)
@@ -202,13 +215,18 @@ class TimeLoop:
                 self.charges.position,
                 self.charges.charge,
                 self.particles.id,
-                self.work.coulomb,
+                self.work.pairs,
                 last=self.mark == len(self.schedule.steps),
             ),
         )
         if summation is not self.summation:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
+        if self._images is not None and not self._doubted:
+            doubt = self._images.doubt(self.charges.position, self.charges.charge)
+            if doubt is not None:
+                self._doubted = True
+                told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
         return error, told
 
     def remove_lost(self) -> None:
@@ -216,10 +234,11 @@ class TimeLoop:
         alive = self.charges.alive != 0
         if alive.all():
             return
-        side = self.work.side[:, alive]
+        side, clearance = self.work.side[:, alive], self.work.clearance
         self.particles = self.particles.kept(alive)
         self._arrange()
         self.work.side[:] = side
+        self.work.clearance[:] = clearance[alive] if clearance.size else clearance
 
     def state(self) -> dict[str, NDArray[Any]]:
         """Copies of everything a resume needs besides the particles, by name.
@@ -278,11 +297,13 @@ class TimeLoop:
         return int(
             burst(
                 self.summation.pair_sum,
+                self._image_sum.function,
                 self._passes,
                 self.plan,
                 self._scheme,
                 self._fields,
                 self._surfaces,
+                self._bodies,
                 self.charges,
                 self._trace,
                 self.schedule.time,
@@ -308,13 +329,18 @@ class TimeLoop:
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
         tiles, levels = self.summation.work, self.summation.method == "tree"
-        work = work_space(n, self._surfaces.kind.size, tiles, levels, collapse)
+        images = None
+        if self._images is not None:
+            images = self._image_sum = self._images.laid_out(n, self._threads)
+        stopped = self._bodies.whole.shape[0] > 0
+        surfaces = self._surfaces.kind.size
+        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
         self._passes = passes_over(
-            n, self.plan, self._fields, self._surfaces, self.charges, self.work
+            n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from driftwell.coulomb.unresolved import search_room
 from driftwell.fields.table import FieldTable
+from driftwell.images.image_sum import ImageSum
 from driftwell.kernels.cache_lines import room
 from driftwell.particles.state import Particles
 from driftwell.stepping.accounts import ACCOUNTS, RATES
@@ -64,6 +65,7 @@ class Plan(NamedTuple):
     constant : 1/(4 pi eps0); softening2 : m^2; extent2 : m^2
     watch_collapse : 1 where charges of both signs move without softening
     light2 : c^2, m^2/s^2
+    images : 1 where conductors answer to the charges
     """
 
     coulomb: int
@@ -73,6 +75,7 @@ class Plan(NamedTuple):
     extent2: float
     watch_collapse: int
     light2: float
+    images: int
 
 
 class Trace(NamedTuple):
@@ -94,9 +97,14 @@ class Work(NamedTuple):
     """Arrays the loop keeps between calls; none is allocated inside a step.
 
     external, coulomb, induced : (3, n) fields, V/m; spare : (3, n)
+    pairs : (3, n) V/m, the charges' at each other alone: `coulomb` itself where there are no images
+    image : (4, n) field and potential of the images, V/m and V; (4, 0) where there are none
+    image_table, image_work : what their sum reads, and works in
+    image_force : (6,) N and N m, force and torque of the images on all charges
     slowness : (n,) 1/gamma
     old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
         the electric one that the step's kicks begin with, V/m
+    clearance : (n,) m, less than the distance to every electrode, see approach.py; empty without
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
     levels : (4, n) field and potential of the tree, V/m and V; (4, 0) where another sum is used
@@ -111,12 +119,18 @@ class Work(NamedTuple):
 
     external: Floats
     coulomb: Floats
+    pairs: Floats
+    image: Floats
+    image_table: Floats
+    image_work: Floats
+    image_force: Floats
     induced: Floats
     spare: Floats
     slowness: Floats
     old_position: Floats
     old_velocity: Floats
     old_field: Floats
+    clearance: Floats
     side: NDArray[np.int8]
     tiles: Floats
     levels: Floats
@@ -182,24 +196,41 @@ def room_for_events(n: int, surfaces: int) -> int:
     return n * surfaces + 64 * surfaces * 17
 
 
-def work_space(n: int, surfaces: int, tiles: Floats, levels: bool, collapse: bool) -> Work:
+def work_space(
+    n: int,
+    surfaces: int,
+    tiles: Floats,
+    levels: bool,
+    collapse: bool,
+    images: ImageSum | None = None,
+    bodies: bool = False,
+) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
     What a run never writes to takes no memory: the system gives it by the page, when it is used.
 
     tiles : the pair sum's; levels : whether that finds potentials too
     collapse : whether opposite charges may fall together
+    images : the sum over the images; None where there are none
+    bodies : whether electrodes stop charges
     """
-    events = 2 * room_for_events(n, surfaces)
+    events = 2 * room_for_events(n, surfaces + bodies)
+    coulomb = room((3, n))
     return Work(
         external=room((3, n)),
-        coulomb=room((3, n)),
+        coulomb=coulomb,
+        pairs=coulomb if images is None else room((3, n)),
+        image=room((4, 0 if images is None else n)),
+        image_table=room((0,)) if images is None else images.table,
+        image_work=room((0, 0)) if images is None else images.work,
+        image_force=np.zeros(6),
         induced=room((3, n)),
         spare=room((3, n)),
         slowness=room((n,)),
         old_position=room((3, n)),
         old_velocity=room((3, n)),
         old_field=room((3, n)),
+        clearance=room((n if bodies else 0,)),
         side=np.ones((surfaces, n), dtype=np.int8),
         tiles=tiles,
         levels=room((4, n if levels else 0)),

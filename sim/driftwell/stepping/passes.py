@@ -16,10 +16,12 @@ import numpy as np
 from numba import prange
 
 from driftwell.fields.table import FieldTable
+from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, outer_kernel, threaded_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import WORK_INDUCED, enter_rates
+from driftwell.stepping.approach import near_bodies
 from driftwell.stepping.blocks import (
     AFTER,
     BEFORE,
@@ -46,7 +48,13 @@ Passes = CompiledFunction
 
 
 def passes_over(
-    n: int, plan: Plan, fields: Fields, surfaces: SurfaceTable, charges: Charges, work: Work
+    n: int,
+    plan: Plan,
+    fields: Fields,
+    surfaces: SurfaceTable,
+    bodies: BodyTable,
+    charges: Charges,
+    work: Work,
 ) -> Passes | None:
     """The passes over `n` charges, as a pointer; None where they are few.
 
@@ -56,7 +64,7 @@ def passes_over(
         return None
     types: Any = numba.types
     typeof: Any = numba.typeof
-    moved = [typeof(each) for each in (plan, *fields, surfaces, charges, work)]
+    moved = [typeof(each) for each in (plan, *fields, surfaces, bodies, charges, work)]
     numbers = [types.int64, types.boolean, *[types.float64] * 3]
     return CompiledFunction(_blocks, types.void(*moved, *numbers))
 
@@ -67,6 +75,7 @@ def push(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     together: bool,
     keep: bool,
@@ -84,7 +93,7 @@ def push(
         done = _push(plan, charges, together, keep, induced, h, work, _index(0), _index(n))
     else:
         what = _PUSH_TOGETHER if together else _PUSH
-        _over_blocks(passes, plan, fields, surfaces, charges, work, what, keep, h, 0.0, 0.0)
+        _over_blocks(passes, plan, fields, surfaces, bodies, charges, work, what, keep, h, 0.0, 0.0)
         done = added(work.block_sums, INDUCED)
     if induced:
         add_compensated(work.total, work.carry, WORK_INDUCED, done)
@@ -96,6 +105,7 @@ def push_apart(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     h: float,
     work: Work,
@@ -109,6 +119,7 @@ def push_apart(
             plan,
             fields,
             surfaces,
+            bodies,
             charges,
             work,
             _PUSH_APART,
@@ -125,6 +136,7 @@ def move(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     t: float,
     inside: float,
@@ -141,7 +153,9 @@ def move(
         if turned:
             enter_magnets(1.0, momenta(charges, _index(0), _index(n)), work.total, work.carry)
     else:
-        _over_blocks(passes, plan, fields, surfaces, charges, work, _MOVE, False, h, t, inside)
+        _over_blocks(
+            passes, plan, fields, surfaces, bodies, charges, work, _MOVE, False, h, t, inside
+        )
         if turned:
             enter_magnets(-1.0, six_added(work.block_sums, BEFORE), work.total, work.carry)
             enter_magnets(1.0, six_added(work.block_sums, AFTER), work.total, work.carry)
@@ -153,6 +167,7 @@ def take_fields(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     t: float,
     inside: float,
@@ -173,7 +188,9 @@ def take_fields(
             fields, charges, t, inside, changing, work, _index(0), _index(n)
         )
     else:
-        _over_blocks(passes, plan, fields, surfaces, charges, work, _TAKE, changing, 0.0, t, inside)
+        _over_blocks(
+            passes, plan, fields, surfaces, bodies, charges, work, _TAKE, changing, 0.0, t, inside
+        )
         power, energy = added(work.block_sums, POWER), added(work.block_sums, ENERGY)
         force = six_added(work.block_sums, FORCE)
     work.energy[0] = energy
@@ -186,14 +203,22 @@ def any_crossing(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
+    h: float,
     work: Work,
 ) -> bool:
-    """Whether a charge is on another side of a surface than at the beginning of the step."""
+    """Whether a charge is on another side of a surface than at the beginning of the step.
+
+    Or near enough to an electrode to be followed through the step of length `h`.
+    """
     n = charges.charge.size
     if passes is None:
-        return _crossed(surfaces, charges, work, _index(0), _index(n)) > 0
-    _over_blocks(passes, plan, fields, surfaces, charges, work, _CROSS, False, 0.0, 0.0, 0.0)
+        found = _crossed(surfaces, charges, work, _index(0), _index(n))
+        if bodies.whole.shape[0] > 0:
+            found += near_bodies(plan, bodies, charges, h, work, _index(0), _index(n))
+        return found > 0
+    _over_blocks(passes, plan, fields, surfaces, bodies, charges, work, _CROSS, False, h, 0.0, 0.0)
     return added(work.block_sums, CROSSED) > 0.0
 
 
@@ -215,6 +240,7 @@ def _over_blocks(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     work: Work,
     what: int,
@@ -230,6 +256,7 @@ def _over_blocks(
         fields.uniform,
         fields.magnetic,
         surfaces,
+        bodies,
         charges,
         work,
         what,
@@ -313,6 +340,7 @@ def _block(
     plan: Plan,
     fields: Fields,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     work: Work,
     what: int,
@@ -339,6 +367,8 @@ def _block(
         put_six(force, FORCE, row)
     elif what == _CROSS:
         row[CROSSED] = _crossed(surfaces, charges, work, first, last)
+        if bodies.whole.shape[0] > 0:
+            row[CROSSED] += near_bodies(plan, bodies, charges, h, work, first, last)
     elif what == _PUSH_APART:
         kick(charges, work.coulomb, h, first, last)
     else:
@@ -354,6 +384,7 @@ def _blocks(
     uniform: FieldTable,
     magnetic: FieldTable,
     surfaces: SurfaceTable,
+    bodies: BodyTable,
     charges: Charges,
     work: Work,
     what: int,
@@ -369,6 +400,7 @@ def _blocks(
             plan,
             Fields(electric, uniform, magnetic),
             surfaces,
+            bodies,
             charges,
             work,
             what,

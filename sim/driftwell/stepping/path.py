@@ -130,6 +130,33 @@ def place(plan: Plan, start: End, end: End, span: float, s: float) -> tuple[floa
 
 
 @outer_kernel
+def fastest(plan: Plan, start: End, end: End, span: float) -> float:
+    """The largest |dx/ds| on the path, m, or a little more: the control points of (1) bound it."""
+    v0, a0 = _moving(plan, start)
+    v1, a1 = _moving(plan, end)
+    most = 0.0
+    for k in range(5):
+        square = 0.0
+        for axis in range(3):
+            first, last = span * v0[axis], span * v1[axis]
+            bend0, bend1 = span * span * a0[axis], span * span * a1[axis]
+            if k == 0:
+                leg = first
+            elif k == 1:
+                leg = first + 0.25 * bend0
+            elif k == 2:
+                leg = 5.0 * (end[axis] - start[axis]) - 2.0 * (first + last)
+                leg += 0.25 * (bend1 - bend0)
+            elif k == 3:
+                leg = last - 0.25 * bend1
+            else:
+                leg = last
+            square += leg * leg
+        most = max(most, square)
+    return math.sqrt(most)
+
+
+@outer_kernel
 def point(
     plan: Plan, start: End, end: End, span: float, s: float
 ) -> tuple[float, float, float, float, float, float]:

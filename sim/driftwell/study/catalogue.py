@@ -16,7 +16,8 @@ Schema, version 1 (``PRAGMA user_version``; ``PRAGMA application_id`` is 0x64726
 ``questions``
     id; name; ask; unit
 ``answers``
-    run, question (ids); value, error (empty: not a number, not known); coulomb_error; note
+    run, question (ids); value, error (empty: not a number, not known); coulomb_error, field_error;
+    note
 """
 
 from __future__ import annotations
@@ -71,6 +72,7 @@ CREATE TABLE answers (
     value REAL,
     error REAL,
     coulomb_error REAL NOT NULL,
+    field_error REAL NOT NULL,
     note TEXT NOT NULL,
     PRIMARY KEY (run, question)
 ) WITHOUT ROWID;
@@ -184,11 +186,11 @@ class Catalogue:
             run = self._run_id(digest)
             self._base.execute("DELETE FROM answers WHERE run = ?", (run,))
             self._base.executemany(
-                "INSERT INTO answers VALUES (?, ?, ?, ?, ?, ?)",
+                "INSERT INTO answers VALUES (?, ?, ?, ?, ?, ?, ?)",
                 [
                     (
                         *(run, self._question_id(each), each.value, each.error),
-                        *(each.coulomb_error, each.note),
+                        *(each.coulomb_error, each.field_error, each.note),
                     )
                     for each in answers
                 ],
@@ -309,7 +311,7 @@ _ROWS = (
     "FROM cases JOIN runs ON runs.id = cases.run"
 )
 _ANSWERS = (
-    "SELECT run, name, ask, value, unit, error, note, coulomb_error "
+    "SELECT run, name, ask, value, unit, error, note, coulomb_error, field_error "
     "FROM answers JOIN questions ON questions.id = answers.question"
 )
 
@@ -321,8 +323,8 @@ def _row(found: tuple[Any, ...], answers: Iterable[Answer]) -> Row:
 
 
 def _answer(found: tuple[Any, ...]) -> Answer:
-    _, name, ask, value, unit, error, note, coulomb_error = found
-    return Answer(name, ask, math.nan if value is None else value, unit, error, note, coulomb_error)
+    _, name, ask, value, unit, error, note, *errors = found
+    return Answer(name, ask, math.nan if value is None else value, unit, error, note, *errors)
 
 
 def _now() -> str:

@@ -82,7 +82,8 @@ def answer_entry(number: int | str, unit: str = IN_ITS_UNIT) -> Dataset:
         columns=(
             Column("value", "float64", unit, "the answer; not a number where none"),
             Column("error", "float64", unit, "sampling error; not a number if unknown"),
-            Column("coulomb_error", "float64", "1", "relative error of the forces behind it"),
+            Column("coulomb_error", "float64", "1", "relative error of the Coulomb forces"),
+            Column("field_error", "float64", "1", "relative error of the solved field behind it"),
             Column("note", "text", "", "what else to know of the answer"),
         ),
     )
@@ -154,6 +155,7 @@ def _answer_columns(rows: Sequence[CaseRow], k: int) -> dict[str, list[Any]]:
         "value": [math.nan if each is None else each.value for each in answers],
         "error": [math.nan if each is None else _number(each.error) for each in answers],
         "coulomb_error": [math.nan if each is None else each.coulomb_error for each in answers],
+        "field_error": [math.nan if each is None else each.field_error for each in answers],
         "note": ["" if each is None else each.note for each in answers],
     }
 

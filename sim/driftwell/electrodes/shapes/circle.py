@@ -1,4 +1,4 @@
-"""A circle in the plane: of planar electrodes a round rod, of axisymmetric ones a torus."""
+"""A circle: of planar electrodes a round rod, of axisymmetric ones a torus or a ball."""
 
 from __future__ import annotations
 
@@ -6,11 +6,13 @@ from typing import Literal
 
 from driftwell.electrodes.shapes.form import Geometry, ShapeForm
 from driftwell.forms import Length, Positive, key, spelled
+from driftwell.forms.faults import Fault
 from driftwell.geometry import outline
+from driftwell.geometry.revolution import half_circle
 
 
 class Circle(ShapeForm):
-    """A full circle, in (r, z) or (x, y)."""
+    """A full circle, in (r, z) or (x, y); about z, with its centre on the axis, a ball."""
 
     kind: Literal["circle"]
     centre: tuple[Length, Length] = key("its centre", example=["9.2 mm", "0 mm"])
@@ -19,7 +21,19 @@ class Circle(ShapeForm):
     def drawn(self) -> bool:
         return True
 
+    def faults(self, geometry: Geometry) -> list[Fault]:
+        r = self.centre[0]
+        if geometry != "axisymmetric" or r == 0.0 or r > self.radius:
+            return []
+        text = (
+            f"must be 0 (a ball) or greater than the radius, {spelled(self.radius, 'm')} "
+            "(a torus): the circle meets the axis"
+        )
+        return [Fault(("centre", 0), spelled(r, "m"), text)]
+
     def outline(self, geometry: Geometry) -> outline.Outline:
+        if geometry == "axisymmetric" and self.centre[0] == 0.0:
+            return outline.outline([half_circle(self.centre[1], self.radius)], solid=True)
         return outline.circle(self.centre, self.radius)
 
     def words(self) -> str:

@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import Literal
 
 from driftwell.forms import Form
+from driftwell.forms.faults import Fault
 from driftwell.geometry.outline import Outline
 from driftwell.geometry.solid import Solid
 
@@ -23,6 +24,10 @@ class ShapeForm(Form):
     def outline(self, geometry: Geometry) -> Outline:
         """Of a drawn shape: in (r, z) or (x, y), m."""
         raise TypeError(f"{type(self).__name__} is not drawn in a plane")
+
+    def faults(self, geometry: Geometry) -> list[Fault]:
+        """Of a drawn shape: what does not suit this geometry; paths count from the shape."""
+        return []
 
     def solids(self, folder: Path) -> tuple[Solid, ...]:
         """Of a shape in space: its bodies; files that are named count from `folder`."""

@@ -6,7 +6,9 @@ from typing import Literal, Self
 
 from driftwell.electrodes.shapes.form import Geometry, ShapeForm
 from driftwell.forms import Length, checked, key, refuse, spelled
+from driftwell.forms.faults import Fault
 from driftwell.geometry import outline
+from driftwell.geometry.revolution import without_axis
 
 
 class Rectangle(ShapeForm):
@@ -25,8 +27,16 @@ class Rectangle(ShapeForm):
     def drawn(self) -> bool:
         return True
 
+    def faults(self, geometry: Geometry) -> list[Fault]:
+        if geometry == "axisymmetric" and self.low[0] < 0.0:
+            return [Fault(("low",), spelled(self.low[0], "m"), "r must not be negative")]
+        return []
+
     def outline(self, geometry: Geometry) -> outline.Outline:
-        return outline.rectangle(self.low, self.high)
+        drawn = outline.rectangle(self.low, self.high)
+        if geometry == "axisymmetric" and self.low[0] == 0.0:
+            return without_axis([list(drawn.pieces)], solid=True)
+        return drawn
 
     def words(self) -> str:
         low, high = (", ".join(spelled(x, "m") for x in corner) for corner in (self.low, self.high))

@@ -6,8 +6,11 @@ from driftwell.electrodes.shapes.box import Box
 from driftwell.electrodes.shapes.circle import Circle
 from driftwell.electrodes.shapes.cone import Cone
 from driftwell.electrodes.shapes.form import ShapeForm
+from driftwell.electrodes.shapes.hyperbola import Hyperbola
 from driftwell.electrodes.shapes.mesh import Mesh
+from driftwell.electrodes.shapes.path import Path
 from driftwell.electrodes.shapes.plate import Plate
+from driftwell.electrodes.shapes.quadro_logarithmic import QuadroLogarithmic
 from driftwell.electrodes.shapes.rectangle import Rectangle
 from driftwell.electrodes.shapes.ring import Ring
 from driftwell.electrodes.shapes.rod import Rod
@@ -15,7 +18,13 @@ from driftwell.electrodes.shapes.sphere import Sphere
 from driftwell.electrodes.shapes.tube import Tube
 from driftwell.electrodes.shapes.wire import Wire
 
-DRAWN_KINDS: tuple[type[ShapeForm], ...] = (Rectangle, Circle)
+DRAWN_KINDS: tuple[type[ShapeForm], ...] = (
+    Rectangle,
+    Circle,
+    Path,
+    Hyperbola,
+    QuadroLogarithmic,
+)
 """Drawn in a plane."""
 SPATIAL_KINDS: tuple[type[ShapeForm], ...] = (
     Box,

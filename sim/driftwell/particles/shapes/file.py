@@ -7,17 +7,13 @@ from typing import Literal, Self
 
 import numpy as np
 
-from driftwell.errors import ScenarioError
 from driftwell.forms import checked, key
 from driftwell.forms.body import Body
-from driftwell.forms.inside import check_inside, found_inside
-from driftwell.particles.charge_columns import ChargeColumns, ChargeFileError
-from driftwell.particles.charge_csv import read_csv
-from driftwell.particles.charge_hdf5 import read_hdf5
+from driftwell.forms.column_files import READERS, columns_inside, told_of_file
+from driftwell.forms.inside import check_inside
+from driftwell.particles.charge_columns import CHARGE_RULES, ChargeColumns
 from driftwell.particles.draws import Draws
 from driftwell.particles.shapes.form import Placement, ShapeForm
-
-READERS = {".csv": read_csv, ".h5": read_hdf5, ".hdf5": read_hdf5}
 
 
 class FromFile(ShapeForm):
@@ -47,22 +43,10 @@ class FromFile(ShapeForm):
         return (self.path,)
 
     def place(self, count: int, draws: Draws, body: Body, folder: Path) -> Placement:
-        try:
-            with np.errstate(all="ignore"):  # the cloud refuses what is not finite
-                columns = self._read(folder)
-                return Placement(self.moved(columns.position()), columns.velocity())
-        except ChargeFileError as fault:
-            text = "\n".join(f"{self.path}{line}" for line in fault.lines)
-            raise ScenarioError(text) from fault
-        except (OSError, RuntimeError, LookupError, ValueError) as fault:  # as h5py fails
-            why = getattr(fault, "strerror", None) or "damaged, or not a file of this kind"
-            raise ScenarioError(f"{self.path}: cannot be read ({why})") from fault
-
-    def _read(self, folder: Path) -> ChargeColumns:
-        path = found_inside(folder, self.path, "scenario")
-        if isinstance(path, str):
-            raise ChargeFileError(f": {path}")
-        return READERS[path.suffix.lower()](path)
+        # the cloud refuses what is not finite
+        with told_of_file(self.path), np.errstate(all="ignore"):
+            columns = ChargeColumns(columns_inside(folder, self.path, CHARGE_RULES))
+            return Placement(self.moved(columns.position()), columns.velocity())
 
     def words(self) -> str:
         return f"as in the file {self.path}"

@@ -1,0 +1,1 @@
+"""Coils, permanent magnets and lenses: fields of real hardware in closed form, compiled apart."""

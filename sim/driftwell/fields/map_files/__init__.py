@@ -1,0 +1,1 @@
+"""Fields that a file gives on a grid, as kinds of a scenario."""
