@@ -129,7 +129,11 @@ def solve_spatial(
             break
         found = _solved(surfaces, threads, DENSE).solution
         if asked is None:
-            wanted = _spread_places(surfaces) if places is None else np.asarray(places, dtype=float)
+            wanted = (
+                _spread_places(surfaces)
+                if places is None or not len(places)
+                else np.asarray(places, dtype=np.float64)
+            )
             asked = _outside(surfaces, wanted)
         if before is not None:
             found = replace(found, error=difference(before, found, _clear(surfaces, asked)))
