@@ -18,6 +18,8 @@ SPHERE = Revolved(outline([[arc((0, -1), (0, 1), (0, 0), math.pi)]], solid=True)
 TORUS = Revolved(circle((2.0, 0.0), 0.5))
 BOX = Extruded(rectangle((-1, -2), (1, 2)), 0.5)
 DISC = Revolved(outline([[line((0, 0), (1, 0))]], solid=False))
+APERTURE = Extruded(rectangle((-2, -2), (2, 2)).joined(circle((0.0, 0.0), 0.5)), 0.1)
+ROUND = Extruded(circle((0.0, 0.0), 1.0), 0.5)
 HOLED = Extruded(rectangle((-2, -2), (2, 2)).joined(circle((0.3, 0.2), 0.5)), 0.1)
 
 

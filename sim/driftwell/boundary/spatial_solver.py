@@ -30,18 +30,20 @@ from driftwell.geometry.winding import winding
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-COARSEST, FINER = 6.0, 1.5
+COARSEST, FINER = 4.0, 1.5
 """Edges along a body's mean extent at first, and by what factor they become more."""
-MOST_PANELS = 60_000
+MOST_PANELS = 100_000
 GRADE = 3.0
 """Power of the spacing of points towards edges, where it was found to serve best (boundary-3d)."""
 _TURN = 2.5
 """Largest turn of a curved surface from edge to edge, rad, times the edges of an extent."""
-_ROUNDS = 12
+_GROWN = 1.4
+"""Least growth of the number of panels from one solution to the next."""
+_ROUNDS = 16
 _PLACES, _FEWEST_PLACES = 512, 32
 _AROUND, _BESIDE = 1.2, 0.5
 """Box of the places: parts of the electrodes' own along each axis, and of its longest side."""
-_CLEAR = 0.6
+_CLEAR = 1.0
 """Distance of the places from panels' middles, in longest sides."""
 
 
@@ -109,27 +111,35 @@ def solve_spatial(
     accuracy : largest rms difference wanted between two solutions of growing fineness, of
         potentials, and of fields relative to the rms of all electrodes' fields, over `places`
     enclosure : bodies around all, at 0 V; their edges, which open inwards, are not graded
-    places : (n, 3), m, where the field is wanted; left out: spread over the box about `bodies`
+    places : (n, 3), m, where the field is wanted; left out: spread over the box about `bodies`.
+        Those inside bodies, or within a panel's size of one, are passed over
     most_panels : where refinement ends whatever the difference; the solution's error tells
 
     Raises DriftwellError where bodies touch or cannot be cut into triangles.
     """
-    asked = None if places is None else np.asarray(places, dtype=np.float64)
+    asked: Floats | None = None
     before: SpatialSolution | None = None
     fineness = COARSEST
     for _ in range(_ROUNDS):
         surfaces = cut(bodies, enclosure, fineness)
+        fineness *= FINER
+        if before is not None and len(surfaces.corners) < _GROWN * len(before.corners):
+            continue  # even numbers of edges may stay the same: nothing to compare
         if before is not None and len(surfaces.corners) > most_panels:
             break
         found = _solved(surfaces, threads, DENSE).solution
         if asked is None:
-            asked = _spread_places(surfaces)
+            wanted = (
+                _spread_places(surfaces)
+                if places is None or not len(places)
+                else np.asarray(places, dtype=np.float64)
+            )
+            asked = _outside(surfaces, wanted)
         if before is not None:
-            found = replace(found, error=difference(before, found, asked))
+            found = replace(found, error=difference(before, found, _clear(surfaces, asked)))
             if found.error <= accuracy:
                 return found
         before = found
-        fineness *= FINER
     if before is None or not math.isfinite(before.error):
         raise DriftwellError(
             f"the electrodes take more than {most_panels} triangles; needs fewer or simpler "
@@ -223,19 +233,29 @@ def _extent(solid: Solid) -> float:
 
 
 def _spread_places(surfaces: Surfaces) -> Floats:
-    """Points spread evenly about all electrodes, (n, 3), m, outside bodies and not next to them."""
-    own = surfaces.electrode < surfaces.electrodes
-    vertices = surfaces.corners[own].reshape(-1, 3)
+    """Points spread evenly about all electrodes, (n, 3), m."""
+    vertices = surfaces.corners[surfaces.electrode < surfaces.electrodes].reshape(-1, 3)
     low, high = vertices.min(axis=0), vertices.max(axis=0)
     reach = _AROUND * (high - low) + _BESIDE * np.max(high - low)
-    points = 0.5 * (low + high) + (qmc.Sobol(3, scramble=False).random(_PLACES) - 0.5) * reach
-    rows = panel_rows(surfaces.corners)
-    tree = bounds_of(np.ascontiguousarray(rows[:, 23:26]), _CLEAR * rows[:, 22])
-    near = np.zeros(_PLACES, dtype=np.int64)
-    count_near(points, np.zeros(_PLACES), tree, near)
+    points = qmc.Sobol(3, scramble=False).random(_PLACES)
+    return np.asarray(0.5 * (low + high) + (points - 0.5) * reach)
+
+
+def _outside(surfaces: Surfaces, points: Floats) -> Floats:
+    """Those of the points outside bodies and inside the enclosure; all if there are none."""
+    own = surfaces.electrode < surfaces.electrodes
     outside = winding(surfaces.corners[own & surfaces.closed], points) < 0.5
     around = surfaces.closed & ~own
     if np.any(around):
         outside &= np.abs(winding(surfaces.corners[around], points)) > 0.5
-    clear = outside & (near == 0)
-    return np.ascontiguousarray(points[clear if clear.sum() >= _FEWEST_PLACES else outside])
+    return np.ascontiguousarray(points[outside] if np.any(outside) else points)
+
+
+def _clear(surfaces: Surfaces, points: Floats) -> Floats:
+    """Those of the points that are not next to panels; all where they would be few."""
+    rows = panel_rows(surfaces.corners)
+    tree = bounds_of(np.ascontiguousarray(rows[:, 23:26]), _CLEAR * rows[:, 22])
+    near = np.zeros(len(points), dtype=np.int64)
+    count_near(points, np.zeros(len(points)), tree, near)
+    clear = near == 0
+    return np.ascontiguousarray(points[clear] if clear.sum() >= _FEWEST_PLACES else points)

@@ -1,9 +1,8 @@
 """Triangles of a plane area with holes.
 
 A rectangle becomes a grid. Any other area gets two thin layers of quads along its edges, where the
-charge crowds, and Delaunay's triangles inside (scipy), over points whose distances grow inwards. An
-edge is one of Delaunay's where no other point lies in the circle about it, so points that come too
-close are left out, and edges that come too close to others are halved.
+charge crowds, and Delaunay's triangles inside (delaunay.py). Edges that come too close to others
+are halved before.
 """
 
 from __future__ import annotations
@@ -12,22 +11,20 @@ from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.spatial import Delaunay, KDTree, QhullError
+from scipy.spatial import KDTree
 
+from driftwell.geometry.delaunay import Border, filled_within
 from driftwell.geometry.outline import Outline
 from driftwell.geometry.patches import grid_triangles
-from driftwell.geometry.stations import Chain, Fineness, within
+from driftwell.geometry.stations import Chain, Fineness
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 _LAYERS = (0.03, 0.12, 0.3)
 """Depths of the layers' bounds, in lengths of the edges beside."""
-_SLOPE = 0.35
-"""Growth of the distance between points with the depth."""
 _PASSES = 12
 """Rounds of halving edges; sharp corners would go on for ever."""
-_SMOOTHINGS = 3
 
 
 def cap(outline: Outline, loops: list[Chain], how: Fineness) -> tuple[list[Chain], Floats, Ints]:
@@ -121,12 +118,15 @@ def _halved(outline: Outline, loop: Chain, which: NDArray[np.bool_]) -> Chain:
 def _filled(
     loops: list[Chain], layers: tuple[float, ...], size: float
 ) -> tuple[Floats, Ints] | None:
-    """Layers of quads along the loops and triangles within; None where edges are lost."""
+    """Layers of quads along the loops and triangles within; None where edges are lost.
+
+    Points on the innermost layer appear twice.
+    """
     points: list[Floats] = []
     triangles: list[Ints] = []
-    inner: list[Floats] = []
-    inner_index: list[Ints] = []
-    offset = 0
+    rims: list[Floats] = []
+    edges: list[Ints] = []
+    offset = rim_offset = 0
     for loop in loops:
         rings = [loop.points, *(_offset(loop, depth) for depth in layers)]
         count = len(loop.points)
@@ -134,17 +134,16 @@ def _filled(
         quads = grid_triangles(len(rings), count, True)
         # rows go inwards: seen from above they turn left where the inside is to the left
         triangles.append((quads if not loop.inside_left else quads[:, ::-1]) + offset)
-        inner.append(rings[-1])
-        inner_index.append(offset + (len(rings) - 1) * count + np.arange(count))
+        rims.append(rings[-1])
+        own = np.arange(count)
+        edges.append(rim_offset + np.stack([own, np.roll(own, -1)], axis=1))
         offset += len(rings) * count
-    found = _delaunay(inner, size)
+        rim_offset += count
+    found = filled_within(Border(np.concatenate(rims), np.concatenate(edges)), size)
     if found is None:
         return None
-    inside, within_them = found
-    rim = np.concatenate(inner_index)
-    index = np.concatenate([rim, offset + np.arange(len(inside))])
-    points.append(inside)
-    triangles.append(index[within_them])
+    points.append(found[0])
+    triangles.append(found[1] + offset)
     return np.concatenate(points), np.concatenate(triangles)
 
 
@@ -164,99 +163,3 @@ def _offset(loop: Chain, depth: float) -> Floats:
 
 def _left(along: Floats) -> Floats:
     return np.stack([-along[:, 1], along[:, 0]], axis=1)
-
-
-def _delaunay(loops: list[Floats], size: float) -> tuple[Floats, Ints] | None:
-    """Points inside the loops, and triangles over the loops' points and these."""
-    starts = np.concatenate(loops)
-    ends = np.concatenate([np.roll(loop, -1, axis=0) for loop in loops])
-    inside = _spread(starts, ends, size)
-    count = len(starts)
-    for left in range(_SMOOTHINGS, -1, -1):
-        try:
-            every = Delaunay(np.concatenate([starts, inside])).simplices.astype(np.int64)
-        except QhullError:
-            return None
-        points = np.concatenate([starts, inside])
-        middle = points[every].mean(axis=1)
-        kept = every[within(middle, starts, ends)]
-        if left == 0 or len(inside) == 0:
-            break
-        inside = _smoothed(points, kept, count)
-        inside = inside[_clear(inside, starts, ends)]
-    corners = points[kept]
-    u, v = corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]
-    turn = u[:, 0] * v[:, 1] - u[:, 1] * v[:, 0]
-    kept = np.where((turn > 0.0)[:, None], kept, kept[:, ::-1])
-    return (inside, kept) if _has_edges(kept, loops) else None
-
-
-def _has_edges(triangles: Ints, loops: list[Floats]) -> bool:
-    """Whether the border of the triangles is just the loops."""
-    edges = np.sort(
-        np.concatenate([triangles[:, [0, 1]], triangles[:, [1, 2]], triangles[:, [2, 0]]])
-    )
-    each, times = np.unique(edges, axis=0, return_counts=True)
-    border = each[times == 1]
-    wanted, offset = [], 0
-    for loop in loops:
-        own = offset + np.arange(len(loop))
-        wanted.append(np.stack([own, np.roll(own, -1)], axis=1))
-        offset += len(loop)
-    expected = np.unique(np.sort(np.concatenate(wanted)), axis=0)
-    return bool(np.max(times) <= 2) and np.array_equal(border, expected)
-
-
-def _spread(starts: Floats, ends: Floats, size: float) -> Floats:
-    """Points inside whose distances are those of the edges nearby and grow inwards to `size`."""
-    middle, length = 0.5 * (starts + ends), np.linalg.norm(ends - starts, axis=1)
-    tree = KDTree(middle)
-    low, high = starts.min(axis=0), starts.max(axis=0)
-    cells = np.maximum(np.ceil((high - low) / size), 1.0).astype(int)
-    x, y = (
-        low[axis] + (np.arange(cells[axis]) + 0.5) * (high[axis] - low[axis]) / cells[axis]
-        for axis in range(2)
-    )
-    centres = np.stack([each.ravel() for each in np.meshgrid(x, y, indexing="ij")], axis=1)
-    step = np.array([(high[axis] - low[axis]) / cells[axis] for axis in range(2)])
-    found = []
-    while len(centres):
-        distance, nearest = tree.query(centres)
-        wanted = np.minimum(size, length[nearest] + _SLOPE * distance)
-        # a coarse cell's middle may miss a narrow place: asked with the cell's reach taken off
-        narrow = length[nearest] + _SLOPE * np.maximum(distance - 0.7 * float(np.max(step)), 0.0)
-        large = (np.max(step) > 1.3 * wanted) | (np.max(step) > 2.0 * narrow)
-        found.append(centres[~large])
-        quarter = 0.25 * step
-        offsets = np.array([[-1.0, -1.0], [1.0, -1.0], [-1.0, 1.0], [1.0, 1.0]]) * quarter
-        centres = (centres[large][:, None] + offsets).reshape(-1, 2)
-        step = 0.5 * step
-        if np.max(step) < 0.05 * np.min(length):
-            break
-    points = np.concatenate(found)
-    points = points[within(points, starts, ends)]
-    return points[_clear(points, starts, ends)]
-
-
-def _clear(points: Floats, starts: Floats, ends: Floats) -> NDArray[np.bool_]:
-    """Whether points keep clear of the circles about all edges."""
-    if not len(points):
-        return np.zeros(0, dtype=bool)
-    middle, length = 0.5 * (starts + ends), np.linalg.norm(ends - starts, axis=1)
-    tree = KDTree(points)
-    clear = np.ones(len(points), dtype=bool)
-    for which in tree.query_ball_point(middle, 0.6 * length):
-        clear[which] = False
-    return clear & within(points, starts, ends)
-
-
-def _smoothed(points: Floats, triangles: Ints, fixed: int) -> Floats:
-    """The points behind the first `fixed`, each moved to the middle of its neighbours."""
-    total, times = np.zeros_like(points), np.zeros(len(points))
-    for a, b in ((0, 1), (1, 2), (2, 0), (1, 0), (2, 1), (0, 2)):
-        np.add.at(total, triangles[:, a], points[triangles[:, b]])
-        np.add.at(times, triangles[:, a], 1.0)
-    moved = points.copy()
-    has = times > 0
-    moved[has] = total[has] / times[has, None]
-    return moved[fixed:]

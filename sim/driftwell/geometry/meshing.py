@@ -34,7 +34,7 @@ def mesh_of(
     grade : power of the spacing of points towards sharp edges; 1 for even spacing
     fair : whether facets of curved surfaces lie on them on average; else their corners do
 
-    A body's own mirror planes are the mesh's, save where an area with holes is filled. Raises
+    A body's own mirror planes are the mesh's. Raises
     ValueError where a body has no end, or an area cannot be filled.
     """
     if isinstance(solid, Mesh):
