@@ -83,7 +83,11 @@ def test_a_second_asking_is_answered_from_what_is_kept(
     acting: ActingField, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Other voltages, names and places need no new solution; another shape does."""
-    monkeypatch.setattr(module, "solve_drawn", pytest.fail)
+
+    def solves(*given: object) -> None:
+        raise ArithmeticError("solved anew")
+
+    monkeypatch.setattr(module, "solve_drawn", solves)
 
     def with_right(shape: dict[str, Any]) -> ActingField | None:
         electrode = [
@@ -100,7 +104,7 @@ def test_a_second_asking_is_answered_from_what_is_kept(
         acting.solved.map.coefficients, found.solved.map.coefficients, strict=True
     )
     assert acting.solved.digest == found.solved.digest
-    with pytest.raises(pytest.fail.Exception):
+    with pytest.raises(ArithmeticError, match="solved anew"):
         with_right({**RIGHT, "high": ["6 mm", "21 mm"]})
 
 
@@ -189,7 +193,7 @@ def test_charges_born_outside_the_region_are_refused_with_what_to_do(tmp_path: P
 def test_a_run_closes_its_account_and_its_answers_carry_the_field_error(ran: Run) -> None:
     """With RF on one tube the work of the drive is a part of it."""
     ledger = ran.ledger
-    assert np.abs(ledger["energy_residual"]).max() < 1e-5
+    assert 1e-9 < np.abs(ledger["energy_residual"]).max() < 1e-4
     assert np.abs(ledger["work_drive"]).max() > 0.0
     assert np.abs(ledger["momentum_residual"]).max() < 1e-12
     assert 0.0 < ran.header.field_error < 1e-3

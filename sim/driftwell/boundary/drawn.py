@@ -106,15 +106,19 @@ class DrawnSolution:
 
     @property
     def panels(self) -> Panels:
-        """One for each node."""
+        """One for each node, in their order along the outlines of each electrode."""
         points, rate = self.elements.places(_T)
         width = 0.5 * (self.elements.spans[:, 4:5] - self.elements.spans[:, 3:4])
         around = 2.0 * math.pi * points[..., 0] * self.size if self.axisymmetric else 1.0
+        electrode = np.repeat(self.elements.electrode, ORDER)
+        chain = np.repeat(self.elements.chain[:, 0], ORDER)
+        order = np.lexsort((self.elements.along(_T).ravel(), chain, electrode))
+        density = self.density * (width / rate).ravel() * (ELECTRIC_CONSTANT / self.size)
         return Panels(
-            points.reshape(-1, 2) * self.size,
-            (rate * _W * around).ravel() * self.size,
-            np.repeat(self.elements.electrode, ORDER),
-            self.density * (width / rate).ravel() * (ELECTRIC_CONSTANT / self.size),
+            points.reshape(-1, 2)[order] * self.size,
+            (rate * _W * around).ravel()[order] * self.size,
+            electrode[order],
+            density[:, order],
         )
 
     def potential(self, points: Floats) -> Floats:

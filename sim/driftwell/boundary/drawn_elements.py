@@ -93,12 +93,20 @@ class Elements:
         spans[:, 5:7], spans[:, 7] = middle, radius
         return replace(self, spans=spans)
 
+    def along(self, t: Floats) -> Floats:
+        """Positions (k, n) on their chains at the parameters t (n,) in [-1, 1]: equation (1)."""
+        return np.asarray(
+            self.spans[:, 0:1] + self.spans[:, 1:2] * self._u(t) ** self.spans[:, 2:3]
+        )
+
+    def _u(self, t: Floats) -> Floats:
+        return 0.5 * (self.spans[:, 3:4] * (1.0 - t) + self.spans[:, 4:5] * (1.0 + t))
+
     def places(self, t: Floats) -> tuple[Floats, Floats]:
         """Points (k, n, 2) at the parameters t (n,) in [-1, 1], and ds/dt (k, n)."""
-        u = 0.5 * (self.spans[:, 3:4] * (1.0 - t) + self.spans[:, 4:5] * (1.0 + t))
-        m, reach = self.spans[:, 2:3], self.spans[:, 1:2]
-        s = self.spans[:, 0:1] + reach * u**m
-        rate = np.abs(reach) * m * u ** (m - 1.0)
+        s = self.along(t)
+        m = self.spans[:, 2:3]
+        rate = np.abs(self.spans[:, 1:2]) * m * self._u(t) ** (m - 1.0)
         rate *= 0.5 * (self.spans[:, 4:5] - self.spans[:, 3:4])
         out = np.empty((*s.shape, 2))
         places_along(s, self.chain, self.arcs, out)

@@ -68,7 +68,8 @@ class Electrodes(Form):
     )
     centre: Point = key("place the electrodes' own coordinates count from", default=(0.0, 0.0, 0.0))
     field_accuracy: Annotated[Real, Bound(least=MOST_ACCURATE, most=LEAST_ACCURATE)] = key(
-        "largest error of the field wanted, as part of the field's rms over the region",
+        "rms error of the field wanted, as part of the field's rms over the region, but right "
+        "beside electrodes, whose edges no map follows; the largest error is told",
         default=1e-4,
     )
     enclosure: Enclosure | None = key(

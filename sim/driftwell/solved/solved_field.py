@@ -131,6 +131,7 @@ def _solved(
         geometry=geometry,
         mirrors=_even(solution.mirrors, box, geometry),
         depth=depth,
+        judged="rms",
     )
     return SolvedField(names, geometry, solution, mapped)
 
