@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 
 from driftwell.electrodes.bodies import own_bodies
 from driftwell.electrodes.form import Electrodes
-from driftwell.fields.form import PackedField
+from driftwell.fields.form import FieldRegion, PackedField
 from driftwell.fields.rates import linear_rates
 from driftwell.forms.body import Body
 from driftwell.forms.waveform_table import waveform_table
@@ -26,12 +26,10 @@ from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.geometry.distance import distances, plane_distances
 from driftwell.kernels.waveform import waveform
 from driftwell.scenario.model import Scenario
+from driftwell.solved.edges import Edges
 from driftwell.solved.solved_field import SolvedField, solved_field
 from driftwell.solved.store import Told
 from driftwell.solved.waves import Course, courses
-from driftwell.walls.cylinder import Cylinder
-from driftwell.walls.form import WallForm
-from driftwell.walls.plane import Plane
 
 Floats = NDArray[np.float64]
 
@@ -89,45 +87,12 @@ class ActingField:
         """For each course, times in (0, duration) where it or its slope jumps, s."""
         return [waveform_breaks(course.waveform, duration) for course in self.courses]
 
-    def edges(self) -> list[WallForm]:
-        """Absorbing walls where the map ends."""
-        region = self.solved.map.region()
-        if self.solved.geometry == "axisymmetric":
-            radius = region[0][1]
-            tube: WallForm = Cylinder.model_construct(
-                name="edge of the field, r", kind="cylinder", radius=radius, centre=self.centre
-            )
-            return [tube, *self._faces({"z": region[1]})]
-        return self._faces(dict(zip("xyz", region, strict=False)))
-
-    def _faces(self, ends: dict[str, tuple[float, float]]) -> list[WallForm]:
-        """Planes across the named axes."""
-        made: list[WallForm] = []
-        for axis, pair in ends.items():
-            for word, end in zip(("low", "high"), pair, strict=True):
-                x, y, z = (float(name == axis) for name in "xyz")
-                at = np.array(self.centre) + end * np.array([x, y, z])
-                made.append(
-                    Plane.model_construct(
-                        name=f"edge of the field, {word} {axis}",
-                        kind="plane",
-                        at=(float(at[0]), float(at[1]), float(at[2])),
-                        normal=(x, y, z),
-                    )
-                )
-        return made
-
-    def outside(self, position: Floats) -> NDArray[np.bool_]:
-        """Which of the places (3, n) lie outside the map."""
-        dx, dy, dz = position - np.array(self.centre)[:, None]
-        if self.solved.geometry == "axisymmetric":
-            coordinates = [np.hypot(dx, dy), dz]
-        else:
-            coordinates = [dx, dy, dz]
-        out = np.zeros(position.shape[1], dtype=np.bool_)
-        for x, (low, high) in zip(coordinates, self.solved.map.region(), strict=False):
-            out |= (x < low) | (x > high)
-        return out
+    @property
+    def edges(self) -> Edges:
+        """Where the map ends."""
+        region = FieldRegion(self.solved.geometry, self.solved.map.region())
+        remedy = "Give [electrodes] a larger `region`, or move the cloud"
+        return Edges("the electrodes' field", region, self.centre, remedy)
 
     def rates(self, body: Body, speed: float) -> dict[str, float]:
         """Angular frequencies, rad/s, a charge moves or is driven with in the field.

@@ -20,7 +20,6 @@ from driftwell.electrodes.bodies import names_of, own_bodies
 from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.maps.build import build_map
 from driftwell.fields.maps.potential_map import PotentialMap
-from driftwell.forms import spelled
 from driftwell.geometry.body_table import HIGH, LOW, BodyTable, body_table
 from driftwell.geometry.distance import distances, plane_distances
 from driftwell.geometry.outline import Outline
@@ -63,16 +62,6 @@ class SolvedField:
     def digest(self) -> str:
         """Of the map's numbers: equal where a run goes on in the very same field."""
         return hashlib.sha256(self.map.coefficients.tobytes()).hexdigest()[:16]
-
-    def where(self) -> str:
-        """The region of the map in words, in the electrodes' own coordinates."""
-        names = {"axisymmetric": "rz", "planar": "xy", "spatial": "xyz"}[self.geometry]
-        return ", ".join(
-            f"r up to {spelled(high, 'm', 4)}"
-            if name == "r"
-            else f"{name} from {spelled(low, 'm', 4)} to {spelled(high, 'm', 4)}"
-            for name, (low, high) in zip(names, self.map.region(), strict=True)
-        )
 
 
 def solved_field(

@@ -67,6 +67,6 @@ def _trust(acting: ActingField, columns: int) -> list[str]:
         f"boundary: {len(solution.panels.size)} surface charges, potentials within "
         f"{solution.error:.1e} of the voltage",
         f"map: {nodes} nodes; {mapped.reached.words()}",
-        f"region: {field.where()}",
+        f"region: {acting.edges.words()}",
     ]
     return [line for text in texts for line in paragraph(text, columns, "", "  ")]

@@ -1,0 +1,5 @@
+"""A scenario's parts put together, ready to be moved through time."""
+
+from driftwell.assembly.parts import Assembly, assembled
+
+__all__ = ["Assembly", "assembled"]

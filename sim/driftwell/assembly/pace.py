@@ -1,0 +1,113 @@
+"""The step of a run: how fast charges move in its fields and among each other."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+
+from driftwell.answers.evidence import TraceRequest
+from driftwell.errors import ScenarioError
+from driftwell.fields.form import FieldForm
+from driftwell.forms import spelled
+from driftwell.forms.body import Body
+from driftwell.particles.state import Particles
+from driftwell.record.form import DEFAULT_RECORDS
+from driftwell.scenario.cross_checks import MOST_STEPS
+from driftwell.scenario.model import Scenario
+from driftwell.solved.acting import ActingField
+from driftwell.stepping.schedule import (
+    MOST_MARKS,
+)
+from driftwell.stepping.step_choice import (
+    Rate,
+    StepChoice,
+    chosen_step,
+    closest_pair_rates,
+    plasma_rates,
+)
+
+SAMPLES_PER_PERIOD = 20.0
+
+
+def chosen_pace(
+    scenario: Scenario,
+    bodies: dict[str, Body],
+    names: Sequence[str],
+    particles: Particles,
+    requests: Sequence[TraceRequest],
+    acting: ActingField | None,
+) -> tuple[StepChoice, float]:
+    """The step, and the time between samples of the traces."""
+    stepping = scenario.stepping
+    rates = [
+        Rate(f'{name} of field "{field.name}" on {species}', value)
+        for field in scenario.field
+        for species in names
+        for name, value in _rates_of(field, bodies[species], bodies).items()
+    ]
+    if acting is not None:
+        rates += _rates_in(acting, bodies, names, particles)
+    fastest = max((rate.rate for rate in rates), default=0.0)
+    every = min((request.every for request in requests if request.every), default=math.inf)
+    if any(request.every is None for request in requests):
+        period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
+        every = min(every, period / SAMPLES_PER_PERIOD)
+    if stepping.step != "auto":
+        choice = StepChoice(float(stepping.step), "the scenario says so")
+    else:
+        if scenario.coulomb.method != "off":
+            rates += plasma_rates(particles)
+            rates += closest_pair_rates(particles, scenario.coulomb.softening)
+        mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
+        choice = chosen_step(rates, stepping.steps_per_period, scenario.duration, mark)
+    _refuse_too_many(scenario.duration, choice, every)
+    return choice, every
+
+
+def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str, float]:
+    """How fast a body moves in a field, rad/s, by what it does."""
+    try:
+        field.packed(bodies)
+        return dict(field.rates(body, bodies))
+    except ArithmeticError as fault:
+        raise ScenarioError(
+            f'[[field]] "{field.name}": its numbers, or the motion of {body.name} in it, are too '
+            "large or too small to compute with; check its strength and its sizes."
+        ) from fault
+
+
+def _rates_in(
+    acting: ActingField, bodies: Mapping[str, Body], names: Sequence[str], particles: Particles
+) -> list[Rate]:
+    """How fast charges move in the electrodes' field."""
+    speed = np.linalg.norm(particles.velocity, axis=0)
+    return [
+        Rate(f"{name} of {species} in the electrodes' field", value)
+        for number, species in enumerate(names)
+        for name, value in acting.rates(
+            bodies[species], float(speed[particles.species == number].max(initial=0.0))
+        ).items()
+    ]
+
+
+def _refuse_too_many(duration: float, choice: StepChoice, every: float) -> None:
+    """Refuse more samples or steps than a run could ever take."""
+    whole = spelled(duration, "s")
+    if duration > every * MOST_MARKS:
+        raise ScenarioError(
+            f"duration = {whole}: the questions about oscillations would take "
+            f"{_parts(duration, every)} samples, one every {spelled(every, 's', 4)}; needs at most "
+            f"{MOST_MARKS}. Shorten the duration, or give these questions a longer `every`."
+        )
+    if duration > choice.step * MOST_STEPS:
+        raise ScenarioError(
+            f"duration = {whole}: would be {_parts(duration, choice.step)} steps of "
+            f"{spelled(choice.step, 's', 4)} ({choice.because}); needs at most "
+            f"{MOST_STEPS:g}. Shorten the duration, or give [stepping] a longer step."
+        )
+
+
+def _parts(whole: float, part: float) -> str:
+    return f"{whole / part:.3g}" if part > 0.0 and math.isfinite(whole / part) else "countless"

@@ -1,0 +1,264 @@
+"""A scenario's parts put together: charges, fields, surfaces, the step, the schedule of the run."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from functools import partial
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.assembly.births import (
+    check_births,
+    check_sides,
+    check_within,
+    edges_in,
+    loaded_particles,
+)
+from driftwell.assembly.marks import all_marks, all_traces, traced
+from driftwell.assembly.pace import chosen_pace
+from driftwell.coulomb.summation import Summation
+from driftwell.fields.form import Role
+from driftwell.fields.table import field_tables
+from driftwell.forms.body import Body
+from driftwell.geometry.distance import distances
+from driftwell.images.electrodes import ElectrodeImages, electrode_images
+from driftwell.images.form import ClosedForm, followed
+from driftwell.images.image_sum import Images
+from driftwell.images.importance import importance, remark
+from driftwell.particles.species import bodies as known_bodies
+from driftwell.particles.state import Particles
+from driftwell.record.header import Header, trace_name
+from driftwell.record.rows import tracked_ids
+from driftwell.scenario.conductors import Conductors
+from driftwell.scenario.model import Scenario
+from driftwell.scenario.read import LoadedScenario
+from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
+from driftwell.solved.acting import ActingField, acting_field
+from driftwell.solved.edges import Edges
+from driftwell.stepping.loop import TimeLoop
+from driftwell.stepping.motion import Fields
+from driftwell.stepping.schedule import (
+    RECORD,
+    SNAPSHOT,
+    TRACE,
+    Schedule,
+)
+from driftwell.stepping.step_choice import (
+    StepChoice,
+)
+from driftwell.walls.form import WallForm
+from driftwell.walls.table import surface_table
+
+
+@dataclass(frozen=True, slots=True)
+class Assembly:
+    """What a run is made of, at time zero.
+
+    species : names in the order of ``particles.species``
+    clouds : facts in the order of ``particles.cloud``
+    requests : the coordinates to be traced, each once
+    extent : how much of everything it is
+    conductors : the electrodes as surfaces
+    edges : where fields end that are known in a region only
+    acting : the electrodes' solved field; None without electrodes
+    images : the conductors that answer to the charges; None where none does
+    """
+
+    scenario: Scenario
+    bodies: dict[str, Body]
+    species: tuple[str, ...]
+    particles: Particles
+    clouds: tuple[CloudFacts, ...]
+    requests: tuple[TraceRequest, ...]
+    choice: StepChoice
+    schedule: Schedule
+    extent: Extent
+    conductors: Conductors
+    edges: tuple[Edges, ...] = ()
+    acting: ActingField | None = None
+    images: Images | None = None
+
+    @property
+    def walls(self) -> tuple[WallForm, ...]:
+        """The scenario's walls, then the edges of fields."""
+        return (*self.scenario.wall, *(wall for each in self.edges for wall in each.walls()))
+
+    @property
+    def tracked(self) -> NDArray[np.int64]:
+        """Ids of the charges whose trajectories are kept."""
+        return tracked_ids(len(self.particles), self.scenario.record.tracks)
+
+    def header(
+        self, loaded: LoadedScenario, summation: Summation, threads: int, created: str
+    ) -> Header:
+        """What a run of it is; created : the time of day it is begun, as text."""
+        scenario = self.scenario
+        return Header(
+            scenario=loaded.text,
+            title=scenario.title,
+            seed=scenario.seed,
+            duration=scenario.duration,
+            step=self.choice.step,
+            scheme=scenario.stepping.scheme,
+            softening=scenario.coulomb.softening,
+            coulomb_method=summation.method,
+            coulomb_because=summation.because,
+            coulomb_accuracy=scenario.coulomb.accuracy,
+            field_error=0.0 if self.acting is None else self.acting.solved.error,
+            field_digest="" if self.acting is None else self.acting.solved.digest,
+            images="" if scenario.images is None else scenario.images.words(),
+            clouds=self.clouds,
+            species=self.species,
+            walls=(*(wall.name for wall in self.walls), *self.conductors.names),
+            detectors=tuple(detector.name for detector in scenario.detector),
+            tracked=tuple(int(i) for i in self.tracked),
+            traces=tuple(trace_name(request) for request in self.requests),
+            settings=loaded.settings,
+            digest=loaded.digest,
+            command=loaded.command,
+            threads=threads,
+            created=created,
+        )
+
+    def time_loop(
+        self,
+        threads: int,
+        particles: Particles | None = None,
+        state: Mapping[str, NDArray[Any]] | None = None,
+    ) -> TimeLoop:
+        """The loop that moves the charges; it works on `particles` themselves.
+
+        particles, state : where a run is taken up, those it was left with
+        """
+        packed = [] if self.acting is None else self.acting.packed()
+        tables = field_tables(self.scenario.field, self.bodies, packed)
+        return TimeLoop(
+            self.particles if particles is None else particles,
+            Fields(
+                electric=tables[Role.ELECTRIC],
+                uniform=tables[Role.UNIFORM_MAGNETIC],
+                magnetic=tables[Role.MAGNETIC],
+            ),
+            surface_table(self.walls, self.scenario.detector),
+            self.scenario.coulomb,
+            self.scenario.stepping,
+            self.schedule,
+            [traced(request, self.clouds) for request in self.requests],
+            threads,
+            state,
+            self.images,
+            self.conductors.table,
+        )
+
+    def image_remark(self) -> str | None:
+        """What is to be said of images that are left out, or taken without need; None: nothing."""
+        form = self.scenario.images
+        if isinstance(form, ClosedForm):
+            distance = partial(_distance_from, form)
+        elif self.conductors.names:
+            distance = partial(_distance_between, self.conductors)
+        else:
+            return None
+        estimates = []
+        for cloud in self.clouds:
+            own = self.particles.kept(self.particles.cloud == cloud.index)
+            estimates.append(
+                importance(
+                    cloud.name,
+                    own.position,
+                    own.charge * own.weight,
+                    own.mass * own.weight,
+                    distance,
+                    self.scenario.duration,
+                )
+            )
+        return remark(estimates, form is not None)
+
+
+def assembled(
+    loaded: LoadedScenario, warn: Warn | None = None, told: Warn | None = None
+) -> Assembly:
+    """Put a scenario together; the field of its electrodes is solved where it is not kept.
+
+    warn : where given, it is told that the run would not fit in memory, and nothing is refused
+    told : where given, it is told how the electrodes' field comes about
+
+    Raises
+    ------
+    ScenarioError
+        The charges cannot be placed as the scenario says, or the run would not fit in memory.
+    """
+    scenario = loaded.scenario
+    bodies = known_bodies(scenario.species)
+    species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
+    charges = scenario.charges(loaded.folder)
+    warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
+    particles, clouds = loaded_particles(loaded, bodies, species)
+    conductors = Conductors.of(scenario, loaded.folder)
+    check_births(scenario, particles, conductors)
+    acting = acting_field(scenario, loaded.folder, told)
+    edges = tuple(edges_in(scenario, acting))
+    check_within(scenario, particles, edges)
+    check_sides(scenario, particles)
+    requests = all_traces(scenario)
+    choice, every = chosen_pace(scenario, bodies, species, particles, requests, acting)
+    samples = scenario.duration / every if requests else 0.0
+    extent = extent_of(scenario, charges, int(samples), len(requests))
+    bordering = sum(len(each.walls()) for each in edges)
+    extent = replace(extent, surfaces=extent.surfaces + bordering)
+    if not warned:
+        refuse_beyond_memory(extent, warn)
+    plan = all_marks(scenario, choice.step, bool(requests), every, acting)
+    return Assembly(
+        scenario,
+        bodies,
+        species,
+        particles,
+        tuple(clouds),
+        tuple(requests),
+        choice,
+        plan,
+        _counted(extent, plan),
+        conductors,
+        edges,
+        acting,
+        _images(scenario, conductors, particles, choice),
+    )
+
+
+def _counted(extent: Extent, plan: Schedule) -> Extent:
+    """The extent with the records, samples and snapshots that the schedule really has."""
+    records, samples, snapshots = (
+        int(np.count_nonzero(plan.flags & flag)) for flag in (RECORD, TRACE, SNAPSHOT)
+    )
+    return replace(extent, records=records, samples=samples, snapshots=snapshots)
+
+
+def _images(
+    scenario: Scenario, conductors: Conductors, particles: Particles, choice: StepChoice
+) -> Images | None:
+    """The conductors that answer to the charges."""
+    form = scenario.images
+    if isinstance(form, ElectrodeImages):
+        solids = [solid for own in conductors.bodies for solid in own]
+        return electrode_images(solids, form.panels, form.length)
+    if not isinstance(form, ClosedForm):
+        return None
+    kick = choice.step * scenario.stepping.coulomb_every
+    charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
+    away = form.distance(particles.position)
+    return form.images(followed(kick, charge, mass, particles.velocity, away))
+
+
+def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Distances of points (n, 3) from the one conductor, m."""
+    return form.distance(points.T)
+
+
+def _distance_between(conductors: Conductors, points: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Distances of points (n, 3) from the nearest electrode, m."""
+    return distances(conductors.table, points)[0]
