@@ -20,7 +20,7 @@ from driftwell.scenario.read import LoadedScenario, read_scenario
 from tests.running import carried_out, points, species, track
 from tests.scenario.good_scenarios import toml_file
 
-PLANE = {"kind": "plane", "point": ["0 m", "0 m", "-1 mm"], "normal": [0, 0, 3]}
+PLANE = {"kind": "plane", "at": ["0 m", "0 m", "-1 mm"], "normal": [0, 0, 3]}
 KINDS: dict[str, dict[str, Any]] = {
     "plane": PLANE,
     "sphere": {"kind": "sphere", "radius": "1 mm", "closest": "1 um"},

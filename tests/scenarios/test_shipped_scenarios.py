@@ -12,6 +12,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from scipy.constants import atomic_mass, elementary_charge, epsilon_0
+from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run, open_run
 from driftwell.run import run
@@ -31,14 +32,18 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.temperature along z, first half.over=["0 us", "50 us"]',
         'question.temperature along z, second half.over=["50 us", "100 us"]',
     ),
+    "diode-gap": ("cloud.pulse.count=50", "electrodes.field_accuracy=1e-3"),
+    "einzel-lens": ("cloud.bunch.count=100", "electrodes.field_accuracy=1e-3"),
     "electron-pulse": ("cloud.pulse.count=300",),
     "exploding-ball": ("cloud.ball.count=500", "cloud.ball.weight=2000"),
     "force-law": (),
+    "hyperbolic-trap": ("cloud.load.count=10", "electrodes.field_accuracy=1e-4"),
     "ion-string": (
         "duration=100 us",
         'question.across, x.over=["50 us", "100 us"]',
         'question.across, y.over=["50 us", "100 us"]',
     ),
+    "mirror-trap": ("cloud.bunch.count=10", "electrodes.field_accuracy=1e-4"),
     "penning-trap": (
         "coulomb.method=off",
         "cloud.others.count=4",
@@ -52,6 +57,12 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.size x, second half.over=["50 us", "100 us"]',
         'question.size z, second half.over=["50 us", "100 us"]',
         'question.temperature z, second half.over=["50 us", "100 us"]',
+    ),
+    "round-rods": ("cloud.load.count=10", "electrodes.field_accuracy=2e-2"),
+    "shaped-well": (
+        "cloud.packet.count=8",
+        "duration=100 us",
+        "electrodes.field_accuracy=1e-4",
     ),
 }
 """Settings that make each scenario short."""
@@ -205,3 +216,75 @@ def test_electrons_of_30_kev_arrive_when_relativity_says(runs: dict[str, Run]) -
     assert 0.1 / speed == pytest.approx(value(found, "arrival"), rel=1e-5, abs=0.0)
     # at least as long as they were set free: 30 um / sqrt(12)
     assert value(found, "pulse at the screen, rms") > 30e-6 / math.sqrt(12) / speed
+
+
+def test_electrodes_of_real_length_keep_the_axial_frequency_of_the_ideal_well(
+    runs: dict[str, Run],
+) -> None:
+    """R. D. Knight, Appl. Phys. Lett. 38 (1981) 221: omega^2 = k q / m; ends 24 mm away.
+
+    The voltage between spindle and barrel that makes k = 3e7 V/m^2 is (k/2)(Rm^2 ln(R2/R1) -
+    (R2^2 - R1^2)/2), 4079.8 V.
+    """
+    inner, outer, characteristic = 6e-3, 15e-3, 20e-3
+    ratio = characteristic**2 * math.log(outer / inner) - 0.5 * (outer**2 - inner**2)
+    curvature = 2 * 4079.8 / ratio
+    expected = math.sqrt(curvature * elementary_charge / (524 * atomic_mass)) / (2 * math.pi)
+    found = runs["shaped-well"]
+    assert expected == pytest.approx(
+        value(found, "axial frequency of the packet"), rel=2e-4, abs=0.0
+    )
+    assert 1.0 == value(found, "held")
+
+
+def test_a_hyperbolic_trap_of_real_electrodes_swings_nearly_as_mathieu_says(
+    runs: dict[str, Run],
+) -> None:
+    """W. Paul, Rev. Mod. Phys. 62 (1990) 531: q_z = 4 e V / (m r0^2 Omega^2), z twice as strong.
+
+    Truncation at 1.5 r0 takes a thousandth of the quadrupole; steps and ions move less.
+    """
+    drive = 2 * math.pi * 1e6
+    q = 4 * elementary_charge * 400 / (100 * atomic_mass * 1e-4 * drive**2)
+    found = runs["hyperbolic-trap"]
+    for axis, strength in (("z", q), ("x", q / 2)):
+        expected = mathieu_exponent(strength) * 1e6 / 2
+        assert expected == pytest.approx(
+            value(found, f"frequency of the cloud along {axis}"), rel=3e-3, abs=0.0
+        )
+
+
+def mathieu_exponent(q: float) -> float:
+    """beta of x'' = 2 q cos(2 s) x, from the trace of one period's matrix."""
+    ends = [
+        solve_ivp(
+            lambda s, y: (y[1], 2 * q * math.cos(2 * s) * y[0]),
+            (0.0, math.pi),
+            start,
+            rtol=1e-10,
+            atol=1e-12,
+        ).y[:, -1]
+        for start in ((1.0, 0.0), (0.0, 1.0))
+    ]
+    return math.acos(0.5 * (ends[0][0] + ends[1][1])) / math.pi
+
+
+def test_electrons_cross_the_gap_as_in_an_even_field(runs: dict[str, Run]) -> None:
+    """From rest in 0.4 MV/m over 10 mm, then 5 mm on; the hole in the anode weakens the field.
+
+    L. D. Landau and E. M. Lifshitz, The Classical Theory of Fields, sec. 20: gamma = 1 + e E x/mc^2,
+    t = (mc/eE) sqrt(gamma^2 - 1).
+    """
+    rest, light = 510998.95, 299792458.0
+    gamma = 1 + 0.4e6 * 9.98e-3 / rest
+    way = math.sqrt(gamma**2 - 1)
+    alone = rest / (0.4e6 * light) * way + 5e-3 * gamma / (light * way)
+    found = value(runs["diode-gap"], "arrival at the screen")
+    assert alone < found < 1.005 * alone
+    assert 1.0 == value(runs["diode-gap"], "through the hole")
+
+
+def test_the_lens_the_mirrors_and_the_rods_hold_their_ions(runs: dict[str, Run]) -> None:
+    assert 1.0 == value(runs["einzel-lens"], "through the lens")
+    assert 1.0 == value(runs["mirror-trap"], "held")
+    assert 1.0 == value(runs["round-rods"], "held")

@@ -153,7 +153,7 @@ def test_a_charge_that_leaves_the_region_is_lost_at_its_edge(tmp_path: Path) -> 
     found = open_run(run(loaded, tmp_path / "run", Unwatched()).folder)
     assert "all lost" == found.outcome.word
     (loss,) = found.losses()
-    assert "edge of the field, high z" == found.header.walls[loss["wall"]]
+    assert "edge of the electrodes' field, high z" == found.header.walls[loss["wall"]]
     assert 15e-3 == pytest.approx(loss["position"][2], rel=1e-12, abs=0.0)
     assert abs(found.ledger["energy_residual"][-1]) < 1e-6
 

@@ -17,19 +17,19 @@ class PlaneImages(MirrorForm):
     """An endless conducting plane at a fixed voltage; the charges are where its normal points."""
 
     kind: Literal["plane"]
-    point: Point = key("a point of the plane", example=["0 mm", "0 mm", "-2 mm"])
+    at: Point = key("a point of the plane", example=["0 mm", "0 mm", "-2 mm"])
     normal: Direction = key(
         "direction from the plane to the side of the charges; any length but zero",
         default=(0.0, 0.0, 1.0),
     )
 
     def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
-        return np.asarray((position.T - self.point) @ np.array(self.normal))
+        return np.asarray((position.T - self.at) @ np.array(self.normal))
 
     def images(self, followed: float) -> Images:
-        return plane_images(np.array(self.point), np.array(self.normal), self.length(followed))
+        return plane_images(np.array(self.at), np.array(self.normal), self.length(followed))
 
     def words(self) -> str:
-        place = ", ".join(f"{each * 1e3:.6g}" for each in self.point)
+        place = ", ".join(f"{each * 1e3:.6g}" for each in self.at)
         towards = ", ".join(f"{each:.6g}" for each in self.normal)
         return f"of a plane at ({place}) mm, charges towards ({towards})"

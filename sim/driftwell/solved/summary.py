@@ -55,7 +55,7 @@ def _electrodes(acting: ActingField, electrode: Sequence[Electrode]) -> list[str
         )
     widths = [max(len(row[k]) for row in rows) for k in range(len(rows[0]))]
     lines = ["  ".join(text.ljust(w) for text, w in zip(row, widths, strict=True)) for row in rows]
-    note = "the centre lies inside an electrode" if inside else "at the centre, for 1 V"
+    note = "the centre lies in an electrode" if inside else "at the centre, for 1 V"
     return [*(line.rstrip() for line in lines), f"(potential and field: {note})"]
 
 
