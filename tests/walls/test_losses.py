@@ -12,7 +12,7 @@ import pytest
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE, SPEED_OF_LIGHT
 from driftwell.errors import ScenarioError
 from driftwell.record.reader import Run
-from driftwell.stepping.events import MANY_LOST
+from driftwell.stepping.losses import MANY_LOST
 from tests.running import carried_out, points, species, vector
 
 MASS = 100.0 * ATOMIC_MASS

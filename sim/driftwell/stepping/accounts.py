@@ -73,3 +73,18 @@ def enter_vector(
     add_compensated(total, carry, k, x)
     add_compensated(total, carry, k + 1, y)
     add_compensated(total, carry, k + 2, z)
+
+
+@outer_kernel
+def enter_wall_moment(
+    x: float,
+    y: float,
+    z: float,
+    px: float,
+    py: float,
+    pz: float,
+    total: np.ndarray,
+    carry: np.ndarray,
+) -> None:
+    """Add x cross p, of momentum that a wall takes at a place, to its account."""
+    enter_vector(ANGULAR_WALLS, y * pz - z * py, z * px - x * pz, x * py - y * px, total, carry)

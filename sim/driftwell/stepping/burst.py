@@ -38,8 +38,9 @@ from driftwell.kernels.status import (
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
 from driftwell.stepping.drift import jump_magnets
-from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces, take_out
+from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
+from driftwell.stepping.losses import take_out
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,

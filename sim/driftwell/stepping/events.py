@@ -21,23 +21,17 @@ import math
 
 import numpy as np
 
-from driftwell.coulomb.direct import PairSum, potential_at
 from driftwell.geometry.body_table import BodyTable
-from driftwell.kernels import inner_kernel, outer_kernel
-from driftwell.kernels.pointers import CompiledFunction
-from driftwell.kernels.sums import add_compensated
+from driftwell.kernels import outer_kernel
 from driftwell.stepping.accounts import (
-    ANGULAR_WALLS,
-    CHARGE_WALLS,
-    COUNT_WALLS,
-    ENERGY_WALLS,
     MOMENTUM_WALLS,
     enter_vector,
+    enter_wall_moment,
 )
 from driftwell.stepping.blocks import BLOCK, CROSSED
 from driftwell.stepping.contact import first_body
 from driftwell.stepping.drift import helix
-from driftwell.stepping.forces import magnetic_at, take_images
+from driftwell.stepping.forces import magnetic_at
 from driftwell.stepping.motion import (
     CURSOR_EVENTS,
     CURSOR_OVERFLOW,
@@ -46,6 +40,7 @@ from driftwell.stepping.motion import (
     Fields,
     Plan,
     Work,
+    put,
 )
 from driftwell.stepping.path import End, end_of, first_end, last_end, place, point
 from driftwell.walls.form import ABSORB, PASS
@@ -53,8 +48,6 @@ from driftwell.walls.table import SurfaceTable, level, normal, stops
 
 UNTOUCHED, MOVED, LOST = 0, 1, 2
 """What a step's surfaces did, as bits: MOVED + LOST where both happened."""
-MANY_LOST = 1000
-"""From this many charges lost in one step on, two sums of the tree beat a direct one for each."""
 _BISECTIONS = 60
 _BOUNCES = 16
 
@@ -118,50 +111,6 @@ def meet_surfaces(
 
 
 @outer_kernel
-def take_out(
-    pair_sum: PairSum,
-    images: CompiledFunction,
-    plan: Plan,
-    surfaces: SurfaceTable,
-    charges: Charges,
-    work: Work,
-) -> None:
-    """Take the charges that are LEAVING out of all sums, and put them where they were lost.
-
-    What they carry is entered in the accounts; their energy in the fields is entered by the loop,
-    as the difference the renewed forces show.
-    """
-    if plan.images != 0:
-        energy = take_images(images, plan, charges, work)
-        add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
-    n = charges.alive.size
-    one_by_one = plan.coulomb != 0
-    if work.levels.shape[1] == n and plan.coulomb != 0:
-        leaving = 0
-        for i in range(n):
-            leaving += charges.alive[i] == LEAVING
-        if leaving >= MANY_LOST:
-            one_by_one = False
-            _enter_energy_of_many(pair_sum, plan, charges, work)
-    for i in range(n):
-        if charges.alive[i] == LEAVING:
-            if one_by_one:
-                energy = charges.charge[i] * potential_at(
-                    i, charges.position, charges.charge, plan.softening2, plan.constant
-                )
-                add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
-            _absorb(plan, charges, i, work)
-            x, y, z = work.old_position[0, i], work.old_position[1, i], work.old_position[2, i]
-            _put(charges, i, x, y, z)
-            for s in range(surfaces.kind.size):
-                there = level(surfaces.kind[s], surfaces.parameter[s], x, y, z)
-                work.side[s, i] = 1 if there > 0.0 else -1
-    if plan.images != 0:
-        energy = take_images(images, plan, charges, work)
-        add_compensated(work.total, work.carry, ENERGY_WALLS, -energy)
-
-
-@outer_kernel
 def _follow(
     plan: Plan,
     fields: Fields,
@@ -213,7 +162,7 @@ def _follow(
         _account_bounce(charges, i, -1.0, work)
         ratio = charges.charge_to_mass[0, i]
         dx, dy, dz = ratio * (x1 - x0), ratio * (y1 - y0), ratio * (z1 - z0)
-        _put(charges, i, 0.5 * (x0 + x1), 0.5 * (y0 + y1), 0.5 * (z0 + z1))
+        put(charges, i, 0.5 * (x0 + x1), 0.5 * (y0 + y1), 0.5 * (z0 + z1))
         bx, by, bz = magnetic_at(fields, charges, i, start + 0.5 * span, inside, work)
         rest = 0.5 * (1.0 - when)
         ax = rest * (ux1 - ux0 - (dy * bz - dz * by))  # (1), for half of what is left
@@ -223,7 +172,7 @@ def _follow(
         ux0, uy0, uz0 = uxc - along * nx, uyc - along * ny, uzc - along * nz
         start += when * span
         span *= 1.0 - when
-        _put(charges, i, xc, yc, zc)
+        put(charges, i, xc, yc, zc)
         bx, by, bz = magnetic_at(fields, charges, i, start + 0.5 * span, inside, work)
         strength = math.sqrt(bx * bx + by * by + bz * bz)
         if strength > 0.0:
@@ -233,7 +182,7 @@ def _follow(
         dx, dy, dz, wx, wy, wz = helix(vx, vy, vz, bx, by, bz, ratio * strength * way)
         x1, y1, z1 = xc + way * dx, yc + way * dy, zc + way * dz
         ux1, uy1, uz1 = vx + wx + ax, vy + wy + ay, vz + wz + az
-        _put(charges, i, x1, y1, z1)
+        put(charges, i, x1, y1, z1)
         charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i] = ux1, uy1, uz1
         _account_bounce(charges, i, 1.0, work)
         if span <= 0.0:
@@ -245,7 +194,7 @@ def _follow(
         last = end_of(plan, x1, y1, z1, ux1, uy1, uz1, push, whirl)
     # caught in a corner: it stays where it last bounced, inside, and goes on in the next step
     _account_bounce(charges, i, -1.0, work)
-    _put(charges, i, first[0], first[1], first[2])
+    put(charges, i, first[0], first[1], first[2])
     for axis in range(3):
         charges.velocity[axis, i] = first[3 + axis]
     _account_bounce(charges, i, 1.0, work)
@@ -333,53 +282,6 @@ def _crossing(
 
 
 @outer_kernel
-def _enter_energy_of_many(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) -> None:
-    """Enter the energy that leaves with the charges LEAVING, all at once.
-
-    It is the sum over them of Q (P + P') / 2, with the potentials P of all charges and P' of those
-    that stay; for pairs of leaving ones that counts each pair once.
-    """
-    q, kept = charges.charge, work.spare[0]
-    for i in range(q.size):
-        kept[i] = q[i]
-    for _ in range(2):
-        pair_sum(charges.position, q, plan.softening2, plan.constant, work.tiles, work.levels)
-        for i in range(q.size):
-            if charges.alive[i] == LEAVING:
-                energy = 0.5 * kept[i] * work.levels[3, i]
-                add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
-                q[i] = 0.0
-    for i in range(q.size):
-        q[i] = kept[i]
-
-
-@outer_kernel
-def _absorb(plan: Plan, charges: Charges, i: int, work: Work) -> None:
-    """Take a charge out of all sums, entering what it carries at the end of the step."""
-    ux, uy, uz = charges.velocity[0, i], charges.velocity[1, i], charges.velocity[2, i]
-    x, y, z = charges.position[0, i], charges.position[1, i], charges.position[2, i]
-    m = charges.mass[i]
-    u2 = ux * ux + uy * uy + uz * uz
-    energy = m * u2 / (1.0 + math.sqrt(1.0 + u2 / plan.light2))
-    add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
-    enter_vector(MOMENTUM_WALLS, m * ux, m * uy, m * uz, work.total, work.carry)
-    _enter_angular(x, y, z, m * ux, m * uy, m * uz, work)
-    add_compensated(work.total, work.carry, CHARGE_WALLS, charges.charge[i])
-    add_compensated(work.total, work.carry, COUNT_WALLS, charges.weight[i])
-    charges.alive[i] = 0
-    charges.charge[i] = 0.0
-    charges.weight[i] = 0.0
-    for axis in range(3):
-        charges.charge_to_mass[axis, i] = 0.0
-        charges.velocity[axis, i] = 0.0
-
-
-@inner_kernel
-def _put(charges: Charges, i: int, x: float, y: float, z: float) -> None:
-    charges.position[0, i], charges.position[1, i], charges.position[2, i] = x, y, z
-
-
-@outer_kernel
 def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
     """Enter what a bounce takes from the charges: their momentum before (-1) less after (+1)."""
     m = -sign * charges.mass[i]
@@ -387,20 +289,13 @@ def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
     py = m * charges.velocity[1, i]
     pz = m * charges.velocity[2, i]
     enter_vector(MOMENTUM_WALLS, px, py, pz, work.total, work.carry)
-    _enter_angular(
-        charges.position[0, i], charges.position[1, i], charges.position[2, i], px, py, pz, work
-    )
-
-
-@outer_kernel
-def _enter_angular(
-    x: float, y: float, z: float, px: float, py: float, pz: float, work: Work
-) -> None:
-    enter_vector(
-        ANGULAR_WALLS,
-        y * pz - z * py,
-        z * px - x * pz,
-        x * py - y * px,
+    enter_wall_moment(
+        charges.position[0, i],
+        charges.position[1, i],
+        charges.position[2, i],
+        px,
+        py,
+        pz,
         work.total,
         work.carry,
     )

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from driftwell.coulomb.unresolved import search_room
 from driftwell.fields.table import FieldTable
 from driftwell.images.image_sum import ImageSum
+from driftwell.kernels import inner_kernel
 from driftwell.kernels.cache_lines import room
 from driftwell.particles.state import Particles
 from driftwell.stepping.accounts import ACCOUNTS, RATES
@@ -244,3 +245,9 @@ def work_space(
         events=np.zeros((events, EVENT_COLUMNS)),
         cursor=np.zeros(CURSORS, dtype=np.int64),
     )
+
+
+@inner_kernel
+def put(charges: Charges, i: int, x: float, y: float, z: float) -> None:
+    """Set the place of charge `i`, m."""
+    charges.position[0, i], charges.position[1, i], charges.position[2, i] = x, y, z
