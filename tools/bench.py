@@ -24,7 +24,7 @@ from typing import Any
 
 import numpy as np
 from bench_cases import tree
-from bench_cases.boundary import boundary_1e5
+from bench_cases.boundary import boundary_1e5, capacitance
 from bench_cases.direct import direct_16k
 from bench_cases.field_map import field_map
 from bench_cases.night import record_1e4, resume
@@ -57,6 +57,7 @@ LONG: dict[str, Case] = {
     "record-1e4": record_1e4,
     "resume": resume,
     "sweep": sweep,
+    "capacitance": capacitance,
     "boundary-1e5": boundary_1e5,
 }
 CASES = {**QUICK, **LONG}

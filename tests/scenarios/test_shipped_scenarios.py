@@ -272,8 +272,8 @@ def mathieu_exponent(q: float) -> float:
 def test_electrons_cross_the_gap_as_in_an_even_field(runs: dict[str, Run]) -> None:
     """From rest in 0.4 MV/m over 10 mm, then 5 mm on; the hole in the anode weakens the field.
 
-    L. D. Landau and E. M. Lifshitz, The Classical Theory of Fields, sec. 20: gamma = 1 + e E x/mc^2,
-    t = (mc/eE) sqrt(gamma^2 - 1).
+    L. D. Landau and E. M. Lifshitz, The Classical Theory of Fields, sec. 20:
+    gamma = 1 + e E x/mc^2, t = (mc/eE) sqrt(gamma^2 - 1).
     """
     rest, light = 510998.95, 299792458.0
     gamma = 1 + 0.4e6 * 9.98e-3 / rest

@@ -26,10 +26,10 @@ def tube(points: Floats) -> Floats:
     return np.asarray(outside + np.minimum(np.maximum(dr, dz), 0.0))
 
 
-def test_a_tube_encloses_its_bore_along_its_length() -> None:
+def test_a_tube_encloses_its_bore_and_a_radius_beyond_its_ends() -> None:
     found = enclosed(tube, Box(np.array([5.0, -20.0]), np.array([6.0, 20.0])), axisymmetric=True)
-    np.testing.assert_allclose(found.low, [0.0, -20.0], atol=1e-3)
-    np.testing.assert_allclose(found.high, [5.0, 20.0], atol=1e-3)
+    np.testing.assert_allclose(found.low, [0.0, -25.0], atol=1e-3)
+    np.testing.assert_allclose(found.high, [5.0, 25.0], atol=1e-3)
 
 
 def test_a_shell_closed_at_both_ends_ends_the_region_at_its_inner_face() -> None:

@@ -13,8 +13,9 @@ from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError
 from driftwell.fields.evaluation import evaluate
 from driftwell.fields.form import Role
+from driftwell.record.earlier import differences
 from driftwell.record.reader import Run, open_run
-from driftwell.run import run
+from driftwell.run import Progress, run
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from driftwell.solved import solved_field as module
 from driftwell.solved.acting import ActingField, acting_field
@@ -218,3 +219,44 @@ def test_the_table_names_every_electrode_and_the_error_reached(
     told = "\n".join(summary(acting, tubes(tmp_path).scenario.electrode, None, 90))
     for part in ("left", "right", "pF", "field error", "r up to 4 mm", "dipole"):
         assert part in told
+
+
+class Stopping(Unwatched):
+    """An observer that asks to stop on the way."""
+
+    calls = 0
+
+    def goes_on(self, progress: Progress) -> bool:
+        self.calls += 1
+        return self.calls < 3
+
+
+def test_a_run_stopped_in_a_solved_field_goes_on_to_the_last_bit(ran: Run, tmp_path: Path) -> None:
+    """On two threads instead of one, with the field read again from where it is kept."""
+    loaded = tubes(tmp_path)
+    assert "stopped" == run(loaded, tmp_path / "run", Stopping()).outcome.word
+    result = run(loaded, tmp_path / "run", Unwatched(), threads=2)
+    assert ran.outcome.word == result.outcome.word
+    found = open_run(result.folder)
+    for expected, again in zip(ran.trajectory, found.trajectory, strict=True):
+        assert np.asarray(expected).tobytes() == np.asarray(again).tobytes()
+    assert ran.ledger.tobytes() == found.ledger.tobytes()
+
+
+def test_going_on_in_a_field_solved_anew_is_told(tmp_path: Path) -> None:
+    """Where its numbers differ: as after an update of the linear algebra library."""
+    told: list[str] = []
+
+    class Listening(Unwatched):
+        def told(self, sentence: str) -> None:
+            told.append(sentence)
+
+    loaded = tubes(tmp_path)
+    run(loaded, tmp_path / "run", Stopping())
+    earlier = open_run(tmp_path / "run")
+    assert not differences(earlier, earlier.header.field_digest)
+    (sentence,) = differences(earlier, "0123456789abcdef")
+    assert "a solved field of digest" in sentence
+    assert "gone on with 0123456789abcdef" in sentence
+    run(loaded, tmp_path / "run", Listening())
+    assert not any("solved field" in each for each in told)

@@ -21,7 +21,7 @@ def hang(folder: Path, images: Mapping[str, bytes], old: Iterable[str], whole: s
     """
     place = folder / FOLDER
     try:
-        place.mkdir(exist_ok=True)
+        place.mkdir(parents=True, exist_ok=True)
         for name in set(old) - set(images):
             (place / name).unlink(missing_ok=True)
         for name, image in images.items():

@@ -35,13 +35,12 @@ NAMES = ("equipotentials", "equipotentials-across", "axis-potential", "surface-c
 def draw_field(
     acting: ActingField, names: tuple[str, ...], title: str, provenance: str, folder: Path
 ) -> list[Path]:
-    """Draw a solved field into ``pictures/`` of a folder, which is made; returns the files.
+    """Draw a solved field into ``pictures/`` of a folder that may be missing; returns the files.
 
     names : of the electrodes, in the order of their unit solutions
 
     Raises RecordError where the folder cannot be written.
     """
-    folder.mkdir(parents=True, exist_ok=True)
     with style():
         images = {
             f"{name}.png": png(figure, title)

@@ -46,7 +46,7 @@ def enclosed(distance: Distance, box: Box, axisymmetric: bool) -> Box:
 
 
 def _about_axis(distance: Distance, box: Box, size: float) -> Box:
-    """As far as rays from the axis get, and along it as far as the electrodes do."""
+    """As far as rays from the axis get, and along it until it is closed, or a radius beyond."""
     z = np.linspace(box.low[1], box.high[1], RAYS)
     starts = np.stack([np.zeros(RAYS), z], axis=1)
     points, met = _looked(distance, starts, np.tile([1.0, 0.0], (RAYS, 1)), size)
@@ -54,7 +54,7 @@ def _about_axis(distance: Distance, box: Box, size: float) -> Box:
         around = _beyond(box)
         return Box(np.array([0.0, around.low[1]]), around.high)
     radius = float(points[met, 0].max())
-    low, high = float(box.low[1]), float(box.high[1])
+    low, high = float(box.low[1]) - radius, float(box.high[1]) + radius
     r = np.linspace(0.0, radius, RAYS)
     starts = np.stack([r, np.zeros(RAYS)], axis=1)
     starts = starts[distance(starts) > 0.0]
