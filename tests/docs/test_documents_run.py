@@ -15,7 +15,10 @@ import pytest
 
 from driftwell.cli.sweep import SOME_FAILED
 from driftwell.run import EXIT_CODES
+from driftwell.scenario.read import read_scenario
 from driftwell.study.cluster_engine import ClusterLostError
+from driftwell.study.read import read_study
+from tests.grid_files import nodes, write_csv
 
 ROOT = Path(__file__).resolve().parents[2]
 PAGES = sorted(
@@ -136,6 +139,33 @@ def test_the_readme_shows_keys_as_the_shipped_scenario_has_them() -> None:
     shipped = (ROOT / "scenarios" / "rod-trap.toml").read_text()
     for paragraph in shown.strip().split("\n\n"):
         assert paragraph in shipped
+
+
+ANY = """
+title    = "What an example needs besides"
+duration = "1 us"
+[[cloud]]
+name    = "any"
+species = "proton"
+shape   = { kind = "points", positions = [["0 mm", "0 mm", "0 mm"]] }
+"""
+
+
+@pytest.mark.parametrize(
+    "block",
+    [b for b in blocks(ROOT / "docs" / "electrodes.md") if b.language == "toml"],
+    ids=lambda block: block.text.split("\n", 1)[0],
+)
+def test_the_pieces_of_scenarios_on_electrodes_are_without_faults(block: Block, desk: Path) -> None:
+    grid = nodes(r=range(9), z=range(-4, 5))
+    write_csv(desk / "magnet.csv", {**grid, "Br": 0.0 * grid["r"], "Bz": 1.0 + 0.0 * grid["r"]})
+    if "scenario" in tomllib.loads(block.text):
+        (desk / "scenarios" / "study.toml").write_text(block.text)
+        assert 4 == len(read_study("scenarios/study.toml").cases)
+        return
+    (desk / "piece.toml").write_text(f"{ANY}{block.text}")
+    found = read_scenario("piece.toml").scenario
+    assert found.electrode or found.images or found.field
 
 
 def test_the_tools_that_a_page_names_are_there() -> None:
