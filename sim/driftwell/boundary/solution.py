@@ -32,7 +32,9 @@ class Solution(Protocol):
     ----------
     capacitance : (e, e) float64, F (planar: F/m): charge of the first for 1 V on the second;
         symmetric to the solution's own error
-    error : estimated relative error of potentials, by comparison with a coarser solution
+    error : of drawn electrodes, the largest error of the potential seen on their surfaces, V per V;
+        of those in space, the rms difference from a coarser solution, of potentials or of fields
+        in parts of their rms, whichever is more
     panels : where the charge sits
     mirrors : for each coordinate, whether every unit solution is even in it
     """

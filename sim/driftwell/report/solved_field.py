@@ -15,7 +15,7 @@ from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
 from driftwell.report.axis_potential import axis_potential
-from driftwell.report.equipotentials import Drawn, equipotentials
+from driftwell.report.equipotentials import WIDEST, Drawn, equipotentials
 from driftwell.report.gallery import hang
 from driftwell.report.sheet import png, style
 from driftwell.report.surface_charge import charge_along_outlines, charge_in_space
@@ -143,6 +143,7 @@ def _extent(acting: ActingField) -> tuple[Floats, Floats]:
     low, high = low - room, high + room
     if acting.solved.geometry == "axisymmetric":
         low[0] = 0.0
+        high[0] = max(high[0], (high[1] - low[1]) / WIDEST)
     return low, high
 
 

@@ -135,7 +135,8 @@ def _notes(loaded: LoadedScenario) -> Iterator[str]:
             f'Charges of "{name}" stand for {weight:.6g} real ones each and meet without '
             "softening: chance encounters push harder than real ones; see [coulomb] softening."
         )
-    if isinstance(scenario.images, ClosedForm) and not scenario.wall:
+    stopped = scenario.wall or scenario.electrode
+    if isinstance(scenario.images, ClosedForm) and not stopped:
         yield (
             "Nothing stops charges at the conductor that answers with images: a [[wall]] where it "
             "is does."

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from typing import NamedTuple
 
@@ -10,7 +11,7 @@ from numpy.typing import NDArray
 
 from driftwell.boundary.multipoles import planar_content, round_content, spatial_content
 from driftwell.forms import spelled
-from driftwell.forms.waveforms import AnyWaveform, waveform_words
+from driftwell.forms.waveforms import AnyWaveform, Sine, waveform_words
 from driftwell.solved.acting import ActingField
 
 Floats = NDArray[np.float64]
@@ -100,12 +101,20 @@ def _of(weight: Floats, amplitude: Floats, error: Floats) -> Iterator[tuple[floa
         yield signed, float(np.linalg.norm(doubt[order]))
 
 
+def _course(course: AnyWaveform) -> str:
+    """The voltages that follow a course, in words."""
+    if isinstance(course, float):
+        return "constant voltages"
+    if isinstance(course, Sine):
+        phase = f", phase {math.degrees(course.phase):.4g} deg" if course.phase else ""
+        return f"amplitudes at {spelled(course.frequency, 'Hz')}{phase}"
+    return f"whole swings of what follows {waveform_words(course, 'V')}"
+
+
 def content_lines(found: Content) -> list[str]:
     """One line for each order: volts at the radius, and as part of the quadrupole."""
-    course = found.course
-    steady = isinstance(course, float)
-    of = "constant voltages" if steady else f"voltages as {waveform_words(course, 'V')}"
-    lines = [f"multipoles of the {of}, at {spelled(found.radius, 'm', 4)} from the centre:"]
+    at = spelled(found.radius, "m", 4)
+    lines = [f"multipoles of the {_course(found.course)}, at {at} from the centre:"]
     quadrupole = found.terms[2].amplitude if len(found.terms) > 2 else 0.0
     largest = max(abs(term.amplitude) for term in found.terms)
     for term in found.terms:

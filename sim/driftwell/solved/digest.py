@@ -14,7 +14,7 @@ from driftwell.kernels.compiled import sources_digest
 
 _NOT_GEOMETRY = {"centre", "multipole_radius"}
 """Keys of `[electrodes]` that change nothing of what is solved."""
-_SOLVER = ("boundary", "geometry", "tree", "electrodes", "fields/maps", "solved")
+_SOLVER = ("kernels", "boundary", "geometry", "tree", "electrodes", "fields/maps", "solved")
 """Packages whose sources decide what the solution is."""
 
 

@@ -63,10 +63,13 @@ def _trust(acting: ActingField, columns: int) -> list[str]:
     field = acting.solved
     solution, mapped = field.solution, field.map
     nodes = " x ".join(str(n) for n in mapped.grid.counts)
+    spatial = field.geometry == "spatial"
+    what = "potentials and fields differ" if spatial else "potentials on the surfaces err"
     texts = [
-        f"boundary: {len(solution.panels.size)} surface charges, potentials within "
-        f"{solution.error:.1e} of the voltage",
+        f"boundary: {len(solution.panels.size)} surface charges; {what} by {solution.error:.1e} at "
+        f"the most{' from those of a coarser solution' * spatial}",
         f"map: {nodes} nodes; {mapped.reached.words()}",
+        f"in all: rms error of the field {field.error:.1e}",
         f"region: {acting.edges.words()}",
     ]
     return [line for text in texts for line in paragraph(text, columns, "", "  ")]
