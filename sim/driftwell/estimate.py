@@ -114,10 +114,12 @@ def estimate(
     threads: int = 1,
     seconds: float = 5.0,
     begins: Callable[[Assembly, Summation], None] | None = None,
+    told: Callable[[str], None] | None = None,
 ) -> Estimate:
     """What a run of the scenario will cost; takes about `seconds` s besides setting it up.
 
     begins : called when the charges are placed and the Coulomb sum is chosen
+    told : hears of the electrodes' field, where that has to be solved first
 
     Raises
     ------
@@ -129,7 +131,7 @@ def estimate(
         Nothing can be written to the folder for temporary files.
     """
     with on_threads(threads) as given:
-        parts = assembled(loaded)
+        parts = assembled(loaded, told=told)
         start = replace(parts, particles=copy_of(parts.particles))
         loop = parts.time_loop(given)
         if begins is not None:

@@ -34,7 +34,7 @@ def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: 
         loaded = read_scenario(file, settings)
         tell(loaded.scenario.title)
         with first_compilation(tell_of_compiling):
-            found = estimate(loaded, threads, seconds, _begins)
+            found = estimate(loaded, threads, seconds, _begins, tell)
     except StepError as error:
         tell(f"The run would fail {error}")
         return error.exit_code
