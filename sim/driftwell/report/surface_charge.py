@@ -25,7 +25,8 @@ PLANES = ((2, 0), (0, 1))
 """Axes across and up: z-x from the side, x-y along z."""
 RATIOS = (1.6, 1.0)
 WITHIN = 0.98
-"""Part of the panels whose density is told apart by colour: at edges it grows without end."""
+"""Part of the panels, or of the outlines' length, whose density is shown apart: at edges it grows
+without end."""
 MOST_DOTS = 40_000
 NAME_LONGEST = 40
 
@@ -33,7 +34,7 @@ NAME_LONGEST = 40
 def charge_along_outlines(
     title: str, provenance: str, electrodes: Sequence[tuple[str, Floats, Floats]]
 ) -> Figure:
-    """Density of charge along each electrode's outline.
+    """Density of charge along each electrode's outline; at edges it leaves the picture.
 
     electrodes : name; (n,) float64, m, length along the outline from its first point, rising; and
         (n,) float64, C/m^2
@@ -45,9 +46,8 @@ def charge_along_outlines(
     figure = page(title, provenance, 9.6, 4.2, key)
     panel = figure.subplots()
     lengths = np.concatenate([along for _, along, _ in electrodes])
-    densities = np.concatenate([density for _, _, density in electrodes])
     places = ruler(interval([0.0, *lengths], margin=0.0), "m")
-    amounts = ruler(interval(densities, zero=True), "C/m²")
+    amounts = ruler(interval(_apart_from_edges(electrodes), zero=True), "C/m²")
     panel.axhline(float(amounts.shown(0.0)), color=PALE, linewidth=0.8)
     for k, (_, along, density) in enumerate(electrodes):
         panel.plot(
@@ -61,6 +61,19 @@ def charge_along_outlines(
     put_across(panel, places, "length along the outline")
     put_up(panel, amounts, "charge density")
     return figure
+
+
+def _apart_from_edges(electrodes: Sequence[tuple[str, Floats, Floats]]) -> Floats:
+    """Least and largest density on all but the ends of the outlines' length."""
+    density = np.concatenate([each for _, _, each in electrodes])
+    share = np.concatenate(
+        [np.gradient(along) if along.size > 1 else np.ones(1) for _, along, _ in electrodes]
+    )
+    order = np.argsort(density, kind="stable")
+    below = np.cumsum(share[order]) / share.sum()
+    beyond = 0.5 * (1.0 - WITHIN)
+    first, last = np.searchsorted(below, [beyond, 1.0 - beyond])
+    return density[order[[first, min(last, order.size - 1)]]]
 
 
 def charge_in_space(title: str, provenance: str, position: Floats, density: Floats) -> Figure:
