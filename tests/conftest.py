@@ -1,16 +1,21 @@
 """What holds for every test: examples are drawn the same way each time, on any machine.
 
-Solved fields are kept in a folder of the tests' own, so that each is solved once.
+Two processes share the tests, file by file. Solved fields are kept in a folder that they have in
+common, so that each is solved once.
 """
 
 from __future__ import annotations
 
+import os
 from collections.abc import Iterator
 
-import pytest
-from hypothesis import settings
+# threads that wait for their like give up their core: the other process has use for it
+os.environ.setdefault("OMP_WAIT_POLICY", "passive")
 
-from driftwell.solved.store import PLACE
+import pytest  # noqa: E402
+from hypothesis import settings  # noqa: E402
+
+from driftwell.solved.store import PLACE  # noqa: E402
 
 settings.register_profile("repeatable", derandomize=True, deadline=None)
 settings.load_profile("repeatable")
@@ -18,6 +23,9 @@ settings.load_profile("repeatable")
 
 @pytest.fixture(scope="session", autouse=True)
 def fields_kept_here(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
+    base = tmp_path_factory.getbasetemp()
+    if "PYTEST_XDIST_WORKER" in os.environ:  # each process has a folder of its own in it
+        base = base.parent
     with pytest.MonkeyPatch.context() as patch:
-        patch.setenv(PLACE, str(tmp_path_factory.mktemp("solved-fields")))
+        patch.setenv(PLACE, str(base / "solved-fields"))
         yield
