@@ -12,10 +12,10 @@ from collections.abc import Iterator
 # threads that wait for their like give up their core: the other process has use for it
 os.environ.setdefault("OMP_WAIT_POLICY", "passive")
 
-import pytest  # noqa: E402
-from hypothesis import settings  # noqa: E402
+import pytest
+from hypothesis import settings
 
-from driftwell.solved.store import PLACE  # noqa: E402
+from driftwell.solved.store import PLACE
 
 settings.register_profile("repeatable", derandomize=True, deadline=None)
 settings.load_profile("repeatable")
