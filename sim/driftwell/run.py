@@ -6,7 +6,7 @@ The run itself prints nothing: an :class:`Observer` is told how far it is and ma
 from __future__ import annotations
 
 import time as clocks
-from contextlib import ExitStack
+from contextlib import ExitStack, suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -24,6 +24,7 @@ from driftwell.kernels.threads import on_threads
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.record.claim import holds_run, refuse_taken
+from driftwell.record.commit import remove_parts
 from driftwell.record.earlier import clear_unsealed, differences, earlier_run, put_aside
 from driftwell.record.heartbeat import Heartbeat
 from driftwell.record.lock import held, made_and_held
@@ -144,6 +145,8 @@ def run(
                 clear_unsealed(folder)
             elif earlier.outcome.word in _ENDED:
                 observer.told("Not computed again: the record is whole; --fresh does.")
+                with suppress(OSError):  # left by a kill in the very last write
+                    remove_parts(folder)
                 return _told_again(earlier)
         warn = observer.told if force else None
         if earlier is not None:
@@ -203,7 +206,7 @@ class _Execution:
     def begin(
         self, loaded: LoadedScenario, threads: int, holding: ExitStack, *, held_already: bool
     ) -> None:
-        """At time zero, with a new record, in a folder that is held from now on."""
+        """Before the first record, in a folder that is held from now on."""
         created = datetime.now(UTC).isoformat(timespec="seconds")
         parts = self._parts
         self._tracked = parts.tracked
@@ -220,7 +223,6 @@ class _Execution:
             self._folder, parts.header(loaded, summation, threads, created)
         )
         self._began = clocks.monotonic()
-        self._record(0)
 
     def go_on(self, earlier: Run, threads: int) -> None:
         """Where an earlier process sealed its last segment."""
@@ -248,6 +250,8 @@ class _Execution:
         whole = spelled(self._scenario.duration, "s")
         word, sentence = FINISHED, f"The motion was followed to t = {whole}."
         try:
+            if self._row is None:  # at time zero
+                self._record(0)
             word, sentence = self._moved(word, sentence)
             if word not in {STOPPED, FAILED}:
                 self._writer.forget_last()

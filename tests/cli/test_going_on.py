@@ -267,3 +267,15 @@ def test_the_record_of_a_run_that_went_on_is_that_of_one_that_was_not_stopped(
 def vars_of(snapshot: object) -> list[object]:
     """All that a snapshot holds."""
     return [getattr(snapshot, name) for name in snapshot.__slots__]  # type: ignore[attr-defined]
+
+
+def test_what_a_kill_in_the_very_last_write_left_goes_when_the_run_is_told_again(
+    tmp_path: Path,
+) -> None:
+    path = scenario(tmp_path)
+    command = ["run", str(path), "--no-pictures", "-o", str(tmp_path / "run")]
+    assert 0 == main(command)
+    left = tmp_path / "run" / "run.h5.part"
+    left.write_bytes(b"half of it")
+    assert 0 == main(command)
+    assert not left.exists()
