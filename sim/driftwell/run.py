@@ -189,6 +189,7 @@ class _Execution:
         self._folder = folder
         self._observer = observer
         self._clouds = parts.clouds
+        self._walls = len(parts.walls)
         self._born = len(parts.particles)
         self._choice = parts.choice
         self._schedule = parts.schedule
@@ -349,9 +350,7 @@ class _Execution:
     def _keep_events(self) -> None:
         """Record what happened on surfaces, and the samples taken, since the last time."""
         for events in self._loop.take_events():
-            losses, crossings = event_rows(
-                events, len(self._parts.walls), len(self._scenario.detector)
-            )
+            losses, crossings = event_rows(events, self._walls, len(self._scenario.detector))
             self._writer.losses(losses)
             self._writer.crossings(crossings)
         for times, values in self._loop.take_samples():

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 import numpy as np
+from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts
 from driftwell.errors import ScenarioError
@@ -63,15 +64,28 @@ def check_births(scenario: Scenario, particles: Particles, conductors: Conductor
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
-        outside = np.flatnonzero(row <= 0)
-        if wall.closed() and outside.size:
-            x, y, z = particles.position[:, outside[0]]
-            born = scenario.cloud[int(particles.cloud[outside[0]])].name
-            raise ScenarioError(
-                f'[[cloud]] "{born}": {outside.size} of {len(particles)} charges do not begin '
-                f'inside the wall "{wall.name}"; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m. '
-                "Make the cloud smaller, move it, or enlarge the wall."
+        if wall.closed():
+            _refuse_any(
+                scenario,
+                particles,
+                row <= 0,
+                f'do not begin inside the wall "{wall.name}"',
+                "Make the cloud smaller, move it, or enlarge the wall.",
             )
+
+
+def _refuse_any(
+    scenario: Scenario, particles: Particles, wrong: NDArray[np.bool_], how: str, remedy: str
+) -> None:
+    """Refuse the first of the charges that begin wrongly, if any; says how many, and what to do."""
+    those = np.flatnonzero(wrong)
+    if those.size:
+        x, y, z = particles.position[:, those[0]]
+        cloud = scenario.cloud[int(particles.cloud[those[0]])].name
+        raise ScenarioError(
+            f'[[cloud]] "{cloud}": {those.size} of {len(particles)} charges {how}; the first is at '
+            f"({x:.6g}, {y:.6g}, {z:.6g}) m. {remedy}"
+        )
 
 
 def edges_in(scenario: Scenario, acting: ActingField | None) -> Iterator[Edges]:
@@ -87,28 +101,23 @@ def edges_in(scenario: Scenario, acting: ActingField | None) -> Iterator[Edges]:
 def check_within(scenario: Scenario, particles: Particles, edges: Sequence[Edges]) -> None:
     """Refuse charges born where a field is not known."""
     for each in edges:
-        outside = np.flatnonzero(each.outside(particles.position))
-        if outside.size:
-            x, y, z = particles.position[:, outside[0]]
-            cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
-            raise ScenarioError(
-                f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges begin where '
-                f"{each.whose} is not known; the first is at ({x:.6g}, {y:.6g}, {z:.6g}) m, and it "
-                f"is known for {each.words()}. {each.remedy}."
-            )
+        _refuse_any(
+            scenario,
+            particles,
+            each.outside(particles.position),
+            f"begin where {each.whose} is not known",
+            f"It is known for {each.words()}. {each.remedy}.",
+        )
 
 
 def check_sides(scenario: Scenario, particles: Particles) -> None:
     """Refuse charges born where the conductor that answers to them is, or beyond it."""
     form = scenario.images
-    if not isinstance(form, ClosedForm):
-        return
-    outside = np.flatnonzero(~(form.distance(particles.position) > 0.0))
-    if outside.size:
-        x, y, z = particles.position[:, outside[0]]
-        cloud = scenario.cloud[int(particles.cloud[outside[0]])].name
-        raise ScenarioError(
-            f'[[cloud]] "{cloud}": {outside.size} of {len(particles)} charges do not begin on the '
-            f"charges' side of [images], {form.words()}; the first is at ({x:.6g}, {y:.6g}, "
-            f"{z:.6g}) m. Move the cloud, or the conductor."
+    if isinstance(form, ClosedForm):
+        _refuse_any(
+            scenario,
+            particles,
+            ~(form.distance(particles.position) > 0.0),
+            f"do not begin on the charges' side of [images], {form.words()}",
+            "Move the cloud, or the conductor.",
         )

@@ -200,10 +200,10 @@ def assembled(
     particles, clouds = loaded_particles(loaded, bodies, species)
     conductors = Conductors.of(scenario, loaded.folder)
     check_births(scenario, particles, conductors)
+    check_sides(scenario, particles)  # before anything is solved
     acting = acting_field(scenario, loaded.folder, told)
     edges = tuple(edges_in(scenario, acting))
     check_within(scenario, particles, edges)
-    check_sides(scenario, particles)
     requests = all_traces(scenario)
     choice, every = chosen_pace(scenario, bodies, species, particles, requests, acting)
     samples = scenario.duration / every if requests else 0.0

@@ -20,6 +20,7 @@ from driftwell.report.gallery import hang
 from driftwell.report.sheet import png, style
 from driftwell.report.surface_charge import charge_along_outlines, charge_in_space
 from driftwell.solved.acting import ActingField
+from driftwell.solved.edges import LETTERS
 
 Floats = NDArray[np.float64]
 
@@ -123,7 +124,7 @@ class _Plane:
 
 def _columns(geometry: str, axes: tuple[str, str]) -> tuple[int, int]:
     """Which coordinates of a point stand for the axes of a picture."""
-    letters = {"axisymmetric": "rz", "planar": "xy", "spatial": "xyz"}[geometry]
+    letters = LETTERS[geometry]
     return letters.index(axes[0]), letters.index(axes[1])
 
 

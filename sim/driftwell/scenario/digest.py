@@ -28,13 +28,14 @@ def digest(scenario: Scenario, folder: Path) -> str:
     for section in LATER:
         if not values[section]:
             del values[section]
-    files = {name: _file_digest(folder / name) for name in named}
+    files = {name: file_digest(folder / name) for name in named}
     content = {"scenario": values, "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(text.encode()).hexdigest()
 
 
-def _file_digest(path: Path) -> str:
+def file_digest(path: Path) -> str:
+    """SHA-256, in hexadecimal, of a file; raises ScenarioError where it cannot be read."""
     try:
         with path.open("rb") as stream:
             return hashlib.file_digest(stream, "sha256").hexdigest()

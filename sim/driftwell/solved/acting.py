@@ -23,11 +23,10 @@ from driftwell.forms.body import Body
 from driftwell.forms.waveform_table import waveform_table
 from driftwell.forms.waveforms import AnyWaveform, packed_waveform, waveform_breaks
 from driftwell.geometry.body_table import BodyTable, body_table
-from driftwell.geometry.distance import distances, plane_distances
 from driftwell.kernels.waveform import waveform
 from driftwell.scenario.model import Scenario
 from driftwell.solved.edges import Edges
-from driftwell.solved.solved_field import SolvedField, solved_field
+from driftwell.solved.solved_field import SolvedField, nearest, solved_field
 from driftwell.solved.store import Told
 from driftwell.solved.waves import Course, courses
 
@@ -59,10 +58,7 @@ class ActingField:
     def nearest(self, points: Floats) -> tuple[Floats, NDArray[np.int64]]:
         """Signed distances (n,), m, of points in the map's coordinates to the nearest electrode,
         and whose it is (n,)."""
-        geometry = self.solved.geometry
-        if geometry == "spatial":
-            return distances(self.bodies, points)
-        return plane_distances(self.bodies, points, geometry == "axisymmetric")
+        return nearest(self.bodies, self.solved.geometry, points)
 
     def packed(self) -> list[PackedField]:
         """One field for each course."""

@@ -9,8 +9,8 @@ from functools import cache
 from pathlib import Path
 
 from driftwell.electrodes.form import Electrode, Electrodes
-from driftwell.errors import ScenarioError
 from driftwell.kernels.compiled import sources_digest
+from driftwell.scenario.digest import file_digest
 
 _NOT_GEOMETRY = {"centre", "multipole_radius"}
 """Keys of `[electrodes]` that change nothing of what is solved."""
@@ -27,7 +27,7 @@ def field_digest(electrodes: Electrodes, electrode: Sequence[Electrode], folder:
         "settings": electrodes.model_dump(mode="json", exclude=_NOT_GEOMETRY),
         "shapes": [[s.model_dump(mode="json") for s in each.shape] for each in electrode],
         "files": {
-            name: _file_digest(folder / name)
+            name: file_digest(folder / name)
             for each in electrode
             for shape in each.shape
             for name in shape.files_named()
@@ -42,11 +42,3 @@ def field_digest(electrodes: Electrodes, electrode: Sequence[Electrode], folder:
 def _solver_digest() -> str:
     package = Path(__file__).resolve().parent.parent
     return "".join(sources_digest(package / name) for name in _SOLVER)
-
-
-def _file_digest(path: Path) -> str:
-    try:
-        with path.open("rb") as stream:
-            return hashlib.file_digest(stream, "sha256").hexdigest()
-    except OSError as fault:
-        raise ScenarioError(f"{path}: cannot be read ({fault.strerror})") from fault

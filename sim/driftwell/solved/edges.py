@@ -19,7 +19,8 @@ from driftwell.walls.plane import Plane
 
 Floats = NDArray[np.float64]
 
-_LETTERS = {"axisymmetric": "rz", "planar": "xy", "spatial": "xyz"}
+LETTERS = {"axisymmetric": "rz", "planar": "xy", "spatial": "xyz"}
+"""Names of the coordinates of each geometry."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,7 +70,7 @@ class Edges:
         )
 
     def _ends(self) -> list[tuple[str, tuple[float, float]]]:
-        return list(zip(_LETTERS[self.region.geometry], self.region.ends, strict=True))
+        return list(zip(LETTERS[self.region.geometry], self.region.ends, strict=True))
 
     def _tube(self, word: str, radius: float) -> WallForm:
         return Cylinder.model_construct(

@@ -127,9 +127,15 @@ def _solved(
 
 def distance_of(table: BodyTable, geometry: str) -> Distance:
     """Signed distance of points in the map's coordinates to the nearest electrode."""
+    return lambda points: nearest(table, geometry, points)[0]
+
+
+def nearest(table: BodyTable, geometry: str, points: Floats) -> tuple[Floats, NDArray[np.int64]]:
+    """Signed distances (n,), m, of points in the map's coordinates to the nearest electrode, and
+    whose it is (n,)."""
     if geometry == "spatial":
-        return lambda points: distances(table, points)[0]
-    return lambda points: plane_distances(table, points, geometry == "axisymmetric")[0]
+        return distances(table, points)
+    return plane_distances(table, points, geometry == "axisymmetric")
 
 
 def region_of(electrodes: Electrodes, distance: Distance, around: Box) -> Box:
