@@ -105,7 +105,19 @@ def test_an_account_left_out_leaves_a_residual(name: str, residual: str) -> None
 
 def test_every_account_is_one_of_these() -> None:
     """The numbers of the accounts fill their array without gap or overlap."""
-    single = ["WORK_DRIVE", "WORK_INDUCED", "ENERGY_WALLS", "CHARGE_WALLS", "COUNT_WALLS"]
+    single = [
+        "WORK_DRIVE",
+        "WORK_INDUCED",
+        "ENERGY_WALLS",
+        "CHARGE_WALLS",
+        "COUNT_WALLS",
+        "ENERGY_SOURCES",
+        "CHARGE_SOURCES",
+        "COUNT_SOURCES",
+        "ENERGY_PROCESSES",
+        "WORK_FRAMES",
+        "ENERGY_CELL",
+    ]
     triple = [
         "IMPULSE_FIELDS",
         "TORQUE_FIELDS",
@@ -115,6 +127,13 @@ def test_every_account_is_one_of_these() -> None:
         "ANGULAR_WALLS",
         "IMPULSE_IMAGES",
         "TORQUE_IMAGES",
+        "MOMENTUM_SOURCES",
+        "ANGULAR_SOURCES",
+        "MOMENTUM_PROCESSES",
+        "ANGULAR_PROCESSES",
+        "IMPULSE_FRAMES",
+        "TORQUE_FRAMES",
+        "ANGULAR_CELL",
     ]
     taken = [getattr(account, name) for name in single]
     taken += [getattr(account, name) + k for name in triple for k in range(3)]

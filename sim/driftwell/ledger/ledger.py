@@ -41,18 +41,31 @@ from driftwell.ledger.sums import (
     sum_charges,
 )
 from driftwell.stepping.accounts import (
+    ANGULAR_CELL,
+    ANGULAR_PROCESSES,
+    ANGULAR_SOURCES,
     ANGULAR_WALLS,
+    CHARGE_SOURCES,
     CHARGE_WALLS,
+    COUNT_SOURCES,
     COUNT_WALLS,
+    ENERGY_CELL,
+    ENERGY_PROCESSES,
+    ENERGY_SOURCES,
     ENERGY_WALLS,
     IMPULSE_FIELDS,
+    IMPULSE_FRAMES,
     IMPULSE_IMAGES,
     IMPULSE_MAGNETS,
+    MOMENTUM_PROCESSES,
+    MOMENTUM_SOURCES,
     MOMENTUM_WALLS,
     TORQUE_FIELDS,
+    TORQUE_FRAMES,
     TORQUE_IMAGES,
     TORQUE_MAGNETS,
     WORK_DRIVE,
+    WORK_FRAMES,
     WORK_INDUCED,
 )
 from driftwell.stepping.motion import Charges, Plan, Work
@@ -95,6 +108,19 @@ class LedgerRow:
     image: float = 0.0
     impulse_images: Floats = filled(default_factory=lambda: np.zeros(3))
     torque_images: Floats = filled(default_factory=lambda: np.zeros(3))
+    energy_sources: float = 0.0
+    momentum_sources: Floats = filled(default_factory=lambda: np.zeros(3))
+    angular_sources: Floats = filled(default_factory=lambda: np.zeros(3))
+    charge_sources: float = 0.0
+    count_born: float = 0.0
+    energy_processes: float = 0.0
+    momentum_processes: Floats = filled(default_factory=lambda: np.zeros(3))
+    angular_processes: Floats = filled(default_factory=lambda: np.zeros(3))
+    work_frames: float = 0.0
+    impulse_frames: Floats = filled(default_factory=lambda: np.zeros(3))
+    torque_frames: Floats = filled(default_factory=lambda: np.zeros(3))
+    energy_cell: float = 0.0
+    angular_cell: Floats = filled(default_factory=lambda: np.zeros(3))
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,6 +131,14 @@ class _Pairs:
     third_law: float = 0.0
     torque_residual: float = 0.0
     torque: float = 0.0
+
+
+@dataclass(frozen=True, slots=True)
+class _Vectors:
+    """Momentum and angular momentum that one account gave, (3,) each."""
+
+    momentum: Floats
+    angular: Floats
 
 
 @dataclass(slots=True)
@@ -204,11 +238,22 @@ class Ledger:
             - book[WORK_DRIVE]
             - book[WORK_INDUCED]
             + book[ENERGY_WALLS]
+            - book[ENERGY_SOURCES]
+            - book[ENERGY_PROCESSES]
+            - book[WORK_FRAMES]
+            - book[ENERGY_CELL]
         )
         pulls, twists = vector(IMPULSE_IMAGES), vector(TORQUE_IMAGES)
+        born = _Vectors(vector(MOMENTUM_SOURCES), vector(ANGULAR_SOURCES))
+        acted = _Vectors(vector(MOMENTUM_PROCESSES), vector(ANGULAR_PROCESSES))
+        frames = _Vectors(vector(IMPULSE_FRAMES), vector(TORQUE_FRAMES))
+        cell = vector(ANGULAR_CELL)
         momentum_gap = momentum - self._momentum - impulses - magnets - pulls + walls
+        momentum_gap -= born.momentum + acted.momentum + frames.momentum
         angular_gap = angular - self._angular - torques - turns - twists + spins_walls
-        lost = self._count - count
+        angular_gap -= born.angular + acted.angular + frames.angular + cell
+        came, charge_came = float(book[COUNT_SOURCES]), float(book[CHARGE_SOURCES])
+        lost = self._count + came - count
         return LedgerRow(
             time=time,
             kinetic=kinetic,
@@ -230,10 +275,12 @@ class Ledger:
             angular_residual=_share(float(np.linalg.norm(angular_gap)), self._scale.angular),
             charge=charge,
             charge_walls=float(book[CHARGE_WALLS]),
-            charge_residual=_share(charge - self._charge + book[CHARGE_WALLS], self._scale.charge),
+            charge_residual=_share(
+                charge - self._charge - charge_came + book[CHARGE_WALLS], self._scale.charge
+            ),
             count=count,
             count_lost=float(book[COUNT_WALLS]),
-            count_residual=_share(lost - book[COUNT_WALLS], self._count),
+            count_residual=_share(lost - book[COUNT_WALLS], self._count + came),
             third_law_residual=pairs.third_law,
             torque_residual=pairs.torque_residual,
             angular_allowance=_share(self._untrue, self._scale.angular),
@@ -241,6 +288,19 @@ class Ledger:
             image=image,
             impulse_images=pulls,
             torque_images=twists,
+            energy_sources=float(book[ENERGY_SOURCES]),
+            momentum_sources=born.momentum,
+            angular_sources=born.angular,
+            charge_sources=charge_came,
+            count_born=came,
+            energy_processes=float(book[ENERGY_PROCESSES]),
+            momentum_processes=acted.momentum,
+            angular_processes=acted.angular,
+            work_frames=float(book[WORK_FRAMES]),
+            impulse_frames=frames.momentum,
+            torque_frames=frames.angular,
+            energy_cell=float(book[ENERGY_CELL]),
+            angular_cell=cell,
         )
 
     def state(self) -> dict[str, Floats]:

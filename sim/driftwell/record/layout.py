@@ -14,7 +14,7 @@ import h5py
 import numpy as np
 from numpy.typing import NDArray
 
-FORMAT_VERSION = 2
+FORMAT_VERSION = 3
 
 Kind = Literal["float64", "int64", "text", "texts"]
 
@@ -170,6 +170,19 @@ ROWS = (
             Column("image", "float64", "J", "energy with the charges that conductors answer with"),
             Column("impulse_images", "float64", "kg m/s", "given by these", (3,)),
             Column("torque_images", "float64", "kg m^2/s", "given by these", (3,)),
+            Column("energy_sources", "float64", "J", "kinetic and potential, of charges born"),
+            Column("momentum_sources", "float64", "kg m/s", "brought by charges born", (3,)),
+            Column("angular_sources", "float64", "kg m^2/s", "brought by charges born", (3,)),
+            Column("charge_sources", "float64", "C", "charge born"),
+            Column("count_born", "float64", "1", "real particles born after the start"),
+            Column("energy_processes", "float64", "J", "given by gas, drag, lasers, ..."),
+            Column("momentum_processes", "float64", "kg m/s", "given by these", (3,)),
+            Column("angular_processes", "float64", "kg m^2/s", "given by these", (3,)),
+            Column("work_frames", "float64", "J", "given by the field of moving bunches as such"),
+            Column("impulse_frames", "float64", "kg m/s", "given by the same", (3,)),
+            Column("torque_frames", "float64", "kg m^2/s", "given by the same", (3,)),
+            Column("energy_cell", "float64", "J", "in the fields, by re-entry of a periodic cell"),
+            Column("angular_cell", "float64", "kg m^2/s", "by the same", (3,)),
         ),
     ),
     Dataset(

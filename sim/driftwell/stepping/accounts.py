@@ -32,7 +32,26 @@ COUNT_WALLS = 22
 IMPULSE_IMAGES = 23
 """3 entries, N s, by charges that conductors answer with."""
 TORQUE_IMAGES = 26
-ACCOUNTS = 29
+ENERGY_SOURCES = 29
+"""J, kinetic and potential energy of charges born, as they join the sums."""
+MOMENTUM_SOURCES = 30
+ANGULAR_SOURCES = 33
+CHARGE_SOURCES = 36
+COUNT_SOURCES = 37
+ENERGY_PROCESSES = 38
+"""J, given to the charges by all processes together: gas, drag, lasers, ..."""
+MOMENTUM_PROCESSES = 39
+ANGULAR_PROCESSES = 42
+WORK_FRAMES = 45
+"""J, given by what the charges' own field does besides following its energy: see ledger.md."""
+IMPULSE_FRAMES = 46
+"""3 entries, N s, of the same: momentum that stands in the electromagnetic field."""
+TORQUE_FRAMES = 49
+ENERGY_CELL = 52
+"""J, in the fields, given by re-entry at the other end of a periodic cell."""
+ANGULAR_CELL = 53
+"""3 entries, N m s, of the same."""
+ACCOUNTS = 56
 
 Six = tuple[float, float, float, float, float, float]
 """The three components of a vector, then those of its moment about the origin."""
