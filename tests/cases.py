@@ -66,6 +66,13 @@ FIELDS = [
         along=[1.0, -2.0, 0.5],
         centre=OFF_CENTRE,
     ),
+    field(
+        "gridded-gap",
+        voltage={"amplitude": "200 V", **SINE},
+        length="40 mm",
+        along=[1.0, -2.0, 0.5],
+        centre=["-10 mm", "20 mm", "1 mm"],
+    ),
     field("uniform-magnetic", strength="1.5 T"),
     field(
         "uniform-magnetic",

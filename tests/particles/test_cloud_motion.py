@@ -234,3 +234,24 @@ def test_a_motion_is_told_in_words(
     words_of: Callable[..., str], motion: dict[str, Any], said: str
 ) -> None:
     assert words_of(shape=BALL, motion=motion).endswith(said)
+
+
+def test_a_turning_cloud_turns_about_z_through_its_mean_place(load: Load) -> None:
+    """v = omega cross r, 2 pi 100 kHz, from x to y; nothing is turned about the origin."""
+    shape = {**BALL, "centre": ["5 mm", "0 mm", "1 mm"]}
+    found = load(count=1000, shape=shape, motion={"rotation": "100 kHz"})
+    x, y, _ = found.position - found.position.mean(axis=1)[:, None]
+    rate = 2e5 * math.pi
+    assert (-rate * y).tolist() == pytest.approx(found.velocity[0].tolist(), rel=1e-9, abs=1e-9)
+    assert (rate * x).tolist() == pytest.approx(found.velocity[1].tolist(), rel=1e-9, abs=1e-9)
+    assert not found.velocity[2].any()
+
+
+def test_rotation_is_added_to_heat(load: Load) -> None:
+    """The same thermal velocities about the turning of the whole."""
+    heat = {"temperature": "300 K"}
+    still = moving(load, count=1000, **heat)
+    turning = moving(load, count=1000, rotation="-30 kHz", **heat)
+    alone = moving(load, count=1000, rotation="-30 kHz")
+    added = still.velocity + alone.velocity
+    assert added.ravel().tolist() == pytest.approx(turning.velocity.ravel().tolist(), rel=1e-7)

@@ -52,6 +52,7 @@ from driftwell.fields.electric_multipole import (
     electric_multipole,
 )
 from driftwell.fields.form import FieldForm, PackedField, Role
+from driftwell.fields.gridded_gap import GRIDDED_GAP, GriddedGap, gridded_gap
 from driftwell.fields.magnetic_multipole import (
     MAGNETIC_MULTIPOLE,
     MagneticMultipole,
@@ -128,6 +129,7 @@ from driftwell.kernels import inlined_kernel, kernel
 
 FIELD_KINDS: tuple[type[FieldForm], ...] = (
     UniformElectric,
+    GriddedGap,
     UniformMagnetic,
     StaticQuadrupole,
     RfQuadrupole,
@@ -156,7 +158,12 @@ KERNELS_APART = {
     SPATIAL_MAGNETIC_MAP: (spatial_magnetic_map, spatial_magnetic_map_induced),
 }
 """Of the magnetic kinds that are compiled apart: kernels of the field and of what it induces."""
-ELECTRIC_APART = {ROUND_MAP: round_map, PLANAR_MAP: planar_map, SPATIAL_MAP: spatial_map}
+ELECTRIC_APART = {
+    ROUND_MAP: round_map,
+    PLANAR_MAP: planar_map,
+    SPATIAL_MAP: spatial_map,
+    GRIDDED_GAP: gridded_gap,
+}
 """Of the electric kinds that are compiled apart: the kernel."""
 LAST_APART = max(*KERNELS_APART, *ELECTRIC_APART)
 

@@ -204,7 +204,8 @@ class Cloud(Form):
             position, velocity = self.shape.place(self._count(body), draws, body, folder)
             count = position.shape[1]
             if velocity is None:
-                velocity = (self.motion or Motion()).velocities(count, draws, body)
+                motion = self.motion or Motion()
+                velocity = motion.turned(motion.velocities(count, draws, body), position)
             elif self.motion is not None:
                 self._refuse([_TWO_MOTIONS])
             weight = self._weight(body, count)

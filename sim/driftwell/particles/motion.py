@@ -14,6 +14,7 @@ from driftwell.forms import (
     Direction,
     Energy,
     Form,
+    Frequency,
     NonNegative,
     Positive,
     Temperature,
@@ -95,6 +96,13 @@ class Motion(Form):
         example="0.5 eV",
     )
 
+    rotation: Frequency = key(
+        "turns of the cloud as a whole about the z direction through its mean place; "
+        "positive from x to y",
+        default=0.0,
+        example="120 kHz",
+    )
+
     @checked
     def _consistent(self) -> Self:
         if self.velocity is not None and self.kinetic_energy is not None:
@@ -165,6 +173,14 @@ class Motion(Form):
         thermal = draws.stream("temperature").standard_normal((count, 3)).T * rms[:, None]
         return carried(thermal, directed) if self.directed() else thermal
 
+    def turned(self, velocity: Floats, position: Floats) -> Floats:
+        """Velocities (3, n) of charges at places (3, n), m, with the rotation of the whole."""
+        if not self.rotation:
+            return velocity
+        x, y, _ = position - position.mean(axis=1)[:, None]
+        about = 2.0 * math.pi * self.rotation * np.array([-y, x, np.zeros_like(x)])
+        return carried(velocity, proper_velocity(about))
+
     def _directed_velocities(self, count: int, draws: Draws, body: Body) -> Floats:
         if not self.directed():
             return np.zeros((3, count))
@@ -208,4 +224,6 @@ class Motion(Form):
             parts.append(f"energy spread {energy_in_words(self.energy_spread)} rms")
         if self.temperature is not None:
             parts.append(f"at {each_in_words(on_each_axis(self.temperature), 'K', ' / ')}")
+        if self.rotation:
+            parts.append(f"turning about z at {spelled(self.rotation, 'Hz')}")
         return ", ".join(parts) or "at rest"
