@@ -163,6 +163,10 @@ def test_another_version_is_refused_and_another_library_is_told(
     monkeypatch.setattr(earlier_module, "__version__", "99.0")
     assert 2 == run(tmp_path, *given)
     assert "and this is 99.0, whose steps may differ." in capsys.readouterr().err
+    monkeypatch.undo()
+    monkeypatch.setattr(earlier_module, "FORMAT_VERSION", 99)
+    assert 2 == run(tmp_path, *given)
+    assert "this driftwell writes 99. It can be read, but not gone on" in capsys.readouterr().err
 
 
 def test_what_a_run_left_that_sealed_nothing_is_begun_again(tmp_path: Path) -> None:

@@ -14,6 +14,7 @@ from driftwell.kernels.processor import processor
 from driftwell.record.claim import SCENARIO_FILE
 from driftwell.record.commit import remove_parts
 from driftwell.record.index import SEGMENTS, sealed_numbers
+from driftwell.record.layout import FORMAT_VERSION
 from driftwell.record.lock import held
 from driftwell.record.master import MASTER
 from driftwell.record.reader import Run, open_run
@@ -47,6 +48,11 @@ def earlier_run(folder: Path, scenario: bytes, digest: str) -> Run | None:
         raise RecordError(
             f"{folder}: begun by driftwell {header.driftwell_version}, and this is {__version__}, "
             f"whose steps may differ. Go on with that version, or begin anew: {_AGAIN}"
+        )
+    if header.format_version != FORMAT_VERSION:
+        raise RecordError(
+            f"{folder}: recorded in format {header.format_version}, and this driftwell writes "
+            f"{FORMAT_VERSION}. It can be read, but not gone on with; begin anew: {_AGAIN}"
         )
     _refuse_damaged(run)
     return run
