@@ -18,6 +18,7 @@ from driftwell.geometry.solid import Solid
 from driftwell.images.image_sum import Images
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
+from driftwell.particles.unborn import Unborn
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.loop import Events, TimeLoop, Traced
 from driftwell.stepping.motion import Fields
@@ -80,6 +81,7 @@ def loop(
     threads: int = 1,
     images: Images | None = None,
     bodies: Sequence[Sequence[Solid]] = (),
+    unborn: Unborn | None = None,
     state: Mapping[str, NDArray[Any]] | None = None,
     **stepping: Any,
 ) -> TimeLoop:
@@ -112,6 +114,7 @@ def loop(
         state,
         images,
         body_table(bodies),
+        unborn,
     )
 
 

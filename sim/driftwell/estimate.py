@@ -151,7 +151,7 @@ def estimate(
             half,
             record,
         )
-        ended = not len(loop.particles)
+        ended = loop.over
         done = loop.steps_done if ended else parts.schedule.total_steps
         return _whole(parts, summation, times, done, given, ended)
 

@@ -32,6 +32,7 @@ from driftwell.record.outcome import Outcome
 from driftwell.record.reader import Run, open_run
 from driftwell.record.resume_state import particles_of, particles_state
 from driftwell.record.rows import (
+    birth_rows,
     event_rows,
     ledger_row,
     moment_rows,
@@ -162,6 +163,12 @@ def run(
         return execution.result()
 
 
+def _present_in(state: dict[str, Any]) -> Particles:
+    """The charges in a state that are neither lost nor unborn."""
+    particles = particles_of(state)
+    return particles.kept(state["charges/alive"] == 1)
+
+
 def _told_again(earlier: Run) -> Result:
     """What a run came to that has ended."""
     watch = Promise(earlier.header.coulomb_accuracy, entries_below("coulomb", earlier.state()))
@@ -190,7 +197,7 @@ class _Execution:
         self._observer = observer
         self._clouds = parts.clouds
         self._walls = len(parts.walls)
-        self._born = len(parts.particles)
+        self._at_start = len(parts.particles)
         self._choice = parts.choice
         self._schedule = parts.schedule
         self._stop_after = stop_after
@@ -258,7 +265,7 @@ class _Execution:
                 self._writer.forget_last()
             elif self._state_at == self._reached and not self._flags & SNAPSHOT:
                 # questions about the end are answered for the last record
-                self._writer.last(self._reached, particles_of(self._state))
+                self._writer.last(self._reached, _present_in(self._state))
             return self._finished(word, sentence)
         except FullError as fault:
             return self._result(FULL, str(fault), [])
@@ -276,7 +283,7 @@ class _Execution:
                         f"{self._stopped}; recorded up to t = {reached}, and the same command "
                         "goes on."
                     )
-                gone = not self._loop.charges.alive.any()
+                gone = self._loop.over
                 self._record(int(mark), last=gone)
                 if gone:
                     word = ALL_LOST
@@ -316,8 +323,8 @@ class _Execution:
         return Progress(
             time=loop.time,
             duration=self._scenario.duration,
-            alive=int(np.count_nonzero(loop.charges.alive)),
-            born=self._born,
+            alive=loop.alive,
+            born=self._at_start + loop.born,
             steps=loop.steps_done,
             all_steps=self._schedule.total_steps,
             energy_residual=0.0 if self._row is None else self._row.energy_residual,
@@ -337,11 +344,12 @@ class _Execution:
         writer.ledger(ledger_row(self._row))
         self._keep_events()
         loop.remove_lost()
+        present = loop.present()
         if flags & RECORD or last:
-            writer.trajectory(time, track_rows(loop.particles, self._tracked))
-            writer.moments(time, moment_rows(loop.particles, self._clouds))
+            writer.trajectory(time, track_rows(present, self._tracked))
+            writer.moments(time, moment_rows(present, self._clouds))
         if flags & SNAPSHOT or last:
-            writer.snapshot(time, loop.particles)
+            writer.snapshot(time, present)
         writer.forget_last()
         self._keep_state()
         if writer.due(self._state_bytes):
@@ -353,6 +361,8 @@ class _Execution:
             losses, crossings = event_rows(events, self._walls, len(self._scenario.detector))
             self._writer.losses(losses)
             self._writer.crossings(crossings)
+        for born in self._loop.take_births():
+            self._writer.births(birth_rows(born))
         for times, values in self._loop.take_samples():
             self._writer.trace(times, values)
 

@@ -81,7 +81,7 @@ def timed_steps(loop: TimeLoop, seconds: float) -> Stretch:
 
     Raises StepError where the motion cannot be continued.
     """
-    alive = len(loop.particles)
+    alive = loop.alive
     marks = np.flatnonzero(loop.schedule.flags & (RECORD | SNAPSHOT))
     began = clocks.perf_counter()
     loop.to_mark(int(marks[-1]), _once())
@@ -89,7 +89,7 @@ def timed_steps(loop: TimeLoop, seconds: float) -> Stretch:
     loop.remove_lost()
     taken: list[tuple[int, float]] = []
     began = clocks.perf_counter()
-    for mark in marks[marks > loop.mark] if len(loop.particles) else ():
+    for mark in () if loop.over else marks[marks > loop.mark]:
         before = [(loop.steps_done, clocks.perf_counter())]
 
         def keep_going(before: list[tuple[int, float]] = before) -> bool:
@@ -100,9 +100,10 @@ def timed_steps(loop: TimeLoop, seconds: float) -> Stretch:
         before.append((loop.steps_done, clocks.perf_counter()))
         taken += [(last[0] - first[0], last[1] - first[1]) for first, last in pairwise(before)]
         loop.take_events()
+        loop.take_births()
         loop.take_samples()
         loop.remove_lost()
-        if not going or not len(loop.particles):
+        if not going or loop.over:
             break
     if not any(count for count, _ in taken):
         taken = [first]
@@ -110,7 +111,7 @@ def timed_steps(loop: TimeLoop, seconds: float) -> Stretch:
     whole = math.fsum(time for _, time in taken)
     paces = sorted(_paces(taken, whole / _PARTS))
     tenth = len(paces) // 10
-    return Stretch(steps, whole, paces[tenth], paces[-1 - tenth], alive, len(loop.particles))
+    return Stretch(steps, whole, paces[tenth], paces[-1 - tenth], alive, loop.alive)
 
 
 def _paces(taken: list[tuple[int, float]], least: float) -> list[float]:
@@ -205,8 +206,9 @@ class TimedRecord:
     def _rows(self) -> None:
         loop, writer = self._loop, self._writer
         writer.ledger(ledger_row(self._row))
-        writer.trajectory(loop.time, track_rows(loop.particles, self._tracked))
-        writer.moments(loop.time, moment_rows(loop.particles, self._parts.clouds))
+        present = loop.present()
+        writer.trajectory(loop.time, track_rows(present, self._tracked))
+        writer.moments(loop.time, moment_rows(present, self._parts.clouds))
 
     def _state(self) -> dict[str, Any]:
         kept = {f"ledger/{name}": item for name, item in self._ledger.state().items()}

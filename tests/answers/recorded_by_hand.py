@@ -19,6 +19,7 @@ MASS = 2.0e-25
 CHARGE = 1.602176634e-19
 
 LOSS = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
+BIRTH = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
 CROSSING = [("time", "f8"), ("id", "i8"), ("cloud", "i8"), ("detector", "i8"), ("direction", "i8")]
 
 
@@ -64,6 +65,7 @@ class Recorded:
     series: dict[str, Moments] = field(default_factory=dict)
     lost: np.ndarray = field(default_factory=lambda: table(LOSS, []))
     crossed: np.ndarray = field(default_factory=lambda: table(CROSSING, []))
+    borne: np.ndarray = field(default_factory=lambda: table(BIRTH, []))
     traced: dict[TraceRequest, tuple[np.ndarray, np.ndarray]] = field(default_factory=dict)
 
     def coulomb_error(self, until: float) -> float:
@@ -83,6 +85,15 @@ class Recorded:
 
     def crossings(self) -> np.ndarray:
         return self.crossed
+
+    def births(self) -> np.ndarray:
+        return self.borne
+
+    def born(self, cloud: str, until: float = np.inf) -> int:
+        facts = self.clouds[cloud]
+        if not facts.emitted:
+            return facts.count
+        return int(np.sum((self.borne["cloud"] == facts.index) & (self.borne["time"] <= until)))
 
     def trace(self, request: TraceRequest) -> tuple[np.ndarray, np.ndarray]:
         return self.traced[request]

@@ -18,7 +18,11 @@ Ints = NDArray[np.int64]
 
 @dataclass(frozen=True, slots=True)
 class CloudFacts:
-    """A cloud at its start: ids ``first_id <= id < first_id + count``; SI, of one real particle."""
+    """A cloud at its start: ids ``first_id <= id < first_id + count``; SI, of one real particle.
+
+    emitted : whether it is a source, whose charges are born in the run; `count` is then how many
+        it may bear at the most
+    """
 
     name: str
     index: int
@@ -28,6 +32,7 @@ class CloudFacts:
     weight: float
     first_id: int
     count: int
+    emitted: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -136,6 +141,12 @@ class Evidence(Protocol):
     def crossings(self) -> NDArray[np.void]:
         """Passages through detectors: fields time, id, cloud, detector, direction (+1 or -1),
         position (3), velocity (3)."""
+
+    def births(self) -> NDArray[np.void]:
+        """Charges that sources bore: fields time, id, cloud, position (3), velocity (3), weight."""
+
+    def born(self, cloud: str, until: float = np.inf) -> int:
+        """Simulated charges of a cloud or source that were there, or born, by a time, s."""
 
     def trace(self, request: TraceRequest) -> tuple[Floats, Floats]:
         """Times and values of a traced coordinate."""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, ClassVar, Literal
 
 from driftwell.answers.answer import Answer
@@ -116,10 +116,14 @@ def reached(time: float, evidence: Evidence) -> float:
 
 
 def cloud_named(evidence: Evidence, name: str) -> CloudFacts:
-    """The facts of a cloud. Raises AnswerError where there is none of that name."""
+    """The facts of a cloud; of a source `count` is the charges born.
+
+    Raises AnswerError where there is none of that name.
+    """
     if name not in evidence.clouds:
         raise AnswerError(f'there is no cloud "{name}"; known are {_listed(evidence.clouds)}')
-    return evidence.clouds[name]
+    facts = evidence.clouds[name]
+    return replace(facts, count=evidence.born(name)) if facts.emitted else facts
 
 
 def detector_named(evidence: Evidence, name: str) -> int:

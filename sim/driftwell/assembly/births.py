@@ -1,4 +1,4 @@
-"""The charges as they are born, and whether they may be there."""
+"""The charges at the start and those to be born, and whether they may be there."""
 
 from __future__ import annotations
 
@@ -11,7 +11,8 @@ from driftwell.answers.evidence import CloudFacts
 from driftwell.errors import ScenarioError
 from driftwell.forms.body import Body
 from driftwell.images.form import ClosedForm
-from driftwell.particles.state import Particles, joined
+from driftwell.particles.state import Particles, joined, no_particles
+from driftwell.particles.unborn import Unborn, all_unborn
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -52,15 +53,53 @@ def loaded_particles(
         )
         parts.append(part)
         first_id += len(part)
-    return joined(parts), clouds
+    return joined(parts) if parts else no_particles(), clouds
+
+
+def loaded_unborn(
+    loaded: LoadedScenario,
+    bodies: dict[str, Body],
+    names: Sequence[str],
+    conductors: Conductors,
+    first_id: int,
+) -> tuple[Unborn | None, list[CloudFacts]]:
+    """All charges that sources will bear, and the facts of these; None where there is no source.
+
+    first_id : the id of the first of them
+    """
+    scenario = loaded.scenario
+    setting = scenario.setting(loaded.folder)
+    parts: list[Unborn] = []
+    facts: list[CloudFacts] = []
+    for number, source in enumerate(scenario.source):
+        index, body = len(scenario.cloud) + number, bodies[source.species]
+        solids = conductors.own(source.emitter.electrode_named())
+        part = source.load(setting, first_id, index, names.index(source.species), solids)
+        weight = source.amount(setting).weight
+        facts.append(
+            CloudFacts(
+                source.name,
+                index,
+                source.species,
+                body.mass,
+                body.charge,
+                weight,
+                first_id,
+                len(part),
+                emitted=True,
+            )
+        )
+        parts.append(part)
+        first_id += len(part)
+    return all_unborn(parts) if parts else None, facts
 
 
 def check_births(scenario: Scenario, particles: Particles, conductors: Conductors) -> None:
     """Refuse charges born outside a wall that encloses a space, or inside an electrode."""
-    for index, cloud in enumerate(scenario.cloud):
+    for index in range(len(scenario.cloud) + len(scenario.source)):
         struck = conductors.struck(particles.position.T[particles.cloud == index])
         if struck:
-            raise ScenarioError(f'[[cloud]] "{cloud.name}": {struck}.')
+            raise ScenarioError(f"{_group(scenario, index)}: {struck}.")
     side = np.empty((len(scenario.wall), len(particles)), dtype=np.int8)
     sides(surface_table(scenario.wall, ()), particles.position, side)
     for wall, row in zip(scenario.wall, side, strict=True):
@@ -81,11 +120,19 @@ def _refuse_any(
     those = np.flatnonzero(wrong)
     if those.size:
         x, y, z = particles.position[:, those[0]]
-        cloud = scenario.cloud[int(particles.cloud[those[0]])].name
+        group = _group(scenario, int(particles.cloud[those[0]]))
         raise ScenarioError(
-            f'[[cloud]] "{cloud}": {those.size} of {len(particles)} charges {how}; the first is at '
+            f"{group}: {those.size} of {len(particles)} charges {how}; the first is at "
             f"({x:.6g}, {y:.6g}, {z:.6g}) m. {remedy}"
         )
+
+
+def _group(scenario: Scenario, index: int) -> str:
+    """A cloud or a source as messages name it."""
+    clouds = len(scenario.cloud)
+    if index < clouds:
+        return f'[[cloud]] "{scenario.cloud[index].name}"'
+    return f'[[source]] "{scenario.source[index - clouds].name}"'
 
 
 def edges_in(scenario: Scenario, acting: ActingField | None) -> Iterator[Edges]:

@@ -36,10 +36,15 @@ def chosen_pace(
     bodies: dict[str, Body],
     names: Sequence[str],
     particles: Particles,
+    everyone: Particles,
+    newcomers: Sequence[Rate],
     requests: Sequence[TraceRequest],
     acting: ActingField | None,
 ) -> tuple[StepChoice, float]:
-    """The step, and the time between samples of the traces."""
+    """The step, and the time between samples of the traces.
+
+    everyone : with those to be born, as they are born; newcomers : how fast these will move others
+    """
     stepping = scenario.stepping
     rates = [
         Rate(f'{name} of field "{field.name}" on {species}', value)
@@ -48,7 +53,7 @@ def chosen_pace(
         for name, value in _rates_of(field, bodies[species], bodies).items()
     ]
     if acting is not None:
-        rates += _rates_in(acting, bodies, names, particles)
+        rates += _rates_in(acting, bodies, names, everyone)
     fastest = max((rate.rate for rate in rates), default=0.0)
     every = min((request.every for request in requests if request.every), default=math.inf)
     if any(request.every is None for request in requests):
@@ -60,6 +65,7 @@ def chosen_pace(
         if scenario.coulomb.method != "off":
             rates += plasma_rates(particles)
             rates += closest_pair_rates(particles, scenario.coulomb.softening)
+            rates += newcomers
         mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
         choice = chosen_step(rates, stepping.steps_per_period, scenario.duration, mark)
     _refuse_too_many(scenario.duration, choice, every)

@@ -17,8 +17,10 @@ from driftwell.assembly.births import (
     check_within,
     edges_in,
     loaded_particles,
+    loaded_unborn,
 )
 from driftwell.assembly.marks import all_marks, all_traces, traced
+from driftwell.assembly.newcomers import source_rates
 from driftwell.assembly.pace import chosen_pace
 from driftwell.coulomb.summation import Summation
 from driftwell.fields.form import Role
@@ -30,7 +32,8 @@ from driftwell.images.form import ClosedForm, followed
 from driftwell.images.image_sum import Images
 from driftwell.images.importance import importance, remark
 from driftwell.particles.species import bodies as known_bodies
-from driftwell.particles.state import Particles
+from driftwell.particles.state import Particles, joined
+from driftwell.particles.unborn import Unborn
 from driftwell.record.header import Header, trace_name
 from driftwell.record.rows import tracked_ids
 from driftwell.scenario.conductors import Conductors
@@ -59,13 +62,14 @@ class Assembly:
     """What a run is made of, at time zero.
 
     species : names in the order of ``particles.species``
-    clouds : facts in the order of ``particles.cloud``
+    clouds : facts in the order of ``particles.cloud``: clouds, then sources
     requests : the coordinates to be traced, each once
     extent : how much of everything it is
     conductors : the electrodes as surfaces
     edges : where fields end that are known in a region only
     acting : the electrodes' solved field; None without electrodes
     images : the conductors that answer to the charges; None where none does
+    unborn : the charges that sources bear; None without sources
     """
 
     scenario: Scenario
@@ -81,6 +85,7 @@ class Assembly:
     edges: tuple[Edges, ...] = ()
     acting: ActingField | None = None
     images: Images | None = None
+    unborn: Unborn | None = None
 
     @property
     def walls(self) -> tuple[WallForm, ...]:
@@ -90,7 +95,8 @@ class Assembly:
     @property
     def tracked(self) -> NDArray[np.int64]:
         """Ids of the charges whose trajectories are kept."""
-        return tracked_ids(len(self.particles), self.scenario.record.tracks)
+        unborn = 0 if self.unborn is None else len(self.unborn)
+        return tracked_ids(len(self.particles) + unborn, self.scenario.record.tracks)
 
     def header(
         self, loaded: LoadedScenario, summation: Summation, threads: int, created: str
@@ -152,6 +158,7 @@ class Assembly:
             state,
             self.images,
             self.conductors.table,
+            self.unborn,
         )
 
     def image_remark(self) -> str | None:
@@ -165,6 +172,8 @@ class Assembly:
             return None
         estimates = []
         for cloud in self.clouds:
+            if cloud.emitted:
+                continue
             own = self.particles.kept(self.particles.cloud == cloud.index)
             estimates.append(
                 importance(
@@ -194,20 +203,37 @@ def assembled(
     """
     scenario = loaded.scenario
     bodies = known_bodies(scenario.species)
-    species = tuple(dict.fromkeys(cloud.species for cloud in scenario.cloud))
+    kinds = [cloud.species for cloud in scenario.cloud]
+    species = tuple(dict.fromkeys([*kinds, *(source.species for source in scenario.source)]))
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = loaded_particles(loaded, bodies, species)
     conductors = Conductors.of(scenario, loaded.folder)
-    check_births(scenario, particles, conductors)
-    check_sides(scenario, particles)  # before anything is solved
+    unborn, sources = loaded_unborn(loaded, bodies, species, conductors, len(particles))
+    clouds += sources
+    everyone = particles if unborn is None else joined([particles, unborn.particles])
+    check_births(scenario, everyone, conductors)
+    check_sides(scenario, everyone)  # before anything is solved
     acting = acting_field(scenario, loaded.folder, told)
     edges = tuple(edges_in(scenario, acting))
-    check_within(scenario, particles, edges)
+    check_within(scenario, everyone, edges)
     requests = all_traces(scenario)
-    choice, every = chosen_pace(scenario, bodies, species, particles, requests, acting)
+    emitting = [
+        (
+            source,
+            conductors.own(source.emitter.electrode_named()),
+            everyone.kept(everyone.cloud == facts.index),
+        )
+        for source, facts in zip(scenario.source, sources, strict=True)
+    ]
+    setting, softening = scenario.setting(loaded.folder), scenario.coulomb.softening
+    newcomers = source_rates(emitting, setting, softening)
+    choice, every = chosen_pace(
+        scenario, bodies, species, particles, everyone, newcomers, requests, acting
+    )
     samples = scenario.duration / every if requests else 0.0
-    extent = extent_of(scenario, charges, int(samples), len(requests))
+    born = 0 if unborn is None else len(unborn)
+    extent = extent_of(scenario, charges, int(samples), len(requests), born)
     bordering = sum(len(each.walls()) for each in edges)
     extent = replace(extent, surfaces=extent.surfaces + bordering)
     if not warned:
@@ -226,7 +252,8 @@ def assembled(
         conductors,
         edges,
         acting,
-        _images(scenario, conductors, particles, choice),
+        _images(scenario, conductors, everyone, choice),
+        unborn,
     )
 
 

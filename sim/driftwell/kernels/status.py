@@ -16,3 +16,5 @@ COLLAPSE = 5
 """Two opposite charges came closer than the step can follow."""
 OVERFLOW = 6
 """A step met more surfaces than the event buffer can hold: the step is far too long."""
+NEED_BIRTHS = 7
+"""Charges are due that have no place in the arrays yet; lay them out and call again."""

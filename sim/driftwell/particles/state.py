@@ -57,6 +57,14 @@ class Particles:
         )
 
 
+def no_particles() -> Particles:
+    """An empty set."""
+    none, whole = np.zeros(0), np.zeros(0, dtype=np.int64)
+    return Particles(
+        np.zeros((3, 0)), np.zeros((3, 0)), none, none, none, whole, whole, whole, none
+    )
+
+
 def joined(parts: Sequence[Particles]) -> Particles:
     """Several sets of particles as one; ids are kept as they are."""
     return Particles(

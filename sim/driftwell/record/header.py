@@ -130,7 +130,10 @@ def header_of(file: Any) -> Header:
     digest = values.pop("scenario_sha256")
     entry = dataset("clouds")
     header = Header(
-        clouds=tuple(CloudFacts(**row) for row in table_rows(entry, file["clouds"][()])),
+        clouds=tuple(
+            CloudFacts(**row | {"emitted": bool(row.get("emitted", 0))})
+            for row in table_rows(entry, file["clouds"][()])
+        ),
         tracked=tuple(file["trajectory/id"][()].tolist()),
         **{each.name: values[each.name] for each in fields(Header) if each.name in values},
     )

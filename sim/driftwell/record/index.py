@@ -83,7 +83,7 @@ def index_of(file: Any) -> list[SegmentFacts]:
             row["sha256"],
             row["start"],
             row["end"],
-            {counter: row[f"rows_{counter}"] for counter in COUNTERS},
+            {counter: row.get(f"rows_{counter}", 0) for counter in COUNTERS},
             tuple(snapshots.get(row["number"], ())),
         )
         for row in table_rows(dataset("index/segment"), file["index/segment"][()])
@@ -92,7 +92,9 @@ def index_of(file: Any) -> list[SegmentFacts]:
 
 def facts_of(file: Any, size: int) -> SegmentFacts:
     """The facts of an open segment that the master does not list; `size` : bytes of the file."""
-    rows = {entry.shape[0]: file[entry.path].shape[0] for entry in ROWS}
+    rows = {
+        entry.shape[0]: file[entry.path].shape[0] if entry.path in file else 0 for entry in ROWS
+    }
     numbers = sorted(int(name) for name in file["snapshot"])
     return SegmentFacts(
         int(file.attrs["segment"]),

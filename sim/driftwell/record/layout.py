@@ -215,6 +215,19 @@ ROWS = (
             Column("weight", "float64", "1", "real particles the charge stands for"),
         ),
     ),
+    Dataset(
+        "births",
+        ("births",),
+        "one row for each charge that a source bore",
+        columns=(
+            Column("time", "float64", "s", "time of the birth"),
+            Column("id", "int64", "1", "id of the charge"),
+            Column("cloud", "int64", "1", "index in `clouds`"),
+            Column("position", "float64", "m", "place of the birth", (3,)),
+            Column("velocity", "float64", "m/s", "proper velocity at the birth", (3,)),
+            Column("weight", "float64", "1", "real particles the charge stands for"),
+        ),
+    ),
     Dataset("trace/time", ("samples",), "time of each sample of the traces", unit="s"),
     Dataset(
         "trace/value",
@@ -225,7 +238,7 @@ ROWS = (
 )
 """Datasets that grow: each segment holds the next rows, the master shows them in one piece."""
 
-COUNTERS = ("records", "moments", "ledger", "losses", "crossings", "samples")
+COUNTERS = ("records", "moments", "ledger", "losses", "crossings", "births", "samples")
 """The lengths of the datasets that grow, by the word that stands for them in their shapes."""
 
 FIXED = (
@@ -233,7 +246,7 @@ FIXED = (
     Dataset(
         "clouds",
         ("clouds",),
-        "the clouds at their start; a cloud's ids are first_id <= id < first_id + count",
+        "the clouds at their start, then the sources; ids are first_id <= id < first_id + count",
         columns=(
             Column("name", "text", "", "name in the scenario"),
             Column("index", "int64", "1", "index wherever a cloud is named by number"),
@@ -242,7 +255,8 @@ FIXED = (
             Column("charge", "float64", "C", "of one real particle"),
             Column("weight", "float64", "1", "real particles each simulated one stands for"),
             Column("first_id", "int64", "1", "lowest id"),
-            Column("count", "int64", "1", "simulated charges"),
+            Column("count", "int64", "1", "simulated charges; of a source all it may bear"),
+            Column("emitted", "int64", "1", "1 for a source, whose charges are born in the run"),
         ),
     ),
 )

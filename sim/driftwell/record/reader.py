@@ -226,6 +226,23 @@ class Run:
         position (3), velocity (3), weight."""
         return self.rows("crossings")
 
+    def births(self) -> NDArray[np.void]:
+        """Charges that sources bore: fields time, id, cloud, position (3), velocity (3), weight."""
+        return self.rows("births")
+
+    def born(self, cloud: str, until: float = np.inf) -> int:
+        """Simulated charges of a cloud or source that were there, or born, by a time, s."""
+        if cloud not in self.clouds:
+            raise AnswerError(
+                f'{self.folder}: no cloud "{cloud}"; clouds are {_listed(self.clouds)}.'
+            )
+        facts = self.clouds[cloud]
+        if not facts.emitted:
+            return facts.count
+        rows = self.births()
+        near = TIME_TOLERANCE * self.header.duration
+        return int(np.sum((rows["cloud"] == facts.index) & (rows["time"] <= until + near)))
+
     def trace(self, request: TraceRequest) -> tuple[Floats, Floats]:
         """Times (s) and values (m) of a traced coordinate, however finely it was asked for.
 

@@ -16,6 +16,7 @@ from driftwell.particles.state import Particles
 from driftwell.record.form import DEFAULT_TRACKS
 from driftwell.record.layout import dataset
 from driftwell.stepping.loop import Events
+from driftwell.stepping.pools import Born
 
 
 def tracked_ids(count: int, wanted: int | None) -> NDArray[np.int64]:
@@ -64,6 +65,14 @@ def row_of(stored: np.void) -> LedgerRow:
         for name in stored.dtype.names or ()
     }
     return LedgerRow(**values)
+
+
+def birth_rows(born: Born) -> NDArray[Any]:
+    """Charges born, as the record keeps them."""
+    rows = np.zeros(born.id.size, dataset("births").dtype())
+    for name in rows.dtype.names or ():
+        rows[name] = getattr(born, name)
+    return rows
 
 
 def event_rows(events: Events, walls: int, detectors: int) -> tuple[NDArray[Any], NDArray[Any]]:

@@ -83,10 +83,11 @@ def _clouds(run: Run) -> list[str]:
     lines = []
     for cloud in run.header.clouds:
         mine = losses[losses["cloud"] == cloud.index]
-        line = f"{cloud.name}: {cloud.count} {cloud.species}"
+        born = run.born(cloud.name)
+        line = f"{cloud.name}: {born} {cloud.species}{' born' * cloud.emitted}"
         if cloud.weight != 1.0:
             line += f", each standing for {cloud.weight:.6g}"
-        line += f"; {cloud.count - len(mine)} left"
+        line += f"; {born - len(mine)} left"
         for index, name in enumerate(run.header.walls):
             count = np.count_nonzero(mine["wall"] == index)
             line += f", {count} lost on {name}" if count else ""

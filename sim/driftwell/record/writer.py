@@ -143,6 +143,10 @@ class RunWriter:
         """Record passages through detectors, rows of the layout's type."""
         self._pending.add("crossings", rows)
 
+    def births(self, rows: NDArray[Any]) -> None:
+        """Record charges born, rows of the layout's type."""
+        self._pending.add("births", rows)
+
     def trace(self, times: ArrayLike, values: ArrayLike) -> None:
         """Record samples of the traces: `times` (k,), s, and `values` (k, traces), m."""
         sampled = np.asarray(times, np.float64)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -51,7 +51,10 @@ def scene_of(run: Run) -> Scene:
     first, last = _ends(run)
     return Scene(
         run=run,
-        clouds=run.header.clouds,
+        clouds=tuple(
+            replace(cloud, count=run.born(cloud.name)) if cloud.emitted else cloud
+            for cloud in run.header.clouds
+        ),
         start=first,
         end=last,
         moments=tuple(run.moments(cloud.name) for cloud in run.header.clouds),
@@ -79,6 +82,8 @@ def _sealed(run: Run) -> Snapshot | None:
     if "particles/position" not in state:
         return None
     particles = particles_of(state)
+    if "charges/alive" in state:
+        particles = particles.kept(state["charges/alive"] == 1)
     return Snapshot(
         run.end_time,
         particles.id,

@@ -11,6 +11,7 @@ from driftwell.forms.body import Body
 from driftwell.forms.declared import Choice, Declared, Dimensioned, declared_keys
 from driftwell.forms.waveforms import largest_value
 from driftwell.particles.cloud import Cloud
+from driftwell.particles.source import Source
 from driftwell.particles.species import bodies
 from driftwell.scenario.model import Scenario
 
@@ -25,7 +26,8 @@ STRONG_MAGNET = 0.5
 def cautions(scenario: Scenario) -> list[str]:
     """The hazards of what is simulated and whom to ask, one sentence each; empty where none."""
     known = bodies(scenario.species)
-    light = [cloud for cloud in scenario.cloud if _is_electron(known[cloud.species])]
+    groups: list[Cloud | Source] = [*scenario.cloud, *scenario.source]
+    light = [group for group in groups if _is_electron(known[group.species])]
     powered = (*scenario.field, *scenario.electrode)
     voltage = max((abs(v) for each in powered for v in _values(each, "V")), default=0.0)
     magnet = max((_flux_density(field) for field in scenario.field), default=0.0)
@@ -60,8 +62,8 @@ def _flux_density(field: FieldForm) -> float:
     return max(field.strongest(), *_values(field, "T"), 0.0)
 
 
-def _energy(cloud: Cloud, known: Mapping[str, Body]) -> float:
-    """Largest kinetic energy a cloud is given at the start, J."""
+def _energy(cloud: Cloud | Source, known: Mapping[str, Body]) -> float:
+    """Largest kinetic energy a cloud or a source is given at the start, J."""
     moving = 0.0 if cloud.motion is None else cloud.motion.mean_energy(known[cloud.species])
     return max(moving, *_values(cloud, "J"), 0.0)
 

@@ -43,6 +43,10 @@ class Conductors:
         bodies = bodies_of(common, scenario.electrode, folder)
         return cls(names_of(common, scenario.electrode), tuple(bodies), body_table(bodies), inner)
 
+    def own(self, name: str | None) -> tuple[Solid, ...]:
+        """The bodies of one electrode; none where there is none of that name."""
+        return self.bodies[self.names.index(name)] if name in self.names else ()
+
     def struck(self, places: Floats) -> str:
         """What is wrong with charges that begin at places (n, 3), m; empty where nothing is.
 

@@ -15,7 +15,7 @@ from driftwell.forms.faults import Fault
 from driftwell.images.electrodes import ElectrodeImages
 from driftwell.particles.cloud import Amount
 from driftwell.particles.species import bodies
-from driftwell.particles.state import LARGEST_COUNT
+from driftwell.particles.state import LARGEST_COUNT, Particles
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 
@@ -46,6 +46,13 @@ def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
         for i, cloud in enumerate(scenario.cloud)
         for fault in cloud.faults(known, folder)
     ]
+    setting = scenario.setting(folder)
+    of_clouds += [
+        Fault(("source", i, *fault.path), fault.found, fault.needed)
+        for i, source in enumerate(scenario.source)
+        for fault in source.faults(setting)
+    ]
+    faults += _emission_faults(scenario)
     if not of_clouds:
         conductors = None if of_electrodes else Conductors.of(scenario, folder)
         of_clouds = _place_faults(scenario, folder, conductors)
@@ -96,10 +103,23 @@ def _image_faults(scenario: Scenario) -> Iterator[Fault]:
         yield Fault(("images", "length"), "", text)
 
 
+def _emission_faults(scenario: Scenario) -> Iterator[Fault]:
+    """Sources that are to be limited by space charge, and would not know of it."""
+    for i, source in enumerate(scenario.source):
+        if not source.space_charge_limited:
+            continue
+        path = ("source", i, "space_charge_limited")
+        if scenario.coulomb.method == "off":
+            yield Fault(path, "true", "needs the charges' own field: [coulomb] method is off")
+        if scenario.images is None:
+            text = "needs [images]: without the charge they induce the surface's field is not known"
+            yield Fault(path, "true", text)
+
+
 def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Iterator[Fault]:
-    counts = {
-        cloud.name: amount.count for cloud, amount in zip(scenario.cloud, amounts, strict=True)
-    }
+    names = [cloud.name for cloud in scenario.cloud]
+    names += [source.name for source in scenario.source]
+    counts = {name: amount.count for name, amount in zip(names, amounts, strict=True)}
     for i, question in enumerate(scenario.question):
         for cloud, number in question.refers_to().charges:
             if number >= counts[cloud]:
@@ -113,12 +133,14 @@ def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Itera
 def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | None) -> list[Fault]:
     """Faults of the charges as they are born; clouds must be without faults of their own."""
     known = bodies(scenario.species)
+    setting = scenario.setting(folder)
     amounts = [cloud.amount(known, folder) for cloud in scenario.cloud]
+    amounts += [source.amount(setting) for source in scenario.source]
     named = list(_named_charge_faults(scenario, amounts))
     total = sum(amount.count for amount in amounts)
     if total > LARGEST_COUNT:
         text = f"{total} charges in all clouds; needs at most {LARGEST_COUNT}: raise the weights"
-        return [Fault(("cloud",), "", text)]
+        return [Fault(("cloud" if scenario.cloud else "source",), "", text)]
     if total > _FEW or named:
         return named
     faults = []
@@ -132,19 +154,42 @@ def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | Non
             continue
         places.append(born.position.T)
         owner += [(i, k) for k in range(len(born))]
-        x, y, z = born.position
-        farthest = float(np.hypot(np.hypot(x, y), z).max())
-        if farthest > scenario.stepping.extent:
-            text = (
-                f"has charges {spelled(farthest, 'm')} from the origin, farther than "
-                f"[stepping] extent, {spelled(scenario.stepping.extent, 'm')}"
-            )
-            faults.append(Fault(("cloud", i), "", text))
-        if conductors is not None and (told := conductors.struck(born.position.T)):
-            faults.append(Fault(("cloud", i), "", told))
+        faults += _birth_faults(scenario, ("cloud", i), born, conductors)
+    for i, source in enumerate(scenario.source):
+        on = source.emitter.electrode_named()
+        if on is not None and conductors is None:
+            continue
+        solids = () if conductors is None else conductors.own(on)
+        try:
+            unborn = source.load(setting, 0, i, 0, solids)
+        except ScenarioError as fault:
+            faults.append(Fault(("source", i), "", _without_place(str(fault), source.name)))
+            continue
+        faults += _birth_faults(scenario, ("source", i), unborn.particles, conductors)
     if scenario.coulomb.method != "off" and scenario.coulomb.softening == 0.0 and places:
         faults += _same_places(scenario, np.concatenate(places), owner)
     return faults
+
+
+def _without_place(text: str, name: str) -> str:
+    """A message without the section it begins with: the reader says that."""
+    return text.splitlines()[0].removeprefix(f'[[source]] "{name}": ')
+
+
+def _birth_faults(
+    scenario: Scenario, path: tuple[str | int, ...], born: Particles, conductors: Conductors | None
+) -> Iterator[Fault]:
+    """Charges that begin beyond the extent or inside an electrode."""
+    x, y, z = born.position
+    farthest = float(np.hypot(np.hypot(x, y), z).max(initial=0.0))
+    if farthest > scenario.stepping.extent:
+        text = (
+            f"has charges {spelled(farthest, 'm')} from the origin, farther than "
+            f"[stepping] extent, {spelled(scenario.stepping.extent, 'm')}"
+        )
+        yield Fault(path, "", text)
+    if conductors is not None and (told := conductors.struck(born.position.T)):
+        yield Fault(path, "", told)
 
 
 def _same_places(

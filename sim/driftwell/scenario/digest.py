@@ -10,7 +10,7 @@ from driftwell.errors import ScenarioError
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.source import shown_path
 
-LATER = ("electrodes", "electrode", "images")
+LATER = ("electrodes", "electrode", "images", "source")
 """Sections left out where they are not used: scenarios from before keep their digests."""
 
 
@@ -20,6 +20,7 @@ def digest(scenario: Scenario, folder: Path) -> str:
     Comments, order, units and whether a default is written out make no difference.
     """
     named = [name for cloud in scenario.cloud for name in cloud.files_named()]
+    named += [name for source in scenario.source for name in source.files_named()]
     named += [name for field in scenario.field for name in field.files_named()]
     named += [
         name for each in scenario.electrode for shape in each.shape for name in shape.files_named()

@@ -49,6 +49,8 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
         yield "species", name, species.words()
     for cloud in scenario.cloud:
         yield "cloud", cloud.name, cloud.words(known, loaded.folder)
+    for source in scenario.source:
+        yield "source", source.name, source.words(scenario.setting(loaded.folder))
     for field in scenario.field:
         yield "field", field.name, field.words()
     if scenario.electrode:
@@ -122,11 +124,13 @@ def _record_words(scenario: Scenario) -> str:
 def _notes(loaded: LoadedScenario) -> Iterator[str]:
     """What is allowed, but may not be meant."""
     scenario = loaded.scenario
-    known = bodies(scenario.species)
+    known, setting = bodies(scenario.species), scenario.setting(loaded.folder)
+    amounts = [(cloud.name, cloud.amount(known, loaded.folder)) for cloud in scenario.cloud]
+    amounts += [(source.name, source.amount(setting)) for source in scenario.source]
     heavy = [
-        (cloud.name, amount.weight)
-        for cloud in scenario.cloud
-        if (amount := cloud.amount(known, loaded.folder)).weight > 1.0 and amount.count > 1
+        (name, amount.weight)
+        for name, amount in amounts
+        if amount.weight > 1.0 and amount.count > 1
     ]
     softened = scenario.coulomb.softening > 0.0 or scenario.coulomb.method == "off"
     if heavy and not softened:

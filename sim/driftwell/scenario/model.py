@@ -15,6 +15,7 @@ from driftwell.forms import Count, Form, Name, NonNegative, Positive, Time, Titl
 from driftwell.images.form import ImagesForm
 from driftwell.images.table import IMAGE_KINDS
 from driftwell.particles.cloud import Cloud
+from driftwell.particles.source import Setting, Source
 from driftwell.particles.species import SpeciesForm, bodies
 from driftwell.record.form import Record
 from driftwell.stepping.form import Stepping
@@ -45,6 +46,9 @@ class Scenario(Form):
         "kinds of particles beside those known by name, each as [species.NAME]", default={}
     )
     cloud: tuple[Cloud, ...] = key("groups of charges present from the start", default=())
+    source: tuple[Source, ...] = key(
+        "charges born while the run goes on, each at its own time", default=()
+    )
     field: tuple[AnyField, ...] = key("what pushes the charges from outside", default=())
     electrodes: Electrodes | None = key(
         "what all electrodes have in common: how they are drawn, how well their field is known",
@@ -64,6 +68,11 @@ class Scenario(Form):
     question: tuple[AnyQuestion, ...] = key("what the run is asked", default=())
 
     def charges(self, folder: Path) -> int:
-        """Number of simulated charges at the start; files that are named count from `folder`."""
-        known = bodies(self.species)
-        return sum(cloud.amount(known, folder).count for cloud in self.cloud)
+        """Number of simulated charges, at the start and to be born; files count from `folder`."""
+        known, setting = bodies(self.species), self.setting(folder)
+        there = sum(cloud.amount(known, folder).count for cloud in self.cloud)
+        return there + sum(source.amount(setting).count for source in self.source)
+
+    def setting(self, folder: Path) -> Setting:
+        """What sources are seen with; files that are named count from `folder`."""
+        return Setting(self.seed, self.duration, bodies(self.species), folder)

@@ -18,7 +18,7 @@ from driftwell.scenario.places import entry_name
 
 Path = tuple[str | int, ...]
 
-NAMED_SECTIONS = ("cloud", "field", "electrode", "wall", "detector", "question")
+NAMED_SECTIONS = ("cloud", "source", "field", "electrode", "wall", "detector", "question")
 SURFACES = ("wall", "detector")
 _SHOWN = 12
 
@@ -26,8 +26,11 @@ _SHOWN = 12
 def reference_faults(data: Mapping[str, Any]) -> list[Fault]:
     """Names used twice, and names that are used but not there."""
     faults = [fault for section in NAMED_SECTIONS for fault in _used_twice(data, section)]
-    if not data.get("cloud"):
-        faults.append(Fault(("cloud",), "", "missing; needs at least one group of charges"))
+    if not data.get("cloud") and not data.get("source"):
+        text = "missing; needs at least one group of charges, or a [[source]]"
+        faults.append(Fault(("cloud",), "", text))
+    faults += _same_as_clouds(data)
+    faults += _unknown_electrodes(data)
     faults += _same_as_surfaces(data)
     faults += _unknown_species(data)
     faults += _unknown_in_questions(data)
@@ -73,10 +76,31 @@ def _same_as_surfaces(data: Mapping[str, Any]) -> Iterator[Fault]:
             yield Fault(path, as_found(name), f"is the name of {taken[name]} already")
 
 
+def _same_as_clouds(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Questions ask of sources as of clouds: a name is one of them."""
+    taken = _names(data, "cloud")
+    for i, entry in _entries(data, "source"):
+        name = entry_name(entry)
+        if name in taken:
+            path = ("source", i, "name")
+            yield Fault(path, as_found(name), "is the name of a [[cloud]] already")
+
+
+def _unknown_electrodes(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Electrodes that sources are to emit from."""
+    known = _names(data, "electrode")
+    for i, entry in _entries(data, "source"):
+        emitter = entry.get("emitter")
+        name = emitter.get("electrode") if isinstance(emitter, Mapping) else None
+        if isinstance(name, str) and name not in known:
+            path = ("source", i, "emitter", "electrode")
+            yield _unknown(path, name, "[[electrode]]", known, f"; {_there(known)}")
+
+
 def _unknown_species(data: Mapping[str, Any]) -> Iterator[Fault]:
     declared = data.get("species")
     own = [str(name) for name in declared] if isinstance(declared, Mapping) else []
-    for section in ("cloud", "field"):
+    for section in ("cloud", "source", "field"):
         for i, entry in _entries(data, section):
             for path, name in _texts_at("species", entry, (section, i)):
                 if name not in own and name not in BUILT_IN:
@@ -96,6 +120,8 @@ def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:
         refers = question.refers_to()
         for section, names in (("cloud", refers.clouds), ("detector", refers.detectors)):
             known = _names(data, section)
+            if section == "cloud":
+                known += _names(data, "source")
             there = _there(known)
             for name in names:
                 if name not in known:

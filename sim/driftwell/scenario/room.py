@@ -53,6 +53,7 @@ class Extent:
 
     surfaces : walls, detectors, and one for all electrodes; detectors : those among them
     images : bytes that sums over images take
+    births : charges, of all, that are born on the way
     """
 
     charges: int
@@ -66,6 +67,7 @@ class Extent:
     coulomb: Coulomb
     detectors: int = 0
     images: int = 0
+    births: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -90,6 +92,7 @@ class Extent:
             + (self.records + self.snapshots) * dtype("ledger").itemsize
             + self.samples * (self.traces + 1) * 8
             + self.snapshots * (self.charges * SNAPSHOT + SNAPSHOT_BASE)
+            + self.births * dtype("births").itemsize
         )
 
     def state(self) -> int:
@@ -119,13 +122,18 @@ class Extent:
         return self.charges * (self.detectors * crossing + walls * loss)
 
 
-def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 0) -> Extent:
-    """How much a run of so many charges is, with so many samples of so many traces."""
+def extent_of(
+    scenario: Scenario, charges: int, samples: int = 0, traces: int = 0, births: int = 0
+) -> Extent:
+    """How much a run of so many charges is, with so many samples of so many traces.
+
+    births : how many of the charges are born on the way
+    """
     duration, record = scenario.duration, scenario.record
     return Extent(
         charges=charges,
         tracked=min(charges, DEFAULT_TRACKS if record.tracks is None else record.tracks),
-        clouds=len(scenario.cloud),
+        clouds=len(scenario.cloud) + len(scenario.source),
         surfaces=len(scenario.wall) + len(scenario.detector) + bool(scenario.electrode),
         records=int(duration / (record.every or duration / DEFAULT_RECORDS)) + 2,
         samples=samples,
@@ -134,6 +142,7 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         coulomb=scenario.coulomb,
         detectors=len(scenario.detector),
         images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
+        births=births,
     )
 
 

@@ -5,8 +5,9 @@ detectors look at it. Where the Coulomb kick is taken every m-th step only (impu
 stepping), m steps of the fields alone stand between two half kicks of length m h / 2.
 
 A call returns at the asked mark, when its budget of steps is used up, when the event buffer could
-overflow, or with a failing status. Where it returns makes no difference to a single bit of the
-result: everything that is pending stands in the work arrays and the cursor.
+overflow, when charges are due that have no place yet, or with a failing status. Where it returns
+makes no difference to a single bit of the result: everything that is pending stands in the work
+arrays and the cursor.
 
 References
 ----------
@@ -30,6 +31,7 @@ from driftwell.kernels.status import (
     COLLAPSE,
     DONE,
     EVENTS_FULL,
+    NEED_BIRTHS,
     NOT_FINITE,
     OVERFLOW,
     PAUSED,
@@ -37,6 +39,7 @@ from driftwell.kernels.status import (
 )
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
+from driftwell.stepping.births import Births, close_births, take_births
 from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
@@ -47,6 +50,7 @@ from driftwell.stepping.motion import (
     CURSOR_FRESH,
     CURSOR_INTERVAL,
     CURSOR_JUMPED,
+    CURSOR_NEWBORN,
     CURSOR_OVERFLOW,
     CURSOR_STEP,
     CURSOR_STEPS,
@@ -79,6 +83,7 @@ RESOLVED = 0.3
 def burst(
     pair_sum: PairSum,
     images: CompiledFunction,
+    bearing: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
@@ -86,6 +91,7 @@ def burst(
     surfaces: SurfaceTable,
     bodies: BodyTable,
     charges: Charges,
+    births: Births,
     trace: Trace,
     time: np.ndarray,
     flags: np.ndarray,
@@ -138,6 +144,25 @@ def burst(
                     t = end if k == stages else start + scheme.node[k] * h
                     way = scheme.drift[k - 1] * h
                     move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
+                    if k == stages:
+                        closing = scheme.kick[stages] * h
+                        ahead = (every - 1 - cursor[CURSOR_STEP] % every) * h
+                        take_births(
+                            bearing,
+                            pair_sum,
+                            images,
+                            plan,
+                            fields,
+                            surfaces,
+                            charges,
+                            births,
+                            end,
+                            inside,
+                            h,
+                            closing,
+                            ahead,
+                            work,
+                        )
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
@@ -191,6 +216,12 @@ def burst(
                         return PAUSED
                     if surfaced and cursor[CURSOR_EVENTS] > free:
                         return EVENTS_FULL
+                    until_next = time[j] + (cursor[CURSOR_STEP] + every) * h
+                    if cursor[CURSOR_STEP] + every == steps[j]:
+                        until_next = time[j + 1]
+                    if births.horizon[0] < until_next:
+                        settle(work.rate, work.pending, work.total, work.carry)
+                        return NEED_BIRTHS
                     if every > 1:
                         half = 0.5 * every * h
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
@@ -202,6 +233,8 @@ def burst(
                 if together and plan.images != 0:
                     enter_images(length, work)
                 work.pending[0] += length
+            if cursor[CURSOR_NEWBORN] > 0:
+                close_births(charges, births, work)
             cursor[CURSOR_STEP] += 1
             cursor[CURSOR_STEPS] += 1
             budget -= 1
@@ -290,12 +323,12 @@ def _sample(charges: Charges, trace: Trace, t: float, work: Work) -> None:
         x = charges.position[trace.axis[k]]
         i = trace.which[k]
         if i >= 0:
-            trace.value[row, k] = x[i] if charges.alive[i] != 0 else np.nan
+            trace.value[row, k] = x[i] if charges.alive[i] == 1 else np.nan
         elif i == -1:
             total = 0.0
             count = 0
             for m in range(x.size):
-                if charges.cloud[m] == trace.cloud[k] and charges.alive[m] != 0:
+                if charges.cloud[m] == trace.cloud[k] and charges.alive[m] == 1:
                     total += x[m]
                     count += 1
             trace.value[row, k] = total / count if count > 0 else np.nan

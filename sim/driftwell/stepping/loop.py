@@ -28,22 +28,27 @@ from driftwell.kernels.status import (
     COLLAPSE,
     DONE,
     EVENTS_FULL,
+    NEED_BIRTHS,
     NOT_FINITE,
     OVERFLOW,
     PAUSED,
     RUNAWAY,
 )
 from driftwell.particles.state import Particles
+from driftwell.particles.unborn import Unborn
+from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
+    CURSOR_BIRTH,
     CURSOR_EVENTS,
     CURSOR_FRESH,
     CURSOR_INTERVAL,
     CURSOR_STEP,
     CURSOR_STEPS,
     CURSOR_TRACES,
+    WAITING,
     Fields,
     Plan,
     Trace,
@@ -51,6 +56,7 @@ from driftwell.stepping.motion import (
     work_space,
 )
 from driftwell.stepping.passes import passes_over
+from driftwell.stepping.pools import Born, Pools, merged
 from driftwell.stepping.schedule import TRACE, Schedule
 from driftwell.stepping.schemes import SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
@@ -95,7 +101,8 @@ class TimeLoop:
     Attributes
     ----------
     particles : Particles
-        The charges, in the order of their ids; lost ones until :meth:`remove_lost`.
+        The charges, in the order of their ids; lost ones until :meth:`remove_lost`, and those of
+        the next births, waiting; :meth:`present` leaves both out.
     charges, work :
         What the compiled loop works on; the ledger reads them.
     summation : Summation
@@ -117,20 +124,27 @@ class TimeLoop:
         state: Mapping[str, NDArray[Any]] | None = None,
         images: Images | None = None,
         bodies: BodyTable | None = None,
+        unborn: Unborn | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
+        unborn : charges that are born on the way
         """
         self.particles = particles
+        self._pools = Pools(unborn, {} if state is None else entries_below("births", state))
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
         self._bodies = body_table(()) if bodies is None else searched(bodies)
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
-        both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
+        charge, most = particles.charge, len(particles)
+        if unborn is not None:
+            charge = np.concatenate([charge, unborn.particles.charge])
+            most += len(unborn)
+        both_signs = bool((charge > 0).any() and (charge < 0).any())
         self.plan = Plan(
             coulomb=int(coulomb.method != "off"),
             coulomb_every=stepping.coulomb_every,
@@ -146,19 +160,25 @@ class TimeLoop:
         self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
-        self.summation = Summation(coulomb, len(particles), threads, manner=manner)
+        self.summation = Summation(coulomb, most, threads, manner=manner)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
         self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
         self.work = work_space(0, 0, room((1, 1)), False, False)
         self._events: list[Events] = []
+        self._births: list[Born] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
         self._budget = 1
+        if state is not None:
+            self.work.cursor[CURSOR_BIRTH] = state["schedule/cursor"][CURSOR_BIRTH]
+        elif unborn is not None:
+            self.particles = merged(particles, self._pools.admitted(0, len(particles)))
         self._arrange()
         if state is not None:
             self._take_up(state)
             return
-        sides(self._surfaces, particles.position, self.work.side)
+        sides(self._surfaces, self.particles.position, self.work.side)
+        self._step_aside()
         self._burst(1, 0)  # no step, but the forces at the start
         if traced and schedule.flags[0] & TRACE:
             self._samples.append((schedule.time[:1].copy(), self._traced_now()))
@@ -183,6 +203,26 @@ class TimeLoop:
         """The mark of the schedule last reached."""
         return int(self.work.cursor[CURSOR_INTERVAL])
 
+    @property
+    def alive(self) -> int:
+        """Simulated charges that are there."""
+        return int(np.count_nonzero(self.charges.alive == 1))
+
+    @property
+    def born(self) -> int:
+        """Simulated charges born since the run began."""
+        return self._pools.born
+
+    @property
+    def over(self) -> bool:
+        """Whether no charge is left, and none will be born."""
+        return self.alive == 0 and not self._pools.to_come(int(self.work.cursor[CURSOR_BIRTH]))
+
+    def present(self) -> Particles:
+        """The charges that are there now, neither lost nor unborn."""
+        there = self.charges.alive == 1
+        return self.particles if there.all() else self.particles.kept(there)
+
     def to_mark(self, until: int, keep_going: Callable[[], bool]) -> bool:
         """Step on to a mark; False when `keep_going` said no on the way.
 
@@ -195,6 +235,9 @@ class TimeLoop:
             began, before = clocks.perf_counter(), self.steps_done
             status = self._burst(self._next_stop(until), self._budget)
             self._collect()
+            if status == NEED_BIRTHS:
+                self._admit()
+                status = PAUSED
             if status not in {DONE, PAUSED, EVENTS_FULL}:
                 raise StepError(self._failure(status), self._id_at_fault(status))
             self._adapt(clocks.perf_counter() - began, self.steps_done - before)
@@ -241,6 +284,28 @@ class TimeLoop:
         self.work.side[:] = side
         self.work.clearance[:] = clearance[alive] if clearance.size else clearance
 
+    def _admit(self) -> None:
+        """Take lost charges out, and lay out the next that will be born."""
+        self.remove_lost()
+        before, side = self.particles.id, self.work.side
+        clearance, cursor = self.work.clearance, self.work.cursor
+        more = self._pools.admitted(int(cursor[CURSOR_BIRTH]), self.alive)
+        cursor[CURSOR_BIRTH] = 0
+        self.particles = merged(self.particles, more)
+        self._arrange()
+        sides(self._surfaces, self.particles.position, self.work.side)
+        where = np.searchsorted(self.particles.id, before)
+        self.work.side[:, where] = side
+        if clearance.size:
+            self.work.clearance[where] = clearance
+        self._step_aside()
+
+    def _step_aside(self) -> None:
+        """Let no surface ask again and again for a charge that waits on it."""
+        waiting = self.charges.alive == WAITING
+        side = self.work.side[:, waiting]
+        self.work.side[:, waiting] = np.where(side == 0, -1, side)
+
     def state(self) -> dict[str, NDArray[Any]]:
         """Copies of everything a resume needs besides the particles, by name.
 
@@ -254,6 +319,7 @@ class TimeLoop:
             "schedule/cursor": self.work.cursor.copy(),
             "surfaces/side": self.work.side.copy(),
             "charges/alive": self.charges.alive.copy(),
+            **{f"births/{name}": item for name, item in self._pools.state().items()},
             **{
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
@@ -263,6 +329,11 @@ class TimeLoop:
     def take_events(self) -> list[Events]:
         """What happened on surfaces since the last call."""
         taken, self._events = self._events, []
+        return taken
+
+    def take_births(self) -> list[Born]:
+        """The charges born since the last call."""
+        taken, self._births = self._births, []
         return taken
 
     def take_samples(self) -> list[tuple[NDArray[np.float64], NDArray[np.float64]]]:
@@ -280,6 +351,7 @@ class TimeLoop:
         for name in ("total", "carry", "energy"):
             getattr(work, name)[:] = accounts[name]
         work.cursor[:] = state["schedule/cursor"]
+        self._pools.take_up(int(work.cursor[CURSOR_BIRTH]))
         work.cursor[CURSOR_FRESH] = 0
         work.side[:] = state["surfaces/side"]
         self.charges.alive[:] = state["charges/alive"]
@@ -299,6 +371,7 @@ class TimeLoop:
             burst(
                 self.summation.pair_sum,
                 self._image_sum.function,
+                self._bearing,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -306,6 +379,7 @@ class TimeLoop:
                 self._surfaces,
                 self._bodies,
                 self.charges,
+                self._pools.births,
                 self._trace,
                 self.schedule.time,
                 self.schedule.flags,
@@ -327,6 +401,7 @@ class TimeLoop:
         n = len(self.particles)
         old = self.work
         self.charges = charges_of(self.particles)
+        self._pools.lay_out(self.particles, self.charges, int(old.cursor[CURSOR_BIRTH]))
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
         tiles, levels = self.summation.work, self.summation.method == "tree"
@@ -342,6 +417,9 @@ class TimeLoop:
         self.work = work
         self._passes = passes_over(
             n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
+        )
+        self._bearing = bearing_of(
+            self.plan, self._fields, self._surfaces, self.charges, self._pools.births, self.work
         )
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),
@@ -359,20 +437,23 @@ class TimeLoop:
         return int(found[0]) if found.size else _NO_CENTRE
 
     def _traced_now(self) -> NDArray[np.float64]:
-        """The traced coordinates (1, traces) while nothing is lost, as at the start."""
-        x, cloud = self.charges.position, self.charges.cloud
-        return np.array(
-            [
-                [
-                    x[each.axis, cloud == each.cloud].mean() if i == -1 else x[each.axis, i]
-                    for each, i in zip(self._traced, self._trace.which, strict=True)
-                ]
-            ]
-        )
+        """The traced coordinates (1, traces) at the start; NaN for what is not born yet."""
+        there = self.charges.alive == 1
+        found = np.full((1, len(self._traced)), np.nan)
+        for k, (each, i) in enumerate(zip(self._traced, self._trace.which, strict=True)):
+            own = there & (self.charges.cloud == each.cloud)
+            if i == -1 and own.any():
+                found[0, k] = self.charges.position[each.axis, own].mean()
+            elif i >= 0 and there[i]:
+                found[0, k] = self.charges.position[each.axis, i]
+        return found
 
     def _collect(self) -> None:
         """Empty the event and sample buffers into lists."""
         cursor = self.work.cursor
+        born = self._pools.take_born(int(cursor[CURSOR_BIRTH]))
+        if born is not None:
+            self._births.append(born)
         count = int(cursor[CURSOR_EVENTS])
         if count:
             rows = self.work.events[:count]

@@ -24,6 +24,10 @@ Ints = NDArray[np.int64]
 
 LEAVING = 2
 """What `alive` is for a charge lost in the present step, while it still stands in all sums."""
+WAITING = 3
+"""For a charge not born yet: it stands where it will be, with charge, weight and velocity 0."""
+NEWBORN = 4
+"""For a charge born in the present step, until the step is closed."""
 EVENT_COLUMNS = 10
 """surface, particle index, time, x, y, z, ux, uy, uz, direction."""
 
@@ -34,10 +38,10 @@ class Charges(NamedTuple):
     position, velocity : (3, n) float64, m and m/s (proper velocity), changed
     charge : (n,) float64, C; mass : (n,) float64, kg; weight : (n,) float64, real particles
     charge_to_mass : (3, n) float64, C/kg, repeated for the axes
-    cloud : (n,) int64; alive : (n,) int8, 1 or 0, changed (LEAVING within a step)
+    cloud : (n,) int64; alive : (n,) int8, 1, 0 or WAITING, changed (within a step LEAVING, NEWBORN)
 
     A charge that is lost stays where it was lost, with charge, weight and velocity 0, until it is
-    taken out between bursts.
+    taken out between bursts. One that is WAITING has charge_to_mass 0 as well.
     """
 
     position: Floats
@@ -115,7 +119,7 @@ class Work(NamedTuple):
     energy : (1,) J, potential energy in the fields at the last evaluation
     total, carry : (accounts,)
     events : (capacity, 10)
-    cursor : (10,) int64, see the constants below
+    cursor : (CURSORS,) int64, see the constants below
     """
 
     external: Floats
@@ -162,7 +166,11 @@ CURSOR_JUMPED = 8
 """The last mark whose jump of a waveform has been taken."""
 CURSOR_INDUCED = 9
 """1 while magnets change, so that the induced field does work."""
-CURSORS = 10
+CURSOR_BIRTH = 10
+"""The next of the births laid out, see births.py."""
+CURSOR_NEWBORN = 11
+"""How many of them were due in the present step."""
+CURSORS = 12
 
 
 def aligned(values: Floats) -> Floats:

@@ -79,9 +79,10 @@ class Force(InstantQuestion):
 def charge_id(evidence: Evidence, cloud: str, charge: int) -> int:
     """The id of a cloud's charge, counted from 0. Raises AnswerError where it has too few."""
     facts = cloud_named(evidence, cloud)
-    if charge >= facts.count:
+    most = evidence.clouds[cloud].count  # of a source, with those it has not borne
+    if charge >= most:
         raise AnswerError(
-            f'"{cloud}" has {facts.count} charges, counted from 0: there is no charge {charge}'
+            f'"{cloud}" has {most} charges, counted from 0: there is no charge {charge}'
         )
     return facts.first_id + charge
 

@@ -1,7 +1,8 @@
 """How much of a cloud is left, and how much of it passed a detector.
 
-Both count simulated charges against those at the start. The error is half the width of Wilson's
-interval (one standard deviation), so that none lost or all lost is not told as certain.
+Both count simulated charges against those at the start, and those that sources bore. The error is
+half the width of Wilson's interval (one standard deviation), so that none lost or all lost is not
+told as certain.
 """
 
 from __future__ import annotations
@@ -26,6 +27,7 @@ from driftwell.answers.form import (
 from driftwell.answers.sampling import fraction_error
 from driftwell.errors import AnswerError
 from driftwell.forms import Name, key
+from driftwell.forms.spelling import spelled
 
 
 class FractionLeft(InstantQuestion):
@@ -43,9 +45,12 @@ class FractionLeft(InstantQuestion):
         losses = evidence.losses()
         before = losses["time"] <= time + TIME_TOLERANCE * evidence.end_time
         lost = np.unique(losses["id"][before & (losses["cloud"] == cloud.index)]).size
-        left = cloud.count - lost
-        note = f"{left} of {cloud.count} charges{weight_in_words(cloud)}"
-        return self.answered(left / cloud.count, fraction_error(left, cloud.count), note)
+        count = evidence.born(cloud.name, time)
+        if count == 0:
+            raise AnswerError(f'no charge of "{cloud.name}" is born by {spelled(time, "s")}')
+        left = count - lost
+        note = f"{left} of {count} charges{weight_in_words(cloud)}"
+        return self.answered(left / count, fraction_error(left, count), note)
 
     def words(self) -> str:
         return f'part of cloud "{self.of}" left {instant_in_words(self.at)}'
@@ -64,7 +69,8 @@ class DetectorQuestion(QuestionForm):
         """The clouds counted. Raises AnswerError where they have no charges."""
         if self.cloud is not None:
             return [_not_empty(cloud_named(evidence, self.cloud))]
-        found = [cloud for cloud in evidence.clouds.values() if cloud.count]
+        every = [cloud_named(evidence, name) for name in evidence.clouds]
+        found = [cloud for cloud in every if cloud.count]
         if not found:
             raise AnswerError("there are no charges")
         return found

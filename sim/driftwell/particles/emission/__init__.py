@@ -1,0 +1,1 @@
+"""What a source of charges emits from, and when: points, flat surfaces, electrodes, files."""
