@@ -73,6 +73,19 @@ FIELDS = [
         along=[1.0, -2.0, 0.5],
         centre=["-10 mm", "20 mm", "1 mm"],
     ),
+    field(
+        "uniform-electric",
+        name="uniform-electric, noise",
+        strength={
+            "kind": "noise",
+            "density": "1e-3 V^2/m^2/Hz",
+            "lowest": "0.2 MHz",
+            "highest": "1.4 MHz",
+            "lines": 12,
+            "offset": "5 V/m",
+        },
+        along=[1.0, 1.0, -0.5],
+    ),
     field("uniform-magnetic", strength="1.5 T"),
     field(
         "uniform-magnetic",
@@ -127,6 +140,20 @@ FIELDS = [
             centre=OFF_CENTRE,
         )
         for order in (1, 2, 3, 7)
+    ),
+    *(
+        field(
+            "rotating-drive",
+            name=f"rotating-drive, order {order}, {sense}",
+            order=order,
+            radius="4 mm",
+            angle="17 deg",
+            voltage="5 V",
+            frequency="0.4 MHz",
+            sense=sense,
+            centre=OFF_CENTRE,
+        )
+        for order, sense in ((1, "counterclockwise"), (2, "clockwise"), (3, "clockwise"))
     ),
     *(
         field(

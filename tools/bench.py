@@ -26,6 +26,7 @@ import numpy as np
 from bench_cases import tree
 from bench_cases.boundary import boundary_1e5, capacitance
 from bench_cases.direct import direct_16k
+from bench_cases.fast import relativistic
 from bench_cases.field_map import field_map
 from bench_cases.night import record_1e4, resume
 from bench_cases.reference import GCC, reference_library
@@ -43,6 +44,7 @@ QUICK: dict[str, Case] = {
     "small-trap": small_trap,
     "direct-2k": direct_2k,
     "direct-16k": direct_16k,
+    "relativistic": relativistic,
     "script": script,
     "field-map": field_map,
     "startup": startup,

@@ -113,3 +113,47 @@ void pair_loop(int n, const double *restrict x, const double *restrict y, const 
         ez[i] = fz;
     }
 }
+
+/* Fast charges that do not push each other, in a uniform magnet, a uniform electric field and a
+ * static quadrupole: half a drift, the change of momentum of Higuera and Cary, half a drift.
+ *   phi = -E x + (curvature / 2) (z^2 - (x^2 + y^2) / 2)
+ * With curvature < 0 the electric fields are left out.
+ */
+void relativistic(long steps, int n, double *restrict x, double *restrict y, double *restrict z,
+                  double *restrict ux, double *restrict uy, double *restrict uz, double ratio,
+                  double magnet, double electric, double curvature, double h, double light)
+{
+    double half = 0.5 * h, push = 0.5 * h * ratio, b = push * magnet, b2 = b * b;
+    double per_light2 = 1.0 / (light * light);
+    for (long s = 0; s < steps; s++) {
+        for (int i = 0; i < n; i++) {
+            double vx = ux[i], vy = uy[i], vz = uz[i];
+            double way = half / sqrt(1.0 + (vx * vx + vy * vy + vz * vz) * per_light2);
+            double px = x[i] + way * vx, py = y[i] + way * vy, pz = z[i] + way * vz;
+            double ex = 0.0, ey = 0.0, ez = 0.0;
+            if (curvature >= 0.0) {
+                ex = push * (electric + 0.5 * curvature * px);
+                ey = push * 0.5 * curvature * py;
+                ez = -push * curvature * pz;
+            }
+            vx += ex;
+            vy += ey;
+            vz += ez;
+            double star = vz * b, square = b2 + star * star * per_light2;
+            double sigma = 1.0 + (vx * vx + vy * vy + vz * vz) * per_light2 - b2;
+            double g2 = 0.5 * (sigma + sqrt(sigma * sigma + 4.0 * square));
+            double t = b / sqrt(g2), twice = 2.0 * t / (1.0 + t * t);
+            double wx = vx + t * vy, wy = vy - t * vx;
+            vx += twice * wy + ex;
+            vy += -twice * wx + ey;
+            vz += ez;
+            way = half / sqrt(1.0 + (vx * vx + vy * vy + vz * vz) * per_light2);
+            x[i] = px + way * vx;
+            y[i] = py + way * vy;
+            z[i] = pz + way * vz;
+            ux[i] = vx;
+            uy[i] = vy;
+            uz[i] = vz;
+        }
+    }
+}

@@ -27,7 +27,7 @@ from driftwell.forms.declared import (
     about,
     declared_keys,
 )
-from driftwell.forms.waveforms import WaveformForm
+from driftwell.forms.waveform_form import WaveformForm
 from driftwell.forms.wording import bound_words, raw_value, toml_text
 from driftwell.particles.species import BUILT_IN
 from driftwell.record.layout import Attribute, Dataset

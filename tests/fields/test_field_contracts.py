@@ -17,7 +17,7 @@ from driftwell.fields.table import (
     induced_field,
     magnetic_field,
 )
-from driftwell.kernels.waveform import TABLE
+from driftwell.kernels.waveform import NOISE, TABLE
 from tests.cases import BODIES, FIELDS
 
 ROLES = {form.name: form.packed(BODIES).role for form in FIELDS}
@@ -184,7 +184,9 @@ def test_magnetic_kernel_scales_with_its_waveform_and_works_on_its_range_only(
 def test_the_table_of_each_role_holds_its_fields_as_they_were_packed() -> None:
     tables = field_tables(FIELDS, BODIES)
     for role, table in tables.items():
-        packed = [form.packed(BODIES) for form in FIELDS if ROLES[form.name] is role]
+        packed = [
+            row for form in FIELDS if ROLES[form.name] is role for row in form.all_packed(BODIES)
+        ]
         assert len(packed) == table.kind.size
         for row, one in enumerate(packed):
             assert one.kind == table.kind[row]
@@ -200,6 +202,11 @@ def test_the_table_of_each_role_holds_its_fields_as_they_were_packed() -> None:
                 start, count = table.wave_parameter[row, :2].astype(int)
                 found = table.wave_data[start : start + count]
                 assert [list(point) for point in one.waveform.points] == found.tolist()
+            elif one.waveform.kind == NOISE:
+                start, lines = table.wave_parameter[row, :2].astype(int)
+                found = table.wave_data[start : start + 2 * lines]
+                assert [list(point) for point in one.waveform.points] == found.tolist()
+                assert one.waveform.parameters[1:] == tuple(table.wave_parameter[row, 1:3])
             else:
                 found = table.wave_parameter[row, : len(one.waveform.parameters)]
                 assert list(one.waveform.parameters) == found.tolist()
@@ -210,10 +217,14 @@ def test_the_list_of_cases_holds_every_kind() -> None:
 
 
 def test_each_kind_has_its_own_number() -> None:
-    """Maps in (r, z), (x, y) and space have one each, wherever their potential comes from."""
+    """Maps in (r, z), (x, y) and space have one each, wherever their potential comes from.
+
+    A rotating drive is two multipoles.
+    """
     numbers = {form.kind: form.packed(BODIES).kind for form in FIELDS if form.kind not in MAPS}
     of_maps = {form.packed(BODIES).kind for form in FIELDS if form.kind in MAPS}
-    assert len(FIELD_KINDS) - len(MAPS) == len(set(numbers.values()) - of_maps)
+    assert len(FIELD_KINDS) - len(MAPS) == 1 + len(set(numbers.values()) - of_maps)
+    assert numbers["electric-multipole"] == numbers["rotating-drive"]
     assert 5 == len(of_maps)
 
 

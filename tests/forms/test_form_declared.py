@@ -114,7 +114,7 @@ def test_a_waveform_is_a_constant_or_one_of_the_kinds_in_time() -> None:
     holds = declared_keys(Machine)["voltage"].holds
     assert isinstance(holds, Choice)
     assert "kind" == holds.by
-    assert ["sine", "ramp", "step", "pulses", "table"] == [name for name, _ in holds.kinds]
+    assert ["sine", "ramp", "step", "pulses", "table", "noise"] == [name for name, _ in holds.kinds]
     assert Dimensioned("a voltage", "V", "180 V") == holds.option("constant")
     assert holds.option("square") is None
 

@@ -83,7 +83,7 @@ def faults(data: Any) -> list[tuple[str, str, str]]:
 
 
 KINDS = "The kinds are rods, ring"
-WAVES = "The kinds are sine, ramp, step, pulses, table"
+WAVES = "The kinds are sine, ramp, step, pulses, table, noise"
 A_LENGTH = 'a length such as "3.5 mm"'
 THREE = f"a list of 3, each {A_LENGTH}"
 RODS = {"kind": "rods", "radius": "1 mm"}

@@ -47,6 +47,7 @@ STEP = {"kind": "step", "before": "2 V", "after": "-6 V", "at": "1 us"}
 PULSE = {"kind": "pulses", "low": "1 V", "high": "5 V", "start": "1 us", "width": "3 us"}
 EDGES = {**PULSE, "rise": "1 us"}
 TRAIN = {**EDGES, "period": "10 us", "count": 3}
+KINDS = '`kind` must be "sine", "ramp", "step", "pulses", "table" or "noise"'
 TABLE = {"kind": "table", "times": ["1 us", "2 us", "5 us"], "values": ["1 V", "3 V", "-3 V"]}
 
 
@@ -201,8 +202,8 @@ def test_several_tables_share_one_array_and_keep_apart() -> None:
         (180, ("constant",), 'needs a voltage such as "180 V" (a number and its unit in quotes)'),
         ("180 mm", ("constant",), "'mm' is a unit of length"),
         ("1 T", ("constant",), "needs a voltage"),
-        ({"kind": "sinus"}, (), '`kind` must be "sine", "ramp", "step", "pulses" or "table"'),
-        ({"kind": 5}, (), '`kind` must be "sine", "ramp", "step", "pulses" or "table"'),
+        ({"kind": "sinus"}, (), KINDS),
+        ({"kind": 5}, (), KINDS),
         ({"amplitude": "1 V"}, ("sine", "frequency"), "required"),
         ({"amplitude": "1 V", "frequency": "0 Hz"}, ("sine", "frequency"), "greater than 0"),
         (

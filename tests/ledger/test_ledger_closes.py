@@ -33,6 +33,8 @@ JUMPING = field(
         "period": "1 us",
     },
 )
+REFLECTED = 20.0
+"""Times its bound, where the mirror's residual may lie in midpoint-rotation; twice for the rest."""
 SOFT = Coulomb(method="direct", softening="5 um")
 BORE = wall("sphere", radius="0.3 mm")
 MIRROR = wall("box", name="mirror", size=["0.5 mm", "0.5 mm", "0.5 mm"], effect="reflect")
@@ -110,13 +112,17 @@ def worst(found: list[LedgerRow]) -> float:
     return max(abs(row.energy_residual) for row in found)
 
 
+@pytest.mark.parametrize("scheme", ["kick-drift-kick", "midpoint-rotation"])
 @pytest.mark.parametrize("case", CASES, ids=lambda case: case.name)
-def test_every_account_closes_at_every_record(case: Case) -> None:
+def test_every_account_closes_at_every_record(case: Case, scheme: str) -> None:
     """Momentum, angular momentum, charge, count and the third law to rounding, energy to the step.
 
     No energy residual of steps of finite length is zero, so one that were would not be a check.
     """
-    found = rows(case)
+    found = rows(case, scheme=scheme)
+    largest = case.energy
+    if scheme == "midpoint-rotation":
+        largest *= REFLECTED if case.name == "a mirror" else 2.0
     assert 7 == len(found)
     for row in found:
         assert row.momentum_residual <= 1e-13
@@ -124,9 +130,9 @@ def test_every_account_closes_at_every_record(case: Case) -> None:
         assert abs(row.charge_residual) <= 1e-14
         assert abs(row.count_residual) <= 1e-14
         assert row.third_law_residual <= 1e-13
-        assert abs(row.energy_residual) <= case.energy
+        assert abs(row.energy_residual) <= largest
     assert worst(found) >= 1e-9
-    assert worst(rows(case, 5e-9)) <= 0.5 * worst(found)
+    assert worst(rows(case, 5e-9, scheme=scheme)) <= 0.5 * worst(found)
     assert 0.0 == found[0].energy_residual == found[0].momentum_residual
     moved = np.linalg.norm(found[-1].momentum - found[0].momentum)
     assert moved > 1e-3 * np.linalg.norm(found[-1].momentum)
@@ -135,7 +141,10 @@ def test_every_account_closes_at_every_record(case: Case) -> None:
         assert found[-1].energy_walls != 0.0
 
 
-@pytest.mark.parametrize(("scheme", "order"), [("kick-drift-kick", 2), ("composed-4", 4)])
+@pytest.mark.parametrize(
+    ("scheme", "order"),
+    [("kick-drift-kick", 2), ("composed-4", 4), ("midpoint-rotation", 2)],
+)
 def test_the_energy_of_a_static_trap_closes_to_the_order_of_the_scheme(
     scheme: str, order: int
 ) -> None:

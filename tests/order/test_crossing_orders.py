@@ -95,6 +95,7 @@ def order_of(steps: tuple[int, ...], errors: list[float]) -> float:
     ("scheme", "steps", "time", "velocity"),
     [
         ("kick-drift-kick", (160, 320, 640), 2, 2),
+        ("midpoint-rotation", (160, 320, 640), 2, 2),
         ("composed-4", (100, 160, 250), 4, 4),
         ("composed-6", (100, 160, 250), 6, 4),
     ],

@@ -45,7 +45,9 @@ def moved(budget: int, **stepping: Any) -> tuple[TimeLoop, int, dict[str, bytes]
     return moving, calls, found
 
 
-@pytest.mark.parametrize("scheme", ["kick-drift-kick", "composed-4", "composed-6"])
+@pytest.mark.parametrize(
+    "scheme", ["kick-drift-kick", "composed-4", "composed-6", "midpoint-rotation"]
+)
 @pytest.mark.parametrize("coulomb_every", [1, 3])
 def test_a_pause_after_every_step_changes_no_bit(scheme: str, coulomb_every: int) -> None:
     """Against no pause at all between marks, with losses, bounces, passages and a jump."""

@@ -59,7 +59,9 @@ def moved(budget: int, every: int, **options: Any) -> tuple[int, dict[str, bytes
 
 
 @pytest.mark.parametrize("coulomb", [DIRECT, TREE], ids=["direct", "tree"])
-@pytest.mark.parametrize("scheme", ["kick-drift-kick", "composed-4", "composed-6"])
+@pytest.mark.parametrize(
+    "scheme", ["kick-drift-kick", "composed-4", "composed-6", "midpoint-rotation"]
+)
 @pytest.mark.parametrize("coulomb_every", [1, 3])
 def test_a_loop_taken_up_between_any_two_calls_changes_no_bit(
     scheme: str, coulomb_every: int, coulomb: Any
@@ -74,8 +76,9 @@ def test_a_loop_taken_up_between_any_two_calls_changes_no_bit(
         ("kick-drift-kick", 1, OFF, TUBE),
         ("composed-4", 3, DIRECT, TUBE),
         ("kick-drift-kick", 3, DIRECT, PLANE),
+        ("midpoint-rotation", 1, DIRECT, TUBE),
     ],
-    ids=["a tube alone", "a tube", "a plane"],
+    ids=["a tube alone", "a tube", "a plane", "a tube, in the middle"],
 )
 def test_a_loop_with_images_is_taken_up_as_it_was_left(
     scheme: str, every: int, coulomb: Any, images: Images

@@ -42,7 +42,7 @@ def test_free_ions_feel_two_half_kicks_about_the_drifts_between(n: int) -> None:
 
 
 @pytest.mark.parametrize("every", [1, 2, 4, 8])
-@pytest.mark.parametrize("scheme", ["kick-drift-kick", "composed-4"])
+@pytest.mark.parametrize("scheme", ["kick-drift-kick", "composed-4", "midpoint-rotation"])
 def test_all_accounts_but_the_energy_close_to_rounding(every: int, scheme: str) -> None:
     """Whatever the number of steps between Coulomb kicks; energy to the second order of their time.
 

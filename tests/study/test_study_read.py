@@ -168,7 +168,8 @@ def test_a_faulty_value_is_told_with_its_line_its_setting_and_what_the_scenario_
     )
     assert [
         'wide.toml:3 set entry 1: --set stepping.scheme=fast: [stepping] scheme = "fast": '
-        'must be "kick-drift-kick", "composed-4" or "composed-6".',
+        'must be "kick-drift-kick", "composed-4", "composed-6" or '
+        '"midpoint-rotation".',
         f'wide.toml:4 [[vary]] number 1: --set {COUNT}=-1: [[cloud]] "load" count = -1: '
         "must be at least 1 and at most 1e+07. (1 more of its values has this fault)",
         f'wide.toml:7 [[vary]] number 2: --set {RADIUS}=4 ms: [[field]] "rods" radius = "4 ms": '

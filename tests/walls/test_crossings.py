@@ -263,7 +263,9 @@ def crossing_errors(scheme: str, steps: list[int]) -> tuple[Floats, Floats]:
     return np.array(times), np.array(speeds)
 
 
-@pytest.mark.parametrize(("scheme", "order"), [("kick-drift-kick", 2.0), ("composed-4", 4.0)])
+@pytest.mark.parametrize(
+    ("scheme", "order"), [("kick-drift-kick", 2.0), ("composed-4", 4.0), ("midpoint-rotation", 2.0)]
+)
 def test_crossings_are_found_to_the_order_of_the_scheme(scheme: str, order: float) -> None:
     """Fitted slope of the errors of time and of speed against the step, within 0.1."""
     steps = [50, 150, 250, 350]

@@ -92,6 +92,10 @@ class FieldForm(Form):
         """The field as numbers for compiled code."""
         raise TypeError(f"{type(self).__name__} must say how it is packed")
 
+    def all_packed(self, bodies: Mapping[str, Body]) -> tuple[PackedField, ...]:
+        """All rows of the tables that the field takes: one, unless it is a sum of several."""
+        return (self.packed(bodies),)
+
     def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
         """Angular frequencies (rad/s) a particle of `body` would move or be driven with.
 

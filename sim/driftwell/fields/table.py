@@ -110,6 +110,7 @@ from driftwell.fields.quadro_logarithmic import (
 )
 from driftwell.fields.rf_quadrupole import RF_QUADRUPOLE, RfQuadrupole, rf_quadrupole
 from driftwell.fields.rf_quadrupole_3d import RF_QUADRUPOLE_3D, RfQuadrupole3D, rf_quadrupole_3d
+from driftwell.fields.rotating_drive import RotatingDrive
 from driftwell.fields.static_quadrupole import (
     STATIC_QUADRUPOLE,
     StaticQuadrupole,
@@ -135,6 +136,7 @@ FIELD_KINDS: tuple[type[FieldForm], ...] = (
     RfQuadrupole,
     RfQuadrupole3D,
     ElectricMultipole,
+    RotatingDrive,
     MagneticMultipole,
     QuadroLogarithmic,
     WireInCylinder,
@@ -217,7 +219,7 @@ def field_tables(
     forms: Sequence[FieldForm], bodies: Mapping[str, Body], more: Sequence[PackedField] = ()
 ) -> dict[Role, FieldTable]:
     """The scenario's fields as one table for each role; `more` are packed already."""
-    packed = [*(form.packed(bodies) for form in forms), *more]
+    packed = [*(row for form in forms for row in form.all_packed(bodies)), *more]
     return {role: field_table([field for field in packed if field.role is role]) for role in Role}
 
 

@@ -98,6 +98,28 @@ FieldGradient = Annotated[float, Quantity("an electric field gradient", "V/m^2",
 MagneticGradient = Annotated[float, Quantity("a magnetic field gradient", "T/m", "12 T/m")]
 Emittance = Annotated[float, Quantity("an emittance", "m*rad", "5 mm mrad")]
 
+
+def _noise(of: str, si_unit: str, example: str) -> Any:
+    return Annotated[float, Quantity(f"a spectral density of {of}", si_unit, example)]
+
+
+if TYPE_CHECKING:
+    VoltageNoise = float
+    CurrentNoise = float
+    ElectricFieldNoise = float
+    MagneticFieldNoise = float
+    FieldGradientNoise = float
+    MagneticGradientNoise = float
+    RealNoise = float
+else:
+    VoltageNoise = _noise("voltage", "V^2/Hz", "1e-12 V^2/Hz")
+    CurrentNoise = _noise("current", "A^2/Hz", "1e-18 A^2/Hz")
+    ElectricFieldNoise = _noise("electric field", "V^2/m^2/Hz", "1e-11 V^2/m^2/Hz")
+    MagneticFieldNoise = _noise("magnetic field", "T^2/Hz", "1e-20 T^2/Hz")
+    FieldGradientNoise = _noise("field gradient", "V^2/m^4/Hz", "1e-4 V^2/m^4/Hz")
+    MagneticGradientNoise = _noise("magnetic gradient", "T^2/m^2/Hz", "1e-16 T^2/m^2/Hz")
+    RealNoise = _noise("a number", "1/Hz", "1e-9 1/Hz")
+
 Real = Annotated[float, Strict()]
 """A plain number without dimension."""
 Count = Annotated[int, Strict()]

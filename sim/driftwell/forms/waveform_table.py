@@ -42,4 +42,7 @@ def waveform_table(waveforms: Sequence[PackedWaveform]) -> WaveformTable:
         if wave.kind == packed.TABLE:
             row[:2] = len(points), len(wave.points)
             points.extend(wave.points)
+        elif wave.kind == packed.NOISE:
+            row[0] = len(points)
+            points.extend(wave.points)
     return WaveformTable(kind, parameter, np.array(points or [(0.0, 0.0)], dtype=np.float64))

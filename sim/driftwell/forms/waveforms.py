@@ -14,63 +14,38 @@ from numpy.typing import ArrayLike
 from pydantic import Discriminator, Tag
 
 from driftwell.errors import ScenarioError
-from driftwell.forms.form import Form, checked, key, refuse
+from driftwell.forms.form import checked, key, refuse
+from driftwell.forms.noise import Noise
 from driftwell.forms.quantities import (
     Angle,
     Count,
     Current,
+    CurrentNoise,
     ElectricField,
+    ElectricFieldNoise,
     FieldGradient,
+    FieldGradientNoise,
     Frequency,
     MagneticField,
+    MagneticFieldNoise,
     MagneticGradient,
+    MagneticGradientNoise,
     NonNegative,
     Positive,
     Real,
+    RealNoise,
     Time,
     Voltage,
-    quantity_name,
+    VoltageNoise,
 )
 from driftwell.forms.spelling import spelled
+from driftwell.forms.waveform_form import WaveformForm
 from driftwell.forms.waveform_table import PackedWaveform
 from driftwell.kernels import waveform as packed
 
 Q = TypeVar("Q", bound=float)
 
 _MOST_EDGES = 4_000_000
-
-
-class WaveformForm(Form):
-    """Base of all waveforms given as a table."""
-
-    @classmethod
-    def model_parametrized_name(cls, params: tuple[Any, ...]) -> str:
-        """What editors call the waveform of one quantity, e.g. ``Sine (a voltage)``."""
-        return f"{cls.__name__} ({quantity_name(params[0])})"
-
-    def packed(self) -> PackedWaveform:
-        """The waveform as numbers for compiled code."""
-        raise TypeError(f"{type(self).__name__} must say how it is packed")
-
-    def breaks(self, duration: float) -> list[float]:
-        """Times in (0, duration) where the value or its slope jumps, s."""
-        return []
-
-    def frequency_scale(self) -> float:
-        """Highest frequency a step must follow, Hz; 0 where nothing oscillates."""
-        return 0.0
-
-    def largest(self) -> float:
-        """Largest magnitude the value reaches, SI."""
-        raise TypeError(f"{type(self).__name__} must say how large it gets")
-
-    def steady(self) -> float:
-        """Largest magnitude the value has apart from its oscillation, SI."""
-        return self.largest()
-
-    def words(self, unit: str) -> str:
-        """The waveform in words; `unit` is the SI unit of its values."""
-        raise TypeError(f"{type(self).__name__} must describe itself")
 
 
 class Sine(WaveformForm, Generic[Q]):
@@ -271,8 +246,8 @@ def _kind_of(value: Any) -> str:
     return "constant"
 
 
-def waveform_of(quantity: Any) -> Any:
-    """The type "a `quantity`, constant or in time"."""
+def waveform_of(quantity: Any, density: Any) -> Any:
+    """The type "a `quantity`, constant or in time"; `density` : that of its noise."""
     return Annotated[
         Union[  # noqa: UP007 - built from a table
             Annotated[quantity, Tag("constant")],
@@ -281,11 +256,14 @@ def waveform_of(quantity: Any) -> Any:
             Annotated[Step[quantity], Tag("step")],
             Annotated[Pulses[quantity], Tag("pulses")],
             Annotated[Table[quantity], Tag("table")],
+            Annotated[Noise[quantity, density], Tag("noise")],
         ],
         Discriminator(
             _kind_of,
             custom_error_type="waveform",
-            custom_error_message='`kind` must be "sine", "ramp", "step", "pulses" or "table"',
+            custom_error_message=(
+                '`kind` must be "sine", "ramp", "step", "pulses", "table" or "noise"'
+            ),
         ),
     ]
 
@@ -301,13 +279,13 @@ if TYPE_CHECKING:
     MagneticGradientWave = AnyWaveform
     RealWave = AnyWaveform
 else:
-    VoltageWave = waveform_of(Voltage)
-    CurrentWave = waveform_of(Current)
-    ElectricFieldWave = waveform_of(ElectricField)
-    FieldGradientWave = waveform_of(FieldGradient)
-    MagneticFieldWave = waveform_of(MagneticField)
-    MagneticGradientWave = waveform_of(MagneticGradient)
-    RealWave = waveform_of(Real)
+    VoltageWave = waveform_of(Voltage, VoltageNoise)
+    CurrentWave = waveform_of(Current, CurrentNoise)
+    ElectricFieldWave = waveform_of(ElectricField, ElectricFieldNoise)
+    FieldGradientWave = waveform_of(FieldGradient, FieldGradientNoise)
+    MagneticFieldWave = waveform_of(MagneticField, MagneticFieldNoise)
+    MagneticGradientWave = waveform_of(MagneticGradient, MagneticGradientNoise)
+    RealWave = waveform_of(Real, RealNoise)
 
 
 def packed_waveform(value: AnyWaveform) -> PackedWaveform:

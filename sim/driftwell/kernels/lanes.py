@@ -18,6 +18,7 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
 from llvmlite import ir
 from numba import types
 from numba.core import cgutils
@@ -60,12 +61,15 @@ __all__ = [
     "load_one",
     "load_some",
     "most",
+    "picked_above",
     "positive",
+    "put_some",
     "repeated",
     "repeated_lane",
     "rough_inverse_cube",
     "scaled_rough_inverse_cube",
     "smaller",
+    "some",
     "store",
     "store_some",
     "total",
@@ -196,6 +200,18 @@ def where_above(typing: Any, a: Any, least: Any, value: Any) -> Any:
         return builder.select(above, value, repeated(0.0))
 
     return LANES(LANES, LANES, LANES), emitted
+
+
+@emitted_code
+def picked_above(typing: Any, a: Any, least: Any, value: Any, other: Any) -> Any:
+    """`value` where `a` is above `least` or is no number, else `other`."""
+
+    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        a, least, value, other = args
+        above = builder.fcmp_unordered(">", a, least)  # NaN must not be hidden
+        return builder.select(above, value, other)
+
+    return LANES(LANES, LANES, LANES, LANES), emitted
 
 
 @emitted_code
@@ -343,3 +359,20 @@ def inverse_root(a: LanesType) -> LanesType:
     series = fused(e, lanes(-0.3125), lanes(0.375))
     series = fused(e, series, lanes(-0.5))
     return fused(y, e * series, y)
+
+
+@inner_kernel
+def some(array: np.ndarray, first: int, count: int) -> LanesType:
+    """:func:`load` of all 8 where `count` is 8, else :func:`load_some`."""
+    if count == WIDTH:
+        return load(array, first)
+    return load_some(array, first, count)
+
+
+@inner_kernel
+def put_some(array: np.ndarray, first: int, count: int, value: LanesType) -> None:
+    """:func:`store` of all 8 where `count` is 8, else :func:`store_some`."""
+    if count == WIDTH:
+        store(array, first, value)
+    else:
+        store_some(array, first, count, value)

@@ -15,6 +15,8 @@ sine      1      offset, amplitude, angular frequency (rad/s), phase (rad)
 ramp      2      value before, value after, start, end (s)
 pulses    3      low, high, start, width, period (0: one), rise, count
 table     4      first index, number of points in the data array
+noise     5      first index, number of lines, offset; a line takes two rows of
+                 the data array: angular frequency and amplitude, phase and 0
 ========= ====== ==========================================================
 """
 
@@ -24,13 +26,14 @@ import math
 
 import numpy as np
 
-from driftwell.kernels.compiled import inlined_kernel, inner_kernel
+from driftwell.kernels.compiled import inlined_kernel, inner_kernel, outer_kernel
 
 CONSTANT = 0
 SINE = 1
 RAMP = 2
 PULSES = 3
 TABLE = 4
+NOISE = 5
 PARAMETERS = 8
 
 
@@ -45,7 +48,7 @@ def waveform(
     kind : int
     parameter : (8,) float64
     data : (m, 2) float64
-        Times and values of all tables.
+        Times and values of all tables, lines of all noise.
     """
     if kind == CONSTANT:
         return parameter[0], 0.0
@@ -59,7 +62,22 @@ def waveform(
         return _ramp(parameter[0], parameter[1], parameter[2], parameter[3], t, inside)
     if kind == PULSES:
         return _pulses(parameter, t, inside)
+    if kind == NOISE:
+        return _noise(data, int(parameter[0]), int(parameter[1]), parameter[2], t)
     return _table(data, int(parameter[0]), int(parameter[1]), t, inside)
+
+
+@outer_kernel
+def _noise(
+    data: np.ndarray, first: int, lines: int, offset: float, t: float
+) -> tuple[float, float]:
+    """The sum of all lines, amplitude cos(omega t + phase)."""
+    value, rate = 0.0, 0.0
+    for k in range(first, first + 2 * lines, 2):
+        angle = data[k, 0] * t + data[k + 1, 0]
+        value += data[k, 1] * math.cos(angle)
+        rate -= data[k, 1] * data[k, 0] * math.sin(angle)
+    return offset + value, rate
 
 
 @inner_kernel

@@ -10,6 +10,7 @@ from typing import Any
 
 from driftwell.errors import ScenarioError
 from driftwell.forms.faults import Fault, read_form
+from driftwell.forms.noise import with_noise_drawn
 from driftwell.scenario.cross_checks import cross_faults
 from driftwell.scenario.digest import digest
 from driftwell.scenario.model import Scenario
@@ -71,7 +72,11 @@ def checked_table(data: Mapping[str, Any], folder: Path) -> tuple[Scenario | Non
     faults += reference_faults(data)
     if scenario is None or faults:
         return None, list(dict.fromkeys(faults))
-    fields = tuple(field.found_in(folder) for field in scenario.field)
-    scenario = scenario.model_copy(update={"field": fields})
+    seed = scenario.seed
+    fields = tuple(
+        with_noise_drawn(field.found_in(folder), seed, field.name) for field in scenario.field
+    )
+    electrodes = tuple(with_noise_drawn(each, seed, each.name) for each in scenario.electrode)
+    scenario = scenario.model_copy(update={"field": fields, "electrode": electrodes})
     found = [with_value(fault, data) for fault in cross_faults(scenario, folder)]
     return (None, found) if found else (scenario, [])

@@ -19,6 +19,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.forms.noise import Noise
 from driftwell.forms.waveforms import (
     AnyWaveform,
     Pulses,
@@ -76,6 +77,9 @@ def _parts(voltage: AnyWaveform) -> Iterator[tuple[AnyWaveform, float]]:
         yield voltage.model_copy(update=plain), voltage.high - voltage.low
     elif isinstance(voltage, Table):
         yield from _table(voltage)
+    elif isinstance(voltage, Noise):
+        yield 1.0, voltage.offset
+        yield voltage.model_copy(update={"offset": 0.0}), 1.0
     else:
         yield 1.0, float(voltage)  # type: ignore[arg-type]
 

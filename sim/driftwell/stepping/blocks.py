@@ -7,6 +7,8 @@ do not depend on the number of threads.
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 
 from driftwell.kernels import inner_kernel
@@ -34,9 +36,9 @@ SUMS = 24
 """Entries of a row: three cache lines, so that no two threads write to one."""
 
 
-def blocks(n: int) -> int:
-    """Number of blocks of `n` charges; none where they are few."""
-    return -(-n // BLOCK) if n >= MANY else 0
+def blocks(n: int, few_too: bool = False) -> int:
+    """Number of blocks of `n` charges; none where they are few, unless these are cut too."""
+    return -(-n // BLOCK) if n >= MANY or few_too else 0
 
 
 @inner_kernel
@@ -68,3 +70,15 @@ def put_six(
     """Write six sums into a block's row, from entry `k` on."""
     out_row[k], out_row[k + 1], out_row[k + 2] = sums[0], sums[1], sums[2]
     out_row[k + 3], out_row[k + 4], out_row[k + 5] = sums[3], sums[4], sums[5]
+
+
+@inner_kernel
+def unsigned(i: int) -> Any:
+    """`i` without a sign: loops need not ask at each charge whether it counts from the end."""
+    return np.uint64(i)
+
+
+@inner_kernel
+def signed(i: int) -> Any:
+    """`i` with a sign, as all others are: a parallel loop's index has none."""
+    return np.int64(i)

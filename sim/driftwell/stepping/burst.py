@@ -1,8 +1,10 @@
 """The time loop: many steps in one compiled call, from mark to mark of the schedule.
 
 A step is the palindrome of kicks and drifts of the scheme (schemes.py), closed before walls and
-detectors look at it. Where the Coulomb kick is taken every m-th step only (impulse multiple time
-stepping), m steps of the fields alone stand between two half kicks of length m h / 2.
+detectors look at it. In the scheme midpoint-rotation all forces are taken in the middle
+(midpoint_passes.py), and again at the end only where somebody asks: at marks, and for the account
+of charges that are lost. Where the Coulomb kick is taken every m-th step only (impulse multiple
+time stepping), m steps of the fields alone stand between two half kicks of length m h / 2.
 
 A call returns at the asked mark, when its budget of steps is used up, when the event buffer could
 overflow, when charges are due that have no place yet, or with a failing status. Where it returns
@@ -44,6 +46,7 @@ from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
 from driftwell.stepping.losses import take_out
+from driftwell.stepping.midpoint_passes import from_middle, to_middle
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,
@@ -109,6 +112,7 @@ def burst(
     """
     cursor = work.cursor
     every = plan.coulomb_every
+    midway = plan.midway != 0
     stages = scheme.drift.size
     surfaced = surfaces.kind.size > 0 or bodies.whole.shape[0] > 0
     together = (plan.coulomb != 0 or plan.images != 0) and every == 1
@@ -134,11 +138,46 @@ def burst(
             # Pass k = 0 opens the step, 1..stages drift and kick, the next looks at surfaces, and
             # the last takes lost charges out, when the forces belong to where reflected ones are.
             met = UNTOUCHED
+            asked = not midway
+            if midway and cursor[CURSOR_STEP] + 1 == steps[j]:
+                asked = flags[j + 1] != TRACE
             for k in range(stages + 3):
                 jump = False
                 t = start
                 if k == 0:
                     jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
+                elif k <= stages and midway:
+                    if k == 1:
+                        to_middle(
+                            passes,
+                            plan,
+                            fields,
+                            surfaces,
+                            bodies,
+                            charges,
+                            together,
+                            surfaced,
+                            start,
+                            inside,
+                            h,
+                            work,
+                        )
+                        if together:
+                            _forces_in_middle(pair_sum, images, plan, charges, h, work)
+                        from_middle(
+                            passes,
+                            plan,
+                            fields,
+                            surfaces,
+                            bodies,
+                            charges,
+                            together,
+                            start,
+                            inside,
+                            h,
+                            work,
+                        )
+                    continue
                 elif k <= stages:
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
@@ -186,9 +225,9 @@ def burst(
                             inside,
                             work,
                         )
-                    if met == UNTOUCHED:
+                    if met == UNTOUCHED and not (midway and asked):
                         break
-                    if met == LOST:
+                    if met == LOST and not midway:
                         continue
                 else:
                     t = end
@@ -206,7 +245,7 @@ def burst(
                     take_fields(passes, plan, fields, surfaces, bodies, charges, t, inside, work)
                     if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
-                    if _pushed_anew(k, stages, first, last, together, met, cursor):
+                    if _pushed_anew(k, stages, first, last, together, asked, met, cursor):
                         coulomb_forces(pair_sum, images, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
@@ -227,6 +266,8 @@ def burst(
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
                         if plan.images != 0:
                             enter_images(half, work)
+                if midway:
+                    continue
                 keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
                 push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
@@ -251,7 +292,14 @@ def burst(
 
 @inner_kernel
 def _pushed_anew(
-    k: int, stages: int, first: bool, last: bool, together: bool, met: int, cursor: np.ndarray
+    k: int,
+    stages: int,
+    first: bool,
+    last: bool,
+    together: bool,
+    asked: bool,
+    met: int,
+    cursor: np.ndarray,
 ) -> bool:
     """Whether the charges' own field is needed in pass `k`, and not at hand."""
     if k == 0:
@@ -260,7 +308,22 @@ def _pushed_anew(
         return together
     if k == stages + 1 and met & LOST != 0:
         return False  # the next pass takes lost charges out
-    return together or last
+    return asked if together else last and met != UNTOUCHED
+
+
+@outer_kernel
+def _forces_in_middle(
+    pair_sum: PairSum,
+    images: CompiledFunction,
+    plan: Plan,
+    charges: Charges,
+    h: float,
+    work: Work,
+) -> None:
+    """The charges' own field in the middle of a step, and what images give in it."""
+    coulomb_forces(pair_sum, images, plan, charges, work)
+    if plan.images != 0:
+        enter_images(h, work)
 
 
 @outer_kernel

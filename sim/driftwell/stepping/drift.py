@@ -26,6 +26,19 @@ import math
 import numpy as np
 
 from driftwell.kernels import inner_kernel, outer_kernel
+from driftwell.kernels.lanes import (
+    fused,
+    inverse_root,
+    lanes,
+    larger,
+    load_some,
+    most,
+    picked_above,
+    put_some,
+    some,
+    store_some,
+    total,
+)
 from driftwell.kernels.sums import add_compensated
 from driftwell.stepping.accounts import (
     IMPULSE_MAGNETS,
@@ -36,6 +49,7 @@ from driftwell.stepping.accounts import (
     enter_vector,
     settle,
 )
+from driftwell.stepping.blocks import signed
 from driftwell.stepping.forces import (
     force_and_torque,
     induced_by_jumps,
@@ -47,6 +61,11 @@ from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 _SLOW = 1e-4
 """(u/c)^2 up to which the series of 1/gamma serves."""
+_TERMS = 10
+_TURN = tuple((-1.0) ** k / math.factorial(2 * k + 1) for k in range(_TERMS))
+"""sin(theta)/theta in powers of theta^2."""
+_LESS = tuple((-1.0) ** k / math.factorial(2 * k + 2) for k in range(_TERMS))
+"""(1 - cos(theta))/theta^2 in powers of theta^2."""
 
 
 @inner_kernel
@@ -155,12 +174,12 @@ def drift(
     middle = t + 0.5 * h
     bx, by, bz = uniform_magnetic(fields, middle, inside)
     if fields.magnetic.kind.size == 0:
-        _helix(charges, bx, by, bz, h, work.slowness, first, last)
+        _helix(charges, bx, by, bz, h, work.slowness, work.spare, first, last)
     else:
-        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, first, last)
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, work.spare, first, last)
         shaped_magnetic(fields, charges, middle, inside, work.spare, first, last)
         _turn(charges, work.spare, h, work.slowness, first, last)
-        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, first, last)
+        _helix(charges, bx, by, bz, 0.5 * h, work.slowness, work.spare, first, last)
 
 
 @inner_kernel
@@ -180,10 +199,24 @@ def _slowness(
         out_slowness[i] = 1.0 - s * (0.5 - s * (0.375 - 0.3125 * s))
         fast += not s < _SLOW
     if fast > 0:
-        for i in range(first, last):
-            s = (ux[i] * ux[i] + uy[i] * uy[i] + uz[i] * uz[i]) * inverse
-            if not s < _SLOW:
-                out_slowness[i] = 1.0 / math.sqrt(1.0 + s)
+        _slow_down(velocity, inverse, out_slowness, signed(first), signed(last))
+
+
+@outer_kernel
+def _slow_down(
+    velocity: np.ndarray, inverse: float, out_slowness: np.ndarray, first: int, last: int
+) -> None:
+    """1/gamma of the fast charges; what stands there of slow ones is kept."""
+    one = lanes(1.0)
+    for i in range(first, last, 8):
+        count = min(8, last - i)
+        ux = load_some(velocity[0], i, count)
+        uy = load_some(velocity[1], i, count)
+        uz = load_some(velocity[2], i, count)
+        s = (ux * ux + uy * uy + uz * uz) * lanes(inverse)
+        slow = load_some(out_slowness, i, count)
+        found = picked_above(lanes(_SLOW), s, slow, inverse_root(one + s))
+        store_some(out_slowness, i, count, found)
 
 
 @outer_kernel
@@ -194,35 +227,112 @@ def _helix(
     bz: float,
     h: float,
     slowness: np.ndarray,
+    spare: np.ndarray,
     first: int,
     last: int,
 ) -> None:
-    """Equations (1) and (2)."""
+    """Equations (1) and (2); spare : (3, n), of which the stretch's part is overwritten."""
     strength = math.sqrt(bx * bx + by * by + bz * bz)
     if strength > 0.0:
         bx, by, bz = bx / strength, by / strength, bz / strength
-    x, y, z = charges.position[0], charges.position[1], charges.position[2]
-    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
+    low, high = signed(first), signed(last)
+    scale = strength * h
+    turn, less, ratio = spare[0], spare[1], charges.charge_to_mass[0]
+    if _whirls(ratio, scale, slowness, turn, less, low, high):
+        _take_far_whirls(ratio, scale, slowness, turn, less, low, high)
+    whole = low + (high - low) // 8 * 8
+    for i in range(low, whole, 8):
+        _helix_of_eight(charges, bx, by, bz, scale, h, slowness, turn, less, i, 8)
+    if whole < high:
+        _helix_of_eight(charges, bx, by, bz, scale, h, slowness, turn, less, whole, high - whole)
+
+
+@inner_kernel
+def _whirls(
+    ratio: np.ndarray,
+    scale: float,
+    slowness: np.ndarray,
+    out_turn: np.ndarray,
+    out_less: np.ndarray,
+    first: int,
+    last: int,
+) -> bool:
+    """sin(theta)/theta and (1 - cos(theta))/theta^2 of theta = ratio scale slowness.
+
+    By their series, which up to 1 rad leave out less than 1e-18; returns whether any is beyond.
+    """
+    farthest = lanes(0.0)
+    for i in range(first, last, 8):
+        count = min(8, last - i)
+        theta = load_some(ratio, i, count) * lanes(scale) * load_some(slowness, i, count)
+        s = theta * theta
+        turn, less = lanes(_TURN[_TERMS - 1]), lanes(_LESS[_TERMS - 1])
+        for k in range(_TERMS - 2, -1, -1):
+            turn = fused(turn, s, lanes(_TURN[k]))
+            less = fused(less, s, lanes(_LESS[k]))
+        store_some(out_turn, i, count, turn)
+        store_some(out_less, i, count, less)
+        farthest = larger(farthest, s)
+    return most(farthest) > 1.0
+
+
+@outer_kernel
+def _take_far_whirls(
+    ratio: np.ndarray,
+    scale: float,
+    slowness: np.ndarray,
+    out_turn: np.ndarray,
+    out_less: np.ndarray,
+    first: int,
+    last: int,
+) -> None:
+    """The same where theta is above 1, by sines."""
     for i in range(first, last):
-        theta = charges.charge_to_mass[0, i] * strength * slowness[i] * h
-        half = math.sin(0.5 * theta)
-        turn = math.sin(theta)
-        less = 2.0 * half * half  # 1 - cos(theta), without cancellation
-        along_turn, along_less = h, 0.0
-        if theta != 0.0:
-            along_turn, along_less = h * (turn / theta), h * (less / theta)
-        along = ux[i] * bx + uy[i] * by + uz[i] * bz
-        px, py, pz = ux[i] - along * bx, uy[i] - along * by, uz[i] - along * bz
-        cx = uy[i] * bz - uz[i] * by
-        cy = uz[i] * bx - ux[i] * bz
-        cz = ux[i] * by - uy[i] * bx
-        s = slowness[i]
-        x[i] += s * (along * bx * h + along_turn * px + along_less * cx)
-        y[i] += s * (along * by * h + along_turn * py + along_less * cy)
-        z[i] += s * (along * bz * h + along_turn * pz + along_less * cz)
-        ux[i] += turn * cx - less * px
-        uy[i] += turn * cy - less * py
-        uz[i] += turn * cz - less * pz
+        theta = ratio[i] * scale * slowness[i]
+        if theta * theta > 1.0:
+            half = math.sin(0.5 * theta) / theta
+            out_turn[i] = math.sin(theta) / theta
+            out_less[i] = 2.0 * half * half  # 1 - cos(theta), without cancellation
+
+
+@inner_kernel
+def _helix_of_eight(
+    charges: Charges,
+    bx: float,
+    by: float,
+    bz: float,
+    scale: float,
+    h: float,
+    slowness: np.ndarray,
+    turns: np.ndarray,
+    lesses: np.ndarray,
+    i: int,
+    count: int,
+) -> None:
+    """Eight charges, or the `count` last."""
+    nx, ny, nz = lanes(bx), lanes(by), lanes(bz)
+    slow = some(slowness, i, count)
+    theta = some(charges.charge_to_mass[0], i, count) * lanes(scale) * slow
+    along_turn, along_less = some(turns, i, count), some(lesses, i, count)
+    turn, less = theta * along_turn, theta * theta * along_less
+    along_less = theta * along_less
+    ux = some(charges.velocity[0], i, count)
+    uy = some(charges.velocity[1], i, count)
+    uz = some(charges.velocity[2], i, count)
+    along = ux * nx + uy * ny + uz * nz
+    ax, ay, az = along * nx, along * ny, along * nz
+    px, py, pz = ux - ax, uy - ay, uz - az
+    cx, cy, cz = uy * nz - uz * ny, uz * nx - ux * nz, ux * ny - uy * nx
+    way = slow * lanes(h)
+    x = some(charges.position[0], i, count) + way * (ax + along_turn * px + along_less * cx)
+    y = some(charges.position[1], i, count) + way * (ay + along_turn * py + along_less * cy)
+    z = some(charges.position[2], i, count) + way * (az + along_turn * pz + along_less * cz)
+    put_some(charges.position[0], i, count, x)
+    put_some(charges.position[1], i, count, y)
+    put_some(charges.position[2], i, count, z)
+    put_some(charges.velocity[0], i, count, ux + (turn * cx - less * px))
+    put_some(charges.velocity[1], i, count, uy + (turn * cy - less * py))
+    put_some(charges.velocity[2], i, count, uz + (turn * cz - less * pz))
 
 
 @inner_kernel
@@ -273,19 +383,23 @@ def _turn(
 @outer_kernel
 def momenta(charges: Charges, first: int, last: int) -> Six:
     """Sums of momentum and angular momentum; magnets change them in a drift."""
-    x, y, z = charges.position[0], charges.position[1], charges.position[2]
-    ux, uy, uz = charges.velocity[0], charges.velocity[1], charges.velocity[2]
-    px = py = pz = 0.0
-    lx = ly = lz = 0.0
-    for i in range(first, last):
-        m = charges.mass[i]
-        px += m * ux[i]
-        py += m * uy[i]
-        pz += m * uz[i]
-        lx += m * (y[i] * uz[i] - z[i] * uy[i])
-        ly += m * (z[i] * ux[i] - x[i] * uz[i])
-        lz += m * (x[i] * uy[i] - y[i] * ux[i])
-    return px, py, pz, lx, ly, lz
+    px = py = pz = lanes(0.0)
+    lx = ly = lz = lanes(0.0)
+    end = signed(last)
+    for i in range(signed(first), end, 8):
+        count = min(8, end - i)
+        m = load_some(charges.mass, i, count)
+        x = load_some(charges.position[0], i, count)
+        y = load_some(charges.position[1], i, count)
+        z = load_some(charges.position[2], i, count)
+        ux = m * load_some(charges.velocity[0], i, count)
+        uy = m * load_some(charges.velocity[1], i, count)
+        uz = m * load_some(charges.velocity[2], i, count)
+        px, py, pz = px + ux, py + uy, pz + uz
+        lx = lx + (y * uz - z * uy)
+        ly = ly + (z * ux - x * uz)
+        lz = lz + (x * uy - y * ux)
+    return total(px), total(py), total(pz), total(lx), total(ly), total(lz)
 
 
 @outer_kernel

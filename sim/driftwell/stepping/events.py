@@ -42,7 +42,7 @@ from driftwell.stepping.motion import (
     Work,
     put,
 )
-from driftwell.stepping.path import End, end_of, first_end, last_end, place, point
+from driftwell.stepping.path import End, end_of, ends, place, point
 from driftwell.walls.form import ABSORB, PASS
 from driftwell.walls.table import SurfaceTable, level, normal, stops
 
@@ -125,8 +125,7 @@ def _follow(
     work: Work,
 ) -> int:
     """Follow one charge through the step, surface by surface; UNTOUCHED, MOVED or LOST."""
-    last = last_end(plan, fields, charges, together, i, t + h, inside, work)
-    first = first_end(plan, fields, charges, i, t, inside, work)
+    first, last = ends(plan, fields, charges, together, i, t, h, inside, work)
     changed = UNTOUCHED
     if work.clearance.size > 0:
         work.clearance[i] = 0.0

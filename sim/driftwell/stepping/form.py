@@ -21,8 +21,10 @@ class Stepping(Form):
         default="auto",
         example="5 ns",
     )
-    scheme: Literal["kick-drift-kick", "composed-4", "composed-6"] = key(
-        "kick-drift-kick: order 2; composed-4 and composed-6: orders 4 and 6 from the same pieces",
+    scheme: Literal["kick-drift-kick", "composed-4", "composed-6", "midpoint-rotation"] = key(
+        "kick-drift-kick: order 2, gyration exact in a uniform magnet; composed-4 and composed-6: "
+        "orders 4 and 6 from the same pieces; midpoint-rotation: order 2, drift across E and B "
+        "exact at any speed and step",
         default="kick-drift-kick",
     )
     steps_per_period: Positive[Real] = key(

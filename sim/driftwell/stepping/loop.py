@@ -39,6 +39,7 @@ from driftwell.particles.unborn import Unborn
 from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
 from driftwell.stepping.form import Stepping
+from driftwell.stepping.midpoint_passes import midpoint_passes_over
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_BIRTH,
@@ -58,7 +59,7 @@ from driftwell.stepping.motion import (
 from driftwell.stepping.passes import passes_over
 from driftwell.stepping.pools import Born, Pools, merged
 from driftwell.stepping.schedule import TRACE, Schedule
-from driftwell.stepping.schemes import SCHEMES
+from driftwell.stepping.schemes import MIDWAY, SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
 
 _CALL_SECONDS = 0.4
@@ -154,6 +155,7 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
             images=int(images is not None),
+            midway=int(stepping.scheme == MIDWAY),
         )
         self._images, self._threads = images, threads
         self._image_sum = no_images()
@@ -163,7 +165,9 @@ class TimeLoop:
         self.summation = Summation(coulomb, most, threads, manner=manner)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
-        self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
+        self._sums_per_step = (
+            1.0 / every if every > 1 else float(np.count_nonzero(self._scheme.kick[1:]))
+        )
         self.work = work_space(0, 0, room((1, 1)), False, False)
         self._events: list[Events] = []
         self._births: list[Born] = []
@@ -410,12 +414,14 @@ class TimeLoop:
             images = self._image_sum = self._images.laid_out(n, self._threads)
         stopped = self._bodies.whole.shape[0] > 0
         surfaces = self._surfaces.kind.size
-        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped)
+        midway = bool(self.plan.midway)
+        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped, midway)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
-        self._passes = passes_over(
+        passes = midpoint_passes_over if midway else passes_over
+        self._passes = passes(
             n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
         self._bearing = bearing_of(

@@ -71,6 +71,7 @@ class Plan(NamedTuple):
     watch_collapse : 1 where charges of both signs move without softening
     light2 : c^2, m^2/s^2
     images : 1 where conductors answer to the charges
+    midway : 1 where momenta change in the middle of a step only (midpoint_rotation.py)
     """
 
     coulomb: int
@@ -81,6 +82,7 @@ class Plan(NamedTuple):
     watch_collapse: int
     light2: float
     images: int
+    midway: int = 0
 
 
 class Trace(NamedTuple):
@@ -213,6 +215,7 @@ def work_space(
     collapse: bool,
     images: ImageSum | None = None,
     bodies: bool = False,
+    in_blocks: bool = False,
 ) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
@@ -222,6 +225,7 @@ def work_space(
     collapse : whether opposite charges may fall together
     images : the sum over the images; None where there are none
     bodies : whether electrodes stop charges
+    in_blocks : whether few charges are passed through in blocks too
     """
     events = 2 * room_for_events(n, surfaces + bodies)
     coulomb = room((3, n))
@@ -244,7 +248,7 @@ def work_space(
         tiles=tiles,
         levels=room((4, n if levels else 0)),
         search=search_room(n) if collapse else np.zeros(0, dtype=np.int64),
-        block_sums=room((blocks(n), SUMS)),
+        block_sums=room((blocks(n, in_blocks), SUMS)),
         rate=np.zeros(RATES),
         pending=np.zeros(1),
         energy=np.zeros(1),

@@ -12,7 +12,6 @@ from __future__ import annotations
 from typing import Any
 
 import numba
-import numpy as np
 from numba import prange
 
 from driftwell.fields.table import FieldTable
@@ -34,14 +33,16 @@ from driftwell.stepping.blocks import (
     POWER,
     added,
     put_six,
+    signed,
     six_added,
+    unsigned,
 )
 from driftwell.stepping.drift import drift, enter_magnets, induced_work, kick, kick_both, momenta
 from driftwell.stepping.forces import external_forces, magnetised, magnets_change
 from driftwell.stepping.motion import CURSOR_INDUCED, Charges, Fields, Plan, Work
 from driftwell.walls.table import SurfaceTable, level
 
-_PUSH, _PUSH_TOGETHER, _PUSH_APART, _MOVE, _TAKE, _CROSS = 0, 1, 2, 3, 4, 5
+_PUSH, _PUSH_TOGETHER, PUSH_APART, _MOVE, TAKE, CROSS = 0, 1, 2, 3, 4, 5
 
 Passes = CompiledFunction
 """What the time loop takes for passes over many charges, see :func:`passes_over`."""
@@ -90,10 +91,10 @@ def push(
     n = charges.charge.size
     induced = magnetised(fields) and work.cursor[CURSOR_INDUCED] != 0
     if passes is None:
-        done = _push(plan, charges, together, keep, induced, h, work, _index(0), _index(n))
+        done = _push(plan, charges, together, keep, induced, h, work, unsigned(0), unsigned(n))
     else:
         what = _PUSH_TOGETHER if together else _PUSH
-        _over_blocks(passes, plan, fields, surfaces, bodies, charges, work, what, keep, h, 0.0, 0.0)
+        over_blocks(passes, plan, fields, surfaces, bodies, charges, work, what, keep, h, 0.0, 0.0)
         done = added(work.block_sums, INDUCED)
     if induced:
         add_compensated(work.total, work.carry, WORK_INDUCED, done)
@@ -112,9 +113,9 @@ def push_apart(
 ) -> None:
     """Kick all charges by their own field alone for a time `h`."""
     if passes is None:
-        kick(charges, work.coulomb, h, _index(0), _index(charges.charge.size))
+        kick(charges, work.coulomb, h, unsigned(0), unsigned(charges.charge.size))
     else:
-        _over_blocks(
+        over_blocks(
             passes,
             plan,
             fields,
@@ -122,7 +123,7 @@ def push_apart(
             bodies,
             charges,
             work,
-            _PUSH_APART,
+            PUSH_APART,
             False,
             h,
             0.0,
@@ -148,12 +149,12 @@ def move(
     turned = magnetised(fields)
     if passes is None:
         if turned:
-            enter_magnets(-1.0, momenta(charges, _index(0), _index(n)), work.total, work.carry)
-        drift(plan, fields, charges, t, inside, h, work, _index(0), _index(n))
+            enter_magnets(-1.0, momenta(charges, unsigned(0), unsigned(n)), work.total, work.carry)
+        drift(plan, fields, charges, t, inside, h, work, unsigned(0), unsigned(n))
         if turned:
-            enter_magnets(1.0, momenta(charges, _index(0), _index(n)), work.total, work.carry)
+            enter_magnets(1.0, momenta(charges, unsigned(0), unsigned(n)), work.total, work.carry)
     else:
-        _over_blocks(
+        over_blocks(
             passes, plan, fields, surfaces, bodies, charges, work, _MOVE, False, h, t, inside
         )
         if turned:
@@ -185,11 +186,11 @@ def take_fields(
         work.cursor[CURSOR_INDUCED] = 1 if changing else 0
     if passes is None:
         power, energy, force = external_forces(
-            fields, charges, t, inside, changing, work, _index(0), _index(n)
+            fields, charges, t, inside, changing, work, unsigned(0), unsigned(n)
         )
     else:
-        _over_blocks(
-            passes, plan, fields, surfaces, bodies, charges, work, _TAKE, changing, 0.0, t, inside
+        over_blocks(
+            passes, plan, fields, surfaces, bodies, charges, work, TAKE, changing, 0.0, t, inside
         )
         power, energy = added(work.block_sums, POWER), added(work.block_sums, ENERGY)
         force = six_added(work.block_sums, FORCE)
@@ -214,28 +215,16 @@ def any_crossing(
     """
     n = charges.charge.size
     if passes is None:
-        found = _crossed(surfaces, charges, work, _index(0), _index(n))
+        found = crossed(surfaces, charges, work, unsigned(0), unsigned(n))
         if bodies.whole.shape[0] > 0:
-            found += near_bodies(plan, bodies, charges, h, work, _index(0), _index(n))
+            found += near_bodies(plan, bodies, charges, h, work, unsigned(0), unsigned(n))
         return found > 0
-    _over_blocks(passes, plan, fields, surfaces, bodies, charges, work, _CROSS, False, h, 0.0, 0.0)
+    over_blocks(passes, plan, fields, surfaces, bodies, charges, work, CROSS, False, h, 0.0, 0.0)
     return added(work.block_sums, CROSSED) > 0.0
 
 
 @inner_kernel
-def _index(i: int) -> Any:
-    """`i` without a sign: loops need not ask at each charge whether it counts from the end."""
-    return np.uint64(i)
-
-
-@inner_kernel
-def _signed(i: int) -> Any:
-    """`i` with a sign, as all others are: a parallel loop's index has none."""
-    return np.int64(i)
-
-
-@inner_kernel
-def _over_blocks(
+def over_blocks(
     passes: Passes,
     plan: Plan,
     fields: Fields,
@@ -320,7 +309,7 @@ def _induced_work(
 
 
 @inner_kernel
-def _crossed(surfaces: SurfaceTable, charges: Charges, work: Work, first: int, last: int) -> int:
+def crossed(surfaces: SurfaceTable, charges: Charges, work: Work, first: int, last: int) -> int:
     """How often a charge is on another side of a surface than before."""
     x, y, z = charges.position[0], charges.position[1], charges.position[2]
     crossed = 0
@@ -351,7 +340,7 @@ def _block(
 ) -> None:
     """One block's part of a pass; its sums into its row."""
     start = b * BLOCK
-    first, last = _index(start), _index(min(start + BLOCK, charges.charge.size))
+    first, last = unsigned(start), unsigned(min(start + BLOCK, charges.charge.size))
     row = work.block_sums[b]
     if what == _MOVE:
         turned = magnetised(fields)
@@ -360,16 +349,16 @@ def _block(
         drift(plan, fields, charges, t, inside, h, work, first, last)
         if turned:
             put_six(momenta(charges, first, last), AFTER, row)
-    elif what == _TAKE:
+    elif what == TAKE:
         row[POWER], row[ENERGY], force = external_forces(
             fields, charges, t, inside, asked, work, first, last
         )
         put_six(force, FORCE, row)
-    elif what == _CROSS:
-        row[CROSSED] = _crossed(surfaces, charges, work, first, last)
+    elif what == CROSS:
+        row[CROSSED] = crossed(surfaces, charges, work, first, last)
         if bodies.whole.shape[0] > 0:
             row[CROSSED] += near_bodies(plan, bodies, charges, h, work, first, last)
-    elif what == _PUSH_APART:
+    elif what == PUSH_APART:
         kick(charges, work.coulomb, h, first, last)
     else:
         together = what == _PUSH_TOGETHER
@@ -396,7 +385,7 @@ def _blocks(
     """A pass over all blocks, on all of numba's threads, which take no tuples of tuples."""
     for b in prange(work.block_sums.shape[0]):
         _block(
-            _signed(b),
+            signed(b),
             plan,
             Fields(electric, uniform, magnetic),
             surfaces,

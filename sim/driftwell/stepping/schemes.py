@@ -3,6 +3,8 @@
 A step of length h is kick(b_0 h) drift(c_0 h) kick(b_1 h) drift(c_1 h) ... kick(b_s h). All are
 compositions of kick-drift-kick, so they are symmetric in time; the kick takes the forces of the
 fields and of the charges at the time of its node, the drift is exact in a uniform magnetic field.
+In midpoint-rotation the drift is straight, and magnets act in its one kick, in the middle
+(midpoint_rotation.py).
 
 References
 ----------
@@ -10,6 +12,7 @@ kick-drift-kick: L. Verlet, Phys. Rev. 159 (1967) 98, in its velocity form; orde
 composed-4: M. Suzuki, Phys. Lett. A 146 (1990) 319, five-fold composition; order 4.
 composed-6: H. Yoshida, Phys. Lett. A 150 (1990) 262, table 1, solution A; order 6 (coefficients
 from memory; the fitted order in tests/order confirms them).
+midpoint-rotation: A. V. Higuera and J. R. Cary, Phys. Plasmas 24 (2017) 052104; order 2.
 """
 
 from __future__ import annotations
@@ -52,9 +55,11 @@ def _yoshida() -> tuple[float, ...]:
     return w3, w2, w1, w0, w1, w2, w3
 
 
-ORDER = {"kick-drift-kick": 2, "composed-4": 4, "composed-6": 6}
+MIDWAY = "midpoint-rotation"
+ORDER = {"kick-drift-kick": 2, "composed-4": 4, "composed-6": 6, MIDWAY: 2}
 SCHEMES = {
     "kick-drift-kick": _composed((1.0,)),
     "composed-4": _composed(_suzuki()),
     "composed-6": _composed(_yoshida()),
+    MIDWAY: Scheme(np.array([0.0, 1.0, 0.0]), np.array([0.5, 0.5]), np.array([0.0, 0.5, 1.0])),
 }

@@ -22,10 +22,10 @@ from driftwell.forms.column_files import READERS, columns_inside, told_of_file
 from driftwell.forms.columns import ColumnRules, Columns
 from driftwell.forms.faults import Fault
 from driftwell.forms.inside import check_inside
+from driftwell.forms.waveform_form import WaveformForm
 from driftwell.forms.waveforms import (
     AnyWaveform,
     RealWave,
-    WaveformForm,
     largest_value,
     packed_waveform,
 )

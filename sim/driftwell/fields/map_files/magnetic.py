@@ -30,7 +30,8 @@ from driftwell.forms import Bound, MagneticField, Real, key, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.columns import ColumnError, ColumnRules, Columns
 from driftwell.forms.faults import Fault
-from driftwell.forms.waveforms import WaveformForm, frequency_scale, largest_value
+from driftwell.forms.waveform_form import WaveformForm
+from driftwell.forms.waveforms import frequency_scale, largest_value
 
 Floats = NDArray[np.float64]
 
