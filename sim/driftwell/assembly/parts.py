@@ -20,6 +20,7 @@ from driftwell.assembly.births import (
 )
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.pace import chosen_pace
+from driftwell.coulomb.bunch_frames import BunchFrames, chosen_frames
 from driftwell.coulomb.summation import Summation
 from driftwell.fields.form import Role
 from driftwell.fields.table import field_tables
@@ -66,6 +67,7 @@ class Assembly:
     edges : where fields end that are known in a region only
     acting : the electrodes' solved field; None without electrodes
     images : the conductors that answer to the charges; None where none does
+    frames : in which frames the charges are summed; None: in the laboratory, and unwatched
     """
 
     scenario: Scenario
@@ -81,6 +83,7 @@ class Assembly:
     edges: tuple[Edges, ...] = ()
     acting: ActingField | None = None
     images: Images | None = None
+    frames: BunchFrames | None = None
 
     @property
     def walls(self) -> tuple[WallForm, ...]:
@@ -106,7 +109,7 @@ class Assembly:
             scheme=scenario.stepping.scheme,
             softening=scenario.coulomb.softening,
             coulomb_method=summation.method,
-            coulomb_because=summation.because,
+            coulomb_because="; ".join(filter(None, (summation.because, self.frame_remark()))),
             coulomb_accuracy=scenario.coulomb.accuracy,
             field_error=0.0 if self.acting is None else self.acting.solved.error,
             field_digest="" if self.acting is None else self.acting.solved.digest,
@@ -152,7 +155,12 @@ class Assembly:
             state,
             self.images,
             self.conductors.table,
+            self.frames,
         )
+
+    def frame_remark(self) -> str:
+        """What is to be said of the frames the charges are summed in; empty: nothing."""
+        return "" if self.frames is None else self.frames.because
 
     def image_remark(self) -> str | None:
         """What is to be said of images that are left out, or taken without need; None: nothing."""
@@ -205,7 +213,8 @@ def assembled(
     edges = tuple(edges_in(scenario, acting))
     check_within(scenario, particles, edges)
     requests = all_traces(scenario)
-    choice, every = chosen_pace(scenario, bodies, species, particles, requests, acting)
+    frames = _frames(scenario, particles)
+    choice, every = chosen_pace(scenario, bodies, species, particles, requests, acting, frames)
     samples = scenario.duration / every if requests else 0.0
     extent = extent_of(scenario, charges, int(samples), len(requests))
     bordering = sum(len(each.walls()) for each in edges)
@@ -227,6 +236,7 @@ def assembled(
         edges,
         acting,
         _images(scenario, conductors, particles, choice),
+        frames,
     )
 
 
@@ -252,6 +262,18 @@ def _images(
     charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
     away = form.distance(particles.position)
     return form.images(followed(kick, charge, mass, particles.velocity, away))
+
+
+def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:
+    """The rest frames that the charges are summed in."""
+    return chosen_frames(
+        scenario.coulomb,
+        [cloud.name for cloud in scenario.cloud],
+        particles.cloud,
+        particles.velocity,
+        particles.mass * particles.weight,
+        unfit=scenario.images is not None,
+    )
 
 
 def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:

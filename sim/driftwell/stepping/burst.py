@@ -22,6 +22,7 @@ import math
 import numpy as np
 
 from driftwell.coulomb.direct import PairSum
+from driftwell.coulomb.frame_sum import HELD
 from driftwell.coulomb.unresolved import unresolved_pair
 from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, kernel, outer_kernel
@@ -40,6 +41,7 @@ from driftwell.stepping.accounts import ENERGY_WALLS, WORK_DRIVE, settle
 from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
+from driftwell.stepping.frames import enter_frames, falling_in_frame
 from driftwell.stepping.losses import take_out
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
@@ -79,6 +81,7 @@ RESOLVED = 0.3
 def burst(
     pair_sum: PairSum,
     images: CompiledFunction,
+    frame_sum: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
@@ -141,8 +144,10 @@ def burst(
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
-                        coulomb_forces(pair_sum, images, plan, charges, work)
+                        coulomb_forces(pair_sum, images, frame_sum, 0.0, plan, charges, work)
                         half = 0.5 * every * h
+                        if plan.frames != 0:
+                            enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
                         if plan.images != 0:
                             enter_images(half, work)
@@ -182,7 +187,9 @@ def burst(
                     if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
                     if _pushed_anew(k, stages, first, last, together, met, cursor):
-                        coulomb_forces(pair_sum, images, plan, charges, work)
+                        # frames follow each drift; what else calls for forces leaves them
+                        ahead = 0.5 * scheme.drift[k - 1] * h if 0 < k <= stages else HELD
+                        coulomb_forces(pair_sum, images, frame_sum, ahead, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
                     continue
@@ -193,11 +200,15 @@ def burst(
                         return EVENTS_FULL
                     if every > 1:
                         half = 0.5 * every * h
+                        if plan.frames != 0:
+                            enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
                         if plan.images != 0:
                             enter_images(half, work)
                 keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
+                if together and plan.frames != 0:
+                    enter_frames(plan, charges, True, length, work)
                 push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
                 if together and plan.images != 0:
                     enter_images(length, work)
@@ -270,6 +281,8 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
 @outer_kernel
 def _falling(plan: Plan, charges: Charges, span: float, work: Work) -> int:
     """A charge that falls towards an opposite one faster than steps of `span` follow, or -1."""
+    if plan.frames != 0:
+        return falling_in_frame(plan, charges, (RESOLVED / span) ** 2, work)
     return unresolved_pair(
         charges.position,
         charges.charge,

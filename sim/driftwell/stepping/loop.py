@@ -15,7 +15,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
+from driftwell.coulomb.bunch_frames import BunchFrames, FrameWatch
 from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.frame_sum import HELD, frame_sum
 from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
@@ -36,6 +38,7 @@ from driftwell.kernels.status import (
 from driftwell.particles.state import Particles
 from driftwell.stepping.burst import burst
 from driftwell.stepping.form import Stepping
+from driftwell.stepping.frames import InFrame, take_frames
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_EVENTS,
@@ -117,10 +120,12 @@ class TimeLoop:
         state: Mapping[str, NDArray[Any]] | None = None,
         images: Images | None = None,
         bodies: BodyTable | None = None,
+        frames: BunchFrames | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
+        frames : in which frames the charges are summed; None: in the laboratory, and unwatched
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
         """
         self.particles = particles
@@ -140,7 +145,13 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
             images=int(images is not None),
+            frames=0 if frames is None or coulomb.method == "off" else frames.count,
         )
+        self._bunch = frames.numbers if frames is not None and self.plan.frames else None
+        self._frame_sum = frame_sum(self.plan.frames > 0)
+        self._frame_watch = None
+        if frames is not None and coulomb.method != "off":
+            self._frame_watch = FrameWatch(frames, coulomb.accuracy)
         self._images, self._threads = images, threads
         self._image_sum = no_images()
         self._doubted = False
@@ -207,28 +218,52 @@ class TimeLoop:
 
         Returns the rms relative force error the sum had, and what the user should be told.
         """
+        position, charge, field = self.charges.position, self.charges.charge, self.work.pairs
+        if self.plan.frames:
+            seen = self._largest_bunch()
+            position, charge, field = seen.place, seen.charge, seen.field
         summation, error, told = self.promise.look(
             self.summation,
             Scene(
                 self.time,
                 self.steps_done,
                 self.steps_done * self._sums_per_step,
-                self.charges.position,
-                self.charges.charge,
+                position,
+                charge,
                 self.particles.id,
-                self.work.pairs,
+                field,
                 last=self.mark == len(self.schedule.steps),
             ),
         )
         if summation is not self.summation:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
+            if self.plan.frames:
+                take_frames(
+                    summation.pair_sum, self._frame_sum, HELD, self.plan, self.charges, self.work
+                )
+        if self._frame_watch is not None:
+            told = [
+                *told,
+                *self._frame_watch.look(
+                    self.charges.velocity,
+                    self.charges.mass,
+                    self.charges.charge,
+                    self.charges.cloud,
+                ),
+            ]
         if self._images is not None and not self._doubted:
             doubt = self._images.doubt(self.charges.position, self.charges.charge)
             if doubt is not None:
                 self._doubted = True
                 told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
         return error, told
+
+    def _largest_bunch(self) -> InFrame:
+        """The bunch with the most charges, whose sum is looked at."""
+        own = self.work.bunch[self.charges.cloud[self.charges.charge != 0.0]]
+        number = int(np.bincount(own, minlength=self.plan.frames).argmax())
+        return InFrame(number, self.charges, self.work, self.plan.light2)
 
     def remove_lost(self) -> None:
         """Take the charges lost since the last call out of the arrays."""
@@ -258,6 +293,7 @@ class TimeLoop:
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
             },
+            **({"frames/table": self.work.frames.copy()} if self.plan.frames else {}),
         }
 
     def take_events(self) -> list[Events]:
@@ -281,6 +317,8 @@ class TimeLoop:
             getattr(work, name)[:] = accounts[name]
         work.cursor[:] = state["schedule/cursor"]
         work.cursor[CURSOR_FRESH] = 0
+        if self.plan.frames:
+            work.frames[:] = state["frames/table"]
         work.side[:] = state["surfaces/side"]
         self.charges.alive[:] = state["charges/alive"]
         gone = self.charges.alive == 0
@@ -299,6 +337,7 @@ class TimeLoop:
             burst(
                 self.summation.pair_sum,
                 self._image_sum.function,
+                self._frame_sum,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -335,7 +374,9 @@ class TimeLoop:
             images = self._image_sum = self._images.laid_out(n, self._threads)
         stopped = self._bodies.whole.shape[0] > 0
         surfaces = self._surfaces.kind.size
-        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped)
+        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped, self._bunch)
+        if old.frames.shape == work.frames.shape:
+            work.frames[:] = old.frames
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
