@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
+from driftwell.coulomb.bunch_frames import BunchFrames
 from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
@@ -83,6 +84,7 @@ def loop(
     bodies: Sequence[Sequence[Solid]] = (),
     unborn: Unborn | None = None,
     state: Mapping[str, NDArray[Any]] | None = None,
+    frames: BunchFrames | None = None,
     **stepping: Any,
 ) -> TimeLoop:
     """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
@@ -115,6 +117,7 @@ def loop(
         images,
         body_table(bodies),
         unborn,
+        frames,
     )
 
 

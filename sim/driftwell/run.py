@@ -222,6 +222,8 @@ class _Execution:
         self._ledger = Ledger()
         summation = self._loop.summation
         self._observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
+        if parts.frame_remark():
+            self._observer.told(parts.frame_remark())
         of_images = parts.image_remark()
         if of_images is not None:
             self._observer.told(of_images)

@@ -4,10 +4,17 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 
 from driftwell.answers.evidence import TraceRequest
+from driftwell.coulomb.bunch_frames import (
+    BunchFrames,
+    moving,
+    places_within,
+    velocities_within,
+)
 from driftwell.errors import ScenarioError
 from driftwell.fields.form import FieldForm
 from driftwell.forms import spelled
@@ -40,6 +47,7 @@ def chosen_pace(
     newcomers: Sequence[Rate],
     requests: Sequence[TraceRequest],
     acting: ActingField | None,
+    frames: BunchFrames | None = None,
 ) -> tuple[StepChoice, float]:
     """The step, and the time between samples of the traces.
 
@@ -63,8 +71,7 @@ def chosen_pace(
         choice = StepChoice(float(stepping.step), "the scenario says so")
     else:
         if scenario.coulomb.method != "off":
-            rates += plasma_rates(particles)
-            rates += closest_pair_rates(particles, scenario.coulomb.softening)
+            rates += _own_rates(particles, scenario.coulomb.softening, frames)
             rates += newcomers
         mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
         choice = chosen_step(rates, stepping.steps_per_period, scenario.duration, mark)
@@ -82,6 +89,27 @@ def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str
             f'[[field]] "{field.name}": its numbers, or the motion of {body.name} in it, are too '
             "large or too small to compute with; check its strength and its sizes."
         ) from fault
+
+
+def _own_rates(particles: Particles, softening: float, frames: BunchFrames | None) -> list[Rate]:
+    """How fast charges move among each other: in a bunch's frame, whose time goes slower here."""
+    if frames is None or frames.numbers is None:
+        return [*plasma_rates(particles), *closest_pair_rates(particles, softening)]
+    own, rates = frames.numbers[particles.cloud], []
+    for number in range(frames.count):
+        seen = particles.kept(own == number)
+        if len(seen) == 0:
+            continue
+        frame = moving(seen.velocity, seen.mass * seen.weight)
+        seen.position = places_within(seen.position, frame.proper)
+        seen.velocity = velocities_within(seen.velocity, frame.proper)
+        rates += [
+            replace(rate, rate=rate.rate / frame.lorentz)
+            for rate in (*plasma_rates(seen), *closest_pair_rates(seen, softening))
+        ]
+    if frames.count > 1:  # charges of different bunches may meet
+        rates += closest_pair_rates(particles, softening)
+    return rates
 
 
 def _rates_in(

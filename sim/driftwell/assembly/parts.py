@@ -22,6 +22,7 @@ from driftwell.assembly.births import (
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.newcomers import source_rates
 from driftwell.assembly.pace import chosen_pace
+from driftwell.coulomb.bunch_frames import BunchFrames, chosen_frames
 from driftwell.coulomb.summation import Summation
 from driftwell.fields.form import Role
 from driftwell.fields.table import field_tables
@@ -70,6 +71,7 @@ class Assembly:
     acting : the electrodes' solved field; None without electrodes
     images : the conductors that answer to the charges; None where none does
     unborn : the charges that sources bear; None without sources
+    frames : in which frames the charges are summed; None: in the laboratory, and unwatched
     """
 
     scenario: Scenario
@@ -86,6 +88,7 @@ class Assembly:
     acting: ActingField | None = None
     images: Images | None = None
     unborn: Unborn | None = None
+    frames: BunchFrames | None = None
 
     @property
     def walls(self) -> tuple[WallForm, ...]:
@@ -112,7 +115,7 @@ class Assembly:
             scheme=scenario.stepping.scheme,
             softening=scenario.coulomb.softening,
             coulomb_method=summation.method,
-            coulomb_because=summation.because,
+            coulomb_because="; ".join(filter(None, (summation.because, self.frame_remark()))),
             coulomb_accuracy=scenario.coulomb.accuracy,
             field_error=0.0 if self.acting is None else self.acting.solved.error,
             field_digest="" if self.acting is None else self.acting.solved.digest,
@@ -159,7 +162,12 @@ class Assembly:
             self.images,
             self.conductors.table,
             self.unborn,
+            self.frames,
         )
+
+    def frame_remark(self) -> str:
+        """What is to be said of the frames the charges are summed in; empty: nothing."""
+        return "" if self.frames is None else self.frames.because
 
     def image_remark(self) -> str | None:
         """What is to be said of images that are left out, or taken without need; None: nothing."""
@@ -218,6 +226,7 @@ def assembled(
     edges = tuple(edges_in(scenario, acting))
     check_within(scenario, everyone, edges)
     requests = all_traces(scenario)
+    frames = _frames(scenario, particles)
     emitting = [
         (
             source,
@@ -229,7 +238,7 @@ def assembled(
     setting, softening = scenario.setting(loaded.folder), scenario.coulomb.softening
     newcomers = source_rates(emitting, setting, softening)
     choice, every = chosen_pace(
-        scenario, bodies, species, particles, everyone, newcomers, requests, acting
+        scenario, bodies, species, particles, everyone, newcomers, requests, acting, frames
     )
     samples = scenario.duration / every if requests else 0.0
     born = 0 if unborn is None else len(unborn)
@@ -254,6 +263,7 @@ def assembled(
         acting,
         _images(scenario, conductors, everyone, choice),
         unborn,
+        frames,
     )
 
 
@@ -279,6 +289,18 @@ def _images(
     charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
     away = form.distance(particles.position)
     return form.images(followed(kick, charge, mass, particles.velocity, away))
+
+
+def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:
+    """The rest frames that the charges are summed in."""
+    return chosen_frames(
+        scenario.coulomb,
+        [cloud.name for cloud in scenario.cloud],
+        particles.cloud,
+        particles.velocity,
+        particles.mass * particles.weight,
+        unfit=scenario.images is not None,
+    )
 
 
 def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:

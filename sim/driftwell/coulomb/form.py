@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Annotated, Literal, Self
 
-from driftwell.forms import Bound, Form, Length, NonNegative, Real, checked, key, refuse
+from driftwell.forms import Bound, Form, Length, Name, NonNegative, Real, checked, key, refuse
 
 MIXED_ACCURACY = 1e-6
 """The finest `accuracy` that pairs summed in mixed precision, each good to 1e-7, leave room for."""
@@ -35,6 +35,27 @@ class Coulomb(Form):
         default=0.0,
         example="5 um",
     )
+    frame: Literal["auto", "laboratory", "bunch"] = key(
+        "where charges are taken as at rest. laboratory: here, which leaves magnetic forces out; "
+        "bunch: in the mean rest frame of each cloud, so that they are in; auto: in one frame for "
+        "all, where charges move together so fast that it matters to `accuracy`",
+        default="auto",
+    )
+    share_frame: tuple[tuple[Name, ...], ...] = key(
+        "groups of clouds that move together as one bunch with one frame; others have their own",
+        default=(),
+        example=[["head", "tail"]],
+    )
+
+    @checked
+    def _groups_are_clear(self) -> Self:
+        if self.share_frame and self.frame != "bunch":
+            raise refuse(f'share_frame with frame = "{self.frame}"; needs frame = "bunch"')
+        names = [name for group in self.share_frame for name in group]
+        twice = next((name for k, name in enumerate(names) if name in names[:k]), None)
+        if twice is not None:
+            raise refuse(f'share_frame has "{twice}" twice: a cloud belongs to one group')
+        return self
 
     @checked
     def _precise_enough(self) -> Self:

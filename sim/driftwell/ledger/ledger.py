@@ -68,6 +68,7 @@ from driftwell.stepping.accounts import (
     WORK_FRAMES,
     WORK_INDUCED,
 )
+from driftwell.stepping.frames import InFrame
 from driftwell.stepping.motion import Charges, Plan, Work
 
 Floats = NDArray[np.float64]
@@ -199,7 +200,7 @@ class Ledger:
             sums,
         )
         kinetic, in_fields = float(sums[KINETIC]), float(work.energy[0])
-        pairs = _pairs(plan, charges, sums, summation)
+        pairs = _pairs(plan, charges, work, sums, summation)
         coulomb = pairs.energy
         image = 0.5 * float(np.sum(charges.charge * work.image[3])) if plan.images else 0.0
         momentum, angular = sums[MOMENTUM : MOMENTUM + 3], sums[ANGULAR : ANGULAR + 3]
@@ -341,10 +342,14 @@ class Ledger:
         self._momentum, self._angular = momentum.copy(), angular.copy()
 
 
-def _pairs(plan: Plan, charges: Charges, sums: Floats, summation: Summation | None) -> _Pairs:
+def _pairs(
+    plan: Plan, charges: Charges, work: Work, sums: Floats, summation: Summation | None
+) -> _Pairs:
     """What the charges' own forces at hand come to."""
     if plan.coulomb == 0:
         return _Pairs()
+    if plan.frames != 0 and summation is not None:
+        return _in_frames(plan, charges, work, sums, summation)
     position, charge = charges.position, charges.charge
     potential = np.empty_like(charge)
     if summation is None:
@@ -358,6 +363,24 @@ def _pairs(plan: Plan, charges: Charges, sums: Floats, summation: Summation | No
         _share(force, float(sums[COULOMB_SIZE])),
         _share(torque, float(sums[COULOMB_TORQUE_SIZE])),
         torque,
+    )
+
+
+def _in_frames(
+    plan: Plan, charges: Charges, work: Work, sums: Floats, summation: Summation
+) -> _Pairs:
+    """The same of charges summed in their bunches' frames.
+
+    Their torque in the laboratory is no error, and has its account; that in the frame would be one.
+    """
+    bunches = [InFrame(k, charges, work, plan.light2) for k in range(plan.frames)]
+    return _Pairs(
+        sum(each.energy(summation) for each in bunches),
+        _share(
+            float(np.linalg.norm(sums[COULOMB_FORCE : COULOMB_FORCE + 3])),
+            float(sums[COULOMB_SIZE]),
+        ),
+        max(each.torque_residual() for each in bunches),
     )
 
 

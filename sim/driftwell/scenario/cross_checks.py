@@ -8,6 +8,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.coulomb.bunch_frames import grouped
 from driftwell.electrodes.faults import electrode_faults
 from driftwell.errors import ScenarioError
 from driftwell.forms import spelled
@@ -18,6 +19,7 @@ from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT, Particles
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
+from driftwell.stepping.schemes import MIDWAY
 
 MOST_RECORDS = 1_000_000
 MOST_STEPS = 1e13
@@ -40,6 +42,7 @@ def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
         for i, field in enumerate(scenario.field)
         for fault in field.faults()
     ]
+    faults += _frame_faults(scenario)
     known = bodies(scenario.species)
     of_clouds = [
         Fault(("cloud", i, *fault.path), fault.found, fault.needed)
@@ -114,6 +117,31 @@ def _emission_faults(scenario: Scenario) -> Iterator[Fault]:
         if scenario.images is None:
             text = "needs [images]: without the charge they induce the surface's field is not known"
             yield Fault(path, "true", text)
+
+
+def _frame_faults(scenario: Scenario) -> Iterator[Fault]:
+    """What does not go with the rest frames of bunches."""
+    coulomb = scenario.coulomb
+    if coulomb.frame != "bunch" or coulomb.method == "off":
+        return
+    if scenario.images is not None:
+        text = "does not go with [images], which answer to charges at rest; leave one of them out"
+        yield Fault(("coulomb", "frame"), "", text)
+    if scenario.source:
+        text = "does not go with a [[source]], whose bunch is never all there; leave one of them out"
+        yield Fault(("coulomb", "frame"), "", text)
+    several = max(grouped([each.name for each in scenario.cloud], coulomb.share_frame)) > 0
+    if several and scenario.stepping.scheme == MIDWAY:
+        text = "has several frames, which do not go with midpoint-rotation; give one by share_frame"
+        yield Fault(("coulomb", "frame"), "", text)
+    known = bodies(scenario.species)
+    signs = {known[cloud.species].charge > 0.0 for cloud in scenario.cloud}
+    if several and len(signs) > 1 and coulomb.softening == 0.0:
+        text = (
+            "has several frames for charges of both signs, whose falling together is watched in "
+            "one frame only; give a softening, or all clouds one frame by share_frame"
+        )
+        yield Fault(("coulomb", "frame"), "", text)
 
 
 def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Iterator[Fault]:

@@ -6,6 +6,7 @@ from collections.abc import Iterator
 from itertools import groupby
 from operator import itemgetter
 
+from driftwell.coulomb.bunch_frames import grouped
 from driftwell.coulomb.crossover import LEAST
 from driftwell.coulomb.direct import SMALL
 from driftwell.electrodes.form import electrodes_words
@@ -93,7 +94,17 @@ def _coulomb_words(loaded: LoadedScenario) -> str:
     else:
         way = f"every pair of charges, or where that is faster on the machine {tree}"
     precise = "" if coulomb.precision == "auto" else f", in {coulomb.precision} precision"
-    return f"{way}, {soft}{precise}"
+    return f"{way}, {soft}{precise}{_frame_words(loaded.scenario)}"
+
+
+def _frame_words(scenario: Scenario) -> str:
+    coulomb = scenario.coulomb
+    if coulomb.frame == "laboratory":
+        return ", of charges as at rest in the laboratory"
+    if coulomb.frame == "auto":
+        return ""
+    count = max(grouped([cloud.name for cloud in scenario.cloud], coulomb.share_frame)) + 1
+    return f", in the rest frame{'s' * (count > 1)} of {count} bunch{'es' * (count > 1)}"
 
 
 def _stepping_words(scenario: Scenario) -> str:

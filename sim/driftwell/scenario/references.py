@@ -34,6 +34,7 @@ def reference_faults(data: Mapping[str, Any]) -> list[Fault]:
     faults += _same_as_surfaces(data)
     faults += _unknown_species(data)
     faults += _unknown_in_questions(data)
+    faults += _unknown_in_frames(data)
     return faults
 
 
@@ -128,6 +129,18 @@ def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:
                     key = next((key for key in entry if entry[key] == name), "of")
                     path = ("question", i, key)
                     yield _unknown(path, name, f"[[{section}]]", known, f"; {there}")
+
+
+def _unknown_in_frames(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Clouds that are to share a rest frame."""
+    coulomb = data.get("coulomb")
+    groups = coulomb.get("share_frame") if isinstance(coulomb, Mapping) else None
+    known = _names(data, "cloud")
+    for i, group in enumerate(groups if isinstance(groups, list) else ()):
+        for k, name in enumerate(group if isinstance(group, list) else ()):
+            if isinstance(name, str) and name not in known:
+                path = ("coulomb", "share_frame", i, k)
+                yield _unknown(path, name, "[[cloud]]", known, f"; {_there(known)}")
 
 
 def _there(known: list[str]) -> str:

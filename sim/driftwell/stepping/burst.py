@@ -25,6 +25,7 @@ import math
 import numpy as np
 
 from driftwell.coulomb.direct import PairSum
+from driftwell.coulomb.frame_sum import HELD
 from driftwell.coulomb.unresolved import unresolved_pair
 from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel, kernel, outer_kernel
@@ -45,6 +46,7 @@ from driftwell.stepping.births import Births, close_births, take_births
 from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
+from driftwell.stepping.frames import enter_frames, falling_in_frame
 from driftwell.stepping.losses import take_out
 from driftwell.stepping.midpoint_passes import from_middle, to_middle
 from driftwell.stepping.motion import (
@@ -87,6 +89,7 @@ def burst(
     pair_sum: PairSum,
     images: CompiledFunction,
     bearing: CompiledFunction,
+    frame_sum: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
@@ -163,7 +166,9 @@ def burst(
                             work,
                         )
                         if together:
-                            _forces_in_middle(pair_sum, images, plan, charges, h, work)
+                            _forces_in_middle(
+                                pair_sum, images, frame_sum, plan, charges, h, work
+                            )
                         from_middle(
                             passes,
                             plan,
@@ -205,8 +210,10 @@ def burst(
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
-                        coulomb_forces(pair_sum, images, plan, charges, work)
+                        coulomb_forces(pair_sum, images, frame_sum, 0.0, plan, charges, work)
                         half = 0.5 * every * h
+                        if plan.frames != 0:
+                            enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
                         if plan.images != 0:
                             enter_images(half, work)
@@ -246,7 +253,9 @@ def burst(
                     if jump or k == stages + 2:
                         _settle_energy(energy, jump, work)
                     if _pushed_anew(k, stages, first, last, together, asked, met, cursor):
-                        coulomb_forces(pair_sum, images, plan, charges, work)
+                        # frames follow each drift; what else calls for forces leaves them
+                        ahead = 0.5 * scheme.drift[k - 1] * h if 0 < k <= stages else HELD
+                        coulomb_forces(pair_sum, images, frame_sum, ahead, plan, charges, work)
                     cursor[CURSOR_FRESH] = 1
                 if k > stages:
                     continue
@@ -263,6 +272,8 @@ def burst(
                         return NEED_BIRTHS
                     if every > 1:
                         half = 0.5 * every * h
+                        if plan.frames != 0:
+                            enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
                         if plan.images != 0:
                             enter_images(half, work)
@@ -270,6 +281,8 @@ def burst(
                     continue
                 keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
+                if together and plan.frames != 0:
+                    enter_frames(plan, charges, True, length, work)
                 push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
                 if together and plan.images != 0:
                     enter_images(length, work)
@@ -315,15 +328,18 @@ def _pushed_anew(
 def _forces_in_middle(
     pair_sum: PairSum,
     images: CompiledFunction,
+    frame_sum: CompiledFunction,
     plan: Plan,
     charges: Charges,
     h: float,
     work: Work,
 ) -> None:
-    """The charges' own field in the middle of a step, and what images give in it."""
-    coulomb_forces(pair_sum, images, plan, charges, work)
+    """The charges' own field in the middle of a step, and what images and frames give in it."""
+    coulomb_forces(pair_sum, images, frame_sum, 0.5 * h, plan, charges, work)
     if plan.images != 0:
         enter_images(h, work)
+    if plan.frames != 0:
+        enter_frames(plan, charges, True, h, work)
 
 
 @outer_kernel
@@ -366,6 +382,8 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
 @outer_kernel
 def _falling(plan: Plan, charges: Charges, span: float, work: Work) -> int:
     """A charge that falls towards an opposite one faster than steps of `span` follow, or -1."""
+    if plan.frames != 0:
+        return falling_in_frame(plan, charges, (RESOLVED / span) ** 2, work)
     return unresolved_pair(
         charges.position,
         charges.charge,

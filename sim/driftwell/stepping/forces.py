@@ -15,6 +15,7 @@ from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.kernels.waveform import waveform
 from driftwell.stepping.accounts import IMPULSE_IMAGES, TORQUE_IMAGES, Six
+from driftwell.stepping.frames import take_frames
 from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
 
@@ -194,9 +195,21 @@ def force_and_torque(charges: Charges, field: np.ndarray, first: int, last: int)
 
 @inner_kernel
 def coulomb_forces(
-    pair_sum: PairSum, images: CompiledFunction, plan: Plan, charges: Charges, work: Work
+    pair_sum: PairSum,
+    images: CompiledFunction,
+    frame_sum: CompiledFunction,
+    ahead: float,
+    plan: Plan,
+    charges: Charges,
+    work: Work,
 ) -> None:
-    """The charges' field at each other, with their images; overwrites ``work.coulomb``."""
+    """The charges' field at each other, with their images; overwrites ``work.coulomb``.
+
+    ahead : s to the time at which bunches' frames are wanted, see coulomb/frame_sum.py
+    """
+    if plan.frames != 0:
+        take_frames(pair_sum, frame_sum, ahead, plan, charges, work)
+        return
     _pair_forces(pair_sum, plan, charges, work)
     if plan.images != 0:
         take_images(images, plan, charges, work)

@@ -15,7 +15,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
+from driftwell.coulomb.bunch_frames import BunchFrames, FrameWatch
 from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.frame_sum import HELD, frame_sum
 from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
 from driftwell.errors import StepError
@@ -39,6 +41,7 @@ from driftwell.particles.unborn import Unborn
 from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
 from driftwell.stepping.form import Stepping
+from driftwell.stepping.frames import InFrame, take_frames
 from driftwell.stepping.midpoint_passes import midpoint_passes_over
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
@@ -126,10 +129,12 @@ class TimeLoop:
         images: Images | None = None,
         bodies: BodyTable | None = None,
         unborn: Unborn | None = None,
+        frames: BunchFrames | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
+        frames : in which frames the charges are summed; None: in the laboratory, and unwatched
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
         unborn : charges that are born on the way
         """
@@ -156,7 +161,13 @@ class TimeLoop:
             light2=SPEED_OF_LIGHT**2,
             images=int(images is not None),
             midway=int(stepping.scheme == MIDWAY),
+            frames=0 if frames is None or coulomb.method == "off" else frames.count,
         )
+        self._bunch = frames.numbers if frames is not None and self.plan.frames else None
+        self._frame_sum = frame_sum(self.plan.frames > 0)
+        self._frame_watch = None
+        if frames is not None and coulomb.method != "off":
+            self._frame_watch = FrameWatch(frames, coulomb.accuracy)
         self._images, self._threads = images, threads
         self._image_sum = no_images()
         self._doubted = False
@@ -254,28 +265,52 @@ class TimeLoop:
 
         Returns the rms relative force error the sum had, and what the user should be told.
         """
+        position, charge, field = self.charges.position, self.charges.charge, self.work.pairs
+        if self.plan.frames:
+            seen = self._largest_bunch()
+            position, charge, field = seen.place, seen.charge, seen.field
         summation, error, told = self.promise.look(
             self.summation,
             Scene(
                 self.time,
                 self.steps_done,
                 self.steps_done * self._sums_per_step,
-                self.charges.position,
-                self.charges.charge,
+                position,
+                charge,
                 self.particles.id,
-                self.work.pairs,
+                field,
                 last=self.mark == len(self.schedule.steps),
             ),
         )
         if summation is not self.summation:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
+            if self.plan.frames:
+                take_frames(
+                    summation.pair_sum, self._frame_sum, HELD, self.plan, self.charges, self.work
+                )
+        if self._frame_watch is not None:
+            told = [
+                *told,
+                *self._frame_watch.look(
+                    self.charges.velocity,
+                    self.charges.mass,
+                    self.charges.charge,
+                    self.charges.cloud,
+                ),
+            ]
         if self._images is not None and not self._doubted:
             doubt = self._images.doubt(self.charges.position, self.charges.charge)
             if doubt is not None:
                 self._doubted = True
                 told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
         return error, told
+
+    def _largest_bunch(self) -> InFrame:
+        """The bunch with the most charges, whose sum is looked at."""
+        own = self.work.bunch[self.charges.cloud[self.charges.charge != 0.0]]
+        number = int(np.bincount(own, minlength=self.plan.frames).argmax())
+        return InFrame(number, self.charges, self.work, self.plan.light2)
 
     def remove_lost(self) -> None:
         """Take the charges lost since the last call out of the arrays."""
@@ -328,6 +363,7 @@ class TimeLoop:
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
             },
+            **({"frames/table": self.work.frames.copy()} if self.plan.frames else {}),
         }
 
     def take_events(self) -> list[Events]:
@@ -357,6 +393,8 @@ class TimeLoop:
         work.cursor[:] = state["schedule/cursor"]
         self._pools.take_up(int(work.cursor[CURSOR_BIRTH]))
         work.cursor[CURSOR_FRESH] = 0
+        if self.plan.frames:
+            work.frames[:] = state["frames/table"]
         work.side[:] = state["surfaces/side"]
         self.charges.alive[:] = state["charges/alive"]
         gone = self.charges.alive == 0
@@ -376,6 +414,7 @@ class TimeLoop:
                 self.summation.pair_sum,
                 self._image_sum.function,
                 self._bearing,
+                self._frame_sum,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -415,7 +454,11 @@ class TimeLoop:
         stopped = self._bodies.whole.shape[0] > 0
         surfaces = self._surfaces.kind.size
         midway = bool(self.plan.midway)
-        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped, midway)
+        work = work_space(
+            n, surfaces, tiles, levels, collapse, images, stopped, midway, self._bunch
+        )
+        if old.frames.shape == work.frames.shape:
+            work.frames[:] = old.frames
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0

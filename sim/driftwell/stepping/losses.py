@@ -21,6 +21,7 @@ from driftwell.stepping.accounts import (
     enter_wall_moment,
 )
 from driftwell.stepping.forces import take_images
+from driftwell.stepping.frames import energy_in_frame
 from driftwell.stepping.motion import LEAVING, Charges, Plan, Work, put
 from driftwell.walls.table import SurfaceTable, level
 
@@ -51,15 +52,18 @@ def take_out(
         leaving = 0
         for i in range(n):
             leaving += charges.alive[i] == LEAVING
-        if leaving >= MANY_LOST:
+        if leaving >= MANY_LOST and plan.frames == 0:
             one_by_one = False
             _enter_energy_of_many(pair_sum, plan, charges, work)
     for i in range(n):
         if charges.alive[i] == LEAVING:
             if one_by_one:
-                energy = charges.charge[i] * potential_at(
-                    i, charges.position, charges.charge, plan.softening2, plan.constant
-                )
+                if plan.frames != 0:
+                    energy = energy_in_frame(i, plan, charges, work)
+                else:
+                    energy = charges.charge[i] * potential_at(
+                        i, charges.position, charges.charge, plan.softening2, plan.constant
+                    )
                 add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
             _absorb(plan, charges, i, work)
             x, y, z = work.old_position[0, i], work.old_position[1, i], work.old_position[2, i]

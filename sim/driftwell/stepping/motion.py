@@ -10,6 +10,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.coulomb.frame_table import ROWS, frame_table
 from driftwell.coulomb.unresolved import search_room
 from driftwell.fields.table import FieldTable
 from driftwell.images.image_sum import ImageSum
@@ -72,6 +73,7 @@ class Plan(NamedTuple):
     light2 : c^2, m^2/s^2
     images : 1 where conductors answer to the charges
     midway : 1 where momenta change in the middle of a step only (midpoint_rotation.py)
+    frames : bunches whose charges are summed in a rest frame of their own; 0: in the laboratory
     """
 
     coulomb: int
@@ -83,6 +85,7 @@ class Plan(NamedTuple):
     light2: float
     images: int
     midway: int = 0
+    frames: int = 0
 
 
 class Trace(NamedTuple):
@@ -104,10 +107,14 @@ class Work(NamedTuple):
     """Arrays the loop keeps between calls; none is allocated inside a step.
 
     external, coulomb, induced : (3, n) fields, V/m; spare : (3, n)
-    pairs : (3, n) V/m, the charges' at each other alone: `coulomb` itself where there are no images
+    pairs : (3, n) V/m, the charges' at each other alone: `coulomb` itself where there are neither
+        images nor several bunches
     image : (4, n) field and potential of the images, V/m and V; (4, 0) where there are none
     image_table, image_work : what their sum reads, and works in
     image_force : (6,) N and N m, force and torque of the images on all charges
+    bunch : (clouds,) int64, in which bunch's frame a cloud is summed; empty where none has one
+    frames : (bunches + 1, COLUMNS), see coulomb/frame_table.py
+    frame_rows : (ROWS, n) room for the sum in frames; (ROWS, 0) where there are none
     slowness : (n,) 1/gamma
     old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
         the electric one that the step's kicks begin with, V/m
@@ -131,6 +138,9 @@ class Work(NamedTuple):
     image_table: Floats
     image_work: Floats
     image_force: Floats
+    bunch: Ints
+    frames: Floats
+    frame_rows: Floats
     induced: Floats
     spare: Floats
     slowness: Floats
@@ -216,6 +226,7 @@ def work_space(
     images: ImageSum | None = None,
     bodies: bool = False,
     in_blocks: bool = False,
+    bunch: Ints | None = None,
 ) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
@@ -226,17 +237,23 @@ def work_space(
     images : the sum over the images; None where there are none
     bodies : whether electrodes stop charges
     in_blocks : whether few charges are passed through in blocks too
+    bunch : (clouds,) to which bunch each cloud belongs; None where none has a frame
     """
     events = 2 * room_for_events(n, surfaces + bodies)
     coulomb = room((3, n))
+    own = np.zeros(0, dtype=np.int64) if bunch is None else bunch
+    bunches = bunches_in(own)
     return Work(
         external=room((3, n)),
         coulomb=coulomb,
-        pairs=coulomb if images is None else room((3, n)),
+        pairs=coulomb if images is None and bunches < 2 else room((3, n)),
         image=room((4, 0 if images is None else n)),
         image_table=room((0,)) if images is None else images.table,
         image_work=room((0, 0)) if images is None else images.work,
         image_force=np.zeros(6),
+        bunch=own,
+        frames=frame_table(bunches),
+        frame_rows=room((ROWS, n if bunches else 0)),
         induced=room((3, n)),
         spare=room((3, n)),
         slowness=room((n,)),
@@ -257,6 +274,11 @@ def work_space(
         events=np.zeros((events, EVENT_COLUMNS)),
         cursor=np.zeros(CURSORS, dtype=np.int64),
     )
+
+
+def bunches_in(bunch: Ints) -> int:
+    """Number of bunches, from the bunch (clouds,) that each cloud belongs to."""
+    return int(bunch.max()) + 1 if bunch.size else 0
 
 
 @inner_kernel
