@@ -16,7 +16,7 @@ Floats = Any
 
 @kernel
 def _verdicts(row: Any, others: Any, order: int, out: Any) -> None:
-    verdicts(row, others, order, out)
+    verdicts(row, others, (0.0, 0.0, 0.0), order, out)
 
 
 def verdict(a: Floats, b: Floats, order: int = 6) -> float:

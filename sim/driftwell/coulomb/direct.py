@@ -262,7 +262,7 @@ def _group(
         work_row[i] = 0.0
     columns = (n + TILE - 1) // TILE
     for c in range(columns):
-        if _dealt(columns - 1 - c, group_count) != g:
+        if dealt(columns - 1 - c, group_count) != g:
             continue
         first = c * TILE
         filled = min(TILE, n - first)
@@ -273,7 +273,7 @@ def _group(
 
 
 @inner_kernel
-def _dealt(place: int, group_count: int) -> int:
+def dealt(place: int, group_count: int) -> int:
     """The group of a column by its place from the longest down.
 
     Columns are dealt back and forth, and in turn to the first and the last groups, so that any

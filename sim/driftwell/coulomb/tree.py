@@ -79,8 +79,12 @@ def tightened(settings: TreeSettings, factor: float) -> TreeSettings:
     """
     if factor < 1.0:
         return replace(settings, tolerance=settings.tolerance / factor ** (1.0 / _SLOPE))
-    reached = _ERRORS[settings.order] * (settings.tolerance / _REFERENCE) ** _SLOPE
-    return settings_for(reached / _SHARE / factor)
+    return settings_for(reached(settings) / _SHARE / factor)
+
+
+def reached(settings: TreeSettings) -> float:
+    """The rms relative error of the hardest cloud."""
+    return float(_ERRORS[settings.order] * (settings.tolerance / _REFERENCE) ** _SLOPE)
 
 
 def tree_workspace(

@@ -64,6 +64,9 @@ TOLERANCE, LEAF, WORKERS, COUNTER, PART, MARKS = 0, 1, 2, 3, 4, 8
 begin and length of each region."""
 OWNER = 56
 """Where, in the header, eight numbers stand that belong to who calls the tree."""
+IMAGES, AXIS, PERIOD = 5, 6, 7
+"""More of them: near images on each side of which all cells gather too, along an axis, at a
+distance in metres. The tree of charges without images has none of them."""
 _HEADER = 64
 _REGIONS = (
     "place",
@@ -88,6 +91,12 @@ _REGIONS = (
     "ranges",
     "path",
 )
+
+
+Images = tuple[int, int, float]
+"""Near images on each side, the axis, and the period in the tree's units."""
+Away = tuple[float, float, float]
+"""By how much the cells or charges that push stand away from where they are."""
 
 
 class Tree(NamedTuple):
@@ -143,8 +152,8 @@ class Desk(NamedTuple):
     path: Ints
 
 
-def regions(n: int, threads: int, leaf: int, of: BasisType) -> dict[str, int]:
-    """Length of each region, float64, for `n` charges."""
+def regions(n: int, threads: int, leaf: int, of: BasisType, images: int = 0) -> dict[str, int]:
+    """Length of each region, float64, for `n` charges with so many near images on each side."""
     leaves = max(-(-n // leaf), 1)
     cells = 2 * leaves + 1
     room = leaves * leaf + 2 * BATCH
@@ -167,7 +176,7 @@ def regions(n: int, threads: int, leaf: int, of: BasisType) -> dict[str, int]:
         "above": local * min(MOST_TASKS, cells),
         "local": threads * local * LEVELS,
         "lanes": threads * max(TURNED + BATCH * (moment + local), BATCH * full),
-        "waiting": threads * (LEVELS * (cells + 2)),
+        "waiting": threads * (LEVELS * (cells + 2) * (2 * images + 1)),
         "queue": threads * (cells + 2 * BATCH),
         "far": threads * (FARS + BATCH),
         "ranges": threads * 2 * RANGES,
@@ -176,13 +185,19 @@ def regions(n: int, threads: int, leaf: int, of: BasisType) -> dict[str, int]:
 
 
 def laid_out(
-    n: int, threads: int, leaf: int, tolerance: float, of: BasisType, behind: int = 0
+    n: int,
+    threads: int,
+    leaf: int,
+    tolerance: float,
+    of: BasisType,
+    images: int = 0,
+    behind: int = 0,
 ) -> Floats:
     """(1, size) float64, work space for `n` charges, without the address of its part.
 
-    behind : numbers wanted behind all of it
+    images : the most near images on each side; behind : numbers wanted behind all of it
     """
-    lengths = {name: padded(size) for name, size in regions(n, threads, leaf, of).items()}
+    lengths = {name: padded(size) for name, size in regions(n, threads, leaf, of, images).items()}
     work = np.empty((1, _HEADER + sum(lengths.values()) + behind))
     header = work[0, :_HEADER]
     header[:] = 0.0

@@ -19,7 +19,7 @@ from driftwell.kernels.lanes import (
     store,
     where_above,
 )
-from driftwell.tree.cells import BATCH, CELL, RIGHT, TURNED, Tree, X, Y, Z
+from driftwell.tree.cells import BATCH, CELL, RIGHT, TURNED, Away, Tree, X, Y, Z
 from driftwell.tree.expansions import (
     BasisType,
     add_cells,
@@ -49,11 +49,12 @@ def hear(
     cell: int,
     far: int,
     which: np.ndarray,
+    away: Away,
     tree: Tree,
     softening2: float,
     work_lanes: np.ndarray,
 ) -> None:
-    """Add so many far cells to a cell's local expansion, in lanes, eight at a time.
+    """Add so many far cells' images to a cell's local expansion, in lanes, eight at a time.
 
     which : (far + 8,) int64, overwritten behind the first `far`
     """
@@ -65,9 +66,9 @@ def hear(
     for k in range(0, far, BATCH):
         side_by_side(tree.cells.reshape(-1), BATCH, CELL, which, k, work_lanes)
         side_by_side(tree.moments, length, length, which, k, turned)
-        x = lanes(row[X]) - load(work_lanes, 0)
-        y = lanes(row[Y]) - load(work_lanes, BATCH)
-        z = lanes(row[Z]) - load(work_lanes, 2 * BATCH)
+        x = (lanes(row[X]) - load(work_lanes, 0)) - lanes(away[0])
+        y = (lanes(row[Y]) - load(work_lanes, BATCH)) - lanes(away[1])
+        z = (lanes(row[Z]) - load(work_lanes, 2 * BATCH)) - lanes(away[2])
         add_cells(of, x, y, z, _inverse(x, y, z, softening2), turned, local)
 
 
@@ -76,6 +77,7 @@ def one_by_one(
     of: BasisType,
     cell: int,
     other: int,
+    away: Away,
     tree: Tree,
     softening2: float,
     work_lanes: np.ndarray,
@@ -83,12 +85,13 @@ def one_by_one(
     """Let a cell gather from another where one is a leaf whose charges are taken one by one."""
     is_leaf = tree.cells[cell, RIGHT] == 0.0
     leaf, middle = (cell, tree.cells[other]) if is_leaf else (other, tree.cells[cell])
+    sign = 1.0 if is_leaf else -1.0
     local = work_lanes[local_lanes(of) :]
     none = lanes(0.0)
     for i in range(tree.first[leaf], tree.first[leaf + 1], WIDTH):
-        x = load(tree.place[0], i) - lanes(middle[X])
-        y = load(tree.place[1], i) - lanes(middle[Y])
-        z = load(tree.place[2], i) - lanes(middle[Z])
+        x = (load(tree.place[0], i) - lanes(middle[X])) - lanes(sign * away[0])
+        y = (load(tree.place[1], i) - lanes(middle[Y])) - lanes(sign * away[1])
+        z = (load(tree.place[2], i) - lanes(middle[Z])) - lanes(sign * away[2])
         inverse = _inverse(x, y, z, softening2)
         if is_leaf:
             found = field_of_cell(of, x, y, z, inverse, tree.moments, other * moment_row(of))
@@ -100,14 +103,20 @@ def one_by_one(
 
 @outer_kernel
 def push(
-    of: BasisType, cell: int, near: int, ranges: np.ndarray, tree: Tree, softening2: float
+    of: BasisType,
+    cell: int,
+    near: int,
+    ranges: np.ndarray,
+    away: Away,
+    tree: Tree,
+    softening2: float,
 ) -> None:
-    """Add near charges, in so many ranges, to the fields at a leaf's own, pair by pair."""
+    """Add images of near charges, in so many ranges, to the fields at a leaf's own, by pairs."""
     x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
     soft = lanes(softening2)
     for i in range(tree.first[cell], tree.first[cell + 1], 2 * WIDTH):
-        xa, ya, za = load(x, i), load(y, i), load(z, i)
-        xb, yb, zb = load(x, i + WIDTH), load(y, i + WIDTH), load(z, i + WIDTH)
+        xa, ya, za = _moved(x, y, z, i, away)
+        xb, yb, zb = _moved(x, y, z, i + WIDTH, away)
         ax = ay = az = bx = by = bz = lanes(0.0)
         for k in range(near):
             for j in range(ranges[2 * k], ranges[2 * k + 1]):
@@ -131,12 +140,14 @@ def push(
 
 
 @outer_kernel
-def push_potential(cell: int, near: int, ranges: np.ndarray, tree: Tree, softening2: float) -> None:
+def push_potential(
+    cell: int, near: int, ranges: np.ndarray, away: Away, tree: Tree, softening2: float
+) -> None:
     """Add the potentials of near charges to those at a leaf's own; a softened one's own too."""
     x, y, z, charge = tree.place[0], tree.place[1], tree.place[2], tree.place[3]
     soft, nothing = lanes(softening2), lanes(AT_ONE_PLACE)
     for i in range(tree.first[cell], tree.first[cell + 1], WIDTH):
-        xi, yi, zi = load(x, i), load(y, i), load(z, i)
+        xi, yi, zi = _moved(x, y, z, i, away)
         potential = lanes(0.0)
         for k in range(near):
             for j in range(ranges[2 * k], ranges[2 * k + 1]):
@@ -145,6 +156,18 @@ def push_potential(cell: int, near: int, ranges: np.ndarray, tree: Tree, softeni
                 qj = where_above(square, nothing, load_one(charge, j))
                 potential = fused(qj, inverse_root(square), potential)
         _add(tree.field[3], i, potential)
+
+
+@inner_kernel
+def _moved(
+    x: np.ndarray, y: np.ndarray, z: np.ndarray, i: int, away: Away
+) -> tuple[LanesType, LanesType, LanesType]:
+    """Eight places as they stand to images that are `away`."""
+    return (
+        load(x, i) - lanes(away[0]),
+        load(y, i) - lanes(away[1]),
+        load(z, i) - lanes(away[2]),
+    )
 
 
 @inner_kernel

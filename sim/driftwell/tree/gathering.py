@@ -17,12 +17,16 @@ from driftwell.kernels.lane_values import emitted_code
 from driftwell.kernels.pointers import CompiledFunction, call_address
 from driftwell.tree.build import grow
 from driftwell.tree.cells import (
+    AXIS,
     CELL,
     FEELING,
+    IMAGES,
     LEAF,
     PART,
+    PERIOD,
     RIGHT,
     Floats,
+    Images,
     Tree,
     X,
     desk_in,
@@ -53,13 +57,15 @@ def tree_room(
     order: int,
     softened: bool,
     mixed: bool,
+    images: int = 0,
     behind: int = 0,
 ) -> Floats:
     """(1, size) float64, work space for `n` charges; pages not used are not touched.
 
-    behind : numbers wanted behind all of it
+    images : the most near images on each side; behind : numbers wanted behind all of it
     """
-    work = laid_out(n, threads, leaf, tolerance, BasisType(order, softened, mixed), behind)
+    basis_type = BasisType(order, softened, mixed)
+    work = laid_out(n, threads, leaf, tolerance, basis_type, images, behind)
     work[0, PART : PART + 1].view(np.int64)[0] = part(order, softened, mixed).__wrapper_address__()
     return work
 
@@ -94,7 +100,7 @@ def part(order: int, softened: bool, mixed: bool) -> CompiledFunction:
                 measure_parent(of, tree.tops[k], tree)
             _place_nobody(moment_row(of), tree)
         elif stage == GATHER_ABOVE:
-            gather_above(of, potential, tree, desk, softening2)
+            gather_above(of, potential, tree, desk, softening2, _images_in(unit, work))
         else:
             n = charge.size
             _gather_tasks(of, worker, count, n, leaf, softening2, constant, unit, work, out_field)
@@ -126,6 +132,12 @@ def call_part(
         return call_address(context, builder, sig, address, args)
 
     return signature, emitted
+
+
+@inner_kernel
+def _images_in(unit: float, work: np.ndarray) -> Images:
+    """The near images a work space tells of, in the tree's units."""
+    return int(work[0, IMAGES]), int(work[0, AXIS]), work[0, PERIOD] * unit
 
 
 @view_kernel
@@ -218,7 +230,7 @@ def _gather_tasks(
     potential = out_field.shape[0] == 4
     task = next_task(taken)
     while task < tasks:
-        gather(of, task, potential, tree, desk, softening2)
+        gather(of, task, potential, tree, desk, softening2, _images_in(unit, work))
         low, high, _, _ = bounds(task, tasks, n, leaf, tree)
         _hand_out(low, high, softening2, constant * unit, unit, tree, out_field)
         task = next_task(taken)

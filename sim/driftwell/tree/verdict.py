@@ -35,7 +35,7 @@ from driftwell.kernels.lanes import (
     store,
     where_above,
 )
-from driftwell.tree.cells import BATCH, REACH, RIGHT, SPREAD, STRENGTH, WANT, X, Y, Z
+from driftwell.tree.cells import BATCH, REACH, RIGHT, SPREAD, STRENGTH, WANT, Away, X, Y, Z
 
 NEAR, FAR, BY_CHARGE, NOTHING = 0.0, 1.0, 2.0, 3.0
 """Cut one of them, or sum over charges; expansions; a leaf's charges one by one; no force."""
@@ -45,12 +45,14 @@ _CLOSEST2 = tuple(10.0 ** (-560.0 / (2 * order + 1)) for order in range(16))
 
 
 @inner_kernel
-def verdicts(row: np.ndarray, others: np.ndarray, order: int, out_verdicts: np.ndarray) -> None:
-    """What is done with a cell A and eight others, given its row and theirs side by side."""
+def verdicts(
+    row: np.ndarray, others: np.ndarray, away: Away, order: int, out_verdicts: np.ndarray
+) -> None:
+    """What is done with a cell A and images of eight others, given its row and theirs in lanes."""
     one, none = lanes(1.0), lanes(0.0)
-    x = lanes(row[X]) - load(others, BATCH * X)
-    y = lanes(row[Y]) - load(others, BATCH * Y)
-    z = lanes(row[Z]) - load(others, BATCH * Z)
+    x = (lanes(row[X]) - load(others, BATCH * X)) - lanes(away[0])
+    y = (lanes(row[Y]) - load(others, BATCH * Y)) - lanes(away[1])
+    z = (lanes(row[Z]) - load(others, BATCH * Z)) - lanes(away[2])
     reach_a, reach_b = lanes(row[REACH]), load(others, BATCH * REACH)
     spread_a, spread_b = lanes(row[SPREAD]), load(others, BATCH * SPREAD)
     at_a = load(others, BATCH * STRENGTH) * lanes(row[WANT])

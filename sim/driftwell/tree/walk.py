@@ -21,7 +21,9 @@ from driftwell.tree.cells import (
     RIGHT,
     STRENGTH,
     VERDICTS,
+    Away,
     Desk,
+    Images,
     Tree,
     X,
     Y,
@@ -67,8 +69,11 @@ def _visit(
     tree: Tree,
     desk: Desk,
     softening2: float,
+    images: Images,
 ) -> int:
     """Let one cell gather from the cells that wait for it; returns the end of those left over.
+
+    Behind a mark that is negative stand cells whose images, at the distance that it says, wait.
 
     quiet : only find out what is left to its children
     begin, end : the waiting cells; those left to the children follow them
@@ -81,59 +86,97 @@ def _visit(
     waiting, queue, ranges = desk.waiting, desk.queue, desk.ranges
     nobody = tree.cells.shape[0] - 1
     levels_at_one_place = potential and softening2 > AT_ONE_PLACE
-    left_over = end
-    far = near = 0
-    for k in range(begin, end):
-        queue[k - begin] = waiting[k]
-    head, tail = 0, end - begin
-    while head < tail:
-        count = min(tail - head, BATCH)
-        for k in range(count, BATCH):
-            queue[head + k] = nobody
-        side_by_side(tree.cells.reshape(-1), BATCH, CELL, queue, head, desk.lanes)
-        verdicts(row, desk.lanes, order, desk.lanes[VERDICTS:])
-        for k in range(count):
-            other, found = queue[head + k], desk.lanes[VERDICTS + k]
-            if desk.lanes[BATCH * STRENGTH + k] == 0.0:
-                continue  # nothing comes from cells without charge
-            if found == FAR or (found == NOTHING and levels_at_one_place):
-                desk.far[far] = other
-                far += 1
-            elif found == BY_CHARGE:
-                if not quiet:
-                    one_by_one(of, cell, other, tree, softening2, desk.lanes)
-            elif other == cell:
-                if is_leaf:
-                    near = _note_range(cell, tree.first, ranges, near)
+    left_over, at = end, begin
+    away = (0.0, 0.0, 0.0)
+    while at < end:
+        noted = left_over
+        if waiting[at] < 0:  # what follows are images
+            away = _away(waiting[at], images)
+            waiting[left_over] = waiting[at]
+            at += 1
+            left_over += 1
+        far = near = head = tail = 0
+        first = left_over
+        while at < end and waiting[at] >= 0:
+            queue[tail] = waiting[at]
+            at += 1
+            tail += 1
+        while head < tail:
+            count = min(tail - head, BATCH)
+            for k in range(count, BATCH):
+                queue[head + k] = nobody
+            side_by_side(tree.cells.reshape(-1), BATCH, CELL, queue, head, desk.lanes)
+            verdicts(row, desk.lanes, away, order, desk.lanes[VERDICTS:])
+            for k in range(count):
+                other, found = queue[head + k], desk.lanes[VERDICTS + k]
+                if desk.lanes[BATCH * STRENGTH + k] == 0.0:
+                    continue  # nothing comes from cells without charge
+                if found == FAR or (found == NOTHING and levels_at_one_place):
+                    desk.far[far] = other
+                    far += 1
+                elif found == BY_CHARGE:
+                    if not quiet:
+                        one_by_one(of, cell, other, away, tree, softening2, desk.lanes)
+                elif other == cell:
+                    if is_leaf:
+                        near = _note_range(cell, tree.first, ranges, near)
+                    else:
+                        waiting[left_over], waiting[left_over + 1] = cell + 1, int(row[RIGHT])
+                        left_over += 2
+                elif found == NOTHING:
+                    pass
+                elif is_leaf and tree.cells[other, RIGHT] == 0.0:
+                    near = _note_range(other, tree.first, ranges, near)
+                elif _other_is_cut(row, tree.cells[other], cell, other):
+                    queue[tail], queue[tail + 1] = other + 1, int(tree.cells[other, RIGHT])
+                    tail += 2
                 else:
-                    waiting[left_over], waiting[left_over + 1] = cell + 1, int(row[RIGHT])
-                    left_over += 2
-            elif found == NOTHING:
-                pass
-            elif is_leaf and tree.cells[other, RIGHT] == 0.0:
-                near = _note_range(other, tree.first, ranges, near)
-            elif _other_is_cut(row, tree.cells[other], cell, other):
-                queue[tail], queue[tail + 1] = other + 1, int(tree.cells[other, RIGHT])
-                tail += 2
-            else:
-                waiting[left_over] = other
-                left_over += 1
-        head += count
-        if near > RANGES - BATCH:
-            _push_all(of, cell, near, potential, tree, desk, softening2)
-            near = 0
-        if quiet:
-            far = 0
-        elif far > FARS - BATCH:
-            hear(of, cell, far, desk.far, tree, softening2, desk.lanes)
-            far = 0
+                    waiting[left_over] = other
+                    left_over += 1
+            head += count
+            if near > RANGES - BATCH:
+                _push_all(of, cell, near, potential, away, tree, desk, softening2)
+                near = 0
+            if quiet:
+                far = 0
+            elif far > FARS - BATCH:
+                hear(of, cell, far, desk.far, away, tree, softening2, desk.lanes)
+                far = 0
+        if left_over == first:
+            left_over = noted
+        if not quiet:
+            hear(of, cell, far, desk.far, away, tree, softening2, desk.lanes)
+            if is_leaf:
+                _push_all(of, cell, near, potential, away, tree, desk, softening2)
     if not quiet:
-        hear(of, cell, far, desk.far, tree, softening2, desk.lanes)
         add_lanes(of, desk.lanes[local_lanes(of) :], desk.local, own)
         if is_leaf:
-            _push_all(of, cell, near, potential, tree, desk, softening2)
             settle(of, cell, tree, desk.local, own)
     return left_over
+
+
+@inner_kernel
+def _away(mark: int, images: Images) -> Away:
+    """Where the images stand whose cells wait behind a mark, which is negative."""
+    count, axis, period = images
+    step = (-mark - 1 - count) * period
+    return (
+        step if axis == 0 else 0.0,
+        step if axis == 1 else 0.0,
+        step if axis == 2 else 0.0,
+    )
+
+
+@inner_kernel
+def _all_wait(images: Images, waiting: np.ndarray) -> int:
+    """Let the root and its images wait for the root; returns the end of those waiting."""
+    waiting[0] = 0
+    end = 1
+    for k in range(-images[0], images[0] + 1):
+        if k != 0:
+            waiting[end], waiting[end + 1] = -(k + images[0]) - 1, 0
+            end += 2
+    return end
 
 
 @outer_kernel
@@ -142,14 +185,15 @@ def _push_all(
     cell: int,
     near: int,
     potential: bool,
+    away: Away,
     tree: Tree,
     desk: Desk,
     softening2: float,
 ) -> None:
     """Add near charges, in so many ranges, to a leaf's fields and, where wanted, potentials."""
-    push(of, cell, near, desk.ranges, tree, softening2)
+    push(of, cell, near, desk.ranges, away, tree, softening2)
     if potential:
-        push_potential(cell, near, desk.ranges, tree, softening2)
+        push_potential(cell, near, desk.ranges, away, tree, softening2)
 
 
 @inner_kernel
@@ -164,13 +208,14 @@ def _note_range(cell: int, first: np.ndarray, ranges: np.ndarray, near: int) -> 
 
 
 @outer_kernel
-def gather_above(of: BasisType, potential: bool, tree: Tree, desk: Desk, softening2: float) -> None:
+def gather_above(
+    of: BasisType, potential: bool, tree: Tree, desk: Desk, softening2: float, images: Images
+) -> None:
     """Let the cells above the tasks gather; what they pass down to the tasks is kept for them."""
     length = local_row(of)
     for k in range(length):
         desk.local[k] = 0.0
-    desk.waiting[0] = 0
-    top = _put(desk.path, 0, 0, 0, 1, 0, 0)
+    top = _put(desk.path, 0, 0, 0, _all_wait(images, desk.waiting), 0, 0)
     task = 0
     while top > 0:
         top -= PATH
@@ -183,7 +228,9 @@ def gather_above(of: BasisType, potential: bool, tree: Tree, desk: Desk, softeni
                 tree.above[task * length + k] = desk.local[own + k]
             task += 1
             continue
-        left_over = _visit(of, cell, False, begin, end, own, potential, tree, desk, softening2)
+        left_over = _visit(
+            of, cell, False, begin, end, own, potential, tree, desk, softening2, images
+        )
         right = int(tree.cells[cell, RIGHT])
         top = _put(desk.path, top, right, end, left_over, level + 1, cell)
         top = _put(desk.path, top, cell + 1, end, left_over, level + 1, cell)
@@ -191,15 +238,20 @@ def gather_above(of: BasisType, potential: bool, tree: Tree, desk: Desk, softeni
 
 @outer_kernel
 def gather(
-    of: BasisType, task: int, potential: bool, tree: Tree, desk: Desk, softening2: float
+    of: BasisType,
+    task: int,
+    potential: bool,
+    tree: Tree,
+    desk: Desk,
+    softening2: float,
+    images: Images,
 ) -> None:
     """The fields of all charges at those of one task, in the tree's order and units."""
     length = local_row(of)
     root = tree.tasks[task]
-    desk.waiting[0] = 0
-    begin, end, cell = 0, 1, 0
+    begin, end, cell = 0, _all_wait(images, desk.waiting), 0
     while cell != root:
-        left_over = _visit(of, cell, True, begin, end, 0, potential, tree, desk, softening2)
+        left_over = _visit(of, cell, True, begin, end, 0, potential, tree, desk, softening2, images)
         begin, end = end, left_over
         right = int(tree.cells[cell, RIGHT])
         cell = cell + 1 if root < right else right
@@ -214,7 +266,9 @@ def gather(
         level, parent = desk.path[top + 3], desk.path[top + 4]
         own = level * length
         _inherit(of, cell, parent, level, own, tree, desk)
-        left_over = _visit(of, cell, False, begin, end, own, potential, tree, desk, softening2)
+        left_over = _visit(
+            of, cell, False, begin, end, own, potential, tree, desk, softening2, images
+        )
         right = int(tree.cells[cell, RIGHT])
         if right > 0:
             top = _put(desk.path, top, right, end, left_over, level + 1, cell)

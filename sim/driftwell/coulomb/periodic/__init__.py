@@ -1,0 +1,1 @@
+"""The Coulomb sum in a cell that repeats without end along one axis."""
