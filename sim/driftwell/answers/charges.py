@@ -52,6 +52,16 @@ def charges_at(evidence: Evidence, name: str, time: float, least: int = 1) -> Ch
     return charges
 
 
+def number_born(evidence: Evidence, cloud: CloudFacts) -> int:
+    """How many simulated charges of a cloud there have been until the end of the run."""
+    return cloud.count
+
+
+def birth_times(evidence: Evidence, cloud: CloudFacts) -> Floats:
+    """When each charge of a cloud came to be, s, in the order of their ids."""
+    return np.zeros(number_born(evidence, cloud))
+
+
 def number_in_words(count: int, cloud: CloudFacts) -> str:
     """How many simulated charges a value is from, and what they stand for."""
     said = f"{count} charges" if count != 1 else "1 charge"
