@@ -14,13 +14,14 @@ from driftwell.answers.table import QUESTION_KINDS
 from driftwell.errors import AnswerError
 from driftwell.forms.declared import kind_name
 from driftwell.forms.faults import read_form
+from driftwell.record.layout import dataset
 
 MASS = 2.0e-25
 CHARGE = 1.602176634e-19
 
 LOSS = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
 BIRTH = [("time", "f8"), ("id", "i8"), ("cloud", "i8")]
-CROSSING = [("time", "f8"), ("id", "i8"), ("cloud", "i8"), ("detector", "i8"), ("direction", "i8")]
+CROSSING = dataset("crossings").dtype()
 
 
 def near(value: Any, rel: float = 1e-12) -> Any:
@@ -46,9 +47,28 @@ def facts(name: str = "load", count: int = 0, **changes: Any) -> CloudFacts:
     return CloudFacts(**(given | changes))
 
 
-def table(kind: list[tuple[str, str]], rows: list[tuple[Any, ...]]) -> np.ndarray:
-    """Rows as a structured array."""
-    return np.array(rows, dtype=kind)
+def table(kind: Any, rows: list[tuple[Any, ...]]) -> np.ndarray:
+    """Rows as a structured array; columns beyond what they hold are zero, weights one."""
+    found = np.zeros(len(rows), dtype=kind)
+    for name, column in zip(found.dtype.names, zip(*rows, strict=True), strict=False):
+        found[name] = column
+    if "weight" in found.dtype.names:
+        found["weight"] = 1.0
+    return found
+
+
+def through(time: np.ndarray, cloud: CloudFacts, detector: int = 0, **columns: Any) -> np.ndarray:
+    """The first charges of a cloud pass a detector along its normal at these times, (n,) s.
+
+    columns : of the table of crossings, such as velocity (n, 3)
+    """
+    found = np.zeros(len(time), dtype=CROSSING)
+    found["time"], found["id"] = time, cloud.first_id + np.arange(len(time))
+    found["cloud"], found["detector"] = cloud.index, detector
+    found["direction"], found["weight"] = 1, cloud.weight
+    for name, values in columns.items():
+        found[name] = values
+    return found
 
 
 @dataclass
@@ -175,5 +195,27 @@ ONE_OF_EACH: tuple[dict[str, Any], ...] = (
     {"ask": "peak-density"},
     {"ask": "nearest-neighbour"},
     {"ask": "force", "charge": 0},
+    {"ask": "transmission", "of": "exit", "entrance": "slit"},
+    {"ask": "lifetime"},
+    {"ask": "heating-rate", "over": ["0 s", "1 ms"]},
+    {"ask": "beam-envelope", "thickness": "0.2 mm"},
+    {"ask": "envelope-tune", "axis": "x", "period": "1 us"},
+    {"ask": "arrival-energy", "of": "exit"},
+    {"ask": "spot-size", "of": "exit"},
+    {"ask": "current", "of": "exit", "over": ["0 s", "1 ms"]},
+    {"ask": "perveance", "of": "exit", "over": ["0 s", "1 ms"]},
+    {"ask": "generalised-perveance", "of": "exit", "over": ["0 s", "1 ms"]},
+    {"ask": "brightness", "of": "exit", "over": ["0 s", "1 ms"]},
+    {"ask": "mass-resolving-power", "of": "exit"},
+    {"ask": "spectrum-peak", "axis": "z"},
+    {"ask": "frequency-shift", "axis": "z", "reference": "49.9 kHz"},
+    {"ask": "line-resolving-power", "axis": "z"},
+    {"ask": "tune", "axis": "z", "period": "1 us", "charges": 2},
+    {"ask": "tune-depression", "axis": "z", "without": "60 kHz", "charges": 2},
+    {"ask": "rotation-frequency"},
+    {"ask": "mobility", "field": "100 V/m", "over": ["0 s", "1 ms"]},
+    {"ask": "plasma-frequency"},
+    {"ask": "debye-length"},
+    {"ask": "coupling-parameter"},
 )
 """One question of every kind, for :func:`asked`."""

@@ -7,12 +7,24 @@ from typing import Any
 
 import numpy as np
 import pytest
-from recorded_by_hand import CROSSING, LOSS, MASS, ONE_OF_EACH, Recorded, asked, facts, near, table
+from recorded_by_hand import (
+    CHARGE,
+    LOSS,
+    MASS,
+    ONE_OF_EACH,
+    Recorded,
+    asked,
+    facts,
+    near,
+    table,
+    through,
+)
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.answering import answer_all
 from driftwell.answers.evidence import Evidence, Moments, TraceRequest
 from driftwell.answers.form import QuestionForm
+from driftwell.answers.kinds.moment_question import MomentQuestion
 from driftwell.answers.moments import moments_of
 from driftwell.answers.table import QUESTION_KINDS
 from driftwell.forms import Form, one_of
@@ -29,15 +41,25 @@ def full() -> Recorded:
     random = np.random.default_rng(1)
     position, velocity = random.normal(0.0, 1e-4, (2, COUNT, 3))
     cloud = facts(count=COUNT)
-    recorded = Recorded(detectors=["exit"])
+    recorded = Recorded(detectors=["exit", "slit"])
     for time in (0.0, 1e-3):
         recorded.at(time, (cloud, np.arange(COUNT), position, velocity))
-    recorded.crossed = table(CROSSING, [(1e-5 * i, i, 0, 0, 1) for i in range(30)])
-    time = np.arange(1000) * 1e-6
-    recorded.traced = {TRACE: (time, np.sin(2.0 * np.pi * 50e3 * time))}
+    seen = {"position": position[:30], "velocity": velocity[:30]}
+    recorded.crossed = np.concatenate(
+        [through(1e-5 * (np.arange(1, 31) - 0.5 * part), cloud, part, **seen) for part in (0, 1)]
+    )
+    recorded.lost = table(LOSS, [(5e-4, 99, 0)])
+    recorded.traced = traces(np.sin)
     row = moments_of(position.T, velocity.T, MASS)
-    recorded.series = {"load": moments([row] * 5)}
+    recorded.series = {"load": moments([row] * 8)}
     return recorded
+
+
+def traces(shape: Any) -> dict[TraceRequest, tuple[np.ndarray, np.ndarray]]:
+    """The centre and two charges oscillating along z at 50 kHz, as `shape` of the phase."""
+    time = np.arange(1000) * 1e-6
+    requests = (TRACE, *(TraceRequest("load", charge, 2, None) for charge in (0, 1)))
+    return {request: (time, shape(2.0 * np.pi * 50e3 * time)) for request in requests}
 
 
 def moments(rows: list[Any]) -> Moments:
@@ -55,12 +77,12 @@ def emptied() -> Recorded:
     """A record of a run that lost every charge at once."""
     none = np.empty((0, 3))
     cloud = facts(count=COUNT)
-    recorded = Recorded(detectors=["exit"]).at(
-        1e-3, (cloud, np.empty(0, dtype=np.int64), none, none)
-    )
+    nobody = np.empty(0, dtype=np.int64)
+    recorded = Recorded(detectors=["exit", "slit"])
+    for time in (0.0, 1e-3):
+        recorded.at(time, (cloud, nobody, none, none))
     recorded.lost = table(LOSS, [(1e-6, i, 0) for i in range(COUNT)])
-    time = np.arange(1000) * 1e-6
-    recorded.traced = {TRACE: (time, np.full(1000, np.nan))}
+    recorded.traced = traces(lambda phase: np.full(phase.size, np.nan))
     recorded.series = {"load": moments([moments_of(none.T, none.T, MASS)] * 5)}
     return recorded
 
@@ -68,7 +90,7 @@ def emptied() -> Recorded:
 def test_one_of_each_kind_is_asked_here() -> None:
     kinds = [kind_name(kind, "ask") for kind in QUESTION_KINDS]
     assert sorted(str(kind) for kind in kinds) == sorted(keys["ask"] for keys in ONE_OF_EACH)
-    assert len(kinds) == 13
+    assert len(kinds) == 35
 
 
 @pytest.mark.parametrize("keys", ONE_OF_EACH, ids=lambda keys: keys["ask"])
@@ -77,10 +99,14 @@ def test_every_kind_answers_with_value_unit_error_and_note(keys: dict[str, Any])
     assert (found.name, found.ask) == ("asked", keys["ask"])
     assert math.isfinite(found.value)
     assert found.unit
-    assert found.error is not None
-    assert math.isfinite(found.error)
     assert found.note
     assert isinstance(found.value, float)
+    if keys["ask"] == "line-resolving-power":
+        assert found.error is None
+        assert "no sampling error is known" in found.note
+        return
+    assert found.error is not None
+    assert math.isfinite(found.error)
     assert isinstance(found.error, float)
 
 
@@ -92,17 +118,23 @@ def test_with_no_charge_left_every_kind_says_zero_or_why_not(keys: dict[str, Any
     if keys["ask"] in ("fraction-left", "fraction-through"):
         assert found.value == 0.0
         assert near(0.5 / (COUNT + 1)) == found.error
+    elif keys["ask"] == "current":
+        assert found.value == 0.0
+        assert near(CHARGE * COUNT / 1e-3 * 0.5 / (COUNT + 1)) == found.error
+    elif keys["ask"] == "lifetime":
+        assert near(1e-6) == found.value
     else:
         assert math.isnan(found.value)
         assert found.error is None
         assert any(
-            part in found.note for part in ("is left", "is not left", "passed", "lost at once")
+            part in found.note
+            for part in ("is left", "is not left", "passed", "lost at once", "holds fewer than")
         )
 
 
 @pytest.mark.parametrize(
     "keys",
-    [keys for keys in ONE_OF_EACH if "over" in type(asked(**keys)).model_fields],
+    [keys for keys in ONE_OF_EACH if isinstance(asked(**keys), MomentQuestion)],
     ids=lambda keys: keys["ask"],
 )
 def test_with_no_charge_left_a_window_says_so(keys: dict[str, Any]) -> None:
@@ -135,7 +167,7 @@ def test_an_unknown_cloud_or_detector_is_told_with_those_known() -> None:
     questions = [asked("centre", axis="x", of="lod"), asked("arrival-time", of="exot")]
     first, second = answer_all(questions, full())
     assert first.note == 'there is no cloud "lod"; known are "load"'
-    assert second.note == 'there is no detector "exot"; known are "exit"'
+    assert second.note == 'there is no detector "exot"; known are "exit", "slit"'
 
 
 class Broken(QuestionForm):
@@ -199,7 +231,7 @@ class Asking(Form):
 @pytest.mark.parametrize("keys", ONE_OF_EACH, ids=lambda keys: keys["ask"])
 def test_a_question_survives_being_written_and_read(keys: dict[str, Any]) -> None:
     extra = {"over": ["1 ms", "2 ms"]} if "over" in type(asked(**keys)).model_fields else {}
-    question = asked(**keys, **extra)
+    question = asked(**(keys | extra))
     read, faults = read_form(Asking, {"question": [raw_table(question)]})
     assert read is not None, faults
     assert (question,) == read.question

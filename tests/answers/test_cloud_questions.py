@@ -22,7 +22,16 @@ MOMENT_KINDS = [
     keys
     for keys in (*ONE_OF_EACH, {"ask": "temperature"}, {"ask": "emittance", "plane": "x"})
     if keys["ask"]
-    in ("centre", "rms-size", "temperature", "kinetic-energy", "kinetic-energy-spread", "emittance")
+    in (
+        "centre",
+        "rms-size",
+        "temperature",
+        "kinetic-energy",
+        "kinetic-energy-spread",
+        "emittance",
+        "envelope-tune",
+        "rotation-frequency",
+    )
 ]
 
 
@@ -133,6 +142,7 @@ def test_slopes_of_charges_moving_both_ways_are_refused() -> None:
 def test_a_window_of_like_records_gives_the_value_of_one_time(keys: dict[str, object]) -> None:
     position, velocity = exact(300)
     velocity[:, :2] += 2e6 * (position - CENTRE)[:, :2]  # places and velocities go together
+    velocity[:, 1] += 1e6 * (position - CENTRE)[:, 0]  # and turn about z
     if keys["ask"] == "emittance" and "normalised" not in keys:
         velocity[:, 2] = DRIFT[2]  # moments know the cloud's mean slope only
     once = asked(**keys).answer(one_cloud(position, velocity))

@@ -10,8 +10,8 @@ from driftwell.answers.answer import Answer
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 
-PLAIN_UNITS = ("", "1", "1/m^3")
-"""Units that take no prefix: a pure number has none, in a density it would be raised as well."""
+PLAIN_UNITS = ("", "1", "1/m^3", "m^2/(V s)")
+"""Units that take no prefix: a pure number has none, in a power it would be raised as well."""
 _LONGEST_NAME = 28
 _DIGITS = 6
 """Digits of a value whose error is not known."""

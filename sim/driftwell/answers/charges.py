@@ -52,6 +52,20 @@ def charges_at(evidence: Evidence, name: str, time: float, least: int = 1) -> Ch
     return charges
 
 
+def number_born(evidence: Evidence, cloud: CloudFacts) -> int:
+    """How many simulated charges of a cloud there have been until the end of the run."""
+    return evidence.born(cloud.name)
+
+
+def births_of(evidence: Evidence, cloud: CloudFacts) -> tuple[NDArray[np.int64], Floats]:
+    """Ids of a cloud's charges, ascending, and when each came to be, s."""
+    if not cloud.emitted:
+        return np.arange(cloud.first_id, cloud.first_id + cloud.count), np.zeros(cloud.count)
+    rows = evidence.births()
+    own = np.sort(rows[rows["cloud"] == cloud.index], order="id")
+    return own["id"], own["time"]
+
+
 def number_in_words(count: int, cloud: CloudFacts) -> str:
     """How many simulated charges a value is from, and what they stand for."""
     said = f"{count} charges" if count != 1 else "1 charge"

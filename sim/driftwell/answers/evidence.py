@@ -136,11 +136,11 @@ class Evidence(Protocol):
 
     def losses(self) -> NDArray[np.void]:
         """Charges lost: fields time, id, cloud, wall, position (3), velocity (3),
-        kinetic_energy."""
+        kinetic_energy, weight."""
 
     def crossings(self) -> NDArray[np.void]:
         """Passages through detectors: fields time, id, cloud, detector, direction (+1 or -1),
-        position (3), velocity (3)."""
+        position (3), velocity (3), weight."""
 
     def births(self) -> NDArray[np.void]:
         """Charges that sources bore: fields time, id, cloud, position (3), velocity (3), weight."""

@@ -96,6 +96,7 @@ ElectricField = Annotated[float, Quantity("an electric field", "V/m", "20 kV/m")
 MagneticField = Annotated[float, Quantity("a magnetic field", "T", "1.5 T")]
 FieldGradient = Annotated[float, Quantity("an electric field gradient", "V/m^2", "3.0e7 V/m^2")]
 MagneticGradient = Annotated[float, Quantity("a magnetic field gradient", "T/m", "12 T/m")]
+Pressure = Annotated[float, Quantity("a pressure", "Pa", "1e-3 mbar")]
 Emittance = Annotated[float, Quantity("an emittance", "m*rad", "5 mm mrad")]
 
 

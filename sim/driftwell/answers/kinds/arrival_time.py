@@ -22,7 +22,11 @@ from driftwell.forms import key
 
 Floats = NDArray[np.float64]
 
-_LEAST = {"mean": 1, "rms": 2, "fwhm": 20}
+Statistic = Literal["mean", "rms", "fwhm"]
+LEAST = {"mean": 1, "rms": 2, "fwhm": 20}
+"""Charges each statistic needs."""
+STATISTICS = {"mean": "mean", "rms": "rms spread", "fwhm": "full width at half maximum"}
+"""Each in words."""
 
 
 class ArrivalTime(DetectorQuestion):
@@ -30,20 +34,20 @@ class ArrivalTime(DetectorQuestion):
 
     unit: ClassVar[str] = "s"
     ask: Literal["arrival-time"] = key("when charges pass a detector for the first time")
-    statistic: Literal["mean", "rms", "fwhm"] = key(
+    statistic: Statistic = key(
         "mean; rms: standard deviation; fwhm: full width at half maximum", default="mean"
     )
 
     def answer(self, evidence: Evidence) -> Answer:
         times = self._times(evidence)
-        least = _LEAST[self.statistic]
+        least = LEAST[self.statistic]
         if times.size < least:
             raise AnswerError(
                 f'{times.size} charges passed detector "{self.of}"; needs at least {least}'
             )
         clouds = self.clouds(evidence)
         note = f"{times.size} charges{weight_in_words(clouds[0])}"
-        value, error = _statistic(self.statistic, times)
+        value, error = statistic_of(self.statistic, times)
         if error is None:
             note += "; too few different times to tell an error from"
         return self.answered(value, error, note)
@@ -64,15 +68,16 @@ class ArrivalTime(DetectorQuestion):
         return np.asarray(rows["time"][first], dtype=np.float64)
 
     def words(self) -> str:
-        what = {"mean": "mean", "rms": "rms spread", "fwhm": "full width at half maximum"}
         return (
-            f'{what[self.statistic]} of the arrival times of {self.whose()} at detector "{self.of}"'
+            f"{STATISTICS[self.statistic]} of the arrival times of {self.whose()} at detector "
+            f'"{self.of}"'
         )
 
 
-def _statistic(which: str, times: Floats) -> tuple[float, float | None]:
+def statistic_of(which: Statistic, values: Floats) -> tuple[float, float | None]:
+    """A statistic of independent values (n,), in their unit, and its error."""
     if which == "mean":
-        return float(times.mean()), mean_error(times)
+        return float(values.mean()), mean_error(values)
     if which == "fwhm":
-        return full_width(times)
-    return float(times.std()), jackknife_error(lambda keep: float(times[keep].std()), times.size)
+        return full_width(values)
+    return float(values.std()), jackknife_error(lambda keep: float(values[keep].std()), values.size)

@@ -61,14 +61,14 @@ class Emittance(MomentQuestion):
         place = charges.position[AXES.index(self.plane)]
         across = charges.velocity[AXES.index(self.plane)]
         if self.normalised:
-            return _area(place, across) / SPEED_OF_LIGHT
+            return phase_area(place, across) / SPEED_OF_LIGHT
         along = charges.velocity[AXES.index(self.beam_axis)]
         if along.min() * along.max() <= 0.0:
             raise AnswerError(
                 f"not every charge moves the same way along {self.beam_axis}, so slopes mean "
                 "nothing; ask for normalised = true"
             )
-        return _area(place, across / along)
+        return phase_area(place, across / along)
 
     def of_moments(self, moments: Moments, cloud: CloudFacts) -> Floats:
         i, j = AXES.index(self.plane), 3 + AXES.index(self.plane)
@@ -97,7 +97,7 @@ class Emittance(MomentQuestion):
         return f'{which} rms emittance of cloud "{self.of}" in {self.plane}, {self.when()}'
 
 
-def _area(place: Floats, slope: Floats) -> float:
+def phase_area(place: Floats, slope: Floats) -> float:
     """Root of the determinant of the covariance of two coordinates, eq. 1."""
     place = place - place.mean()
     slope = slope - slope.mean()

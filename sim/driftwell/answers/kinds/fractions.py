@@ -13,7 +13,7 @@ from typing import ClassVar, Literal
 import numpy as np
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.charges import weight_in_words
+from driftwell.answers.charges import number_born, weight_in_words
 from driftwell.answers.evidence import CloudFacts, Evidence, Needs
 from driftwell.answers.form import (
     TIME_TOLERANCE,
@@ -41,16 +41,16 @@ class FractionLeft(InstantQuestion):
 
     def answer(self, evidence: Evidence) -> Answer:
         time = self.time_in(evidence)
-        cloud = _not_empty(cloud_named(evidence, self.of))
+        cloud = _not_empty(cloud_named(evidence, self.of), evidence)
+        born = evidence.born(cloud.name, time)
         losses = evidence.losses()
         before = losses["time"] <= time + TIME_TOLERANCE * evidence.end_time
         lost = np.unique(losses["id"][before & (losses["cloud"] == cloud.index)]).size
-        count = evidence.born(cloud.name, time)
-        if count == 0:
+        if born == 0:
             raise AnswerError(f'no charge of "{cloud.name}" is born by {spelled(time, "s")}')
-        left = count - lost
-        note = f"{left} of {count} charges{weight_in_words(cloud)}"
-        return self.answered(left / count, fraction_error(left, count), note)
+        left = born - lost
+        note = f"{left} of {born} charges{weight_in_words(cloud)}"
+        return self.answered(left / born, fraction_error(left, born), note)
 
     def words(self) -> str:
         return f'part of cloud "{self.of}" left {instant_in_words(self.at)}'
@@ -68,9 +68,9 @@ class DetectorQuestion(QuestionForm):
     def clouds(self, evidence: Evidence) -> Sequence[CloudFacts]:
         """The clouds counted. Raises AnswerError where they have no charges."""
         if self.cloud is not None:
-            return [_not_empty(cloud_named(evidence, self.cloud))]
+            return [_not_empty(cloud_named(evidence, self.cloud), evidence)]
         every = [cloud_named(evidence, name) for name in evidence.clouds]
-        found = [cloud for cloud in every if cloud.count]
+        found = [cloud for cloud in every if number_born(evidence, cloud)]
         if not found:
             raise AnswerError("there are no charges")
         return found
@@ -96,7 +96,7 @@ class FractionThrough(DetectorQuestion):
             for cloud in clouds
         ]
         weight = np.array([cloud.weight for cloud in clouds])
-        count = np.array([cloud.count for cloud in clouds])
+        count = np.array([number_born(evidence, cloud) for cloud in clouds])
         share = float(weight @ passed / (weight @ count))
         # With unequal weights, as many equal ones as would scatter alike; else the count itself.
         trials = float((weight @ count) ** 2 / (weight**2 @ count))
@@ -108,7 +108,7 @@ class FractionThrough(DetectorQuestion):
         return f'part of {self.whose()} that passes detector "{self.of}"'
 
 
-def _not_empty(cloud: CloudFacts) -> CloudFacts:
-    if cloud.count == 0:
+def _not_empty(cloud: CloudFacts, evidence: Evidence) -> CloudFacts:
+    if number_born(evidence, cloud) == 0:
         raise AnswerError(f'cloud "{cloud.name}" has no charges')
     return cloud

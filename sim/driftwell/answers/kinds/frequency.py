@@ -15,39 +15,61 @@ from __future__ import annotations
 
 from typing import ClassVar, Literal, Self
 
-import numpy as np
-
 from driftwell.answers.answer import Answer
 from driftwell.answers.evidence import Evidence, Needs, TraceRequest
 from driftwell.answers.form import AXES, Axis, QuestionForm, References, cloud_named
 from driftwell.answers.kinds.force import charge_id
-from driftwell.answers.sinusoid import chosen_line, lines_in
-from driftwell.errors import AnswerError
+from driftwell.answers.sinusoid import Line, chosen_line, lines_in
+from driftwell.answers.tracing import Followed, followed, whose
 from driftwell.forms import Count, NonNegative, Positive, Time, checked, key, refuse
 from driftwell.forms import Frequency as FrequencyQuantity
 from driftwell.forms.spelling import spelled
 
 
-class Frequency(QuestionForm):
-    """Frequency of a line in the motion of a cloud's centre or of one charge."""
+class TracedQuestion(QuestionForm):
+    """Base of questions about lines in the motion of a cloud's centre or of one charge."""
 
-    unit: ClassVar[str] = "Hz"
-    ask: Literal["frequency"] = key("frequency of an oscillation")
     axis: Axis = key("the axis")
     charge: NonNegative[Count] | None = key(
         "which charge of the cloud, counted from 0; left out: the cloud's centre",
         default=None,
         example=0,
     )
-    near: Positive[FrequencyQuantity] | None = key(
-        "look for the strongest line within a tenth of this; left out: the strongest of all",
-        default=None,
-        example="80 kHz",
-    )
     every: Positive[Time] | None = key(
         "time between samples; left out: at least 20 in the fastest period",
         default=None,
         example="0.1 us",
+    )
+
+    def needs(self, duration: float) -> Needs:
+        return Needs(traces=(self.request(),))
+
+    def refers_to(self) -> References:
+        charges = () if self.charge is None else ((self.of, self.charge),)
+        return References(clouds=(self.of,), charges=charges)
+
+    def request(self) -> TraceRequest:
+        """What is traced."""
+        return TraceRequest(self.of, self.charge, AXES.index(self.axis), self.every)
+
+    def lines(self, evidence: Evidence) -> tuple[Followed, list[Line]]:
+        """The motion, and the lines in it, the strongest first."""
+        cloud_named(evidence, self.of)
+        if self.charge is not None:
+            charge_id(evidence, self.of, self.charge)
+        traced = followed(evidence, self.request())
+        return traced, lines_in(traced.time, traced.value)
+
+
+class Frequency(TracedQuestion):
+    """Frequency of a line in the motion of a cloud's centre or of one charge."""
+
+    unit: ClassVar[str] = "Hz"
+    ask: Literal["frequency"] = key("frequency of an oscillation")
+    near: Positive[FrequencyQuantity] | None = key(
+        "look for the strongest line within a tenth of this; left out: the strongest of all",
+        default=None,
+        example="80 kHz",
     )
 
     @checked
@@ -56,33 +78,10 @@ class Frequency(QuestionForm):
             raise refuse("`every` must be shorter than half a period of `near`")
         return self
 
-    def needs(self, duration: float) -> Needs:
-        return Needs(traces=(self._request(),))
-
-    def refers_to(self) -> References:
-        charges = () if self.charge is None else ((self.of, self.charge),)
-        return References(clouds=(self.of,), charges=charges)
-
-    def _request(self) -> TraceRequest:
-        return TraceRequest(self.of, self.charge, AXES.index(self.axis), self.every)
-
     def answer(self, evidence: Evidence) -> Answer:
-        cloud_named(evidence, self.of)
-        if self.charge is not None:
-            charge_id(evidence, self.of, self.charge)
-        time, value = evidence.trace(self._request())
-        good = np.isfinite(value)
-        alive = int(value.size if good.all() else good.argmin())
-        if alive == 0:
-            raise AnswerError(f"there was no charge to follow: {self._whose()} was lost at once")
-        time, value = time[:alive], value[:alive]
-        lines = lines_in(time, value)
-        length = float(time[-1] - time[0]) * alive / (alive - 1)
-        line = chosen_line(lines, self.near, length)
-        note = f"{alive} samples in {spelled(length, 's', 4)}"
-        if alive < good.size:
-            note += ", until it was lost"
-        note += f"; amplitude {spelled(line.amplitude, 'm', 3)}"
+        traced, lines = self.lines(evidence)
+        line = chosen_line(lines, self.near, traced.length)
+        note = f"{traced.words()}; amplitude {spelled(line.amplitude, 'm', 3)}"
         others = [other for other in lines if other is not line]
         if others:
             ratio = others[0].amplitude / line.amplitude
@@ -92,11 +91,6 @@ class Frequency(QuestionForm):
             )
         return self.answered(line.frequency, line.error, note)
 
-    def _whose(self) -> str:
-        if self.charge is None:
-            return f'the centre of cloud "{self.of}"'
-        return f'charge {self.charge} of cloud "{self.of}"'
-
     def words(self) -> str:
         near = "" if self.near is None else f" near {spelled(self.near, 'Hz')}"
-        return f"frequency of {self._whose()} along {self.axis}{near}"
+        return f"frequency of {whose(self.request())} along {self.axis}{near}"

@@ -73,6 +73,10 @@ class MomentQuestion(InstantQuestion):
         """What else to know of the value, from the cloud's centre (6,)."""
         return ""
 
+    def remark_at(self, charges: Charges) -> str:
+        """The same of a value at one time, from every charge."""
+        return self.remark(np.concatenate([charges.position, charges.velocity]).mean(axis=1))
+
     def answer(self, evidence: Evidence) -> Answer:
         if self.over is not None:
             return self._over(evidence, *self.over)
@@ -81,29 +85,12 @@ class MomentQuestion(InstantQuestion):
         notes = [number_in_words(len(charges), charges.cloud)]
         if error is None:
             notes.append("too few charges to tell an error from")
-        centre = np.concatenate([charges.position, charges.velocity]).mean(axis=1)
-        notes.append(self.remark(centre))
+        notes.append(self.remark_at(charges))
         return self.answered(self.of_charges(charges), error, _joined(notes))
 
     def _over(self, evidence: Evidence, first: float, last: float) -> Answer:
-        reached(last, evidence)
         cloud = cloud_named(evidence, self.of)
-        moments = evidence.moments(self.of)
-        near = TIME_TOLERANCE * evidence.end_time
-        inside = (moments.time >= first - near) & (moments.time <= last + near)
-        window = f"from {spelled(first, 's')} to {spelled(last, 's')}"
-        if not inside.any():
-            raise AnswerError(f"no record lies in the window {window}; shorten `every` in [record]")
-        enough = inside & (moments.count >= self.least_charges())
-        if not enough.any():
-            raise AnswerError(
-                f'"{self.of}" holds fewer than {self.least_charges()} charges {window}'
-            )
-        if enough.sum() < inside.sum():
-            window += (
-                f", until too few charges were left at {spelled(moments.time[enough][-1], 's')}"
-            )
-        used = _chosen(moments, enough)
+        used, window = records_within(evidence, self.of, (first, last), self.least_charges())
         found = series_mean(self.of_moments(used, cloud))
         notes = [f"mean of {used.time.size} records {window}"]
         if found.error is None:
@@ -122,6 +109,29 @@ class MomentQuestion(InstantQuestion):
         if self.over is None:
             return instant_in_words(self.at)
         return f"averaged from {spelled(self.over[0], 's')} to {spelled(self.over[1], 's')}"
+
+
+def records_within(
+    evidence: Evidence, name: str, window: tuple[float, float], least: int
+) -> tuple[Moments, str]:
+    """Moments of a cloud at the records within a window that hold `least` charges, and the window.
+
+    Raises AnswerError where there are none, or the run did not reach the window's end.
+    """
+    first, last = window
+    reached(last, evidence)
+    moments = evidence.moments(name)
+    near = TIME_TOLERANCE * evidence.end_time
+    inside = (moments.time >= first - near) & (moments.time <= last + near)
+    words = f"from {spelled(first, 's')} to {spelled(last, 's')}"
+    if not inside.any():
+        raise AnswerError(f"no record lies in the window {words}; shorten `every` in [record]")
+    enough = inside & (moments.count >= least)
+    if not enough.any():
+        raise AnswerError(f'"{name}" holds fewer than {least} charges {words}')
+    if enough.sum() < inside.sum():
+        words += f", until too few charges were left at {spelled(moments.time[enough][-1], 's')}"
+    return _chosen(moments, enough), words
 
 
 def _joined(notes: list[str]) -> str:
