@@ -20,7 +20,8 @@ def images_at(
     out = np.full((4, q.size), np.nan)
     with on_threads(threads) as given:
         summed = images.laid_out(q.size, given)
-        summed.work[...] = np.nan
+        if not summed.keeps:
+            summed.work[...] = np.nan
         summed.function(place, q, constant, summed.table, summed.work, out)
     return out
 

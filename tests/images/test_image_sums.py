@@ -12,6 +12,7 @@ from driftwell.errors import ScenarioError
 from driftwell.geometry.outline import Outline, arc
 from driftwell.geometry.solid import Extruded, Revolved
 from driftwell.images.electrodes import electrode_images, triangles_of
+from driftwell.images.gap_sum import GapImages
 from driftwell.images.image_sum import Images
 from driftwell.images.mirror_sum import plane_images, sphere_images
 from driftwell.images.panel_matrix import influence
@@ -33,9 +34,12 @@ class Case:
 
 CASES = [
     Case("plane", plane_images(np.array([0.1, 0.0, -0.8]), np.array([0.0, 0.6, 0.8]), 0.0)),
-    Case("plane, closest", plane_images(np.array([0, 0, -0.4]), np.array([0, 0, 1.0]), 0.1)),
+    Case("plane, closest", plane_images(np.array([0, 0, -0.4]), np.array([0, 0, 1.0]), 0.2)),
     Case("sphere", sphere_images(np.array([0.1, 0.0, 0.0]), 1.0, 0.0)),
-    Case("sphere, closest", sphere_images(np.zeros(3), 0.65, 0.05)),
+    Case("sphere, closest", sphere_images(np.zeros(3), 0.65, 0.1)),
+    Case("gap", GapImages(np.array([0.1, 0.0, -0.55]), np.array([0.0, 0.6, 0.8]), 1.2, 0.0)),
+    Case("gap, closest", GapImages(np.array([0.0, 0.0, -0.4]), np.array([0, 0, 1.0]), 0.8, 0.1)),
+    Case("wide gap", GapImages(np.array([0.0, 0.0, -0.36]), np.array([0, 0, 1.0]), 0.72, 0.0)),
     Case("tube", TubeImages(1, np.array([0.1, 0.05, -0.2]), 1.0, 0.9)),
     Case("tube, beyond its reach", TubeImages(2, np.zeros(3), 0.45, 0.6)),
     Case("cube of triangles", PanelImages(box(4))),
@@ -107,7 +111,7 @@ def test_the_force_stops_growing_within_the_closest_distance() -> None:
     """K q / (4 d^2) d^3 / (d^2 + c^2)^(3/2), whose largest is at c / 2^(1/2); beyond the plane it
     turns round."""
     c = 0.02
-    images = plane_images(np.zeros(3), np.array([0.0, 0.0, 1.0]), c)
+    images = plane_images(np.zeros(3), np.array([0.0, 0.0, 1.0]), 2.0 * c)
     for d in (-0.5 * c, 0.1 * c, c, 10.0 * c):
         found = images_at(images, np.array([[0.0], [0.0], [d]]), 1.0)[:, 0]
         assert -d / (4.0 * (d * d + c * c) ** 1.5) == pytest.approx(found[2], rel=1e-12)
@@ -135,7 +139,7 @@ def test_a_tube_says_where_charges_are_spread_beyond_its_sum() -> None:
 
 
 def test_a_plane_says_where_its_force_is_weakened() -> None:
-    images = plane_images(np.zeros(3), np.array([0.0, 0.0, 1.0]), 1e-6)
+    images = plane_images(np.zeros(3), np.array([0.0, 0.0, 1.0]), 2e-6)
     place = np.zeros((3, 10))
     place[2] = 1e-3
     assert images.doubt(place, np.ones(10)) is None

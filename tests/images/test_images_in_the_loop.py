@@ -11,6 +11,7 @@ import pytest
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.coulomb.direct import direct_field, workspace
 from driftwell.coulomb.form import Coulomb
+from driftwell.images.gap_sum import GapImages
 from driftwell.images.image_sum import Images
 from driftwell.images.mirror_sum import plane_images, sphere_images
 from driftwell.images.panel_sum import PanelImages
@@ -39,10 +40,17 @@ class Case:
 CASES = [
     Case(
         "plane",
-        plane_images(np.array([0.0, 0.0, -RADIUS]), UP, CLOSEST),
+        plane_images(np.array([0.0, 0.0, -RADIUS]), UP, 2.0 * CLOSEST),
         wall("plane", at=["0 m", "0 m", "-0.3 mm"]),
     ),
-    Case("sphere", sphere_images(np.zeros(3), RADIUS, CLOSEST), wall("sphere", radius="0.3 mm")),
+    Case(
+        "sphere", sphere_images(np.zeros(3), RADIUS, 2.0 * CLOSEST), wall("sphere", radius="0.3 mm")
+    ),
+    Case(
+        "gap",
+        GapImages(np.array([0.0, 0.0, -RADIUS]), UP, 2.0 * RADIUS, 2.0 * CLOSEST),
+        wall("box", size=["3 mm", "3 mm", "0.6 mm"]),
+    ),
     Case("tube", TubeImages(2, np.zeros(3), RADIUS, 0.9), wall("cylinder", radius="0.3 mm")),
     Case(
         "triangles",
@@ -167,8 +175,8 @@ def test_a_run_without_images_has_none_in_its_accounts() -> None:
     assert moving.work.pairs is moving.work.coulomb
 
 
-def test_softening_of_the_pairs_leaves_images_as_they_are() -> None:
-    """A charge alone falls the same."""
+def test_softening_of_the_pairs_does_not_change_images_that_were_made() -> None:
+    """A charge alone falls the same; images are as blurred as they were asked to be."""
     found = []
     for coulomb in (OFF, DIRECT, Coulomb(method="direct", softening="0.1 mm")):
         start = ions([[0.0, 0.0, -2e-4]], weight=1000.0)

@@ -23,6 +23,7 @@ from tests.scenario.good_scenarios import toml_file
 PLANE = {"kind": "plane", "at": ["0 m", "0 m", "-1 mm"], "normal": [0, 0, 3]}
 KINDS: dict[str, dict[str, Any]] = {
     "plane": PLANE,
+    "gap": {"kind": "gap", "at": ["0 m", "0 m", "-1 mm"], "distance": "3 mm"},
     "sphere": {"kind": "sphere", "radius": "1 mm", "closest": "1 um"},
     "cylinder": {"kind": "cylinder", "radius": "1 mm", "axis": "x"},
 }
@@ -51,6 +52,7 @@ def loaded(folder: Path, images: dict[str, Any], place: Any = (0.0, 0.0, 0.0)) -
     ("kind", "words"),
     [
         ("plane", "of a plane at (0, 0, -1) mm, charges towards (0, 0, 1)"),
+        ("gap", "of the gap from a plane at (0, 0, -1) mm to another 3 mm away towards (0, 0, 1)"),
         ("sphere", "of a sphere of radius 1 mm around the charges"),
         ("cylinder", "of an endless tube along x, radius 1 mm, whose force does not grow beyond"),
     ],
@@ -64,7 +66,7 @@ def test_images_are_told_in_words(tmp_path: Path, kind: str, words: str) -> None
 @pytest.mark.parametrize(
     ("images", "said"),
     [
-        ({"kind": "cone"}, "unknown kind; the kinds are plane, sphere, cylinder, electrodes"),
+        ({"kind": "cone"}, "unknown kind; the kinds are plane, gap, sphere, cylinder"),
         ({**PLANE, "normal": [0, 0, 0]}, "must have at least one component other than 0"),
         ({**PLANE, "closest": "-1 um"}, "must be at least 0"),
         ({"kind": "sphere"}, "radius"),

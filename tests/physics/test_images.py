@@ -6,13 +6,16 @@ import math
 
 import numpy as np
 import pytest
+from mpmath import besselk, mp, mpf, nsum, sin
 from scipy.integrate import quad
-from scipy.special import digamma, ive, kve
+from scipy.special import digamma, ive, kve, polygamma
 
 from driftwell.constants import ATOMIC_MASS, COULOMB_CONSTANT, ELEMENTARY_CHARGE
 from driftwell.geometry.outline import Outline, arc
 from driftwell.geometry.solid import Extruded, Revolved
 from driftwell.images.electrodes import electrode_images
+from driftwell.images.gap_sum import GapImages
+from driftwell.images.image_sum import Images
 from driftwell.images.mirror_sum import plane_images, sphere_images
 from driftwell.images.panel_sum import PanelImages
 from driftwell.images.tube_sum import TubeImages
@@ -109,6 +112,102 @@ def test_far_along_a_tube_charges_no_longer_feel_each_other(apart: float) -> Non
     left = both[1] - alone[0] + direct
     assert 0.0 < left + 2e-9
     assert abs(left) <= 4.0 * math.exp(-2.404825557695773 * apart) + 2e-9
+
+
+@pytest.mark.parametrize("x", [0.5, 0.2, 1e-3])
+def test_a_charge_between_plates_has_the_potential_of_the_psi_function(x: float) -> None:
+    """phi = K q / (2 D) [psi(x/D) + psi(1 - x/D) + 2 gamma], and minus half its rate as the field.
+
+    The series of images, summed (reference case I6; A. and S. 6.3.16; digamma and polygamma of
+    scipy).
+    """
+    gap, normal = 0.01, np.array([2.0, -1.0, 2.0]) / 3.0
+    first = np.array([1e-3, 2e-3, 3e-3])
+    place = (first + x * gap * normal)[:, None]
+    found = images_at(GapImages(first, normal, gap, 0.0), place, 1.0)[:, 0]
+    expected = 0.5 / gap * (digamma(x) + digamma(1.0 - x) + 2.0 * np.euler_gamma)
+    assert expected == pytest.approx(found[3], rel=1e-12)
+    push = -0.25 / gap**2 * (polygamma(1, x) - polygamma(1, 1.0 - x))
+    assert push * normal == pytest.approx(found[:3], rel=1e-11, abs=1e-9)
+
+
+@pytest.mark.parametrize("rho", [0.0, 0.4, 1.2499, 1.2501, 2.0, 7.0])
+def test_charges_between_plates_have_the_potential_of_their_green_function(rho: float) -> None:
+    """The images one by one where near, else 4 K q/d sum K_0(k pi rho/d) sin sin without the
+    charge itself (Jackson, 3rd ed., problem 3.17), both by mpmath; 1e-11."""
+    random = np.random.default_rng(round(100 * rho))
+    images = GapImages(np.zeros(3), UP, 1.0, 0.0)
+    for _ in range(3):
+        one, other = random.uniform(0.02, 0.98, 2)
+        found = images_at(images, at((0.0, 0.0, one), (0.6 * rho, 0.8 * rho, other)), [0.0, 1.0])
+        with mp.workdps(25):
+            a, b, r2 = mpf(one) - other, mpf(one) + other, mpf(rho) ** 2
+
+            def ring(m: mpf, a: mpf = a, b: mpf = b, r2: mpf = r2) -> mpf:
+                places = ((1, a + 2 * m), (1, a - 2 * m), (-1, b - 2 * m), (-1, b + 2 * m - 2))
+                return sum(sign / mp.sqrt(r2 + z * z) for sign, z in places)
+
+            def wave(k: mpf, one: float = one, other: float = other) -> mpf:
+                return (
+                    4 * besselk(0, mp.pi * k * rho) * sin(mp.pi * k * one) * sin(mp.pi * k * other)
+                )
+
+            if rho < 0.3:
+                expected = nsum(ring, [1, mp.inf])
+            else:
+                waves = sum(wave(k) for k in range(1, int(22.0 / rho) + 3))
+                expected = waves - 1 / mp.sqrt(r2 + a * a)
+        assert float(expected) == pytest.approx(found[3, 0], rel=1e-11)
+
+
+BLUR = 0.05
+BLURRED: list[tuple[str, Images, Floats]] = [
+    ("plane", plane_images(np.zeros(3), UP, BLUR), at((0.1, 0.2, 0.0), (0.13, 0.2, 0.0))),
+    ("sphere", sphere_images(np.zeros(3), 1.0, BLUR), at((0.6, 0.0, 0.8), (0.0, 1.0, 0.0))),
+    (
+        "gap",
+        GapImages(np.zeros(3), UP, 1.0, BLUR),
+        at((0.1, 0.2, 0.0), (0.1, 0.3, 1.0), (2.0, 0.0, 1.0)),
+    ),
+]
+
+
+@pytest.mark.parametrize(
+    ("images", "places"), [each[1:] for each in BLURRED], ids=["plane", "sphere", "gap"]
+)
+def test_softened_charges_and_their_images_leave_no_potential_on_the_conductor(
+    images: Images, places: Floats
+) -> None:
+    """sum q / (r^2 + e^2)^(1/2) + images = 0 at places on it, where charges of 0 stand.
+
+    Boundary condition of grounded conductors (Jackson, section 1.9).
+    """
+    place, charge = cloud(20, 0.4)
+    if images is BLURRED[0][1] or images is BLURRED[2][1]:
+        place[2] += 0.45
+    place[2, 0] = 0.03 if images is not BLURRED[1][1] else -0.97
+    both, q = np.hstack([places, place]), np.concatenate([np.zeros(places.shape[1]), charge])
+    found = images_at(images, both, q)[3, : places.shape[1]]
+    r2 = ((places[:, :, None] - place[:, None, :]) ** 2).sum(axis=0)
+    own = (charge / np.sqrt(r2 + BLUR**2)).sum(axis=1)
+    assert -own == pytest.approx(found, rel=1e-10)
+    assert np.abs(own).min() > 0.05
+
+
+def test_a_heavy_macro_charge_before_a_cathode_is_pulled_no_more_than_its_blur_lets() -> None:
+    """K q d / (4 (d^2 + e^2/4)^(3/2)), largest at d = e/8^(1/2): K q 2 / 27^(1/2) / e^2 (a blurred
+    charge and its mirrored one, Jackson, section 2.1; maximum by hand)."""
+    d = np.geomspace(1e-4, 1.0, 400)
+    pulls = []
+    for x in d:
+        place = at((0.0, 0.0, x))
+        one = images_at(plane_images(np.zeros(3), UP, BLUR), place, 1.0)[2, 0]
+        two = images_at(GapImages(np.zeros(3), UP, 100.0, BLUR), place, 1.0)[2, 0]
+        assert -x / (4.0 * (x * x + 0.25 * BLUR**2) ** 1.5) == pytest.approx(one, rel=1e-12)
+        assert one == pytest.approx(two, rel=1e-3, abs=1e-3)
+        pulls.append(-one)
+    assert 2.0 / math.sqrt(27.0) / BLUR**2 == pytest.approx(max(pulls), rel=1e-3)
+    assert BLUR / math.sqrt(8.0) == pytest.approx(d[np.argmax(pulls)], rel=0.03)
 
 
 @pytest.fixture(scope="module")
@@ -216,3 +315,18 @@ def test_an_ion_falls_onto_a_plane_by_its_own_image(scheme: str, steps: int) -> 
     assert 0.5e-6 == pytest.approx(moving.charges.position[2, 0], rel=1e-6)
     assert -half_speed == pytest.approx(moving.charges.velocity[2, 0], rel=1e-6)
     assert 0.5e-6 != moving.charges.position[2, 0]
+
+
+def test_an_ion_between_plates_falls_to_the_nearer_and_its_energy_is_its_image_s() -> None:
+    """m v^2/2 = K q^2/(4 D) [f(x0) - f(x)], f = psi(x/D) + psi(1 - x/D) (reference case I6)."""
+    mass, gap, high = 6.6359e-26, 3e-6, 1e-6
+    start = ions([[0.0, 0.0, high]], mass=mass / ATOMIC_MASS)
+    images = GapImages(np.zeros(3), UP, gap, 0.0)
+    moving = loop(start, 3e-8, 3e-12, images=images)
+    to_end(moving)
+    x, v = float(moving.charges.position[2, 0]), float(moving.charges.velocity[2, 0])
+    levels = [digamma(z / gap) + digamma(1.0 - z / gap) for z in (high, x)]
+    fallen = COULOMB_CONSTANT * ELEMENTARY_CHARGE**2 / (4.0 * gap) * (levels[0] - levels[1])
+    assert fallen == pytest.approx(0.5 * mass * v * v, rel=1e-6)
+    assert x < 0.7 * high
+    assert v < 0.0

@@ -164,7 +164,7 @@ def check_sides(scenario: Scenario, particles: Particles) -> None:
         _refuse_any(
             scenario,
             particles,
-            ~(form.distance(particles.position) > 0.0),
+            ~(form.depth(particles.position) > 0.0),
             f"do not begin on the charges' side of [images], {form.words()}",
             "Move the cloud, or the conductor.",
         )

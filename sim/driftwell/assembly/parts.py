@@ -22,14 +22,16 @@ from driftwell.assembly.births import (
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.newcomers import source_rates
 from driftwell.assembly.pace import chosen_pace
+from driftwell.coulomb.form import MIXED_ACCURACY, Coulomb
 from driftwell.coulomb.summation import Summation
+from driftwell.coulomb.tree import settings_for
 from driftwell.fields.form import Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.body import Body
 from driftwell.geometry.distance import distances
 from driftwell.images.electrodes import ElectrodeImages, electrode_images
 from driftwell.images.form import ClosedForm, followed
-from driftwell.images.image_sum import Images
+from driftwell.images.image_sum import Asked, Fineness, Images
 from driftwell.images.importance import importance, remark
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
@@ -277,13 +279,23 @@ def _images(
         return None
     kick = choice.step * scenario.stepping.coulomb_every
     charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
-    away = form.distance(particles.position)
-    return form.images(followed(kick, charge, mass, particles.velocity, away))
+    away = form.depth(particles.position)
+    nearest = followed(kick, charge, mass, particles.velocity, away)
+    return form.images(Asked(nearest, scenario.coulomb.softening, _fineness(scenario.coulomb)))
+
+
+def _fineness(form: Coulomb) -> Fineness | None:
+    """How the tree sums over images of many charges; not at all where all is summed directly."""
+    if form.method == "direct":
+        return None
+    it = settings_for(form.accuracy)
+    mixed = form.precision != "double" and form.accuracy >= MIXED_ACCURACY
+    return Fineness(it.order, it.leaf, it.tolerance, mixed)
 
 
 def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:
     """Distances of points (n, 3) from the one conductor, m."""
-    return form.distance(points.T)
+    return form.depth(points.T)
 
 
 def _distance_between(conductors: Conductors, points: NDArray[np.float64]) -> NDArray[np.float64]:

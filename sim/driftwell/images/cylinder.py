@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from driftwell.forms import Bound, Length, Point, Positive, Real, key
 from driftwell.images.form import ClosedForm
-from driftwell.images.image_sum import Images
+from driftwell.images.image_sum import Asked, Images
 from driftwell.images.tube_sum import GROUPS, TubeImages, work_size
 from driftwell.images.tube_table import orders_for
 
@@ -31,13 +31,13 @@ class CylinderImages(ClosedForm):
         default=0.9,
     )
 
-    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+    def depth(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
         along = _AXES[self.axis]
         away = position.T - self.centre
         one, two = away[:, (along + 1) % 3], away[:, (along + 2) % 3]
         return np.asarray(self.radius - np.hypot(one, two))
 
-    def images(self, followed: float) -> Images:
+    def images(self, asked: Asked) -> Images:
         return TubeImages(_AXES[self.axis], np.array(self.centre), self.radius, self.reach)
 
     def words(self) -> str:

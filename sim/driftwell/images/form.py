@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.forms import Form, Length, NonNegative, key, or_word
-from driftwell.images.image_sum import Images
+from driftwell.images.image_sum import Asked, Images
 
 if TYPE_CHECKING:
     Closest = float | str
@@ -37,12 +37,12 @@ class ImagesForm(Form):
 class ClosedForm(ImagesForm):
     """Base of the kinds that are a conductor by themselves, with its images in closed form."""
 
-    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+    def depth(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
         """Distance (n,), m, of places (3, n) from the conductor, positive where charges may be."""
         raise TypeError(f"{type(self).__name__} must know its own side")
 
-    def images(self, followed: float) -> Images:
-        """The conductor; followed : m, of :func:`followed`."""
+    def images(self, asked: Asked) -> Images:
+        """The conductor, for what the run asks of its sum."""
         raise TypeError(f"{type(self).__name__} must make its images")
 
 
@@ -51,14 +51,16 @@ class MirrorForm(ClosedForm):
 
     closest: Closest = key(
         "distance c from the conductor within which the force stops growing; it errs by "
-        '1.5 (c/d)^2 at the distance d; "auto": what the step can follow',
+        '1.5 (c/d)^2 at the distance d; "auto": what the step can follow. It is never taken less '
+        "than half of coulomb.softening, with which images are as blurred as their charges",
         default="auto",
         example="10 nm",
     )
 
-    def length(self, followed: float) -> float:
-        """The distance c, m, where `followed` is what the step can follow."""
-        return followed if isinstance(self.closest, str) else self.closest
+    def blur(self, asked: Asked) -> float:
+        """The length s, m, that the images' law is softened with: 2 c, and no less than e."""
+        closest = asked.followed if isinstance(self.closest, str) else self.closest
+        return max(2.0 * closest, asked.softening)
 
 
 def followed(

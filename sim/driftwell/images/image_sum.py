@@ -35,17 +35,49 @@ THREADED = 512
 
 
 @dataclass(frozen=True, slots=True)
+class Fineness:
+    """How the tree sums over the images of many charges: as over their pairs (coulomb/tree.py).
+
+    order : of the expansions; leaf : most charges in a leaf
+    tolerance : error allowed to the force between two cells, relative to the field that is there
+    mixed : whether near pairs are taken in mixed precision
+    """
+
+    order: int
+    leaf: int
+    tolerance: float
+    mixed: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Asked:
+    """What a run asks of the sum over its images.
+
+    followed : m, how near to a conductor steps can follow a charge's own image
+        (:func:`driftwell.images.form.followed`)
+    softening : m, e of the pairs' law; images of blurred charges are blurred alike
+    fineness : of the tree; None where every image is to be summed by itself
+    """
+
+    followed: float = 0.0
+    softening: float = 0.0
+    fineness: Fineness | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class ImageSum:
     """A sum over the images as the time loop takes it, for one number of charges.
 
     function : of :data:`SIGNATURE`; fills field, V/m, and potential, V, of the images
     table : numbers it reads
     work : room it works in, overwritten
+    keeps : whether the room holds addresses, so that nobody else may write there
     """
 
     function: CompiledFunction
     table: Floats
     work: Floats
+    keeps: bool = False
 
 
 class Images(Protocol):

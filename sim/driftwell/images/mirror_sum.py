@@ -6,28 +6,29 @@ D = (a^2 - s^2) / a for a sphere of radius a, s the distance from its centre,
     G(x_i, x_j) = -K / (|x_i - x_j|^2 + D_i D_j)^(1/2),    K = 1/(4 pi eps0)                (1)
 
 which is the potential of the mirrored charge, and of Kelvin's image -q a/s at a^2/s. The force
-grows without bound towards the conductor; a length c stops it, D becoming
+grows without bound towards the conductor; a length s stops it,
 
-    P = (D^2 + 4 c^2)^(1/2)                                                                 (2)
+    G(x_i, x_j) = -K / R_ij,    R_ij^2 = |x_i - x_j|^2 + D_i D_j + s^2                      (2)
 
-so that the potential of a charge by itself is -K q / (2 (d^2 + c^2)^(1/2)) before the plane. The
-field on a charge is
+with the charge's own image, j = i, among them: its potential before a plane is
+-K q / (2 (d^2 + c^2)^(1/2)), c = s/2. Where the pairs are softened, K / (r^2 + e^2)^(1/2), and
+s = e, pair and image cancel on the conductor, D_i = 0, exactly. The field on a charge is
 
-    E_i = -K sum_j q_j [x_i - x_j + P_j grad P_i / 2] / R_ij^3,   R_ij^2 = |x_i - x_j|^2 + P_i P_j
+    E_i = -K sum_j q_j [x_i - x_j + D_j grad D_i / 2] / R_ij^3                              (3)
 
-with the charge's own image, j = i, among them. Eight charges are summed at once, one source after
-the other, as in the direct sum of the pairs; the bits do not depend on the number of threads.
+Eight charges are summed at once, one source after the other, as in the direct sum of the pairs;
+the bits do not depend on the number of threads.
 
 References
 ----------
 J. D. Jackson, Classical Electrodynamics, 3rd ed. (1999), sections 2.1 and 2.2. In (1) the mirrored
 distance is written as |x_i - x_j|^2 + 4 d_i d_j; for the sphere s_i^2 s_j^2 / a^2 - 2 x_i.x_j + a^2
-is |x_i - x_j|^2 + D_i D_j. Equation (2) is common practice, no source.
+is |x_i - x_j|^2 + D_i D_j. The softened law is H. C. Plummer's of the pairs, mirrored (common
+practice, no source).
 """
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -35,13 +36,15 @@ from numba import prange
 from numpy.typing import NDArray
 
 from driftwell.forms import spelled
-from driftwell.images.image_sum import SIGNATURE, THREADED, ImageSum
+from driftwell.images.image_sum import SIGNATURE, THREADED, Fineness, ImageSum
+from driftwell.images.mirror_tree import mirrored_room, plane_tree_sum
 from driftwell.kernels import inner_kernel, kernel, threaded_kernel
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.lanes import (
     fused,
     inverse_root,
     lanes,
+    larger,
     load_one,
     load_some,
     store_some,
@@ -51,57 +54,87 @@ from driftwell.kernels.pointers import CompiledFunction
 Floats = NDArray[np.float64]
 
 PLANE, SPHERE = 0, 1
+BY_TREE = 12_000
+"""From this many charges on the tree sums faster, before a plane."""
 _NEAR, _MANY = 8.0, 0.1
-"""Distance in lengths `closest` from which on forces are right to 2 %; the share of charges nearer
+"""Distance in lengths c = s/2 from which on forces are right to 2 %; the share of charges nearer
 than that which is said."""
 NEAREST2 = 1e-100
-"""m^2, added to every squared distance: what pushes along no distance pushes nowhere."""
+"""m^2, the least squared distance: what pushes along no distance pushes nowhere."""
 
 
 @dataclass(frozen=True, slots=True)
 class MirrorImages:
     """A plane or a sphere that answers with images.
 
-    table : (6,) kind; a point of the plane or the centre, m; closest c, m; and of the plane its
+    table : (6,) kind; a point of the plane or the centre, m; s, m; and of the plane its
         normal (3), of the sphere its radius, m
+    softening : m, e of the pairs' law
+    fineness : of the tree that sums many charges before a plane; None: never
     """
 
     table: Floats
+    softening: float = 0.0
+    fineness: Fineness | None = None
 
     def laid_out(self, n: int, threads: int) -> ImageSum:
         """The sum for `n` charges on so many threads."""
+        if self.fineness is not None and n >= BY_TREE and self.table[0] == PLANE:
+            point, blur, normal = self.table[1:4], self.table[4], self.table[5:8]
+            work = mirrored_room(n, 1, threads, self.fineness, bool(blur > 0.0))
+            planes = np.array([*normal, normal @ point, blur])
+            return ImageSum(CompiledFunction(plane_tree_sum, SIGNATURE), planes, work, True)
         summed = threaded_mirror_sum if threads > 1 and n >= THREADED else mirror_sum
         return ImageSum(CompiledFunction(summed, SIGNATURE), self.table, room((4, n)))
 
     def doubt(self, position: Floats, charge: Floats) -> str | None:
         """Where many charges are so near the conductor that `closest` weakens their force."""
-        closest = float(self.table[4])
         away = position[:, charge != 0.0].T - self.table[1:4]
-        if not len(away) or closest == 0.0:
-            return None
         if self.table[0] == PLANE:
             depth = away @ self.table[5:8]
         else:
             depth = self.table[5] - np.linalg.norm(away, axis=1)
-        share = float(np.mean(depth < _NEAR * closest))
-        if share <= _MANY:
-            return None
-        return (
-            f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} "
-            f"times {spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by "
-            "more than 2 % there. Where that matters, take a shorter step, or state [images] "
-            "closest"
-        )
+        return weakened(depth, float(self.table[4]), self.softening)
 
 
-def plane_images(point: Floats, normal: Floats, closest: float) -> MirrorImages:
-    """A grounded plane through `point`, m; charges are where the unit vector `normal` points."""
-    return MirrorImages(np.array([PLANE, *point, closest, *normal], dtype=np.float64))
+def weakened(depth: Floats, blur: float, softening: float) -> str | None:
+    """What should be said of charges at distances (n,), m, where s weakens their images' force.
+
+    Nothing where s is the pairs' softening, which the user chose.
+    """
+    closest = 0.5 * blur
+    if not depth.size or blur <= softening:
+        return None
+    share = float(np.mean(depth < _NEAR * closest))
+    if share <= _MANY:
+        return None
+    return (
+        f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} "
+        f"times {spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by "
+        "more than 2 % there. Where that matters, take a shorter step, or state [images] closest"
+    )
 
 
-def sphere_images(centre: Floats, radius: float, closest: float) -> MirrorImages:
-    """A grounded sphere around `centre`, m, with the charges inside."""
-    return MirrorImages(np.array([SPHERE, *centre, closest, radius], dtype=np.float64))
+def plane_images(
+    point: Floats,
+    normal: Floats,
+    blur: float,
+    softening: float = 0.0,
+    fineness: Fineness | None = None,
+) -> MirrorImages:
+    """A grounded plane through `point`, m; charges are where the unit vector `normal` points.
+
+    blur, softening : s and e, m
+    """
+    table = np.array([PLANE, *point, blur, *normal], dtype=np.float64)
+    return MirrorImages(table, softening, fineness)
+
+
+def sphere_images(
+    centre: Floats, radius: float, blur: float, softening: float = 0.0
+) -> MirrorImages:
+    """A grounded sphere around `centre`, m, with the charges inside; s and e, m."""
+    return MirrorImages(np.array([SPHERE, *centre, blur, radius], dtype=np.float64), softening)
 
 
 @kernel
@@ -113,7 +146,7 @@ def mirror_sum(
     work: np.ndarray,
     out_image: np.ndarray,
 ) -> None:
-    """Field and potential of the images at each charge, eq. (1), on one thread.
+    """Field and potential of the images at each charge, eqs. (2) and (3), on one thread.
 
     Parameters
     ----------
@@ -124,7 +157,7 @@ def mirror_sum(
     """
     _depths(position, table, work)
     for block in range((charge.size + 7) // 8):
-        _eight(8 * block, position, charge, constant, work, out_image)
+        _eight(8 * block, position, charge, constant, table[4], work, out_image)
 
 
 @threaded_kernel
@@ -139,14 +172,14 @@ def threaded_mirror_sum(
     """The same as :func:`mirror_sum`, with the same bits, on all of numba's threads."""
     _depths(position, table, work)
     for block in prange((charge.size + 7) // 8):
-        _eight(8 * block, position, charge, constant, work, out_image)
+        _eight(8 * block, position, charge, constant, table[4], work, out_image)
 
 
 @inner_kernel
 def _depths(position: np.ndarray, table: np.ndarray, work: np.ndarray) -> None:
-    """P of (2), and half its gradient, of every charge into rows of `work`."""
+    """D of (1), and half its gradient, of every charge into rows of `work`."""
     x, y, z = position[0], position[1], position[2]
-    cx, cy, cz, closest = table[1], table[2], table[3], table[4]
+    cx, cy, cz = table[1], table[2], table[3]
     for i in range(x.size):
         dx, dy, dz = x[i] - cx, y[i] - cy, z[i] - cz
         if table[0] == PLANE:
@@ -156,10 +189,8 @@ def _depths(position: np.ndarray, table: np.ndarray, work: np.ndarray) -> None:
             a = table[5]
             depth = a - (dx * dx + dy * dy + dz * dz) / a
             gx, gy, gz = -dx / a, -dy / a, -dz / a
-        shallow = math.sqrt(depth * depth + 4.0 * closest * closest)
-        slope = depth / shallow if shallow > 0.0 else 0.0
-        work[0, i] = shallow
-        work[1, i], work[2, i], work[3, i] = slope * gx, slope * gy, slope * gz
+        work[0, i] = depth
+        work[1, i], work[2, i], work[3, i] = gx, gy, gz
 
 
 @inner_kernel
@@ -168,6 +199,7 @@ def _eight(
     position: np.ndarray,
     charge: np.ndarray,
     constant: float,
+    blur: float,
     work: np.ndarray,
     out_image: np.ndarray,
 ) -> None:
@@ -177,13 +209,14 @@ def _eight(
     x, y, z = load_some(xs, i, left), load_some(ys, i, left), load_some(zs, i, left)
     depth = load_some(depths, i, left)
     ex = ey = ez = inward = level = lanes(0.0)
-    nearest2 = lanes(NEAREST2)
+    soft, nearest2 = lanes(blur * blur), lanes(NEAREST2)
     for j in range(charge.size):
         dx = x - load_one(xs, j)
         dy = y - load_one(ys, j)
         dz = z - load_one(zs, j)
         other = load_one(depths, j)
-        r2 = fused(dx, dx, fused(dy, dy, fused(dz, dz, fused(depth, other, nearest2))))
+        r2 = fused(dx, dx, fused(dy, dy, fused(dz, dz, fused(depth, other, soft))))
+        r2 = larger(nearest2, r2)  # beyond the surface a mirrored charge may be at the very place
         inverse = inverse_root(r2)
         at = inverse * load_one(charge, j)
         push = at * (inverse * inverse)

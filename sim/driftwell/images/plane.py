@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from driftwell.forms import Direction, Point, key
 from driftwell.images.form import MirrorForm
-from driftwell.images.image_sum import Images
+from driftwell.images.image_sum import Asked, Images
 from driftwell.images.mirror_sum import plane_images
 
 
@@ -23,11 +23,17 @@ class PlaneImages(MirrorForm):
         default=(0.0, 0.0, 1.0),
     )
 
-    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+    def depth(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
         return np.asarray((position.T - self.at) @ np.array(self.normal))
 
-    def images(self, followed: float) -> Images:
-        return plane_images(np.array(self.at), np.array(self.normal), self.length(followed))
+    def images(self, asked: Asked) -> Images:
+        return plane_images(
+            np.array(self.at),
+            np.array(self.normal),
+            self.blur(asked),
+            asked.softening,
+            asked.fineness,
+        )
 
     def words(self) -> str:
         place = ", ".join(f"{each * 1e3:.6g}" for each in self.at)

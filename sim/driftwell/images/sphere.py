@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from driftwell.forms import Length, Point, Positive, key
 from driftwell.images.form import MirrorForm
-from driftwell.images.image_sum import Images
+from driftwell.images.image_sum import Asked, Images
 from driftwell.images.mirror_sum import sphere_images
 
 
@@ -20,11 +20,11 @@ class SphereImages(MirrorForm):
     radius: Positive[Length] = key("inner radius", example="5 mm")
     centre: Point = key("the sphere's centre", default=(0.0, 0.0, 0.0))
 
-    def distance(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+    def depth(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
         return np.asarray(self.radius - np.linalg.norm(position.T - self.centre, axis=1))
 
-    def images(self, followed: float) -> Images:
-        return sphere_images(np.array(self.centre), self.radius, self.length(followed))
+    def images(self, asked: Asked) -> Images:
+        return sphere_images(np.array(self.centre), self.radius, self.blur(asked), asked.softening)
 
     def words(self) -> str:
         return f"of a sphere of radius {self.radius * 1e3:.6g} mm around the charges"

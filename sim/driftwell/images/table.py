@@ -5,11 +5,13 @@ from __future__ import annotations
 from driftwell.images.cylinder import CylinderImages
 from driftwell.images.electrodes import ElectrodeImages
 from driftwell.images.form import ImagesForm
+from driftwell.images.gap import PlatesImages
 from driftwell.images.plane import PlaneImages
 from driftwell.images.sphere import SphereImages
 
 IMAGE_KINDS: tuple[type[ImagesForm], ...] = (
     PlaneImages,
+    PlatesImages,
     SphereImages,
     CylinderImages,
     ElectrodeImages,

@@ -36,6 +36,8 @@ RIGHT = 7
 """The right child, 0 for a leaf."""
 AMOUNT, NET, SQUARES, COUNT = 8, 9, 10, 11
 """Sums of |Q|, Q, Q^2 and 1."""
+FEELING = 12
+"""Number of its charges whose field is wanted."""
 
 DEEPEST = 56
 """Depth from which cells are cut by numbers alone."""
@@ -60,6 +62,8 @@ PATH = 5
 TOLERANCE, LEAF, WORKERS, COUNTER, PART, MARKS = 0, 1, 2, 3, 4, 8
 """Places in the header: settings, the tasks' counter, the address of the part (gathering.py), then
 begin and length of each region."""
+OWNER = 56
+"""Where, in the header, eight numbers stand that belong to who calls the tree."""
 _HEADER = 64
 _REGIONS = (
     "place",
@@ -171,10 +175,15 @@ def regions(n: int, threads: int, leaf: int, of: BasisType) -> dict[str, int]:
     }
 
 
-def laid_out(n: int, threads: int, leaf: int, tolerance: float, of: BasisType) -> Floats:
-    """(1, size) float64, work space for `n` charges, without the address of its part."""
+def laid_out(
+    n: int, threads: int, leaf: int, tolerance: float, of: BasisType, behind: int = 0
+) -> Floats:
+    """(1, size) float64, work space for `n` charges, without the address of its part.
+
+    behind : numbers wanted behind all of it
+    """
     lengths = {name: padded(size) for name, size in regions(n, threads, leaf, of).items()}
-    work = np.empty((1, _HEADER + sum(lengths.values())))
+    work = np.empty((1, _HEADER + sum(lengths.values()) + behind))
     header = work[0, :_HEADER]
     header[:] = 0.0
     header[TOLERANCE], header[LEAF], header[WORKERS] = tolerance, leaf, threads

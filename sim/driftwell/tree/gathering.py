@@ -18,8 +18,10 @@ from driftwell.kernels.pointers import CompiledFunction, call_address
 from driftwell.tree.build import grow
 from driftwell.tree.cells import (
     CELL,
+    FEELING,
     LEAF,
     PART,
+    RIGHT,
     Floats,
     Tree,
     X,
@@ -44,10 +46,20 @@ _SIGNATURE = (
 
 
 def tree_room(
-    n: int, threads: int, leaf: int, tolerance: float, order: int, softened: bool, mixed: bool
+    n: int,
+    threads: int,
+    leaf: int,
+    tolerance: float,
+    order: int,
+    softened: bool,
+    mixed: bool,
+    behind: int = 0,
 ) -> Floats:
-    """(1, size) float64, work space for `n` charges; pages not used are not touched."""
-    work = laid_out(n, threads, leaf, tolerance, BasisType(order, softened, mixed))
+    """(1, size) float64, work space for `n` charges; pages not used are not touched.
+
+    behind : numbers wanted behind all of it
+    """
+    work = laid_out(n, threads, leaf, tolerance, BasisType(order, softened, mixed), behind)
     work[0, PART : PART + 1].view(np.int64)[0] = part(order, softened, mixed).__wrapper_address__()
     return work
 
@@ -76,7 +88,7 @@ def part(order: int, softened: bool, mixed: bool) -> CompiledFunction:
         tree, desk = tree_in(work), desk_in(work, worker)
         potential = out_field.shape[0] == 4
         if stage == GROW:
-            _grow_tasks(of, worker, count, charge, leaf, work)
+            _grow_tasks(of, worker, count, charge, leaf, out_field.shape[1], work)
         elif stage == MEASURE_ABOVE:
             for k in range(count - 1, -1, -1):
                 measure_parent(of, tree.tops[k], tree)
@@ -84,7 +96,8 @@ def part(order: int, softened: bool, mixed: bool) -> CompiledFunction:
         elif stage == GATHER_ABOVE:
             gather_above(of, potential, tree, desk, softening2)
         else:
-            _gather_tasks(of, worker, count, leaf, softening2, constant, unit, work, out_field)
+            n = charge.size
+            _gather_tasks(of, worker, count, n, leaf, softening2, constant, unit, work, out_field)
 
     return CompiledFunction(part_of_basis, _SIGNATURE)
 
@@ -117,7 +130,13 @@ def call_part(
 
 @view_kernel
 def _grow_tasks(
-    of: BasisType, worker: int, tasks: int, charge: np.ndarray, leaf: int, work: np.ndarray
+    of: BasisType,
+    worker: int,
+    tasks: int,
+    charge: np.ndarray,
+    leaf: int,
+    feeling: int,
+    work: np.ndarray,
 ) -> None:
     """Cut and measure the cells of one task after the other."""
     tree, desk = tree_in(work), desk_in(work, worker)
@@ -131,6 +150,7 @@ def _grow_tasks(
         if high == n:
             _fill(n, last, tree)
         climb(of, first, last, tree, desk.lanes)
+        _count_feeling(first, last, feeling, tree)
         task = next_task(taken)
     desk.lanes[:] = 0.0
 
@@ -141,6 +161,21 @@ def _bring(charge: np.ndarray, low: int, high: int, tree: Tree) -> None:
     row = tree.place[3]
     for k in range(low, high):
         row[k] = charge[tree.order[k]]
+
+
+@outer_kernel
+def _count_feeling(low: int, high: int, feeling: int, tree: Tree) -> None:
+    """How many charges of the cells ``low:high`` are among the first `feeling` as given."""
+    for cell in range(high - 1, low - 1, -1):
+        right = int(tree.cells[cell, RIGHT])
+        if right > 0:
+            count = tree.cells[cell + 1, FEELING] + tree.cells[right, FEELING]
+        else:
+            count = 0.0
+            for k in range(tree.first[cell], tree.first[cell + 1]):
+                if tree.order[k] < feeling:
+                    count += 1.0
+        tree.cells[cell, FEELING] = count
 
 
 @outer_kernel
@@ -169,6 +204,7 @@ def _gather_tasks(
     of: BasisType,
     worker: int,
     tasks: int,
+    n: int,
     leaf: int,
     softening2: float,
     constant: float,
@@ -183,7 +219,7 @@ def _gather_tasks(
     task = next_task(taken)
     while task < tasks:
         gather(of, task, potential, tree, desk, softening2)
-        low, high, _, _ = bounds(task, tasks, out_field.shape[1], leaf, tree)
+        low, high, _, _ = bounds(task, tasks, n, leaf, tree)
         _hand_out(low, high, softening2, constant * unit, unit, tree, out_field)
         task = next_task(taken)
 
@@ -202,9 +238,11 @@ def _hand_out(
     for axis in range(3):
         source, out = tree.field[axis], out_field[axis]
         for k in range(low, high):
-            out[tree.order[k]] = to_volt * unit * source[k]
+            if tree.order[k] < out.size:
+                out[tree.order[k]] = to_volt * unit * source[k]
     if out_field.shape[0] == 4:
         own = 1.0 / math.sqrt(softening2) if softening2 > AT_ONE_PLACE else 0.0
         source, out, charge = tree.field[3], out_field[3], tree.place[3]
         for k in range(low, high):
-            out[tree.order[k]] = to_volt * (source[k] - own * charge[k])
+            if tree.order[k] < out.size:
+                out[tree.order[k]] = to_volt * (source[k] - own * charge[k])

@@ -47,13 +47,14 @@ def tree_field(
     """The tree sum, as the time loop takes it.
 
     work : of :func:`driftwell.tree.gathering.tree_room`; out_field : (3, n) V/m, or (4, n) with
-    potentials, V; overwritten. A charge that is nowhere (NaN) makes all NaN.
+    potentials, V, of all charges or the first so many; overwritten. A charge that is nowhere (NaN)
+    makes all NaN.
     """
     n, leaf = charge.size, int(work[0, LEAF])
     unit = _unit(position)
     if n == 0 or not math.isfinite(unit):
         for axis in range(out_field.shape[0]):
-            for i in range(n):
+            for i in range(out_field.shape[1]):
                 out_field[axis, i] = math.nan
         return
     tree, desk = tree_in(work), desk_in(work, 0)

@@ -14,10 +14,12 @@ from driftwell.tree.cells import (
     BATCH,
     CELL,
     FARS,
+    FEELING,
     PATH,
     RANGES,
     REACH,
     RIGHT,
+    STRENGTH,
     VERDICTS,
     Desk,
     Tree,
@@ -92,6 +94,8 @@ def _visit(
         verdicts(row, desk.lanes, order, desk.lanes[VERDICTS:])
         for k in range(count):
             other, found = queue[head + k], desk.lanes[VERDICTS + k]
+            if desk.lanes[BATCH * STRENGTH + k] == 0.0:
+                continue  # nothing comes from cells without charge
             if found == FAR or (found == NOTHING and levels_at_one_place):
                 desk.far[far] = other
                 far += 1
@@ -205,6 +209,8 @@ def gather(
     while top > 0:
         top -= PATH
         cell, begin, end = desk.path[top], desk.path[top + 1], desk.path[top + 2]
+        if tree.cells[cell, FEELING] == 0.0:
+            continue
         level, parent = desk.path[top + 3], desk.path[top + 4]
         own = level * length
         _inherit(of, cell, parent, level, own, tree, desk)
