@@ -9,6 +9,8 @@ import numpy as np
 import pytest
 
 from driftwell.coulomb.form import Coulomb
+from driftwell.geometry.outline import rectangle
+from driftwell.geometry.solid import Revolved
 from driftwell.images.mirror_sum import plane_images
 from driftwell.ledger.ledger import LedgerRow
 from driftwell.particles.unborn import Unborn
@@ -154,6 +156,46 @@ def test_a_detector_sees_a_stream_at_the_times_it_was_born_plus_its_flight() -> 
     to_end(moving)
     expected = unborn.particles.birth_time + 2e-3 / 2e3
     assert expected == pytest.approx(events(moving).time, rel=1e-12, abs=0.0)
+
+
+@pytest.mark.parametrize("kind", ["wall", "electrode"])
+def test_who_is_beyond_a_surface_at_the_end_of_its_first_step_is_lost_then_and_there(
+    kind: str,
+) -> None:
+    """Born 50 ns before the end of a step, 10 um before what stops it, at 1 km/s."""
+    unborn = stream(1, 1.0, size=0.0, speed=0.0)
+    unborn.particles.birth_time[:] = 150e-9
+    unborn.particles.velocity[2] = 1e3
+    at = "10 um" if kind == "wall" else "1 m"
+    block = Revolved(rectangle((0.0, 10e-6), (1e-3, 2e-3)))
+    moving = loop(
+        NOBODY,
+        1e-6,
+        100e-9,
+        unborn=unborn,
+        walls=[wall("plane", at=["0", "0", at])],
+        bodies=[[block]] if kind == "electrode" else [],
+    )
+    to_end(moving)
+    met = events(moving)
+    assert moving.over
+    assert [200e-9] == pytest.approx(met.time, rel=1e-9, abs=0.0)
+    assert [50e-6] == pytest.approx(met.position[:, 2], rel=1e-9, abs=0.0)
+
+
+def test_a_charge_born_on_an_electrode_leaves_it_and_is_lost_where_it_comes_back() -> None:
+    """Thrown down from a block at 1 km/s against 400 V/m: back after 2 v/a, at the same speed."""
+    unborn = stream(1, 1.0, size=0.0, speed=0.0)
+    unborn.particles.birth_time[:] = 150e-9
+    unborn.particles.velocity[2] = -1e3
+    unborn.particles.position[2] = -1e-12
+    block = Revolved(rectangle((0.0, 0.0), (5e-3, 2e-3)))
+    moving = loop(NOBODY, WHOLE, 100e-9, unborn=unborn, fields=[UNIFORM], bodies=[[block]])
+    to_end(moving)
+    met = events(moving)
+    back = 150e-9 + 2e3 / (ION_RATIO * STRENGTH)
+    assert [back] == pytest.approx(met.time, rel=1e-8, abs=0.0)
+    assert [1e3] == pytest.approx(met.velocity[:, 2], rel=1e-8, abs=0.0)
 
 
 def test_a_limited_surface_launches_what_gauss_law_allows() -> None:
