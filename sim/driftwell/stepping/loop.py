@@ -267,7 +267,10 @@ class TimeLoop:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
         if self._images is not None and not self._doubted:
-            doubt = self._images.doubt(self.charges.position, self.charges.charge)
+            there = self.charges.alive != WAITING
+            doubt = self._images.doubt(
+                np.ascontiguousarray(self.charges.position[:, there]), self.charges.charge[there]
+            )
             if doubt is not None:
                 self._doubted = True
                 told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
