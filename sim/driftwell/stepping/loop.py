@@ -267,10 +267,7 @@ class TimeLoop:
             self.summation = summation
             self.work = self.work._replace(tiles=summation.work)
         if self._images is not None and not self._doubted:
-            there = self.charges.alive != WAITING
-            doubt = self._images.doubt(
-                np.ascontiguousarray(self.charges.position[:, there]), self.charges.charge[there]
-            )
+            doubt = self._images.doubt(self.charges.position, self.charges.charge)
             if doubt is not None:
                 self._doubted = True
                 told = [*told, f"At t = {spelled(self.time, 's')} {doubt}."]
