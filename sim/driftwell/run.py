@@ -209,7 +209,7 @@ class _Execution:
         self._flags = 0
         self._seconds = 0.0
         self._began = self._started = clocks.monotonic()
-        observer.begins(parts.choice, parts.schedule, parts.particles)
+        observer.begins(parts.choice, parts.schedule, parts.everyone)
 
     def begin(
         self, loaded: LoadedScenario, threads: int, holding: ExitStack, *, held_already: bool

@@ -93,6 +93,13 @@ class Assembly:
     frames: BunchFrames | None = None
 
     @property
+    def everyone(self) -> Particles:
+        """The charges at the start and all that will be born, as they are born."""
+        if self.unborn is None:
+            return self.particles
+        return joined([self.particles, self.unborn.particles])
+
+    @property
     def walls(self) -> tuple[WallForm, ...]:
         """The scenario's walls, then the edges of fields."""
         return (*self.scenario.wall, *(wall for each in self.edges for wall in each.walls()))
@@ -100,8 +107,7 @@ class Assembly:
     @property
     def tracked(self) -> NDArray[np.int64]:
         """Ids of the charges whose trajectories are kept."""
-        unborn = 0 if self.unborn is None else len(self.unborn)
-        return tracked_ids(len(self.particles) + unborn, self.scenario.record.tracks)
+        return tracked_ids(len(self.everyone), self.scenario.record.tracks)
 
     def header(
         self, loaded: LoadedScenario, summation: Summation, threads: int, created: str

@@ -58,7 +58,12 @@ def _of_study(study: Study, seconds: float) -> int:
 
 def _begins(parts: Assembly, summation: Summation) -> None:
     """Say what is timed, as a run says what it does."""
-    tell(steps_in_words(parts.choice, parts.schedule, parts.particles))
+    tell(steps_in_words(parts.choice, parts.schedule, parts.everyone))
+    if parts.unborn is not None:
+        tell(
+            f"{len(parts.unborn)} of the charges are born on the way. What is timed are the first "
+            "steps, with few of them: later ones take longer, and the time told is too short."
+        )
     tell(f"Coulomb sum: {summation.method}; {summation.because}")
 
 

@@ -29,7 +29,14 @@ A source limited by space charge launches each charge that is due with the proba
 
 with E_n the field at its birth place along the surface's normal, taken as it pulls the charge away,
 A the area that emits, I the current supplied then. By Gauss's law so much charge makes the field
-vanish; where the field pushes back nothing is launched.
+vanish; where the field pushes back nothing is launched. But charges softened within a length e draw
+on the surface, at the height z above it, only the part z/(z^2 + e^2)^(1/2) of the field lines that
+they should: of what stands nearer than e emission would learn late. So they count there as if at
+the height (z^2 + e^2)^(1/2), unsoftened, with their images: E_n is less by
+
+    sum_j 2 Q_j/(4 pi eps0) ((z_j^2 + e^2)^(1/2) - z_j)/(r_j^2 + e^2)^(3/2)                 (5)
+
+which makes up for it exactly before a plane. It serves the decision alone, and moves nothing.
 
 References
 ----------
@@ -237,6 +244,7 @@ def _bear(
         if births.demand[c] > 0.0:
             pull = births.normal[0, c] * (ex + cx) + births.normal[1, c] * (ey + cy)
             pull += births.normal[2, c] * (ez + cz)
+            pull -= _missing(births, c, i, plan, charges)
             pull = pull if ratio > 0.0 else -pull
             if births.chance[c] * h >= births.demand[c] * pull:  # (4)
                 charges.alive[i] = 0
@@ -299,6 +307,27 @@ def _bear(
         add_compensated(total, carry, COUNT_SOURCES, births.weight[c])
     work.cursor[CURSOR_BIRTH] = last
     work.cursor[CURSOR_NEWBORN] = last - first
+
+
+@inner_pair_kernel
+def _missing(births: Births, c: int, i: int, plan: Plan, charges: Charges) -> float:
+    """What softened charges lack of field at the surface that birth `c` leaves, eq. (5), V/m.
+
+    Those above the surface's plane count, but not the newborn of the same step.
+    """
+    x, y, z = charges.position[0], charges.position[1], charges.position[2]
+    xi, yi, zi = x[i], y[i], z[i]
+    nx, ny, nz = births.normal[0, c], births.normal[1, c], births.normal[2, c]
+    total = 0.0
+    for j in range(x.size):
+        dx, dy, dz = x[j] - xi, y[j] - yi, z[j] - zi
+        height = dx * nx + dy * ny + dz * nz
+        counts = 1.0 if charges.alive[j] == 1 and height >= 0.0 else 0.0
+        r2 = dx * dx + dy * dy + dz * dz + plan.softening2
+        lifted = math.sqrt(height * height + plan.softening2)
+        r2 = r2 if r2 != 0.0 else math.inf
+        total += counts * charges.charge[j] * (lifted - height) / (r2 * math.sqrt(r2))
+    return 2.0 * plan.constant * total
 
 
 @inner_pair_kernel

@@ -25,7 +25,7 @@ from driftwell.kernels.waveform import waveform
 
 Floats = NDArray[np.float64]
 
-_PIECES = 1000
+_PIECES = 4000
 """Pieces of a waveform that is no straight line, at least."""
 _PER_PERIOD = 64
 _MOST_PIECES = 400_000

@@ -1,7 +1,7 @@
 """Charges from the surface of an electrode, uniform over its area or a part of it.
 
 The bodies are cut into triangles; those at the border of the part that emits are cut again until
-they are a sixty-fourth of it. A charge's place on its triangle is then moved to the surface itself,
+they are a 256th of it. A charge's place on its triangle is then moved to the surface itself,
 along the slope of the distance from it, which is the surface's normal.
 """
 
@@ -29,7 +29,7 @@ _FINE = 1.0 / 24.0
 """Size of triangles, as part of a body's extent."""
 _TURN = math.pi / 48.0
 """Largest angle between neighbouring triangles of a curved surface, rad."""
-_BORDER = 1.0 / 64.0
+_BORDER = 1.0 / 256.0
 """Size of triangles at the border of the part that emits, as part of its size."""
 _PROBE = 1e-5
 """Half the length over which the distance's slope is taken, as part of the extent."""
