@@ -34,7 +34,7 @@ def drive(order: int, sense: str = "counterclockwise", **keys: Any) -> FieldForm
 @pytest.mark.parametrize("order", [1, 2, 5])
 @pytest.mark.parametrize("sense", ["counterclockwise", "clockwise"])
 def test_the_pattern_is_the_one_at_time_zero_turned(order: int, sense: str) -> None:
-    """V (r/R)^m cos(m (angle - alpha -+ omega t)); J. D. Jackson (1998), sec. 2.11 (from memory)."""
+    """V (r/R)^m cos(m (angle - alpha -+ omega t)): J. D. Jackson (1998), sec. 2.11, from memory."""
     form = drive(order, sense, angle="25 deg")
     random = np.random.default_rng(1)
     place = random.uniform(-3e-3, 3e-3, (20, 3))

@@ -26,6 +26,7 @@ from driftwell.forms.waveforms import (
 from driftwell.kernels.waveform import waveform
 from driftwell.scenario.read import read_scenario
 from tests.cases import field
+from tests.running import points
 from tests.scenario.good_scenarios import toml_file
 
 FLAT = {
@@ -114,6 +115,7 @@ def test_a_scenarios_seed_draws_the_noise_of_its_fields_and_electrodes(tmp_path:
         "title": "stray fields",
         "duration": "10 us",
         "seed": 11,
+        "cloud": [points("one", "electron", [0.0, 0.0, 0.0])],
         "field": [
             {"name": name, "kind": "uniform-electric", "strength": strength} for name in "ab"
         ],
@@ -121,7 +123,7 @@ def test_a_scenarios_seed_draws_the_noise_of_its_fields_and_electrodes(tmp_path:
             {
                 "name": name,
                 "voltage": FLAT,
-                "shape": [{"kind": "ring", "radius": "5 mm", "thickness": "1 mm", "at": at}],
+                "shape": [{"kind": "circle", "centre": ["5 mm", at], "radius": "0.5 mm"}],
             }
             for name, at in (("c", "2 mm"), ("d", "-2 mm"))
         ],

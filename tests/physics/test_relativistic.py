@@ -12,6 +12,7 @@ from typing import Any
 
 import numpy as np
 import pytest
+from scipy.optimize import brentq
 
 from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE, SPEED_OF_LIGHT
 from driftwell.fields.form import FieldForm
@@ -30,7 +31,7 @@ def moved(
     """Charges that do not push each other, electrons unless said otherwise, at the end."""
     mass, charge = keys.pop("mass", ELECTRON_MASS), keys.pop("charge", -1.0)
     start = ions(place, proper, charge=charge, mass=mass / ATOMIC_MASS)
-    options = {"scheme": NEW, "extent": 1e6, **keys}
+    options = {"scheme": NEW, **keys}
     return to_end(loop(start, duration, duration / steps, fields=fields, **options))
 
 
@@ -44,21 +45,28 @@ def plates(strength: float, along: Sequence[float]) -> FieldForm:
     return field("uniform-electric", strength=f"{strength!r} V/m", along=list(along))
 
 
-def test_a_thousand_turns_at_gamma_ten_lag_by_what_the_half_angle_lags() -> None:
-    """A turn by 2 atan(theta/2) in place of theta: 2.06586190 rad after 1e5 steps of 2 pi/100.
+def test_a_thousand_turns_at_gamma_ten_are_off_by_what_the_equations_say() -> None:
+    """By 1.0029501 rad after 1e5 steps of 2 pi/100; speed and radius are kept to rounding.
 
-    Speed and radius are kept to rounding. C. K. Birdsall, A. B. Langdon, Plasma Physics via
-    Computer Simulation (1985), sec. 15-4 (from memory). Kick-drift-kick turns exactly, which
-    test_single_charges.py holds it to.
+    In a magnet alone a step turns u by an angle a with tan(a/2) gamma(u cos(a/2)) = b, gamma being
+    that of the mean u (Higuera and Cary, eq. 20), solved here by scipy: a - theta is about
+    theta^3 (beta^2/8 - 1/12). A tangent with the gamma of u itself would lag by 2.07 rad, and
+    kick-drift-kick turns exactly, which test_single_charges.py holds it to.
     """
     period, radius = 3.5723867577410623e-09, 0.1695965067650099
     proper = LIGHT * math.sqrt(99.0)
     found = moved([0.0, 0.0, 0.0], [proper, 0.0, 0.0], 1000 * period, 100_000, [coil(0.1)]).charges
     u = found.velocity[:, 0]
     assert proper == pytest.approx(float(np.linalg.norm(u)), rel=1e-12, abs=0.0)
-    assert -2.0658618955601837 == pytest.approx(math.atan2(u[1], u[0]), abs=1e-9)
-    centre = found.position[:2, 0] - radius / proper * np.array([u[1], -u[0]])
     half = math.pi / 100.0
+
+    def excess(a: float) -> float:
+        return math.tan(a) * math.sqrt(1.0 + 99.0 * math.cos(a) ** 2) - 10.0 * half
+
+    turned = 2e5 * (brentq(excess, 0.5 * half, 2.0 * half, xtol=1e-18, rtol=1e-15) - half)
+    assert 1.00295 == pytest.approx(turned, abs=1e-5)
+    assert turned == pytest.approx(math.atan2(u[1], u[0]), abs=1e-8)
+    centre = found.position[:2, 0] - radius / proper * np.array([u[1], -u[0]])
     wide = radius * (1.0 / math.cos(math.atan(half)) - 1.0)  # the corners of the polygon
     assert np.linalg.norm(centre - [0.0, radius]) < 2.0 * wide
 
@@ -82,7 +90,7 @@ def test_no_force_leaves_an_electron_of_gamma_100_straight(
         [coil(1.0), plates(speed, [0, 1, 0])],
         scheme=scheme,
     ).charges
-    assert 1.0 == pytest.approx(float(found.position[0, 0]), rel=1e-6, abs=0.0)
+    assert 1.0 == pytest.approx(float(found.position[0, 0]), rel=1e-5, abs=0.0)
     assert least <= float(np.abs(found.position[1:, 0]).max()) <= most
     if scheme == NEW:
         after = math.sqrt(1.0 + float((found.velocity[:, 0] ** 2).sum()) / LIGHT**2)
@@ -201,7 +209,8 @@ def test_betatron_swings_of_gamma_50_have_the_heavy_mass(scheme: str) -> None:
     )
     assert 0.0 == pytest.approx(float(found.position[0, 0]) / 1e-5, abs=1e-5 * turned)
     way = 0.9997999977746999 * LIGHT * 5.25 * swing
-    assert way == pytest.approx(float(found.position[2, 0]), rel=1e-8, abs=0.0)
+    # the published speed leaves out 1/(8 gamma^4), 2e-8
+    assert way == pytest.approx(float(found.position[2, 0]), rel=5e-8, abs=0.0)
 
 
 OFFSETS = np.array([-4, -3, -2, -1, 1, 2, 3, 4], dtype=float)

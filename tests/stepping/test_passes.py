@@ -11,6 +11,7 @@ from driftwell.kernels.threads import on_threads
 from driftwell.stepping.blocks import BLOCK, MANY, SUMS, blocks
 from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.motion import CURSOR_FRESH
+from driftwell.stepping.schemes import MIDWAY
 from tests.cases import detector, field, wall
 from tests.moving import DIRECT, accounts, events, ions, loop, to_end
 
@@ -30,8 +31,13 @@ PULSED = field(
 COUNT = MANY + 777
 
 
-def cloud(threads: int = 1, count: int = COUNT, **options: Any) -> TimeLoop:
-    """Ions in rods and magnets, some lost, bounced or passing a detector, at the start."""
+def cloud(
+    threads: int = 1, count: int = COUNT, part: slice = slice(None), **options: Any
+) -> TimeLoop:
+    """Ions in rods and magnets, some lost, bounced or passing a detector, at the start.
+
+    part : which of the `count` there are
+    """
     random = np.random.default_rng(3)
     given = {
         "fields": [RODS, PULSED, COIL, PIECE],
@@ -43,8 +49,9 @@ def cloud(threads: int = 1, count: int = COUNT, **options: Any) -> TimeLoop:
         **options,
     }
     place = random.uniform(-0.5e-3, 0.5e-3, size=(count, 3))
+    speed = random.normal(scale=900.0, size=(count, 3))
     return loop(
-        ions(place, random.normal(scale=900.0, size=(count, 3))),
+        ions(place[part], speed[part]),
         0.3e-6,
         10e-9,
         records=[0.1e-6, 0.2e-6],
@@ -84,15 +91,38 @@ def test_many_charges_move_as_few_do(scheme: str) -> None:
     assert books[0] == pytest.approx(books[1], rel=1e-9, abs=1e-12 * float(np.abs(books[0]).max()))
 
 
+def test_many_charges_go_through_the_middle_as_few_do() -> None:
+    """Against the same charges in two parts, both few; the accounts are those of both together."""
+    found = to_end(cloud(scheme=MIDWAY))
+    parts = [
+        to_end(cloud(scheme=MIDWAY, part=part)) for part in (slice(0, 8001), slice(8001, None))
+    ]
+    for name in ("position", "velocity"):
+        expected = np.concatenate([getattr(each.charges, name) for each in parts], axis=1)
+        difference = np.abs(expected - getattr(found.charges, name)).max()
+        assert difference <= 1e-13 * np.abs(expected).max()
+    assert 500 < events(found).surface.size == sum(events(each).surface.size for each in parts)
+    book = found.work.total + found.work.carry
+    expected = np.sum([each.work.total + each.work.carry for each in parts], axis=0)
+    assert expected == pytest.approx(book, rel=1e-9, abs=1e-12 * float(np.abs(book).max()))
+
+
 @pytest.mark.parametrize(
     "options",
     [
         {},
+        {"scheme": MIDWAY},
         {"walls": [], "detectors": [], "fields": [RODS]},
         {"fields": [], "coulomb": DIRECT, "step": 0.1e-6},
         {"coulomb": DIRECT, "coulomb_every": 3, "step": 0.1e-6},
     ],
-    ids=["all", "rods alone", "charges alone", "charges every third step"],
+    ids=[
+        "all",
+        "all, through the middle",
+        "rods alone",
+        "charges alone",
+        "charges every third step",
+    ],
 )
 def test_the_accounts_of_many_charges_close(options: dict[str, Any]) -> None:
     """Momentum and its moment, charge and count to rounding; energy to the step."""
@@ -120,12 +150,13 @@ def few_steps(**options: Any) -> TimeLoop:
     )
 
 
-def test_threads_change_no_bit_of_many_charges() -> None:
+@pytest.mark.parametrize("scheme", ["kick-drift-kick", MIDWAY])
+def test_threads_change_no_bit_of_many_charges(scheme: str) -> None:
     """Charges, accounts, events and the energy in the fields."""
     found = []
     for threads in (1, 2):
         with on_threads(threads):
-            moving = to_end(cloud(threads))
+            moving = to_end(cloud(threads, scheme=scheme))
         met = events(moving)
         found.append(
             [

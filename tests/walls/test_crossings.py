@@ -264,12 +264,22 @@ def crossing_errors(scheme: str, steps: list[int]) -> tuple[Floats, Floats]:
 
 
 @pytest.mark.parametrize(
-    ("scheme", "order"), [("kick-drift-kick", 2.0), ("composed-4", 4.0), ("midpoint-rotation", 2.0)]
+    ("scheme", "orders"),
+    [
+        ("kick-drift-kick", (2.0, 2.0)),
+        ("composed-4", (4.0, 4.0)),
+        ("midpoint-rotation", (2.0, 4.0)),
+    ],
 )
-def test_crossings_are_found_to_the_order_of_the_scheme(scheme: str, order: float) -> None:
-    """Fitted slope of the errors of time and of speed against the step, within 0.1."""
+def test_crossings_are_found_to_the_order_of_the_scheme(
+    scheme: str, orders: tuple[float, float]
+) -> None:
+    """Fitted slope of the errors of time and of speed against the step, within 0.1.
+
+    In the middle of a step, where midpoint-rotation knows the force, its speed errs less.
+    """
     steps = [50, 150, 250, 350]
-    for error in crossing_errors(scheme, steps):
+    for order, error in zip(orders, crossing_errors(scheme, steps), strict=True):
         slope = -np.polyfit(np.log(steps), np.log(error), 1)[0]
         assert order == pytest.approx(slope, abs=0.1)
         assert 1e-13 < error.min()

@@ -37,7 +37,7 @@ seed     = 3
 name    = "electrons"
 species = "electron"
 count   = {n}
-motion  = {{ kinetic_energy = "2 MeV", along = [0.6, 0, 0.8], temperature = "1e7 K" }}
+motion  = {{ kinetic_energy = "2 MeV", along = [0.6, 0, 0.8], temperature = "1e6 K" }}
 shape   = {{ kind = "gaussian", sigma = ["1 mm", "1 mm", "1 mm"] }}
 
 [[field]]
