@@ -11,7 +11,7 @@ import pytest
 from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError
 from driftwell.record.reader import open_run
-from driftwell.run import run
+from driftwell.run import Progress, run
 from driftwell.scenario.explain import explain
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from tests.running import Unwatched
@@ -100,10 +100,11 @@ def test_opposite_charges_may_share_a_frame_or_be_softened(tmp_path: Path) -> No
 
 def test_the_step_in_a_frame_is_longer_by_gamma(tmp_path: Path) -> None:
     """The same places at rest, where the bunch is longer by gamma; what is slow there is slower."""
-    rest = assembled(
-        stated(tmp_path, pulse(energy=0.0, length=f"{GAMMA} mm"), duration="100 us")
-    ).choice
-    fast = assembled(stated(tmp_path, duration="100 us")).choice
+    seldom: dict[str, Any] = {"duration": "100 us", "record": {"every": "10 us"}}
+    slow = pulse(energy=0.0, length=f"{GAMMA} mm")
+    rest = assembled(stated(tmp_path, slow, **seldom)).choice
+    fast = assembled(stated(tmp_path, **seldom)).choice
+    assert "plasma oscillation" in rest.because
     assert GAMMA * rest.step == pytest.approx(fast.step, rel=1e-6, abs=0.0)
 
 
@@ -140,3 +141,32 @@ def test_a_run_tells_in_what_frame_it_sums_or_what_it_leaves_out(
     assert abs(result.ledger.energy_residual) < 1e-6
     twisted = float(np.abs(result.ledger.torque_frames).max())
     assert (frame != "laboratory") == (twisted > 0.0)
+
+
+class Stopper(Unwatched):
+    """Asks to stop at its second chance."""
+
+    def __init__(self) -> None:
+        self.asked = 0
+
+    def goes_on(self, progress: Progress) -> bool:
+        self.asked += 1
+        return self.asked < 2
+
+
+def test_a_stopped_run_in_frames_ends_as_an_unbroken_one(tmp_path: Path) -> None:
+    """Two bunches pushed by a field, stopped in its midst and gone on with: the same last bit."""
+    two = pulse(), pulse("tail", 0.9 * ENERGY)
+    pushed = {"name": "gap", "kind": "uniform-electric", "strength": "-3 MV/m", "along": [1, 0, 2]}
+    loaded = stated(
+        tmp_path, *two, coulomb={"frame": "bunch"}, stepping={"step": "20 ps"}, field=[pushed]
+    )
+    whole = run(loaded, tmp_path / "whole", Unwatched())
+    assert "stopped" == run(loaded, tmp_path / "broken", Stopper()).outcome.word
+    again = run(loaded, tmp_path / "broken", Unwatched())
+    assert "finished" == whole.outcome.word == again.outcome.word
+    for name in ("energy_residual", "work_frames", "coulomb"):
+        assert getattr(whole.ledger, name) == getattr(again.ledger, name)
+    ends = [open_run(each.folder).snapshot(1e-9) for each in (whole, again)]
+    assert ends[0].position.tobytes() == ends[1].position.tobytes()
+    assert ends[0].velocity.tobytes() == ends[1].velocity.tobytes()

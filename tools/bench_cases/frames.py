@@ -75,7 +75,8 @@ def _row(n: int, method: Any, softening: Any, repeats: int) -> dict[str, Any]:
                 out,
             )
 
-        plain(), in_frame()
+        plain()
+        in_frame()
         pairs = [(_seconds(plain), _seconds(in_frame)) for _ in range(max(repeats, 3))]
     bare, whole = (min(each[k] for each in pairs) for k in (0, 1))
     return {
