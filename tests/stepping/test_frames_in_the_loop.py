@@ -11,10 +11,12 @@ import pytest
 from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, SPEED_OF_LIGHT
 from driftwell.coulomb.bunch_frames import BunchFrames
 from driftwell.coulomb.form import Coulomb
+from driftwell.coulomb.frame_table import frame_table
 from driftwell.errors import StepError
 from driftwell.kernels.threads import on_threads
 from driftwell.particles.state import Particles
 from driftwell.stepping.loop import TimeLoop
+from driftwell.stepping.motion import CURSOR_FRESH
 from tests.cases import field, wall
 from tests.moving import DIRECT, TREE, accounts, always, ions, loop, to_end
 from tests.running import quantity
@@ -81,6 +83,19 @@ def test_two_bunches_have_accounts_that_close() -> None:
         assert 0.0 == pytest.approx(row.third_law_residual, abs=1e-14)
     given = np.linalg.norm(rows[-1].impulse_frames)
     assert given > 1e-9 * np.linalg.norm(rows[-1].momentum)
+
+
+def test_a_bunch_without_charges_is_as_if_at_rest() -> None:
+    """Of three, the first and the last are empty: the forces of the one that is there alone."""
+    alone, three = flown(ONE), flown(BunchFrames(("a", "b", "c"), (0, 1, 2)))
+    three.charges.cloud[:] = 1
+    three.work.cursor[CURSOR_FRESH] = 0
+    three.work.frames[:] = frame_table(3)
+    three.to_mark(1, iter([True, False]).__next__)
+    alone.to_mark(1, iter([True, False]).__next__)
+    assert 1 == alone.steps_done == three.steps_done
+    assert np.abs(alone.work.coulomb).max() > 0.0
+    assert alone.work.coulomb.tobytes() == three.work.coulomb.tobytes()
 
 
 @pytest.mark.parametrize("keys", [{"coulomb_every": 5}, {"scheme": "composed-4"}])

@@ -236,6 +236,6 @@ class FrameWatch:
         return (
             f"In the rest frame of {names} the charges move at "
             f"{math.hypot(now.along, now.across):.1e} c, rms{causes}: the force on each errs by "
-            f"up to about {now.missed:.1e} for that, more than coulomb.accuracy = "
+            f"about {now.missed:.1e} for that, more than coulomb.accuracy = "
             f"{self._accuracy:g}; much of it cancels where they move in all directions."
         )

@@ -46,5 +46,7 @@ PLACE, CHARGE, FOUND, OTHERS = 0, 3, 4, 8
 
 
 def frame_table(bunches: int) -> Floats:
-    """A table for so many bunches, none of them known yet."""
-    return np.zeros((bunches + 1, COLUMNS))
+    """A table for so many bunches, none of them known yet: as if at rest."""
+    table = np.zeros((bunches + 1, COLUMNS))
+    table[:bunches, LORENTZ] = 1.0
+    return table

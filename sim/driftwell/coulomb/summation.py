@@ -26,6 +26,7 @@ from driftwell.coulomb.direct import (
     workspace_shape,
 )
 from driftwell.coulomb.form import MIXED_ACCURACY, Coulomb
+from driftwell.coulomb.frame_table import ROWS
 from driftwell.coulomb.pair_sum import PairSum
 from driftwell.coulomb.potential import potentials, threaded_potentials
 from driftwell.coulomb.tree import (
@@ -232,7 +233,9 @@ def room_in_bytes(form: Coulomb, n: int) -> int:
     """Bytes of the sum's work space for `n` charges, at the most."""
     if form.method == "off":
         return 0
-    direct, tree = 8 * math.prod(workspace_shape(n)), TREE_START + TREE_BYTES * n
+    framed = 8 * ROWS * n if form.frame == "bunch" else 0
+    direct = 8 * math.prod(workspace_shape(n)) + framed
+    tree = TREE_START + TREE_BYTES * n + framed
     if form.method == "direct" or n < LEAST:
         return direct
     if form.method == "tree" or n >= _CERTAIN:
