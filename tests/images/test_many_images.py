@@ -8,13 +8,16 @@ import numba
 import numpy as np
 import pytest
 
+from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.tree import settings_for, tree_sum, tree_workspace
 from driftwell.images import gap_sum, mirror_sum
 from driftwell.images.gap_far import WIDEST
 from driftwell.images.gap_sum import GapImages
 from driftwell.images.image_sum import Fineness, Images
 from driftwell.images.mirror_sum import plane_images
+from tests.cases import wall
 from tests.images.images_at import Floats, energy, images_at
+from tests.moving import accounts, ions, loop
 
 FOOT, NORMAL, GAP = np.array([0.1, 0.2, 0.3]), np.array([2.0, -1.0, 2.0]) / 3.0, 2.0
 N = 1500
@@ -87,7 +90,7 @@ def test_the_tree_sums_images_to_the_accuracy_asked_for(kind: str, blur: float) 
 
 
 def test_the_field_of_many_is_minus_the_gradient_of_their_energy() -> None:
-    """Of the sum over a grid itself, by differences; across a node of the grid and at a plate too."""
+    """Of the sum over a grid itself, by differences; at a node of the grid and a plate too."""
     place, charge = spread(gap_sum.BY_GRID, 2.0)
     images = gap(SOFT, fineness(1e-4))
     place[:, 1] = FOOT + 0.3 * images.frame[8:11] * GAP + 1e-3 * NORMAL
@@ -162,3 +165,34 @@ def test_the_tree_gives_the_same_field_at_the_first_so_many_charges_alone() -> N
         work = tree_workspace(N, 1, settings, False, True)
         tree_sum()(place, charge, softening2, 1.0, work, out)
     assert whole[:, :m].tobytes() == some.tobytes()
+
+
+@pytest.mark.usefixtures("by_tree")
+@pytest.mark.parametrize("kind", ["plane", "gap"])
+def test_accounts_of_many_charges_close_to_the_accuracy_of_the_tree(kind: str) -> None:
+    """Energy to a tenth of it, momentum to rounding, with charges lost on the conductors."""
+    random = np.random.default_rng(3)
+    side, blur = 3e-4, 4e-6
+    start = ions(
+        random.uniform(-side, side, (N, 3)), random.normal(0.0, 150.0, (N, 3)), weight=300.0
+    )
+    foot, up = np.array([0.0, 0.0, -side]), np.array([0.0, 0.0, 1.0])
+    images: Images = GapImages(foot, up, 2.0 * side, blur, blur, fineness(1e-3))
+    if kind == "plane":
+        images = plane_images(foot, up, blur, blur, fineness(1e-3))
+    moving = loop(
+        start,
+        4e-7,
+        1e-8,
+        coulomb=Coulomb(method="tree", accuracy=1e-3, softening=f"{blur} m"),
+        records=[2e-7],
+        images=images,
+        walls=[wall("box", size=["3 mm", "3 mm", "0.6 mm"])],
+    )
+    for row in accounts(moving):
+        assert row.momentum_residual <= 2e-13
+        assert row.angular_residual <= 2e-13
+        assert row.third_law_residual <= 1e-12
+        assert abs(row.energy_residual) <= 1e-4
+    assert 0.0 < row.count_lost
+    assert abs(row.image) > 1e-3 * row.kinetic
