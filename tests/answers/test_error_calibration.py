@@ -12,7 +12,6 @@ from recorded_by_hand import (
     LOSS,
     MASS,
     Recorded,
-    asked,
     facts,
     in_time,
     one_cloud,
@@ -20,28 +19,17 @@ from recorded_by_hand import (
     table,
 )
 from scipy.signal import lfilter
+from scores import scores
 
 from driftwell.answers.moments import MomentsRow
 from driftwell.constants import BOLTZMANN, SPEED_OF_LIGHT
 
-SEEDS = 200
 COUNT = 400
 KELVIN = 300.0
 SPREAD = float(np.sqrt(BOLTZMANN * KELVIN / MASS))
 SPEED = 5000.0
 SIGMA = 1e-4
 GAUSSIAN = 2.354820045
-
-
-def scores(
-    question: dict[str, Any], draw: Callable[[np.random.Generator], Recorded], truth: float | None
-) -> np.ndarray:
-    """(value - truth) / error for each seed; without a truth the mean of all values stands in."""
-    form = asked(**question)
-    answers = [form.answer(draw(np.random.default_rng(seed))) for seed in range(SEEDS)]
-    value = np.array([answer.value for answer in answers])
-    error = np.array([answer.error for answer in answers], dtype=np.float64)
-    return np.asarray((value - (value.mean() if truth is None else truth)) / error)
 
 
 def thermal(random: np.random.Generator) -> Recorded:

@@ -145,6 +145,39 @@ def _many(folder: Path) -> Run:
     return pictured_run(folder, [(0.0, start), (1e-6, start)], tracks=3)
 
 
+def _channel(folder: Path) -> Run:
+    """A beam of one cloud that is being focused: narrow in x at one end, in y at the other."""
+    count = 6000
+    start = charges(count, (1e-3, 1e-3, 1.0), (1e3, 1e3, 1e3), drift=(0.0, 0.0, 1e6))
+    along = np.linspace(-20e-3, 20e-3, count)
+    place = start.position.copy()
+    place[:, 2] = along
+    later = place * np.stack([1.5 + 40.0 * along, 1.5 - 40.0 * along, np.ones(count)], axis=1)
+    later[:, 2] += 0.1
+    return pictured_run(
+        folder, [(0.0, Charges(place, start.velocity)), (1e-7, Charges(later, start.velocity))]
+    )
+
+
+def _traced(folder: Path) -> Run:
+    """A cloud whose centre and charges were traced: lines apart, lines close, lost, at rest."""
+    start = charges(50)
+    time = np.arange(4096) * 1e-8
+    noise = 1e-9 * np.random.default_rng(5).normal(size=(2, time.size))
+    slow, fast, drive = (np.cos(2.0 * np.pi * f * time) for f in (1e6, 1.06e6, 48e6))
+    return pictured_run(
+        folder,
+        [(0.0, start), (5e-5, start)],
+        traces={
+            "load centre x": 1e-5 * slow + 3e-7 * drive + noise[0],
+            "load charge 0 y": np.where(time < 2e-5, 1e-5 * slow + 8e-6 * fast + noise[1], np.nan),
+            "load charge 1 z": np.full(time.size, 1e-3),
+            "load charge 2 z": np.full(time.size, np.nan),
+        },
+        sampled=time,
+    )
+
+
 MAKERS: dict[str, Callable[[Path], Run]] = {
     "trap": _trap,
     "beam": _beam,
@@ -156,6 +189,8 @@ MAKERS: dict[str, Callable[[Path], Run]] = {
     "exploding": _exploding,
     "odd": _odd,
     "many": _many,
+    "channel": _channel,
+    "traced": _traced,
 }
 
 

@@ -116,8 +116,13 @@ def pictured_run(
     tracks: int = 1000,
     ledger: dict[str, np.ndarray] | None = None,
     weight: float = 1.0,
+    traces: dict[str, np.ndarray] | None = None,
+    sampled: np.ndarray | None = None,
 ) -> Run:
-    """A run with these charges at each record; `snapshots` : the records that have one."""
+    """A run with these charges at each record; `snapshots` : the records that have one.
+
+    traces : values (k,), m, by the names of what was traced; sampled : (k,) their times, s
+    """
     first = records[0][1]
     count = len(first.id)
     held = int(first.cloud.max()) + 1 if count else 1
@@ -149,6 +154,7 @@ def pictured_run(
             walls=tuple(walls),
             detectors=tuple(detectors),
             tracked=tuple(int(k) for k in tracked),
+            traces=tuple(traces or ()),
         ),
     )
     kept = {number % len(records) for number in snapshots}
@@ -167,6 +173,8 @@ def pictured_run(
         writer.ledger(row)
         if number in kept:
             writer.snapshot(time, alive.particles)
+    if traces and sampled is not None:
+        writer.trace(sampled, np.stack(list(traces.values()), axis=1))
     for write, found in ((writer.losses, losses), (writer.crossings, crossings)):
         if found is not None:
             write(found)

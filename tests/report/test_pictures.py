@@ -15,7 +15,7 @@ from driftwell.report.sheet import style
 ALWAYS = {"cloud", "trajectories", "ledger"}
 MADE = {
     "trap": ALWAYS | {"sizes", "phase-space"},
-    "beam": ALWAYS | {"sizes", "phase-space", "losses", "arrivals"},
+    "beam": ALWAYS | {"sizes", "phase-space", "envelope", "losses", "arrivals"},
     "two": ALWAYS,
     "line": ALWAYS | {"sizes"},
     "one": ALWAYS,
@@ -24,6 +24,8 @@ MADE = {
     "exploding": ALWAYS | {"sizes", "phase-space"},
     "odd": ALWAYS | {"sizes", "phase-space", "losses", "arrivals"},
     "many": ALWAYS | {"sizes", "phase-space"},
+    "channel": ALWAYS | {"sizes", "phase-space", "envelope"},
+    "traced": ALWAYS | {"sizes", "phase-space", "spectrum"},
 }
 WITHOUT_UNIT = ("charges left", "residual, relative", "part of all charges (%)")
 EACH = [(kind, name) for kind, names in MADE.items() for name in sorted(names)]

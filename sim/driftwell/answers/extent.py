@@ -27,10 +27,14 @@ from driftwell.answers.sampling import jackknife_error, quantile_error
 Floats = NDArray[np.float64]
 
 Measure = Literal["rms", "edge"]
-MEASURES = {"rms": "rms size", "edge": "size that holds 90 %"}
-"""Each in words."""
 HELD = 0.9
 """Part of the charges within the edge."""
+
+
+def size_in_words(measure: Measure, axis: str) -> str:
+    """``rms radius``, ``size along x that holds 90 %``; `axis` may be "radius"."""
+    what = "radius" if axis == "radius" else f"size along {axis}"
+    return f"rms {what}" if measure == "rms" else f"{what} that holds 90 %"
 
 
 def distances(places: Floats) -> Floats:

@@ -7,7 +7,7 @@ their mutual repulsion has ordered them, the true scatter is smaller than said.
     mean        s / sqrt(n)                                                                   (2)
     any other   jackknife: each of G groups is left out in turn,
                 error^2 = (G - 1)/G sum of (value without g - mean of these)^2                (3)
-    quantile    half of q(p + d) - q(p - d), with d^2 = p (1 - p)/n                           (4)
+    quantile    a quarter of q(p + 2 d) - q(p - 2 d), with d^2 = p (1 - p)/n                  (4)
 
 References
 ----------
@@ -70,9 +70,9 @@ def quantile_error(values: Floats, share: float) -> float | None:
     """Error of the value below which `share` of independent values lie, eq. 4; None for few."""
     if values.size < 10:
         return None
-    reach = math.sqrt(share * (1.0 - share) / values.size)
+    reach = 2.0 * math.sqrt(share * (1.0 - share) / values.size)
     low, high = np.quantile(values, [max(share - reach, 0.0), min(share + reach, 1.0)])
-    return float(high - low) / 2.0
+    return float(high - low) / 4.0
 
 
 def group_of(count: int, groups: int = GROUPS) -> NDArray[np.int64]:

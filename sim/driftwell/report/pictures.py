@@ -10,6 +10,7 @@ from matplotlib.figure import Figure
 from driftwell.record.reader import Run
 from driftwell.report.arrivals import arrivals_picture
 from driftwell.report.cloud import cloud_picture
+from driftwell.report.envelope import envelope_picture
 from driftwell.report.gallery import hang
 from driftwell.report.ledger import ledger_picture
 from driftwell.report.losses import losses_picture
@@ -17,12 +18,15 @@ from driftwell.report.phase_space import phase_space_picture
 from driftwell.report.scene import Scene, scene_of
 from driftwell.report.sheet import png, style
 from driftwell.report.sizes import sizes_picture
+from driftwell.report.spectrum import spectrum_picture
 from driftwell.report.trajectories import trajectories_picture
 
 PICTURES: dict[str, Callable[[Scene], Figure | None]] = {
     "cloud": cloud_picture,
     "sizes": sizes_picture,
     "phase-space": phase_space_picture,
+    "envelope": envelope_picture,
+    "spectrum": spectrum_picture,
     "trajectories": trajectories_picture,
     "losses": losses_picture,
     "arrivals": arrivals_picture,

@@ -20,7 +20,7 @@ from numpy.typing import NDArray
 from driftwell.answers.answer import Answer
 from driftwell.answers.charges import charges_at, number_in_words
 from driftwell.answers.evidence import Evidence
-from driftwell.answers.extent import MEASURES, Measure, extent, extent_error
+from driftwell.answers.extent import Measure, extent, extent_error, size_in_words
 from driftwell.answers.form import AXES, Axis, InstantQuestion, instant_in_words
 from driftwell.answers.sampling import Bools, group_of, jackknife_error
 from driftwell.errors import AnswerError
@@ -34,6 +34,7 @@ LEAST_IN_SLICE = 40
 SLICES = 20
 """Slices over the length of the beam where none is given."""
 _ENDS = (0.01, 0.99)
+_NEIGHBOURS = np.array([1.0, 2.0, 3.0, 2.0, 1.0])
 _MOST_SLICES = 10_000
 
 
@@ -129,12 +130,11 @@ class BeamEnvelope(InstantQuestion):
         )
 
     def words(self) -> str:
-        which = "radius" if self.axis == "radius" else f"along {self.axis}"
         where = "where it is largest"
         if self.where is not None:
             where = f"at {self.beam_axis} = {spelled(self.where, 'm')}"
         return (
-            f'{MEASURES[self.measure]}, {which}, of beam "{self.of}" {where}, '
+            f'{size_in_words(self.measure, self.axis)} of beam "{self.of}" {where}, '
             f"{instant_in_words(self.at)}"
         )
 
@@ -153,8 +153,14 @@ def _widest(places: Floats, slices: NDArray[np.int64], half: Bools, measure: Mea
     rows = np.flatnonzero(half)
     rows = rows[np.argsort(slices[rows], kind="stable")]
     ends = np.cumsum(within)
-    sizes = {
-        int(k): extent(places[:, rows[ends[k] - within[k] : ends[k]]], measure)
-        for k in np.flatnonzero(enough)
-    }
-    return first + max(sizes, key=lambda number: sizes[number])
+    sizes = np.zeros(shared)
+    for k in np.flatnonzero(enough):
+        sizes[k] = extent(places[:, rows[ends[k] - within[k] : ends[k]]], measure)
+    # Neighbouring slices are much alike: together they tell better where the widest is.
+    smooth = _with_neighbours(sizes) / np.maximum(_with_neighbours(enough.astype(np.float64)), 1.0)
+    return first + int(np.where(enough, smooth, 0.0).argmax())
+
+
+def _with_neighbours(values: Floats) -> Floats:
+    """Sums (k,) of each value and its neighbours', those beyond the ends being zero."""
+    return np.convolve(np.pad(values, _NEIGHBOURS.size // 2), _NEIGHBOURS, "valid")

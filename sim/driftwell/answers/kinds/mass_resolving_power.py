@@ -55,7 +55,7 @@ _CLOSER = 30
 
 
 class MassResolvingPower(PassageQuestion):
-    """Mass resolving power of a peak of arrival times, eq. 1."""
+    """Mass resolving power of a peak of arrival times."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["mass-resolving-power"] = key("m/dm of a peak of arrival times at a detector")
@@ -94,7 +94,7 @@ class MassResolvingPower(PassageQuestion):
 
 
 class LineResolvingPower(TracedQuestion):
-    """Mass resolving power of a line in the spectrum of a traced motion, eqs. 2 and 3."""
+    """Mass resolving power of a line in the spectrum of a traced motion."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["line-resolving-power"] = key("m/dm of a line in the spectrum of a motion")

@@ -74,7 +74,7 @@ class _BeamPerveance(CurrentQuestion):
 
 
 class Perveance(_BeamPerveance):
-    """Current over voltage to the power 3/2, eq. 1."""
+    """Current over voltage to the power 3/2."""
 
     unit: ClassVar[str] = "A/V^1.5"
     ask: Literal["perveance"] = key("current over voltage to the power 3/2, at a detector")
@@ -90,7 +90,7 @@ class Perveance(_BeamPerveance):
 
 
 class GeneralisedPerveance(_BeamPerveance):
-    """The dimensionless strength of a beam's own charge, eq. 2."""
+    """The dimensionless strength of a beam's own charge."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["generalised-perveance"] = key(

@@ -103,7 +103,7 @@ class _PlasmaQuestion(InstantQuestion):
 
 
 class PlasmaFrequency(_PlasmaQuestion):
-    """Plasma frequency of a cloud, eq. 1."""
+    """Plasma frequency of a cloud."""
 
     unit: ClassVar[str] = "Hz"
     ask: Literal["plasma-frequency"] = key("plasma frequency, in cycles per second")
@@ -133,7 +133,7 @@ class _HotPlasmaQuestion(_PlasmaQuestion):
 
 
 class DebyeLength(_HotPlasmaQuestion):
-    """Debye length of a cloud by itself, eq. 2."""
+    """Debye length of a cloud by itself."""
 
     unit: ClassVar[str] = "m"
     ask: Literal["debye-length"] = key("Debye length of the cloud by itself")
@@ -146,7 +146,7 @@ class DebyeLength(_HotPlasmaQuestion):
 
 
 class CouplingParameter(_HotPlasmaQuestion):
-    """Coulomb energy at the mean spacing over the thermal energy, eq. 3."""
+    """Coulomb energy at the mean spacing over the thermal energy."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["coupling-parameter"] = key(

@@ -57,7 +57,7 @@ class SpectrumPeak(TracedQuestion):
 
 
 class FrequencyShift(TracedQuestion):
-    """How far a frequency lies from what it is without the other charges, eq. 1."""
+    """How far a frequency lies from what it is without the other charges."""
 
     unit: ClassVar[str] = "Hz"
     ask: Literal["frequency-shift"] = key(

@@ -9,7 +9,7 @@ from typing import ClassVar, Literal
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.evidence import Evidence
-from driftwell.answers.extent import MEASURES, Measure, extent, extent_error
+from driftwell.answers.extent import Measure, extent, extent_error, size_in_words
 from driftwell.answers.form import AXES
 from driftwell.answers.kinds.passage_question import PassageQuestion
 from driftwell.answers.passages import passages_in_words
@@ -43,8 +43,7 @@ class SpotSize(PassageQuestion):
         return self.answered(extent(places, self.measure), error, note)
 
     def words(self) -> str:
-        which = "radius" if self.axis == "radius" else f"along {self.axis}"
         return (
-            f"{MEASURES[self.measure]}, {which}, of the spot of {self.whose()} on detector "
+            f"{size_in_words(self.measure, self.axis)} of the spot of {self.whose()} on detector "
             f'"{self.of}"{self.when()}'
         )

@@ -124,7 +124,7 @@ class _TuneQuestion(QuestionForm):
 
 
 class Tune(_TuneQuestion):
-    """Oscillations of single charges within a period, eq. 1."""
+    """Oscillations of single charges within a period."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["tune"] = key("oscillations of single charges within a period of the focusing")
@@ -161,7 +161,7 @@ class Tune(_TuneQuestion):
 
 
 class TuneDepression(_TuneQuestion):
-    """Frequency of single charges over what it would be without the others, eq. 2."""
+    """Frequency of single charges over what it would be without the others."""
 
     unit: ClassVar[str] = "1"
     ask: Literal["tune-depression"] = key(
