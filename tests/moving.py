@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
@@ -81,6 +82,7 @@ def loop(
     images: Images | None = None,
     bodies: Sequence[Sequence[Solid]] = (),
     state: Mapping[str, NDArray[Any]] | None = None,
+    cell: Cell | None = None,
     **stepping: Any,
 ) -> TimeLoop:
     """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
@@ -112,6 +114,7 @@ def loop(
         state,
         images,
         body_table(bodies),
+        cell,
     )
 
 

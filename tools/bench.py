@@ -28,6 +28,7 @@ from bench_cases.boundary import boundary_1e5, capacitance
 from bench_cases.direct import direct_16k
 from bench_cases.field_map import field_map
 from bench_cases.night import record_1e4, resume
+from bench_cases.periodic import periodic
 from bench_cases.reference import GCC, reference_library
 from bench_cases.start import start, startup
 from bench_cases.sweep import sweep
@@ -59,6 +60,7 @@ LONG: dict[str, Case] = {
     "sweep": sweep,
     "capacitance": capacitance,
     "boundary-1e5": boundary_1e5,
+    "periodic": periodic,
 }
 CASES = {**QUICK, **LONG}
 WITH_LARGE: dict[str, dict[str, Any]] = {

@@ -17,6 +17,7 @@ from driftwell.assembly.births import (
     check_within,
     edges_in,
     loaded_particles,
+    put_in_cell,
 )
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.pace import chosen_pace
@@ -152,6 +153,7 @@ class Assembly:
             state,
             self.images,
             self.conductors.table,
+            self.scenario.cell,
         )
 
     def image_remark(self) -> str | None:
@@ -198,6 +200,9 @@ def assembled(
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = loaded_particles(loaded, bodies, species)
+    moved = put_in_cell(scenario.cell, particles)
+    if moved is not None and told is not None:
+        told(moved)
     conductors = Conductors.of(scenario, loaded.folder)
     check_births(scenario, particles, conductors)
     check_sides(scenario, particles)  # before anything is solved

@@ -16,6 +16,7 @@ from driftwell.images.electrodes import ElectrodeImages
 from driftwell.particles.cloud import Amount
 from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT
+from driftwell.scenario.cell_checks import cell_faults, folded
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 
@@ -29,6 +30,7 @@ _TOLD = 5
 def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
     """Faults of a scenario whose keys are all well on their own and whose names all exist."""
     faults = [*_time_faults(scenario), *_question_faults(scenario), *_image_faults(scenario)]
+    faults += cell_faults(scenario)
     of_electrodes = electrode_faults(scenario.electrodes, scenario.electrode, folder)
     faults += of_electrodes
     if scenario.coulomb.softening >= scenario.stepping.extent:
@@ -143,7 +145,7 @@ def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | Non
         if conductors is not None and (told := conductors.struck(born.position.T)):
             faults.append(Fault(("cloud", i), "", told))
     if scenario.coulomb.method != "off" and scenario.coulomb.softening == 0.0 and places:
-        faults += _same_places(scenario, np.concatenate(places), owner)
+        faults += _same_places(scenario, folded(scenario.cell, np.concatenate(places)), owner)
     return faults
 
 

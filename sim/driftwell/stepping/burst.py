@@ -79,6 +79,7 @@ RESOLVED = 0.3
 def burst(
     pair_sum: PairSum,
     images: CompiledFunction,
+    reentry: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
@@ -106,6 +107,7 @@ def burst(
     stages = scheme.drift.size
     surfaced = surfaces.kind.size > 0 or bodies.whole.shape[0] > 0
     together = (plan.coulomb != 0 or plan.images != 0) and every == 1
+    accounted = plan.images != 0 or plan.cell_axis >= 0
     free = work.events.shape[0] // 2
     if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
         # a step far too long may throw charges apart before they are looked at
@@ -138,14 +140,16 @@ def burst(
                     t = end if k == stages else start + scheme.node[k] * h
                     way = scheme.drift[k - 1] * h
                     move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
+                    if k == stages and plan.cell_axis >= 0:
+                        reentry(plan, fields.electric, surfaces, charges, work, t, inside)
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
                         coulomb_forces(pair_sum, images, plan, charges, work)
                         half = 0.5 * every * h
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
-                        if plan.images != 0:
-                            enter_images(half, work)
+                        if accounted:
+                            enter_images(half, plan, work)
                     if surfaced and any_crossing(
                         passes, plan, fields, surfaces, bodies, charges, h, work
                     ):
@@ -194,13 +198,13 @@ def burst(
                     if every > 1:
                         half = 0.5 * every * h
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
-                        if plan.images != 0:
-                            enter_images(half, work)
+                        if accounted:
+                            enter_images(half, plan, work)
                 keep = k == 0 and surfaced
                 length = scheme.kick[k] * h
                 push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
-                if together and plan.images != 0:
-                    enter_images(length, work)
+                if together and accounted:
+                    enter_images(length, plan, work)
                 work.pending[0] += length
             cursor[CURSOR_STEP] += 1
             cursor[CURSOR_STEPS] += 1
@@ -270,15 +274,27 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
 @outer_kernel
 def _falling(plan: Plan, charges: Charges, span: float, work: Work) -> int:
     """A charge that falls towards an opposite one faster than steps of `span` follow, or -1."""
-    return unresolved_pair(
-        charges.position,
-        charges.charge,
-        charges.mass,
-        plan.constant,
-        (RESOLVED / span) ** 2,
-        math.sqrt(plan.extent2),
-        work.search,
-    )
+    limit, extent = (RESOLVED / span) ** 2, math.sqrt(plan.extent2)
+    q, m, k = charges.charge, charges.mass, plan.constant
+    found = unresolved_pair(charges.position, q, m, k, limit, extent, work.search)
+    if plan.cell_axis >= 0:
+        _meet_ends(plan, charges, work)
+        other = unresolved_pair(work.spare, q, m, k, limit, extent, work.search)
+        if other >= 0 and (found < 0 or other < found):
+            return other
+    return found
+
+
+@outer_kernel
+def _meet_ends(plan: Plan, charges: Charges, work: Work) -> None:
+    """Places with the second half of the cell before the first, into ``work.spare``."""
+    middle = plan.cell_begin + 0.5 * plan.cell_length
+    for axis in range(3):
+        x, out = charges.position[axis], work.spare[axis]
+        for i in range(x.size):
+            out[i] = x[i]
+            if axis == plan.cell_axis and x[i] >= middle:
+                out[i] = x[i] - plan.cell_length
 
 
 @outer_kernel

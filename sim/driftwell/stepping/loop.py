@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
@@ -35,6 +36,7 @@ from driftwell.kernels.status import (
 )
 from driftwell.particles.state import Particles
 from driftwell.stepping.burst import burst
+from driftwell.stepping.cell import reentry
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
@@ -117,11 +119,13 @@ class TimeLoop:
         state: Mapping[str, NDArray[Any]] | None = None,
         images: Images | None = None,
         bodies: BodyTable | None = None,
+        cell: Cell | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
+        cell : what repeats along one axis
         """
         self.particles = particles
         self.schedule = schedule
@@ -132,7 +136,7 @@ class TimeLoop:
         self._traced = traced
         both_signs = bool((particles.charge > 0).any() and (particles.charge < 0).any())
         self.plan = Plan(
-            coulomb=int(coulomb.method != "off"),
+            coulomb=int(coulomb.method != "off") * (1 if cell is None else 2),
             coulomb_every=stepping.coulomb_every,
             constant=COULOMB_CONSTANT,
             softening2=coulomb.softening**2,
@@ -140,13 +144,17 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
             images=int(images is not None),
+            cell_axis=-1 if cell is None else cell.number,
+            cell_begin=0.0 if cell is None else cell.begin,
+            cell_length=0.0 if cell is None else cell.length,
         )
         self._images, self._threads = images, threads
+        self._repeats = cell is not None
         self._image_sum = no_images()
         self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
-        self.summation = Summation(coulomb, len(particles), threads, manner=manner)
+        self.summation = Summation(coulomb, len(particles), threads, manner=manner, cell=cell)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
         self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
@@ -299,6 +307,7 @@ class TimeLoop:
             burst(
                 self.summation.pair_sum,
                 self._image_sum.function,
+                self._reentry,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -329,7 +338,7 @@ class TimeLoop:
         self.charges = charges_of(self.particles)
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
-        tiles, levels = self.summation.work, self.summation.method == "tree"
+        tiles, levels = self.summation.work, self.summation.gives_potential
         images = None
         if self._images is not None:
             images = self._image_sum = self._images.laid_out(n, self._threads)
@@ -343,6 +352,7 @@ class TimeLoop:
         self._passes = passes_over(
             n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
+        self._reentry = reentry(self.plan, self._fields, self._surfaces, self.charges, self.work)
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),
             np.array([self._index(each) for each in self._traced], dtype=np.int64),
@@ -414,6 +424,10 @@ class TimeLoop:
                 f"{when}: the position or velocity of {who} is no longer a number. It met a point "
                 "where a field has no value, or the step is far too long; take a shorter step, or "
                 "put a wall before that point."
+                + (
+                    " Or the beam is more than four times as wide as [cell] is long."
+                    * self._repeats
+                )
             )
         if status == RUNAWAY:
             return (

@@ -61,12 +61,14 @@ class Fields(NamedTuple):
 class Plan(NamedTuple):
     """Numbers that hold for the whole run.
 
-    coulomb : 1 to sum the charges' own force, 0 to leave it out
+    coulomb : 0 to leave out the charges' own force, 1 to sum it, 2 to sum it over all images too
     coulomb_every : steps between Coulomb kicks
     constant : 1/(4 pi eps0); softening2 : m^2; extent2 : m^2
     watch_collapse : 1 where charges of both signs move without softening
     light2 : c^2, m^2/s^2
     images : 1 where conductors answer to the charges
+    cell_axis : the axis along which all repeats, -1 where nothing does
+    cell_begin, cell_length : m, where the cell begins, and the period
     """
 
     coulomb: int
@@ -77,6 +79,9 @@ class Plan(NamedTuple):
     watch_collapse: int
     light2: float
     images: int
+    cell_axis: int = -1
+    cell_begin: float = 0.0
+    cell_length: float = 0.0
 
 
 class Trace(NamedTuple):
@@ -101,14 +106,15 @@ class Work(NamedTuple):
     pairs : (3, n) V/m, the charges' at each other alone: `coulomb` itself where there are no images
     image : (4, n) field and potential of the images, V/m and V; (4, 0) where there are none
     image_table, image_work : what their sum reads, and works in
-    image_force : (6,) N and N m, force and torque of the images on all charges
+    image_force : (6,) N and N m, force and torque of the images on all charges; in a cell those of
+        the charges' own forces
     slowness : (n,) 1/gamma
     old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
         the electric one that the step's kicks begin with, V/m
     clearance : (n,) m, less than the distance to every electrode, see approach.py; empty without
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
-    levels : (4, n) field and potential of the tree, V/m and V; (4, 0) where another sum is used
+    levels : (4, n) field and potential of the pair sum, V/m and V; (4, 0) where it gives none
     search : int64, see coulomb/unresolved.py; empty where no pair can collapse
     block_sums : (blocks, 24), see blocks.py
     rate, pending : see accounts.settle
