@@ -80,7 +80,7 @@ def test_a_line_of_alternating_charges_has_the_potential_minus_two_ln_2(count: i
 @pytest.mark.parametrize("method", ["direct", "tree"])
 def test_a_round_beam_pushes_linearly_inside_and_as_a_line_outside(method: str) -> None:
     """E = 2 lambda r / R^2 and 2 lambda / r, by Gauss' law; places are evenly spread."""
-    radius, n = 0.1, 2048
+    radius, n = 0.4, 2048
     even = qmc.Halton(3, rng=np.random.default_rng(1)).random(n + 256).T
     r = radius * np.sqrt(even[0])
     r[n:] = radius * (1.5 + even[0, n:])
@@ -91,7 +91,8 @@ def test_a_round_beam_pushes_linearly_inside_and_as_a_line_outside(method: str) 
     outward = (found.field[:2] * place[:2]).sum(axis=0)
     assert pytest.approx(np.full(256, 2.0), rel=0.1, abs=0.0) == outward[n:]
     assert pytest.approx(2.0, rel=2e-3, abs=0.0) == outward[n:].mean()
-    inner = np.polyfit((r[:n] / radius) ** 2, outward[:n], 1)
+    within = r < 0.8 * radius
+    inner = np.polyfit((r[within] / radius) ** 2, outward[within], 1)
     assert pytest.approx(2.0, rel=0.03, abs=0.0) == inner[0]
     assert abs(inner[1]) < 0.03
 

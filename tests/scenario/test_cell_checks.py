@@ -18,6 +18,10 @@ BEAM = """\
 title = "An endless beam"
 duration = "1 us"
 
+[species.barium]
+mass = "137.905 u"
+charge = "1 e"
+
 [[cloud]]
 name = "beam"
 species = "barium"
@@ -30,6 +34,7 @@ length = "10 mm"
 [[question]]
 name = "left"
 ask = "fraction-left"
+of = "beam"
 """
 
 

@@ -9,7 +9,7 @@ import pytest
 
 from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
-from driftwell.kernels.status import COLLAPSE, DONE
+from driftwell.kernels.status import COLLAPSE
 from driftwell.ledger.doubts import doubts
 from driftwell.particles.state import Particles
 from driftwell.record.resume_state import particles_of, particles_state
@@ -18,7 +18,7 @@ from tests.cases import detector, field, wall
 from tests.moving import OFF, accounts, always, events, ions, loop, to_end
 
 CELL = Cell(axis="z", length="8 mm", start="-3 mm")
-SOFT = Coulomb(method="direct", softening="50 um")
+SOFT = Coulomb(method="direct", softening="300 um")
 
 
 def beam(n: int = 40, particles: Particles | None = None, **keys: Any) -> TimeLoop:
@@ -39,7 +39,7 @@ def beam(n: int = 40, particles: Particles | None = None, **keys: Any) -> TimeLo
         "cell": CELL,
     }
     began = ions(place, speed, weight=3e3) if particles is None else particles
-    return loop(began, 1e-6, 5e-9, **{**options, **keys})
+    return loop(began, 1e-6, 2.5e-9, **{**options, **keys})
 
 
 def test_a_charge_that_leaves_comes_in_at_the_other_end() -> None:
@@ -50,7 +50,7 @@ def test_a_charge_that_leaves_comes_in_at_the_other_end() -> None:
     gamma = np.sqrt(1.0 + (np.array([1e5, 2.5e5]) / 299792458.0) ** 2)
     way = np.array([1e5, -2.5e5]) * 1e-7 / gamma + 1e-3
     expected = (way + 3e-3) % 8e-3 - 3e-3
-    assert pytest.approx(expected, rel=1e-12, abs=0.0) == found
+    assert pytest.approx(expected, rel=0.0, abs=1e-15) == found
 
 
 def test_the_ledger_closes_over_many_turns() -> None:
@@ -63,14 +63,14 @@ def test_the_ledger_closes_over_many_turns() -> None:
         assert abs(row.momentum_residual) < 1e-13
         assert abs(row.angular_residual) < 1e-13
         assert abs(row.third_law_residual) < 1e-13
-        assert abs(row.energy_residual) < 1e-5
+        assert abs(row.energy_residual) < 1e-7
     assert not doubts(last)
 
 
 @pytest.mark.parametrize("tree", [False, True])
 def test_neither_threads_nor_pauses_nor_a_resume_change_a_bit(tree: bool) -> None:
     """Of a beam that goes round, summed by the tree or directly, detectors in its way."""
-    coulomb = Coulomb(method="tree", accuracy=1e-3, softening="50 um") if tree else SOFT
+    coulomb = Coulomb(method="tree", accuracy=1e-3, softening="300 um") if tree else SOFT
     n, met = 600 if not tree else 100, detector("plane", at=["0 mm", "0 mm", "0 mm"])
 
     def made(threads: int, **keys: Any) -> TimeLoop:
@@ -120,7 +120,7 @@ def test_charges_lost_on_the_way_round_take_their_energy_along() -> None:
     moving = beam(60, walls=[bore])
     rows = accounts(moving)
     assert 5 < rows[-1].count_lost / 3e3 < 60
-    assert abs(rows[-1].energy_residual) < 1e-5
+    assert abs(rows[-1].energy_residual) < 1e-6
     assert abs(rows[-1].angular_residual) < 1e-13
     assert abs(rows[-1].count_residual) < 1e-13
 
@@ -134,7 +134,7 @@ def test_opposite_charges_that_fall_together_across_the_ends_are_noticed() -> No
     place[0, 2] += 1e-3
     apart = ions(place, charge=[1.0, -1.0])
     moving = loop(apart, 1e-6, 5e-9, coulomb=Coulomb(method="direct"), cell=CELL)
-    assert DONE == moving._burst(1, 1)
+    assert COLLAPSE != moving._burst(1, 1)
 
 
 def test_without_a_sum_over_the_pairs_charges_go_round_all_the_same() -> None:
