@@ -10,6 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
 from driftwell.coulomb.bunch_frames import BunchFrames
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
@@ -85,6 +86,7 @@ def loop(
     unborn: Unborn | None = None,
     state: Mapping[str, NDArray[Any]] | None = None,
     frames: BunchFrames | None = None,
+    cell: Cell | None = None,
     **stepping: Any,
 ) -> TimeLoop:
     """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
@@ -118,6 +120,7 @@ def loop(
         body_table(bodies),
         unborn,
         frames,
+        cell,
     )
 
 

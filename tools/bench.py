@@ -30,6 +30,7 @@ from bench_cases.fast import relativistic
 from bench_cases.field_map import field_map
 from bench_cases.frames import frames
 from bench_cases.night import record_1e4, resume
+from bench_cases.periodic import periodic
 from bench_cases.reference import GCC, reference_library
 from bench_cases.start import start, startup
 from bench_cases.sweep import sweep
@@ -63,6 +64,7 @@ LONG: dict[str, Case] = {
     "capacitance": capacitance,
     "boundary-1e5": boundary_1e5,
     "frames": frames,
+    "periodic": periodic,
 }
 CASES = {**QUICK, **LONG}
 WITH_LARGE: dict[str, dict[str, Any]] = {

@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts
+from driftwell.coulomb.cell import Cell
 from driftwell.errors import ScenarioError
+from driftwell.forms import spelled
 from driftwell.forms.body import Body
 from driftwell.images.form import ClosedForm
 from driftwell.particles.state import Particles, joined, no_particles
 from driftwell.particles.unborn import Unborn, all_unborn
+from driftwell.scenario.cell_checks import WIDEST, folded
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
@@ -133,6 +137,30 @@ def _group(scenario: Scenario, index: int) -> str:
     if index < clouds:
         return f'[[cloud]] "{scenario.cloud[index].name}"'
     return f'[[source]] "{scenario.source[index - clouds].name}"'
+
+
+def put_in_cell(cell: Cell | None, particles: Particles) -> str | None:
+    """Put charges that begin beyond an end of the cell back into it; what the user should know.
+
+    Raises ScenarioError where the charges are too far apart across the axis for its images.
+    """
+    if cell is None:
+        return None
+    x = particles.position
+    across = np.delete(x, cell.number, axis=0)
+    width = math.hypot(*(across.max(axis=1) - across.min(axis=1)))
+    if width > WIDEST * cell.length:
+        raise ScenarioError(
+            f"[cell] length: the charges are {spelled(width, 'm')} apart across the axis, more "
+            f"than {WIDEST:g} times the length, {spelled(cell.length, 'm')}; images are not summed "
+            "so far to the side. Take a longer cell with more charges."
+        )
+    inside = folded(cell, x.T).T[cell.number]
+    moved = int(np.count_nonzero(inside != x[cell.number]))
+    x[cell.number] = inside
+    if moved == 0:
+        return None
+    return f"{moved} of {len(particles)} charges begin outside the cell and are put back into it."
 
 
 def edges_in(scenario: Scenario, acting: ActingField | None) -> Iterator[Edges]:

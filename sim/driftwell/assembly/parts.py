@@ -18,6 +18,7 @@ from driftwell.assembly.births import (
     edges_in,
     loaded_particles,
     loaded_unborn,
+    put_in_cell,
 )
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.newcomers import source_rates
@@ -171,6 +172,7 @@ class Assembly:
             self.conductors.table,
             self.unborn,
             self.frames,
+            self.scenario.cell,
         )
 
     def frame_remark(self) -> str:
@@ -224,6 +226,9 @@ def assembled(
     charges = scenario.charges(loaded.folder)
     warned = refuse_beyond_memory(extent_of(scenario, charges), warn)
     particles, clouds = loaded_particles(loaded, bodies, species)
+    moved = put_in_cell(scenario.cell, particles)
+    if moved is not None and told is not None:
+        told(moved)
     conductors = Conductors.of(scenario, loaded.folder)
     unborn, sources = loaded_unborn(loaded, bodies, species, conductors, len(particles))
     clouds += sources
@@ -317,7 +322,7 @@ def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:
         particles.cloud,
         particles.velocity,
         particles.mass * particles.weight,
-        unfit=scenario.images is not None,
+        unfit=scenario.images is not None or scenario.cell is not None,
     )
 
 

@@ -36,5 +36,5 @@ class Cell(Form):
 
     def words(self) -> str:
         """The cell in words."""
-        ends = (spelled(end, "m") for end in (self.begin, self.begin + self.length))
-        return f"repeats along {self.axis} from {' to '.join(ends)}, period {spelled(self.length, 'm')}"
+        begin, end = spelled(self.begin, "m"), spelled(self.begin + self.length, "m")
+        return f"repeats along {self.axis}, period {spelled(self.length, 'm')}, {begin} to {end}"

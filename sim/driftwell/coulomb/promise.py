@@ -226,6 +226,7 @@ def _measured(summation: Summation, scene: Scene, which: Ints) -> SampledError:
         summation.constant,
         scene.field,
         which,
+        summation.sampled_field,
     )
 
 

@@ -17,6 +17,7 @@ G. L. Steele, D. Lea, C. H. Flood, OOPSLA (2014) 453 (the numbers that mix the i
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -26,6 +27,9 @@ from driftwell.coulomb.sampled import sampled_field
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+
+SampledField = Callable[[Ints, Floats, Floats, float, float, Floats], None]
+"""(which, position, charge, softening2, constant, out_field): as coulomb/sampled.py."""
 
 SAMPLE = 512
 """Charges of a sample: enough to know the root mean square to some ten per cent."""
@@ -59,15 +63,17 @@ def sampled_error(
     constant: float,
     field: Floats,
     which: Ints,
+    exactly: SampledField = sampled_field,
 ) -> SampledError:
     """The error of `field` (3, n), V/m, at the charges `which`, eq. (1).
 
     position : (3, n), m; charge : (n,), C, macro-charges; softening2 : m^2
+    exactly : what gives the true field at them
     """
     if which.size == 0:
         return SampledError(0.0, 0.0, 0.0, 0)
     exact = np.empty((3, which.size))
-    sampled_field(which, position, charge, softening2, constant, exact)
+    exactly(which, position, charge, softening2, constant, exact)
     size = np.sqrt((exact**2).sum(axis=0))
     usual = math.sqrt(float((field**2).sum(axis=0)[charge != 0.0].mean()))
     gap = np.sqrt(((field[:, which] - exact) ** 2).sum(axis=0))

@@ -11,12 +11,14 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import astuple, dataclass, fields, replace
+from functools import partial
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.crossover import LEAST, Contest, crossover
 from driftwell.coulomb.direct import (
     SMALL,
@@ -28,7 +30,12 @@ from driftwell.coulomb.direct import (
 from driftwell.coulomb.form import MIXED_ACCURACY, Coulomb
 from driftwell.coulomb.frame_table import ROWS
 from driftwell.coulomb.pair_sum import PairSum
+from driftwell.coulomb.periodic.direct import periodic_direct_sum, periodic_size, periodic_workspace
+from driftwell.coulomb.periodic.sampled import sampled_periodic_field
+from driftwell.coulomb.periodic.tree import periodic_tree_sum, periodic_tree_workspace
 from driftwell.coulomb.potential import potentials, threaded_potentials
+from driftwell.coulomb.sampled import sampled_field
+from driftwell.coulomb.sampled_error import SampledField
 from driftwell.coulomb.tree import (
     TreeSettings,
     settings_for,
@@ -45,6 +52,8 @@ TREE_PAIRS = 300
 """Pairs, times the order, in whose time the tree sums one charge: what work is counted by."""
 TREE_BYTES, TREE_START = 500, 1_000_000
 """Bytes a charge takes in the tree's work space, at the most, and what any tree takes besides."""
+PERIODIC_START = 12_000_000
+"""Bytes that the far images take in the tree of a cell."""
 _CERTAIN = 50_000
 """From this many charges on the automatic choice is surely the tree."""
 
@@ -127,9 +136,16 @@ class Summation:
         threads: int,
         settings: TreeSettings | None = None,
         manner: Manner | None = None,
+        cell: Cell | None = None,
     ) -> None:
-        """The sum for `n` charges; `settings` take the place of the manner's where given."""
+        """The sum for `n` charges; `settings` take the place of the manner's where given.
+
+        cell : what repeats; None: every charge is there once
+        """
         self.manner = manner_for(form, n, threads) if manner is None else manner
+        if cell is not None:
+            self.manner = replace(self.manner, direct_mixed=False)
+        self._cell = cell
         if settings is not None:
             self.manner = replace(self.manner, settings=settings)
         self._form, self._n, self._threads = form, n, threads
@@ -143,14 +159,24 @@ class Summation:
             self.method, self.settings = "tree", self.manner.settings
             self.mixed = self.manner.tree_mixed
             softened = form.softening > 0.0
-            self.pair_sum = tree_sum()
-            self.work = tree_workspace(n, threads, self.settings, softened, self.mixed)
+            if cell is None:
+                self.pair_sum = tree_sum()
+                self.work = tree_workspace(n, threads, self.settings, softened, self.mixed)
+            else:
+                self.pair_sum = periodic_tree_sum()
+                self.work = periodic_tree_workspace(
+                    n, threads, self.settings, cell, softened, self.mixed
+                )
             self.because = self._why()
         else:
             self.method = "direct"
             self.mixed = self.manner.direct_mixed and n > SMALL
-            self.pair_sum = direct_sum(n, threads, self.mixed)
-            self.work = workspace(n)
+            if cell is None:
+                self.pair_sum = direct_sum(n, threads, self.mixed)
+                self.work = workspace(n)
+            else:
+                self.pair_sum = periodic_direct_sum(n, threads)
+                self.work = periodic_workspace(n, cell)
             self.because = self._why()
 
     @property
@@ -166,6 +192,16 @@ class Summation:
         return float(self._n) * min(self._n, TREE_PAIRS * self.settings.order)
 
     @property
+    def gives_potential(self) -> bool:
+        """Whether the sum fills a fourth row with potentials."""
+        return self.method == "tree" or (self.method == "direct" and self._cell is not None)
+
+    @property
+    def sampled_field(self) -> SampledField:
+        """The true field at some charges, which the sum is judged by."""
+        return sampled_field if self._cell is None else partial(sampled_periodic_field, self._cell)
+
+    @property
     def constant(self) -> float:
         """1/(4 pi eps0), N m^2/C^2."""
         return COULOMB_CONSTANT
@@ -179,7 +215,7 @@ class Summation:
         """The same run's sum for another number of charges."""
         if n == self._n:
             return self
-        return Summation(self._form, n, self._threads, manner=self.manner)
+        return Summation(self._form, n, self._threads, manner=self.manner, cell=self._cell)
 
     def tightened(self, factor: float) -> Summation:
         """The sum with an error smaller by `factor`; itself where it cannot be."""
@@ -190,7 +226,7 @@ class Summation:
             manner = replace(manner, direct_mixed=False)
         if manner == self.manner:
             return self
-        return Summation(self._form, self._n, self._threads, manner=manner)
+        return Summation(self._form, self._n, self._threads, manner=manner, cell=self._cell)
 
     def field(self, position: Floats, charge: Floats, out_field: Floats) -> None:
         """The field of all charges at each, V/m; (3, n), (n,), and (3, n), overwritten."""
@@ -203,7 +239,7 @@ class Summation:
         """The potential of all others at each charge, V; `out_potential` (n,), overwritten."""
         if self.method == "off":
             out_potential[...] = 0.0
-        elif self.settings is not None:
+        elif self.gives_potential:
             found = np.empty((4, self._n))
             self.pair_sum(position, charge, self._softening2, COULOMB_CONSTANT, self.work, found)
             out_potential[...] = found[3]
@@ -229,13 +265,15 @@ class Summation:
         return f"{charges}, and here the tree is faster only from {border} on"
 
 
-def room_in_bytes(form: Coulomb, n: int) -> int:
-    """Bytes of the sum's work space for `n` charges, at the most."""
+def room_in_bytes(form: Coulomb, n: int, cell: bool = False) -> int:
+    """Bytes of the sum's work space for `n` charges, at the most; `cell`: they repeat."""
     if form.method == "off":
         return 0
     framed = 8 * ROWS * n if form.frame == "bunch" else 0
     direct = 8 * math.prod(workspace_shape(n)) + framed
     tree = TREE_START + TREE_BYTES * n + framed
+    if cell:
+        direct, tree = 8 * periodic_size(n), tree + PERIODIC_START
     if form.method == "direct" or n < LEAST:
         return direct
     if form.method == "tree" or n >= _CERTAIN:

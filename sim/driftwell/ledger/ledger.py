@@ -350,6 +350,8 @@ def _pairs(
         return _Pairs()
     if plan.frames != 0 and summation is not None:
         return _in_frames(plan, charges, work, sums, summation)
+    if plan.coulomb == 2 and summation is None:
+        raise ValueError("in a cell the pairs' energy is known to their summation only")
     position, charge = charges.position, charges.charge
     potential = np.empty_like(charge)
     if summation is None:
@@ -357,7 +359,10 @@ def _pairs(
     else:
         summation.potential(position, charge, potential)
     force = float(np.linalg.norm(sums[COULOMB_FORCE : COULOMB_FORCE + 3]))
-    torque = float(np.linalg.norm(sums[COULOMB_TORQUE : COULOMB_TORQUE + 3]))
+    twist = sums[COULOMB_TORQUE : COULOMB_TORQUE + 3]
+    if plan.cell_axis >= 0:  # the torque across the axis is accounted
+        twist = twist[plan.cell_axis]
+    torque = float(np.linalg.norm(twist))
     return _Pairs(
         0.5 * float(np.sum(charge * potential)),
         _share(force, float(sums[COULOMB_SIZE])),

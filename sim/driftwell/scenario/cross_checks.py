@@ -17,6 +17,7 @@ from driftwell.images.electrodes import ElectrodeImages
 from driftwell.particles.cloud import Amount
 from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT, Particles
+from driftwell.scenario.cell_checks import cell_faults, folded
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 from driftwell.stepping.schemes import MIDWAY
@@ -31,6 +32,7 @@ _TOLD = 5
 def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
     """Faults of a scenario whose keys are all well on their own and whose names all exist."""
     faults = [*_time_faults(scenario), *_question_faults(scenario), *_image_faults(scenario)]
+    faults += cell_faults(scenario)
     of_electrodes = electrode_faults(scenario.electrodes, scenario.electrode, folder)
     faults += of_electrodes
     if scenario.coulomb.softening >= scenario.stepping.extent:
@@ -128,7 +130,9 @@ def _frame_faults(scenario: Scenario) -> Iterator[Fault]:
         text = "does not go with [images], which answer to charges at rest; leave one of them out"
         yield Fault(("coulomb", "frame"), "", text)
     if scenario.source:
-        text = "does not go with a [[source]], whose bunch is never all there; leave one of them out"
+        text = (
+            "does not go with a [[source]], whose bunch is never all there; leave one of them out"
+        )
         yield Fault(("coulomb", "frame"), "", text)
     several = max(grouped([each.name for each in scenario.cloud], coulomb.share_frame)) > 0
     if several and scenario.stepping.scheme == MIDWAY:
@@ -195,7 +199,7 @@ def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | Non
             continue
         faults += _birth_faults(scenario, ("source", i), unborn.particles, conductors)
     if scenario.coulomb.method != "off" and scenario.coulomb.softening == 0.0 and places:
-        faults += _same_places(scenario, np.concatenate(places), owner)
+        faults += _same_places(scenario, folded(scenario.cell, np.concatenate(places)), owner)
     return faults
 
 

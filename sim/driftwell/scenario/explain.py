@@ -65,6 +65,8 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
     yield "Coulomb", "", _coulomb_words(loaded)
     if scenario.images is not None:
         yield "images", "", scenario.images.words()
+    if scenario.cell is not None:
+        yield "cell", "", scenario.cell.words()
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from driftwell.answers.form import QuestionForm
 from driftwell.answers.table import QUESTION_KINDS
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.electrodes.form import Electrode, Electrodes
 from driftwell.fields.form import FieldForm
@@ -60,6 +61,10 @@ class Scenario(Form):
         "surfaces that record the charges passing them", default=()
     )
     coulomb: Coulomb = key("how the force between the charges is summed", default=Coulomb())
+    cell: Cell | None = key(
+        "stretch along one axis that repeats without end; left out: everything is there once",
+        default=None,
+    )
     images: AnyImages | None = key(
         "conductors that answer to the charges between them; left out: none does", default=None
     )

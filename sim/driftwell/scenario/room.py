@@ -52,7 +52,7 @@ class Extent:
     """How much a run is: numbers of things, and how the charges' own force is summed.
 
     surfaces : walls, detectors, and one for all electrodes; detectors : those among them
-    images : bytes that sums over images take
+    images : bytes that sums over images take; cell : whether everything repeats
     births : charges, of all, that are born on the way
     """
 
@@ -68,10 +68,11 @@ class Extent:
     detectors: int = 0
     images: int = 0
     births: int = 0
+    cell: bool = False
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
-        sums = room_in_bytes(self.coulomb, self.charges)
+        sums = room_in_bytes(self.coulomb, self.charges, self.cell)
         moments = self.records * self.clouds * dtype("moments").itemsize
         traces = self.samples * (self.traces + 1) * 8
         return (
@@ -143,6 +144,7 @@ def extent_of(
         detectors=len(scenario.detector),
         images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
         births=births,
+        cell=scenario.cell is not None,
     )
 
 

@@ -90,6 +90,7 @@ def burst(
     images: CompiledFunction,
     bearing: CompiledFunction,
     frame_sum: CompiledFunction,
+    reentry: CompiledFunction,
     passes: Passes | None,
     plan: Plan,
     scheme: Scheme,
@@ -119,6 +120,7 @@ def burst(
     stages = scheme.drift.size
     surfaced = surfaces.kind.size > 0 or bodies.whole.shape[0] > 0
     together = (plan.coulomb != 0 or plan.images != 0) and every == 1
+    accounted = plan.images != 0 or plan.cell_axis >= 0
     free = work.events.shape[0] // 2
     if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
         # a step far too long may throw charges apart before they are looked at
@@ -166,9 +168,7 @@ def burst(
                             work,
                         )
                         if together:
-                            _forces_in_middle(
-                                pair_sum, images, frame_sum, plan, charges, h, work
-                            )
+                            _forces_in_middle(pair_sum, images, frame_sum, plan, charges, h, work)
                         from_middle(
                             passes,
                             plan,
@@ -182,12 +182,16 @@ def burst(
                             h,
                             work,
                         )
+                        if plan.cell_axis >= 0:
+                            reentry(plan, fields.electric, surfaces, charges, work, end, inside)
                     continue
                 elif k <= stages:
                     before = start + scheme.node[k - 1] * h
                     t = end if k == stages else start + scheme.node[k] * h
                     way = scheme.drift[k - 1] * h
                     move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
+                    if k == stages and plan.cell_axis >= 0:
+                        reentry(plan, fields.electric, surfaces, charges, work, t, inside)
                     if k == stages:
                         closing = scheme.kick[stages] * h
                         ahead = (every - 1 - cursor[CURSOR_STEP] % every) * h
@@ -215,8 +219,8 @@ def burst(
                         if plan.frames != 0:
                             enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
-                        if plan.images != 0:
-                            enter_images(half, work)
+                        if accounted:
+                            enter_images(half, plan, work)
                     if surfaced and any_crossing(
                         passes, plan, fields, surfaces, bodies, charges, h, work
                     ):
@@ -275,8 +279,8 @@ def burst(
                         if plan.frames != 0:
                             enter_frames(plan, charges, False, half, work)
                         push_apart(passes, plan, fields, surfaces, bodies, charges, half, work)
-                        if plan.images != 0:
-                            enter_images(half, work)
+                        if accounted:
+                            enter_images(half, plan, work)
                 if midway:
                     continue
                 keep = k == 0 and surfaced
@@ -284,8 +288,8 @@ def burst(
                 if together and plan.frames != 0:
                     enter_frames(plan, charges, True, length, work)
                 push(passes, plan, fields, surfaces, bodies, charges, together, keep, length, work)
-                if together and plan.images != 0:
-                    enter_images(length, work)
+                if together and accounted:
+                    enter_images(length, plan, work)
                 work.pending[0] += length
             if cursor[CURSOR_NEWBORN] > 0:
                 close_births(charges, births, work)
@@ -336,8 +340,8 @@ def _forces_in_middle(
 ) -> None:
     """The charges' own field in the middle of a step, and what images and frames give in it."""
     coulomb_forces(pair_sum, images, frame_sum, 0.5 * h, plan, charges, work)
-    if plan.images != 0:
-        enter_images(h, work)
+    if plan.images != 0 or plan.cell_axis >= 0:
+        enter_images(h, plan, work)
     if plan.frames != 0:
         enter_frames(plan, charges, True, h, work)
 
@@ -382,17 +386,29 @@ def _look(plan: Plan, charges: Charges, span: float, at_mark: bool, work: Work) 
 @outer_kernel
 def _falling(plan: Plan, charges: Charges, span: float, work: Work) -> int:
     """A charge that falls towards an opposite one faster than steps of `span` follow, or -1."""
+    limit, extent = (RESOLVED / span) ** 2, math.sqrt(plan.extent2)
     if plan.frames != 0:
-        return falling_in_frame(plan, charges, (RESOLVED / span) ** 2, work)
-    return unresolved_pair(
-        charges.position,
-        charges.charge,
-        charges.mass,
-        plan.constant,
-        (RESOLVED / span) ** 2,
-        math.sqrt(plan.extent2),
-        work.search,
-    )
+        return falling_in_frame(plan, charges, limit, work)
+    q, m, k = charges.charge, charges.mass, plan.constant
+    found = unresolved_pair(charges.position, q, m, k, limit, extent, work.search)
+    if plan.cell_axis >= 0:
+        _meet_ends(plan, charges, work)
+        other = unresolved_pair(work.spare, q, m, k, limit, extent, work.search)
+        if other >= 0 and (found < 0 or other < found):
+            return other
+    return found
+
+
+@outer_kernel
+def _meet_ends(plan: Plan, charges: Charges, work: Work) -> None:
+    """Places with the second half of the cell before the first, into ``work.spare``."""
+    middle = plan.cell_begin + 0.5 * plan.cell_length
+    for axis in range(3):
+        x, out = charges.position[axis], work.spare[axis]
+        for i in range(x.size):
+            out[i] = x[i]
+            if axis == plan.cell_axis and x[i] >= middle:
+                out[i] = x[i] - plan.cell_length
 
 
 @outer_kernel

@@ -14,7 +14,12 @@ from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
 from driftwell.kernels.waveform import waveform
-from driftwell.stepping.accounts import IMPULSE_IMAGES, TORQUE_IMAGES, Six
+from driftwell.stepping.accounts import (
+    ANGULAR_CELL,
+    IMPULSE_IMAGES,
+    TORQUE_IMAGES,
+    Six,
+)
 from driftwell.stepping.frames import take_frames
 from driftwell.stepping.motion import Charges, Fields, Plan, Work
 
@@ -213,6 +218,8 @@ def coulomb_forces(
     _pair_forces(pair_sum, plan, charges, work)
     if plan.images != 0:
         take_images(images, plan, charges, work)
+    elif plan.cell_axis >= 0:
+        _take_torque(charges, work)
 
 
 @outer_kernel
@@ -238,9 +245,25 @@ def take_images(images: CompiledFunction, plan: Plan, charges: Charges, work: Wo
 
 
 @outer_kernel
-def enter_images(h: float, work: Work) -> None:
-    """Account what the images gave the charges in a kick of length `h`."""
+def _take_torque(charges: Charges, work: Work) -> None:
+    """Keep force and torque of the pairs: across the ends of a cell they are no central forces."""
+    six = force_and_torque(charges, work.pairs, 0, charges.charge.size)
+    for k in range(6):
+        work.image_force[k] = six[k]
+
+
+@outer_kernel
+def enter_images(h: float, plan: Plan, work: Work) -> None:
+    """Account what images of either kind gave the charges in a kick of length `h`.
+
+    In a cell that is a torque alone, of the pairs across its ends: none about its axis.
+    """
     force = work.image_force
+    if plan.cell_axis >= 0:
+        for k in range(3):
+            if k != plan.cell_axis:
+                add_compensated(work.total, work.carry, ANGULAR_CELL + k, h * force[3 + k])
+        return
     for k in range(3):
         add_compensated(work.total, work.carry, IMPULSE_IMAGES + k, h * force[k])
         add_compensated(work.total, work.carry, TORQUE_IMAGES + k, h * force[3 + k])
@@ -251,7 +274,7 @@ def _pair_forces(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) ->
     """The field of the charges at each other; overwrites ``work.pairs``."""
     if plan.coulomb == 0:
         return
-    if charges.charge.size <= SMALL:
+    if charges.charge.size <= SMALL and plan.coulomb == 1:
         small_field(
             charges.position,
             charges.charge,

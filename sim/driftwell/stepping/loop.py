@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
 from driftwell.coulomb.bunch_frames import BunchFrames, FrameWatch
+from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.frame_sum import HELD, frame_sum
 from driftwell.coulomb.promise import Promise, Scene
@@ -40,6 +41,7 @@ from driftwell.particles.state import Particles
 from driftwell.particles.unborn import Unborn
 from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
+from driftwell.stepping.cell import reentry
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.frames import InFrame, take_frames
 from driftwell.stepping.midpoint_passes import midpoint_passes_over
@@ -130,6 +132,7 @@ class TimeLoop:
         bodies: BodyTable | None = None,
         unborn: Unborn | None = None,
         frames: BunchFrames | None = None,
+        cell: Cell | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
@@ -137,6 +140,7 @@ class TimeLoop:
         frames : in which frames the charges are summed; None: in the laboratory, and unwatched
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
         unborn : charges that are born on the way
+        cell : what repeats along one axis
         """
         self.particles = particles
         self._pools = Pools(unborn, {} if state is None else entries_below("births", state))
@@ -152,7 +156,7 @@ class TimeLoop:
             most += len(unborn)
         both_signs = bool((charge > 0).any() and (charge < 0).any())
         self.plan = Plan(
-            coulomb=int(coulomb.method != "off"),
+            coulomb=int(coulomb.method != "off") * (1 if cell is None else 2),
             coulomb_every=stepping.coulomb_every,
             constant=COULOMB_CONSTANT,
             softening2=coulomb.softening**2,
@@ -162,6 +166,9 @@ class TimeLoop:
             images=int(images is not None),
             midway=int(stepping.scheme == MIDWAY),
             frames=0 if frames is None or coulomb.method == "off" else frames.count,
+            cell_axis=-1 if cell is None else cell.number,
+            cell_begin=0.0 if cell is None else cell.begin,
+            cell_length=0.0 if cell is None else cell.length,
         )
         self._bunch = frames.numbers if frames is not None and self.plan.frames else None
         self._frame_sum = frame_sum(self.plan.frames > 0)
@@ -169,11 +176,12 @@ class TimeLoop:
         if frames is not None and coulomb.method != "off":
             self._frame_watch = FrameWatch(frames, coulomb.accuracy)
         self._images, self._threads = images, threads
+        self._repeats = cell is not None
         self._image_sum = no_images()
         self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
-        self.summation = Summation(coulomb, most, threads, manner=manner)
+        self.summation = Summation(coulomb, most, threads, manner=manner, cell=cell)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
         self._sums_per_step = (
@@ -415,6 +423,7 @@ class TimeLoop:
                 self._image_sum.function,
                 self._bearing,
                 self._frame_sum,
+                self._reentry,
                 self._passes,
                 self.plan,
                 self._scheme,
@@ -447,7 +456,7 @@ class TimeLoop:
         self._pools.lay_out(self.particles, self.charges, int(old.cursor[CURSOR_BIRTH]))
         self.summation = self.summation.laid_out(n)
         collapse = bool(self.plan.watch_collapse)
-        tiles, levels = self.summation.work, self.summation.method == "tree"
+        tiles, levels = self.summation.work, self.summation.gives_potential
         images = None
         if self._images is not None:
             images = self._image_sum = self._images.laid_out(n, self._threads)
@@ -470,6 +479,7 @@ class TimeLoop:
         self._bearing = bearing_of(
             self.plan, self._fields, self._surfaces, self.charges, self._pools.births, self.work
         )
+        self._reentry = reentry(self.plan, self._fields, self._surfaces, self.charges, self.work)
         self._trace = Trace(
             np.array([each.cloud for each in self._traced], dtype=np.int64),
             np.array([self._index(each) for each in self._traced], dtype=np.int64),
@@ -544,6 +554,10 @@ class TimeLoop:
                 f"{when}: the position or velocity of {who} is no longer a number. It met a point "
                 "where a field has no value, or the step is far too long; take a shorter step, or "
                 "put a wall before that point."
+                + (
+                    " Or the beam is more than four times as wide as [cell] is long."
+                    * self._repeats
+                )
             )
         if status == RUNAWAY:
             return (

@@ -52,9 +52,9 @@ def take_out(
         leaving = 0
         for i in range(n):
             leaving += charges.alive[i] == LEAVING
-        if leaving >= MANY_LOST and plan.frames == 0:
+        if (leaving >= MANY_LOST and plan.frames == 0) or plan.coulomb == 2:
             one_by_one = False
-            _enter_energy_of_many(pair_sum, plan, charges, work)
+            _enter_energy_of_many(pair_sum, plan, charges, 1 if leaving == 1 else 2, work)
     for i in range(n):
         if charges.alive[i] == LEAVING:
             if one_by_one:
@@ -77,20 +77,23 @@ def take_out(
 
 
 @outer_kernel
-def _enter_energy_of_many(pair_sum: PairSum, plan: Plan, charges: Charges, work: Work) -> None:
+def _enter_energy_of_many(
+    pair_sum: PairSum, plan: Plan, charges: Charges, sums: int, work: Work
+) -> None:
     """Enter the energy that leaves with the charges LEAVING, all at once.
 
     It is the sum over them of Q (P + P') / 2, with the potentials P of all charges and P' of those
-    that stay; for pairs of leaving ones that counts each pair once.
+    that stay; for pairs of leaving ones that counts each pair once. Of one charge alone both are
+    the same, and one of the `sums` suffices.
     """
     q, kept = charges.charge, work.spare[0]
     for i in range(q.size):
         kept[i] = q[i]
-    for _ in range(2):
+    for _ in range(sums):
         pair_sum(charges.position, q, plan.softening2, plan.constant, work.tiles, work.levels)
         for i in range(q.size):
             if charges.alive[i] == LEAVING:
-                energy = 0.5 * kept[i] * work.levels[3, i]
+                energy = kept[i] * work.levels[3, i] / sums
                 add_compensated(work.total, work.carry, ENERGY_WALLS, energy)
                 q[i] = 0.0
     for i in range(q.size):

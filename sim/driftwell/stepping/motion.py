@@ -66,7 +66,7 @@ class Fields(NamedTuple):
 class Plan(NamedTuple):
     """Numbers that hold for the whole run.
 
-    coulomb : 1 to sum the charges' own force, 0 to leave it out
+    coulomb : 0 to leave out the charges' own force, 1 to sum it, 2 to sum it over all images too
     coulomb_every : steps between Coulomb kicks
     constant : 1/(4 pi eps0); softening2 : m^2; extent2 : m^2
     watch_collapse : 1 where charges of both signs move without softening
@@ -74,6 +74,8 @@ class Plan(NamedTuple):
     images : 1 where conductors answer to the charges
     midway : 1 where momenta change in the middle of a step only (midpoint_rotation.py)
     frames : bunches whose charges are summed in a rest frame of their own; 0: in the laboratory
+    cell_axis : the axis along which all repeats, -1 where nothing does
+    cell_begin, cell_length : m, where the cell begins, and the period
     """
 
     coulomb: int
@@ -86,6 +88,9 @@ class Plan(NamedTuple):
     images: int
     midway: int = 0
     frames: int = 0
+    cell_axis: int = -1
+    cell_begin: float = 0.0
+    cell_length: float = 0.0
 
 
 class Trace(NamedTuple):
@@ -111,7 +116,8 @@ class Work(NamedTuple):
         images nor several bunches
     image : (4, n) field and potential of the images, V/m and V; (4, 0) where there are none
     image_table, image_work : what their sum reads, and works in
-    image_force : (6,) N and N m, force and torque of the images on all charges
+    image_force : (6,) N and N m, force and torque of the images on all charges; in a cell those of
+        the charges' own forces
     bunch : (clouds,) int64, in which bunch's frame a cloud is summed; empty where none has one
     frames : (bunches + 1, COLUMNS), see coulomb/frame_table.py
     frame_rows : (ROWS, n) room for the sum in frames; (ROWS, 0) where there are none
@@ -121,7 +127,7 @@ class Work(NamedTuple):
     clearance : (n,) m, less than the distance to every electrode, see approach.py; empty without
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
-    levels : (4, n) field and potential of the tree, V/m and V; (4, 0) where another sum is used
+    levels : (4, n) field and potential of the pair sum, V/m and V; (4, 0) where it gives none
     search : int64, see coulomb/unresolved.py; empty where no pair can collapse
     block_sums : (blocks, 24), see blocks.py
     rate, pending : see accounts.settle

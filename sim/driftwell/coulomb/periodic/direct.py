@@ -5,7 +5,8 @@
 d = x_i - x_j, over all whole k. Images within m periods are summed pair by pair (tile.py), the
 others, unsoftened, by a polynomial (far.py). m and its degree follow from the extent of the
 charges, so that no pair's force errs by more than 1e-11 of that between two neighbouring images of
-one charge. Order of sums and groups as in coulomb/direct.py: the same bits on any number of threads.
+one charge. Sums and groups are ordered as in coulomb/direct.py: the same bits on any number of
+threads.
 
 Where the last argument has four rows the fourth is the potential of all others and their images,
 
@@ -35,6 +36,7 @@ from driftwell.coulomb.periodic.far import (
     finish_far,
     prepare_far,
     settle_far,
+    signed,
     sum_moments,
 )
 from driftwell.coulomb.periodic.potential import near_potential
@@ -61,13 +63,14 @@ def periodic_direct_sum(n: int, threads: int) -> PairSum:
 
 def periodic_workspace(n: int, cell: Cell) -> NDArray[np.float64]:
     """(1, size) float64 that begins on a cache line: the far images, then a row for each group."""
-    work = room((1, far_size(groups(n)) + groups(n) * _row_size(n)))
+    work = room((1, periodic_size(n)))
     prepare_far(work[0], groups(n), cell.number, cell.length, EXACT, HIGHEST, MOST_IMAGES)
     return work
 
 
-def _row_size(n: int) -> int:
-    return 3 * (n + 7 & ~7) + BUFFER
+def periodic_size(n: int) -> int:
+    """float64 of the work space for `n` charges."""
+    return far_size(groups(n)) + groups(n) * (3 * (n + 7 & ~7) + BUFFER)
 
 
 @kernel
@@ -113,14 +116,14 @@ def threaded_direct_field(
     far, rows = work[0], work[0, work.shape[1] - count * row :]
     settle_far(position, far)
     for g in prange(count):
-        sum_moments(np.int64(g), count, position, charge, far)
+        sum_moments(signed(g), count, position, charge, far)
     finish_far(count, charge, far)
     for g in prange(count):
-        k = np.int64(g)
+        k = signed(g)
         _group(k, count, position, charge, softening2, far, rows[k * row : (k + 1) * row])
     for part in prange((n + _PART - 1) // _PART):
         _merge(
-            np.int64(part),
+            signed(part),
             count,
             row,
             position,

@@ -3,12 +3,13 @@
 With d the difference of two places, e the unit vector along the axis and L the period, the images
 beyond the nearest m on each side add to (zeta the one of Hurwitz, P the Legendre polynomials)
 
-    sum_{|k|>m} (1/|d - k L e| - 1/(|k| L)) = sum_{n=2,4,..} 2 zeta(n+1, m+1)/L^(n+1) d^n P_n   (1)
+    sum_{|k|>m} (1/|d - k L e| - 1/(|k| L)) = sum_{n=2,4,..} 2 zeta(n+1, m+1) d^n P_n / L^(n+1)
 
-with the axis as that of the polynomials, for d < (m + 1) L. Cut at a degree p it still is a function
-of d alone, so what i does to j is minus what j does to i. In regular harmonics
+(1) for d < (m + 1) L, with the axis as that of the polynomials. Cut at a degree p it still is a
+function of d alone, so what i does to j is minus what j does to i. In regular harmonics
 
-    R_l^u(r) = r^l P_l^u(cos) exp(i u phi) / (l + u)!,    R_n^0(a - b) = sum R_k^u(a) R_{n-k}^{-u}(-b)
+    R_l^u(r) = r^l P_l^u(cos) exp(i u phi) / (l + u)!,
+    R_n^0(a - b) = sum_k,u R_k^u(a) R_{n-k}^{-u}(-b)
 
 it falls into moments M_j^u = sum q R_j^u(b) and local coefficients, which cost n p^2:
 
@@ -27,6 +28,7 @@ memory). zeta(s, a) by Euler and Maclaurin: NIST Handbook of Mathematical Functi
 from __future__ import annotations
 
 import math
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -54,9 +56,9 @@ _ORDERS = MOST_DEGREE // 2 + 2
 _GRID = _ORDERS * _LINE
 
 IMAGES, DEGREE, ORDER, UNIT, CENTRE, CHARGE = 0, 1, 2, 3, 4, 7
-"""Found at each sum: m, p, the highest u, 1/((m + 1) L), the middle (axis last), the net charge."""
+"""Found at each sum: m, p, the highest u, 1/((m + 1) L), middle (axis last), net charge."""
 AXIS, LENGTH, TOLERANCE, HIGHEST, MOST_IMAGES, GROUPS = 8, 9, 10, 11, 12, 13
-"""Given: number of the axis, L, error allowed to a pair's force in units of 1/L^2, limits of p, m."""
+"""Given: axis, L, error allowed to a pair's force in units of 1/L^2, limits of p and m, groups."""
 _FIRST, _SECOND = 16, 16 + _GRID
 """Factors of the recursion in l."""
 _STRENGTH = _SECOND + _GRID
@@ -88,8 +90,9 @@ def prepare_far(
 ) -> None:
     """Write what is given once and for all into the room of :func:`far_size`.
 
-    groups : stretches the charges are summed in; axis : 0, 1 or 2; period : L, m; tolerance : error allowed to the force of a pair, in units of
-    that between neighbouring images of one charge; degree, most_images : limits of p and m
+    groups : stretches the charges are summed in; axis : 0, 1 or 2; period : L, m
+    tolerance : error allowed to the force of a pair, in units of that between neighbouring images
+    of one charge; degree, most_images : limits of p and m
     """
     out_far[AXIS], out_far[LENGTH], out_far[GROUPS] = axis, period, groups
     out_far[TOLERANCE], out_far[HIGHEST] = tolerance, min(degree, MOST_DEGREE)
@@ -389,6 +392,12 @@ def _next(
     """The next of the recursion in l; square : -r^2."""
     factor = load_one(far, _FIRST + u * _LINE + j) * z
     return fused(factor, here, load_one(far, _SECOND + u * _LINE + j) * square * below)
+
+
+@inner_kernel
+def signed(i: int) -> Any:
+    """`i` with a sign, as all others are: a parallel loop's index has none."""
+    return np.int64(i)
 
 
 @inner_kernel

@@ -26,6 +26,7 @@ from driftwell.coulomb.periodic.far import (
     inverse_near,
     prepare_far,
     settle_far,
+    signed,
     sum_moments,
 )
 from driftwell.coulomb.tree import TreeSettings, reached
@@ -101,10 +102,10 @@ def periodic_tree_field(
     work[0, cells.IMAGES] = far[IMAGES]
     tree_field(position, charge, softening2, constant, work, out_field)
     for g in prange(_GROUPS):
-        sum_moments(np.int64(g), _GROUPS, position, charge, far)
+        sum_moments(signed(g), _GROUPS, position, charge, far)
     finish_far(_GROUPS, charge, far)
     for part in prange((n + _PART - 1) // _PART):
-        _add_far(np.int64(part), position, charge, softening2, constant, far, out_field)
+        _add_far(signed(part), position, charge, softening2, constant, far, out_field)
 
 
 @inner_kernel
