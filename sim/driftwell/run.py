@@ -335,6 +335,7 @@ class _Execution:
             time, loop.plan, loop.charges, loop.work, loop.summation, error
         )
         writer.ledger(ledger_row(self._row))
+        writer.exchange(loop.exchanged)
         self._keep_events()
         loop.remove_lost()
         if flags & RECORD or last:

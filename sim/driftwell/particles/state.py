@@ -57,6 +57,14 @@ class Particles:
         )
 
 
+def no_particles() -> Particles:
+    """A set of none."""
+    none, number = np.zeros(0), np.zeros(0, np.int64)
+    return Particles(
+        np.zeros((3, 0)), np.zeros((3, 0)), none, none, none, number, number, number, none
+    )
+
+
 def joined(parts: Sequence[Particles]) -> Particles:
     """Several sets of particles as one; ids are kept as they are."""
     return Particles(

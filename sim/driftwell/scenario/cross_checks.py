@@ -18,6 +18,7 @@ from driftwell.particles.species import bodies
 from driftwell.particles.state import LARGEST_COUNT
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
+from driftwell.scenario.process_faults import process_faults
 
 MOST_RECORDS = 1_000_000
 MOST_STEPS = 1e13
@@ -35,6 +36,7 @@ def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
         limit = spelled(scenario.stepping.extent, "m")
         text = f"must be less than [stepping] extent, {limit}, and far less than any cloud"
         faults.append(Fault(("coulomb", "softening"), "", text))
+    faults += process_faults(scenario)
     faults += [
         Fault(("field", i, *fault.path), fault.found, fault.needed)
         for i, field in enumerate(scenario.field)

@@ -62,6 +62,8 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
     yield "Coulomb", "", _coulomb_words(loaded)
     if scenario.images is not None:
         yield "images", "", scenario.images.words()
+    for process in scenario.process:
+        yield "process", process.name, process.bounded_words()
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:

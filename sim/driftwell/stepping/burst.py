@@ -28,6 +28,7 @@ from driftwell.kernels import inner_kernel, kernel, outer_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.status import (
     COLLAPSE,
+    CROWDED_STEP,
     DONE,
     EVENTS_FULL,
     NOT_FINITE,
@@ -65,6 +66,9 @@ from driftwell.stepping.passes import (
     push_apart,
     take_fields,
 )
+from driftwell.stepping.process_work import CROWDED, ProcessWork
+from driftwell.stepping.process_work import LOST as TAKEN
+from driftwell.stepping.processes import Processes, act
 from driftwell.stepping.schedule import BREAK, TRACE
 from driftwell.stepping.schemes import Scheme
 from driftwell.walls.table import SurfaceTable
@@ -80,6 +84,8 @@ def burst(
     pair_sum: PairSum,
     images: CompiledFunction,
     passes: Passes | None,
+    processes: Processes,
+    acting: ProcessWork,
     plan: Plan,
     scheme: Scheme,
     fields: Fields,
@@ -138,6 +144,19 @@ def burst(
                     t = end if k == stages else start + scheme.node[k] * h
                     way = scheme.drift[k - 1] * h
                     move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
+                    if plan.processes != 0:
+                        act(
+                            processes,
+                            plan,
+                            fields,
+                            charges,
+                            together,
+                            before,
+                            inside,
+                            way,
+                            work,
+                            acting,
+                        )
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
@@ -161,6 +180,9 @@ def burst(
                             inside,
                             work,
                         )
+                    if plan.processes != 0 and acting.flags[0, TAKEN] > 0:
+                        acting.flags[0, TAKEN] = 0
+                        met |= LOST
                     if met == UNTOUCHED:
                         break
                     if met == LOST:
@@ -189,7 +211,7 @@ def burst(
                 if k == 0 and first:
                     if budget <= 0:
                         return PAUSED
-                    if surfaced and cursor[CURSOR_EVENTS] > free:
+                    if cursor[CURSOR_EVENTS] > free:
                         return EVENTS_FULL
                     if every > 1:
                         half = 0.5 * every * h
@@ -206,6 +228,9 @@ def burst(
             cursor[CURSOR_STEPS] += 1
             budget -= 1
             status = _look(plan, charges, every * h, cursor[CURSOR_STEP] == steps[j], work)
+            if plan.processes != 0 and acting.flags[0, CROWDED] > 0:
+                cursor[CURSOR_AT_FAULT] = acting.flags[0, CROWDED] - 1
+                status = CROWDED_STEP
             if status != DONE:
                 return status
         cursor[CURSOR_STEP] = 0

@@ -26,6 +26,7 @@ from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
+    CROWDED_STEP,
     DONE,
     EVENTS_FULL,
     NOT_FINITE,
@@ -34,6 +35,7 @@ from driftwell.kernels.status import (
     RUNAWAY,
 )
 from driftwell.particles.state import Particles
+from driftwell.processes.table import Acting
 from driftwell.stepping.burst import burst
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.motion import (
@@ -51,6 +53,14 @@ from driftwell.stepping.motion import (
     work_space,
 )
 from driftwell.stepping.passes import passes_over
+from driftwell.stepping.process_work import (
+    no_processes,
+    process_state,
+    process_work,
+    take_up_processes,
+    when_acting,
+)
+from driftwell.stepping.processes import processes_over
 from driftwell.stepping.schedule import TRACE, Schedule
 from driftwell.stepping.schemes import SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
@@ -117,11 +127,13 @@ class TimeLoop:
         state: Mapping[str, NDArray[Any]] | None = None,
         images: Images | None = None,
         bodies: BodyTable | None = None,
+        processes: Acting | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
         images : the conductors that answer to the charges
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
+        processes : what else acts on charges
         """
         self.particles = particles
         self.schedule = schedule
@@ -140,7 +152,9 @@ class TimeLoop:
             watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
             light2=SPEED_OF_LIGHT**2,
             images=int(images is not None),
+            processes=0 if processes is None else when_acting(processes),
         )
+        self._processes = no_processes() if processes is None else processes
         self._images, self._threads = images, threads
         self._image_sum = no_images()
         self._doubted = False
@@ -151,6 +165,7 @@ class TimeLoop:
         every = stepping.coulomb_every
         self._sums_per_step = 1.0 / every if every > 1 else float(self._scheme.drift.size)
         self.work = work_space(0, 0, room((1, 1)), False, False)
+        self.acting = process_work(self._processes, particles)
         self._events: list[Events] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
         self._budget = 1
@@ -177,6 +192,11 @@ class TimeLoop:
             return float(times[-1])
         span = times[interval + 1] - times[interval]
         return float(times[interval] + step * span / steps[interval])
+
+    @property
+    def exchanged(self) -> NDArray[np.float64]:
+        """What each process has given so far, (processes, 8), see :mod:`process_work`."""
+        return self.acting.exchanged + self.acting.carry
 
     @property
     def mark(self) -> int:
@@ -254,6 +274,7 @@ class TimeLoop:
             "schedule/cursor": self.work.cursor.copy(),
             "surfaces/side": self.work.side.copy(),
             "charges/alive": self.charges.alive.copy(),
+            **{f"processes/{name}": each for name, each in process_state(self.acting).items()},
             **{
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
@@ -283,6 +304,7 @@ class TimeLoop:
         work.cursor[CURSOR_FRESH] = 0
         work.side[:] = state["surfaces/side"]
         self.charges.alive[:] = state["charges/alive"]
+        take_up_processes(self.acting, entries_below("processes", state))
         gone = self.charges.alive == 0
         self.charges.charge[gone] = self.charges.weight[gone] = 0.0
         self.charges.charge_to_mass[:, gone] = 0.0
@@ -300,6 +322,8 @@ class TimeLoop:
                 self.summation.pair_sum,
                 self._image_sum.function,
                 self._passes,
+                self._acts,
+                self.acting,
                 self.plan,
                 self._scheme,
                 self._fields,
@@ -335,11 +359,14 @@ class TimeLoop:
             images = self._image_sum = self._images.laid_out(n, self._threads)
         stopped = self._bodies.whole.shape[0] > 0
         surfaces = self._surfaces.kind.size
-        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped)
+        takes = bool((self._processes.table.surface >= 0).any())
+        work = work_space(n, surfaces, tiles, levels, collapse, images, stopped, takes)
         work.total[:], work.carry[:] = old.total, old.carry
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
+        self.acting = process_work(self._processes, self.particles, self.acting)
+        self._acts = processes_over(self.plan, self._fields, self.charges, work, self.acting)
         self._passes = passes_over(
             n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
         )
@@ -420,6 +447,11 @@ class TimeLoop:
                 f"{when}: {who} has run away, {where}, beyond stepping.extent. The motion is "
                 "unstable or nothing stops it: put a wall, or set a larger extent."
             )
+        if status == CROWDED_STEP:
+            return (
+                f"{when}: {who} would be met by a process more than 100000 times in one step. Take "
+                "a shorter step, or a thinner gas, or describe the gas by its drag."
+            )
         if status == COLLAPSE:
             return (
                 f"{when}: {who} falls towards an opposite charge faster than the step can follow, "
@@ -428,7 +460,7 @@ class TimeLoop:
         return f"{when}: the step ended with the unknown status {status}."
 
     def _id_at_fault(self, status: int) -> int | None:
-        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE}:
+        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE, CROWDED_STEP}:
             return None
         return int(self.particles.id[self.work.cursor[CURSOR_AT_FAULT]])
 

@@ -67,6 +67,7 @@ class Plan(NamedTuple):
     watch_collapse : 1 where charges of both signs move without softening
     light2 : c^2, m^2/s^2
     images : 1 where conductors answer to the charges
+    processes : 1 where anything else acts, in events; 2 where something acts in every step
     """
 
     coulomb: int
@@ -77,6 +78,7 @@ class Plan(NamedTuple):
     watch_collapse: int
     light2: float
     images: int
+    processes: int
 
 
 class Trace(NamedTuple):
@@ -205,6 +207,7 @@ def work_space(
     collapse: bool,
     images: ImageSum | None = None,
     bodies: bool = False,
+    takers: bool = False,
 ) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
@@ -214,8 +217,9 @@ def work_space(
     collapse : whether opposite charges may fall together
     images : the sum over the images; None where there are none
     bodies : whether electrodes stop charges
+    takers : whether anything but surfaces takes charges
     """
-    events = 2 * room_for_events(n, surfaces + bodies)
+    events = 2 * room_for_events(n, surfaces + bodies + takers)
     coulomb = room((3, n))
     return Work(
         external=room((3, n)),
