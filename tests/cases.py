@@ -13,6 +13,8 @@ from driftwell.fields.form import FieldForm
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Form
 from driftwell.forms.body import Body
+from driftwell.processes.form import ProcessForm
+from driftwell.processes.table import PROCESS_KINDS
 from driftwell.walls.form import DetectorForm, WallForm
 from driftwell.walls.table import DETECTOR_KINDS, WALL_KINDS
 from tests.grid_files import grids
@@ -46,6 +48,14 @@ def wall(kind: str, **keys: Any) -> WallForm:
 def detector(kind: str, **keys: Any) -> DetectorForm:
     """A detector as a scenario states it; its name is its kind where none is given."""
     return _DETECTORS[kind](**{"kind": kind, "name": kind, **keys})
+
+
+_PROCESSES = _kinds(PROCESS_KINDS)
+
+
+def process(kind: str, **keys: Any) -> ProcessForm:
+    """A process as a scenario states it; its name is its kind where none is given."""
+    return _PROCESSES[kind](**{"kind": kind, "name": kind, **keys})
 
 
 SINE = {"frequency": "1.1 MHz", "phase": "40 deg"}

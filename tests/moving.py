@@ -14,6 +14,7 @@ from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.fields.form import FieldForm, Role
 from driftwell.fields.table import field_tables
+from driftwell.forms.body import Body
 from driftwell.forms.waveforms import waveform_breaks
 from driftwell.geometry.body_table import body_table
 from driftwell.geometry.solid import Solid
@@ -21,6 +22,8 @@ from driftwell.images.image_sum import Images
 from driftwell.ledger.ledger import Ledger, LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.particles.unborn import Unborn
+from driftwell.processes.form import ProcessForm
+from driftwell.processes.table import Acting, acting
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.loop import Events, TimeLoop, Traced
 from driftwell.stepping.motion import Fields
@@ -87,14 +90,17 @@ def loop(
     state: Mapping[str, NDArray[Any]] | None = None,
     frames: BunchFrames | None = None,
     cell: Cell | None = None,
+    processes: Sequence[ProcessForm] = (),
     **stepping: Any,
 ) -> TimeLoop:
     """A time loop at its start, or in a `state`; `records` and `samples` are times of marks, s.
 
     bodies : those of each electrode
+    processes : the bodies are those of each cloud's first charge, clouds "cloud 0", ...; seed 7
     """
     options = Stepping(**stepping)
     breaks = [t for field in fields for t in waveform_breaks(field.waveform(), duration)]
+    breaks += [t for process in processes for t in process.breaks(duration)]
     plan = schedule(
         duration,
         step,
@@ -121,7 +127,21 @@ def loop(
         unborn,
         frames,
         cell,
+        _acting(particles, processes, len(walls) + len(detectors) + len(bodies)),
     )
+
+
+def _acting(
+    particles: Particles, processes: Sequence[ProcessForm], first_surface: int
+) -> Acting | None:
+    if not processes:
+        return None
+    cloud, first = np.unique(particles.cloud, return_index=True)
+    clouds = [(f"cloud {k}", Body("ion", 1.0, 1.0)) for k in range(int(cloud[-1]) + 1)]
+    for k, i in zip(cloud, first, strict=True):
+        mass, charge = float(particles.mass[i]), float(particles.charge[i])
+        clouds[int(k)] = (f"cloud {k}", Body("ion", mass, charge))
+    return acting(processes, clouds, 7, first_surface)
 
 
 def always() -> bool:

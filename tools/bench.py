@@ -29,6 +29,7 @@ from bench_cases.direct import direct_16k
 from bench_cases.fast import relativistic
 from bench_cases.field_map import field_map
 from bench_cases.frames import frames
+from bench_cases.gas import gas
 from bench_cases.night import record_1e4, resume
 from bench_cases.periodic import periodic
 from bench_cases.reference import GCC, reference_library
@@ -50,6 +51,7 @@ QUICK: dict[str, Case] = {
     "script": script,
     "field-map": field_map,
     "startup": startup,
+    "gas": gas,
 }
 LONG: dict[str, Case] = {
     "tree-1e5": tree.against_library(100_000, library_repeats=3),

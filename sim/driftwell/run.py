@@ -344,6 +344,7 @@ class _Execution:
             time, loop.plan, loop.charges, loop.work, loop.summation, error
         )
         writer.ledger(ledger_row(self._row))
+        writer.exchange(loop.exchanged)
         self._keep_events()
         loop.remove_lost()
         present = loop.present()

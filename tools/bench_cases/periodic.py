@@ -7,6 +7,7 @@ import os
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from bench_cases import sums
 from bench_cases.timing import side_by_side
@@ -17,7 +18,7 @@ ACCURACY = 1e-4
 COUNTS = ((2_000, "direct"), (16_384, "direct"), (100_000, "tree"), (1_000_000, "tree"))
 
 
-def beam(n: int) -> sums.Floats:
+def beam(n: int) -> NDArray[np.float64]:
     """An even round beam, as long as the cell: places (3, n) in periods."""
     random = np.random.default_rng(5)
     r, turn = WIDTH * np.sqrt(random.random(n)), 2.0 * np.pi * random.random(n)

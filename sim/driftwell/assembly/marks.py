@@ -58,6 +58,7 @@ def all_marks(
         for question in scenario.question
     ]
     breaks = [waveform_breaks(field.waveform(), duration) for field in scenario.field]
+    breaks += [process.breaks(duration) for process in scenario.process]
     breaks += [] if acting is None else acting.breaks(duration)
     marks: list[tuple[int, NDArray[np.float64]]] = [
         (RECORD, records),

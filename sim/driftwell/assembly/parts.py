@@ -38,6 +38,7 @@ from driftwell.images.importance import importance, remark
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.particles.unborn import Unborn
+from driftwell.processes.table import Acting, acting
 from driftwell.record.header import Header, trace_name
 from driftwell.record.rows import tracked_ids
 from driftwell.scenario.conductors import Conductors
@@ -106,6 +107,11 @@ class Assembly:
         return (*self.scenario.wall, *(wall for each in self.edges for wall in each.walls()))
 
     @property
+    def takers(self) -> tuple[str, ...]:
+        """Names of the processes that take charges."""
+        return tuple(each.name for each in self.scenario.process if each.takes_charges())
+
+    @property
     def tracked(self) -> NDArray[np.int64]:
         """Ids of the charges whose trajectories are kept."""
         return tracked_ids(len(self.everyone), self.scenario.record.tracks)
@@ -131,7 +137,8 @@ class Assembly:
             images="" if scenario.images is None else scenario.images.words(),
             clouds=self.clouds,
             species=self.species,
-            walls=(*(wall.name for wall in self.walls), *self.conductors.names),
+            walls=(*(wall.name for wall in self.walls), *self.conductors.names, *self.takers),
+            processes=tuple(process.name for process in scenario.process),
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -173,7 +180,17 @@ class Assembly:
             self.unborn,
             self.frames,
             self.scenario.cell,
+            self.processes(),
         )
+
+    def processes(self) -> Acting | None:
+        """What else acts on the charges; None where nothing does."""
+        scenario = self.scenario
+        if not scenario.process:
+            return None
+        first = len(self.walls) + len(scenario.detector) + len(self.conductors.names)
+        clouds = [(cloud.name, self.bodies[cloud.species]) for cloud in self.clouds]
+        return acting(scenario.process, clouds, scenario.seed, first)
 
     def frame_remark(self) -> str:
         """What is to be said of the frames the charges are summed in; empty: nothing."""

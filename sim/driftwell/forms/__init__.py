@@ -15,6 +15,7 @@ from driftwell.forms.form import (
 from driftwell.forms.quantities import (
     Angle,
     AnyValue,
+    Area,
     Charge,
     Count,
     Current,
@@ -28,6 +29,7 @@ from driftwell.forms.quantities import (
     MagneticField,
     MagneticGradient,
     Mass,
+    Mobility,
     Name,
     NonNegative,
     NonZero,
@@ -41,7 +43,9 @@ from driftwell.forms.quantities import (
     Title,
     TrueOrFalse,
     Velocity,
+    Viscosity,
     Voltage,
+    Volume,
     read_quantity,
 )
 from driftwell.forms.spelling import spelled
@@ -49,6 +53,7 @@ from driftwell.forms.spelling import spelled
 __all__ = [
     "Angle",
     "AnyValue",
+    "Area",
     "Bound",
     "Charge",
     "Count",
@@ -64,6 +69,7 @@ __all__ = [
     "MagneticField",
     "MagneticGradient",
     "Mass",
+    "Mobility",
     "Name",
     "NonNegative",
     "NonZero",
@@ -77,7 +83,9 @@ __all__ = [
     "Title",
     "TrueOrFalse",
     "Velocity",
+    "Viscosity",
     "Voltage",
+    "Volume",
     "checked",
     "key",
     "on_each_axis",

@@ -97,6 +97,10 @@ MagneticField = Annotated[float, Quantity("a magnetic field", "T", "1.5 T")]
 FieldGradient = Annotated[float, Quantity("an electric field gradient", "V/m^2", "3.0e7 V/m^2")]
 MagneticGradient = Annotated[float, Quantity("a magnetic field gradient", "T/m", "12 T/m")]
 Pressure = Annotated[float, Quantity("a pressure", "Pa", "1e-3 mbar")]
+Area = Annotated[float, Quantity("an area", "m^2", "1e-18 m^2")]
+Volume = Annotated[float, Quantity("a volume", "m^3", "0.205 angstrom^3")]
+Viscosity = Annotated[float, Quantity("a viscosity", "Pa*s", "18.1 uPa s")]
+Mobility = Annotated[float, Quantity("a mobility", "m^2/(V*s)", "2.2 cm^2/(V s)")]
 Emittance = Annotated[float, Quantity("an emittance", "m*rad", "5 mm mrad")]
 
 

@@ -66,6 +66,7 @@ __all__ = [
     "put_some",
     "repeated",
     "repeated_lane",
+    "root",
     "rough_inverse_cube",
     "scaled_rough_inverse_cube",
     "smaller",
@@ -177,6 +178,16 @@ def fused(typing: Any, a: Any, b: Any, c: Any) -> Any:
         return call_llvm(builder, "llvm.fmuladd.v8f64", *args)
 
     return LANES(LANES, LANES, LANES), emitted
+
+
+@emitted_code
+def root(typing: Any, a: Any) -> Any:
+    """The square root of each lane, to the last bit."""
+
+    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        return call_llvm(builder, "llvm.sqrt.v8f64", args[0])
+
+    return LANES(LANES), emitted
 
 
 @emitted_code

@@ -14,6 +14,8 @@ RUNAWAY = 4
 """A charge left the region the scenario declares as its extent."""
 COLLAPSE = 5
 """Two opposite charges came closer than the step can follow."""
+CROWDED_STEP = 9
+"""A charge met a process more often in one step than can be followed."""
 OVERFLOW = 6
 """A step met more surfaces than the event buffer can hold: the step is far too long."""
 NEED_BIRTHS = 7

@@ -46,7 +46,8 @@ class Header:
     field_error, field_digest : relative rms error of the electrodes' solved field as it was mapped,
         and a digest of its numbers; 0 and "" without electrodes
     images : the conductors that answer to the charges, in words; empty where none do
-    walls : names of what takes charges: the walls, then the electrodes
+    walls : names of what takes charges: the walls, then the electrodes, then processes
+    processes : names of what else acts on charges
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -74,6 +75,7 @@ class Header:
     field_error: float = 0.0
     field_digest: str = ""
     images: str = ""
+    processes: tuple[str, ...] = ()
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)
@@ -96,6 +98,7 @@ class Header:
             "tracked": len(self.tracked),
             "traces": len(self.traces),
             "clouds": len(self.clouds),
+            "processes": len(self.processes),
         }
 
 

@@ -186,6 +186,14 @@ ROWS = (
         ),
     ),
     Dataset(
+        "exchange",
+        ("ledger", "processes", 8),
+        "what each process has given to the charges by each row of the ledger, weights included: "
+        "energy, momentum (3), angular momentum (3), and how many events there were of it; the "
+        "processes are those of the attribute `processes`",
+        unit="J, kg m/s (3), kg m^2/s (3), 1",
+    ),
+    Dataset(
         "losses",
         ("losses",),
         "one row for each charge lost, where it touched the wall",
@@ -365,7 +373,8 @@ HEADER = (
     Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
     Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
     Attribute("species", "texts", "", "names of the species, in order"),
-    Attribute("walls", "texts", "", "names of what takes charges: the walls, then the electrodes"),
+    Attribute("walls", "texts", "", "names of what takes charges: walls, electrodes, processes"),
+    Attribute("processes", "texts", "", "names of what else acts on charges, in order", 3),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

@@ -78,8 +78,8 @@ def birth_rows(born: Born) -> NDArray[Any]:
 def event_rows(events: Events, walls: int, detectors: int) -> tuple[NDArray[Any], NDArray[Any]]:
     """What happened on surfaces: losses on walls and electrodes, passages through detectors.
 
-    Surfaces are numbered walls, detectors, electrodes; what takes charges stands in the record as
-    walls, then electrodes.
+    Surfaces are numbered walls, detectors, electrodes, processes; what takes charges stands in the
+    record as walls, electrodes, processes.
     """
     surface = events.surface
     lost = (surface < walls) | (surface >= walls + detectors)

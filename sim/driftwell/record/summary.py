@@ -8,6 +8,7 @@ from functools import partial
 import numpy as np
 
 from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell.constants import ELEMENTARY_CHARGE
 from driftwell.errors import RecordError
 from driftwell.forms import spelled
 from driftwell.record.layout import ROWS
@@ -108,6 +109,7 @@ def _ledger(run: Run) -> list[str]:
         f"{np.abs(ledger[column]).max():.2e} at most"
         for name, column in _RESIDUALS
     ]
+    lines += _given(run)
     error = ledger["coulomb_error"]
     if error.any():
         broken = "" if error.max() <= run.header.coulomb_accuracy else ": less accurate than asked"
@@ -115,6 +117,18 @@ def _ledger(run: Run) -> list[str]:
             f"Coulomb force errs by {error[-1]:.1e} (rms) at the end, {error.max():.1e} at most; "
             f"{run.header.coulomb_accuracy:g} asked{broken}"
         )
+    return lines
+
+
+def _given(run: Run) -> list[str]:
+    """What each process gave to the charges."""
+    if not run.header.processes:
+        return []
+    last = run.rows("exchange")[-1]
+    lines = []
+    for name, given in zip(run.header.processes, last, strict=True):
+        line = f"{name} gave {spelled(given[0] / ELEMENTARY_CHARGE, 'eV', 4)}"
+        lines.append(f"{line} in {given[7]:.6g} events" if given[7] else line)
     return lines
 
 

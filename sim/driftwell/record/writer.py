@@ -135,6 +135,10 @@ class RunWriter:
             times = found["time"]
             self._pending.reaches(float(times.min()), float(times.max()))
 
+    def exchange(self, given: ArrayLike) -> None:
+        """Record what each process has given, (processes, 8), beside a row of the ledger."""
+        self._pending.add("exchange", np.asarray(given, np.float64)[np.newaxis])
+
     def losses(self, rows: NDArray[Any]) -> None:
         """Record charges lost, rows of the layout's type."""
         self._pending.add("losses", rows)

@@ -37,6 +37,7 @@ ENERGIES = (
     ("work of drives", "work_drive", PURPLE, NARROW),
     ("work of induction", "work_induced", ORANGE, NARROW),
     ("taken by walls", "energy_walls", BLACK, NARROW),
+    ("given by processes", "energy_processes", INK, NARROW),
 )
 ROUNDING = 1e-16
 """Where the axis of residuals begins if all of them are zero."""

@@ -1,4 +1,4 @@
-"""What can hurt where a scenario is built: high voltage, X-rays, strong magnets."""
+"""What can hurt where a scenario is built: voltage, X-rays, magnets, laser light, gas."""
 
 from __future__ import annotations
 
@@ -13,6 +13,8 @@ from driftwell.forms.waveforms import largest_value
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.source import Source
 from driftwell.particles.species import bodies
+from driftwell.processes.gas_collisions import GasCollisions
+from driftwell.processes.laser_cooling import LaserCooling
 from driftwell.scenario.model import Scenario
 
 HIGH_VOLTAGE = 1e3
@@ -44,6 +46,16 @@ def cautions(scenario: Scenario) -> list[str]:
         found.append(
             f"Fields up to {spelled(magnet, 'T', 3)} pull iron through the air and stop pacemakers;"
             " a superconducting magnet that quenches fills the room with cold gas."
+        )
+    if any(isinstance(process, LaserCooling) for process in scenario.process):
+        found.append(
+            "Laser beams blind, reflections and beams nobody sees too: enclose them, wear eyewear "
+            "for the wavelength."
+        )
+    if any(isinstance(process, GasCollisions) for process in scenario.process):
+        found.append(
+            "Gas comes from bottles under pressure, suffocates where it collects, and may "
+            "burn or be toxic: regulate, ventilate, watch the oxygen."
         )
     if found:
         found.append(

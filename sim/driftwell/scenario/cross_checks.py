@@ -20,6 +20,7 @@ from driftwell.particles.state import LARGEST_COUNT, Particles
 from driftwell.scenario.cell_checks import cell_faults, folded
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
+from driftwell.scenario.process_faults import process_faults
 from driftwell.stepping.schemes import MIDWAY
 
 MOST_RECORDS = 1_000_000
@@ -39,6 +40,7 @@ def cross_faults(scenario: Scenario, folder: Path) -> list[Fault]:
         limit = spelled(scenario.stepping.extent, "m")
         text = f"must be less than [stepping] extent, {limit}, and far less than any cloud"
         faults.append(Fault(("coulomb", "softening"), "", text))
+    faults += process_faults(scenario)
     faults += [
         Fault(("field", i, *fault.path), fault.found, fault.needed)
         for i, field in enumerate(scenario.field)
@@ -130,9 +132,7 @@ def _frame_faults(scenario: Scenario) -> Iterator[Fault]:
         text = "does not go with [images], which answer to charges at rest; leave one of them out"
         yield Fault(("coulomb", "frame"), "", text)
     if scenario.source:
-        text = (
-            "does not go with a [[source]], whose bunch is never all there; leave one of them out"
-        )
+        text = "does not go with a [[source]], whose bunch is never all there; leave out one"
         yield Fault(("coulomb", "frame"), "", text)
     several = max(grouped([each.name for each in scenario.cloud], coulomb.share_frame)) > 0
     if several and scenario.stepping.scheme == MIDWAY:

@@ -67,6 +67,8 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
         yield "images", "", scenario.images.words()
     if scenario.cell is not None:
         yield "cell", "", scenario.cell.words()
+    for process in scenario.process:
+        yield "process", process.name, process.bounded_words()
     yield "stepping", "", _stepping_words(scenario)
     yield "record", "", _record_words(scenario)
     for question in scenario.question:

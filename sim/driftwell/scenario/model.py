@@ -18,6 +18,8 @@ from driftwell.images.table import IMAGE_KINDS
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.source import Setting, Source
 from driftwell.particles.species import SpeciesForm, bodies
+from driftwell.processes.form import ProcessForm
+from driftwell.processes.table import PROCESS_KINDS
 from driftwell.record.form import Record
 from driftwell.stepping.form import Stepping
 from driftwell.walls.form import DetectorForm, WallForm
@@ -29,12 +31,14 @@ if TYPE_CHECKING:
     AnyDetector = DetectorForm
     AnyQuestion = QuestionForm
     AnyImages = ImagesForm
+    AnyProcess = ProcessForm
 else:
     AnyField = one_of(FIELD_KINDS)
     AnyWall = one_of(WALL_KINDS)
     AnyDetector = one_of(DETECTOR_KINDS)
     AnyQuestion = one_of(QUESTION_KINDS, by="ask")
     AnyImages = one_of(IMAGE_KINDS)
+    AnyProcess = one_of(PROCESS_KINDS)
 
 
 class Scenario(Form):
@@ -67,6 +71,9 @@ class Scenario(Form):
     )
     images: AnyImages | None = key(
         "conductors that answer to the charges between them; left out: none does", default=None
+    )
+    process: tuple[AnyProcess, ...] = key(
+        "what else acts on the charges: gas, drag, laser light, a heat bath", default=()
     )
     stepping: Stepping = key("how time is cut into steps", default=Stepping())
     record: Record = key("what is kept, and how often", default=Record())

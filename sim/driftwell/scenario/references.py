@@ -18,7 +18,16 @@ from driftwell.scenario.places import entry_name
 
 Path = tuple[str | int, ...]
 
-NAMED_SECTIONS = ("cloud", "source", "field", "electrode", "wall", "detector", "question")
+NAMED_SECTIONS = (
+    "cloud",
+    "source",
+    "field",
+    "electrode",
+    "wall",
+    "detector",
+    "process",
+    "question",
+)
 SURFACES = ("wall", "detector")
 _SHOWN = 12
 
@@ -33,6 +42,7 @@ def reference_faults(data: Mapping[str, Any]) -> list[Fault]:
     faults += _unknown_electrodes(data)
     faults += _same_as_surfaces(data)
     faults += _unknown_species(data)
+    faults += _unknown_in_processes(data)
     faults += _unknown_in_questions(data)
     faults += _unknown_in_frames(data)
     return faults
@@ -65,16 +75,18 @@ def _used_twice(data: Mapping[str, Any], section: str) -> Iterator[Fault]:
 
 
 def _same_as_surfaces(data: Mapping[str, Any]) -> Iterator[Fault]:
-    """Electrodes are surfaces: losses on them and on walls are told apart by names."""
+    """Losses on walls, on electrodes and to processes are told apart by names."""
     taken = {name: f"a [[{section}]]" for section in SURFACES for name in _names(data, section)}
     common = data.get("electrodes")
     if isinstance(common, Mapping) and "enclosure" in common:
         taken[ENCLOSURE] = "[electrodes] enclosure"
-    for i, entry in _entries(data, "electrode"):
-        name = entry_name(entry)
-        if name in taken:
-            path = ("electrode", i, "name")
-            yield Fault(path, as_found(name), f"is the name of {taken[name]} already")
+    for section in ("electrode", "process"):
+        for i, entry in _entries(data, section):
+            name = entry_name(entry)
+            if name in taken:
+                path = (section, i, "name")
+                yield Fault(path, as_found(name), f"is the name of {taken[name]} already")
+        taken |= dict.fromkeys(_names(data, section), f"an [[{section}]]")
 
 
 def _same_as_clouds(data: Mapping[str, Any]) -> Iterator[Fault]:
@@ -107,6 +119,20 @@ def _unknown_species(data: Mapping[str, Any]) -> Iterator[Fault]:
                 if name not in own and name not in BUILT_IN:
                     known = "; known are " + ", ".join([*own, *BUILT_IN][:_SHOWN])
                     yield _unknown(path, name, "species", [*own, *BUILT_IN], known)
+
+
+def _unknown_in_processes(data: Mapping[str, Any]) -> Iterator[Fault]:
+    """Clouds and species that processes act on."""
+    declared = data.get("species")
+    own = [str(name) for name in declared] if isinstance(declared, Mapping) else []
+    known = [*_names(data, "cloud"), *own, *BUILT_IN]
+    for i, entry in _entries(data, "process"):
+        names = entry.get("of")
+        for k, name in enumerate(names if isinstance(names, list) else []):
+            if isinstance(name, str) and name not in known:
+                path = ("process", i, "of", k)
+                there = f"; {_there(_names(data, 'cloud'))}"
+                yield _unknown(path, name, "[[cloud]] and no species", known, there)
 
 
 def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:

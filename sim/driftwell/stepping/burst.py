@@ -32,6 +32,7 @@ from driftwell.kernels import inner_kernel, kernel, outer_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.status import (
     COLLAPSE,
+    CROWDED_STEP,
     DONE,
     EVENTS_FULL,
     NEED_BIRTHS,
@@ -74,6 +75,9 @@ from driftwell.stepping.passes import (
     push_apart,
     take_fields,
 )
+from driftwell.stepping.process_work import CROWDED, ProcessWork
+from driftwell.stepping.process_work import LOST as TAKEN
+from driftwell.stepping.processes import Processes, act
 from driftwell.stepping.schedule import BREAK, TRACE
 from driftwell.stepping.schemes import Scheme
 from driftwell.walls.table import SurfaceTable
@@ -92,6 +96,8 @@ def burst(
     frame_sum: CompiledFunction,
     reentry: CompiledFunction,
     passes: Passes | None,
+    processes: Processes,
+    acting: ProcessWork,
     plan: Plan,
     scheme: Scheme,
     fields: Fields,
@@ -151,8 +157,37 @@ def burst(
                 t = start
                 if k == 0:
                     jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
-                elif k <= stages and midway:
-                    if k == 1:
+                elif k <= stages:
+                    if not midway:
+                        before = start + scheme.node[k - 1] * h
+                        t = end if k == stages else start + scheme.node[k] * h
+                        way = scheme.drift[k - 1] * h
+                        move(
+                            passes,
+                            plan,
+                            fields,
+                            surfaces,
+                            bodies,
+                            charges,
+                            before,
+                            inside,
+                            way,
+                            work,
+                        )
+                        if plan.processes != 0:
+                            act(
+                                processes,
+                                plan,
+                                fields,
+                                charges,
+                                together,
+                                before,
+                                inside,
+                                way,
+                                work,
+                                acting,
+                            )
+                    elif k == 1:
                         to_middle(
                             passes,
                             plan,
@@ -182,18 +217,9 @@ def burst(
                             h,
                             work,
                         )
+                    if k == stages:
                         if plan.cell_axis >= 0:
                             reentry(plan, fields.electric, surfaces, charges, work, end, inside)
-                    continue
-                elif k <= stages:
-                    before = start + scheme.node[k - 1] * h
-                    t = end if k == stages else start + scheme.node[k] * h
-                    way = scheme.drift[k - 1] * h
-                    move(passes, plan, fields, surfaces, bodies, charges, before, inside, way, work)
-                    if k == stages and plan.cell_axis >= 0:
-                        reentry(plan, fields.electric, surfaces, charges, work, t, inside)
-                    if k == stages:
-                        closing = scheme.kick[stages] * h
                         ahead = (every - 1 - cursor[CURSOR_STEP] % every) * h
                         take_births(
                             bearing,
@@ -207,10 +233,12 @@ def burst(
                             end,
                             inside,
                             h,
-                            closing,
+                            scheme.kick[stages] * h,
                             ahead,
                             work,
                         )
+                    if midway:
+                        continue
                 elif k == stages + 1:
                     t = end
                     if last and every > 1:
@@ -236,6 +264,9 @@ def burst(
                             inside,
                             work,
                         )
+                    if plan.processes != 0 and acting.flags[0, TAKEN] > 0:
+                        acting.flags[0, TAKEN] = 0
+                        met |= LOST
                     if met == UNTOUCHED and not (midway and asked):
                         break
                     if met == LOST and not midway:
@@ -266,7 +297,7 @@ def burst(
                 if k == 0 and first:
                     if budget <= 0:
                         return PAUSED
-                    if surfaced and cursor[CURSOR_EVENTS] > free:
+                    if cursor[CURSOR_EVENTS] > free:
                         return EVENTS_FULL
                     until_next = time[j] + (cursor[CURSOR_STEP] + every) * h
                     if cursor[CURSOR_STEP] + every == steps[j]:
@@ -297,6 +328,9 @@ def burst(
             cursor[CURSOR_STEPS] += 1
             budget -= 1
             status = _look(plan, charges, every * h, cursor[CURSOR_STEP] == steps[j], work)
+            if plan.processes != 0 and acting.flags[0, CROWDED] > 0:
+                cursor[CURSOR_AT_FAULT] = acting.flags[0, CROWDED] - 1
+                status = CROWDED_STEP
             if status != DONE:
                 return status
         cursor[CURSOR_STEP] = 0

@@ -143,7 +143,7 @@ def _follow(
             return changed
         xc, yc, zc, uxc, uyc, uzc = point(plan, first, last, span, when)
         if wall >= surfaces.kind.size or surfaces.effect[wall] == ABSORB:
-            _write(wall, i, start + when * span, xc, yc, zc, uxc, uyc, uzc, 0.0, work)
+            write_event(wall, i, start + when * span, xc, yc, zc, uxc, uyc, uzc, 0.0, work)
             charges.alive[i] = LEAVING
             for s in range(surfaces.kind.size):
                 there = level(surfaces.kind[s], surfaces.parameter[s], x1, y1, z1)
@@ -257,7 +257,7 @@ def _pass_detectors(
         x, y, z, ux, uy, uz = point(plan, first, last, span, when)
         if surfaces.effect[s] == PASS:
             if stops(kind, p, x, y, z):
-                _write(s, i, start + when * span, x, y, z, ux, uy, uz, float(now), work)
+                write_event(s, i, start + when * span, x, y, z, ux, uy, uz, float(now), work)
             work.side[s, i] = now
         elif not stops(kind, p, x, y, z):
             work.side[s, i] = now
@@ -301,7 +301,7 @@ def _account_bounce(charges: Charges, i: int, sign: float, work: Work) -> None:
 
 
 @outer_kernel
-def _write(
+def write_event(
     surface: int,
     i: int,
     t: float,

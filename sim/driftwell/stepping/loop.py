@@ -29,6 +29,7 @@ from driftwell.images.image_sum import Images, no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
     COLLAPSE,
+    CROWDED_STEP,
     DONE,
     EVENTS_FULL,
     NEED_BIRTHS,
@@ -39,6 +40,7 @@ from driftwell.kernels.status import (
 )
 from driftwell.particles.state import Particles
 from driftwell.particles.unborn import Unborn
+from driftwell.processes.table import Acting
 from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
 from driftwell.stepping.cell import reentry
@@ -63,6 +65,14 @@ from driftwell.stepping.motion import (
 )
 from driftwell.stepping.passes import passes_over
 from driftwell.stepping.pools import Born, Pools, merged
+from driftwell.stepping.process_work import (
+    no_processes,
+    process_state,
+    process_work,
+    take_up_processes,
+    when_acting,
+)
+from driftwell.stepping.processes import processes_over
 from driftwell.stepping.schedule import TRACE, Schedule
 from driftwell.stepping.schemes import MIDWAY, SCHEMES
 from driftwell.walls.table import SurfaceTable, sides
@@ -133,6 +143,7 @@ class TimeLoop:
         unborn: Unborn | None = None,
         frames: BunchFrames | None = None,
         cell: Cell | None = None,
+        processes: Acting | None = None,
     ) -> None:
         """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
 
@@ -141,6 +152,7 @@ class TimeLoop:
         bodies : what else stops charges: owner k is surface number (walls + detectors + k)
         unborn : charges that are born on the way
         cell : what repeats along one axis
+        processes : what else acts on charges
         """
         self.particles = particles
         self._pools = Pools(unborn, {} if state is None else entries_below("births", state))
@@ -169,7 +181,9 @@ class TimeLoop:
             cell_axis=-1 if cell is None else cell.number,
             cell_begin=0.0 if cell is None else cell.begin,
             cell_length=0.0 if cell is None else cell.length,
+            processes=0 if processes is None else when_acting(processes),
         )
+        self._processes = no_processes() if processes is None else processes
         self._bunch = frames.numbers if frames is not None and self.plan.frames else None
         self._frame_sum = frame_sum(self.plan.frames > 0)
         self._frame_watch = None
@@ -188,6 +202,7 @@ class TimeLoop:
             1.0 / every if every > 1 else float(np.count_nonzero(self._scheme.kick[1:]))
         )
         self.work = work_space(0, 0, room((1, 1)), False, False)
+        self.acting = process_work(self._processes, particles)
         self._events: list[Events] = []
         self._births: list[Born] = []
         self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
@@ -220,6 +235,11 @@ class TimeLoop:
             return float(times[-1])
         span = times[interval + 1] - times[interval]
         return float(times[interval] + step * span / steps[interval])
+
+    @property
+    def exchanged(self) -> NDArray[np.float64]:
+        """What each process has given so far, (processes, 8), see :mod:`process_work`."""
+        return self.acting.exchanged + self.acting.carry
 
     @property
     def mark(self) -> int:
@@ -367,6 +387,7 @@ class TimeLoop:
             "surfaces/side": self.work.side.copy(),
             "charges/alive": self.charges.alive.copy(),
             **{f"births/{name}": item for name, item in self._pools.state().items()},
+            **{f"processes/{name}": each for name, each in process_state(self.acting).items()},
             **{
                 f"coulomb/{name}": item
                 for name, item in (self.summation.manner.state() | self.promise.state()).items()
@@ -405,6 +426,7 @@ class TimeLoop:
             work.frames[:] = state["frames/table"]
         work.side[:] = state["surfaces/side"]
         self.charges.alive[:] = state["charges/alive"]
+        take_up_processes(self.acting, entries_below("processes", state))
         gone = self.charges.alive == 0
         self.charges.charge[gone] = self.charges.weight[gone] = 0.0
         self.charges.charge_to_mass[:, gone] = 0.0
@@ -425,6 +447,8 @@ class TimeLoop:
                 self._frame_sum,
                 self._reentry,
                 self._passes,
+                self._acts,
+                self.acting,
                 self.plan,
                 self._scheme,
                 self._fields,
@@ -463,8 +487,9 @@ class TimeLoop:
         stopped = self._bodies.whole.shape[0] > 0
         surfaces = self._surfaces.kind.size
         midway = bool(self.plan.midway)
+        takes = bool((self._processes.table.surface >= 0).any())
         work = work_space(
-            n, surfaces, tiles, levels, collapse, images, stopped, midway, self._bunch
+            n, surfaces, tiles, levels, collapse, images, stopped, midway, self._bunch, takes
         )
         if old.frames.shape == work.frames.shape:
             work.frames[:] = old.frames
@@ -472,6 +497,8 @@ class TimeLoop:
         work.energy[:], work.cursor[:] = old.energy, old.cursor
         work.cursor[CURSOR_FRESH] = 0
         self.work = work
+        self.acting = process_work(self._processes, self.particles, self.acting)
+        self._acts = processes_over(self.plan, self._fields, self.charges, work, self.acting)
         passes = midpoint_passes_over if midway else passes_over
         self._passes = passes(
             n, self.plan, self._fields, self._surfaces, self._bodies, self.charges, self.work
@@ -564,6 +591,11 @@ class TimeLoop:
                 f"{when}: {who} has run away, {where}, beyond stepping.extent. The motion is "
                 "unstable or nothing stops it: put a wall, or set a larger extent."
             )
+        if status == CROWDED_STEP:
+            return (
+                f"{when}: {who} would be met by a process more than 100000 times in one step. Take "
+                "a shorter step, or a thinner gas, or describe the gas by its drag."
+            )
         if status == COLLAPSE:
             return (
                 f"{when}: {who} falls towards an opposite charge faster than the step can follow, "
@@ -572,7 +604,7 @@ class TimeLoop:
         return f"{when}: the step ended with the unknown status {status}."
 
     def _id_at_fault(self, status: int) -> int | None:
-        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE}:
+        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE, CROWDED_STEP}:
             return None
         return int(self.particles.id[self.work.cursor[CURSOR_AT_FAULT]])
 

@@ -76,6 +76,7 @@ class Plan(NamedTuple):
     frames : bunches whose charges are summed in a rest frame of their own; 0: in the laboratory
     cell_axis : the axis along which all repeats, -1 where nothing does
     cell_begin, cell_length : m, where the cell begins, and the period
+    processes : 1 where anything else acts, in events; 2 where something acts in every step
     """
 
     coulomb: int
@@ -91,6 +92,7 @@ class Plan(NamedTuple):
     cell_axis: int = -1
     cell_begin: float = 0.0
     cell_length: float = 0.0
+    processes: int = 0
 
 
 class Trace(NamedTuple):
@@ -233,6 +235,7 @@ def work_space(
     bodies: bool = False,
     in_blocks: bool = False,
     bunch: Ints | None = None,
+    takers: bool = False,
 ) -> Work:
     """Work space for `n` charges and `surfaces` walls and detectors.
 
@@ -244,8 +247,9 @@ def work_space(
     bodies : whether electrodes stop charges
     in_blocks : whether few charges are passed through in blocks too
     bunch : (clouds,) to which bunch each cloud belongs; None where none has a frame
+    takers : whether anything but surfaces takes charges
     """
-    events = 2 * room_for_events(n, surfaces + bodies)
+    events = 2 * room_for_events(n, surfaces + bodies + takers)
     coulomb = room((3, n))
     own = np.zeros(0, dtype=np.int64) if bunch is None else bunch
     bunches = bunches_in(own)
