@@ -28,6 +28,8 @@ PER_CHARGE = 700
 """Bytes of each charge: its state, the loop's work space, two copies for the record."""
 PER_SURFACE = 50
 """Bytes of each charge for each wall and detector."""
+PER_PROCESS, STATE_PROCESS = 50, 16
+"""Bytes of each charge for each process, in memory and on the disk: its clock."""
 PER_TRACKED = 220
 """Bytes of each tracked charge while a segment is made."""
 PER_MARK = 100
@@ -52,7 +54,7 @@ class Extent:
     """How much a run is: numbers of things, and how the charges' own force is summed.
 
     surfaces : walls, detectors, and one for all electrodes; detectors : those among them
-    images : bytes that sums over images take
+    images : bytes that sums over images take; processes : what else acts
     """
 
     charges: int
@@ -66,6 +68,7 @@ class Extent:
     coulomb: Coulomb
     detectors: int = 0
     images: int = 0
+    processes: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -77,6 +80,7 @@ class Extent:
             + sums
             + self.images
             + self.charges * (PER_CHARGE + self.surfaces * PER_SURFACE)
+            + self.charges * self.processes * PER_PROCESS
             + self.tracked * PER_TRACKED
             + (self.records + self.samples) * PER_MARK
             + 3 * (moments + traces)
@@ -87,14 +91,15 @@ class Extent:
         return (
             self.records * (8 + self.tracked * 48)
             + self.records * self.clouds * dtype("moments").itemsize
-            + (self.records + self.snapshots) * dtype("ledger").itemsize
+            + (self.records + self.snapshots) * (dtype("ledger").itemsize + 64 * self.processes)
             + self.samples * (self.traces + 1) * 8
             + self.snapshots * (self.charges * SNAPSHOT + SNAPSHOT_BASE)
         )
 
     def state(self) -> int:
         """Bytes of the state that ends each segment, while no charge is lost."""
-        return self.charges * (STATE + self.surfaces * STATE_SURFACE)
+        clocks = self.processes * STATE_PROCESS
+        return self.charges * (STATE + self.surfaces * STATE_SURFACE + clocks)
 
     def segments(self, seconds: float = 0.0) -> int:
         """Segments of a run that lasts so many seconds by the clock; 0 s: as few as can be."""
@@ -134,6 +139,7 @@ def extent_of(scenario: Scenario, charges: int, samples: int = 0, traces: int = 
         coulomb=scenario.coulomb,
         detectors=len(scenario.detector),
         images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
+        processes=len(scenario.process),
     )
 
 
