@@ -343,8 +343,7 @@ class _Execution:
         self._row = self._ledger.close(
             time, loop.plan, loop.charges, loop.work, loop.summation, error
         )
-        writer.ledger(ledger_row(self._row))
-        writer.exchange(loop.exchanged)
+        writer.ledger(ledger_row(self._row), loop.exchanged)
         self._keep_events()
         loop.remove_lost()
         present = loop.present()

@@ -69,7 +69,7 @@ def test_the_capture_rate_is_langevins(
 
 
 @pytest.mark.parametrize(
-    "step", [4e-9, 4e-7], ids=["many steps a collision", "one in 5 collisions"]
+    "step", [2e-8, 4e-7], ids=["steps below a collision", "steps of 5 collisions"]
 )
 @pytest.mark.parametrize(
     ("mass", "factor"), [(2.80134, 1.0958), (28.0134, 1.0195), (100.0, 0.9968)]
@@ -80,9 +80,10 @@ def test_ions_drift_with_the_mobility_of_hard_spheres(
     """Case L2: first-order K with the factor for the ratio of masses, at steps short and long.
 
     The factors of a Monte Carlo of the same kernel (standard error 0.25 %); Chapman and Cowling
-    have 1.019 for equal masses. 2 % allowed; the noise is below 0.5 %.
+    have 1.019 for equal masses. 2 % allowed, or three standard errors; fields are weak: the ions
+    are less than 2 % hotter than the gas.
     """
-    field_strength, n = 1000.0 if mass > 3.0 else 200.0, 1500
+    field_strength, n = 200.0 if mass > 3.0 else 80.0, 3000
     drift = factor * first_order_mobility(mass) * field_strength
     thermal = math.sqrt(BOLTZMANN * KELVIN / (mass * ATOMIC_MASS))
     random = np.random.default_rng(1)
@@ -90,7 +91,7 @@ def test_ions_drift_with_the_mobility_of_hard_spheres(
     particles = ions(np.zeros((n, 3)), start, mass=mass)
     moving = loop(
         particles,
-        60e-6 if step > 1e-8 else 8e-6,
+        40e-6 if step > 1e-7 else 20e-6,
         step,
         fields=[field("uniform-electric", strength=f"{field_strength} V/m")],
         processes=[nitrogen()],
@@ -105,7 +106,7 @@ def test_ions_drift_with_the_mobility_of_hard_spheres(
 @pytest.mark.parametrize("step", [2e-8, 1e-6], ids=["short steps", "steps of 13 collisions"])
 @pytest.mark.parametrize("mass", [4.0, 28.0134, 400.0])
 @pytest.mark.parametrize(
-    "collision", [SPHERES, {"kind": "induced-dipole", "polarisability": "40 angstrom^3"}]
+    "collision", [SPHERES, {"kind": "induced-dipole", "polarisability": "1 angstrom^3"}]
 )
 def test_energies_come_to_boltzmanns_distribution(
     collision: dict[str, str], mass: float, step: float

@@ -41,6 +41,7 @@ LIGHT = process(
     saturation=0.5,
     direction=[1.0, 1.0, 1.0],
 )
+BRIGHT = LIGHT.model_copy(update={"linewidth": 1e9, "detuning": -5e8})
 TIMES = np.linspace(0.0, 2e-5, 11)[1:]
 
 
@@ -54,9 +55,9 @@ SETTINGS = {
     "two gases": [GAS, HELIUM],
     "drag": [DRAG],
     "bath": [BATH],
-    "light": [LIGHT],
+    "light": [BRIGHT],
     "gas and drag": [HELIUM, DRAG],
-    "gas, bath and light": [GAS, BATH, LIGHT],
+    "gas, bath and light": [GAS, BATH, BRIGHT],
 }
 
 
@@ -80,7 +81,7 @@ def test_the_ledger_closes_to_rounding_in_constant_fields(acting: Any, fields: A
     assert last.angular_processes == pytest.approx(given[4:7], rel=1e-9, abs=1e-33)
 
 
-@pytest.mark.parametrize("acting", [[GAS, LIGHT], [DRAG]], ids=["events", "drag"])
+@pytest.mark.parametrize("acting", [[GAS, BRIGHT], [DRAG]], ids=["events", "drag"])
 def test_the_ledger_closes_in_a_trap_as_the_step_allows(acting: Any) -> None:
     """The residual of the energy shrinks as the square of the step; momentum closes to rounding."""
     residuals = []
@@ -104,15 +105,14 @@ def test_the_ledger_closes_in_a_trap_as_the_step_allows(acting: Any) -> None:
 
 
 def test_an_event_in_a_step_is_as_if_the_step_had_been_cut_there() -> None:
-    """One ion that gains a photon each now and then: the same path with steps long and short.
+    """Ions that are met now and then: the same paths with steps long and short.
 
-    The clock counts from the start, so the photons come at the same times.
+    The clock counts from the start, so the collisions come at the same times.
     """
-    light = LIGHT.model_copy(update={"saturation": 1e-3})
     found = []
     for step in (5e-8, 1.7e-6, 2e-5):
         particles = ions(np.zeros((20, 3)), (10.0, 0.0, 0.0))
-        moving = loop(particles, 2e-5, step, fields=[PUSH], processes=[light])
+        moving = loop(particles, 2e-5, step, fields=[PUSH], processes=[HELIUM])
         to_end(moving)
         assert moving.exchanged[0, 7] > 30
         found.append((moving.exchanged, particles.position.copy(), particles.velocity.copy()))
@@ -155,16 +155,14 @@ def test_clocks_follow_from_ids_and_not_from_who_else_is_there() -> None:
 
 def test_a_step_with_countless_events_ends_in_words() -> None:
     dense = GAS.model_copy(update={"pressure": 1e9})
-    with pytest.raises(
-        StepError, match="charge 0 would be met by a process more than 100000 times"
-    ):
+    with pytest.raises(StepError, match="would be met by a process more than 100000 times"):
         to_end(loop(cloud(), 1e-5, 1e-5, processes=[dense]))
 
 
 @pytest.mark.parametrize("many", [False, True], ids=["few", "many"])
 def test_ions_lost_to_gas_leave_the_sums_as_they_left_the_cloud(many: bool) -> None:
     """Charge, count, energy and momentum of those neutralised, with the energy of their pairs."""
-    gas = HELIUM.model_copy(update={"loss": 0.5, "pressure": 20.0})
+    gas = HELIUM.model_copy(update={"loss": 0.5, "pressure": 4.0})
     particles = cloud(17000 if many else 40)
     moving = loop(
         particles,

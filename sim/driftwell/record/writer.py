@@ -127,17 +127,20 @@ class RunWriter:
             with suppress(OSError):  # it is known by its time, and harms nothing
                 (self.folder / LAST_FILE).unlink(missing_ok=True)
 
-    def ledger(self, row: NDArray[Any] | np.void) -> None:
-        """Record a row of the ledger (or several), of the layout's type."""
+    def ledger(self, row: NDArray[Any] | np.void, given: ArrayLike | None = None) -> None:
+        """Record a row of the ledger (or several), of the layout's type.
+
+        given : (processes, 8) what each process has given by then; left out: nothing
+        """
         found = np.atleast_1d(row)
+        exchange = np.zeros((found.size, len(self.header.processes), 8))
+        if given is not None:
+            exchange[:] = given
         self._pending.add("ledger", found)
+        self._pending.add("exchange", exchange)
         if found.size:
             times = found["time"]
             self._pending.reaches(float(times.min()), float(times.max()))
-
-    def exchange(self, given: ArrayLike) -> None:
-        """Record what each process has given, (processes, 8), beside a row of the ledger."""
-        self._pending.add("exchange", np.asarray(given, np.float64)[np.newaxis])
 
     def losses(self, rows: NDArray[Any]) -> None:
         """Record charges lost, rows of the layout's type."""

@@ -12,7 +12,7 @@ from matplotlib.ticker import FixedLocator, FuncFormatter, NullLocator
 from numpy.typing import NDArray
 
 from driftwell.constants import ELEMENTARY_CHARGE
-from driftwell.report.palette import BLACK, BLUE, GREEN, INK, ORANGE, PURPLE, SKY, VERMILLION
+from driftwell.report.palette import BLACK, BLUE, GREEN, INK, ORANGE, PALE, PURPLE, SKY, VERMILLION
 from driftwell.report.panel import put_up
 from driftwell.report.ruler import Ruler, interval, ruler
 from driftwell.report.scene import Scene
@@ -37,7 +37,7 @@ ENERGIES = (
     ("work of drives", "work_drive", PURPLE, NARROW),
     ("work of induction", "work_induced", ORANGE, NARROW),
     ("taken by walls", "energy_walls", BLACK, NARROW),
-    ("given by processes", "energy_processes", INK, NARROW),
+    ("given by processes", "energy_processes", PALE, NARROW),
 )
 ROUNDING = 1e-16
 """Where the axis of residuals begins if all of them are zero."""

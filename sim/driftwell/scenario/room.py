@@ -28,6 +28,8 @@ PER_CHARGE = 700
 """Bytes of each charge: its state, the loop's work space, two copies for the record."""
 PER_SURFACE = 50
 """Bytes of each charge for each wall and detector."""
+PER_PROCESS, STATE_PROCESS = 50, 16
+"""Bytes of each charge for each process, in memory and on the disk: its clock."""
 PER_TRACKED = 220
 """Bytes of each tracked charge while a segment is made."""
 PER_MARK = 100
@@ -53,7 +55,7 @@ class Extent:
 
     surfaces : walls, detectors, and one for all electrodes; detectors : those among them
     images : bytes that sums over images take; cell : whether everything repeats
-    births : charges, of all, that are born on the way
+    births : charges, of all, that are born on the way; processes : what else acts
     """
 
     charges: int
@@ -69,6 +71,7 @@ class Extent:
     images: int = 0
     births: int = 0
     cell: bool = False
+    processes: int = 0
 
     def memory(self) -> int:
         """Bytes of memory at the busiest time, within a third."""
@@ -80,6 +83,7 @@ class Extent:
             + sums
             + self.images
             + self.charges * (PER_CHARGE + self.surfaces * PER_SURFACE)
+            + self.charges * self.processes * PER_PROCESS
             + self.tracked * PER_TRACKED
             + (self.records + self.samples) * PER_MARK
             + 3 * (moments + traces)
@@ -90,7 +94,7 @@ class Extent:
         return (
             self.records * (8 + self.tracked * 48)
             + self.records * self.clouds * dtype("moments").itemsize
-            + (self.records + self.snapshots) * dtype("ledger").itemsize
+            + (self.records + self.snapshots) * (dtype("ledger").itemsize + 64 * self.processes)
             + self.samples * (self.traces + 1) * 8
             + self.snapshots * (self.charges * SNAPSHOT + SNAPSHOT_BASE)
             + self.births * dtype("births").itemsize
@@ -98,7 +102,8 @@ class Extent:
 
     def state(self) -> int:
         """Bytes of the state that ends each segment, while no charge is lost."""
-        return self.charges * (STATE + self.surfaces * STATE_SURFACE)
+        clocks = self.processes * STATE_PROCESS
+        return self.charges * (STATE + self.surfaces * STATE_SURFACE + clocks)
 
     def segments(self, seconds: float = 0.0) -> int:
         """Segments of a run that lasts so many seconds by the clock; 0 s: as few as can be."""
@@ -145,6 +150,7 @@ def extent_of(
         images=0 if scenario.images is None else scenario.images.room_in_bytes(charges),
         births=births,
         cell=scenario.cell is not None,
+        processes=len(scenario.process),
     )
 
 
