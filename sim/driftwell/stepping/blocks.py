@@ -73,6 +73,17 @@ def put_six(
 
 
 @inner_kernel
+def add_six(sums: tuple[float, float, float, float, float, float], k: int, row: np.ndarray) -> None:
+    """Add six sums to a block's row, from entry `k` on."""
+    row[k] += sums[0]
+    row[k + 1] += sums[1]
+    row[k + 2] += sums[2]
+    row[k + 3] += sums[3]
+    row[k + 4] += sums[4]
+    row[k + 5] += sums[5]
+
+
+@inner_kernel
 def unsigned(i: int) -> Any:
     """`i` without a sign: loops need not ask at each charge whether it counts from the end."""
     return np.uint64(i)

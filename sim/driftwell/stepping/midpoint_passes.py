@@ -11,6 +11,7 @@ from __future__ import annotations
 from typing import Any
 
 import numba
+import numpy as np
 from numba import prange
 
 from driftwell.fields.table import FieldTable
@@ -29,8 +30,9 @@ from driftwell.stepping.blocks import (
     INDUCED,
     MANY,
     POWER,
+    SUMS,
+    add_six,
     added,
-    put_six,
     signed,
     six_added,
     unsigned,
@@ -64,6 +66,8 @@ from driftwell.stepping.passes import (
 from driftwell.walls.table import SurfaceTable
 
 _TO_MIDDLE, _THROUGH, _WHOLE = 16, 17, 18
+STRETCH = 512
+"""Charges that a step's parts take in turn: what it keeps of them stays in the nearest cache."""
 
 
 def midpoint_passes_over(
@@ -167,84 +171,80 @@ def _block(
     """One block's part of a pass; its sums into its row."""
     start = b * BLOCK
     end = min(start + BLOCK, charges.charge.size)
-    first, last = unsigned(start), unsigned(end)
     row = work.block_sums[b]
-    changing = work.cursor[CURSOR_INDUCED] != 0
-    pushed = fields.electric.kind.size > 0 or changing
-    before = what in (_TO_MIDDLE, _WHOLE)
-    if before and (asked or changing):
-        keep_start(charges, work, start, end)
-    if before:
-        half_drift(charges.position, charges.velocity, plan.light2, h, start, end)
-        t += 0.5 * h
-    if what == TAKE or (before and pushed):
-        take = asked if what == TAKE else changing
-        row[POWER], row[ENERGY], force = external_forces(
-            fields, charges, t, inside, take, work, first, last
-        )
-        put_six(force, FORCE, row)
-    elif before:
-        row[POWER] = 0.0
-        put_six((0.0, 0.0, 0.0, 0.0, 0.0, 0.0), FORCE, row)
-    if what == _WHOLE:
-        _through(plan, fields, charges, work, False, pushed, changing, h, t, inside, start, end, b)
-    elif what == _THROUGH:
-        middle = t + 0.5 * h
-        _through(
-            plan, fields, charges, work, True, pushed, changing, h, middle, inside, start, end, b
-        )
-    elif what == CROSS:
-        row[CROSSED] = crossed(surfaces, charges, work, first, last)
+    if what == CROSS:
+        row[CROSSED] = crossed(surfaces, charges, work, unsigned(start), unsigned(end))
         if bodies.whole.shape[0] > 0:
-            row[CROSSED] += near_bodies(plan, bodies, charges, h, work, first, last)
-    elif what == PUSH_APART:
-        kick(charges, work.coulomb, h, first, last)
+            row[CROSSED] += near_bodies(
+                plan, bodies, charges, h, work, unsigned(start), unsigned(end)
+            )
+        return
+    if what == PUSH_APART:
+        kick(charges, work.coulomb, h, unsigned(start), unsigned(end))
+        return
+    for k in range(AFTER if what == _THROUGH else 0, SUMS):
+        row[k] = 0.0
+    for first in range(start, end, STRETCH):
+        last = min(first + STRETCH, end)
+        _stretch(plan, fields, charges, work, what, asked, h, t, inside, first, last, row)
 
 
-@outer_kernel
-def _through(
+@inner_kernel
+def _stretch(
     plan: Plan,
     fields: Fields,
     charges: Charges,
     work: Work,
-    together: bool,
-    pushed: bool,
-    changing: bool,
+    what: int,
+    asked: bool,
     h: float,
-    middle: float,
+    t: float,
     inside: float,
     first: int,
     last: int,
-    b: int,
+    row: np.ndarray,
 ) -> None:
-    """Change momenta by all that acts at the time `middle`, and drift; sums into row `b`."""
-    row = work.block_sums[b]
-    acting = 0
-    if pushed:
-        acting |= EXTERNAL
-    if together:
-        acting |= COULOMB
-    magnet = uniform_magnetic(fields, middle, inside)
-    if fields.magnetic.kind.size > 0:
-        acting |= SHAPED
-        shaped_magnetic(
-            fields, charges, middle, inside, work.spare, unsigned(first), unsigned(last)
+    """A part of a block; its sums are added to the row."""
+    changing = work.cursor[CURSOR_INDUCED] != 0
+    pushed = fields.electric.kind.size > 0 or changing
+    if what in (_TO_MIDDLE, _WHOLE):
+        if asked or changing:
+            keep_start(charges, work, first, last)
+        half_drift(charges.position, charges.velocity, plan.light2, h, first, last)
+    middle = t if what == TAKE else t + 0.5 * h
+    if what == TAKE or (pushed and what != _THROUGH):
+        take = asked if what == TAKE else changing
+        power, energy, force = external_forces(
+            fields, charges, middle, inside, take, work, unsigned(first), unsigned(last)
         )
-    given = turn_and_drift(
-        charges,
-        work.external,
-        work.coulomb,
-        work.spare,
-        acting,
-        magnet,
-        plan.light2,
-        h,
-        first,
-        last,
-    )
-    put_six(given, AFTER, row)
-    if changing:
-        row[INDUCED] = induced_work_done(plan, charges, work, h, first, last)
+        row[POWER] += power
+        row[ENERGY] += energy
+        add_six(force, FORCE, row)
+    if what in (_THROUGH, _WHOLE):
+        acting = EXTERNAL if pushed else 0
+        if what == _THROUGH:
+            acting |= COULOMB
+        magnet = uniform_magnetic(fields, middle, inside)
+        if fields.magnetic.kind.size > 0:
+            acting |= SHAPED
+            shaped_magnetic(
+                fields, charges, middle, inside, work.spare, unsigned(first), unsigned(last)
+            )
+        given = turn_and_drift(
+            charges,
+            work.external,
+            work.coulomb,
+            work.spare,
+            acting,
+            magnet,
+            plan.light2,
+            h,
+            first,
+            last,
+        )
+        add_six(given, AFTER, row)
+        if changing:
+            row[INDUCED] += induced_work_done(plan, charges, work, h, first, last)
 
 
 @kernel

@@ -39,6 +39,7 @@ from driftwell.kernels.lanes import (
     larger,
     picked_above,
     put_some,
+    root,
     some,
     total,
 )
@@ -160,13 +161,19 @@ def _turn_eight(
     count: int,
 ) -> tuple[LanesType, LanesType, LanesType, LanesType, LanesType, LanesType]:
     """Eight charges, or the `count` last; what magnets gave them, and its moments."""
-    per_light2 = lanes(1.0 / light2)
-    one, zero = lanes(1.0), lanes(0.0)
-    half = lanes(0.5 * h) * some(charges.charge_to_mass[0], i, count)
+    per_light2, one, minus = lanes(1.0 / light2), lanes(1.0), lanes(-0.0)
+    half_step = lanes(0.5 * h)
+    half = half_step * some(charges.charge_to_mass[0], i, count)
     ux = some(charges.velocity[0], i, count)
     uy = some(charges.velocity[1], i, count)
     uz = some(charges.velocity[2], i, count)
-    ex, ey, ez = zero, zero, zero
+    bx, by, bz = lanes(magnet[0]), lanes(magnet[1]), lanes(magnet[2])
+    if acting & SHAPED != 0:
+        bx = bx + some(shaped[0], i, count)
+        by = by + some(shaped[1], i, count)
+        bz = bz + some(shaped[2], i, count)
+    bx, by, bz = half * bx, half * by, half * bz
+    ex, ey, ez = lanes(0.0), lanes(0.0), lanes(0.0)
     if acting & EXTERNAL != 0:
         ex = some(external[0], i, count)
         ey = some(external[1], i, count)
@@ -175,52 +182,46 @@ def _turn_eight(
         ex = ex + some(coulomb[0], i, count)
         ey = ey + some(coulomb[1], i, count)
         ez = ez + some(coulomb[2], i, count)
-    bx, by, bz = lanes(magnet[0]), lanes(magnet[1]), lanes(magnet[2])
-    if acting & SHAPED != 0:
-        bx = bx + some(shaped[0], i, count)
-        by = by + some(shaped[1], i, count)
-        bz = bz + some(shaped[2], i, count)
     ex, ey, ez = half * ex, half * ey, half * ez
-    bx, by, bz = half * bx, half * by, half * bz
     ux, uy, uz = ux + ex, uy + ey, uz + ez
-    u2 = fused(ux, ux, fused(uy, uy, uz * uz))
     b2 = fused(bx, bx, fused(by, by, bz * bz))
     along = fused(ux, bx, fused(uy, by, uz * bz))
-    # 1/g^2 of (1), of its two forms the one without cancellation
-    s = fused(u2, per_light2, one) - b2
+    s = fused(fused(ux, ux, fused(uy, uy, uz * uz)), per_light2, one) - b2
     star = fused(along, along * per_light2, b2)
     square = fused(s, s, lanes(4.0) * star)
-    root = square * inverse_root(square) + larger(s, zero - s)
-    inverse2 = picked_above(s, zero, lanes(2.0), root) / picked_above(s, zero, root, star + star)
-    inverse = inverse2 * inverse_root(inverse2)
+    # 1/g^2 of (1) is above / below, of its two forms the one without cancellation
+    root = root(square) + larger(s, minus - s)
+    above = picked_above(s, minus, lanes(2.0), root)
+    below = picked_above(s, minus, root, star + star)
+    inverse = above / root(above * below)
+    twice = (below + below) / fused(b2, above, below)  # 2 / (1 + t^2)
     tx, ty, tz = bx * inverse, by * inverse, bz * inverse
-    cx = fused(uy, tz, zero - uz * ty)
-    cy = fused(uz, tx, zero - ux * tz)
-    cz = fused(ux, ty, zero - uy * tx)
-    vx, vy, vz = ux + cx, uy + cy, uz + cz
-    twice = lanes(2.0) / fused(b2, inverse2, one)
-    dx = twice * fused(vy, tz, zero - vz * ty)
-    dy = twice * fused(vz, tx, zero - vx * tz)
-    dz = twice * fused(vx, ty, zero - vy * tx)
+    vx = ux + fused(uy, tz, minus - uz * ty)
+    vy = uy + fused(uz, tx, minus - ux * tz)
+    vz = uz + fused(ux, ty, minus - uy * tx)
+    tx, ty, tz = twice * tx, twice * ty, twice * tz
+    dx = fused(vy, tz, minus - vz * ty)
+    dy = fused(vz, tx, minus - vx * tz)
+    dz = fused(vx, ty, minus - vy * tx)
     ux, uy, uz = ux + dx + ex, uy + dy + ey, uz + dz + ez
     put_some(charges.velocity[0], i, count, ux)
     put_some(charges.velocity[1], i, count, uy)
     put_some(charges.velocity[2], i, count, uz)
-    m = some(charges.mass, i, count)
-    dx, dy, dz = m * dx, m * dy, m * dz
+    way = fused(fused(ux, ux, fused(uy, uy, uz * uz)), per_light2, one)
+    way = half_step / root(way)
     x = some(charges.position[0], i, count)
     y = some(charges.position[1], i, count)
     z = some(charges.position[2], i, count)
-    way = fused(fused(ux, ux, fused(uy, uy, uz * uz)), per_light2, one)
-    way = lanes(0.5 * h) * inverse_root(way)
     put_some(charges.position[0], i, count, fused(way, ux, x))
     put_some(charges.position[1], i, count, fused(way, uy, y))
     put_some(charges.position[2], i, count, fused(way, uz, z))
+    m = some(charges.mass, i, count)
+    dx, dy, dz = m * dx, m * dy, m * dz
     return (
         dx,
         dy,
         dz,
-        fused(y, dz, zero - z * dy),
-        fused(z, dx, zero - x * dz),
-        fused(x, dy, zero - y * dx),
+        fused(y, dz, minus - z * dy),
+        fused(z, dx, minus - x * dz),
+        fused(x, dy, minus - y * dx),
     )
