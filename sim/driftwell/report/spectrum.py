@@ -36,8 +36,12 @@ MOST_TRACES = 4
 MOST_SAMPLES = 1 << 16
 """Longer traces are drawn without their lines: finding these would take long."""
 MARKED = 4
+PADDED = 4
+"""Points of the spectrum in a bin, so that lines have their shape."""
 ROOM = 0.16
 """Part of the axis that the name of a line takes."""
+FAINT, BEYOND = 1e-3, 1.5
+"""The axis ends so many times beyond the last frequency at which this part of the top stands."""
 DECADES = 6.0
 """How far below the highest point the axis reaches at most."""
 POINTS = 4000
@@ -71,6 +75,7 @@ def spectrum_picture(scene: Scene) -> Figure | None:
 def traced_motions(run: Run) -> list[tuple[str, Floats, Floats]]:
     """Names, times (s) and values (m) of the traced coordinates, as long as they were followed.
 
+    Those of the centres of clouds come first, then those of single charges.
     Times are empty where too little was followed, or it did not move.
     """
     if not run.header.traces:
@@ -85,24 +90,27 @@ def traced_motions(run: Run) -> list[tuple[str, Floats, Floats]]:
         moving = last - first >= LEAST_SAMPLES and np.ptp(value[first:last]) > 0.0
         part = slice(first, last) if moving else slice(0, 0)
         found.append((name, time[part], np.ascontiguousarray(value[part])))
-    return found
+    return sorted(found, key=lambda trace: trace[0].split()[-2:-1] != ["centre"])
 
 
 def spectrum(time: Floats, value: Floats) -> tuple[Floats, Floats]:
     """Frequencies above 0, Hz, and amplitudes in the unit of the values, eq. 1."""
     count = time.size
     window = 0.5 - 0.5 * np.cos(2.0 * math.pi * (np.arange(count) + 0.5) / count)
-    magnitude = np.abs(np.fft.rfft((value - value.mean()) * window))
+    magnitude = np.abs(np.fft.rfft((value - value.mean()) * window, PADDED * count))
     spacing = float(time[-1] - time[0]) / (count - 1)
-    frequency = np.arange(magnitude.size) / (count * spacing)
+    frequency = np.arange(magnitude.size) / (PADDED * count * spacing)
     return frequency[1:], 2.0 * magnitude[1:] / float(window.sum())
 
 
 def put_spectrum(axes: Axes, time: Floats, value: Floats) -> None:
     """Fill a panel with the spectrum of one motion and its strongest lines."""
     frequency, amplitude = spectrum(time, value)
-    across = ruler((0.0, float(frequency[-1])), "Hz")
     top = float(amplitude.max())
+    highest = float(frequency[amplitude >= FAINT * top][-1])
+    across = ruler((0.0, min(BEYOND * highest, float(frequency[-1]))), "Hz")
+    shown = frequency <= across.high
+    frequency, amplitude = frequency[shown], amplitude[shown]
     low = max(top * 10.0**-DECADES, float(np.median(amplitude)) / 30.0, 1e-300)
     up = ruler((low, 4.0 * top), "m", prefix_size(top))
     every = max(1, -(-frequency.size // POINTS))
@@ -118,7 +126,12 @@ def put_spectrum(axes: Axes, time: Floats, value: Floats) -> None:
     axes.set_ylabel(up.label("amplitude"))
     put_decades(axes, (1.0,))
     put_across(axes, across, "frequency")
-    put_lines(axes, [line for line in _lines(time, value) if line.amplitude > low], across, up)
+    lines = [
+        line
+        for line in _lines(time, value)
+        if line.amplitude > low and line.frequency <= across.high
+    ]
+    put_lines(axes, lines, across, up)
 
 
 def put_lines(axes: Axes, lines: Sequence[Line], across: Ruler, up: Ruler) -> None:
