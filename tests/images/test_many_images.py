@@ -167,32 +167,39 @@ def test_the_tree_gives_the_same_field_at_the_first_so_many_charges_alone() -> N
     assert whole[:, :m].tobytes() == some.tobytes()
 
 
-@pytest.mark.usefixtures("by_tree")
 @pytest.mark.parametrize("kind", ["plane", "gap"])
-def test_accounts_of_many_charges_close_to_the_accuracy_of_the_tree(kind: str) -> None:
-    """Energy to a tenth of it, momentum to rounding, with charges lost on the conductors."""
-    random = np.random.default_rng(3)
+def test_accounts_close_as_well_where_the_tree_sums_the_images(
+    kind: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Momentum to rounding, energy as with each image by itself to a tenth of the accuracy; with
+    charges lost on the conductors."""
     side, blur = 3e-4, 4e-6
-    start = ions(
-        random.uniform(-side, side, (N, 3)), random.normal(0.0, 150.0, (N, 3)), weight=300.0
-    )
     foot, up = np.array([0.0, 0.0, -side]), np.array([0.0, 0.0, 1.0])
-    images: Images = GapImages(foot, up, 2.0 * side, blur, blur, fineness(1e-3))
-    if kind == "plane":
-        images = plane_images(foot, up, blur, blur, fineness(1e-3))
-    moving = loop(
-        start,
-        4e-7,
-        1e-8,
-        coulomb=Coulomb(method="tree", accuracy=1e-3, softening=f"{blur} m"),
-        records=[2e-7],
-        images=images,
-        walls=[wall("box", size=["3 mm", "3 mm", "0.6 mm"])],
-    )
-    for row in accounts(moving):
+    left = []
+    for border in (10 * N, N // 2):
+        monkeypatch.setattr(gap_sum, "BY_TREE", border)
+        monkeypatch.setattr(mirror_sum, "BY_TREE", border)
+        random = np.random.default_rng(3)
+        start = ions(
+            random.uniform(-side, side, (N, 3)), random.normal(0.0, 150.0, (N, 3)), weight=300.0
+        )
+        images: Images = GapImages(foot, up, 2.0 * side, blur, blur, fineness(1e-3))
+        if kind == "plane":
+            images = plane_images(foot, up, blur, blur, fineness(1e-3))
+        moving = loop(
+            start,
+            2e-7,
+            1e-8,
+            coulomb=Coulomb(method="direct", softening=f"{blur} m"),
+            images=images,
+            walls=[wall("box", size=["3 mm", "3 mm", "0.6 mm"])],
+        )
+        row = accounts(moving)[-1]
         assert row.momentum_residual <= 2e-13
         assert row.angular_residual <= 2e-13
-        assert row.third_law_residual <= 1e-12
-        assert abs(row.energy_residual) <= 1e-4
-    assert 0.0 < row.count_lost
-    assert abs(row.image) > 1e-3 * row.kinetic
+        assert abs(row.energy_residual) <= 2e-3
+        assert 0.0 < row.count_lost
+        assert abs(row.image) > row.kinetic
+        left.append(row.energy_residual)
+    assert left[0] == pytest.approx(left[1], abs=1e-4)
+    assert left[0] != left[1]

@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.forms import Form, Length, NonNegative, key, or_word
-from driftwell.images.image_sum import Asked, Images
+from driftwell.images.image_sum import BY_TREE, Asked, Images
 
 if TYPE_CHECKING:
     Closest = float | str
@@ -20,6 +20,8 @@ else:
 _RESOLVED = 0.3
 """rad, the most that steps turn an oscillation by and still follow it well."""
 _STEPS, _SHARE = 2.0, 0.02
+TREE_BYTES = 600
+"""A charge, or a mirrored one, takes in the tree's work space, at the most."""
 
 
 class ImagesForm(Form):
@@ -49,6 +51,9 @@ class ClosedForm(ImagesForm):
 class MirrorForm(ClosedForm):
     """Base of the kinds whose force grows without bound towards the conductor."""
 
+    mirrors: ClassVar[int] = 0
+    """Planes whose images the tree sums where charges are many."""
+
     closest: Closest = key(
         "distance c from the conductor within which the force stops growing; it errs by "
         '1.5 (c/d)^2 at the distance d; "auto": what the step can follow. It is never taken less '
@@ -56,6 +61,10 @@ class MirrorForm(ClosedForm):
         default="auto",
         example="10 nm",
     )
+
+    def room_in_bytes(self, n: int) -> int:
+        many = n >= BY_TREE and self.mirrors > 0
+        return 64 * n + many * (self.mirrors + 1) * TREE_BYTES * n
 
     def blur(self, asked: Asked) -> float:
         """The length s, m, that the images' law is softened with: 2 c, and no less than e."""

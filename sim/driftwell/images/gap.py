@@ -9,12 +9,14 @@ from numpy.typing import NDArray
 
 from driftwell.forms import Direction, Length, Point, Positive, key
 from driftwell.images.form import MirrorForm
-from driftwell.images.gap_sum import GapImages
+from driftwell.images.gap_sum import FAR_BYTES, GapImages
 from driftwell.images.image_sum import Asked, Images
 
 
 class PlatesImages(MirrorForm):
     """Two endless parallel conducting planes at fixed voltages; the charges are between them."""
+
+    mirrors = 2
 
     kind: Literal["gap"]
     at: Point = key("a point of the first plane", example=["0 mm", "0 mm", "-2 mm"])
@@ -37,6 +39,9 @@ class PlatesImages(MirrorForm):
             asked.softening,
             asked.fineness,
         )
+
+    def room_in_bytes(self, n: int) -> int:
+        return FAR_BYTES + super().room_in_bytes(n)
 
     def words(self) -> str:
         place = ", ".join(f"{each * 1e3:.6g}" for each in self.at)

@@ -18,7 +18,7 @@ from driftwell.images.gap_far import WIDEST, far_table
 from driftwell.images.gap_frame import HEAD, frame_of, height
 from driftwell.images.gap_many import far_room, gap_many_sum, gap_tree_sum
 from driftwell.images.gap_pair import NEAR, far_pair, near_pair, pair_table
-from driftwell.images.image_sum import SIGNATURE, Fineness, ImageSum
+from driftwell.images.image_sum import BY_TREE, SIGNATURE, Fineness, ImageSum
 from driftwell.images.mirror_sum import weakened
 from driftwell.images.mirror_tree import mirrored_room
 from driftwell.kernels import inner_kernel, kernel, outer_kernel, threaded_kernel
@@ -27,8 +27,10 @@ from driftwell.kernels.pointers import CompiledFunction
 
 Floats = NDArray[np.float64]
 
-BY_GRID, BY_TREE = 400, 8_000
-"""From so many charges on farther images are summed over a grid, and nearest ones by the tree."""
+FAR_BYTES = 25_000_000
+"""Of the tables and grids of farther images, while they are made."""
+BY_GRID = 128
+"""From so many charges on farther images are summed over a grid."""
 _THREADED = 32
 _BEYOND = 0.5
 """How far beyond a plate heights are followed, in gaps."""

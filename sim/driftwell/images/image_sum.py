@@ -32,6 +32,8 @@ SIGNATURE = (
 """(position (3, n), charge (n,), 1/(4 pi eps0), table, work, out_image (4, n))."""
 THREADED = 512
 """From this many charges on threads pay for their start."""
+BY_TREE = 4_000
+"""From this many charges on the tree sums images in planes faster than each by itself."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -36,7 +36,7 @@ from numba import prange
 from numpy.typing import NDArray
 
 from driftwell.forms import spelled
-from driftwell.images.image_sum import SIGNATURE, THREADED, Fineness, ImageSum
+from driftwell.images.image_sum import BY_TREE, SIGNATURE, THREADED, Fineness, ImageSum
 from driftwell.images.mirror_tree import mirrored_room, plane_tree_sum
 from driftwell.kernels import inner_kernel, kernel, threaded_kernel
 from driftwell.kernels.cache_lines import room
@@ -54,8 +54,6 @@ from driftwell.kernels.pointers import CompiledFunction
 Floats = NDArray[np.float64]
 
 PLANE, SPHERE = 0, 1
-BY_TREE = 12_000
-"""From this many charges on the tree sums faster, before a plane."""
 _NEAR, _MANY = 8.0, 0.1
 """Distance in lengths c = s/2 from which on forces are right to 2 %; the share of charges nearer
 than that which is said."""

@@ -16,6 +16,8 @@ from driftwell.images.mirror_sum import plane_images
 class PlaneImages(MirrorForm):
     """An endless conducting plane at a fixed voltage; the charges are where its normal points."""
 
+    mirrors = 1
+
     kind: Literal["plane"]
     at: Point = key("a point of the plane", example=["0 mm", "0 mm", "-2 mm"])
     normal: Direction = key(
