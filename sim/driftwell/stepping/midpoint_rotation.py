@@ -190,9 +190,9 @@ def _turn_eight(
     star = fused(along, along * per_light2, b2)
     square = fused(s, s, lanes(4.0) * star)
     # 1/g^2 of (1) is above / below, of its two forms the one without cancellation
-    root = root(square) + larger(s, minus - s)
-    above = picked_above(s, minus, lanes(2.0), root)
-    below = picked_above(s, minus, root, star + star)
+    both = root(square) + larger(s, minus - s)
+    above = picked_above(s, minus, lanes(2.0), both)
+    below = picked_above(s, minus, both, star + star)
     inverse = above / root(above * below)
     twice = (below + below) / fused(b2, above, below)  # 2 / (1 + t^2)
     tx, ty, tz = bx * inverse, by * inverse, bz * inverse
