@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
+from scipy.constants import atomic_mass, elementary_charge
 
 from driftwell.errors import ScenarioError
 from driftwell.record.reader import open_run
@@ -31,6 +32,13 @@ BATH = {
     "kind": "thermostat",
     "temperature": "300 K",
     "relaxation_time": "50 us",
+}
+SPRAY = {
+    "name": "gun",
+    "species": "ion",
+    "current": "100 e/ms",
+    "spacing": "even",
+    "emitter": {"kind": "point"},
 }
 ION = {"ion": {"mass": "100 u", "charge": "1 e"}, "other": {"mass": "4 u", "charge": "1 e"}}
 
@@ -74,7 +82,9 @@ def read(folder: Path, *processes: dict[str, Any], **sections: Any) -> Any:
             {"wall": [{"name": "bore", "kind": "cylinder", "radius": "1 cm"}]},
             "is the name of a [[wall]] already",
         ),
-        ([GAS | {"of": ["electron"]}], {}, "acts on no cloud"),
+        ([GAS | {"of": ["electron"]}], {}, "acts on no cloud and no source"),
+        ([GAS | {"of": ["gnu"]}], {"source": [SPRAY]}, 'did you mean "gun"?'),
+        ([DRAG, BATH], {"cloud": [], "source": [SPRAY]}, 'is drag on "gun" beside "air"'),
     ],
 )
 def test_what_does_not_fit_is_refused_in_words(
@@ -88,6 +98,28 @@ def test_what_does_not_fit_is_refused_in_words(
 def test_drags_on_different_clouds_and_a_gas_go_together(tmp_path: Path) -> None:
     named = DRAG | {"of": ["load"]}, BATH | {"of": ["other"]}, GAS
     assert 3 == len(read(tmp_path, *named).scenario.process)
+
+
+def test_a_stream_from_a_source_drifts_as_its_mobility_says(tmp_path: Path) -> None:
+    """From rest, x = K E (t - T + T exp(-t/T)), T = K m/q: 100 mm take 0.5 ms + 2.1 us.
+
+    They are born evenly, 5 us, 15 us, ... on; those of the first half arrive before the end.
+    """
+    found = carried_out(
+        tmp_path,
+        1e-3,
+        species=ION,
+        source=[SPRAY | {"weight": 1}],
+        field=[{"name": "drive", "kind": "uniform-electric", "strength": "100 V/m"}],
+        process=[DRAG | {"mobility": "2 m^2/(V s)", "of": ["gun"]}],
+        detector=[{"name": "end", "kind": "plane", "at": ["0 m", "0 m", "100 mm"]}],
+        coulomb={"method": "off"},
+        stepping={"step": "0.1 us"},
+        question=[{"name": "arrival", "ask": "arrival-time", "of": "end"}],
+    )
+    relaxation = 2.0 * 100 * atomic_mass / elementary_charge
+    assert 50 == found.rows("crossings").size
+    assert 0.75e-3 + relaxation == pytest.approx(found.answers[0].value, rel=1e-6, abs=0.0)
 
 
 def test_check_tells_of_processes_and_of_their_hazards(tmp_path: Path) -> None:

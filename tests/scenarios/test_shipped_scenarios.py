@@ -11,7 +11,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from scipy.constants import atomic_mass, elementary_charge, epsilon_0
+from scipy.constants import atomic_mass, elementary_charge, epsilon_0, proton_mass
 from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run, open_run
@@ -24,6 +24,26 @@ from tests.running import Unwatched
 FOLDER = Path(__file__).resolve().parents[2] / "scenarios"
 FILES = sorted(FOLDER.glob("*.toml"))
 
+OF_GUN = (
+    "current",
+    "perveance",
+    "energy at the anode",
+    '"radius at the anode, 90 %"',
+    "brightness",
+)
+OF_PLASMA = (
+    '"rotation, second half"',
+    "temperature along z",
+    '"radius, rms x"',
+    '"radius, rms z"',
+)
+OF_CRYSTAL = [
+    f"{which}, {what}"
+    for which in ("cooled", "guests")
+    for what in ("temperature along z", "size across", "size along")
+]
+"""Questions that average over a stretch of time."""
+
 SHORTER: dict[str, tuple[str, ...]] = {
     "beam-aperture": ("cloud.pulse.count=300",),
     "coulomb-crystal": (
@@ -32,11 +52,18 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.temperature along z, first half.over=["0 us", "50 us"]',
         'question.temperature along z, second half.over=["50 us", "100 us"]',
     ),
+    "droplet-spray": ("source.capillary.weight=5",),
     "diode-gap": ("cloud.pulse.count=50", "electrodes.field_accuracy=1e-3"),
     "einzel-lens": ("cloud.bunch.count=100", "electrodes.field_accuracy=1e-3"),
+    "electron-gun": (
+        "source.cathode.weight=6e6",
+        "duration=1.2 ns",
+        *(f'question.{name}.over=["0.8 ns", "1.2 ns"]' for name in OF_GUN),
+    ),
     "electron-pulse": ("cloud.pulse.count=300",),
     "exploding-ball": ("cloud.ball.count=500", "cloud.ball.weight=2000"),
     "force-law": (),
+    "gas-cooled-rods": ("cloud.load.count=50",),
     "hyperbolic-trap": ("cloud.load.count=10", "electrodes.field_accuracy=1e-4"),
     "ion-string": (
         "duration=100 us",
@@ -44,6 +71,7 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.across, y.over=["50 us", "100 us"]',
     ),
     "mirror-trap": ("cloud.bunch.count=10", "electrodes.field_accuracy=1e-4"),
+    "neutralised-beam": ("cloud.beam.count=200", "cloud.electrons.count=120"),
     "penning-trap": (
         "coulomb.method=off",
         "cloud.others.count=4",
@@ -51,6 +79,7 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question."others\' radius".over=["0.5 ms", "1 ms"]',
     ),
     "quadro-logarithmic": ("cloud.light.count=8", "cloud.heavy.count=8", "duration=100 us"),
+    "relativistic-bunch": ("cloud.bunch.count=300",),
     "rod-trap": (
         "cloud.load.count=40",
         "duration=100 us",
@@ -58,11 +87,23 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.size z, second half.over=["50 us", "100 us"]',
         'question.temperature z, second half.over=["50 us", "100 us"]',
     ),
+    "rotating-plasma": (
+        "cloud.plasma.count=100",
+        "cloud.plasma.shape.radius=42.84 um",
+        "duration=20 us",
+        *(f'question.{name}.over=["10 us", "20 us"]' for name in OF_PLASMA),
+    ),
     "round-rods": ("cloud.load.count=10", "electrodes.field_accuracy=2e-2"),
     "shaped-well": (
         "cloud.packet.count=8",
         "duration=100 us",
         "electrodes.field_accuracy=1e-4",
+    ),
+    "two-species-crystal": (
+        "duration=100 us",
+        "process.laser, far below the line.end=50 us",
+        "process.laser, near the line.start=50 us",
+        *(f'question."{name}".over=["50 us", "100 us"]' for name in OF_CRYSTAL),
     ),
 }
 """Settings that make each scenario short."""
@@ -288,3 +329,84 @@ def test_the_lens_the_mirrors_and_the_rods_hold_their_ions(runs: dict[str, Run])
     assert 1.0 == value(runs["einzel-lens"], "through the lens")
     assert 1.0 == value(runs["mirror-trap"], "held")
     assert 1.0 == value(runs["round-rods"], "held")
+
+
+def test_ions_cooled_by_helium_arrive_together_a_quarter_of_a_period_after_the_pulse(
+    runs: dict[str, Run],
+) -> None:
+    """phi = V (z^2 - r^2/2)/(2 d^2), 2 d^2 = z0^2 + r0^2/2: omega^2 = q V/(m d^2) on the axis.
+
+    L. S. Brown and G. Gabrielse, Rev. Mod. Phys. 58 (1986) 233; the gas is at 300 K.
+    """
+    found = runs["gas-cooled-rods"]
+    size2 = 0.5 * (0.1**2 + 0.5 * 4e-3**2)
+    omega = math.sqrt(elementary_charge * 1500 / (300 * atomic_mass * size2))
+    flight = value(found, "arrival, mean") - 400e-6
+    assert 0.5 * math.pi / omega == pytest.approx(flight, rel=1e-3, abs=0.0)
+    assert 1.0 == value(found, "part that arrives")
+    # the mean of ten relaxation times of 50 ions
+    assert 300 == pytest.approx(value(found, "temperature along z before ejection"), rel=0.1, abs=0)
+
+
+def test_droplets_spread_with_the_root_of_the_way(runs: dict[str, Run]) -> None:
+    """v = K E, lambda = I/v, E_r = lambda/(2 pi eps0 r), dr/dt = K E_r: r^2 = I L/(pi eps0 K E^2).
+
+    Mobility by Stokes and Davies's slip at 2 * 68 nm / 2 um, 1.08548. Where the stream ends at the
+    counter electrode nothing pushes back, so that it is a little narrower.
+    """
+    mobility = 40000 * elementary_charge * 1.08548 / (3 * math.pi * 18.1e-6 * 2e-6)
+    radius = math.sqrt(2e-9 * 9.95e-3 / (math.pi * epsilon_0 * mobility) / 2e5**2 + 0.1e-3**2)
+    found = value(runs["droplet-spray"], "radius of nine tenths of it") / math.sqrt(0.9)
+    assert 0.85 * radius < found < radius
+
+
+def test_a_fast_bunch_keeps_most_of_its_focus(runs: dict[str, Run]) -> None:
+    """beta gamma of 5 MeV is 10.738; the plain sum would make the spot 5.5 mm, none 0.17 mm."""
+    found = runs["relativistic-bunch"]
+    gamma = 1 + 5.0 / 0.51099895
+    expected = 0.1e-6 * math.sqrt(gamma**2 - 1)
+    start = value(found, "normalised emittance, x, at the start")
+    assert expected == pytest.approx(start, rel=0.03, abs=0.0)
+    assert 0.25e-3 < value(found, "spot on the screen, rms x") < 0.42e-3
+
+
+def test_a_plasma_keeps_rotation_and_density_in_balance(runs: dict[str, Run]) -> None:
+    """omega_p^2 = 2 omega (omega_c - omega): D. H. E. Dubin and T. M. O'Neil, Rev. Mod. Phys. 71
+    (1999) 87 (from memory).
+    """
+    found = runs["rotating-plasma"]
+    cyclotron = elementary_charge * 3 / (9.012 * atomic_mass) / (2 * math.pi)
+    rotation = -value(found, "rotation, second half")
+    assert 150e3 == pytest.approx(rotation, rel=0.03, abs=0.0)
+    expected = math.sqrt(2 * 150e3 * (cyclotron - 150e3))
+    assert expected == pytest.approx(value(found, "plasma frequency"), rel=0.05, abs=0.0)
+
+
+def test_electrons_take_part_of_the_growth_off_a_beam(runs: dict[str, Run]) -> None:
+    """Between the envelopes of 40 % and of all of its charge, R'' = f K/R + (4 e)^2/R^3, R = 2 rms.
+
+    M. Reiser, Theory and Design of Charged Particle Beams (1994), sec. 4.3 (from memory).
+    """
+    speed = math.sqrt(2 * 20e3 * elementary_charge / proton_mass)
+    strength = elementary_charge * 20.44e-12 / 0.02 / (2 * math.pi * epsilon_0)
+    strength /= proton_mass * speed**2
+
+    def width(part: float) -> float:
+        """rms size after 100 ns, m."""
+        found = solve_ivp(
+            lambda z, y: (y[1], part * strength / y[0] + 16e-12 / y[0] ** 3),
+            (0.0, speed * 100e-9),
+            (2e-3, 0.0),
+            rtol=1e-8,
+            atol=1e-12,
+        )
+        return 0.5 * float(found.y[0, -1])
+
+    # electrons gather in the middle, where they hold the beam together better
+    found = value(runs["neutralised-beam"], "beam, rms x, after 196 mm")
+    assert 0.85 * width(0.4) < found < 0.75 * width(1.0)
+
+
+def test_the_heavier_guests_sit_farther_out(runs: dict[str, Run]) -> None:
+    found = runs["two-species-crystal"]
+    assert value(found, "cooled, size across") < value(found, "guests, size across")

@@ -97,7 +97,7 @@ class ProcessForm(Form):
 
     name: Name = key("what the process is called in messages and results")
     of: tuple[Name, ...] | None = key(
-        "clouds and species it acts on, by name; left out: every charge",
+        "clouds, sources and species it acts on, by name; left out: every charge",
         default=None,
         example=["load"],
     )

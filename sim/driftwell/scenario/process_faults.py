@@ -26,18 +26,23 @@ def process_faults(scenario: Scenario) -> Iterator[Fault]:
         if process.start >= scenario.duration:
             whole = spelled(scenario.duration, "s")
             yield Fault(("process", i, "start"), "", f"lies not before the end of the run, {whole}")
-        clouds = [cloud for cloud in scenario.cloud if process.acts_on(cloud.name, cloud.species)]
-        if not clouds:
-            yield Fault(("process", i, "of"), "", "acts on no cloud: none is of that species")
-        names = dict.fromkeys(cloud.species for cloud in clouds)
+        groups = [
+            group
+            for group in (*scenario.cloud, *scenario.source)
+            if process.acts_on(group.name, group.species)
+        ]
+        if not groups:
+            text = "acts on no cloud and no source: none is of that species"
+            yield Fault(("process", i, "of"), "", text)
+        names = dict.fromkeys(group.species for group in groups)
         for fault in process.faults(tuple(known[name] for name in names)):
             yield Fault(("process", i, *fault.path), fault.found, fault.needed)
-        for cloud in clouds if process.is_continuous() else ():
-            if cloud.name in dragged:
+        for group in groups if process.is_continuous() else ():
+            if group.name in dragged:
                 text = (
-                    f'is drag on "{cloud.name}" beside "{dragged[cloud.name]}"; only one of '
-                    "mobility-drag, stokes-drag and thermostat may act on a cloud: join them in "
-                    "one, or name others with `of`"
+                    f'is drag on "{group.name}" beside "{dragged[group.name]}"; only one of '
+                    "mobility-drag, stokes-drag and thermostat may act on a cloud or source: join "
+                    "them in one, or name others with `of`"
                 )
                 yield Fault(("process", i, "kind"), f'"{process.name}"', text)
-            dragged[cloud.name] = process.name
+            dragged[group.name] = process.name

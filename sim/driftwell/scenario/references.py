@@ -122,17 +122,18 @@ def _unknown_species(data: Mapping[str, Any]) -> Iterator[Fault]:
 
 
 def _unknown_in_processes(data: Mapping[str, Any]) -> Iterator[Fault]:
-    """Clouds and species that processes act on."""
+    """Clouds, sources and species that processes act on."""
     declared = data.get("species")
     own = [str(name) for name in declared] if isinstance(declared, Mapping) else []
-    known = [*_names(data, "cloud"), *own, *BUILT_IN]
+    groups = [*_names(data, "cloud"), *_names(data, "source")]
+    known = [*groups, *own, *BUILT_IN]
     for i, entry in _entries(data, "process"):
         names = entry.get("of")
         for k, name in enumerate(names if isinstance(names, list) else []):
             if isinstance(name, str) and name not in known:
                 path = ("process", i, "of", k)
-                there = f"; {_there(_names(data, 'cloud'))}"
-                yield _unknown(path, name, "[[cloud]] and no species", known, there)
+                what = "[[cloud]], no [[source]] and no species"
+                yield _unknown(path, name, what, known, f"; {_there(groups)}")
 
 
 def _unknown_in_questions(data: Mapping[str, Any]) -> Iterator[Fault]:
