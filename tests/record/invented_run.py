@@ -123,6 +123,7 @@ def record_segment(
         writer.ledger(row)
     writer.losses(made["losses"])
     writer.crossings(made["crossings"])
+    writer.births(made["births"])
     writer.trace(made["trace/time"], made["trace/value"])
     for k, alive in enumerate(snapshots):
         particles = invented_particles(alive, seed + k)

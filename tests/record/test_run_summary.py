@@ -45,7 +45,7 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
         "energy            residual  2.00e-10 at the end, 3.00e-09 at most",
         "trajectory/state: 2 x 3 x 6, 288 bytes",
         "snapshots: 1",
-        "1 segment, 2",
+        "1 segment, 3",
         "held fraction  0.9700 ± 0.0040",
         "h5py",
         open_run(writer.folder).header.scenario_sha256,
