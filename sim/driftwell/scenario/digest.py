@@ -12,7 +12,10 @@ from driftwell.scenario.source import shown_path
 
 LATER = ("electrodes", "electrode", "images")
 """Sections left out where they are not used: scenarios from before keep their digests."""
-LATER_KEYS = (("coulomb", "frame", "auto"), ("coulomb", "share_frame", []))
+LATER_KEYS: tuple[tuple[str, str, object], ...] = (
+    ("coulomb", "frame", "auto"),
+    ("coulomb", "share_frame", []),
+)
 """Section, key and default of keys left out where they say nothing else, for the same reason."""
 
 
