@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 
 from bench_cases import sums
+from bench_cases.clouds import Floats
 from bench_cases.timing import side_by_side
 
 WIDTH = 0.05
@@ -17,7 +18,7 @@ ACCURACY = 1e-4
 COUNTS = ((2_000, "direct"), (16_384, "direct"), (100_000, "tree"), (1_000_000, "tree"))
 
 
-def beam(n: int) -> sums.Floats:
+def beam(n: int) -> Floats:
     """An even round beam, as long as the cell: places (3, n) in periods."""
     random = np.random.default_rng(5)
     r, turn = WIDTH * np.sqrt(random.random(n)), 2.0 * np.pi * random.random(n)
