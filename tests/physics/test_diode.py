@@ -1,8 +1,8 @@
 """Emission limited by space charge between two plates: Child's law, from below and from above.
 
-C. D. Child, Phys. Rev. 32 (1911) 492; I. Langmuir, Phys. Rev. 2 (1913) 450: between endless plates at the
-distance d and the voltage V flows at most J = (4 eps0/9) sqrt(2 q/m) V^1.5/d^2. From a disc of radius
-R it is more by about d/(4 R): Y. Y. Lau, Phys. Rev. Lett. 87 (2001) 278301 (from memory).
+C. D. Child, Phys. Rev. 32 (1911) 492; I. Langmuir, Phys. Rev. 2 (1913) 450: between endless plates
+at the distance d and the voltage V flows at most J = (4 eps0/9) sqrt(2 q/m) V^1.5/d^2. From a disc
+of radius R it is more by about d/(4 R): Y. Y. Lau, Phys. Rev. Lett. 87 (2001) 278301 (from memory).
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ RATIO = ELEMENTARY_CHARGE / ELECTRON_MASS
 DENSITY = 4.0 * ELECTRIC_CONSTANT / 9.0 * math.sqrt(2.0 * RATIO) * VOLTS**1.5 / GAP**2
 CHILD = DENSITY * math.pi * RADIUS**2
 TRANSIT = 3.0 * GAP / math.sqrt(2.0 * RATIO * VOLTS)
-COUNT = 300
+COUNT = 200
 """Simulated charges that the whole gap would hold by Child's law, 4/3 eps0 V/d A."""
 
 
@@ -56,7 +56,7 @@ def diode(folder: Path, supply: float) -> Run:
             plane | {"name": "cathode plane"},
             plane | {"name": "anode", "at": ["0 m", "0 m", quantity(GAP, "m")]},
         ],
-        coulomb={"method": "direct", "softening": "0.25 mm"},
+        coulomb={"method": "direct", "softening": "0.1 mm"},
         stepping={"step": quantity(TRANSIT / 60.0, "s")},
     )
 
@@ -72,16 +72,16 @@ def current(run: Run) -> float:
 def test_a_diode_passes_what_is_supplied_until_space_charge_limits_it(tmp_path: Path) -> None:
     """At a third of Child's current all is let go; at three times and six times the same flows.
 
-    With 300 charges in the gap and a softening of a twentieth of it, which by a model in one
-    dimension brings 14 % too much, on top of the 25 % for the disc.
+    With 200 charges in the gap and a softening of a fiftieth of it, which by a model in one
+    dimension brings 8 % too much, on top of the 25 % for the disc; 6 % for so few arrivals.
     """
     scarce, ample, abundant = (diode(tmp_path, supply) for supply in (0.3, 3.0, 6.0))
     due = 0.3 * CHILD * 2.2 * TRANSIT / ELEMENTARY_CHARGE
     weight = scarce.clouds["cathode"].weight
     assert scarce.clouds["cathode"].count == len(scarce.births())
-    assert due == 0.0 or abs(weight * len(scarce.births()) - due) < 3.0 * math.sqrt(due * weight)
+    assert abs(weight * len(scarce.births()) - due) < 3.0 * math.sqrt(due * weight)
     low, high = current(ample), current(abundant)
-    assert 0.0 < np.mean(ample.losses()["wall"] == 1) <= 1.0
-    assert 1.2 < low < 1.6
-    assert abs(high - low) < 0.15 * low
+    assert np.mean(ample.losses()["wall"] == 1) > 0.8
+    assert 1.1 < low < 1.4
+    assert abs(high - low) < 0.12 * low
     assert len(ample.births()) < 0.6 * ample.clouds["cathode"].count
