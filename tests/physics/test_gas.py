@@ -165,7 +165,7 @@ def test_exchange_of_charge_leaves_ions_of_the_gas() -> None:
     Ions of 1000 eV in a cold gas, of cross-section 1e-19 m^2: exp(-n sigma v t) go on, the rest
     have the gas's temperature.
     """
-    n, duration = 4000, 2e-6
+    n, duration = 16_000, 2e-6
     gas = nitrogen(
         collision={"kind": "hard-sphere", "cross_section": "1e-19 m^2"},
         exchange=1.0,
