@@ -43,6 +43,7 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
         "wölk 1: 100 barium, each standing for 2; 97 left, 3 lost on plate",
         "detector exit: 2 passages",
         "energy            residual  2.00e-10 at the end, 3.00e-09 at most",
+        "gås gave ",
         "trajectory/state: 2 x 3 x 6, 288 bytes",
         "snapshots: 1",
         "1 segment, 3",
