@@ -10,7 +10,7 @@ from driftwell.errors import ScenarioError
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.source import shown_path
 
-LATER = ("electrodes", "electrode", "images")
+LATER = ("electrodes", "electrode", "images", "process")
 """Sections left out where they are not used: scenarios from before keep their digests."""
 
 
