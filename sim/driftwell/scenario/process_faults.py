@@ -26,7 +26,11 @@ def process_faults(scenario: Scenario) -> Iterator[Fault]:
         if process.start >= scenario.duration:
             whole = spelled(scenario.duration, "s")
             yield Fault(("process", i, "start"), "", f"lies not before the end of the run, {whole}")
-        clouds = [cloud for cloud in scenario.cloud if process.acts_on(cloud.name, cloud.species)]
+        clouds = [
+            each
+            for each in (*scenario.cloud, *scenario.source)
+            if process.acts_on(each.name, each.species)
+        ]
         if not clouds:
             yield Fault(("process", i, "of"), "", "acts on no cloud: none is of that species")
         names = dict.fromkeys(cloud.species for cloud in clouds)

@@ -125,7 +125,7 @@ def _unknown_in_processes(data: Mapping[str, Any]) -> Iterator[Fault]:
     """Clouds and species that processes act on."""
     declared = data.get("species")
     own = [str(name) for name in declared] if isinstance(declared, Mapping) else []
-    known = [*_names(data, "cloud"), *own, *BUILT_IN]
+    known = [*_names(data, "cloud"), *_names(data, "source"), *own, *BUILT_IN]
     for i, entry in _entries(data, "process"):
         names = entry.get("of")
         for k, name in enumerate(names if isinstance(names, list) else []):
