@@ -25,9 +25,11 @@ from driftwell.particles.unborn import Unborn
 from driftwell.processes.form import ProcessForm
 from driftwell.processes.table import Acting, acting
 from driftwell.stepping.form import Stepping
-from driftwell.stepping.loop import Events, TimeLoop, Traced
+from driftwell.stepping.happenings import Events, Traced
+from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.motion import Fields
 from driftwell.stepping.schedule import BREAK, RECORD, TRACE, schedule
+from driftwell.stepping.surroundings import Surroundings
 from driftwell.walls.form import DetectorForm, WallForm
 from driftwell.walls.table import surface_table
 from tests.cases import BODIES
@@ -122,12 +124,14 @@ def loop(
         traced,
         threads,
         state,
-        images,
-        body_table(bodies),
-        unborn,
-        frames,
-        cell,
-        _acting(particles, processes, len(walls) + len(detectors) + len(bodies)),
+        Surroundings(
+            images,
+            body_table(bodies),
+            unborn,
+            frames,
+            cell,
+            _acting(particles, processes, len(walls) + len(detectors) + len(bodies)),
+        ),
     )
 
 

@@ -7,7 +7,18 @@ from typing import Any
 
 import numpy as np
 import pytest
-from recorded_by_hand import LOSS, MASS, Recorded, asked, facts, in_time, near, one_cloud, table
+from recorded_by_hand import (
+    BIRTH,
+    LOSS,
+    MASS,
+    Recorded,
+    asked,
+    facts,
+    in_time,
+    near,
+    one_cloud,
+    table,
+)
 from scipy import constants
 
 from driftwell.answers.moments import MomentsRow, moments_of
@@ -260,6 +271,17 @@ def test_lifetime_is_time_watched_over_losses() -> None:
     late = asked("lifetime", over=["0.3 ms", "1 ms"]).answer(recorded)
     assert near(5.7e-3) == late.value
     assert "1 of 9 charges lost" in late.note
+
+
+def test_charges_of_a_source_are_watched_from_their_birth() -> None:
+    """Born at 0, 0.2, 0.4 and 0.6 ms, the second lost at 0.5 ms: (1 + 0.3 + 0.6 + 0.4) ms."""
+    born = table(BIRTH, [(2e-4 * k, 10 + k, 0) for k in range(4)])
+    source = facts(count=50, first_id=10, emitted=True)
+    lost = table(LOSS, [(5e-4, 11, 0)])
+    recorded = Recorded({"load": source}, borne=born, lost=lost)
+    found = asked("lifetime").answer(recorded)
+    assert near(2.3e-3) == found.value
+    assert "1 of 4 charges lost" in found.note
 
 
 def test_a_loss_that_comes_late_is_told_not_to_be_exponential() -> None:

@@ -164,3 +164,16 @@ def test_a_charge_that_is_nowhere_makes_all_fields_no_number(method: str) -> Non
     place, charge = beam(130), np.ones(130)
     place[1, 3] = np.nan
     assert np.isnan(summed(place, charge, method).field).all()
+
+
+@pytest.mark.parametrize("axis", ["x", "y", "z"])
+def test_the_field_at_chosen_charges_is_that_of_the_direct_sum(axis: str) -> None:
+    """Which the tree is judged by; some chosen twice, and not whole vectors of them."""
+    place, charge = beam(90, "xyz".index(axis), 0.3), np.random.default_rng(6).normal(size=90)
+    which = np.array([3, 3, 88, 0, 41, 7, 9, 12, 60, 61, 62], dtype=np.int64)
+    cell = Cell(axis=axis, length=f"{PERIOD!r} m")
+    summation = Summation(Coulomb(method="tree"), 90, 1, cell=cell)
+    found = np.full((3, which.size), np.nan)
+    summation.sampled_field(which, place, charge, 1e-4, 1.0, found)
+    expected = summed(place, charge, axis=axis, softening=1e-2).field[:, which]
+    assert rms_error(expected, found) < 1e-11

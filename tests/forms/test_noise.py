@@ -9,9 +9,10 @@ import numpy as np
 import pytest
 from pydantic import TypeAdapter, ValidationError
 
+from driftwell.electrodes.form import Electrode
 from driftwell.errors import ScenarioError
 from driftwell.forms.noise import Noise, with_noise_drawn
-from driftwell.forms.waveform_table import waveform_table
+from driftwell.forms.waveform_table import PackedWaveform, waveform_table
 from driftwell.forms.waveforms import (
     ElectricFieldWave,
     RealWave,
@@ -25,6 +26,7 @@ from driftwell.forms.waveforms import (
 )
 from driftwell.kernels.waveform import waveform
 from driftwell.scenario.read import read_scenario
+from driftwell.solved.waves import courses
 from tests.cases import field
 from tests.running import points
 from tests.scenario.good_scenarios import toml_file
@@ -109,7 +111,8 @@ def test_seed_and_name_make_the_noise_and_nothing_else() -> None:
     assert plain is with_noise_drawn(plain, 5, "stray")
 
 
-def test_a_scenarios_seed_draws_the_noise_of_its_fields_and_electrodes(tmp_path: Any) -> None:
+def test_a_scenarios_seed_draws_the_noise_of_its_fields(tmp_path: Any) -> None:
+    """Each has its own, the same each time the file is read; with another seed another."""
     strength = {**FLAT, "density": "1e-9 V^2/m^2/Hz"}
     table = {
         "title": "stray fields",
@@ -119,31 +122,41 @@ def test_a_scenarios_seed_draws_the_noise_of_its_fields_and_electrodes(tmp_path:
         "field": [
             {"name": name, "kind": "uniform-electric", "strength": strength} for name in "ab"
         ],
-        "electrode": [
-            {
-                "name": name,
-                "voltage": FLAT,
-                "shape": [{"kind": "circle", "centre": ["5 mm", at], "radius": "0.5 mm"}],
-            }
-            for name, at in (("c", "2 mm"), ("d", "-2 mm"))
-        ],
     }
     path = tmp_path / "stray.toml"
     path.write_text(toml_file(table))
-    first = read_scenario(path).scenario
-    waves = [*(each.strength for each in first.field), *(each.voltage for each in first.electrode)]
-    packed = {packed_waveform(wave) for wave in waves}
-    assert 4 == len(packed)
-    assert packed == {
-        packed_waveform(wave)
-        for again in [read_scenario(path).scenario]
-        for wave in (
-            *(each.strength for each in again.field),
-            *(each.voltage for each in again.electrode),
-        )
-    }
-    other = read_scenario(path, ["seed=12"]).scenario
-    assert packed.isdisjoint(packed_waveform(each.strength) for each in other.field)
+
+    def waves(*settings: str) -> list[PackedWaveform]:
+        return [
+            packed_waveform(each.strength) for each in read_scenario(path, settings).scenario.field
+        ]
+
+    one, two = waves()
+    assert one != two
+    assert [one, two] == waves()
+    assert not {one, two} & set(waves("seed=12"))
+
+
+def test_electrodes_of_one_kind_of_noise_have_each_their_own() -> None:
+    """And so each a field of its own; the same constant part is one for all."""
+    drawn = [
+        with_noise_drawn(
+            Electrode.model_validate(
+                {
+                    "name": name,
+                    "voltage": FALLING,
+                    "shape": [{"kind": "circle", "centre": ["5 mm", "0 mm"], "radius": "1 mm"}],
+                }
+            ),
+            7,
+            name,
+        ).voltage
+        for name in ("left", "right")
+    ]
+    found = courses(drawn)
+    assert [[3.0, 3.0], [1.0, 0.0], [0.0, 1.0]] == [course.weight.tolist() for course in found]
+    for course, wave in zip(found[1:], drawn, strict=True):
+        assert packed_waveform(course.waveform).points == packed_waveform(wave).points
 
 
 def test_noise_that_would_repeat_itself_is_refused() -> None:

@@ -26,10 +26,14 @@ from driftwell.kernels.lanes import (
     load_one,
     load_some,
     most,
+    picked_above,
     positive,
+    put_some,
     rough_inverse_cube,
     scaled_rough_inverse_cube,
     smaller,
+    some,
+    square_root,
     store,
     store_some,
     total,
@@ -85,6 +89,21 @@ def _positive(a: Any, out: Any) -> None:
 @kernel
 def _where_above(a: Any, b: Any, value: Any, out: Any) -> None:
     store(out, 0, where_above(load(a, 0), load(b, 0), load(value, 0)))
+
+
+@kernel
+def _picked_above(a: Any, b: Any, value: Any, other: Any, out: Any) -> None:
+    store(out, 0, picked_above(load(a, 0), load(b, 0), load(value, 0), load(other, 0)))
+
+
+@kernel
+def _square_root(a: Any, out: Any) -> None:
+    store(out, 0, square_root(load(a, 0)))
+
+
+@kernel
+def _copied_some(a: Any, first: int, count: int, out: Any) -> None:
+    put_some(out, first, count, some(a, first, count))
 
 
 @kernel
@@ -211,6 +230,31 @@ def test_where_above_takes_nothing_for_what_is_not() -> None:
     value = np.array([10.0, 11.0, 12.0, 13.0, 14.0, 15.0, 16.0, np.nan])
     expected = [10.0, 0.0, 0.0, 0.0, 14.0, 15.0, 16.0, np.nan]
     assert np.array_equal(expected, found(_where_above, a, np.ones(8), value), equal_nan=True)
+
+
+def test_picked_above_takes_the_other_for_what_is_not() -> None:
+    """At the border the other; a comparison with NaN takes the first, which shows it."""
+    a = np.array([3.0, 1.0, 0.5, -2.0, np.nextafter(1.0, 2.0), np.inf, np.nan, 3.0])
+    value, other = np.arange(10.0, 18.0), np.arange(20.0, 28.0)
+    expected = [10.0, 21.0, 22.0, 23.0, 14.0, 15.0, 16.0, 17.0]
+    assert expected == found(_picked_above, a, np.ones(8), value, other).tolist()
+
+
+def test_a_root_is_the_nearest_number_to_it() -> None:
+    """As numpy's is, by IEEE 754; of what has none comes no number."""
+    a = np.array([2.0, 0.25, 1e300, 5e-324, 0.0, np.inf, -1.0, np.nan])
+    with np.errstate(invalid="ignore"):
+        expected = np.sqrt(a)
+    assert np.array_equal(expected, found(_square_root, a), equal_nan=True)
+
+
+@pytest.mark.parametrize("count", range(1, 9))
+def test_all_or_some_lanes_are_copied_and_nothing_else_is_touched(count: int) -> None:
+    array, out = numbers(4, 12), np.full(12, -7.0)
+    _copied_some(array, 2, count, out)
+    expected = np.full(12, -7.0)
+    expected[2 : 2 + count] = array[2 : 2 + count]
+    assert (expected == out).all()
 
 
 @pytest.mark.parametrize("lane", range(8))

@@ -129,6 +129,22 @@ def test_energies_come_to_boltzmanns_distribution(
     assert u.mean(axis=1) == pytest.approx(np.zeros(3), rel=0.0, abs=4.0 * error)
 
 
+@pytest.mark.parametrize("mass", [4.0, 100.0])
+def test_thermal_ions_meet_spheres_at_the_mean_relative_speed(mass: float) -> None:
+    """n sigma (8 k T / (pi mu))^(1/2); 13007326.6 1/s for 100 u (case L2)."""
+    n, duration = 1000, 1e-5
+    reduced = mass * GAS_MASS / (mass + GAS_MASS) * ATOMIC_MASS
+    expected = DENSITY * 1e-18 * math.sqrt(8.0 * BOLTZMANN * KELVIN / (math.pi * reduced))
+    if mass == 100.0:
+        assert 13007326.579725625 == pytest.approx(expected, rel=1e-9, abs=0.0)
+    thermal = math.sqrt(BOLTZMANN * KELVIN / (mass * ATOMIC_MASS))
+    start = np.random.default_rng(3).normal(scale=thermal, size=(n, 3))
+    moving = to_end(
+        loop(ions(np.zeros((n, 3)), start, mass=mass), duration, 5e-7, processes=[nitrogen()])
+    )
+    assert expected == pytest.approx(moving.exchanged[0, 7] / n / duration, rel=0.015, abs=0.0)
+
+
 def test_ions_diffuse_by_einsteins_relation() -> None:
     """D = K k T / q (A. Einstein 1905) with the mobility of hard spheres, of ions of mass 100 u."""
     n, duration = 3000, 40e-6
@@ -149,17 +165,17 @@ def test_exchange_of_charge_leaves_ions_of_the_gas() -> None:
     Ions of 1000 eV in a cold gas, of cross-section 1e-19 m^2: exp(-n sigma v t) go on, the rest
     have the gas's temperature.
     """
-    n, duration = 4000, 2e-6
+    n, duration = 16_000, 2e-6
     gas = nitrogen(
         collision={"kind": "hard-sphere", "cross_section": "1e-19 m^2"},
         exchange=1.0,
-        pressure="40 Pa",
+        pressure="0.25 Pa",
     )
     speed = math.sqrt(2.0 * 1000.0 * ELEMENTARY_CHARGE / (GAS_MASS * ATOMIC_MASS))
     particles = ions(np.zeros((n, 3)), (0.0, 0.0, speed), mass=GAS_MASS)
     moving = to_end(loop(particles, duration, 1e-6, processes=[gas]))
     fast = moving.particles.velocity[2] > 0.9 * speed
-    expected = math.exp(-40.0 / (BOLTZMANN * KELVIN) * 1e-19 * speed * duration)
+    expected = math.exp(-0.25 / (BOLTZMANN * KELVIN) * 1e-19 * speed * duration)
     assert expected == pytest.approx(fast.mean(), rel=0.0, abs=4.0 * math.sqrt(0.25 / n))
     thermal = math.sqrt(BOLTZMANN * KELVIN / (GAS_MASS * ATOMIC_MASS))
     for axis in range(3):

@@ -39,7 +39,7 @@ def test_a_noisy_field_heats_ions_by_its_density_at_their_frequency() -> None:
                 "density": f"{DENSITY} V^2/m^2/Hz",
                 "lowest": "0.4 MHz",
                 "highest": "1.6 MHz",
-                "lines": 300,
+                "lines": 1200,
             },
         )
         stray = with_noise_drawn(noise, seed, "stray")

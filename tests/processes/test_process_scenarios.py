@@ -160,7 +160,7 @@ def test_a_run_records_what_each_process_gave_and_took(tmp_path: Path) -> None:
     """By names of their own, beside each row of the ledger; losses stand under the gas's name."""
     n = 60
     random = np.random.default_rng(3)
-    gas = GAS | {"loss": 0.3, "pressure": "0.2 Pa"}
+    gas = GAS | {"loss": 0.3, "pressure": "0.01 Pa"}
     found = carried_out(
         tmp_path,
         2e-3,
@@ -200,7 +200,7 @@ def test_a_run_with_gas_that_was_stopped_ends_bit_for_bit_as_one_that_was_not(
     tmp_path: Path,
 ) -> None:
     """Through the record's own segments and states, stopped at every look."""
-    sections = table(GAS | {"pressure": "1 Pa", "loss": 0.1}, BATH | {"of": ["rest"]})
+    sections = table(GAS | {"pressure": "1 Pa", "loss": 1e-3}, BATH | {"of": ["rest"]})
     sections |= {"coulomb": {"method": "off"}, "stepping": {"step": "1 us"}}
     path = tmp_path / "scenario.toml"
     path.write_text(toml_file(sections))

@@ -40,6 +40,7 @@ def invented_header(tracked: int = 3, clouds: int = 2, traces: int = 2) -> Heade
         ),
         species=("barium", "électron"),
         walls=("bore", "plate"),
+        processes=("gås", "light"),
         detectors=("exit",),
         tracked=tuple(range(0, 2 * tracked, 2)),
         traces=tuple(f"wölk 0 charge {k} z" for k in range(traces)),
@@ -119,10 +120,11 @@ def record_segment(
     made["moments"] = kept
     for time, state in zip(made["trajectory/time"], made["trajectory/state"], strict=True):
         writer.trajectory(float(time), state)
-    for row in made["ledger"]:
-        writer.ledger(row)
+    for row, given in zip(made["ledger"], made["exchange"], strict=True):
+        writer.ledger(row, given)
     writer.losses(made["losses"])
     writer.crossings(made["crossings"])
+    writer.births(made["births"])
     writer.trace(made["trace/time"], made["trace/value"])
     for k, alive in enumerate(snapshots):
         particles = invented_particles(alive, seed + k)

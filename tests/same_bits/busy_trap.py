@@ -9,7 +9,8 @@ import numpy as np
 from driftwell.geometry.outline import circle, rectangle
 from driftwell.geometry.solid import Extruded, Frame, Revolved
 from driftwell.particles.state import Particles
-from driftwell.stepping.loop import TimeLoop, Traced
+from driftwell.stepping.happenings import Traced
+from driftwell.stepping.loop import TimeLoop
 from tests.cases import detector, field, wall
 from tests.moving import ions, loop
 

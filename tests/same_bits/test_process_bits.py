@@ -27,7 +27,7 @@ HELIUM = process(
     mass="4.0026 u",
     pressure="50 Pa",
     collision={"kind": "induced-dipole", "polarisability": "0.205 angstrom^3"},
-    loss=0.1,
+    loss=0.03,
     start="1.1 us",
     end="6.3 us",
 )
@@ -80,7 +80,7 @@ def test_many_charges_have_the_same_bits_on_one_thread_and_two(acting: Any) -> N
                 threads=threads,
             )
             to_end(moving)
-        lost = [each.id.tobytes() for each in moving.take_events()]
+        lost = b"".join(each.id.tobytes() for each in moving.take_events())
         state = [values.tobytes() for values in moving.state().values()]
         found.append((moving.particles.position.tobytes(), lost, state))
         assert moving.exchanged[:, 7].sum() > 1000.0

@@ -86,7 +86,8 @@ def test_a_name_used_twice_or_not_there_is_told_at_its_key(
 
 def test_a_scenario_needs_a_cloud() -> None:
     faults = told('title = "x"\n')
-    assert [("cloud", "", "missing; needs at least one group of charges")] == faults
+    needed = "missing; needs at least one group of charges, or a [[source]]"
+    assert [("cloud", "", needed)] == faults
 
 
 def test_a_built_in_species_needs_no_declaration() -> None:

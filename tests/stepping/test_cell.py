@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
 import numpy as np
 import pytest
 
+from driftwell.constants import ATOMIC_MASS
 from driftwell.coulomb.cell import Cell
 from driftwell.coulomb.form import Coulomb
 from driftwell.kernels.status import COLLAPSE
@@ -16,6 +18,7 @@ from driftwell.record.resume_state import particles_of, particles_state
 from driftwell.stepping.loop import TimeLoop
 from tests.cases import detector, field, wall
 from tests.moving import OFF, accounts, always, events, ions, loop, to_end
+from tests.running import carried_out, species, track
 
 CELL = Cell(axis="z", length="8 mm", start="-3 mm")
 SOFT = Coulomb(method="direct", softening="300 um")
@@ -143,3 +146,35 @@ def test_without_a_sum_over_the_pairs_charges_go_round_all_the_same() -> None:
     assert moving.to_mark(len(moving.schedule.steps), always)
     z = moving.particles.position[2]
     assert ((z >= -3e-3) & (z < 5e-3)).all()
+
+
+def test_a_whole_run_of_an_endless_beam_closes_its_books(tmp_path: Path) -> None:
+    """As a scenario states it: recorded within the cell, and nobody is lost at its ends."""
+    found = carried_out(
+        tmp_path,
+        2e-7,
+        species={"ion": species(40.0 * ATOMIC_MASS)},
+        cloud=[
+            {
+                "name": "beam",
+                "species": "ion",
+                "count": 120,
+                "weight": 2000.0,
+                "shape": {"kind": "box", "size": ["1 mm", "1 mm", "10 mm"]},
+                "motion": {"temperature": "300 K", "velocity": ["0 m/s", "0 m/s", "2e5 m/s"]},
+            }
+        ],
+        field=[{"name": "push", "kind": "uniform-electric", "strength": "100 V/m"}],
+        cell={"length": "10 mm"},
+        coulomb={"softening": "100 um"},
+        stepping={"step": "1 ns"},
+        record={"every": "20 ns"},
+    )
+    ledger = found.ledger
+    for name in ("momentum", "angular", "charge", "count"):
+        assert np.abs(ledger[f"{name}_residual"]).max() < 1e-13, name
+    assert np.abs(ledger["energy_residual"]).max() < 1e-9
+    assert ledger["energy_cell"][-1] > 0.0
+    z = track(found).position[:, :, 2]
+    assert (np.abs(z) <= 5e-3).all()
+    assert 120 == found.ledger["count"][-1] / 2000.0

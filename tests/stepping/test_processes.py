@@ -72,7 +72,7 @@ def test_the_ledger_closes_to_rounding_in_constant_fields(acting: Any, fields: A
         worst = max(abs(getattr(row, f"{name}_residual")) for row in rows)
         assert worst == pytest.approx(0.0, rel=0.0, abs=1e-12)
     kinetic = max(row.kinetic for row in rows)
-    assert abs(last.energy_processes) > 1e-3 * kinetic
+    assert abs(last.energy_processes) > 1e-4 * kinetic
     assert np.linalg.norm(last.momentum_processes) > 1e-3 * np.linalg.norm(last.momentum)
     assert np.linalg.norm(last.angular_processes) > 1e-3 * np.linalg.norm(last.angular_momentum)
     given = moving.exchanged.sum(axis=0)
@@ -117,7 +117,8 @@ def test_an_event_in_a_step_is_as_if_the_step_had_been_cut_there() -> None:
         assert moving.exchanged[0, 7] > 30
         found.append((moving.exchanged, particles.position.copy(), particles.velocity.copy()))
     for exchanged, position, velocity in found[1:]:
-        assert found[0][0] == pytest.approx(exchanged, rel=1e-9, abs=1e-40)
+        alike = [0, 1, 2, 3, 7]  # how the torque is shared with the fields is the step's
+        assert found[0][0][:, alike] == pytest.approx(exchanged[:, alike], rel=1e-9, abs=1e-40)
         assert found[0][1] == pytest.approx(position, rel=1e-9, abs=1e-15)
         assert found[0][2] == pytest.approx(velocity, rel=1e-9, abs=1e-12)
 
@@ -167,7 +168,7 @@ def test_ions_lost_to_gas_leave_the_sums_as_they_left_the_cloud(many: bool) -> N
     moving = loop(
         particles,
         4e-6,
-        5e-7,
+        5e-7 if many else 1e-8,
         fields=[PUSH],
         processes=[gas],
         coulomb=OFF if many else DIRECT,
@@ -179,7 +180,7 @@ def test_ions_lost_to_gas_leave_the_sums_as_they_left_the_cloud(many: bool) -> N
         worst = max(abs(getattr(row, f"{name}_residual")) for row in rows)
         assert worst == pytest.approx(0.0, rel=0.0, abs=1e-11)
     worst = max(abs(row.energy_residual) for row in rows)
-    assert worst == pytest.approx(0.0, rel=0.0, abs=1e-12 if many else 1e-5)
+    assert worst == pytest.approx(0.0, rel=0.0, abs=1e-12 if many else 1e-7)
 
 
 def test_macro_charges_are_pushed_as_one_of_theirs_and_counted_as_all() -> None:

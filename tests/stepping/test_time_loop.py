@@ -10,7 +10,8 @@ import pytest
 
 from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.particles.state import Particles
-from driftwell.stepping.loop import Events, TimeLoop, Traced
+from driftwell.stepping.happenings import Events, Traced
+from driftwell.stepping.loop import TimeLoop
 from tests.cases import detector, field, wall
 from tests.moving import DIRECT, OFF, always, events, ions, loop, to_end
 

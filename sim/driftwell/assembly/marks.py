@@ -14,7 +14,7 @@ from driftwell.record.form import DEFAULT_RECORDS
 from driftwell.record.header import trace_name
 from driftwell.scenario.model import Scenario
 from driftwell.solved.acting import ActingField
-from driftwell.stepping.loop import Traced
+from driftwell.stepping.happenings import Traced
 from driftwell.stepping.schedule import (
     BREAK,
     RECORD,

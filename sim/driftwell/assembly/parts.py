@@ -58,6 +58,7 @@ from driftwell.stepping.schedule import (
 from driftwell.stepping.step_choice import (
     StepChoice,
 )
+from driftwell.stepping.surroundings import Surroundings
 from driftwell.walls.form import WallForm
 from driftwell.walls.table import surface_table
 
@@ -175,12 +176,14 @@ class Assembly:
             [traced(request, self.clouds) for request in self.requests],
             threads,
             state,
-            self.images,
-            self.conductors.table,
-            self.unborn,
-            self.frames,
-            self.scenario.cell,
-            self.processes(),
+            Surroundings(
+                self.images,
+                self.conductors.table,
+                self.unborn,
+                self.frames,
+                self.scenario.cell,
+                self.processes(),
+            ),
         )
 
     def processes(self) -> Acting | None:
@@ -335,11 +338,11 @@ def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:
     """The rest frames that the charges are summed in."""
     return chosen_frames(
         scenario.coulomb,
-        [cloud.name for cloud in scenario.cloud],
+        [*(cloud.name for cloud in scenario.cloud), *(each.name for each in scenario.source)],
         particles.cloud,
         particles.velocity,
         particles.mass * particles.weight,
-        unfit=scenario.images is not None or scenario.cell is not None,
+        unfit=bool(scenario.images or scenario.cell or scenario.source),
     )
 
 

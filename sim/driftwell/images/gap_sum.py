@@ -29,7 +29,7 @@ Floats = NDArray[np.float64]
 
 FAR_BYTES = 25_000_000
 """Of the tables and grids of farther images, while they are made."""
-BY_GRID = 128
+BY_GRID = 256
 """From so many charges on farther images are summed over a grid."""
 _THREADED = 32
 _BEYOND = 0.5

@@ -15,7 +15,7 @@ from driftwell.ledger.ledger import LedgerRow
 from driftwell.particles.state import Particles
 from driftwell.record.form import DEFAULT_TRACKS
 from driftwell.record.layout import dataset
-from driftwell.stepping.loop import Events
+from driftwell.stepping.happenings import Events
 from driftwell.stepping.pools import Born
 
 

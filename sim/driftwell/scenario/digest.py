@@ -10,8 +10,13 @@ from driftwell.errors import ScenarioError
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.source import shown_path
 
-LATER = ("electrodes", "electrode", "images", "source")
+LATER = ("electrodes", "electrode", "images", "source", "process", "cell")
 """Sections left out where they are not used: scenarios from before keep their digests."""
+LATER_KEYS: tuple[tuple[str, str, object], ...] = (
+    ("coulomb", "frame", "auto"),
+    ("coulomb", "share_frame", []),
+)
+"""Section, key and default of keys left out where they say nothing else, for the same reason."""
 
 
 def digest(scenario: Scenario, folder: Path) -> str:
@@ -29,6 +34,9 @@ def digest(scenario: Scenario, folder: Path) -> str:
     for section in LATER:
         if not values[section]:
             del values[section]
+    for section, name, default in LATER_KEYS:
+        if values[section][name] == default:
+            del values[section][name]
     files = {name: file_digest(folder / name) for name in named}
     content = {"scenario": values, "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)

@@ -8,58 +8,54 @@ from __future__ import annotations
 
 import time as clocks
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from driftwell.constants import COULOMB_CONSTANT, SPEED_OF_LIGHT
-from driftwell.coulomb.bunch_frames import BunchFrames, FrameWatch
-from driftwell.coulomb.cell import Cell
+from driftwell.coulomb.bunch_frames import FrameWatch
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.frame_sum import HELD, frame_sum
 from driftwell.coulomb.promise import Promise, Scene
 from driftwell.coulomb.summation import Summation, manner_of
-from driftwell.errors import StepError
 from driftwell.forms import spelled
 from driftwell.geometry.body_search import searched
-from driftwell.geometry.body_table import BodyTable, body_table
-from driftwell.images.image_sum import Images, no_images
+from driftwell.geometry.body_table import body_table
+from driftwell.images.image_sum import no_images
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.status import (
-    COLLAPSE,
-    CROWDED_STEP,
     DONE,
     EVENTS_FULL,
     NEED_BIRTHS,
-    NOT_FINITE,
-    OVERFLOW,
     PAUSED,
-    RUNAWAY,
 )
 from driftwell.particles.state import Particles
-from driftwell.particles.unborn import Unborn
-from driftwell.processes.table import Acting
 from driftwell.stepping.births import bearing_of
 from driftwell.stepping.burst import burst
 from driftwell.stepping.cell import reentry
+from driftwell.stepping.failures import failure
 from driftwell.stepping.form import Stepping
 from driftwell.stepping.frames import InFrame, take_frames
+from driftwell.stepping.happenings import (
+    TRACE_ROWS,
+    Events,
+    Samples,
+    Traced,
+    emptied_events,
+    emptied_trace,
+    trace_of,
+    traced_now,
+)
 from driftwell.stepping.midpoint_passes import midpoint_passes_over
 from driftwell.stepping.motion import (
     CURSOR_AT_FAULT,
     CURSOR_BIRTH,
-    CURSOR_EVENTS,
     CURSOR_FRESH,
     CURSOR_INTERVAL,
     CURSOR_STEP,
     CURSOR_STEPS,
-    CURSOR_TRACES,
     WAITING,
     Fields,
-    Plan,
-    Trace,
     charges_of,
     work_space,
 )
@@ -70,45 +66,16 @@ from driftwell.stepping.process_work import (
     process_state,
     process_work,
     take_up_processes,
-    when_acting,
 )
 from driftwell.stepping.processes import processes_over
 from driftwell.stepping.schedule import TRACE, Schedule
-from driftwell.stepping.schemes import MIDWAY, SCHEMES
+from driftwell.stepping.schemes import SCHEMES
+from driftwell.stepping.surroundings import Surroundings, plan_of
 from driftwell.walls.table import SurfaceTable, sides
 
 _CALL_SECONDS = 0.4
-_TRACE_ROWS = 4096
-_NO_CENTRE = -2
-
-
-@dataclass(frozen=True, slots=True)
-class Traced:
-    """One traced coordinate: a cloud's centre, or one charge by its id."""
-
-    cloud: int
-    id: int | None
-    axis: int
-
-
-@dataclass(frozen=True, slots=True)
-class Events:
-    """What happened on surfaces, in the order of time.
-
-    surface, id, cloud : (k,) int64; direction : (k,) int64, 0 for losses
-    time : (k,) s; position, velocity : (k, 3), m and m/s (proper)
-    mass, weight : (k,) of one real particle, and how many it stands for
-    """
-
-    surface: NDArray[np.int64]
-    id: NDArray[np.int64]
-    cloud: NDArray[np.int64]
-    direction: NDArray[np.int64]
-    time: NDArray[np.float64]
-    position: NDArray[np.float64]
-    velocity: NDArray[np.float64]
-    mass: NDArray[np.float64]
-    weight: NDArray[np.float64]
+NOTHING = Surroundings()
+"""Nothing but charges, fields and surfaces."""
 
 
 class TimeLoop:
@@ -138,64 +105,36 @@ class TimeLoop:
         traced: Sequence[Traced],
         threads: int,
         state: Mapping[str, NDArray[Any]] | None = None,
-        images: Images | None = None,
-        bodies: BodyTable | None = None,
-        unborn: Unborn | None = None,
-        frames: BunchFrames | None = None,
-        cell: Cell | None = None,
-        processes: Acting | None = None,
+        around: Surroundings = NOTHING,
     ) -> None:
-        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then.
-
-        images : the conductors that answer to the charges
-        frames : in which frames the charges are summed; None: in the laboratory, and unwatched
-        bodies : what else stops charges: owner k is surface number (walls + detectors + k)
-        unborn : charges that are born on the way
-        cell : what repeats along one axis
-        processes : what else acts on charges
-        """
+        """A loop at time zero, or where its :meth:`state` was taken, with the particles of then."""
         self.particles = particles
-        self._pools = Pools(unborn, {} if state is None else entries_below("births", state))
+        self._pools = Pools(around.unborn, {} if state is None else entries_below("births", state))
         self.schedule = schedule
         self._fields = fields
         self._surfaces = surfaces
-        self._bodies = body_table(()) if bodies is None else searched(bodies)
+        self._bodies = body_table(()) if around.bodies is None else searched(around.bodies)
         self._scheme = SCHEMES[stepping.scheme]
         self._traced = traced
         charge, most = particles.charge, len(particles)
-        if unborn is not None:
-            charge = np.concatenate([charge, unborn.particles.charge])
-            most += len(unborn)
+        if around.unborn is not None:
+            charge = np.concatenate([charge, around.unborn.particles.charge])
+            most += len(around.unborn)
         both_signs = bool((charge > 0).any() and (charge < 0).any())
-        self.plan = Plan(
-            coulomb=int(coulomb.method != "off") * (1 if cell is None else 2),
-            coulomb_every=stepping.coulomb_every,
-            constant=COULOMB_CONSTANT,
-            softening2=coulomb.softening**2,
-            extent2=stepping.extent**2,
-            watch_collapse=int(both_signs and coulomb.softening == 0.0 and coulomb.method != "off"),
-            light2=SPEED_OF_LIGHT**2,
-            images=int(images is not None),
-            midway=int(stepping.scheme == MIDWAY),
-            frames=0 if frames is None or coulomb.method == "off" else frames.count,
-            cell_axis=-1 if cell is None else cell.number,
-            cell_begin=0.0 if cell is None else cell.begin,
-            cell_length=0.0 if cell is None else cell.length,
-            processes=0 if processes is None else when_acting(processes),
-        )
-        self._processes = no_processes() if processes is None else processes
+        self.plan = plan_of(coulomb, stepping, around, both_signs)
+        self._processes = no_processes() if around.processes is None else around.processes
+        frames = around.frames
         self._bunch = frames.numbers if frames is not None and self.plan.frames else None
         self._frame_sum = frame_sum(self.plan.frames > 0)
         self._frame_watch = None
         if frames is not None and coulomb.method != "off":
             self._frame_watch = FrameWatch(frames, coulomb.accuracy)
-        self._images, self._threads = images, threads
-        self._repeats = cell is not None
+        self._images, self._threads = around.images, threads
         self._image_sum = no_images()
         self._doubted = False
         summed = None if state is None else entries_below("coulomb", state)
         manner = None if summed is None else manner_of(summed)
-        self.summation = Summation(coulomb, most, threads, manner=manner, cell=cell)
+        self.summation = Summation(coulomb, most, threads, manner=manner, cell=around.cell)
         self.promise = Promise(coulomb.accuracy, summed)
         every = stepping.coulomb_every
         self._sums_per_step = (
@@ -205,11 +144,11 @@ class TimeLoop:
         self.acting = process_work(self._processes, particles)
         self._events: list[Events] = []
         self._births: list[Born] = []
-        self._samples: list[tuple[NDArray[np.float64], NDArray[np.float64]]] = []
+        self._samples: list[Samples] = []
         self._budget = 1
         if state is not None:
             self.work.cursor[CURSOR_BIRTH] = state["schedule/cursor"][CURSOR_BIRTH]
-        elif unborn is not None:
+        elif around.unborn is not None:
             self.particles = merged(particles, self._pools.admitted(0, len(particles)))
         self._arrange()
         if state is not None:
@@ -219,7 +158,7 @@ class TimeLoop:
         self._step_aside()
         self._burst(1, 0)  # no step, but the forces at the start
         if traced and schedule.flags[0] & TRACE:
-            self._samples.append((schedule.time[:1].copy(), self._traced_now()))
+            self._samples.append((schedule.time[:1].copy(), traced_now(self._trace, self.charges)))
 
     @property
     def steps_done(self) -> int:
@@ -282,7 +221,14 @@ class TimeLoop:
                 self._admit()
                 status = PAUSED
             if status not in {DONE, PAUSED, EVENTS_FULL}:
-                raise StepError(self._failure(status), self._id_at_fault(status))
+                raise failure(
+                    status,
+                    int(self.work.cursor[CURSOR_AT_FAULT]),
+                    self.particles,
+                    self.time,
+                    self.steps_done,
+                    self.plan.cell_axis >= 0,
+                )
             self._adapt(clocks.perf_counter() - began, self.steps_done - before)
             if status == DONE and self.mark < until:
                 status = PAUSED
@@ -405,7 +351,7 @@ class TimeLoop:
         taken, self._births = self._births, []
         return taken
 
-    def take_samples(self) -> list[tuple[NDArray[np.float64], NDArray[np.float64]]]:
+    def take_samples(self) -> list[Samples]:
         """Traced times (k,) and values (k, traces) since the last call."""
         taken, self._samples = self._samples, []
         return taken
@@ -436,7 +382,7 @@ class TimeLoop:
 
     def _next_stop(self, until: int) -> int:
         """A mark near enough that the samples on the way fit their buffer."""
-        return min(until, self.mark + _TRACE_ROWS) if self._traced else until
+        return min(until, self.mark + TRACE_ROWS) if self._traced else until
 
     def _burst(self, until: int, budget: int) -> int:
         return int(
@@ -507,106 +453,19 @@ class TimeLoop:
             self.plan, self._fields, self._surfaces, self.charges, self._pools.births, self.work
         )
         self._reentry = reentry(self.plan, self._fields, self._surfaces, self.charges, self.work)
-        self._trace = Trace(
-            np.array([each.cloud for each in self._traced], dtype=np.int64),
-            np.array([self._index(each) for each in self._traced], dtype=np.int64),
-            np.array([each.axis for each in self._traced], dtype=np.int64),
-            np.zeros(_TRACE_ROWS + 1),
-            np.zeros((_TRACE_ROWS + 1, len(self._traced))),
-        )
-
-    def _index(self, traced: Traced) -> int:
-        """Where a traced charge stands now; -1 for a centre, -2 once the charge is lost."""
-        if traced.id is None:
-            return -1
-        found = np.flatnonzero(self.particles.id == traced.id)
-        return int(found[0]) if found.size else _NO_CENTRE
-
-    def _traced_now(self) -> NDArray[np.float64]:
-        """The traced coordinates (1, traces) at the start; NaN for what is not born yet."""
-        there = self.charges.alive == 1
-        found = np.full((1, len(self._traced)), np.nan)
-        for k, (each, i) in enumerate(zip(self._traced, self._trace.which, strict=True)):
-            own = there & (self.charges.cloud == each.cloud)
-            if i == -1 and own.any():
-                found[0, k] = self.charges.position[each.axis, own].mean()
-            elif i >= 0 and there[i]:
-                found[0, k] = self.charges.position[each.axis, i]
-        return found
+        self._trace = trace_of(self._traced, self.particles)
 
     def _collect(self) -> None:
         """Empty the event and sample buffers into lists."""
-        cursor = self.work.cursor
-        born = self._pools.take_born(int(cursor[CURSOR_BIRTH]))
+        born = self._pools.take_born(int(self.work.cursor[CURSOR_BIRTH]))
         if born is not None:
             self._births.append(born)
-        count = int(cursor[CURSOR_EVENTS])
-        if count:
-            rows = self.work.events[:count]
-            rows = rows[np.argsort(rows[:, 2], kind="stable")]
-            index = rows[:, 1].astype(np.int64)
-            self._events.append(
-                Events(
-                    surface=rows[:, 0].astype(np.int64),
-                    id=self.particles.id[index],
-                    cloud=self.particles.cloud[index],
-                    direction=rows[:, 9].astype(np.int64),
-                    time=rows[:, 2],
-                    position=rows[:, 3:6],
-                    velocity=rows[:, 6:9],
-                    mass=self.particles.mass[index],
-                    weight=self.particles.weight[index],
-                )
-            )
-            cursor[CURSOR_EVENTS] = 0
-        count = int(cursor[CURSOR_TRACES])
-        if count:
-            self._samples.append(
-                (self._trace.time[:count].copy(), self._trace.value[:count].copy())
-            )
-            cursor[CURSOR_TRACES] = 0
-
-    def _failure(self, status: int) -> str:
-        """What went wrong, with whom, when, and what to do."""
-        i = int(self.work.cursor[CURSOR_AT_FAULT])
-        steps = f"{self.steps_done} step{'s' * (self.steps_done != 1)}"
-        when = f"after {steps}, at t = {spelled(self.time, 's')}"
-        if status == OVERFLOW:
-            return f"{when}: a single step met too many surfaces; take a shorter step."
-        who = f"charge {int(self.particles.id[i])}"
-        x, y, z = self.particles.position[:, i]
-        where = f"at ({', '.join(spelled(float(each), 'm', 4) for each in (x, y, z))})"
-        if status == NOT_FINITE:
-            return (
-                f"{when}: the position or velocity of {who} is no longer a number. It met a point "
-                "where a field has no value, or the step is far too long; take a shorter step, or "
-                "put a wall before that point."
-                + (
-                    " Or the beam is more than four times as wide as [cell] is long."
-                    * self._repeats
-                )
-            )
-        if status == RUNAWAY:
-            return (
-                f"{when}: {who} has run away, {where}, beyond stepping.extent. The motion is "
-                "unstable or nothing stops it: put a wall, or set a larger extent."
-            )
-        if status == CROWDED_STEP:
-            return (
-                f"{when}: {who} would be met by a process more than 100000 times in one step. Take "
-                "a shorter step, or a thinner gas, or describe the gas by its drag."
-            )
-        if status == COLLAPSE:
-            return (
-                f"{when}: {who} falls towards an opposite charge faster than the step can follow, "
-                f"{where}. Take a shorter step, or give coulomb.softening a length."
-            )
-        return f"{when}: the step ended with the unknown status {status}."
-
-    def _id_at_fault(self, status: int) -> int | None:
-        if status not in {NOT_FINITE, RUNAWAY, COLLAPSE, CROWDED_STEP}:
-            return None
-        return int(self.particles.id[self.work.cursor[CURSOR_AT_FAULT]])
+        events = emptied_events(self.work, self.particles)
+        if events is not None:
+            self._events.append(events)
+        samples = emptied_trace(self.work, self._trace)
+        if samples is not None:
+            self._samples.append(samples)
 
 
 def entries_below(group: str, state: Mapping[str, NDArray[Any]]) -> dict[str, NDArray[Any]]:
