@@ -11,7 +11,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from scipy.constants import atomic_mass, elementary_charge, epsilon_0, proton_mass
+from scipy.constants import atomic_mass, electron_mass, elementary_charge, epsilon_0, proton_mass
 from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run, open_run
@@ -57,6 +57,8 @@ SHORTER: dict[str, tuple[str, ...]] = {
     "einzel-lens": ("cloud.bunch.count=100", "electrodes.field_accuracy=1e-3"),
     "electron-gun": (
         "source.cathode.weight=6e6",
+        "coulomb.softening=0.2 mm",
+        "stepping.step=6 ps",
         "duration=1.2 ns",
         *(f'question.{name}.over=["0.8 ns", "1.2 ns"]' for name in OF_GUN),
     ),
@@ -346,6 +348,17 @@ def test_ions_cooled_by_helium_arrive_together_a_quarter_of_a_period_after_the_p
     assert 1.0 == value(found, "part that arrives")
     # the mean of ten relaxation times of 50 ions
     assert 300 == pytest.approx(value(found, "temperature along z before ejection"), rel=0.1, abs=0)
+
+
+def test_a_gun_gives_about_the_current_of_childs_law(runs: dict[str, Run]) -> None:
+    """J = (4/9) eps0 sqrt(2 e/m) V^1.5/d^2 between endless plates (C. D. Child, Phys. Rev. 32 (1911)
+    492); a disc as wide as the gap is long passes 1.25 of it (Y. Y. Lau, Phys. Rev. Lett. 87 (2001)
+    278301; from memory), and a softening of a 25th of the gap adds an eighth (docs, sources).
+    """
+    density = 4 / 9 * epsilon_0 * math.sqrt(2 * elementary_charge / electron_mass)
+    child = density * 1e3**1.5 / 5e-3**2 * math.pi * 5e-3**2
+    found = -value(runs["electron-gun"], "current")
+    assert 1.1 * child < found < 1.8 * child
 
 
 def test_droplets_spread_with_the_root_of_the_way(runs: dict[str, Run]) -> None:
