@@ -352,8 +352,8 @@ def test_ions_cooled_by_helium_arrive_together_a_quarter_of_a_period_after_the_p
 
 def test_a_gun_gives_about_the_current_of_childs_law(runs: dict[str, Run]) -> None:
     """J = (4/9) eps0 sqrt(2 e/m) V^1.5/d^2 between endless plates (C. D. Child, Phys. Rev. 32
-    (1911) 492); a disc as wide as the gap is long passes 1.25 of it (Y. Y. Lau, Phys. Rev. Lett. 87 (2001)
-    278301; from memory), and a softening of a 25th of the gap adds an eighth (docs, sources).
+    (1911) 492); a disc as wide as the gap is long passes 1.25 of it (Y. Y. Lau, Phys. Rev. Lett. 87
+    (2001) 278301; from memory), and a softening of a 25th of the gap adds an eighth.
     """
     density = 4 / 9 * epsilon_0 * math.sqrt(2 * elementary_charge / electron_mass)
     child = density * 1e3**1.5 / 5e-3**2 * math.pi * 5e-3**2

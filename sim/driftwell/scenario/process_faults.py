@@ -6,6 +6,8 @@ from collections.abc import Iterator
 
 from driftwell.forms import spelled
 from driftwell.forms.faults import Fault
+from driftwell.particles.cloud import Cloud
+from driftwell.particles.source import Source
 from driftwell.particles.species import bodies
 from driftwell.scenario.model import Scenario
 
@@ -21,16 +23,13 @@ def process_faults(scenario: Scenario) -> Iterator[Fault]:
         )
         yield Fault(("stepping", "scheme"), f'"{scenario.stepping.scheme}"', text)
     known = bodies(scenario.species)
+    there: list[Cloud | Source] = [*scenario.cloud, *scenario.source]
     dragged: dict[str, str] = {}
     for i, process in enumerate(scenario.process):
         if process.start >= scenario.duration:
             whole = spelled(scenario.duration, "s")
             yield Fault(("process", i, "start"), "", f"lies not before the end of the run, {whole}")
-        groups = [
-            group
-            for group in (*scenario.cloud, *scenario.source)
-            if process.acts_on(group.name, group.species)
-        ]
+        groups = [each for each in there if process.acts_on(each.name, each.species)]
         if not groups:
             text = "acts on no cloud and no source: none is of that species"
             yield Fault(("process", i, "of"), "", text)
