@@ -80,8 +80,9 @@ def moved(budget: int, every: int, threads: int = 1, **options: Any) -> dict[str
         ("kick-drift-kick", 1, DIRECT),
         ("kick-drift-kick", 3, DIRECT),
         ("composed-4", 1, TREE),
+        ("midpoint-rotation", 1, DIRECT),
     ],
-    ids=["each step", "every third", "composed, tree"],
+    ids=["each step", "every third", "composed, tree", "midway"],
 )
 def test_births_are_the_same_after_pauses_and_after_resumes(
     scheme: str, every: int, coulomb: Coulomb

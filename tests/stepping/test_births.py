@@ -77,12 +77,22 @@ def test_a_stream_in_a_magnetic_field_begins_on_its_helix(step: float) -> None:
         {"coulomb": SOFT},
         {"coulomb": SOFT, "coulomb_every": 3},
         {"coulomb": SOFT, "scheme": "composed-4"},
+        {"coulomb": SOFT, "scheme": "midpoint-rotation", "images": FAR_PLANE},
         {"coulomb": SOFT, "images": FAR_PLANE},
         {"coulomb": SOFT, "images": FAR_PLANE, "coulomb_every": 3},
         {"coulomb": SOFT, "fields": [RF, SWINGING]},
         {"coulomb": TREE},
     ],
-    ids=["pairs", "every third", "composed", "images", "images every third", "drives", "tree"],
+    ids=[
+        "pairs",
+        "every third",
+        "composed",
+        "midway",
+        "images",
+        "images every third",
+        "drives",
+        "tree",
+    ],
 )
 def test_the_ledger_closes_over_births_in_energy_to_second_order_else_to_rounding(
     options: dict[str, Any],

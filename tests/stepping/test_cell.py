@@ -56,9 +56,10 @@ def test_a_charge_that_leaves_comes_in_at_the_other_end() -> None:
     assert pytest.approx(expected, rel=0.0, abs=1e-15) == found
 
 
-def test_the_ledger_closes_over_many_turns() -> None:
+@pytest.mark.parametrize("scheme", ["kick-drift-kick", "midpoint-rotation"])
+def test_the_ledger_closes_over_many_turns(scheme: str) -> None:
     """Energy in the fields that jumps, angular momentum that jumps, torques across the ends."""
-    rows = accounts(beam())
+    rows = accounts(beam(scheme=scheme))
     last = rows[-1]
     assert abs(last.energy_cell) > 1e-3 * last.kinetic
     assert np.abs(last.angular_cell[:2]).min() > 0.0

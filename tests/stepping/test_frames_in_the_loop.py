@@ -98,9 +98,11 @@ def test_a_bunch_without_charges_is_as_if_at_rest() -> None:
     assert alone.work.coulomb.tobytes() == three.work.coulomb.tobytes()
 
 
-@pytest.mark.parametrize("keys", [{"coulomb_every": 5}, {"scheme": "composed-4"}])
+@pytest.mark.parametrize(
+    "keys", [{"coulomb_every": 5}, {"scheme": "composed-4"}, {"scheme": "midpoint-rotation"}]
+)
 def test_frames_go_with_every_way_to_step(keys: dict[str, object]) -> None:
-    """The Coulomb kick every fifth step; a composition with steps backwards."""
+    """The Coulomb kick every fifth step; steps backwards; all forces in the middle of a step."""
     row = accounts(flown(ONE, **keys))[-1]
     assert 0.0 == pytest.approx(row.energy_residual, abs=1e-6)
     assert 0.0 == pytest.approx(row.angular_residual, abs=1e-14)
