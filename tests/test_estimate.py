@@ -190,6 +190,12 @@ def test_losses_that_go_on_make_later_steps_cheaper() -> None:
         assert 1.0 == _kept(replace(stretch, left=left), 1000, 2)
 
 
+def test_births_take_nothing_off_later_steps() -> None:
+    """Of a source that has just begun there was nothing to lose a part of."""
+    for alive in (0, 20):
+        assert 1.0 == _kept(Stretch(100, 1.0, 0.01, 0.01, alive, 64), 1_000_000, 2)
+
+
 def test_steps_twice_as_long_keep_every_mark_and_multiple() -> None:
     plan = Schedule(np.arange(5.0), np.zeros(5, np.int64), np.array([1, 2, 3, 100]))
     assert 1 + 1 + 2 + 50 == twice_as_long(plan, 1)

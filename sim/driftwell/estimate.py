@@ -222,8 +222,9 @@ def _kept(stretch: Stretch, steps: int, power: int) -> float:
     """Cost of a step over that of one timed, on the average, were losses to go on as they did.
 
     A step costs a power of the number of charges left, which then falls as exp(-r k) after k steps.
+    Where more are born than lost it does not, and nothing is taken off.
     """
-    if stretch.left in {0, stretch.alive}:
+    if stretch.left == 0 or stretch.left >= stretch.alive:
         return 1.0
     rate = power * math.log(stretch.alive / stretch.left) / stretch.steps
 
