@@ -52,7 +52,10 @@ SHORTER: dict[str, tuple[str, ...]] = {
         'question.temperature along z, first half.over=["0 us", "50 us"]',
         'question.temperature along z, second half.over=["50 us", "100 us"]',
     ),
-    "droplet-spray": ("source.capillary.weight=5",),
+    "droplet-spray": (
+        "source.capillary.weight=5",
+        'question."radius half way, rms".thickness=6 mm',
+    ),
     "diode-gap": ("cloud.pulse.count=50", "electrodes.field_accuracy=1e-3"),
     "einzel-lens": ("cloud.bunch.count=100", "electrodes.field_accuracy=1e-3"),
     "electron-gun": (
@@ -60,6 +63,7 @@ SHORTER: dict[str, tuple[str, ...]] = {
         "coulomb.softening=0.2 mm",
         "stepping.step=6 ps",
         "duration=1.2 ns",
+        'question."radius in mid-gap, 90 %".thickness=4 mm',
         *(f'question.{name}.over=["0.8 ns", "1.2 ns"]' for name in OF_GUN),
     ),
     "electron-pulse": ("cloud.pulse.count=300",),
