@@ -61,7 +61,7 @@ SHORTER: dict[str, tuple[str, ...]] = {
     "electron-gun": (
         "source.cathode.weight=6e6",
         "coulomb.softening=0.2 mm",
-        "stepping.step=6 ps",
+        "stepping.step=4 ps",
         "duration=1.2 ns",
         'question."radius in mid-gap, 90 %".thickness=4 mm',
         *(f'question.{name}.over=["0.8 ns", "1.2 ns"]' for name in OF_GUN),
