@@ -21,7 +21,7 @@ from driftwell.kernels import kernel
 @kernel
 def _deal(columns: int, group_count: int, out_group: np.ndarray) -> None:
     for c in range(columns):
-        out_group[c] = direct._dealt(columns - 1 - c, group_count)
+        out_group[c] = direct.dealt(columns - 1 - c, group_count)
 
 
 def dealt(n: int) -> tuple[np.ndarray, np.ndarray]:

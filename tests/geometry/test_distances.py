@@ -257,3 +257,11 @@ def test_corners_of_a_cut_arc_do_not_leak() -> None:
     points = np.stack([np.full(4, -3.0), heights], axis=1)
     assert (plane_distances(table, points, axisymmetric=False)[0] > 1.9).all()
     assert rectangle((0.0, 0.0), (1.0, 1.0)).solid
+
+
+def test_the_axis_of_a_body_that_is_turned_about_it_is_no_surface() -> None:
+    """A rod of 1 mm radius and 2 mm length, on its axis and beside it: the nearest end, inside."""
+    table = body_table([[Revolved(rectangle((0.0, 0.0), (1e-3, 2e-3)))]])
+    points = np.array([[0.0, 0.0, 1e-4], [0.0, 0.0, 1e-3], [1e-5, 0.0, 1e-3], [0.0, 0.0, -1e-4]])
+    expected = [-1e-4, -1e-3, -9.9e-4, 1e-4]
+    assert expected == pytest.approx(distances(table, points)[0].tolist(), rel=1e-12, abs=0.0)

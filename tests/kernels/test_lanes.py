@@ -29,11 +29,11 @@ from driftwell.kernels.lanes import (
     picked_above,
     positive,
     put_some,
+    root,
     rough_inverse_cube,
     scaled_rough_inverse_cube,
     smaller,
     some,
-    square_root,
     store,
     store_some,
     total,
@@ -98,7 +98,7 @@ def _picked_above(a: Any, b: Any, value: Any, other: Any, out: Any) -> None:
 
 @kernel
 def _square_root(a: Any, out: Any) -> None:
-    store(out, 0, square_root(load(a, 0)))
+    store(out, 0, root(load(a, 0)))
 
 
 @kernel

@@ -41,7 +41,11 @@ class GriddedGap(FieldForm):
     voltage: VoltageWave = key(
         "potential of the second grid and all beyond it; the first is at zero", example="-200 V"
     )
-    length: Positive[Length] = key("distance between the grids", example="10 mm")
+    length: Positive[Length] = key(
+        "distance between the grids; a step should cover far less, for the one that passes a grid "
+        "errs in energy by up to half its way times the jump of the field",
+        example="10 mm",
+    )
     along: Direction = key(
         "direction from the first grid to the second; any length but zero",
         default=(0.0, 0.0, 1.0),

@@ -63,6 +63,8 @@ def body_table(bodies: Sequence[Sequence[Solid]]) -> BodyTable:
                 triangle_count += len(packed)
             else:
                 packed = outline_distance.packed_pieces(solid.outline)
+                if not isinstance(solid, Extruded):  # what lies on the axis is no surface
+                    packed = packed[(packed[:, 0] != 0.0) | (packed[:, 2] != 0.0)]
                 tree = box_tree(*outline_distance.piece_boxes(packed))
                 kind, half = REVOLVED, 0.0
                 frame, volume = solid.frame, solid.outline.solid
