@@ -122,8 +122,9 @@ def scenarios(draw: st.DrawFn) -> dict[str, Any]:
         table[section] = draw(raw_values(keys[section].holds))
     table["coulomb"]["softening"] = draw(INTERVALS).replace("s", "m")
     table["stepping"].pop("extent", None)
-    if table["coulomb"].get("frame") == "bunch":  # several frames do not go with every scheme
-        table["stepping"].pop("scheme", None)
+    if table["coulomb"].get("frame") == "bunch":
+        table["coulomb"].pop("share_frame", None)  # names clouds
+        table["stepping"].pop("scheme", None)  # several frames do not go with every scheme
     for section, name in (("stepping", "step"), ("record", "every"), ("record", "snapshots")):
         if name in table[section] and table[section][name] != "auto":
             table[section][name] = draw(INTERVALS)
