@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 
 import numpy as np
 import pytest
+from numba.core.bytecode import FunctionIdentity
 
-from driftwell.kernels import kernel, pair_kernel
+from driftwell.kernels import kernel, pair_kernel, pointed_kernel
 from driftwell.kernels.compiled import PAIR_FLAGS, SUM_FLAGS
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.status import (
@@ -97,6 +99,43 @@ def test_a_caller_is_compiled_once_for_all_functions_of_a_signature() -> None:
     assert [10.0, 25.0] == [doubled(5.0), squared(5.0)]
     assert doubled.signature() == squared.signature()
     assert doubled.__wrapper_address__() != squared.__wrapper_address__()
+
+
+def _times(factor: int) -> CompiledFunction:
+    """A kernel that closes over a number."""
+
+    @pointed_kernel
+    def product(x: float) -> float:
+        return factor * x
+
+    return CompiledFunction(product, "float64(float64)")
+
+
+def _at(function: CompiledFunction) -> int:
+    return function.__wrapper_address__()
+
+
+def test_kernels_that_close_over_different_numbers_are_never_taken_for_one_another(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Not even where two processes made them, each the first of its own count of functions."""
+    monkeypatch.setattr(FunctionIdentity, "_unique_ids", itertools.count(10**9))
+    by_two = _times(2)
+    monkeypatch.setattr(FunctionIdentity, "_unique_ids", itertools.count(10**9))
+    by_three = _times(-3)
+    assert _at(by_two) != _at(by_three)
+    assert [10.0, -15.0] == [_applied(by_two, 5.0) - 1.0, _applied(by_three, 5.0) - 1.0]
+
+
+def test_a_kernel_may_not_close_over_what_its_name_cannot_carry() -> None:
+    """Two of one name could be taken for one another."""
+    table = np.ones(3)
+
+    def looked_up(k: int) -> float:
+        return float(table[k])
+
+    with pytest.raises(TypeError, match="a kernel may close over whole numbers"):
+        kernel(looked_up)
 
 
 def test_every_status_is_its_own_number() -> None:

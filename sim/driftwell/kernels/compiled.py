@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import hashlib
 import os
+import re
 import shutil
 import stat
 import tempfile
@@ -117,6 +118,7 @@ def kept_in() -> Path:
 
 def _compiled(function: F, **options: Any) -> F:
     """`function` under numba, its machine code kept in the folder of this version's sources."""
+    _name_by_closure(function)
     settings: Any = numba.config
     before = settings.CACHE_DIR
     settings.CACHE_DIR = str(_FOLDER)  # read when the function is decorated, by its cache
@@ -126,6 +128,25 @@ def _compiled(function: F, **options: Any) -> F:
         settings.CACHE_DIR = before
     _take_constants_as_values(made)
     return made
+
+
+def _name_by_closure(function: Callable[..., Any]) -> None:
+    """Put the numbers a function closes over into its name.
+
+    Machine code is linked by name. Numba tells functions of one name apart by a count that each
+    process begins anew: two that differ in what they close over, kept in the cache by different
+    processes, would be taken for one another.
+    """
+    held = [cell.cell_contents for cell in function.__closure__ or ()]
+    for each in held:
+        if not isinstance(each, bool | int):
+            raise TypeError(
+                f"{function.__qualname__} closes over {each!r}; a kernel may close over whole"
+                " numbers and truths only, which its name can carry"
+            )
+    if held:
+        suffix = "_".join(re.sub(r"\W", "m", repr(each)) for each in held)
+        function.__qualname__ = f"{function.__qualname__}_{suffix}"
 
 
 def _take_constants_as_values(made: Any) -> None:
