@@ -16,7 +16,7 @@ import numpy as np
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.answering import answer_all
-from driftwell.assembly import Assembly, assembled
+from driftwell.assembly import Assembly, assembled, remarks
 from driftwell.coulomb.promise import Broken, Promise
 from driftwell.errors import FullError, ScenarioError, StepError
 from driftwell.forms import spelled
@@ -222,11 +222,8 @@ class _Execution:
         self._ledger = Ledger()
         summation = self._loop.summation
         self._observer.told(f"Coulomb sum: {summation.method}; {summation.because}")
-        if parts.frame_remark():
-            self._observer.told(parts.frame_remark())
-        of_images = parts.image_remark()
-        if of_images is not None:
-            self._observer.told(of_images)
+        for each in remarks(parts):
+            self._observer.told(each)
         if not held_already:
             holding.enter_context(made_and_held(self._folder))
         self._writer = RunWriter.create(

@@ -230,6 +230,7 @@ def test_a_file_gives_times_places_and_velocities(tmp_path: Path) -> None:
             "needs an emitter with an area",
         ),
         ({"emitter": {"kind": "file", "path": "a.csv"}, "count": 3}, "leave out `count`"),
+        ({"profile": FLAT, "count": 3, "motion": {"rotation": "1 kHz"}}, "a cloud as a whole"),
         (
             {"profile": {"kind": "gaussian", "centre": "1 us", "rms": "1 us"}, "count": 3},
             "at least 5 `rms`",

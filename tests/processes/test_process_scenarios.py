@@ -200,9 +200,10 @@ def test_a_run_records_what_each_process_gave_and_took(tmp_path: Path) -> None:
 def test_a_run_with_gas_that_was_stopped_ends_bit_for_bit_as_one_that_was_not(
     tmp_path: Path,
 ) -> None:
-    """Through the record's own segments and states, stopped at every look."""
+    """Through the record's own segments and states, stopped at every third look."""
     sections = table(GAS | {"pressure": "1 Pa", "loss": 1e-3}, BATH | {"of": ["rest"]})
     sections |= {"coulomb": {"method": "off"}, "stepping": {"step": "1 us"}}
+    sections |= {"record": {"every": "0.1 ms"}}
     path = tmp_path / "scenario.toml"
     path.write_text(toml_file(sections))
 

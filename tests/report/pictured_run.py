@@ -118,10 +118,12 @@ def pictured_run(
     weight: float = 1.0,
     traces: dict[str, np.ndarray] | None = None,
     sampled: np.ndarray | None = None,
+    cell: tuple[str, float] = ("", 0.0),
 ) -> Run:
     """A run with these charges at each record; `snapshots` : the records that have one.
 
     traces : values (k,), m, by the names of what was traced; sampled : (k,) their times, s
+    cell : axis and length, m, of what repeats
     """
     first = records[0][1]
     count = len(first.id)
@@ -155,6 +157,8 @@ def pictured_run(
             detectors=tuple(detectors),
             tracked=tuple(int(k) for k in tracked),
             traces=tuple(traces or ()),
+            cell_axis=cell[0],
+            cell_length=cell[1],
         ),
     )
     kept = {number % len(records) for number in snapshots}

@@ -55,6 +55,18 @@ def test_ways_in_space_are_dots_where_records_are_far_apart(tmp_path):
         assert ("-" if joined else "None") == front.lines[0].get_linestyle()
 
 
+def test_a_way_out_of_a_cell_and_in_again_is_not_joined(tmp_path):
+    """3 um forward each time, from -5 um on in 10 um: out after 3 and after 6 records."""
+    records = []
+    for k in range(8):
+        along = (3e-6 * k) % 10e-6 - 5e-6
+        records.append((1e-6 * k, Charges(np.array([[0.0, 0.0, along]]), np.ones((1, 3)))))
+    figure = drawn(pictured_run(tmp_path / "run", records, cell=("z", 10e-6)))
+    expected = [-5.0, -2.0, 1.0, 4.0, np.nan, -3.0, 0.0, 3.0, np.nan, -4.0]
+    np.testing.assert_allclose(figure.axes[2].lines[0].get_ydata(), expected, atol=1e-9)
+    np.testing.assert_allclose(figure.axes[3].lines[0].get_xdata(), expected, atol=1e-9)
+
+
 def test_jagged_is_what_turns_much_from_point_to_point():
     def circle(points):
         angle = 2.0 * np.pi * np.arange(100) / points

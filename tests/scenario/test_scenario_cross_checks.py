@@ -91,6 +91,13 @@ def told(folder: Path, text: str, *settings: str) -> list[str]:
             "counted from 0.",
         ),
         (
+            PAIR,
+            'ask = "force"\nof = "pair"\ncharge = 1\nat = "start"',
+            'ask = "tune"\nof = "pair"\naxis = "x"\nperiod = "1 us"\ncharges = 3',
+            's.toml:14 [[question]] "push" charges = 3: asks for charge 2 of "pair", which has 2, '
+            "counted from 0.",
+        ),
+        (
             BEAM,
             '"-8 fC"',
             '"8 fC"',

@@ -28,11 +28,13 @@ class References:
     """Names of clouds and detectors a question refers to; each must exist in the scenario.
 
     charges : named charges, each as its cloud and its number there, counted from 0
+    charge_key : the question's key that names them
     """
 
     clouds: tuple[str, ...] = ()
     detectors: tuple[str, ...] = ()
     charges: tuple[tuple[str, int], ...] = ()
+    charge_key: str = "charge"
 
 
 class QuestionForm(Form):

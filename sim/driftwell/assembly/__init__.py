@@ -1,5 +1,6 @@
 """A scenario's parts put together, ready to be moved through time."""
 
 from driftwell.assembly.parts import Assembly, assembled
+from driftwell.assembly.remarks import remarks
 
-__all__ = ["Assembly", "assembled"]
+__all__ = ["Assembly", "assembled", "remarks"]

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from functools import partial
 from typing import Any
 
 import numpy as np
@@ -30,11 +29,9 @@ from driftwell.coulomb.tree import settings_for
 from driftwell.fields.form import Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.body import Body
-from driftwell.geometry.distance import distances
 from driftwell.images.electrodes import ElectrodeImages, electrode_images
 from driftwell.images.form import ClosedForm, followed
 from driftwell.images.image_sum import Asked, Fineness, Images
-from driftwell.images.importance import importance, remark
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.particles.unborn import Unborn
@@ -140,6 +137,8 @@ class Assembly:
             species=self.species,
             walls=(*(wall.name for wall in self.walls), *self.conductors.names, *self.takers),
             processes=tuple(process.name for process in scenario.process),
+            cell_axis="" if scenario.cell is None else scenario.cell.axis,
+            cell_length=0.0 if scenario.cell is None else scenario.cell.length,
             detectors=tuple(detector.name for detector in scenario.detector),
             tracked=tuple(int(i) for i in self.tracked),
             traces=tuple(trace_name(request) for request in self.requests),
@@ -198,32 +197,6 @@ class Assembly:
     def frame_remark(self) -> str:
         """What is to be said of the frames the charges are summed in; empty: nothing."""
         return "" if self.frames is None else self.frames.because
-
-    def image_remark(self) -> str | None:
-        """What is to be said of images that are left out, or taken without need; None: nothing."""
-        form = self.scenario.images
-        if isinstance(form, ClosedForm):
-            distance = partial(_distance_from, form)
-        elif self.conductors.names:
-            distance = partial(_distance_between, self.conductors)
-        else:
-            return None
-        estimates = []
-        for cloud in self.clouds:
-            if cloud.emitted:
-                continue
-            own = self.particles.kept(self.particles.cloud == cloud.index)
-            estimates.append(
-                importance(
-                    cloud.name,
-                    own.position,
-                    own.charge * own.weight,
-                    own.mass * own.weight,
-                    distance,
-                    self.scenario.duration,
-                )
-            )
-        return remark(estimates, form is not None)
 
 
 def assembled(
@@ -344,13 +317,3 @@ def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:
         particles.mass * particles.weight,
         unfit=bool(scenario.images or scenario.cell or scenario.source),
     )
-
-
-def _distance_from(form: ClosedForm, points: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Distances of points (n, 3) from the one conductor, m."""
-    return form.depth(points.T)
-
-
-def _distance_between(conductors: Conductors, points: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Distances of points (n, 3) from the nearest electrode, m."""
-    return distances(conductors.table, points)[0]

@@ -220,7 +220,7 @@ class FrameWatch:
                 'Set coulomb.frame = "bunch" to have it.'
             )
         return (
-            f"{text} (rms) in all directions: its forces err by about {now.square:.1g} for that, "
+            f"{text} (rms) in all directions: its forces err by about {now.square:.2g} for that, "
             f"more than coulomb.accuracy = {self._accuracy:g}, and no frame mends it."
         )
 
@@ -236,6 +236,6 @@ class FrameWatch:
         return (
             f"In the rest frame of {names} the charges move at "
             f"{math.hypot(now.along, now.across):.1e} c, rms{causes}: the force on each errs by "
-            f"about {now.missed:.1e} for that, more than coulomb.accuracy = "
+            f"about {now.missed:.2e} for that, more than coulomb.accuracy = "
             f"{self._accuracy:g}; much of it cancels where they move in all directions."
         )

@@ -100,7 +100,7 @@ class FieldForm(Form):
         """Angular frequencies (rad/s) a particle of `body` would move or be driven with.
 
         The names are those the automatic step choice shows: "drive", "secular", "axial",
-        "radial", "oscillation", "cyclotron", "magnetron".
+        "radial", "oscillation", "cyclotron", "magnetron", "crossing".
         """
         return {}
 

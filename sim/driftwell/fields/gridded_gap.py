@@ -26,6 +26,7 @@ from driftwell.forms.waveforms import (
     AnyWaveform,
     VoltageWave,
     frequency_scale,
+    largest_value,
     packed_waveform,
     waveform_words,
 )
@@ -63,8 +64,11 @@ class GriddedGap(FieldForm):
         )
 
     def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
+        """The drive's, and that of a crossing: from grid to grid, from rest at the first."""
+        pull = abs(body.charge_to_mass) * largest_value(self.voltage)
+        crossing = 2.0 * math.pi * math.sqrt(0.5 * pull) / self.length
         drive = 2.0 * math.pi * frequency_scale(self.voltage)
-        return {"drive": drive} if drive else {}
+        return {name: rate for name, rate in (("crossing", crossing), ("drive", drive)) if rate}
 
     def words(self) -> str:
         direction = ", ".join(f"{component:.6g}" for component in self.along)

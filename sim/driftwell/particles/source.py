@@ -131,6 +131,8 @@ class Source(Form):
             self._refuse_unclear_pulse()
         if self.motion is not None and self.emission_temperature is not None:
             raise refuse("needs either `motion` or `emission_temperature`, not both")
+        if self.motion is not None and self.motion.rotation:
+            raise refuse("`rotation` turns a cloud as a whole; what a source bears has none")
         if self.space_charge_limited and self.current is None:
             raise refuse("`space_charge_limited` needs a `current`, the most that is supplied")
         if self.space_charge_limited and not self.emitter.has_area():

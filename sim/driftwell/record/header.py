@@ -48,6 +48,7 @@ class Header:
     images : the conductors that answer to the charges, in words; empty where none do
     walls : names of what takes charges: the walls, then the electrodes, then processes
     processes : names of what else acts on charges
+    cell_axis, cell_length : along which axis all repeats, and after how many m; "" and 0: nothing
     tracked : ids of the charges whose trajectories are kept
     traces : names of the traced coordinates, from :func:`trace_name`
     """
@@ -76,6 +77,8 @@ class Header:
     field_digest: str = ""
     images: str = ""
     processes: tuple[str, ...] = ()
+    cell_axis: str = ""
+    cell_length: float = 0.0
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)

@@ -375,6 +375,8 @@ HEADER = (
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of what takes charges: walls, electrodes, processes"),
     Attribute("processes", "texts", "", "names of what else acts on charges, in order", 3),
+    Attribute("cell_axis", "text", "", "x, y or z: along it all repeats; empty: nothing does", 3),
+    Attribute("cell_length", "float64", "m", "period of what repeats; 0 where nothing does", 3),
     Attribute("detectors", "texts", "", "names of the detectors, in order"),
     Attribute("traces", "texts", "", "names of the traces, in order"),
 )

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from driftwell.answers.evidence import CloudFacts, Moments
 from driftwell.answers.kinds.temperature import Temperature
 from driftwell.report.palette import BLUE, GREEN, VERMILLION, colour, line_style
+from driftwell.report.panel import ACROSS_MOST
 from driftwell.report.projection import cloud_key
 from driftwell.report.ruler import Ruler
 from driftwell.report.scene import Scene
@@ -63,7 +64,7 @@ def sizes_picture(scene: Scene) -> Figure | None:
     if not sized and all(np.ptp(moments.count) == 0 for _, moments in kept):
         return None
     alone = len(kept) == 1
-    columns = 1 if alone else len(AXES)
+    columns, most = (1, ACROSS_MOST) if alone else (len(AXES), 4)
     rows = 3 if sized else 1
     key = (
         [
@@ -83,7 +84,7 @@ def sizes_picture(scene: Scene) -> Figure | None:
             panels = [figure.add_subplot(grid[row, column]) for column in range(columns)]
             put_quantity(panels, sized, times, (name, unit), quantity, alone)
             for panel in panels:
-                put_time(panel, times, labelled=not alone and row == 1)
+                put_time(panel, times, labelled=not alone and row == 1, most=most)
     left = figure.add_subplot(grid[rows - 1, :])
     put_counts(left, kept, times, alone)
     return figure

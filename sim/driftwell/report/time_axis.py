@@ -10,7 +10,7 @@ from matplotlib.axes import Axes
 from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 from numpy.typing import ArrayLike, NDArray
 
-from driftwell.report.panel import put_across, put_up
+from driftwell.report.panel import ACROSS_MOST, put_across, put_up
 from driftwell.report.ruler import Ruler, in_words, interval, prefix_size, ruler
 
 Floats = NDArray[np.float64]
@@ -29,14 +29,19 @@ def time_ruler(times: ArrayLike) -> Ruler:
 
 
 def put_time(
-    axes: Axes, times: Ruler, recorded: Floats | None = None, labelled: bool = True
+    axes: Axes,
+    times: Ruler,
+    recorded: Floats | None = None,
+    labelled: bool = True,
+    most: int = ACROSS_MOST,
 ) -> None:
     """Give a panel its time axis.
 
     recorded : times of the records, s: how far apart they are is said
     labelled : whether numbers and name stand below the axis
+    most : numbers along the axis
     """
-    put_across(axes, times, "time")
+    put_across(axes, times, "time", most)
     if labelled:
         axes.set_xlabel(times.label("time") + _spacing(recorded))
     else:

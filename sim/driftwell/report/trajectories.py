@@ -35,7 +35,10 @@ SIDE_RATIO, FRONT_RATIO = 1.5, 1.0
 
 @dataclass(frozen=True, slots=True)
 class Way:
-    """Where one charge was: times (k,), s, and positions (k, 3), m; `lost` : ended on a wall."""
+    """Where one charge was: times (k,), s, and positions (k, 3), m; `lost` : ended on a wall.
+
+    A row that is not a number stands where it left a periodic cell and came in again.
+    """
 
     charge: int
     time: Floats
@@ -58,6 +61,7 @@ def trajectories_picture(scene: Scene) -> Figure | None:
     figure = sheet(scene.run, 9.6, 6.9, key)
     halves = figure.add_gridspec(1, 2, width_ratios=[1.35, 1.0])
     places = np.concatenate([way.position for way in ways])
+    places = places[np.isfinite(places).all(axis=1)]
     reach = float(np.ptp(places, axis=0).max())
     times = time_ruler([0.0, scene.run.end_time])
     rows = halves[0].subgridspec(3, 1)
@@ -121,7 +125,7 @@ def jagged(across: Floats, up: Floats, most: float, seen: float = 0.0) -> bool:
     steps = np.diff(np.stack([across, up]))
     if steps.shape[1] < FEW:
         return False
-    length, turn = (np.median(np.hypot(*each)) for each in (steps, np.diff(steps)))
+    length, turn = (np.nanmedian(np.hypot(*each)) for each in (steps, np.diff(steps)))
     return bool(turn > max(most * length, seen))
 
 
@@ -141,4 +145,16 @@ def _way(scene: Scene, charge: int) -> Way | None:
     if len(loss):
         time = np.append(time, loss["time"][:1])
         position = np.concatenate([position, loss["position"][:1]])
-    return Way(charge, time, position, len(loss) > 0) if time.size > 1 else None
+    if time.size < 2:
+        return None
+    return Way(charge, *_cut(scene, time, position), len(loss) > 0)
+
+
+def _cut(scene: Scene, time: Floats, position: Floats) -> tuple[Floats, Floats]:
+    """A way with a break wherever the charge left the periodic cell and came in again."""
+    header = scene.run.header
+    if not header.cell_axis:
+        return time, position
+    along = position[:, AXES.index(header.cell_axis)]
+    jumps = np.flatnonzero(np.abs(np.diff(along)) > 0.5 * header.cell_length) + 1
+    return np.insert(time, jumps, time[jumps]), np.insert(position, jumps, np.nan, axis=0)

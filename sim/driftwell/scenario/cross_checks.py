@@ -153,13 +153,14 @@ def _named_charge_faults(scenario: Scenario, amounts: Sequence[Amount]) -> Itera
     names += [source.name for source in scenario.source]
     counts = {name: amount.count for name, amount in zip(names, amounts, strict=True)}
     for i, question in enumerate(scenario.question):
-        for cloud, number in question.refers_to().charges:
+        refers = question.refers_to()
+        for cloud, number in refers.charges:
             if number >= counts[cloud]:
                 text = (
                     f'asks for charge {number} of "{cloud}", which has {counts[cloud]}, counted '
                     "from 0"
                 )
-                yield Fault(("question", i, "charge"), "", text)
+                yield Fault(("question", i, refers.charge_key), "", text)
 
 
 def _place_faults(scenario: Scenario, folder: Path, conductors: Conductors | None) -> list[Fault]:

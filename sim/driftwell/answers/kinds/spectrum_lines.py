@@ -11,6 +11,7 @@ there from the start, of all clouds or of the one that `by` names. The error joi
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import ClassVar, Literal
 
 from driftwell.answers.answer import Answer
@@ -80,7 +81,7 @@ class FrequencyShift(TracedQuestion):
     def refers_to(self) -> References:
         refers = super().refers_to()
         clouds = refers.clouds if self.by is None else (*refers.clouds, self.by)
-        return References(clouds=clouds, charges=refers.charges)
+        return replace(refers, clouds=clouds)
 
     def answer(self, evidence: Evidence) -> Answer:
         traced, lines = self.lines(evidence)

@@ -75,7 +75,9 @@ class _TuneQuestion(QuestionForm):
         return Needs(traces=self.requests(self.axis))
 
     def refers_to(self) -> References:
-        return References(clouds=(self.of,), charges=((self.of, self.charges - 1),))
+        return References(
+            clouds=(self.of,), charges=((self.of, self.charges - 1),), charge_key="charges"
+        )
 
     def requests(self, axis: str) -> tuple[TraceRequest, ...]:
         """What to trace of every charge followed, along an axis."""
