@@ -72,6 +72,31 @@ def test_the_digest_changes_with_any_source(tmp_path: Path) -> None:
     assert all(len(digest) == 12 for digest in found)
 
 
+def test_the_digest_leaves_out_layers_that_hold_no_compiled_code(tmp_path: Path) -> None:
+    """An edit of what is above all kernels need not compile them anew; see the import contracts."""
+    here = package(tmp_path / "package")
+    before = sources_digest(here)
+    (here / "report").mkdir()
+    (here / "report" / "page.py").write_text("c = 3\n")
+    (here / "run.py").write_text("d = 4\n")
+    assert before == sources_digest(here)
+    (here / "inner" / "run.py").write_text("e = 5\n")
+    assert before != sources_digest(here)
+
+
+@pytest.mark.parametrize("name", sorted(compiled.ABOVE))
+def test_no_layer_left_out_of_the_digest_decorates_a_kernel(name: str) -> None:
+    """It would be compiled once and then never again, whatever was edited."""
+    place = Path(driftwell.__file__).parent / name
+    files = [place] if place.is_file() else list(place.rglob("*.py"))
+    assert files
+    for file in files:
+        text = file.read_text()
+        assert "_kernel\n" not in text, file
+        assert "from driftwell.kernels import" not in text, file
+        assert "njit" not in text, file
+
+
 def test_the_folder_is_named_by_version_and_sources(home: Path) -> None:
     """In the user's own cache."""
     expected = home / ".cache" / "driftwell" / f"kernels-{__version__}-{sources_digest()}"

@@ -99,7 +99,7 @@ def relativistic(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:
 
 
 def _steps(n: int) -> int:
-    return 50_000_000 // n
+    return 200_000_000 // n
 
 
 def _step() -> float:

@@ -2,8 +2,8 @@
 
 Numba's cache notices an edit of the decorated function's own file, but not of the functions it
 calls: a cached caller would go on with the old callee. So the cache lives in a folder named by a
-digest of *all* sources of the package; an edit or an upgrade begins a new folder. Folders not used
-for a month are removed.
+digest of all sources of the package that compiled code may be made from; an edit of these or an
+upgrade begins a new folder. Folders not used for a month are removed.
 """
 
 from __future__ import annotations
@@ -28,6 +28,9 @@ PAIR_FLAGS = frozenset({"reassoc", "contract", "arcp", "nsz"})
 SUM_FLAGS = frozenset({"reassoc", "contract"})
 """What sums over the charges may do: take them in lanes, in an order fixed by their number."""
 
+ABOVE = frozenset({"assembly", "cli", "estimate.py", "report", "run.py", "study", "timed_run.py"})
+"""The layers above all that hold compiled code: imports go downward only, so none needs them."""
+
 _MONTH = 30 * 24 * 3600.0
 _PACKAGE = Path(__file__).resolve().parent.parent
 
@@ -35,10 +38,13 @@ F = TypeVar("F", bound=Callable[..., Any])
 
 
 def sources_digest(package: Path = _PACKAGE) -> str:
-    """Twelve hex digits that change when any source file of the package changes."""
+    """Twelve hex digits that change with the source files compiled code may be made from."""
     digest = hashlib.sha256()
     for path in sorted(package.rglob("*.py")):
-        digest.update(path.relative_to(package).as_posix().encode())
+        within = path.relative_to(package)
+        if within.parts[0] in ABOVE:
+            continue
+        digest.update(within.as_posix().encode())
         digest.update(path.read_bytes())
     return digest.hexdigest()[:12]
 
