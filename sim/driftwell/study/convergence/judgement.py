@@ -1,0 +1,100 @@
+"""From the answers of all runs to the errors of the judged one's."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter
+from collections.abc import Mapping, Sequence
+
+from driftwell.answers.answer import Answer
+from driftwell.study.convergence.axes import Axis, Level
+from driftwell.study.convergence.differences import (
+    AxisError,
+    error_of_chance,
+    error_of_one,
+    error_of_step,
+    error_of_weight,
+    nothing_told,
+)
+from driftwell.study.convergence.plan import BASE, Plan
+from driftwell.study.convergence.verdict import Convergence
+
+Key = tuple[str, str, str, int]
+Answers = Mapping[Level, Mapping[Key, Answer]]
+
+
+def judged(
+    plan: Plan, digests: Mapping[int, str], answers: Mapping[str, Sequence[Answer]]
+) -> list[Convergence]:
+    """All answers of the judged run, each with its errors.
+
+    digests : of the runs by the numbers of their cases; answers : of the runs that have any, by
+    their digests
+    """
+    found = {
+        level: _by_key(answers.get(digests.get(number, ""), ()))
+        for number, level in enumerate(plan.levels, 1)
+    }
+    return [_judged(plan, key, found) for key in found[BASE]]
+
+
+def _by_key(answers: Sequence[Answer]) -> dict[Key, Answer]:
+    """The answers by question and unit; those alike in all by their order too."""
+    seen: Counter[tuple[str, str, str]] = Counter()
+    found = {}
+    for answer in answers:
+        what = (answer.name, answer.ask, answer.unit)
+        seen[what] += 1
+        found[(*what, seen[what])] = answer
+    return found
+
+
+def _judged(plan: Plan, key: Key, found: Answers) -> Convergence:
+    answer = found[BASE][key]
+    errors: dict[str, AxisError] = {}
+    if math.isfinite(answer.value):
+        replicas, chance = [answer.value], answer.error or 0.0
+        for axis in plan.axes:
+            if axis.name == "seeds":
+                values = _values(axis, key, found)
+                replicas += [value for value in values if math.isfinite(value)]
+                errors["seeds"] = (
+                    nothing_told(len(replicas), 1 + len(values))
+                    if len(replicas) <= len(values)
+                    else error_of_chance(replicas)
+                )
+                if math.isfinite(errors["seeds"].error):
+                    chance = max(chance, errors["seeds"].error)
+        for axis in plan.axes:
+            if axis.name != "seeds":
+                errors[axis.name] = _error(plan, axis, key, found, replicas, chance)
+    ordered = {axis.name: errors[axis.name] for axis in plan.axes if axis.name in errors}
+    return Convergence(answer, ordered, plan.random and "seeds" not in errors)
+
+
+def _error(
+    plan: Plan, axis: Axis, key: Key, found: Answers, replicas: Sequence[float], chance: float
+) -> AxisError:
+    value = replicas[0]
+    values = _values(axis, key, found)
+    known = [each for each in values if math.isfinite(each)]
+    if len(known) < len(values):
+        return nothing_told(1 + len(known), 1 + len(values))
+    if axis.name == "step":
+        return error_of_step(
+            (value, *values), plan.step_lengths, plan.scheme_order, chance, replicas
+        )
+    if axis.name == "weight":
+        own = [found[level][key].error for level in axis.levels]
+        told = [error for error in own if error is not None]
+        finer = math.hypot(*told) / math.sqrt(len(told)) if told else chance
+        return error_of_weight(replicas, values, (chance, finer), axis.left)
+    direct = "coulomb.method=direct" in axis.levels[0].settings
+    words = "difference to the direct sum" if direct else "difference"
+    return error_of_one(value, values[0], chance, replicas, words)
+
+
+def _values(axis: Axis, key: Key, found: Answers) -> list[float]:
+    """The values of an axis's runs; not a number where there is none."""
+    answers = (found[level].get(key) for level in axis.levels)
+    return [math.nan if answer is None else answer.value for answer in answers]
