@@ -12,14 +12,9 @@ from driftwell.report.gallery import FOLDER, hang
 from driftwell.report.palette import BLACK, COLOURS, INK, MARKERS, PALE
 from driftwell.report.sheet import Entry, page, png, printable, style
 from driftwell.study.convergence.axes import AXES
+from driftwell.study.convergence.chance import OF_THE_WHOLE
 from driftwell.study.convergence.table import Report
-from driftwell.study.convergence.verdict import (
-    CHANCE,
-    CONVERGED,
-    OF_THE_WHOLE,
-    Convergence,
-    in_words,
-)
+from driftwell.study.convergence.verdict import CHANCE, CONVERGED, Convergence, in_words
 
 PICTURE = "convergence.png"
 MOST_ROWS = 40

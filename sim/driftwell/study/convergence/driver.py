@@ -56,7 +56,7 @@ def converge(
         return Outcome(result, None)
     run = open_run(run_folder(folder, digest))
     plan = planned(wanted, run)
-    told(plan, cost(plan, catalogue, run.outcome.wall_time or 0.0, sharing_of))
+    told(plan, cost(plan, folder, run.outcome.wall_time or 0.0, sharing_of))
     result = swept(plan.study)
     if result.stopped:
         return Outcome(result, None)

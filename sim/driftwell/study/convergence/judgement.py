@@ -8,6 +8,7 @@ from collections.abc import Mapping, Sequence
 
 from driftwell.answers.answer import Answer
 from driftwell.study.convergence.axes import Axis, Level
+from driftwell.study.convergence.chance import Chance, chance_of
 from driftwell.study.convergence.differences import (
     AxisError,
     error_of_chance,
@@ -51,30 +52,31 @@ def _by_key(answers: Sequence[Answer]) -> dict[Key, Answer]:
 
 def _judged(plan: Plan, key: Key, found: Answers) -> Convergence:
     answer = found[BASE][key]
-    errors: dict[str, AxisError] = {}
-    if math.isfinite(answer.value):
-        replicas, chance = [answer.value], answer.error or 0.0
-        for axis in plan.axes:
-            if axis.name == "seeds":
-                values = _values(axis, key, found)
-                replicas += [value for value in values if math.isfinite(value)]
-                errors["seeds"] = (
-                    nothing_told(len(replicas), 1 + len(values))
-                    if len(replicas) <= len(values)
-                    else error_of_chance(replicas)
-                )
-                if math.isfinite(errors["seeds"].error):
-                    chance = max(chance, errors["seeds"].error)
-        for axis in plan.axes:
-            if axis.name != "seeds":
-                errors[axis.name] = _error(plan, axis, key, found, replicas, chance)
-    ordered = {axis.name: errors[axis.name] for axis in plan.axes if axis.name in errors}
-    return Convergence(answer, ordered, plan.random and "seeds" not in errors)
+    if not math.isfinite(answer.value):
+        return Convergence(answer, {}, Chance(math.nan, "unknown"), plan.random)
+    seeds = [
+        value
+        for axis in plan.axes
+        if axis.name == "seeds"
+        for value in (answer.value, *_values(axis, key, found))
+    ]
+    known = [value for value in seeds if math.isfinite(value)] or [answer.value]
+    chance = chance_of(answer, known)
+    errors = {}
+    for axis in plan.axes:
+        if axis.name != "seeds":
+            errors[axis.name] = _error(plan, axis, key, found, known, chance.error)
+        elif len(known) < len(seeds):
+            errors["seeds"] = nothing_told(len(known), len(seeds))
+        else:
+            errors["seeds"] = error_of_chance(seeds)
+    return Convergence(answer, errors, chance, plan.random)
 
 
 def _error(
-    plan: Plan, axis: Axis, key: Key, found: Answers, replicas: Sequence[float], chance: float
+    plan: Plan, axis: Axis, key: Key, found: Answers, replicas: Sequence[float], by_chance: float
 ) -> AxisError:
+    chance = 0.0 if math.isnan(by_chance) else by_chance
     value = replicas[0]
     values = _values(axis, key, found)
     known = [each for each in values if math.isfinite(each)]
@@ -85,13 +87,21 @@ def _error(
             (value, *values), plan.step_lengths, plan.scheme_order, chance, replicas
         )
     if axis.name == "weight":
-        own = [found[level][key].error for level in axis.levels]
-        told = [error for error in own if error is not None]
-        finer = math.hypot(*told) / math.sqrt(len(told)) if told else chance
+        finer = chance * _relative(key, found, axis.levels)
         return error_of_weight(replicas, values, (chance, finer), axis.left)
     direct = "coulomb.method=direct" in axis.levels[0].settings
     words = "difference to the direct sum" if direct else "difference"
     return error_of_one(value, values[0], chance, replicas, words)
+
+
+def _relative(key: Key, found: Answers, finer: Sequence[Level]) -> float:
+    """Sampling errors of finer runs, root mean square, over the judged run's; 1 if unknown."""
+    base = found[BASE][key].error
+    errors = [found[level][key].error for level in finer]
+    told = [error for error in errors if error is not None and math.isfinite(error)]
+    if not base or not told:
+        return 1.0
+    return math.hypot(*told) / math.sqrt(len(told)) / base
 
 
 def _values(axis: Axis, key: Key, found: Answers) -> list[float]:

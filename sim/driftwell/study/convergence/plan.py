@@ -7,13 +7,12 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from driftwell.assembly import assembled
-from driftwell.errors import StudyError
+from driftwell.errors import RecordError, StudyError
 from driftwell.forms.wording import toml_text
-from driftwell.record.reader import Run
+from driftwell.record.reader import Run, open_run
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from driftwell.study.axis import PURE
 from driftwell.study.cases import study_of
-from driftwell.study.catalogue import Catalogue
 from driftwell.study.convergence.axes import (
     AXES,
     SCHEME_ORDERS,
@@ -28,6 +27,7 @@ from driftwell.study.forecast import BESIDES
 from driftwell.study.missing import ANSWERED, Needed, load_of, needed_by
 from driftwell.study.points import Axis as Varied
 from driftwell.study.read import Study
+from driftwell.study.sweep_folder import run_folder
 
 BASE = Level("", 1.0, 1, (), 1.0)
 """The run that is judged."""
@@ -122,21 +122,26 @@ class Cost:
     clock: float
 
 
-def cost(
-    plan: Plan, catalogue: Catalogue, base: float, sharing_of: Callable[[Load], Sharing]
-) -> Cost:
-    """What the runs that are not there will cost; base : s that the judged run took."""
+def cost(plan: Plan, folder: Path, base: float, sharing_of: Callable[[Load], Sharing]) -> Cost:
+    """What the runs that are not in the folder will cost; base : s that the judged run took."""
     missing: dict[str, tuple[Needed, float]] = {}
     for case, level in zip(plan.study.cases, plan.levels, strict=True):
         needed = needed_by(read_scenario(plan.study.scenario_path, case.settings))
-        row = catalogue.find(needed.digest)
-        if row is None or row.word not in ANSWERED:
+        if not _is_there(folder, needed.digest):
             missing.setdefault(needed.digest, (needed, BESIDES + level.cost * base))
     if not missing:
         return Cost(0, 0.0, 0.0)
     each = [seconds for _, seconds in missing.values()]
     sharing = sharing_of(load_of([needed for needed, _ in missing.values()]))
     return Cost(len(each), sum(each), max(sum(each) / sharing.workers, *each))
+
+
+def _is_there(folder: Path, digest: str) -> bool:
+    """Whether the run has come to its end."""
+    try:
+        return open_run(run_folder(folder, digest)).outcome.word in ANSWERED
+    except RecordError:
+        return False
 
 
 def _as_case(loaded: LoadedScenario, level: Level) -> LoadedScenario:

@@ -4,13 +4,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 from driftwell.answers.answer import Answer
+from driftwell.study.convergence.chance import OF_THE_WHOLE, Chance
 from driftwell.study.convergence.differences import AxisError
 
-OF_THE_WHOLE = ("fraction-left", "fraction-through", "transmission")
-"""Questions whose answers are parts of a whole: a tolerance means so much of the whole."""
 NEGLIGIBLE = 1.0 / 3.0
 """An error below this part of the tolerance, or of all errors, needs no order."""
 CONVERGED, NOT_ALL, NO_VALUE = "converged", "not answered in all runs", "no value"
@@ -24,20 +23,14 @@ class Convergence:
 
     answer : of the judged run
     axes : errors by the names of the axes that matter
-    random : whether chance has a part in it though no error by chance is known
-    chance : error by chance, the larger of the run's own and that from the seeds
+    by_chance : sampling and seeds weighed against each other
+    random : whether chance has a part in it
     """
 
     answer: Answer
     axes: Mapping[str, AxisError]
-    random: bool = False
-    chance: float = field(init=False)
-
-    def __post_init__(self) -> None:
-        seeds = self.axes.get("seeds")
-        found = [self.answer.error, None if seeds is None else seeds.error]
-        known = [each for each in found if each is not None and math.isfinite(each)]
-        object.__setattr__(self, "chance", max(known, default=math.nan))
+    by_chance: Chance
+    random: bool
 
     @property
     def combined(self) -> float:
@@ -46,7 +39,9 @@ class Convergence:
 
     def parts(self) -> dict[str, float]:
         """What the combined error is made of: chance once, then every axis but the seeds."""
-        chance = 0.0 if math.isnan(self.chance) and not self.random else self.chance
+        chance = self.by_chance.error
+        if math.isnan(chance) and not self.random:
+            chance = 0.0
         axes = {name: each.error for name, each in self.axes.items() if name != "seeds"}
         return {CHANCE: chance, **axes}
 

@@ -50,9 +50,9 @@ def _parts(row: Convergence) -> list[str]:
     """Each error as part of the value, and how it was found."""
     told = []
     for name, error in row.parts().items():
-        axis = row.axes.get("seeds" if name == CHANCE else name)
+        how = row.by_chance.how if name == CHANCE else _how(row.axes[name])
         size = "unknown" if math.isnan(error) else _share(row, error)
-        told.append(f"{in_words(name)} {size}{_how(name, axis)}")
+        told.append(f"{in_words(name)} {size} ({how})")
     return told
 
 
@@ -67,12 +67,10 @@ def _share(row: Convergence, error: float) -> str:
     return f"{float(f'{error:.2g}'):g}" if not found.unit else f"{found.value} {found.unit}"
 
 
-def _how(name: str, axis: AxisError | None) -> str:
-    if axis is None:
-        return " (sampling)" if name == CHANCE else ""
+def _how(axis: AxisError) -> str:
     if axis.order is not None:
-        return f" (order {axis.order:.2f}, {axis.how})"
-    return f" ({axis.how.partition(':')[0]})"
+        return f"order {axis.order:.2f}, {axis.how}"
+    return axis.how.partition(":")[0]
 
 
 def _known(error: float) -> float | None:
