@@ -6,6 +6,7 @@ import math
 from pathlib import Path
 
 from matplotlib.figure import Figure
+from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
 
 from driftwell._version import __version__
 from driftwell.report.gallery import FOLDER, hang
@@ -22,6 +23,7 @@ _ROW = 0.34
 """Height of a row, inches."""
 _NAME_LONGEST = 34
 _SMALLEST = 1e-16
+_MOST_NUMBERS = 9
 
 
 def draw_convergence(folder: Path, report: Report) -> list[Path]:
@@ -88,7 +90,10 @@ def convergence_figure(report: Report) -> Figure | None:
             label.set_color(INK)
             label.set_fontweight("normal" if kept else "bold")
     axes.set_ylim(len(rows) - 0.5, -0.5)
-    axes.set_xlabel("error, as part of the value (of the whole, for fractions)")
+    axes.xaxis.set_major_locator(LogLocator(subs=(1.0,), numticks=_MOST_NUMBERS))
+    axes.xaxis.set_minor_locator(NullLocator())
+    axes.xaxis.set_major_formatter(FuncFormatter(lambda size, _: f"{100.0 * size:g}"))
+    axes.set_xlabel("error, % of the value (of the whole, for fractions)")
     return figure
 
 

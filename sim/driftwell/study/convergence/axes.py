@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from driftwell.assembly.births import loaded_particles
+from driftwell.coulomb.crossover import LEAST
 from driftwell.coulomb.form import MIXED_ACCURACY, Coulomb
 from driftwell.coulomb.summation import pairs_in_one_sum
 from driftwell.electrodes.form import MOST_ACCURATE, Electrodes
@@ -110,7 +111,7 @@ def axes_of(
 def _step(judged: Judged) -> Axis:
     lengths = [judged.longest / part for part in STEP_PARTS]
     levels = tuple(
-        Level("step", float(part), 1, (_seconds("stepping.step", length),), float(part))
+        Level("step", float(part), 1, tuple(_fixed(judged, length)), float(part))
         for part, length in zip(STEP_PARTS, lengths, strict=True)
     )
     return Axis("step", levels, "half and a quarter of the step")
@@ -182,7 +183,7 @@ def _weight(judged: Judged) -> Axis | str:
         return "every charge is a real one"
     power = 1 if judged.method in {"tree", "off"} else 2
     seeds = replica_seeds(loaded.scenario.seed, WEIGHT_SEEDS)
-    fixed = _fixed_step(judged)
+    fixed = _fixed(judged)
     levels = tuple(
         Level(
             "weight",
@@ -204,7 +205,7 @@ def _seeds(judged: Judged, replicas: int) -> Axis | str:
     seeds = replica_seeds(loaded.scenario.seed, replicas)
     if not is_drawn(loaded):
         return "nothing is drawn at random"
-    fixed = _fixed_step(judged)
+    fixed = _fixed(judged)
     levels = tuple(
         Level("seeds", float(number), number, (*fixed, *_seed(seed, number)), 1.0)
         for number, seed in enumerate(seeds[1:], 2)
@@ -216,19 +217,22 @@ def _one(
     judged: Judged, name: str, fineness: float, settings: Sequence[str], cost: float, words: str
 ) -> Axis:
     """An axis of one run, with the step of the judged one."""
-    level = Level(name, fineness, 1, (*_fixed_step(judged), *settings), cost)
+    level = Level(name, fineness, 1, (*_fixed(judged), *settings), cost)
     return Axis(name, (level,), words)
 
 
-def _fixed_step(judged: Judged) -> list[str]:
-    """The step the judged run has chosen by itself, so that it is no other in the finer ones."""
-    if judged.loaded.scenario.stepping.step != "auto":
-        return []
-    return [_seconds("stepping.step", judged.step)]
+def _fixed(judged: Judged, step: float | None = None) -> list[str]:
+    """What the judged run has chosen by itself, so that the finer ones choose no other.
 
-
-def _seconds(key: str, value: float) -> str:
-    return f"{key}={value!r} s"
+    step : s, another one than it has; None: its own
+    """
+    scenario = judged.loaded.scenario
+    settings = []
+    if step is not None or scenario.stepping.step == "auto":
+        settings.append(f"stepping.step={judged.step if step is None else step!r} s")
+    if scenario.coulomb.method == "auto" and judged.charges >= LEAST:
+        settings.append(f"coulomb.method={judged.method}")
+    return settings
 
 
 def _seed(seed: int, number: int) -> list[str]:
