@@ -26,6 +26,7 @@ TIGHTER = 10.0
 """By how much the tree's error and that of a drawn field are taken smaller; in space, where each
 digit costs far more, it is less."""
 TIGHTER_IN_SPACE = 4.0
+_TIGHTER_COST = 1.5
 _LEAST_ACCURACY = 1e-8
 AFFORDABLE = 8.0
 """Times the tree's work, up to which the direct sum is taken to judge it by."""
@@ -141,7 +142,7 @@ def _coulomb(judged: Judged) -> Axis | str:
     if accuracy < MIXED_ACCURACY:
         texts += _double(form)
     tighter = form.model_copy(update={"method": "tree", "accuracy": accuracy})
-    cost = pairs_in_one_sum(tighter, judged.charges) / work[0]
+    cost = max(pairs_in_one_sum(tighter, judged.charges) / work[0], _TIGHTER_COST)
     words = f"the tree to {accuracy:g} of the force"
     return _one(judged, "coulomb", form.accuracy / accuracy, texts, cost, words)
 

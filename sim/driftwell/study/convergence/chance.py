@@ -17,6 +17,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from statistics import stdev
 
 from scipy.stats import chi2
@@ -59,8 +60,15 @@ def chance_of(answer: Answer, seeds: Sequence[float]) -> Chance:
     if own == 0.0:
         return widened if scatter > 0.0 else borne_out
     ratio = degrees * (scatter / own) ** 2
-    if ratio > chi2.ppf(1.0 - _TAIL, degrees):
+    least, most = _middle(degrees)
+    if ratio > most:
         return widened
-    if scatter == 0.0 or answer.ask in OF_THE_WHOLE or ratio >= chi2.ppf(_TAIL, degrees):
+    if scatter == 0.0 or answer.ask in OF_THE_WHOLE or ratio >= least:
         return borne_out
     return widened
+
+
+@lru_cache
+def _middle(degrees: int) -> tuple[float, float]:
+    """What holds the middle 95 % of eq. 1."""
+    return float(chi2.ppf(_TAIL, degrees)), float(chi2.ppf(1.0 - _TAIL, degrees))
