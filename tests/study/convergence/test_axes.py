@@ -167,3 +167,14 @@ def test_a_source_of_macro_charges_is_refined_as_well(tmp_path: Path) -> None:
 def test_macro_charges_that_are_listed_cannot_be_made_lighter(tmp_path: Path) -> None:
     _, without = found(tmp_path, cloud(POINTS, weight=10.0), stepping={"step": "10 ns"})
     assert '"load": the number of macro-charges is fixed, or cannot be raised' == without["weight"]
+
+
+def test_with_many_seeds_the_first_finer_runs_are_repeated_too(tmp_path: Path) -> None:
+    seeds = replica_seeds(5, 8)
+    axes, _ = found(tmp_path, cloud(count=100, weight=9.0), replicas=8)
+    half = axes["step"].levels[0].settings
+    more = [(*half, f"seed={seeds[1]}"), (*half, f"seed={seeds[2]}")]
+    assert more == settings(axes["step"])[2:]
+    assert [1, 1, 2, 3] == [level.replica for level in axes["step"].levels]
+    assert [1, 2, 3, 4] == [level.replica for level in axes["weight"].levels]
+    assert 7 == len(axes["seeds"].levels)

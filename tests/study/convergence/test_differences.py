@@ -88,6 +88,8 @@ def test_a_bound_comes_from_all_runs_that_scatter_alike() -> None:
     assert "bound" == found.kind
     assert math.sqrt(1 / 2 + 1 / 4) == pytest.approx(found.error, rel=1e-12, abs=0.0)
     assert "below the noise: < 0.87" == found.how
+    found = error_of_step(values, HALVES, 2.0, 1.0, replicas, [0.9, 1.1])
+    assert math.sqrt(1 / 4 + 1 / 4) == pytest.approx(found.error, rel=1e-12, abs=0.0)
     assert math.sqrt(2.0) == pytest.approx(found.noise, rel=1e-12, abs=0.0)
 
 

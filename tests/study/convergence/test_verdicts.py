@@ -62,3 +62,8 @@ def test_what_is_not_known_is_no_convergence() -> None:
 def test_an_answer_without_any_error_is_exact() -> None:
     assert "exact" == row(math.nan, random=False).verdict(None)
     assert "converged" == row(0.0, value=0.0).verdict(0.01)
+
+
+def test_a_bound_that_dominates_asks_for_seeds() -> None:
+    found = row(step=AxisError(0.4, "bound", "below the noise: < 0.4"))
+    assert "dominated by the step, a bound that more seeds lower" == found.verdict(0.01)

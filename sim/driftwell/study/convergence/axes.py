@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -106,7 +106,23 @@ def axes_of(
             without[name] = made
         else:
             found.append(made)
-    return found, without
+    seeds = 1 + sum(len(axis.levels) for axis in found if axis.name == "seeds")
+    own = judged.loaded.scenario.seed
+    return [_repeated(axis, max(0, seeds // 2 - 2), own) for axis in found], without
+
+
+def _repeated(axis: Axis, times: int, own: int) -> Axis:
+    """The axis with its cheapest level repeated with so many further seeds."""
+    if axis.name == "seeds" or times == 0:
+        return axis
+    first, last = axis.levels[0], max(level.replica for level in axis.levels)
+    more = tuple(
+        replace(first, replica=number, settings=(*first.settings, f"seed={seed}"))
+        for number, seed in enumerate(replica_seeds(own, last + times)[last:], last + 1)
+    )
+    return replace(
+        axis, levels=axis.levels + more, words=f"{axis.words}; {times} more seeds of the first"
+    )
 
 
 def _step(judged: Judged) -> Axis:

@@ -79,12 +79,14 @@ def error_of_step(
     scheme_order: float,
     chance: float,
     replicas: Sequence[float],
+    more: Sequence[float] = (),
 ) -> AxisError:
     """The error of ``values[0]`` by its step.
 
     values, lengths : of three runs, from the longest step to the shortest; s
     chance : error by chance of a single run; 0 where none is known
     replicas : values of unrefined runs that scatter by chance, ``values[0]`` among them
+    more : values of refined runs of other seeds
     """
     first, second, third = values
     d = (second - first, third - second)
@@ -102,7 +104,7 @@ def error_of_step(
             error = abs(first - limit)
             return AxisError(error, "richardson", "Richardson", order, True, noise, d, limit)
     if PARTED_STEP * noise <= largest <= LOUD * noise:
-        return _bound((second, third), replicas, chance, d)
+        return _bound((second, third, *more), replicas, chance, d)
     grows = abs(d[1]) > abs(d[0]) * 2.0**-LEAST_ORDER
     words = "difference; it does not shrink with the step" if grows else "difference"
     return AxisError(largest, "difference", words, None, not grows, noise, d)
@@ -124,7 +126,12 @@ def observed_order(differences: Sequence[float], lengths: Sequence[float]) -> fl
 
 
 def error_of_one(
-    base: float, refined: float, chance: float, replicas: Sequence[float], words: str
+    base: float,
+    refined: float,
+    chance: float,
+    replicas: Sequence[float],
+    words: str,
+    more: Sequence[float] = (),
 ) -> AxisError:
     """The error of `base` where one run has an approximation refined until it hardly matters.
 
@@ -136,7 +143,7 @@ def error_of_one(
     if size <= ROUNDING * max(abs(base), abs(refined)):
         return AxisError(size, "unchanged", "unchanged", None, True, noise, (difference,))
     if PARTED_ONCE * noise <= size <= LOUD * noise:
-        return _bound((refined,), replicas, chance, (difference,))
+        return _bound((refined, *more), replicas, chance, (difference,))
     return AxisError(size, "difference", words, None, True, noise, (difference,))
 
 

@@ -82,16 +82,18 @@ def _error(
     known = [each for each in values if math.isfinite(each)]
     if len(known) < len(values):
         return nothing_told(1 + len(known), 1 + len(values))
+    named = list(zip(axis.levels, values, strict=True))
+    same_seed = [each for level, each in named if level.replica == 1]
+    more = [each for level, each in named if level.replica != 1]
     if axis.name == "step":
-        return error_of_step(
-            (value, *values), plan.step_lengths, plan.scheme_order, chance, replicas
-        )
+        along = (value, *same_seed)
+        return error_of_step(along, plan.step_lengths, plan.scheme_order, chance, replicas, more)
     if axis.name == "weight":
         finer = chance * _relative(key, found, axis.levels)
         return error_of_weight(replicas, values, (chance, finer), axis.left)
     direct = "coulomb.method=direct" in axis.levels[0].settings
     words = "difference to the direct sum" if direct else "difference"
-    return error_of_one(value, values[0], chance, replicas, words)
+    return error_of_one(value, same_seed[0], chance, replicas, words, more)
 
 
 def _relative(key: Key, found: Answers, finer: Sequence[Level]) -> float:

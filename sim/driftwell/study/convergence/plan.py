@@ -97,7 +97,8 @@ def planned(wanted: Wanted, judged: Run) -> Plan:
     lengths: list[float] = []
     for axis in axes:
         if axis.name == "step":
-            finer = [assembled(_as_case(loaded, level)).schedule for level in axis.levels]
+            own = [level for level in axis.levels if level.replica == 1]
+            finer = [assembled(_as_case(loaded, level)).schedule for level in own]
             lengths = [scenario.duration / each.total_steps for each in (schedule, *finer)]
     return Plan(
         _study(wanted, loaded, levels),

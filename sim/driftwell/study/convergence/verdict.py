@@ -74,7 +74,10 @@ class Convergence:
             return "exact"
         parts = self.parts()
         largest = max(parts, key=parts.__getitem__)
-        return f"dominated by {CHANCE if largest == CHANCE else f'the {in_words(largest)}'}"
+        if largest == CHANCE:
+            return f"dominated by {CHANCE}"
+        bound = self.axes[largest].kind == "bound"
+        return f"dominated by the {in_words(largest)}" + bound * ", a bound that more seeds lower"
 
 
 def in_words(axis: str) -> str:
