@@ -181,7 +181,8 @@ def forecast_lines(found: Forecast, columns: int) -> list[str]:
         ),
         (
             "runs",
-            f"{found.runs} of {counted_in_words(found.cases, 'case')}, {lasting(found.work)} of work; "
+            f"{found.runs} of {counted_in_words(found.cases, 'case')}, "
+            f"{lasting(found.work)} of work; "
             f"the longest takes {lasting(found.longest)}",
         ),
         ("cores", found.sharing.because),
