@@ -13,13 +13,21 @@ from driftwell.record.reader import Run
 from driftwell.scenario.cautions import cautions
 from driftwell.scenario.model import Scenario
 
+_SOLVED = (
+    "What the electrodes' field does (trap frequencies, depth, focusing) no formula here knows: "
+    "`driftwell fields` solves it and tells its multipoles."
+)
+
 
 def lines_by_hand(scene: Scene) -> list[str]:
     """All that can be worked out by hand, under a heading."""
     values = hand_values(scene)
+    lines = ["", "By hand, of the scenario as it begins:", *hand_lines(values, width())]
     if not values:
-        return ["", "By hand nothing is known of what this scenario holds."]
-    return ["", "By hand, of the scenario as it begins:", *hand_lines(values, width())]
+        lines = ["", "By hand nothing is known of what this scenario holds."]
+    if scene.scenario.electrode:
+        lines += ["", *paragraph(_SOLVED, width())]
+    return lines
 
 
 def caution_lines(scenario: Scenario) -> list[str]:

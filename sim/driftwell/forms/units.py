@@ -1,8 +1,9 @@
 """Units: one registry, made when the first quantity is read.
 
 The units library (pint) takes 0.4 s to load, so nothing imports this module's registry until a
-scenario uses a unit that is not among the usual ones (:mod:`driftwell.forms.usual_units`). Two of its definitions are replaced by CODATA 2022, so that "1 u" and "1 e" in a
-scenario are the constants the forces are computed with.
+scenario uses a unit that is not among the usual ones (:mod:`driftwell.forms.usual_units`). Two of
+its definitions are replaced by CODATA 2022, so that "1 u" and "1 e" in a scenario are the constants
+the forces are computed with.
 """
 
 from __future__ import annotations

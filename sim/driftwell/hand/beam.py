@@ -93,7 +93,7 @@ def flight_to(beam: Beam, detector: PlaneDetector) -> float | None:
     normal = np.array(detector.normal) / math.hypot(*detector.normal)
     if abs(normal[beam.axis]) < 0.999:
         return None
-    middle = float(beam.group.position[beam.axis].mean())
+    middle = float(beam.group.middle[beam.axis])
     away = beam.sense * (detector.at[beam.axis] - middle)
     return away if away > 0.0 else None
 

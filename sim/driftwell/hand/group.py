@@ -18,7 +18,7 @@ from driftwell.forms import on_each_axis
 from driftwell.forms.body import Body
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.shapes.ball import Ball, Ellipsoid
-from driftwell.particles.shapes.beam import BeamForm, BeamKV
+from driftwell.particles.shapes.beam import BeamForm
 from driftwell.particles.shapes.box import Box
 from driftwell.particles.shapes.cylinder import Cylinder
 from driftwell.particles.shapes.gaussian import Gaussian
@@ -71,6 +71,14 @@ class Group:
     def charge(self) -> float:
         """Charge of all, C, signed."""
         return self.number * self.body.charge
+
+    @cached_property
+    def middle(self) -> Floats:
+        """Its middle, (3,), m."""
+        shape = self.form.shape
+        if self.peak_known or isinstance(shape, BeamForm):
+            return np.array(shape.centre)
+        return np.asarray(self.position.mean(axis=1))
 
     @cached_property
     def size(self) -> tuple[float, float, float]:
@@ -164,8 +172,3 @@ class Group:
         if square <= COLD * float(self.drift @ self.drift):
             return 0.0
         return self.body.mass * square / BOLTZMANN
-
-    @property
-    def is_kv(self) -> bool:
-        """Whether it is a beam with a sharp edge across."""
-        return isinstance(self.form.shape, BeamKV | Cylinder)

@@ -41,10 +41,10 @@ def cautions(scenario: Scenario) -> list[str]:
     powered = (*scenario.field, *scenario.electrode)
     voltage = max((abs(v) for each in powered for v in _values(each, "V")), default=0.0)
     magnet = max((_flux_density(field) for field in scenario.field), default=0.0)
-    voltage = max([voltage, *(_accelerating(group, known) for group in groups)])
     energy = max((_energy(cloud, known) for cloud in light), default=0.0)
     if light:
         energy = max(energy, voltage * ELEMENTARY_CHARGE)
+    voltage = max([voltage, *(_accelerating(group, known) for group in groups)])
     found = []
     if voltage > HIGH_VOLTAGE:
         found.append(f"Voltages up to {spelled(voltage, 'V')} kill: insulate, interlock, earth.")
@@ -94,7 +94,7 @@ def _is_light_ion(body: Body) -> bool:
 def _accelerating(group: Cloud | Source, known: Mapping[str, Body]) -> float:
     """Voltage that would give a cloud or a source its energy, V; 0 beyond :data:`ACCELERATED`."""
     volts = _energy(group, known) / abs(known[group.species].charge)
-    return volts if volts <= ACCELERATED else 0.0
+    return float(f"{volts:.3g}") if volts <= ACCELERATED else 0.0
 
 
 def _flux_density(field: FieldForm) -> float:

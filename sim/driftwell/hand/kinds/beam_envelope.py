@@ -110,7 +110,7 @@ def _of_spot(question: SpotSize, scene: Scene) -> HandValue | None:
 
 def _stopped(scene: Scene, beam: Beam, away: float) -> bool:
     """Whether a wall may cut the bunch on its way: one that is no plane beyond it."""
-    middle = float(beam.group.position[beam.axis].mean())
+    middle = float(beam.group.middle[beam.axis])
     reach = away + 0.5 * beam.length
     for wall in scene.scenario.wall:
         if not isinstance(wall, Plane) or abs(wall.normal[beam.axis]) < 0.999 * math.hypot(

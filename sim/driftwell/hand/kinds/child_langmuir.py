@@ -69,6 +69,10 @@ def _value(scene: Scene, source: Source) -> HandValue | None:
     kelvin = source.emission_temperature or 0.0
     if BOLTZMANN * kelvin > 1e-3 * energy:
         reasons.append(f"heat of {BOLTZMANN * kelvin / ELEMENTARY_CHARGE:.2g} eV lets more pass")
+    if scene.scenario.process:
+        reasons.append("a gas slows the charges: far less passes")
+    if source.motion is not None and source.motion.directed():
+        reasons.append("they leave with a speed of their own")
     if not steady(gap.voltage):
         reasons.append("the voltage changes")
     why = "; ".join(reasons) or "a wide plane gap"

@@ -43,7 +43,7 @@ def values(scene: Scene) -> Values:
     """Of every cloud, where such a conductor answers to it."""
     form = scene.scenario.images
     for group in scene.groups:
-        middle = group.position.mean(axis=1)
+        middle = group.middle
         if isinstance(form, PlaneImages):
             height = float(form.depth(middle[:, None])[0])
             if height > 0.0:

@@ -47,7 +47,7 @@ def answer(question: QuestionForm, scene: Scene) -> HandValue | None:
         return None
     # the window must lie where the middle of the bunch passes
     speed = beam.group.speed
-    away = beam.sense * (detector.at[beam.axis] - float(beam.group.position[beam.axis].mean()))
+    away = beam.sense * (detector.at[beam.axis] - float(beam.group.middle[beam.axis]))
     first, last = (away + side * 0.4 * beam.length for side in (-1.0, 1.0))
     if not first / speed <= question.over[0] < question.over[1] <= last / speed:
         return None

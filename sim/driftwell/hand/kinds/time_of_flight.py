@@ -37,8 +37,7 @@ def _value(scene: Scene, group: Group, detector: DetectorForm) -> HandValue | No
     normal /= np.linalg.norm(normal)
     place = np.array(getattr(detector, "at", (0.0, 0.0, 0.0)))
     towards = float(normal @ group.drift) / group.lorentz
-    middle = np.array(group.position.mean(axis=1))
-    away = float(normal @ (place - middle))
+    away = float(normal @ (place - group.middle))
     if towards == 0.0 or away / towards <= 0.0:
         return None
     free = not (scene.scenario.field or scene.scenario.electrode)
