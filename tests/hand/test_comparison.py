@@ -139,5 +139,5 @@ def test_a_run_tells_beside_its_answers_what_the_formula_says(
     assert all(each.by_hand.inside and abs(each.apart) < 0.1 for each in found)
     assert 0 == info(run.folder)
     printed = capsys.readouterr().out
-    assert "By hand, and by the run:\n  size: by hand 693" in printed
+    assert "By hand, and by the run:\n  size: by hand 708" in printed
     assert "(Coulomb explosion of a uniform ball); the run" in " ".join(printed.split())
