@@ -5,10 +5,12 @@ from __future__ import annotations
 import sys
 from pathlib import Path
 
+from driftwell.forms.paragraph import paragraph
 from driftwell.hand.formula import HandKind
 from driftwell.hand.table import HAND_KINDS
 
 PAGE = Path(__file__).parents[1] / "docs" / "hand-calculations.md"
+WIDTH = 100
 
 HEAD = """\
 # Hand calculations
@@ -26,12 +28,13 @@ steps and tells the same besides. Of a study the largest of its runs is worked o
 
 What is taken as given:
 
-- The cloud as the scenario states it, at time zero: sizes and density of its shape, the temperature of
-  its `motion`. Where none is stated (a list of places, a file) they are the moments of the charges as
-  they are placed.
+- The cloud as the scenario states it, at time zero: sizes and density of its shape, the temperature
+  of its `motion`. Where none is stated (a list of places, a file) they are the moments of the
+  charges as they are placed.
 - Fields as they are at time zero, where they step, ramp or pulse later.
-- Traps of ideal quadrupoles and uniform magnets along z. What the field of electrodes does, no formula
-  here knows; where the step follows from it and it was not solved before, steps are not counted either.
+- Traps of ideal quadrupoles and uniform magnets along z. What the field of electrodes does, no
+  formula here knows; where the step follows from it and it was not solved before, steps are not
+  counted either.
 
 ## After a run
 
@@ -45,18 +48,18 @@ By hand, and by the run:
 ```
 
 They agree within two error bars of the run, or one percent. The error bar is the sampling error of
-this one run: what step, force sum and macro-particles do is not in it. Where the scenario lies outside
-the formula's range the line says why, and the difference judges neither. A question is compared only
-where the formula is about the very quantity it asks for: a density or a Debye length only at the start,
-a frequency across a magnet only where `near` says which of the two is meant, the size of a beam only in
-free flight.
+this one run: what step, force sum and macro-particles do is not in it. Where the scenario lies
+outside the formula's range the line says why, and the difference judges neither. A question is
+compared only where the formula is about the very quantity it asks for: a density or a Debye length
+only at the start, a frequency across a magnet only where `near` says which of the two is meant, the
+size of a beam only in free flight.
 
 ## Cautions
 
-Where a scenario holds hazards, `estimate` and `check` end with the usual cautions: voltages above 1 kV
-(also those that give charges their energy), electrons above 5 keV and X-rays, light ions above 2 MeV,
-magnets above 0.5 T, laser light, gas. driftwell says nothing of safety: follow your local codes, and
-have licensed practitioners plan and check what is built.
+Where a scenario holds hazards, `estimate` and `check` end with the usual cautions: voltages above
+1 kV (also those that give charges their energy), electrons above 5 keV and X-rays, light ions above
+2 MeV, magnets above 0.5 T, laser light, gas. driftwell says nothing of safety: follow your local
+codes, and have licensed practitioners plan and check what is built.
 
 ## The formulas
 """
@@ -68,13 +71,13 @@ def page() -> str:
 
 
 def _section(kind: HandKind) -> str:
-    return "\n".join(
-        f"### {formula.name[0].upper()}{formula.name[1:]}\n\n"
-        f"    {formula.equation}\n\n"
-        f"Holds for {formula.range}.\n\n"
-        f"Source: {formula.source.rstrip('.')}.\n"
-        for formula in kind.formulas
-    )
+    lines: list[str] = []
+    for formula in kind.formulas:
+        lines += [f"### {formula.name[0].upper()}{formula.name[1:]}", ""]
+        lines += [*paragraph(formula.equation, WIDTH, "    ", "        "), ""]
+        lines += [*paragraph(f"Holds for {formula.range}.", WIDTH), ""]
+        lines += [*paragraph(f"Source: {formula.source.rstrip('.')}.", WIDTH), ""]
+    return "\n".join(lines)
 
 
 def main(arguments: list[str]) -> int:

@@ -50,9 +50,9 @@ def test_the_envelope_with_emittance_is_that_of_its_equation(distance: float, ed
 
 
 def test_a_short_bunch_is_no_long_beam(tmp_path: Path) -> None:
-    """The same beam, 20 and 2 radii long: only the first lies within the formula's range."""
+    """The same beam, 100 and 2 radii long: only the first lies within the formula's range."""
     screen = {"name": "screen", "kind": "plane", "at": ["0 mm", "0 mm", "200 mm"]}
-    for length, inside in (("100 mm", True), ("10 mm", False)):
+    for length, inside in (("500 mm", True), ("10 mm", False)):
         shape = {"kind": "cylinder", "radius": "5 mm", "length": length}
         found = scene(
             tmp_path,

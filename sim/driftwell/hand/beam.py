@@ -20,8 +20,8 @@ from driftwell.hand.group import Group
 from driftwell.hand.scene import Scene
 from driftwell.walls.plane import PlaneDetector
 
-LONG = 5.0
-"""Length over radius from which a bunch is a beam."""
+LONG = 20.0
+"""Length over radius from which a bunch is a beam, whose ends count little."""
 STRAIGHT = 0.05
 """Spread of directions over which a cloud is no beam, rad rms."""
 
@@ -98,8 +98,8 @@ def flight_to(beam: Beam, detector: PlaneDetector) -> float | None:
     return away if away > 0.0 else None
 
 
-def why_not_free(scene: Scene, beam: Beam) -> list[str]:
-    """Why the cloud is not a long beam by itself in free space."""
+def why_not_free(scene: Scene, beam: Beam, widest: float) -> list[str]:
+    """Why the cloud is not a long beam by itself in free space; widest : its largest edge, m."""
     reasons = []
     if scene.scenario.field or scene.scenario.electrode:
         reasons.append("fields act on it")
@@ -110,8 +110,7 @@ def why_not_free(scene: Scene, beam: Beam) -> list[str]:
         reasons.append("charges do not push each other" if off else "other charges are there")
     if scene.scenario.images is not None:
         reasons.append("images act on it")
-    if beam.length < LONG * beam.edge:
-        reasons.append(
-            f"the bunch is {beam.length / beam.edge:.2g} times as long as its radius, no long beam"
-        )
+    if beam.length < LONG * widest:
+        ratio = beam.length / widest
+        reasons.append(f"the bunch is {ratio:.2g} times as long as its radius: its ends count")
     return reasons

@@ -61,10 +61,11 @@ def values(scene: Scene) -> Values:
 
 
 def _value(scene: Scene, beam: Beam, away: float, what: str) -> HandValue:
-    reasons = why_not_free(scene, beam)
+    edge = envelope(beam, away)
+    reasons = why_not_free(scene, beam, max(edge, beam.edge))
     why = "; ".join(reasons) or "a long beam by itself"
     start = spelled(0.5 * beam.edge, "m", 4)
-    value = 0.5 * envelope(beam, away)
+    value = 0.5 * edge
     return HandValue(FORMULA, what, value, "m", not reasons, f"{start} at the start; {why}")
 
 

@@ -50,10 +50,10 @@ def values(scene: Scene) -> Values:
         beam = beam_of(group)
         if beam is None or beam.perveance <= 0.0:
             continue
-        reasons = why_not_free(scene, beam)
+        hot = []
         thermal = beam.emittance**2 / beam.edge**2
         if thermal > COLD * beam.perveance:
-            reasons.append(f"its emittance is {thermal / beam.perveance:.2g} of its perveance")
+            hot.append(f"its emittance is {thermal / beam.perveance:.2g} of its perveance")
         for detector in scene.detectors:
             away = flight_to(beam, detector)
             if away is None:
@@ -61,6 +61,7 @@ def values(scene: Scene) -> Values:
             value = spread(beam.perveance, beam.edge, away)
             if not math.isfinite(value):
                 continue
+            reasons = [*why_not_free(scene, beam, value), *hot]
             why = "; ".join(reasons) or "a long beam by itself"
             yield HandValue(
                 FORMULA,
