@@ -42,7 +42,7 @@ from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
-from driftwell.solved.acting import ActingField, acting_field
+from driftwell.solved.acting import ActingField, acting_field, field_is_kept
 from driftwell.solved.edges import Edges
 from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.motion import Fields
@@ -200,12 +200,18 @@ class Assembly:
 
 
 def assembled(
-    loaded: LoadedScenario, warn: Warn | None = None, told: Warn | None = None
+    loaded: LoadedScenario,
+    warn: Warn | None = None,
+    told: Warn | None = None,
+    *,
+    solve: bool = True,
 ) -> Assembly:
     """Put a scenario together; the field of its electrodes is solved where it is not kept.
 
     warn : where given, it is told that the run would not fit in memory, and nothing is refused
     told : where given, it is told how the electrodes' field comes about
+    solve : False for parts that are counted, not run: no field is solved that is not kept, and
+        no conductor's images are made ready
 
     Raises
     ------
@@ -228,7 +234,9 @@ def assembled(
     everyone = particles if unborn is None else joined([particles, unborn.particles])
     check_births(scenario, everyone, conductors)
     check_sides(scenario, everyone)  # before anything is solved
-    acting = acting_field(scenario, loaded.folder, told)
+    acting = None
+    if solve or field_is_kept(scenario, loaded.folder):
+        acting = acting_field(scenario, loaded.folder, told)
     edges = tuple(edges_in(scenario, acting))
     check_within(scenario, everyone, edges)
     requests = all_traces(scenario)
@@ -267,7 +275,7 @@ def assembled(
         conductors,
         edges,
         acting,
-        _images(scenario, conductors, everyone, choice),
+        _images(scenario, conductors, everyone, choice) if solve else None,
         unborn,
         frames,
     )

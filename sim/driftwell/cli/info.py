@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
+from driftwell.cli.hand import compared
 from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.errors import DriftwellError
 from driftwell.record.reader import open_run
@@ -13,8 +14,10 @@ from driftwell.record.summary import summary
 def info(path: str | Path) -> int:
     """Print the summary and return 0, or what is wrong with the folder (to stderr) and return 2."""
     try:
-        lines = summary(open_run(path), width(), sign())
+        run = open_run(path)
+        lines = summary(run, width(), sign())
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
-    return 0 if answer(lines) else 2
+    by_hand = compared(run)
+    return 0 if answer([*lines, *([""] * bool(by_hand)), *by_hand]) else 2

@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell.cli.hand import compared
 from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
@@ -92,6 +93,7 @@ def _report(result: Result) -> bool:
         *_doubted(result),
         *_answers(result),
         *force_lines(result.answers, width()),
+        *_by_hand(result),
         "",
         f"record: {result.folder / MASTER}",
     ]
@@ -103,6 +105,12 @@ def _answers(result: Result) -> list[str]:
         return ["The questions are answered once the run is whole."]
     found = answer_lines(result.answers, width(), sign())
     return found or ["The scenario asks no questions: the run only recorded."]
+
+
+def _by_hand(result: Result) -> list[str]:
+    """The answers beside hand calculations."""
+    lines = [] if result.outcome.word == FULL else compared(open_run(result.folder))
+    return ["", *lines] if lines else []
 
 
 def _doubted(result: Result) -> list[str]:
