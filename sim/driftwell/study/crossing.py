@@ -1,8 +1,8 @@
 """Where a noisy function crosses zero: what a few values with errors say of the place.
 
-The function is known at places x_i of [0, 1] as y_i with the standard error s_i. What it is between
-them is not known, so an average over several models is taken, each weighted by how well it foretells
-the values (its evidence):
+The function is known at places x_i of [0, 1] as y_i with the standard error s_i. What it is
+between them is not known, so an average over several models is taken, each weighted by how well it
+foretells the values (its evidence):
 
     smooth    a Gaussian process of mean 0 and covariance A^2 (m(|x - x'|/l) + 1)             (1)
               m of Matern's family with nu = 1/2, 3/2, 5/2, from rough to smooth
@@ -15,8 +15,8 @@ is turned), so that the crossing lies left of x where the function is positive t
     P(crossing < x) = P(f(x) > 0) = normal(mean f(x) / spread f(x))                           (3)
 
 for the smooth models. For the second it is the place of the jump, anywhere in the gap between two
-neighbouring values, ends included. The sum of both is made to rise where chance makes it fall, by the nearest
-rising function (isotonic regression), in which what is nearly certain weighs most.
+neighbouring values, ends included. The sum of both is made to rise where chance makes it fall, by
+the nearest rising function (isotonic regression), in which what is nearly certain weighs most.
 
 Of the smooth models the one that is nearest to the truth wins soon, and values far away help; of a
 step nothing is claimed but that it lies in its gap. The intervals have been held against functions
@@ -151,9 +151,7 @@ def _models(
     return found[:, 0], found[:, 1], found[:, 2]
 
 
-def _covariance(
-    models: tuple[Floats, Floats, Floats], a: Floats, b: Floats
-) -> NDArray[np.float64]:
+def _covariance(models: tuple[Floats, Floats, Floats], a: Floats, b: Floats) -> NDArray[np.float64]:
     """Between places (n,) and (k,) by each model, (m, n, k), eq. 1."""
     smoothness, length, scale = (each[:, None, None] for each in models)
     far = np.sqrt(2.0 * smoothness) * np.abs(a[:, None] - b[None, :]) / length

@@ -55,9 +55,9 @@ class Limit(Form):
     )
     confidence: Confidence = key("probability that the limit is in the interval", default=0.95)
     noise: Literal["auto", "scatter", "none"] = key(
-        "auto: errors of answers are their own sampling errors, or larger where seeds scatter more; "
-        "scatter: by the scatter of seeds alone; none: answers are exact, as where nothing is drawn "
-        "by chance, and no further seeds are run",
+        "auto: errors of answers are their own sampling errors, or larger where seeds scatter "
+        "more; scatter: by the scatter of seeds alone; none: answers are exact, as where nothing "
+        "is drawn by chance, and no further seeds are run",
         default="auto",
     )
     points: Annotated[Count, Bound(least=3, most=1000)] = key(

@@ -47,11 +47,13 @@ class Pooled:
     single : median error of one run, at the places nearest to the threshold
     scatter : how many times larger the scatter of seeds is than the runs' own errors; None where
         that is not known
+    freedom : runs beyond the first of each place
     """
 
     known: Known | None
     single: float
     scatter: float | None
+    freedom: int
 
     @property
     def exact(self) -> bool:
@@ -72,15 +74,15 @@ def pooled(
     value = mean - threshold
     freedom = int(count.sum()) - len(groups)
     if noise == "none":
-        return Pooled(Known(at, value, np.zeros(at.size)), 0.0, None)
+        return Pooled(Known(at, value, np.zeros(at.size)), 0.0, None, freedom)
     errors = [each.error for group in groups for each in group]
     off = [each.value - m for group, m in zip(groups, mean, strict=True) for each in group]
     own = [error for error in errors if error is not None and math.isfinite(error)]
     if noise == "scatter" or len(own) < len(errors):
         if not freedom:
-            return Pooled(None, math.inf, None)
+            return Pooled(None, math.inf, None, freedom)
         single = math.sqrt(math.fsum(x * x for x in off) / freedom) * _wider(freedom)
-        return Pooled(Known(at, value, single / np.sqrt(count)), single, None)
+        return Pooled(Known(at, value, single / np.sqrt(count)), single, None, freedom)
     factor, scatter = 1.0, None
     if freedom and all(own):
         squares = (x * x / (e * e) for x, e in zip(off, own, strict=True))
@@ -92,7 +94,7 @@ def pooled(
     error = np.array(means)
     near = np.argsort(np.abs(value), kind="stable")[:3]
     single = float(np.median((error * np.sqrt(count))[near]))
-    return Pooled(Known(at, value, error), single, scatter)
+    return Pooled(Known(at, value, error), single, scatter, freedom)
 
 
 def _wider(freedom: int) -> float:

@@ -30,6 +30,9 @@ _SURELY = 3.5
 """The same where several crossings are to be told from chance."""
 _MOST_REPLICAS = 8
 """Most new seeds at one place in a round."""
+_COMPARED = 4
+"""Runs beyond the first of each place that must be there before the answers' own errors are
+believed, where the resolution hangs on them."""
 _MOST_FAILED = 3
 _SAME = 0.05
 """Places closer than this part of the interval are one, where noise is what matters."""
@@ -137,7 +140,7 @@ class Search:
             return self._again(self._nearest(2), 2)
         if self.pooled.exact:
             return self._exact(known)
-        return self._noisy(known, self.pooled.single)
+        return self._noisy(known, self.pooled.single, self.pooled.freedom)
 
     def _nearest(self, count: int) -> list[float]:
         """The places whose answers are nearest to the threshold, on both sides where there are."""
@@ -195,7 +198,7 @@ class Search:
         places = {place.lattice: place for place in map(self.asked.place, shares)}
         return [place for place in places.values() if place.lattice not in self._replicas]
 
-    def _noisy(self, known: Known, single: float) -> list[Place]:
+    def _noisy(self, known: Known, single: float, freedom: int) -> list[Place]:
         """Answers with errors: the crossing's probability decides where to look."""
         deviations = known.deviations
         surely = np.flatnonzero(np.abs(deviations) >= _SURELY)
@@ -220,12 +223,19 @@ class Search:
         low, high = self.crossing.interval(self.asked.form.confidence)
         self._note(low, high)
         best = self.crossing.quantile(0.5)
-        if self._narrow(low, high):
-            self.verdict = Verdict(
-                FOUND, self._values(low, high), self.asked.value(best), self._rising(rising)
-            )
-            return []
-        return self._closer(self.crossing, single)
+        if not self._narrow(low, high):
+            return self._closer(self.crossing, single)
+        if freedom < _COMPARED and not self._narrow(*self._doubted(known, rising)):
+            return self._again(self._nearest(2), 2)
+        self.verdict = Verdict(
+            FOUND, self._values(low, high), self.asked.value(best), self._rising(rising)
+        )
+        return []
+
+    def _doubted(self, known: Known, rising: bool) -> tuple[float, float]:
+        """The interval if the answers' own errors were too small by a factor of two."""
+        doubled = Known(known.at, known.value, 2.0 * known.error)
+        return crossing(doubled, rising).interval(self.asked.form.confidence)
 
     def _unclear(self, known: Known) -> list[Place]:
         """All on one side as far as can be told: more seeds where it is not clear."""
