@@ -12,6 +12,7 @@ import sys
 import warnings
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager, nullcontext
+from typing import Any
 
 from driftwell._version import __version__
 from driftwell.cli.converge_arguments import add_converge
@@ -31,6 +32,17 @@ exit codes: 0 every run is there (finished, or every charge lost); 2 the study, 
 the command line cannot be used; 4 stopped on request, the same command goes on; 7 some runs
 failed, the summary says which and why; 8 the cluster's scheduler is gone, the same command
 goes on; 130 interrupted at once; 1 a defect of driftwell
+"""
+
+_LIMIT_EPILOG = """\
+The study file says what is limited in its [limit]. Runs that are there already are not computed
+again; give the same command again after a stop, a crash or a change of the study.
+
+exit codes: 0 the interval is as narrow as asked; 2 the study, the folder or the command line
+cannot be used; 4 stopped on request, the same command goes on; 7 too many runs failed; 8 the
+cluster's scheduler is gone, the same command goes on; 9 no crossing; 10 several crossings;
+11 noise too large, or the runs allowed were too few; 130 interrupted at once; 1 a defect of
+driftwell
 """
 
 TRACEBACK = "DRIFTWELL_TRACEBACK"
@@ -91,34 +103,9 @@ def _parser() -> argparse.ArgumentParser:
         epilog=_SWEEP_EPILOG,
         formatter_class=argparse.RawDescriptionHelpFormatter,
     )
-    sweep.add_argument("study", metavar="STUDY", help="study file (TOML)")
-    sweep.add_argument(
-        "-o",
-        "--output",
-        type=_folder,
-        metavar="FOLDER",
-        help="the sweep's folder (default: the file's name with -sweep, here)",
-    )
-    sweep.add_argument(
-        "--workers",
-        type=_threads,
-        metavar="N",
-        help="runs side by side (default: by number of runs, cores, charges and memory)",
-    )
-    sweep.add_argument(
-        "--threads",
-        type=_threads,
-        metavar="N",
-        help="threads of each run (default: as for --workers)",
-    )
-    sweep.add_argument(
-        "--retry-failed",
-        action="store_true",
-        help="start over the runs whose motion could not be continued",
-    )
-    sweep.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
-    _add_cluster(sweep)
-    _add_settings(sweep)
+    _add_study_options(sweep, "sweep")
+
+    _add_limit(commands)
 
     converge = add_converge(commands, _folder, _threads, _duration)
     _add_cluster(converge)
@@ -171,6 +158,47 @@ def _parser() -> argparse.ArgumentParser:
 
     commands.add_parser("schema", help="print the JSON Schema of scenario files, for editors")
     return parser
+
+
+def _add_limit(commands: Any) -> None:
+    limit = commands.add_parser(
+        "limit",
+        help="find the value of a key at which an answer crosses a threshold",
+        epilog=_LIMIT_EPILOG,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    _add_study_options(limit, "limit")
+
+
+def _add_study_options(parser: argparse.ArgumentParser, what: str) -> None:
+    parser.add_argument("study", metavar="STUDY", help="study file (TOML)")
+    parser.add_argument(
+        "-o",
+        "--output",
+        type=_folder,
+        metavar="FOLDER",
+        help=f"the {what}'s folder (default: the file's name with -{what}, here)",
+    )
+    parser.add_argument(
+        "--workers",
+        type=_threads,
+        metavar="N",
+        help="runs side by side (default: by number of runs, cores, charges and memory)",
+    )
+    parser.add_argument(
+        "--threads",
+        type=_threads,
+        metavar="N",
+        help="threads of each run (default: as for --workers)",
+    )
+    parser.add_argument(
+        "--retry-failed",
+        action="store_true",
+        help="start over the runs whose motion could not be continued",
+    )
+    parser.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    _add_cluster(parser)
+    _add_settings(parser)
 
 
 def _add_cluster(parser: argparse.ArgumentParser) -> None:
@@ -323,11 +351,13 @@ def _carry_out(asked: argparse.Namespace) -> int:
         from driftwell.cli.watch import watch
 
         return watch(asked.folder, asked.once)
-    if asked.command == "sweep":
+    if asked.command in ("sweep", "limit"):
+        from driftwell.cli.limit import limit_command
         from driftwell.cli.sweep import sweep_command
         from driftwell.cli.sweep_place import Place
 
-        return sweep_command(
+        command = sweep_command if asked.command == "sweep" else limit_command
+        return command(
             asked.study,
             asked.output,
             asked.settings,

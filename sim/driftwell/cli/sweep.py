@@ -11,7 +11,7 @@ from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
-from driftwell.errors import DriftwellError
+from driftwell.errors import DriftwellError, StudyError
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
@@ -43,6 +43,11 @@ def sweep_command(
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-sweep")
     try:
         study = read_study(file, settings)
+        if study.limit is not None:
+            raise StudyError(
+                f"{file}: has a [limit], which chooses its values on the way: "
+                f"`driftwell limit {file}` finds it. A sweep needs [[vary]] instead."
+            )
         tell(study.title)
         result, written = _carried_out(
             study, folder, workers, threads, retry_failed, pictures, place

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from driftwell.forms.paragraph import paragraph
+from driftwell.study.limit_asked import Asked
+from driftwell.study.limit_words import asked_in_words
 from driftwell.study.points import Axis
 from driftwell.study.read import Study
 from driftwell.study.summary import value_in_words
@@ -18,6 +20,9 @@ def explain_study(study: Study, width: int) -> list[str]:
     if study.settings:
         rows.append(("set", ", ".join(study.settings)))
     rows += [("varies" if k == 0 else "", _axis(axis)) for k, axis in enumerate(study.axes)]
+    if study.limit is not None:
+        rows[-len(study.axes) :] = _limit(study.limit)
+        return _laid_out(study, rows, width)
     together = _together(study)
     if together:
         rows.append(("together", together))
@@ -26,6 +31,24 @@ def explain_study(study: Study, width: int) -> list[str]:
     if study.replicas > 1:
         runs += f": {points} points, each with {study.replicas} seeds"
     rows.append(("runs", runs))
+    return _laid_out(study, rows, width)
+
+
+def _limit(asked: Asked) -> list[tuple[str, str]]:
+    """What is searched for, and how."""
+    form = asked.form
+    scale = "equal ratios" if asked.log else "equal differences"
+    return [
+        ("limit", asked_in_words(asked)),
+        ("begins", f"with {len(asked.first_places())} values at {scale}"),
+        (
+            "runs",
+            f"at most {form.most_runs}, {form.at_once} at a time; `driftwell limit` finds it",
+        ),
+    ]
+
+
+def _laid_out(study: Study, rows: list[tuple[str, str]], width: int) -> list[str]:
     lines = [study.title]
     for name, words in rows:
         lines += paragraph(words, width, name.ljust(_COLUMN), " " * _COLUMN)

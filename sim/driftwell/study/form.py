@@ -18,6 +18,7 @@ from driftwell.forms import (
     refuse,
 )
 from driftwell.forms.inside import check_inside
+from driftwell.study.limit_form import Limit
 
 MOST_CASES = 100_000
 """Most cases a study may have, replicas counted."""
@@ -114,6 +115,20 @@ class StudyForm(Form):
     )
     vary: tuple[Vary, ...] = key("what changes from case to case", default=())
     sample: Sample | None = key("how ranges are sampled", default=None)
+    limit: Limit | None = key(
+        "the value at which an answer crosses a threshold, instead of what varies", default=None
+    )
+
+    @checked
+    def _searched_or_varied(self) -> Self:
+        if self.limit is not None:
+            others = self.model_fields_set & {"vary", "sample", "replicas"}
+            if others:
+                named = " and ".join(f"`{name}`" for name in sorted(others))
+                raise refuse(
+                    f"[limit] chooses values and seeds by itself; leave out {named}, or [limit]"
+                )
+        return self
 
     @checked
     def _in_its_folder(self) -> Self:

@@ -108,7 +108,7 @@ def expand(
     if faults:
         return (), (), faults
     axes = tuple(_axis(entry, group) for entry, group in zip(stepped, order.groups, strict=True))
-    seeds = replica_seeds(_own_seed(data), form.replicas)
+    seeds = replica_seeds(own_seed(data), form.replicas)
     return axes, tuple(_cases(stepped, order, settings, seeds)), []
 
 
@@ -129,7 +129,8 @@ def replica_seeds(seed: int, count: int) -> tuple[int, ...]:
     return (seed, *(int(each) >> (64 - SEED_BITS) for each in drawn))
 
 
-def _own_seed(data: Mapping[str, Any]) -> int:
+def own_seed(data: Mapping[str, Any]) -> int:
+    """The seed in a scenario's raw table."""
     seed = data.get("seed", _DEFAULT_SEED)
     return seed if isinstance(seed, int) and seed >= 0 else _DEFAULT_SEED
 

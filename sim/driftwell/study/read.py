@@ -16,10 +16,11 @@ from driftwell.scenario.settings import Setting, apply_settings
 from driftwell.scenario.source import raw_table, shown_path, source_text
 from driftwell.scenario.told import shortened, told, with_value
 from driftwell.study.form import StudyForm
+from driftwell.study.limit_asked import Asked, as_vary, asked_limit
 from driftwell.study.points import Axis, Case, expand
 from driftwell.study.trial import Scene, trial_faults
 
-A_STUDY = "a study needs a title, the file of a scenario and at least one [[vary]]"
+A_STUDY = "a study needs a title, the file of a scenario and a [[vary]] or a [limit]"
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,6 +33,7 @@ class Study:
     settings : ``key=value`` that hold in all cases
     axes : in the order of the file
     cases : by number; the replicas of a point stand next to each other
+    limit : what is searched for; its cases are then those that the search begins with
     """
 
     title: str
@@ -43,6 +45,7 @@ class Study:
     replicas: int
     axes: tuple[Axis, ...]
     cases: tuple[Case, ...]
+    limit: Asked | None = None
 
     @property
     def name(self) -> str:
@@ -56,7 +59,7 @@ def is_study(path: str | Path) -> bool:
         data = raw_table(source_text(Path(path), "study"), str(path), A_STUDY)
     except ScenarioError:
         return False
-    return "scenario" in data or "vary" in data
+    return "scenario" in data or "vary" in data or "limit" in data
 
 
 def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
@@ -93,7 +96,7 @@ def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
     settings = (*form.settings, *overrides)
     trial = raw_table(scenario_text, shown_path(scenario_path))
     unusable, faults = _set_all(trial, form.settings, overrides)
-    axes, cases, more = expand(form, trial, settings)
+    axes, cases, limit, more = _expanded(form, trial, settings)
     if unusable or faults or more:
         raise _refused([*faults, *more], data, text, shown, unusable)
     scene = Scene(
@@ -105,6 +108,7 @@ def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
         KeyLines(text).line,
         len(settings),
         len(form.settings),
+        form.limit is not None,
     )
     lines = trial_faults(scene, axes, cases)
     if lines:
@@ -119,7 +123,25 @@ def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
         form.replicas,
         axes,
         cases,
+        limit,
     )
+
+
+def _expanded(
+    form: StudyForm, data: Mapping[str, Any], settings: Sequence[str]
+) -> tuple[tuple[Axis, ...], tuple[Case, ...], Asked | None, list[Fault]]:
+    """Axes, cases, what is searched for, and faults with paths in the study's raw table."""
+    if form.limit is None:
+        axes, cases, faults = expand(form, data, settings)
+        return axes, cases, None, faults
+    asked, faults = asked_limit(form.limit, data)
+    if asked is None:
+        return (), (), None, faults
+    places = asked.first_places()
+    varied = as_vary(form.limit, asked.log).model_copy(update={"points": len(places)})
+    axes, cases, faults = expand(form.model_copy(update={"vary": (varied,)}), data, settings)
+    moved = [Fault(("limit", *fault.path[2:]), fault.found, fault.needed) for fault in faults]
+    return axes, cases, asked, moved
 
 
 def _set_all(

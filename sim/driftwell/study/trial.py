@@ -31,6 +31,7 @@ class Scene:
     shown_scenario, shown_study : paths as messages show them
     line : the line of a path in the study
     common : number of settings that hold in all cases; the first `own` of them stand in the study
+    limited : whether a [limit] varies, not a [[vary]]
     """
 
     data: Mapping[str, Any]
@@ -41,6 +42,7 @@ class Scene:
     line: Callable[[tuple[str | int, ...]], int]
     common: int
     own: int
+    limited: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -152,5 +154,7 @@ def _where(scene: Scene, axes: Sequence[Axis], k: int) -> str:
         return "the command line"
     if k - scene.common >= len(axes):
         return f"{scene.shown_study}:{scene.line(('replicas',))} replicas"
+    if scene.limited:
+        return f"{scene.shown_study}:{scene.line(('limit',))} [limit]"
     entry = axes[k - scene.common].entry
     return f"{scene.shown_study}:{scene.line(('vary', entry))} [[vary]] number {entry + 1}"

@@ -1,0 +1,186 @@
+"""``driftwell limit STUDY``: find the value of a key at which an answer crosses a threshold."""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Sequence
+from contextlib import ExitStack
+from pathlib import Path
+
+from driftwell.cli.printing import answer, tell, width
+from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.sweep_place import Place
+from driftwell.cli.sweep_progress import SweepDisplay
+from driftwell.errors import DriftwellError
+from driftwell.record.claim import unwritable
+from driftwell.record.commit import commit
+from driftwell.record.summary import WIDTH
+from driftwell.study.catalogue import Catalogue
+from driftwell.study.cores import Sharing
+from driftwell.study.engine import Engine
+from driftwell.study.limit_run import Searched, find_limit, limit_of
+from driftwell.study.limit_search import (
+    FOUND,
+    NO_CROSSING,
+    NOT_REACHED,
+    RUNS_FAILED,
+    SEVERAL,
+    TOO_NOISY,
+    Search,
+)
+from driftwell.study.limit_table import LIMIT_CSV, write_limit
+from driftwell.study.limit_words import asked_in_words, limit_lines, progress_told
+from driftwell.study.pool import Pool
+from driftwell.study.progress import Failure, SweepProgress
+from driftwell.study.read import Study, read_study
+from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
+
+UNUSABLE, STOPPED = 2, 4
+EXIT_CODES = {
+    FOUND: 0,
+    RUNS_FAILED: 7,
+    NO_CROSSING: 9,
+    SEVERAL: 10,
+    TOO_NOISY: 11,
+    NOT_REACHED: 11,
+}
+"""What a search came to, as an exit code; the others are those of a sweep."""
+
+
+def limit_command(
+    file: str,
+    output: str | None,
+    settings: Sequence[str],
+    workers: int | None,
+    threads: int | None,
+    retry_failed: bool,
+    pictures: bool,
+    place: Place,
+) -> int:
+    """Search, and say what was found; returns the exit code."""
+    folder = Path(output) if output is not None else Path(f"{Path(file).stem}-limit")
+    try:
+        study = read_study(file, settings)
+        asked = limit_of(study)
+        tell(study.title)
+        tell(asked_in_words(asked))
+        found, written = _carried_out(
+            study, folder, workers, threads, retry_failed, pictures, place
+        )
+    except DriftwellError as error:
+        tell(str(error))
+        return error.exit_code
+    if found.verdict is None:
+        return STOPPED
+    code = EXIT_CODES[found.verdict.word]
+    return code if written or code else UNUSABLE
+
+
+class LimitDisplay(SweepDisplay):
+    """Shows the rounds of a search, each of which is a sweep; settled things are said once."""
+
+    def __init__(self, wish: StopWish) -> None:
+        super().__init__(wish)
+        self._search: Search | None = None
+        self._begun = False
+        self._told: set[int] = set()
+
+    def looks(self, search: Search, wanted: int) -> None:
+        """A round begins: how far the search is."""
+        self.ends()
+        self.told(progress_told(search, wanted))
+
+    def begins(self, sharing: Sharing, progress: SweepProgress) -> None:
+        """How the cores are shared, before the first round that computes anything."""
+        if not self._begun:
+            self._begun = True
+            super().begins(sharing, progress)
+
+    def failed(self, failure: Failure) -> None:
+        """Each failure once: later rounds meet it again."""
+        if failure.number not in self._told:
+            self._told.add(failure.number)
+            super().failed(failure)
+
+
+def _carried_out(
+    study: Study,
+    folder: Path,
+    workers: int | None,
+    threads: int | None,
+    retry_failed: bool,
+    pictures: bool,
+    place: Place,
+) -> tuple[Searched, bool]:
+    """What the search came to, and whether all that was to be written and drawn could be."""
+    cluster = place.cluster()
+    pools: list[Pool] = []
+
+    def engine_of(workers_now: int, threads: int) -> Engine:
+        if cluster is not None:
+            return cluster.engine(workers)
+        pools.append(Pool.of_runs(workers_now, threads))
+        return pools[-1]
+
+    def kill_workers() -> None:
+        for pool in pools:
+            pool.kill()
+
+    wish = StopWish(lambda: True, kill_workers)
+    display = LimitDisplay(wish)
+    with ExitStack() as holding:
+        if cluster is not None:
+            holding.callback(cluster.close)
+        changed = holding.enter_context(taken(folder, study.text, study.scenario_text))
+        holding.enter_context(wish.listening())
+        if cluster is not None:
+            cluster.fits(folder / RUNS)
+        if changed:
+            tell(
+                f"{folder}: the study or its scenario was changed since the last search; runs of "
+                "both that are the same are kept, others of the last one stay in the folder."
+            )
+        with Catalogue(folder / CATALOGUE_FILE) as catalogue:
+            try:
+                found = find_limit(
+                    study,
+                    folder,
+                    catalogue,
+                    display,
+                    retry_failed=retry_failed,
+                    workers=workers,
+                    threads=threads,
+                    engine_of=engine_of,
+                    sharing_of=None if cluster is None else cluster.sharing,
+                )
+            finally:
+                display.ends()
+        write_limit(folder, found)
+        written = _report(folder, found)
+        if pictures:
+            written = _draw(folder, found) and written
+    return found, written
+
+
+def _report(folder: Path, found: Searched) -> bool:
+    """Print what was found and keep it in the folder; whether it could be printed."""
+    last = ["", f"runs: {folder / LIMIT_CSV}"]
+    text = "\n".join([*limit_lines(found, WIDTH), *last]) + "\n"
+    try:
+        commit(folder / SUMMARY_FILE, text.encode(errors="backslashreplace"))
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
+    return answer(["", *limit_lines(found, width()), *last])
+
+
+def _draw(folder: Path, found: Searched) -> bool:
+    """Draw the search and say where; whether that could be done."""
+    from driftwell.report.limit_picture import draw_limit
+
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
+    try:
+        made = draw_limit(folder, found)
+    except DriftwellError as error:
+        tell(str(error))
+        return False
+    return not made or answer([f"picture: {made[0]}"])
