@@ -4,8 +4,8 @@
 
 Each scenario of tools/error_bar_cases is run with the seeds 1 to N as the command line runs it, and
 each answer is compared with its truth: a bar of one standard deviation should cover it 68.3 % of
-the time. Prints a table; with --write it goes into docs/numerics/errors.md. Ends with 1 where a case
-with closed forms covers, over all its answers, less than 60 % or more than 76 %.
+the time. Prints a table; with --write it goes into docs/numerics/errors.md. Ends with 1 where a
+case with closed forms covers, over all its answers, less than 60 % or more than 76 %.
 """
 
 from __future__ import annotations
