@@ -53,6 +53,7 @@ from driftwell.stepping.schedule import (
     Schedule,
 )
 from driftwell.stepping.step_choice import (
+    Rate,
     StepChoice,
 )
 from driftwell.stepping.surroundings import Surroundings
@@ -67,6 +68,7 @@ class Assembly:
     species : names in the order of ``particles.species``
     clouds : facts in the order of ``particles.cloud``: clouds, then sources
     requests : the coordinates to be traced, each once
+    motion : the fastest in the fields that a step must follow; of rate 0 where there is none
     extent : how much of everything it is
     conductors : the electrodes as surfaces
     edges : where fields end that are known in a region only
@@ -83,6 +85,7 @@ class Assembly:
     clouds: tuple[CloudFacts, ...]
     requests: tuple[TraceRequest, ...]
     choice: StepChoice
+    motion: Rate
     schedule: Schedule
     extent: Extent
     conductors: Conductors
@@ -126,6 +129,8 @@ class Assembly:
             duration=scenario.duration,
             step=self.choice.step,
             scheme=scenario.stepping.scheme,
+            motion=self.motion.name,
+            motion_rate=self.motion.rate,
             softening=scenario.coulomb.softening,
             coulomb_method=summation.method,
             coulomb_because="; ".join(filter(None, (summation.because, self.frame_remark()))),
@@ -251,7 +256,7 @@ def assembled(
     ]
     setting, softening = scenario.setting(loaded.folder), scenario.coulomb.softening
     newcomers = source_rates(emitting, setting, softening)
-    choice, every = chosen_pace(
+    choice, every, motion = chosen_pace(
         scenario, bodies, species, particles, everyone, newcomers, requests, acting, frames
     )
     samples = scenario.duration / every if requests else 0.0
@@ -270,6 +275,7 @@ def assembled(
         tuple(clouds),
         tuple(requests),
         choice,
+        motion,
         plan,
         _counted(extent, plan),
         conductors,

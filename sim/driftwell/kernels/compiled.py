@@ -35,6 +35,7 @@ ABOVE = frozenset(
         "counted.py",
         "estimate.py",
         "hand",
+        "judgement",
         "report",
         "run.py",
         "study",

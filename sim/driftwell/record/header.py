@@ -40,6 +40,8 @@ class Header:
     digest : of the content with settings and files named
     command : the command that makes the same run again
     duration, step : s
+    motion, motion_rate : the fastest motion in the fields that a step must follow, and its rate,
+        rad/s; "" and 0 where the fields have none, and in records of before
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
@@ -79,6 +81,8 @@ class Header:
     processes: tuple[str, ...] = ()
     cell_axis: str = ""
     cell_length: float = 0.0
+    motion: str = ""
+    motion_rate: float = 0.0
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)

@@ -1,0 +1,116 @@
+"""What is judged: a run's record, the scenario in it, its charges at some times."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from driftwell.answers.evidence import CloudFacts, Snapshot
+from driftwell.errors import DriftwellError
+from driftwell.forms.faults import read_form
+from driftwell.particles.state import Particles, no_particles
+from driftwell.record.reader import Run
+from driftwell.scenario.model import Scenario
+from driftwell.scenario.settings import apply_settings
+from driftwell.scenario.source import raw_table
+
+Floats = NDArray[np.float64]
+
+_LOOKS = 5
+"""Snapshots that are looked at, at the most."""
+_ENDED = ("finished", "all lost")
+
+
+@dataclass
+class Subject:
+    """A run, and what judgements ask of it."""
+
+    run: Run
+
+    @cached_property
+    def scenario(self) -> Scenario | None:
+        """The scenario as it was run; None where this version cannot read it.
+
+        Files that it names are not read.
+        """
+        header = self.run.header
+        try:
+            data = raw_table(header.scenario, header.title)
+            apply_settings(data, header.settings, Scenario)
+            return read_form(Scenario, data)[0]
+        except DriftwellError:
+            return None
+
+    @property
+    def ended(self) -> bool:
+        """Whether the questions have been answered for good."""
+        return self.run.outcome.word in _ENDED
+
+    @property
+    def summed(self) -> bool:
+        """Whether the charges feel each other."""
+        return self.run.header.coulomb_method != "off"
+
+    @property
+    def step(self) -> float:
+        """s, of the fields; between two Coulomb sums it is `kick`."""
+        return self.run.header.step
+
+    @cached_property
+    def kick(self) -> float:
+        """s, between two Coulomb sums."""
+        every = 1 if self.scenario is None else self.scenario.stepping.coulomb_every
+        return self.step * every
+
+    @cached_property
+    def looks(self) -> tuple[Snapshot, ...]:
+        """Snapshots over the run, start and end among them."""
+        times = self.run.snapshots
+        chosen = np.unique(np.linspace(0, len(times) - 1, min(len(times), _LOOKS)).round())
+        return tuple(self.run.snapshot(times[int(k)]) for k in chosen) if times else ()
+
+    def named(self, look: Snapshot, cloud: CloudFacts) -> Particles:
+        """The charges of one cloud in a snapshot."""
+        every = self.everyone(look)
+        return every.kept(every.cloud == cloud.index)
+
+    def everyone(self, look: Snapshot) -> Particles:
+        """The charges of a snapshot, as the step choice takes them."""
+        n = look.id.size
+        order = np.argsort(look.cloud, kind="stable")
+        if n == 0:
+            return no_particles()
+        return Particles(
+            np.ascontiguousarray(look.position[order].T),
+            np.ascontiguousarray(look.velocity[order].T),
+            look.charge[order],
+            look.mass[order],
+            look.weight[order],
+            look.id[order],
+            np.zeros(n, dtype=np.int64),
+            look.cloud[order],
+            np.zeros(n),
+        )
+
+    def finer(self, cloud: CloudFacts, factor: float) -> str:
+        """How to have `factor` times as many simulated charges of a cloud, at the same charge."""
+        kind = "source" if cloud.emitted else "cloud"
+        if cloud.weight == 1.0:
+            return (
+                f'"{cloud.name}" is simulated charge by charge: more are had from several seeds '
+                "(a study with `replicas`)"
+            )
+        count = cloud.count * factor
+        weight = max(cloud.weight / factor, 1.0)
+        if cloud.emitted:
+            return f"{kind}.{cloud.name}.weight = {weight:.3g}"
+        return f"{kind}.{cloud.name}.count = {_rounded(count)} with a weight of {weight:.3g} each"
+
+
+def _rounded(count: float) -> str:
+    """A number of charges to two digits."""
+    whole = float(f"{count:.1e}")
+    return f"{whole:.0f}" if whole < 1e6 else f"{whole:.2g}"
