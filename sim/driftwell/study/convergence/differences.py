@@ -42,7 +42,7 @@ LOUD = 2.0
 PARTED_STEP, PARTED_ONCE = 0.2, 0.05
 """Times that noise, below which motions cannot have parted: of the three differences along the
 step, and of a single one."""
-CERTAIN = 0.2
+CERTAIN = 0.1
 """How close to the scheme's order one must be to be believed amidst the noise."""
 LEAST_ORDER = 0.5
 ROUNDING = 1e-12
