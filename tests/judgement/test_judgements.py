@@ -171,7 +171,7 @@ def test_a_window_in_which_the_value_changes_is_told(tmp_path: Path) -> None:
     told = findings(tmp_path, 4e-6, cloud=[hot], question=[asked], **FLIGHT)["window not settled"]
     assert told.figure > told.limit == 4.0
     assert 'from "4 us" to "7 us"' in told.remedy
-    even = ball(100, motion={"velocity": speed})
+    even = ball(100, motion={"velocity": ["0 m/s", "0 m/s", "1 km/s"]})
     asked["over"] = ["1.9 us", "2.1 us"]
     assert {} == findings(tmp_path, 4e-6, cloud=[even], question=[asked], **FLIGHT)
 

@@ -33,6 +33,11 @@ class Finding:
         return f"{self.words}. {self.remedy}"
 
 
+def plain(number: float) -> str:
+    """A pure number to two digits, written out up to a million."""
+    return f"{float(f'{number:.1e}'):g}"
+
+
 def about(value: float, unit: str) -> str:
     """A quantity to two digits, in words."""
     return spelled(float(f"{value:.1e}"), unit)

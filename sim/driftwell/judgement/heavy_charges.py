@@ -26,7 +26,7 @@ from collections.abc import Iterator
 from driftwell.answers.evidence import CloudFacts
 from driftwell.constants import BOLTZMANN, COULOMB_CONSTANT
 from driftwell.judgement.cloud_state import CloudState, cloud_state
-from driftwell.judgement.finding import Finding, about
+from driftwell.judgement.finding import Finding, about, plain
 from driftwell.judgement.subject import Subject
 
 COUPLED = 1.0
@@ -93,10 +93,10 @@ def _coupled(subject: Subject, cloud: CloudFacts, gamma: float, known: list[Clou
     kelvin = state.heat / BOLTZMANN
     return Finding(
         "charges that stand for many",
-        f'the charges of "{cloud.name}", each standing for {cloud.weight:.4g}, push each other '
-        f"with {gamma:.2g} times the energy of their heat, {about(kelvin, 'K')}; at most "
+        f'the charges of "{cloud.name}", each standing for {plain(cloud.weight)}, push each other '
+        f"with {plain(gamma)} times the energy of their heat, {about(kelvin, 'K')}; at most "
         f"{COUPLED:g} is wanted: the heat in it, and what is asked of it, is that of "
-        f"the simulated charges, {cloud.weight ** (2.0 / 3.0):.2g} times what real ones give "
+        f"the simulated charges, {plain(cloud.weight ** (2.0 / 3.0))} times what real ones give "
         "each other",
         gamma,
         COUPLED,
@@ -110,9 +110,9 @@ def _turned(subject: Subject, cloud: CloudFacts, turns: float, known: list[Cloud
     state = known[-1]
     return Finding(
         "charges that stand for many",
-        f'the charges of "{cloud.name}", each standing for {cloud.weight:.4g}, turn each other '
-        f"{turns:.2g} times in the run by collisions, real ones {turns / cloud.weight:.1g} times; "
-        f"{TURNED:g} is the most that leaves temperatures and emittances alone",
+        f'the charges of "{cloud.name}", each standing for {plain(cloud.weight)}, turn each other '
+        f"{plain(turns)} times in the run by collisions, real ones {turns / cloud.weight:.1g} "
+        f"times; {TURNED:g} is the most that leaves temperatures and emittances alone",
         turns,
         TURNED,
         f"Set {subject.finer(cloud, turns / TURNED)}, or coulomb.softening = "

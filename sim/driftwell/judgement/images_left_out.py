@@ -7,6 +7,7 @@ look to the next; at the start, in the whole run. What the run has said at its s
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from functools import partial
 from pathlib import Path
@@ -55,7 +56,7 @@ def images_left_out(subject: Subject) -> Iterator[Finding]:
                     span,
                 )
                 limit = SHARE if on_start(look.time, cloud, seen) else LATER
-                if not found.matters(limit):
+                if not (found.matters(limit) and math.isfinite(found.share)):
                     continue
                 at_start |= limit == SHARE
                 if worst is None or found.share > worst.share:

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from driftwell.answers.evidence import CloudFacts, Snapshot
 from driftwell.errors import DriftwellError
 from driftwell.forms.faults import read_form
+from driftwell.judgement.finding import plain
 from driftwell.particles.state import Particles, no_particles
 from driftwell.record.reader import Run
 from driftwell.scenario.model import Scenario
@@ -106,11 +107,5 @@ class Subject:
         count = cloud.count * factor
         weight = max(cloud.weight / factor, 1.0)
         if cloud.emitted:
-            return f"{kind}.{cloud.name}.weight = {weight:.3g}"
-        return f"{kind}.{cloud.name}.count = {_rounded(count)} with a weight of {weight:.3g} each"
-
-
-def _rounded(count: float) -> str:
-    """A number of charges to two digits."""
-    whole = float(f"{count:.1e}")
-    return f"{whole:.0f}" if whole < 1e6 else f"{whole:.2g}"
+            return f"{kind}.{cloud.name}.weight = {plain(weight)}"
+        return f"{kind}.{cloud.name}.count = {plain(count)} with a weight of {plain(weight)} each"
