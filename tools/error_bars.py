@@ -68,9 +68,13 @@ class Unwatched:
         return True
 
 
-def covered(case: Case, seeds: int) -> Iterator[Covered]:
-    """The answers of a case, each over so many seeds."""
-    runs = [_answers(case, seed) for seed in range(1, seeds + 1)]
+def answered(case: Case, seeds: int) -> list[list[Answer]]:
+    """What the runs of so many seeds say."""
+    return [_answers(case, seed) for seed in range(1, seeds + 1)]
+
+
+def covered(case: Case, runs: Sequence[Sequence[Answer]]) -> Iterator[Covered]:
+    """How the errors of each answer of a case fared over its runs."""
     for found in zip(*runs, strict=True):
         name = found[0].name
         value = np.array([answer.value for answer in found])
@@ -135,7 +139,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     for case in CASES:
         if given.case and case.name not in given.case:
             continue
-        found = list(covered(case, given.seeds))
+        found = list(covered(case, answered(case, given.seeds)))
         every += found
         part = whole(found)
         print(f"{case.name} ({case.about}): {100.0 * part:.1f} % covered", flush=True)

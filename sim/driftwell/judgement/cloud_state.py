@@ -16,6 +16,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.coulomb.bunch_frames import places_within, velocities_within
 from driftwell.particles.state import Particles
 
@@ -32,6 +33,7 @@ class CloudState:
     density : 1/m^3; 0 where it has no volume
     spacing : m, (3/(4 pi density))^(1/3); infinite where it has no volume
     heat : J, kT of one real particle by eq. (1)
+    lorentz : Gamma of the rest frame, by which its time goes slower
     """
 
     count: int
@@ -39,6 +41,7 @@ class CloudState:
     density: float
     spacing: float
     heat: float
+    lorentz: float
 
 
 def cloud_state(own: Particles) -> CloudState | None:
@@ -47,6 +50,7 @@ def cloud_state(own: Particles) -> CloudState | None:
     if n < LEAST:
         return None
     proper = own.velocity.mean(axis=1)
+    lorentz = math.sqrt(1.0 + float(proper @ proper) / SPEED_OF_LIGHT**2)
     place = places_within(own.position, proper)
     velocity = velocities_within(own.velocity, proper)
     place = place - place.mean(axis=1, keepdims=True)
@@ -61,4 +65,4 @@ def cloud_state(own: Particles) -> CloudState | None:
     density = n / volume if volume > 0.0 else 0.0
     spacing = (3.0 / (4.0 * math.pi * density)) ** (1.0 / 3.0) if density > 0.0 else math.inf
     a, b, c = sizes.tolist()
-    return CloudState(n, (a, b, c), density, spacing, heat)
+    return CloudState(n, (a, b, c), density, spacing, heat, lorentz)

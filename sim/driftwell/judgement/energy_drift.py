@@ -20,13 +20,15 @@ import numpy as np
 from driftwell.constants import BOLTZMANN
 from driftwell.forms import spelled
 from driftwell.judgement.cloud_state import cloud_state
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 from driftwell.ledger.doubts import OPEN
 
 LIMIT = 0.05
 """Of the charges' own energy, that the account may have drifted."""
 _LEAST_ROWS = 6
+_ROUNDING = 1e-11
+"""Of the largest energy: what rounding may make of many steps."""
 
 
 def energy_drift(subject: Subject) -> Iterator[Finding]:
@@ -39,14 +41,14 @@ def energy_drift(subject: Subject) -> Iterator[Finding]:
     third = len(rows) // 3
     drift = abs(float(gap[-third:].mean() - gap[:third].mean()))
     own = max(_own(subject, k) for k in range(len(subject.looks)))
-    if own <= 0.0 or drift <= LIMIT * own:
+    if own <= 0.0 or drift <= max(LIMIT * own, _ROUNDING * float(there.max())):
         return
     count = float(rows["count"].max())
     each = drift / count / BOLTZMANN
     yield Finding(
         "drift of the energy",
         f"the energy account has drifted by {drift / own:.1%} of what the charges have by their "
-        f"heat and their repulsion, {spelled(each, 'K', 2)} for each; {LIMIT:.0%} may",
+        f"heat and their repulsion, {about(each, 'K')} for each; {LIMIT:.0%} may",
         drift / own,
         LIMIT,
         f'Set stepping.step = "{spelled(0.5 * subject.step, "s", 3)}" (half of it) and look '

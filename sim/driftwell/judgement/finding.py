@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from driftwell.forms import spelled
+
 
 @dataclass(frozen=True, slots=True)
 class Finding:
@@ -29,3 +31,13 @@ class Finding:
     def sentence(self) -> str:
         """Words and remedy together."""
         return f"{self.words}. {self.remedy}"
+
+
+def plain(number: float) -> str:
+    """A pure number to two digits, written out up to a million."""
+    return f"{float(f'{number:.1e}'):g}"
+
+
+def about(value: float, unit: str) -> str:
+    """A quantity to two digits, in words."""
+    return spelled(float(f"{value:.1e}"), unit)

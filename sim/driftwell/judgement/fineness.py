@@ -19,7 +19,7 @@ from driftwell.answers.evidence import CloudFacts
 from driftwell.constants import ELECTRIC_CONSTANT
 from driftwell.forms import spelled
 from driftwell.judgement.cloud_state import cloud_state
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 
 THIN = 1.0
@@ -80,20 +80,20 @@ def _thin(subject: Subject, cloud: CloudFacts, seen: _Seen) -> Finding:
     what = (
         f"coulomb.softening, {spelled(seen.softening, 'm', 3)}"
         if soft
-        else f"the distance between its charges, {spelled(seen.spacing, 'm', 2)}"
+        else f"the distance between its charges, {about(seen.spacing, 'm')}"
     )
     if soft:
-        remedy = f'Set coulomb.softening = "{spelled(0.5 * seen.size, "m", 2)}".'
+        remedy = f'Set coulomb.softening = "{about(0.5 * seen.size, "m")}".'
     elif seen.figure < _MUCH:
         remedy = f"Set {subject.finer(cloud, seen.figure**3)}."
     else:
         remedy = (
-            f'Set coulomb.softening = "{spelled(seen.spacing, "m", 2)}", which smooths it; more '
+            f'Set coulomb.softening = "{about(seen.spacing, "m")}", which smooths it; more '
             "charges than can be had would be needed to know it better."
         )
     return Finding(
         "fineness of the charges' own field",
-        f'at t = {spelled(seen.time, "s", 3)} "{cloud.name}" is {spelled(seen.size, "m", 2)} thin '
+        f'at t = {spelled(seen.time, "s", 3)} "{cloud.name}" is {about(seen.size, "m")} thin '
         f"(rms), and {what}, is {seen.figure:.2g} times that; at most {THIN:g} is wanted: its own "
         "push across that thickness is too weak or too grainy",
         seen.figure,
@@ -106,10 +106,10 @@ def _blunt(cloud: CloudFacts, seen: _Seen) -> Finding:
     return Finding(
         "softening of single charges",
         f"at t = {spelled(seen.time, 's', 3)} coulomb.softening is {seen.figure:.2g} of the "
-        f'distance between the charges of "{cloud.name}", {spelled(seen.spacing, "m", 2)}, which '
+        f'distance between the charges of "{cloud.name}", {about(seen.spacing, "m")}, which '
         f"are simulated one by one; at most {BLUNT:.2g} is wanted: what they do to each other "
         "singly is blunted",
         seen.figure,
         BLUNT,
-        f'Set coulomb.softening = "{spelled(0.1 * seen.spacing, "m", 2)}".',
+        f'Set coulomb.softening = "{about(0.1 * seen.spacing, "m")}".',
     )

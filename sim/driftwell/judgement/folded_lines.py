@@ -16,7 +16,7 @@ from collections.abc import Iterator
 from driftwell.answers.kinds.frequency import TracedQuestion
 from driftwell.errors import DriftwellError
 from driftwell.forms import spelled
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 
 NEAR = 3.0
@@ -56,5 +56,5 @@ def folded_lines(subject: Subject) -> Iterator[Finding]:
             f"well: {fast * every:.2g} periods a sample, of which {MOST:g} may be",
             fast * every,
             MOST,
-            f'Set `every` of that question to "{spelled(0.05 / fast, "s", 2)}", or leave it out.',
+            f'Set `every` of that question to "{about(0.05 / fast, "s")}", or leave it out.',
         )

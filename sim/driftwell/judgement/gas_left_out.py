@@ -19,7 +19,7 @@ import numpy as np
 from driftwell.answers.evidence import CloudFacts
 from driftwell.constants import ATOMIC_MASS, BOLTZMANN, COULOMB_CONSTANT, ELECTRON_MASS
 from driftwell.forms import spelled
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 
 PRESSURE = 1e-6
@@ -49,7 +49,7 @@ def gas_left_out(subject: Subject) -> Iterator[Finding]:
         f"scenario; up to {LIMIT:g} may be left out",
         worst,
         LIMIT,
-        f"Be sure of a pressure below {spelled(PRESSURE * LIMIT / worst, 'Pa', 1)}, or add a "
+        f"Be sure of a pressure below {about(PRESSURE * LIMIT / worst, 'Pa')}, or add a "
         '[[process]] of kind = "gas-collisions" with your pressure.',
     )
 

@@ -25,9 +25,8 @@ from collections.abc import Iterator
 
 from driftwell.answers.evidence import CloudFacts
 from driftwell.constants import BOLTZMANN, COULOMB_CONSTANT
-from driftwell.forms import spelled
 from driftwell.judgement.cloud_state import CloudState, cloud_state
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about, plain
 from driftwell.judgement.subject import Subject
 
 COUPLED = 1.0
@@ -42,7 +41,6 @@ HEATED = frozenset(
         "heating-rate",
         "debye-length",
         "coupling-parameter",
-        "kinetic-energy-spread",
     }
 )
 """Questions whose answers the heat decides."""
@@ -66,7 +64,8 @@ def heavy_charges(subject: Subject) -> Iterator[Finding]:
         if gamma > COUPLED:
             yield _coupled(subject, cloud, gamma, known)
             continue
-        turns = min(collisions(each, cloud, softening) for each in known) * subject.run.end_time
+        rate = min(collisions(each, cloud, softening) / each.lorentz for each in known)
+        turns = rate * subject.run.end_time
         if turns > TURNED > turns / cloud.weight:
             yield _turned(subject, cloud, turns, known)
 
@@ -94,15 +93,15 @@ def _coupled(subject: Subject, cloud: CloudFacts, gamma: float, known: list[Clou
     kelvin = state.heat / BOLTZMANN
     return Finding(
         "charges that stand for many",
-        f'the charges of "{cloud.name}", each standing for {cloud.weight:.4g}, push each other '
-        f"with {gamma:.2g} times the energy of their heat, {spelled(kelvin, 'K', 2)}; at most "
+        f'the charges of "{cloud.name}", each standing for {plain(cloud.weight)}, push each other '
+        f"with {plain(gamma)} times the energy of their heat, {about(kelvin, 'K')}; at most "
         f"{COUPLED:g} is wanted: the heat in it, and what is asked of it, is that of "
-        f"the simulated charges, {cloud.weight ** (2.0 / 3.0):.2g} times what real ones give "
+        f"the simulated charges, {plain(cloud.weight ** (2.0 / 3.0))} times what real ones give "
         "each other",
         gamma,
         COUPLED,
         f"Set {subject.finer(cloud, factor)}, or coulomb.softening = "
-        f'"{spelled(state.spacing, "m", 2)}", their mean distance, and look whether the answers '
+        f'"{about(state.spacing, "m")}", their mean distance, and look whether the answers '
         "stay.",
     )
 
@@ -111,12 +110,12 @@ def _turned(subject: Subject, cloud: CloudFacts, turns: float, known: list[Cloud
     state = known[-1]
     return Finding(
         "charges that stand for many",
-        f'the charges of "{cloud.name}", each standing for {cloud.weight:.4g}, turn each other '
-        f"{turns:.2g} times in the run by collisions, real ones {turns / cloud.weight:.1g} times; "
-        f"{TURNED:g} is the most that leaves temperatures and emittances alone",
+        f'the charges of "{cloud.name}", each standing for {plain(cloud.weight)}, turn each other '
+        f"{plain(turns)} times in the run by collisions, real ones {turns / cloud.weight:.1g} "
+        f"times; {TURNED:g} is the most that leaves temperatures and emittances alone",
         turns,
         TURNED,
         f"Set {subject.finer(cloud, turns / TURNED)}, or coulomb.softening = "
-        f'"{spelled(state.spacing, "m", 2)}", their mean distance, and look whether the answers '
+        f'"{about(state.spacing, "m")}", their mean distance, and look whether the answers '
         "stay.",
     )

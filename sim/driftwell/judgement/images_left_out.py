@@ -7,6 +7,7 @@ look to the next; at the start, in the whole run. What the run has said at its s
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from functools import partial
 from pathlib import Path
@@ -14,11 +15,12 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.answers.evidence import CloudFacts
 from driftwell.errors import DriftwellError
 from driftwell.forms import spelled
 from driftwell.geometry.distance import distances
 from driftwell.images.importance import SHARE, Distance, Importance, importance
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
@@ -27,13 +29,17 @@ from driftwell.walls.sphere import Sphere
 
 Floats = NDArray[np.float64]
 
+LATER = 0.05
+"""The share from which images are spoken of that were not looked at when the run began: where
+walls lie all about, the estimate is too high by a few times."""
+
 
 def images_left_out(subject: Subject) -> Iterator[Finding]:
     """The cloud and the time at which images would have mattered most."""
     scenario = subject.scenario
     if scenario is None or scenario.images is not None or not subject.summed:
         return
-    for what, distance, told in _conductors(scenario):
+    for what, distance, seen in _conductors(scenario):
         at_start, worst, when = False, None, 0.0
         for k, look in enumerate(subject.looks):
             span = look.time - subject.looks[k - 1].time if k else subject.run.header.duration
@@ -49,25 +55,31 @@ def images_left_out(subject: Subject) -> Iterator[Finding]:
                     distance,
                     span,
                 )
-                if not found.matters():
+                limit = SHARE if on_start(look.time, cloud, seen) else LATER
+                if not (found.matters(limit) and math.isfinite(found.share)):
                     continue
-                at_start |= look.time == 0.0 and not cloud.emitted
+                at_start |= limit == SHARE
                 if worst is None or found.share > worst.share:
                     worst, when = found, look.time
         if worst is not None:
-            yield _told(what, worst, when, told and at_start)
+            yield _told(what, worst, when, at_start)
             return
 
 
+def on_start(time: float, cloud: CloudFacts, seen: bool) -> bool:
+    """Whether the run itself has looked at this when it began."""
+    return seen and time == 0.0 and not cloud.emitted
+
+
 def _told(what: str, worst: Importance, when: float, told: bool) -> Finding:
-    share = worst.share
+    share, limit = worst.share, SHARE if told else LATER
     return Finding(
         "images left out",
-        f"at t = {spelled(when, 's', 3)} {what}, {spelled(worst.distance, 'm', 2)} from "
-        f'"{worst.name}", would pull it with {spelled(worst.image, "V/m", 2)}, about {share:.2g} '
-        f"of its own push at its edge; up to {SHARE:g} may be left out",
+        f"at t = {spelled(when, 's', 3)} {what}, {about(worst.distance, 'm')} from "
+        f'"{worst.name}", would pull it with {about(worst.image, "V/m")}, about {share:.2g} '
+        f"of its own push at its edge; up to {limit:g} may be left out",
         share,
-        SHARE,
+        limit,
         "Give the scenario [images] (docs/numerics/images.md).",
         told=told,
     )

@@ -10,8 +10,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from driftwell.forms import spelled
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 
 LIMIT = 0.02
@@ -34,7 +33,7 @@ def lost_at_once(subject: Subject) -> Iterator[Finding]:
         yield Finding(
             "charges lost at once",
             f'{len(gone)} of {cloud.count} charges of "{cloud.name}" were lost within '
-            f'{spelled(soon, "s", 2)}, most of them on "{wall}": {share:.1%}, where {LIMIT:.0%} '
+            f'{about(soon, "s")}, most of them on "{wall}": {share:.1%}, where {LIMIT:.0%} '
             "may; they count in every part that is asked",
             share,
             LIMIT,

@@ -22,7 +22,7 @@ from scipy.spatial import cKDTree
 
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.forms import spelled
-from driftwell.judgement.finding import Finding
+from driftwell.judgement.finding import Finding, about
 from driftwell.judgement.subject import Subject
 from driftwell.particles.state import Particles
 from driftwell.stepping.schemes import ORDER
@@ -63,7 +63,7 @@ def _too_long(subject: Subject, motion: str, steps: float, least: float, step: f
         f"{so_much}; {least:g} or more are needed",
         steps,
         least,
-        f'Set stepping.step = "{spelled(wanted, "s", 2)}" or less, or leave it to "auto".',
+        f'Set stepping.step = "{about(wanted, "s")}" or less, or leave it to "auto".',
     )
 
 
@@ -96,7 +96,7 @@ def _pairs(subject: Subject) -> Iterator[Finding]:
         f"{SHARE:.0%} may",
         worst,
         SHARE,
-        f'Set stepping.step = "{spelled(wanted, "s", 2)}", or, where charges stand for many, '
+        f'Set stepping.step = "{about(wanted, "s")}", or, where charges stand for many, '
         "coulomb.softening to their mean distance.",
     )
 

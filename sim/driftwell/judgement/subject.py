@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from driftwell.answers.evidence import CloudFacts, Snapshot
 from driftwell.errors import DriftwellError
 from driftwell.forms.faults import read_form
+from driftwell.judgement.finding import plain
 from driftwell.particles.state import Particles, no_particles
 from driftwell.record.reader import Run
 from driftwell.scenario.model import Scenario
@@ -21,6 +22,8 @@ Floats = NDArray[np.float64]
 
 _LOOKS = 5
 """Snapshots that are looked at, at the most."""
+_MANY = 200_000
+"""Charges above which only start and end are looked at, and nothing is kept in memory twice."""
 _ENDED = ("finished", "all lost")
 
 
@@ -69,16 +72,32 @@ class Subject:
     def looks(self) -> tuple[Snapshot, ...]:
         """Snapshots over the run, start and end among them."""
         times = self.run.snapshots
-        chosen = np.unique(np.linspace(0, len(times) - 1, min(len(times), _LOOKS)).round())
+        charges = sum(cloud.count for cloud in self.run.header.clouds)
+        most = _LOOKS if charges <= _MANY else 2
+        chosen = np.unique(np.linspace(0, len(times) - 1, min(len(times), most)).round())
         return tuple(self.run.snapshot(times[int(k)]) for k in chosen) if times else ()
 
     def named(self, look: Snapshot, cloud: CloudFacts) -> Particles:
         """The charges of one cloud in a snapshot."""
         every = self.everyone(look)
+        if len(self.run.header.clouds) == 1:
+            return every
         return every.kept(every.cloud == cloud.index)
 
     def everyone(self, look: Snapshot) -> Particles:
-        """The charges of a snapshot, as the step choice takes them."""
+        """The charges of a snapshot, as the step choice takes them; not to be changed."""
+        if look.time not in self._known:
+            if look.id.size > _MANY:
+                self._known.clear()
+            self._known[look.time] = self._laid_out(look)
+        return self._known[look.time]
+
+    @cached_property
+    def _known(self) -> dict[float, Particles]:
+        return {}
+
+    def _laid_out(self, look: Snapshot) -> Particles:
+        """In the order of their clouds."""
         n = look.id.size
         order = np.argsort(look.cloud, kind="stable")
         if n == 0:
@@ -106,11 +125,5 @@ class Subject:
         count = cloud.count * factor
         weight = max(cloud.weight / factor, 1.0)
         if cloud.emitted:
-            return f"{kind}.{cloud.name}.weight = {weight:.3g}"
-        return f"{kind}.{cloud.name}.count = {_rounded(count)} with a weight of {weight:.3g} each"
-
-
-def _rounded(count: float) -> str:
-    """A number of charges to two digits."""
-    whole = float(f"{count:.1e}")
-    return f"{whole:.0f}" if whole < 1e6 else f"{whole:.2g}"
+            return f"{kind}.{cloud.name}.weight = {plain(weight)}"
+        return f"{kind}.{cloud.name}.count = {plain(count)} with a weight of {plain(weight)} each"
