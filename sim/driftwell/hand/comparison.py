@@ -46,6 +46,8 @@ class Comparison:
 
 def comparisons(run: Run) -> list[Comparison]:
     """All answers that a formula is about, in the order of the questions."""
+    if not run.answers:
+        return []
     try:
         scene = scene_of_run(run)
     except DriftwellError:  # the first snapshot or the scenario cannot be read any more
