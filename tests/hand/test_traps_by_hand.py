@@ -7,17 +7,18 @@ from pathlib import Path
 
 import pytest
 
+from driftwell.forms.body import Body
 from driftwell.hand.ellipsoid import aspect_of, share_along
 from driftwell.hand.kinds.brillouin_limit import brillouin_density
 from driftwell.hand.kinds.penning_trap import radial_frequencies
+from driftwell.hand.kinds.pseudopotential_limit import balanced_density, most_charges
 from driftwell.hand.kinds.rf_trap import characteristic_exponent
 from driftwell.hand.kinds.rigid_rotation import slow_rotation
+from driftwell.hand.trap import Trap
 from tests.hand.scenes import E, U, cloud, ions, one, scene
 from tests.running import quantity
 
 BALL = {"kind": "ball", "radius": "0.1 mm"}
-PENNING_K = 4.0e5
-"""V/m^2, of the ideal Penning trap."""
 
 
 @pytest.mark.parametrize(
@@ -76,8 +77,19 @@ def test_a_hyperbolic_rf_trap_has_its_textbook_numbers(tmp_path: Path) -> None:
     )
 
 
-def test_an_isotropic_well_holds_what_gauss_says(tmp_path: Path) -> None:
-    """n = 3 eps0 m omega^2/q^2 and N = m omega^2 R^3 4 pi eps0/q^2 (Dubin and O'Neil 1999)."""
+def test_an_isotropic_well_holds_what_gauss_says() -> None:
+    """R = (N k q^2/(m omega^2))^(1/3) and n = 3 eps0 m omega^2/q^2 (Dubin and O'Neil 1999)."""
+    body, stiffness, radius = Body("ion", 100.0 * U, E), (2.0 * math.pi * 1e5) ** 2, 2e-3
+    trap = Trap(body, (stiffness,) * 3, (0.0,) * 3, 0.0, (radius,) * 3, 0.0, ())
+    expected = body.mass * stiffness * radius**3 / (8.9875517862e9 * E**2)
+    most = most_charges(trap)
+    assert most is not None
+    assert expected == pytest.approx(most[0], rel=1e-8, abs=0.0)
+    density = 3.0 * 8.8541878188e-12 * body.mass * stiffness / E**2
+    assert density == pytest.approx(balanced_density(trap), rel=1e-9, abs=0.0)
+
+
+def test_the_shares_of_a_spheroid_are_those_of_its_closed_form() -> None:
     assert 1.0 / 3.0 == pytest.approx(share_along(1.0), rel=1e-12, abs=0.0)
     assert 1.0 == pytest.approx(aspect_of(1.0 / 3.0), rel=1e-9, abs=0.0)
     # oblate and prolate shares in closed form (Kellogg 1929, from memory), aspects 1/2 and 2

@@ -143,7 +143,11 @@ def test_macro_particles_without_softening_and_runs_without_questions_are_noted(
         (BEAM, ("cloud.bunch.shape.kinetic_energy=4 MeV",), ["Electrons of up to 4 MeV"]),
         (
             BEAM,
-            ("cloud.bunch.species=proton", "cloud.bunch.shape.kinetic_energy=4 MeV"),
+            (
+                "cloud.bunch.species=proton",
+                "cloud.bunch.total_charge=8 fC",
+                "cloud.bunch.shape.kinetic_energy=4 MeV",
+            ),
             ["Light ions of up to 4 MeV set neutrons free"],
         ),
         (

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.answer_lines import reading
+from driftwell.answers.form import TIME_TOLERANCE
 from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
 from driftwell.hand.formula import HandValue
@@ -45,7 +46,12 @@ class Comparison:
 
 
 def comparisons(run: Run) -> list[Comparison]:
-    """All answers that a formula is about, in the order of the questions."""
+    """All answers that a formula is about, in the order of the questions.
+
+    None of a run that did not reach its end: what it says of the end is of another time.
+    """
+    if not run.answers or run.end_time < run.header.duration * (1.0 - TIME_TOLERANCE):
+        return []
     try:
         scene = scene_of_run(run)
     except DriftwellError:  # the first snapshot or the scenario cannot be read any more

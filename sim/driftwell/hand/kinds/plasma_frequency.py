@@ -35,7 +35,8 @@ def values(scene: Scene) -> Values:
     """That of every cloud that fills a volume."""
     for group in scene.groups:
         if group.solid:
-            yield _value(group, group.peak_density, "at its densest place")
+            where = "at its densest place" if group.peak_known else "as a uniform ellipsoid"
+            yield _value(group, group.peak_density, where)
 
 
 def _value(group: Group, density: float, where: str) -> HandValue:
