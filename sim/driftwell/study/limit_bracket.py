@@ -32,11 +32,15 @@ _NARROWEST = 0.4
 
 @dataclass(frozen=True, slots=True)
 class Bracket:
-    """Neighbours (number `left` and the next) on different sides, and where it is thought to be."""
+    """Neighbours on different sides, and where the crossing is thought to be.
+
+    smooth : whether the values around it all rise, or all fall, so that they foretell it
+    """
 
     low: float
     high: float
     foretold: float
+    smooth: bool
 
     @property
     def width(self) -> float:
@@ -48,7 +52,7 @@ def brackets(at: Floats, value: Floats) -> list[Bracket]:
     """All gaps between neighbours on different sides; zero itself is above."""
     above = value >= 0.0
     return [
-        Bracket(float(at[k]), float(at[k + 1]), _foretold(at, value, k))
+        Bracket(float(at[k]), float(at[k + 1]), *_foretold(at, value, k))
         for k in np.flatnonzero(above[:-1] != above[1:]).tolist()
     ]
 
@@ -57,7 +61,7 @@ def division(bracket: Bracket, before: Bracket | None, target: float, count: int
     """Places (`count`) to look at next, to bring the bracket to the width `target`."""
     slow = before is not None and bracket.width > 1.5 * before.width / (count + 1)
     even = [bracket.low + bracket.width * (k + 1) / (count + 1) for k in range(count)]
-    if slow:
+    if slow or not bracket.smooth:
         return even
     change = _FIRST * bracket.width
     if before is not None:
@@ -71,16 +75,17 @@ def division(bracket: Bracket, before: Bracket | None, target: float, count: int
     return [float(each) for each in np.clip(found, bracket.low + inside, bracket.high - inside)]
 
 
-def _foretold(at: Floats, value: Floats, k: int) -> float:
-    """The crossing between numbers k and k + 1, by inverse interpolation."""
+def _foretold(at: Floats, value: Floats, k: int) -> tuple[float, bool]:
+    """The crossing between numbers k and k + 1, and whether inverse interpolation gave it."""
     from scipy.interpolate import PchipInterpolator
 
     near = slice(max(0, k - 1), k + 3)
     x, y = at[near], value[near]
     steps = np.diff(y)
-    if np.all(steps > 0.0) or np.all(steps < 0.0):
+    smooth = bool(np.all(steps > 0.0) or np.all(steps < 0.0))
+    if smooth:
         order = np.argsort(y)
         found = float(PchipInterpolator(y[order], x[order])(0.0))
     else:
         found = float(at[k] - value[k] * (at[k + 1] - at[k]) / (value[k + 1] - value[k]))
-    return min(max(found, float(at[k])), float(at[k + 1]))
+    return min(max(found, float(at[k])), float(at[k + 1])), smooth
