@@ -1,0 +1,2 @@
+from validation.case import Case
+CASES: tuple[Case, ...] = ()
