@@ -20,7 +20,7 @@ import sys
 from collections.abc import Sequence
 from pathlib import Path
 
-from validation.bench import Bench, CaseFailed, digest, timed
+from validation.bench import Bench, CaseError, digest, timed
 from validation.case import Case
 from validation.page import folder_of, named, ordered, text, with_error
 from validation.picture import draw
@@ -74,7 +74,7 @@ def _carried_out(
         if result is None:
             try:
                 found, seconds = timed(case, bench)
-            except CaseFailed as fault:
+            except CaseError as fault:
                 print(f"{case.name}: {fault}", file=sys.stderr)
                 failed.append(case.name)
                 continue
@@ -114,7 +114,8 @@ def _page_is_whole() -> int:
         return 0
     apart = sorted(set(there) ^ set(ordered(CASES)))
     print(
-        f"{PAGE.name} has other cases than tools/validation/table.py: {', '.join(apart) or 'order'}."
+        f"{PAGE.name} has other cases than tools/validation/table.py: {', "
+        f"'.join(apart) or 'order'}."
         " Run python tools/validate.py.",
         file=sys.stderr,
     )

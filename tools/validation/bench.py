@@ -28,7 +28,7 @@ SCATTER_FROM = 3
 """Seeds from which on their scatter is the sampling error, and no longer what a run tells."""
 
 
-class CaseFailed(Exception):
+class CaseError(Exception):
     """A command of a case that did not come to an answer; the message holds its last words."""
 
 
@@ -101,7 +101,7 @@ class Bench:
 def command(arguments: Sequence[str], good: Sequence[int] = (0,)) -> str:
     """What `driftwell` prints, called as a program of its own.
 
-    Raises CaseFailed where it ends with another code than the good ones.
+    Raises CaseError where it ends with another code than the good ones.
     """
     done = subprocess.run(
         [sys.executable, "-m", "driftwell", *arguments],
@@ -112,7 +112,7 @@ def command(arguments: Sequence[str], good: Sequence[int] = (0,)) -> str:
     )
     if done.returncode not in good:
         words = (done.stderr or done.stdout).strip().splitlines()[-8:]
-        raise CaseFailed(
+        raise CaseError(
             f"driftwell {' '.join(arguments)} ended with {done.returncode}:\n" + "\n".join(words)
         )
     return done.stdout
@@ -158,17 +158,17 @@ def _found(check: Check, runs: Sequence[Run], altered: Sequence[tuple[str, Run]]
 
 
 def reading(check: Check, run: Run) -> Reading:
-    """What a run says to a check. Raises CaseFailed where it has no answer."""
+    """What a run says to a check. Raises CaseError where it has no answer."""
     if not isinstance(check.read, str):
         read = check.read(run)
         return Reading(check.scale * read.value, abs(check.scale) * read.error)
     for answer in run.answers:
         if answer.name == check.read:
             if not math.isfinite(answer.value):
-                raise CaseFailed(f'{run.folder}: "{answer.name}" has no value: {answer.note}')
+                raise CaseError(f'{run.folder}: "{answer.name}" has no value: {answer.note}')
             error = 0.0 if answer.error is None else answer.error
             return Reading(check.scale * answer.value, abs(check.scale) * error)
-    raise CaseFailed(f'{run.folder}: no answer "{check.read}".')
+    raise CaseError(f'{run.folder}: no answer "{check.read}".')
 
 
 def digest(case: Case) -> str:

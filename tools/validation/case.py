@@ -166,4 +166,3 @@ def computed(value: float, source: str, relative: float = 1e-12) -> Published:
 def halved(step: str) -> Axis:
     """The case at another step, twice as long as the scenario's own."""
     return Axis("step", (f"stepping.step={step}",))
-

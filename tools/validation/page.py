@@ -24,10 +24,10 @@ nothing on it is written by hand. The same command with `--only CASE` does one c
   from the formula of the source, apart from driftwell; *read* in the source; or *from memory*.
 - *driftwell*: with a combined error, one standard deviation: sampling (what the run tells, or the
   scatter of several seeds), and what changes when one thing of the arithmetic is altered. *step*
-  is the change from twice the step to the step taken: where errors fall at least as the step, the error left
-  is no larger, and where they fall as its square three times smaller.
-- *bars*: the distance of both, in their combined errors. 0.3 means nothing more than 3 would be alarming;
-  errors of the step are bounds rather than standard deviations, so small numbers are usual.
+  is the change from twice the step to the step taken: where errors fall at least as the step,
+  the error left is no larger, and where they fall as its square three times smaller.
+- *bars*: the distance of both, in their combined errors. Errors of the step are bounds rather than
+  standard deviations, so numbers far below 1 are usual.
 """
 
 

@@ -57,6 +57,12 @@ def _warmth(run: Run) -> Reading:
     return Reading(40.0 * atomic_mass * square / k)
 
 
+def _inverse_lifetime(run: Run) -> Reading:
+    value = next(each for each in run.answers if each.name == "until captured")
+    assert value.error is not None
+    return Reading(1.0 / value.value, value.error / value.value**2)
+
+
 CASES: tuple[Case, ...] = (
     Case(
         "langevin-capture",
@@ -72,7 +78,7 @@ CASES: tuple[Case, ...] = (
                     LANGEVIN + "; polarisability of helium from memory, and the scenario's own",
                     "computed",
                 ),
-                lambda run: _inverse_lifetime(run),
+                _inverse_lifetime,
             ),
         ),
         (halved("8 us"),),
@@ -94,7 +100,8 @@ CASES: tuple[Case, ...] = (
     Case(
         "warm-oscillator",
         "gas",
-        "Ions in a trap with friction and noise: how far they wander, and how their mean rings down.",
+        "Ions in a trap with friction and noise: how far they wander, and how their "
+        "mean rings down.",
         (
             Check(
                 "rms place",
@@ -132,12 +139,12 @@ CASES: tuple[Case, ...] = (
             ),
         ),
         (halved("4 us"),),
-        quick=True,
     ),
     Case(
         "doppler-limit",
         "gas",
-        "Ions of 40 u in a well, each cooled by one weak laser beam half a linewidth below resonance.",
+        "Ions of 40 u in a well, each cooled by one weak laser beam half a linewidth "
+        "below resonance.",
         (
             Check(
                 "temperature along the beam",
@@ -150,13 +157,8 @@ CASES: tuple[Case, ...] = (
         (halved("20 ns"),),
         files=lambda folder: well(folder / "well.csv", 40.0 * atomic_mass, 2e5, 2e5, 1e-3, 1e-4),
         seeds=3,
-        remark="The formula is of first order in recoil over linewidth and trap frequency over linewidth: "
+        remark="The formula is of first order in recoil over linewidth and trap "
+        "frequency over linewidth: "
         "0.5 % is in the published error.",
     ),
 )
-
-
-def _inverse_lifetime(run: Run) -> Reading:
-    value = next(each for each in run.answers if each.name == "until captured")
-    assert value.error is not None
-    return Reading(1.0 / value.value, value.error / value.value**2)

@@ -13,13 +13,18 @@ from driftwell.record.reader import Run
 from validation.case import Case, Check, Reading, computed, halved
 from validation.reading import at_end
 
-LOOP = "W. R. Smythe, Static and Dynamic Electricity, sec. 7.10; J. D. Jackson (3rd ed.) problem 5.10"
+LOOP = (
+    "W. R. Smythe, Static and Dynamic Electricity, sec. 7.10; J. D. Jackson (3rd ed.) problem 5.10"
+)
 HELMHOLTZ = "two loops on the axis: J. D. Jackson (3rd ed.) sec. 5.5"
 SOLENOID = "current sheet on its axis: J. D. Jackson (3rd ed.) problem 5.3"
 BLOCK = "charged faces of a magnetised block on its axis: J. D. Jackson (3rd ed.) sec. 5.9"
 CYCLOID = "L. D. Landau, E. M. Lifshitz, The Classical Theory of Fields, sec. 22"
 MIRROR = "adiabatic motion in a parabolic mirror: J. D. Jackson (3rd ed.) sec. 12.5"
-QUADRUPOLE = "focusing strength g q/p: M. Reiser, Theory and Design of Charged Particle Beams (1994) sec. 3.5"
+QUADRUPOLE = (
+    "focusing strength g q/p: M. Reiser, Theory and Design of Charged "
+    "Particle Beams (1994) sec. 3.5"
+)
 
 
 def _loop(a: float, rho: float, z: float, current: float) -> float:
@@ -84,7 +89,8 @@ CASES: tuple[Case, ...] = (
     Case(
         "current-loop",
         "magnets",
-        "Electrons turn in the field of a coil of one turn: in its middle, on its axis, off its axis.",
+        "Electrons turn in the field of a coil of one turn: in its middle, on its "
+        "axis, off its axis.",
         (
             _gyration("in the middle", _loop(0.05, 0.0, 0.0, 10.0), LOOP, "middle"),
             _gyration("50 mm along the axis", _loop(0.05, 0.0, 0.05, 10.0), LOOP, "axis"),
@@ -129,7 +135,6 @@ CASES: tuple[Case, ...] = (
             ),
         ),
         (halved("0.02 ns"),),
-        quick=True,
     ),
     Case(
         "magnet-block",
@@ -153,9 +158,7 @@ CASES: tuple[Case, ...] = (
             Check(
                 "drifted along x",
                 "mm",
-                computed(
-                    1e3 * 500.0 / 0.02 * (_time - math.sin(_omega * _time) / _omega), CYCLOID
-                ),
+                computed(1e3 * 500.0 / 0.02 * (_time - math.sin(_omega * _time) / _omega), CYCLOID),
                 at_end(0, 0),
                 1e3,
             ),

@@ -70,7 +70,6 @@ CASES: tuple[Case, ...] = (
             ),
         ),
         (halved("2 ps"),),
-        quick=True,
     ),
     Case(
         "crossed-fields",
@@ -90,7 +89,8 @@ CASES: tuple[Case, ...] = (
     Case(
         "betatron-motion",
         "relativity",
-        "Electrons of gamma = 50 in a transverse well of 2e10/s: their oscillation is slower by its root.",
+        "Electrons of gamma = 50 in a transverse well of 2e10/s: their oscillation "
+        "is slower by its root.",
         (
             Check(
                 "frequency",
@@ -106,7 +106,8 @@ CASES: tuple[Case, ...] = (
     Case(
         "fast-pair",
         "relativity",
-        "Two charges side by side at gamma = 5 push each other apart as slowly as their clock goes.",
+        "Two charges side by side at gamma = 5 push each other apart as slowly as "
+        "their clock goes.",
         (
             Check(
                 "distance when doubled at rest, times gamma",
