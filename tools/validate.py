@@ -113,10 +113,10 @@ def _page_is_whole() -> int:
     if there == ordered(CASES):
         return 0
     apart = sorted(set(there) ^ set(ordered(CASES)))
+    words = ", ".join(apart) or "the order differs"
     print(
-        f"{PAGE.name} has other cases than tools/validation/table.py: {', "
-        f"'.join(apart) or 'order'}."
-        " Run python tools/validate.py.",
+        f"{PAGE.name} has other cases than tools/validation/table.py: {words}. "
+        "Run python tools/validate.py.",
         file=sys.stderr,
     )
     return 1

@@ -80,7 +80,7 @@ class Bench:
         replicas: int = 1,
     ) -> list[Run]:
         """`driftwell sweep` of a scenario: what varies, together, and so many replicas of each."""
-        study = scenario.parent / f"{label}.toml"
+        study = scenario.parent / f"{label}-study.toml"
         output = scenario.parent / f"{label}-sweep-run"
         lines = [
             f'title = "{label}"',

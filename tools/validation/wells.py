@@ -47,7 +47,7 @@ def box_potential(place: Floats, side: float) -> Floats:
 
 
 def box_background(path: Path, side: float, charges: int, nodes: int = 25) -> None:
-    """A file (x, y, z, V), half of each axis: what balances so many charges e spread over a cube."""
+    """A file (x, y, z, V), half of each axis: what balances so many charges in a cube."""
     half = np.linspace(0.0, 0.52 * side, nodes) + 1e-9 * side
     grid = np.stack(np.meshgrid(half, half, half, indexing="ij"), axis=-1).reshape(-1, 3)
     value = -charges * e / (4.0 * math.pi * epsilon_0 * side**3) * box_potential(grid, side)
