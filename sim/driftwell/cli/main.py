@@ -12,6 +12,7 @@ import warnings
 from collections.abc import Sequence
 
 from driftwell._version import __version__
+from driftwell.cli.converge_arguments import add_converge
 from driftwell.cli.durations import seconds_of
 from driftwell.cli.printing import flush_quietly, tell, write_anything
 
@@ -116,6 +117,10 @@ def _parser() -> argparse.ArgumentParser:
     sweep.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
     _add_cluster(sweep)
     _add_settings(sweep)
+
+    converge = add_converge(commands, _folder, _threads, _duration)
+    _add_cluster(converge)
+    _add_settings(converge)
 
     check = commands.add_parser(
         "check", help="say what a scenario or study would simulate, or its faults"
@@ -312,6 +317,8 @@ def _carry_out(asked: argparse.Namespace) -> int:
             not asked.no_pictures,
             Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key),
         )
+    if asked.command == "converge":
+        return _converge(asked)
     threads = _usable_threads(asked.threads)
     if "numba" not in sys.modules:  # it reads its limit once, and minds another one later
         os.environ["NUMBA_NUM_THREADS"] = str(threads)
@@ -339,6 +346,30 @@ def _carry_out(asked: argparse.Namespace) -> int:
         fresh=asked.fresh,
         stop_after=asked.stop_after,
         force=asked.force,
+    )
+
+
+def _converge(asked: argparse.Namespace) -> int:
+    from pathlib import Path
+
+    from driftwell.cli.converge import Options, converge_command
+    from driftwell.cli.sweep_place import Place
+    from driftwell.study.convergence.plan import Wanted
+
+    axes = tuple(name.replace("-", "_") for name in asked.axes)
+    return converge_command(
+        Wanted(Path(asked.file), tuple(asked.settings), axes, asked.replicas),
+        asked.output,
+        Options(
+            asked.within,
+            tuple(asked.question),
+            asked.workers,
+            asked.threads,
+            asked.stop_after,
+            asked.retry_failed,
+            not asked.no_pictures,
+        ),
+        Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key),
     )
 
 
