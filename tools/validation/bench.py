@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import csv
 import hashlib
 import json
 import math
@@ -90,7 +91,8 @@ class Bench:
         ]
         for key, values in (vary or {}).items():
             lines += ["[[vary]]", f"key = {json.dumps(key)}", f"values = {json.dumps(values)}"]
-            lines.append('together = "case"')
+            if vary is not None and len(vary) > 1:
+                lines.append('together = "case"')
         study.write_text("\n".join(lines) + "\n")
         shutil.rmtree(output, ignore_errors=True)
         arguments = ["sweep", str(study), "--output", str(output), "--no-pictures"]
@@ -128,6 +130,8 @@ def found_by(case: Case, bench: Bench) -> list[Found]:
     if case.measured is not None:
         return case.measured(case, bench)
     scenario = bench.laid_out(case)
+    if case.converged:
+        return _converged(case, scenario, bench)
     if case.seeds == 1:
         runs = [bench.run(scenario, "first", case.settings, None)]
     else:
@@ -139,6 +143,33 @@ def found_by(case: Case, bench: Bench) -> list[Found]:
         for k, axis in enumerate(case.axes)
     ]
     return [_found(check, runs, altered) for check in case.checks]
+
+
+def _converged(case: Case, scenario: Path, bench: Bench) -> list[Found]:
+    """The case's values with the errors of `driftwell converge`; all of its checks are questions.
+
+    Where it tells the scatter of seeds, that is the sampling error, else what the run tells.
+    """
+    output = scenario.parent / "converge-run"
+    shutil.rmtree(output, ignore_errors=True)
+    arguments = ["converge", str(scenario), "--output", str(output), "--no-pictures"]
+    command([*arguments, "--workers", "1", "--threads", str(bench.threads)])
+    with (output / "convergence.csv").open(newline="") as file:
+        rows = {row["question"]: row for row in csv.DictReader(file)}
+    found = []
+    for check in case.checks:
+        row = rows[str(check.read)]
+        scale = abs(check.scale)
+        errors = {
+            name.removesuffix("_error").replace("_", " "): scale * float(value)
+            for name, value in row.items()
+            if name.endswith("_error") and name != "combined_error" and value
+        }
+        if "seeds" in errors:
+            errors.pop("sampling", None)
+        value = check.scale * float(row["value"])
+        found.append(Found(check.what, check.unit, check.published, value, errors))
+    return found
 
 
 def _found(check: Check, runs: Sequence[Run], altered: Sequence[tuple[str, Run]]) -> Found:
@@ -174,6 +205,7 @@ def reading(check: Check, run: Run) -> Reading:
 def digest(case: Case) -> str:
     """Digest of what a case does: its scenario, settings, axes and published values."""
     parts = [scenario_file(case).read_text(), str(case.seeds), *case.settings]
+    parts += ["converge"] if case.converged else []
     parts += [json.dumps([axis.name, *axis.settings]) for axis in case.axes]
     parts += [
         json.dumps([check.what, check.published.value, check.published.error, check.scale])

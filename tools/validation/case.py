@@ -140,6 +140,7 @@ class Case:
     remark : what must be known to judge it, or why it is beyond two error bars
     quick : whether it is one of the few that take seconds together
     curve : what its picture shows besides
+    converged : its errors are those of `driftwell converge`; all of its checks are questions
     measured : finds the values, where it takes other runs than those of `axes` and `seeds`
     """
 
@@ -155,6 +156,7 @@ class Case:
     remark: str = ""
     quick: bool = False
     curve: Callable[[list[Found]], Curve] | None = None
+    converged: bool = False
     measured: Callable[[Case, Bench], list[Found]] | None = None
 
 

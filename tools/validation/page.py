@@ -17,15 +17,17 @@ INTRODUCTION = """\
 
 Published values, and what driftwell says to them. This page and its pictures are written by
 `python tools/validate.py`, which carries every case out as a user would, with
-`driftwell run` on the scenarios in `tools/validation/cases/`, and reads the folders that it leaves;
-nothing on it is written by hand. The same command with `--only CASE` does one case anew.
+`driftwell run`, `sweep` and `converge` on the scenarios in `tools/validation/cases/`, and reads the
+folders that these leave; nothing on it is written by hand. The same command with `--only CASE`
+does one case anew.
 
 - *published*: with the error its digits and its own derivation leave. How it is known: *computed*
   from the formula of the source, apart from driftwell; *read* in the source; or *from memory*.
 - *driftwell*: with a combined error, one standard deviation: sampling (what the run tells, or the
-  scatter of several seeds), and what changes when one thing of the arithmetic is altered. *step*
-  is the change from twice the step to the step taken: where errors fall at least as the step,
-  the error left is no larger, and where they fall as its square three times smaller.
+  scatter of several seeds), and what changes when one thing of the arithmetic is altered. Cases
+  marked so have the errors of `driftwell converge`. In the others, *step* is the change from
+  twice the step to the step taken: where errors fall at least as the step, the error left is no
+  larger, and where they fall as its square three times smaller.
 - *bars*: the distance of both, in their combined errors. Errors of the step are bounds rather than
   standard deviations, so numbers far below 1 are usual.
 """
@@ -92,6 +94,8 @@ def _overview(cases: Sequence[Case], results: Mapping[str, Result]) -> str:
 
 def _case(case: Case, result: Result) -> str:
     lines = [f"### `{case.name}`\n", f"{case.title}\n"]
+    if case.converged:
+        lines.append("Errors: `driftwell converge`.\n")
     sources = list(dict.fromkeys(each.published.source for each in result.found))
     single = len(sources) == 1
     if single:

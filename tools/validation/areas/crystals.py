@@ -112,8 +112,8 @@ CASES: tuple[Case, ...] = (
             )
             for word, value in (("lowest", 1.0), ("middle", 3.0), ("highest", 5.8))
         ),
-        (halved("20 ns"),),
         files=_string,
+        converged=True,
     ),
     Case(
         "clusters",

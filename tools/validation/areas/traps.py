@@ -10,6 +10,7 @@ from scipy.constants import atomic_mass, c, e, epsilon_0
 from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run
+from validation import mirrors
 from validation.case import COMPUTED, Case, Check, Published, Reading, computed, halved
 from validation.reading import at_end
 from validation.wells import well
@@ -303,9 +304,19 @@ CASES: tuple[Case, ...] = (
                 "shift",
             ),
         ),
-        (halved("0.2 us"),),
         files=lambda folder: well(
             folder / "well.csv", 100.0 * atomic_mass, 50e3, 50e3, 200e-6, 200e-6
         ),
+        converged=True,
+    ),
+    Case(
+        "self-bunching",
+        "traps",
+        "A bunch flies to and fro between mirrors whose period falls or grows with the energy: its "
+        "own charge spreads it or holds it together. Where one turns into the other.",
+        (),
+        files=mirrors.files,
+        measured=mirrors.measured,
+        curve=mirrors.curve,
     ),
 )
