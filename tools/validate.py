@@ -5,7 +5,8 @@
 Carries out the cases of tools/validation with `driftwell run`, one after another, and writes
 docs/validation.md with a picture for each. What was found is kept in the folder of `--output`,
 so that a second call goes on where the first was stopped. With `--only` or `--quick` the page is
-left alone; what they found counts in the next whole call.
+left alone; what they found counts in the next whole call. `--page` writes it from what was found so
+far, and names the cases that are missing.
 
 exit codes: 0 all values are within 4 error bars; 1 some are not, or a case did not come to an
 answer, or with `--check` the page has other cases than the table; 2 the command line
@@ -43,6 +44,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return 0
     if options.check:
         return _page_is_whole()
+    if options.page:
+        found = {case.name: kept(options.output / case.name, digest(case)) for case in CASES}
+        _write({name: result for name, result in found.items() if result is not None})
+        return 0
     known = {case.name: case for case in CASES}
     for name in options.only:
         if name not in known:
@@ -93,14 +98,15 @@ def _tell(result: Result) -> None:
         published = with_error(each.published.value, each.published.error)
         print(
             f"{result.case:24} {each.what:34} {published} / {with_error(each.value, each.error)} "
-            f"{each.unit}  {each.bars:+.2f} bars",
+            f"{each.unit}  {each.bars:+.3g} bars",
             flush=True,
         )
 
 
 def _write(results: dict[str, Result]) -> None:
     for case in CASES:
-        draw(case, results[case.name], folder_of(DOCS) / f"{case.name}.png")
+        if case.name in results:
+            draw(case, results[case.name], folder_of(DOCS) / f"{case.name}.png")
     PAGE.write_text(text(CASES, results))
     for picture in folder_of(DOCS).glob("*.png"):
         if picture.stem not in results:
@@ -132,6 +138,9 @@ def _parser() -> argparse.ArgumentParser:
     parser.add_argument("--fresh", action="store_true", help="carry out anew what was found before")
     parser.add_argument(
         "--check", action="store_true", help="only whether docs/validation.md has all cases"
+    )
+    parser.add_argument(
+        "--page", action="store_true", help="only write the page, from what was found so far"
     )
     parser.add_argument("--list", action="store_true", help="only name the cases")
     parser.add_argument(

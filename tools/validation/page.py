@@ -34,7 +34,9 @@ does one case anew.
 
 
 def text(cases: Sequence[Case], results: Mapping[str, Result]) -> str:
-    """The page; `results` has one for each of the cases."""
+    """The page; cases without a result are named as missing."""
+    missing = [case.name for case in cases if case.name not in results]
+    cases = [case for case in cases if case.name in results]
     done = [results[case.name] for case in cases]
     checks = [each for result in done for each in result.found]
     outside = beyond(done, 2.0)
@@ -46,6 +48,7 @@ def text(cases: Sequence[Case], results: Mapping[str, Result]) -> str:
         f"({100.0 * inside / len(checks):.1f} %) within 2 bars, {len(far)} beyond 4. "
         f"driftwell {done[0].version}; {sum(result.seconds for result in done) / 60.0:.0f} minutes "
         "on a machine with other work.\n",
+        *([f"Not carried out yet: {', '.join(missing)}.\n"] if missing else []),
         _outside(cases, outside),
         "## All cases\n",
         _overview(cases, results),
@@ -73,7 +76,7 @@ def _outside(cases: Sequence[Case], outside: Sequence[tuple[str, Found]]) -> str
     remarks = {case.name: case.remark for case in cases}
     for name, each in outside:
         because = remarks[name] or "No reason is known."
-        lines.append(f"- `{name}`, {each.what}: {each.bars:+.1f} bars. {because}")
+        lines.append(f"- `{name}`, {each.what}: {each.bars:+.3g} bars. {because}")
     return "\n".join(lines) + ("\n" if outside else "")
 
 
@@ -87,7 +90,7 @@ def _overview(cases: Sequence[Case], results: Mapping[str, Result]) -> str:
             farthest = max((each.bars for each in result.found), key=abs)
             lines.append(
                 f"| [{case.name}](#{case.name}) | {area} | {len(result.found)} "
-                f"| {farthest:+.2f} | {result.seconds:.0f} |"
+                f"| {farthest:+.2g} | {result.seconds:.0f} |"
             )
     return "\n".join(lines) + "\n"
 
@@ -109,7 +112,7 @@ def _case(case: Case, result: Result) -> str:
         lines.append(
             f"| {each.what}{mark} | {each.unit} "
             f"| {with_error(each.published.value, each.published.error)} | {each.published.known} "
-            f"| {with_error(each.value, each.error)} | {_parts(each)} | {each.bars:+.2f} |"
+            f"| {with_error(each.value, each.error)} | {_parts(each)} | {each.bars:+.2g} |"
         )
     if not single:
         lines.append("")

@@ -119,10 +119,10 @@ CASES: tuple[Case, ...] = (
         "clusters",
         "crystals",
         "Two to thirty ions in a well that holds alike on all axes, cooled from "
-        "eight starts each: lowest "
+        "twelve starts each: lowest "
         "energy by the ion, and how many make the inner shell.",
         (),
-        seeds=8,
+        seeds=12,
         files=_isotropic,
         measured=clusters.measured,
         curve=clusters.curve,

@@ -84,7 +84,7 @@ CASES: tuple[Case, ...] = (
                 1e9,
             ),
         ),
-        converged=True,
+        axes=(halved("7 ps"),),
     ),
     Case(
         "betatron-motion",
