@@ -25,7 +25,7 @@ def test_the_exit_code_is_the_verdict_and_what_is_there_is_not_computed_again(
     path, folder = scenario(tmp_path), tmp_path / "c"
     assert 4 == converge(path, folder, "--stop-after", "0.01s")
     assert "Stopped; the same command goes on." in capsys.readouterr().err
-    assert 9 == converge(path, folder, "--within", "1e-9", "--no-pictures")
+    assert 12 == converge(path, folder, "--within", "1e-9", "--no-pictures")
     printed = capsys.readouterr()
     assert printed.err.startswith("Eight ions in a trap\n")
     assert "step: half and a quarter of the step (2 runs)\n" in printed.err

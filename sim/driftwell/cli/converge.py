@@ -32,7 +32,7 @@ from driftwell.study.read import Study, is_study
 from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
 
-DONE, UNUSABLE, STOPPED, SOME_FAILED, NOT_CONVERGED = 0, 2, 4, 7, 9
+DONE, UNUSABLE, STOPPED, SOME_FAILED, NOT_CONVERGED = 0, 2, 4, 7, 12
 """Exit codes; the last one is a convergence study's own."""
 
 

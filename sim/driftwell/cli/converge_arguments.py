@@ -19,7 +19,7 @@ seeds (replicas). Those that do not matter to the scenario are left out and name
 
 exit codes: 0 every run is there, and with --within every answer judged has converged; 2 the
 scenario, the folder or the command line cannot be used; 4 stopped on request or by --stop-after,
-the same command goes on; 7 some runs failed; 8 the cluster's scheduler is gone; 9 some answer has
+the same command goes on; 7 some runs failed; 8 the cluster's scheduler is gone; 12 some answer has
 not converged within the tolerance asked for; 130 interrupted at once; 1 a defect of driftwell
 """
 
