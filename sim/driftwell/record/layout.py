@@ -352,6 +352,7 @@ HEADER = (
     Attribute("title", "text", "", "title of the scenario"),
     Attribute("scenario", "text", "", "the scenario file, as given"),
     Attribute("scenario_sha256", "text", "", "digest of the scenario's text (UTF-8)"),
+    Attribute("header_sha256", "text", "", "digest of all other attributes of this table", 4),
     Attribute("settings", "texts", "", "key=value given beside the file, in order"),
     Attribute(
         "digest",
