@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,8 +44,6 @@ from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
 from driftwell.solved.acting import ActingField, acting_field, field_is_kept
 from driftwell.solved.edges import Edges
-from driftwell.stepping.loop import TimeLoop
-from driftwell.stepping.motion import Fields
 from driftwell.stepping.schedule import (
     RECORD,
     SNAPSHOT,
@@ -56,9 +54,11 @@ from driftwell.stepping.step_choice import (
     Rate,
     StepChoice,
 )
-from driftwell.stepping.surroundings import Surroundings
 from driftwell.walls.form import WallForm
 from driftwell.walls.table import surface_table
+
+if TYPE_CHECKING:
+    from driftwell.stepping.loop import TimeLoop
 
 
 @dataclass(frozen=True, slots=True)
@@ -164,6 +164,10 @@ class Assembly:
 
         particles, state : where a run is taken up, those it was left with
         """
+        from driftwell.stepping.loop import TimeLoop
+        from driftwell.stepping.motion import Fields
+        from driftwell.stepping.surroundings import Surroundings
+
         packed = [] if self.acting is None else self.acting.packed()
         tables = field_tables(self.scenario.field, self.bodies, packed)
         return TimeLoop(

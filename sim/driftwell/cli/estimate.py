@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING
 
 from driftwell.assembly import Assembly
 from driftwell.cli.clock import by_the_clock, lasting
+from driftwell.cli.compiling import tell_of_compiling
 from driftwell.cli.counts import (
     count_lines,
     counted_in_words,
@@ -46,7 +47,6 @@ def estimate_command(
 
     seconds : s to time first steps; None: nothing is timed
     """
-    from driftwell.cli.progress import tell_of_compiling
     from driftwell.study.read import is_study
 
     try:

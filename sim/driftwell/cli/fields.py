@@ -7,8 +7,8 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from driftwell._version import __version__
+from driftwell.cli.compiling import tell_of_compiling
 from driftwell.cli.printing import answer, tell, width
-from driftwell.cli.progress import tell_of_compiling
 from driftwell.cli.run_command import UNUSABLE, too_little_memory
 from driftwell.errors import DriftwellError, ScenarioError
 from driftwell.kernels.compilation import first_compilation

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from driftwell.cli.printing import sign, width
 from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
@@ -9,9 +11,11 @@ from driftwell.hand.comparison import comparison_lines, comparisons
 from driftwell.hand.hand_lines import hand_lines
 from driftwell.hand.scene import Scene
 from driftwell.hand.table import hand_values
-from driftwell.record.reader import Run
 from driftwell.scenario.cautions import cautions
 from driftwell.scenario.model import Scenario
+
+if TYPE_CHECKING:
+    from driftwell.record.reader import Run
 
 _SOLVED = (
     "What the electrodes' field does (trap frequencies, depth, focusing) no formula here knows: "

@@ -12,6 +12,7 @@ from typing import Any
 from tqdm import tqdm
 
 from driftwell.cli.clock import by_the_clock
+from driftwell.cli.compiling import tell_of_compiling
 from driftwell.cli.printing import is_terminal, tell
 from driftwell.cli.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
@@ -112,11 +113,6 @@ class ProgressDisplay:
             bar.set_description_str(told(progress, elapsed, short=bar.ncols < _ROOMY), refresh=True)
         except OSError:  # the terminal is gone; the run is not
             self._bar = None
-
-
-def tell_of_compiling() -> None:
-    """Say why nothing moves yet."""
-    tell("compiling for this machine, once for each version: up to a minute")
 
 
 def steps_in_words(choice: StepChoice, plan: Schedule, particles: Particles) -> str:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from driftwell.answers.answer import Answer
 from driftwell.answers.answer_lines import reading
@@ -15,7 +16,9 @@ from driftwell.hand.formula import HandValue
 from driftwell.hand.hand_lines import number
 from driftwell.hand.scene import scene_of_run
 from driftwell.hand.table import hand_answer
-from driftwell.record.reader import Run
+
+if TYPE_CHECKING:
+    from driftwell.record.reader import Run
 
 AGREE = 2.0
 """Error bars within which a run and a formula agree."""

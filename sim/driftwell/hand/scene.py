@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from driftwell.assembly import Assembly
 from driftwell.forms.body import Body
@@ -11,11 +12,13 @@ from driftwell.hand.group import Group
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.source import Source
 from driftwell.particles.species import bodies as known_bodies
-from driftwell.record.reader import Run
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.settings import apply_settings
 from driftwell.scenario.source import raw_table
 from driftwell.walls.plane import PlaneDetector
+
+if TYPE_CHECKING:
+    from driftwell.record.reader import Run
 
 
 @dataclass(frozen=True)

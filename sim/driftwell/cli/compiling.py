@@ -1,0 +1,10 @@
+"""What is said while code is compiled."""
+
+from __future__ import annotations
+
+from driftwell.cli.printing import tell
+
+
+def tell_of_compiling() -> None:
+    """Say why nothing moves yet."""
+    tell("compiling for this machine, once for each version: up to a minute")
