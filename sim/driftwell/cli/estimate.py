@@ -51,6 +51,12 @@ def _of_study(study: Study, seconds: float) -> int:
     """Print what a sweep would cost."""
     tell(study.title)
     tell(f"{_counted(len(study.cases), 'case')}; some of them are timed")
+    if study.limit is not None:
+        tell(
+            f"A search begins with these and goes on from what they say, by "
+            f"{study.limit.form.at_once} or more at a time, with at most "
+            f"{study.limit.form.most_runs} in all; told is what the first ones cost."
+        )
     with first_compilation(tell_of_compiling):
         found = forecast(study, seconds)
     return 0 if answer(forecast_lines(found, width())) else UNUSABLE
