@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from dataclasses import asdict, replace
 from pathlib import Path
 from typing import Any
@@ -24,7 +25,7 @@ from driftwell.study.limit_search import FOUND, NO_CROSSING, Search
 from driftwell.study.limit_table import LIMIT_CSV, LIMIT_H5, write_limit
 from driftwell.study.limit_words import limit_lines
 from driftwell.study.progress import SweepProgress
-from driftwell.study.read import Study
+from driftwell.study.read import Study, read_study
 from driftwell.study.worker import _reply, _Wish
 from tests.study.small_study import study, study_file
 from tests.study.small_sweeps import Heard, Scripted, ended
@@ -146,7 +147,8 @@ def test_a_search_finds_its_limit_and_the_same_search_again_computes_nothing(
 ) -> None:
     asked = study(tmp_path, LIMIT)
     found, engine = sought(asked, tmp_path / "s")
-    assert found.verdict is not None and found.verdict.interval is not None
+    assert found.verdict is not None
+    assert found.verdict.interval is not None
     assert FOUND == found.verdict.word
     low, high = found.verdict.interval
     assert low <= 144.0 <= high <= low + 2.0
@@ -162,6 +164,7 @@ def test_a_search_that_was_stopped_goes_on_to_the_same_end(tmp_path: Path) -> No
     whole, _ = sought(asked, tmp_path / "whole")
 
     def goes(progress: SweepProgress) -> bool:
+        time.sleep(0.12)  # the sweep asks again after a tenth of a second only
         return progress.computed + progress.there < 6
 
     stopped, _ = sought(asked, tmp_path / "s", Looked(goes))
@@ -188,7 +191,8 @@ def test_the_files_of_a_search_hold_its_runs_and_its_interval(tmp_path: Path) ->
     lines = (tmp_path / "s" / LIMIT_CSV).read_text().splitlines()
     assert "run,round,field.rods.voltage.amplitude [V],replica,size [m]," in lines[0]
     assert len(found.evaluations) + 1 == len(lines)
-    assert found.verdict is not None and found.verdict.interval is not None
+    assert found.verdict is not None
+    assert found.verdict.interval is not None
     with h5py.File(tmp_path / "s" / LIMIT_H5) as file:
         assert found.verdict.interval == (file.attrs["low"], file.attrs["high"])
         assert len(found.evaluations) == len(file["runs"])
@@ -251,8 +255,6 @@ def test_the_strongest_caps_a_magnet_can_hold_an_ion_in_are_found(tmp_path: Path
         'key = "field.caps.axial_frequency.value"\nfrom = "20 kHz"\nto = "500 kHz"\n'
         'answer = "held"\ncrosses = 0.5\nresolution = "0.5 %"\nnoise = "none"\n'
     )
-    from driftwell.study.read import read_study
-
     wish = _Wish()
     engine = Scripted(lambda task: _reply(task.content, wish))
     with Catalogue(tmp_path / "catalogue.sqlite") as catalogue:
@@ -264,7 +266,8 @@ def test_the_strongest_caps_a_magnet_can_hold_an_ion_in_are_found(tmp_path: Path
             workers=1,
             engine_of=engine.of,
         )
-    assert found.verdict is not None and found.verdict.interval is not None
+    assert found.verdict is not None
+    assert found.verdict.interval is not None
     # e B / (2 pi m sqrt 2), CODATA 2022
     low, high = found.verdict.interval
     assert low <= 108584.15 <= high <= 1.005 * low
