@@ -35,6 +35,7 @@ from tests.cli.small_runs import command, scenario, settings
         (["estimate", "s.toml", "--seconds", "0"], "'0' is not a number of seconds from 0.1 to"),
         (["estimate", "s.toml", "--seconds", "nan"], "'nan' is not a number of seconds from 0.1"),
         (["estimate", "s.toml", "--seconds", "x"], "'x' is not a number of seconds from 0.1 to"),
+        (["estimate", "s.toml", "--seconds", "3"], "--seconds says how long --measure times"),
         (["estimate", "s.toml", "-o", "x"], "unrecognized arguments: -o x"),
         (["watch"], "FOLDER"),
     ],

@@ -8,15 +8,25 @@ from pathlib import Path
 
 import pytest
 
+from driftwell.cli import counts
 from driftwell.cli import estimate as module
 from driftwell.cli.clock import by_the_clock, lasting
 from driftwell.cli.estimate import estimate_lines
 from driftwell.cli.main import main
 from driftwell.estimate import Change, Estimate
 from driftwell.timed_run import Stretch
-from tests.cli.small_runs import PAIR, scenario, settings
+from tests.cli.small_runs import PAIR, SMALL, scenario, settings
 
 Printed = pytest.CaptureFixture[str]
+RINGS = """
+[electrodes]
+geometry = "axisymmetric"
+
+[[electrode]]
+name = "ring"
+voltage = "10 V"
+shape = [{ kind = "rectangle", low = ["5 mm", "-4 mm"], high = ["6 mm", "4 mm"] }]
+"""
 
 NIGHT = Estimate(
     charges=20_000,
@@ -52,11 +62,14 @@ def test_the_command_says_time_memory_disk_and_what_would_be_cheaper(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.chdir(tmp_path)
-    arguments = ["estimate", str(scenario(tmp_path)), "--seconds", "0.3", "--threads", "1"]
+    file = str(scenario(tmp_path))
+    arguments = ["estimate", file, "--measure", "--seconds", "0.3", "--threads", "1"]
     assert 0 == main([*arguments, *settings("duration=2 ms")])
     printed = capsys.readouterr()
-    heads = [line[:9].strip() for line in printed.out.splitlines()]
+    cost, _, by_hand = printed.out.partition("\nBy hand, of the scenario as it begins:\n")
+    heads = [line[:9].strip() for line in cost.splitlines()]
     assert ["time", "goes to", "steps", "memory", "disk", "cheaper"] == [h for h in heads if h]
+    assert "secular frequency of ion along z  80 kHz" in by_hand
     assert max(map(len, printed.out.splitlines())) <= 100
     assert re.search(
         r"time     about [\d.]+ s on 1 thread, from [\d.]+ s to [\d.]+ s; begun now, done \d\d:",
@@ -94,7 +107,7 @@ def test_a_file_that_is_not_there_is_told_with_2(tmp_path: Path, capsys: Printed
 def test_motion_that_cannot_be_continued_is_told_with_the_exit_code_of_the_run(
     tmp_path: Path, capsys: Printed
 ) -> None:
-    assert 5 == main(["estimate", str(scenario(tmp_path, PAIR)), "--seconds", "0.5"])
+    assert 5 == main(["estimate", str(scenario(tmp_path, PAIR)), "--measure", "--seconds", "0.5"])
     printed = capsys.readouterr()
     assert "" == printed.out
     assert re.search(r"The run would fail after \d+ steps, at t = .*opposite charge", printed.err)
@@ -106,14 +119,57 @@ def test_memory_that_runs_out_is_told_with_2(
     def full(*given: object) -> None:
         raise MemoryError("Unable to allocate 229. MiB for an array")
 
-    monkeypatch.setattr(module, "estimate", full)
+    monkeypatch.setattr(module, "counted", full)
     assert 2 == main(["estimate", str(scenario(tmp_path))])
     assert "too little memory for the run (Unable to allocate" in capsys.readouterr().err
 
 
+def test_without_being_asked_to_nothing_is_timed(
+    tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Things are counted and worked out by hand; pictures and timing are not even loaded."""
+
+    def never(*given: object, **more: object) -> None:
+        raise AssertionError("a step was taken")
+
+    monkeypatch.setattr("driftwell.stepping.loop.TimeLoop.to_mark", never)
+    arguments = ["estimate", str(scenario(tmp_path)), "--threads", "1"]
+    assert 0 == main([*arguments, *settings("duration=2 ms", "field.rods.voltage.amplitude=2 kV")])
+    printed = capsys.readouterr()
+    counted, _, by_hand = printed.out.partition("\nBy hand, of the scenario as it begins:\n")
+    heads = [line[:9].strip() for line in counted.splitlines()]
+    expected = ["charges", "steps", "records", "memory", "disk", "time"]
+    assert expected == [head for head in heads if head]
+    assert "charges  8; every pair is summed\n" in counted
+    assert "steps    100000, of at most 20 ns: the scenario says so\n" in counted
+    assert "time     not timed: --measure times the first steps" in counted
+    assert "the motion grows: nothing is held along x" in " ".join(by_hand.split())
+    assert "source: W. Paul, Rev. Mod. Phys. 62 (1990) 531" in by_hand
+    assert "Caution: Voltages up to 2 kV kill" in by_hand
+    assert "licensed practitioners" in " ".join(by_hand.split())
+    assert max(map(len, printed.out.splitlines())) <= 100
+    assert "Eight ions in a trap\n" == printed.err
+
+
+def test_the_field_of_electrodes_is_not_solved_to_count(
+    tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Where it is not kept, the steps that follow from it are not told; a step stated is."""
+    monkeypatch.setenv("DRIFTWELL_FIELDS", str(tmp_path / "none"))
+    text = SMALL.replace('[stepping]\nstep = "20 ns"', "[stepping]") + RINGS
+    file = str(scenario(tmp_path, text))
+    assert 0 == main(["estimate", file, "--threads", "1"])
+    printed = " ".join(capsys.readouterr().out.split())
+    assert "steps follow from the field of the electrodes, which is not solved yet" in printed
+    assert "no formula here knows: `driftwell fields` solves it" in printed
+    assert 0 == main(["estimate", file, *settings("stepping.step=20 ns")])
+    assert "steps 1000, of at most 20 ns" in " ".join(capsys.readouterr().out.split())
+    assert not (tmp_path / "none").exists()
+
+
 def test_a_night_is_told_in_readable_numbers(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(module, "free_memory", lambda: 16_000_000_000)
-    monkeypatch.setattr(module, "free_space", lambda folder: 80_000_000_000)
+    monkeypatch.setattr(counts, "free_memory", lambda: 16_000_000_000)
+    monkeypatch.setattr(counts, "free_space", lambda folder: 80_000_000_000)
     told = text(NIGHT)
     for words in (
         "time about 8 h 20 min on 2 threads, from 7 h 13 min to 10 h; begun now, done ",
@@ -131,8 +187,8 @@ def test_a_night_is_told_in_readable_numbers(monkeypatch: pytest.MonkeyPatch) ->
 def test_what_does_not_fit_what_is_lost_and_what_cannot_be_helped_is_told(
     monkeypatch: pytest.MonkeyPatch,
 ) -> None:
-    monkeypatch.setattr(module, "free_memory", lambda: None)
-    monkeypatch.setattr(module, "free_space", lambda folder: 1_000_000_000)
+    monkeypatch.setattr(counts, "free_memory", lambda: None)
+    monkeypatch.setattr(counts, "free_space", lambda folder: 1_000_000_000)
     lossy = replace(NIGHT.timed, left=15_000)
     told = text(replace(NIGHT, timed=lossy, changes=(), events=10**9))
     assert "in which 5000 of 20000 charges were lost; the shorter time is for losses" in told
@@ -140,7 +196,7 @@ def test_what_does_not_fit_what_is_lost_and_what_cannot_be_helped_is_told(
     assert "1 GB are free here, too little: record less often" in told
     assert "memory about 600 MB disk" in told
     assert told.endswith("cheaper nothing that is known to help")
-    monkeypatch.setattr(module, "free_space", lambda folder: None)
+    monkeypatch.setattr(counts, "free_space", lambda folder: None)
     told = text(replace(NIGHT, timed=replace(lossy, left=0), ended=True))
     assert "in which every charge was lost: the run ends there." in told
     assert "free here" not in told

@@ -5,9 +5,11 @@ from __future__ import annotations
 import json
 import subprocess
 import sys
+from pathlib import Path
 
 import pytest
 
+ROD_TRAP = Path(__file__).parents[2] / "scenarios" / "rod-trap.toml"
 HEAVY = {"numpy", "numba", "h5py", "matplotlib", "pydantic", "pint", "tqdm", "scipy"}
 
 
@@ -51,3 +53,13 @@ def test_reading_a_scenario_loads_no_pictures() -> None:
 
 def test_the_schema_needs_no_terminal_bar() -> None:
     assert not {"tqdm", "matplotlib"} & loaded_by("import driftwell.cli.schema")
+
+
+def test_an_estimate_that_times_nothing_loads_nothing_that_times_draws_or_optimises() -> None:
+    """It answers within two seconds: units, pictures and statistics alone take as long."""
+    loaded = loaded_by(
+        "import driftwell.cli.main as cli\n"
+        f"assert 0 == cli.main(['estimate', {str(ROD_TRAP)!r}, '--threads', '1'])"
+    )
+    slow = {"matplotlib", "pint", "dask", "scipy.stats", "scipy.optimize", "scipy.ndimage"}
+    assert not {*slow, "driftwell.timed_run", "driftwell.study.forecast"} & loaded

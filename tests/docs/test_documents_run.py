@@ -13,6 +13,8 @@ from pathlib import Path
 
 import pytest
 
+from driftwell.cli.converge import NOT_CONVERGED
+from driftwell.cli.limit import EXIT_CODES as LIMIT_CODES
 from driftwell.cli.sweep import SOME_FAILED
 from driftwell.run import EXIT_CODES
 from driftwell.scenario.read import read_scenario
@@ -130,8 +132,9 @@ def headings(page: Path) -> set[str]:
 
 def test_the_readme_lists_the_exit_codes_that_runs_end_with() -> None:
     text = (ROOT / "README.md").read_text()
-    listed = {int(code) for code in re.findall(r"^\| (\d) \| ", text, re.MULTILINE)}
-    assert {*EXIT_CODES.values(), 2, SOME_FAILED, ClusterLostError.exit_code} == listed
+    listed = {int(code) for code in re.findall(r"^\| (\d+) \| ", text, re.MULTILINE)}
+    of_limits = set(LIMIT_CODES.values()) | {NOT_CONVERGED}
+    assert {*EXIT_CODES.values(), 2, SOME_FAILED, ClusterLostError.exit_code} | of_limits == listed
 
 
 def test_the_readme_shows_keys_as_the_shipped_scenario_has_them() -> None:

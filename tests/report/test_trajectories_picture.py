@@ -65,6 +65,7 @@ def test_a_way_out_of_a_cell_and_in_again_is_not_joined(tmp_path):
     expected = [-5.0, -2.0, 1.0, 4.0, np.nan, -3.0, 0.0, 3.0, np.nan, -4.0]
     np.testing.assert_allclose(figure.axes[2].lines[0].get_ydata(), expected, atol=1e-9)
     np.testing.assert_allclose(figure.axes[3].lines[0].get_xdata(), expected, atol=1e-9)
+    assert [0.0] * 8 == figure.axes[0].lines[0].get_ydata().tolist()
 
 
 def test_jagged_is_what_turns_much_from_point_to_point():

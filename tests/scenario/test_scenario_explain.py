@@ -27,6 +27,12 @@ size = ["20 mm", "10 mm", "5 mm"]
 remanence = "1.3 T"
 centre = ["100 mm", "0 mm", "0 mm"]
 """
+DRAG = """
+[[process]]
+name = "helium"
+kind = "mobility-drag"
+mobility = "0.25 m^2/(V s)"
+"""
 
 
 def loaded(folder: Path, text: str, *settings: str) -> LoadedScenario:
@@ -132,11 +138,21 @@ def test_macro_particles_without_softening_and_runs_without_questions_are_noted(
         (TRAP, ("field.rods.voltage.amplitude=1.2 kV",), ["Voltages up to 1.2 kV"]),
         (TRAP, ("field.rods.voltage.offset=-900 V",), ["Voltages up to 1.08 kV"]),
         (TRAP, ("field.rods.voltage=-25 kV",), ["Voltages up to 25 kV"]),
-        (BEAM, (), ["Electrons of up to 30 keV"]),
-        (BEAM, ("cloud.bunch.shape.kinetic_energy=4 keV",), []),
+        (BEAM, (), ["Voltages up to 30 kV", "Electrons of up to 30 keV"]),
+        (BEAM, ("cloud.bunch.shape.kinetic_energy=900 eV",), []),
+        (BEAM, ("cloud.bunch.shape.kinetic_energy=4 MeV",), ["Electrons of up to 4 MeV"]),
         (
             BEAM,
-            ("cloud.bunch.shape.kinetic_energy=4 keV", "field.bend.strength=0.6 T"),
+            (
+                "cloud.bunch.species=proton",
+                "cloud.bunch.total_charge=8 fC",
+                "cloud.bunch.shape.kinetic_energy=4 MeV",
+            ),
+            ["Light ions of up to 4 MeV set neutrons free"],
+        ),
+        (
+            BEAM,
+            ("cloud.bunch.shape.kinetic_energy=900 eV", "field.bend.strength=0.6 T"),
             ["Fields up to 600 mT"],
         ),
         (TRAP + COIL, (), []),
@@ -151,8 +167,9 @@ def test_macro_particles_without_softening_and_runs_without_questions_are_noted(
         (
             TRAP,
             ("cloud.load.species=electron", "cloud.load.motion={ kinetic_energy = '6 keV' }"),
-            ["Electrons of up to 6 keV"],
+            ["Voltages up to 6 kV", "Electrons of up to 6 keV"],
         ),
+        (TRAP + DRAG, (), ["Gas comes from bottles under pressure"]),
     ],
 )
 def test_hazards_are_told_and_left_to_local_codes_and_licensed_practice(

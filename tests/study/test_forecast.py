@@ -12,7 +12,7 @@ from driftwell.cli.main import main
 from driftwell.estimate import Estimate
 from driftwell.scenario.read import LoadedScenario
 from driftwell.study import forecast as module
-from driftwell.study.forecast import BESIDES, TIMED, forecast
+from driftwell.study.forecast import BESIDES, TIMED, forecast, outlook
 from driftwell.timed_run import Stretch
 from tests.study.small_study import study, study_file, vary
 
@@ -89,12 +89,34 @@ def test_many_equal_runs_take_their_share_of_the_cores(tmp_path: Path, timed: li
 def test_the_command_knows_a_study_from_a_scenario(
     tmp_path: Path, timed: list[int], capsys: Any
 ) -> None:
-    assert 0 == main(["estimate", str(study_file(tmp_path, COUNTS))])
+    assert 0 == main(["estimate", str(study_file(tmp_path, COUNTS)), "--measure"])
     printed = capsys.readouterr()
     heads = [line[:9].strip() for line in printed.out.splitlines()]
     assert ["time", "runs", "cores", "timed", "memory", "disk"] == [h for h in heads if h]
     assert "6 of 6 cases" in printed.out
     assert printed.err.startswith("How wide\n6 cases; some of them are timed\n")
+
+
+def test_a_study_is_counted_without_timing_any_of_its_runs(
+    tmp_path: Path, timed: list[int], capsys: Any
+) -> None:
+    assert 0 == main(["estimate", str(study_file(tmp_path, COUNTS))])
+    printed = capsys.readouterr()
+    assert [] == timed
+    counted, _, by_hand = printed.out.partition("\nOf case 6, the largest:\n")
+    heads = [line[:9].strip() for line in counted.splitlines()]
+    assert ["runs", "charges", "cores", "memory", "time"] == [head for head in heads if head]
+    assert "runs     6 of 6 cases\ncharges  10 to 320\n" in counted
+    assert by_hand.startswith("By hand, of the scenario as it begins:\n")
+    assert "nothing is timed, --measure times some of them" in printed.err
+
+
+def test_of_many_cases_some_are_looked_at(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(module, "LOOKED_AT", 4)
+    found = outlook(study(tmp_path, COUNTS))
+    assert (6, 4, 4) == (found.cases, found.looked_at, found.runs)
+    assert (10, 320) == found.charges
+    assert 6 == found.case
 
 
 def test_a_study_with_faults_is_told(tmp_path: Path, capsys: Any) -> None:

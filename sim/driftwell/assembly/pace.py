@@ -27,6 +27,7 @@ from driftwell.solved.acting import ActingField
 from driftwell.stepping.schedule import (
     MOST_MARKS,
 )
+from driftwell.stepping.schemes import MIDWAY
 from driftwell.stepping.step_choice import (
     Rate,
     StepChoice,
@@ -48,8 +49,8 @@ def chosen_pace(
     requests: Sequence[TraceRequest],
     acting: ActingField | None,
     frames: BunchFrames | None = None,
-) -> tuple[StepChoice, float]:
-    """The step, and the time between samples of the traces.
+) -> tuple[StepChoice, float, Rate]:
+    """The step, the time between samples of the traces, and the fastest motion in the fields.
 
     everyone : with those to be born, as they are born; newcomers : how fast these will move others
     """
@@ -63,6 +64,7 @@ def chosen_pace(
     if acting is not None:
         rates += _rates_in(acting, bodies, names, everyone)
     fastest = max((rate.rate for rate in rates), default=0.0)
+    motion = _to_be_followed(rates, stepping.scheme)
     every = min((request.every for request in requests if request.every), default=math.inf)
     if any(request.every is None for request in requests):
         period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
@@ -76,7 +78,14 @@ def chosen_pace(
         mark = min(every, scenario.record.every or scenario.duration / DEFAULT_RECORDS)
         choice = chosen_step(rates, stepping.steps_per_period, scenario.duration, mark)
     _refuse_too_many(scenario.duration, choice, every)
-    return choice, every
+    return choice, every, motion
+
+
+def _to_be_followed(rates: Sequence[Rate], scheme: str) -> Rate:
+    """The fastest motion in the fields, save gyration where the scheme follows it at any step."""
+    exact = scheme == MIDWAY
+    followed = [rate for rate in rates if not (exact and rate.name.startswith("cyclotron"))]
+    return max(followed, key=lambda rate: rate.rate, default=Rate("", 0.0))
 
 
 def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str, float]:

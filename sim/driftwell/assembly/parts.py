@@ -42,7 +42,7 @@ from driftwell.scenario.conductors import Conductors
 from driftwell.scenario.model import Scenario
 from driftwell.scenario.read import LoadedScenario
 from driftwell.scenario.room import Extent, Warn, extent_of, refuse_beyond_memory
-from driftwell.solved.acting import ActingField, acting_field
+from driftwell.solved.acting import ActingField, acting_field, field_is_kept
 from driftwell.solved.edges import Edges
 from driftwell.stepping.loop import TimeLoop
 from driftwell.stepping.motion import Fields
@@ -53,6 +53,7 @@ from driftwell.stepping.schedule import (
     Schedule,
 )
 from driftwell.stepping.step_choice import (
+    Rate,
     StepChoice,
 )
 from driftwell.stepping.surroundings import Surroundings
@@ -67,6 +68,7 @@ class Assembly:
     species : names in the order of ``particles.species``
     clouds : facts in the order of ``particles.cloud``: clouds, then sources
     requests : the coordinates to be traced, each once
+    motion : the fastest in the fields that a step must follow; of rate 0 where there is none
     extent : how much of everything it is
     conductors : the electrodes as surfaces
     edges : where fields end that are known in a region only
@@ -83,6 +85,7 @@ class Assembly:
     clouds: tuple[CloudFacts, ...]
     requests: tuple[TraceRequest, ...]
     choice: StepChoice
+    motion: Rate
     schedule: Schedule
     extent: Extent
     conductors: Conductors
@@ -126,6 +129,8 @@ class Assembly:
             duration=scenario.duration,
             step=self.choice.step,
             scheme=scenario.stepping.scheme,
+            motion=self.motion.name,
+            motion_rate=self.motion.rate,
             softening=scenario.coulomb.softening,
             coulomb_method=summation.method,
             coulomb_because="; ".join(filter(None, (summation.because, self.frame_remark()))),
@@ -200,12 +205,18 @@ class Assembly:
 
 
 def assembled(
-    loaded: LoadedScenario, warn: Warn | None = None, told: Warn | None = None
+    loaded: LoadedScenario,
+    warn: Warn | None = None,
+    told: Warn | None = None,
+    *,
+    solve: bool = True,
 ) -> Assembly:
     """Put a scenario together; the field of its electrodes is solved where it is not kept.
 
     warn : where given, it is told that the run would not fit in memory, and nothing is refused
     told : where given, it is told how the electrodes' field comes about
+    solve : False for parts that are counted, not run: no field is solved that is not kept, and
+        no conductor's images are made ready
 
     Raises
     ------
@@ -228,7 +239,9 @@ def assembled(
     everyone = particles if unborn is None else joined([particles, unborn.particles])
     check_births(scenario, everyone, conductors)
     check_sides(scenario, everyone)  # before anything is solved
-    acting = acting_field(scenario, loaded.folder, told)
+    acting = None
+    if solve or field_is_kept(scenario, loaded.folder):
+        acting = acting_field(scenario, loaded.folder, told)
     edges = tuple(edges_in(scenario, acting))
     check_within(scenario, everyone, edges)
     requests = all_traces(scenario)
@@ -243,7 +256,7 @@ def assembled(
     ]
     setting, softening = scenario.setting(loaded.folder), scenario.coulomb.softening
     newcomers = source_rates(emitting, setting, softening)
-    choice, every = chosen_pace(
+    choice, every, motion = chosen_pace(
         scenario, bodies, species, particles, everyone, newcomers, requests, acting, frames
     )
     samples = scenario.duration / every if requests else 0.0
@@ -262,12 +275,13 @@ def assembled(
         tuple(clouds),
         tuple(requests),
         choice,
+        motion,
         plan,
         _counted(extent, plan),
         conductors,
         edges,
         acting,
-        _images(scenario, conductors, everyone, choice),
+        _images(scenario, conductors, everyone, choice) if solve else None,
         unborn,
         frames,
     )

@@ -25,7 +25,6 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import brentq
 from scipy.special import hyp2f1
 
 from driftwell.boundary.drawn_rows import place
@@ -142,6 +141,8 @@ def cone_power(opening: float) -> float:
 
     opening : half angle, rad, of the cone that the field fills, less than pi
     """
+
+    from scipy.optimize import brentq
 
     def legendre(nu: float) -> float:
         return float(hyp2f1(-nu, nu + 1.0, 1.0, 0.5 * (1.0 - math.cos(opening))))

@@ -14,7 +14,6 @@ from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.stats import qmc
 
 from driftwell.boundary.mirror_orbits import mirror_orbits
 from driftwell.boundary.panel_bounds import bounds_of, count_near
@@ -234,6 +233,8 @@ def _extent(solid: Solid) -> float:
 
 def _spread_places(surfaces: Surfaces) -> Floats:
     """Points spread evenly about all electrodes, (n, 3), m."""
+    from scipy.stats import qmc
+
     vertices = surfaces.corners[surfaces.electrode < surfaces.electrodes].reshape(-1, 3)
     low, high = vertices.min(axis=0), vertices.max(axis=0)
     reach = _AROUND * (high - low) + _BESIDE * np.max(high - low)

@@ -1,40 +1,63 @@
-"""``driftwell estimate FILE``: what a run or a sweep would cost, before it is begun."""
+"""``driftwell estimate FILE``: what a run or a sweep would be, before it is begun.
+
+Without ``--measure`` things are counted and worked out by hand, and nothing is timed or solved; so
+what times is imported only where it is asked for.
+"""
 
 from __future__ import annotations
 
 import shlex
 from collections.abc import Sequence
-from pathlib import Path
+from typing import TYPE_CHECKING
 
 from driftwell.assembly import Assembly
 from driftwell.cli.clock import by_the_clock, lasting
+from driftwell.cli.counts import (
+    count_lines,
+    counted_in_words,
+    disk_in_words,
+    laid_out,
+    memory_in_words,
+)
+from driftwell.cli.hand import caution_lines, lines_by_hand
 from driftwell.cli.printing import answer, tell, width
-from driftwell.cli.progress import steps_in_words, tell_of_compiling
-from driftwell.cli.run_command import UNUSABLE, too_little_memory
 from driftwell.coulomb.summation import Summation
+from driftwell.counted import counted
 from driftwell.errors import DriftwellError, StepError
-from driftwell.estimate import Estimate, estimate
-from driftwell.forms.paragraph import paragraph
+from driftwell.hand.scene import scene_of
 from driftwell.kernels.compilation import first_compilation
-from driftwell.scenario.read import read_scenario
-from driftwell.scenario.room import free_memory, free_space, in_words
-from driftwell.study.forecast import Forecast, forecast
-from driftwell.study.read import Study, is_study, read_study
+from driftwell.scenario.read import LoadedScenario, read_scenario
 
-_COLUMN = 9
-_FEW = 0.01
-"""Part of the disk that losses and passages must take to be spoken of."""
+if TYPE_CHECKING:
+    from driftwell.estimate import Estimate
+    from driftwell.study.forecast import Forecast, Outlook
+
+UNUSABLE = 2
+"""Exit code where a file or folder cannot be used."""
 
 
-def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: float) -> int:
-    """Print what it would cost and return 0, or why nothing could be run, with its exit code."""
+def estimate_command(
+    file: str,
+    settings: Sequence[str],
+    threads: int,
+    seconds: float | None = None,
+) -> int:
+    """Print what it would cost and return 0, or why nothing could be run, with its exit code.
+
+    seconds : s to time first steps; None: nothing is timed
+    """
+    from driftwell.cli.progress import tell_of_compiling
+    from driftwell.study.read import is_study
+
     try:
-        if is_study(file):
-            return _of_study(read_study(file, settings), seconds)
-        loaded = read_scenario(file, settings)
-        tell(loaded.scenario.title)
         with first_compilation(tell_of_compiling):
-            found = estimate(loaded, threads, seconds, _begins, tell)
+            if is_study(file):
+                return _of_study(file, settings, seconds)
+            loaded = read_scenario(file, settings)
+            tell(loaded.scenario.title)
+            if seconds is None:
+                return _counted(loaded, threads)
+            return _timed(loaded, threads, seconds)
     except StepError as error:
         tell(f"The run would fail {error}")
         return error.exit_code
@@ -42,28 +65,72 @@ def estimate_command(file: str, settings: Sequence[str], threads: int, seconds: 
         tell(str(error))
         return error.exit_code
     except MemoryError as error:
+        from driftwell.cli.run_command import too_little_memory
+
         tell(too_little_memory(error))
         return UNUSABLE
-    return 0 if answer(estimate_lines(found, width())) else UNUSABLE
 
 
-def _of_study(study: Study, seconds: float) -> int:
+def _counted(loaded: LoadedScenario, threads: int) -> int:
+    """Print a run in numbers, and what can be said by hand."""
+    found, parts = counted(loaded, threads)
+    lines = [
+        *count_lines(found, width()),
+        *lines_by_hand(scene_of(parts)),
+        *caution_lines(loaded.scenario),
+    ]
+    return 0 if answer(lines) else UNUSABLE
+
+
+def _timed(loaded: LoadedScenario, threads: int, seconds: float) -> int:
+    """Print what a run would cost by its first steps, and what can be said by hand."""
+    from driftwell.estimate import estimate
+
+    by_hand: list[str] = []
+
+    def begins(parts: Assembly, summation: Summation) -> None:
+        by_hand.extend(lines_by_hand(scene_of(parts)))  # before its charges are moved
+        _begins(parts, summation)
+
+    found = estimate(loaded, threads, seconds, begins, tell)
+    lines = [*estimate_lines(found, width()), *by_hand, *caution_lines(loaded.scenario)]
+    return 0 if answer(lines) else UNUSABLE
+
+
+def _of_study(file: str, settings: Sequence[str], seconds: float | None) -> int:
     """Print what a sweep would cost."""
+    from driftwell.study.forecast import forecast, outlook
+    from driftwell.study.read import read_study
+
+    study = read_study(file, settings)
     tell(study.title)
-    tell(f"{_counted(len(study.cases), 'case')}; some of them are timed")
+    cases = counted_in_words(len(study.cases), "case")
     if study.limit is not None:
         tell(
             f"A search begins with these and goes on from what they say, by "
             f"{study.limit.form.at_once} or more at a time, with at most "
             f"{study.limit.form.most_runs} in all; told is what the first ones cost."
         )
-    with first_compilation(tell_of_compiling):
-        found = forecast(study, seconds)
+    if seconds is None:
+        tell(f"{cases}; nothing is timed, --measure times some of them")
+        seen = outlook(study)
+        lines = [
+            *outlook_lines(seen, width()),
+            "",
+            f"Of case {seen.case}, the largest:",
+            *lines_by_hand(scene_of(seen.parts))[1:],
+            *caution_lines(seen.parts.scenario),
+        ]
+        return 0 if answer(lines) else UNUSABLE
+    tell(f"{cases}; some of them are timed")
+    found = forecast(study, seconds)
     return 0 if answer(forecast_lines(found, width())) else UNUSABLE
 
 
 def _begins(parts: Assembly, summation: Summation) -> None:
     """Say what is timed, as a run says what it does."""
+    from driftwell.cli.progress import steps_in_words
+
     tell(steps_in_words(parts.choice, parts.schedule, parts.everyone))
     if parts.unborn is not None:
         tell(
@@ -79,20 +146,33 @@ def estimate_lines(found: Estimate, columns: int) -> list[str]:
         ("time", _time(found)),
         ("goes to", _goes_to(found)),
         ("steps", _steps(found)),
-        ("memory", _of_memory(found.memory)),
-        ("disk", _of_disk(found.disk, found.events)),
+        ("memory", memory_in_words(found.memory)),
+        ("disk", disk_in_words(found.disk, found.events)),
         *(("cheaper" if not k else "", words) for k, words in enumerate(_cheaper(found))),
     ]
-    return _laid_out(rows, columns)
+    return laid_out(rows, columns)
 
 
-def _laid_out(rows: Sequence[tuple[str, str]], columns: int) -> list[str]:
-    """Names, and beside them what is said."""
-    return [
-        line
-        for name, words in rows
-        for line in paragraph(words, columns, name.ljust(_COLUMN), " " * _COLUMN)
+def outlook_lines(found: Outlook, columns: int) -> list[str]:
+    """A sweep in numbers, in lines of at most so many characters."""
+    refused, why = found.refused
+    charges = found.charges
+    rows = [
+        (
+            "runs",
+            f"{found.runs} of {counted_in_words(found.cases, 'case')}"
+            + (f", {found.looked_at} of which were looked at" * (found.looked_at < found.cases)),
+        ),
+        (
+            "charges",
+            f"{charges[0]} to {charges[1]}" if charges[0] != charges[1] else f"{charges[0]} each",
+        ),
+        ("cores", found.sharing.because),
+        ("memory", memory_in_words(found.memory)),
+        ("time", "not timed: --measure times some of the runs"),
+        *([("faults", f"{refused} of the cases cannot be run: {why}")] if refused else []),
     ]
+    return laid_out(rows, columns)
 
 
 def forecast_lines(found: Forecast, columns: int) -> list[str]:
@@ -107,30 +187,31 @@ def forecast_lines(found: Forecast, columns: int) -> list[str]:
         ),
         (
             "runs",
-            f"{found.runs} of {_counted(found.cases, 'case')}, {lasting(found.work)} of work; the "
-            f"longest takes {lasting(found.longest)}",
+            f"{found.runs} of {counted_in_words(found.cases, 'case')}, "
+            f"{lasting(found.work)} of work; "
+            f"the longest takes {lasting(found.longest)}",
         ),
         ("cores", found.sharing.because),
         (
             "timed",
             ", ".join(
-                f"{_counted(each.charges, 'charge')} {lasting(each.seconds)}"
+                f"{counted_in_words(each.charges, 'charge')} {lasting(each.seconds)}"
                 for each in found.timed
             ),
         ),
-        ("memory", _of_memory(found.memory)),
-        ("disk", _of_disk(found.disk, 0)),
+        ("memory", memory_in_words(found.memory)),
+        ("disk", disk_in_words(found.disk, 0)),
         *([("faults", f"{refused} of the cases cannot be run: {why}")] if refused else []),
     ]
-    return _laid_out(rows, columns)
+    return laid_out(rows, columns)
 
 
 def _time(found: Estimate) -> str:
     timed = found.timed
     text = (
-        f"about {lasting(found.seconds)} on {_counted(found.threads, 'thread')}, from "
+        f"about {lasting(found.seconds)} on {counted_in_words(found.threads, 'thread')}, from "
         f"{lasting(found.least)} to {lasting(found.most)}; begun now, done "
-        f"{by_the_clock(found.seconds)}. Timed: {_counted(timed.steps, 'step')} in "
+        f"{by_the_clock(found.seconds)}. Timed: {counted_in_words(timed.steps, 'step')} in "
         f"{lasting(timed.seconds)}"
     )
     if found.ended:
@@ -150,29 +231,16 @@ def _goes_to(found: Estimate) -> str:
 
 
 def _steps(found: Estimate) -> str:
-    return (
-        f"{found.steps}, of {lasting(found.timed.step)} each; {_counted(found.records, 'record')}, "
-        f"{_counted(found.snapshots, 'snapshot')} and {_counted(found.segments, 'segment')}"
+    records, snapshots, segments = (
+        counted_in_words(number, noun)
+        for number, noun in (
+            (found.records, "record"),
+            (found.snapshots, "snapshot"),
+            (found.segments, "segment"),
+        )
     )
-
-
-def _of_memory(needed: int) -> str:
-    free = free_memory()
-    text = f"about {in_words(needed)}"
-    return text if free is None else f"{text}; {in_words(free)} are free"
-
-
-def _of_disk(needed: int, events: int) -> str:
-    text = f"about {in_words(needed)}"
-    if events > _FEW * needed:
-        text += f", and {in_words(events)} more if every charge meets every surface once"
-    space = free_space(Path())
-    if space is None:
-        return text
-    text += f"; {in_words(space)} are free here"
-    if needed > space:
-        text += ", too little: record less often, or name a folder on a larger disk with -o"
-    return text
+    each = lasting(found.timed.step)
+    return f"{found.steps}, of {each} each; {records}, {snapshots} and {segments}"
 
 
 def _cheaper(found: Estimate) -> list[str]:
@@ -183,7 +251,3 @@ def _cheaper(found: Estimate) -> list[str]:
         + "".join(f" (--set {shlex.quote(each)})" for each in change.settings)
         for change in found.changes
     ]
-
-
-def _counted(number: int, noun: str) -> str:
-    return f"{number} {noun}{'s' * (number != 1)}"

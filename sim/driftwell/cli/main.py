@@ -6,13 +6,16 @@ Nothing heavy is imported before it is known what is asked, so that ``--help`` a
 from __future__ import annotations
 
 import argparse
+import gc
 import os
 import sys
 import warnings
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager, nullcontext
 from typing import Any
 
 from driftwell._version import __version__
+from driftwell.cli.converge_arguments import add_converge
 from driftwell.cli.durations import seconds_of
 from driftwell.cli.printing import flush_quietly, tell, write_anything
 
@@ -20,7 +23,7 @@ INTERRUPTED = 130
 DEFECT = 1
 LARGEST_SEED = 2**63 - 1
 MOST_THREADS = 1024
-SHORTEST_TIMING, LONGEST_TIMING = 0.1, 3600.0
+SHORTEST_TIMING, TIMING, LONGEST_TIMING = 0.1, 5.0, 3600.0
 _SWEEP_EPILOG = """\
 What is there already is not computed again; what was cut off goes on. Give the same command
 again after a stop, a crash or a change of the study.
@@ -104,6 +107,10 @@ def _parser() -> argparse.ArgumentParser:
 
     _add_limit(commands)
 
+    converge = add_converge(commands, _folder, _threads, _duration)
+    _add_cluster(converge)
+    _add_settings(converge)
+
     check = commands.add_parser(
         "check", help="say what a scenario or study would simulate, or its faults"
     )
@@ -111,15 +118,18 @@ def _parser() -> argparse.ArgumentParser:
     _add_settings(check)
 
     estimate = commands.add_parser(
-        "estimate", help="time some steps, and say what a run or a sweep will cost"
+        "estimate",
+        help="say what a run or a sweep will be: counts, hand calculations; --measure: its time",
     )
     estimate.add_argument("file", help="scenario or study file (TOML)")
     estimate.add_argument(
+        "--measure", action="store_true", help="time the first steps, and say what all will take"
+    )
+    estimate.add_argument(
         "--seconds",
         type=_seconds,
-        default=5.0,
         metavar="S",
-        help="how long to time, about (default: %(default)g)",
+        help=f"how long to time with --measure, about (default: {TIMING:g})",
     )
     _add_threads(estimate)
     _add_settings(estimate)
@@ -289,7 +299,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 def _answered(arguments: Sequence[str] | None) -> int:
     """The exit code of the command; errors and defects have been told."""
-    asked = _parser().parse_args(arguments)
+    parser = _parser()
+    asked = parser.parse_args(arguments)
+    if asked.command == "estimate" and asked.seconds is not None and not asked.measure:
+        parser.error("--seconds says how long --measure times: give --measure too")
     try:
         with warnings.catch_warnings():
             if not sys.warnoptions:  # meant for whoever works on the libraries, not for the user
@@ -307,6 +320,18 @@ def _answered(arguments: Sequence[str] | None) -> int:
             f"Setting {TRACEBACK}=1 shows where it happened."
         )
         return DEFECT
+
+
+@contextmanager
+def _uncollected() -> Iterator[None]:
+    """Without looking for garbage: in what is short, most is still in use, and it takes a tenth."""
+    before = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if before:
+            gc.enable()
 
 
 def _carry_out(asked: argparse.Namespace) -> int:
@@ -342,13 +367,17 @@ def _carry_out(asked: argparse.Namespace) -> int:
             not asked.no_pictures,
             Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key),
         )
+    if asked.command == "converge":
+        return _converge(asked)
     threads = _usable_threads(asked.threads)
     if "numba" not in sys.modules:  # it reads its limit once, and minds another one later
         os.environ["NUMBA_NUM_THREADS"] = str(threads)
     if asked.command == "estimate":
-        from driftwell.cli.estimate import estimate_command
+        with nullcontext() if asked.measure else _uncollected():
+            from driftwell.cli.estimate import estimate_command
 
-        return estimate_command(asked.file, asked.settings, threads, asked.seconds)
+            seconds = (asked.seconds or TIMING) if asked.measure else None
+            return estimate_command(asked.file, asked.settings, threads, seconds)
     if asked.command == "fields":
         from driftwell.cli.fields import fields_command
 
@@ -369,6 +398,30 @@ def _carry_out(asked: argparse.Namespace) -> int:
         fresh=asked.fresh,
         stop_after=asked.stop_after,
         force=asked.force,
+    )
+
+
+def _converge(asked: argparse.Namespace) -> int:
+    from pathlib import Path
+
+    from driftwell.cli.converge import Options, converge_command
+    from driftwell.cli.sweep_place import Place
+    from driftwell.study.convergence.plan import Wanted
+
+    axes = tuple(name.replace("-", "_") for name in asked.axes)
+    return converge_command(
+        Wanted(Path(asked.file), tuple(asked.settings), axes, asked.replicas),
+        asked.output,
+        Options(
+            asked.within,
+            tuple(asked.question),
+            asked.workers,
+            asked.threads,
+            asked.stop_after,
+            asked.retry_failed,
+            not asked.no_pictures,
+        ),
+        Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key),
     )
 
 

@@ -16,6 +16,7 @@ from driftwell.cli.printing import is_terminal, tell
 from driftwell.cli.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.summation import pairs_in_one_sum
+from driftwell.counted import PAIRS_PER_SECOND
 from driftwell.forms import spelled
 from driftwell.particles.state import Particles
 from driftwell.run import Progress
@@ -26,8 +27,6 @@ _REDRAWN = 0.2
 """s, between two drawings of the bar."""
 _FIRST_LINE, _LONGEST_WAIT = 5.0, 600.0
 """s, until the first line of a log, and the longest time between two."""
-_PAIRS_PER_SECOND = 1e9
-"""Pairs a thread sums in a second, at the best."""
 _LONG = 2 * 3600.0
 """s, from which on a user should know before waiting."""
 _USUAL = 80
@@ -41,7 +40,7 @@ class ProgressDisplay:
     def __init__(self, wish: StopWish, threads: int, coulomb: Coulomb) -> None:
         self._wish = wish
         self._coulomb = coulomb
-        self._pairs_per_second = threads * _PAIRS_PER_SECOND
+        self._pairs_per_second = threads * PAIRS_PER_SECOND
         self._bar: Any = None
         self._began = 0.0
         self._next: float | None = None

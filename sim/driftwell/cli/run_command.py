@@ -8,13 +8,15 @@ from pathlib import Path
 from typing import Any
 
 from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell.cli.hand import compared
+from driftwell.cli.judgement import judgement_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
 from driftwell.cli.progress import ProgressDisplay
 from driftwell.cli.stop_wish import StopWish
 from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
+from driftwell.judgement import Finding, judged
 from driftwell.kernels.compilation import first_compilation
-from driftwell.ledger.doubts import doubts
 from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
 from driftwell.run import FINISHED, FULL, Result, run
@@ -80,6 +82,7 @@ def _report(result: Result) -> bool:
     if result.outcome.word != FINISHED and not same_place():
         tell(ending)  # whoever looks at stderr alone must know too
     row, outcome = result.ledger, result.outcome
+    findings = _findings(result)
     lines = [
         "",
         ending,
@@ -89,9 +92,11 @@ def _report(result: Result) -> bool:
         f"{row.momentum_residual:.1e}, angular momentum {row.angular_residual:.1e}, third law "
         f"{row.third_law_residual:.1e}",
         "",
-        *_doubted(result),
+        *_doubted(findings),
         *_answers(result),
         *force_lines(result.answers, width()),
+        *_by_hand(result),
+        *_judgement(result, findings),
         "",
         f"record: {result.folder / MASTER}",
     ]
@@ -105,13 +110,38 @@ def _answers(result: Result) -> list[str]:
     return found or ["The scenario asks no questions: the run only recorded."]
 
 
-def _doubted(result: Result) -> list[str]:
+def _by_hand(result: Result) -> list[str]:
+    """The answers beside hand calculations."""
+    lines = [] if result.outcome.word == FULL else compared(open_run(result.folder))
+    return ["", *lines] if lines else []
+
+
+def _findings(result: Result) -> tuple[Finding, ...]:
+    """What is to be said of a run that has been recorded; a record that cannot be read is told."""
+    if result.outcome.word == FULL:
+        return ()
+    try:
+        return judged(open_run(result.folder))
+    except DriftwellError as error:
+        tell(str(error))
+        return ()
+
+
+def _doubted(findings: Sequence[Finding]) -> list[str]:
     """What the ledger and the Coulomb sum say against the answers, before them."""
     return [
         line
-        for doubt in doubts(result.ledger, result.broken)
-        for line in (*paragraph(f"Doubt: {doubt}", width(), rest="  "), "")
+        for each in findings
+        if each.grave
+        for line in (*paragraph(f"Doubt: {each.sentence}", width(), rest="  "), "")
     ]
+
+
+def _judgement(result: Result, findings: Sequence[Finding]) -> list[str]:
+    """What else is to be said that was not told before, behind the answers."""
+    if result.outcome.word == FULL:
+        return []
+    return ["", *judgement_lines([each for each in findings if not each.told], width())]
 
 
 def _draw(folder: Path) -> bool:

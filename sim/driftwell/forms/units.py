@@ -1,8 +1,9 @@
 """Units: one registry, made when the first quantity is read.
 
 The units library (pint) takes 0.4 s to load, so nothing imports this module's registry until a
-scenario is read. Two of its definitions are replaced by CODATA 2022, so that "1 u" and "1 e" in a
-scenario are the constants the forces are computed with.
+scenario uses a unit that is not among the usual ones (:mod:`driftwell.forms.usual_units`). Two of
+its definitions are replaced by CODATA 2022, so that "1 u" and "1 e" in a scenario are the constants
+the forces are computed with.
 """
 
 from __future__ import annotations
@@ -14,6 +15,7 @@ from functools import lru_cache
 from typing import TYPE_CHECKING, Any
 
 from driftwell import constants
+from driftwell.forms.usual_units import USUAL
 
 if TYPE_CHECKING:
     from pint import Unit, UnitRegistry
@@ -90,6 +92,9 @@ def to_si(unit: str, si_unit: str) -> tuple[Decimal, Decimal]:
     ValueError
         `unit` has another dimension than `si_unit`; the text says which.
     """
+    usual = USUAL.get((unit, si_unit))
+    if usual is not None:
+        return usual, Decimal(0)
     import pint
 
     if _POWER_OF_POWER.search(unit):  # would be worked out, for hours

@@ -28,7 +28,6 @@ import math
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import spline_filter1d
 
 from driftwell.images.gap_pair import NEAR, far_pair, near_pair, pair_table
 from driftwell.kernels import inner_kernel, kernel
@@ -54,6 +53,8 @@ _MARGIN = 24
 @functools.lru_cache(maxsize=4)
 def far_table(blur: float) -> Floats:
     """C of (2) for all spacings, flat; blur : s, in gaps."""
+    from scipy.ndimage import spline_filter1d
+
     x = np.cos(math.pi * (np.arange(MODES) + 0.5) / MODES)
     to_modes = np.cos(np.arange(MODES)[:, None] * np.arccos(x)[None, :]) * 2.0 / MODES
     to_modes[0] *= 0.5

@@ -28,7 +28,20 @@ PAIR_FLAGS = frozenset({"reassoc", "contract", "arcp", "nsz"})
 SUM_FLAGS = frozenset({"reassoc", "contract"})
 """What sums over the charges may do: take them in lanes, in an order fixed by their number."""
 
-ABOVE = frozenset({"assembly", "cli", "estimate.py", "report", "run.py", "study", "timed_run.py"})
+ABOVE = frozenset(
+    {
+        "assembly",
+        "cli",
+        "counted.py",
+        "estimate.py",
+        "hand",
+        "judgement",
+        "report",
+        "run.py",
+        "study",
+        "timed_run.py",
+    }
+)
 """The layers above all that hold compiled code: imports go downward only, so none needs them."""
 
 _MONTH = 30 * 24 * 3600.0

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import os
 import platform
 from collections.abc import Callable
@@ -24,7 +25,7 @@ from driftwell.record.file_image import (
     table_rows,
     text_table,
 )
-from driftwell.record.layout import FORMAT_VERSION, HEADER, dataset
+from driftwell.record.layout import FORMAT_VERSION, HEADER, Kind, dataset
 
 
 def _version_of(package: str) -> Callable[[], str]:
@@ -40,6 +41,8 @@ class Header:
     digest : of the content with settings and files named
     command : the command that makes the same run again
     duration, step : s
+    motion, motion_rate : the fastest motion in the fields that a step must follow, and its rate,
+        rad/s; "" and 0 where the fields have none, and in records of before
     softening : m
     coulomb_method, coulomb_because : the pair sum the run began with, and why
     coulomb_accuracy : rms relative force error asked of it
@@ -79,6 +82,8 @@ class Header:
     processes: tuple[str, ...] = ()
     cell_axis: str = ""
     cell_length: float = 0.0
+    motion: str = ""
+    motion_rate: float = 0.0
     format_version: int = FORMAT_VERSION
     driftwell_version: str = __version__
     python_version: str = field(default_factory=platform.python_version)
@@ -95,6 +100,16 @@ class Header:
         return sha256(self.scenario.encode()).hexdigest()
 
     @property
+    def header_sha256(self) -> str:
+        """Digest of all attributes but itself: texts of attributes have no checksum in the file."""
+        values = [
+            [entry.name, _plain(getattr(self, entry.name), entry.kind)]
+            for entry in HEADER
+            if entry.name != "header_sha256"
+        ]
+        return sha256(json.dumps(values).encode()).hexdigest()
+
+    @property
     def sizes(self) -> dict[str, int]:
         """Lengths that stay the same over the run, by the layout's words."""
         return {
@@ -103,6 +118,13 @@ class Header:
             "clouds": len(self.clouds),
             "processes": len(self.processes),
         }
+
+
+def _plain(value: Any, kind: Kind) -> Any:
+    """A value of a header as it is read back."""
+    if kind == "texts":
+        return [str(each) for each in value]
+    return {"float64": float, "int64": int, "text": str}[kind](value)
 
 
 def trace_name(request: TraceRequest) -> str:
@@ -124,7 +146,7 @@ def put_header(file: Any, header: Header) -> None:
 def header_of(file: Any) -> Header:
     """The header of an open master or segment.
 
-    Raises RecordError where the file is of a newer format or its scenario is damaged.
+    Raises RecordError where the file is of a newer format, or the header is damaged.
     """
     found = int(file.attrs["format_version"])
     if found > FORMAT_VERSION:
@@ -133,7 +155,7 @@ def header_of(file: Any) -> Header:
             f"up to {FORMAT_VERSION}; read it with driftwell {file.attrs['driftwell_version']}."
         )
     values = attributes_of(file, (entry for entry in HEADER if entry.since <= found))
-    digest = values.pop("scenario_sha256")
+    digest, of_all = values.pop("scenario_sha256"), values.pop("header_sha256", None)
     entry = dataset("clouds")
     header = Header(
         clouds=tuple(
@@ -147,5 +169,10 @@ def header_of(file: Any) -> Header:
         raise RecordError(
             f"{file.filename}: damaged; the scenario in it does not have the digest noted beside "
             "it. Restore the file from a copy."
+        )
+    if of_all is not None and header.header_sha256 != of_all:
+        raise RecordError(
+            f"{file.filename}: damaged; what it says of the run does not have the digest noted "
+            "beside it. Restore the file from a copy."
         )
     return header

@@ -14,7 +14,7 @@ import h5py
 import numpy as np
 from numpy.typing import NDArray
 
-FORMAT_VERSION = 3
+FORMAT_VERSION = 4
 
 Kind = Literal["float64", "int64", "text", "texts"]
 
@@ -352,6 +352,7 @@ HEADER = (
     Attribute("title", "text", "", "title of the scenario"),
     Attribute("scenario", "text", "", "the scenario file, as given"),
     Attribute("scenario_sha256", "text", "", "digest of the scenario's text (UTF-8)"),
+    Attribute("header_sha256", "text", "", "digest of all other attributes of this table", 4),
     Attribute("settings", "texts", "", "key=value given beside the file, in order"),
     Attribute(
         "digest",
@@ -365,6 +366,8 @@ HEADER = (
     Attribute("duration", "float64", "s", "how long the run was to last"),
     Attribute("step", "float64", "s", "length of a step"),
     Attribute("scheme", "text", "", "scheme of the steps"),
+    Attribute("motion", "text", "", "fastest motion in the fields that a step must follow", 4),
+    Attribute("motion_rate", "float64", "rad/s", "its rate; 0 where the fields have none", 4),
     Attribute("softening", "float64", "m", "softening length of the Coulomb sum"),
     Attribute("coulomb_method", "text", "", "direct, tree or off: what the run began with"),
     Attribute("coulomb_because", "text", "", "why, in words"),

@@ -37,13 +37,30 @@ SIDE_RATIO, FRONT_RATIO = 1.5, 1.0
 class Way:
     """Where one charge was: times (k,), s, and positions (k, 3), m; `lost` : ended on a wall.
 
-    A row that is not a number stands where it left a periodic cell and came in again.
+    along, jumps : the axis of a periodic cell, -1 without one, and the places (j,) in these before
+        which the charge left it and came in again
     """
 
     charge: int
     time: Floats
     position: Floats
     lost: bool
+    along: int
+    jumps: NDArray[np.int64]
+
+    def course(self, axis: int) -> tuple[Floats, Floats]:
+        """Times and one coordinate, s and m, broken where that jumps."""
+        return self._broken((axis,), self.time, self.position[:, axis])
+
+    def path(self, first: int, second: int) -> tuple[Floats, Floats]:
+        """Two coordinates, m, broken where one jumps."""
+        across, up = self.position[:, first], self.position[:, second]
+        return self._broken((first, second), across, up)
+
+    def _broken(self, axes: Sequence[int], *values: Floats) -> tuple[Floats, Floats]:
+        if self.along in axes:
+            values = tuple(np.insert(each, self.jumps, np.nan) for each in values)
+        return values[0], values[1]
 
 
 def trajectories_picture(scene: Scene) -> Figure | None:
@@ -61,7 +78,6 @@ def trajectories_picture(scene: Scene) -> Figure | None:
     figure = sheet(scene.run, 9.6, 6.9, key)
     halves = figure.add_gridspec(1, 2, width_ratios=[1.35, 1.0])
     places = np.concatenate([way.position for way in ways])
-    places = places[np.isfinite(places).all(axis=1)]
     reach = float(np.ptp(places, axis=0).max())
     times = time_ruler([0.0, scene.run.end_time])
     rows = halves[0].subgridspec(3, 1)
@@ -80,7 +96,10 @@ def trajectories_picture(scene: Scene) -> Figure | None:
 
 def put_courses(axes: Axes, ways: Sequence[Way], axis: int, times: Ruler, shown: Ruler) -> None:
     """Draw a coordinate of each charge in time."""
-    courses = [(times.shown(way.time), shown.shown(way.position[:, axis])) for way in ways]
+    courses = [
+        (times.shown(time), shown.shown(place))
+        for time, place in (way.course(axis) for way in ways)
+    ]
     seen = VISIBLE * (shown.limits[1] - shown.limits[0])
     joined = not any(jagged(np.zeros(up.size), up, FLICKER, seen) for _, up in courses)
     for k, (way, (across, up)) in enumerate(zip(ways, courses, strict=True)):
@@ -96,8 +115,8 @@ def put_paths(axes: Axes, ways: Sequence[Way], plane: tuple[int, int], shown: Fr
     """Draw the way of each charge seen in a plane, a larger dot where it begins."""
     first, second = plane
     paths = [
-        (shown.across.shown(way.position[:, first]), shown.up.shown(way.position[:, second]))
-        for way in ways
+        (shown.across.shown(across), shown.up.shown(up))
+        for across, up in (way.path(first, second) for way in ways)
     ]
     joined = not any(jagged(*path, TURN) for path in paths)
     for k, (way, (across, up)) in enumerate(zip(ways, paths, strict=True)):
@@ -147,14 +166,7 @@ def _way(scene: Scene, charge: int) -> Way | None:
         position = np.concatenate([position, loss["position"][:1]])
     if time.size < 2:
         return None
-    return Way(charge, *_cut(scene, time, position), len(loss) > 0)
-
-
-def _cut(scene: Scene, time: Floats, position: Floats) -> tuple[Floats, Floats]:
-    """A way with a break wherever the charge left the periodic cell and came in again."""
     header = scene.run.header
-    if not header.cell_axis:
-        return time, position
-    along = position[:, AXES.index(header.cell_axis)]
-    jumps = np.flatnonzero(np.abs(np.diff(along)) > 0.5 * header.cell_length) + 1
-    return np.insert(time, jumps, time[jumps]), np.insert(position, jumps, np.nan, axis=0)
+    along = AXES.index(header.cell_axis) if header.cell_axis else -1
+    jumps = np.abs(np.diff(position[:, along])) > 0.5 * header.cell_length
+    return Way(charge, time, position, len(loss) > 0, along, np.flatnonzero(jumps) + 1)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
-from driftwell.constants import ELECTRON_MASS, ELEMENTARY_CHARGE
+from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE
 from driftwell.fields.form import FieldForm
 from driftwell.forms import Form, spelled
 from driftwell.forms.body import Body
@@ -15,6 +15,7 @@ from driftwell.particles.source import Source
 from driftwell.particles.species import bodies
 from driftwell.processes.gas_collisions import GasCollisions
 from driftwell.processes.laser_cooling import LaserCooling
+from driftwell.processes.mobility_drag import MobilityDrag
 from driftwell.scenario.model import Scenario
 
 HIGH_VOLTAGE = 1e3
@@ -23,6 +24,13 @@ X_RAY_ENERGY = 5e3 * ELEMENTARY_CHARGE
 """J."""
 STRONG_MAGNET = 0.5
 """T."""
+ACCELERATED = 1e6
+"""V; energies of one charge up to this are taken to come from a voltage between electrodes."""
+NUCLEAR_ENERGY = 2e6 * ELEMENTARY_CHARGE
+"""J; light ions above may set neutrons free where they stop, and make what they meet radioactive.
+Common practice, no source."""
+LIGHT = 4.5 * ATOMIC_MASS
+"""kg; ions up to helium."""
 
 
 def cautions(scenario: Scenario) -> list[str]:
@@ -36,12 +44,22 @@ def cautions(scenario: Scenario) -> list[str]:
     energy = max((_energy(cloud, known) for cloud in light), default=0.0)
     if light:
         energy = max(energy, voltage * ELEMENTARY_CHARGE)
+    voltage = max([voltage, *(_accelerating(group, known) for group in groups)])
     found = []
     if voltage > HIGH_VOLTAGE:
         found.append(f"Voltages up to {spelled(voltage, 'V')} kill: insulate, interlock, earth.")
     if energy > X_RAY_ENERGY:
         reached = spelled(energy / ELEMENTARY_CHARGE, "eV")
         found.append(f"Electrons of up to {reached} make X-rays where they stop: shield, measure.")
+    fastest = max(
+        (_energy(each, known) for each in groups if _is_light_ion(known[each.species])), default=0.0
+    )
+    if fastest > NUCLEAR_ENERGY:
+        reached = spelled(fastest / ELEMENTARY_CHARGE, "eV")
+        found.append(
+            f"Light ions of up to {reached} set neutrons free and make what they meet radioactive: "
+            "shield, measure, keep away."
+        )
     if magnet > STRONG_MAGNET:
         found.append(
             f"Fields up to {spelled(magnet, 'T', 3)} pull iron through the air and stop pacemakers;"
@@ -52,7 +70,7 @@ def cautions(scenario: Scenario) -> list[str]:
             "Laser beams blind, reflections and beams nobody sees too: enclose them, wear eyewear "
             "for the wavelength."
         )
-    if any(isinstance(process, GasCollisions) for process in scenario.process):
+    if any(isinstance(process, GasCollisions | MobilityDrag) for process in scenario.process):
         found.append(
             "Gas comes from bottles under pressure, suffocates where it collects, and may "
             "burn or be toxic: regulate, ventilate, watch the oxygen."
@@ -67,6 +85,16 @@ def cautions(scenario: Scenario) -> list[str]:
 
 def _is_electron(body: Body) -> bool:
     return abs(body.mass / ELECTRON_MASS - 1.0) < 1e-3
+
+
+def _is_light_ion(body: Body) -> bool:
+    return 0.5 * ATOMIC_MASS < body.mass < LIGHT
+
+
+def _accelerating(group: Cloud | Source, known: Mapping[str, Body]) -> float:
+    """Voltage that would give a cloud or a source its energy, V; 0 beyond :data:`ACCELERATED`."""
+    volts = _energy(group, known) / abs(known[group.species].charge)
+    return float(f"{volts:.3g}") if volts <= ACCELERATED else 0.0
 
 
 def _flux_density(field: FieldForm) -> float:

@@ -26,7 +26,7 @@ from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.kernels.waveform import waveform
 from driftwell.scenario.model import Scenario
 from driftwell.solved.edges import Edges
-from driftwell.solved.solved_field import SolvedField, nearest, solved_field
+from driftwell.solved.solved_field import SolvedField, is_kept, nearest, solved_field
 from driftwell.solved.store import Told
 from driftwell.solved.waves import Course, courses
 
@@ -149,6 +149,13 @@ def acting_field(scenario: Scenario, folder: Path, told: Told | None = None) -> 
         tuple(courses(voltages)),
         body_table(own_bodies(electrodes, scenario.electrode, folder)),
     )
+
+
+def field_is_kept(scenario: Scenario, folder: Path) -> bool:
+    """Whether the electrodes' field need not be solved: it is kept, or there are none."""
+    if not scenario.electrode:
+        return True
+    return is_kept(scenario.electrodes or Electrodes(), scenario.electrode, folder)
 
 
 def _unheard(sentence: str) -> None:

@@ -95,6 +95,12 @@ def solved_field(
     return found
 
 
+def is_kept(electrodes: Electrodes, electrode: Sequence[Electrode], folder: Path) -> bool:
+    """Whether the field was solved before, and is kept."""
+    digest = field_digest(electrodes, electrode, folder)
+    return Store(store_folder(), lambda _: None).keeps(digest)
+
+
 def _solved(
     names: tuple[str, ...], electrodes: Electrodes, bodies: Sequence[Sequence[Solid]]
 ) -> SolvedField:

@@ -64,6 +64,10 @@ class Store:
             os.utime(path)
         return arrays
 
+    def keeps(self, digest: str) -> bool:
+        """Whether there is a file under a digest, damaged or not."""
+        return self._path(digest).is_file()
+
     def keep(self, digest: str, arrays: Mapping[str, NDArray[Any]]) -> None:
         """Keep arrays under a digest; where that fails the user is told, and goes on without."""
         with file_in_memory() as file:

@@ -14,15 +14,20 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.assembly import Assembly
+from driftwell.counted import counted
 from driftwell.errors import DriftwellError
 from driftwell.estimate import Estimate, estimate
 from driftwell.scenario.read import LoadedScenario, read_scenario
 from driftwell.study.cores import Sharing, shared, usable_cores
 from driftwell.study.missing import Needed, load_of, needed_by
+from driftwell.study.points import Case
 from driftwell.study.read import Study
 
 TIMED = 5
 """Most runs that are timed."""
+LOOKED_AT = 100
+"""Most cases that are read where nothing is timed."""
 BESIDES = 0.1
 """s that a run takes besides its steps and records: reading, setting up, answers, files."""
 
@@ -55,12 +60,35 @@ class Forecast:
 
 
 @dataclass(frozen=True, slots=True)
+class Outlook:
+    """What all runs of a sweep are, without timing any.
+
+    cases, runs, refused, sharing : as of :class:`Forecast`, of the cases looked at
+    looked_at : how many cases were looked at
+    charges : of the smallest run and of the largest
+    memory : bytes at the busiest time, of the runs side by side
+    case : number of the case with the largest run (charges times duration); parts : it
+    """
+
+    cases: int
+    looked_at: int
+    runs: int
+    refused: tuple[int, str]
+    sharing: Sharing
+    charges: tuple[int, int]
+    memory: int
+    case: int
+    parts: Assembly
+
+
+@dataclass(frozen=True, slots=True)
 class _Sized:
     """A run's scenario, what it needs, and how large it is: charges times seconds of motion."""
 
     loaded: LoadedScenario
     needed: Needed
     size: float
+    case: int
 
 
 def forecast(
@@ -72,7 +100,7 @@ def forecast(
 
     Raises DriftwellError where one of the runs that are timed cannot be carried out.
     """
-    runs, refused = _runs(study)
+    runs, refused = _runs(study, study.cases)
     runs.sort(key=lambda run: run.size)
     load = load_of([run.needed for run in runs])
     sharing = shared(load, usable_cores(), workers, threads)
@@ -100,12 +128,37 @@ def forecast(
     )
 
 
-def _runs(study: Study) -> tuple[list[_Sized], tuple[int, str]]:
+def outlook(study: Study) -> Outlook:
+    """What a sweep is in numbers; of many cases some are looked at, evenly chosen.
+
+    Raises DriftwellError where the largest of the runs cannot be put together.
+    """
+    number = min(len(study.cases), LOOKED_AT)
+    chosen = np.unique(np.linspace(0, len(study.cases) - 1, number).round().astype(int))
+    runs, refused = _runs(study, [study.cases[k] for k in chosen])
+    sharing = shared(load_of([run.needed for run in runs]), usable_cores())
+    largest = max(runs, key=lambda run: run.size)
+    count, parts = counted(largest.loaded)
+    counts = [run.needed.charges for run in runs]
+    return Outlook(
+        cases=len(study.cases),
+        looked_at=len(chosen),
+        runs=len(runs),
+        refused=refused,
+        sharing=sharing,
+        charges=(min(counts), max(counts)),
+        memory=sharing.workers * max([count.memory, *(run.needed.memory for run in runs)]),
+        case=largest.case,
+        parts=parts,
+    )
+
+
+def _runs(study: Study, cases: Sequence[Case]) -> tuple[list[_Sized], tuple[int, str]]:
     """The runs that differ, and how many cases are no scenario; raises where none is one."""
     found: dict[str, _Sized] = {}
     refused = 0
     first = ""
-    for case in study.cases:
+    for case in cases:
         try:
             loaded = read_scenario(study.scenario_path, case.settings)
         except DriftwellError as fault:
@@ -114,7 +167,7 @@ def _runs(study: Study) -> tuple[list[_Sized], tuple[int, str]]:
         if loaded.digest not in found:
             needed = needed_by(loaded)
             size = needed.charges * loaded.scenario.duration
-            found[loaded.digest] = _Sized(loaded, needed, size)
+            found[loaded.digest] = _Sized(loaded, needed, size, case.number)
     if not found:
         raise DriftwellError(f"No case of the study is a scenario that can be run: {first}")
     return list(found.values()), (refused, first)

@@ -19,8 +19,6 @@ from __future__ import annotations
 import math
 from typing import Literal, Self
 
-from scipy.optimize import brentq
-
 from driftwell.electrodes.shapes.form import Geometry, ShapeForm
 from driftwell.forms import Length, Positive, checked, key, refuse, spelled
 from driftwell.forms.faults import Fault
@@ -75,6 +73,8 @@ class QuadroLogarithmic(ShapeForm):
 
     def surface(self, z: float) -> float:
         """The radius at a height z above the middle plane, m: equation (2)."""
+        from scipy.optimize import brentq
+
         ratio = (self.characteristic_radius / self.radius) ** 2
         height = (z / self.radius) ** 2
 

@@ -1,0 +1,1 @@
+"""What can be worked out by hand of a scenario, beside what a run of it says."""

@@ -1,0 +1,1 @@
+"""Scenarios whose answers are known, and the closed forms that say so."""

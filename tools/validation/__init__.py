@@ -1,0 +1,1 @@
+"""Published values against runs of the command line: cases, how they are run, the page."""

@@ -1,0 +1,1 @@
+"""The cases, one file for each area."""

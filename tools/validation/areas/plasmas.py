@@ -1,0 +1,239 @@
+"""Many charges of one sign: explosion, rotation, relaxation by their encounters."""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+
+import numpy as np
+from scipy.constants import e, epsilon_0
+
+from driftwell.record.reader import Run
+from validation.case import (
+    COMPUTED,
+    Axis,
+    Case,
+    Check,
+    Published,
+    Reader,
+    Reading,
+    computed,
+    halved,
+)
+from validation.wells import box_background
+
+K = 1.0 / (4.0 * math.pi * epsilon_0)
+ION = 6.6359e-26
+OMEGA = 2.0 * math.pi * 100e3
+LENGTH = (K * e**2 / (ION * OMEGA**2)) ** (1.0 / 3.0)
+"""Wigner-Seitz radius of the uniform plasma whose background is a well of 100 kHz, m."""
+
+EXPLOSION = (
+    "Gauss's law; A. E. Kaplan, B. Y. Dubetsky, P. L. Shkolnikov, Phys. Rev. Lett. 91 (2003) 143401"
+)
+BRILLOUIN = (
+    "L. Brillouin, Phys. Rev. 67 (1945) 260; D. H. E. Dubin, T. M. O'Neil, "
+    "Rev. Mod. Phys. 71 (1999) 87"
+)
+ISOTROPISATION = (
+    "NRL Plasma Formulary, temperature isotropisation near equal temperatures (from memory), with "
+    "the Coulomb logarithm 3.08 of screened classical scattering by quadrature: R. "
+    "L. Liboff, Phys. "
+    "Fluids 2 (1959) 40"
+)
+EXCHANGE = (
+    "L. Spitzer, Physics of Fully Ionized Gases (1962) sec. 5.3, and NRL Plasma Formulary, thermal "
+    "equilibration (both from memory), with the Coulomb logarithm 2.60 of screened classical "
+    "scattering by quadrature: R. L. Liboff, Phys. Fluids 2 (1959) 40"
+)
+HOLTSMARK = (
+    "J. Holtsmark, Ann. Phys. 58 (1919) 577; S. Chandrasekhar, Rev. Mod. Phys. 15 "
+    "(1943) 1, sec. IV; "
+    "integrated with mpmath"
+)
+DENSITY = 3.0 / (4.0 * math.pi)
+GAMMA = 0.1
+LOG1, LOG2 = 2.596480276530832, 3.081127409079884
+
+# rates in units of the well's angular frequency (n = 3/(4 pi), k T = 1/Gamma)
+_isotropisation = 1.6 * math.sqrt(math.pi) * DENSITY * LOG2 * GAMMA**1.5
+_hot, _cold = 1.35 / GAMMA, 0.65 / GAMMA
+_exchange = (
+    8.0 / 3.0 * math.sqrt(2.0 * math.pi) * DENSITY * LOG1 / (2.0 * (_cold + _hot / 2.0) ** 1.5)
+)
+
+_top = K * 1e6 * e / 1e-3
+
+
+ROTOR_MASS = 9.012 * 1.66053906892e-27
+_cyclotron = e * 3.0 / ROTOR_MASS
+_axial = 2.0 * math.pi * 704e3
+_plasma2 = 3.0 * _axial**2
+_rotor = 0.5 * (_cyclotron - math.sqrt(_cyclotron**2 - 2.0 * _plasma2)) / (2.0 * math.pi)
+"""Turns (Hz) at which a cold ball is at rest in its own frame: omega_z^2 = omega_p^2/3."""
+_rotor_size = (400.0 * K * e**2 / (ROTOR_MASS * _axial**2)) ** (1.0 / 3.0) / math.sqrt(5.0)
+
+
+def _decay(difference: np.ndarray, time: np.ndarray) -> float:
+    """Rate of an exponential decay, by a straight line through the logarithm, in OMEGA."""
+    return float(-np.polyfit(time * OMEGA, np.log(difference), 1)[0])
+
+
+def _anisotropy(run: Run) -> Reading:
+    moments = run.moments("plasma")
+    square = moments.covariance[:, (3, 4, 5), (3, 4, 5)]
+    return Reading(_decay(square[:, 2] - 0.5 * (square[:, 0] + square[:, 1]), moments.time))
+
+
+def _difference(run: Run) -> Reading:
+    light, heavy = run.moments("light"), run.moments("heavy")
+    energies = [
+        mass * moments.covariance[:, (3, 4, 5), (3, 4, 5)].sum(axis=1)
+        for mass, moments in ((1.0, light), (2.0, heavy))
+    ]
+    return Reading(_decay(energies[0] - energies[1], light.time))
+
+
+def _background(folder: Path) -> None:
+    side = (1000.0 / DENSITY) ** (1.0 / 3.0) * LENGTH
+    box_background(folder / "background.csv", side, 1000)
+
+
+def _fields(run: Run) -> np.ndarray:
+    """|E|/E0 at the charges in the middle: from the velocities they get in one short step."""
+    end = run.snapshot(run.snapshots[-1])
+    start = run.snapshot(0.0)
+    inside = np.abs(start.position).max(axis=1) < 0.25e-3
+    field = np.sqrt((end.velocity**2).sum(axis=1))[inside] * ION / (e * run.end_time)
+    n = 16000.0 / 1e-9
+    return np.asarray(field / (2.603109016986679 * K * e * n ** (2.0 / 3.0)))
+
+
+def _quantile(part: float) -> Reader:
+    def read(run: Run) -> Reading:
+        values = np.sort(_fields(run))
+        low, high = (
+            float(np.quantile(values, part + s * math.sqrt(part * (1 - part) / values.size)))
+            for s in (-1, 1)
+        )
+        return Reading(float(np.quantile(values, part)), 0.5 * (high - low))
+
+    return read
+
+
+def _growth(run: Run) -> Reading:
+    covariance = run.moments("ball").covariance
+    sizes = np.sqrt(np.trace(covariance[:, :3, :3], axis1=1, axis2=2))
+    return Reading(float(sizes[-1] / sizes[0]))
+
+
+CASES: tuple[Case, ...] = (
+    Case(
+        "exploding-ball",
+        "plasmas",
+        "A uniform ball of a million ions, let go at rest: it stays uniform and "
+        "doubles in 1.37711 us.",
+        (
+            Check(
+                "rms size then, of that at the start",
+                "1",
+                computed(2.0, EXPLOSION),
+                _growth,
+            ),
+            Check(
+                "mean energy then",
+                "eV",
+                computed(0.3 * _top, EXPLOSION),
+                "energy",
+            ),
+        ),
+        (
+            halved("20 ns"),
+            Axis("weight", ("cloud.ball.count=1000", "cloud.ball.weight=1000")),
+            Axis("softening", ("coulomb.softening=40 um",)),
+        ),
+        remark="2000 charges stand for a million. A ball of few charges keeps each "
+        "off its neighbours, "
+        "which takes energy from the push; the change on halving their number is the error.",
+    ),
+    Case(
+        "random-fields",
+        "plasmas",
+        "The field at charges of random sign, spread at random: its median and quartile.",
+        (
+            Check("median", "E0", computed(2.147792637089312, HOLTSMARK, 1e-10), _quantile(0.5)),
+            Check(
+                "quartile", "E0", computed(1.4371041024201916, HOLTSMARK, 1e-10), _quantile(0.25)
+            ),
+        ),
+        (Axis("step", ("duration=0.2 ns", "stepping.step=0.2 ns")),),
+        seeds=3,
+        remark="The law is for an endless gas. Half of a cube's side is left to the "
+        "sides of the charges "
+        "asked; what is missing beyond lowers the field by about 1 %.",
+    ),
+    Case(
+        "rotating-ball",
+        "plasmas",
+        "A cold ball of 400 ions in a Penning trap, set turning at the frequency "
+        "that holds it: it keeps "
+        "size and turn.",
+        (
+            Check(
+                "rms size along the axis",
+                "um",
+                Published(1e6 * _rotor_size, 0.01 * 1e6 * _rotor_size, BRILLOUIN, COMPUTED),
+                "size",
+                1e6,
+            ),
+            Check(
+                "turns",
+                "kHz",
+                Published(-1e-3 * _rotor, 0.0005e-3 * _rotor, BRILLOUIN, COMPUTED),
+                "turns",
+                1e-3,
+            ),
+        ),
+        (halved("4 ns"),),
+        remark="The formula is that of a smooth fluid; 400 ions in shells are "
+        "smaller or larger by about "
+        "a hundredth, which is in the published error of the size.",
+    ),
+    Case(
+        "isotropisation",
+        "plasmas",
+        "A uniform plasma of Gamma = 0.1, hotter along z than across: how fast that evens out.",
+        (
+            Check(
+                "rate",
+                "omega",
+                Published(_isotropisation, 0.4 / LOG2 * _isotropisation, ISOTROPISATION, COMPUTED),
+                _anisotropy,
+            ),
+        ),
+        (Axis("step", ("stepping.step=12.732395447351628 ns",)),),
+        seeds=6,
+        files=_background,
+        remark="The Coulomb logarithm is good to 0.4, which is in the published "
+        "error; omega is the plasma "
+        "frequency over the root of 3.",
+    ),
+    Case(
+        "equilibration",
+        "plasmas",
+        "A uniform plasma of two kinds of ions, one twice as heavy and colder: how "
+        "fast they exchange heat.",
+        (
+            Check(
+                "rate",
+                "omega",
+                Published(_exchange, 0.4 / LOG1 * _exchange, EXCHANGE, COMPUTED),
+                _difference,
+            ),
+        ),
+        (Axis("step", ("stepping.step=12.732395447351628 ns",)),),
+        seeds=6,
+        files=_background,
+        remark="The Coulomb logarithm is good to 0.4, which is in the published error.",
+    ),
+)
