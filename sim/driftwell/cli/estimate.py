@@ -105,6 +105,12 @@ def _of_study(file: str, settings: Sequence[str], seconds: float | None) -> int:
     study = read_study(file, settings)
     tell(study.title)
     cases = counted_in_words(len(study.cases), "case")
+    if study.limit is not None:
+        tell(
+            f"A search begins with these and goes on from what they say, by "
+            f"{study.limit.form.at_once} or more at a time, with at most "
+            f"{study.limit.form.most_runs} in all; told is what the first ones cost."
+        )
     if seconds is None:
         tell(f"{cases}; nothing is timed, --measure times some of them")
         seen = outlook(study)

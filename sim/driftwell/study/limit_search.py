@@ -33,6 +33,8 @@ _MOST_REPLICAS = 8
 _COMPARED = 4
 """Runs beyond the first of each place that must be there before the answers' own errors are
 believed, where the resolution hangs on them."""
+_DOUBT = 4.0
+"""Factor by which these errors are doubted."""
 _MOST_FAILED = 3
 _SAME = 0.05
 """Places closer than this part of the interval are one, where noise is what matters."""
@@ -201,10 +203,10 @@ class Search:
     def _noisy(self, known: Known, single: float, freedom: int) -> list[Place]:
         """Answers with errors: the crossing's probability decides where to look."""
         deviations = known.deviations
-        surely = np.flatnonzero(np.abs(deviations) >= _SURELY)
-        changes = np.flatnonzero(np.diff(np.sign(deviations[surely])) != 0)
-        if changes.size > 1:
-            ends = [(known.at[surely[k]], known.at[surely[k + 1]]) for k in changes]
+        ends = _changes(known, 1.0)
+        if len(ends) > 1:
+            if freedom < _COMPARED and len(_changes(known, _DOUBT)) < 2:
+                return self._again(self._nearest(2), 2)
             low, high = float(ends[0][0]), float(ends[-1][1])
             if self._narrow(low, high):
                 self.verdict = Verdict(
@@ -225,17 +227,23 @@ class Search:
         best = self.crossing.quantile(0.5)
         if not self._narrow(low, high):
             return self._closer(self.crossing, single)
-        if freedom < _COMPARED and not self._narrow(*self._doubted(known, rising)):
-            return self._again(self._nearest(2), 2)
+        if freedom < _COMPARED:
+            low, high = self._doubted(known, rising)
+            if not self._narrow(low, high):
+                return self._again(self._nearest(2), 2)
+            self._note(low, high)
         self.verdict = Verdict(
             FOUND, self._values(low, high), self.asked.value(best), self._rising(rising)
         )
         return []
 
     def _doubted(self, known: Known, rising: bool) -> tuple[float, float]:
-        """The interval if the answers' own errors were too small by a factor of two."""
-        doubled = Known(known.at, known.value, 2.0 * known.error)
-        return crossing(doubled, rising).interval(self.asked.form.confidence)
+        """The interval if the answers' own errors were far too small, as no seeds have shown yet.
+
+        Where it is as narrow as asked all the same it is told instead, and costs no run.
+        """
+        larger = Known(known.at, known.value, _DOUBT * known.error)
+        return crossing(larger, rising).interval(self.asked.form.confidence)
 
     def _unclear(self, known: Known) -> list[Place]:
         """All on one side as far as can be told: more seeds where it is not clear."""
@@ -254,7 +262,11 @@ class Search:
         ]
 
     def _closer(self, found: Crossing, single: float) -> list[Place]:
-        """Places within the interval, more seeds each where the noise of one hides the side."""
+        """Places within the interval, more seeds each where the noise of one hides the side.
+
+        Every other round goes by the interval's length, not by where the crossing is likely: an
+        interval may be wide by a little doubt far away.
+        """
         form = self.asked.form
         low, high = found.interval(form.confidence)
         spread = found.spread_at(found.quantile(0.5))
@@ -273,9 +285,10 @@ class Search:
             parts = [0.05 + 0.9 * (k + shift) / count for k in range(count)]
         else:
             parts = [(k + 1) / (count + 1) for k in range(count)]
+        by_length = hidden and self._round % 2 == 0
         places = []
         for part in parts:
-            share = found.quantile(part)
+            share = low + part * (high - low) if by_length else found.quantile(part)
             if hidden:
                 beside = min(self.readings, key=lambda at: abs(at - share))
                 if abs(beside - share) < _SAME * (high - low):
@@ -333,6 +346,16 @@ class Search:
         exact = self.pooled is not None and self.pooled.exact
         needed = self.runs + math.ceil(math.log2(ratio)) if exact else self.runs * ratio**2
         return Verdict(NOT_REACHED, (low, high), middle, rising, exact, needed=math.ceil(needed))
+
+
+def _changes(known: Known, doubt: float) -> list[tuple[float, float]]:
+    """Neighbours that surely lie on different sides, of those that surely lie on one.
+
+    doubt : factor by which errors may be larger than they are said to be
+    """
+    surely = np.flatnonzero(np.abs(known.deviations) >= doubt * _SURELY)
+    at, side = known.at[surely], np.sign(known.value[surely])
+    return [(float(at[k]), float(at[k + 1])) for k in np.flatnonzero(np.diff(side) != 0.0)]
 
 
 def _van_der_corput(number: int) -> float:

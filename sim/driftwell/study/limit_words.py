@@ -65,7 +65,10 @@ def progress_told(search: Search, wanted: int) -> str:
 
 
 def value_told(asked: Asked, value: float, digits: int = 6) -> str:
-    """A value of the key with its unit."""
+    """A value of the key in the unit of the study's range, else with the unit's usual prefix."""
+    whole = asked.range
+    if whole.unit and whole.unit != asked.unit:
+        return f"{(value - float(whole.offset)) / float(whole.factor):.{digits}g} {whole.unit}"
     if asked.unit in PLAIN_UNITS:
         return f"{value:.{digits}g}"
     return spelled(value, asked.unit, digits)
@@ -148,11 +151,11 @@ def _interval(search: Search, verdict: Verdict, interval: tuple[float, float]) -
     )
     if verdict.word == FOUND:
         return [
-            f"limit: {best}, between {told}: {surety}",
+            f"limit: {best}, interval {told}: {surety}",
             f"{answer} {way} {threshold} there as {asked.form.setting} grows.",
         ]
     return [
-        f"not reached: {best}, between {told}: {surety}; {search.runs} runs were too few for "
+        f"not reached: {best}, interval {told}: {surety}; {search.runs} runs were too few for "
         f"{resolution_told(asked)}",
         f"About {verdict.needed} runs would do: allow them with `most_runs`; or let each run say "
         "more (more charges, a longer average), or ask for less with `resolution`.",
