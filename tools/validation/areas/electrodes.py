@@ -33,6 +33,11 @@ def _between_tubes(u: float) -> float:
     return 1.0 - 2.0 * float(np.sum(np.exp(-zeros * u) / (zeros * j1(zeros))))
 
 
+def _from_middle(u: float) -> float:
+    """The same on either side of the gap: below 0 before it."""
+    return math.copysign(_between_tubes(abs(u)), u)
+
+
 def _in_tube(ratio: float) -> float:
     """Potential that a charge at so many radii from the axis of an earthed tube induces, k q/a."""
 
@@ -89,8 +94,8 @@ CASES: tuple[Case, ...] = (
             for z in (-5, 5, 10)
         ),
         remark="The formula is for a gap of no width. Here it is 0.02 mm, 2e-3 "
-        "radii; its ends are 40 mm "
-        "away.",
+        "radii; the tubes are 100 mm "
+        "long.",
         converged=True,
     ),
     Case(
