@@ -255,7 +255,7 @@ CASES: tuple[Case, ...] = (
         "A warm cloud of 60 ions in a harmonic well, let go off its middle: it "
         "swings as one ion does.",
         (Check("frequency", "kHz", computed(100.0, KOHN), "swing", 1e-3),),
-        (halved("40 ns"),),
+        (halved("20 ns"),),
         files=_isotropic,
     ),
     Case(
