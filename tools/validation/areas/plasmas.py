@@ -66,11 +66,7 @@ _top = K * 1e6 * e / 1e-3
 
 
 ROTOR_MASS = 9.012 * 1.66053906892e-27
-_cyclotron = e * 3.0 / ROTOR_MASS
 _axial = 2.0 * math.pi * 704e3
-_plasma2 = 3.0 * _axial**2
-_rotor = 0.5 * (_cyclotron - math.sqrt(_cyclotron**2 - 2.0 * _plasma2)) / (2.0 * math.pi)
-"""Turns (Hz) at which a cold ball is at rest in its own frame: omega_z^2 = omega_p^2/3."""
 _rotor_size = (400.0 * K * e**2 / (ROTOR_MASS * _axial**2)) ** (1.0 / 3.0) / math.sqrt(5.0)
 
 
