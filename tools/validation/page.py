@@ -17,9 +17,9 @@ INTRODUCTION = """\
 
 Published values, and what driftwell says to them. This page and its pictures are written by
 `python tools/validate.py`, which carries every case out as a user would, with
-`driftwell run`, `sweep` and `converge` on the scenarios in `tools/validation/cases/`, and reads the
-folders that these leave; nothing on it is written by hand. The same command with `--only CASE`
-does one case anew.
+`driftwell run`, `sweep` and `converge` on the scenarios beside `tools/validation/table.py`, and
+reads the folders that these leave; nothing on it is written by hand. The same command with
+`--only CASE` does one case anew.
 
 - *published*: with the error its digits and its own derivation leave. How it is known: *computed*
   from the formula of the source, apart from driftwell; *read* in the source; or *from memory*.
