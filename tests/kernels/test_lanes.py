@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from driftwell.kernels import kernel
 from driftwell.kernels.lanes import (
     ROUGH_SCALE,
+    below_zero,
     fused,
     inverse_cube,
     inverse_root,
@@ -25,6 +26,7 @@ from driftwell.kernels.lanes import (
     load,
     load_one,
     load_some,
+    lowest_bit,
     most,
     picked_above,
     positive,
@@ -386,3 +388,23 @@ def test_cubes_out_of_range_are_not_finite_or_vanish(function: Any) -> None:
     assert not np.isfinite(result[:3]).any()
     assert (0.0 == result[6:]).all()
     assert a[3:6] ** -1.5 == pytest.approx(result[3:6], rel=1e-7, abs=1e-320)
+
+
+@kernel
+def _lanes_below_zero(a: Any) -> int:
+    return below_zero(load(a, 0))
+
+
+@kernel
+def _lowest(bits: int) -> int:
+    return lowest_bit(bits)
+
+
+def test_lanes_below_zero_are_bits_and_what_is_no_number_is_none_of_them() -> None:
+    values = np.array([-1.0, 0.0, -0.0, 2.0, np.nan, -np.inf, -5e-324, np.inf])
+    assert 0b01100001 == _lanes_below_zero(values)
+    assert 0b10000000 == _lanes_below_zero(np.append(np.ones(7), -1.0))
+
+
+def test_the_lowest_bit_is_found() -> None:
+    assert [0, 1, 2, 31, 40, 64] == [_lowest(bits) for bits in (7, 6, 12, 1 << 31, 3 << 40, 0)]

@@ -21,8 +21,8 @@ collision = {model}
 """
 DIPOLE = '{ kind = "induced-dipole", polarisability = "0.205 angstrom^3" }'
 SPHERES = '{ kind = "hard-sphere", cross_section = "1e-18 m^2" }'
-SIZES = ((8, True, 400_000), (64, True, 40_000), (500, True, 1500), (2000, False, 8000))
-"""Ions, whether they feel each other, steps."""
+SIZES = ((8, True, 4_000_000), (64, True, 200_000), (500, True, 3000), (2000, False, 80_000))
+"""Ions, whether they feel each other, steps: enough for start and record not to count."""
 
 
 def gas(library: ctypes.CDLL, repeats: int) -> dict[str, Any]:

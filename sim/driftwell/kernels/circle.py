@@ -27,14 +27,10 @@ def circle(uniform: float) -> tuple[float, float]:
         _S0 + q * (_S1 + q * (_S2 + q * (_S3 + q * (_S4 + q * (_S5 + q * (_S6 + q * _S7))))))
     )
     cosine = _C0 + q * (_C1 + q * (_C2 + q * (_C3 + q * _even(q))))
-    turns = int(quarter) & 3
-    if turns == 1:
-        return -sine, cosine
-    if turns == 2:
-        return -cosine, -sine
-    if turns == 3:
-        return sine, -cosine
-    return cosine, sine
+    turns = int(quarter)
+    # free of branches, which would be guessed wrong three times in four
+    across, up = (sine, cosine) if turns & 1 else (cosine, sine)
+    return across * (1.0 - ((turns + 1) & 2)), up * (1.0 - (turns & 2))
 
 
 @inner_kernel

@@ -49,6 +49,7 @@ __all__ = [
     "ROUGH_SCALE",
     "WIDTH",
     "LanesType",
+    "below_zero",
     "call_llvm",
     "fused",
     "has_wide_vectors",
@@ -60,6 +61,7 @@ __all__ = [
     "load",
     "load_one",
     "load_some",
+    "lowest_bit",
     "most",
     "picked_above",
     "positive",
@@ -297,6 +299,27 @@ def least(typing: Any, a: Any) -> Any:
         return halved(builder, args[0], lambda low, high: _picked(builder, "<", low, high))
 
     return types.float64(LANES), emitted
+
+
+@emitted_code
+def below_zero(typing: Any, a: Any) -> Any:
+    """Which lanes are below 0, as bits of a whole number, that of lane 0 the lowest."""
+
+    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        below = builder.fcmp_ordered("<", args[0], repeated(0.0))
+        return builder.zext(builder.bitcast(below, ir.IntType(WIDTH)), ir.IntType(64))
+
+    return types.int64(LANES), emitted
+
+
+@emitted_code
+def lowest_bit(typing: Any, bits: Any) -> Any:
+    """The place of the lowest bit that is set; 64 where none is."""
+
+    def emitted(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        return builder.cttz(args[0], ir.Constant(ir.IntType(1), 0))
+
+    return types.int64(types.int64), emitted
 
 
 @emitted_code

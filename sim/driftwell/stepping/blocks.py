@@ -17,6 +17,8 @@ MANY = 16384
 """From this many charges on, passes go block by block."""
 BLOCK = 2048
 """Charges of one block: all that a step keeps of them, 500 kB, stays in a core's own cache."""
+LEAP = 32
+"""Whole steps that a part of a block may take before the next part does, at most."""
 
 POWER = 0
 """W, of the drives."""

@@ -3,8 +3,9 @@
 A step is the palindrome of kicks and drifts of the scheme (schemes.py), closed before walls and
 detectors look at it. In the scheme midpoint-rotation all forces are taken in the middle
 (midpoint_passes.py), and again at the end only where somebody asks: at marks, and for the account
-of charges that are lost. Where the Coulomb kick is taken every m-th step only (impulse multiple
-time stepping), m steps of the fields alone stand between two half kicks of length m h / 2.
+of charges that are lost; where nothing else looks at the charges, several steps are one call.
+Where the Coulomb kick is taken every m-th step only (impulse multiple time stepping), m steps of
+the fields alone stand between two half kicks of length m h / 2.
 
 A call returns at the asked mark, when its budget of steps is used up, when the event buffer could
 overflow, when charges are due that have no place yet, or with a failing status. Where it returns
@@ -48,6 +49,7 @@ from driftwell.stepping.drift import jump_magnets
 from driftwell.stepping.events import LOST, UNTOUCHED, meet_surfaces
 from driftwell.stepping.forces import coulomb_forces, enter_images, magnetised
 from driftwell.stepping.frames import enter_frames, falling_in_frame
+from driftwell.stepping.leaps import leap, may_leap
 from driftwell.stepping.losses import take_out
 from driftwell.stepping.midpoint_passes import from_middle, to_middle
 from driftwell.stepping.motion import (
@@ -128,6 +130,7 @@ def burst(
     together = (plan.coulomb != 0 or plan.images != 0) and every == 1
     accounted = plan.images != 0 or plan.cell_axis >= 0
     free = work.events.shape[0] // 2
+    leaping = may_leap(plan, fields, surfaces, bodies, births, work)
     if cursor[CURSOR_STEPS] == 0 and budget > 0 and until > 0:
         # a step far too long may throw charges apart before they are looked at
         status = _look(plan, charges, every * (time[1] - time[0]) / steps[0], True, work)
@@ -152,7 +155,26 @@ def burst(
             asked = not midway
             if midway and cursor[CURSOR_STEP] + 1 == steps[j]:
                 asked = flags[j + 1] != TRACE
-            for k in range(stages + 3):
+            taken = 0
+            jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
+            if leaping and cursor[CURSOR_FRESH] != 0 and not jump:
+                # up to the next look, the last step of the interval, or a pause
+                most = min(budget, steps[j] - 1 - cursor[CURSOR_STEP])
+                most = min(most, LOOK_EVERY - (cursor[CURSOR_STEPS] & (LOOK_EVERY - 1)))
+                taken = leap(
+                    passes,
+                    plan,
+                    fields,
+                    surfaces,
+                    bodies,
+                    charges,
+                    time[j],
+                    inside,
+                    h,
+                    most,
+                    work,
+                )
+            for k in range(stages + 3 if taken == 0 else 0):
                 jump = False
                 t = start
                 if k == 0:
@@ -324,9 +346,10 @@ def burst(
                 work.pending[0] += length
             if cursor[CURSOR_NEWBORN] > 0:
                 close_births(charges, births, work)
-            cursor[CURSOR_STEP] += 1
-            cursor[CURSOR_STEPS] += 1
-            budget -= 1
+            taken = max(taken, 1)
+            cursor[CURSOR_STEP] += taken
+            cursor[CURSOR_STEPS] += taken
+            budget -= taken
             status = _look(plan, charges, every * h, cursor[CURSOR_STEP] == steps[j], work)
             if plan.processes != 0 and acting.flags[0, CROWDED] > 0:
                 cursor[CURSOR_AT_FAULT] = acting.flags[0, CROWDED] - 1

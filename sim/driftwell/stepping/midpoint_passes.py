@@ -3,7 +3,8 @@
 The charges are cut into blocks, few ones too, so that the time loop needs none of this code in it:
 it is handed a function as a pointer, one that shares the blocks among all threads where charges are
 many and one that does not where they are few. Where charges do not push each other, a block does
-the whole of a step while its charges are in a core's own cache.
+the whole of a step while its charges are in a core's own cache, and a stretch of it several steps
+where nobody looks at charges in between (leaps.py).
 """
 
 from __future__ import annotations
@@ -54,7 +55,14 @@ from driftwell.stepping.midpoint_rotation import (
     keep_start,
     turn_and_drift,
 )
-from driftwell.stepping.motion import CURSOR_INDUCED, Charges, Fields, Plan, Work
+from driftwell.stepping.motion import (
+    CURSOR_INDUCED,
+    CURSOR_STEP,
+    Charges,
+    Fields,
+    Plan,
+    Work,
+)
 from driftwell.stepping.passes import (
     CROSS,
     PUSH_APART,
@@ -63,9 +71,11 @@ from driftwell.stepping.passes import (
     crossed,
     over_blocks,
 )
+from driftwell.stepping.plain_fields import are_plain, take_plain_fields
 from driftwell.walls.table import SurfaceTable
 
-_TO_MIDDLE, _THROUGH, _WHOLE = 16, 17, 18
+_TO_MIDDLE, _THROUGH, WHOLE = 16, 17, 18
+"""Passes; from WHOLE on that many whole steps more than one."""
 STRETCH = 512
 """Charges that a step's parts take in turn: what it keeps of them stays in the nearest cache."""
 
@@ -109,7 +119,7 @@ def to_middle(
 
     keep : note the state at the beginning, for the path through the step
     """
-    what = _TO_MIDDLE if together else _WHOLE
+    what = _TO_MIDDLE if together else WHOLE
     changing = magnetised(fields) and magnets_change(fields, start + 0.5 * h, inside)
     work.cursor[CURSOR_INDUCED] = 1 if changing else 0
     if passes is not None:
@@ -137,13 +147,12 @@ def from_middle(
         over_blocks(
             passes, plan, fields, surfaces, bodies, charges, work, _THROUGH, False, h, start, inside
         )
-    _enter(magnetised(fields), h, work)
+    enter_sums(magnetised(fields), h, work.block_sums, work)
 
 
 @outer_kernel
-def _enter(magnets: bool, h: float, work: Work) -> None:
+def enter_sums(magnets: bool, h: float, sums: np.ndarray, work: Work) -> None:
     """Enter the sums over all blocks."""
-    sums = work.block_sums
     enter_rates(added(sums, POWER), six_added(sums, FORCE), work.rate)
     work.pending[0] = h
     settle(work.rate, work.pending, work.total, work.carry)
@@ -171,8 +180,8 @@ def _block(
     """One block's part of a pass; its sums into its row."""
     start = b * BLOCK
     end = min(start + BLOCK, charges.charge.size)
-    row = work.block_sums[b]
     if what == CROSS:
+        row = work.block_sums[b]
         row[CROSSED] = crossed(surfaces, charges, work, unsigned(start), unsigned(end))
         if bodies.whole.shape[0] > 0:
             row[CROSSED] += near_bodies(
@@ -182,11 +191,32 @@ def _block(
     if what == PUSH_APART:
         kick(charges, work.coulomb, h, unsigned(start), unsigned(end))
         return
-    for k in range(AFTER if what == _THROUGH else 0, SUMS):
-        row[k] = 0.0
+    count = max(what - WHOLE, 0) + 1
+    for k in range(count):
+        for entry in range(AFTER if what == _THROUGH else 0, SUMS):
+            work.leap_sums[k, b, entry] = 0.0
+    plain = are_plain(fields.electric)
     for first in range(start, end, STRETCH):
         last = min(first + STRETCH, end)
-        _stretch(plan, fields, charges, work, what, asked, h, t, inside, first, last, row)
+        for k in range(count):
+            since = t if count == 1 else t + (work.cursor[CURSOR_STEP] + k) * h
+            _stretch(
+                plan,
+                fields,
+                charges,
+                work,
+                min(what, WHOLE),
+                asked,
+                plain,
+                k > 0,
+                k + 1 < count,
+                h,
+                since,
+                inside,
+                first,
+                last,
+                work.leap_sums[k, b],
+            )
 
 
 @inner_kernel
@@ -197,6 +227,9 @@ def _stretch(
     work: Work,
     what: int,
     asked: bool,
+    plain: bool,
+    drifted: bool,
+    on: bool,
     h: float,
     t: float,
     inside: float,
@@ -204,15 +237,22 @@ def _stretch(
     last: int,
     row: np.ndarray,
 ) -> None:
-    """A part of a block; its sums are added to the row."""
+    """A part of a block; its sums are added to the row.
+
+    plain : all electric fields are, see plain_fields.py
+    drifted : charges are in the middle already; on : move them to that of the next step
+    """
     changing = work.cursor[CURSOR_INDUCED] != 0
     pushed = fields.electric.kind.size > 0 or changing
-    if what in (_TO_MIDDLE, _WHOLE):
+    if what in (_TO_MIDDLE, WHOLE):
         if asked or changing:
             keep_start(charges, work, first, last)
-        half_drift(charges.position, charges.velocity, plan.light2, h, first, last)
+        if not drifted:
+            half_drift(charges.position, charges.velocity, plan.light2, h, first, last)
     middle = t if what == TAKE else t + 0.5 * h
-    if what == TAKE or (pushed and what != _THROUGH):
+    if plain and pushed and not changing and what in (_TO_MIDDLE, WHOLE):
+        add_six(take_plain_fields(fields.electric, charges, first, last, work.external), FORCE, row)
+    elif what == TAKE or (pushed and what != _THROUGH):
         take = asked if what == TAKE else changing
         power, energy, force = external_forces(
             fields, charges, middle, inside, take, work, unsigned(first), unsigned(last)
@@ -220,7 +260,7 @@ def _stretch(
         row[POWER] += power
         row[ENERGY] += energy
         add_six(force, FORCE, row)
-    if what in (_THROUGH, _WHOLE):
+    if what in (_THROUGH, WHOLE):
         acting = EXTERNAL if pushed else 0
         if what == _THROUGH:
             acting |= COULOMB
@@ -239,8 +279,10 @@ def _stretch(
             magnet,
             plan.light2,
             h,
+            on,
             first,
             last,
+            work.old_field,
         )
         add_six(given, AFTER, row)
         if changing:

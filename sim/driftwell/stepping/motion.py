@@ -18,7 +18,7 @@ from driftwell.kernels import inner_kernel
 from driftwell.kernels.cache_lines import room
 from driftwell.particles.state import Particles
 from driftwell.stepping.accounts import ACCOUNTS, RATES
-from driftwell.stepping.blocks import SUMS, blocks
+from driftwell.stepping.blocks import LEAP, SUMS, blocks
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -125,13 +125,16 @@ class Work(NamedTuple):
     frame_rows : (ROWS, n) room for the sum in frames; (ROWS, 0) where there are none
     slowness : (n,) 1/gamma
     old_position, old_velocity, old_field : (3, n) at the beginning of the step, the field being
-        the electric one that the step's kicks begin with, V/m
+        the electric one that the step's kicks begin with, V/m; in the scheme midpoint-rotation
+        room for two numbers of each charge
     clearance : (n,) m, less than the distance to every electrode, see approach.py; empty without
     side : (surfaces, n) int8, -1 or 1; 0 while a charge has not left the surface it began on
     tiles : Coulomb work space
     levels : (4, n) field and potential of the pair sum, V/m and V; (4, 0) where it gives none
     search : int64, see coulomb/unresolved.py; empty where no pair can collapse
     block_sums : (blocks, 24), see blocks.py
+    leap_sums : (steps, blocks, 24), of which `block_sums` is the first: those of several steps
+        taken at once
     rate, pending : see accounts.settle
     energy : (1,) J, potential energy in the fields at the last evaluation
     total, carry : (accounts,)
@@ -161,6 +164,7 @@ class Work(NamedTuple):
     levels: Floats
     search: Ints
     block_sums: Floats
+    leap_sums: Floats
     rate: Floats
     pending: Floats
     energy: Floats
@@ -245,7 +249,7 @@ def work_space(
     collapse : whether opposite charges may fall together
     images : the sum over the images; None where there are none
     bodies : whether electrodes stop charges
-    in_blocks : whether few charges are passed through in blocks too
+    in_blocks : whether few charges are passed through in blocks too, and many steps at once
     bunch : (clouds,) to which bunch each cloud belongs; None where none has a frame
     takers : whether anything but surfaces takes charges
     """
@@ -253,6 +257,7 @@ def work_space(
     coulomb = room((3, n))
     own = np.zeros(0, dtype=np.int64) if bunch is None else bunch
     bunches = bunches_in(own)
+    sums = room((LEAP if in_blocks else 1, blocks(n, in_blocks), SUMS))
     return Work(
         external=room((3, n)),
         coulomb=coulomb,
@@ -275,7 +280,8 @@ def work_space(
         tiles=tiles,
         levels=room((4, n if levels else 0)),
         search=search_room(n) if collapse else np.zeros(0, dtype=np.int64),
-        block_sums=room((blocks(n, in_blocks), SUMS)),
+        block_sums=sums[0],
+        leap_sums=sums,
         rate=np.zeros(RATES),
         pending=np.zeros(1),
         energy=np.zeros(1),

@@ -14,6 +14,7 @@ from driftwell.kernels import inner_kernel
 from driftwell.kernels.lanes import (
     WIDTH,
     LanesType,
+    below_zero,
     lanes,
     larger,
     least,
@@ -62,7 +63,7 @@ def any_due(
     n, found = charges.charge.size, False
     for c in range(first, last):
         start, end = c * CHUNK, min(c * CHUNK + CHUNK, n)
-        soonest = lanes(0.0)
+        due = 0
         for p in range(acting.kind.size):
             if acting.kind[p] == LINEAR or not (acts(acting, p, inside) or acting.used[p] > 0.0):
                 continue
@@ -78,10 +79,9 @@ def any_due(
                     )
                 left = load_some(depth, i, count) - span * most
                 store_some(depth, i, count, left)
-                soonest = smaller(soonest, left)
-        due = least(soonest) < 0.0
-        acting.due[c] = 1 if due else 0
-        found |= due
+                due |= below_zero(left) << (i - start)
+        acting.due[c] = due
+        found |= due != 0
     if lazy:
         for p in range(acting.kind.size):
             acting.used[p] = acting.soonest[p] = 0.0
@@ -93,12 +93,15 @@ def look_ahead(charges: Charges, acting: ProcessWork) -> None:
     """Find when the next clock of constant rates runs out; always, where there are many charges."""
     n = charges.alive.size
     for p in range(acting.kind.size):
-        soonest = math.inf if n <= LAZY else 0.0
+        soonest = lanes(math.inf if n <= LAZY else 0.0)
         if acting.sloped[p] == 0 and n <= LAZY:
-            for i in range(n):
-                if acting.rate[p, i] > 0.0:
-                    soonest = min(soonest, acting.depth[p, i] / acting.rate[p, i])
-        acting.soonest[p] = soonest
+            depth, rate = acting.depth[p], acting.rate[p]
+            for i in range(0, n, WIDTH):
+                count = min(WIDTH, n - i)
+                # a rate of 0 gives infinity, and what is no number is never the smaller
+                last = load_some(depth, i, count) / load_some(rate, i, count)
+                soonest = smaller(last, soonest)
+        acting.soonest[p] = least(soonest)
 
 
 @inner_kernel

@@ -23,7 +23,7 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 CHUNK = 32
-"""Charges among which those whose clocks have run out are counted together."""
+"""Charges among which those whose clocks have run out are noted together, as bits of a number."""
 LAZY = 256
 """Up to so many charges clocks of constant rates are looked at only when one may run out."""
 HANDED = 90
@@ -48,7 +48,7 @@ class ProcessWork(NamedTuple):
     exchanged, carry : (p, 8), the accounts by process
     used : (p,) s, time in which a process' rates, which do not change, have used up clocks and
         have not been entered yet; soonest : (p,) s, until when none runs out
-    due : (chunks,) int64, how many clocks of so many charges have run out
+    due : (chunks,) int64, of so many charges each those whose clocks have run out, as bits
     handed : (k, 4) int64, where all arrays are, see processes.py
     """
 

@@ -19,6 +19,7 @@ from driftwell.fields.table import field_table
 from driftwell.kernels import inner_kernel, kernel, outer_kernel, threaded_kernel
 from driftwell.kernels.cache_lines import room
 from driftwell.kernels.handed import hand, rows_of, tuple_at
+from driftwell.kernels.lanes import lowest_bit
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.particles.state import no_particles
 from driftwell.stepping.accounts import ENERGY_PROCESSES
@@ -127,43 +128,40 @@ def _on_stretch(
         for k in range(EXCHANGED):
             out_sums[p, k] = 0.0
     out_flags[LOST] = out_flags[CROWDED] = 0
-    i = first - 1
-    while i + 1 < last:
-        i += 1
-        if not always and i % CHUNK == 0 and acting.due[i // CHUNK] == 0:
-            i += CHUNK - 1
-            continue
-        if charges.alive[i] != 1:
-            renew(acting, i)
-            continue
-        if not always:
-            due = False
-            for p in range(acting.kind.size):
-                due |= acting.depth[p, i] < 0.0
-            if not due:
+    for c in range(first // CHUNK, -(-last // CHUNK)):
+        start = c * CHUNK
+        due = acting.due[c]
+        if always:
+            due = (1 << min(CHUNK, last - start)) - 1
+        while due != 0:
+            i = start + lowest_bit(due)
+            due &= due - 1
+            if charges.alive[i] != 1:
+                renew(acting, i)
                 continue
-            for p in range(acting.kind.size):
-                if acts(acting, p, inside):
-                    acting.depth[p, i] += (
-                        h * acting.rate[p, i]
-                        if acting.sloped[p] == 0
-                        else taken(charges, together, spinning, h, work, acting, p, i)
-                    )
-        follow(
-            plan,
-            fields,
-            charges,
-            work,
-            acting,
-            together,
-            spinning,
-            t,
-            inside,
-            h,
-            i,
-            out_sums,
-            out_flags,
-        )
+            if not always:
+                for p in range(acting.kind.size):
+                    if acts(acting, p, inside):
+                        acting.depth[p, i] += (
+                            h * acting.rate[p, i]
+                            if acting.sloped[p] == 0
+                            else taken(charges, together, spinning, h, work, acting, p, i)
+                        )
+            follow(
+                plan,
+                fields,
+                charges,
+                work,
+                acting,
+                together,
+                spinning,
+                t,
+                inside,
+                h,
+                i,
+                out_sums,
+                out_flags,
+            )
 
 
 @inner_kernel
