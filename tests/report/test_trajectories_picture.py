@@ -56,7 +56,7 @@ def test_ways_in_space_are_dots_where_records_are_far_apart(tmp_path):
 
 
 def test_a_way_out_of_a_cell_and_in_again_is_not_joined(tmp_path):
-    """3 um forward each time, from -5 um on in 10 um: out after 3 and after 6 records."""
+    """3 um forward each time, from -5 um on in 10 um: out after records 3 and 6, counted from 0."""
     records = []
     for k in range(8):
         along = (3e-6 * k) % 10e-6 - 5e-6

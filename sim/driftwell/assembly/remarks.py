@@ -35,11 +35,7 @@ _SAMPLE = 64
 
 def remarks(parts: Assembly) -> Iterator[str]:
     """All that is to be said, a sentence or a few each."""
-    if parts.frame_remark():
-        yield parts.frame_remark()
-    of_images = _of_images(parts)
-    if of_images is not None:
-        yield of_images
+    yield from filter(None, (parts.frame_remark(), _of_images(parts)))
     yield from _of_own_images(parts)
 
 
@@ -80,16 +76,16 @@ def _of_own_images(parts: Assembly) -> Iterator[str]:
     for cloud in parts.clouds:
         own = np.flatnonzero(born.cloud == cloud.index)[:_SAMPLE]
         own = own[form.depth(born.position[:, own]) < softening]
-        if own.size == 0:
-            continue
         place, normal = born.position[:, own], parts.unborn.normal[:, own]
+        if not normal.any():
+            continue
         field = evaluate(
             parts.scenario.field, parts.bodies, place.T, float(born.birth_time[own[0]]), more=packed
         )
         charge = abs(cloud.charge) * cloud.weight
         drawing = float(np.median((field.electric.T * normal).sum(axis=0))) * np.sign(cloud.charge)
         pull = _STEEPEST * COULOMB_CONSTANT * charge / softening**2
-        if pull <= HELD * drawing or not normal.any():
+        if pull <= HELD * drawing:
             continue
         against = (
             f"{pull / drawing:.0%} of the field that draws there"

@@ -158,7 +158,7 @@ def _name_by_closure(function: Callable[..., Any]) -> None:
     """
     held = [cell.cell_contents for cell in function.__closure__ or ()]
     for each in held:
-        if not isinstance(each, bool | int):
+        if not isinstance(each, int):
             raise TypeError(
                 f"{function.__qualname__} closes over {each!r}; a kernel may close over whole"
                 " numbers and truths only, which its name can carry"

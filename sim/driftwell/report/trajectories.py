@@ -37,16 +37,15 @@ SIDE_RATIO, FRONT_RATIO = 1.5, 1.0
 class Way:
     """Where one charge was: times (k,), s, and positions (k, 3), m; `lost` : ended on a wall.
 
-    along, jumps : the axis of a periodic cell, -1 without one, and the places (j,) in these before
-        which the charge left it and came in again
+    cell : axis and length, m, of the periodic cell that it leaves and comes into again; None
+        without one
     """
 
     charge: int
     time: Floats
     position: Floats
     lost: bool
-    along: int
-    jumps: NDArray[np.int64]
+    cell: tuple[int, float] | None = None
 
     def course(self, axis: int) -> tuple[Floats, Floats]:
         """Times and one coordinate, s and m, broken where that jumps."""
@@ -58,8 +57,10 @@ class Way:
         return self._broken((first, second), across, up)
 
     def _broken(self, axes: Sequence[int], *values: Floats) -> tuple[Floats, Floats]:
-        if self.along in axes:
-            values = tuple(np.insert(each, self.jumps, np.nan) for each in values)
+        if self.cell is not None and self.cell[0] in axes:
+            axis, length = self.cell
+            jumps = np.flatnonzero(np.abs(np.diff(self.position[:, axis])) > 0.5 * length) + 1
+            values = tuple(np.insert(each, jumps, np.nan) for each in values)
         return values[0], values[1]
 
 
@@ -167,6 +168,5 @@ def _way(scene: Scene, charge: int) -> Way | None:
     if time.size < 2:
         return None
     header = scene.run.header
-    along = AXES.index(header.cell_axis) if header.cell_axis else -1
-    jumps = np.abs(np.diff(position[:, along])) > 0.5 * header.cell_length
-    return Way(charge, time, position, len(loss) > 0, along, np.flatnonzero(jumps) + 1)
+    cell = (AXES.index(header.cell_axis), header.cell_length) if header.cell_axis else None
+    return Way(charge, time, position, len(loss) > 0, cell)

@@ -156,8 +156,8 @@ def burst(
             if midway and cursor[CURSOR_STEP] + 1 == steps[j]:
                 asked = flags[j + 1] != TRACE
             taken = 0
-            jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
-            if leaping and cursor[CURSOR_FRESH] != 0 and not jump:
+            jumping = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
+            if leaping and cursor[CURSOR_FRESH] != 0 and not jumping:
                 # up to the next look, the last step of the interval, or a pause
                 most = min(budget, steps[j] - 1 - cursor[CURSOR_STEP])
                 most = min(most, LOOK_EVERY - (cursor[CURSOR_STEPS] & (LOOK_EVERY - 1)))
@@ -175,11 +175,9 @@ def burst(
                     work,
                 )
             for k in range(stages + 3 if taken == 0 else 0):
-                jump = False
+                jump = jumping and k == 0
                 t = start
-                if k == 0:
-                    jump = (flags[j] & BREAK) != 0 and cursor[CURSOR_JUMPED] < j
-                elif k <= stages:
+                if 0 < k <= stages:
                     if not midway:
                         before = start + scheme.node[k - 1] * h
                         t = end if k == stages else start + scheme.node[k] * h
@@ -293,7 +291,7 @@ def burst(
                         break
                     if met == LOST and not midway:
                         continue
-                else:
+                elif k == stages + 2:
                     t = end
                     if met & LOST == 0:
                         break

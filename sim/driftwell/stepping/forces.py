@@ -9,11 +9,11 @@ from __future__ import annotations
 import numpy as np
 
 from driftwell.coulomb.direct import SMALL, PairSum, small_field
-from driftwell.fields.table import electric_field, induced_field, magnetic_field
+from driftwell.fields.table import FieldTable, electric_field, induced_field, magnetic_field
 from driftwell.kernels import inner_kernel, inner_sum_kernel, outer_kernel
 from driftwell.kernels.pointers import CompiledFunction
 from driftwell.kernels.sums import add_compensated
-from driftwell.kernels.waveform import waveform
+from driftwell.kernels.waveform import CONSTANT, waveform
 from driftwell.stepping.accounts import (
     ANGULAR_CELL,
     IMPULSE_IMAGES,
@@ -67,6 +67,15 @@ def external_forces(
     if changing:
         _induced(fields, charges, t, inside, work, first, last)
     return power, energy, force_and_torque(charges, out, first, last)
+
+
+@inner_kernel
+def at_rest(table: FieldTable) -> bool:
+    """Whether none of the fields ever changes."""
+    resting = True
+    for f in range(table.kind.size):
+        resting &= table.wave_kind[f] == CONSTANT
+    return resting
 
 
 @inner_kernel

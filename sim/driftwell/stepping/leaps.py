@@ -14,13 +14,11 @@ from __future__ import annotations
 
 import numpy as np
 
-from driftwell.fields.table import FieldTable
 from driftwell.geometry.body_table import BodyTable
 from driftwell.kernels import inner_kernel
-from driftwell.kernels.waveform import CONSTANT
 from driftwell.stepping.births import Births
 from driftwell.stepping.blocks import LEAP
-from driftwell.stepping.forces import magnetised
+from driftwell.stepping.forces import at_rest, magnetised
 from driftwell.stepping.midpoint_passes import WHOLE, enter_sums
 from driftwell.stepping.motion import CURSOR_BIRTH, CURSOR_INDUCED, Charges, Fields, Plan, Work
 from driftwell.stepping.passes import Passes, over_blocks
@@ -48,8 +46,8 @@ def may_leap(
         and bodies.whole.shape[0] == 0
         and work.cursor[CURSOR_BIRTH] >= births.time.size
         and not np.isfinite(births.horizon[0])
-        and _all_constant(fields.uniform)
-        and _all_constant(fields.magnetic)
+        and at_rest(fields.uniform)
+        and at_rest(fields.magnetic)
     )
 
 
@@ -84,11 +82,3 @@ def leap(
         for k in range(count):
             enter_sums(magnetised(fields), h, work.leap_sums[k], work)
     return count
-
-
-@inner_kernel
-def _all_constant(table: FieldTable) -> bool:
-    constant = True
-    for f in range(table.kind.size):
-        constant &= table.wave_kind[f] == CONSTANT
-    return constant

@@ -41,10 +41,10 @@ from driftwell.kernels.lanes import (
     put_some,
     root,
     some,
-    total,
 )
 from driftwell.stepping.accounts import Six
 from driftwell.stepping.motion import Charges, Plan, Work
+from driftwell.stepping.six_lanes import SixLanes, no_six, six_and, six_totals, with_moment
 
 EXTERNAL, COULOMB, SHAPED = 1, 2, 4
 """What acts in the middle beside uniform magnets, as bits: E of fields, of charges, B of places."""
@@ -127,10 +127,9 @@ def turn_and_drift(
             inverses,
             twices,
         )
-    px = py = pz = lanes(0.0)
-    lx = ly = lz = lanes(0.0)
+    given = no_six()
     for i in range(first, whole, 8):
-        fx, fy, fz, tx, ty, tz = _turn_eight(
+        turned = _turn_eight(
             charges,
             external,
             coulomb,
@@ -145,10 +144,9 @@ def turn_and_drift(
             inverses,
             twices,
         )
-        px, py, pz = px + fx, py + fy, pz + fz
-        lx, ly, lz = lx + tx, ly + ty, lz + tz
+        given = six_and(given, turned)
     if whole < last:
-        fx, fy, fz, tx, ty, tz = _turn_eight(
+        turned = _turn_eight(
             charges,
             external,
             coulomb,
@@ -163,9 +161,8 @@ def turn_and_drift(
             inverses,
             twices,
         )
-        px, py, pz = px + fx, py + fy, pz + fz
-        lx, ly, lz = lx + tx, ly + ty, lz + tz
-    return total(px), total(py), total(pz), total(lx), total(ly), total(lz)
+        given = six_and(given, turned)
+    return six_totals(given)
 
 
 @outer_kernel
@@ -283,7 +280,7 @@ def _turn_eight(
     count: int,
     inverses: np.ndarray,
     twices: np.ndarray,
-) -> tuple[LanesType, LanesType, LanesType, LanesType, LanesType, LanesType]:
+) -> SixLanes:
     """Eight charges, or the `count` last; what magnets gave them, and its moments."""
     per_light2, one, minus = lanes(1.0 / light2), lanes(1.0), lanes(-0.0)
     half_step = lanes(0.5 * h)
@@ -319,12 +316,4 @@ def _turn_eight(
     put_some(charges.position[1], i, count, endy)
     put_some(charges.position[2], i, count, endz)
     m = some(charges.mass, i, count)
-    dx, dy, dz = m * dx, m * dy, m * dz
-    return (
-        dx,
-        dy,
-        dz,
-        fused(y, dz, minus - z * dy),
-        fused(z, dx, minus - x * dz),
-        fused(x, dy, minus - y * dx),
-    )
+    return with_moment(x, y, z, m * dx, m * dy, m * dz)

@@ -20,20 +20,20 @@ from driftwell.fields.static_quadrupole import STATIC_QUADRUPOLE
 from driftwell.fields.table import FieldTable
 from driftwell.fields.uniform_electric import UNIFORM_ELECTRIC
 from driftwell.kernels import inner_kernel, outer_kernel
-from driftwell.kernels.lanes import LanesType, fused, lanes, put_some, some, total
-from driftwell.kernels.waveform import CONSTANT
+from driftwell.kernels.lanes import fused, lanes, put_some, some
 from driftwell.stepping.accounts import Six
+from driftwell.stepping.forces import at_rest
 from driftwell.stepping.motion import Charges
+from driftwell.stepping.six_lanes import SixLanes, no_six, six_and, six_totals, with_moment
 
 
 @inner_kernel
 def are_plain(table: FieldTable) -> bool:
     """Whether all electric fields are uniform ones or quadrupoles, and constant in time."""
     for f in range(table.kind.size):
-        kind = table.kind[f]
-        if kind not in (UNIFORM_ELECTRIC, STATIC_QUADRUPOLE) or table.wave_kind[f] != CONSTANT:
+        if table.kind[f] not in (UNIFORM_ELECTRIC, STATIC_QUADRUPOLE):
             return False
-    return True
+    return at_rest(table)
 
 
 @outer_kernel
@@ -44,24 +44,19 @@ def take_plain_fields(
 
     Returns the fields' force and torque on them, N and N m.
     """
-    px = py = pz = lanes(0.0)
-    lx = ly = lz = lanes(0.0)
+    given = no_six()
     whole = first + (last - first) // 8 * 8
     for i in range(first, whole, 8):
-        fx, fy, fz, tx, ty, tz = _eight(table, charges, i, 8, out_field)
-        px, py, pz = px + fx, py + fy, pz + fz
-        lx, ly, lz = lx + tx, ly + ty, lz + tz
+        given = six_and(given, _eight(table, charges, i, 8, out_field))
     if whole < last:
-        fx, fy, fz, tx, ty, tz = _eight(table, charges, whole, last - whole, out_field)
-        px, py, pz = px + fx, py + fy, pz + fz
-        lx, ly, lz = lx + tx, ly + ty, lz + tz
-    return total(px), total(py), total(pz), total(lx), total(ly), total(lz)
+        given = six_and(given, _eight(table, charges, whole, last - whole, out_field))
+    return six_totals(given)
 
 
 @inner_kernel
 def _eight(
     table: FieldTable, charges: Charges, i: int, count: int, out_field: np.ndarray
-) -> tuple[LanesType, LanesType, LanesType, LanesType, LanesType, LanesType]:
+) -> SixLanes:
     """Eight charges, or the `count` last; force and torque on each."""
     x = some(charges.position[0], i, count)
     y = some(charges.position[1], i, count)
@@ -79,13 +74,5 @@ def _eight(
     put_some(out_field[0], i, count, ex)
     put_some(out_field[1], i, count, ey)
     put_some(out_field[2], i, count, ez)
-    q, minus = some(charges.charge, i, count), lanes(-0.0)
-    fx, fy, fz = q * ex, q * ey, q * ez
-    return (
-        fx,
-        fy,
-        fz,
-        fused(y, fz, minus - z * fy),
-        fused(z, fx, minus - x * fz),
-        fused(x, fy, minus - y * fx),
-    )
+    q = some(charges.charge, i, count)
+    return with_moment(x, y, z, q * ex, q * ey, q * ez)
