@@ -56,7 +56,7 @@ def images_weakened(subject: Subject) -> Iterator[Finding]:
     automatic = isinstance(form.closest, str)
     stated = ' (images.closest = "auto")' if automatic else ""
     shorter = (
-        f"charges nearer than {about(header.images_closest, 'm')} are then not followed to the end; "
+        f"charges nearer than {about(header.images_closest, 'm')} then are not followed on; "
         "or take a shorter step, with which the distance becomes shorter by itself."
         if automatic
         else "take a step that follows charges there."
