@@ -153,5 +153,10 @@ def parser() -> argparse.ArgumentParser:
     info = commands.add_parser("info", help="summarise a run's folder")
     info.add_argument("run", metavar="RUN", help="a run's folder, or its run.h5")
 
-    commands.add_parser("schema", help="print the JSON Schema of scenario files, for editors")
+    schema = commands.add_parser(
+        "schema", help="print the JSON Schema of scenario or study files, for editors"
+    )
+    schema.add_argument(
+        "--study", action="store_true", help="of study files, with [[vary]], [sample] and [limit]"
+    )
     return whole

@@ -86,7 +86,7 @@ def _carry_out(asked: argparse.Namespace) -> int:
     if asked.command == "schema":
         from driftwell.cli.schema import schema
 
-        return schema()
+        return schema(asked.study)
     if asked.command == "info":
         from driftwell.cli.info import info
 
