@@ -49,6 +49,8 @@ class Header:
     field_error, field_digest : relative rms error of the electrodes' solved field as it was mapped,
         and a digest of its numbers; 0 and "" without electrodes
     images : the conductors that answer to the charges, in words; empty where none do
+    images_closest : m from them within which their force stops growing, as it was taken; 0 where
+        it does not stop, where conductors are of another kind, and in records of before
     walls : names of what takes charges: the walls, then the electrodes, then processes
     processes : names of what else acts on charges
     cell_axis, cell_length : along which axis all repeats, and after how many m; "" and 0: nothing
@@ -79,6 +81,7 @@ class Header:
     field_error: float = 0.0
     field_digest: str = ""
     images: str = ""
+    images_closest: float = 0.0
     processes: tuple[str, ...] = ()
     cell_axis: str = ""
     cell_length: float = 0.0

@@ -379,6 +379,13 @@ HEADER = (
     Attribute("field_error", "float64", "1", "relative rms error of the electrodes' field", 2),
     Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
     Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
+    Attribute(
+        "images_closest",
+        "float64",
+        "m",
+        "distance from them within which the images' force stops growing; 0: it does not stop",
+        4,
+    ),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of what takes charges: walls, electrodes, processes"),
     Attribute("processes", "texts", "", "names of what else acts on charges, in order", 3),
