@@ -6,12 +6,12 @@ import math
 from pathlib import Path
 
 import numpy as np
-from scipy.constants import c, e, epsilon_0
+from scipy.constants import atomic_mass, c, e, epsilon_0
 from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run
 from validation import mirrors
-from validation.case import Case, Check, Reading, computed, halved
+from validation.case import COMPUTED, Case, Check, Published, Reading, computed, halved
 from validation.reading import at_end
 from validation.wells import well
 
@@ -31,6 +31,7 @@ KINGDON = (
     "K. H. Kingdon, Phys. Rev. 21 (1923) 408; R. D. Knight, Appl. Phys. Lett. 38 (1981) 221; "
     "the field as it stands there"
 )
+KOHN = "generalised Kohn theorem of a harmonic trap: J. F. Dobson, Phys. Rev. Lett. 73 (1994) 2244"
 PAIR = (
     "two ions of unlike mass in one static well: G. Morigi, H. Walther, Eur. "
     "Phys. J. D 13 (2001) 261"
@@ -249,6 +250,15 @@ CASES: tuple[Case, ...] = (
         "in the published error.",
     ),
     Case(
+        "whole-cloud-swings",
+        "traps",
+        "A warm cloud of 60 ions in a harmonic well, let go off its middle: it "
+        "swings as one ion does.",
+        (Check("frequency", "kHz", computed(100.0, KOHN), "swing", 1e-3),),
+        (halved("20 ns"),),
+        files=_isotropic,
+    ),
+    Case(
         "breathing-cluster",
         "traps",
         "Four ions, the tetrahedron they rest in stretched to 1.2 times: after one "
@@ -264,6 +274,40 @@ CASES: tuple[Case, ...] = (
         (halved("20 ns"),),
         files=_isotropic,
         settings=(f"duration={_breathing() / (2.0 * math.pi * 100e3)!r} s",),
+    ),
+    Case(
+        "ball-image-shift",
+        "traps",
+        "A packet of 1e6 charges swings in a well inside an earthed ball: its own image slows it.",
+        (
+            Check(
+                "shift",
+                "Hz",
+                Published(
+                    50e3
+                    * (
+                        math.sqrt(
+                            1.0
+                            - K
+                            * e**2
+                            * 1e6
+                            / (100.0 * atomic_mass * 5e-3**3 * (2.0 * math.pi * 50e3) ** 2)
+                        )
+                        - 1.0
+                    ),
+                    1e-4,
+                    "image in a sphere, for small distances from its middle: J. D. "
+                    "Jackson, Classical "
+                    "Electrodynamics (3rd ed.) sec. 2.2; worked out here",
+                    COMPUTED,
+                ),
+                "shift",
+            ),
+        ),
+        files=lambda folder: well(
+            folder / "well.csv", 100.0 * atomic_mass, 50e3, 50e3, 200e-6, 200e-6
+        ),
+        converged=True,
     ),
     Case(
         "self-bunching",
