@@ -31,6 +31,11 @@ class Attribute:
     help: str
     since: int = 1
 
+    @property
+    def is_text(self) -> bool:
+        """Whether it is one text or a list of them."""
+        return self.kind in ("text", "texts")
+
 
 @dataclass(frozen=True, slots=True)
 class Column:
@@ -352,7 +357,6 @@ HEADER = (
     Attribute("title", "text", "", "title of the scenario"),
     Attribute("scenario", "text", "", "the scenario file, as given"),
     Attribute("scenario_sha256", "text", "", "digest of the scenario's text (UTF-8)"),
-    Attribute("header_sha256", "text", "", "digest of all other attributes of this table", 4),
     Attribute("settings", "texts", "", "key=value given beside the file, in order"),
     Attribute(
         "digest",
