@@ -112,7 +112,9 @@ CASES: tuple[Case, ...] = (
         "by their own repulsion.",
         (
             Check("frequency, of that of one alone", "1", computed(_depressed, MATCHED), "slowed"),
-            Check("rms size across", "mm", computed(0.5e3 * math.sqrt(_square), MATCHED), _kept, 1e3),
+            Check(
+                "rms size across", "mm", computed(0.5e3 * math.sqrt(_square), MATCHED), _kept, 1e3
+            ),
         ),
         (
             halved("40 ns"),
