@@ -143,6 +143,5 @@ CASES: tuple[Case, ...] = (
             ),
         ),
         (),
-        quick=True,
     ),
 )

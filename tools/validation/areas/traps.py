@@ -172,7 +172,6 @@ CASES: tuple[Case, ...] = (
             for kind, q in zip(("heavy", "middle", "light"), MATHIEU_Q, strict=True)
         ),
         (halved("2 ns"),),
-        quick=True,
     ),
     Case(
         "beyond-stability",
