@@ -122,6 +122,9 @@ CASES: tuple[Case, ...] = (
             Axis("softening", ("coulomb.softening=0.4 mm",)),
         ),
         files=_channel,
+        remark="1200 charges stand for 5 mm of the beam. They lie on one shell of the distribution "
+        "at the start and push each other off it, and the softening makes the beam a little "
+        "narrower: half as many, and twice the softening, tell by how much.",
     ),
     Case(
         "gaussian-beam",
