@@ -137,6 +137,7 @@ CASES: tuple[Case, ...] = (
         "The energy of a charge with its image, half way from the middle of an earthed ball.",
         (_image_energy("energy", IMAGES, -1.0 / (1.0 - 0.25), e, 10e-3),),
         (Axis("step", ("stepping.step=0.5 ns",)),),
+        quick=True,
     ),
     Case(
         "image-in-gap",

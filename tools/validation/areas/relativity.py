@@ -48,6 +48,7 @@ CASES: tuple[Case, ...] = (
             ),
         ),
         (halved("36 ps"),),
+        quick=True,
     ),
     Case(
         "from-rest-to-light",

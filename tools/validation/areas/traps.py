@@ -120,7 +120,7 @@ _heavier = 0.25 * (QUADRO_SPEED / c) ** 2 + 0.1875 * (2.0 * math.pi * QUADRO_Z *
 
 
 def _in_cloud() -> dict[str, float]:
-    """Shifts (Hz) of an ion's lines in a Penning trap by a ball of 2000 charges of 1.1 mm around it."""
+    """Shifts (Hz) of an ion's lines in a Penning trap by 2000 charges in a ball of 1.1 mm."""
     wc, wz = e * 0.3 / ION, 2.0 * math.pi * 30e3
     push = 2000.0 * K * e**2 / (ION * 1.1e-3**3)
 
@@ -172,7 +172,6 @@ CASES: tuple[Case, ...] = (
             for kind, q in zip(("heavy", "middle", "light"), MATHIEU_Q, strict=True)
         ),
         (halved("2 ns"),),
-        quick=True,
     ),
     Case(
         "beyond-stability",
@@ -349,8 +348,9 @@ CASES: tuple[Case, ...] = (
             Axis("softening", ("coulomb.softening=0.1 mm",)),
         ),
         seeds=3,
-        remark="The formula is for charge spread evenly. What the grain of 2000 charges does is seen "
-        "from other seeds, from half as many of twice the charge, and from twice the softening.",
+        remark="The formula is for charge spread evenly. What the grain of 2000 charges does is "
+        "seen from other seeds, from half as many of twice the charge, and from twice the "
+        "softening.",
     ),
     Case(
         "self-bunching",
