@@ -118,10 +118,15 @@ def _carried_out(
     with ExitStack() as holding:
         if cluster is not None:
             holding.callback(cluster.close)
-        holding.enter_context(taken(folder, alone.text, alone.scenario_text))
+        changed = holding.enter_context(taken(folder, alone.text, alone.scenario_text))
         holding.enter_context(wish.listening())
         if cluster is not None:
             cluster.fits(folder / RUNS)
+        if changed:
+            tell(
+                f"{folder}: the scenario, its settings or what is asked were changed since the last "
+                "time; runs that are the same are kept, the tables are written anew."
+            )
         with Catalogue(folder / CATALOGUE_FILE) as catalogue:
             outcome = converge(
                 wanted,
