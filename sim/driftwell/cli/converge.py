@@ -124,8 +124,8 @@ def _carried_out(
             cluster.fits(folder / RUNS)
         if changed:
             tell(
-                f"{folder}: the scenario, its settings or what is asked were changed since the last "
-                "time; runs that are the same are kept, the tables are written anew."
+                f"{folder}: the scenario, its settings or what is asked were changed since the "
+                "last time; runs that are the same are kept, the tables are written anew."
             )
         with Catalogue(folder / CATALOGUE_FILE) as catalogue:
             outcome = converge(
