@@ -53,9 +53,9 @@ can open `{MASTER}`: datasets that grow are virtual datasets over the segments; 
 number", where a segment's file is missing: keep the folder together.
 
 All numbers are SI, little-endian, 64 bits. Each dataset names its unit in the attribute `unit`,
-each table the units of its columns in `units`, and both their meaning in `help`. Texts in tables
-are UTF-8 of fixed size. Unit 1 marks a pure number. Data carry fletcher32 checksums and are not
-compressed.
+each table the units of its columns in `units`, and both their meaning in `help`. Texts in tables,
+and in the attributes below, are UTF-8 of fixed size. Unit 1 marks a pure number. Data carry
+fletcher32 checksums and are not compressed.
 """
 
 STATE = """\

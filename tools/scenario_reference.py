@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 from pathlib import Path
 
 from driftwell.forms import Form
@@ -32,7 +33,25 @@ from driftwell.forms.wording import bound_words, raw_value, toml_text
 from driftwell.particles.species import BUILT_IN
 from driftwell.record.layout import Attribute, Dataset
 from driftwell.scenario.model import Scenario
+from driftwell.study.convergence.axes import AXES
+from driftwell.study.convergence.table import (
+    ANSWERS,
+    CONVERGENCE_CSV,
+    CONVERGENCE_H5,
+    CONVERGENCE_VERSION,
+    RUNS,
+    axis_entry,
+)
+from driftwell.study.convergence.table import HEADER as CONVERGENCE_HEADER
 from driftwell.study.form import MOST_CASES, StudyForm
+from driftwell.study.limit_table import HEADER as LIMIT_HEADER
+from driftwell.study.limit_table import (
+    LIMIT_CSV,
+    LIMIT_H5,
+    LIMIT_VERSION,
+    intervals_entry,
+    runs_entry,
+)
 from driftwell.study.means import USED
 from driftwell.study.points import SEED_BITS
 from driftwell.study.table import MEANS_CSV, TABLE_CSV, TABLE_H5
@@ -87,7 +106,8 @@ STUDY_INTRODUCTION = f"""\
 
 A study is one TOML file: one scenario, and what changes in it from case to case. This page is
 written by `tools/scenario_reference.py` from the declarations the reader itself follows; change
-those, not the page.
+those, not the page. `driftwell check FILE` tells all faults of a study, or says in words what will
+be computed; `driftwell schema --study` prints a JSON Schema for editors.
 
 ```toml
 title    = "Charge of a pulse that passes an aperture"
@@ -161,6 +181,32 @@ The keys that vary are counted from 1 in the order of the file, the questions in
 they first appear. Each such dataset has these attributes besides:
 """
 
+LIMIT_TABLES = f"""\
+## What a limit leaves
+
+`driftwell limit` ([limits](numerics/limits.md)) leaves `{LIMIT_CSV}`: one line of headings, units
+in brackets, and one line for each run in the order in which they were wanted, with the columns of
+the table `runs` below; what is not known is left empty. `{LIMIT_H5}` holds the same, the interval
+after each round, and the verdict (layout {LIMIT_VERSION}). Its attributes:
+"""
+
+LIMIT_UNITS = """\
+The ends of the interval and the likeliest value are in the unit that `unit` names, the threshold in
+`answer_unit`.
+"""
+
+CONVERGENCE_TABLES = f"""\
+## What a convergence study leaves
+
+`driftwell converge` ([convergence](numerics/convergence.md)) needs no study file, and leaves tables
+of the same kind. `{CONVERGENCE_CSV}` has one line for each answer: `question`, `value`, `unit`,
+`sampling_error`, then for each of the axes {", ".join(f"`{axis}`" for axis in AXES)}
+three columns, the error it adds, the order observed and how the error was found (such as
+`step_error`, `step_order`, `step_how`; empty where the axis does not matter), then `combined_error`
+and `verdict`. Errors are in the unit of the value. `{CONVERGENCE_H5}` holds the same with the noise
+and the limit of each axis, and all runs (layout {CONVERGENCE_VERSION}). Its attributes:
+"""
+
 Headings = dict[type[Form], str]
 
 
@@ -187,7 +233,13 @@ def study_page() -> str:
         *(POINT, varied_entry("means", "N", None), mean_entry("N")),
     )
     parts += [TABLES, attribute_table(HEADER), *map(dataset_part, datasets)]
-    return "\n".join([*parts, COUNTED, attribute_table(NAMED)])
+    parts += [COUNTED, attribute_table(NAMED)]
+    own = ("in the key's unit", "in the answer's unit")
+    tables = (runs_entry(*own), intervals_entry(own[0]))
+    parts += [LIMIT_TABLES, attribute_table(LIMIT_HEADER), LIMIT_UNITS, *map(dataset_part, tables)]
+    of_axis = replace(axis_entry("NAME"), help="of each axis that matters, " + axis_entry("").help)
+    parts += [CONVERGENCE_TABLES, attribute_table(CONVERGENCE_HEADER)]
+    return "\n".join([*parts, *map(dataset_part, (ANSWERS, of_axis, RUNS))])
 
 
 def _parts(form: type[Form]) -> tuple[list[DeclaredKey], list[DeclaredKey], Headings]:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import math
+import re
 
 import numpy as np
 import pytest
 
-from driftwell.boundary import spatial
+from driftwell.boundary import spatial, spatial_equations
+from driftwell.boundary.closeness import to_triangles
 from driftwell.boundary.spatial import SpatialSolution
 from driftwell.boundary.spatial_solver import solve_meshes, solve_spatial
 from driftwell.constants import COULOMB_CONSTANT
@@ -136,6 +138,47 @@ def test_iteration_finds_what_the_factors_find(four_rods):
     assert whole.solution.capacitance == pytest.approx(iterated.solution.capacitance, rel=1e-5)
     largest = np.max(np.abs(whole.solution.density))
     assert np.max(np.abs(whole.solution.density - iterated.solution.density)) < 1e-3 * largest
+
+
+def speck_in_a_corner():
+    """A ball of 5 um, 5 um from three walls of a box of 10 mm, and the box; in mm."""
+    half = arc((0.0, -0.005), (0.0, 0.005), (0.0, 0.0), math.pi)
+    ball = Revolved(outline([[half]], solid=True), Frame(np.full(3, 4.99)))
+    box = Extruded(rectangle((-5.0, -5.0), (5.0, 5.0)), 5.0)
+    return mesh_of(ball, 0.0025, 0.5, fair=True), mesh_of(box, 1.0, 1.0, fair=True)
+
+
+def test_a_speck_beside_walls_is_found_as_well_as_the_tree_sums():
+    """Triangles of the walls are a hundred times as long as the speck is away. The iteration stops
+    at a residual of 1e-6, where the tree's sums are no better, and has the factors' charges."""
+    speck, box = speck_in_a_corner()
+    whole = solve_meshes([speck], THREADS, [box])
+    iterated = solve_meshes([speck], THREADS, [box], dense=0)
+    assert 0 < max(iterated.iterations) < 30
+    assert whole.solution.capacitance == pytest.approx(
+        iterated.solution.capacitance, rel=1e-5, abs=0.0
+    )
+
+
+def test_charges_that_are_not_found_are_told_with_the_place_to_change(monkeypatch):
+    """Asked for more than the tree can give: how much is left, which bodies, where, how far."""
+    monkeypatch.setattr(spatial_equations, "_ENOUGH", 1e-12)
+    speck, box = speck_in_a_corner()
+    with pytest.raises(DriftwellError) as fault:
+        solve_meshes([speck], THREADS, [box], dense=0)
+    told = str(fault.value)
+    assert re.search(r"1 V on electrode 1 were not found: after \d+ iterations", told)
+    assert "still miss" in told
+    assert "electrode 1 and the enclosure: " in told
+    assert " mm apart at (49" in told  # as if metres were meant
+    assert "Move them apart" in told
+
+
+def test_distances_from_triangles_are_those_to_face_edge_and_corner():
+    corners = np.broadcast_to(np.array([[0.0, 0, 0], [1, 0, 0], [0, 1, 0]]), (4, 3, 3))
+    points = np.array([[0.2, 0.2, 0.5], [0.5, -0.3, 0.4], [-3.0, -4.0, 0.0], [1.0, 1.0, 0.0]])
+    expected = [0.5, 0.5, 5.0, math.sqrt(0.5)]
+    assert expected == pytest.approx(to_triangles(points, corners), rel=1e-12, abs=0.0)
 
 
 def test_mirror_planes_change_nothing_but_the_work():

@@ -8,8 +8,10 @@ from pathlib import Path
 import pytest
 
 from driftwell.cli.check import check
+from driftwell.cli.main import main
 from driftwell.cli.schema import schema
 from driftwell.scenario.schema import json_schema
+from driftwell.study.form import StudyForm
 from tests.scenario.good_scenarios import TRAP
 from tests.study.small_study import study_file, vary
 
@@ -67,4 +69,15 @@ def test_a_good_study_is_explained_and_a_faulty_one_is_told(
 
 def test_the_schema_is_printed_as_json(capsys: pytest.CaptureFixture[str]) -> None:
     assert 0 == schema()
+    assert json_schema() == json.loads(capsys.readouterr().out)
+
+
+def test_the_schema_of_studies_is_printed_where_it_is_asked_for(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    assert 0 == main(["schema", "--study"])
+    printed = json.loads(capsys.readouterr().out)
+    assert json_schema(StudyForm, "driftwell study") == printed
+    assert {"title", "scenario", "vary", "sample", "limit"} <= set(printed["properties"])
+    assert 0 == main(["schema"])
     assert json_schema() == json.loads(capsys.readouterr().out)

@@ -144,9 +144,16 @@ def test_a_plane_says_where_its_force_is_weakened() -> None:
     place[2] = 1e-3
     assert images.doubt(place, np.ones(10)) is None
     place[2, :3] = 2e-6
-    assert "30 % of the charges are nearer to the conductor" in str(
-        images.doubt(place, np.ones(10))
-    )
+    assert "30 % of the charges are so near the conductor" in str(images.doubt(place, np.ones(10)))
+
+
+def test_a_sphere_says_so_of_charges_in_its_middle_too() -> None:
+    """There the force goes with (a^2 + s^2)^(-3/2), and loses 2.3 % with s = a/8."""
+    place, one = np.zeros((3, 1)), np.ones(1)
+    assert sphere_images(np.zeros(3), 1e-3, 0.12e-3).doubt(place, one) is None
+    told = str(sphere_images(np.zeros(3), 1e-3, 0.13e-3).doubt(place, one))
+    assert "100 % of the charges" in told
+    assert "within 65 um of it" in told
 
 
 def test_triangles_say_where_charges_are_too_near() -> None:

@@ -335,5 +335,10 @@ def test_a_damaged_scenario_is_noticed(tmp_path):
     image = (folder / "run.h5").read_bytes()
     assert b"3 \xc2\xb5m\n" in image
     (folder / "run.h5").write_bytes(image.replace(b"3 \xc2\xb5m\n", b"4 \xc2\xb5m\n"))
+    with pytest.raises(RecordError, match=r"run\.h5: damaged .*checksum"):
+        open_run(folder)
+    (folder / "run.h5").write_bytes(image)
+    with h5py.File(folder / "run.h5", "r+") as file:
+        file.attrs["scenario"] = "another"
     with pytest.raises(RecordError, match=r"run\.h5: damaged; the scenario"):
         open_run(folder)

@@ -46,7 +46,7 @@ def test_it_says_what_the_run_is_how_it_ended_and_what_it_holds(writer):
         "gås gave ",
         "trajectory/state: 2 x 3 x 6, 288 bytes",
         "snapshots: 1",
-        "1 segment, 3",
+        "1 segment, 2",
         "held fraction  0.9700 ± 0.0040",
         "h5py",
         open_run(writer.folder).header.scenario_sha256,

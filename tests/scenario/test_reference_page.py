@@ -11,7 +11,12 @@ import pytest
 
 from driftwell.forms.declared import Keys, declared_keys, forms_within
 from driftwell.scenario.model import Scenario
+from driftwell.study.convergence.axes import AXES
+from driftwell.study.convergence.table import ANSWERS, RUNS, axis_entry
+from driftwell.study.convergence.table import HEADER as CONVERGENCE_HEADER
 from driftwell.study.form import StudyForm
+from driftwell.study.limit_table import HEADER as LIMIT_HEADER
+from driftwell.study.limit_table import intervals_entry, runs_entry
 
 TOOL = Path(__file__).parents[2] / "tools" / "scenario_reference.py"
 
@@ -69,6 +74,26 @@ def test_every_key_of_a_study_is_on_its_page_and_every_dataset_of_its_table(
             assert f"| `{name}` |" in page or f"[{name}]" in page, name
     for path in ("cases/run", "cases/varied/N", "cases/answer/N", "means/point", "means/answer/N"):
         assert f"### `{path}`" in page
+
+
+def test_what_limits_and_convergence_leave_is_on_that_page(tool: ModuleType) -> None:
+    limit, convergence = tool.study_page().split("## What a convergence study leaves")
+    limit = limit.split("## What a limit leaves")[1]
+    for entry in LIMIT_HEADER:
+        assert f"| `{entry.name}` |" in limit
+    for entry in CONVERGENCE_HEADER:
+        assert f"| `{entry.name}` |" in convergence
+    for table, part in (
+        (runs_entry("", ""), limit),
+        (intervals_entry(""), limit),
+        (ANSWERS, convergence),
+        (axis_entry("NAME"), convergence),
+        (RUNS, convergence),
+    ):
+        assert f"### `{table.path}`" in part
+        for column in table.columns:
+            assert f"| `{column.name}` |" in part
+    assert all(f"`{axis}`" in convergence for axis in AXES)
 
 
 def test_every_link_leads_to_one_heading(tool: ModuleType) -> None:

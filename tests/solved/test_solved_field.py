@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -13,6 +14,7 @@ from driftwell.assembly import assembled
 from driftwell.errors import ScenarioError
 from driftwell.fields.evaluation import evaluate
 from driftwell.fields.form import Role
+from driftwell.forms.body import Body
 from driftwell.record.earlier import differences
 from driftwell.record.reader import Run, open_run
 from driftwell.run import Progress, run
@@ -260,3 +262,24 @@ def test_going_on_in_a_field_solved_anew_is_told(tmp_path: Path) -> None:
     assert "gone on with 0123456789abcdef" in sentence
     run(loaded, tmp_path / "run", Listening())
     assert not any("solved field" in each for each in told)
+
+
+def test_what_is_curved_more_where_charges_are_held_is_reckoned_with(acting: ActingField) -> None:
+    """omega^2 = q/m times the curvature there, where that is more than usual; places outside the
+    map change nothing."""
+    steady = tuple(course for course in acting.courses if course.waveform == 1.0)
+    acting, flat = replace(acting, courses=steady), replace(acting, courses=steady)
+    vars(flat)["_bends"] = [0.0]
+    body = Body("ion", 1e-25, 1.6e-19)
+    region = np.array(flat.solved.map.region())
+    own = region.mean(axis=1) + 0.1 * np.ptp(region, axis=1)
+    place = np.array([[0.6 * own[0]], [0.8 * own[0]], [own[1]]])
+    place += np.array(flat.centre)[:, None]
+    (course,) = steady
+    bends = flat.solved.map.curvature(own, course.weight)[0, ::2, ::2]
+    rate = np.sqrt(body.charge_to_mass * np.abs(np.linalg.eigvalsh(bends)).max())
+    assert rate == pytest.approx(flat.rates(body, 0.0, place)["oscillation"], rel=1e-9, abs=0.0)
+    assert rate < acting.rates(body, 0.0)["oscillation"]
+    usual = acting.rates(body, 0.0)
+    assert usual == acting.rates(body, 0.0, place) == acting.rates(body, 0.0, place + 1.0)
+    assert 0.0 == flat.rates(body, 0.0, place + 1.0)["oscillation"]

@@ -86,13 +86,13 @@ def test_the_means_leave_out_what_did_not_come_to_its_end(swept: Study, tmp_path
 
 
 def named(group: Any) -> dict[str, Any]:
-    return {each.attrs["name"]: each for each in group.values()}
+    return {each.attrs["name"].decode(): each for each in group.values()}
 
 
 def test_the_hdf5_file_holds_the_same_with_units_and_notes(swept: Study, tmp_path: Path) -> None:
     with h5py.File(tmp_path / TABLE_H5) as file:
-        assert swept.text == file.attrs["study"]
-        assert swept.scenario_text == file.attrs["scenario"]
+        assert swept.text == file.attrs["study"].decode()
+        assert swept.scenario_text == file.attrs["scenario"].decode()
         run = file["cases/run"][()]
         assert list(range(1, 9)) == run["number"].tolist()
         assert [1, 2] * 4 == run["replica"].tolist()
@@ -107,7 +107,7 @@ def test_the_hdf5_file_holds_the_same_with_units_and_notes(swept: Study, tmp_pat
         )
         size = named(file["cases/answer"])["size"]
         assert ["m", "m", "1", "1", ""] == list(size.attrs["units"])
-        assert "rms-size" == size.attrs["ask"]
+        assert b"rms-size" == size.attrs["ask"]
         assert [1 / 3, 2 / 3, 1.0, 4 / 3, 9.0, 6.0] == size["value"][:6].tolist()
         assert all(map(math.isnan, size["value"][6:]))
         assert b"of 20 charges" == size["note"][0]

@@ -31,6 +31,40 @@ def ledger_at_start(column: str, scale: float) -> Reader:
     return read
 
 
+def closest(first: int, second: int) -> tuple[Reader, Reader]:
+    """Least distance of two tracked charges and when it is, by Hermite's cubic through the
+    records on either side of it."""
+
+    def found(run: Run, every: int) -> tuple[float, float]:
+        time, one = (part[::every] for part in run.track(first))
+        other = run.track(second)[1][::every]
+        apart = one[:, :3] - other[:, :3]
+        moving = one[:, 3:] - other[:, 3:]
+        distance = np.sqrt((apart**2).sum(axis=1))
+        rate = (apart * moving).sum(axis=1) / distance
+        k = int(np.argmin(distance))
+        k = k - 1 if rate[k] > 0.0 else k
+        step = time[k + 1] - time[k]
+        a, b = distance[k], distance[k + 1]
+        p, q = rate[k] * step, rate[k + 1] * step
+        cubic = np.array([2 * a + p - 2 * b + q, -3 * a - 2 * p + 3 * b - q, p, a])
+        roots = np.roots(np.polyder(cubic))
+        inside = [float(s.real) for s in roots if abs(s.imag) < 1e-12 and 0.0 <= s.real <= 1.0]
+        s = min(inside, key=lambda each: float(np.polyval(cubic, each)))
+        return float(np.polyval(cubic, s)), float(time[k] + s * step)
+
+    def reader(k: int) -> Reader:
+        """What leaving out every second record changes is no less than the cubic's error."""
+
+        def read(run: Run) -> Reading:
+            value = found(run, 1)[k]
+            return Reading(value, abs(value - found(run, 2)[k]))
+
+        return read
+
+    return reader(0), reader(1)
+
+
 def angle_at_end(first: int, second: int) -> Reader:
     """Angle between the relative velocities of two tracked charges at start and end, degrees."""
 

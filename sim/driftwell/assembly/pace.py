@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from driftwell.answers.evidence import TraceRequest
 from driftwell.coulomb.bunch_frames import (
@@ -36,7 +37,13 @@ from driftwell.stepping.step_choice import (
     plasma_rates,
 )
 
+Floats = NDArray[np.float64]
+
 SAMPLES_PER_PERIOD = 20.0
+LEAST_SAMPLES = 100.0
+"""Of a run, where nothing known is fast: what is seen may come from elsewhere."""
+_PLACES = 2000
+"""Charges of a kind at whose places fields are looked at, at the most."""
 
 
 def chosen_pace(
@@ -55,20 +62,19 @@ def chosen_pace(
     everyone : with those to be born, as they are born; newcomers : how fast these will move others
     """
     stepping = scenario.stepping
+    held = [_some_places(particles, number) for number in range(len(names))]
     rates = [
         Rate(f'{name} of field "{field.name}" on {species}', value)
         for field in scenario.field
-        for species in names
-        for name, value in _rates_of(field, bodies[species], bodies).items()
+        for species, places in zip(names, held, strict=True)
+        for name, value in _rates_of(field, bodies[species], bodies, places).items()
     ]
     if acting is not None:
-        rates += _rates_in(acting, bodies, names, everyone)
-    fastest = max((rate.rate for rate in rates), default=0.0)
+        rates += _rates_in(acting, bodies, names, everyone, held)
     motion = _to_be_followed(rates, stepping.scheme)
     every = min((request.every for request in requests if request.every), default=math.inf)
     if any(request.every is None for request in requests):
-        period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
-        every = min(every, period / SAMPLES_PER_PERIOD)
+        every = min(every, _between_samples(scenario, rates, particles))
     if stepping.step != "auto":
         choice = StepChoice(float(stepping.step), "the scenario says so")
     else:
@@ -81,6 +87,22 @@ def chosen_pace(
     return choice, every, motion
 
 
+def _between_samples(scenario: Scenario, rates: Sequence[Rate], particles: Particles) -> float:
+    """s between samples that show the fastest motion: in the fields, or that of the clouds."""
+    found = list(rates)
+    if scenario.coulomb.method != "off":
+        found += plasma_rates(particles)
+    fastest = max((rate.rate for rate in found), default=0.0)
+    period = 2.0 * math.pi / fastest if fastest > 0.0 else scenario.duration / 500.0
+    return min(period / SAMPLES_PER_PERIOD, scenario.duration / LEAST_SAMPLES)
+
+
+def _some_places(particles: Particles, species: int) -> Floats:
+    """Places (3, n), m, where charges of a kind are at the start."""
+    own = np.flatnonzero(particles.species == species)
+    return particles.position[:, own[:: 1 + len(own) // _PLACES]]
+
+
 def _to_be_followed(rates: Sequence[Rate], scheme: str) -> Rate:
     """The fastest motion in the fields, save gyration where the scheme follows it at any step."""
     exact = scheme == MIDWAY
@@ -88,11 +110,14 @@ def _to_be_followed(rates: Sequence[Rate], scheme: str) -> Rate:
     return max(followed, key=lambda rate: rate.rate, default=Rate("", 0.0))
 
 
-def _rates_of(field: FieldForm, body: Body, bodies: dict[str, Body]) -> dict[str, float]:
-    """How fast a body moves in a field, rad/s, by what it does."""
+def _rates_of(
+    field: FieldForm, body: Body, bodies: dict[str, Body], places: Floats
+) -> dict[str, float]:
+    """How fast a body moves in a field, rad/s, by what it does: usually, or about its places."""
     try:
         field.packed(bodies)
-        return dict(field.rates(body, bodies))
+        usual, there = dict(field.rates(body, bodies)), field.rates_at(body, places)
+        return {name: max(usual.get(name, 0.0), there.get(name, 0.0)) for name in usual | there}
     except ArithmeticError as fault:
         raise ScenarioError(
             f'[[field]] "{field.name}": its numbers, or the motion of {body.name} in it, are too '
@@ -122,15 +147,21 @@ def _own_rates(particles: Particles, softening: float, frames: BunchFrames | Non
 
 
 def _rates_in(
-    acting: ActingField, bodies: Mapping[str, Body], names: Sequence[str], particles: Particles
+    acting: ActingField,
+    bodies: Mapping[str, Body],
+    names: Sequence[str],
+    particles: Particles,
+    held: Sequence[Floats],
 ) -> list[Rate]:
-    """How fast charges move in the electrodes' field."""
+    """How fast charges move in the electrodes' field; held : where they are at the start."""
     speed = np.linalg.norm(particles.velocity, axis=0)
     return [
         Rate(f"{name} of {species} in the electrodes' field", value)
         for number, species in enumerate(names)
         for name, value in acting.rates(
-            bodies[species], float(speed[particles.species == number].max(initial=0.0))
+            bodies[species],
+            float(speed[particles.species == number].max(initial=0.0)),
+            held[number],
         ).items()
     ]
 

@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.answers.evidence import CloudFacts, TraceRequest
+from driftwell.assembly.answering import answering, asked_of_images, closest_to
 from driftwell.assembly.births import (
     check_births,
     check_sides,
@@ -23,15 +24,11 @@ from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.newcomers import source_rates
 from driftwell.assembly.pace import chosen_pace
 from driftwell.coulomb.bunch_frames import BunchFrames, chosen_frames
-from driftwell.coulomb.form import MIXED_ACCURACY, Coulomb
 from driftwell.coulomb.summation import Summation
-from driftwell.coulomb.tree import settings_for
 from driftwell.fields.form import Role
 from driftwell.fields.table import field_tables
 from driftwell.forms.body import Body
-from driftwell.images.electrodes import ElectrodeImages, electrode_images
-from driftwell.images.form import ClosedForm, followed
-from driftwell.images.image_sum import Asked, Fineness, Images
+from driftwell.images.image_sum import Images
 from driftwell.particles.species import bodies as known_bodies
 from driftwell.particles.state import Particles, joined
 from driftwell.particles.unborn import Unborn
@@ -74,6 +71,7 @@ class Assembly:
     edges : where fields end that are known in a region only
     acting : the electrodes' solved field; None without electrodes
     images : the conductors that answer to the charges; None where none does
+    closest : m from them within which the images' force stops growing; 0 where it does not
     unborn : the charges that sources bear; None without sources
     frames : in which frames the charges are summed; None: in the laboratory, and unwatched
     """
@@ -92,6 +90,7 @@ class Assembly:
     edges: tuple[Edges, ...] = ()
     acting: ActingField | None = None
     images: Images | None = None
+    closest: float = 0.0
     unborn: Unborn | None = None
     frames: BunchFrames | None = None
 
@@ -138,6 +137,7 @@ class Assembly:
             field_error=0.0 if self.acting is None else self.acting.solved.error,
             field_digest="" if self.acting is None else self.acting.solved.digest,
             images="" if scenario.images is None else scenario.images.words(),
+            images_closest=self.closest,
             clouds=self.clouds,
             species=self.species,
             walls=(*(wall.name for wall in self.walls), *self.conductors.names, *self.takers),
@@ -271,6 +271,7 @@ def assembled(
     if not warned:
         refuse_beyond_memory(extent, warn)
     plan = all_marks(scenario, choice.step, bool(requests), every, acting)
+    asked = asked_of_images(scenario, everyone, choice)
     return Assembly(
         scenario,
         bodies,
@@ -285,7 +286,8 @@ def assembled(
         conductors,
         edges,
         acting,
-        _images(scenario, conductors, everyone, choice) if solve else None,
+        answering(scenario, conductors, asked) if solve else None,
+        closest_to(scenario.images, asked),
         unborn,
         frames,
     )
@@ -297,32 +299,6 @@ def _counted(extent: Extent, plan: Schedule) -> Extent:
         int(np.count_nonzero(plan.flags & flag)) for flag in (RECORD, TRACE, SNAPSHOT)
     )
     return replace(extent, records=records, samples=samples, snapshots=snapshots)
-
-
-def _images(
-    scenario: Scenario, conductors: Conductors, particles: Particles, choice: StepChoice
-) -> Images | None:
-    """The conductors that answer to the charges."""
-    form = scenario.images
-    if isinstance(form, ElectrodeImages):
-        solids = [solid for own in conductors.bodies for solid in own]
-        return electrode_images(solids, form.panels, form.length)
-    if not isinstance(form, ClosedForm):
-        return None
-    kick = choice.step * scenario.stepping.coulomb_every
-    charge, mass = particles.charge * particles.weight, particles.mass * particles.weight
-    away = form.depth(particles.position)
-    nearest = followed(kick, charge, mass, particles.velocity, away)
-    return form.images(Asked(nearest, scenario.coulomb.softening, _fineness(scenario.coulomb)))
-
-
-def _fineness(form: Coulomb) -> Fineness | None:
-    """How the tree sums over images of many charges; not at all where all is summed directly."""
-    if form.method == "direct":
-        return None
-    it = settings_for(form.accuracy)
-    mixed = form.precision != "double" and form.accuracy >= MIXED_ACCURACY
-    return Fineness(it.order, it.leaf, it.tolerance, mixed)
 
 
 def _frames(scenario: Scenario, particles: Particles) -> BunchFrames:

@@ -22,13 +22,15 @@ from driftwell.constants import COULOMB_CONSTANT
 from driftwell.fields.evaluation import evaluate
 from driftwell.forms import spelled
 from driftwell.geometry.distance import distances
-from driftwell.images.form import ClosedForm
+from driftwell.images.form import ClosedForm, MirrorForm, lost_part
 from driftwell.images.importance import importance, remark
 from driftwell.scenario.conductors import Conductors
 
 HELD = 0.5
 """The share of the drawing field from which an own image's pull is spoken of."""
 _STEEPEST = 2.0 / math.sqrt(27.0)
+_TOLD = 1e-4
+"""The part of an image force whose loss is put in figures."""
 _SAMPLE = 64
 """So many births of a source are looked at."""
 
@@ -36,6 +38,7 @@ _SAMPLE = 64
 def remarks(parts: Assembly) -> Iterator[str]:
     """All that is to be said, a sentence or a few each."""
     yield from filter(None, (parts.frame_remark(), _of_images(parts)))
+    yield from _of_closest(parts)
     yield from _of_own_images(parts)
 
 
@@ -64,6 +67,33 @@ def _of_images(parts: Assembly) -> str | None:
             )
         )
     return remark(estimates, form is not None)
+
+
+def _of_closest(parts: Assembly) -> Iterator[str]:
+    """What came of ``closest = "auto"``, and what it takes of the images' force at the start."""
+    form, softening = parts.scenario.images, parts.scenario.coulomb.softening
+    if not isinstance(form, MirrorForm) or form.closest != "auto" or parts.closest <= 0.0:
+        return
+    blur = 2.0 * parts.closest
+    if blur <= softening:
+        yield (
+            '[images] closest = "auto": no more than half of coulomb.softening, '
+            f"{spelled(parts.closest, 'm', 3)}, is needed; images are as blurred as their charges."
+        )
+        return
+    kick = parts.choice.step * parts.scenario.stepping.coulomb_every
+    mirrored = np.maximum(form.mirrored(parts.everyone.position), 0.0)
+    part = float(np.median(lost_part(mirrored, blur, softening)))
+    weaker = "" if part < _TOLD else f"; where half of them begin it is {_percent(part)} too weak"
+    yield (
+        f'[images] closest = "auto": the images\' force stops growing '
+        f"{spelled(parts.closest, 'm', 3)} from the conductor, which is what steps of "
+        f"{spelled(kick, 's', 3)} can follow of these charges{weaker}."
+    )
+
+
+def _percent(part: float) -> str:
+    return f"{100.0 * part:.2g} %"
 
 
 def _of_own_images(parts: Assembly) -> Iterator[str]:

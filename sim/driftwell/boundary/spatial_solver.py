@@ -15,10 +15,11 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.boundary.closeness import closest_for_their_size
 from driftwell.boundary.mirror_orbits import mirror_orbits
 from driftwell.boundary.panel_bounds import bounds_of, count_near
 from driftwell.boundary.spatial import SpatialSolution
-from driftwell.boundary.spatial_equations import DENSE, solved
+from driftwell.boundary.spatial_equations import DENSE, NotFoundError, solved
 from driftwell.boundary.triangle import panel_rows
 from driftwell.constants import COULOMB_CONSTANT
 from driftwell.errors import DriftwellError
@@ -185,7 +186,10 @@ def _solved(surfaces: Surfaces, threads: int, dense: int) -> SolvedSpatial:
     orbits = mirror_orbits(rows[:, 23:26], rows[:, 21], rows[:, 22], surfaces.electrode)
     owner = surfaces.electrode[orbits.first]
     wanted = (owner[:, None] == np.arange(surfaces.electrodes)).astype(np.float64)
-    found = solved(rows, orbits, wanted, threads, dense)
+    try:
+        found = solved(rows, orbits, wanted, threads, dense)
+    except NotFoundError as fault:
+        raise DriftwellError(f"{fault}. {_remedy(surfaces)}") from fault
     density = np.ascontiguousarray(found.density[orbits.group].T) / COULOMB_CONSTANT
     charge = density * rows[:, 21]
     capacitance = np.stack(
@@ -201,6 +205,23 @@ def _solved(surfaces: Surfaces, threads: int, dense: int) -> SolvedSpatial:
         threads,
     )
     return SolvedSpatial(solution, len(rows), len(orbits.first), found.iterations)
+
+
+def _remedy(surfaces: Surfaces) -> str:
+    """Where surfaces are too close for their triangles, and what to do."""
+    found = closest_for_their_size(surfaces.corners, surfaces.electrode)
+    if found is None:
+        return "Needs surfaces that do not cross: join what overlaps in one outline or mesh."
+    one, other = (
+        "the enclosure" if number == surfaces.electrodes else f"electrode {number + 1}"
+        for number in (found.first, found.second)
+    )
+    place = ", ".join(f"{1e3 * each:.4g}" for each in found.place)
+    return (
+        f"Closest for their size are {one} and {other}: {1e3 * found.distance:.3g} mm apart at "
+        f"({place}) mm, where a triangle of {other} is {1e3 * found.longest:.3g} mm long. Move "
+        "them apart by about that length, join them in one electrode, or leave the smaller out."
+    )
 
 
 def _without_doubles(surfaces: Surfaces) -> Surfaces:

@@ -1,4 +1,4 @@
-"""``driftwell schema``: the JSON Schema of scenario files, for editors."""
+"""``driftwell schema``: the JSON Schema of scenario or study files, for editors."""
 
 from __future__ import annotations
 
@@ -6,8 +6,10 @@ import json
 
 from driftwell.cli.printing import answer
 from driftwell.scenario.schema import json_schema
+from driftwell.study.form import StudyForm
 
 
-def schema() -> int:
-    """Print the schema and return 0."""
-    return 0 if answer([json.dumps(json_schema(), indent=2, ensure_ascii=True)]) else 2
+def schema(study: bool = False) -> int:
+    """Print the schema, of study files where that is asked for, and return 0."""
+    found = json_schema(StudyForm, "driftwell study") if study else json_schema()
+    return 0 if answer([json.dumps(found, indent=2, ensure_ascii=True)]) else 2

@@ -104,6 +104,11 @@ class FieldForm(Form):
         """
         return {}
 
+    def rates_at(self, body: Body, position: NDArray[np.float64]) -> dict[str, float]:
+        """The same where a body is at places (3, n), m, of a field that differs from place to
+        place; empty where :meth:`rates` says all."""
+        return {}
+
     def strongest(self) -> float:
         """Largest flux density, T, that the step and the cautions are to reckon with."""
         return 0.0

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from driftwell.constants import COULOMB_CONSTANT
-from driftwell.forms import Form, Length, NonNegative, key, or_word
+from driftwell.forms import Form, Length, NonNegative, key, or_word, spelled
 from driftwell.images.image_sum import BY_TREE, Asked, Images
 
 if TYPE_CHECKING:
@@ -56,7 +56,8 @@ class MirrorForm(ClosedForm):
 
     closest: Closest = key(
         "distance c from the conductor within which the force stops growing; it errs by "
-        '1.5 (c/d)^2 at the distance d; "auto": what the step can follow. It is never taken less '
+        "1.5 (c/d)^2 at the distance d from a plane, by 6 (c/a)^2 in the middle of a sphere of "
+        'radius a; "auto": what the step can follow, which the run says. It is never taken less '
         "than half of coulomb.softening, with which images are as blurred as their charges",
         default="auto",
         example="10 nm",
@@ -70,6 +71,32 @@ class MirrorForm(ClosedForm):
         """The length s, m, that the images' law is softened with: 2 c, and no less than e."""
         closest = asked.followed if isinstance(self.closest, str) else self.closest
         return max(2.0 * closest, asked.softening)
+
+    def mirrored(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+        """D (n,), m, of the images' law at places (3, n): before a plane twice the distance."""
+        return 2.0 * self.depth(position)
+
+    def closest_words(self) -> str:
+        """How near the conductor the force grows, for `driftwell check`."""
+        if isinstance(self.closest, str):
+            return "the force stops growing at the distance that steps can follow"
+        if self.closest == 0.0:
+            return "the force grows without bound towards the conductor"
+        return f"the force stops growing within {spelled(self.closest, 'm')} of the conductor"
+
+
+def lost_part(mirrored: NDArray[np.float64], blur: float, softening: float) -> NDArray[np.float64]:
+    """Part of a charge's own image force that the length `blur` takes, of 1.
+
+    The force goes with D/(D^2 + s^2)^(3/2); it is compared with the one that is softened as the
+    pairs are, s = e, which is the law that was asked for.
+
+    mirrored : (n,) D, m, not negative; blur, softening : s and e, m
+    """
+    square = mirrored**2
+    asked, taken = square + softening**2, square + blur**2
+    part = np.divide(asked, taken, out=np.ones_like(square), where=taken > 0.0)
+    return np.asarray(1.0 - part**1.5)
 
 
 def followed(

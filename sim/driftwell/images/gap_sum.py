@@ -87,7 +87,7 @@ class GapImages:
                     f"with images; the sum over many is made for {WIDEST[1]:g}, and errs beyond. "
                     'Where that matters, take [coulomb] method = "direct"'
                 )
-        return weakened(np.minimum(u, self.gap - u), self.blur, self.softening)
+        return weakened(2.0 * np.minimum(u, self.gap - u), self.blur, self.softening)
 
 
 @kernel

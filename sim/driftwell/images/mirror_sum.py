@@ -55,8 +55,8 @@ Floats = NDArray[np.float64]
 
 PLANE, SPHERE = 0, 1
 _NEAR, _MANY = 8.0, 0.1
-"""Distance in lengths c = s/2 from which on forces are right to 2 %; the share of charges nearer
-than that which is said."""
+"""D of (1) in lengths s from which on forces are right to 2 %; the share of charges nearer than
+that which is said."""
 NEAREST2 = 1e-100
 """m^2, the least squared distance: what pushes along no distance pushes nowhere."""
 
@@ -89,27 +89,26 @@ class MirrorImages:
         """Where many charges are so near the conductor that `closest` weakens their force."""
         away = position[:, charge != 0.0].T - self.table[1:4]
         if self.table[0] == PLANE:
-            depth = away @ self.table[5:8]
+            mirrored = 2.0 * (away @ self.table[5:8])
         else:
-            depth = self.table[5] - np.linalg.norm(away, axis=1)
-        return weakened(depth, float(self.table[4]), self.softening)
+            mirrored = self.table[5] - np.sum(away**2, axis=1) / self.table[5]
+        return weakened(mirrored, float(self.table[4]), self.softening)
 
 
-def weakened(depth: Floats, blur: float, softening: float) -> str | None:
-    """What should be said of charges at distances (n,), m, where s weakens their images' force.
+def weakened(mirrored: Floats, blur: float, softening: float) -> str | None:
+    """What should be said of charges whose D of (1) is (n,), m, where s weakens their images.
 
     Nothing where s is the pairs' softening, which the user chose.
     """
-    closest = 0.5 * blur
-    if not depth.size or blur <= softening:
+    if not mirrored.size or blur <= softening:
         return None
-    share = float(np.mean(depth < _NEAR * closest))
+    share = float(np.mean(mirrored < _NEAR * blur))
     if share <= _MANY:
         return None
     return (
-        f"{100.0 * share:.2g} % of the charges are nearer to the conductor than {_NEAR:g} "
-        f"times {spelled(closest, 'm', 3)}, where the images' force stops growing; it errs by "
-        "more than 2 % there. Where that matters, take a shorter step, or state [images] closest"
+        f"{100.0 * share:.3g} % of the charges are so near the conductor that their own images' "
+        f"force, which stops growing within {spelled(0.5 * blur, 'm', 3)} of it, errs by more than "
+        "2 %. Where that matters, take a shorter step, or state [images] closest"
     )
 
 

@@ -23,6 +23,10 @@ class SphereImages(MirrorForm):
     def depth(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
         return np.asarray(self.radius - np.linalg.norm(position.T - self.centre, axis=1))
 
+    def mirrored(self, position: NDArray[np.float64]) -> NDArray[np.float64]:
+        square = np.sum((position.T - self.centre) ** 2, axis=1)
+        return np.asarray(self.radius - square / self.radius)
+
     def images(self, asked: Asked) -> Images:
         return sphere_images(np.array(self.centre), self.radius, self.blur(asked), asked.softening)
 

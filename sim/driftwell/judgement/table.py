@@ -15,6 +15,7 @@ from driftwell.judgement.gas_left_out import gas_left_out
 from driftwell.judgement.heavy_charges import heavy_charges
 from driftwell.judgement.idle_process import idle_process
 from driftwell.judgement.images_left_out import images_left_out
+from driftwell.judgement.images_weakened import images_weakened
 from driftwell.judgement.lost_at_once import lost_at_once
 from driftwell.judgement.rare_outcomes import rare_outcomes
 from driftwell.judgement.starved import starved
@@ -40,6 +41,7 @@ JUDGEMENTS: tuple[Judgement, ...] = (
     folded_lines,
     idle_process,
     images_left_out,
+    images_weakened,
     fast_charges,
     gas_left_out,
 )

@@ -2,7 +2,9 @@
 
 HDF5 never writes to the disk itself: on a full disk it can leave wrong rows and crash at exit,
 where a plain write of finished bytes is a plain error. Version 1.10 of the file format is used
-because its metadata carry checksums; the data carry theirs by the fletcher32 filter.
+because its metadata carry checksums; the data carry theirs by the fletcher32 filter. Texts that are
+read back are of fixed size: those of any length lie in a heap without a checksum, and HDF5 never
+comes back from a heap in which a bit is turned.
 """
 
 from __future__ import annotations
@@ -52,11 +54,17 @@ def put_attributes(target: Any, entries: Iterable[Attribute], values: Mapping[st
     """Write `values` as the attributes `entries` of a file or group."""
     for entry in entries:
         value = values[entry.name]
-        if entry.kind == "texts":
-            value = np.array(list(value), dtype=h5py.string_dtype())
-        elif entry.kind != "text":
-            value = np.dtype(entry.kind).type(value)
-        target.attrs[entry.name] = value
+        if not entry.is_text:
+            target.attrs[entry.name] = np.dtype(entry.kind).type(value)
+            continue
+        texts = [value] if entry.kind == "text" else list(value)
+        stored = [text.encode() for text in texts]
+        size = max([1, *map(len, stored)])
+        target.attrs.create(
+            entry.name,
+            np.bytes_(stored[0]) if entry.kind == "text" else np.array(stored, f"S{size}"),
+            dtype=h5py.string_dtype("utf-8", size),
+        )
 
 
 def attributes_of(target: Any, entries: Iterable[Attribute]) -> dict[str, Any]:
@@ -64,11 +72,18 @@ def attributes_of(target: Any, entries: Iterable[Attribute]) -> dict[str, Any]:
     values: dict[str, Any] = {}
     for entry in entries:
         value = target.attrs[entry.name]
-        if entry.kind == "texts":
-            values[entry.name] = tuple(str(each) for each in value)
+        if not entry.is_text:
+            values[entry.name] = value.item()
+        elif entry.kind == "text":
+            values[entry.name] = text_of(value)
         else:
-            values[entry.name] = value if entry.kind == "text" else value.item()
+            values[entry.name] = tuple(text_of(each) for each in value)
     return values
+
+
+def text_of(stored: str | bytes) -> str:
+    """A text as it is read back; up to format 3 texts of attributes were of any length."""
+    return stored.decode() if isinstance(stored, bytes) else stored
 
 
 def put_dataset(group: Any, entry: Dataset, data: NDArray[Any], path: str | None = None) -> Any:

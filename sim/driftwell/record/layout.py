@@ -31,6 +31,11 @@ class Attribute:
     help: str
     since: int = 1
 
+    @property
+    def is_text(self) -> bool:
+        """Whether it is one text or a list of them."""
+        return self.kind in ("text", "texts")
+
 
 @dataclass(frozen=True, slots=True)
 class Column:
@@ -352,7 +357,6 @@ HEADER = (
     Attribute("title", "text", "", "title of the scenario"),
     Attribute("scenario", "text", "", "the scenario file, as given"),
     Attribute("scenario_sha256", "text", "", "digest of the scenario's text (UTF-8)"),
-    Attribute("header_sha256", "text", "", "digest of all other attributes of this table", 4),
     Attribute("settings", "texts", "", "key=value given beside the file, in order"),
     Attribute(
         "digest",
@@ -375,6 +379,13 @@ HEADER = (
     Attribute("field_error", "float64", "1", "relative rms error of the electrodes' field", 2),
     Attribute("field_digest", "text", "", "digest of that field's numbers", 2),
     Attribute("images", "text", "", "conductors that answer to the charges; empty: none", 2),
+    Attribute(
+        "images_closest",
+        "float64",
+        "m",
+        "distance from them within which the images' force stops growing; 0: it does not stop",
+        4,
+    ),
     Attribute("species", "texts", "", "names of the species, in order"),
     Attribute("walls", "texts", "", "names of what takes charges: walls, electrodes, processes"),
     Attribute("processes", "texts", "", "names of what else acts on charges, in order", 3),

@@ -11,6 +11,7 @@ from driftwell.answers.answer_lines import answer_lines, force_lines
 from driftwell.constants import ELEMENTARY_CHARGE
 from driftwell.errors import RecordError
 from driftwell.forms import spelled
+from driftwell.record.header import Header
 from driftwell.record.layout import ROWS
 from driftwell.record.reader import Run
 
@@ -67,7 +68,7 @@ def _identity(run: Run) -> list[str]:
         *lines,
         f"{header.scheme}, step {spelled(header.step, 's')}, seed {header.seed}",
         f"Coulomb sum {header.coulomb_method}: {header.coulomb_because or 'no reason given'}",
-        *([f"images {header.images}"] if header.images else []),
+        *([f"images {header.images}{_within(header)}"] if header.images else []),
         f"begun {header.created} on {header.processor}, {header.threads} threads on "
         f"{header.cores} processors",
         f"driftwell {header.driftwell_version}, Python {header.python_version}, numpy "
@@ -77,6 +78,13 @@ def _identity(run: Run) -> list[str]:
         f"digest of the content: {header.digest or 'none'}",
         f"sha256 of the scenario's text: {header.scenario_sha256}",
     ]
+
+
+def _within(header: Header) -> str:
+    """How near to the conductors the images' force still grows."""
+    if header.images_closest <= 0.0:
+        return ""
+    return f"; their force stops growing within {spelled(header.images_closest, 'm', 3)} of it"
 
 
 def _clouds(run: Run) -> list[str]:

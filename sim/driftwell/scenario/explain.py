@@ -12,7 +12,7 @@ from driftwell.coulomb.direct import SMALL
 from driftwell.electrodes.form import electrodes_words
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
-from driftwell.images.form import ClosedForm
+from driftwell.images.form import ClosedForm, ImagesForm, MirrorForm
 from driftwell.particles.species import bodies
 from driftwell.record.form import DEFAULT_RECORDS, DEFAULT_TRACKS
 from driftwell.scenario.cautions import cautions
@@ -64,7 +64,7 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
         yield "detector", detector.name, detector.words()
     yield "Coulomb", "", _coulomb_words(loaded)
     if scenario.images is not None:
-        yield "images", "", scenario.images.words()
+        yield "images", "", _images_words(scenario.images)
     if scenario.cell is not None:
         yield "cell", "", scenario.cell.words()
     for process in scenario.process:
@@ -73,6 +73,13 @@ def _rows(loaded: LoadedScenario) -> Iterator[Row]:
     yield "record", "", _record_words(scenario)
     for question in scenario.question:
         yield "question", question.name, question.words()
+
+
+def _images_words(images: ImagesForm) -> str:
+    """What answers to the charges, and how near to it their force still grows."""
+    if isinstance(images, MirrorForm):
+        return f"{images.words()}; {images.closest_words()}"
+    return images.words()
 
 
 _EFFECT = {"absorb": "absorbs", "reflect": "reflects"}

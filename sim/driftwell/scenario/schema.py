@@ -1,4 +1,4 @@
-"""JSON Schema of scenario files, for editors: from the same declarations the reader uses."""
+"""JSON Schema of scenario and study files, for editors: from the declarations readers use."""
 
 from __future__ import annotations
 
@@ -48,13 +48,13 @@ class _Definitions:
         return name
 
 
-def json_schema() -> dict[str, Any]:
-    """The schema, draft 2020-12, of the table a scenario file holds."""
+def json_schema(form: type[Form] = Scenario, title: str = "driftwell scenario") -> dict[str, Any]:
+    """The schema, draft 2020-12, of the table that a file of such a form holds."""
     definitions = _Definitions()
-    root = _table(Scenario, definitions)
+    root = _table(form, definitions)
     return {
         "$schema": "https://json-schema.org/draft/2020-12/schema",
-        "title": "driftwell scenario",
+        "title": title,
         **root,
         "$defs": dict(sorted(definitions.schemas.items())),
     }

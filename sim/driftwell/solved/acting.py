@@ -18,6 +18,8 @@ from numpy.typing import NDArray
 from driftwell.electrodes.bodies import own_bodies
 from driftwell.electrodes.form import Electrodes
 from driftwell.fields.form import FieldRegion, PackedField
+from driftwell.fields.map_files.swing import most_curved
+from driftwell.fields.maps.potential_map import map_places
 from driftwell.fields.rates import linear_rates
 from driftwell.forms.body import Body
 from driftwell.forms.waveform_table import waveform_table
@@ -90,19 +92,30 @@ class ActingField:
         remedy = "Give [electrodes] a larger `region`, or move the cloud"
         return Edges("the electrodes' field", region, self.centre, remedy)
 
-    def rates(self, body: Body, speed: float) -> dict[str, float]:
+    def rates(self, body: Body, speed: float, position: Floats | None = None) -> dict[str, float]:
         """Angular frequencies, rad/s, a charge moves or is driven with in the field.
 
         speed : m/s, the largest a charge of the kind begins with
+        position : (3, n) m, where charges of the kind are held from the start, if any: the field
+            may be curved more there than elsewhere
         """
         found = {"flight past the electrodes": _DECAY * speed / self._widest}
         slow = 0.0
-        for course, bend in zip(self.courses, self._bends, strict=True):
+        for course, usual in zip(self.courses, self._bends, strict=True):
+            bend = max(usual, self._curved_at(position, course.weight))
             rates = linear_rates({"motion": abs(body.charge_to_mass) * bend}, course.waveform)
             slow += rates["motion"] ** 2
             drive = rates.get("drive", 0.0)
             found["drive"] = max(found.get("drive", 0.0), drive)
         return {**found, "oscillation": math.sqrt(slow)}
+
+    def _curved_at(self, position: Floats | None, weight: Floats) -> float:
+        """Curvature, V/m^2, of a course's potential at all but a few of the places, at the most."""
+        mapped = self.solved.map
+        if position is None:
+            return 0.0
+        places = map_places(mapped.geometry, self.centre, position)
+        return most_curved(mapped.grid, mapped.combined(weight), places)
 
     @cached_property
     def _places(self) -> tuple[Floats, Floats]:

@@ -203,7 +203,7 @@ def test_tables_and_picture_hold_what_was_found(tmp_path: Path) -> None:
     assert row.verdict(0.3) == lines[1]["verdict"]
     with h5py.File(computed.folder / "convergence.h5") as file:
         assert {"answers", "axes", "runs"} == set(file)
-        assert ["step", "seeds"] == list(file.attrs["axes"])
+        assert [b"step", b"seeds"] == list(file.attrs["axes"])
         assert 0.3 == file.attrs["tolerance"]
         assert row.combined == file["answers"]["combined_error"][1]
         assert row.axes["seeds"].error == file["axes/seeds"]["error"][1]

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from pathlib import Path
 
 import numpy as np
 from scipy.integrate import solve_ivp
@@ -10,7 +11,9 @@ from scipy.special import dawsn
 
 from driftwell.record.reader import Run
 from validation.case import COMPUTED, Axis, Case, Check, Published, Reading, computed, halved
+from validation.wells import well
 
+PROTON = 1.6726e-27
 SPEED = 2397368.3960946277
 SPREAD = (
     "M. Reiser, Theory and Design of Charged Particle Beams (1994) sec. 4.3; J. R. Pierce (1949): "
@@ -19,7 +22,16 @@ SPREAD = (
 ENVELOPE = (
     "envelope equation: M. Reiser, Theory and Design of Charged Particle Beams (1994) eq. 4.191"
 )
+MATCHED = (
+    "I. M. Kapchinskij, V. V. Vladimirskij (1959); M. Reiser (1994) sec. 4.3 and "
+    "5.3; J. Struckmeier, "
+    "M. Reiser, Part. Accel. 14 (1984) 227"
+)
 DISTRIBUTIONS = "M. Reiser (1994) sec. 5.3.4: a Gaussian in one plane"
+
+K0, STRENGTH, EMITTANCE = math.radians(60.0), 2e-5, 2e-5
+_square = (STRENGTH + math.sqrt(STRENGTH**2 + 4.0 * K0**2 * EMITTANCE**2)) / (2.0 * K0**2)
+_depressed = EMITTANCE / _square / K0
 
 
 def _ratio(run: Run) -> Reading:
@@ -27,6 +39,13 @@ def _ratio(run: Run) -> Reading:
     covariance = run.moments("beam").covariance
     across = np.sqrt(covariance[:, 0, 0] + covariance[:, 1, 1])
     return Reading(float(across[-1] / across[0]))
+
+
+def _kept(run: Run) -> Reading:
+    """rms size across, m: the root of the mean square over all records."""
+    square = run.moments("beam").covariance[:, (0, 1), (0, 1)].mean(axis=1)
+    scatter = float(square.std()) / math.sqrt(square.size) / (2.0 * math.sqrt(square.mean()))
+    return Reading(math.sqrt(float(square.mean())), scatter)
 
 
 def _envelope(way: float) -> float:
@@ -50,6 +69,10 @@ def _inside(run: Run) -> Reading:
     form = np.einsum("in,ij,jn->n", plane, np.linalg.inv(np.cov(plane)), plane)
     part = float(np.mean(form < 4.0))
     return Reading(part, math.sqrt(part * (1.0 - part) / form.size))
+
+
+def _channel(folder: Path) -> None:
+    well(folder / "channel.csv", PROTON, K0 * SPEED / (2.0 * math.pi), 0.0, 12e-3, 0.12)
 
 
 _fewer = Axis("weight", ("cloud.beam.count=500",))
@@ -80,6 +103,23 @@ CASES: tuple[Case, ...] = (
         (Check("radius, of that at the waist", "1", computed(_envelope(0.1), ENVELOPE), _ratio),),
         (halved("2 ns"), _fewer),
         settings=(f"duration={0.1 / SPEED!r} s",),
+    ),
+    Case(
+        "matched-beam",
+        "beams",
+        "A matched proton beam in an even channel of 60 degrees a metre: its charges "
+        "swing more slowly "
+        "by their own repulsion.",
+        (
+            Check("frequency, of that of one alone", "1", computed(_depressed, MATCHED), "slowed"),
+            Check("rms size across", "mm", computed(0.5e3 * math.sqrt(_square), MATCHED), _kept, 1e3),
+        ),
+        (
+            halved("40 ns"),
+            Axis("weight", ("cloud.beam.count=600",)),
+            Axis("softening", ("coulomb.softening=0.4 mm",)),
+        ),
+        files=_channel,
     ),
     Case(
         "gaussian-beam",

@@ -9,7 +9,7 @@ from scipy.constants import e, epsilon_0
 from scipy.integrate import quad
 from scipy.special import digamma, iv, j1, jn_zeros, kv
 
-from validation.case import FROM_MEMORY, Axis, Case, Check, Published, computed
+from validation.case import FROM_MEMORY, READ, Axis, Case, Check, Published, computed
 from validation.reading import ledger_at_start
 
 K = 1.0 / (4.0 * math.pi * epsilon_0)
@@ -24,12 +24,18 @@ CUBE = (
 )
 COAXIAL = "coaxial cylinders: J. D. Jackson, Classical Electrodynamics (3rd ed.) problem 1.6"
 IMAGES = "J. D. Jackson, Classical Electrodynamics (3rd ed.) ch. 2 and problem 3.23"
+SALT = "the images are a lattice of NaCl, Madelung's constant 1.7475645946: OEIS A085469"
 
 
 def _between_tubes(u: float) -> float:
     """Axial potential between two tubes of radius 1 at -1 and 1, u from the narrow gap."""
     zeros = jn_zeros(0, 400)
     return 1.0 - 2.0 * float(np.sum(np.exp(-zeros * u) / (zeros * j1(zeros))))
+
+
+def _from_middle(u: float) -> float:
+    """The same on either side of the gap: below 0 before it."""
+    return math.copysign(_between_tubes(abs(u)), u)
 
 
 def _in_tube(ratio: float) -> float:
@@ -153,5 +159,19 @@ CASES: tuple[Case, ...] = (
         "The energy of a charge with its image, on the axis of an earthed tube and off it.",
         (_image_energy("energy at 0.6 radii", IMAGES, _in_tube(0.6), e, 10e-3),),
         (Axis("reach", ("images.reach=0.95",)),),
+    ),
+    Case(
+        "image-in-box",
+        "electrodes",
+        "The energy of a charge in the middle of an earthed cube, cut into triangles.",
+        (
+            Check(
+                "energy",
+                "k q^2/a",
+                Published(-0.5 * 1.7475645946, 5e-11, SALT, READ),
+                ledger_at_start("image", 10e-3 / (K * e**2)),
+            ),
+        ),
+        (Axis("panels", ("images.panels=1000",)),),
     ),
 )

@@ -7,12 +7,15 @@ import math
 from scipy.constants import e, epsilon_0
 
 from validation.case import READ, Axis, Case, Check, Published, computed, halved
-from validation.reading import angle_at_end, at_end, ledger_at_start
+from validation.reading import angle_at_end, at_end, closest, ledger_at_start
 
 K = 1.0 / (4.0 * math.pi * epsilon_0)
 COULOMB = "Coulomb's law, F = q1 q2/(4 pi eps0 r^2)"
 ION = 6.6359e-26
 
+HEAD_ON = (
+    "radial Kepler problem, repulsive: Goldstein, Poole & Safko, Classical Mechanics (2002) ch. 3"
+)
 RUTHERFORD = "E. Rutherford, Phil. Mag. 21 (1911) 669; Goldstein et al. (2002) eq. 3.101"
 KEPLER = (
     "Kepler's equation: Goldstein et al. (2002) sec. 3.7 and 3.8; Landau & "
@@ -31,6 +34,18 @@ def _ellipse(turned: float) -> tuple[float, float]:
     return -(math.cos(angle) - 0.5), -math.sqrt(0.75) * math.sin(angle)
 
 
+def _head_on() -> tuple[float, float]:
+    """Least distance (m) and its time (s) of two ions that meet at 60 m/s each from 100 um."""
+    mu = ION / 2.0
+    strength = K * e**2
+    energy = 0.5 * mu * 120.0**2 + strength / 1e-4
+    least = strength / energy
+    ratio = 1e-4 / least
+    fast = math.sqrt(2.0 * energy / mu)
+    time = least / fast * (math.sqrt(ratio * (ratio - 1.0)) + math.acosh(math.sqrt(ratio)))
+    return least, time
+
+
 def _pair_at(distance: float) -> Check:
     return Check(
         f"force at {distance * 1e3:g} mm",
@@ -41,7 +56,9 @@ def _pair_at(distance: float) -> Check:
     )
 
 
+_least, _when = _head_on()
 _x4, _y4 = _ellipse(0.25)
+_nearest, _when_nearest = closest(0, 1)
 
 CASES: tuple[Case, ...] = (
     Case(
@@ -101,6 +118,16 @@ CASES: tuple[Case, ...] = (
         ),
         (Axis("precision", ("coulomb.precision=mixed",)),),
         seeds=5,
+    ),
+    Case(
+        "head-on",
+        "statics",
+        "Two ions fly at each other: how near they come, and when.",
+        (
+            Check("least distance", "nm", computed(1e9 * _least, HEAD_ON), _nearest, 1e9),
+            Check("time of it", "ns", computed(1e9 * _when, HEAD_ON), _when_nearest, 1e9),
+        ),
+        (halved("0.1 ns"),),
     ),
     Case(
         "deflection",

@@ -6,12 +6,12 @@ import math
 from pathlib import Path
 
 import numpy as np
-from scipy.constants import c, e, epsilon_0
+from scipy.constants import atomic_mass, c, e, epsilon_0
 from scipy.integrate import solve_ivp
 
 from driftwell.record.reader import Run
 from validation import mirrors
-from validation.case import Case, Check, Reading, computed, halved
+from validation.case import COMPUTED, Axis, Case, Check, Published, Reading, computed, halved
 from validation.reading import at_end
 from validation.wells import well
 
@@ -31,9 +31,14 @@ KINGDON = (
     "K. H. Kingdon, Phys. Rev. 21 (1923) 408; R. D. Knight, Appl. Phys. Lett. 38 (1981) 221; "
     "the field as it stands there"
 )
+KOHN = "generalised Kohn theorem of a harmonic trap: J. F. Dobson, Phys. Rev. Lett. 73 (1994) 2244"
 PAIR = (
     "two ions of unlike mass in one static well: G. Morigi, H. Walther, Eur. "
     "Phys. J. D 13 (2001) 261"
+)
+IN_CLOUD = (
+    "J. B. Jeffries, S. E. Barlow, G. H. Dunn, Int. J. Mass Spectrom. Ion Process. 54 (1983) 169: "
+    "the trap's own quadratic equation with the field of a ball of charge (from memory)"
 )
 HOMOTHETIC = "R. A. Battye, G. W. Gibbons, P. M. Sutcliffe, Proc. R. Soc. A 459 (2003) 911"
 
@@ -112,6 +117,22 @@ QUADRO_Z = math.sqrt(3e7 * e / 8.6e-25) / (2.0 * math.pi)
 QUADRO_SPEED = 29857.053223204326
 _heavier = 0.25 * (QUADRO_SPEED / c) ** 2 + 0.1875 * (2.0 * math.pi * QUADRO_Z * 5e-3 / c) ** 2
 """What relativity takes from the axial frequency, to first order, of it."""
+
+
+def _in_cloud() -> dict[str, float]:
+    """Shifts (Hz) of an ion's lines in a Penning trap by a ball of 2000 charges of 1.1 mm around it."""
+    wc, wz = e * 0.3 / ION, 2.0 * math.pi * 30e3
+    push = 2000.0 * K * e**2 / (ION * 1.1e-3**3)
+
+    def lines(by: float) -> dict[str, float]:
+        root = math.sqrt(0.25 * wc**2 - 0.5 * wz**2 - by)
+        return {"z": math.sqrt(wz**2 - by), "+": 0.5 * wc + root}
+
+    alone, among = lines(0.0), lines(push)
+    return {name: (among[name] - alone[name]) / (2.0 * math.pi) for name in alone}
+
+
+_shifts = _in_cloud()
 
 
 def _breathing() -> float:
@@ -249,6 +270,15 @@ CASES: tuple[Case, ...] = (
         "in the published error.",
     ),
     Case(
+        "whole-cloud-swings",
+        "traps",
+        "A warm cloud of 60 ions in a harmonic well, let go off its middle: it "
+        "swings as one ion does.",
+        (Check("frequency", "kHz", computed(100.0, KOHN), "swing", 1e-3),),
+        (halved("20 ns"),),
+        files=_isotropic,
+    ),
+    Case(
         "breathing-cluster",
         "traps",
         "Four ions, the tetrahedron they rest in stretched to 1.2 times: after one "
@@ -264,6 +294,63 @@ CASES: tuple[Case, ...] = (
         (halved("20 ns"),),
         files=_isotropic,
         settings=(f"duration={_breathing() / (2.0 * math.pi * 100e3)!r} s",),
+    ),
+    Case(
+        "ball-image-shift",
+        "traps",
+        "A packet of 1e6 charges swings in a well inside an earthed ball: its own image slows it.",
+        (
+            Check(
+                "shift",
+                "Hz",
+                Published(
+                    50e3
+                    * (
+                        math.sqrt(
+                            1.0
+                            - K
+                            * e**2
+                            * 1e6
+                            / (100.0 * atomic_mass * 5e-3**3 * (2.0 * math.pi * 50e3) ** 2)
+                        )
+                        - 1.0
+                    ),
+                    1e-4,
+                    "image in a sphere, for small distances from its middle: J. D. "
+                    "Jackson, Classical "
+                    "Electrodynamics (3rd ed.) sec. 2.2; worked out here",
+                    COMPUTED,
+                ),
+                "shift",
+            ),
+        ),
+        files=lambda folder: well(
+            folder / "well.csv", 100.0 * atomic_mass, 50e3, 50e3, 200e-6, 200e-6
+        ),
+        converged=True,
+    ),
+    Case(
+        "ions-in-cloud",
+        "traps",
+        "Twenty ions in a Penning trap, inside a ball of 2000 others that stay in their places: "
+        "how its charge shifts the lines of their motion.",
+        tuple(
+            Check(
+                name,
+                "Hz",
+                computed(_shifts[line], IN_CLOUD, 1e-9),
+                name,
+            )
+            for name, line in (("along the axis", "z"), ("modified cyclotron", "+"))
+        ),
+        (
+            halved("0.2 us"),
+            Axis("grain", ("cloud.ball.count=1000", "cloud.ball.weight=2")),
+            Axis("softening", ("coulomb.softening=0.1 mm",)),
+        ),
+        seeds=3,
+        remark="The formula is for charge spread evenly. What the grain of 2000 charges does is seen "
+        "from other seeds, from half as many of twice the charge, and from twice the softening.",
     ),
     Case(
         "self-bunching",

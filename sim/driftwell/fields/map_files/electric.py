@@ -7,21 +7,19 @@ paths. What no potential gives is told, and refused where it is much.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from typing import Annotated, Literal
 
 import numpy as np
 
 from driftwell.fields.form import Role
-from driftwell.fields.map_files.form import FittedMap, MapFile, packed_coefficients
+from driftwell.fields.map_files.form import FittedMap, packed_coefficients
 from driftwell.fields.map_files.node_table import node_rules, node_table
 from driftwell.fields.map_files.potential_fit import fitted_potential
 from driftwell.fields.map_files.swing import usual_curvature
+from driftwell.fields.map_files.swinging import SwingingFile
 from driftwell.fields.maps.grid import spline_coefficients
 from driftwell.fields.maps.potential_map import KIND_NUMBERS, MapGeometry
-from driftwell.fields.rates import linear_rates
 from driftwell.forms import Bound, ElectricField, Real, key, spelled
-from driftwell.forms.body import Body
 from driftwell.forms.columns import ColumnError, ColumnRules, Columns
 
 COMPONENTS: dict[MapGeometry, tuple[str, ...]] = {
@@ -32,7 +30,7 @@ COMPONENTS: dict[MapGeometry, tuple[str, ...]] = {
 _RULES = node_rules(COMPONENTS, ElectricField, "r [mm], z [mm], Er [V/m], Ez [V/m]")
 
 
-class ElectricMapFile(MapFile):
+class ElectricMapFile(SwingingFile):
     """Electric field from a file: columns r, z, Er, Ez; x, y, Ex, Ey; or x, y, z, Ex, Ey, Ez."""
 
     kind: Literal["electric-map"]
@@ -74,7 +72,3 @@ class ElectricMapFile(MapFile):
             usual_curvature(table.grid, found),
             f"electric field of up to {spelled(largest, 'V/m')} ({left_over:.1g} of it left over)",
         )
-
-    def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
-        stiffness = abs(body.charge_to_mass) * self.fitted().strength
-        return linear_rates({"oscillation": stiffness}, self.scale)

@@ -12,18 +12,16 @@ docs/numerics/field-maps.md.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from typing import Literal
 
 from driftwell.fields.form import Role
-from driftwell.fields.map_files.form import FittedMap, MapFile, packed_coefficients
+from driftwell.fields.map_files.form import FittedMap, packed_coefficients
 from driftwell.fields.map_files.node_table import node_rules, node_table
 from driftwell.fields.map_files.swing import usual_curvature
+from driftwell.fields.map_files.swinging import SwingingFile
 from driftwell.fields.maps.grid import spline_coefficients
 from driftwell.fields.maps.potential_map import KIND_NUMBERS
-from driftwell.fields.rates import linear_rates
 from driftwell.forms import Voltage, key, spelled
-from driftwell.forms.body import Body
 from driftwell.forms.columns import ColumnRules, Columns
 
 _RULES = node_rules(
@@ -33,7 +31,7 @@ _RULES = node_rules(
 )
 
 
-class PotentialMapFile(MapFile):
+class PotentialMapFile(SwingingFile):
     """Potential from a file, with columns r, z, V or x, y, V or x, y, z, V."""
 
     kind: Literal["potential-map"]
@@ -64,7 +62,3 @@ class PotentialMapFile(MapFile):
             usual_curvature(table.grid, found),
             f"potential of {spelled(values.min(), 'V')} to {spelled(values.max(), 'V')}",
         )
-
-    def rates(self, body: Body, bodies: Mapping[str, Body]) -> dict[str, float]:
-        stiffness = abs(body.charge_to_mass) * self.fitted().strength
-        return linear_rates({"oscillation": stiffness}, self.scale)

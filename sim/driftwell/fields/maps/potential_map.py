@@ -151,6 +151,14 @@ def packed_map(
     )
 
 
+def map_places(geometry: MapGeometry, centre: Point3, position: Floats) -> Floats:
+    """Places (3, n), m, in the coordinates (n, d) of a map whose origin is at `centre`."""
+    x, y, z = position - np.array(centre)[:, None]
+    if geometry == "axisymmetric":
+        return np.stack([np.hypot(x, y), z], axis=1)
+    return np.stack([x, y] if geometry == "planar" else [x, y, z], axis=1)
+
+
 def map_values(packed: PackedField, points: ArrayLike) -> tuple[Floats, Floats]:
     """Potential (n,) and field (n, d) of a packed map, at points (n, d) in its own coordinates."""
     axes = 3 if packed.kind == SPATIAL_MAP else 2

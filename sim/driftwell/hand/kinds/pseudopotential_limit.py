@@ -32,7 +32,7 @@ NUMBER = Formula(
     "N = n (4 pi/3) a^2 c for the spheroid of that density which touches the electrodes",
     "as for the density; the spheroid: O. D. Kellogg, Foundations of Potential Theory (1929). "
     "From memory.",
-    "as for the density; an upper bound, for a warm cloud loses charges well before it",
+    "the density's own range; an upper bound, for a warm cloud loses charges well before it",
 )
 
 
