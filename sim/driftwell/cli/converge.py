@@ -26,6 +26,7 @@ from driftwell.study.convergence.table import CONVERGENCE_CSV, Report
 from driftwell.study.convergence.words import answer_lines, converged, plan_lines
 from driftwell.study.cores import Load, Sharing, shared, usable_cores
 from driftwell.study.engine import Engine
+from driftwell.study.kept_engine import KeptEngine
 from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepProgress, SweepResult
 from driftwell.study.read import Study, is_study
@@ -97,10 +98,14 @@ def _carried_out(
     tell(alone.title)
     cluster = place.cluster()
     pools: list[Pool] = []
+    # a closed engine ends the connection, and the judged run is a sweep of its own
+    kept = None
+    if cluster is not None:
+        kept = KeptEngine(lambda *_: cluster.engine(options.workers))
 
     def engine_of(workers_now: int, threads: int) -> Engine:
-        if cluster is not None:
-            return cluster.engine(options.workers)
+        if kept is not None:
+            return kept.engine(workers_now, threads)
         pools.append(Pool.of_runs(workers_now, threads))
         return pools[-1]
 
@@ -118,6 +123,8 @@ def _carried_out(
     with ExitStack() as holding:
         if cluster is not None:
             holding.callback(cluster.close)
+        if kept is not None:
+            holding.callback(kept.close)
         changed = holding.enter_context(taken(folder, alone.text, alone.scenario_text))
         holding.enter_context(wish.listening())
         if cluster is not None:

@@ -14,6 +14,7 @@ from collections import deque
 from collections.abc import Callable, Mapping
 from contextlib import suppress
 from dataclasses import dataclass
+from itertools import count
 from pathlib import Path
 from queue import Empty, SimpleQueue
 from typing import Any, TypeVar
@@ -49,7 +50,7 @@ class ClusterLostError(EngineError):
 class _Given:
     """A task that the cluster has.
 
-    name : of this try; times : it was given; tries : of those, without the ones that found it busy
+    name : of this try; tries : times it was given, without those that found it busy
     busy : when its folder was first found in use; not_before : when it is given again
     """
 
@@ -57,7 +58,6 @@ class _Given:
     content: Mapping[str, Any]
     future: Any = None
     name: str = ""
-    times: int = 0
     tries: int = 0
     busy: float | None = None
     not_before: float | None = None
@@ -77,6 +77,7 @@ class ClusterEngine:
         self._most = most
         self._most_tries = tries
         self._sweep = uuid4().hex[:8]
+        self._number = count(1)
         self._given: dict[str, _Given] = {}
         self._keys: dict[str, str] = {}
         self._ended: SimpleQueue[str] = SimpleQueue()
@@ -196,10 +197,9 @@ class ClusterEngine:
 
     def _give(self, given: _Given) -> None:
         """Let the cluster try it."""
-        given.times += 1
         given.tries += 1
         given.not_before = None
-        given.name = f"run-{given.task.key[:32]}-{self._sweep}-{given.times}"
+        given.name = f"run-{given.task.key[:32]}-{self._sweep}-{next(self._number)}"
         given.future = self._asked(
             lambda: self._client.submit(
                 computed,

@@ -20,7 +20,8 @@ from driftwell.scenario.settings import apply_settings, setting_text
 from driftwell.scenario.source import raw_table, shown_path
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.cores import Load, Sharing, shared, usable_cores
-from driftwell.study.engine import Done, Engine, Task
+from driftwell.study.engine import Engine
+from driftwell.study.kept_engine import KeptEngine
 from driftwell.study.limit_asked import Asked
 from driftwell.study.limit_noise import Reading
 from driftwell.study.limit_search import Search, Verdict, Wanted
@@ -95,7 +96,7 @@ def find_limit(
     failures: tuple[Failure, ...] = ()
     computed, busy = 0, 0.0
     shares = _Shares(asked, sharing_of)
-    with closing(_Kept(engine_of)) as kept:
+    with closing(KeptEngine(engine_of)) as kept:
         while wanted := search.next():
             observer.looks(search, len(wanted))
             every = [*(each.wanted for each in evaluations), *wanted]
@@ -185,52 +186,3 @@ class _Shares:
                 else self._sharing_of(load, workers, threads)
             )
         return self._settled
-
-
-class _Kept:
-    """An engine that outlives the sweeps it serves."""
-
-    def __init__(self, engine_of: Callable[[int, int], Engine]) -> None:
-        self._engine_of = engine_of
-        self._engine: Engine | None = None
-
-    def engine(self, workers: int, threads: int) -> Engine:
-        """The one engine; the first sweep that needs it says how large it is."""
-        if self._engine is None:
-            self._engine = self._engine_of(workers, threads)
-        return _Lent(self._engine)
-
-    def close(self) -> None:
-        """End its workers."""
-        if self._engine is not None:
-            self._engine.close()
-
-
-class _Lent:
-    """An engine that its borrower cannot close."""
-
-    def __init__(self, engine: Engine) -> None:
-        self._engine = engine
-
-    def room(self) -> int:
-        """As the engine's."""
-        return self._engine.room()
-
-    def submit(self, task: Task) -> None:
-        """As the engine's."""
-        self._engine.submit(task)
-
-    def next(self, timeout: float) -> Done | None:
-        """As the engine's."""
-        return self._engine.next(timeout)
-
-    def under_way(self) -> int:
-        """As the engine's."""
-        return self._engine.under_way()
-
-    def stop(self) -> None:
-        """As the engine's."""
-        self._engine.stop()
-
-    def close(self) -> None:
-        """Nothing: others will use it."""
