@@ -103,7 +103,7 @@ class Search:
             return []
         self._round += 1
         if self._round == 1:
-            return self._once(self.asked.first_places())
+            return self._wanted(self.asked.first_places())
         places = self._chosen()
         left = self.asked.form.most_runs - self.runs
         if self.verdict is None and left <= 0:
@@ -118,9 +118,6 @@ class Search:
             return
         self.places[wanted.place.share] = wanted.place
         self.readings.setdefault(wanted.place.share, []).append(reading)
-
-    def _once(self, places: list[Place]) -> list[Wanted]:
-        return self._wanted(places)
 
     def _wanted(self, places: list[Place]) -> list[Wanted]:
         found = []
@@ -210,7 +207,10 @@ class Search:
             low, high = float(ends[0][0]), float(ends[-1][1])
             if self._narrow(low, high):
                 self.verdict = Verdict(
-                    FOUND, self._values(low, high), self.asked.value(0.5 * (low + high))
+                    FOUND,
+                    self._values(low, high),
+                    self.asked.value(0.5 * (low + high)),
+                    self._rising(bool(known.value[-1] > known.value[0])),
                 )
             else:
                 told = tuple(self._values(float(a), float(b)) for a, b in ends)

@@ -14,7 +14,6 @@ from driftwell.study.limit_run import Searched
 from driftwell.study.limit_search import (
     FOUND,
     NO_CROSSING,
-    NOT_REACHED,
     RUNS_FAILED,
     SEVERAL,
     TOO_NOISY,
@@ -99,37 +98,35 @@ def resolution_told(asked: Asked) -> str:
 
 
 def _verdict(search: Search, verdict: Verdict) -> list[str]:
-    asked = search.asked
-    answer = f'"{asked.form.answer}"'
-    threshold = threshold_told(asked)
-    match verdict.word:
-        case word if word in (FOUND, NOT_REACHED) and verdict.interval is not None:
-            return _interval(search, verdict, verdict.interval)
-        case "no crossing" if verdict.word == NO_CROSSING:
-            return _no_crossing(search, verdict)
-        case "several crossings" if verdict.word == SEVERAL:
-            places = "; ".join(
-                interval_told(asked, *each) for each in verdict.brackets[:_MOST_BRACKETS]
-            )
-            more = len(verdict.brackets) - _MOST_BRACKETS
-            rest = f"; and {more} more" if more > 0 else ""
-            return [
-                f"several crossings: {answer} crosses {threshold} more than once: {places}{rest}",
-                "Narrow `from` and `to` to the one that is meant.",
-            ]
-        case "noise too large" if verdict.word == TOO_NOISY:
-            return [
-                f"noise too large: after {search.runs} runs it cannot be told on which side of "
-                f"{threshold} {answer} is; {_nearest(search)}",
-                "Let each run say more (more charges, a longer average), widen `from` and `to`, or "
-                "allow more with `most_runs`.",
-            ]
-        case _:
-            return [
-                f"no verdict: {search.failed} of {search.runs} runs failed or gave no number for "
-                f"{answer}",
-                "Narrow `from` and `to` to where the scenario can be run and has such an answer.",
-            ]
+    answer, threshold = f'"{search.asked.form.answer}"', threshold_told(search.asked)
+    if verdict.interval is not None:
+        return _interval(search, verdict, verdict.interval)
+    if verdict.word == NO_CROSSING:
+        return _no_crossing(search, verdict)
+    if verdict.word == SEVERAL:
+        return [
+            f"several crossings: {answer} crosses {threshold} more than once: "
+            f"{_places(search.asked, verdict)}",
+            "Narrow `from` and `to` to the one that is meant.",
+        ]
+    if verdict.word == TOO_NOISY:
+        return [
+            f"noise too large: after {search.runs} runs it cannot be told on which side of "
+            f"{threshold} {answer} is; {_nearest(search)}",
+            "Let each run say more (more charges, a longer average), widen `from` and `to`, or "
+            "allow more with `most_runs`.",
+        ]
+    return [
+        f"no verdict: {search.failed} of {search.runs} runs failed or gave no number for {answer}",
+        "Narrow `from` and `to` to where the scenario can be run and has such an answer.",
+    ]
+
+
+def _places(asked: Asked, verdict: Verdict) -> str:
+    """Where it crosses, the first few of many."""
+    told = "; ".join(interval_told(asked, *each) for each in verdict.brackets[:_MOST_BRACKETS])
+    more = len(verdict.brackets) - _MOST_BRACKETS
+    return told + (f"; and {more} more" if more > 0 else "")
 
 
 def _no_crossing(search: Search, verdict: Verdict) -> list[str]:
