@@ -57,9 +57,10 @@ size of a beam only in free flight.
 ## Cautions
 
 Where a scenario holds hazards, `estimate` and `check` end with the usual cautions: voltages above
-1 kV (also those that give charges their energy), electrons above 5 keV and X-rays, light ions above
-2 MeV, magnets above 0.5 T, laser light, gas. driftwell says nothing of safety: follow your local
-codes, and have licensed practitioners plan and check what is built.
+1 kV (also those that give charges their energy), electrons above 5 keV (what they begin with, and
+all that two electrodes or a field may add) and X-rays, light ions above 2 MeV, magnets above 0.5 T,
+laser light, gas. driftwell says nothing of safety: follow your local codes, and have licensed
+practitioners plan and check what is built.
 
 ## The formulas
 """

@@ -43,6 +43,9 @@ def test_the_exit_code_is_the_verdict_and_what_is_there_is_not_computed_again(
     assert printed.out.split("\n\ntable")[0].strip() in (folder / "summary.txt").read_text()
     assert stamps == {each: each.stat().st_mtime_ns for each in (folder / "runs").rglob("*")}
     assert 0 == converge(path, folder, "--no-pictures")
+    assert "changed since the last time" not in capsys.readouterr().err
+    assert 12 == converge(path, folder, "--no-pictures", "--within", "1e-9", "--replicas", "3")
+    assert "changed since the last time; runs that are the same are kept" in capsys.readouterr().err
 
 
 def test_a_run_that_fails_ends_it_with_7(tmp_path: Path, capsys: Printed) -> None:

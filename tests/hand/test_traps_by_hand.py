@@ -163,6 +163,21 @@ def test_the_brillouin_limit_and_the_rotation_in_balance_are_the_published_ones(
     assert slow_rotation(1.0, 0.8) is None
 
 
+def test_the_brillouin_limit_says_how_full_it_is_only_of_a_cloud_that_fills_a_volume(
+    tmp_path: Path,
+) -> None:
+    magnet = {"name": "magnet", "kind": "uniform-magnetic", "strength": "1 T"}
+
+    def why(count: int) -> str:
+        load = cloud(BALL, count=count)
+        return one(
+            scene(tmp_path, species=ions(1e-25), cloud=[load], field=[magnet]), "largest density"
+        ).why
+
+    assert "no cloud of it" in why(1)
+    assert "1/m^3 are there at the start, " in why(1000)
+
+
 def test_a_string_has_its_length_scale_and_falls_out_of_range_when_it_would_fold(
     tmp_path: Path,
 ) -> None:

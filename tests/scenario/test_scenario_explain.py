@@ -27,6 +27,17 @@ size = ["20 mm", "10 mm", "5 mm"]
 remanence = "1.3 T"
 centre = ["100 mm", "0 mm", "0 mm"]
 """
+PLATES = """
+[[electrode]]
+name = "below"
+voltage = "-3 kV"
+shape = [{ kind = "rectangle", low = ["0 mm", "-6 mm"], high = ["20 mm", "-5 mm"] }]
+
+[[electrode]]
+name = "above"
+voltage = { amplitude = "1 kV", offset = "2 kV", frequency = "1 kHz" }
+shape = [{ kind = "rectangle", low = ["0 mm", "5 mm"], high = ["20 mm", "6 mm"] }]
+"""
 DRAG = """
 [[process]]
 name = "helium"
@@ -167,7 +178,19 @@ def test_macro_particles_without_softening_and_runs_without_questions_are_noted(
         (
             TRAP,
             ("cloud.load.species=electron", "cloud.load.motion={ kinetic_energy = '6 keV' }"),
-            ["Voltages up to 6 kV", "Electrons of up to 6 keV"],
+            ["Voltages up to 6 kV", "Electrons of up to 6.18 keV"],
+        ),
+        (TRAP + PLATES, ("cloud.load.species=electron",), ["Voltages up to 3 kV", "Electrons of"]),
+        (
+            TRAP + PLATES,
+            ("cloud.load.species=electron", "cloud.load.motion={ kinetic_energy = '1 keV' }"),
+            ["Voltages up to 3 kV", "Electrons of up to 7 keV"],
+        ),
+        (TRAP + PLATES, (), ["Voltages up to 3 kV"]),
+        (
+            TRAP + PLATES,
+            ("cloud.load.species=electron", "electrode.below.voltage=3 kV"),
+            ["Voltages up to 3 kV"],
         ),
         (TRAP + DRAG, (), ["Gas comes from bottles under pressure"]),
     ],

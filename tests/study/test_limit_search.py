@@ -19,6 +19,7 @@ from driftwell.study.limit_search import (
     SEVERAL,
     TOO_NOISY,
     Search,
+    Wanted,
 )
 from tests.study.sought import asked, searched
 
@@ -221,3 +222,47 @@ def test_the_same_answers_lead_the_same_way() -> None:
         for _ in range(2)
     ]
     assert ways[0] == ways[1]
+
+
+@pytest.mark.parametrize("sign", [1.0, -1.0])
+def test_an_answer_that_flutters_within_the_resolution_has_one_limit_and_one_direction(
+    sign: float,
+) -> None:
+    limit = asked(size=0.05)
+    search = Search(limit)
+    search.next()
+    fluttering = {0.0: -1, 0.25: -1, 0.49: -1, 0.5: 1, 0.51: -1, 0.52: 1, 0.75: 1, 1.0: 1}
+    for share, side in fluttering.items():
+        wanted = Wanted(limit.place(share), 1, 1)
+        search.learn(wanted, Reading(sign * side, 0.01))
+    assert [] == search.next()
+    assert search.verdict is not None
+    assert FOUND == search.verdict.word
+    assert (0.49, 0.52) == pytest.approx(search.verdict.interval, rel=1e-6, abs=0.0)
+    assert search.verdict.rising is (sign > 0.0)
+
+
+@pytest.mark.parametrize(("points", "at_once"), [(6, 1), (7, 3), (12, 3)])
+def test_a_gap_that_no_run_answers_in_is_no_limit(points: int, at_once: int) -> None:
+    search = Search(asked(size=0.001, points=points, at_once=at_once))
+    while wanted := search.next():
+        for each in wanted:
+            x = each.place.value
+            search.learn(each, None if 0.42 < x < 0.62 else Reading(x - 0.5, 0.0))
+    assert search.verdict is not None
+    assert RUNS_FAILED == search.verdict.word
+
+
+def test_a_rare_failure_among_many_runs_does_not_end_a_search() -> None:
+    search = Search(asked(size=0.05))
+    generator = np.random.default_rng(1)
+    while wanted := search.next():
+        for each in wanted:
+            if generator.random() < 0.03:
+                search.learn(each, None)
+                continue
+            value = each.place.value - 0.4 + 0.1 * generator.standard_normal()
+            search.learn(each, Reading(value, 0.1))
+    assert search.failed >= 3
+    assert search.verdict is not None
+    assert FOUND == search.verdict.word

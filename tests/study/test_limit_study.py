@@ -23,12 +23,13 @@ from driftwell.study.explain import explain_study
 from driftwell.study.limit_run import Searched, find_limit
 from driftwell.study.limit_search import FOUND, NO_CROSSING, Search
 from driftwell.study.limit_table import LIMIT_CSV, LIMIT_H5, write_limit
-from driftwell.study.limit_words import limit_lines
+from driftwell.study.limit_words import _verdict, interval_told, limit_lines
 from driftwell.study.progress import SweepProgress
 from driftwell.study.read import Study, read_study
 from driftwell.study.worker import _reply, _Wish
 from tests.study.small_study import study, study_file
 from tests.study.small_sweeps import Heard, Scripted, ended
+from tests.study.sought import asked, searched
 
 LIMIT = """
 [limit]
@@ -114,6 +115,8 @@ def sought(asked: Study, folder: Path, heard: Looked | None = None) -> tuple[Sea
         ('"2 V"', '"0 %"', "above 0 and below 100 %"),
         ('"200 V"', '"100 V"', "must be another value"),
         ("voltage.amplitude", "voltage.height", "unknown key"),
+        ('"field.rods.voltage.amplitude"', '"coulomb.method"', "name a key that does"),
+        ('"field.rods.voltage.amplitude"', '"title"', "holds no number or quantity"),
         ('"field.rods.voltage.amplitude"', '"seed"', "a seed has no limit"),
         ("[limit]", "replicas = 2\n[limit]", "leave out `replicas`"),
         ("resolution = ", "resolutions = ", "resolution"),
@@ -131,8 +134,15 @@ def test_a_fault_of_a_limit_is_told_with_its_line(
 
 def test_a_search_is_said_in_words_before_it_begins(tmp_path: Path) -> None:
     text = " ".join(" ".join(explain_study(study(tmp_path, LIMIT), 100)).split())
-    assert 'from 100 V to 200 V, at which "size" crosses 60 um, to 2 V, at 95 %' in text
+    assert (
+        'from 100 V to 200 V, at which "size" crosses 60 um, to 2 V, with 95 % confidence' in text
+    )
     assert "5 values at equal differences" in text
+
+
+def test_an_interval_is_told_to_a_tenth_of_its_width_or_less() -> None:
+    assert "351.8 to 369.8" == interval_told(asked(0.0, 1000.0), 351.81, 369.77)
+    assert "0.41 to 0.62" == interval_told(asked(), 0.41, 0.6203)
 
 
 def test_ratios_count_by_themselves_where_the_ends_are_far_apart(tmp_path: Path) -> None:
@@ -215,6 +225,22 @@ def test_the_words_of_a_search_name_the_limit_its_interval_and_what_it_took(
     text = " ".join(" ".join(limit_lines(none, 100)).split())
     assert '"size" is above 1 um at all 5 values' in text
     assert "nearest at 200 V" in text
+
+
+def test_an_answer_that_comes_to_the_threshold_and_stays_is_told_apart() -> None:
+    search = searched(lambda x: max(x - 0.5, 0.0), asked())
+    assert search.verdict is not None
+    assert NO_CROSSING == search.verdict.word
+    first, then = _verdict(search, search.verdict)
+    assert "is at or above 0 at all 5 values" in first
+    assert "a little off" in then
+
+
+def test_the_words_of_a_search_that_was_stopped_count_what_was_computed(tmp_path: Path) -> None:
+    found, _ = sought(study(tmp_path, LIMIT), tmp_path / "s")
+    halted = replace(found, verdict=None, evaluations=found.evaluations[:5], computed=7)
+    text = " ".join(" ".join(limit_lines(halted, 100)).split())
+    assert "runs: 7 computed now; 5 in rounds that are whole, " in text
 
 
 def test_a_picture_of_a_search_is_drawn(tmp_path: Path) -> None:

@@ -5,11 +5,12 @@ from __future__ import annotations
 import logging
 import time
 from collections.abc import Callable, Sequence
-from contextlib import ExitStack
+from contextlib import ExitStack, closing
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 
+from driftwell.cli.engines import Engines
 from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
@@ -24,14 +25,12 @@ from driftwell.study.convergence.driver import Outcome, converge
 from driftwell.study.convergence.plan import Cost, Plan, Wanted, judged_alone
 from driftwell.study.convergence.table import CONVERGENCE_CSV, Report
 from driftwell.study.convergence.words import answer_lines, converged, plan_lines
-from driftwell.study.cores import Load, Sharing, shared, usable_cores
 from driftwell.study.engine import Engine
 from driftwell.study.kept_engine import KeptEngine
-from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepProgress, SweepResult
 from driftwell.study.read import Study, is_study
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED, NOT_CONVERGED = 0, 2, 4, 7, 12
 """Exit codes; the last one is a convergence study's own."""
@@ -96,47 +95,30 @@ def _carried_out(
     alone = judged_alone(wanted)
     _refuse_unknown(alone, options.questions)
     tell(alone.title)
-    cluster = place.cluster()
-    pools: list[Pool] = []
-    # a closed engine ends the connection, and the judged run is a sweep of its own
-    kept = None
-    if cluster is not None:
-        kept = KeptEngine(lambda *_: cluster.engine(options.workers))
-
-    def engine_of(workers_now: int, threads: int) -> Engine:
-        if kept is not None:
-            return kept.engine(workers_now, threads)
-        pools.append(Pool.of_runs(workers_now, threads))
-        return pools[-1]
-
-    def kill_workers() -> None:
-        for pool in pools:
-            pool.kill()
-
-    def sharing_of(load: Load, workers: int | None, threads: int | None) -> Sharing:
-        if cluster is not None:
-            return cluster.sharing(load, workers, threads)
-        return shared(load, usable_cores(), workers, threads)
-
-    wish = StopWish(lambda: True, kill_workers)
+    engines = Engines(place.cluster(), options.workers)
+    wish = StopWish(lambda: True, engines.kill)
     display = _Display(wish, options.stop_after)
     with ExitStack() as holding:
-        if cluster is not None:
-            holding.callback(cluster.close)
-        if kept is not None:
-            holding.callback(kept.close)
-        holding.enter_context(taken(folder, alone.text, alone.scenario_text))
-        holding.enter_context(wish.listening())
-        if cluster is not None:
-            cluster.fits(folder / RUNS)
+        changed = holding.enter_context(
+            engines.working_in(folder, alone.text, alone.scenario_text, wish)
+        )
+        engine_of = engines.engine
+        if engines.cluster is not None:
+            # a closed engine ends the connection, and the judged run is a sweep of its own
+            engine_of = holding.enter_context(closing(KeptEngine(engine_of))).engine
+        if changed:
+            tell(
+                f"{folder}: the scenario, its settings or what is asked were changed since the "
+                "last time; runs that are the same are kept, the tables are written anew."
+            )
         with Catalogue(folder / CATALOGUE_FILE) as catalogue:
             outcome = converge(
                 wanted,
                 folder,
                 catalogue,
-                partial(_swept, folder, catalogue, display, options, engine_of, sharing_of),
+                partial(_swept, folder, catalogue, display, options, engine_of, engines),
                 tolerance=options.within,
-                sharing_of=lambda load: sharing_of(load, options.workers, options.threads),
+                sharing_of=lambda load: engines.sharing(load, options.workers, options.threads),
                 told=_tell_plan,
             )
         written = _report(folder, outcome)
@@ -151,7 +133,7 @@ def _swept(
     display: SweepDisplay,
     options: Options,
     engine_of: Callable[[int, int], Engine],
-    sharing_of: Callable[[Load, int | None, int | None], Sharing],
+    engines: Engines,
     study: Study,
 ) -> SweepResult:
     """The runs of a study, computed where they are not there yet."""
@@ -165,7 +147,7 @@ def _swept(
             workers=options.workers,
             threads=options.threads,
             engine_of=engine_of,
-            sharing_of=sharing_of,
+            sharing_of=engines.sharing,
         ).result()
     finally:
         display.ends()

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import logging
 from collections.abc import Sequence
-from contextlib import ExitStack
 from pathlib import Path
 
+from driftwell.cli.engines import Engines
 from driftwell.cli.printing import answer, tell, width
 from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
@@ -17,7 +17,6 @@ from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.cores import Sharing
-from driftwell.study.engine import Engine
 from driftwell.study.limit_run import Searched, find_limit, limit_of
 from driftwell.study.limit_search import (
     FOUND,
@@ -30,10 +29,9 @@ from driftwell.study.limit_search import (
 )
 from driftwell.study.limit_table import LIMIT_CSV, write_limit
 from driftwell.study.limit_words import asked_in_words, limit_lines, progress_told
-from driftwell.study.pool import Pool
 from driftwell.study.progress import Failure, SweepProgress
 from driftwell.study.read import Study, read_study
-from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 
 UNUSABLE, STOPPED = 2, 4
 EXIT_CODES = {
@@ -113,28 +111,10 @@ def _carried_out(
     place: Place,
 ) -> tuple[Searched, bool]:
     """What the search came to, and whether all that was to be written and drawn could be."""
-    cluster = place.cluster()
-    pools: list[Pool] = []
-
-    def engine_of(workers_now: int, threads: int) -> Engine:
-        if cluster is not None:
-            return cluster.engine(workers)
-        pools.append(Pool.of_runs(workers_now, threads))
-        return pools[-1]
-
-    def kill_workers() -> None:
-        for pool in pools:
-            pool.kill()
-
-    wish = StopWish(lambda: True, kill_workers)
+    engines = Engines(place.cluster(), workers)
+    wish = StopWish(lambda: True, engines.kill)
     display = LimitDisplay(wish)
-    with ExitStack() as holding:
-        if cluster is not None:
-            holding.callback(cluster.close)
-        changed = holding.enter_context(taken(folder, study.text, study.scenario_text))
-        holding.enter_context(wish.listening())
-        if cluster is not None:
-            cluster.fits(folder / RUNS)
+    with engines.working_in(folder, study.text, study.scenario_text, wish) as changed:
         if changed:
             tell(
                 f"{folder}: the study or its scenario was changed since the last search; runs of "
@@ -150,8 +130,8 @@ def _carried_out(
                     retry_failed=retry_failed,
                     workers=workers,
                     threads=threads,
-                    engine_of=engine_of,
-                    sharing_of=None if cluster is None else cluster.sharing,
+                    engine_of=engines.engine,
+                    sharing_of=engines.sharing,
                 )
             finally:
                 display.ends()

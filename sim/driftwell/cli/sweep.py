@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import logging
 from collections.abc import Sequence
-from contextlib import ExitStack
 from pathlib import Path
 
+from driftwell.cli.engines import Engines
 from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
@@ -16,13 +16,11 @@ from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.study.catalogue import Catalogue
-from driftwell.study.engine import Engine
-from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, RUNS, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
 
 DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
@@ -72,28 +70,10 @@ def _carried_out(
     place: Place,
 ) -> tuple[SweepResult, bool]:
     """What the sweep came to, and whether all that was to be written and drawn could be."""
-    cluster = place.cluster()
-    pools: list[Pool] = []
-
-    def engine_of(workers_now: int, threads: int) -> Engine:
-        if cluster is not None:
-            return cluster.engine(workers)
-        pools.append(Pool.of_runs(workers_now, threads))
-        return pools[-1]
-
-    def kill_workers() -> None:
-        for pool in pools:
-            pool.kill()
-
-    wish = StopWish(lambda: True, kill_workers)
+    engines = Engines(place.cluster(), workers)
+    wish = StopWish(lambda: True, engines.kill)
     display = SweepDisplay(wish)
-    with ExitStack() as holding:
-        if cluster is not None:
-            holding.callback(cluster.close)
-        changed = holding.enter_context(taken(folder, study.text, study.scenario_text))
-        holding.enter_context(wish.listening())
-        if cluster is not None:
-            cluster.fits(folder / RUNS)
+    with engines.working_in(folder, study.text, study.scenario_text, wish) as changed:
         if changed:
             tell(
                 f"{folder}: the study or its scenario was changed since the last sweep; runs of "
@@ -109,8 +89,8 @@ def _carried_out(
                     retry_failed=retry_failed,
                     workers=workers,
                     threads=threads,
-                    engine_of=engine_of,
-                    sharing_of=None if cluster is None else cluster.sharing,
+                    engine_of=engines.engine,
+                    sharing_of=engines.sharing,
                 ).result()
             finally:
                 display.ends()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from pathlib import Path
 
 from matplotlib.figure import Figure
@@ -23,6 +24,8 @@ _ROW = 0.34
 """Height of a row, inches."""
 _NAME_LONGEST = 34
 _SMALLEST = 1e-16
+_WIDEST = 1e8
+"""Largest error shown over the smallest: what matters would lie on one spot else."""
 _MOST_NUMBERS = 9
 
 
@@ -56,14 +59,15 @@ def convergence_figure(report: Report) -> Figure | None:
     name = printable(report.plan.study.path.name, 60)
     figure = page(
         report.plan.study.title,
-        f"driftwell {__version__}; {name}; open marks: bounds, below the noise",
+        f"driftwell {__version__}; {name}; open marks: bounds, below the noise{_left_out(sizes)}",
         7.6,
         1.5 + _ROW * len(rows),
         key,
     )
     axes = figure.add_subplot()
     axes.set_xscale("log")
-    low, high = min(sizes), max([*sizes, *(_combined(row) for row in rows)])
+    high = max([*sizes, *(_combined(row) for row in rows)])
+    low = max(min(sizes), high / _WIDEST)
     if report.tolerance is not None:
         low, high = min(low, report.tolerance), max(high, report.tolerance)
         axes.axvline(report.tolerance, color=PALE, linestyle="--", linewidth=1.0)
@@ -95,6 +99,12 @@ def convergence_figure(report: Report) -> Figure | None:
     axes.xaxis.set_major_formatter(FuncFormatter(lambda size, _: f"{100.0 * size:g}"))
     axes.set_xlabel("error, % of the value (of the whole, for fractions)")
     return figure
+
+
+def _left_out(sizes: Sequence[float]) -> str:
+    """That some errors are off the scale, where they are."""
+    small = max(sizes) > _WIDEST * min(sizes)
+    return f"; below {1.0 / _WIDEST:g} of the largest: not shown" if small else ""
 
 
 def _scale(row: Convergence) -> float:

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from itertools import permutations
 
 from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE
 from driftwell.fields.form import FieldForm
 from driftwell.forms import Form, spelled
 from driftwell.forms.body import Body
 from driftwell.forms.declared import Choice, Declared, Dimensioned, declared_keys
-from driftwell.forms.waveforms import largest_value
+from driftwell.forms.waveforms import AnyWaveform, Pulses, Ramp, Sine, Step, Table, largest_value
 from driftwell.particles.cloud import Cloud
 from driftwell.particles.source import Source
 from driftwell.particles.species import bodies
@@ -43,7 +44,7 @@ def cautions(scenario: Scenario) -> list[str]:
     magnet = max((_flux_density(field) for field in scenario.field), default=0.0)
     energy = max((_energy(cloud, known) for cloud in light), default=0.0)
     if light:
-        energy = max(energy, voltage * ELEMENTARY_CHARGE)
+        energy += max(voltage, _between_electrodes(scenario)) * ELEMENTARY_CHARGE
     voltage = max([voltage, *(_accelerating(group, known) for group in groups)])
     found = []
     if voltage > HIGH_VOLTAGE:
@@ -95,6 +96,29 @@ def _accelerating(group: Cloud | Source, known: Mapping[str, Body]) -> float:
     """Voltage that would give a cloud or a source its energy, V; 0 beyond :data:`ACCELERATED`."""
     volts = _energy(group, known) / abs(known[group.species].charge)
     return float(f"{volts:.3g}") if volts <= ACCELERATED else 0.0
+
+
+def _between_electrodes(scenario: Scenario) -> float:
+    """Largest voltage between two electrodes, or one and ground, V."""
+    ranges = [(0.0, 0.0), *(_lowest_and_highest(each.voltage) for each in scenario.electrode)]
+    return max((high[1] - low[0] for high, low in permutations(ranges, 2)), default=0.0)
+
+
+def _lowest_and_highest(wave: AnyWaveform) -> tuple[float, float]:
+    match wave:
+        case float() | int():
+            return float(wave), float(wave)
+        case Sine():
+            swing = abs(wave.amplitude)
+            return wave.offset - swing, wave.offset + swing
+        case Ramp() | Step():
+            return min(wave.before, wave.after), max(wave.before, wave.after)
+        case Pulses():
+            return min(wave.low, wave.high), max(wave.low, wave.high)
+        case Table():
+            return min(wave.values), max(wave.values)
+        case _:  # noise
+            return -largest_value(wave), largest_value(wave)
 
 
 def _flux_density(field: FieldForm) -> float:

@@ -172,6 +172,9 @@ def _range(form: Limit, data: Mapping[str, Any]) -> Range | list[Fault]:
         return [Fault((*path, "key"), "", str(fault))]
     if held.path == ("seed",):
         return [Fault((*path, "key"), "", "a seed has no limit; name what is to be limited")]
+    if held.quantity is None and held.number is None and not held.unknown:
+        text = "holds no number or quantity, so that nothing lies between two of its values"
+        return [Fault((*path, "key"), "", f"{text}; name a key that does")]
     found = range_of(as_vary(form, form.spacing == "log"), held, path)
     if isinstance(found, list):
         return found

@@ -36,6 +36,8 @@ believed, where the resolution hangs on them."""
 _DOUBT = 4.0
 """Factor by which these errors are doubted."""
 _MOST_FAILED = 3
+_FAILED_SHARE = 0.1
+"""Both from which on failures end a search: a number, and a part of all runs."""
 _SAME = 0.05
 """Places closer than this part of the interval are one, where noise is what matters."""
 
@@ -103,7 +105,7 @@ class Search:
             return []
         self._round += 1
         if self._round == 1:
-            return self._once(self.asked.first_places())
+            return self._wanted(self.asked.first_places())
         places = self._chosen()
         left = self.asked.form.most_runs - self.runs
         if self.verdict is None and left <= 0:
@@ -119,9 +121,6 @@ class Search:
         self.places[wanted.place.share] = wanted.place
         self.readings.setdefault(wanted.place.share, []).append(reading)
 
-    def _once(self, places: list[Place]) -> list[Wanted]:
-        return self._wanted(places)
-
     def _wanted(self, places: list[Place]) -> list[Wanted]:
         found = []
         for place in places:
@@ -132,7 +131,8 @@ class Search:
 
     def _chosen(self) -> list[Place]:
         """Places to look at next, one for each run; or the verdict is set."""
-        if len(self.readings) < 2 or self.failed >= max(_MOST_FAILED, self.asked.form.points // 2):
+        many = self.failed >= max(_MOST_FAILED, self.asked.form.points // 2)
+        if len(self.readings) < 2 or (many and self.failed > _FAILED_SHARE * self.runs):
             self.verdict = Verdict(RUNS_FAILED)
             return []
         form = self.asked.form
@@ -185,7 +185,9 @@ class Search:
         shares = division(bracket, self._before, self._target(bracket.foretold), count)
         self._before = bracket
         new = self._new(shares) or self._new([0.5 * (bracket.low + bracket.high)])
-        if not new:  # neighbours on the lattice
+        if not new and not self._neighbours(bracket):  # what lies between them was run, and failed
+            self.verdict = Verdict(RUNS_FAILED)
+        elif not new:
             self.verdict = Verdict(
                 FOUND,
                 self._values(low, high),
@@ -194,6 +196,11 @@ class Search:
                 certain=True,
             )
         return new
+
+    def _neighbours(self, bracket: Bracket) -> bool:
+        """Whether no place lies between the two ends."""
+        ends = {self.asked.place(bracket.low).lattice, self.asked.place(bracket.high).lattice}
+        return self.asked.place(0.5 * (bracket.low + bracket.high)).lattice in ends
 
     def _new(self, shares: list[float]) -> list[Place]:
         """Places nothing is known of yet, each once."""
@@ -210,7 +217,10 @@ class Search:
             low, high = float(ends[0][0]), float(ends[-1][1])
             if self._narrow(low, high):
                 self.verdict = Verdict(
-                    FOUND, self._values(low, high), self.asked.value(0.5 * (low + high))
+                    FOUND,
+                    self._values(low, high),
+                    self.asked.value(0.5 * (low + high)),
+                    self._rising(bool(known.value[-1] > known.value[0])),
                 )
             else:
                 told = tuple(self._values(float(a), float(b)) for a, b in ends)

@@ -14,7 +14,6 @@ from driftwell.study.limit_run import Searched
 from driftwell.study.limit_search import (
     FOUND,
     NO_CROSSING,
-    NOT_REACHED,
     RUNS_FAILED,
     SEVERAL,
     TOO_NOISY,
@@ -49,7 +48,8 @@ def asked_in_words(asked: Asked) -> str:
     first, last = (value_told(asked, value) for value in (asked.range.first, asked.range.last))
     return (
         f'{form.setting} from {first} to {last}, at which "{form.answer}" crosses '
-        f"{threshold_told(asked)}, to {resolution_told(asked)}, at {100.0 * form.confidence:g} %"
+        f"{threshold_told(asked)}, to {resolution_told(asked)}, with {100.0 * form.confidence:g} % "
+        "confidence"
     )
 
 
@@ -77,7 +77,7 @@ def value_told(asked: Asked, value: float, digits: int = 6) -> str:
 def interval_told(asked: Asked, low: float, high: float) -> str:
     """An interval with as many digits as its width is worth."""
     size = max(abs(low), abs(high))
-    digits = 3 if high <= low else 3 + max(0, math.ceil(math.log10(size / (high - low))))
+    digits = 3 if high <= low else 2 + max(0, math.ceil(math.log10(size / (high - low))))
     digits = min(max(digits, 3), 12)
     return f"{value_told(asked, low, digits)} to {value_told(asked, high, digits)}"
 
@@ -98,43 +98,54 @@ def resolution_told(asked: Asked) -> str:
 
 
 def _verdict(search: Search, verdict: Verdict) -> list[str]:
+    answer, threshold = f'"{search.asked.form.answer}"', threshold_told(search.asked)
+    if verdict.interval is not None:
+        return _interval(search, verdict, verdict.interval)
+    if verdict.word == NO_CROSSING:
+        return _no_crossing(search, verdict)
+    if verdict.word == SEVERAL:
+        return [
+            f"several crossings: {answer} crosses {threshold} more than once: "
+            f"{_places(search.asked, verdict)}",
+            "Narrow `from` and `to` to the one that is meant.",
+        ]
+    if verdict.word == TOO_NOISY:
+        return [
+            f"noise too large: after {search.runs} runs it cannot be told on which side of "
+            f"{threshold} {answer} is; {_nearest(search)}",
+            "Let each run say more (more charges, a longer average), widen `from` and `to`, or "
+            "allow more with `most_runs`.",
+        ]
+    return [
+        f"no verdict: {search.failed} of {search.runs} runs failed or gave no number for {answer}",
+        "Narrow `from` and `to` to where the scenario can be run and has such an answer.",
+    ]
+
+
+def _places(asked: Asked, verdict: Verdict) -> str:
+    """Where it crosses, the first few of many."""
+    told = "; ".join(interval_told(asked, *each) for each in verdict.brackets[:_MOST_BRACKETS])
+    more = len(verdict.brackets) - _MOST_BRACKETS
+    return told + (f"; and {more} more" if more > 0 else "")
+
+
+def _no_crossing(search: Search, verdict: Verdict) -> list[str]:
     asked = search.asked
-    answer, key = f'"{asked.form.answer}"', asked.form.setting
-    threshold = threshold_told(asked)
-    match verdict.word:
-        case word if word in (FOUND, NOT_REACHED) and verdict.interval is not None:
-            return _interval(search, verdict, verdict.interval)
-        case "no crossing" if verdict.word == NO_CROSSING:
-            side = "above" if verdict.above else "below"
-            return [
-                f"no crossing: {answer} is {side} {threshold} at all {len(search.readings)} values "
-                f"of {key}, {_nearest(search)}",
-                "Widen `from` and `to`; or, where it may cross twice between two of these values, "
-                "give more `points`.",
-            ]
-        case "several crossings" if verdict.word == SEVERAL:
-            places = "; ".join(
-                interval_told(asked, *each) for each in verdict.brackets[:_MOST_BRACKETS]
-            )
-            more = len(verdict.brackets) - _MOST_BRACKETS
-            rest = f"; and {more} more" if more > 0 else ""
-            return [
-                f"several crossings: {answer} crosses {threshold} more than once: {places}{rest}",
-                "Narrow `from` and `to` to the one that is meant.",
-            ]
-        case "noise too large" if verdict.word == TOO_NOISY:
-            return [
-                f"noise too large: after {search.runs} runs it cannot be told on which side of "
-                f"{threshold} {answer} is; {_nearest(search)}",
-                "Let each run say more (more charges, a longer average), widen `from` and `to`, or "
-                "allow more with `most_runs`.",
-            ]
-        case _:
-            return [
-                f"no verdict: {search.failed} of {search.runs} runs failed or gave no number for "
-                f"{answer}",
-                "Narrow `from` and `to` to where the scenario can be run and has such an answer.",
-            ]
+    answer, threshold = f'"{asked.form.answer}"', threshold_told(asked)
+    touched = any(each.value == asked.threshold for r in search.readings.values() for each in r)
+    side = "or ".join(["at "] * touched + ["above" if verdict.above else "below"])
+    lines = [
+        f"no crossing: {answer} is {side} {threshold} at all {len(search.readings)} values of "
+        f"{asked.form.setting}, {_nearest(search)}",
+        "Widen `from` and `to`; or, where it may cross twice between two of these values, give "
+        "more `points`.",
+    ]
+    if touched:
+        lines[1] = (
+            "Where it reaches the threshold and stays there, name one a little off: a value that "
+            "is passed, not met. Else widen `from` and `to`, or give more `points`."
+        )
+    return lines
 
 
 def _interval(search: Search, verdict: Verdict, interval: tuple[float, float]) -> list[str]:
@@ -190,10 +201,14 @@ def _effort(found: Searched) -> list[str]:
     search = found.search
     there = len(found.evaluations) - found.computed
     places = len(search.readings)
-    lines = [
-        f"runs: {len(found.evaluations)} at {places} values ({found.computed} computed now, "
-        f"{max(there, 0)} there already), {in_words(found.busy)} of work"
-    ]
+    if found.verdict is None:
+        runs = f"{found.computed} computed now; {len(found.evaluations)} in rounds that are whole"
+    else:
+        runs = (
+            f"{len(found.evaluations)} at {places} values ({found.computed} computed now, "
+            f"{max(there, 0)} there already)"
+        )
+    lines = [f"runs: {runs}, {in_words(found.busy)} of work"]
     scatter = None if search.pooled is None else search.pooled.scatter
     if scatter is not None and scatter > _SCATTER_TOLD:
         lines.append(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import math
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -12,8 +13,9 @@ import pytest
 
 from driftwell.errors import StudyError
 from driftwell.record.reader import open_run
-from driftwell.report.convergence import draw_convergence
+from driftwell.report.convergence import convergence_figure, draw_convergence
 from driftwell.study.convergence.axes import AXES
+from driftwell.study.convergence.differences import AxisError
 from driftwell.study.convergence.driver import Outcome
 from driftwell.study.convergence.plan import Wanted
 from driftwell.study.convergence.table import Report
@@ -177,8 +179,11 @@ def test_an_answer_that_some_runs_lack_is_told_as_such(
     path = tmp_path / "small.toml"
     path.write_text(text)
     keys = ("duration=2 us", "cloud.load.count=1", f"seed={seed}")
-    row = rows(Computed(tmp_path / "c")(Wanted(path, keys, ("seeds",), 2)))["when"]
-    assert verdict == row.verdict(0.5)
+    outcome = Computed(tmp_path / "c")(Wanted(path, keys, ("seeds",), 2))
+    assert verdict == rows(outcome)["when"].verdict(0.5)
+    told = answer_lines(report_of(outcome), 80)
+    below = told[next(k for k, line in enumerate(told) if line.startswith("when")) + 1 :]
+    assert (verdict == "no value") is (not below)
 
 
 def test_tables_and_picture_hold_what_was_found(tmp_path: Path) -> None:
@@ -206,6 +211,14 @@ def test_tables_and_picture_hold_what_was_found(tmp_path: Path) -> None:
         assert b"finished" == file["runs/run"]["outcome"][4]
     (picture,) = draw_convergence(computed.folder, report_of(outcome))
     assert picture.read_bytes().startswith(b"\x89PNG")
+    tiny = replace(
+        row, axes={**row.axes, "step": AxisError(1e-12, "richardson", "Richardson", 2.0)}
+    )
+    figure = convergence_figure(replace(report_of(outcome), rows=(tiny,)))
+    assert figure is not None
+    low, high = figure.axes[0].get_xlim()
+    assert 1e8 < high / low < 1e9
+    assert any("not shown" in text.get_text() for text in figure.texts)
     text = "\n".join(answer_lines(report_of(outcome), 80))
     assert "warmth: " in text
     assert "seeds" in text

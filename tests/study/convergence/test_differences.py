@@ -67,7 +67,10 @@ def test_without_a_clean_order_the_largest_difference_stands(
 
 def test_values_that_differ_by_rounding_are_unchanged() -> None:
     assert "unchanged" == step([1.0, 1.0, 1.0]).kind
-    assert "unchanged" == step([1.0, 1.0 + 2e-16, 1.0 - 2e-16]).kind
+    rounded = step([1.0, 1.0 + 2e-16, 1.0 - 2e-16])
+    assert ("unchanged", 0.0) == (rounded.kind, rounded.error)
+    once = error_of_one(1.0, 1.0 + 2e-16, 1.0, [1.0], "difference")
+    assert ("unchanged", 0.0) == (once.kind, once.error)
     assert "richardson" == step([1.0 + 1.6e-9, 1.0 + 4e-10, 1.0 + 1e-10]).kind
 
 

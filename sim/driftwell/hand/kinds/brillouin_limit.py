@@ -36,7 +36,9 @@ def values(scene: Scene) -> Values:
             (g.peak_density for g in scene.groups if g.body == body and g.solid), default=0.0
         )
         inside = dense <= limit and len(magnets) == 1
-        why = f"{dense:.3g} 1/m^3 are there at the start, {dense / limit:.2g} of it"
+        why = "no cloud of it fills a volume at the start"
+        if dense > 0.0:
+            why = f"{dense:.3g} 1/m^3 are there at the start, {dense / limit:.2g} of it"
         if dense > limit:
             why += ": the magnet cannot hold them together across"
         yield HandValue(FORMULA, f"largest density of {body.name}", limit, "1/m^3", inside, why)

@@ -93,7 +93,7 @@ def error_of_step(
     largest = max(abs(d[0]), abs(d[1]), abs(third - first))
     noise = math.sqrt(2.0) * chance
     if largest <= ROUNDING * max(map(abs, values)):
-        return AxisError(largest, "unchanged", "unchanged", None, True, noise, d)
+        return _unchanged(noise, d)
     order = observed_order(d, lengths)
     if order is not None and LEAST_ORDER <= order <= scheme_order + 1.0:
         together = largest < PARTED_STEP * noise
@@ -141,7 +141,7 @@ def error_of_one(
     noise = math.sqrt(2.0) * chance
     size = abs(difference)
     if size <= ROUNDING * max(abs(base), abs(refined)):
-        return AxisError(size, "unchanged", "unchanged", None, True, noise, (difference,))
+        return _unchanged(noise, (difference,))
     if PARTED_ONCE * noise <= size <= LOUD * noise:
         return _bound((refined, *more), replicas, chance, (difference,))
     return AxisError(size, "difference", words, None, True, noise, (difference,))
@@ -164,7 +164,7 @@ def error_of_weight(
     size = abs(difference)
     whole = size / (1.0 - left)
     if size <= ROUNDING * max(map(abs, (*base, *finer))):
-        return AxisError(size, "unchanged", "unchanged", None, True, noise, (difference,))
+        return _unchanged(noise, (difference,))
     if size > LOUD * noise:
         words = "difference" if left == 0.0 else "difference, carried on as of order 1"
         return AxisError(whole, "difference", words, None, True, noise, (difference,))
@@ -186,6 +186,11 @@ def error_of_chance(values: Sequence[float]) -> AxisError:
 def nothing_told(answered: int, runs: int) -> AxisError:
     """Where not all runs of an axis have a value."""
     return AxisError(math.nan, "missing", f"only {answered} of {runs} runs have a value")
+
+
+def _unchanged(noise: float, differences: tuple[float, ...]) -> AxisError:
+    """What rounding alone tells apart, which is no error of the axis."""
+    return AxisError(0.0, "unchanged", "unchanged", None, True, noise, differences)
 
 
 def _bound(

@@ -42,6 +42,8 @@ def answer_lines(report: Report, width: int, sign: str = "±") -> list[str]:
         unit = f" {found.unit}" if found.unit else ""
         head = f"{row.answer.name}: {found.value}{error}{unit}; {row.verdict(report.tolerance)}"
         lines += paragraph(head, width, rest="  ")
+        if not math.isfinite(row.answer.value):
+            continue
         lines += paragraph("; ".join(_parts(row)), width, "  ", "  ")
     return lines
 
