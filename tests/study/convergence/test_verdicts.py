@@ -62,9 +62,6 @@ def test_what_is_not_known_is_no_convergence() -> None:
 def test_an_answer_without_any_error_is_exact() -> None:
     assert "exact" == row(math.nan, random=False).verdict(None)
     assert "converged" == row(0.0, value=0.0).verdict(0.01)
-    rounded = AxisError(1e-14, "unchanged", "unchanged")
-    assert "exact, to rounding" == row(math.nan, random=False, step=rounded).verdict(None)
-    assert "dominated by chance" == row(step=rounded).verdict(None)
 
 
 def test_a_bound_that_dominates_asks_for_seeds() -> None:

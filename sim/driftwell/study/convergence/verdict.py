@@ -73,8 +73,6 @@ class Convergence:
         if self.combined == 0.0:
             return "exact"
         parts = self.parts()
-        if parts[CHANCE] == 0.0 and all(each.kind == "unchanged" for each in self.axes.values()):
-            return "exact, to rounding"
         largest = max(parts, key=parts.__getitem__)
         if largest == CHANCE:
             return f"dominated by {CHANCE}"
