@@ -116,7 +116,8 @@ def scenarios(draw: st.DrawFn) -> dict[str, Any]:
     table["species"]["heavy"] = {"mass": "1e-20 kg", "charge": "1 C"}
     for section in ("cloud", "field", "wall", "detector", "question"):
         entry = raw_values(entry_of(section))
-        entries = draw(st.lists(entry, min_size=section in ("cloud", "detector"), max_size=2))
+        least = {"cloud": 1, "detector": 2}.get(section, 0)
+        entries = draw(st.lists(entry, min_size=least, max_size=2))
         table[section] = [fitting(each, i) for i, each in enumerate(entries)]
     for section in ("coulomb", "stepping", "record"):
         table[section] = draw(raw_values(keys[section].holds))
@@ -140,9 +141,13 @@ def entry_of(section: str) -> Declared:
 def fitting(entry: dict[str, Any], number: int) -> dict[str, Any]:
     """An entry with a name of its own that refers to things that are there."""
     table = {**entry, "name": ("first", "second")[number]}
+    if str(entry.get("ask")).startswith("tune"):
+        table["charges"] = 1
     for name, value in entry.items():
-        if name in ("of", "cloud"):
+        if name in ("of", "by", "cloud"):
             table[name] = "first"
+        elif name == "entrance":
+            table[name] = "second"
         elif name == "species":
             table[name] = "heavy"
         elif name == "charge":
