@@ -130,6 +130,20 @@ def test_shift_of_a_frequency_is_against_the_reference_and_for_each_particle() -
     assert near(2.0, rel=1e-5) == other.value
 
 
+def test_a_line_shifted_beyond_a_tenth_is_taken_within_the_reach_and_told_without() -> None:
+    recorded = lines((80e3, 1e-4), (103e3, 1e-6))
+    keys = {"axis": "x", "reference": "100 kHz"}
+    found = asked("frequency-shift", **keys).answer(recorded)
+    assert near(3e3, rel=1e-4) == found.value
+    assert "strongest other line at 80 kHz, 100 times as large" in found.note
+    assert (
+        near(-20e3, rel=1e-6)
+        == asked("frequency-shift", reach="30 kHz", **keys).answer(recorded).value
+    )
+    with pytest.raises(AnswerError, match="no line within 1 kHz of 100 kHz"):
+        asked("frequency-shift", reach="1 kHz", **keys).answer(recorded)
+
+
 @pytest.mark.parametrize(("motion", "times"), [("harmonic", 2.0), ("cyclotron", 1.0)])
 def test_resolving_power_of_a_line_is_that_of_the_time_it_was_traced(
     motion: str, times: float

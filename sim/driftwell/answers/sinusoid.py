@@ -126,13 +126,29 @@ def lines_in(time: Floats, value: Floats) -> list[Line]:
     return sorted(found, key=lambda line: -line.amplitude)
 
 
-def chosen_line(lines: list[Line], near: float | None, length: float) -> Line:
-    """The strongest line, or the strongest within a tenth of `near` (or two bins of it), Hz.
+def other_line(lines: list[Line], line: Line) -> str:
+    """For a note: the strongest line besides the one that was taken; empty without another."""
+    for other in lines:
+        if other is not line:
+            ratio = other.amplitude / line.amplitude
+            times = f"{ratio:.0f}" if ratio >= 10.0 else f"{ratio:.2g}"
+            where = spelled(other.frequency, "Hz", 4)
+            return f"; strongest other line at {where}, {times} times as large"
+    return ""
+
+
+def chosen_line(
+    lines: list[Line], near: float | None, length: float, reach: float | None = None
+) -> Line:
+    """The strongest line, or the strongest near a frequency.
+
+    lines : by their strength; near : Hz, or None for the strongest of all
+    length : s, of the record; reach : Hz on either side; None: a tenth of `near`, or two bins
 
     Raises AnswerError where there is none, or the record of `length` (s) is too short for it.
     """
     if near is not None:
-        reach = max(0.1 * near, 2.0 / length)
+        reach = reach or max(0.1 * near, 2.0 / length)
         found = lines
         lines = [line for line in lines if abs(line.frequency - near) <= reach]
         if not lines:

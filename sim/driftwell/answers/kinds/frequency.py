@@ -19,7 +19,7 @@ from driftwell.answers.answer import Answer
 from driftwell.answers.evidence import Evidence, Needs, TraceRequest
 from driftwell.answers.form import AXES, Axis, QuestionForm, References, cloud_named
 from driftwell.answers.kinds.force import charge_id
-from driftwell.answers.sinusoid import Line, chosen_line, lines_in
+from driftwell.answers.sinusoid import Line, chosen_line, lines_in, other_line
 from driftwell.answers.tracing import Followed, followed, whose
 from driftwell.forms import Count, NonNegative, Positive, Time, checked, key, refuse
 from driftwell.forms import Frequency as FrequencyQuantity
@@ -82,13 +82,7 @@ class Frequency(TracedQuestion):
         traced, lines = self.lines(evidence)
         line = chosen_line(lines, self.near, traced.length)
         note = f"{traced.words()}; amplitude {spelled(line.amplitude, 'm', 3)}"
-        others = [other for other in lines if other is not line]
-        if others:
-            ratio = others[0].amplitude / line.amplitude
-            note += (
-                f"; strongest other line at {spelled(others[0].frequency, 'Hz', 4)}, "
-                f"{ratio:.2g} times as large"
-            )
+        note += other_line(lines, line)
         return self.answered(line.frequency, line.error, note)
 
     def words(self) -> str:

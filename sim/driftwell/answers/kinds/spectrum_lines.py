@@ -2,7 +2,8 @@
 
     shift = f - f_0,  or (f - f_0) / N for each charge                                        (1)
 
-f is found as for `frequency`, f_0 is given: the frequency without the other charges, from the same
+f is the strongest line within a tenth of f_0, or within `reach`; the note tells of a stronger one
+elsewhere. f_0 is given: the frequency without the other charges, from the same
 scenario with `--set coulomb.method=off`, or by theory. N is the number of real particles that were
 there from the start, of all clouds or of the one that `by` names. The error joins that of f with
 `reference_error`. The step changes f and f_0 alike: take both with the same step.
@@ -19,7 +20,7 @@ from driftwell.answers.charges import number_born
 from driftwell.answers.evidence import Evidence
 from driftwell.answers.form import References, cloud_named
 from driftwell.answers.kinds.frequency import TracedQuestion
-from driftwell.answers.sinusoid import chosen_line
+from driftwell.answers.sinusoid import chosen_line, other_line
 from driftwell.answers.tracing import whose
 from driftwell.errors import AnswerError
 from driftwell.forms import Count, Name, NonNegative, Positive, TrueOrFalse, key
@@ -70,6 +71,11 @@ class FrequencyShift(TracedQuestion):
     reference_error: NonNegative[FrequencyQuantity] = key(
         "error of `reference`, one standard deviation", default=0.0, example="0.1 Hz"
     )
+    reach: Positive[FrequencyQuantity] | None = key(
+        "the strongest line so far from `reference` at the most is taken; left out: a tenth of it",
+        default=None,
+        example="20 kHz",
+    )
     per_charge: TrueOrFalse = key(
         "true: over the number of real particles there at the start", default=False
     )
@@ -85,12 +91,12 @@ class FrequencyShift(TracedQuestion):
 
     def answer(self, evidence: Evidence) -> Answer:
         traced, lines = self.lines(evidence)
-        line = chosen_line(lines, self.reference, traced.length)
+        line = chosen_line(lines, self.reference, traced.length, self.reach)
         shift = line.frequency - self.reference
         error = math.hypot(line.error, self.reference_error)
         note = (
             f"{traced.words()}; line at {spelled(line.frequency, 'Hz', 9)}, "
-            f"relative shift {shift / self.reference:.4g}"
+            f"relative shift {shift / self.reference:.4g}{other_line(lines, line)}"
         )
         if not self.per_charge:
             return self.answered(shift, error, note)
