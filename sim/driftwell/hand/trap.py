@@ -12,9 +12,10 @@ x'' + (a - 2 q cos(2 tau)) x = 0 with a = 4 k0/Omega^2 and |q| = 2 |k1|/Omega^2.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
 
 from driftwell.fields.form import FieldForm
 from driftwell.fields.rf_quadrupole import RfQuadrupole
@@ -75,56 +76,73 @@ class Trap:
         return "" if not self.besides else f"{', '.join(self.besides)} act besides"
 
 
+@dataclass(slots=True)
+class _Sum:
+    """What the fields looked at so far come to; arrays along x, y, z, as in :class:`Trap`."""
+
+    static: NDArray[np.float64] = field(default_factory=lambda: np.zeros(3))
+    swing: NDArray[np.float64] = field(default_factory=lambda: np.zeros(3))
+    edge: NDArray[np.float64] = field(default_factory=lambda: np.full(3, math.inf))
+    cyclotron: float = 0.0
+    drives: set[tuple[float, float]] = field(default_factory=set)
+    centres: set[tuple[float, float, float]] = field(default_factory=set)
+
+    def takes_quadrupole(self, form: FieldForm, shares: NDArray[np.float64]) -> bool:
+        """Add a quadrupole, k for a waveform of 1 being `shares`; whether (1) holds it."""
+        wave = form.waveform()
+        level = at_start(wave)
+        if level is None:
+            return False
+        swing = wave.amplitude if isinstance(wave, Sine) else 0.0
+        if level == 0.0 == swing:
+            return True
+        if isinstance(wave, Sine):
+            self.drives.add((wave.frequency, wave.phase))
+        self.static += level * shares
+        self.swing += swing * shares
+        self.edge = np.minimum(self.edge, _edges(form))
+        self.centres.add(form.centre)
+        return True
+
+    def takes_magnet(self, form: FieldForm, ratio: float) -> bool:
+        """Add a magnet along z, for a body of so many C/kg; whether it is one."""
+        if not isinstance(form, UniformMagnetic) or abs(form.along[2]) <= _UPRIGHT:
+            return False
+        strength = at_start(form.strength)
+        if strength is None:
+            return False
+        self.cyclotron -= ratio * strength * math.copysign(1.0, form.along[2])
+        return True
+
+
 def trap_of(scene: Scene, body: Body) -> Trap | None:
     """The trap of one body; None where no quadrupole acts on it at the start."""
-    static, swing = np.zeros(3), np.zeros(3)
-    edge = np.full(3, math.inf)
-    drives: set[tuple[float, float]] = set()
-    centres: set[tuple[float, float, float]] = set()
+    found = _Sum()
     besides = []
-    cyclotron = 0.0
-    for field in scene.scenario.field:
-        shares = _shares(field, scene, body)
+    for form in scene.scenario.field:
+        shares = _shares(form, scene, body)
         if shares is None:
-            if isinstance(field, UniformMagnetic) and abs(field.along[2]) > _UPRIGHT:
-                strength, wave = at_start(field.strength), 0.0
-                if strength is not None:
-                    cyclotron += body.charge_to_mass * strength * math.copysign(1.0, field.along[2])
-                    continue
-            if not _small(field):
-                besides.append(f'field "{field.name}"')
-            continue
-        level, wave = at_start(field.waveform()), 0.0
-        if isinstance(field.waveform(), Sine):
-            sine = field.waveform()
-            assert isinstance(sine, Sine)
-            level, wave = sine.offset, sine.amplitude
-            drives.add((sine.frequency, sine.phase))
-        if level is None:
-            besides.append(f'field "{field.name}"')
-            continue
-        if level == 0.0 == wave:
-            continue
-        static += level * shares
-        swing += wave * shares
-        edge = np.minimum(edge, _edges(field))
-        centres.add(field.centre)
-    if not centres:
+            held = _small(form) or found.takes_magnet(form, body.charge_to_mass)
+        else:
+            held = found.takes_quadrupole(form, shares)
+        if not held:
+            besides.append(f'field "{form.name}"')
+    if not found.centres:
         return None
-    if len(drives) > 1:
+    if len(found.drives) > 1:
         besides.append("drives of several frequencies or phases")
-    if len(centres) > 1:
+    if len(found.centres) > 1:
         besides.append("fields about other centres")
     if scene.scenario.electrode:
         besides.append("the electrodes' field")
-    drive = 2.0 * math.pi * max((frequency for frequency, _ in drives), default=0.0)
+    drive = 2.0 * math.pi * max((frequency for frequency, _ in found.drives), default=0.0)
     return Trap(
         body,
-        _three(static),
-        _three(swing),
+        _three(found.static),
+        _three(found.swing),
         drive,
-        _three(edge),
-        -cyclotron,
+        _three(found.edge),
+        found.cyclotron,
         tuple(besides),
     )
 
