@@ -1,6 +1,6 @@
 """Workers of a cluster killed at random: every run is there in the end, and counted once.
 
-DRIFTWELL_CLUSTER_RUNS is the number of runs; 20 where it is not set.
+DRIFTWELL_CLUSTER_RUNS is the number of runs; 14 where it is not set.
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ from tests.cli.small_runs import started
 from tests.study.small_cluster import cluster
 from tests.study.swept import PATIENCE, study, waited_for
 
-RUNS = int(os.environ.get("DRIFTWELL_CLUSTER_RUNS", "20"))
+RUNS = int(os.environ.get("DRIFTWELL_CLUSTER_RUNS", "14"))
 SETTINGS = ("duration=20 ms", "stepping.step=20 ns", "record.every=1 ms")  # about 0.3 s a run
 
 
