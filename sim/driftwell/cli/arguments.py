@@ -8,10 +8,9 @@ from __future__ import annotations
 import argparse
 
 from driftwell._version import __version__
-from driftwell.cli.argument_types import TIMING, duration, folder, seconds, seed, threads
+from driftwell.cli.argument_types import TIMING, duration, folder, seconds, seed
 from driftwell.cli.converge_arguments import add_converge
 from driftwell.cli.shared_arguments import (
-    add_cluster,
     add_settings,
     add_study_options,
     add_threads,
@@ -104,9 +103,7 @@ def parser() -> argparse.ArgumentParser:
     )
     add_study_options(limit, "limit")
 
-    converge = add_converge(commands, folder, threads, duration)
-    add_cluster(converge)
-    add_settings(converge)
+    add_converge(commands)
 
     check = commands.add_parser(
         "check", help="say what a scenario or study would simulate, or its faults"

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import argparse
 import re
-from collections.abc import Callable
 from typing import Any
+
+from driftwell.cli.argument_types import duration, folder
+from driftwell.cli.shared_arguments import add_cluster, add_settings, add_side_by_side
 
 AXES = ("step", "coulomb", "field-map", "weight", "seeds")
 MOST_REPLICAS = 1000
@@ -24,16 +26,8 @@ not converged within the tolerance asked for; 130 interrupted at once; 1 a defec
 """
 
 
-def add_converge(
-    commands: Any,
-    folder: Callable[[str], str],
-    threads: Callable[[str], int],
-    duration: Callable[[str], float],
-) -> argparse.ArgumentParser:
-    """Add the command; the arguments it shares with others are left to the caller.
-
-    folder, threads, duration : what reads such an argument
-    """
+def add_converge(commands: Any) -> None:
+    """Add the command."""
     parser: argparse.ArgumentParser = commands.add_parser(
         "converge",
         help="say how sure each answer is: repeat the run with everything numerical refined",
@@ -75,31 +69,16 @@ def add_converge(
         metavar="N",
         help="seeds in all, the scenario's own among them (default: %(default)d)",
     )
-    parser.add_argument(
-        "--workers",
-        type=threads,
-        metavar="N",
-        help="runs side by side (default: by number of runs, cores, charges and memory)",
-    )
-    parser.add_argument(
-        "--threads",
-        type=threads,
-        metavar="N",
-        help="threads of each run (default: as for --workers)",
-    )
+    add_side_by_side(parser)
     parser.add_argument(
         "--stop-after",
         type=duration,
         metavar="TIME",
         help="stop by the clock, e.g. after 7h30m; the same command then goes on",
     )
-    parser.add_argument(
-        "--retry-failed",
-        action="store_true",
-        help="start over the runs whose motion could not be continued",
-    )
     parser.add_argument("--no-pictures", action="store_true", help="leave out the picture")
-    return parser
+    add_cluster(parser)
+    add_settings(parser)
 
 
 def share(text: str) -> float:

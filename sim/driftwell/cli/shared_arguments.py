@@ -17,6 +17,14 @@ def add_study_options(parser: argparse.ArgumentParser, what: str) -> None:
         metavar="FOLDER",
         help=f"the {what}'s folder (default: the file's name with -{what}, here)",
     )
+    add_side_by_side(parser)
+    parser.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
+    add_cluster(parser)
+    add_settings(parser)
+
+
+def add_side_by_side(parser: argparse.ArgumentParser) -> None:
+    """How many runs go on at once, and what becomes of those that failed."""
     parser.add_argument(
         "--workers",
         type=threads,
@@ -34,9 +42,6 @@ def add_study_options(parser: argparse.ArgumentParser, what: str) -> None:
         action="store_true",
         help="start over the runs whose motion could not be continued",
     )
-    parser.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
-    add_cluster(parser)
-    add_settings(parser)
 
 
 def add_cluster(parser: argparse.ArgumentParser) -> None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from driftwell.answers.kinds.plasma import CouplingParameter, DebyeLength
 from driftwell.assembly import Assembly
 from driftwell.forms.body import Body
 from driftwell.forms.faults import read_form
@@ -61,6 +62,17 @@ class Scene:
     def group(self, name: str) -> Group | None:
         """The cloud of a name; None where there is none."""
         return next((group for group in self.groups if group.name == name), None)
+
+    def warm_start(self, question: DebyeLength | CouplingParameter) -> tuple[Group, float] | None:
+        """The warm cloud asked about at the start, and its density, 1/m^3; None where its shape
+        says none."""
+        group = self.group(question.of)
+        if question.at != "start" or group is None or group.temperature <= 0.0:
+            return None
+        if not group.solid or not group.peak_known:
+            return None
+        uniform = question.density == "uniform"
+        return group, group.uniform_density if uniform else group.peak_density
 
     def alone(self, group: Group) -> bool:
         """Whether no other cloud or source is there, and charges push each other."""

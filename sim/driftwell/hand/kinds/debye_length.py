@@ -50,13 +50,8 @@ def _value(group: Group, density: float) -> HandValue:
 
 def answer(question: QuestionForm, scene: Scene) -> HandValue | None:
     """At the start, of a cloud whose shape says its density."""
-    if not isinstance(question, DebyeLength) or question.at != "start":
-        return None
-    group = scene.group(question.of)
-    if group is None or not group.solid or not group.peak_known or group.temperature <= 0.0:
-        return None
-    uniform = question.density == "uniform"
-    return _value(group, group.uniform_density if uniform else group.peak_density)
+    asked = scene.warm_start(question) if isinstance(question, DebyeLength) else None
+    return None if asked is None else _value(*asked)
 
 
 KIND = HandKind((FORMULA,), values, answer)
