@@ -133,7 +133,7 @@ def _no_crossing(search: Search, verdict: Verdict) -> list[str]:
     asked = search.asked
     answer, threshold = f'"{asked.form.answer}"', threshold_told(asked)
     touched = any(each.value == asked.threshold for r in search.readings.values() for each in r)
-    side = "or ".join(["at "] * touched + ["above" if verdict.above else "below"])
+    side = ("at or " if touched else "") + ("above" if verdict.above else "below")
     lines = [
         f"no crossing: {answer} is {side} {threshold} at all {len(search.readings)} values of "
         f"{asked.form.setting}, {_nearest(search)}",
