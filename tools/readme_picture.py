@@ -15,11 +15,11 @@ from matplotlib.figure import Figure
 
 from driftwell.particles.state import Particles
 from driftwell.record.reader import Run, open_run
-from driftwell.report.palette import BLACK, BLUE, ORANGE, PALE, VERMILLION
-from driftwell.report.panel import put_across, put_up
-from driftwell.report.ruler import interval, ruler
-from driftwell.report.sheet import Entry, png, sheet, style
-from driftwell.report.time_axis import put_time, time_ruler
+from driftwell.report.paper.palette import BLACK, BLUE, ORANGE, PALE, VERMILLION
+from driftwell.report.paper.panel import put_across, put_up
+from driftwell.report.paper.ruler import interval, ruler
+from driftwell.report.paper.sheet import Entry, png, sheet, style
+from driftwell.report.paper.time_axis import put_time, time_ruler
 from driftwell.run import Progress, run
 from driftwell.scenario.read import read_scenario
 from driftwell.stepping.schedule import Schedule

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli.converge_arguments import AXES, axes, replicas, share
+from driftwell.cli.commands.converge import AXES, axes, replicas, share
 from driftwell.cli.main import main
 from tests.cli.small_runs import SMALL, scenario, settings
 

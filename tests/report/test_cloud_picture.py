@@ -6,11 +6,11 @@ import numpy as np
 import pytest
 from pictured_run import ALL_LOST, NONE, STOPPED, Charges, charges, pictured_run
 
-from driftwell.report.cloud import cloud_picture
-from driftwell.report.names import put_names
-from driftwell.report.projection import MOST_DOTS, common_size, frame, plane_limits
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import sheet, style
+from driftwell.report.paper.names import put_names
+from driftwell.report.paper.projection import MOST_DOTS, common_size, frame, plane_limits
+from driftwell.report.paper.sheet import sheet, style
+from driftwell.report.pictures.cloud import cloud_picture
+from driftwell.report.pictures.scene import scene_of
 
 
 def drawn(run):

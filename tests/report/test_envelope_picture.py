@@ -9,9 +9,9 @@ import pytest
 from pictured_run import charges, pictured_run
 
 from driftwell.constants import ELEMENTARY_CHARGE
-from driftwell.report.envelope import envelope_picture, slice_edges, slice_sizes
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.envelope import envelope_picture, slice_edges, slice_sizes
+from driftwell.report.pictures.scene import scene_of
 
 
 def envelope(run):

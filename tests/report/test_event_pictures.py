@@ -6,10 +6,10 @@ import numpy as np
 import pytest
 from pictured_run import charges, lost, passed, pictured_run
 
-from driftwell.report.arrivals import MOST_DETECTORS, across_axes, arrivals_picture
-from driftwell.report.losses import losses_picture
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.arrivals import MOST_DETECTORS, across_axes, arrivals_picture
+from driftwell.report.pictures.losses import losses_picture
+from driftwell.report.pictures.scene import scene_of
 
 
 def losses(run):

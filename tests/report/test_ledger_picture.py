@@ -7,9 +7,9 @@ import pytest
 from pictured_run import MASS, NONE, charges, pictured_run
 
 from driftwell.constants import ELEMENTARY_CHARGE
-from driftwell.report.ledger import ledger_picture
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.ledger import ledger_picture
+from driftwell.report.pictures.scene import scene_of
 
 
 def drawn(run):

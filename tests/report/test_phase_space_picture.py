@@ -9,9 +9,9 @@ import pytest
 from pictured_run import Charges, charges, pictured_run
 
 from driftwell.constants import SPEED_OF_LIGHT
-from driftwell.report.phase_space import flight_axis, phase_space_picture, rms_ellipse
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.phase_space import flight_axis, phase_space_picture, rms_ellipse
+from driftwell.report.pictures.scene import scene_of
 
 
 def drawn(run):

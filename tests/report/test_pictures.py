@@ -9,8 +9,8 @@ from matplotlib.text import Text
 from pictured_run import NONE, charges, pictured_run
 
 from driftwell.errors import RecordError
-from driftwell.report.pictures import PICTURES, draw, figures
-from driftwell.report.sheet import style
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.run_pictures import PICTURES, draw, figures
 
 ALWAYS = {"cloud", "trajectories", "ledger"}
 MADE = {

@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from driftwell.report.ruler import in_words, interval, prefix_size, ruler, widened
+from driftwell.report.paper.ruler import in_words, interval, prefix_size, ruler, widened
 
 NUMBERS = st.floats(-1e9, 1e9, allow_nan=False)
 

@@ -6,8 +6,8 @@ import pytest
 from matplotlib.colors import to_rgb
 from pictured_run import charges, pictured_run
 
-from driftwell.report.palette import COLOURS, LINES, MARKERS, colour, line_style, marker
-from driftwell.report.sheet import Entry, printable, sheet, style
+from driftwell.report.paper.palette import COLOURS, LINES, MARKERS, colour, line_style, marker
+from driftwell.report.paper.sheet import Entry, printable, sheet, style
 
 
 @pytest.fixture

@@ -7,9 +7,9 @@ import pytest
 from pictured_run import ALL_LOST, MASS, NONE, charges, pictured_run
 
 from driftwell.constants import BOLTZMANN
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
-from driftwell.report.sizes import sizes_picture
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.scene import scene_of
+from driftwell.report.pictures.sizes import sizes_picture
 
 
 def drawn(run):

@@ -7,11 +7,11 @@ import pytest
 from matplotlib.colors import to_rgb
 from matplotlib.contour import QuadContourSet
 
-from driftwell.report.axis_potential import axis_potential
-from driftwell.report.equipotentials import METAL, Drawn, equipotentials
-from driftwell.report.shades import shades
-from driftwell.report.sheet import png, style
-from driftwell.report.surface_charge import charge_along_outlines, charge_in_space
+from driftwell.report.field_pictures.axis_potential import axis_potential
+from driftwell.report.field_pictures.equipotentials import METAL, Drawn, equipotentials
+from driftwell.report.field_pictures.surface_charge import charge_along_outlines, charge_in_space
+from driftwell.report.paper.shades import shades
+from driftwell.report.paper.sheet import png, style
 
 X, Y = np.linspace(-0.03, 0.03, 31), np.linspace(0.0, 0.02, 21)
 RING = Drawn("ring", np.array([[0, 15], [10, 15], [10, 18], [0, 18], [0, 15]]) * 1e-3)

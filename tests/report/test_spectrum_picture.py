@@ -6,9 +6,9 @@ import numpy as np
 import pytest
 from pictured_run import charges, pictured_run
 
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
-from driftwell.report.spectrum import MOST_TRACES, PADDED, spectrum, spectrum_picture
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.scene import scene_of
+from driftwell.report.pictures.spectrum import MOST_TRACES, PADDED, spectrum, spectrum_picture
 
 
 def spectra(run):

@@ -6,9 +6,9 @@ import numpy as np
 import pytest
 from pictured_run import NONE, Charges, charges, pictured_run
 
-from driftwell.report.scene import scene_of
-from driftwell.report.sheet import style
-from driftwell.report.trajectories import FLICKER, TURN, jagged, trajectories_picture
+from driftwell.report.paper.sheet import style
+from driftwell.report.pictures.scene import scene_of
+from driftwell.report.pictures.trajectories import FLICKER, TURN, jagged, trajectories_picture
 
 
 def drawn(run):

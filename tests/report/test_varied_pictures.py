@@ -12,8 +12,8 @@ import pytest
 from matplotlib.figure import Figure
 
 from driftwell.answers.answer import Answer
-from driftwell.report.sheet import style
-from driftwell.report.varied import draw_sweep, sweep_figures
+from driftwell.report.paper.sheet import style
+from driftwell.report.study_pictures.varied import draw_sweep, sweep_figures
 from driftwell.study.catalogue import Row
 from driftwell.study.points import Axis, Case
 from driftwell.study.read import Study

@@ -15,7 +15,7 @@ from driftwell.answers.answer import Answer
 from driftwell.cli.limit import EXIT_CODES
 from driftwell.cli.main import main
 from driftwell.errors import StudyError
-from driftwell.report.limit_picture import draw_limit
+from driftwell.report.study_pictures.limit_picture import draw_limit
 from driftwell.study import limit_search
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.engine import Task

@@ -189,7 +189,7 @@ def _report(folder: Path, outcome: Outcome) -> bool:
 
 def _draw(folder: Path, report: Report) -> bool:
     """Draw the picture and say where it is; whether that could be done."""
-    from driftwell.report.convergence import draw_convergence
+    from driftwell.report.study_pictures.convergence import draw_convergence
 
     logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
     try:

@@ -59,7 +59,7 @@ def _summary(acting: ActingField, loaded: LoadedScenario) -> list[str]:
 
 def _draw(acting: ActingField, loaded: LoadedScenario, folder: Path) -> bool:
     """Draw the pictures and say where they are."""
-    from driftwell.report.solved_field import draw_field
+    from driftwell.report.field_pictures.solved_field import draw_field
 
     logging.getLogger("matplotlib").setLevel(logging.ERROR)
     made = draw_field(

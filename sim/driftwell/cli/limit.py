@@ -155,7 +155,7 @@ def _report(folder: Path, found: Searched) -> bool:
 
 def _draw(folder: Path, found: Searched) -> bool:
     """Draw the search and say where; whether that could be done."""
-    from driftwell.report.limit_picture import draw_limit
+    from driftwell.report.study_pictures.limit_picture import draw_limit
 
     logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
     try:

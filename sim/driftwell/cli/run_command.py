@@ -146,7 +146,7 @@ def _judgement(result: Result, findings: Sequence[Finding]) -> list[str]:
 
 def _draw(folder: Path) -> bool:
     """Draw the pictures and say where they are; whether they could be drawn and told of."""
-    from driftwell.report.pictures import draw
+    from driftwell.report.pictures.run_pictures import draw
 
     logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
     try:

@@ -116,7 +116,7 @@ def _report(study: Study, folder: Path, result: SweepResult) -> bool:
 
 def _draw(folder: Path, table: Table) -> bool:
     """Draw a picture of each question and say where they are; whether that could be done."""
-    from driftwell.report.varied import draw_sweep
+    from driftwell.report.study_pictures.varied import draw_sweep
 
     logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
     try:

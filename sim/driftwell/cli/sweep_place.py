@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import argparse
 import logging
 from dataclasses import dataclass
 from pathlib import Path
@@ -61,3 +62,8 @@ class Place:
             return Cluster(scheduler)
         files = Certificates(Path(self.authority), Path(self.certificate), Path(self.key))
         return Cluster(scheduler, files)
+
+
+def place_of(asked: argparse.Namespace) -> Place:
+    """The place that the options of :func:`driftwell.cli.options.shared.add_cluster` name."""
+    return Place(asked.on, asked.scheduler, asked.tls_ca, asked.tls_cert, asked.tls_key)

@@ -30,10 +30,12 @@ SUM_FLAGS = frozenset({"reassoc", "contract"})
 
 ABOVE = frozenset(
     {
+        "api",
         "assembly",
         "cli",
         "counted.py",
         "estimate.py",
+        "exports",
         "hand",
         "judgement",
         "report",

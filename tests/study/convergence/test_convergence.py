@@ -13,7 +13,7 @@ import pytest
 
 from driftwell.errors import StudyError
 from driftwell.record.reader import open_run
-from driftwell.report.convergence import convergence_figure, draw_convergence
+from driftwell.report.study_pictures.convergence import convergence_figure, draw_convergence
 from driftwell.study.convergence.axes import AXES
 from driftwell.study.convergence.differences import AxisError
 from driftwell.study.convergence.driver import Outcome

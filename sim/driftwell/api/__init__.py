@@ -1,0 +1,1 @@
+"""driftwell from Python: scenarios built in code, run, read, asked and drawn."""

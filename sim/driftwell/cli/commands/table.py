@@ -1,0 +1,18 @@
+"""All commands, in the order in which the help names them."""
+
+from __future__ import annotations
+
+from driftwell.cli.commands import (
+    check,
+    converge,
+    estimate,
+    fields,
+    info,
+    limit,
+    run,
+    schema,
+    sweep,
+    watch,
+)
+
+COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, schema)

@@ -1,0 +1,33 @@
+"""How many threads compiled code may use, settled before it is loaded."""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+
+from driftwell.cli.options.types import threads as number_of_threads
+from driftwell.cli.printing import tell
+
+
+def limited_threads(asked: int | None) -> int:
+    """Settle the number of threads: as asked, as the environment says, or one for each core.
+
+    numba reads its limit once, when it is loaded, and minds another one later: call this before.
+    """
+    threads = _usable(asked)
+    if "numba" not in sys.modules:
+        os.environ["NUMBA_NUM_THREADS"] = str(threads)
+    return threads
+
+
+def _usable(asked: int | None) -> int:
+    cores = len(os.sched_getaffinity(0))
+    if asked is None:
+        try:
+            return number_of_threads(os.environ.get("NUMBA_NUM_THREADS", ""))
+        except argparse.ArgumentTypeError:
+            return cores
+    if asked > cores:
+        tell(f"{asked} threads on {cores} core{'s' * (cores != 1)}: no faster than {cores}.")
+    return asked

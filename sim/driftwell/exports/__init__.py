@@ -1,0 +1,1 @@
+"""What a run recorded, in open formats that other programs read."""

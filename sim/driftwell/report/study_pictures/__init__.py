@@ -1,0 +1,1 @@
+"""The pictures of studies: sweeps, convergence, limits."""
