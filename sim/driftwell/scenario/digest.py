@@ -24,12 +24,7 @@ def digest(scenario: Scenario, folder: Path) -> str:
 
     Comments, order, units and whether a default is written out make no difference.
     """
-    named = [name for cloud in scenario.cloud for name in cloud.files_named()]
-    named += [name for source in scenario.source for name in source.files_named()]
-    named += [name for field in scenario.field for name in field.files_named()]
-    named += [
-        name for each in scenario.electrode for shape in each.shape for name in shape.files_named()
-    ]
+    named = files_named(scenario)
     values = scenario.model_dump(mode="json")
     for section in LATER:
         if not values[section]:
@@ -41,6 +36,17 @@ def digest(scenario: Scenario, folder: Path) -> str:
     content = {"scenario": values, "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(text.encode()).hexdigest()
+
+
+def files_named(scenario: Scenario) -> list[str]:
+    """All files that a scenario names, as it names them."""
+    named = [name for cloud in scenario.cloud for name in cloud.files_named()]
+    named += [name for source in scenario.source for name in source.files_named()]
+    named += [name for field in scenario.field for name in field.files_named()]
+    named += [
+        name for each in scenario.electrode for shape in each.shape for name in shape.files_named()
+    ]
+    return named
 
 
 def file_digest(path: Path) -> str:

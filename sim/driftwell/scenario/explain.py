@@ -30,19 +30,20 @@ def explain(loaded: LoadedScenario) -> list[str]:
     """The lines that `driftwell check` prints of a scenario without faults."""
     scenario = loaded.scenario
     lines = [scenario.title, f"{shown_path(loaded.path)}, digest {loaded.digest[:12]}", ""]
-    for section, rows in groupby(_rows(loaded), key=itemgetter(0)):
-        entries = [(name, words) for _, name, words in rows]
+    for section, those in groupby(rows(loaded), key=itemgetter(0)):
+        entries = [(name, words) for _, name, words in those]
         name_width = min(_MOST_NAME, max(_LEAST_NAME, *(len(name) for name, _ in entries)))
         for i, (name, words) in enumerate(entries):
             lines += _laid_out("" if i else section, name, name_width, words)
-    for heading, sentences in (("Note", list(_notes(loaded))), ("Caution", cautions(scenario))):
+    for heading, sentences in (("Note", list(notes(loaded))), ("Caution", cautions(scenario))):
         if sentences:
             lines.append("")
             lines += _laid_out(heading, "", 0, " ".join(sentences))
     return lines
 
 
-def _rows(loaded: LoadedScenario) -> Iterator[Row]:
+def rows(loaded: LoadedScenario) -> Iterator[Row]:
+    """What is simulated: section, name and words of each thing."""
     scenario = loaded.scenario
     known = bodies(scenario.species)
     yield "duration", "", f"{spelled(scenario.duration, 's')}, seed {scenario.seed}"
@@ -143,7 +144,7 @@ def _record_words(scenario: Scenario) -> str:
     return f"every {spelled(every, 's')}, tracks of {tracks}; snapshots of all {snapshots}"
 
 
-def _notes(loaded: LoadedScenario) -> Iterator[str]:
+def notes(loaded: LoadedScenario) -> Iterator[str]:
     """What is allowed, but may not be meant."""
     scenario = loaded.scenario
     known, setting = bodies(scenario.species), scenario.setting(loaded.folder)
