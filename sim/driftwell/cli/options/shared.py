@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 
-from driftwell.cli.argument_types import file, folder, threads
+from driftwell.cli.options.types import file, folder, threads
 
 
 def add_study_options(parser: argparse.ArgumentParser, what: str) -> None:
