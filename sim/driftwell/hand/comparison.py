@@ -90,11 +90,11 @@ def _sentence(each: Comparison, sign: str) -> str:
     unit = f" {shown.unit}" if shown.unit else ""
     return (
         f"{answer.name}: by hand {number(hand.value, hand.unit)} ({hand.formula.name}); the run "
-        f"{shown.value}{error}{unit}: {_difference(each)}"
+        f"{shown.value}{error}{unit}: {difference(each)}"
     )
 
 
-def _difference(each: Comparison) -> str:
+def difference(each: Comparison) -> str:
     """How far they are apart, and what that means."""
     hand, bars = each.by_hand, each.bars
     size = abs(each.apart)

@@ -9,10 +9,11 @@ from driftwell.cli.commands import (
     fields,
     info,
     limit,
+    report,
     run,
     schema,
     sweep,
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, schema)
+COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, report, schema)

@@ -1,0 +1,21 @@
+"""``driftwell report RUN``: a run or a study as one HTML page."""
+
+from __future__ import annotations
+
+import logging
+
+from driftwell.cli.printing import answer, tell
+from driftwell.cli.run_command import UNUSABLE
+from driftwell.errors import DriftwellError
+from driftwell.report.written import write_report
+
+
+def report_command(folder: str, output: str | None) -> int:
+    """Write the page and say where it is; 0, or 2 with a message."""
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
+    try:
+        made = write_report(folder, output)
+    except DriftwellError as error:
+        tell(str(error))
+        return error.exit_code
+    return 0 if answer([f"report: {made.path} ({made.bytes / 1e6:.1f} MB)"]) else UNUSABLE

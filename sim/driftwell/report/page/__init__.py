@@ -1,0 +1,1 @@
+"""What every HTML report is made with: markup, sections, tables, style, the document itself."""

@@ -1,0 +1,1 @@
+"""The report of a run as one HTML page: one section, one file."""

@@ -1,0 +1,1 @@
+"""Reports of sweeps, convergence and limit studies as one HTML page each."""
