@@ -6,6 +6,7 @@ from driftwell.cli.commands import (
     check,
     converge,
     estimate,
+    export,
     fields,
     info,
     limit,
@@ -16,4 +17,17 @@ from driftwell.cli.commands import (
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, report, schema)
+COMMANDS = (
+    run,
+    sweep,
+    limit,
+    converge,
+    check,
+    estimate,
+    fields,
+    watch,
+    info,
+    report,
+    export,
+    schema,
+)

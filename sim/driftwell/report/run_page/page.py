@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from driftwell.record.reader import Run
 from driftwell.report.page.document import Page, document
+from driftwell.report.page.markup import Markup
+from driftwell.report.page.section import Section
+from driftwell.report.player.player import player
 from driftwell.report.run_page.account import account
 from driftwell.report.run_page.answers import answers
 from driftwell.report.run_page.judgement import judgement
@@ -23,6 +26,8 @@ def run_page(run: Run) -> str:
     """
     matter = matter_of(run)
     header = run.header
+    parts = player(run, matter.again.loaded)
+    motion = [] if parts is None else [Section("motion", "In motion", Markup(parts.markup))]
     return document(
         Page(
             header.title,
@@ -30,6 +35,7 @@ def run_page(run: Run) -> str:
             verdict(matter),
             [
                 answers(matter),
+                *motion,
                 judgement(matter),
                 scenario_words(matter.again, header.scenario, header.settings),
                 pictures(matter.scene),
@@ -38,5 +44,7 @@ def run_page(run: Run) -> str:
                 made(matter),
                 reading_notes(),
             ],
+            () if parts is None else (parts.style,),
+            () if parts is None else (parts.script,),
         )
     )
