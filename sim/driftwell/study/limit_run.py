@@ -119,7 +119,7 @@ def find_limit(
                 return Searched(study, search, tuple(evaluations), None, failures, computed, busy)
             for number, each in enumerate(wanted, len(evaluations) + 1):
                 digest = found.digests.get(number, "")
-                answer = _watched(found.answers.get(digest, ()), asked)
+                answer = watched(found.answers.get(digest, ()), asked)
                 evaluations.append(Evaluation(each, digest, answer))
                 search.learn(each, None if answer is None else Reading(answer.value, answer.error))
             retry_failed = False
@@ -160,7 +160,8 @@ def _cases(study: Study, asked: Asked, seed: int, every: list[Wanted]) -> list[C
     return found
 
 
-def _watched(answers: tuple[Answer, ...], asked: Asked) -> Answer | None:
+def watched(answers: tuple[Answer, ...], asked: Asked) -> Answer | None:
+    """The answer to the question whose value is limited; None where there is none."""
     return next((each for each in answers if each.name == asked.form.answer), None)
 
 

@@ -35,7 +35,7 @@ def limit_lines(found: Searched, width: int) -> list[str]:
     if found.verdict is None:
         lines += paragraph("Stopped on request; the same command goes on.", width, rest="  ")
     else:
-        for sentence in _verdict(search, found.verdict):
+        for sentence in verdict_sentences(search, found.verdict):
             lines += paragraph(sentence, width, rest="  ")
     for sentence in _effort(found):
         lines += paragraph(sentence, width, rest="  ")
@@ -97,7 +97,8 @@ def resolution_told(asked: Asked) -> str:
     return value_told(asked, resolution.size)
 
 
-def _verdict(search: Search, verdict: Verdict) -> list[str]:
+def verdict_sentences(search: Search, verdict: Verdict) -> list[str]:
+    """What was found, and what to do where it was not."""
     answer, threshold = f'"{search.asked.form.answer}"', threshold_told(search.asked)
     if verdict.interval is not None:
         return _interval(search, verdict, verdict.interval)
@@ -186,11 +187,12 @@ def _nearest(search: Search) -> str:
         for at, those in search.readings.items()
     }
     at = min(means, key=lambda share: abs(means[share] - asked.threshold))
-    value = _answer_told(asked, means[at])
+    value = answer_told(asked, means[at])
     return f"nearest at {value_told(asked, search.places[at].value)}: {value}"
 
 
-def _answer_told(asked: Asked, value: float) -> str:
+def answer_told(asked: Asked, value: float) -> str:
+    """A value of the answer with its unit."""
     if asked.answer_unit in PLAIN_UNITS:
         return f"{value:.6g}"
     return spelled(value, asked.answer_unit, 6)

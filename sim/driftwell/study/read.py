@@ -96,7 +96,7 @@ def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
     settings = (*form.settings, *overrides)
     trial = raw_table(scenario_text, shown_path(scenario_path))
     unusable, faults = _set_all(trial, form.settings, overrides)
-    axes, cases, limit, more = _expanded(form, trial, settings)
+    axes, cases, limit, more = expanded(form, trial, settings)
     if unusable or faults or more:
         raise _refused([*faults, *more], data, text, shown, unusable)
     scene = Scene(
@@ -127,7 +127,7 @@ def read_study(path: str | Path, overrides: Sequence[str] = ()) -> Study:
     )
 
 
-def _expanded(
+def expanded(
     form: StudyForm, data: Mapping[str, Any], settings: Sequence[str]
 ) -> tuple[tuple[Axis, ...], tuple[Case, ...], Asked | None, list[Fault]]:
     """Axes, cases, what is searched for, and faults with paths in the study's raw table."""

@@ -68,9 +68,7 @@ def together(clouds: tuple[CloudFacts, ...], moments: list[Moments]) -> Moments:
     energy = mean([found.kinetic_energy for found in moments])
     centre[gone], covariance[gone], energy[gone] = np.nan, np.nan, np.nan
     number = np.asarray(np.stack([found.count for found in moments]).sum(axis=0), np.int64)
-    return Moments(
-        moments[0].time, number, centre, covariance, energy, np.full_like(energy, np.nan)
-    )
+    return Moments(moments[0].time, number, centre, covariance, energy, np.full_like(energy, np.nan))
 
 
 def _group(name: str, found: Moments, some: NDArray[np.int64]) -> dict[str, Any]:

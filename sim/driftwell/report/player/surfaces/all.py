@@ -96,7 +96,9 @@ def _corners(solid: Solid) -> Floats:
     return points
 
 
-def _spine(scenario: Scenario, low: Floats, high: Floats, middle: Floats) -> tuple[Floats, int]:
+def _spine(
+    scenario: Scenario, low: Floats, high: Floats, middle: Floats
+) -> tuple[Floats, int]:
     common = scenario.electrodes
     if scenario.electrode and (common is None or common.geometry == "axisymmetric"):
         return np.array((0.0, 0.0, 0.0) if common is None else common.centre), 2

@@ -1,0 +1,1 @@
+"""Studies read again from their folders, without the files they were made from."""
