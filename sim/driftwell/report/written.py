@@ -53,6 +53,10 @@ def write_report(folder: str | Path, path: str | Path | None = None) -> Written:
 def _text(folder: Path, target: Path) -> str:
     from driftwell.report.run_page.page import run_page
 
+    if (folder / CATALOGUE_FILE).is_file():
+        from driftwell.report.study_page.page import study_page
+
+        return study_page(folder, target)
     if (folder / MASTER).is_file() or (folder / SEGMENTS).is_dir():
         return run_page(open_run(folder))
     raise RecordError(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from driftwell.report.page.copied import to_copy
 from driftwell.report.page.markup import Markup, tag, together
 from driftwell.report.page.numbers import amount, count_of
 from driftwell.report.page.section import Section
@@ -58,16 +59,6 @@ def _again(command: str) -> Markup:
     if not command:
         return tag("p", "It was made by a program, not by the command line.")
     return together(tag("p", "This command makes the same run again:"), to_copy(command, "command"))
-
-
-def to_copy(command: str, name: str) -> Markup:
-    """A command with a button that copies it; `name` : its id in the page."""
-    return tag(
-        "div",
-        tag("pre", tag("code", command, id=name)),
-        tag("button", "Copy", type="button", data_copy=name, hidden=True),
-        class_="copied",
-    )
 
 
 def _record(matter: Matter) -> str:

@@ -14,7 +14,7 @@ from driftwell.scenario.explain import notes, rows
 
 def scenario_words(again: Again, text: str, settings: Sequence[str]) -> Section:
     """What was simulated: one line for each thing; then the file, folded."""
-    parts = [_told(again)]
+    parts = [told(again)]
     if settings:
         given = joined((tag("code", each) for each in settings), ", ")
         parts.append(tag("p", "Set beside the file: ", given))
@@ -25,7 +25,8 @@ def scenario_words(again: Again, text: str, settings: Sequence[str]) -> Section:
     return Section("scenario", "The scenario in words", together(*parts))
 
 
-def _told(again: Again) -> Markup:
+def told(again: Again) -> Markup:
+    """One line for each thing that was simulated, and remarks."""
     if again.loaded is None:
         return tag("p", f"It cannot be put into words: {again.why}. Its text is below.")
     try:
@@ -42,5 +43,5 @@ def _told(again: Again) -> Markup:
             for _, name, words in those
         ]
         entries.append(tag("div", tag("dt", section), tag("dd", joined(what))))
-    told = tag("dl", joined(entries))
-    return together(told, *(tag("p", tag("strong", "Note: "), each) for each in remarks))
+    lines = tag("dl", joined(entries))
+    return together(lines, *(tag("p", tag("strong", "Note: "), each) for each in remarks))

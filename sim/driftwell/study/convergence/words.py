@@ -51,14 +51,20 @@ def answer_lines(report: Report, width: int, sign: str = "±") -> list[str]:
 def _parts(row: Convergence) -> list[str]:
     """Each error as part of the value, and how it was found."""
     told = []
-    for name, error in row.parts().items():
-        how = row.by_chance.how if name == CHANCE else _how(row.axes[name])
-        size = "unknown" if math.isnan(error) else _share(row, error)
+    for name in row.parts():
+        size, how = part_told(row, name)
         told.append(f"{in_words(name)} {size} ({how})")
     return told
 
 
-def _share(row: Convergence, error: float) -> str:
+def part_told(row: Convergence, name: str) -> tuple[str, str]:
+    """One of the errors as part of the value, and how it was found."""
+    error = row.parts()[name]
+    how = row.by_chance.how if name == CHANCE else _how(row.axes[name])
+    return "unknown" if math.isnan(error) else share_told(row, error), how
+
+
+def share_told(row: Convergence, error: float) -> str:
     """An error as part of the value, or in its unit where the value is zero."""
     if error == 0.0:
         return "0"
