@@ -55,6 +55,14 @@ def joined(content: Iterable[Markup | str], between: Markup | str = "") -> Marku
     return together(*parts)
 
 
+def coded(text: str) -> Markup:
+    """Text in which what stands between backticks is set as code."""
+    parts = text.split("`")
+    if len(parts) % 2 == 0:
+        return together(text)
+    return together(*(tag("code", each) if k % 2 else each for k, each in enumerate(parts)))
+
+
 def safe(text: str) -> str:
     """Text as it may stand in a page, or in quotes as the value of an attribute."""
     return escape(readable(text), quote=True)

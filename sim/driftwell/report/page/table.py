@@ -14,36 +14,53 @@ Cell = Markup | str
 class Column:
     """A column; `number` : whether its cells stand to the right."""
 
-    title: Cell
+    title: str
     number: bool = False
 
 
-def table(caption: Cell, columns: Sequence[Column], rows: Sequence[Sequence[Cell]]) -> Markup:
-    """A table whose rows are named by their first cell; it scrolls by itself where it is wide."""
-    head = tag(
-        "tr",
-        joined(
-            tag("th", each.title, scope="col", class_="number" if each.number else None)
-            for each in columns
-        ),
+def table(caption: str, columns: Sequence[Column], rows: Sequence[Sequence[Cell]]) -> Markup:
+    """A table whose rows are named by their first cell; it scrolls by itself where it is wide.
+
+    On a narrow page its rows stand below one another, each cell behind the title of its column;
+    the roles say that it is a table all the same.
+    """
+    head = (
+        tag(
+            "th",
+            each.title,
+            scope="col",
+            role="columnheader",
+            class_="number" if each.number and k else None,
+        )
+        for k, each in enumerate(columns)
     )
-    lines = []
-    for row in rows:
-        cells = [tag("th", row[0], scope="row")]
-        cells += [
-            tag("td", cell, class_="number" if column.number else None)
-            for column, cell in zip(columns[1:], row[1:], strict=True)
-        ]
-        lines.append(tag("tr", joined(cells)))
-    made = tag("table", tag("caption", caption), tag("thead", head), tag("tbody", joined(lines)))
-    return tag("div", made, class_="wide", tabindex="0", role="group", aria_label=_plain(caption))
+    made = tag(
+        "table",
+        tag("caption", caption),
+        tag("thead", tag("tr", joined(head), role="row"), role="rowgroup"),
+        tag("tbody", joined(_row(columns, row) for row in rows), role="rowgroup"),
+        role="table",
+    )
+    words = f"table: {caption}"
+    return tag("div", made, class_="wide", tabindex="0", role="group", aria_label=words)
+
+
+def _row(columns: Sequence[Column], row: Sequence[Cell]) -> Markup:
+    cells = [tag("th", row[0], scope="row", role="rowheader")]
+    cells += [
+        tag(
+            "td",
+            cell,
+            role="cell",
+            data_title=column.title,
+            class_="number" if column.number else None,
+        )
+        for column, cell in zip(columns[1:], row[1:], strict=True)
+    ]
+    return tag("tr", joined(cells), role="row")
 
 
 def listed(rows: Sequence[tuple[Cell, Cell]]) -> Markup:
     """Names and what they stand for."""
     entries = (tag("div", tag("dt", name), tag("dd", what)) for name, what in rows)
     return tag("dl", joined(entries))
-
-
-def _plain(caption: Cell) -> str:
-    return "table" if isinstance(caption, Markup) else f"table: {caption}"

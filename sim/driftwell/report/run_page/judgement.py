@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from driftwell.judgement import Finding
-from driftwell.report.page.markup import NOTHING, Markup, joined, tag, together
+from driftwell.report.page.markup import NOTHING, Markup, coded, joined, tag, together
 from driftwell.report.page.section import Section
 from driftwell.report.run_page.matter import Matter
 from driftwell.scenario.cautions import cautions
@@ -35,8 +35,8 @@ def _finding(finding: Finding) -> Markup:
     return tag(
         "div",
         tag("h3", f"{sign}{finding.name}"),
-        tag("p", f"{finding.words[:1].upper()}{finding.words[1:]}."),
-        tag("p", tag("strong", "What to do: "), finding.remedy),
+        tag("p", coded(f"{finding.words[:1].upper()}{finding.words[1:]}.")),
+        tag("p", tag("strong", "What to do: "), coded(finding.remedy)),
         class_=f"box {'bad' if finding.grave else 'fair'}",
     )
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from driftwell.report.page.markup import coded
 from driftwell.report.page.section import Section
 from driftwell.report.page.table import listed
 
@@ -53,4 +54,8 @@ _NOTES = (
 
 def reading_notes() -> Section:
     """The notes."""
-    return Section("reading", "How to read the numbers", listed(_NOTES))
+    return Section(
+        "reading",
+        "How to read the numbers",
+        listed([(name, coded(words)) for name, words in _NOTES]),
+    )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from driftwell.report.page.document import verdict_box
-from driftwell.report.page.markup import Markup, joined, tag, together
+from driftwell.report.page.markup import Markup, coded, joined, tag, together
 from driftwell.report.page.numbers import amount, count_of
 from driftwell.report.run_page.matter import Matter
 
@@ -54,7 +54,8 @@ def _judged(matter: Matter) -> Markup:
     grave = [each for each in matter.findings if each.grave]
     mild = [each for each in matter.findings if not each.grave]
     parts: list[Markup] = [
-        tag("p", tag("strong", "Doubt: "), f"{each.words}.", class_="doubt") for each in grave
+        tag("p", tag("strong", "Doubt: "), coded(f"{each.words}."), class_="doubt")
+        for each in grave
     ]
     if mild:
         names = joined((tag("strong", each.name) for each in mild[:4]), ", ")

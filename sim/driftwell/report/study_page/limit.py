@@ -69,7 +69,11 @@ def _verdict(found: Searched) -> Markup:
             "Not found yet", "The search was stopped; the same command goes on.", "!", "fair", runs
         )
     first, *more = verdict_sentences(found.search, verdict)
-    word, _, rest = first.partition(": ")
+    word, within, rest = first.partition(", interval ")
+    if within:
+        rest = f"Interval {rest}"
+    else:
+        word, _, rest = first.partition(": ")
     marks = {FOUND: ("✓", "good"), NOT_REACHED: ("!", "fair")}
     mark, kind = marks.get(verdict.word, ("✗", "bad"))
     rest = _ended(rest or first)
@@ -105,8 +109,7 @@ def _asked(found: Searched) -> Section:
         ("resolution asked", resolution_told(asked)),
         ("confidence", f"{100.0 * form.confidence:g} %"),
     ]
-    question = asked_in_words(asked)
-    start = tag("p", f"{question[:1].upper()}{question[1:]}.")
+    start = tag("p", f"Searched for: {asked_in_words(asked)}.")
     return Section("asked", "What was asked", together(start, listed(rows)))
 
 

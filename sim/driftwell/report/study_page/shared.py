@@ -10,7 +10,7 @@ from pathlib import Path
 from driftwell.record.reader import Run
 from driftwell.report.again import read_again
 from driftwell.report.page.copied import to_copy
-from driftwell.report.page.markup import Markup, tag, together
+from driftwell.report.page.markup import Markup, coded, tag, together
 from driftwell.report.page.numbers import count_of
 from driftwell.report.page.section import Section, folded, paragraphs
 from driftwell.report.page.table import Cell, Column, listed, table
@@ -51,7 +51,7 @@ def failed(failures: Sequence[Failure]) -> list[Section]:
     parts = [table("Runs without an answer.", columns, rows)]
     if more > 0:
         parts.append(tag("p", f"{count_of(more, 'other reason')} left out here."))
-    parts.append(tag("p", "`--retry-failed` with the same command starts them over."))
+    parts.append(tag("p", coded("`--retry-failed` with the same command starts them over.")))
     return [Section("failed", "What failed, and why", together(*parts))]
 
 
