@@ -23,7 +23,7 @@ from driftwell.study.explain import explain_study
 from driftwell.study.limit_run import Searched, find_limit
 from driftwell.study.limit_search import FOUND, NO_CROSSING, Search
 from driftwell.study.limit_table import LIMIT_CSV, LIMIT_H5, write_limit
-from driftwell.study.limit_words import _verdict, interval_told, limit_lines
+from driftwell.study.limit_words import interval_told, limit_lines, verdict_sentences
 from driftwell.study.progress import SweepProgress
 from driftwell.study.read import Study, read_study
 from driftwell.study.worker import _reply, _Wish
@@ -231,7 +231,7 @@ def test_an_answer_that_comes_to_the_threshold_and_stays_is_told_apart() -> None
     search = searched(lambda x: max(x - 0.5, 0.0), asked())
     assert search.verdict is not None
     assert NO_CROSSING == search.verdict.word
-    first, then = _verdict(search, search.verdict)
+    first, then = verdict_sentences(search, search.verdict)
     assert "is at or above 0 at all 5 values" in first
     assert "a little off" in then
 

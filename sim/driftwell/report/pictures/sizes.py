@@ -119,7 +119,7 @@ def put_quantity(
     """Draw a quantity of each cloud along each axis: into one panel, or one for each axis."""
     curves: list[list[Curve]] = [[] for _ in AXES]
     for cloud, moments in sized:
-        several = _where(moments, moments.count >= LEAST)
+        several = records_where(moments, moments.count >= LEAST)
         value = quantity(cloud, several)
         for axis in range(3):
             look = (
@@ -149,7 +149,7 @@ def put_counts(
     put_time(axes, times, kept[0][1].time)
 
 
-def _where(moments: Moments, chosen: NDArray[np.bool_]) -> Moments:
+def records_where(moments: Moments, chosen: NDArray[np.bool_]) -> Moments:
     """The records where `chosen` is true."""
     return Moments(
         moments.time[chosen],

@@ -5,6 +5,7 @@ from __future__ import annotations
 from html import escape
 from typing import Any
 
+from driftwell.report.page.markup import safe
 from driftwell.report.player.packing import page_json
 from driftwell.report.player.ways import Ways
 
@@ -22,7 +23,7 @@ HELP = (
 
 def player_markup(data: dict[str, Any], ways: Ways) -> str:
     """HTML of the player; every text from the run is escaped."""
-    title = escape(str(data["title"]))
+    title = safe(str(data["title"]))
     return f"""<div class="dwp" id="dwp" data-time="0" data-playing="false" data-frames="0">
 <noscript><p class="dwp-note">The player needs JavaScript, which is switched off here. The pictures
 of this report do without.</p></noscript>
@@ -78,7 +79,7 @@ def shown_words(data: dict[str, Any], ways: Ways) -> str:
     if ways.source == "snapshots":
         says += " They are taken from snapshots, since few charges were tracked."
     missing = "".join(
-        f" Not drawn: {escape(str(name))}: {escape(str(why))}." for name, why in data["missing"]
+        f" Not drawn: {safe(str(name))}: {safe(str(why))}." for name, why in data["missing"]
     )
     return escape(says) + missing
 

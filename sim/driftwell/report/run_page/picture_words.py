@@ -9,9 +9,13 @@ from numpy.typing import NDArray
 
 from driftwell.report.page.numbers import amount, count_of, electronvolts, residual
 from driftwell.report.pictures.scene import Scene
-from driftwell.report.pictures.sizes import LEAST, rms_sizes, temperatures
+from driftwell.report.pictures.sizes import LEAST, records_where, rms_sizes, temperatures
+from driftwell.report.pictures.spectrum import spectrum, traced_motions
 
 Seen = Callable[[Scene], str]
+
+_MOST_LINES = 6
+"""Traced motions that are told."""
 
 
 def captioned(name: str, scene: Scene) -> tuple[str, str]:
@@ -46,15 +50,14 @@ def _phase_space(scene: Scene) -> str:
 def _sizes(scene: Scene) -> str:
     told = []
     for cloud, moments in zip(scene.clouds, scene.moments, strict=True):
-        known = np.flatnonzero(moments.count >= LEAST)
-        if not known.size:
+        known = records_where(moments, moments.count >= LEAST)
+        if not known.time.size:
             continue
-        first, last = int(known[0]), int(known[-1])
-        size, warmth = rms_sizes(cloud, moments), temperatures(cloud, moments)
-        began, ended = (amount(moments.time[k], "s") for k in (first, last))
+        size, warmth = rms_sizes(cloud, known), temperatures(cloud, known)
+        began, ended = (amount(float(known.time[k]), "s") for k in (0, -1))
         told.append(
-            f"{cloud.name}: rms size {_axes(size[first], 'm')} at {began}, {_axes(size[last], 'm')}"
-            f" at {ended}; temperature {_axes(warmth[first], 'K')}, then {_axes(warmth[last], 'K')}"
+            f"{cloud.name}: rms size {_axes(size[0], 'm')} at {began}, {_axes(size[-1], 'm')}"
+            f" at {ended}; temperature {_axes(warmth[0], 'K')}, then {_axes(warmth[-1], 'K')}"
             f"; charges left {moments.count[0]}, then {moments.count[-1]}."
         )
     return " ".join(["Rms sizes, temperatures and number of charges in time.", *told])
@@ -65,9 +68,13 @@ def _envelope(scene: Scene) -> str:
 
 
 def _spectrum(scene: Scene) -> str:
-    names = ", ".join(scene.run.header.traces[:6])
-    more = len(scene.run.header.traces) - 6
-    return f"Spectra of the traced motions: {names}{f' and {more} more' if more > 0 else ''}."
+    told = []
+    for name, time, value in traced_motions(scene.run)[:_MOST_LINES]:
+        if time.size:
+            frequency, size = spectrum(time, value)
+            strongest = amount(float(frequency[size.argmax()]), "Hz")
+            told.append(f"{name}: strongest line at {strongest}.")
+    return " ".join(["Amplitude over frequency of each traced motion.", *told])
 
 
 def _trajectories(scene: Scene) -> str:
