@@ -41,7 +41,7 @@ CONTRAST = """() => {
 @pytest.fixture(scope="module")
 def page(run_of: Callable[[str], Run], tmp_path_factory: pytest.TempPathFactory) -> Path:
     path = tmp_path_factory.mktemp("shown") / "report.html"
-    path.write_text(run_page(run_of("beam")), "utf-8")
+    path.write_text(run_page(run_of("trap")), "utf-8")
     return path
 
 

@@ -40,8 +40,21 @@ def small(tmp_path_factory: pytest.TempPathFactory) -> Run:
     return carried_out(tmp_path_factory.mktemp("page"), text, "field.rods.radius=10 mm")
 
 
-def test_the_page_of_a_run_is_well_formed_and_holds_what_the_run_says(small: Run) -> None:
-    page = Checked(run_page(small))
+@pytest.fixture(scope="module")
+def text(small: Run) -> str:
+    """Its page."""
+    return run_page(small)
+
+
+@pytest.fixture(scope="module")
+def page(text: str) -> Checked:
+    """Its page, read by a parser."""
+    return Checked(text)
+
+
+def test_the_page_of_a_run_is_well_formed_and_holds_what_the_run_says(
+    small: Run, page: Checked
+) -> None:
     assert [] == page.faults
     for each in (
         "Eight ions in a trap",
@@ -67,28 +80,26 @@ def test_the_page_of_a_run_is_well_formed_and_holds_what_the_run_says(small: Run
     assert str(small.folder) not in page.text.replace(small.header.command, "")
 
 
-def test_every_picture_has_words_with_numbers(small: Run) -> None:
-    images = Checked(run_page(small)).images
-    assert 5 <= len(images)
-    assert all(len(words) > 40 and any(c.isdigit() for c in words) for words in images)
+def test_every_picture_has_words_with_numbers(page: Checked) -> None:
+    assert 5 <= len(page.images)
+    assert all(len(words) > 40 and any(c.isdigit() for c in words) for words in page.images)
 
 
-def test_the_losses_stand_in_coulombs_and_joules(small: Run) -> None:
+def test_the_losses_stand_in_coulombs_and_joules(small: Run, page: Checked) -> None:
     losses = small.losses()
     assert 0 < len(losses)
     energy = losses["kinetic_energy"].mean() / 1.602176634e-19
-    text = Checked(run_page(small)).text
+    text = page.text
     assert f"bore load {len(losses)} {len(losses)} " in text
     assert any(
         f"{energy / scale:.4g} {unit}" in text for scale, unit in ((1e-3, "meV"), (1.0, "eV"))
     )
 
 
-def test_the_same_run_gives_the_same_bytes(small: Run, tmp_path: Path) -> None:
-    first = write_report(small.folder, tmp_path / "a.html")
-    write_report(small.folder, tmp_path / "b.html")
-    assert first.path.stat().st_size == first.bytes
-    assert first.path.read_bytes() == (tmp_path / "b.html").read_bytes()
+def test_the_same_run_gives_the_same_bytes(small: Run, text: str, tmp_path: Path) -> None:
+    written = write_report(small.folder, tmp_path / "again.html")
+    assert written.path.stat().st_size == written.bytes
+    assert text.encode() == written.path.read_bytes()
 
 
 def test_nothing_that_a_user_wrote_becomes_part_of_the_page(tmp_path: Path) -> None:
