@@ -2,7 +2,7 @@
 // what lies before them is a breath of colour and thin edges.
 const KIND_NUMBER = { electrode: 1, wall: 2, detector: 3 };
 const KIND_NAME = ["", "electrode", "wall", "detector"];
-const VEIL = { electrode: 26, wall: 20, detector: 44 };   // alpha of what is seen through, of 255
+const VEIL = { electrode: 26, wall: 36, detector: 40 };   // alpha of what is seen through, of 255
 const LIGHT = [-0.35, 0.6, 0.72];                         // to the right, upwards, towards the eye
 const CORNER = [0, 0, 0], CORNERS = [[0, 0, 0, 0], [0, 0, 0, 0], [0, 0, 0, 0]];
 
@@ -115,12 +115,13 @@ function putEdges(each, camera, theme, back, front) {
   const colour = word(each.kind === "detector" ? theme.accent : theme.edge);
   for (let e = 0; e < edges.length / 4; e++) {
     const i = edges[4 * e], j = edges[4 * e + 1], one = edges[4 * e + 2], other = edges[4 * e + 3];
-    if (e >= sharp && facing[one] === facing[other]) continue;
+    const cut = each.front[one] !== each.front[other];
+    if (e >= sharp && !cut && facing[one] === facing[other]) continue;
     if (seen[3 * i + 2] < camera.near || seen[3 * j + 2] < camera.near) continue;
     const isFront = each.front[one] && each.front[other];
     const layer = isFront ? front : back;
     // an edge lies on its surface: a little nearer, so that this does not hide it
-    const closer = 1.004;
+    const closer = 1.012;
     const draw = isFront ? drawVeiled : drawLine;
     draw(layer, seen[3 * i], seen[3 * i + 1], seen[3 * j], seen[3 * j + 1], colour, isFront ? 120 : 170,
       isFront ? 120 : 170, layer.sheet.depth, closer / seen[3 * i + 2], closer / seen[3 * j + 2]);

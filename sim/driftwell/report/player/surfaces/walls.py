@@ -46,11 +46,11 @@ def wall_mesh(wall: WallForm | DetectorForm, low: Floats, high: Floats) -> Mesh:
         return hollow_box(np.array(wall.centre), 0.5 * np.array(wall.size))
     if isinstance(wall, Sphere):
         return ball(np.array(wall.centre), wall.radius)
-    reach = _reach(wall.at, wall.normal, low, high) if isinstance(wall, Plane | PlaneDetector) else 0
+    if not isinstance(wall, Plane | PlaneDetector):
+        raise TypeError(type(wall).__name__)
+    reach = _reach(wall.at, wall.normal, low, high)
     if isinstance(wall, PlaneDetector):
         return disc(wall.at, wall.normal, 0.0, wall.radius or reach)
-    if not isinstance(wall, Plane):
-        raise TypeError(type(wall).__name__)
     if wall.slit is not None:
         return slit_plane(wall, max(reach, 2.0 * wall.slit.width))
     hole = 0.0 if wall.hole is None else wall.hole.radius
@@ -161,8 +161,9 @@ def _half_length(wall: Cylinder, axis: int, low: Floats, high: Floats) -> float:
 
 def _reach(at: tuple[float, ...], normal: tuple[float, ...], low: Floats, high: Floats) -> float:
     """Radius within which an endless plane is drawn: all that happens, seen across it."""
-    corners = np.array([(x, y, z) for x in (low[0], high[0]) for y in (low[1], high[1])
-                        for z in (low[2], high[2])])
+    corners = np.array(
+        [(x, y, z) for x in (low[0], high[0]) for y in (low[1], high[1]) for z in (low[2], high[2])]
+    )
     first, second, _ = plane_axes(normal)
     away = corners - np.array(at)
     reach = float(np.hypot(away @ first, away @ second).max())
