@@ -128,7 +128,7 @@ def write_record(folder: Path, count: int, records: int, tracks: int) -> None:
     losses = rows("losses", len(lost))
     losses["id"], losses["time"], losses["weight"] = lost, late[lost], 1.0
     losses["cloud"] = lost >= half
-    for row, k in zip(losses, lost, strict=True):
+    for row, k in zip(losses, lost.tolist(), strict=True):
         swing = 1.0 + 0.4 * np.sin(1.2e6 * late[k] + 0.2 * phase[k])
         row["position"][:2] = start[:2, k] * swing + speed[:2, k] * late[k]
         row["position"][2] = start[2, k] + speed[2, k] * late[k]

@@ -109,7 +109,8 @@ def _spine(scenario: Scenario, low: Floats, high: Floats, middle: Floats) -> tup
     others = np.delete(spans, longest)
     if spans[longest] > 2.0 * float(others.max()):
         return middle, longest
-    axes = [axis for wall in (*scenario.wall, *scenario.detector) for axis in _axes_of(wall)]
+    walls: list[WallForm | DetectorForm] = [*scenario.wall, *scenario.detector]
+    axes = [axis for wall in walls for axis in _axes_of(wall)]
     return middle, axes[0] if axes else -1
 
 

@@ -25,7 +25,7 @@ def finite_corners(wall: WallForm | DetectorForm) -> Floats:
     if isinstance(wall, Cylinder):
         half = np.full(3, wall.radius)
         half["xyz".index(wall.axis)] = 0.0 if wall.length is None else 0.5 * wall.length
-        return np.array(wall.centre) + np.stack([-half, half])
+        return np.asarray(np.array(wall.centre) + np.stack([-half, half]))
     if isinstance(wall, Box):
         return np.array(wall.centre) + 0.5 * np.stack([-np.array(wall.size), np.array(wall.size)])
     if isinstance(wall, Sphere):
@@ -156,7 +156,8 @@ def _half_length(wall: Cylinder, axis: int, low: Floats, high: Floats) -> float:
     if wall.length is not None:
         return 0.5 * wall.length
     centre = wall.centre[axis]
-    return max(1.15 * max(high[axis] - centre, centre - low[axis]), 1.2 * wall.radius)
+    beyond = float(max(high[axis] - centre, centre - low[axis]))
+    return max(1.15 * beyond, 1.2 * wall.radius)
 
 
 def _reach(at: tuple[float, ...], normal: tuple[float, ...], low: Floats, high: Floats) -> float:
