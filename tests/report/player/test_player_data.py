@@ -192,7 +192,8 @@ def test_an_electrode_whose_file_is_missing_is_named_and_the_others_are_drawn(
     found = surfaces_of(scenario, loaded.folder, -reach, reach, np.zeros(3))
     assert (("gone", "its file is missing: gone.stl"),) == found.missing
     ball = next(each for each in found.drawn if each.name == "rod")
-    assert pytest.approx(1e-3, rel=1e-6, abs=0.0) == np.linalg.norm(ball.vertices, axis=1)
+    # a drawing may miss its outline by 0.2 % of the extent, and corners of facets lie inside
+    assert pytest.approx(1e-3, rel=0.01, abs=0.0) == np.linalg.norm(ball.vertices, axis=1)
 
 
 def test_a_fine_mesh_becomes_coarse_without_losing_its_size() -> None:
