@@ -9,8 +9,8 @@ from pathlib import Path
 import pytest
 
 from driftwell import open_run
-from driftwell.cli import main as cli
 from driftwell.cli.main import main
+from driftwell.cli.thread_limit import usable_threads
 from tests.cli.small_runs import command, scenario, settings
 
 
@@ -136,7 +136,7 @@ def test_threads_follow_the_argument_then_the_environment_then_the_cores(
             monkeypatch.delenv("NUMBA_NUM_THREADS", raising=False)
         else:
             monkeypatch.setenv("NUMBA_NUM_THREADS", said)
-        assert expected == cli._usable_threads(asked)
+        assert expected == usable_threads(asked)
 
 
 def test_more_threads_than_cores_are_used_and_called_no_faster(tmp_path: Path) -> None:

@@ -15,13 +15,14 @@ def limited_threads(asked: int | None) -> int:
 
     numba reads its limit once, when it is loaded, and minds another one later: call this before.
     """
-    threads = _usable(asked)
+    threads = usable_threads(asked)
     if "numba" not in sys.modules:
         os.environ["NUMBA_NUM_THREADS"] = str(threads)
     return threads
 
 
-def _usable(asked: int | None) -> int:
+def usable_threads(asked: int | None) -> int:
+    """The number of threads, by argument, environment and cores, in this order."""
     cores = len(os.sched_getaffinity(0))
     if asked is None:
         try:

@@ -6,6 +6,7 @@ from driftwell.cli.commands import (
     check,
     converge,
     estimate,
+    export,
     fields,
     info,
     limit,
@@ -15,4 +16,4 @@ from driftwell.cli.commands import (
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, schema)
+COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, export, schema)
