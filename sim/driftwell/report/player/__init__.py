@@ -1,1 +1,1 @@
-"""The player: a run's charges moving in space among its surfaces, in a page that needs no network."""
+"""The player: charges moving in space among their surfaces, in a page that needs no network."""

@@ -55,7 +55,7 @@ def together(clouds: tuple[CloudFacts, ...], moments: list[Moments]) -> Moments:
     share = real / total
 
     def mean(parts: list[Floats]) -> Floats:
-        known = np.stack([np.where(part == part, part, 0.0) for part in parts])
+        known = np.stack([np.where(np.isnan(part), 0.0, part) for part in parts])
         return np.asarray(np.einsum("ck...,ck->k...", known, share))
 
     centre = mean([found.centre for found in moments])
@@ -68,7 +68,9 @@ def together(clouds: tuple[CloudFacts, ...], moments: list[Moments]) -> Moments:
     energy = mean([found.kinetic_energy for found in moments])
     centre[gone], covariance[gone], energy[gone] = np.nan, np.nan, np.nan
     number = np.asarray(np.stack([found.count for found in moments]).sum(axis=0), np.int64)
-    return Moments(moments[0].time, number, centre, covariance, energy, np.full_like(energy, np.nan))
+    return Moments(
+        moments[0].time, number, centre, covariance, energy, np.full_like(energy, np.nan)
+    )
 
 
 def _group(name: str, found: Moments, some: NDArray[np.int64]) -> dict[str, Any]:

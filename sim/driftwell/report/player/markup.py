@@ -15,9 +15,9 @@ VIEWS = (("oblique", "oblique"), ("x", "x"), ("y", "y"), ("z", "z"))
 FITS = (("all", "all"), ("charges", "charges"))
 
 HELP = (
-    "Drag to turn, drag with Shift or two fingers to shift, wheel or pinch (or +/-) to zoom. With the"
-    " picture in focus: Space plays, the left and right arrows go from record to record, Home and"
-    " End to the first and last, W A S D turn, O X Y Z choose the view, F fits all."
+    "Drag to turn, with Shift or two fingers to shift; wheel or pinch, or + and -, to zoom. With"
+    " the picture in focus: Space plays, the left and right arrows go from record to record, Home"
+    " and End to the first and last, W A S D turn, O X Y Z choose the view, F fits all."
 )
 
 
@@ -40,6 +40,7 @@ of this report do without.</p></noscript>
 <output id="dwp-clock" for="dwp-time"></output>
 <label>speed <select id="dwp-speed">{_options(SPEEDS, 1.0, " ×")}</select></label>
 <label><input type="checkbox" id="dwp-loop"> loop</label>
+<button type="button" id="dwp-reset">Reset</button>
 </div>
 <div class="dwp-row">
 <label>colour by <select id="dwp-colour">{_options(COLOURS, "cloud")}</select></label>
@@ -50,7 +51,6 @@ of this report do without.</p></noscript>
 <label><input type="checkbox" id="dwp-follow"> follow</label>
 <label id="dwp-surfaces-label"><input type="checkbox" id="dwp-surfaces" checked> surfaces</label>
 <label><input type="checkbox" id="dwp-stretch"> stretched</label>
-<button type="button" id="dwp-reset">Reset</button>
 </div>
 <p class="dwp-words" id="dwp-words" aria-live="polite"></p>
 <p class="dwp-note">{shown_words(data, ways)}</p>

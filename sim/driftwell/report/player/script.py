@@ -11,27 +11,27 @@ import numpy as np
 from matplotlib.colors import to_hex
 
 SCRIPTS = (
-    "bytes.js",
-    "words.js",
-    "ways.js",
-    "camera.js",
-    "theme.js",
-    "lines.js",
-    "triangles.js",
-    "marks.js",
-    "surfaces.js",
-    "trails.js",
-    "overlay.js",
-    "stage.js",
-    "clock.js",
-    "legend.js",
-    "charts.js",
-    "controls.js",
-    "pointer.js",
-    "start.js",
+    "record/bytes.js",
+    "record/words.js",
+    "record/ways.js",
+    "picture/camera.js",
+    "picture/theme.js",
+    "picture/lines.js",
+    "picture/triangles.js",
+    "picture/marks.js",
+    "picture/surfaces.js",
+    "picture/trails.js",
+    "picture/overlay.js",
+    "picture/stage.js",
+    "panel/clock.js",
+    "panel/legend.js",
+    "panel/charts.js",
+    "panel/controls.js",
+    "panel/pointer.js",
+    "panel/start.js",
 )
 """In the order in which they need each other."""
-STYLES = ("player.css", "charts.css")
+STYLES = ("panel/player.css", "panel/charts.css")
 TONES = 64
 LIGHT_END, DARK_END = (0.0, 0.86), (0.2, 1.0)
 """Parts of the scale of colours that stand out from a light and from a dark page."""
@@ -63,4 +63,4 @@ def _tones() -> dict[str, list[str]]:
 
 
 def _file(name: str) -> str:
-    return files("driftwell.report.player").joinpath("browser", name).read_text("utf-8")
+    return files("driftwell.report.player").joinpath("browser", *name.split("/")).read_text("utf-8")

@@ -11,12 +11,15 @@ from numpy.typing import NDArray
 
 from driftwell.electrodes.bodies import ENCLOSURE, bodies_of
 from driftwell.errors import DriftwellError
-from driftwell.geometry.solid import Extruded, Mesh, Solid
+from driftwell.geometry.solid import Mesh, Solid
 from driftwell.geometry.surface_points import surface_points
 from driftwell.report.player.surfaces.bodies import body_mesh
 from driftwell.report.player.surfaces.mesh import Drawable, drawable
 from driftwell.report.player.surfaces.walls import finite_corners, wall_mesh
 from driftwell.scenario.model import Scenario
+from driftwell.walls.cylinder import Cylinder
+from driftwell.walls.form import DetectorForm, WallForm
+from driftwell.walls.plane import Plane, PlaneDetector
 
 Floats = NDArray[np.float64]
 
@@ -47,8 +50,10 @@ def surfaces_of(
     low, high : (3,) m, corners of where the charges go; middle : (3,) m, where most of them are
     """
     bodies, missing = _bodies(scenario, folder)
-    walls = [(wall.name, "wall", wall) for wall in scenario.wall]
-    walls += [(each.name, "detector", each) for each in scenario.detector]  # type: ignore[misc]
+    walls: list[tuple[str, str, WallForm | DetectorForm]] = [
+        *((wall.name, "wall", wall) for wall in scenario.wall),
+        *((each.name, "detector", each) for each in scenario.detector),
+    ]
     corners = [low[None], high[None]]
     corners += [_corners(solid) for _, solid in bodies]
     corners += [finite_corners(wall) for _, _, wall in walls]
@@ -90,15 +95,10 @@ def _corners(solid: Solid) -> Floats:
     """Points that hold a body; of an endless one those at its middle."""
     if isinstance(solid, Mesh):
         return solid.vertices
-    points = surface_points(solid)
-    if isinstance(solid, Extruded) and np.isinf(solid.half_length):
-        points = points.copy()
-    return points
+    return surface_points(solid)
 
 
-def _spine(
-    scenario: Scenario, low: Floats, high: Floats, middle: Floats
-) -> tuple[Floats, int]:
+def _spine(scenario: Scenario, low: Floats, high: Floats, middle: Floats) -> tuple[Floats, int]:
     common = scenario.electrodes
     if scenario.electrode and (common is None or common.geometry == "axisymmetric"):
         return np.array((0.0, 0.0, 0.0) if common is None else common.centre), 2
@@ -109,7 +109,16 @@ def _spine(
     others = np.delete(spans, longest)
     if spans[longest] > 2.0 * float(others.max()):
         return middle, longest
-    axes: Sequence[int] = [
-        "xyz".index(wall.axis) for wall in scenario.wall if hasattr(wall, "axis")
-    ]
+    walls: list[WallForm | DetectorForm] = [*scenario.wall, *scenario.detector]
+    axes = [axis for wall in walls for axis in _axes_of(wall)]
     return middle, axes[0] if axes else -1
+
+
+def _axes_of(wall: WallForm | DetectorForm) -> Sequence[int]:
+    """The axis about which a surface looks alike, where it is one of the three."""
+    if isinstance(wall, Cylinder):
+        return ["xyz".index(wall.axis)]
+    if isinstance(wall, Plane | PlaneDetector):
+        part = np.abs(wall.normal) / np.linalg.norm(wall.normal)
+        return [int(np.argmax(part))] if part.max() > 0.9 else []
+    return []

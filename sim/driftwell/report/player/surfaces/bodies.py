@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -47,13 +48,13 @@ def angular(drawn: Outline) -> Outline:
     """The outline as straight lines, as few as keep its shape."""
     near = FLAT * extent_of(drawn)
     loops = []
-    for low, high in zip(drawn.loops[:-1], drawn.loops[1:], strict=True):
+    for low, high in pairwise(drawn.loops):
         points = [drawn.pieces[low, 0:2]]
         for piece in drawn.pieces[low:high]:
             parts = max(1, math.ceil(abs(float(piece[6])) / (math.pi / 18.0)))
             points.extend(places(piece, np.linspace(0.0, 1.0, parts + 1))[1:])
         kept = _thinned(np.array(points), near)
-        loops.append([line(tuple(a), tuple(b)) for a, b in zip(kept[:-1], kept[1:], strict=True)])
+        loops.append([line(tuple(a), tuple(b)) for a, b in pairwise(kept)])
     return outline(loops, drawn.solid)
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -75,7 +76,7 @@ def _smooth(triangles: Ints, across: Floats, facing: Floats) -> Floats:
     vertex = triangles.reshape(-1)
     order = np.argsort(vertex, kind="stable")
     bounds = np.flatnonzero(np.diff(vertex[order], prepend=-1, append=-2))
-    for low, high in zip(bounds[:-1], bounds[1:], strict=True):
+    for low, high in pairwise(bounds):
         corners = order[low:high]
         own = corners // 3
         alike = facing[own] @ facing[own].T > math.cos(SHARP)

@@ -25,7 +25,7 @@ def finite_corners(wall: WallForm | DetectorForm) -> Floats:
     if isinstance(wall, Cylinder):
         half = np.full(3, wall.radius)
         half["xyz".index(wall.axis)] = 0.0 if wall.length is None else 0.5 * wall.length
-        return np.array(wall.centre) + np.stack([-half, half])
+        return np.asarray(np.array(wall.centre) + np.stack([-half, half]))
     if isinstance(wall, Box):
         return np.array(wall.centre) + 0.5 * np.stack([-np.array(wall.size), np.array(wall.size)])
     if isinstance(wall, Sphere):
@@ -46,11 +46,11 @@ def wall_mesh(wall: WallForm | DetectorForm, low: Floats, high: Floats) -> Mesh:
         return hollow_box(np.array(wall.centre), 0.5 * np.array(wall.size))
     if isinstance(wall, Sphere):
         return ball(np.array(wall.centre), wall.radius)
-    reach = _reach(wall.at, wall.normal, low, high) if isinstance(wall, Plane | PlaneDetector) else 0
+    if not isinstance(wall, Plane | PlaneDetector):
+        raise TypeError(type(wall).__name__)
+    reach = _reach(wall.at, wall.normal, low, high)
     if isinstance(wall, PlaneDetector):
         return disc(wall.at, wall.normal, 0.0, wall.radius or reach)
-    if not isinstance(wall, Plane):
-        raise TypeError(type(wall).__name__)
     if wall.slit is not None:
         return slit_plane(wall, max(reach, 2.0 * wall.slit.width))
     hole = 0.0 if wall.hole is None else wall.hole.radius
@@ -156,13 +156,15 @@ def _half_length(wall: Cylinder, axis: int, low: Floats, high: Floats) -> float:
     if wall.length is not None:
         return 0.5 * wall.length
     centre = wall.centre[axis]
-    return max(1.15 * max(high[axis] - centre, centre - low[axis]), 1.2 * wall.radius)
+    beyond = float(max(high[axis] - centre, centre - low[axis]))
+    return max(1.15 * beyond, 1.2 * wall.radius)
 
 
 def _reach(at: tuple[float, ...], normal: tuple[float, ...], low: Floats, high: Floats) -> float:
     """Radius within which an endless plane is drawn: all that happens, seen across it."""
-    corners = np.array([(x, y, z) for x in (low[0], high[0]) for y in (low[1], high[1])
-                        for z in (low[2], high[2])])
+    corners = np.array(
+        [(x, y, z) for x in (low[0], high[0]) for y in (low[1], high[1]) for z in (low[2], high[2])]
+    )
     first, second, _ = plane_axes(normal)
     away = corners - np.array(at)
     reach = float(np.hypot(away @ first, away @ second).max())

@@ -55,9 +55,10 @@ function energyBar(data, theme) {
   const bar = element("div", undefined, "dwp-tones");
   bar.style.background = `linear-gradient(to right, ${theme.tones.map(cssColour).join(",")})`;
   const { factor, unit } = prefixed(Math.max(Math.abs(low), Math.abs(high)), "eV");
-  const digits = high > low ? Math.min(8, Math.max(3, Math.ceil(Math.log10(high / (high - low))) + 3)) : 3;
+  const span = (high - low) / factor || 1;
+  const said = (value) => (value / factor).toFixed(Math.min(9, Math.max(0, 2 - Math.floor(Math.log10(span)))));
   const numbersLine = element("div", undefined, "dwp-ends");
-  numbersLine.append(element("span", plain(low / factor, digits)), element("span", `${plain(high / factor, digits)} ${unit}`));
+  numbersLine.append(element("span", said(low)), element("span", `${said(high)} ${unit}`));
   whole.append(bar, numbersLine);
   return whole;
 }

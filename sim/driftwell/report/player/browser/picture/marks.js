@@ -21,6 +21,7 @@ function maskOf(shape, radius, fx, fy) {
   if (known) return known;
   const r = size / 4, half = Math.ceil(1.2 * r) + 1, side = 2 * half + 1;
   const cover = new Uint16Array(side * side), rim = new Uint16Array(side * side);
+  const shine = shape === "disc" && r > 4 ? new Uint16Array(side * side) : null;
   const inside = INSIDE[shape], thin = r > 2.6 ? 1 - 1.0 / r : 2;
   for (let row = 0; row < side; row++) {
     for (let column = 0; column < side; column++) {
@@ -33,10 +34,14 @@ function maskOf(shape, radius, fx, fy) {
         if (!inside(x / r / thin, y / r / thin)) edge++;
       }
       cover[row * side + column] = count * 256 / (SAMPLES * SAMPLES);
+      if (shine) {
+        const x = (column - half) / r + 0.32, y = (row - half) / r + 0.38;
+        shine[row * side + column] = 150 * Math.max(0, 1 - (x * x + y * y) / 0.5);
+      }
       rim[row * side + column] = thin > 1 || !count ? 0 : edge * 256 / count;
     }
   }
-  const made = { half, side, cover, rim };
+  const made = { half, side, cover, rim, shine };
   MASKS.set(key, made);
   return made;
 }
@@ -45,7 +50,7 @@ function drawMark(picture, x, y, shape, radius, colour, rimColour, alpha) {
   const { pixels, width, height } = picture;
   const cx = Math.floor(x), cy = Math.floor(y);
   const mask = maskOf(shape, radius, Math.floor((x - cx) * FINE), Math.floor((y - cy) * FINE));
-  const { half, side, cover, rim } = mask;
+  const { half, side, cover, rim, shine } = mask;
   if (cx < -half || cy < -half || cx > width + half || cy > height + half) return;
   const rb = colour & 0xff00ff, g = colour & 0xff00, rimRB = rimColour & 0xff00ff, rimG = rimColour & 0xff00;
   for (let row = Math.max(0, half - cy); row < side && cy - half + row < height; row++) {
@@ -54,6 +59,7 @@ function drawMark(picture, x, y, shape, radius, colour, rimColour, alpha) {
       const m = row * side + column, covered = cover[m];
       if (!covered) continue;
       blend(pixels, line + column, rb, g, (covered * alpha) >> 8);
+      if (shine && shine[m]) blend(pixels, line + column, 0xff00ff, 0xff00, (shine[m] * alpha) >> 8);
       if (rim[m]) blend(pixels, line + column, rimRB, rimG, (((covered * rim[m]) >> 8) * alpha) >> 9);
     }
   }

@@ -104,7 +104,8 @@ function sentence(player, t) {
     if (state === THERE) there++; else if (state === LOST) lost++; else waiting++;
   }
   const whole = ways.n === data.clouds.reduce((sum, cloud) => sum + cloud.count, 0);
-  const said = [`At ${spelled(t, "s", 4)}: ${counted(there)}${whole ? "" : ` of the ${counted(ways.n)} shown`} there`];
+  const all = `${counted(ways.n)} charge${ways.n === 1 ? "" : "s"}${whole ? "" : " shown"}`;
+  const said = [`At ${spelled(t, "s", 4)}: ${there === ways.n ? `all ${all} there` : `of ${all} ${counted(there)} there`}`];
   if (lost) said.push(`${counted(lost)} lost`);
   if (waiting) said.push(`${counted(waiting)} not born yet`);
   const { groups } = data.curves;
@@ -114,7 +115,7 @@ function sentence(player, t) {
     let i = 0;
     while (i < time.length - 1 && time[i + 1] <= t * (1 + 1e-12)) i++;
     if (isFinite(size[0][i])) {
-      said.push(`rms size ${size.map((values, axis) => `${"xyz"[axis]} ${spelled(values[i], "m")}`).join(", ")}`);
+      said.push(`rms size of all ${size.map((values, axis) => `${"xyz"[axis]} ${spelled(values[i], "m")}`).join(", ")}`);
     }
   }
   return said.join("; ") + ".";

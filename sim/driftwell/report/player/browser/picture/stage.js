@@ -56,7 +56,7 @@ function makeStage(canvas, data, ways, theme) {
     camera.aim();
     if (stage.moved) {
       stage.moved = false;
-      drawSurfaces(stage.showSurfaces ? surfaces : { all: [] }, camera, theme, back, front);
+      drawSurfaces(stage.showSurfaces ? surfaces : { all: [], spine: null }, camera, theme, back, front);
       frontCanvas.getContext("2d").putImageData(frontImage, 0, 0);
     }
     const { picture } = stage;

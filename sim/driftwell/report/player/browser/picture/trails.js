@@ -1,5 +1,5 @@
 // Trails: the way of each charge over the time just past, fading towards its beginning.
-const MOST_SEGMENTS = 60000;
+const MOST_SEGMENTS = 40000;
 
 function drawTrails(picture, camera, ways, now, t, length, look, alpha) {
   const { n, k, time, place, born, lost, cell } = ways;

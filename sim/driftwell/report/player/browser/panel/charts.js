@@ -50,7 +50,9 @@ function makeCharts(box, data, theme, clock) {
   function build() {
     box.replaceChildren();
     charts.length = 0;
-    for (const each of chartList(data, theme)) charts.push(makeChart(box, each, clock, theme));
+    const list = chartList(data, theme), figures = list.map(() => element("figure", undefined, "dwp-chart"));
+    box.append(...figures);
+    list.forEach((each, k) => charts.push(makeChart(figures[k], each, clock)));
     shown(clock.time);
   }
   build();
@@ -64,9 +66,7 @@ function makeCharts(box, data, theme, clock) {
   return { build };
 }
 
-function makeChart(box, chart, clock, theme) {
-  const figure = element("figure", undefined, "dwp-chart");
-  box.append(figure);
+function makeChart(figure, chart, clock) {
   const wide = Math.max(240, figure.clientWidth || 420);
   const { first, last } = clock;
   const drawing = svg("svg", {
@@ -85,14 +85,16 @@ function makeChart(box, chart, clock, theme) {
   });
   const step = niceStep((last - first) / scale.factor, wide / 90);
   for (let t = Math.ceil(first / scale.factor / step - 1e-9) * step; t <= last / scale.factor * (1 + 1e-9); t += step) {
-    const at = x(t * scale.factor), final = at > wide - 40;
-    svg("text", { x: at, y: TALL - 7, "text-anchor": final ? "end" : "middle" }, drawing).textContent =
-      plain(Math.abs(t) < 1e-9 * step ? 0 : t, 6) + (final ? ` ${scale.unit}` : "");
+    const at = x(t * scale.factor);
+    if (at > wide - RIGHT - 36) continue;
+    svg("text", { x: at, y: TALL - 7, "text-anchor": "middle" }, drawing).textContent =
+      plain(Math.abs(t) < 1e-9 * step ? 0 : t, 6);
   }
+  svg("text", { x: wide - RIGHT, y: TALL - 7, "text-anchor": "end" }, drawing).textContent = scale.unit;
   for (const line of chart.lines) {
     svg("path", { d: pathOf(chart, line, x, up), class: "dwp-line", stroke: cssColour(line.colour), "stroke-dasharray": line.dash }, drawing);
   }
-  if (chart.lines.length > 1) figure.append(keyOf(chart, theme));
+  if (chart.lines.length > 1) figure.append(keyOf(chart));
   const cursor = svg("line", { y1: TOP - 4, y2: TALL - BOTTOM, class: "dwp-cursor" }, drawing);
   listen(drawing, wide, first, last);
 
