@@ -9,10 +9,11 @@ from driftwell.cli.commands import (
     fields,
     info,
     limit,
+    new,
     run,
     schema,
     sweep,
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, schema)
+COMMANDS = (new, run, sweep, limit, converge, check, estimate, fields, watch, info, schema)
