@@ -10,7 +10,7 @@ from driftwell import open_run
 from driftwell.cli import run_command as command_module
 from driftwell.cli.main import main
 from driftwell.errors import RecordError
-from driftwell.report import pictures
+from driftwell.report.pictures import run_pictures as pictures
 from tests.cli.small_runs import PAIR, SMALL, scenario, settings
 from tests.inexact import Inexact, inexact  # noqa: F401
 

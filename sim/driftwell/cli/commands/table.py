@@ -6,6 +6,7 @@ from driftwell.cli.commands import (
     check,
     converge,
     estimate,
+    export,
     fields,
     info,
     limit,
@@ -16,4 +17,17 @@ from driftwell.cli.commands import (
     watch,
 )
 
-COMMANDS = (new, run, sweep, limit, converge, check, estimate, fields, watch, info, schema)
+COMMANDS = (
+    new,
+    run,
+    sweep,
+    limit,
+    converge,
+    check,
+    estimate,
+    fields,
+    watch,
+    info,
+    export,
+    schema,
+)
