@@ -11,6 +11,7 @@ from driftwell.cli.commands import (
     info,
     limit,
     report,
+    new,
     run,
     schema,
     sweep,
@@ -18,6 +19,7 @@ from driftwell.cli.commands import (
 )
 
 COMMANDS = (
+    new,
     run,
     sweep,
     limit,
