@@ -42,8 +42,10 @@ def read_openpmd(file: Any, rules: ColumnRules, choice: Choice) -> Columns:
     moment = _iteration(file, choice)
     particles = _inner(moment, _text(file, "particlesPath").strip("/"), moment.name)
     species = _species(particles, choice)
-    most = rules.most
-    count = _count(_inner(_record(species, "position"), "x", species.name), most)
+    leading = _inner(_record(species, "position"), "x", species.name)
+    count = _count(leading)
+    if count > rules.most:
+        raise ColumnError(f" {leading.name}: holds more than {rules.most} {rules.row}s")
     read = _Reader(species, count)
     values: dict[str, Floats] = {}
     for axis in AXES:
@@ -119,9 +121,9 @@ class _Reader:
 
     def _numbers(self, component: Any) -> Floats:
         """The numbers as they stand: an array, or one value and a shape."""
-        if _count(component, self._count) != self._count:
+        if _count(component) != self._count:
             raise ColumnError(
-                f" {component.name}: needs {self._count} values, one for each particle"
+                f" {component.name}: needs {self._count} values, as many as position/x"
             )
         if hasattr(component, "shape"):
             return finite_numbers(component.name, component)
@@ -176,14 +178,12 @@ def _inner(group: Any, name: str, where: str) -> Any:
     return group
 
 
-def _count(component: Any, most: int) -> int:
+def _count(component: Any) -> int:
     """How many values a component has."""
     shape = component.shape if hasattr(component, "shape") else component.attrs.get("shape")
     sizes = np.atleast_1d(np.asarray(() if shape is None else shape))
     if sizes.shape != (1,) or sizes.dtype.kind not in "iu":
         raise ColumnError(f" {component.name}: needs one value for each particle")
-    if int(sizes[0]) > most:
-        raise ColumnError(f" {component.name}: holds more than {most} particles")
     return int(sizes[0])
 
 
