@@ -12,11 +12,10 @@ from pathlib import Path
 from driftwell.exports.tables import Batch, Field, Labels, Table, tables
 from driftwell.exports.wanted import Wanted
 from driftwell.exports.written import whole
+from driftwell.forms.column_csv import FORMULA
 from driftwell.record.reader import Run
 
 ENDING = ".csv"
-FORMULA = ("=", "+", "-", "@", "\t", "\r")
-"""How a text begins that a spreadsheet takes for a formula."""
 
 
 def write(run: Run, wanted: Wanted, path: Path) -> None:

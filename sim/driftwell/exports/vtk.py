@@ -8,8 +8,7 @@ stand in the arrays' own label for them (UNITS_LABEL).
 from __future__ import annotations
 
 import xml.etree.ElementTree as ET
-from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
@@ -23,6 +22,7 @@ from driftwell.exports.names import STATES
 from driftwell.exports.states import cloud_by_index, pieces, states, tracked_clouds
 from driftwell.exports.wanted import Wanted
 from driftwell.exports.written import whole
+from driftwell.forms.column_vtk import quiet_library
 from driftwell.record.reader import Run
 
 PATHS_BYTES = 128_000_000
@@ -160,26 +160,15 @@ def _write_polydata(
     writer = vtkXMLPolyDataWriter()
     writer.SetFileName(str(path))
     writer.SetInputData(data)
+    writer.SetHeaderTypeToUInt64()
     writer.SetDataModeToAppended()
     writer.EncodeAppendedDataOff()
     writer.SetCompressorTypeToNone()
-    with _quiet() as told:
+    told: list[str] = []
+    with quiet_library():
         writer.AddObserver("ErrorEvent", lambda *_: told.append("error"))
         if not writer.Write() or told or writer.GetErrorCode():
             raise OSError(None, "the disk refuses the file, or is full")
-
-
-@contextmanager
-def _quiet() -> Iterator[list[str]]:
-    """The library prints nothing of its own; a list to note what went wrong."""
-    from vtkmodules.vtkCommonCore import vtkLogger
-
-    before = vtkLogger.GetCurrentVerbosityCutoff()
-    vtkLogger.SetStderrVerbosity(vtkLogger.VERBOSITY_OFF)
-    try:
-        yield []
-    finally:
-        vtkLogger.SetStderrVerbosity(before)
 
 
 def _array(name: str, values: NDArray[Any], unit: str) -> Any:

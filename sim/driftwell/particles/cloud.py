@@ -27,10 +27,11 @@ from driftwell.forms import (
 )
 from driftwell.forms.body import Body
 from driftwell.forms.faults import Fault
+from driftwell.particles.charge_columns import one_weight
 from driftwell.particles.draws import Draws
 from driftwell.particles.in_words import charge_in_words
 from driftwell.particles.motion import Motion
-from driftwell.particles.shapes.form import ShapeForm
+from driftwell.particles.shapes.form import Placement, ShapeForm
 from driftwell.particles.shapes.table import SHAPE_KINDS
 from driftwell.particles.state import LARGEST_COUNT, Particles
 
@@ -57,7 +58,8 @@ class Cloud(Form):
     How much it is follows from `count`, `weight` and `total_charge`: `count` alone (weight 1),
     `count` with `weight`, `count` with `total_charge` (the weight follows), or `weight` with
     `total_charge` (the count follows, rounded to a whole number). Where the shape fixes the count
-    (a list, a file), `count` is left out.
+    (a list, a file), `count` is left out; a file may say the weight, which counts where neither
+    `weight` nor `total_charge` is given.
     """
 
     name: Name = key("what the cloud is called in messages, questions and results")
@@ -125,7 +127,13 @@ class Cloud(Form):
             return []
         found = self._stated_faults(body)
         try:
-            if self.shape.sets_velocity(folder) and self.motion is not None:
+            if self.shape.fixes_count():
+                placed = self.shape.place(0, Draws(0, self.name), body, folder)
+                self._weight(body, placed)
+                moves = placed.velocity is not None
+            else:
+                moves = self.shape.sets_velocity(folder)
+            if moves and self.motion is not None:
                 found.append(_TWO_MOTIONS)
         except ScenarioError as error:
             found += [Fault(("shape", "path"), "", line) for line in str(error).splitlines()]
@@ -166,18 +174,23 @@ class Cloud(Form):
             return 0
         return round(min(self.total_charge / body.charge / self.weight, 1e18))
 
-    def _weight(self, body: Body, count: int) -> float:
-        if self.weight is not None or self.total_charge is None:
-            return 1.0 if self.weight is None else self.weight
-        return self.total_charge / (count * body.charge)
+    def _weight(self, body: Body, placed: Placement) -> float:
+        if self.weight is not None:
+            return self.weight
+        if self.total_charge is not None:
+            return float(self.total_charge / (placed.position.shape[1] * body.charge))
+        return one_weight(placed.weight, self.files_named())
 
     def amount(self, bodies: Mapping[str, Body], folder: Path) -> Amount:
         """Count and weight of a cloud without faults; reads the file of a shape that has one."""
         body = bodies[self.species]
-        count = self._count(body)
         if self.shape.fixes_count():
-            count = self.shape.place(0, Draws(0, self.name), body, folder).position.shape[1]
-        return Amount(count, self._weight(body, count))
+            placed = self.shape.place(0, Draws(0, self.name), body, folder)
+            return Amount(placed.position.shape[1], self._weight(body, placed))
+        count = self._count(body)
+        if self.total_charge is not None and self.weight is None:
+            return Amount(count, self.total_charge / (count * body.charge))
+        return Amount(count, 1.0 if self.weight is None else self.weight)
 
     def load(
         self,
@@ -201,14 +214,15 @@ class Cloud(Form):
         self._refuse(self._stated_faults(body))
         draws = Draws(seed, self.name)
         with np.errstate(all="ignore"):  # checked below
-            position, velocity = self.shape.place(self._count(body), draws, body, folder)
+            placed = self.shape.place(self._count(body), draws, body, folder)
+            position, velocity, _ = placed
             count = position.shape[1]
             if velocity is None:
                 motion = self.motion or Motion()
                 velocity = motion.turned(motion.velocities(count, draws, body), position)
             elif self.motion is not None:
                 self._refuse([_TWO_MOTIONS])
-            weight = self._weight(body, count)
+            weight = self._weight(body, placed)
         finite = np.isfinite(position).all() and np.isfinite(velocity).all()
         if not (finite and 0.0 < weight < math.inf):
             raise ScenarioError(

@@ -33,6 +33,7 @@ from driftwell.forms.body import Body
 from driftwell.forms.faults import Fault
 from driftwell.forms.waveforms import CurrentWave, waveform_words
 from driftwell.geometry.solid import Solid
+from driftwell.particles.charge_columns import one_weight
 from driftwell.particles.cloud import Amount, SeveralCharges
 from driftwell.particles.draws import Draws
 from driftwell.particles.emission.course import Course, Pieces, pieces_of
@@ -70,7 +71,8 @@ class Source(Form):
     Either a `current` flows, from `start` to `stop`, and `weight` or `count` says in how many
     charges it comes; or a pulse comes with a `profile` in time, and how much it is follows as for
     clouds: `count`, `count` with `weight` or `total_charge`, or `weight` with `total_charge`. A
-    file says by itself what is born when, with `weight` or `total_charge` as for clouds.
+    file says by itself what is born when, with `weight` or `total_charge` as for clouds; where
+    neither is given, the weight in the file counts, if it has one.
     """
 
     name: Name = key("what the source is called in messages, questions and results")
@@ -208,8 +210,12 @@ class Source(Form):
     def amount(self, setting: Setting) -> Amount:
         """Births of the whole source, with those after the run's end, and their weight."""
         charge = abs(setting.bodies[self.species].charge)
+        given = 1.0
         if self.emitter.fixes_births():
-            count = self._file(setting).position.shape[1]
+            leaving = self._file(setting)
+            count = leaving.position.shape[1]
+            if self.weight is None and self.total_charge is None:
+                given = one_weight(leaving.weight, self.files_named())
         elif self.current is not None:
             whole = self._flow(setting.duration).whole() / charge
             mean = float(self.count) if self.count is not None else whole / (self.weight or 1.0)
@@ -226,7 +232,7 @@ class Source(Form):
             total = abs(self.total_charge or 0.0)
             count = round(min(total / charge / (self.weight or 1.0), 1e18))
         if self.weight is not None or self.total_charge is None:
-            return Amount(count, 1.0 if self.weight is None else self.weight)
+            return Amount(count, given if self.weight is None else self.weight)
         return Amount(count, abs(self.total_charge) / (max(count, 1) * charge))
 
     def load(
@@ -247,7 +253,7 @@ class Source(Form):
         body = setting.bodies[self.species]
         amount, draws = self.amount(setting), Draws(setting.seed, self.name)
         try:
-            leaving = self.emitter.leave(amount.count, draws, solids, setting.folder)
+            leaving = self.emitter.leave(amount.count, draws, body, solids, setting.folder)
         except ScenarioError as fault:
             raise ScenarioError(f'[[source]] "{self.name}": {fault}.') from fault
         time = self._times(amount.count, draws, setting) if leaving.time is None else leaving.time
@@ -298,7 +304,8 @@ class Source(Form):
         return pieces_of(0.0 if self.current is None else self.current, self.start, stop)
 
     def _file(self, setting: Setting) -> Leaving:
-        return self.emitter.leave(0, Draws(0, self.name), (), setting.folder)
+        body = setting.bodies[self.species]
+        return self.emitter.leave(0, Draws(0, self.name), body, (), setting.folder)
 
     def density(self, setting: Setting, solids: Sequence[Solid]) -> float:
         """The largest current density it supplies, A/m^2; infinite from a point, 0 from a file."""

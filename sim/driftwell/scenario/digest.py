@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 from pathlib import Path
+from typing import Any
 
 from driftwell.errors import ScenarioError
 from driftwell.scenario.model import Scenario
@@ -17,6 +18,8 @@ LATER_KEYS: tuple[tuple[str, str, object], ...] = (
     ("coulomb", "share_frame", []),
 )
 """Section, key and default of keys left out where they say nothing else, for the same reason."""
+LATER_OF_FILES = ("of", "at", "iteration")
+"""Keys of files of charges left out where they are not given, for the same reason."""
 
 
 def digest(scenario: Scenario, folder: Path) -> str:
@@ -32,10 +35,18 @@ def digest(scenario: Scenario, folder: Path) -> str:
     for section, name, default in LATER_KEYS:
         if values[section][name] == default:
             del values[section][name]
+    for part in (*(each["shape"] for each in values["cloud"]), *_emitters(values)):
+        for name in LATER_OF_FILES if part["kind"] == "file" else ():
+            if part[name] is None:
+                del part[name]
     files = {name: file_digest(folder / name) for name in named}
     content = {"scenario": values, "files": files}
     text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(text.encode()).hexdigest()
+
+
+def _emitters(values: dict[str, Any]) -> list[dict[str, Any]]:
+    return [each["emitter"] for each in values.get("source", ())]
 
 
 def files_named(scenario: Scenario) -> list[str]:

@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Literal
 
 from driftwell.forms import Direction, Length, Point, Positive, key
+from driftwell.forms.body import Body
 from driftwell.forms.spelling import spelled
 from driftwell.geometry.solid import Solid
 from driftwell.particles.draws import Draws
@@ -31,7 +32,9 @@ class DiscEmitter(EmitterForm):
     def area(self, solids: Sequence[Solid]) -> float:
         return math.pi * self.radius**2
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         return on_flat_ring(count, draws, self.centre, self.axis, 0.0, self.radius)
 
     def words(self) -> str:

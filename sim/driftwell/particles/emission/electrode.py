@@ -17,6 +17,7 @@ import numpy as np
 
 from driftwell.errors import ScenarioError
 from driftwell.forms import Direction, Form, Length, Name, Positive, checked, key, refuse
+from driftwell.forms.body import Body
 from driftwell.geometry.body_table import BodyTable, body_table
 from driftwell.geometry.distance import distances
 from driftwell.geometry.meshing import mesh_of
@@ -88,7 +89,9 @@ class ElectrodeEmitter(EmitterForm):
     def area(self, solids: Sequence[Solid]) -> float:
         return float(_areas(self._triangles(solids)[0]).sum())
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         corners, normals, curved = self._triangles(solids)
         points = draws.unit_points("place", count, 3)
         reached = np.cumsum(_areas(corners))

@@ -10,11 +10,14 @@ from typing import Literal, Self
 import numpy as np
 
 from driftwell.forms import Time, checked, key
-from driftwell.forms.column_files import READERS, columns_inside, told_of_file
+from driftwell.forms.body import Body
+from driftwell.forms.choice_form import ChoiceForm
+from driftwell.forms.column_files import told_of_file
 from driftwell.forms.columns import TOLD, ColumnError
 from driftwell.forms.inside import check_inside
+from driftwell.forms.particle_files import ENDINGS, particles_inside
 from driftwell.geometry.solid import Solid
-from driftwell.particles.charge_columns import CHARGE_RULES, ChargeColumns
+from driftwell.particles.charge_columns import CHARGE_RULES, charges_chosen
 from driftwell.particles.draws import Draws
 from driftwell.particles.emission.form import EmitterForm, Leaving
 
@@ -32,21 +35,23 @@ BIRTH_RULES = replace(
 )
 
 
-class FileEmitter(EmitterForm):
+class FileEmitter(EmitterForm, ChoiceForm):
     """One charge in each row; without velocities they are born at rest."""
 
     kind: Literal["file"]
     path: str = key(
         "file in the scenario's folder, relative to it. A .csv file begins with a line such as "
         "t [us], x [mm], y [mm], z [mm], vx [m/s], vy [m/s], vz [m/s]; a .h5 file has one dataset "
-        "for each column, its unit in the attribute unit. Velocities may be left out; ux, uy, uz "
-        "are proper velocities (gamma v)",
+        "for each column, its unit in the attribute unit, or is in openPMD, where all are born at "
+        "the iteration's time unless it has a record time; .parquet and .vtp are read with their "
+        "extras. Velocities may be left out; ux, uy, uz are proper velocities (gamma v), px, py, "
+        "pz momenta; a column weight [1] counts where the source has no weight of its own",
         example="births.csv",
     )
 
     @checked
     def _inside(self) -> Self:
-        check_inside(self.path, READERS, "path", "scenario")
+        check_inside(self.path, ENDINGS, "path", "scenario")
         return self
 
     def fixes_births(self) -> bool:
@@ -55,10 +60,15 @@ class FileEmitter(EmitterForm):
     def files_named(self) -> tuple[str, ...]:
         return (self.path,)
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         with told_of_file(self.path), np.errstate(all="ignore"):  # the source looks for infinities
-            columns = columns_inside(folder, self.path, BIRTH_RULES)
-            charges = ChargeColumns(columns)
+            choice = self.choice()
+            read = particles_inside(folder, self.path, BIRTH_RULES, choice)
+            charges = charges_chosen(read, choice, births=True)
+            charges.check(body)
+            columns = charges.columns
             time = columns.values["t"]
             early = np.flatnonzero(time < 0.0)
             if early.size:
@@ -66,9 +76,16 @@ class FileEmitter(EmitterForm):
                     *(f"{columns.where(int(k))}: t must be at least 0" for k in early[:TOLD])
                 )
             order = np.argsort(time, kind="stable")
-            position, velocity = charges.position()[:, order], charges.velocity()
+            position, velocity = charges.position()[:, order], charges.velocity(body)
+            weight = charges.weight()
             velocity = np.zeros_like(position) if velocity is None else velocity[:, order]
-        return Leaving(position, np.zeros_like(position), velocity, time[order])
+        return Leaving(
+            position,
+            np.zeros_like(position),
+            velocity,
+            time[order],
+            None if weight is None else weight[order],
+        )
 
     def words(self) -> str:
         return f"as in the file {self.path}"

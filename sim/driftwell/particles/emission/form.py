@@ -9,6 +9,7 @@ from typing import NamedTuple
 import numpy as np
 
 from driftwell.forms import Form
+from driftwell.forms.body import Body
 from driftwell.geometry.solid import Solid
 from driftwell.particles.draws import Draws
 from driftwell.particles.proper_velocity import Floats
@@ -24,12 +25,14 @@ class Leaving(NamedTuple):
     normal : (3, n) float64, outward unit vectors of the surface
     velocity : (3, n) float64, proper velocity, m/s; None leaves it to the source
     time : (n,) float64, s, rising; None leaves it to the source
+    weight : (n,) real particles each stands for; None leaves it to the source
     """
 
     position: Floats
     normal: Floats
     velocity: Floats | None = None
     time: Floats | None = None
+    weight: Floats | None = None
 
 
 class EmitterForm(Form):
@@ -59,7 +62,9 @@ class EmitterForm(Form):
         """A length, m, of the order of its size."""
         return float(np.sqrt(self.area(solids) / np.pi))
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         """The charges; `count` is 0 for an emitter that fixes the births.
 
         Raises ScenarioError where a file cannot be read, or an electrode has no such part.

@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import Literal
 
 from driftwell.forms import Direction, Point, key
+from driftwell.forms.body import Body
 from driftwell.geometry.solid import Solid
 from driftwell.particles.draws import Draws
 from driftwell.particles.emission.form import EmitterForm, Leaving, repeated
@@ -22,7 +23,9 @@ class PointEmitter(EmitterForm):
         "direction that thermal emission is about, any length but zero", default=(0.0, 0.0, 1.0)
     )
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         return Leaving(repeated(self.at, count), repeated(self.axis, count))
 
     def words(self) -> str:

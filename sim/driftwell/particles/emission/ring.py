@@ -10,6 +10,7 @@ from typing import Literal, Self
 import numpy as np
 
 from driftwell.forms import Direction, Length, Point, Positive, checked, key, refuse
+from driftwell.forms.body import Body
 from driftwell.forms.spelling import spelled
 from driftwell.geometry.solid import Solid
 from driftwell.particles.draws import Draws
@@ -40,7 +41,9 @@ class RingEmitter(EmitterForm):
     def area(self, solids: Sequence[Solid]) -> float:
         return math.pi * (self.radius**2 - self.inner_radius**2)
 
-    def leave(self, count: int, draws: Draws, solids: Sequence[Solid], folder: Path) -> Leaving:
+    def leave(
+        self, count: int, draws: Draws, body: Body, solids: Sequence[Solid], folder: Path
+    ) -> Leaving:
         return on_flat_ring(count, draws, self.centre, self.axis, self.inner_radius, self.radius)
 
     def words(self) -> str:

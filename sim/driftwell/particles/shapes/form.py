@@ -18,10 +18,12 @@ class Placement(NamedTuple):
 
     position : (3, n) float64, m
     velocity : (3, n) float64, proper velocity, m/s; None leaves it to the cloud's motion
+    weight : (n,) real particles each stands for; None leaves it to the cloud
     """
 
     position: Floats
     velocity: Floats | None = None
+    weight: Floats | None = None
 
 
 class ShapeForm(Form):
