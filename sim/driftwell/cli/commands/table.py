@@ -10,10 +10,11 @@ from driftwell.cli.commands import (
     fields,
     info,
     limit,
+    plot,
     run,
     schema,
     sweep,
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, export, schema)
+COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, plot, export, schema)
