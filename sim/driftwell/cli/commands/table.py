@@ -10,6 +10,7 @@ from driftwell.cli.commands import (
     fields,
     info,
     limit,
+    movie,
     plot,
     run,
     schema,
@@ -17,4 +18,18 @@ from driftwell.cli.commands import (
     watch,
 )
 
-COMMANDS = (run, sweep, limit, converge, check, estimate, fields, watch, info, plot, export, schema)
+COMMANDS = (
+    run,
+    sweep,
+    limit,
+    converge,
+    check,
+    estimate,
+    fields,
+    watch,
+    info,
+    plot,
+    movie,
+    export,
+    schema,
+)

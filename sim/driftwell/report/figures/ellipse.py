@@ -51,7 +51,8 @@ class RmsEllipse:
     def outline(self) -> Floats:
         """Points (2, POINTS) of eq. 2."""
         angle = np.linspace(0.0, 2.0 * math.pi, POINTS)
-        return self.centre[:, None] + self.axes @ np.stack([np.cos(angle), np.sin(angle)])
+        circle = np.stack([np.cos(angle), np.sin(angle)])
+        return np.asarray(self.centre[:, None] + self.axes @ circle)
 
 
 def rms_ellipse(across: Floats, up: Floats, weight: Floats) -> RmsEllipse | None:

@@ -6,6 +6,7 @@ scenario, and the command that makes the run again.
 
 from __future__ import annotations
 
+import shlex
 from io import BytesIO
 from pathlib import Path
 
@@ -58,9 +59,19 @@ def provenance(run: Run, what: str) -> str:
         f"{what} of a run by driftwell {header.driftwell_version}",
         f"scenario digest {header.digest}" if header.digest else "",
         f"seed {header.seed}",
-        f"made again by: {header.command}" if header.command else "",
+        f"made again by: {_command(header.command)}" if header.command else "",
     ]
     return _plain("; ".join(part for part in parts if part))
+
+
+def _command(command: str) -> str:
+    """The command without the folders of whoever gave it: figures are published."""
+    try:
+        words = shlex.split(command)
+    except ValueError:
+        return "driftwell run"
+    named = [Path(word).name if "/" in word and "=" not in word else word for word in words]
+    return shlex.join(named)
 
 
 def _plain(text: str) -> str:

@@ -72,8 +72,8 @@ def known(word: str, names: Iterable[str], what: str) -> str:
     if word in there:
         return word
     meant = nearest(word, there)
-    hint = f'did you mean "{meant}"? ' if meant is not None else ""
-    raise FigureError(f'{what}: no {what} is called "{word}"; {hint}There is {listed(there)}.')
+    hint = f'did you mean "{meant}"? There' if meant is not None else "there"
+    raise FigureError(f'{what}: no {what} is called "{word}"; {hint} is {listed(there)}.')
 
 
 def listed(names: Iterable[str]) -> str:

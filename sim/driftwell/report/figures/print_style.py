@@ -11,6 +11,7 @@ from contextlib import contextmanager
 from typing import Any
 
 import matplotlib
+import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.layout_engine import ConstrainedLayoutEngine
@@ -32,7 +33,7 @@ PAD = 0.03
 """Free paper at the edges, inches."""
 MOST_ENTRIES = 8
 LONGEST = 40
-LETTER, HANDLE = 0.62 * SMALL / 72.0, 0.48
+LETTER, HANDLE = 0.57 * SMALL / 72.0, 0.48
 """Width of a letter of the key, and of what stands beside it, inches."""
 
 _STYLE: dict[str, Any] = {
@@ -174,6 +175,9 @@ def finish(figure: Figure) -> Figure:
 
 
 def _columns(labels: Sequence[str], width: float) -> int:
-    """How many entries of a key fit side by side into `width` inches."""
-    widest = max(map(len, labels)) * LETTER + HANDLE
-    return max(1, min(len(labels), int(width / widest)))
+    """How many columns of a key fit side by side into `width` inches."""
+    for columns in range(len(labels), 1, -1):
+        parts = np.array_split(np.array([len(label) for label in labels]), columns)
+        if sum(int(part.max()) * LETTER + HANDLE for part in parts) <= width:
+            return columns
+    return 1

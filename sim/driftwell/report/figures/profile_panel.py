@@ -82,10 +82,10 @@ def density_figure(
 
 
 def power_ruler(limits: tuple[float, float], dimension: int) -> Ruler:
-    """The axis of a density: a power of ten, by threes, of 1/m^dimension."""
+    """The axis of a density: a power of ten, by threes, of 1/m^dimension; of a number for 0."""
     largest = max(abs(limits[0]), abs(limits[1]))
     power = 3 * math.floor(math.log10(largest) / 3.0 + 1e-9) if largest > 0.0 else 0
-    unit = "m" + f"-{dimension}".translate(_SUPERSCRIPT)
-    if power:
-        unit = "10" + str(power).translate(_SUPERSCRIPT) + " " + unit
-    return Ruler(*limits, 10.0**power, unit)
+    power = 0 if power == 3 and not dimension else power
+    ten = "10" + str(power).translate(_SUPERSCRIPT) if power else ""
+    metres = "m" + f"-{dimension}".translate(_SUPERSCRIPT) if dimension else ""
+    return Ruler(*limits, 10.0**power, f"{ten} {metres}".strip())

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 from driftwell.report.figures.kind import Kind, chosen_clouds
 from driftwell.report.figures.options import FigureError, FigureOptions, known, stretch
 from driftwell.report.figures.print_style import LINE, SMALL, blank, finish
+from driftwell.report.figures.profile_panel import power_ruler
 from driftwell.report.paper.histogram import bins
 from driftwell.report.paper.palette import INK, PALE, colour
 from driftwell.report.paper.panel import put_across, put_up
@@ -43,14 +44,17 @@ def draw(scene: Scene, options: FigureOptions) -> Figure:
     key = [Entry(cloud.name, colour(cloud.index), "s") for cloud in clouds]
     figure = blank(scene.run, options, key)
     panel = figure.subplots()
+    error = np.sqrt(np.histogram(times, edges, weights=passages["weight"] ** 2)[0])
+    total = np.histogram(times, edges, weights=passages["weight"])[0]
+    up = power_ruler((0.0, ROOM * float((total + error).max())), 0)
     base = np.zeros(edges.size - 1)
     for k, cloud in enumerate(clouds):
         own = passages["cloud"] == cloud.index
         top = base + np.histogram(times[own], edges, weights=passages["weight"][own])[0]
         panel.stairs(
-            top,
+            up.shown(top),
             across.shown(edges),
-            baseline=base,
+            baseline=up.shown(base),
             fill=True,
             facecolor=colour(cloud.index),
             edgecolor="white" if HATCHES[k % len(HATCHES)] else "none",
@@ -59,9 +63,10 @@ def draw(scene: Scene, options: FigureOptions) -> Figure:
             linewidth=0.0,
         )
         base = top
-    error = np.sqrt(np.histogram(times, edges, weights=passages["weight"] ** 2)[0])
     middles = across.shown(0.5 * (edges[:-1] + edges[1:]))
-    panel.errorbar(middles, base, error, fmt="none", ecolor=INK, elinewidth=0.5)
+    panel.errorbar(
+        middles, up.shown(total), up.shown(error), fmt="none", ecolor=INK, elinewidth=0.5
+    )
     mean, spread = mean_and_rms(times, passages["weight"])
     panel.axvline(float(across.shown(mean)), color=INK, linewidth=0.8, linestyle="--")
     panel.annotate(
@@ -73,12 +78,7 @@ def draw(scene: Scene, options: FigureOptions) -> Figure:
         fontsize=SMALL,
         bbox={"facecolor": "white", "edgecolor": PALE, "linewidth": 0.4, "pad": 1.5},
     )
-    top_end = ROOM * float((base + error).max())
-    put_up(
-        panel,
-        ruler((0.0, top_end), ""),
-        f"particles per {in_words(float(edges[1] - edges[0]), 's')}",
-    )
+    put_up(panel, up, f"particles per {in_words(float(edges[1] - edges[0]), 's')}")
     put_across(panel, across, "time", 5)
     for line in panel.lines:
         line.set_linewidth(min(line.get_linewidth(), LINE))

@@ -7,6 +7,8 @@ elsewhere their shadows in it. Magnetic fields, and what changing ones induce, a
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
@@ -15,7 +17,16 @@ from numpy.typing import NDArray
 from driftwell.report.again import read_again
 from driftwell.report.field_pictures.equipotentials import put_electrode, put_lines, put_scale
 from driftwell.report.figures.kind import Kind, chosen_clouds
-from driftwell.report.figures.options import AXES, FigureError, FigureOptions, plane_axes, stretch
+from driftwell.report.figures.options import (
+    AXES,
+    COLUMN,
+    PAGE,
+    FigureError,
+    FigureOptions,
+    plane_axes,
+    stretch,
+    width_of,
+)
 from driftwell.report.figures.options import value as read_value
 from driftwell.report.figures.print_style import SMALL, blank, finish
 from driftwell.report.paper.palette import BLACK, GREEN, INK, PURPLE
@@ -34,7 +45,15 @@ FLAT = 1e-9
 """A potential that varies by less than this part of itself has no lines."""
 STREAMS = 0.75
 """Density of field lines, of that matplotlib takes for usual."""
+SHORTEST = 0.03
+"""Shortest field line, as part of the panel."""
 NARROWEST, WIDEST = 0.6, 3.2
+BROAD = 1.9
+"""Width over height of a panel that is shown a page wide."""
+BESIDE, BELOW = 0.026, 0.011
+"""Room beside the panel and below it, m."""
+NAME = 6.5
+"""Size of electrodes' names, points."""
 ROUND_MARGIN = 0.6
 """Room about charges that no electrode stands around, as part of their span."""
 
@@ -57,11 +76,15 @@ def draw(scene: Scene, options: FigureOptions) -> Figure:
     plane_section = section(plane, read_value(options.through, "m", "through"), across, up)
     potential = scenery.potential(plane_section, time)
     _check_uneven(scene, potential, time)
-    figure = blank(scene.run, options, (), 0.95 * ratio if ratio > 1.0 else ratio)
+    usual = COLUMN if shown.ratio < BROAD else PAGE
+    wide = width_of(options, usual)
+    sized = replace(options, width=wide)
+    high = (wide - BESIDE) / shown.ratio + BELOW
+    figure = blank(scene.run, sized, (), wide / high)
     panel = figure.subplots()
     put_field(figure, panel, shown, plane_section, potential)
     for electrode in scenery.electrodes(plane_section):
-        put_electrode(panel, shown, electrode)
+        put_electrode(panel, shown, electrode, NAME)
     put_walls(panel, shown, scenery, plane_section)
     put_ways(panel, shown, plane, ways)
     put_frame(panel, shown, (AXES[plane[0]], AXES[plane[1]]))
@@ -79,7 +102,7 @@ def put_field(figure: Figure, panel: Axes, shown: Frame, plane: Section, potenti
         if hasattr(lines, "levels"):
             lines.set_linewidth(0.5)
     put_field_lines(panel, shown, plane, potential)
-    put_scale(figure, panel, found, volts)
+    put_scale(figure, panel, found, volts, panel.inset_axes((1.03, 0.0, 0.03, 1.0)))
 
 
 def put_field_lines(panel: Axes, shown: Frame, plane: Section, potential: Floats) -> None:
@@ -96,6 +119,7 @@ def put_field_lines(panel: Axes, shown: Frame, plane: Section, potential: Floats
         np.ma.masked_invalid(-run / shown.across.size),
         np.ma.masked_invalid(-rise / shown.up.size),
         density=STREAMS,
+        minlength=SHORTEST,
         color=GREEN,
         linewidth=0.5,
         arrowsize=0.5,

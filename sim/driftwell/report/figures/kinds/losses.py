@@ -6,8 +6,6 @@ towards x for y). Energies are kinetic, of one real particle.
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
@@ -17,10 +15,12 @@ from driftwell.constants import ELEMENTARY_CHARGE
 from driftwell.report.figures.kind import Kind, chosen_clouds
 from driftwell.report.figures.options import AXES, FigureError, FigureOptions, axis_number, stretch
 from driftwell.report.figures.print_style import LINE, blank, finish, put_letters
+from driftwell.report.figures.profile_panel import power_ruler
 from driftwell.report.paper.histogram import bins
 from driftwell.report.paper.palette import COLOURS, MARKERS, Line, colour, line_style
 from driftwell.report.paper.panel import put_across, put_up
-from driftwell.report.paper.ruler import interval, ruler
+from driftwell.report.paper.projection import frame, plane_limits, put_frame
+from driftwell.report.paper.ruler import in_words, interval, ruler
 from driftwell.report.paper.sheet import Entry
 from driftwell.report.pictures.scene import Scene
 
@@ -28,6 +28,8 @@ Floats = NDArray[np.float64]
 Rows = NDArray[np.void]
 
 FEW = 300
+FLAT = 1e-6
+"""Losses that spread along the axis by less than this part of their reach are in a plane."""
 
 
 def draw(scene: Scene, options: FigureOptions) -> Figure:
@@ -64,18 +66,37 @@ def azimuth(position: Floats, axis: int) -> Floats:
 def put_map(
     panel: Axes, losses: Rows, axis: int, limits: tuple[float, float] | None = None
 ) -> None:
-    """Place along the axis against the angle about it."""
-    along = losses["position"][:, axis]
-    reach = float(np.ptp(losses["position"], axis=0).max()) or float(
-        np.abs(losses["position"]).max()
-    )
-    across = ruler(limits or interval(along, least=reach), "m")
-    angles = azimuth(losses["position"], axis)
+    """Place along the axis against the angle about it; both places across it, where all losses
+    are at one place along it."""
+    position = losses["position"]
+    along = position[:, axis]
+    reach = float(np.ptp(position, axis=0).max()) or float(np.abs(position).max())
+    if limits is None and float(np.ptp(along)) <= FLAT * reach:
+        first, second = (axis + 1) % 3, (axis + 2) % 3
+        shown = frame(*plane_limits(position[:, first], position[:, second], reach), 1.0)
+        _put_marks(
+            panel,
+            losses,
+            shown.across.shown(position[:, first]),
+            shown.up.shown(position[:, second]),
+        )
+        put_frame(panel, shown, (AXES[first], AXES[second]))
+        return
+    shown_along = ruler(limits or interval(along, least=reach), "m")
+    _put_marks(panel, losses, shown_along.shown(along), azimuth(position, axis))
+    put_across(panel, shown_along, AXES[axis], 6)
+    panel.set_ylim(-180.0, 180.0)
+    panel.set_yticks([-180.0, -90.0, 0.0, 90.0, 180.0])
+    panel.set_yticklabels(["−180", "−90", "0", "90", "180"])
+    panel.set_ylabel(f"azimuth about {AXES[axis]} (°)")
+
+
+def _put_marks(panel: Axes, losses: Rows, across: Floats, up: Floats) -> None:
     for wall in np.unique(losses["wall"]):
         own = losses["wall"] == wall
         panel.plot(
-            across.shown(along[own]),
-            angles[own],
+            across[own],
+            up[own],
             linestyle="none",
             marker=mark(int(wall)),
             markersize=2.6 if len(losses) <= FEW else 1.4,
@@ -83,11 +104,6 @@ def put_map(
             color=colour(int(wall)),
             alpha=0.7,
         )
-    put_across(panel, across, AXES[axis], 6)
-    panel.set_ylim(-180.0, 180.0)
-    panel.set_yticks([-180.0, -90.0, 0.0, 90.0, 180.0])
-    panel.set_yticklabels(["−180", "−90", "0", "90", "180"])
-    panel.set_ylabel(f"azimuth about {AXES[axis]} (°)")
 
 
 def put_energies(panel: Axes, losses: Rows) -> None:
@@ -95,21 +111,24 @@ def put_energies(panel: Axes, losses: Rows) -> None:
     energy = losses["kinetic_energy"] / ELEMENTARY_CHARGE
     low, high = interval(energy)
     across = ruler((max(low, 0.0), high), "eV")
-    edges = bins(energy.size, *((max(low, 0.0)), high))
-    top = 0.0
-    for wall in np.unique(losses["wall"]):
-        own = losses["wall"] == wall
-        held = np.histogram(energy[own], edges, weights=losses["weight"][own])[0]
+    edges = bins(energy.size, max(low, 0.0), high)
+    walls = np.unique(losses["wall"])
+    counts = [
+        np.histogram(energy[own], edges, weights=losses["weight"][own])[0]
+        for own in (losses["wall"] == wall for wall in walls)
+    ]
+    up = power_ruler((0.0, 1.1 * float(np.max(counts))), 0)
+    for wall, held in zip(walls, counts, strict=True):
         line: Line = line_style(7 * int(wall))
         panel.stairs(
-            held, across.shown(edges), color=colour(int(wall)), linewidth=LINE, linestyle=line
+            up.shown(held),
+            across.shown(edges),
+            color=colour(int(wall)),
+            linewidth=LINE,
+            linestyle=line,
         )
-        top = max(top, float(held.max()))
     put_across(panel, across, "kinetic energy", 4)
-    put_up(panel, ruler((0.0, 1.1 * top), ""), "particles per bin")
-    if top >= 10.0**5:
-        power = math.floor(math.log10(top))
-        panel.ticklabel_format(axis="y", scilimits=(power, power), useMathText=False)
+    put_up(panel, up, f"particles per {in_words(float(edges[1] - edges[0]), 'eV')}")
 
 
 def missing(scene: Scene) -> str:
