@@ -156,9 +156,21 @@ def test_snapshots_go_by_words_and_quantities(run: Run) -> None:
 def test_a_picture_is_a_figure_and_an_unknown_one_is_told(run: Run) -> None:
     from matplotlib.figure import Figure
 
-    assert isinstance(run.plot("sizes"), Figure)
+    assert isinstance(run.plot("sizes", of="load"), Figure)
+    assert isinstance(run.plot("cloud"), Figure)
+    with pytest.raises(DriftwellError, match=r'no option is called "off"; did you mean "of"\?'):
+        run.plot("sizes", off="load")
     with pytest.raises(DriftwellError, match=r'did you mean "sizes"\?'):
         run.plot("size")
+
+
+def test_a_run_leaves_as_a_page_and_for_other_programs(run: Run, tmp_path: Path) -> None:
+    page = run.report(tmp_path / "page.html")
+    assert "Ions in a trap" in page.read_text()
+    made = run.export("csv", tmp_path / "tables", what=["ledger"])
+    assert 1 == len(list(made.rglob("*.csv")) if made.is_dir() else [made])
+    with pytest.raises(RecordError, match="no such format"):
+        run.export("xml")
 
 
 def test_a_run_that_stops_by_the_clock_goes_on_to_the_same_bits(run: Run, tmp_path: Path) -> None:

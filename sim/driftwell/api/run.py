@@ -275,12 +275,18 @@ class Run:
         return datasets(self._record)
 
     def plot(self, what: str, **options: Any) -> Any:
-        """A picture of it, as a figure of matplotlib: "sizes", "phase-space", ...
+        """A picture of it, as a figure of matplotlib.
+
+        Parameters
+        ----------
+        what : one of the figures of ``driftwell plot``, or of the pictures in a run's folder
+        options : those of :class:`driftwell.report.figures.options.FigureOptions`, such as
+            ``at="end", plane="zx"``
 
         Raises
         ------
         DriftwellError
-            There is no picture of that name, or the run holds nothing to be shown in it.
+            There is no picture or option of that name, or the run holds nothing to be shown in it.
         """
         from driftwell.api.pictures import picture
 
@@ -309,6 +315,17 @@ class Run:
         from driftwell.exports.table import export
 
         return export(self._record, format_name, path, what, times, author)
+
+    def report(self, path: str | Path | None = None) -> Path:
+        """Write it as one HTML page, as ``driftwell report``; returns where it is.
+
+        path : None for ``report.html`` in its folder
+
+        Raises RecordError where that cannot be done; the text says why.
+        """
+        from driftwell.report.written import write_report
+
+        return write_report(self.folder, path).path
 
     def __repr__(self) -> str:
         return f"<Run {self.header.title!r}: {self.outcome.word}, {self.folder}>"
