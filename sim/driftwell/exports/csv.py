@@ -8,6 +8,10 @@ quotation marks. A text that a spreadsheet would take for a formula gets an apos
 from __future__ import annotations
 
 from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
 
 from driftwell.exports.tables import Batch, Field, Labels, Table, tables
 from driftwell.exports.wanted import Wanted
@@ -42,9 +46,17 @@ def _cells(batch: Batch) -> list[list[str]]:
     return [
         Labels(values.place, list(map(text_cell, values.names))).texts()
         if isinstance(values, Labels)
-        else list(map(repr, values.tolist()))
+        else _numbers(values)
         for values in batch
     ]
+
+
+def _numbers(values: NDArray[Any]) -> list[str]:
+    """The text of each number; where all have the same bits it is made once."""
+    bits = values.view(np.int64)
+    if bits.size and (bits == bits[0]).all():
+        return [repr(values[0].item())] * bits.size
+    return list(map(repr, values.tolist()))
 
 
 def heading(field: Field) -> str:

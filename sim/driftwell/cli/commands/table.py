@@ -10,7 +10,9 @@ from driftwell.cli.commands import (
     fields,
     info,
     limit,
+    movie,
     new,
+    plot,
     report,
     run,
     schema,
@@ -30,6 +32,8 @@ COMMANDS = (
     watch,
     info,
     report,
+    plot,
+    movie,
     export,
     schema,
 )

@@ -76,15 +76,15 @@ def equipotentials(
     panel.grid(visible=False)
     volts = ruler(interval(potential[np.isfinite(potential)], margin=0.0), "V")
     found = shades(potential)
-    _put_lines(panel, shown, (x, y, potential), found, volts)
+    put_lines(panel, shown, (x, y, potential), found, volts)
     for electrode in electrodes:
-        _put_electrode(panel, shown, electrode)
-    _put_scale(figure, panel, found, volts)
+        put_electrode(panel, shown, electrode)
+    put_scale(figure, panel, found, volts)
     put_frame(panel, shown, axes)
     return figure
 
 
-def _put_lines(
+def put_lines(
     panel: Axes, shown: Frame, grid: tuple[Floats, Floats, Floats], found: Shades, volts: Ruler
 ) -> None:
     """Shade the plane by its potential, and draw and mark lines at round values of it."""
@@ -115,8 +115,11 @@ def _put_lines(
     )
 
 
-def _put_electrode(panel: Axes, shown: Frame, electrode: Drawn) -> None:
-    """Fill an electrode, or draw it as a line, with its name in its middle."""
+def put_electrode(panel: Axes, shown: Frame, electrode: Drawn, size: float = SMALL_SIZE) -> None:
+    """Fill an electrode, or draw it as a line, with its name in its middle.
+
+    size : of the name's letters, points
+    """
     across = shown.across.shown(electrode.outline[:, 0])
     up = shown.up.shown(electrode.outline[:, 1])
     if electrode.closed:
@@ -136,7 +139,7 @@ def _put_electrode(panel: Axes, shown: Frame, electrode: Drawn) -> None:
         printable(electrode.name, NAME_LONGEST),
         ha="center",
         va="center",
-        fontsize=SMALL_SIZE,
+        fontsize=size,
         color=INK,
         zorder=6,
         clip_on=True,
@@ -144,11 +147,14 @@ def _put_electrode(panel: Axes, shown: Frame, electrode: Drawn) -> None:
     )
 
 
-def _put_scale(figure: Figure, panel: Axes, found: Shades, volts: Ruler) -> None:
-    """The scale of colours beside the panel."""
+def put_scale(
+    figure: Figure, panel: Axes, found: Shades, volts: Ruler, place: Axes | None = None
+) -> None:
+    """The scale of colours beside the panel, or in a `place` of its own."""
     low, high = volts.shown([found.low, found.high])
     image = ScalarMappable(Normalize(float(low), float(high)), found.paler)
-    scale = figure.colorbar(image, ax=panel, pad=0.02)
+    beside = {"ax": panel, "pad": 0.02} if place is None else {"cax": place}
+    scale = figure.colorbar(image, **beside)
     scale.set_label(volts.label("potential"))
     scale.locator = MaxNLocator(7, steps=ROUND)
     scale.formatter = FuncFormatter(lambda value, _: f"{value:g}".replace("-", "−"))

@@ -9,7 +9,6 @@ from __future__ import annotations
 from collections.abc import Iterator
 from pathlib import Path
 
-import contourpy
 import numpy as np
 from matplotlib.figure import Figure
 from numpy.typing import NDArray
@@ -19,6 +18,7 @@ from driftwell.report.field_pictures.equipotentials import WIDEST, Drawn, equipo
 from driftwell.report.field_pictures.surface_charge import charge_along_outlines, charge_in_space
 from driftwell.report.paper.gallery import hang
 from driftwell.report.paper.sheet import png, style
+from driftwell.report.sections.outlines import outlines_of
 from driftwell.solved.acting import ActingField
 from driftwell.solved.edges import LETTERS
 
@@ -100,8 +100,8 @@ class _Plane:
         points[..., self._columns[1]] = self.up[:, None]
         flat = points.reshape(-1, len(low))
         shape = self.up.size, self.across.size
-        self._distance, owner = (each.reshape(shape) for each in acting.nearest(flat))
-        self._owner = owner
+        distance, owner = acting.nearest(flat)
+        self._distance, self._owner = distance.reshape(shape), owner.reshape(shape)
         outside = self._distance > 0.0
         self.potential = np.full(shape, np.nan)
         solution = acting.solved.solution
@@ -109,29 +109,13 @@ class _Plane:
 
     def electrodes(self, names: tuple[str, ...]) -> list[Drawn]:
         """The outlines of all electrodes in the plane, each named once."""
-        found: list[Drawn] = []
-        padded = np.pad(self._distance, 1, constant_values=np.abs(self._distance).max())
-        for number, name in enumerate(names):
-            own = np.pad(self._owner, 1, constant_values=-1) == number
-            level = np.where(own, padded, np.abs(padded))
-            lines = contourpy.contour_generator(
-                _padded(self.across), _padded(self.up), level
-            ).lines(0.0)
-            longest = sorted(lines, key=len, reverse=True)  # type: ignore[arg-type]
-            found += [Drawn(name if k == 0 else "", line) for k, line in enumerate(longest)]  # type: ignore[arg-type]
-        return found
+        return outlines_of(self.across, self.up, self._distance, self._owner, names)
 
 
 def _columns(geometry: str, axes: tuple[str, str]) -> tuple[int, int]:
     """Which coordinates of a point stand for the axes of a picture."""
     letters = LETTERS[geometry]
     return letters.index(axes[0]), letters.index(axes[1])
-
-
-def _padded(values: Floats) -> Floats:
-    """One more on either side."""
-    step = values[1] - values[0]
-    return np.concatenate([[values[0] - step], values, [values[-1] + step]])
 
 
 def _extent(acting: ActingField) -> tuple[Floats, Floats]:

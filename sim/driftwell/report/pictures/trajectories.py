@@ -69,7 +69,7 @@ def trajectories_picture(scene: Scene) -> Figure | None:
 
     None where no charge was tracked for two records.
     """
-    ways = [way for way in (_way(scene, charge) for charge in _chosen(scene)) if way]
+    ways = [way for way in (way_of(scene, charge) for charge in chosen_charges(scene)) if way]
     if not ways:
         return None
     key = [
@@ -149,14 +149,14 @@ def jagged(across: Floats, up: Floats, most: float, seen: float = 0.0) -> bool:
     return bool(turn > max(most * length, seen))
 
 
-def _chosen(scene: Scene) -> list[int]:
+def chosen_charges(scene: Scene) -> list[int]:
     """A few tracked charges, evenly chosen by id."""
     tracked = scene.run.header.tracked
     places = np.unique(np.linspace(0, len(tracked) - 1, min(MOST, len(tracked))).round())
     return [tracked[int(place)] for place in places]
 
 
-def _way(scene: Scene, charge: int) -> Way | None:
+def way_of(scene: Scene, charge: int) -> Way | None:
     """The way of a charge up to its loss, None where it has fewer than two points."""
     time, state = scene.run.track(charge)
     known = np.isfinite(state[:, :3]).all(axis=1)

@@ -1,0 +1,1 @@
+"""Every kind of figure, one a file."""
