@@ -1,13 +1,23 @@
-"""What the pages tell a reader to type runs, their links lead somewhere, their tables are true."""
+"""What the pages tell a reader to type runs, their links lead somewhere, their tables are true.
+
+What a page is read as: a line that ends in "Save this as `NAME`:" puts the block below it into
+that file. Lines of `sh` blocks that begin with `driftwell` are typed as they stand, in the order of
+the page; one that ends in `# exit code 12` ends with that code, all others with 0. A line that ends
+in `&` goes on beside those after it and is ended with the page; so `dask` may be started, too. Of a
+`text` block right below an `sh` block every line that begins with a question's name and a number
+holds what the commands of that block printed.
+"""
 
 from __future__ import annotations
 
 import os
 import re
 import shutil
+import signal
 import subprocess
 import sys
 import tomllib
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -35,15 +45,22 @@ TEST_IT = "python3 -m venv .venv && .venv/bin/pip install '.[test]' && .venv/bin
 
 @dataclass(frozen=True, slots=True)
 class Block:
-    """A fenced block of a page: its language and its text."""
+    """A fenced block of a page: its language and its text; what stands between it and the last."""
 
     language: str
     text: str
+    above: str = ""
+
+    @property
+    def saved_as(self) -> str | None:
+        """Name of the file that the reader is told to put it into."""
+        told = re.search(r"Save this as `([^`]*)`:$", self.above)
+        return told[1] if told else None
 
 
 def blocks(page: Path) -> list[Block]:
-    found = re.findall(r"^```(\w*)\n(.*?)^```$", page.read_text(), re.MULTILINE | re.DOTALL)
-    return [Block(language, text) for language, text in found]
+    found = re.findall(r"(.*?)^```(\w*)\n(.*?)^```$", page.read_text(), re.MULTILINE | re.DOTALL)
+    return [Block(language, text, above.strip()) for above, language, text in found]
 
 
 def typed(page: Path) -> list[str]:
@@ -71,6 +88,9 @@ def desk(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     command.parent.mkdir()
     command.write_text(f'#!/bin/sh\nexec "{sys.executable}" -m driftwell "$@"\n')
     command.chmod(0o755)
+    dask = command.with_name("dask")
+    dask.write_text(f'#!/bin/sh\nexec "{sys.executable}" -m dask "$@"\n')
+    dask.chmod(0o755)
     monkeypatch.setenv("PATH", f"{command.parent}{os.pathsep}{os.environ['PATH']}")
     monkeypatch.chdir(tmp_path)
     return tmp_path
@@ -80,18 +100,97 @@ def shell(line: str) -> subprocess.CompletedProcess[str]:
     return subprocess.run(["sh", "-c", line], capture_output=True, text=True, check=False)
 
 
+def started(line: str) -> subprocess.Popen[bytes]:
+    """What goes on in the background, in a session of its own."""
+    return subprocess.Popen(
+        ["sh", "-c", f"exec {line.removesuffix('&')}"],
+        stdout=subprocess.DEVNULL,
+        stderr=subprocess.DEVNULL,
+        start_new_session=True,
+    )
+
+
+def told_answers(text: str, names: set[str]) -> list[tuple[str, float, float]]:
+    """The lines of an output that are answers: name, value, error (0 where none stands there)."""
+    number = r"(-?\d+(?:\.\d+)?(?:e[+-]?\d+)?)"
+    found = []
+    for line in text.splitlines():
+        for name in names:
+            told = re.match(rf"{re.escape(name)}\s\s+{number}(?: ± {number})?(?=\s)", f"{line} ")
+            if told:
+                found.append((name, float(told[1]), float(told[2] or 0.0)))
+    return found
+
+
+def check_output(shown: str, printed: str, names: set[str]) -> None:
+    """Each answer shown was printed, within 1 % and half the error bar that is shown.
+
+    The motion of many charges differs between processors after a while, as chance would have it.
+    """
+    values = told_answers(printed, names)
+    for name, value, error in told_answers(shown, names):
+        of_name = [found for other, found, _ in values if other == name]
+        near = pytest.approx(value, rel=0.0, abs=0.01 * abs(value) + 0.5 * error)
+        assert any(near == found for found in of_name), f"{name}: {value} shown, printed: {of_name}"
+
+
+def questions_of(folder: Path) -> set[str]:
+    """The names of the questions of the scenarios in a folder."""
+    files = [tomllib.loads(path.read_text()) for path in folder.glob("*.toml")]
+    return {question["name"] for file in files for question in file.get("question", [])}
+
+
+def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
+    """Type the commands of a block; what they printed."""
+    printed = ""
+    for line in text.splitlines():
+        if line.startswith(("driftwell ", "dask ")):
+            if line.endswith("&"):
+                goes_on.append(started(line))
+                continue
+            expected = re.search(r"# exit code (\d+)$", line)
+            done = shell(line)
+            told = f"{line}\n{done.stdout}{done.stderr}"
+            assert (int(expected[1]) if expected else 0) == done.returncode, told
+            printed += done.stdout + done.stderr
+    return printed
+
+
 @pytest.mark.parametrize(
-    "page", [page for page in PAGES if has_commands(page)], ids=lambda page: page.name
+    "page",
+    [page for page in PAGES if has_commands(page)],
+    ids=lambda page: page.relative_to(ROOT).as_posix(),
 )
 def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path) -> None:
     names: dict[str, object] = {"__name__": "page"}
-    for block in blocks(page):
-        if block.language == "python":
-            exec(compile(block.text, page.name, "exec"), names)
-        for line in block.text.splitlines() if block.language == "sh" else ():
-            if line.startswith("driftwell "):
-                done = shell(line)
-                assert 0 == done.returncode, f"{line}\n{done.stderr}"
+    goes_on: list[subprocess.Popen[bytes]] = []
+    printed: str | None = None
+    try:
+        for block in blocks(page):
+            if block.saved_as is not None:
+                assert Path(block.saved_as).name == block.saved_as, "a bare name, in this folder"
+                (desk / block.saved_as).write_text(block.text)
+            elif block.language == "text" and printed is not None and not block.above:
+                check_output(block.text, printed, questions_of(desk))
+            printed = type_in(block.text, goes_on) if block.language == "sh" else None
+            if block.language == "python" and block.saved_as is None:
+                exec(compile(block.text, page.name, "exec"), names)
+    finally:
+        for process in goes_on:
+            with suppress(ProcessLookupError):
+                os.killpg(process.pid, signal.SIGTERM)
+            process.wait(20)
+
+
+def test_answers_are_read_off_an_output_and_held_against_it() -> None:
+    """One that is off, and one that was not printed at all, are told."""
+    printed = "held 2             0.50 ± 0.02   5 of 10\nsize across  82.7 ± 1.0 um  mean\n"
+    names = {"held", "held 2", "size across"}
+    assert [("held 2", 0.5, 0.02), ("size across", 82.7, 1.0)] == told_answers(printed, names)
+    check_output("size across  83.0 ± 1.0 um", printed, names)
+    for wrong in ("size across  85.0 ± 1.0 um", "held  0.50 ± 0.02"):
+        with pytest.raises(AssertionError):
+            check_output(wrong, printed, names)
 
 
 def test_the_readme_states_the_job_in_one_paragraph_before_its_two_commands() -> None:
