@@ -3,9 +3,9 @@
 What a page is read as: a line that ends in "Save this as `NAME`:" puts the block below it into
 that file. Lines of `sh` blocks that begin with `driftwell` are typed as they stand, in the order of
 the page; one that ends in `# exit code 12` ends with that code, all others with 0. A line that ends
-in `&` goes on beside those after it and is ended with the page; so `dask` may be started, too. Of a
-`text` block right below an `sh` block every line that begins with a question's name and a number
-holds what the commands of that block printed.
+in `&` goes on beside those after it and is ended with the page; so `dask` may be started, too. A
+`text` block right below an `sh` block shows what its commands printed: lines of a name and numbers
+are compared, and intervals of limits; below `check` and `estimate` every line is.
 """
 
 from __future__ import annotations
@@ -54,7 +54,7 @@ class Block:
     @property
     def saved_as(self) -> str | None:
         """Name of the file that the reader is told to put it into."""
-        told = re.search(r"Save this as `([^`]*)`:$", self.above)
+        told = re.search(r"Save this as\s+`([^`]*)`:$", self.above)
         return told[1] if told else None
 
 
@@ -110,34 +110,62 @@ def started(line: str) -> subprocess.Popen[bytes]:
     )
 
 
-def told_answers(text: str, names: set[str]) -> list[tuple[str, float, float]]:
-    """The lines of an output that are answers: name, value, error (0 where none stands there)."""
-    number = r"(-?\d+(?:\.\d+)?(?:e[+-]?\d+)?)"
+@dataclass(frozen=True, slots=True)
+class Row:
+    """A line of an output that tells numbers: its name, and values with errors (0 where none)."""
+
+    name: str
+    values: tuple[tuple[float, float], ...]
+
+
+NUMBER = r"(-?\d+(?:\.\d+)?(?:e[+-]?\d+)?)"
+
+
+def rows(text: str) -> list[Row]:
+    """Answers of runs, and lines of a sweep's table: cells that stand two blanks apart."""
     found = []
     for line in text.splitlines():
-        for name in names:
-            told = re.match(rf"{re.escape(name)}\s\s+{number}(?: ± {number})?(?=\s)", f"{line} ")
-            if told:
-                found.append((name, float(told[1]), float(told[2] or 0.0)))
+        name, *cells = re.split(r"\s{2,}", line.strip())
+        told = [re.fullmatch(rf"{NUMBER}(?: ± {NUMBER})?(?: \S+)?", cell) for cell in cells]
+        values = tuple((float(each[1]), float(each[2] or 0.0)) for each in told if each)
+        if values:
+            found.append(Row(name, values))
     return found
 
 
-def check_output(shown: str, printed: str, names: set[str]) -> None:
-    """Each answer shown was printed, within 1 % and half the error bar that is shown.
+def intervals(text: str) -> list[tuple[float, float]]:
+    """The intervals that limits were found in, ends without their units."""
+    found = re.findall(rf"^limit: .*interval {NUMBER}(?: \S+)? to {NUMBER}", text, re.MULTILINE)
+    return [(float(low), float(high)) for low, high in found]
+
+
+def alike(one: Row, other: Row) -> bool:
+    """Whether all values are the same within 1 % and half the error bar of the first.
 
     The motion of many charges differs between processors after a while, as chance would have it.
     """
-    values = told_answers(printed, names)
-    for name, value, error in told_answers(shown, names):
-        of_name = [found for other, found, _ in values if other == name]
-        near = pytest.approx(value, rel=0.0, abs=0.01 * abs(value) + 0.5 * error)
-        assert any(near == found for found in of_name), f"{name}: {value} shown, printed: {of_name}"
+    return len(one.values) == len(other.values) and all(
+        abs(found - value) <= 0.01 * abs(value) + 0.5 * error
+        for (value, error), (found, _) in zip(one.values, other.values, strict=True)
+    )
 
 
-def questions_of(folder: Path) -> set[str]:
-    """The names of the questions of the scenarios in a folder."""
-    files = [tomllib.loads(path.read_text()) for path in folder.glob("*.toml")]
-    return {question["name"] for file in files for question in file.get("question", [])}
+def check_output(shown: str, printed: str, word_for_word: bool = False) -> None:
+    """What a page shows was printed: rows nearly so, limits in intervals that overlap.
+
+    word_for_word : every line as it stands, but for one that says that some were left out
+    """
+    if word_for_word:
+        missing = [
+            line for line in shown.splitlines() if line not in (*printed.splitlines(), "...")
+        ]
+        assert [] == missing
+    for row in rows(shown):
+        of_name = [found for found in rows(printed) if row.name == found.name]
+        assert any(alike(row, found) for found in of_name), f"{row} shown, printed: {of_name}"
+    for low, high in intervals(shown):
+        found = intervals(printed)
+        assert any(a <= high and low <= b for a, b in found), f"{low} to {high}, printed: {found}"
 
 
 def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
@@ -164,15 +192,18 @@ def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
 def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path) -> None:
     names: dict[str, object] = {"__name__": "page"}
     goes_on: list[subprocess.Popen[bytes]] = []
-    printed: str | None = None
+    printed, word_for_word = None, False
     try:
         for block in blocks(page):
             if block.saved_as is not None:
                 assert Path(block.saved_as).name == block.saved_as, "a bare name, in this folder"
                 (desk / block.saved_as).write_text(block.text)
             elif block.language == "text" and printed is not None and not block.above:
-                check_output(block.text, printed, questions_of(desk))
+                check_output(block.text, printed, word_for_word)
             printed = type_in(block.text, goes_on) if block.language == "sh" else None
+            word_for_word = (
+                re.fullmatch(r"driftwell (check|estimate) [\w.-]+\n", block.text) is not None
+            )
             if block.language == "python" and block.saved_as is None:
                 exec(compile(block.text, page.name, "exec"), names)
     finally:
@@ -182,15 +213,27 @@ def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path
             process.wait(20)
 
 
-def test_answers_are_read_off_an_output_and_held_against_it() -> None:
-    """One that is off, and one that was not printed at all, are told."""
-    printed = "held 2             0.50 ± 0.02   5 of 10\nsize across  82.7 ± 1.0 um  mean\n"
-    names = {"held", "held 2", "size across"}
-    assert [("held 2", 0.5, 0.02), ("size across", 82.7, 1.0)] == told_answers(printed, names)
-    check_output("size across  83.0 ± 1.0 um", printed, names)
-    for wrong in ("size across  85.0 ± 1.0 um", "held  0.50 ± 0.02"):
+def test_what_a_page_shows_is_held_against_what_was_printed() -> None:
+    """A value that is off, a name that was not printed, an interval elsewhere, another line."""
+    printed = (
+        "held 2       0.50 ± 0.02  5 of 10\nsize across  82.7 ± 1.0 um  mean\n"
+        "  60 V  0.000 ± 0.024  1.000 ± 0.024\nlimit: 5 V, interval 4 V to 6 V: with\n"
+    )
+    assert [Row("held 2", ((0.5, 0.02),)), Row("size across", ((82.7, 1.0),))] == rows(printed)[:2]
+    assert [(4.0, 6.0)] == intervals(printed)
+    check_output("size across  83.0 ± 1.0 um\n60 V  0.000 ± 0.024  1.000 ± 0.024", printed)
+    check_output("limit: 5.6 V, interval 5.5 V to 7 V: with", printed)
+    check_output("...\nheld 2       0.50 ± 0.02  5 of 10", printed, word_for_word=True)
+    for wrong in (
+        "size across  85.0 ± 1.0 um",
+        "held  0.50 ± 0.02",
+        "60 V  0.000 ± 0.024  0.900 ± 0.024",
+        "limit: 6.6 V, interval 6.5 V to 7 V: with",
+    ):
         with pytest.raises(AssertionError):
-            check_output(wrong, printed, names)
+            check_output(wrong, printed)
+    with pytest.raises(AssertionError):
+        check_output("size across  83.0 ± 1.0 um", printed, word_for_word=True)
 
 
 def test_the_readme_states_the_job_in_one_paragraph_before_its_two_commands() -> None:

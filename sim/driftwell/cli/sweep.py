@@ -36,6 +36,7 @@ def sweep_command(
     retry_failed: bool,
     pictures: bool,
     place: Place,
+    stop_after: float | None = None,
 ) -> int:
     """Compute what is not there yet; returns the exit code."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-sweep")
@@ -48,7 +49,7 @@ def sweep_command(
             )
         tell(study.title)
         result, written = _carried_out(
-            study, folder, workers, threads, retry_failed, pictures, place
+            study, folder, workers, threads, retry_failed, pictures, place, stop_after
         )
     except DriftwellError as error:
         tell(str(error))
@@ -68,11 +69,12 @@ def _carried_out(
     retry_failed: bool,
     pictures: bool,
     place: Place,
+    stop_after: float | None = None,
 ) -> tuple[SweepResult, bool]:
     """What the sweep came to, and whether all that was to be written and drawn could be."""
     engines = Engines(place.cluster(), workers)
     wish = StopWish(lambda: True, engines.kill)
-    display = SweepDisplay(wish)
+    display = SweepDisplay(wish, stop_after)
     with engines.working_in(folder, study.text, study.scenario_text, wish) as changed:
         if changed:
             tell(
