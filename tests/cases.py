@@ -10,6 +10,7 @@ from typing import Any
 
 from driftwell.constants import ATOMIC_MASS, ELECTRON_MASS, ELEMENTARY_CHARGE
 from driftwell.fields.form import FieldForm
+from driftwell.fields.from_python.functions import give
 from driftwell.fields.table import FIELD_KINDS
 from driftwell.forms import Form
 from driftwell.forms.body import Body
@@ -61,7 +62,37 @@ def process(kind: str, **keys: Any) -> ProcessForm:
 SINE = {"frequency": "1.1 MHz", "phase": "40 deg"}
 OFF_CENTRE = ["0.3 mm", "-0.2 mm", "0.5 mm"]
 
+
+def saddle(x: float, y: float, z: float, strength: float, twist: float) -> tuple[float, ...]:
+    """A harmonic potential in V, and minus its gradient; lengths in m."""
+    bend = 3.0 * strength / twist
+    g = strength * (x * x - y * y) + bend * z * (x * x - y * y)
+    slope = 2.0 * (strength + bend * z)
+    return g, -slope * x, slope * y, -bend * (x * x - y * y)
+
+
+def twisted(x: float, y: float, z: float, slope: float) -> tuple[float, ...]:
+    """A magnetic field without sources and curl, in T."""
+    return 0.1 + slope * y, slope * x, 0.3
+
+
 FIELDS = [
+    field(
+        "python-potential",
+        function="saddle",
+        sha256=give(saddle, "potential").sha256,
+        parameters={"strength": 4e5, "twist": 20e-3},
+        scale={"amplitude": 3.0, **SINE},
+        centre=OFF_CENTRE,
+    ),
+    field(
+        "python-flux",
+        function="twisted",
+        sha256=give(twisted, "flux").sha256,
+        parameters={"slope": 7.0},
+        scale=0.5,
+        centre=OFF_CENTRE,
+    ),
     field("uniform-electric", strength="20 kV/m"),
     field(
         "uniform-electric",

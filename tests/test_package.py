@@ -15,7 +15,8 @@ from tests.record.invented_run import invented_run
 
 
 def test_the_package_names_what_it_offers() -> None:
-    assert ["__version__", "open_run"] == sorted(driftwell.__all__)
+    assert {"Scenario", "__version__", "open_run", "read"} < set(driftwell.__all__)
+    assert sorted(driftwell.__all__) == dir(driftwell)
     for name in driftwell.__all__:
         assert getattr(driftwell, name) is not None
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import tomllib
 from pathlib import Path
 
 import pytest
@@ -67,6 +68,34 @@ def test_a_template_runs_to_its_end_and_answers_all_it_asks(
     assert len(answers) >= 3
     for answer in answers:
         assert math.isfinite(answer.value), f"{answer.name}: {answer.note}"
+
+
+def test_the_crystal_as_written_freezes_and_is_judged_free_of_faults(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = tmp_path / "new.toml"
+    assert 0 == main(["new", "crystal", "-o", str(path)])
+    assert 0 == main(["run", str(path), "-o", str(tmp_path / "run"), "--no-pictures"])
+    assert "judgement: nothing found amiss" in capsys.readouterr().out
+    temperature = open_run(tmp_path / "run").answers[0]
+    assert "temperature along z, frozen" == temperature.name
+    assert 0.0 < temperature.value < 0.01  # K; it begins at 0.2 K
+
+
+def test_the_limit_as_written_has_its_threshold_between_its_ends(tmp_path: Path) -> None:
+    path = tmp_path / "limit.toml"
+    assert 0 == main(["new", "limit", "-o", str(path)])
+    study = tomllib.loads(path.read_text())
+    limit, found = study["limit"], []
+    for end in (limit["from"], limit["to"]):
+        folder, charge = tmp_path / end.replace(" ", ""), f"{limit['key']}={end}"
+        given = [word for each in (*study["set"], charge) for word in ("--set", each)]
+        scenario = str(tmp_path / study["scenario"])
+        assert 0 == main(["run", scenario, "-o", str(folder), "--no-pictures", *given])
+        answers = {each.name: each for each in open_run(folder).answers}
+        found.append(answers[limit["answer"]].value)
+    assert found[0] > limit["crosses"] + 0.05
+    assert found[1] < limit["crosses"] - 0.05
 
 
 def test_a_file_that_is_there_is_never_written_over(

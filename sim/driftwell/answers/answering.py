@@ -20,8 +20,7 @@ def answer_all(questions: Sequence[QuestionForm], evidence: Evidence) -> list[An
     moved the charges until then.
     """
     return [
-        _with_force_errors(_answer(question, evidence), question, evidence)
-        for question in questions
+        with_force_errors(_answer(question, evidence), question, evidence) for question in questions
     ]
 
 
@@ -35,7 +34,8 @@ def _answer(question: QuestionForm, evidence: Evidence) -> Answer:
     return Answer(question.name, question.ask, math.nan, question.unit, None, note)
 
 
-def _with_force_errors(answer: Answer, question: QuestionForm, evidence: Evidence) -> Answer:
+def with_force_errors(answer: Answer, question: QuestionForm, evidence: Evidence) -> Answer:
+    """The answer with the error of the forces that moved the charges until then."""
     until = question.moved_until(evidence.end_time)
     if until <= 0.0:
         return answer

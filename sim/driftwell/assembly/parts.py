@@ -20,6 +20,7 @@ from driftwell.assembly.births import (
     loaded_unborn,
     put_in_cell,
 )
+from driftwell.assembly.given_fields import check_given
 from driftwell.assembly.marks import all_marks, all_traces, traced
 from driftwell.assembly.newcomers import source_rates
 from driftwell.assembly.pace import chosen_pace
@@ -243,6 +244,7 @@ def assembled(
     everyone = particles if unborn is None else joined([particles, unborn.particles])
     check_births(scenario, everyone, conductors)
     check_sides(scenario, everyone)  # before anything is solved
+    check_given(scenario, everyone)
     acting = None
     if solve or field_is_kept(scenario, loaded.folder):
         acting = acting_field(scenario, loaded.folder, told)

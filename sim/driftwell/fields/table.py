@@ -52,6 +52,8 @@ from driftwell.fields.electric_multipole import (
     electric_multipole,
 )
 from driftwell.fields.form import FieldForm, PackedField, Role
+from driftwell.fields.from_python.flux import FLUX_FROM_PYTHON, FluxFromPython
+from driftwell.fields.from_python.potential import POTENTIAL_FROM_PYTHON, PotentialFromPython
 from driftwell.fields.gridded_gap import GRIDDED_GAP, GriddedGap, gridded_gap
 from driftwell.fields.magnetic_multipole import (
     MAGNETIC_MULTIPOLE,
@@ -148,6 +150,8 @@ FIELD_KINDS: tuple[type[FieldForm], ...] = (
     MagnetBlock,
     MagnetCylinder,
     MultipoleMagnet,
+    PotentialFromPython,
+    FluxFromPython,
 )
 
 KERNELS_APART = {
@@ -167,7 +171,8 @@ ELECTRIC_APART = {
     GRIDDED_GAP: gridded_gap,
 }
 """Of the electric kinds that are compiled apart: the kernel."""
-LAST_APART = max(*KERNELS_APART, *ELECTRIC_APART)
+LAST_APART = max(*KERNELS_APART, *ELECTRIC_APART, POTENTIAL_FROM_PYTHON, FLUX_FROM_PYTHON)
+"""The last two bring the addresses of their kernels with them (fields/from_python)."""
 
 PARAMETERS = 16
 

@@ -4,6 +4,7 @@ Nothing here knows physics beyond numbers; nothing here imports more than numpy,
 """
 
 from driftwell.kernels.compiled import (
+    given_kernel,
     inlined_kernel,
     inner_kernel,
     inner_pair_kernel,
@@ -18,6 +19,7 @@ from driftwell.kernels.compiled import (
 )
 
 __all__ = [
+    "given_kernel",
     "inlined_kernel",
     "inner_kernel",
     "inner_pair_kernel",

@@ -17,7 +17,7 @@ import tempfile
 import time
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeVar, cast
 
 import numba
 
@@ -194,6 +194,15 @@ def _take_constants_as_values(made: Any) -> None:
 def kernel(function: F) -> F:
     """Compile exactly as written: no reordering of sums."""
     return _compiled(function, _nrt=False)
+
+
+def given_kernel(function: F) -> F:
+    """A function that a user gives to this process, compiled as written and kept in no cache.
+
+    Like an :func:`inlined_kernel`, but it may close over anything that compiled code may.
+    """
+    made: Any = numba.njit(error_model="numpy", nogil=True)(function)
+    return cast(F, made)
 
 
 def inlined_kernel(function: F) -> F:

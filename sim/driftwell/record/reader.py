@@ -191,7 +191,7 @@ class Run:
                 f"{_listed(self.snapshots)} s. Ask for one of these times."
             )
         _, facts, number = min(places, key=lambda place: place[0])
-        with self._segment(facts) as file:
+        with self.segment_file(facts) as file:
             return _snapshot_in(file[f"snapshot/{number}"])
 
     def moments(self, cloud: str) -> Moments:
@@ -275,7 +275,7 @@ class Run:
                 found[name] = np.asarray(item[()])
 
         if self.segments:
-            with self._segment(self.segments[-1]) as file:
+            with self.segment_file(self.segments[-1]) as file:
                 file["state"].visititems(keep)
         return found
 
@@ -285,7 +285,7 @@ class Run:
         for facts in self.segments:
             path = self.folder / facts.name
             try:
-                with self._segment(facts):
+                with self.segment_file(facts):
                     pass
             except RecordError as fault:
                 faults.append(str(fault))
@@ -300,7 +300,8 @@ class Run:
         return faults
 
     @contextmanager
-    def _segment(self, facts: SegmentFacts) -> Iterator[Any]:
+    def segment_file(self, facts: SegmentFacts) -> Iterator[Any]:
+        """The file of a sealed segment, open for reading. Raises RecordError if it is damaged."""
         path = self.folder / facts.name
         with opened(path) as file:
             size = path.stat().st_size
@@ -321,7 +322,7 @@ class Run:
         pieces = [empty]
         for facts in self.segments:
             if facts.rows[str(entry.shape[0])]:
-                with self._segment(facts) as file:
+                with self.segment_file(facts) as file:
                     pieces.append(_of_now(file[path][choice], empty.dtype))
         return np.concatenate(pieces)
 

@@ -28,6 +28,7 @@ class LoadedScenario:
     settings : ``key=value`` given beside it, which are in `scenario` and not in `text`
     folder : what files named in the scenario count from
     digest : of the content with settings and files named, see :mod:`driftwell.scenario.digest`
+    from_code : whether a program made it, and no file holds what a command would read
     """
 
     scenario: Scenario
@@ -36,10 +37,13 @@ class LoadedScenario:
     folder: Path
     digest: str
     settings: tuple[str, ...] = ()
+    from_code: bool = False
 
     @property
     def command(self) -> str:
-        """The command that makes a run of it."""
+        """The command that makes a run of it; empty where none does."""
+        if self.from_code:
+            return ""
         settings = [word for each in self.settings for word in ("--set", each)]
         text = shlex.join(["driftwell", "run", str(self.path), *settings])
         return text.encode(errors="backslashreplace").decode()  # names of files may be no text
@@ -54,15 +58,18 @@ def read_scenario(path: str | Path, overrides: Sequence[str] = ()) -> LoadedScen
         The file cannot be read or has faults; the text has one line for each, in file order.
     """
     path = Path(path)
-    shown = shown_path(path)
-    text = source_text(path)
+    return scenario_of(source_text(path), path, overrides)
+
+
+def scenario_of(text: str, path: Path, overrides: Sequence[str] = ()) -> LoadedScenario:
+    """The scenario of a text that was read from `path`; as :func:`read_scenario`."""
+    shown, folder = shown_path(path), path.parent
     data = raw_table(text, shown)
     settings, unusable = apply_settings(data, overrides, Scenario)
-    scenario, faults = checked_table(data, path.parent)
+    scenario, faults = checked_table(data, folder)
     if faults or unusable or scenario is None:
         lines = told(faults, data, Scenario, text, shown, settings)
         raise ScenarioError("\n".join(unusable + lines))
-    folder = path.parent
     return LoadedScenario(scenario, text, path, folder, digest(scenario, folder), tuple(overrides))
 
 

@@ -16,7 +16,6 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any, Self
 
-import driftwell
 from driftwell.study.child import Child
 from driftwell.study.engine import Done, EngineError, Task
 
@@ -45,7 +44,7 @@ def worker_command() -> list[str]:
 def worker_environment(threads: int) -> dict[str, str]:
     """The environment of a worker that may use so many threads and imports this very package."""
     found = {**os.environ, **dict.fromkeys(_LIMITS, str(threads))}
-    root = Path(driftwell.__file__).parent.parent
+    root = Path(__file__).resolve().parents[2]
     if root.name not in {"site-packages", "dist-packages"}:
         others = [found["PYTHONPATH"]] if found.get("PYTHONPATH") else []
         found["PYTHONPATH"] = os.pathsep.join([str(root), *others])

@@ -100,8 +100,8 @@ class _Plane:
         points[..., self._columns[1]] = self.up[:, None]
         flat = points.reshape(-1, len(low))
         shape = self.up.size, self.across.size
-        self._distance, owner = (each.reshape(shape) for each in acting.nearest(flat))
-        self._owner = owner
+        distance, owner = acting.nearest(flat)
+        self._distance, self._owner = distance.reshape(shape), owner.reshape(shape)
         outside = self._distance > 0.0
         self.potential = np.full(shape, np.nan)
         solution = acting.solved.solution

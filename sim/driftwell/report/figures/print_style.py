@@ -10,7 +10,7 @@ from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from typing import Any
 
-import matplotlib
+import matplotlib.style
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
@@ -68,7 +68,7 @@ _STYLE: dict[str, Any] = {
 @contextmanager
 def print_style() -> Iterator[None]:
     """While inside, figures are made and drawn as for print."""
-    with style(), matplotlib.rc_context(_STYLE):
+    with style(), matplotlib.style.context(_STYLE):
         yield
 
 
@@ -166,10 +166,10 @@ def finish(figure: Figure) -> Figure:
     for axes in figure.axes:
         axes.set_title("")
         for place in ("left", "right"):
-            axes.set_title("", loc=place)  # type: ignore[arg-type]
+            axes.set_title("", loc=place)
         for line in axes.lines:
             drawn = line.get_marker() not in ("", "None", None)
-            if drawn and len(line.get_xydata()) >= MANY:
+            if drawn and np.size(line.get_xdata()) >= MANY:
                 line.set_rasterized(True)
     return figure
 

@@ -76,7 +76,7 @@ def counted(place: Floats, weight: Floats, edges: Floats, kind: str) -> Profile:
 
 def bin_count(charges: int) -> int:
     """How many bins suit so many charges: twice the cube root, as for smooth densities."""
-    return min(max(round(2.0 * float(charges) ** (1.0 / 3.0)), FEWEST), MOST)
+    return min(max(round(2.0 * math.cbrt(charges)), FEWEST), MOST)
 
 
 def joined(edges: Floats, counts: NDArray[np.int64]) -> Floats:

@@ -56,7 +56,7 @@ class Courses:
             apart[:, axis] -= length * np.round(apart[:, axis] / length)
         here = before + part * apart
         here[t >= self.lost] = np.nan
-        return here
+        return np.asarray(here)
 
 
 def courses_of(scene: Scene, most: int) -> Courses:

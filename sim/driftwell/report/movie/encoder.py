@@ -52,6 +52,7 @@ def encode(
     part = path.with_name(path.name + PART)
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
+        part.touch()
         if form_of(path) == "mp4":
             _mp4(part, frames, size, rate, title)
         else:
@@ -85,10 +86,11 @@ def _mp4(
             with suppress(BrokenPipeError):  # the encoder says why, below
                 for frame in frames:
                     process.stdin.write(frame.tobytes())  # type: ignore[union-attr]
-            with suppress(BrokenPipeError):
                 process.stdin.close()  # type: ignore[union-attr]
             code = process.wait()
         finally:
+            with suppress(OSError):
+                process.stdin.close()  # type: ignore[union-attr]
             if process.poll() is None:
                 process.kill()
                 process.wait()
@@ -105,13 +107,14 @@ def _gif(part: Path, frames: Iterable[Frame], rate: float) -> None:
     """All frames in the colours of the first, one in memory at a time."""
     pictures = (Image.fromarray(np.ascontiguousarray(frame[..., :3])) for frame in frames)
     first = next(pictures).quantize(COLOURS)
-    first.save(
-        part,
-        format="GIF",
-        save_all=True,
-        append_images=(
-            picture.quantize(palette=first, dither=Image.Dither.NONE) for picture in pictures
-        ),
-        duration=max(20, 10 * round(100.0 / rate)),
-        loop=0,
-    )
+    with part.open("wb") as file:
+        first.save(
+            file,
+            format="GIF",
+            save_all=True,
+            append_images=(
+                picture.quantize(palette=first, dither=Image.Dither.NONE) for picture in pictures
+            ),
+            duration=max(20, 10 * round(100.0 / rate)),
+            loop=0,
+        )

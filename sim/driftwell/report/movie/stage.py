@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -80,7 +81,7 @@ class Stage:
         self._figure.set_layout_engine(
             ConstrainedLayoutEngine(rect=(0.01, 0.02, 0.98, 0.92), w_pad=0.04, h_pad=0.02)
         )
-        self._canvas = FigureCanvasAgg(self._figure)
+        self._canvas = _canvas(self._figure)
         self._figure.text(0.012, 0.985, printable(title, 20 + 34 * len(planes)), va="top")
         self._views: list[View] = []
         shown = [cloud for cloud in clouds if (courses.cloud == cloud.index).any()]
@@ -94,13 +95,13 @@ class Stage:
         )
         self._unit = prefix_size(float(courses.time[-1]))
         self._canvas.draw()
-        self._still = self._canvas.copy_from_bbox(self._figure.bbox)  # type: ignore[attr-defined]
+        self._still = self._canvas.copy_from_bbox(self._figure.bbox)
 
     def image(self, t: float) -> Image:
         """The picture (height, width, 4) at a time, s; it changes with the next call."""
         places = self._courses.at(t)
         gone = self._courses.last[self._courses.lost <= t]
-        self._canvas.restore_region(self._still)  # type: ignore[attr-defined]
+        self._canvas.restore_region(self._still)
         for view in self._views:
             for cloud, line in view.dots:
                 line.set_data(*view.shown(places[self._courses.cloud == cloud]))
@@ -182,6 +183,11 @@ class Stage:
         legend.set_in_layout(False)
         for text, cloud in zip(legend.get_texts(), clouds, strict=True):
             text.set_text(printable(cloud.name, 16))
+
+
+def _canvas(figure: Figure) -> Any:
+    """A canvas to draw on, whose methods have no types."""
+    return FigureCanvasAgg(figure)
 
 
 def _widened(own: Interval, outer: Interval) -> Interval:

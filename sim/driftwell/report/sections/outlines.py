@@ -19,6 +19,8 @@ from driftwell.walls.sphere import Sphere
 
 Floats = NDArray[np.float64]
 
+TOUCH = 1e-9
+"""Least distance that counts as one, as part of the largest."""
 FINE = 600
 """Points along a line on which it is settled where a wall is solid."""
 
@@ -35,10 +37,12 @@ def outlines_of(
     distance, owner : (nu, na), signed distance to the nearest body, m, and whose it is
     """
     found: list[Drawn] = []
-    padded = np.pad(distance, 1, constant_values=np.abs(distance).max())
+    far = float(np.abs(distance).max())
+    padded = np.pad(distance, 1, constant_values=far)
+    apart = np.maximum(np.abs(padded), TOUCH * far)  # a point on a surface is no outline of others
     for number, name in enumerate(names):
         own = np.pad(owner, 1, constant_values=-1) == number
-        level = np.where(own, padded, np.abs(padded))
+        level = np.where(own, padded, apart)
         lines = contourpy.contour_generator(_padded(across), _padded(up), level).lines(0.0)
         longest = sorted(lines, key=len, reverse=True)  # type: ignore[arg-type]
         found += [Drawn(name if k == 0 else "", line) for k, line in enumerate(longest)]  # type: ignore[arg-type]

@@ -54,8 +54,14 @@ class Scenery:
         if acting is None:
             return []
         places = map_places(acting.solved.map.geometry, acting.centre, section.points.T)
-        distance, owner = (each.reshape(section.shape) for each in acting.nearest(places))
-        return outlines_of(section.across, section.up, distance, owner, acting.solved.names)
+        distance, owner = acting.nearest(places)
+        return outlines_of(
+            section.across,
+            section.up,
+            distance.reshape(section.shape),
+            owner.reshape(section.shape),
+            acting.solved.names,
+        )
 
     def walls(self, section: Section) -> list[Floats]:
         """Lines (k, 2), m, of the walls in a plane."""

@@ -88,7 +88,24 @@ def draw(scene: Scene, options: FigureOptions) -> Figure:
     put_walls(panel, shown, scenery, plane_section)
     put_ways(panel, shown, plane, ways)
     put_frame(panel, shown, (AXES[plane[0]], AXES[plane[1]]))
+    keep_names_inside(figure, panel)
     return finish(figure)
+
+
+def keep_names_inside(figure: Figure, panel: Axes) -> None:
+    """Shift names of electrodes that would be cut at the panel's edge."""
+    figure.draw_without_rendering()
+    frame_box, turned = panel.get_window_extent(), panel.transData.inverted()
+    for text in panel.texts:
+        if not text.get_path_effects():
+            continue
+        box = text.get_window_extent()
+        right = max(frame_box.x0 - box.x0, 0.0) - max(box.x1 - frame_box.x1, 0.0)
+        above = max(frame_box.y0 - box.y0, 0.0) - max(box.y1 - frame_box.y1, 0.0)
+        if box.width < frame_box.width and (right or above):
+            middle = panel.transData.transform(text.get_position())
+            x, y = turned.transform((middle[0] + right, middle[1] + above))
+            text.set_position((float(x), float(y)))
 
 
 def put_field(figure: Figure, panel: Axes, shown: Frame, plane: Section, potential: Floats) -> None:

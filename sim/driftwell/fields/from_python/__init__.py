@@ -1,0 +1,1 @@
+"""Fields that a user gives as functions, from Python only: a file can name one, never hold it."""
