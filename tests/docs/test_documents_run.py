@@ -2,7 +2,9 @@
 
 What a page is read as: a line that ends in "Save this as `NAME`:" puts the block below it into
 that file. Lines of `sh` blocks that begin with `driftwell` are typed as they stand, in the order of
-the page; one that ends in `# exit code 12` ends with that code, all others with 0. A line that ends
+the page; one that ends in `# exit code 12` ends with that code, all others with 0. Those of the
+README are typed into a shell; those of other pages are taken apart as a shell would, and carried
+out in this process, which loads everything once. A line that ends
 in `&` goes on beside those after it and is ended with the page; so `dask` may be started, too. A
 `text` block right below an `sh` block shows what its commands printed: lines of a name and numbers
 are compared, and intervals of limits; below `check` and `estimate` every line is.
@@ -12,19 +14,22 @@ from __future__ import annotations
 
 import os
 import re
+import shlex
 import shutil
 import signal
 import subprocess
 import sys
 import tomllib
-from contextlib import suppress
+from contextlib import redirect_stderr, redirect_stdout, suppress
 from dataclasses import dataclass
+from io import BytesIO, TextIOWrapper
 from pathlib import Path
 
 import pytest
 
 from driftwell.cli.converge import NOT_CONVERGED
 from driftwell.cli.limit import EXIT_CODES as LIMIT_CODES
+from driftwell.cli.main import main
 from driftwell.cli.sweep import SOME_FAILED
 from driftwell.run import EXIT_CODES
 from driftwell.scenario.read import read_scenario
@@ -59,8 +64,11 @@ class Block:
 
 
 def blocks(page: Path) -> list[Block]:
-    found = re.findall(r"(.*?)^```(\w*)\n(.*?)^```$", page.read_text(), re.MULTILINE | re.DOTALL)
-    return [Block(language, text, above.strip()) for above, language, text in found]
+    text, found, end = page.read_text(), [], 0
+    for fenced in re.finditer(r"^```(\w*)\n(.*?)^```$", text, re.MULTILINE | re.DOTALL):
+        found.append(Block(fenced[1], fenced[2], text[end : fenced.start()].strip()))
+        end = fenced.end()
+    return found
 
 
 def typed(page: Path) -> list[str]:
@@ -96,8 +104,28 @@ def desk(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     return tmp_path
 
 
-def shell(line: str) -> subprocess.CompletedProcess[str]:
-    return subprocess.run(["sh", "-c", line], capture_output=True, text=True, check=False)
+def shell(line: str) -> tuple[int, str]:
+    """Exit code of a line typed into a shell, and what it printed."""
+    done = subprocess.run(["sh", "-c", line], capture_output=True, text=True, check=False)
+    return done.returncode, done.stdout + done.stderr
+
+
+def here(line: str) -> tuple[int, str]:
+    """The same of a command of driftwell, carried out in this process."""
+    said = TextIOWrapper(BytesIO(), encoding="utf-8")  # of both streams, in their order
+    with redirect_stdout(said), redirect_stderr(said):
+        try:
+            code = main(shlex.split(line, comments=True)[1:])
+        except SystemExit as refused:  # by argparse
+            code = int(refused.code or 0)
+    said.flush()
+    return code, said.buffer.getvalue().decode()
+
+
+def for_a_shell(line: str) -> bool:
+    """Whether there is more in a line than a command of driftwell, or it sets the threads."""
+    signs = shlex.shlex(line, posix=True, punctuation_chars=True)
+    return "--threads" in line or any(set(sign) <= set("();<>|&") for sign in signs)
 
 
 def started(line: str) -> subprocess.Popen[bytes]:
@@ -168,7 +196,7 @@ def check_output(shown: str, printed: str, word_for_word: bool = False) -> None:
         assert any(a <= high and low <= b for a, b in found), f"{low} to {high}, printed: {found}"
 
 
-def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
+def type_in(text: str, goes_on: list[subprocess.Popen[bytes]], into_shell: bool) -> str:
     """Type the commands of a block; what they printed."""
     printed = ""
     for line in text.splitlines():
@@ -177,10 +205,9 @@ def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
                 goes_on.append(started(line))
                 continue
             expected = re.search(r"# exit code (\d+)$", line)
-            done = shell(line)
-            told = f"{line}\n{done.stdout}{done.stderr}"
-            assert (int(expected[1]) if expected else 0) == done.returncode, told
-            printed += done.stdout + done.stderr
+            code, told = (shell if into_shell or for_a_shell(line) else here)(line)
+            assert (int(expected[1]) if expected else 0) == code, f"{line}\n{told}"
+            printed += told
     return printed
 
 
@@ -192,6 +219,7 @@ def type_in(text: str, goes_on: list[subprocess.Popen[bytes]]) -> str:
 def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path) -> None:
     names: dict[str, object] = {"__name__": "page"}
     goes_on: list[subprocess.Popen[bytes]] = []
+    into_shell = page.name == "README.md"
     printed, word_for_word = None, False
     try:
         for block in blocks(page):
@@ -200,7 +228,9 @@ def test_commands_and_python_of_a_page_run_in_their_order(page: Path, desk: Path
                 (desk / block.saved_as).write_text(block.text)
             elif block.language == "text" and printed is not None and not block.above:
                 check_output(block.text, printed, word_for_word)
-            printed = type_in(block.text, goes_on) if block.language == "sh" else None
+            printed = None
+            if block.language == "sh":
+                printed = type_in(block.text, goes_on, into_shell)
             word_for_word = (
                 re.fullmatch(r"driftwell (check|estimate) [\w.-]+\n", block.text) is not None
             )
