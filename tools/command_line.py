@@ -20,8 +20,8 @@ COLUMNS = "100"
 HEAD = """\
 # The command line
 
-This page is written by `tools/command_line.py` from what the commands themselves say with `--help`; change it
-there.
+This page is written by `tools/command_line.py` from what the commands themselves say with `--help`;
+change it there.
 
 """
 
