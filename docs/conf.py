@@ -14,6 +14,7 @@ release = re.findall(r'"(.*)"', _VERSION.read_text(encoding="utf-8"))[-1]
 extensions = ["myst_parser"]
 myst_enable_extensions = ["colon_fence"]
 myst_heading_anchors = 4
+smartquotes = False  # --set is to stay --set
 suppress_warnings = ["myst.header"]  # some pages go from a title to a small heading
 
 html_theme = "furo"
@@ -21,6 +22,6 @@ html_title = f"driftwell {release}"
 html_copy_source = False
 html_theme_options = {"top_of_page_buttons": []}
 html_static_path = ["site"]
-html_css_files = ["tables.css"]
+html_css_files = ["wide.css"]
 pygments_style = "a11y-high-contrast-light"
 pygments_dark_style = "a11y-high-contrast-dark"

@@ -31,7 +31,9 @@ def page(whole: argparse.ArgumentParser) -> str:
     commands = _commands(whole)
     helped = {each.dest: each.help for each in _choices(whole)}
     parts = [HEAD, *_of(whole)]
-    rows = [(f"[`{name}`](#{whole.prog}-{name})", _cell(helped[name])) for name in commands]
+    rows: list[tuple[str, ...]] = [
+        (f"[`{name}`](#{whole.prog}-{name})", _cell(helped[name])) for name in commands
+    ]
     parts.append(f"## Commands\n\n{_table(('command', 'what it does'), rows)}")
     for name, command in commands.items():
         parts.append(f"## {whole.prog} {name}\n\n{_sentence(helped[name])}\n")
@@ -105,7 +107,8 @@ def _text(text: str) -> str:
     """
     parts = []
     for paragraph in re.split(r"\n\s*\n", text.strip("\n")):
-        plain, set_off = [], []
+        plain: list[str] = []
+        set_off: list[str] = []
         for line in paragraph.splitlines():
             (set_off if line.startswith(" ") or set_off else plain).append(line)
         if plain:
