@@ -5,6 +5,7 @@ from __future__ import annotations
 from driftwell.cli.commands import (
     check,
     converge,
+    doctor,
     estimate,
     export,
     fields,
@@ -36,4 +37,5 @@ COMMANDS = (
     movie,
     export,
     schema,
+    doctor,
 )
