@@ -20,13 +20,13 @@ from typing import Any
 
 import numpy as np
 
-from driftwell import open_run
 from driftwell.answers.evidence import CloudFacts
 from driftwell.answers.moments import moments_of
 from driftwell.constants import ATOMIC_MASS, ELEMENTARY_CHARGE
 from driftwell.record.header import Header
 from driftwell.record.layout import rows
 from driftwell.record.outcome import Outcome
+from driftwell.record.reader import open_run
 from driftwell.record.rows import tracked_ids
 from driftwell.record.writer import RunWriter
 from driftwell.report.again import scenario_of

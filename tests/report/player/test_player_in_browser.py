@@ -12,6 +12,7 @@ from pictured_run import charges, lost, pictured_run
 from played import NASTY, page_of, scenario_in
 
 from driftwell.record.reader import Run
+from driftwell.report.page.markup import readable
 from tests.browser import Opened, browser, opened
 
 STATE = "window.driftwellPlayer"
@@ -319,7 +320,7 @@ def test_hostile_names_stay_text(chromium: Any, tmp_path: Path) -> None:
         put(found, "colour", "fate")
         assert f"lost: {NASTY}"[:20] in found.page.inner_text("#dwp-legend")
         assert 0 == found.page.locator("img").count()
-        assert NASTY in found.page.get_attribute("#dwp-canvas", "aria-label")
+        assert readable(NASTY) in found.page.get_attribute("#dwp-canvas", "aria-label")
         assert [] == found.complaints
 
 
