@@ -7,7 +7,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from driftwell.answers.answer_lines import force_lines
+from driftwell.answers.answer_lines import common_lines
 from driftwell.coulomb.promise import TOLD, Broken
 from driftwell.ledger.doubts import doubts
 from driftwell.record.reader import Run, open_run
@@ -98,7 +98,7 @@ def test_a_promise_that_is_kept_stands_in_record_and_answers(
     assert early.coulomb_error < size.coulomb_error
     assert 0.0 == first.coulomb_error
     assert result.answers == list(found.answers)
-    (line,) = force_lines(found.answers, 200)
+    (line,) = common_lines(found.answers, 200)
     assert line.startswith(f"coulomb error: rms {early.coulomb_error:.1e} to {error.max():.1e} of")
     assert "behind 2 of 3" in line
     text = "\n".join(summary(found))
@@ -159,7 +159,7 @@ def test_a_direct_sum_has_no_error_to_tell(tmp_path: Path) -> None:
     assert not found.ledger["coulomb_error"].any()
     assert ["Coulomb sum: direct; the scenario says so"] == told
     assert [0.0] * 3 == [answer.coulomb_error for answer in found.answers]
-    assert [] == force_lines(found.answers, 100)
+    assert [] == common_lines(found.answers, 100)
     assert found.ledger["torque_residual"].max() < 1e-14
     assert result.broken is None
 

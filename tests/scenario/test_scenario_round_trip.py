@@ -160,6 +160,8 @@ def fitting(entry: dict[str, Any], number: int) -> dict[str, Any]:
             table[name] = {**value, "species": "heavy"}
         elif isinstance(value, dict) and "energy_spread" in value:
             table[name] = {**value, "energy_spread": "0 J"}  # less than any kinetic energy
+    if table.get("kind") == "python-flux":
+        table.pop("scale", None)  # constant in time
     if {"kinetic_energy", "velocities"} & table.get("shape", {}).keys():
         table.pop("motion", None)  # the shape says how its charges move
     return table

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
-from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell.answers.answer_lines import answer_lines, common_lines
 from driftwell.cli.hand import compared
 from driftwell.cli.judgement import judgement_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
@@ -94,7 +94,7 @@ def _report(result: Result) -> bool:
         "",
         *_doubted(findings),
         *_answers(result),
-        *force_lines(result.answers, width()),
+        *common_lines(result.answers, width()),
         *_by_hand(result),
         *_judgement(result, findings),
         "",
