@@ -13,9 +13,7 @@ from collections.abc import Sequence
 from driftwell._version import __version__
 from driftwell.cli.arguments import parser
 from driftwell.cli.printing import flush_quietly, tell, write_anything
-
-INTERRUPTED = 130
-DEFECT = 1
+from driftwell.exit_codes import DEFECT, INTERRUPTED
 
 TRACEBACK = "DRIFTWELL_TRACEBACK"
 """Environment variable that lets a defect of driftwell show where it is."""

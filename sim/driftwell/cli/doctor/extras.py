@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from importlib.metadata import PackageNotFoundError, version
 
 from driftwell.cli.doctor.line import NOTE, OK, Line
-from driftwell.cli.doctor.versions import suits, wanted
+from driftwell.cli.doctor.versions import comparable, suits, wanted
 
 USES = {
     "cluster": "sweeps on several machines",
@@ -21,14 +21,22 @@ ENCODER = "ffmpeg"
 
 
 def extras() -> Iterator[Line]:
-    """Every extra: there, or what it would bring and how to get it."""
+    """Every extra: there, or what it would bring and how to get it; none without comparing."""
+    if not comparable():
+        return
     for extra, use in USES.items():
         install = f"Only if you want that: pip install 'driftwell[{extra}]'"
         bounds = wanted(extra)
         if not bounds:
-            yield Line(NOTE, f"[{extra}]", f"not known to the driftwell installed: {use}", install)
+            yield Line(
+                NOTE,
+                f"[{extra}]",
+                f"not known to the driftwell that is installed: {use}",
+                f"Only if you want that, in driftwell's own folder: pip install '.[{extra}]'",
+            )
             continue
-        lacking, there = [], []
+        lacking: list[str] = []
+        there: list[str] = []
         for name, bound in bounds.items():
             try:
                 found = version(name)

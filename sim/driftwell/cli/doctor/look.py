@@ -14,13 +14,13 @@ from driftwell.cli.doctor.extras import extras, programs
 from driftwell.cli.doctor.kept import compiled_code, solved_fields
 from driftwell.cli.doctor.line import FAULT, NOTE, Check, Line
 from driftwell.cli.doctor.output import output
-from driftwell.cli.doctor.processor import THREADS, compiler, cores
+from driftwell.cli.doctor.processor import DISABLED, THREADS, compiler, cores
 from driftwell.cli.doctor.room import disk, memory
 from driftwell.cli.doctor.versions import libraries, package, python
 from driftwell.cli.printing import answer, tell, width
 from driftwell.cli.thread_limit import limited_threads
+from driftwell.exit_codes import FINISHED, UNUSABLE
 
-SOUND, SICK = 0, 2
 _WORD, _WHAT = 7, 17
 """Letters of the first two columns."""
 
@@ -45,13 +45,13 @@ def report(checks: Mapping[str, Iterable[Check]]) -> int:
         lines.append("")
     written = answer([*lines, *textwrap.wrap(verdict(found), wide)])
     sick = any(line.word == FAULT for line in found)
-    return SICK if sick or not written else SOUND
+    return UNUSABLE if sick or not written else FINISHED
 
 
 def groups() -> dict[str, tuple[Check, ...]]:
     """All checks by the names of their groups."""
-    said, disabled = os.environ.get(THREADS), os.environ.get("NUMBA_DISABLE_JIT")
-    _settle_threads()
+    said, disabled = os.environ.get(THREADS), os.environ.get(DISABLED)
+    limited_threads(None)  # as a run would, so that a number that is none stops nothing
     return {
         "versions": (package, python, libraries),
         "processor": (lambda: cores(said), lambda: compiler(disabled)),
@@ -96,18 +96,10 @@ def verdict(found: Iterable[Line]) -> str:
 
 def _looked(check: Check) -> Iterator[Line]:
     """What a check finds; a note where it cannot cope with the machine."""
+    name = getattr(check, "__name__", "").replace("_", " ").strip("<>") or "a check"
     try:
         yield from check()
+    except ImportError:
+        yield Line(NOTE, name, "can be looked at once all libraries load")
     except Exception as fault:  # an odd machine must not end the look at the rest
-        name = getattr(check, "__name__", "").replace("_", " ").strip("<>")
-        yield Line(
-            NOTE, name or "a check", f"cannot be looked at here ({type(fault).__name__}: {fault})"
-        )
-
-
-def _settle_threads() -> None:
-    """Settle the threads as a run would, so that a number that is none stops nothing."""
-    try:
-        limited_threads(None)
-    except (AttributeError, OSError):  # a system without affinities
-        os.environ.pop(THREADS, None)
+        yield Line(NOTE, name, f"cannot be looked at here ({type(fault).__name__}: {fault})")

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from collections.abc import Iterator
 
 from driftwell.cli.doctor.line import NOTE, OK, Line
 
 SIGNS = "±µ°"
+ENCODING = "PYTHONIOENCODING"
 
 
 def output() -> Iterator[Line]:
@@ -20,7 +22,9 @@ def output() -> Iterator[Line]:
             NOTE,
             "output",
             f"{encoding}: error bars are written as +-, other signs as their numbers",
-            "export PYTHONUTF8=1, in a terminal that shows UTF-8",
+            f"unset {ENCODING}"
+            if os.environ.get(ENCODING)
+            else "export PYTHONUTF8=1, in a terminal that shows UTF-8",
         )
         return
     yield Line(OK, "output", encoding)

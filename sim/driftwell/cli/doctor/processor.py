@@ -11,12 +11,14 @@ from pathlib import Path
 
 from driftwell.cli.doctor.line import FAULT, NOTE, OK, Line
 from driftwell.cli.options.types import threads as number_of_threads
+from driftwell.cli.thread_limit import usable_cores
 
-THREADS = "NUMBA_NUM_THREADS"
+THREADS, DISABLED = "NUMBA_NUM_THREADS", "NUMBA_DISABLE_JIT"
 _QUOTA = Path("/sys/fs/cgroup/cpu.max")
 _VECTORS = (("avx512f", "AVX-512"), ("avx2", "AVX2"), ("avx", "AVX"), ("neon", "NEON"))
 """Names of the compiler's library for kinds of vector instructions, the widest first."""
 _SLOW = ("avx",)
+_CPU, _FEATURES = "NUMBA_CPU_NAME", "NUMBA_CPU_FEATURES"
 
 
 def cores(said: str | None = None) -> Iterator[Line]:
@@ -39,15 +41,6 @@ def cores(said: str | None = None) -> Iterator[Line]:
         )
 
 
-def usable_cores() -> int:
-    """Cores this process may run on."""
-    affinity = getattr(os, "sched_getaffinity", None)
-    if affinity is not None:
-        with suppress(OSError):
-            return len(affinity(0))
-    return os.cpu_count() or 1
-
-
 def compiler(disabled: str | None = None) -> Iterator[Line]:
     """Whether anything may be compiled, and with which vector instructions.
 
@@ -57,17 +50,18 @@ def compiler(disabled: str | None = None) -> Iterator[Line]:
         yield Line(
             FAULT,
             "compiler",
-            "NUMBA_DISABLE_JIT is set: nothing can be compiled",
-            "unset NUMBA_DISABLE_JIT",
+            f"{DISABLED} is set: nothing can be compiled",
+            f"unset {DISABLED}",
         )
     from llvmlite import binding
 
-    found = os.environ.get("NUMBA_CPU_FEATURES")
-    if found:
-        features = {each[1:] for each in found.split(",") if each.startswith("+")}
+    forced = [name for name in (_CPU, _FEATURES) if os.environ.get(name)]
+    if os.environ.get(_FEATURES):
+        said = os.environ[_FEATURES].split(",")
+        features = {each[1:] for each in said if each.startswith("+")}
     else:
         features = {name for name, there in binding.get_host_cpu_features().items() if there}
-    name = os.environ.get("NUMBA_CPU_NAME") or binding.get_host_cpu_name()
+    name = os.environ.get(_CPU) or binding.get_host_cpu_name()
     kind = next((kind for kind in _VECTORS if kind[0] in features), None)
     where = f"{name}, {platform.machine()}"
     if kind is None or kind[0] in _SLOW:
@@ -76,8 +70,7 @@ def compiler(disabled: str | None = None) -> Iterator[Line]:
             NOTE,
             "vectors",
             f"{what} ({where}): Coulomb sums are slower than with AVX2, AVX-512 or NEON",
-            "Unset NUMBA_CPU_NAME and NUMBA_CPU_FEATURES where they are set; else take another "
-            "machine for long runs.",
+            f"unset {' '.join(forced)}" if forced else "Take another machine for long runs.",
         )
     else:
         yield Line(OK, "vectors", f"{kind[1]} ({where})")

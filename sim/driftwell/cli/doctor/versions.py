@@ -5,7 +5,7 @@ A library that is there may still not load: numba, for one, refuses a numpy newe
 
 from __future__ import annotations
 
-import importlib
+import importlib.util
 import platform
 import sys
 from collections.abc import Iterator
@@ -15,8 +15,14 @@ from driftwell._version import __version__
 from driftwell.cli.doctor.line import FAULT, NOTE, OK, Line
 
 PACKAGE = "driftwell"
-LIBRARIES = ("numpy", "numba", "scipy", "h5py", "tqdm", "matplotlib", "pydantic", "pint")
+LIBRARIES = (
+    *("numpy", "numba", "scipy", "h5py", "tqdm", "matplotlib", "contourpy", "pydantic", "pint"),
+    "shtab",
+)
 """What must load before anything runs; their modules have the names of their packages."""
+
+COMPARING = "packaging"
+"""The library that compares versions; it comes with matplotlib."""
 
 
 def package() -> Iterator[Line]:
@@ -38,7 +44,7 @@ def package() -> Iterator[Line]:
         NOTE,
         PACKAGE,
         f"{__version__} runs, and {installed} is installed: two versions are mixed",
-        "Install the one you mean anew: pip install --force-reinstall --no-deps",
+        "In the folder of the one you mean: pip install --force-reinstall --no-deps .",
     )
 
 
@@ -54,13 +60,20 @@ def python() -> Iterator[Line]:
         FAULT,
         "Python",
         f"{here}, where driftwell wants {wanted}",
-        "Make an environment with another Python: python3.12 -m venv .venv && "
-        ".venv/bin/pip install driftwell",
+        "In driftwell's folder, with a Python that suits: python3.12 -m venv .venv && "
+        ".venv/bin/pip install .",
     )
 
 
 def libraries() -> Iterator[Line]:
     """Every library that driftwell cannot do without: its version, and whether it loads."""
+    if not comparable():
+        yield Line(
+            FAULT,
+            COMPARING,
+            "not installed; matplotlib needs it, and versions are not compared without it",
+            f"pip install {COMPARING}",
+        )
     bounds = wanted()
     for name in dict.fromkeys((*LIBRARIES, *bounds)):
         yield _library(name, bounds.get(name, ""))
@@ -69,8 +82,10 @@ def libraries() -> Iterator[Line]:
 def wanted(extra: str = "") -> dict[str, str]:
     """Bounds of the versions of libraries by name; of an extra's, where one is named.
 
-    Empty where driftwell is not installed.
+    Empty where driftwell is not installed, or nothing can be compared.
     """
+    if not comparable():
+        return {}
     from packaging.requirements import Requirement
 
     found = {}
@@ -85,7 +100,9 @@ def wanted(extra: str = "") -> dict[str, str]:
 
 
 def suits(found: str, bounds: str) -> bool:
-    """Whether a version is within bounds such as ``>=2.0``."""
+    """Whether a version is within bounds such as ``>=2.0``; True where nothing can be compared."""
+    if not comparable():
+        return True
     from packaging.specifiers import SpecifierSet
 
     return SpecifierSet(bounds).contains(found, prereleases=True)
@@ -113,6 +130,11 @@ def _library(name: str, bounds: str) -> Line:
     return Line(OK, name, f"{found}; wanted {bounds}" if bounds else found)
 
 
+def comparable() -> bool:
+    """Whether versions can be compared."""
+    return importlib.util.find_spec(COMPARING) is not None
+
+
 def _requirements() -> list[str]:
     """What driftwell's metadata say of libraries."""
     try:
@@ -123,7 +145,7 @@ def _requirements() -> list[str]:
 
 def _python_wanted() -> str:
     try:
-        return metadata(PACKAGE).get("Requires-Python") or ""
+        return (metadata(PACKAGE).get_all("Requires-Python") or [""])[0]
     except PackageNotFoundError:
         return ""
 
