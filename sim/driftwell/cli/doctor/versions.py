@@ -145,7 +145,7 @@ def _requirements() -> list[str]:
 
 def _python_wanted() -> str:
     try:
-        return (metadata(PACKAGE).get_all("Requires-Python") or [""])[0]
+        return str((metadata(PACKAGE).get_all("Requires-Python") or [""])[0])
     except PackageNotFoundError:
         return ""
 
