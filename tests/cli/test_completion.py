@@ -14,7 +14,8 @@ from driftwell.cli.main import main
 
 ASK = """source "$1"; shift
 COMP_WORDS=("$@"); COMP_CWORD=$(($# - 1))
-$(complete -p driftwell | sed 's/.*-F \\([^ ]*\\).*/\\1/') driftwell "${@: -1}" "${@: -2:1}" 2>/dev/null
+function=$(complete -p driftwell | sed 's/.*-F \\([^ ]*\\).*/\\1/')
+$function driftwell "${@: -1}" "${@: -2:1}" 2>/dev/null
 printf '%s\\n' "${COMPREPLY[@]}"
 """
 
