@@ -15,6 +15,7 @@ from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
 from driftwell.errors import DriftwellError, StudyError
+from driftwell.exit_codes import FINISHED, NOT_CONVERGED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
@@ -30,9 +31,6 @@ from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, is_study
 from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
-
-DONE, UNUSABLE, STOPPED, SOME_FAILED, NOT_CONVERGED = 0, 2, 4, 7, 12
-"""Exit codes; the last one is a convergence study's own."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,7 +65,7 @@ def converge_command(wanted: Wanted, output: str | None, options: Options, place
         return SOME_FAILED
     if options.within is not None and not converged(outcome.report, options.questions):
         return NOT_CONVERGED
-    return DONE if written else UNUSABLE
+    return FINISHED if written else UNUSABLE
 
 
 def _carried_out(

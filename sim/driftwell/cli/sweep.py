@@ -12,6 +12,7 @@ from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
 from driftwell.errors import DriftwellError, StudyError
+from driftwell.exit_codes import FINISHED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
@@ -22,9 +23,6 @@ from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
-
-DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
-"""Exit codes; the last one is a sweep's own."""
 
 
 def sweep_command(
@@ -58,7 +56,7 @@ def sweep_command(
         return STOPPED
     if result.failures:
         return SOME_FAILED
-    return DONE if written else UNUSABLE
+    return FINISHED if written else UNUSABLE
 
 
 def _carried_out(
