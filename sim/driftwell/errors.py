@@ -6,11 +6,13 @@ leaves with its exit code. Anything else that reaches the user is a defect of dr
 
 from __future__ import annotations
 
+from driftwell.exit_codes import NOT_CONTINUED, UNUSABLE
+
 
 class DriftwellError(Exception):
     """Base of all errors that are told to the user without a traceback."""
 
-    exit_code = 2
+    exit_code = UNUSABLE
 
 
 class ScenarioError(DriftwellError):
@@ -27,7 +29,7 @@ class StepError(DriftwellError):
     charge : id of the charge it happened to, where it was one
     """
 
-    exit_code = 5
+    exit_code = NOT_CONTINUED
 
     def __init__(self, text: str, charge: int | None = None) -> None:
         super().__init__(text)

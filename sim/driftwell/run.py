@@ -14,6 +14,7 @@ from typing import Any, Protocol
 
 import numpy as np
 
+from driftwell import exit_codes
 from driftwell.answers.answer import Answer
 from driftwell.answers.answering import answer_all
 from driftwell.assembly import Assembly, assembled, remarks
@@ -57,7 +58,13 @@ _ENDED = {FINISHED, ALL_LOST, FAILED}
 """What is not gone on with: a motion that could not be continued cannot be now."""
 _MOVED = ("particles/position", "particles/velocity")
 """What the time loop changes of the particles."""
-EXIT_CODES = {FINISHED: 0, ALL_LOST: 3, STOPPED: 4, FAILED: 5, FULL: 6}
+EXIT_CODES = {
+    FINISHED: exit_codes.FINISHED,
+    ALL_LOST: exit_codes.ALL_LOST,
+    STOPPED: exit_codes.STOPPED,
+    FAILED: exit_codes.NOT_CONTINUED,
+    FULL: exit_codes.NOT_RECORDED,
+}
 
 
 @dataclass(frozen=True, slots=True)

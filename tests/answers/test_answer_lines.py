@@ -10,7 +10,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import answer_lines, force_lines, reading
+from driftwell.answers.answer_lines import answer_lines, common_lines, reading
 
 
 def answer(value: float, error: float | None, unit: str = "m", note: str = "") -> Answer:
@@ -143,13 +143,13 @@ def test_the_error_of_the_forces_is_told_beside_the_answers(
 ) -> None:
     """In its own unit, and only where there is one."""
     answers = [replace(answer(1.0, 0.1), coulomb_error=each) for each in errors]
-    lines = force_lines(answers, 80)
+    lines = common_lines(answers, 80)
     assert expected == (" ".join(line.strip() for line in lines) or [])
     assert all(len(line) <= 80 for line in lines)
 
 
 def test_the_error_of_a_solved_field_is_told_on_a_line_of_its_own() -> None:
     answers = [replace(answer(1.0, 0.1), coulomb_error=1e-5, field_error=3e-6)] * 2
-    coulomb, field = force_lines(answers, 200)
+    coulomb, field = common_lines(answers, 200)
     assert coulomb.startswith("coulomb error: rms 1.0e-05 of the force")
     assert field.startswith("field error: rms 3.0e-06 of the electrodes' field, as measured when")

@@ -10,7 +10,7 @@ from pathlib import Path
 import pytest
 
 ROD_TRAP = Path(__file__).parents[2] / "scenarios" / "rod-trap.toml"
-HEAVY = {"numpy", "numba", "h5py", "matplotlib", "pydantic", "pint", "tqdm", "scipy"}
+HEAVY = {"numpy", "numba", "h5py", "matplotlib", "pydantic", "pint", "tqdm", "scipy", "shtab"}
 
 
 def loaded_by(code: str) -> set[str]:

@@ -183,3 +183,13 @@ def test_a_second_sweep_in_the_folder_is_refused_while_the_first_works(
         process.send_signal(signal.SIGTERM)
         process.communicate(timeout=60)
     assert 4 == process.returncode
+
+
+def test_a_sweep_stops_by_the_clock_and_the_same_command_goes_on(
+    tmp_path: Path, capsys: Printed
+) -> None:
+    path, folder = study(tmp_path, "2, 4"), tmp_path / "sweep"
+    assert 4 == sweep(path, folder, "--stop-after", "0.01s")
+    assert "2 runs: 2 computed now" not in capsys.readouterr().out
+    assert 0 == sweep(path, folder)
+    assert "2 runs: " in capsys.readouterr().out

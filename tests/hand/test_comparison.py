@@ -63,6 +63,11 @@ def test_the_difference_is_told_in_words(
     assert words in told(value, error, inside)
 
 
+def test_a_current_of_electrons_is_more_where_it_is_further_below_zero() -> None:
+    assert "5 % more, 10 of its error bars" in told(-2.1, 0.01, hand=-2.0)
+    assert "5 % less, 10 of its error bars" in told(-1.9, 0.01, hand=-2.0)
+
+
 def test_a_run_without_anything_to_compare_says_nothing() -> None:
     assert [] == comparison_lines([], 80)
     assert paragraph("", 80) == []

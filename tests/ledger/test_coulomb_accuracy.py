@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from driftwell.answers.answer_lines import force_lines
+from driftwell.answers.answer import Answer
+from driftwell.answers.answer_lines import common_lines
 from driftwell.coulomb.promise import TOLD, Broken
 from driftwell.ledger.doubts import doubts
 from driftwell.record.reader import Run, open_run
@@ -98,7 +100,7 @@ def test_a_promise_that_is_kept_stands_in_record_and_answers(
     assert early.coulomb_error < size.coulomb_error
     assert 0.0 == first.coulomb_error
     assert result.answers == list(found.answers)
-    (line,) = force_lines(found.answers, 200)
+    (line,) = _of_forces(found.answers)
     assert line.startswith(f"coulomb error: rms {early.coulomb_error:.1e} to {error.max():.1e} of")
     assert "behind 2 of 3" in line
     text = "\n".join(summary(found))
@@ -159,7 +161,7 @@ def test_a_direct_sum_has_no_error_to_tell(tmp_path: Path) -> None:
     assert not found.ledger["coulomb_error"].any()
     assert ["Coulomb sum: direct; the scenario says so"] == told
     assert [0.0] * 3 == [answer.coulomb_error for answer in found.answers]
-    assert [] == force_lines(found.answers, 100)
+    assert [] == _of_forces(found.answers)
     assert found.ledger["torque_residual"].max() < 1e-14
     assert result.broken is None
 
@@ -221,3 +223,8 @@ def test_a_run_with_the_tree_answers_as_one_with_the_direct_sum(tmp_path: Path) 
     assert 1e-13 < row.torque_residual < error.max()
     assert 1e-13 < row.angular_residual < 3.0 * row.angular_allowance
     assert row.coulomb == pytest.approx(direct[0].ledger.coulomb, rel=error.max(), abs=0.0)
+
+
+def _of_forces(answers: Sequence[Answer]) -> list[str]:
+    """What is said of the forces behind the answers."""
+    return [line for line in common_lines(answers, 200) if "error: rms" in line]

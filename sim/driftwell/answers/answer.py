@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+STANDING = "each standing for"
+"""Words of a note on simulated charges that stand for more than one."""
+
 
 @dataclass(frozen=True, slots=True)
 class Answer:

@@ -6,7 +6,7 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from driftwell.answers.answer import Answer
+from driftwell.answers.answer import STANDING, Answer
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 
@@ -95,7 +95,19 @@ def answer_lines(answers: Sequence[Answer], width: int, sign: str = "±") -> lis
     return lines
 
 
-def force_lines(answers: Sequence[Answer], width: int) -> list[str]:
+def common_lines(answers: Sequence[Answer], width: int) -> list[str]:
+    """What is to be known of several answers: of charges that stand for more, and of forces."""
+    lines = []
+    if any(STANDING in answer.note for answer in answers):
+        text = (
+            "where each charge stands for more than one, the error is that of the simulated "
+            "number, not of the real one"
+        )
+        lines += paragraph(text, width, "", "  ")
+    return lines + _force_lines(answers, width)
+
+
+def _force_lines(answers: Sequence[Answer], width: int) -> list[str]:
     """What the answers say of the forces behind them; nothing where these have no error."""
     coulomb = [answer.coulomb_error for answer in answers if answer.coulomb_error != 0.0]
     field = [answer.field_error for answer in answers if answer.field_error != 0.0]

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from driftwell.answers.answer import STANDING
 from driftwell.answers.evidence import CloudFacts, Evidence
 from driftwell.answers.form import cloud_named
 from driftwell.errors import AnswerError
@@ -75,10 +76,5 @@ def number_in_words(count: int, cloud: CloudFacts) -> str:
 
 
 def weight_in_words(cloud: CloudFacts) -> str:
-    """What to know of the error where a simulated charge stands for several."""
-    if cloud.weight == 1.0:
-        return ""
-    return (
-        f", each standing for {cloud.weight:.6g}: the error is that of the simulated number, "
-        "not of the real one"
-    )
+    """How many a simulated charge stands for, where they are several."""
+    return "" if cloud.weight == 1.0 else f", {STANDING} {cloud.weight:.6g}"

@@ -6,7 +6,7 @@ from collections.abc import Iterable
 from typing import Any, overload
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import answer_lines
+from driftwell.answers.answer_lines import answer_lines, common_lines
 from driftwell.errors import AnswerError
 from driftwell.forms.faults import nearest
 
@@ -53,7 +53,8 @@ class Answers(tuple[Answer, ...]):
         return tuple(each.name for each in self)
 
     def __str__(self) -> str:
-        return "\n".join(answer_lines(self, _WIDTH)) or "no answers"
+        lines = answer_lines(self, _WIDTH) + common_lines(self, _WIDTH)
+        return "\n".join(lines) or "no answers"
 
     def __repr__(self) -> str:
         return f"<Answers: {', '.join(self.names) or 'none'}>"

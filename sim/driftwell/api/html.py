@@ -8,7 +8,7 @@ from html import escape
 from typing import TYPE_CHECKING
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import reading
+from driftwell.answers.answer_lines import common_lines, reading
 from driftwell.errors import DriftwellError
 from driftwell.forms import spelled
 
@@ -25,6 +25,8 @@ _PLAIN, _DOUBT = "#0072b2", "#d55e00"
 """Blue and vermilion that colour-blind readers tell apart; words say the same besides."""
 _MOST = 50
 """Rows that are shown, at the most."""
+_WIDTH = 10_000
+"""Characters of a line: the notebook breaks them itself."""
 
 
 def scenario_html(scenario: Scenario) -> str:
@@ -73,8 +75,8 @@ def answers_html(answers: Iterable[Answer]) -> str:
 
 
 def answers_table(answers: Iterable[Answer]) -> str:
-    """Rows of name, value with error and unit, and note."""
-    rows = []
+    """Rows of name, value with error and unit, and note; what is common to them below."""
+    answers, rows = tuple(answers), []
     for each in answers:
         read = reading(each)
         value = read.value + (f" ± {read.error}" if read.error else "")
@@ -92,7 +94,9 @@ def answers_table(answers: Iterable[Answer]) -> str:
         f"<th scope='col' style='text-align:left;padding-right:1em'>{head}</th>"
         for head in ("question", "answer", "note")
     )
-    return f"<table><thead><tr>{heads}</tr></thead><tbody>{''.join(rows)}</tbody></table>"
+    table = f"<table><thead><tr>{heads}</tr></thead><tbody>{''.join(rows)}</tbody></table>"
+    common = "".join(f"<div>{escape(line)}</div>" for line in common_lines(answers, _WIDTH))
+    return table + common
 
 
 def _numbers(run: Run) -> str:

@@ -7,6 +7,7 @@ from pathlib import Path
 
 from driftwell.cli.printing import answer, tell, width
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.scenario.explain import explain
 from driftwell.scenario.read import read_scenario
 from driftwell.study.explain import explain_study
@@ -23,4 +24,4 @@ def check(path: str | Path, overrides: Sequence[str] = ()) -> int:
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
-    return 0 if answer(lines) else 2
+    return FINISHED if answer(lines) else UNUSABLE

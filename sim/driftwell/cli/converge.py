@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import logging
-import time
 from collections.abc import Callable, Sequence
 from contextlib import ExitStack, closing
 from dataclasses import dataclass
@@ -16,6 +15,7 @@ from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
 from driftwell.errors import DriftwellError, StudyError
+from driftwell.exit_codes import FINISHED, NOT_CONVERGED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
@@ -27,13 +27,10 @@ from driftwell.study.convergence.table import CONVERGENCE_CSV, Report
 from driftwell.study.convergence.words import answer_lines, converged, plan_lines
 from driftwell.study.engine import Engine
 from driftwell.study.kept_engine import KeptEngine
-from driftwell.study.progress import SweepProgress, SweepResult
+from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, is_study
 from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
-
-DONE, UNUSABLE, STOPPED, SOME_FAILED, NOT_CONVERGED = 0, 2, 4, 7, 12
-"""Exit codes; the last one is a convergence study's own."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,18 +50,6 @@ class Options:
     pictures: bool = True
 
 
-class _Display(SweepDisplay):
-    """Shows progress, and asks to stop when the time is over."""
-
-    def __init__(self, wish: StopWish, stop_after: float | None) -> None:
-        super().__init__(wish)
-        self._until = None if stop_after is None else time.monotonic() + stop_after
-
-    def goes_on(self, progress: SweepProgress) -> bool:
-        over = self._until is not None and time.monotonic() >= self._until
-        return super().goes_on(progress) and not over
-
-
 def converge_command(wanted: Wanted, output: str | None, options: Options, place: Place) -> int:
     """Compute what is not there yet, judge and report; returns the exit code."""
     folder = Path(output) if output is not None else Path(f"{wanted.path.stem}-converge")
@@ -80,7 +65,7 @@ def converge_command(wanted: Wanted, output: str | None, options: Options, place
         return SOME_FAILED
     if options.within is not None and not converged(outcome.report, options.questions):
         return NOT_CONVERGED
-    return DONE if written else UNUSABLE
+    return FINISHED if written else UNUSABLE
 
 
 def _carried_out(
@@ -97,7 +82,7 @@ def _carried_out(
     tell(alone.title)
     engines = Engines(place.cluster(), options.workers)
     wish = StopWish(lambda: True, engines.kill)
-    display = _Display(wish, options.stop_after)
+    display = SweepDisplay(wish, options.stop_after)
     with ExitStack() as holding:
         changed = holding.enter_context(
             engines.working_in(folder, alone.text, alone.scenario_text, wish)

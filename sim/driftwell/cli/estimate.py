@@ -25,6 +25,7 @@ from driftwell.cli.printing import answer, tell, width
 from driftwell.coulomb.summation import Summation
 from driftwell.counted import counted
 from driftwell.errors import DriftwellError, StepError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.hand.scene import scene_of
 from driftwell.kernels.compilation import first_compilation
 from driftwell.scenario.read import LoadedScenario, read_scenario
@@ -32,9 +33,6 @@ from driftwell.scenario.read import LoadedScenario, read_scenario
 if TYPE_CHECKING:
     from driftwell.estimate import Estimate
     from driftwell.study.forecast import Forecast, Outlook
-
-UNUSABLE = 2
-"""Exit code where a file or folder cannot be used."""
 
 
 def estimate_command(
@@ -79,7 +77,7 @@ def _counted(loaded: LoadedScenario, threads: int) -> int:
         *lines_by_hand(scene_of(parts)),
         *caution_lines(loaded.scenario),
     ]
-    return 0 if answer(lines) else UNUSABLE
+    return FINISHED if answer(lines) else UNUSABLE
 
 
 def _timed(loaded: LoadedScenario, threads: int, seconds: float) -> int:
@@ -94,7 +92,7 @@ def _timed(loaded: LoadedScenario, threads: int, seconds: float) -> int:
 
     found = estimate(loaded, threads, seconds, begins, tell)
     lines = [*estimate_lines(found, width()), *by_hand, *caution_lines(loaded.scenario)]
-    return 0 if answer(lines) else UNUSABLE
+    return FINISHED if answer(lines) else UNUSABLE
 
 
 def _of_study(file: str, settings: Sequence[str], seconds: float | None) -> int:
@@ -121,10 +119,10 @@ def _of_study(file: str, settings: Sequence[str], seconds: float | None) -> int:
             *lines_by_hand(scene_of(seen.parts))[1:],
             *caution_lines(seen.parts.scenario),
         ]
-        return 0 if answer(lines) else UNUSABLE
+        return FINISHED if answer(lines) else UNUSABLE
     tell(f"{cases}; some of them are timed")
     found = forecast(study, seconds)
-    return 0 if answer(forecast_lines(found, width())) else UNUSABLE
+    return FINISHED if answer(forecast_lines(found, width())) else UNUSABLE
 
 
 def _begins(parts: Assembly, summation: Summation) -> None:

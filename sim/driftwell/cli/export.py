@@ -7,6 +7,7 @@ from pathlib import Path
 
 from driftwell.cli.printing import answer, tell
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.exports.table import export
 from driftwell.record.reader import open_run
 
@@ -25,7 +26,7 @@ def export_command(
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
-    return 0 if answer([f"{format_name}: {made} ({_size(made) / 1e6:.3g} MB)"]) else 2
+    return FINISHED if answer([f"{format_name}: {made} ({_size(made) / 1e6:.3g} MB)"]) else UNUSABLE
 
 
 def _size(path: Path) -> int:

@@ -9,8 +9,9 @@ from pathlib import Path
 from driftwell._version import __version__
 from driftwell.cli.compiling import tell_of_compiling
 from driftwell.cli.printing import answer, tell, width
-from driftwell.cli.run_command import UNUSABLE, too_little_memory
+from driftwell.cli.run_command import too_little_memory
 from driftwell.errors import DriftwellError, ScenarioError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.kernels.compilation import first_compilation
 from driftwell.kernels.threads import on_threads
 from driftwell.scenario.read import LoadedScenario, read_scenario
@@ -38,7 +39,7 @@ def fields_command(
     except MemoryError as error:
         tell(too_little_memory(error))
         return UNUSABLE
-    return 0 if written else UNUSABLE
+    return FINISHED if written else UNUSABLE
 
 
 def _acting(loaded: LoadedScenario) -> ActingField:

@@ -9,6 +9,7 @@ from driftwell.cli.hand import compared
 from driftwell.cli.judgement import judgement_lines
 from driftwell.cli.printing import answer, sign, tell, width
 from driftwell.errors import DriftwellError, RecordError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.judgement import judged
 from driftwell.record.reader import Run, open_run
 from driftwell.record.summary import summary
@@ -24,7 +25,7 @@ def info(path: str | Path) -> int:
         tell(str(error))
         return error.exit_code
     by_hand = compared(run)
-    return 0 if answer([*lines, *([""] * bool(by_hand)), *by_hand]) else 2
+    return FINISHED if answer([*lines, *([""] * bool(by_hand)), *by_hand]) else UNUSABLE
 
 
 def _judgement(run: Run) -> list[str]:

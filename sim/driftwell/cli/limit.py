@@ -6,6 +6,7 @@ import logging
 from collections.abc import Sequence
 from pathlib import Path
 
+from driftwell import exit_codes
 from driftwell.cli.engines import Engines
 from driftwell.cli.printing import answer, tell, width
 from driftwell.cli.stop_wish import StopWish
@@ -33,14 +34,13 @@ from driftwell.study.progress import Failure, SweepProgress
 from driftwell.study.read import Study, read_study
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 
-UNUSABLE, STOPPED = 2, 4
 EXIT_CODES = {
-    FOUND: 0,
-    RUNS_FAILED: 7,
-    NO_CROSSING: 9,
-    SEVERAL: 10,
-    TOO_NOISY: 11,
-    NOT_REACHED: 11,
+    FOUND: exit_codes.FINISHED,
+    RUNS_FAILED: exit_codes.SOME_FAILED,
+    NO_CROSSING: exit_codes.NO_CROSSING,
+    SEVERAL: exit_codes.SEVERAL_CROSSINGS,
+    TOO_NOISY: exit_codes.TOO_NOISY,
+    NOT_REACHED: exit_codes.TOO_NOISY,
 }
 """What a search came to, as an exit code; the others are those of a sweep."""
 
@@ -69,9 +69,9 @@ def limit_command(
         tell(str(error))
         return error.exit_code
     if found.verdict is None:
-        return STOPPED
+        return exit_codes.STOPPED
     code = EXIT_CODES[found.verdict.word]
-    return code if written or code else UNUSABLE
+    return code if written or code else exit_codes.UNUSABLE
 
 
 class LimitDisplay(SweepDisplay):

@@ -11,11 +11,9 @@ import warnings
 from collections.abc import Sequence
 
 from driftwell._version import __version__
-from driftwell.cli.arguments import parser
+from driftwell.cli.arguments import parsed
 from driftwell.cli.printing import flush_quietly, tell, write_anything
-
-INTERRUPTED = 130
-DEFECT = 1
+from driftwell.exit_codes import DEFECT, INTERRUPTED
 
 TRACEBACK = "DRIFTWELL_TRACEBACK"
 """Environment variable that lets a defect of driftwell show where it is."""
@@ -32,7 +30,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 def _answered(arguments: Sequence[str] | None) -> int:
     """The exit code of the command; errors and defects have been told."""
-    asked = parser().parse_args(arguments)
+    asked = parsed(arguments)
     try:
         with warnings.catch_warnings():
             if not sys.warnoptions:  # meant for whoever works on the libraries, not for the user

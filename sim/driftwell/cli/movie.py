@@ -12,6 +12,7 @@ from tqdm import tqdm
 
 from driftwell.cli.printing import answer, is_terminal, tell
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.reader import Run, open_run
 
 
@@ -37,7 +38,11 @@ def movie_command(asked: argparse.Namespace) -> int:
         tell(str(error))
         return error.exit_code
     size = made.stat().st_size / 1e6
-    return 0 if answer([f"movie: {made} ({options.frames} frames, {size:.2g} MB)"]) else 2
+    return (
+        FINISHED
+        if answer([f"movie: {made} ({options.frames} frames, {size:.2g} MB)"])
+        else UNUSABLE
+    )
 
 
 def _file(run: Run, given: str | None) -> Path:

@@ -10,6 +10,7 @@ from pathlib import Path
 from driftwell.cli.printing import answer, tell
 from driftwell.cli.templates import ENDING, Template, templates
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 
 
 def list_kinds() -> int:
@@ -21,7 +22,7 @@ def list_kinds() -> int:
         "",
         "driftwell new KIND writes KIND.toml here; its comments say what to change.",
     ]
-    return 0 if answer(lines) else 2
+    return FINISHED if answer(lines) else UNUSABLE
 
 
 def new_scenario(kind: str, output: Path | None) -> int:
@@ -44,7 +45,7 @@ def new_scenario(kind: str, output: Path | None) -> int:
         f"  driftwell check {named}",
         f"  driftwell {verb} {named}",
     ]
-    return 0 if answer(lines) else 2
+    return FINISHED if answer(lines) else UNUSABLE
 
 
 def _written(template: Template, path: Path, known: dict[str, Template]) -> list[str]:

@@ -8,6 +8,7 @@ from pathlib import Path
 
 from driftwell.cli.printing import answer, tell
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.reader import Run, open_run
 
 
@@ -47,7 +48,9 @@ def plot_command(asked: argparse.Namespace) -> int:
         tell(str(error))
         return error.exit_code
     wide, high = (25.4 * side for side in made.get_size_inches())
-    return 0 if answer([f"{asked.what}: {path} ({wide:.0f} mm by {high:.0f} mm)"]) else 2
+    return (
+        FINISHED if answer([f"{asked.what}: {path} ({wide:.0f} mm by {high:.0f} mm)"]) else UNUSABLE
+    )
 
 
 def list_command(path: str) -> int:
@@ -67,7 +70,7 @@ def list_command(path: str) -> int:
         else:
             options = " ".join(f"--{name}" for name in offer.takes)
             lines.append(f"{offer.name:{wide}}  {offer.words} ({options})")
-    return 0 if answer(lines) else 2
+    return FINISHED if answer(lines) else UNUSABLE
 
 
 def _file(run: Run, asked: argparse.Namespace) -> Path:

@@ -5,8 +5,8 @@ from __future__ import annotations
 import logging
 
 from driftwell.cli.printing import answer, tell
-from driftwell.cli.run_command import UNUSABLE
 from driftwell.errors import DriftwellError
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.report.written import write_report
 
 
@@ -18,4 +18,4 @@ def report_command(folder: str, output: str | None) -> int:
     except DriftwellError as error:
         tell(str(error))
         return error.exit_code
-    return 0 if answer([f"report: {made.path} ({made.bytes / 1e6:.1f} MB)"]) else UNUSABLE
+    return FINISHED if answer([f"report: {made.path} ({made.bytes / 1e6:.1f} MB)"]) else UNUSABLE

@@ -7,7 +7,8 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
-from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell import exit_codes
+from driftwell.answers.answer_lines import answer_lines, common_lines
 from driftwell.cli.hand import compared
 from driftwell.cli.judgement import judgement_lines
 from driftwell.cli.printing import answer, same_place, sign, tell, width
@@ -21,9 +22,6 @@ from driftwell.record.master import MASTER
 from driftwell.record.reader import open_run
 from driftwell.run import FINISHED, FULL, Result, run
 from driftwell.scenario.read import LoadedScenario, read_scenario
-
-UNUSABLE = 2
-"""Exit code where a file or folder cannot be used."""
 
 
 def run_command(
@@ -50,8 +48,9 @@ def run_command(
         return error.exit_code
     except MemoryError as error:
         tell(too_little_memory(error))
-        return UNUSABLE
-    return result.outcome.exit_code or (0 if written else UNUSABLE)
+        return exit_codes.UNUSABLE
+    kept = exit_codes.FINISHED if written else exit_codes.UNUSABLE
+    return result.outcome.exit_code or kept
 
 
 def _carried_out(
@@ -94,7 +93,7 @@ def _report(result: Result) -> bool:
         "",
         *_doubted(findings),
         *_answers(result),
-        *force_lines(result.answers, width()),
+        *common_lines(result.answers, width()),
         *_by_hand(result),
         *_judgement(result, findings),
         "",

@@ -12,6 +12,7 @@ from driftwell.cli.stop_wish import StopWish
 from driftwell.cli.sweep_place import Place
 from driftwell.cli.sweep_progress import SweepDisplay
 from driftwell.errors import DriftwellError, StudyError
+from driftwell.exit_codes import FINISHED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable
 from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
@@ -23,9 +24,6 @@ from driftwell.study.sweep import Sweep
 from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
 from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
 
-DONE, UNUSABLE, STOPPED, SOME_FAILED = 0, 2, 4, 7
-"""Exit codes; the last one is a sweep's own."""
-
 
 def sweep_command(
     file: str,
@@ -36,6 +34,7 @@ def sweep_command(
     retry_failed: bool,
     pictures: bool,
     place: Place,
+    stop_after: float | None = None,
 ) -> int:
     """Compute what is not there yet; returns the exit code."""
     folder = Path(output) if output is not None else Path(f"{Path(file).stem}-sweep")
@@ -48,7 +47,7 @@ def sweep_command(
             )
         tell(study.title)
         result, written = _carried_out(
-            study, folder, workers, threads, retry_failed, pictures, place
+            study, folder, workers, threads, retry_failed, pictures, place, stop_after
         )
     except DriftwellError as error:
         tell(str(error))
@@ -57,7 +56,7 @@ def sweep_command(
         return STOPPED
     if result.failures:
         return SOME_FAILED
-    return DONE if written else UNUSABLE
+    return FINISHED if written else UNUSABLE
 
 
 def _carried_out(
@@ -68,11 +67,12 @@ def _carried_out(
     retry_failed: bool,
     pictures: bool,
     place: Place,
+    stop_after: float | None = None,
 ) -> tuple[SweepResult, bool]:
     """What the sweep came to, and whether all that was to be written and drawn could be."""
     engines = Engines(place.cluster(), workers)
     wish = StopWish(lambda: True, engines.kill)
-    display = SweepDisplay(wish)
+    display = SweepDisplay(wish, stop_after)
     with engines.working_in(folder, study.text, study.scenario_text, wish) as changed:
         if changed:
             tell(

@@ -26,10 +26,14 @@ _MOST_TOLD = 5
 
 
 class SweepDisplay:
-    """Shows progress on stderr, and passes the wish to stop on to the sweep."""
+    """Shows progress on stderr, and passes the wish to stop on to the sweep.
 
-    def __init__(self, wish: StopWish) -> None:
+    stop_after : s by the clock from now on, after which it asks to stop; None for never
+    """
+
+    def __init__(self, wish: StopWish, stop_after: float | None = None) -> None:
         self._wish = wish
+        self._until = None if stop_after is None else time.monotonic() + stop_after
         self._bar: Any = None
         self._began = time.monotonic()
         self._next = _FIRST_LINE
@@ -73,7 +77,7 @@ class SweepDisplay:
             self.told("more failed; the summary will say which and why")
 
     def goes_on(self, progress: SweepProgress) -> bool:
-        """Show how far the sweep is; False once a stop was asked for."""
+        """Show how far the sweep is; False once a stop was asked for, or the time is over."""
         elapsed = time.monotonic() - self._began
         if elapsed >= self._next:
             if self._bar is None:
@@ -82,7 +86,8 @@ class SweepDisplay:
             else:
                 self._next = elapsed + _REDRAWN
                 self._draw(progress)
-        return not self._wish.wanted
+        over = self._until is not None and time.monotonic() >= self._until
+        return not self._wish.wanted and not over
 
     def ends(self) -> None:
         """Take the bar away."""

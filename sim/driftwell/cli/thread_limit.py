@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import os
 import sys
+from contextlib import suppress
 
 from driftwell.cli.options.types import threads as number_of_threads
 from driftwell.cli.printing import tell
@@ -23,7 +24,7 @@ def limited_threads(asked: int | None) -> int:
 
 def usable_threads(asked: int | None) -> int:
     """The number of threads, by argument, environment and cores, in this order."""
-    cores = len(os.sched_getaffinity(0))
+    cores = usable_cores()
     if asked is None:
         try:
             return number_of_threads(os.environ.get("NUMBA_NUM_THREADS", ""))
@@ -32,3 +33,12 @@ def usable_threads(asked: int | None) -> int:
     if asked > cores:
         tell(f"{asked} threads on {cores} core{'s' * (cores != 1)}: no faster than {cores}.")
     return asked
+
+
+def usable_cores() -> int:
+    """Cores this process may run on; all, where the system does not say."""
+    affinity = getattr(os, "sched_getaffinity", None)
+    if affinity is not None:
+        with suppress(OSError):
+            return len(affinity(0))
+    return os.cpu_count() or 1

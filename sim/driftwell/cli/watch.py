@@ -9,6 +9,7 @@ from pathlib import Path
 
 from driftwell.cli.printing import answer, is_terminal, shown, tell, width
 from driftwell.cli.watch_table import Row, cells, table
+from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.condition import Condition, condition_of, holds_run
 from driftwell.record.heartbeat import PROGRESS_FILE
 
@@ -20,7 +21,6 @@ _QUIET = 20.0
 """s in which no run goes on, after which no more is expected: between two runs of a sweep, and
 before a run's first sign of life, there is less."""
 _USUAL = os.terminal_size((80, 24))
-UNUSABLE = 2
 
 
 def watch(path: str, once: bool) -> int:
@@ -36,7 +36,7 @@ def watch(path: str, once: bool) -> int:
             return UNUSABLE
         live = not once and is_terminal(sys.stdout) and os.environ.get("TERM") != "dumb"
         if not live:
-            return 0 if answer(table(watched.rows(), watched.title, width())) else UNUSABLE
+            return FINISHED if answer(table(watched.rows(), watched.title, width())) else UNUSABLE
         return _live(watched)
     except (OSError, ValueError) as fault:  # ValueError: a null character in the name
         tell(f"{path}: cannot be read ({getattr(fault, 'strerror', None) or fault}).")
@@ -100,12 +100,12 @@ def _live(watched: _Watched) -> int:
             sys.stdout.flush()
             before = lines
             if over:
-                return 0
+                return FINISHED
             time.sleep(wait)
     except KeyboardInterrupt:
         sys.stdout.write("\n")
         sys.stdout.flush()
-        return 0
+        return FINISHED
 
 
 def _over(before: list[str], lines: list[str], columns: int) -> str:

@@ -35,9 +35,9 @@ class Comparison:
 
     @property
     def apart(self) -> float:
-        """By which part of the hand value the run differs; NaN of 0."""
+        """By which part of the hand value the run is larger, -2.1 by 5 % than -2; NaN of 0."""
         hand = self.by_hand.value
-        return (self.answer.value - hand) / abs(hand) if hand else math.nan
+        return (self.answer.value - hand) / hand if hand else math.nan
 
     @property
     def bars(self) -> float | None:

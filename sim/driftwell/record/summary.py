@@ -7,7 +7,7 @@ from functools import partial
 
 import numpy as np
 
-from driftwell.answers.answer_lines import answer_lines, force_lines
+from driftwell.answers.answer_lines import answer_lines, common_lines
 from driftwell.constants import ELEMENTARY_CHARGE
 from driftwell.errors import RecordError
 from driftwell.forms import spelled
@@ -142,7 +142,7 @@ def _given(run: Run) -> list[str]:
 
 def _answers(run: Run, width: int, sign: str) -> list[str]:
     if run.answers:
-        return answer_lines(run.answers, width, sign) + force_lines(run.answers, width)
+        return answer_lines(run.answers, width, sign) + common_lines(run.answers, width)
     return ["unfinished" if run.outcome.exit_code is None else "none asked"]
 
 

@@ -21,6 +21,7 @@ from typing import Any, TypeVar
 from uuid import uuid4
 
 from driftwell._version import __version__
+from driftwell.exit_codes import SCHEDULER_GONE
 from driftwell.run import STOPPED
 from driftwell.study.cluster_task import computed, leave, stop
 from driftwell.study.engine import Done, EngineError, Task
@@ -43,7 +44,7 @@ _PATHS = ("scenario", "folder")
 class ClusterLostError(EngineError):
     """The scheduler is gone, and with it all it knew."""
 
-    exit_code = 8
+    exit_code = SCHEDULER_GONE
 
 
 @dataclass(slots=True)

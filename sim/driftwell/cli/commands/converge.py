@@ -6,80 +6,91 @@ import argparse
 import re
 from typing import Any
 
-from driftwell.cli.options.shared import add_cluster, add_settings, add_side_by_side
-from driftwell.cli.options.types import duration, folder
+from driftwell.cli.options.command import add_command
+from driftwell.cli.options.shared import (
+    add_cluster,
+    add_no_pictures,
+    add_output,
+    add_settings,
+    add_side_by_side,
+    add_stop_after,
+)
+from driftwell.exit_codes import FINISHED, NOT_CONVERGED, SCHEDULER_GONE, SOME_FAILED, STOPPED
 
 AXES = ("step", "coulomb", "field-map", "weight", "seeds")
 MOST_REPLICAS = 1000
-_EPILOG = """\
-The judged run comes first and is common to all axes; then the cost of the others is said. What
-is there already is not computed again; give the same command again after a stop or a crash.
 
-axes: step (half and a quarter of it), coulomb (a tighter sum, direct where that is affordable),
+_TEXT = """\
+Repeats a run with everything numerical refined, one thing after another, and says how much
+each answer changes. The judged run comes first and is common to all axes; then the cost of the
+others is said. What is there already is not computed again; give the same command again after a
+stop or a crash.
+
+Axes: step (half and a quarter of it), coulomb (a tighter sum, direct where that is affordable),
 field-map (solved fields and images finer), weight (more macro-charges at the same total charge),
 seeds (replicas). Those that do not matter to the scenario are left out and named.
-
-exit codes: 0 every run is there, and with --within every answer judged has converged; 2 the
-scenario, the folder or the command line cannot be used; 4 stopped on request or by --stop-after,
-the same command goes on; 7 some runs failed; 8 the cluster's scheduler is gone; 12 some answer has
-not converged within the tolerance asked for; 130 interrupted at once; 1 a defect of driftwell
 """
+_EXAMPLES = (
+    "driftwell converge trap.toml",
+    "driftwell converge trap.toml --within 1% --question held",
+    "driftwell converge trap.toml --axes step,seeds --replicas 8",
+)
+_CODES = {
+    FINISHED: "every run is there, and with --within every answer judged has converged",
+    STOPPED: "",
+    SOME_FAILED: "some runs failed; the others are there",
+    SCHEDULER_GONE: "",
+    NOT_CONVERGED: "",
+}
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
+    parser = add_command(
+        commands,
         "converge",
-        help="say how sure each answer is: repeat the run with everything numerical refined",
-        epilog=_EPILOG,
-        formatter_class=argparse.RawDescriptionHelpFormatter,
+        "say how sure each answer is: repeat the run with everything numerical refined",
+        _TEXT,
+        _EXAMPLES,
+        _CODES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument("file", metavar="FILE", help="scenario file (TOML)")
-    parser.add_argument(
-        "-o",
-        "--output",
-        type=folder,
-        metavar="FOLDER",
-        help="where to leave runs and tables (default: the file's name with -converge, here)",
+    written = add_output(
+        parser, "where to leave runs and tables (default: the file's name with -converge, here)"
     )
-    parser.add_argument(
+    add_no_pictures(written, "picture")
+    judged = parser.add_argument_group("what is judged, and how")
+    judged.add_argument(
         "--within",
         type=share,
         metavar="SHARE",
         help="tolerance of the combined error, e.g. 1%%; the exit code is the verdict",
     )
-    parser.add_argument(
+    judged.add_argument(
         "--question",
         action="append",
         default=[],
         metavar="NAME",
         help="judge this question by the tolerance, not all of them; may be repeated",
     )
-    parser.add_argument(
+    judged.add_argument(
         "--axes",
         type=axes,
         default=AXES,
         metavar="LIST",
         help=f"which axes, separated by commas (default: {','.join(AXES)})",
     )
-    parser.add_argument(
+    judged.add_argument(
         "--replicas",
         type=replicas,
         default=4,
         metavar="N",
         help="seeds in all, the scenario's own among them (default: %(default)d)",
     )
-    add_side_by_side(parser)
-    parser.add_argument(
-        "--stop-after",
-        type=duration,
-        metavar="TIME",
-        help="stop by the clock, e.g. after 7h30m; the same command then goes on",
-    )
-    parser.add_argument("--no-pictures", action="store_true", help="leave out the picture")
-    add_cluster(parser)
     add_settings(parser)
+    add_stop_after(add_side_by_side(parser))
+    add_cluster(parser)
 
 
 def carry_out(asked: argparse.Namespace) -> int:

@@ -9,29 +9,45 @@ from collections.abc import Iterator
 from contextlib import contextmanager, nullcontext
 from typing import Any
 
+from driftwell.cli.options.command import add_command
 from driftwell.cli.options.shared import add_settings, add_threads
 from driftwell.cli.options.types import TIMING, seconds
+
+_TEXT = """\
+Counts charges, steps and records, says what memory and disk they take, and what hand
+calculations expect, within seconds. With --measure the first steps are really taken and timed, and
+what the whole will take is said with its bounds.
+"""
+_EXAMPLES = (
+    "driftwell estimate trap.toml",
+    "driftwell estimate trap.toml --measure",
+    "driftwell estimate sweep.toml --measure --seconds 10",
+)
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
+    parser = add_command(
+        commands,
         "estimate",
-        help="say what a run or a sweep will be: counts, hand calculations; --measure: its time",
+        "say what a run or a sweep will be: counts, hand calculations; --measure: its time",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out, parser=parser)
     parser.add_argument("file", help="scenario or study file (TOML)")
-    parser.add_argument(
+    timed = parser.add_argument_group("timing")
+    timed.add_argument(
         "--measure", action="store_true", help="time the first steps, and say what all will take"
     )
-    parser.add_argument(
+    timed.add_argument(
         "--seconds",
         type=seconds,
         metavar="S",
         help=f"how long to time with --measure, about (default: {TIMING:g})",
     )
-    add_threads(parser)
     add_settings(parser)
+    add_threads(parser)
 
 
 def carry_out(asked: argparse.Namespace) -> int:

@@ -5,14 +5,30 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
+from driftwell.cli.options.command import add_command
 from driftwell.cli.options.types import file
 from driftwell.exports.names import FORMATS, TABLES
+
+_TEXT = """\
+Writes what a run recorded for other programs. openPMD is an open standard for particles; CSV
+and Parquet are tables; VTK is for general viewers. Parquet and VTK need an extra, which is named
+where it is missing.
+"""
+_EXAMPLES = (
+    "driftwell export trap-run openpmd",
+    "driftwell export trap-run csv --what answers ledger -o tables",
+    'driftwell export trap-run vtk --times "10 us..20 us"',
+)
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "export", help="write a run as openPMD, CSV, Parquet or VTK"
+    parser = add_command(
+        commands,
+        "export",
+        "write a run as openPMD, CSV, Parquet or VTK",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument("run", metavar="RUN", help="a run's folder, or its run.h5")

@@ -5,27 +5,51 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
+from driftwell.cli.options.command import add_command
 from driftwell.cli.options.shared import add_study_options
+from driftwell.exit_codes import (
+    FINISHED,
+    NO_CROSSING,
+    SCHEDULER_GONE,
+    SEVERAL_CROSSINGS,
+    SOME_FAILED,
+    STOPPED,
+    TOO_NOISY,
+    UNUSABLE,
+)
 
-_EPILOG = """\
-The study file says what is limited in its [limit]. Runs that are there already are not computed
-again; give the same command again after a stop, a crash or a change of the study.
+_TEXT = """\
+Looks for the value of a key at which an answer crosses a threshold, with as few runs as that
+takes, and says the interval it is in. The study file says what is limited in its [limit].
 
-exit codes: 0 the interval is as narrow as asked; 2 the study, the folder or the command line
-cannot be used; 4 stopped on request, the same command goes on; 7 too many runs failed; 8 the
-cluster's scheduler is gone, the same command goes on; 9 no crossing; 10 several crossings;
-11 noise too large, or the runs allowed were too few; 130 interrupted at once; 1 a defect of
-driftwell
+Runs that are there already are not computed again; give the same command again after a stop, a
+crash or a change of the study.
 """
+_EXAMPLES = (
+    "driftwell limit limit.toml",
+    "driftwell limit limit.toml -o most-ions --workers 2",
+)
+_CODES = {
+    FINISHED: "the interval is as narrow as asked",
+    UNUSABLE: "the study, the folder or the command line cannot be used",
+    STOPPED: "stopped on request; the same command goes on",
+    SOME_FAILED: "too many runs failed",
+    SCHEDULER_GONE: "",
+    NO_CROSSING: "",
+    SEVERAL_CROSSINGS: "",
+    TOO_NOISY: "",
+}
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
+    parser = add_command(
+        commands,
         "limit",
-        help="find the value of a key at which an answer crosses a threshold",
-        epilog=_EPILOG,
-        formatter_class=argparse.RawDescriptionHelpFormatter,
+        "find the value of a key at which an answer crosses a threshold",
+        _TEXT,
+        _EXAMPLES,
+        _CODES,
     )
     parser.set_defaults(carry_out=carry_out)
     add_study_options(parser, "limit")

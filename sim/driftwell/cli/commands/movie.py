@@ -5,13 +5,27 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
+from driftwell.cli.options.command import add_command
 from driftwell.cli.options.types import file
+
+_TEXT = """\
+Shows the tracked charges of a run moving, in one plane or several side by side, among the
+outlines of electrodes and walls. MP4 needs the program ffmpeg; without it a GIF is written.
+"""
+_EXAMPLES = (
+    "driftwell movie trap-run",
+    "driftwell movie trap-run -o trap.gif --seconds 4 --plane zx",
+)
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "movie", help="show a run as a movie, MP4 or GIF"
+    parser = add_command(
+        commands,
+        "movie",
+        "show a run as a movie, MP4 or GIF",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument("run", metavar="RUN", help="a run's folder, or its run.h5")

@@ -6,13 +6,29 @@ import argparse
 from pathlib import Path
 from typing import Any
 
+from driftwell.cli.options.command import add_command
 from driftwell.cli.options.types import file
+
+_TEXT = """\
+Writes a small scenario, or a study with the scenario it varies, as a file whose comments say
+what to change. Its values are invented. Nothing is ever written over. Without a KIND, all kinds
+are named.
+"""
+_EXAMPLES = (
+    "driftwell new",
+    "driftwell new rf-trap -o trap.toml",
+    "driftwell new sweep",
+)
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "new", help="write a commented scenario or study to start from"
+    parser = add_command(
+        commands,
+        "new",
+        "write a commented starting scenario or study",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out, parser=parser)
     parser.add_argument("kind", nargs="?", metavar="KIND", help="which one; without, all are named")

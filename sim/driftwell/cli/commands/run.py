@@ -5,44 +5,68 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
-from driftwell.cli.options.shared import add_settings, add_threads
-from driftwell.cli.options.types import duration, folder, seed
+from driftwell.cli.options.command import add_command
+from driftwell.cli.options.shared import (
+    add_no_pictures,
+    add_output,
+    add_settings,
+    add_stop_after,
+    add_threads,
+)
+from driftwell.cli.options.types import seed
+from driftwell.exit_codes import ALL_LOST, NOT_CONTINUED, NOT_RECORDED, STOPPED
+
+_TEXT = """\
+Follows the charges of a scenario to its end, records what happens in a folder, prints the
+answers to the scenario's questions with their errors, and draws pictures.
+
+Given again, the same command goes on where a stop, a crash or a full disk ended it. Ctrl-C stops
+it, and what is recorded stays.
+"""
+_EXAMPLES = (
+    "driftwell run trap.toml",
+    "driftwell run trap.toml -o night --stop-after 7h30m",
+    'driftwell run trap.toml --seed 2 --set "duration=1 ms" -o second',
+)
+_CODES = {
+    ALL_LOST: "",
+    STOPPED: "",
+    NOT_CONTINUED: "",
+    NOT_RECORDED: "",
+}
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "run", help="execute a scenario and answer its questions"
+    parser = add_command(
+        commands,
+        "run",
+        "execute a scenario and answer its questions",
+        _TEXT,
+        _EXAMPLES,
+        _CODES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument("file", help="scenario file (TOML)")
-    parser.add_argument(
-        "-o",
-        "--output",
-        type=folder,
-        metavar="FOLDER",
-        help="where to leave the record (default: the file's name with -run, here)",
+    written = add_output(
+        parser, "where to leave the record (default: the file's name with -run, here)"
     )
-    add_threads(parser)
-    parser.add_argument("--seed", type=seed, metavar="N", help="seed instead of the scenario's own")
-    parser.add_argument("--no-pictures", action="store_true", help="leave out the pictures")
-    parser.add_argument(
+    written.add_argument(
         "--fresh",
         action="store_true",
         help="start over where a run was begun; the old one is kept under another name",
     )
-    parser.add_argument(
-        "--stop-after",
-        type=duration,
-        metavar="TIME",
-        help="stop by the clock, e.g. after 7h30m; the same command then goes on",
+    add_no_pictures(written)
+    add_settings(parser).add_argument(
+        "--seed", type=seed, metavar="N", help="seed instead of the scenario's own"
     )
-    parser.add_argument(
+    machine = add_threads(parser)
+    add_stop_after(machine)
+    machine.add_argument(
         "--force",
         action="store_true",
         help="begin even where memory or disk look too small, with a warning",
     )
-    add_settings(parser)
 
 
 def carry_out(asked: argparse.Namespace) -> int:

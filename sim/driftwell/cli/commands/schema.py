@@ -5,11 +5,26 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
+from driftwell.cli.options.command import add_command
+
+_TEXT = """\
+Prints a description of all keys of scenario files, or with --study of study files, with which
+an editor completes and checks while you type.
+"""
+_EXAMPLES = (
+    "driftwell schema > scenario.schema.json",
+    "driftwell schema --study > study.schema.json",
+)
+
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "schema", help="print the JSON Schema of scenario or study files, for editors"
+    parser = add_command(
+        commands,
+        "schema",
+        "print the JSON Schema of scenario or study files, for editors",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument(

@@ -5,29 +5,43 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
-from driftwell.cli.options.shared import add_study_options
+from driftwell.cli.options.command import add_command
+from driftwell.cli.options.shared import add_stop_after, add_study_options
+from driftwell.exit_codes import FINISHED, SCHEDULER_GONE, SOME_FAILED, STOPPED, UNUSABLE
 
-_EPILOG = """\
-What is there already is not computed again; what was cut off goes on. Give the same command
-again after a stop, a crash or a change of the study.
+_TEXT = """\
+Computes the runs of a study, many side by side, and leaves a table of their answers, pictures
+and a summary.
 
-exit codes: 0 every run is there (finished, or every charge lost); 2 the study, the folder or
-the command line cannot be used; 4 stopped on request, the same command goes on; 7 some runs
-failed, the summary says which and why; 8 the cluster's scheduler is gone, the same command
-goes on; 130 interrupted at once; 1 a defect of driftwell
+What is there already is not computed again; what was cut off goes on. Give the same command again
+after a stop, a crash or a change of the study.
 """
+_EXAMPLES = (
+    "driftwell sweep sweep.toml",
+    "driftwell sweep sweep.toml -o night --workers 4 --stop-after 9h",
+    "driftwell sweep sweep.toml --on dask --scheduler tcp://192.0.2.1:8786",
+)
+_CODES = {
+    FINISHED: "every run is there (finished, or every charge lost)",
+    UNUSABLE: "the study, the folder or the command line cannot be used",
+    STOPPED: "",
+    SOME_FAILED: "",
+    SCHEDULER_GONE: "",
+}
 
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
+    parser = add_command(
+        commands,
         "sweep",
-        help="compute all runs of a study that are not there yet",
-        epilog=_EPILOG,
-        formatter_class=argparse.RawDescriptionHelpFormatter,
+        "compute all runs of a study that are not there yet",
+        _TEXT,
+        _EXAMPLES,
+        _CODES,
     )
     parser.set_defaults(carry_out=carry_out)
-    add_study_options(parser, "sweep")
+    add_stop_after(add_study_options(parser, "sweep"))
 
 
 def carry_out(asked: argparse.Namespace) -> int:
@@ -44,4 +58,5 @@ def carry_out(asked: argparse.Namespace) -> int:
         asked.retry_failed,
         not asked.no_pictures,
         place_of(asked),
+        asked.stop_after,
     )

@@ -5,11 +5,26 @@ from __future__ import annotations
 import argparse
 from typing import Any
 
+from driftwell.cli.options.command import add_command
+
+_TEXT = """\
+Shows a run, or a sweep with all its runs, in place on a terminal until none goes on; anywhere
+else once, as text. It only reads: it may be ended and started at any time.
+"""
+_EXAMPLES = (
+    "driftwell watch trap-run",
+    "driftwell watch sweep-sweep --once",
+)
+
 
 def add(commands: Any) -> None:
     """Add the command."""
-    parser: argparse.ArgumentParser = commands.add_parser(
-        "watch", help="show how far a run or a sweep is"
+    parser = add_command(
+        commands,
+        "watch",
+        "show how far a run or a sweep is",
+        _TEXT,
+        _EXAMPLES,
     )
     parser.set_defaults(carry_out=carry_out)
     parser.add_argument("folder", metavar="FOLDER", help="a run's folder, or a sweep's")

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from driftwell.answers.answer import Answer
-from driftwell.answers.answer_lines import force_lines
+from driftwell.answers.answer_lines import common_lines
 from driftwell.hand.comparison import Comparison, difference
 from driftwell.hand.formula import Formula, HandValue
 from driftwell.report.page.markup import NOTHING, Markup, joined, tag, together
@@ -44,7 +44,10 @@ def answers(matter: Matter) -> Section:
         columns = [Column("question"), Column("answer", number=True), Column("note")]
         caption = "Answers of the run, ± their sampling error."
     parts.append(table(caption, columns, rows))
-    parts += [tag("p", line) for line in force_lines(found, _WIDTH)]
+    parts += [
+        tag("p", f"{line[0].upper()}{line[1:]}.", class_="pale")
+        for line in common_lines(found, _WIDTH)
+    ]
     if not by_hand:
         parts.append(tag("p", _no_formula(matter), class_="pale"))
     parts.append(_formulas(matter))

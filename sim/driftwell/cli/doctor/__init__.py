@@ -1,0 +1,1 @@
+"""What ``driftwell doctor`` looks at, one file for each group of checks."""
