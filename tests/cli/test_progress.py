@@ -16,7 +16,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from driftwell.cli import progress as module
+from driftwell.cli.runs import progress as module
 from driftwell.cli.runs.progress import ProgressDisplay, told
 from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
