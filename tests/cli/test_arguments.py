@@ -10,7 +10,7 @@ import pytest
 
 from driftwell import open_run
 from driftwell.cli.main import main
-from driftwell.cli.thread_limit import usable_threads
+from driftwell.cli.terminal.thread_limit import usable_threads
 from tests.cli.small_runs import command, scenario, settings
 
 

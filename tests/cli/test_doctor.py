@@ -13,7 +13,7 @@ import pytest
 from driftwell.cli.doctor import extras, kept, output, processor, room, versions
 from driftwell.cli.doctor.line import FAULT, NOTE, OK, Line
 from driftwell.cli.doctor.look import report
-from driftwell.cli.thread_limit import usable_cores
+from driftwell.cli.terminal.thread_limit import usable_cores
 
 PROJECT = tomllib.loads((Path(__file__).parents[2] / "pyproject.toml").read_text("utf-8"))
 

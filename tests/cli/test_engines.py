@@ -9,8 +9,8 @@ from typing import Any
 
 import pytest
 
-from driftwell.cli.engines import Engines
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.studies.engines import Engines
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import BusyError, DriftwellError
 from driftwell.study.sweep_folder import CATALOGUE_FILE, taken
 

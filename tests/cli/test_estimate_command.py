@@ -8,11 +8,11 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli import counts
-from driftwell.cli import estimate as module
-from driftwell.cli.clock import by_the_clock, lasting
-from driftwell.cli.estimate import estimate_lines
 from driftwell.cli.main import main
+from driftwell.cli.runs import counts
+from driftwell.cli.runs import estimate as module
+from driftwell.cli.runs.estimate import estimate_lines
+from driftwell.cli.terminal.clock import by_the_clock, lasting
 from driftwell.estimate import Change, Estimate
 from driftwell.timed_run import Stretch
 from tests.cli.small_runs import PAIR, SMALL, scenario, settings

@@ -11,8 +11,8 @@ import pytest
 from driftwell import exit_codes
 from driftwell.cli.arguments import parsed, parser
 from driftwell.cli.commands.table import COMMANDS
-from driftwell.cli.limit import EXIT_CODES as LIMIT_CODES
 from driftwell.cli.main import main
+from driftwell.cli.studies.limit import EXIT_CODES as LIMIT_CODES
 from driftwell.exit_codes import MEANINGS
 from driftwell.run import EXIT_CODES as RUN_CODES
 

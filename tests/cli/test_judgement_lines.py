@@ -6,8 +6,8 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli.judgement import judgement_lines
 from driftwell.cli.main import main
+from driftwell.cli.runs.judgement import judgement_lines
 from driftwell.judgement import Finding
 from tests.cli.small_runs import scenario, settings
 

@@ -7,8 +7,8 @@ from pathlib import Path
 import pytest
 
 from driftwell import open_run
-from driftwell.cli import run_command as command_module
 from driftwell.cli.main import main
+from driftwell.cli.runs import run as command_module
 from driftwell.errors import RecordError
 from driftwell.report.pictures import run_pictures as pictures
 from tests.cli.small_runs import PAIR, SMALL, scenario, settings

@@ -9,8 +9,8 @@ from pathlib import Path
 import pytest
 
 from driftwell import open_run
-from driftwell.cli import run_command as command_module
 from driftwell.cli.main import main
+from driftwell.cli.runs import run as command_module
 from driftwell.record import claim as claim_module
 from driftwell.record.index import SEGMENTS
 from tests.cli.small_runs import SMALL, scenario, settings, started

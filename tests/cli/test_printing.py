@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli.printing import shown, sign, width
+from driftwell.cli.terminal.printing import shown, sign, width
 from tests.cli.small_runs import SMALL, command, scenario, settings, started
 
 

@@ -16,9 +16,9 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from driftwell.cli import progress as module
-from driftwell.cli.progress import ProgressDisplay, told
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.runs import progress as module
+from driftwell.cli.runs.progress import ProgressDisplay, told
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
 from driftwell.particles.state import Particles
 from driftwell.run import Progress

@@ -48,7 +48,7 @@ def test_importing_the_package_and_asking_for_help_load_nothing_heavy(code: str)
 
 
 def test_reading_a_scenario_loads_no_pictures() -> None:
-    assert "matplotlib" not in loaded_by("import driftwell.cli.run_command")
+    assert "matplotlib" not in loaded_by("import driftwell.cli.runs.run")
 
 
 def test_the_schema_needs_no_terminal_bar() -> None:

@@ -18,9 +18,9 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli import watch as module
 from driftwell.cli.main import main
-from driftwell.cli.watch_table import Row, cells, counts, fitted, table
+from driftwell.cli.runs import watch as module
+from driftwell.cli.runs.watch_table import Row, cells, counts, fitted, table
 from driftwell.record.condition import Condition
 from driftwell.record.heartbeat import PROGRESS_FILE, Heartbeat, Sign, read_sign
 from driftwell.run import Progress

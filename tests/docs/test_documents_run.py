@@ -27,10 +27,10 @@ from pathlib import Path
 
 import pytest
 
-from driftwell.cli.converge import NOT_CONVERGED
-from driftwell.cli.limit import EXIT_CODES as LIMIT_CODES
 from driftwell.cli.main import main
-from driftwell.cli.sweep import SOME_FAILED
+from driftwell.cli.studies.converge import NOT_CONVERGED
+from driftwell.cli.studies.limit import EXIT_CODES as LIMIT_CODES
+from driftwell.cli.studies.sweep import SOME_FAILED
 from driftwell.run import EXIT_CODES
 from driftwell.scenario.read import read_scenario
 from driftwell.study.cluster_engine import ClusterLostError

@@ -88,7 +88,7 @@ def _child(words: list[str]) -> None:
 def begun(words: list[str]) -> Any:
     """A process that runs the command, forked from one that has imported everything."""
     context = multiprocessing.get_context("forkserver")
-    context.set_forkserver_preload(["driftwell.cli.run_command", "driftwell.run"])
+    context.set_forkserver_preload(["driftwell.cli.runs.run", "driftwell.run"])
     process = context.Process(target=_child, args=(words,))
     process.start()
     return process

@@ -232,7 +232,7 @@ def test_a_disk_that_fills_up_ends_the_run_with_what_is_kept(
 def test_a_scenario_that_vanishes_after_it_was_read_is_not_missed(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    from driftwell.cli import run_command as command
+    from driftwell.cli.runs import run as command
 
     real = command.read_scenario
 
@@ -249,7 +249,7 @@ def test_a_scenario_that_vanishes_after_it_was_read_is_not_missed(
 def test_a_file_of_charges_that_vanishes_after_it_was_read_is_told(
     tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    from driftwell.cli import run_command as command
+    from driftwell.cli.runs import run as command
 
     text = SMALL.replace("count   = 8\n", "").replace(
         'shape   = { kind = "gaussian", sigma = ["60 um", "60 um", "250 um"] }',

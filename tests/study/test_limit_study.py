@@ -12,8 +12,8 @@ import numpy as np
 import pytest
 
 from driftwell.answers.answer import Answer
-from driftwell.cli.limit import EXIT_CODES
 from driftwell.cli.main import main
+from driftwell.cli.studies.limit import EXIT_CODES
 from driftwell.errors import StudyError
 from driftwell.report.study_pictures.limit_picture import draw_limit
 from driftwell.study import limit_search

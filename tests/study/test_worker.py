@@ -174,7 +174,7 @@ def test_a_worker_that_has_not_begun_to_step_ends_at_once(tmp_path: Path) -> Non
         engine.submit(Task("a", content(scenario(tmp_path), tmp_path / "run")))
         while not engine.under_way():
             engine.next(0.1)
-        time.sleep(2.0)
+        time.sleep(5.0)  # it has loaded its libraries by then, also on a busy machine
         began = time.monotonic()
         engine.stop()
         reply = all_done(engine, 1)["a"].reply

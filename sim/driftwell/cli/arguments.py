@@ -14,7 +14,7 @@ from collections.abc import Iterable, Sequence
 from driftwell._version import __version__
 from driftwell.cli.commands.table import COMMANDS, GROUPS
 from driftwell.cli.options.command import Parser, code_lines, filled
-from driftwell.cli.printing import tell
+from driftwell.cli.terminal.printing import tell
 from driftwell.exit_codes import MEANINGS, UNUSABLE
 
 START = """\

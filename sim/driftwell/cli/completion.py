@@ -9,8 +9,8 @@ import shtab
 
 from driftwell.cli.arguments import Whole, parser
 from driftwell.cli.options.types import file, folder
-from driftwell.cli.printing import answer
 from driftwell.cli.templates import templates
+from driftwell.cli.terminal.printing import answer
 from driftwell.exit_codes import FINISHED, UNUSABLE
 
 FILES, FOLDERS = {"file", "study", "run"}, {"folder"}

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from pathlib import Path
 
-from driftwell.cli.printing import answer, tell
+from driftwell.cli.terminal.printing import answer, tell
 from driftwell.errors import DriftwellError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.exports.table import export

@@ -7,9 +7,9 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from driftwell._version import __version__
-from driftwell.cli.compiling import tell_of_compiling
-from driftwell.cli.printing import answer, tell, width
-from driftwell.cli.run_command import too_little_memory
+from driftwell.cli.runs.run import too_little_memory
+from driftwell.cli.terminal.compiling import tell_of_compiling
+from driftwell.cli.terminal.printing import answer, tell, width
 from driftwell.errors import DriftwellError, ScenarioError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.kernels.compilation import first_compilation

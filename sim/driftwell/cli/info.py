@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import replace
 from pathlib import Path
 
-from driftwell.cli.hand import compared
-from driftwell.cli.judgement import judgement_lines
-from driftwell.cli.printing import answer, sign, tell, width
+from driftwell.cli.runs.hand import compared
+from driftwell.cli.runs.judgement import judgement_lines
+from driftwell.cli.terminal.printing import answer, sign, tell, width
 from driftwell.errors import DriftwellError, RecordError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.judgement import judged

@@ -12,7 +12,7 @@ from collections.abc import Sequence
 
 from driftwell._version import __version__
 from driftwell.cli.arguments import parsed
-from driftwell.cli.printing import flush_quietly, tell, write_anything
+from driftwell.cli.terminal.printing import flush_quietly, tell, write_anything
 from driftwell.exit_codes import DEFECT, INTERRUPTED
 
 TRACEBACK = "DRIFTWELL_TRACEBACK"

@@ -10,7 +10,7 @@ from pathlib import Path
 
 from tqdm import tqdm
 
-from driftwell.cli.printing import answer, is_terminal, tell
+from driftwell.cli.terminal.printing import answer, is_terminal, tell
 from driftwell.errors import DriftwellError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.reader import Run, open_run

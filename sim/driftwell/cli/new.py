@@ -7,8 +7,8 @@ import shlex
 from contextlib import suppress
 from pathlib import Path
 
-from driftwell.cli.printing import answer, tell
 from driftwell.cli.templates import ENDING, Template, templates
+from driftwell.cli.terminal.printing import answer, tell
 from driftwell.errors import DriftwellError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 

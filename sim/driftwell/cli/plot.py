@@ -6,7 +6,7 @@ import argparse
 import logging
 from pathlib import Path
 
-from driftwell.cli.printing import answer, tell
+from driftwell.cli.terminal.printing import answer, tell
 from driftwell.errors import DriftwellError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.reader import Run, open_run

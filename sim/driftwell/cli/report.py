@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import logging
 
-from driftwell.cli.printing import answer, tell
+from driftwell.cli.terminal.printing import answer, tell
 from driftwell.errors import DriftwellError
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.report.written import write_report

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 
-from driftwell.cli.printing import answer
+from driftwell.cli.terminal.printing import answer
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.scenario.schema import json_schema
 from driftwell.study.form import StudyForm

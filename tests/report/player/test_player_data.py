@@ -14,6 +14,7 @@ from pictured_run import Charges, charges, lost, pictured_run
 from played import AROUND, NASTY, scenario_in
 
 from driftwell.answers.evidence import CloudFacts
+from driftwell.constants import SPEED_OF_LIGHT
 from driftwell.geometry.solid import Mesh
 from driftwell.record.reader import Run
 from driftwell.report.player.choice import (
@@ -26,7 +27,7 @@ from driftwell.report.player.choice import (
 )
 from driftwell.report.player.data import player_data
 from driftwell.report.player.fates import fates_of
-from driftwell.report.player.packing import KINDS, page_json, quantised
+from driftwell.report.player.packing import KINDS, page_json, quantised, speeds
 from driftwell.report.player.player import player
 from driftwell.report.player.surfaces.all import surfaces_of
 from driftwell.report.player.surfaces.mesh import fewer
@@ -92,6 +93,13 @@ def test_places_are_kept_to_a_part_of_what_each_charge_covers() -> None:
     allowed = np.broadcast_to(0.5001 / 65534 * packed.span[:, None], places.shape)
     assert np.all(np.abs(back - places)[known] <= allowed[known])
     assert np.abs(back - places)[3].max() > 1e-5 * 1e3 / 65534  # it can fail
+
+
+def test_speeds_are_those_of_the_laboratory() -> None:
+    """beta gamma = 0.75 is 0.6 c (0.36 + 0.64 = 1), and slow ones are as they are."""
+    proper = np.array([[[0.0, 0.75 * SPEED_OF_LIGHT, 0.0], [3.0, 0.0, 4.0]]])
+    expected = pytest.approx([0.6 * SPEED_OF_LIGHT, 5.0], rel=1e-15, abs=0.0)
+    assert expected == speeds(proper)[0]
 
 
 def test_the_places_in_the_page_are_those_of_the_record(pictured_beam: Run) -> None:

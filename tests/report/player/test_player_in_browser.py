@@ -177,7 +177,7 @@ def test_the_mouse_turns_shifts_and_zooms(shown: Opened) -> None:
     shown.page.wait_for_function(f"{STATE}.camera.distance < {shifted['distance']}")
 
 
-@pytest.mark.parametrize("mode", ["energy", "fate"])
+@pytest.mark.parametrize("mode", ["species", "energy", "speed", "fate"])
 def test_colours_change_with_what_they_stand_for(shown: Opened, mode: str) -> None:
     shown.value(f"{STATE}.seek(1e-7)")
     before = picture(shown)
@@ -185,7 +185,9 @@ def test_colours_change_with_what_they_stand_for(shown: Opened, mode: str) -> No
     assert before != picture(shown)
     legend = shown.page.inner_text("#dwp-legend")
     expected = {
+        "species": ["calcium: 900"],
         "energy": ["kinetic energy of one particle", "keV"],
+        "speed": ["speed", "Mm/s"],
         "fate": ["stays to the end (600)", "lost: bore (150)", "lost: plate (150)", "lost there"],
     }[mode]
     assert [] == [words for words in expected if words not in legend]

@@ -97,8 +97,8 @@ def carry_out(asked: argparse.Namespace) -> int:
     """Repeat and judge; returns the exit code."""
     from pathlib import Path
 
-    from driftwell.cli.converge import Options, converge_command
-    from driftwell.cli.sweep_place import place_of
+    from driftwell.cli.studies.converge import Options, converge_command
+    from driftwell.cli.studies.place import place_of
     from driftwell.study.convergence.plan import Wanted
 
     axes = tuple(name.replace("-", "_") for name in asked.axes)

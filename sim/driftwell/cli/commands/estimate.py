@@ -54,11 +54,11 @@ def carry_out(asked: argparse.Namespace) -> int:
     """Count, work out and perhaps time; returns the exit code."""
     if asked.seconds is not None and not asked.measure:
         asked.parser.error("--seconds says how long --measure times: give --measure too")
-    from driftwell.cli.thread_limit import limited_threads
+    from driftwell.cli.terminal.thread_limit import limited_threads
 
     threads = limited_threads(asked.threads)
     with nullcontext() if asked.measure else _uncollected():
-        from driftwell.cli.estimate import estimate_command
+        from driftwell.cli.runs.estimate import estimate_command
 
         timed = (asked.seconds or TIMING) if asked.measure else None
         return estimate_command(asked.file, asked.settings, threads, timed)

@@ -40,7 +40,7 @@ def add(commands: Any) -> None:
 
 def carry_out(asked: argparse.Namespace) -> int:
     """Solve, tell and draw; returns the exit code."""
-    from driftwell.cli.thread_limit import limited_threads
+    from driftwell.cli.terminal.thread_limit import limited_threads
 
     threads = limited_threads(asked.threads)
     from driftwell.cli.fields import fields_command

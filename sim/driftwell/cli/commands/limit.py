@@ -57,8 +57,8 @@ def add(commands: Any) -> None:
 
 def carry_out(asked: argparse.Namespace) -> int:
     """Find the value; returns the exit code."""
-    from driftwell.cli.limit import limit_command
-    from driftwell.cli.sweep_place import place_of
+    from driftwell.cli.studies.limit import limit_command
+    from driftwell.cli.studies.place import place_of
 
     return limit_command(
         asked.study,

@@ -71,10 +71,10 @@ def add(commands: Any) -> None:
 
 def carry_out(asked: argparse.Namespace) -> int:
     """Execute the scenario; returns the exit code."""
-    from driftwell.cli.thread_limit import limited_threads
+    from driftwell.cli.terminal.thread_limit import limited_threads
 
     threads = limited_threads(asked.threads)
-    from driftwell.cli.run_command import run_command
+    from driftwell.cli.runs.run import run_command
 
     settings = list(asked.settings)
     if asked.seed is not None:

@@ -46,8 +46,8 @@ def add(commands: Any) -> None:
 
 def carry_out(asked: argparse.Namespace) -> int:
     """Compute the runs; returns the exit code."""
-    from driftwell.cli.sweep import sweep_command
-    from driftwell.cli.sweep_place import place_of
+    from driftwell.cli.studies.place import place_of
+    from driftwell.cli.studies.sweep import sweep_command
 
     return sweep_command(
         asked.study,

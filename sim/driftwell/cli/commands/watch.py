@@ -33,6 +33,6 @@ def add(commands: Any) -> None:
 
 def carry_out(asked: argparse.Namespace) -> int:
     """Show it; returns the exit code."""
-    from driftwell.cli.watch import watch
+    from driftwell.cli.runs.watch import watch
 
     return watch(asked.folder, asked.once)

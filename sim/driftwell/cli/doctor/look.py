@@ -17,8 +17,8 @@ from driftwell.cli.doctor.output import output
 from driftwell.cli.doctor.processor import DISABLED, THREADS, compiler, cores
 from driftwell.cli.doctor.room import disk, memory
 from driftwell.cli.doctor.versions import libraries, package, python
-from driftwell.cli.printing import answer, tell, width
-from driftwell.cli.thread_limit import limited_threads
+from driftwell.cli.terminal.printing import answer, tell, width
+from driftwell.cli.terminal.thread_limit import limited_threads
 from driftwell.exit_codes import FINISHED, UNUSABLE
 
 _WORD, _WHAT = 7, 17

@@ -11,7 +11,7 @@ from pathlib import Path
 
 from driftwell.cli.doctor.line import FAULT, NOTE, OK, Line
 from driftwell.cli.options.types import threads as number_of_threads
-from driftwell.cli.thread_limit import usable_cores
+from driftwell.cli.terminal.thread_limit import usable_cores
 
 THREADS, DISABLED = "NUMBA_NUM_THREADS", "NUMBA_DISABLE_JIT"
 _QUOTA = Path("/sys/fs/cgroup/cpu.max")

@@ -8,7 +8,7 @@ import textwrap
 from collections.abc import Iterable, Mapping, Sequence
 from typing import Any, NoReturn, Protocol
 
-from driftwell.cli.printing import tell
+from driftwell.cli.terminal.printing import tell
 from driftwell.exit_codes import DEFECT, FINISHED, INTERRUPTED, MEANINGS, UNUSABLE
 
 WIDTH = 90

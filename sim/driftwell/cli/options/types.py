@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 
-from driftwell.cli.durations import seconds_of
+from driftwell.cli.terminal.durations import seconds_of
 
 LARGEST_SEED = 2**63 - 1
 MOST_THREADS = 1024

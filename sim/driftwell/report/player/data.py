@@ -13,7 +13,14 @@ from driftwell.record.reader import Run
 from driftwell.report.again import read_again
 from driftwell.report.player.curves import curves_of
 from driftwell.report.player.fates import Fates, fates_of
-from driftwell.report.player.packing import block, kinetic_energies, quantised, shaded
+from driftwell.report.player.packing import (
+    Shaded,
+    block,
+    kinetic_energies,
+    quantised,
+    shaded,
+    speeds,
+)
 from driftwell.report.player.surfaces.all import Surfaces, surfaces_of
 from driftwell.report.player.surfaces.mesh import Drawable
 from driftwell.report.player.ways import Ways
@@ -54,7 +61,8 @@ def player_data(run: Run, ways: Ways, scenario: LoadedScenario | None) -> dict[s
 def _charges(run: Run, ways: Ways, fates: Fates) -> dict[str, Any]:
     clouds = run.header.clouds
     mass = np.array([clouds[number].mass for number in ways.cloud])
-    energy = shaded(kinetic_energies(ways.state[:, :, 3:], mass) / ELEMENTARY_CHARGE)
+    velocity = ways.state[:, :, 3:]
+    energy = kinetic_energies(velocity, mass) / ELEMENTARY_CHARGE
     packed = quantised(ways.state[:, :, :3])
     return {
         "time": block(ways.time, "f8"),
@@ -65,10 +73,9 @@ def _charges(run: Run, ways: Ways, fates: Fates) -> dict[str, Any]:
             "low": block(packed.low, "f8"),
             "span": block(packed.span, "f8"),
         },
-        "energy": {
-            "number": block(energy.number, "u1"),
-            "low": energy.low,
-            "high": energy.high,
+        "tones": {
+            "energy": _tones(shaded(energy), "kinetic energy of one particle", "eV"),
+            "speed": _tones(shaded(speeds(velocity)), "speed", "m/s"),
         },
         "born": block(fates.born, "f8"),
         "birthplace": block(fates.birthplace, "f8"),
@@ -76,6 +83,12 @@ def _charges(run: Run, ways: Ways, fates: Fates) -> dict[str, Any]:
         "end": block(fates.end, "f8"),
         "wall": block(fates.wall, "i4"),
     }
+
+
+def _tones(found: Shaded, title: str, unit: str) -> dict[str, Any]:
+    """Steps of colour, and what stands at their scale."""
+    number = block(found.number, "u1")
+    return {"number": number, "low": found.low, "high": found.high, "title": title, "unit": unit}
 
 
 def _clouds(run: Run, ways: Ways) -> list[dict[str, Any]]:

@@ -10,7 +10,13 @@ from driftwell.report.player.packing import page_json
 from driftwell.report.player.ways import Ways
 
 SPEEDS = ((0.1, "1/10"), (0.25, "1/4"), (0.5, "1/2"), (1.0, "1"), (2.0, "2"), (4.0, "4"))
-COLOURS = (("cloud", "cloud"), ("energy", "kinetic energy"), ("fate", "fate"))
+COLOURS = (
+    ("cloud", "cloud"),
+    ("species", "species"),
+    ("energy", "kinetic energy"),
+    ("speed", "speed"),
+    ("fate", "fate"),
+)
 VIEWS = (("oblique", "oblique"), ("x", "x"), ("y", "y"), ("z", "z"))
 FITS = (("all", "all"), ("charges", "charges"))
 

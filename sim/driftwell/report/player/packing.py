@@ -73,6 +73,12 @@ def kinetic_energies(velocity: Floats, mass: Floats) -> Floats:
     return np.asarray(mass[:, None] * square / (1.0 + gamma))
 
 
+def speeds(velocity: Floats) -> Floats:
+    """m/s, of proper velocities (n, k, 3): u / gamma."""
+    proper = np.sqrt(np.sum(velocity**2, axis=2))
+    return np.asarray(proper / np.hypot(1.0, proper / SPEED_OF_LIGHT))
+
+
 @dataclass(frozen=True, slots=True)
 class Shaded:
     """Values in 254 steps from `low` to `high`; 255 where there is none."""

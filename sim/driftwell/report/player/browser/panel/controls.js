@@ -42,6 +42,7 @@ function makeControls(player) {
   }
   function setColour(mode) {
     stage.colour = mode;
+    ways.shadeBy(mode);
     part("colour").value = mode;
     root.dataset.colour = mode;
     showLegend(part("legend"), mode, data, ways, theme);

@@ -27,8 +27,8 @@ function entry(shape, colour, text) {
 
 function showLegend(box, mode, data, ways, theme) {
   box.replaceChildren();
-  if (mode === "energy") {
-    box.append(energyBar(data, theme));
+  if (mode in data.tones) {
+    box.append(toneBar(data.tones[mode], theme));
   } else if (mode === "fate") {
     const found = new Map();
     for (const wall of ways.wall) found.set(wall, (found.get(wall) || 0) + 1);
@@ -39,22 +39,28 @@ function showLegend(box, mode, data, ways, theme) {
     }
     if (ways.born.some((t) => t > ways.first)) box.append(entry("ring", theme.pale, "not born yet, where it will be"));
   } else {
-    data.clouds.forEach((cloud, number) => {
+    const part = ({ shown, count }) => (shown === count ? counted(count) : `${counted(shown)} of ${counted(count)}`);
+    const total = (name, clouds) => clouds.reduce((sum, each) => sum + each[name], 0);
+    const said = mode === "species"
+      ? ways.kinds.map((kind) => {
+        const own = data.clouds.filter((each) => each.species === kind);
+        return `${kind}: ${part({ shown: total("shown", own), count: total("count", own) })}`;
+      })
+      : data.clouds.map((cloud) => `${cloud.name}: ${part(cloud)}, ${cloud.species}`);
+    said.forEach((words, number) => {
       const shape = SHAPES[Math.floor(number / theme.palette.length) % SHAPES.length];
-      const part = cloud.shown === cloud.count ? counted(cloud.count) : `${counted(cloud.shown)} of ${counted(cloud.count)}`;
-      box.append(entry(shape, theme.palette[number % theme.palette.length], `${cloud.name}: ${part}, ${cloud.species}`));
+      box.append(entry(shape, theme.palette[number % theme.palette.length], words));
     });
   }
   if (ways.lost.some((t) => t <= ways.last)) box.append(entry("cross", mode === "fate" ? theme.ink : theme.pale, "lost there"));
 }
 
-function energyBar(data, theme) {
-  const { low, high } = data.energy;
+function toneBar({ low, high, title, unit: plain }, theme) {
   const whole = element("div", undefined, "dwp-scale");
-  whole.append(element("div", "kinetic energy of one particle"));
+  whole.append(element("div", title));
   const bar = element("div", undefined, "dwp-tones");
   bar.style.background = `linear-gradient(to right, ${theme.tones.map(cssColour).join(",")})`;
-  const { factor, unit } = prefixed(Math.max(Math.abs(low), Math.abs(high)), "eV");
+  const { factor, unit } = prefixed(Math.max(Math.abs(low), Math.abs(high)), plain);
   const span = (high - low) / factor || 1;
   const said = (value) => (value / factor).toFixed(Math.min(9, Math.max(0, 2 - Math.floor(Math.log10(span)))));
   const numbersLine = element("div", undefined, "dwp-ends");

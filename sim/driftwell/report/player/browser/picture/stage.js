@@ -34,13 +34,14 @@ function makeStage(canvas, data, ways, theme) {
 
   // how charges look, and in what shape, by what colours stand for
   stage.look = () => {
-    const fates = stage.colour === "fate", byEnergy = stage.colour === "energy";
+    const fates = stage.colour === "fate", toned = stage.colour in data.tones;
+    const kind = stage.colour === "species" ? (c) => ways.species[ways.cloud[c]] : (c) => ways.cloud[c];
     const palette = theme.palette.map((c) => word(c)), tones = theme.tones.map((c) => word(c));
     const pale = word(theme.pale);
     const tone = (shade) => (shade === 255 ? pale : tones[Math.min(TONES.light.length - 1, shade * TONES.light.length / 255 | 0)]);
     return {
-      colour: (c, shade) => (byEnergy ? tone(shade) : fates ? palette[fateLook(ways.wall[c])[0]] : palette[ways.cloud[c] % palette.length]),
-      shape: (c) => (fates ? SHAPES[fateLook(ways.wall[c])[1]] : byEnergy ? "disc" : SHAPES[Math.floor(ways.cloud[c] / palette.length) % SHAPES.length]),
+      colour: (c, shade) => (toned ? tone(shade) : fates ? palette[fateLook(ways.wall[c])[0]] : palette[kind(c) % palette.length]),
+      shape: (c) => (fates ? SHAPES[fateLook(ways.wall[c])[1]] : toned ? "disc" : SHAPES[Math.floor(kind(c) / palette.length) % SHAPES.length]),
     };
   };
 

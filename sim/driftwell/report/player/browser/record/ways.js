@@ -6,7 +6,9 @@ function makeWays(data) {
   const time = numbers(data.time), cloud = numbers(data.cloud), id = numbers(data.id);
   const n = cloud.length, k = time.length;
   const number = numbers(data.place.number), low = numbers(data.place.low);
-  const span = numbers(data.place.span), shade = numbers(data.energy.number);
+  const span = numbers(data.place.span);
+  const tones = Object.fromEntries(Object.entries(data.tones).map(([mode, each]) => [mode, numbers(each.number)]));
+  let shade = tones.energy;
   const place = new Float64Array(3 * n * k);
   for (let c = 0, i = 0; c < n; c++) {
     for (let f = 0; f < k; f++) {
@@ -62,11 +64,17 @@ function makeWays(data) {
     return out;
   }
 
+  // what the steps of colour stand for from now on
+  function shadeBy(mode) {
+    shade = tones[mode] || shade;
+  }
+  const kinds = [...new Set(data.clouds.map((each) => each.species))];
+  const species = data.clouds.map((each) => kinds.indexOf(each.species));
   const room = () => ({
     place: new Float64Array(3 * n), state: new Uint8Array(n), shade: new Uint8Array(n),
   });
   return {
-    n, k, id, time, cloud, wall, born, lost, end, birthplace, place, cell, frameAt, at, room,
+    n, k, id, time, cloud, wall, born, lost, end, birthplace, place, cell, frameAt, at, room, shadeBy, kinds, species,
     first: time[0], last: time[k - 1],
   };
 }

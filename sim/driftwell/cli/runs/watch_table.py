@@ -7,8 +7,8 @@ from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from driftwell.cli.clock import by_the_clock, lasting
-from driftwell.cli.printing import shown
+from driftwell.cli.terminal.clock import by_the_clock, lasting
+from driftwell.cli.terminal.printing import shown
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph
 from driftwell.record.condition import Condition

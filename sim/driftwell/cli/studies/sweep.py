@@ -6,11 +6,11 @@ import logging
 from collections.abc import Sequence
 from pathlib import Path
 
-from driftwell.cli.engines import Engines
-from driftwell.cli.printing import answer, sign, tell, width
-from driftwell.cli.stop_wish import StopWish
-from driftwell.cli.sweep_place import Place
-from driftwell.cli.sweep_progress import SweepDisplay
+from driftwell.cli.studies.engines import Engines
+from driftwell.cli.studies.place import Place
+from driftwell.cli.studies.progress import SweepDisplay
+from driftwell.cli.terminal.printing import answer, sign, tell, width
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError, StudyError
 from driftwell.exit_codes import FINISHED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable

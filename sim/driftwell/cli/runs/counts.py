@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from pathlib import Path
 
-from driftwell.cli.clock import lasting
+from driftwell.cli.terminal.clock import lasting
 from driftwell.counted import Count
 from driftwell.forms import spelled
 from driftwell.forms.paragraph import paragraph

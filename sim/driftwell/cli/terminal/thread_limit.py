@@ -8,7 +8,7 @@ import sys
 from contextlib import suppress
 
 from driftwell.cli.options.types import threads as number_of_threads
-from driftwell.cli.printing import tell
+from driftwell.cli.terminal.printing import tell
 
 
 def limited_threads(asked: int | None) -> int:

@@ -7,7 +7,7 @@ from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.study.cores import Load, Sharing, shared, usable_cores
 from driftwell.study.engine import Engine
 from driftwell.study.pool import Pool

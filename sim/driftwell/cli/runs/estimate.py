@@ -11,17 +11,17 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from driftwell.assembly import Assembly
-from driftwell.cli.clock import by_the_clock, lasting
-from driftwell.cli.compiling import tell_of_compiling
-from driftwell.cli.counts import (
+from driftwell.cli.runs.counts import (
     count_lines,
     counted_in_words,
     disk_in_words,
     laid_out,
     memory_in_words,
 )
-from driftwell.cli.hand import caution_lines, lines_by_hand
-from driftwell.cli.printing import answer, tell, width
+from driftwell.cli.runs.hand import caution_lines, lines_by_hand
+from driftwell.cli.terminal.clock import by_the_clock, lasting
+from driftwell.cli.terminal.compiling import tell_of_compiling
+from driftwell.cli.terminal.printing import answer, tell, width
 from driftwell.coulomb.summation import Summation
 from driftwell.counted import counted
 from driftwell.errors import DriftwellError, StepError
@@ -63,7 +63,7 @@ def estimate_command(
         tell(str(error))
         return error.exit_code
     except MemoryError as error:
-        from driftwell.cli.run_command import too_little_memory
+        from driftwell.cli.runs.run import too_little_memory
 
         tell(too_little_memory(error))
         return UNUSABLE
@@ -127,7 +127,7 @@ def _of_study(file: str, settings: Sequence[str], seconds: float | None) -> int:
 
 def _begins(parts: Assembly, summation: Summation) -> None:
     """Say what is timed, as a run says what it does."""
-    from driftwell.cli.progress import steps_in_words
+    from driftwell.cli.runs.progress import steps_in_words
 
     tell(steps_in_words(parts.choice, parts.schedule, parts.everyone))
     if parts.unborn is not None:

@@ -11,10 +11,10 @@ from typing import Any
 
 from tqdm import tqdm
 
-from driftwell.cli.clock import by_the_clock
-from driftwell.cli.compiling import tell_of_compiling
-from driftwell.cli.printing import is_terminal, tell
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.terminal.clock import by_the_clock
+from driftwell.cli.terminal.compiling import tell_of_compiling
+from driftwell.cli.terminal.printing import is_terminal, tell
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.coulomb.form import Coulomb
 from driftwell.coulomb.summation import pairs_in_one_sum
 from driftwell.counted import PAIRS_PER_SECOND

@@ -9,11 +9,11 @@ from typing import Any
 
 from driftwell import exit_codes
 from driftwell.answers.answer_lines import answer_lines, common_lines
-from driftwell.cli.hand import compared
-from driftwell.cli.judgement import judgement_lines
-from driftwell.cli.printing import answer, same_place, sign, tell, width
-from driftwell.cli.progress import ProgressDisplay
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.runs.hand import compared
+from driftwell.cli.runs.judgement import judgement_lines
+from driftwell.cli.runs.progress import ProgressDisplay
+from driftwell.cli.terminal.printing import answer, same_place, sign, tell, width
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
 from driftwell.judgement import Finding, judged

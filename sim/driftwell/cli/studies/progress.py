@@ -10,9 +10,9 @@ from typing import Any
 
 from tqdm import tqdm
 
-from driftwell.cli.clock import by_the_clock
-from driftwell.cli.printing import is_terminal, tell
-from driftwell.cli.stop_wish import StopWish
+from driftwell.cli.terminal.clock import by_the_clock
+from driftwell.cli.terminal.printing import is_terminal, tell
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.kernels.compiled import kept_in
 from driftwell.study.cores import Sharing
 from driftwell.study.progress import Failure, SweepProgress

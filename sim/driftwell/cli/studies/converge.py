@@ -9,11 +9,11 @@ from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 
-from driftwell.cli.engines import Engines
-from driftwell.cli.printing import answer, sign, tell, width
-from driftwell.cli.stop_wish import StopWish
-from driftwell.cli.sweep_place import Place
-from driftwell.cli.sweep_progress import SweepDisplay
+from driftwell.cli.studies.engines import Engines
+from driftwell.cli.studies.place import Place
+from driftwell.cli.studies.progress import SweepDisplay
+from driftwell.cli.terminal.printing import answer, sign, tell, width
+from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError, StudyError
 from driftwell.exit_codes import FINISHED, NOT_CONVERGED, SOME_FAILED, STOPPED, UNUSABLE
 from driftwell.record.claim import unwritable

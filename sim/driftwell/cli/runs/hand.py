@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from driftwell.cli.printing import sign, width
+from driftwell.cli.terminal.printing import sign, width
 from driftwell.errors import DriftwellError
 from driftwell.forms.paragraph import paragraph
 from driftwell.hand.comparison import comparison_lines, comparisons

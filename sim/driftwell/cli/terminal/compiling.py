@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from driftwell.cli.printing import tell
+from driftwell.cli.terminal.printing import tell
 
 
 def tell_of_compiling() -> None:

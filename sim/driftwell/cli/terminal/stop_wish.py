@@ -13,7 +13,7 @@ import threading
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
-from driftwell.cli.printing import tell
+from driftwell.cli.terminal.printing import tell
 
 SIGNALS = (signal.SIGINT, signal.SIGTERM, signal.SIGHUP)
 

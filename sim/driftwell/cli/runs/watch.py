@@ -7,8 +7,8 @@ import sys
 import time
 from pathlib import Path
 
-from driftwell.cli.printing import answer, is_terminal, shown, tell, width
-from driftwell.cli.watch_table import Row, cells, table
+from driftwell.cli.runs.watch_table import Row, cells, table
+from driftwell.cli.terminal.printing import answer, is_terminal, shown, tell, width
 from driftwell.exit_codes import FINISHED, UNUSABLE
 from driftwell.record.condition import Condition, condition_of, holds_run
 from driftwell.record.heartbeat import PROGRESS_FILE

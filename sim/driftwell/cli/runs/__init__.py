@@ -1,0 +1,1 @@
+"""The commands on one run: foretold, carried out, watched."""

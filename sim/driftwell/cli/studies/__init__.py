@@ -1,0 +1,1 @@
+"""The commands on studies: sweeps, limits and convergence, and what they show on the way."""

@@ -1,0 +1,1 @@
+"""What all commands share: printing, times of day, signals, threads."""
