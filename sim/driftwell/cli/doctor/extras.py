@@ -14,7 +14,7 @@ USES = {
     "mesh": "electrodes from STL files",
     "parquet": "tables as Parquet",
     "vtk": "exports as VTK",
-    "xarray": "a run's tables with named dimensions, in Python",
+    "xarray": "tables of a run with named dimensions, in Python",
 }
 """What each extra is for; those for work on driftwell itself are left out."""
 ENCODER = "ffmpeg"
