@@ -9,10 +9,11 @@ import argparse
 import os
 import re
 import sys
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from pathlib import Path
 
 from driftwell.cli.arguments import parser
+from driftwell.cli.options.command import Parser
 
 PAGE = Path(__file__).resolve().parents[1] / "docs" / "command-line.md"
 COLUMNS = "100"
@@ -26,36 +27,17 @@ change it there.
 """
 
 
-def page(whole: argparse.ArgumentParser) -> str:
-    """The whole page."""
-    commands = _commands(whole)
-    helped = {each.dest: each.help for each in _choices(whole)}
+def page(whole: argparse.ArgumentParser, commands: Mapping[str, Parser]) -> str:
+    """The whole page: what is typed before a command, and each command by its name."""
     parts = [HEAD, *_of(whole)]
     rows: list[tuple[str, ...]] = [
-        (f"[`{name}`](#{whole.prog}-{name})", _cell(helped[name])) for name in commands
+        (f"[`{name}`](#{whole.prog}-{name})", _cell(each.line)) for name, each in commands.items()
     ]
     parts.append(f"## Commands\n\n{_table(('command', 'what it does'), rows)}")
     for name, command in commands.items():
-        parts.append(f"## {whole.prog} {name}\n\n{_sentence(helped[name])}\n")
+        parts.append(f"## {whole.prog} {name}\n\n{_sentence(command.line)}\n")
         parts += _of(command)
     return "\n".join(part.rstrip("\n") + "\n" for part in parts)
-
-
-def _commands(whole: argparse.ArgumentParser) -> dict[str, argparse.ArgumentParser]:
-    for action in whole._actions:
-        if isinstance(action, argparse._SubParsersAction):
-            return dict(action.choices)
-    return {}
-
-
-def _choices(whole: argparse.ArgumentParser) -> list[argparse.Action]:
-    """The commands as their parser lists them, with their lines of help."""
-    return [
-        choice
-        for action in whole._actions
-        if isinstance(action, argparse._SubParsersAction)
-        for choice in action._choices_actions
-    ]
 
 
 def _of(one: argparse.ArgumentParser) -> Iterator[str]:
@@ -138,7 +120,8 @@ def _table(heads: tuple[str, ...], rows: list[tuple[str, ...]]) -> str:
 def main(arguments: list[str]) -> int:
     """Write the page, or with --check say whether it is fresh."""
     os.environ.update(COLUMNS=COLUMNS, NO_COLOR="1")
-    text = page(parser())
+    whole = parser()
+    text = page(whole, whole.commands)
     if "--check" not in arguments:
         PAGE.write_text(text, encoding="utf-8")
         return 0

@@ -18,11 +18,9 @@ def test_every_option_of_every_command_stands_in_its_section() -> None:
         part.split("\n", 1)[0].removeprefix("driftwell "): part
         for part in PAGE.read_text(encoding="utf-8").split("\n## ")
     }
-    commands = next(
-        action for action in parser()._actions if isinstance(action, argparse._SubParsersAction)
-    )
-    assert set(commands.choices) <= set(sections)
-    for name, command in commands.choices.items():
+    commands = parser().commands
+    assert set(commands) <= set(sections)
+    for name, command in commands.items():
         options = [option for action in command._actions for option in action.option_strings]
         assert "--help" in options
         missing = [each for each in options if f"`{each}" not in sections[name]]
@@ -35,7 +33,7 @@ def test_help_is_shown_as_it_stands_with_defaults_examples_and_codes() -> None:
     )
     whole.add_argument("--to", metavar="A|B", default=3, help="how | far_it goes")
     whole.add_argument("file", nargs="+")
-    page = WRITTEN(whole)
+    page = WRITTEN(whole, {})
     assert "A \\*b\\* \\[c\\].\n" in page
     assert "| `--to A|B` | how \\| far\\_it goes | `3` |" in page.replace("A\\|B", "A|B")
     assert "| `file [file ...]` |  |" in page
