@@ -14,8 +14,6 @@ from driftwell.api.progress import Interrupt
 from driftwell.api.study_results import Converged, Limited, Swept
 from driftwell.api.study_watcher import StudyWatcher
 from driftwell.errors import StudyError
-from driftwell.record.claim import unwritable
-from driftwell.record.commit import commit
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.convergence.axes import AXES
 from driftwell.study.convergence.driver import converge as converge_in
@@ -27,7 +25,7 @@ from driftwell.study.pool import Pool
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, is_study, read_study
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE, taken
+from driftwell.study.sweep_folder import CATALOGUE_FILE, keep_summary, taken
 from driftwell.study.table import table_of, write_tables
 
 
@@ -79,7 +77,7 @@ def sweep(
         ).result()
         write_tables(folder, found, catalogue)
         swept = Swept(folder, table_of(found, catalogue), result)
-        _keep_summary(folder, str(swept))
+        keep_summary(folder, [str(swept)])
     if result.stopped:
         raise KeyboardInterrupt(f"stopped; the same call goes on (the runs: {folder})")
     return swept
@@ -145,7 +143,7 @@ def converge(
         )
         if outcome.report is not None:
             found = Converged(folder, outcome.report, outcome.result.failures)
-            _keep_summary(folder, str(found))
+            keep_summary(folder, [str(found)])
     if outcome.result.stopped:
         raise KeyboardInterrupt(f"stopped; the same call goes on (the runs: {folder})")
     if outcome.report is None:
@@ -190,7 +188,7 @@ def limit(
         )
         write_limit(folder, found)
         limited = Limited(folder, found)
-        _keep_summary(folder, str(limited))
+        keep_summary(folder, [str(limited)])
     if found.verdict is None:
         raise KeyboardInterrupt(f"stopped; the same call goes on (the runs: {folder})")
     return limited
@@ -209,10 +207,3 @@ def _working_in(
                 yield catalogue, watcher
         finally:
             watcher.ends()
-
-
-def _keep_summary(folder: Path, text: str) -> None:
-    try:
-        commit(folder / SUMMARY_FILE, f"{text}\n".encode(errors="backslashreplace"))
-    except OSError as fault:
-        raise unwritable(folder, fault) from fault

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import codecs
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
@@ -25,6 +25,15 @@ _DIGITS = 16
 def run_folder(folder: Path, digest: str) -> Path:
     """Where the run with this digest lies in the sweep's folder."""
     return folder / RUNS / digest[:_DIGITS]
+
+
+def keep_summary(folder: Path, lines: Iterable[str]) -> None:
+    """Write what was said at the end into the folder; raises RecordError where it cannot be."""
+    text = "".join(f"{line}\n" for line in lines)
+    try:
+        commit(folder / SUMMARY_FILE, text.encode(errors="backslashreplace"))
+    except OSError as fault:
+        raise unwritable(folder, fault) from fault
 
 
 @contextmanager

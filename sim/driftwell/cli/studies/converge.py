@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import logging
 from collections.abc import Callable, Sequence
 from contextlib import ExitStack, closing
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 
+from driftwell.cli.studies.drawing import drawn
 from driftwell.cli.studies.engines import Engines
 from driftwell.cli.studies.place import Place
 from driftwell.cli.studies.progress import SweepDisplay
@@ -16,8 +16,6 @@ from driftwell.cli.terminal.printing import answer, sign, tell, width
 from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError, StudyError
 from driftwell.exit_codes import FINISHED, NOT_CONVERGED, SOME_FAILED, STOPPED, UNUSABLE
-from driftwell.record.claim import unwritable
-from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.scenario.read import read_scenario
 from driftwell.study.catalogue import Catalogue
@@ -30,7 +28,7 @@ from driftwell.study.kept_engine import KeptEngine
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, is_study
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
+from driftwell.study.sweep_folder import CATALOGUE_FILE, keep_summary
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,10 +163,7 @@ def _report(folder: Path, outcome: Outcome) -> bool:
         return True
     table = ["", f"table: {folder / CONVERGENCE_CSV}"]
     lines = [report.plan.study.title, *failures, *answer_lines(report, WIDTH), *table]
-    try:
-        commit(folder / SUMMARY_FILE, ("\n".join(lines) + "\n").encode(errors="backslashreplace"))
-    except OSError as fault:
-        raise unwritable(folder, fault) from fault
+    keep_summary(folder, lines)
     return answer(["", *failures, *answer_lines(report, width(), sign()), *table])
 
 
@@ -176,10 +171,4 @@ def _draw(folder: Path, report: Report) -> bool:
     """Draw the picture and say where it is; whether that could be done."""
     from driftwell.report.study_pictures.convergence import draw_convergence
 
-    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
-    try:
-        made = draw_convergence(folder, report)
-    except DriftwellError as error:
-        tell(str(error))
-        return False
-    return not made or answer([f"picture: {made[0]}"])
+    return drawn(partial(draw_convergence, folder, report), lambda made: f"picture: {made[0]}")

@@ -2,19 +2,18 @@
 
 from __future__ import annotations
 
-import logging
 from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 
 from driftwell import exit_codes
+from driftwell.cli.studies.drawing import drawn
 from driftwell.cli.studies.engines import Engines
 from driftwell.cli.studies.place import Place
 from driftwell.cli.studies.progress import SweepDisplay
 from driftwell.cli.terminal.printing import answer, tell, width
 from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError
-from driftwell.record.claim import unwritable
-from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.cores import Sharing
@@ -32,7 +31,7 @@ from driftwell.study.limit_table import LIMIT_CSV, write_limit
 from driftwell.study.limit_words import asked_in_words, limit_lines, progress_told
 from driftwell.study.progress import Failure, SweepProgress
 from driftwell.study.read import Study, read_study
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
+from driftwell.study.sweep_folder import CATALOGUE_FILE, keep_summary
 
 EXIT_CODES = {
     FOUND: exit_codes.FINISHED,
@@ -145,11 +144,7 @@ def _carried_out(
 def _report(folder: Path, found: Searched) -> bool:
     """Print what was found and keep it in the folder; whether it could be printed."""
     last = ["", f"runs: {folder / LIMIT_CSV}"]
-    text = "\n".join([*limit_lines(found, WIDTH), *last]) + "\n"
-    try:
-        commit(folder / SUMMARY_FILE, text.encode(errors="backslashreplace"))
-    except OSError as fault:
-        raise unwritable(folder, fault) from fault
+    keep_summary(folder, [*limit_lines(found, WIDTH), *last])
     return answer(["", *limit_lines(found, width()), *last])
 
 
@@ -157,10 +152,4 @@ def _draw(folder: Path, found: Searched) -> bool:
     """Draw the search and say where; whether that could be done."""
     from driftwell.report.study_pictures.limit_picture import draw_limit
 
-    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
-    try:
-        made = draw_limit(folder, found)
-    except DriftwellError as error:
-        tell(str(error))
-        return False
-    return not made or answer([f"picture: {made[0]}"])
+    return drawn(partial(draw_limit, folder, found), lambda made: f"picture: {made[0]}")

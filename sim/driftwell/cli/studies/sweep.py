@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-import logging
 from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 
+from driftwell.cli.studies.drawing import drawn
 from driftwell.cli.studies.engines import Engines
 from driftwell.cli.studies.place import Place
 from driftwell.cli.studies.progress import SweepDisplay
@@ -13,15 +14,13 @@ from driftwell.cli.terminal.printing import answer, sign, tell, width
 from driftwell.cli.terminal.stop_wish import StopWish
 from driftwell.errors import DriftwellError, StudyError
 from driftwell.exit_codes import FINISHED, SOME_FAILED, STOPPED, UNUSABLE
-from driftwell.record.claim import unwritable
-from driftwell.record.commit import commit
 from driftwell.record.summary import WIDTH
 from driftwell.study.catalogue import Catalogue
 from driftwell.study.progress import SweepResult
 from driftwell.study.read import Study, read_study
 from driftwell.study.summary import summary
 from driftwell.study.sweep import Sweep
-from driftwell.study.sweep_folder import CATALOGUE_FILE, SUMMARY_FILE
+from driftwell.study.sweep_folder import CATALOGUE_FILE, keep_summary
 from driftwell.study.table import TABLE_CSV, Table, table_of, write_tables
 
 
@@ -105,10 +104,7 @@ def _carried_out(
 def _report(study: Study, folder: Path, result: SweepResult) -> bool:
     """Print the summary and keep it in the folder; whether it could be printed."""
     lines = [*summary(study, result, WIDTH), "", f"answers: {folder / TABLE_CSV}"]
-    try:
-        commit(folder / SUMMARY_FILE, ("\n".join(lines) + "\n").encode(errors="backslashreplace"))
-    except OSError as fault:
-        raise unwritable(folder, fault) from fault
+    keep_summary(folder, lines)
     return answer(
         ["", *summary(study, result, width(), sign()), "", f"answers: {folder / TABLE_CSV}"]
     )
@@ -118,10 +114,7 @@ def _draw(folder: Path, table: Table) -> bool:
     """Draw a picture of each question and say where they are; whether that could be done."""
     from driftwell.report.study_pictures.varied import draw_sweep
 
-    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # its caches are not the user's concern
-    try:
-        made = draw_sweep(folder, table)
-    except DriftwellError as error:
-        tell(str(error))
-        return False
-    return not made or answer([f"pictures: {len(made)} in {made[0].parent}"])
+    return drawn(
+        partial(draw_sweep, folder, table),
+        lambda made: f"pictures: {len(made)} in {made[0].parent}",
+    )
